@@ -1,0 +1,1 @@
+"""Composing: what should move, and whether it can."""

@@ -1,0 +1,1 @@
+"""Reports: sentences and JSON from snags, retimings and runs."""

@@ -1,0 +1,1 @@
+"""The rig file: what hangs on the wall or on the body."""

@@ -1,0 +1,1 @@
+"""The score language: reading it, tempo, expanding it to tracks, writing it back."""

@@ -1,0 +1,1 @@
+"""The simulated rig: how the fibers would really move."""

@@ -1,0 +1,1 @@
+"""Playing: making it move, on a simulator, a file or real valves."""

@@ -1,0 +1,1 @@
+"""The commands of playing, and the entry point that gathers all commands."""

@@ -1,0 +1,1 @@
+"""The engine: clock, transport, safety states, loop."""

@@ -1,0 +1,1 @@
+"""Where motion goes: simulator, serial line, file."""

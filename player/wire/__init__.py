@@ -1,0 +1,1 @@
+"""The wire protocol: messages, frames, host side, device side."""

@@ -1,0 +1,100 @@
+"""What tests of every room share: values from outside, and small rigs made without a file."""
+
+import tomllib
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+
+from composer.fiber.mounting import Mounting, Supply, Valve
+from composer.fiber.rated import Rated
+from composer.rig.model import Driver, Fiber, FiberType, Rig
+
+TESTS = Path(__file__).parent
+
+
+@pytest.fixture(scope="session")
+def outside() -> dict:
+    """Every value from elsewhere, each with its source, from outside.toml."""
+    return tomllib.loads((TESTS / "outside.toml").read_text())
+
+
+@pytest.fixture(scope="session")
+def make_rig() -> Callable[..., Rig]:
+    """A maker of rigs of `count` rated fibers r.1 to r.N, one group `all`, on one board or several."""
+
+    def make(
+        count: int = 4,
+        *,
+        stroke: float = 0.3,
+        fill: float = 0.6,
+        exhaust: float = 0.3,
+        accel: float | None = None,
+        air_mL: float = 3.0,
+        drive: str = "strain",
+        max_hold_s: float = 0.0,
+        boards: int = 1,
+        duty: float = 1.0,
+        duty_burst_s: float = 30.0,
+        energised_while_holding: bool = False,
+        max_switch_Hz: float = 50.0,
+        receiver_L: float = 10.0,
+        compressor_L_min: float = 40.0,
+        min_pressure_kPa: float = 450.0,
+        max_receiver_kPa: float = 800.0,
+    ) -> Rig:
+        supply = Supply(
+            medium="air",
+            pressure_kPa=400.0,
+            min_pressure_kPa=min_pressure_kPa,
+            receiver_L=receiver_L,
+            max_receiver_kPa=max_receiver_kPa,
+            compressor_L_min=compressor_L_min,
+            polytropic=1.2,
+            ambient_kPa=101.325,
+            temperature_C=20.0,
+        )
+        valve = Valve(
+            name="mini",
+            C_dm3_s_bar=0.005,
+            b=0.3,
+            switch_ms=8.0,
+            max_switch_Hz=max_switch_Hz,
+            drive=drive,
+            duty=duty,
+            duty_burst_s=duty_burst_s,
+            energised_while_holding=energised_while_holding,
+        )
+        make = Rated("contract", 400.0, stroke, fill, exhaust, air_mL, accel)
+        kind = FiberType("drop", "rated", make, 1)
+        each = -(-count // boards)
+        names = ["main"] if boards == 1 else [f"board{n + 1}" for n in range(boards)]
+        fibers = tuple(
+            Fiber(
+                name=f"r.{n + 1}",
+                type=kind,
+                mounting=Mounting(valve, supply, 2.0, 800.0, 1.5, 1, 1),
+                driver=names[n // each],
+                channel=n % each,
+                at_m=(0.05 * n, 0.0, 0.0),
+                toward=(0.0, 0.0, -1.0),
+                mirror=count - 1 - n,
+                max_hold_s=max_hold_s,
+                line=1,
+            )
+            for n in range(count)
+        )
+        return Rig(
+            name="Bench",
+            file="bench.rig.toml",
+            worn=False,
+            supply=supply,
+            fiber_types={"drop": kind},
+            valve_types={"mini": valve},
+            drivers=tuple(Driver(name, each) for name in names),
+            fibers=fibers,
+            groups={"all": tuple(range(count))},
+            fingerprint=0x1234ABCD,
+        )
+
+    return make
