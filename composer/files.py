@@ -4,6 +4,7 @@ import errno
 import os
 import secrets
 import stat
+from codecs import BOM_UTF8
 from collections.abc import Iterator
 from contextlib import contextmanager, suppress
 from typing import IO, Any, NoReturn
@@ -43,12 +44,11 @@ def read_text(path: str | os.PathLike[str], limit_bytes: int) -> str:
     if zero >= 0:
         found = f"a zero byte at offset {zero}: this is a binary file, not text"
         raise fault(name, found, "UTF-8 text")
+    mark = len(BOM_UTF8) if data.startswith(BOM_UTF8) else 0
     try:
-        return data.decode("utf-8-sig")
+        return data[mark:].decode()
     except UnicodeDecodeError as error:
-        # utf-8-sig counts from behind the mark; the person counts from the file's first byte.
-        offset = error.start + (3 if data.startswith(b"\xef\xbb\xbf") and error.object != data else 0)
-        raise Faults([_not_utf8(name, data, offset)]) from None
+        raise Faults([_not_utf8(name, data, mark + error.start)]) from None
 
 
 def _not_utf8(name: str, data: bytes, offset: int) -> Fault:
@@ -68,7 +68,7 @@ def _not_utf8(name: str, data: bytes, offset: int) -> Fault:
 
 @contextmanager
 def replacing(path: str | os.PathLike[str], mode: str = "w") -> Iterator[IO[Any]]:
-    """A file to write, `mode` "w" (UTF-8, lines end in a line feed) or "wb"; it takes the target's place when the block ends well.
+    """A file to write that takes the target's place when the block ends well; `mode` "w" (UTF-8, line feeds) or "wb".
 
     Until then all goes into a file beside the target, which is removed if the block fails. A link stays a link, a
     replaced file keeps its permissions; into a device or pipe (such as /dev/stdout) it is written directly. Raises
