@@ -1,1 +1,1 @@
-"""Where motion goes: simulator, serial line, file."""
+"""Where sets go: simulated rig, recording, serial line. One file each, one row in the table of `player.outputs.targets`."""
