@@ -27,7 +27,7 @@ ENCODED_LIMIT = stuffed_length(PAYLOAD_LIMIT + 2)
 
 
 def stuff(data: bytes) -> bytes:
-    """COBS without the delimiter. A full block of 254 bytes at the end is followed by a code 0x01, as in the paper's program."""
+    """COBS without the delimiter. A last block of all 254 bytes is followed by a code 0x01, as in the paper's program."""
     out = bytearray()
     for block in data.split(b"\0"):
         if len(block) >= 254:

@@ -1,0 +1,394 @@
+"""The device's side of the wire, with no I/O and no clock: bytes and times in, bytes and valve values out.
+
+Same bytes at the same times give the same bytes and the same values, always. The rules, each of them also in the manual:
+
+1. Starts vented: every channel at 0, which exhausts for every drive. Status 2.
+2. A frame is good if it unstuffs, its CRC fits and its type is one of the host's or unknown below 0x80. Others are dropped
+   and counted in `bad`; also the device's own types, so that a line that echoes neither feeds the watchdog nor is answered.
+3. An unknown type below 0x80 or a body of the wrong form is fault 4, and does not feed the watchdog. All others do.
+4. hello: drops the queue, disarms, exhausts, forgets what was configured, status 0. Answered by hello, then state. Of a version
+   other than 1 it is answered also by fault 4 (between the two), and counts as no greeting.
+5. configure: fault 4 unless greeted and neither armed nor coming to rest, watchdog not 0, channels 1 to what the device has;
+   fault 2 where the device knows its rig and this is another: status 3 then. A configure refused leaves the device as it was
+   otherwise. Repeated, the last one holds.
+6. arm: fault 4 unless the key is right, configure was accepted and the device is not coming to rest. Armed already: nothing
+   changes.
+7. set: judged in this order: fault 3 unless armed (coming to rest is not armed), fault 4 for no values or a channel not
+   configured (the first one is named), then its time: 0, now or past is applied at once, past is counted in `late`; the
+   future waits in the queue, fault 5 where that is full. A time is past if it is less than 2^31 µs behind. Sets due at one
+   time are applied as they came. A set that faults changes nothing.
+8. vent: every channel to 0, queue dropped, status 2, in every state.
+9. rest: drops the queue; each channel goes in a straight line, in steps of 1 ms, from where it is to 0, a valve that fills
+   beginning from shut; then disarmed, status 0. Status stays 1 on the way. Not armed: nothing changes.
+10. Watchdog: armed or coming to rest, and no good frame for watchdog_ms: as vent, and fault 1. Bytes that come at the very end
+    of that time come too late.
+11. Left by hello only, then configure, arm: status 2 and 3.
+12. The device's own faults (over-pressure, sensor): every channel to 0, queue dropped, status 3, the fault said.
+13. Order: what a time brings comes before the bytes of that time: sets due (none that is due after the watchdog trips), ramp,
+    watchdog, state, sense. Answers carry the seq of what they answer, faults before the state; unasked frames carry 0.
+14. state: unasked every 50 ms from the start (one where several were missed), and at once where the status changed by itself.
+    With it, where it senses strain and is configured, sense for the channels configured.
+15. `late` and `bad` count from the start, hello leaves them, and wrap.
+"""
+
+from bisect import insort
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from operator import itemgetter
+from typing import Any
+
+from player.wire import messages as m
+from player.wire.frames import FrameReader, frame
+from player.wire.values import SHUT
+
+STATE_EVERY_US = 50_000
+RAMP_STEP_US = 1_000
+TURN = 1 << 32
+HALF = 1 << 31
+COUNTER = TURN - 1
+
+REFUSALS: dict[str, tuple[int, str]] = {
+    "form": (m.BAD_COMMAND, "no such message, or its body has the wrong size"),
+    "version": (m.BAD_COMMAND, "this device speaks version 1"),
+    "hello": (m.BAD_COMMAND, "hello has to come first"),
+    "armed": (m.BAD_COMMAND, "configure while armed"),
+    "watchdog": (m.BAD_COMMAND, "a watchdog of 0 ms"),
+    "channels": (m.BAD_COMMAND, "more channels than there are, or none"),
+    "rig": (m.RIG_MISMATCH, "this device serves another rig"),
+    "key": (m.BAD_COMMAND, "wrong key"),
+    "configure": (m.BAD_COMMAND, "configure has to come first"),
+    "resting": (m.BAD_COMMAND, "arm while coming to rest"),
+    "unarmed": (m.NOT_ARMED, "set while not armed"),
+    "empty": (m.BAD_COMMAND, "set of no values"),
+    "channel": (m.BAD_COMMAND, "set of a channel that is not configured"),
+    "full": (m.QUEUE_FULL, "the queue is full"),
+    "silence": (m.WATCHDOG, "no frame from the host"),
+}
+"""What a device has to refuse or to report: code of the fault and its text, which is always the same."""
+
+
+@dataclass(frozen=True, slots=True)
+class Build:
+    """What a device is: its name, the drive of each channel, room in its queue, what it senses, the rig it knows (or None)."""
+
+    name: str
+    drives: tuple[str, ...]
+    queue: int = 64
+    senses_strain: bool = False
+    senses_supply: bool = False
+    rig: int | None = None
+
+    def __post_init__(self) -> None:
+        """Raises ValueError for what a hello could not say."""
+        if not 1 <= len(self.drives) <= 0xFFFF or not 64 <= self.queue <= 0xFFFF or len(self.name.encode()) > 255:
+            raise ValueError("a device has 1 to 65535 channels, room for 64 to 65535 sets, a name of at most 255 bytes")
+
+
+@dataclass(frozen=True, slots=True)
+class Applied:
+    """A set that has moved valves; times in µs of the device, `late` where it came after its due time. Due 0 means now."""
+
+    arrival_us: int
+    due_us: int
+    first: int
+    count: int
+    late: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Changed:
+    """The status is another than before, and why."""
+
+    was: int
+    now: int
+    why: str
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """A fault that was told to the host."""
+
+    code: int
+    channel: int
+    text: str
+
+
+Event = Applied | Changed | Told
+
+
+class Device:
+    """One valve driver. Times are µs that never go back, of any size; on the wire they wrap at 2^32.
+
+    set_valves(first, values): called at once whenever channels take new values
+    strain(first, count): called for what the channels' strains are, 0 to 65535; supply(): kPa gauge × 10
+    """
+
+    def __init__(
+        self,
+        build: Build,
+        now_us: int,
+        set_valves: Callable[[int, Sequence[int]], None],
+        strain: Callable[[int, int], Sequence[int]] = lambda first, count: [0] * count,
+        supply: Callable[[], int] = lambda: m.NOT_SENSED,
+    ) -> None:
+        self.build = build
+        self.status = m.VENTED
+        self.values = [0] * len(build.drives)
+        self.late = 0
+        self.channels = 0
+        self.watchdog_us = 0
+        self._set_valves, self._strain, self._supply = set_valves, strain, supply
+        self._reader = FrameReader()
+        self._echoes = 0
+        self._greeted = False
+        self._heard_us = now_us
+        self._queue: list[tuple[int, int, Any]] = []
+        self._ramp: tuple[int, int, list[int], int] | None = None
+        self._state_us = now_us + STATE_EVERY_US
+        self._out = bytearray()
+        self._events: list[Event] = []
+        self._does = {
+            m.Hello: self._hello,
+            m.Configure: self._configure,
+            m.Arm: self._arm,
+            m.Set: self._set,
+            m.Vent: self._vent,
+            m.Rest: self._rest,
+            m.Ping: self._ping,
+        }
+        set_valves(0, self.values)
+
+    # What the world does to it.
+
+    def receive(self, data: bytes, now_us: int) -> list[Event]:
+        """Bytes that came, in pieces of any size; first does what time has brought. Never raises, whatever comes."""
+        self._bring(now_us)
+        for payload in self._reader.feed(data):
+            self._frame(payload, now_us)
+        return self._take()
+
+    def advance(self, now_us: int) -> list[Event]:
+        """Do what time has brought: sets due, ramp, watchdog, state. Wanted at `next_us`; later is allowed."""
+        self._bring(now_us)
+        return self._take()
+
+    def fail(self, code: int, channel: int, text: str, now_us: int) -> list[Event]:
+        """A fault that the device itself has found (over-pressure, sensor): vents, says so, status 3."""
+        self._bring(now_us)
+        self._tell(code, channel, text, 0)
+        self._exhaust(m.FAULT, m.FAULTS[code])
+        self._say_state(now_us, 0)
+        return self._take()
+
+    def to_send(self) -> bytes:
+        """The bytes for the host since the last call."""
+        out = bytes(self._out)
+        self._out.clear()
+        return out
+
+    def next_us(self) -> int:
+        """The time at which `advance` next has something to do."""
+        return min(self._next_us(), self._state_us)
+
+    @property
+    def bad(self) -> int:
+        """Frames dropped since the start."""
+        return self._reader.bad + self._echoes
+
+    @property
+    def queued(self) -> int:
+        """Sets that wait."""
+        return len(self._queue)
+
+    @property
+    def resting(self) -> bool:
+        """Whether it is on its way to rest."""
+        return self._ramp is not None
+
+    # What time brings.
+
+    def _next_us(self) -> int:
+        """The next time of a set, a step of the ramp or the watchdog."""
+        next_us = self._state_us
+        if self._queue:
+            next_us = min(next_us, self._queue[0][0])
+        if self._ramp is not None:
+            since, _, _, step = self._ramp
+            next_us = min(next_us, since + (step + 1) * RAMP_STEP_US)
+        if self.status == m.ARMED:
+            next_us = min(next_us, self._heard_us + self.watchdog_us)
+        return next_us
+
+    def _bring(self, now_us: int) -> None:
+        while True:
+            trips_us = self._heard_us + self.watchdog_us if self.status == m.ARMED else now_us + 1
+            if self._queue and self._queue[0][0] <= min(now_us, trips_us):
+                due_us, arrival_us, message = self._queue.pop(0)
+                self._apply(message, due_us, arrival_us, False)
+                continue
+            if self._ramp is not None:
+                self._step(min(now_us, trips_us), now_us)
+                if self._ramp is None:
+                    continue
+            if trips_us <= now_us:
+                self._refuse("silence", 0)
+                self._exhaust(m.VENTED, "watchdog")
+                self._say_state(now_us, 0)
+            break
+        if now_us >= self._state_us:
+            self._state_us += (now_us - self._state_us) // STATE_EVERY_US * STATE_EVERY_US + STATE_EVERY_US
+            self._say_state(now_us, 0)
+            if self.build.senses_strain and self.channels:
+                self._say_sense(now_us)
+
+    def _step(self, until_us: int, now_us: int) -> None:
+        """The last step of the ramp that is due, and its end."""
+        since_us, ramp_ms, start, done = self._ramp
+        step = min((until_us - since_us) // RAMP_STEP_US, ramp_ms)
+        if step > done:
+            self._ramp = (since_us, ramp_ms, start, step)
+            self._move(0, [value - value * step // ramp_ms for value in start])
+        if step >= ramp_ms:
+            self._exhaust(m.IDLE, "at rest")
+            self._say_state(now_us, 0)
+
+    # What frames bring.
+
+    def _frame(self, payload: bytes, now_us: int) -> None:
+        kind, seq = payload[0], payload[1]
+        if kind >= 0x80:
+            self._echoes += 1
+            return
+        try:
+            message = m.decode(payload)
+        except m.WrongForm:
+            self._refuse("form", seq)
+            return
+        self._heard_us = now_us
+        self._does[type(message)](message, seq, now_us)
+
+    def _hello(self, message: Any, seq: int, now_us: int) -> None:
+        self._exhaust(m.IDLE, "hello")
+        self.channels = 0
+        self._greeted = message.version == m.VERSION
+        build = self.build
+        flags = m.SENSES_STRAIN * build.senses_strain | m.SENSES_SUPPLY * build.senses_supply
+        self._send(m.Board(m.VERSION, flags, len(build.drives), build.queue, now_us % TURN, build.name), seq)
+        if not self._greeted:
+            self._refuse("version", seq)
+        self._say_state(now_us, seq)
+
+    def _configure(self, message: Any, seq: int, now_us: int) -> None:
+        if not self._greeted or self.status in (m.VENTED, m.FAULT):
+            self._refuse("hello", seq)
+        elif self.status == m.ARMED:
+            self._refuse("armed", seq)
+        elif not message.watchdog_ms:
+            self._refuse("watchdog", seq)
+        elif not 1 <= message.channels <= len(self.build.drives):
+            self._refuse("channels", seq)
+        elif self.build.rig not in (None, message.rig):
+            self._refuse("rig", seq)
+            self._exhaust(m.FAULT, "rig mismatch")
+        else:
+            self.channels, self.watchdog_us = message.channels, message.watchdog_ms * 1000
+        self._say_state(now_us, seq)
+
+    def _arm(self, message: Any, seq: int, now_us: int) -> None:
+        if message.key != m.ARM_KEY:
+            self._refuse("key", seq)
+        elif self.status in (m.VENTED, m.FAULT):
+            self._refuse("hello", seq)
+        elif not self.channels:
+            self._refuse("configure", seq)
+        elif self._ramp is not None:
+            self._refuse("resting", seq)
+        else:
+            self._become(m.ARMED, "arm")
+        self._say_state(now_us, seq)
+
+    def _set(self, message: Any, seq: int, now_us: int) -> None:
+        count = len(message.value)
+        if self.status != m.ARMED or self._ramp is not None:
+            self._refuse("unarmed", seq)
+        elif not count:
+            self._refuse("empty", seq)
+        elif message.first + count > self.channels:
+            self._refuse("channel", seq, max(message.first, self.channels))
+        else:
+            ahead = (message.due_us - now_us + HALF) % TURN - HALF if message.due_us else 0
+            if ahead <= 0:
+                late = ahead < 0
+                self.late = self.late + late & COUNTER
+                self._apply(message, now_us + ahead if message.due_us else 0, now_us, late)
+            elif len(self._queue) >= self.build.queue:
+                self._refuse("full", seq)
+            else:
+                insort(self._queue, (now_us + ahead, now_us, message), key=itemgetter(0))
+
+    def _vent(self, message: Any, seq: int, now_us: int) -> None:
+        self._exhaust(m.VENTED, "vent")
+        self._say_state(now_us, seq)
+
+    def _rest(self, message: Any, seq: int, now_us: int) -> None:
+        if self.status == m.ARMED:
+            self._queue.clear()
+            start = [
+                min(value, SHUT) if drive == "valve" else value
+                for value, drive in zip(self.values, self.build.drives, strict=True)
+            ]
+            if message.ramp_ms:
+                self._ramp = (now_us, message.ramp_ms, start, 0)
+                self._move(0, start)
+            else:
+                self._exhaust(m.IDLE, "at rest")
+        self._say_state(now_us, seq)
+
+    def _ping(self, message: Any, seq: int, now_us: int) -> None:
+        self._send(m.Pong(message.host_us, now_us % TURN), seq)
+
+    # What it does.
+
+    def _apply(self, message: Any, due_us: int, arrival_us: int, late: bool) -> None:
+        self._move(message.first, message.value)
+        self._events.append(Applied(arrival_us, due_us, message.first, len(message.value), late))
+
+    def _move(self, first: int, values: Sequence[int]) -> None:
+        self.values[first : first + len(values)] = values
+        self._set_valves(first, values)
+
+    def _exhaust(self, status: int, why: str) -> None:
+        """Every channel to 0, the queue and the ramp dropped: before any word of it goes out."""
+        self._move(0, [0] * len(self.values))
+        self._queue.clear()
+        self._ramp = None
+        self._become(status, why)
+
+    def _become(self, status: int, why: str) -> None:
+        if status != self.status:
+            self._events.append(Changed(self.status, status, why))
+            self.status = status
+
+    def _refuse(self, what: str, seq: int, channel: int = m.NO_CHANNEL) -> None:
+        code, text = REFUSALS[what]
+        self._tell(code, channel, text, seq)
+
+    def _tell(self, code: int, channel: int, text: str, seq: int) -> None:
+        self._events.append(Told(code, channel, text))
+        self._send(m.Faulted(code, channel, text), seq)
+
+    def _say_state(self, now_us: int, seq: int) -> None:
+        supply = self._supply() if self.build.senses_supply else m.NOT_SENSED
+        self._send(m.State(now_us % TURN, self.status, self.queued, self.late, self.bad & COUNTER, supply), seq)
+
+    def _say_sense(self, now_us: int) -> None:
+        for first in range(0, self.channels, m.VALUES_LIMIT):
+            count = min(m.VALUES_LIMIT, self.channels - first)
+            self._send(m.Sense(now_us % TURN, first, tuple(self._strain(first, count))), 0)
+
+    def _send(self, message: Any, seq: int) -> None:
+        self._out += frame(m.encode(message, seq))
+
+    def _take(self) -> list[Event]:
+        events, self._events = self._events, []
+        return events
