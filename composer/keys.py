@@ -23,3 +23,8 @@ class Key:
     above: bool = False
     default: Any = REQUIRED
     choices: tuple[str, ...] = ()
+
+    @property
+    def required(self) -> bool:
+        """Whether it must be given."""
+        return self.default is REQUIRED

@@ -35,7 +35,12 @@ RIG = Table(
         Key("name", "text", "what the rig is called"),
         Key("ambient_kPa", "number", "pressure of the air around, absolute", "kPa", 50.0, 120.0, default=101.325),
         Key("temperature_C", "number", "temperature of air and fibers", "°C", -20.0, 60.0, default=20.0),
-        Key("worn", "switch", "on a person's body: every fiber then needs max_hold_s and its type max_pressure_kPa", default=False),
+        Key(
+            "worn",
+            "switch",
+            "on a person's body: every fiber then needs max_hold_s and its type max_pressure_kPa",
+            default=False,
+        ),
     ),
 )
 
@@ -124,7 +129,13 @@ FIBER = Table(
     (
         Key("name", "text", "what scores call it"),
         *HANGING,
-        Key("channel", "integer", "its channel, counted from 0; no other fiber of its driver has it", low=0, high=MOST_CHANNELS - 1),
+        Key(
+            "channel",
+            "integer",
+            "its channel, counted from 0; no other fiber of its driver has it",
+            low=0,
+            high=MOST_CHANNELS - 1,
+        ),
         Key("mirror", "text", "its partner in the mirror; said of one, it holds for both", default=None),
     ),
 )
@@ -150,9 +161,7 @@ GROUP = Table(
     (),
 )
 
-TABLES: dict[str, Table] = {
-    table.name: table for table in (RIG, SUPPLY, FIBER_TYPE, VALVE_TYPE, DRIVER, FIBER, FIBERS, GROUP)
-}
+TABLES: dict[str, Table] = {table.name: table for table in (RIG, SUPPLY, FIBER_TYPE, VALVE_TYPE, DRIVER, FIBER, FIBERS, GROUP)}
 """Every table of a rig file, in the manual's order."""
 
 

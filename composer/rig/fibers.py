@@ -1,0 +1,288 @@
+"""The fibers of a rig file: single ones and rows, their channels and their mirrors."""
+
+import math
+import re
+from dataclasses import dataclass
+from typing import Any
+
+from composer.faults import nearest
+from composer.fiber.kinds import KINDS
+from composer.fiber.mounting import Mounting, Supply, Valve
+from composer.rig.document import Document, say_names, say_value
+from composer.rig.lines import Path
+from composer.rig.model import Driver, Fiber, FiberType
+from composer.rig.schema import FIBER, FIBERS, LONGEST_NAME, MOST_FIBERS, NAME_RULE, SUPPLY, VALVE_TYPE
+from composer.rig.values import read_table
+
+_NAME = re.compile(r"[^\W\d_][\w.-]*")
+
+
+@dataclass(frozen=True, slots=True)
+class Stock:
+    """What fibers are made from: types, valves and boards by name, None where their tables had faults.
+
+    A fiber that names one of those is not blamed for it.
+    """
+
+    types: dict[str, FiberType | None]
+    valves: dict[str, Valve | None]
+    drivers: dict[str, Driver | None]
+    supply: Supply | None
+    worn: bool
+
+
+@dataclass(slots=True)
+class Hung:
+    """A fiber as written, before names become things; `path` is its table, or the table of its row."""
+
+    path: Path
+    name: str
+    channel: int
+    at_m: tuple[float, float, float]
+    mirror: str | None
+    values: dict[str, Any]
+
+
+def good_name(name: str) -> bool:
+    """Whether a score can name it."""
+    return len(name) <= LONGEST_NAME and _NAME.fullmatch(name) is not None
+
+
+def check_name(document: Document, path: Path, name: str, *, at_key: bool = False) -> bool:
+    """Note a fault where a name is none that a score could use; true if it is one."""
+    if good_name(name):
+        return True
+    note = document.at_key if at_key else document.at_value
+    expected = NAME_RULE if len(name) <= LONGEST_NAME else f"at most {LONGEST_NAME} characters"
+    note(path, f"the name {say_value(name)} cannot be used in a score", expected)
+    return False
+
+
+def read_fibers(document: Document, stock: Stock) -> tuple[list[Hung], tuple[Fiber, ...]]:
+    """All fibers in the file's order, as written and as they are; the latter empty if there are faults."""
+    hung = _rows(document)
+    if hung is None:
+        return [], ()
+    _check_names(document, hung)
+    _check_channels(document, hung, stock)
+    mirrors = _mirrors(document, hung)
+    fibers = [_fiber(document, item, stock, mirrors.get(item.name)) for item in hung]
+    return hung, tuple(fiber for fiber in fibers if fiber is not None)
+
+
+def _rows(document: Document) -> list[Hung] | None:
+    """Every table of fibers, rows spread out, in the order of their lines; None where they are too many."""
+    tables: list[tuple[int, Path, Any, Any]] = []
+    for table in (FIBER, FIBERS):
+        written = document.values.get(table.name, [])
+        if not isinstance(written, list):
+            hint = f"write [[{table.name}]]" if isinstance(written, dict) else ""
+            document.at_key((table.name,), f"'{table.name}' is {say_value(written)}", f"tables headed [[{table.name}]]", hint)
+            continue
+        for index, row in enumerate(written):
+            path = (table.name, index)
+            tables.append((document.line(path), path, row, table))
+    tables.sort(key=lambda item: (item[0], document.place(item[1]).key.column))
+    if not tables:
+        document.faults or document.at_key((), "the rig has no fibers", "at least one [[fiber]] or [[fibers]]")
+    hung: list[Hung] = []
+    for _, path, row, table in tables:
+        what = f"[[{table.name}]]"
+        if isinstance(row, dict) and isinstance(row.get("name"), str) and row["name"].strip():
+            what += f" {say_value(row['name'])}"
+        values = read_table(document, path, row, table.keys, what)
+        if values is None or not check_name(document, (*path, "name"), values["name"]):
+            continue
+        hung += [_single(path, values)] if table is FIBER else _spread(path, values)
+        if len(hung) > MOST_FIBERS:
+            document.at_key(path, f"more than {MOST_FIBERS} fibers", f"at most {MOST_FIBERS} in a rig")
+            return None
+    return hung
+
+
+def _single(path: Path, values: dict[str, Any]) -> Hung:
+    """A [[fiber]]."""
+    return Hung(path, values["name"], values["channel"], _place(values["at_m"], (0.0, 0.0, 0.0), 0), values["mirror"], values)
+
+
+def _spread(path: Path, values: dict[str, Any]) -> list[Hung]:
+    """A row of [[fibers]], one after the other."""
+    name, count = values["name"], values["count"]
+    return [
+        Hung(
+            path,
+            f"{name}.{n + 1}",
+            values["first_channel"] + n,
+            _place(values["at_m"], values["step_m"], n),
+            f"{name}.{count - n}" if values["mirrored"] else None,
+            values,
+        )
+        for n in range(count)
+    ]
+
+
+def _place(at: tuple[float, ...], step: tuple[float, ...], n: int) -> tuple[float, float, float]:
+    """Where the n-th of a row hangs, to the nanometre: 3 steps of 0.05 m are 0.15 m, as if written singly."""
+    x, y, z = (round(a + n * s, 9) + 0.0 for a, s in zip(at, step, strict=True))
+    return x, y, z
+
+
+def _check_names(document: Document, hung: list[Hung]) -> None:
+    """Every name once."""
+    seen: dict[str, Hung] = {}
+    blamed = set()
+    for item in hung:
+        other = seen.setdefault(item.name, item)
+        if other is not item and (item.path, other.path) not in blamed:
+            blamed.add((item.path, other.path))
+            line = document.line(other.path)
+            hint = f"the other stands at line {line}; every fiber needs a name of its own"
+            document.at_value((*item.path, "name"), f"the name '{item.name}' is used twice", "", hint)
+
+
+def _check_channels(document: Document, hung: list[Hung], stock: Stock) -> None:
+    """Every channel once on its driver, and none beyond it."""
+    seen: dict[tuple[str, int], Hung] = {}
+    blamed = set()
+    for item in hung:
+        driver = _choose(item.values["driver"], stock.drivers)
+        if driver is None:
+            continue
+        key = (*item.path, "channel" if item.path[0] == "fiber" else "first_channel")
+        board = stock.drivers.get(driver)
+        if board is not None and item.channel >= board.channels and item.path not in blamed:
+            blamed.add(item.path)
+            found = f"{item.name} is on channel {item.channel}, but driver '{driver}' has {board.channels} channels"
+            document.at_value(key, found, f"a channel from 0 to {board.channels - 1}")
+        other = seen.setdefault((driver, item.channel), item)
+        if other is not item and (item.path, other.path) not in blamed:
+            blamed.add((item.path, other.path))
+            used = {channel for board, channel in seen if board == driver}
+            free = next(n for n in range(len(used) + 1) if n not in used)
+            found = f"{item.name} is on channel {item.channel} of driver '{driver}', and so is {other.name} (line {document.line(other.path)})"
+            document.at_value(key, found, "a channel of its own for every fiber", f"the first free channel is {free}")
+
+
+def _mirrors(document: Document, hung: list[Hung]) -> dict[str, int]:
+    """The index of each fiber's partner; said of one fiber, it holds for both, and the two must not disagree."""
+    index = {item.name: n for n, item in enumerate(hung)}
+    said: dict[str, tuple[str, Hung]] = {}
+    for item in hung:
+        if item.mirror is None:
+            continue
+        key = (*item.path, "mirror" if item.path[0] == "fiber" else "mirrored")
+        if item.mirror not in index:
+            hint = nearest(item.mirror, index)
+            document.at_value(
+                key, f"no fiber '{item.mirror}' to mirror {item.name}", "" if hint else "the name of a fiber", hint
+            )
+            continue
+        for one, other in ((item.name, item.mirror), (item.mirror, item.name)):
+            was, by = said.setdefault(one, (other, item))
+            if was != other:
+                found = f"{item.name} is mirrored with {item.mirror}, but {one} with {was} (line {document.line(by.path)})"
+                document.at_value(key, found, "one partner for every fiber")
+                break
+    return {one: index[other] for one, (other, _) in said.items()}
+
+
+def _choose(name: str | None, known: dict[str, Any]) -> str | None:
+    """The name given or, where none is, the only one there is; None where neither is known."""
+    if name is not None:
+        return name if name in known else None
+    return next(iter(known)) if len(known) == 1 else None
+
+
+def _look_up(document: Document, item: Hung, key: str, table: str, known: dict[str, Any]) -> str | None:
+    """The name of a fiber's type, valve or driver, or None with the fault noted."""
+    name = item.values[key]
+    found = _choose(name, known)
+    if found is not None:
+        return found
+    listed = f"one of {say_names(known)}" if known else ""
+    add = f"add a table [{table}.{name or 'NAME'}]"
+    if name is None:
+        document.at_key(
+            item.path, f"{item.name} has no {key}", listed, add if not known else f'add: {key} = "{next(iter(known))}"'
+        )
+        return None
+    hint = nearest(name, known)
+    document.at_value((*item.path, key), f"no [{table}.{name}]", "" if hint else listed, hint or (add if not known else ""))
+    return None
+
+
+def _fiber(document: Document, item: Hung, stock: Stock, mirror: int | None) -> Fiber | None:
+    """The fiber itself, or None with the faults noted."""
+    values = item.values
+    kind = _look_up(document, item, "type", "fiber_type", stock.types)
+    valve = _look_up(document, item, "valve", "valve_type", stock.valves)
+    driver = _look_up(document, item, "driver", "driver", stock.drivers)
+    length = math.hypot(*values["toward"])
+    if length < 1e-9:
+        document.at_value((*item.path, "toward"), "toward has no direction", "three numbers that are not all zero")
+    type_ = stock.types.get(kind) if kind else None
+    if stock.worn:
+        _check_worn(document, item, type_)
+    valve_type = stock.valves.get(valve) if valve else None
+    if type_ is None or valve_type is None or driver is None or stock.supply is None or length < 1e-9:
+        return None
+    mounting = Mounting(
+        valve=valve_type,
+        supply=stock.supply,
+        tube_bore_mm=values["tube_bore_mm"],
+        tube_length_mm=values["tube_length_mm"],
+        load_N=values["load_N"],
+        bundle=values["bundle"],
+        series=values["series"],
+    )
+    _check_make(document, item, type_, mounting)
+    x, y, z = (round(part / length, 12) + 0.0 for part in values["toward"])
+    return Fiber(
+        name=item.name,
+        type=type_,
+        mounting=mounting,
+        driver=driver,
+        channel=item.channel,
+        at_m=item.at_m,
+        toward=(x, y, z),
+        mirror=mirror,
+        max_hold_s=values["max_hold_s"],
+        line=document.line(item.path),
+    )
+
+
+def _check_worn(document: Document, item: Hung, kind: FiberType | None) -> None:
+    """What a fiber on a person's body must have."""
+    if not item.values["max_hold_s"] > 0.0:
+        path, found = (*item.path, "max_hold_s"), "is worn and has no max_hold_s"
+        note = document.at_value if path in document.places else document.at_key
+        note(
+            path,
+            f"{_title(item)} {found}",
+            "a number above 0 (s)",
+            "the rig says worn = true: every fiber needs a longest hold",
+        )
+    if kind is not None and getattr(kind.make, "max_pressure_kPa", None) is None:
+        hint = "the rig says worn = true: every type needs a greatest pressure"
+        document.at_key(
+            ("fiber_type", kind.name), f"fiber_type '{kind.name}' is worn and has no max_pressure_kPa", "a number (kPa)", hint
+        )
+
+
+def _title(item: Hung) -> str:
+    """A fiber or a row of them, for a message about both."""
+    return item.name if item.path[0] == "fiber" else f"the row '{item.values['name']}'"
+
+
+def _check_make(document: Document, item: Hung, kind: FiberType, mounting: Mounting) -> None:
+    """What cannot be about the fiber as mounted, at the key that its kind says to change."""
+    homes: list[tuple[Path, Any]] = [
+        (item.path, (*FIBER.keys, *FIBERS.keys)),
+        (("valve_type", mounting.valve.name), VALVE_TYPE.keys),
+        (("supply",), SUPPLY.keys),
+    ]
+    for key, found, expected in KINDS[kind.kind].problems(kind.make, mounting):
+        of_type = ("fiber_type", kind.name)
+        own = next((path for path, keys in homes if any(key == known.name for known in keys)), of_type)
+        note = document.at_value if (*own, key) in document.places else document.at_key
+        note((*own, key), f"{item.name}: {found}", expected, f"fiber_type '{kind.name}', key {key}")
