@@ -5,6 +5,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from composer.fiber.rates import Physics
+
 Array = NDArray[np.float64]
 
 
@@ -21,6 +23,7 @@ class Capability:
     air_L: (n,) litres of free air (ANR) drawn in filling from rest to each strain, all of a bundle together
     force_N: force at rest at full pressure net of friction, None for a rated fiber
     held_below, held_above: strains below (above) which the exhaust (fill) rate was held at its value there
+    physics: what a modelled fiber moves by, None for a rated one
     """
 
     stroke: float
@@ -35,3 +38,4 @@ class Capability:
     force_N: float | None
     held_below: float = 0.0
     held_above: float = float("inf")
+    physics: Physics | None = None
