@@ -112,19 +112,51 @@ def cells(abilities: Abilities, fiber: Index, strain: Array) -> Index:
     return _cell(tables.stroke_key, tables.points, capability, share)
 
 
-def rates(abilities: Abilities, fiber: Index, strain: Array, rising: NDArray[np.bool_]) -> Array:
+def rates(abilities: Abilities, fiber: Index, strain: Array, rising: NDArray[np.bool_], cell: Index | None = None) -> Array:
     """The fastest rate in 1/s of each fiber at each strain, filling where `rising`, exhausting elsewhere; any one shape.
 
-    Beyond a table's ends its end value holds.
+    Beyond a table's ends its end value holds. cell: what `cells` gave for these strains, where that is known already.
     """
     tables = tables_of(abilities)
-    capability = abilities.which[fiber]
-    first = capability * tables.points
-    at = cells(abilities, fiber, strain)
+    first = abilities.which[fiber] * tables.points
+    at = cells(abilities, fiber, strain) if cell is None else cell
     held = np.clip(strain, tables.fill.strain[first], tables.fill.strain[first + tables.points - 1]) - tables.fill.strain[at]
     up = tables.fill.rate[at] + tables.fill.slope[at] * held
     down = tables.exhaust.rate[at] + tables.exhaust.slope[at] * held
     return np.where(rising, up, down)
+
+
+def slowest_rates(abilities: Abilities, fiber: Index, low: Array, high: Array) -> tuple[Array, Array]:
+    """The least fill and the least exhaust rate in 1/s anywhere between two strains, low to high, (K,) each, exact.
+
+    A rate that is linear in pieces is least at an end or at a point of its table between them; the least over any run of
+    points is the lesser of two runs of a power of two, which are worked out once.
+    """
+    first, last = cells(abilities, fiber, low) + 1, cells(abilities, fiber, high)
+    some = last >= first
+    level = np.where(some, np.frexp(np.maximum(last - first + 1, 1))[1] - 1, 0)
+    least = []
+    for rising, runs in zip((True, False), _least_of_runs(abilities), strict=True):
+        way = np.full(len(low), rising)
+        ends = np.minimum(rates(abilities, fiber, low, way), rates(abilities, fiber, high, way))
+        begin, end = np.where(some, first, 0), np.where(some, last - (1 << level) + 1, 0)
+        between = np.minimum(runs[level, begin], runs[level, end])
+        least.append(np.where(some, np.minimum(ends, between), ends))
+    return least[0], least[1]
+
+
+@lru_cache(maxsize=8)
+def _least_of_runs(abilities: Abilities) -> tuple[Array, Array]:
+    """For fill and exhaust, the least rate of the 2^level points from each point on: (levels, A * n)."""
+    tables = tables_of(abilities)
+    both = []
+    for way in (tables.fill, tables.exhaust):
+        runs = [way.rate]
+        while (half := 1 << (len(runs) - 1)) < tables.points:
+            ahead = np.concatenate([runs[-1][half:], np.full(half, np.inf)])
+            runs.append(np.minimum(runs[-1], ahead))
+        both.append(np.array(runs))
+    return both[0], both[1]
 
 
 def travel_time_s(abilities: Abilities, fiber: ArrayLike, a: ArrayLike, b: ArrayLike) -> Array:
