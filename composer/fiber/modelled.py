@@ -96,7 +96,7 @@ def problems(make: Make | Bending | Coiling, mounting: Mounting) -> list[tuple[s
             (
                 "load_N",
                 f"a load of {load:g} N needs {start / 1e3:.4g} kPa to begin to move, and {gets}",
-                f"less than {lifts * mounting.bundle:.3g} N, more pressure, or a bundle of {math.ceil(load / lifts) + 1}",
+                f"less than {lifts * mounting.bundle:.3g} N, more pressure, or a bundle of {math.floor(load / lifts) + 1}",
             )
         ]
     return [("pressure_kPa", f"no stroke is left: {gets}", "a supply that moves the fiber by more than 0.01 % of its length")]
