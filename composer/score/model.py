@@ -14,6 +14,10 @@ class Span:
     end: int
 
 
+Spans = tuple[tuple[str, Span], ...]
+"""The spans of a statement's own numbers, names and words, by what they are; `composer.score.spans` looks them up."""
+
+
 @dataclass(frozen=True, slots=True)
 class Duration:
     """A length of time: `value` in `unit` "counts", "s" or "bars"."""
@@ -49,6 +53,7 @@ class Quiver:
     hertz: Fraction
     by: Target
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,6 +67,7 @@ class Line:
     controls: tuple[Target, ...]
     quiver: Quiver | None
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,6 +78,7 @@ class Phrase:
     length: Duration | None
     lines: tuple[Line, ...]
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,6 +96,7 @@ class Repeat:
     times: int
     every: Duration | None
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -98,6 +106,7 @@ class Canon:
     delay: Duration
     origin: str
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,6 +116,7 @@ class Ripple:
     speed: Fraction
     axis: int
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -116,6 +126,7 @@ class Scatter:
     within: Duration
     seed: int
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -140,6 +151,7 @@ class Entry:
     add: bool
     firm: Fraction
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,6 +165,7 @@ class Section:
     firm: Fraction
     entries: tuple[Entry, ...]
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -163,6 +176,7 @@ class Meter:
     note: int
     at: Place | None
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -174,6 +188,7 @@ class Tempo:
     at: Place | None
     until: Place | None
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -183,6 +198,7 @@ class Group:
     name: str
     members: tuple[Name, ...]
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -194,6 +210,7 @@ class Pin:
     until: Place | None
     within: Duration | None
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -204,6 +221,7 @@ class Cue:
     at: Place
     wait: bool
     span: Span
+    spans: Spans = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -223,3 +241,4 @@ class Score:
     sections: tuple[Section, ...]
     lines: dict[str, tuple[str, ...]]
     """The text of each file, by name as in spans, a line each: for messages."""
+    spans: Spans = ()

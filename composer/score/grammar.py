@@ -1,0 +1,115 @@
+"""One line of a score through the grammar: a tree of tokens, or what is wrong with it in a reader's words."""
+
+import re
+from collections.abc import Iterable
+from dataclasses import dataclass
+from functools import cache, lru_cache
+from importlib.resources import files
+
+from lark import Lark, Tree
+from lark.exceptions import UnexpectedInput
+
+from composer.faults import nearest
+from composer.score.words import FAMILIES, KEYWORDS, SAMPLES, TARGETS
+
+STARTS = ("statement", "move", "entry")
+
+_WORD = re.compile(r'"[^"]*"?|,|=|[^\s,="]+')
+
+
+@dataclass(frozen=True, slots=True)
+class Misfit:
+    """Where a line stops making sense: column from 1, width, what stands there, what could, the nearest word."""
+
+    column: int
+    width: int
+    found: str
+    expected: str
+    hint: str
+
+
+@cache
+def _grammar() -> Lark:
+    """The parser's tables, built once a process."""
+    text = files("composer.score").joinpath("grammar.lark").read_text(encoding="utf-8")
+    return Lark(text, parser="lalr", lexer="contextual", start=list(STARTS), maybe_placeholders=False)
+
+
+@lru_cache(maxsize=16384)
+def parse_line(start: str, body: str) -> Tree | Misfit:
+    """Parse one line without its comment; remembered by its text, so that a keystroke costs one line."""
+    try:
+        return _grammar().parse(body, start=start)
+    except UnexpectedInput:
+        return _misfit(start, body)
+
+
+def body_of(text: str) -> str:
+    """A line without its comment and trailing space: `#` inside quotes is no comment."""
+    for match in re.finditer(r'"[^"]*"?|#', text):
+        if match.group() == "#":
+            return text[: match.start()].rstrip()
+    return text.rstrip()
+
+
+def _misfit(start: str, body: str) -> Misfit:
+    """Parse again, a token at a time, and ask the parser what it could have taken where it stopped."""
+    parser = _grammar().parse_interactive(body, start=start)
+    at = len(body)
+    try:
+        for token in parser.lexer_thread.lex(parser.parser_state):
+            at = token.start_pos
+            parser.feed_token(token)
+            at = len(body)
+    except UnexpectedInput as stop:
+        if at == len(body):
+            at = stop.pos_in_stream
+    accepts = parser.accepts()
+    match = _WORD.match(body, at)
+    if at >= len(body):
+        return Misfit(len(body) + 1, 1, "the line ends here", tell(accepts), "")
+    word = match.group() if match else body[at]
+    return Misfit(at + 1, len(word), _found(word), tell(accepts), _hint(word, accepts))
+
+
+def _found(word: str) -> str:
+    shown = word if len(word) <= 40 else word[:39] + "…"
+    if not word.isprintable():
+        return f"character U+{ord(next(c for c in word if not c.isprintable())):04X} cannot stand in a score"
+    if word[0].isalpha() and word not in KEYWORDS:
+        return f"unknown word '{shown}'"
+    return f"'{shown}' cannot stand here"
+
+
+def tell(accepts: Iterable[str]) -> str:
+    """What could stand at a place, in a reader's words, from the grammar's tokens."""
+    tokens = set(accepts)
+    words = {token.lower() for token in tokens if token not in SAMPLES}
+    parts = [SAMPLES[token] for token in SAMPLES if token in tokens and token != "$END"]
+    if "TARGET" in tokens:
+        words -= set(TARGETS)
+    for name, family in FAMILIES:
+        if set(family) <= words:
+            parts.append(f"{name} ({', '.join(family)})")
+            words -= set(family)
+    parts += [f"'{word}'" for word in sorted(words)]
+    if "$END" in tokens:
+        parts.append(SAMPLES["$END"])
+    return " or ".join([", ".join(parts[:-1]), parts[-1]] if len(parts) > 1 else parts)
+
+
+def _hint(word: str, accepts: Iterable[str]) -> str:
+    words = [token.lower() for token in accepts if token not in SAMPLES]
+    if word.lower() in words:
+        return f"write '{word.lower()}' in small letters"
+    if word.startswith('"') and (len(word) == 1 or not word.endswith('"')):
+        return "the quotes are not closed"
+    if any(c in "“”„«»‘’" for c in word):
+        return 'write straight quotes: "'
+    if any(c in "−–—" for c in word):
+        return "write a plain minus: -"
+    if re.fullmatch(r"\.[0-9]+\D*", word):
+        return f"write 0{word}"
+    if re.fullmatch(r"[0-9]+,[0-9]+.*", word):
+        return "write a point, not a comma, in a decimal"
+    return nearest(word.lower(), words)
