@@ -8,7 +8,10 @@ from typing import Any
 
 from composer.faults import Fault, Faults, Where
 from composer.rig.lines import Path, Place, Spot, find_places
-from composer.rig.schema import MOST_BYTES, MOST_LINE
+from composer.rig.schema import MOST_BYTES, MOST_DOTS, MOST_FAULTS, MOST_LINE
+from composer.rig.syntax import syntax_fault
+
+_CHAIN = re.compile(rf"""(?<![\w-])(?:(?:[\w-]+|"[^"]*"|'[^']*')[ \t]*\.[ \t]*){{{MOST_DOTS}}}""")
 
 
 @dataclass(slots=True)
@@ -38,17 +41,27 @@ class Document:
 
     def at_key(self, path: Path, found: str, expected: str = "", hint: str = "") -> None:
         """Add a fault at the key, or at the header of a table."""
-        self.faults.append(Fault(self.where(self.place(path).key), found, expected, hint))
+        self._add(Fault(self.where(self.place(path).key), found, expected, hint))
 
     def at_value(self, path: Path, found: str, expected: str = "", hint: str = "") -> None:
         """Add a fault at the value."""
-        self.faults.append(Fault(self.where(self.place(path).value), found, expected, hint))
+        self._add(Fault(self.where(self.place(path).value), found, expected, hint))
+
+    def _add(self, fault: Fault) -> None:
+        """Keep a fault; too many are enough to stop, since nobody reads them and hints take time."""
+        self.faults.append(fault)
+        if len(self.faults) >= MOST_FAULTS:
+            self.faults = list(dict.fromkeys(self.faults))
+        if len(self.faults) >= MOST_FAULTS:
+            self.faults.append(Fault(Where(self.file), f"{MOST_FAULTS} faults so far; the rest is not looked at"))
+            self.raise_faults()
 
     def raise_faults(self) -> None:
         """Raise all faults so far, in the file's order, each said once."""
         if self.faults:
-            once = dict.fromkeys(self.faults)
-            raise Faults(sorted(once, key=lambda f: (f.where.line, f.where.column)))
+            once = list(dict.fromkeys(self.faults))
+            last = once[MOST_FAULTS:]
+            raise Faults(sorted(once[:MOST_FAULTS], key=lambda f: (f.where.line, f.where.column)) + last)
 
 
 def open_document(text: str, file: str) -> Document:
@@ -62,71 +75,18 @@ def open_document(text: str, file: str) -> Document:
             where = Where(file, number, MOST_LINE + 1, 1, line)
             hint = "a list may run over several lines"
             raise Faults([Fault(where, f"a line of {len(line)} characters", f"at most {MOST_LINE} in a line", hint)])
+        # The TOML reader takes time with the square of a key's parts.
+        if line.count(".") >= MOST_DOTS and _CHAIN.search(line):
+            raise Faults([Fault(Where(file, number, 0, 1, line), f"a key of more than {MOST_DOTS} parts", "a name")])
     try:
         values = tomllib.loads(text)
         return Document(file, lines, values, find_places("\n".join(lines)))
     except RecursionError:
         raise Faults(
-            [Fault(Where(file), "lists or tables within one another, too deep to read", "no more than one list in another")]
+            [Fault(Where(file), "lists or tables within one another, too deep to read", "lists of numbers or names")]
         ) from None
     except ValueError as error:
-        raise Faults([_syntax_fault(str(error), file, lines)]) from None
-
-
-_POSITION = re.compile(r"^(.*?) \(at (?:line (\d+), column (\d+)|end of document)\)$", re.DOTALL)
-
-_SAID: tuple[tuple[str, str, str, str], ...] = (
-    ("Cannot overwrite a value", "this key is given twice in its table", "", "take one of them out"),
-    ("Duplicate inline table key", "this key is given twice in its table", "", "take one of them out"),
-    (
-        "Cannot declare",
-        "this table is here a second time",
-        "",
-        "write all its keys under one header; every name may be used once",
-    ),
-    ("Cannot mutate immutable namespace", "this table was closed before", "", "write all its keys in one place"),
-    ("Cannot redefine namespace", "this table is here a second time", "", "write all its keys under one header"),
-    ("Expected '=' after a key", "no '=' after the key", "KEY = VALUE", ""),
-    ("Invalid statement", "this is no key, table or comment", "KEY = VALUE, [TABLE], [[TABLE]] or # comment", ""),
-    (
-        "Invalid initial character for a key",
-        "no key begins like this",
-        "letters, digits, '_' or '-'",
-        "put other names in quotes",
-    ),
-    ("Invalid value", "this is no value", 'a number, true, false, a "text" in quotes, or a [list]', ""),
-    ("Expected newline or end of document", "something more after the value", "one KEY = VALUE in a line", ""),
-    ("Unclosed array", "the list is not closed", "a ',' or a ']'", ""),
-    ("Unclosed inline table", "the table in braces is not closed", "a ',' or a '}'", ""),
-    ("Unterminated string", "the text has no closing quote", "", ""),
-    ("Expected ']' at the end of a table declaration", "the table's header has no ']'", "[TABLE]", ""),
-    ("Expected ']]' at the end of an array declaration", "the table's header has no ']]'", "[[TABLE]]", ""),
-    ("Illegal character '\\n'", "the text runs past the end of its line", "a closing quote", ""),
-)
-"""What tomllib says, by its first words: what was found, what was expected, what to do."""
-
-
-def _syntax_fault(said: str, file: str, lines: list[str]) -> Fault:
-    """What tomllib said, at its line and column, in our words where there are some."""
-    parts = _POSITION.match(said)
-    message = parts[1] if parts else said
-    if parts and parts[2]:
-        line, column = min(int(parts[2]), len(lines)), int(parts[3])
-    else:
-        line = next((n for n in range(len(lines), 0, -1) if lines[n - 1].strip()), 1)
-        column = len(lines[line - 1]) + 1
-    text = lines[line - 1]
-    if message.startswith("Cannot overwrite a value") or message.startswith("Duplicate inline"):
-        # tomllib stands behind the value; the key is what the person wrote twice.
-        column = len(text) - len(text.lstrip()) + 1 if "{" not in text else column
-    width = 1
-    if text.lstrip().startswith("[") and message.startswith("Cannot declare"):
-        column, width = len(text) - len(text.lstrip()) + 1, max(1, len(text.split("#")[0].strip()))
-    where = Where(file, line, min(column, len(text) + 1), width, text)
-    for start, found, expected, hint in _SAID:
-        if message.startswith(start):
-            return Fault(where, found, expected, hint)
-    return Fault(where, message[:1].lower() + message[1:])
+        raise Faults([syntax_fault(str(error), file, lines)]) from None
 
 
 def say_value(value: Any) -> str:

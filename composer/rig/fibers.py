@@ -11,7 +11,7 @@ from composer.fiber.mounting import Mounting, Supply, Valve
 from composer.rig.document import Document, say_names, say_value
 from composer.rig.lines import Path
 from composer.rig.model import Driver, Fiber, FiberType
-from composer.rig.schema import FIBER, FIBERS, LONGEST_NAME, MOST_FIBERS, NAME_RULE, SUPPLY, VALVE_TYPE
+from composer.rig.schema import FIBER, FIBERS, HANGING, LONGEST_NAME, MOST_FIBERS, NAME_RULE, SUPPLY, VALVE_TYPE
 from composer.rig.values import read_table
 
 _NAME = re.compile(r"[^\W\d_][\w.-]*")
@@ -30,6 +30,15 @@ class Stock:
     supply: Supply | None
     worn: bool
 
+    @property
+    def tables(self) -> dict[str, tuple[str, dict[str, Any]]]:
+        """The key of a fiber that names each, with the table and what is in it."""
+        return {
+            "type": ("fiber_type", self.types),
+            "valve": ("valve_type", self.valves),
+            "driver": ("driver", self.drivers),
+        }
+
 
 @dataclass(slots=True)
 class Hung:
@@ -41,6 +50,14 @@ class Hung:
     at_m: tuple[float, float, float]
     mirror: str | None
     values: dict[str, Any]
+
+
+@dataclass(slots=True)
+class Fibers:
+    """The fibers as written; `known` False where a table's faults keep back what fibers there would be."""
+
+    hung: list[Hung]
+    known: bool = True
 
 
 def good_name(name: str) -> bool:
@@ -58,20 +75,19 @@ def check_name(document: Document, path: Path, name: str, *, at_key: bool = Fals
     return False
 
 
-def read_fibers(document: Document, stock: Stock) -> tuple[list[Hung], tuple[Fiber, ...]]:
-    """All fibers in the file's order, as written and as they are; the latter empty if there are faults."""
-    hung = _rows(document)
-    if hung is None:
-        return [], ()
-    _check_names(document, hung)
-    _check_channels(document, hung, stock)
-    mirrors = _mirrors(document, hung)
-    fibers = [_fiber(document, item, stock, mirrors.get(item.name)) for item in hung]
-    return hung, tuple(fiber for fiber in fibers if fiber is not None)
+def read_fibers(document: Document, stock: Stock) -> tuple[Fibers, tuple[Fiber, ...]]:
+    """All fibers in the file's order, as written and as they are; the latter lacks those that have faults."""
+    found = _rows(document, stock)
+    _check_names(document, found.hung)
+    _check_channels(document, found.hung, stock)
+    mirrors = _mirrors(document, found)
+    fibers = [_fiber(document, item, stock, mirrors.get(item.name)) for item in found.hung]
+    _check_makes(document, found.hung, fibers)
+    return found, tuple(fiber for fiber in fibers if fiber is not None)
 
 
-def _rows(document: Document) -> list[Hung] | None:
-    """Every table of fibers, rows spread out, in the order of their lines; None where they are too many."""
+def _rows(document: Document, stock: Stock) -> Fibers:
+    """Every table of fibers, rows spread out, in the order of their lines."""
     tables: list[tuple[int, Path, Any, Any]] = []
     for table in (FIBER, FIBERS):
         written = document.values.get(table.name, [])
@@ -85,19 +101,34 @@ def _rows(document: Document) -> list[Hung] | None:
     tables.sort(key=lambda item: (item[0], document.place(item[1]).key.column))
     if not tables:
         document.faults or document.at_key((), "the rig has no fibers", "at least one [[fiber]] or [[fibers]]")
-    hung: list[Hung] = []
+    found = Fibers([])
     for _, path, row, table in tables:
         what = f"[[{table.name}]]"
         if isinstance(row, dict) and isinstance(row.get("name"), str) and row["name"].strip():
             what += f" {say_value(row['name'])}"
         values = read_table(document, path, row, table.keys, what)
-        if values is None or not check_name(document, (*path, "name"), values["name"]):
-            continue
-        hung += [_single(path, values)] if table is FIBER else _spread(path, values)
-        if len(hung) > MOST_FIBERS:
+        if values is None:
+            found.known = False
+            _look_up_names(document, stock, path, row)
+        elif check_name(document, (*path, "name"), values["name"]):
+            found.hung += [_single(path, values)] if table is FIBER else _spread(path, values)
+        else:
+            found.known = False
+        if len(found.hung) > MOST_FIBERS:
             document.at_key(path, f"more than {MOST_FIBERS} fibers", f"at most {MOST_FIBERS} in a rig")
-            return None
-    return hung
+            return Fibers([], known=False)
+    return found
+
+
+def _look_up_names(document: Document, stock: Stock, path: Path, row: Any) -> None:
+    """Look up the names in a table that has other faults, so that all of them are said at once."""
+    for key, (table, known) in stock.tables.items():
+        name = row.get(key) if isinstance(row, dict) else None
+        if isinstance(name, str) and name.strip() and name not in known:
+            _no_such(document, (*path, key), name, table, known)
+    name = row.get("name") if isinstance(row, dict) else None
+    if isinstance(name, str) and name.strip():
+        check_name(document, (*path, "name"), name)
 
 
 def _single(path: Path, values: dict[str, Any]) -> Hung:
@@ -159,16 +190,17 @@ def _check_channels(document: Document, hung: list[Hung], stock: Stock) -> None:
             blamed.add((item.path, other.path))
             used = {channel for board, channel in seen if board == driver}
             free = next(n for n in range(len(used) + 1) if n not in used)
-            found = f"{item.name} is on channel {item.channel} of driver '{driver}', and so is {other.name} (line {document.line(other.path)})"
+            both = f"{item.name} and {other.name} (line {document.line(other.path)})"
+            found = f"{both} are both on channel {item.channel} of driver '{driver}'"
             document.at_value(key, found, "a channel of its own for every fiber", f"the first free channel is {free}")
 
 
-def _mirrors(document: Document, hung: list[Hung]) -> dict[str, int]:
+def _mirrors(document: Document, found: Fibers) -> dict[str, int]:
     """The index of each fiber's partner; said of one fiber, it holds for both, and the two must not disagree."""
-    index = {item.name: n for n, item in enumerate(hung)}
+    index = {item.name: n for n, item in enumerate(found.hung)}
     said: dict[str, tuple[str, Hung]] = {}
-    for item in hung:
-        if item.mirror is None:
+    for item in found.hung:
+        if item.mirror is None or (item.mirror not in index and not found.known):
             continue
         key = (*item.path, "mirror" if item.path[0] == "fiber" else "mirrored")
         if item.mirror not in index:
@@ -193,30 +225,32 @@ def _choose(name: str | None, known: dict[str, Any]) -> str | None:
     return next(iter(known)) if len(known) == 1 else None
 
 
-def _look_up(document: Document, item: Hung, key: str, table: str, known: dict[str, Any]) -> str | None:
+def _look_up(document: Document, item: Hung, key: str, stock: Stock) -> str | None:
     """The name of a fiber's type, valve or driver, or None with the fault noted."""
+    table, known = stock.tables[key]
     name = item.values[key]
     found = _choose(name, known)
-    if found is not None:
-        return found
-    listed = f"one of {say_names(known)}" if known else ""
-    add = f"add a table [{table}.{name or 'NAME'}]"
-    if name is None:
-        document.at_key(
-            item.path, f"{item.name} has no {key}", listed, add if not known else f'add: {key} = "{next(iter(known))}"'
-        )
-        return None
-    hint = nearest(name, known)
-    document.at_value((*item.path, key), f"no [{table}.{name}]", "" if hint else listed, hint or (add if not known else ""))
-    return None
+    if found is None and name is not None:
+        _no_such(document, (*item.path, key), name, table, known)
+    elif found is None:
+        listed = f"one of {say_names(known)}" if known else ""
+        hint = f'add: {key} = "{next(iter(known))}"' if known else f"add a table [{table}.NAME]"
+        document.at_key(item.path, f"{_title(item)} has no {key}", listed, hint)
+    return found
+
+
+def _no_such(document: Document, path: Path, name: str, table: str, known: dict[str, Any]) -> None:
+    """The fault of a name that no table has."""
+    hint = nearest(name, known) or ("" if known else f"add a table [{table}.{name}]")
+    document.at_value(path, f"no [{table}.{name}]", "" if hint else f"one of {say_names(known)}", hint)
 
 
 def _fiber(document: Document, item: Hung, stock: Stock, mirror: int | None) -> Fiber | None:
     """The fiber itself, or None with the faults noted."""
     values = item.values
-    kind = _look_up(document, item, "type", "fiber_type", stock.types)
-    valve = _look_up(document, item, "valve", "valve_type", stock.valves)
-    driver = _look_up(document, item, "driver", "driver", stock.drivers)
+    kind = _look_up(document, item, "type", stock)
+    valve = _look_up(document, item, "valve", stock)
+    driver = _look_up(document, item, "driver", stock)
     length = math.hypot(*values["toward"])
     if length < 1e-9:
         document.at_value((*item.path, "toward"), "toward has no direction", "three numbers that are not all zero")
@@ -235,7 +269,6 @@ def _fiber(document: Document, item: Hung, stock: Stock, mirror: int | None) -> 
         bundle=values["bundle"],
         series=values["series"],
     )
-    _check_make(document, item, type_, mounting)
     x, y, z = (round(part / length, 12) + 0.0 for part in values["toward"])
     return Fiber(
         name=item.name,
@@ -274,15 +307,26 @@ def _title(item: Hung) -> str:
     return item.name if item.path[0] == "fiber" else f"the row '{item.values['name']}'"
 
 
-def _check_make(document: Document, item: Hung, kind: FiberType, mounting: Mounting) -> None:
-    """What cannot be about the fiber as mounted, at the key that its kind says to change."""
-    homes: list[tuple[Path, Any]] = [
-        (item.path, (*FIBER.keys, *FIBERS.keys)),
-        (("valve_type", mounting.valve.name), VALVE_TYPE.keys),
-        (("supply",), SUPPLY.keys),
-    ]
-    for key, found, expected in KINDS[kind.kind].problems(kind.make, mounting):
-        of_type = ("fiber_type", kind.name)
-        own = next((path for path, keys in homes if any(key == known.name for known in keys)), of_type)
-        note = document.at_value if (*own, key) in document.places else document.at_key
-        note((*own, key), f"{item.name}: {found}", expected, f"fiber_type '{kind.name}', key {key}")
+def _check_makes(document: Document, hung: list[Hung], fibers: list[Fiber | None]) -> None:
+    """What cannot be about a make as mounted, at the key that its kind says to change; once for every table."""
+    seen: dict[tuple[str, Mounting], list[tuple[str, str, str]]] = {}
+    blamed = set()
+    for item, fiber in zip(hung, fibers, strict=True):
+        if fiber is None:
+            continue
+        kind, alike = fiber.type, (fiber.type.name, fiber.mounting)
+        if alike not in seen:
+            seen[alike] = KINDS[kind.kind].problems(kind.make, fiber.mounting)
+        homes: list[tuple[Path, Any]] = [
+            (item.path, HANGING),
+            (("valve_type", fiber.mounting.valve.name), VALVE_TYPE.keys),
+            (("supply",), SUPPLY.keys),
+        ]
+        for key, found, expected in seen[alike]:
+            of_type: Path = ("fiber_type", kind.name)
+            own = next((path for path, keys in homes if any(key == known.name for known in keys)), of_type)
+            if (item.path, key) not in blamed:
+                blamed.add((item.path, key))
+                note = document.at_value if (*own, key) in document.places else document.at_key
+                title = f"'{kind.name}', used by {item.name} (line {fiber.line})" if own == of_type else item.name
+                note((*own, key), f"{title}: {found}", expected)

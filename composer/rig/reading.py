@@ -9,11 +9,11 @@ from composer.fiber.kinds import KINDS
 from composer.fiber.mounting import Supply, Valve
 from composer.rig.canonical import fingerprint
 from composer.rig.document import Document, open_document, say_names, say_value
-from composer.rig.fibers import Hung, Stock, check_name, read_fibers
+from composer.rig.fibers import Fibers, Hung, Stock, check_name, read_fibers
 from composer.rig.lines import Path
 from composer.rig.model import Driver, FiberType, Rig
 from composer.rig.schema import DRIVER, FIBER_TYPE, RIG, SUPPLY, TABLES, VALVE_TYPE, Table, keys_of_type
-from composer.rig.select import Selector, UnknownName
+from composer.rig.select import Circle, Selector, UnknownName
 from composer.rig.values import read_table
 
 
@@ -30,10 +30,10 @@ def read_rig(text: str, file: str) -> Rig:
     types = _fiber_types(document)
     boards = {name: values and Driver(name, values["channels"]) for name, values in _named(document, DRIVER).items()}
     stock = Stock(types, valves, boards or {"main": None}, supply, bool(rig and rig["worn"]))
-    hung, fibers = read_fibers(document, stock)
+    found, fibers = read_fibers(document, stock)
     if not boards:
-        boards = {"main": Driver("main", max((item.channel for item in hung), default=0) + 1)}
-    groups = _group_members(document, hung)
+        boards = {"main": Driver("main", max((item.channel for item in found.hung), default=0) + 1)}
+    groups = _resolve_groups(document, found, _group_members(document, found.hung))
     document.raise_faults()
     assert rig is not None and supply is not None
     made = Rig(
@@ -45,11 +45,9 @@ def read_rig(text: str, file: str) -> Rig:
         valve_types={name: valve for name, valve in valves.items() if valve is not None},
         drivers=tuple(board for board in boards.values() if board is not None),
         fibers=fibers,
-        groups={},
+        groups=groups,
         fingerprint=0,
     )
-    made = replace(made, groups=_resolve_groups(document, made, groups))
-    document.raise_faults()
     return replace(made, fingerprint=fingerprint(made))
 
 
@@ -176,22 +174,25 @@ def _add_group(
 
 
 def _resolve_groups(
-    document: Document, rig: Rig, groups: dict[str, tuple[Path, tuple[str, ...]]]
+    document: Document, fibers: Fibers, groups: dict[str, tuple[Path, tuple[str, ...]]]
 ) -> dict[str, tuple[int, ...]]:
     """The fibers of every group; a member that means none is blamed where it stands."""
-    selector = Selector(rig, {name: members for name, (_, members) in groups.items()})
+    selector = Selector([item.name for item in fibers.hung], {name: members for name, (_, members) in groups.items()})
     found: dict[str, tuple[int, ...]] = {}
+    circles = set()
     for name, (path, members) in groups.items():
         for index, member in enumerate(members):
             try:
                 selector.resolve(member)
+            except Circle as circle:
+                if frozenset(circle.members) not in circles:
+                    circles.add(frozenset(circle.members))
+                    first = min(circle.members, key=lambda group: document.line(groups[group][0]))
+                    document.at_key(groups[first][0], f"no end to the group '{first}'", "", circle.hint)
             except UnknownName as unknown:
-                if unknown.name == member:
-                    said = "no fiber or group" if member not in groups else "no end to group"
-                    document.at_value((*path, index), f"{said} '{member}' in the rig", "", unknown.hint)
-        try:
+                # Members of members are blamed in their own group; and where fibers are not known, nobody is.
+                if unknown.name == member and fibers.known:
+                    document.at_value((*path, index), f"no fiber or group '{member}' in the rig", "", unknown.hint)
+        if not document.faults:
             found[name] = selector.resolve(name)
-        except UnknownName as unknown:
-            if unknown.name == name:
-                document.at_key(path, f"no end to group '{name}'", "", unknown.hint)
     return found

@@ -9,6 +9,8 @@ from composer.keys import Key
 
 MOST_BYTES = 4 << 20
 MOST_LINE = 4096
+MOST_DOTS = 64
+MOST_FAULTS = 100
 MOST_FIBERS = 4096
 MOST_CHANNELS = 4096
 LONGEST_NAME = 64
@@ -19,7 +21,7 @@ NAME_RULE = "a name of letters, digits, '_', '-' and '.' that begins with a lett
 
 @dataclass(frozen=True, slots=True)
 class Table:
-    """A table of the file: `form` "one" for [NAME], "named" for [NAME.any], "rows" for [[NAME]]; `keys` in the manual's order."""
+    """A table of the file: `form` "one" for [NAME], "named" for [NAME.any], "rows" for [[NAME]]."""
 
     name: str
     form: Literal["one", "named", "rows"]

@@ -1,7 +1,7 @@
 """Which fibers a name means: a fiber, a group, a range such as reed.1-8, a wildcard such as reed.*."""
 
 import re
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 
 from composer.faults import nearest
 from composer.rig.model import Rig
@@ -19,14 +19,23 @@ class UnknownName(Exception):
         super().__init__(f"no fiber or group '{name}'" + (f"; {hint}" if hint else ""))
 
 
+class Circle(UnknownName):
+    """A group that has no end: `members` are the groups that lead back into one another, or ever deeper."""
+
+    def __init__(self, name: str, hint: str, members: tuple[str, ...]):
+        super().__init__(name, hint)
+        self.members = members
+
+
 class Selector:
     """Looks names up in a rig and in further groups, those of a score; each name is worked out once."""
 
-    def __init__(self, rig: Rig, groups: Mapping[str, tuple[str, ...]]):
-        self._names = tuple(fiber.name for fiber in rig.fibers)
+    def __init__(self, rig: Rig | Sequence[str], groups: Mapping[str, tuple[str, ...]]):
+        """Of a rig, or of the names of its fibers while it is being read."""
+        self._names = tuple(fiber.name for fiber in rig.fibers) if isinstance(rig, Rig) else tuple(rig)
         self._index = {name: index for index, name in enumerate(self._names)}
         self._groups = dict(groups)
-        self._known: dict[str, tuple[int, ...]] = dict(rig.groups)
+        self._known: dict[str, tuple[int, ...]] = dict(rig.groups) if isinstance(rig, Rig) else {}
         self._known.update((name, (index,)) for name, index in self._index.items())
         self._open: list[str] = []
 
@@ -46,10 +55,10 @@ class Selector:
     def _group(self, name: str) -> tuple[int, ...]:
         """The fibers of a further group, all members together."""
         if name in self._open:
-            circle = " -> ".join([*self._open[self._open.index(name) :], name])
-            raise UnknownName(name, f"the group is a member of itself: {circle}")
+            circle = self._open[self._open.index(name) :]
+            raise Circle(name, "the group is a member of itself: " + " -> ".join([*circle, name]), tuple(circle))
         if len(self._open) >= _DEEPEST:
-            raise UnknownName(name, f"groups within groups, more than {_DEEPEST} deep")
+            raise Circle(name, f"groups within groups, more than {_DEEPEST} deep", tuple(self._open))
         self._open.append(name)
         try:
             return tuple(sorted({index for member in self._groups[name] for index in self.resolve(member)}))
