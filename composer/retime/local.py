@@ -1,0 +1,102 @@
+"""Solving only where something must move: a programme round the snags, grown until nothing outside it is broken.
+
+What is solved is the whole programme less the rows that it leaves out, so its value is a lower bound on the whole at
+every step; once no row left out is broken, the solution joined with all that stands still is the optimum of the whole,
+and the rows' dual values, none on a row left out, prove it.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.retime.events import Events
+from composer.retime.programme import solve
+from composer.retime.rows import Rows
+from composer.retime.terms import Terms, contract, cost, spread
+
+Array = NDArray[np.float64]
+Flags = NDArray[np.bool_]
+
+BROKEN_S = 1e-10
+"""A row short by no more than this is kept; the polish makes it exact."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Least:
+    """A retiming of least cost: shift_s (N,); cost and bound in stroke-seconds; dual (M,) of each row; free (N,) as grown."""
+
+    shift_s: Array
+    cost: float
+    bound: float
+    dual: Array
+    free: Flags
+
+
+def least_cost(
+    events: Events, rows: Rows, terms: Terms, free: Flags | None = None, whole: bool = False, limit_s: float = np.inf
+) -> Least | None:
+    """The least-cost shifts of all events, or None where no times satisfy the rows.
+
+    free: events to begin with, from an earlier solution; whole: solve the whole at once instead of growing
+    """
+    count = len(events.written_s)
+    free = np.zeros(count, dtype=bool) if free is None else free.copy()
+    free |= whole
+    shift, bound, dual = np.zeros(count), 0.0, np.zeros(len(rows.least))
+    order = np.argsort(events.written_s, kind="stable")
+    solved = not free.any()
+    while True:
+        lack = rows.least - rows.matrix @ shift
+        broken = np.flatnonzero(lack > BROKEN_S)
+        grown = free.copy()
+        grown[rows.matrix[broken].indices] = True
+        if solved and (not len(broken) or (grown == free).all()):
+            return Least(shift, cost(terms, shift), bound, dual, free)
+        free = grown | _near(events, order, rows, broken, lack, _own_shift(terms, shift))
+        following = free[events.hits :] & (terms.behind[events.hits :] >= 0)
+        free[events.own_hit[events.hits :][following]] = True
+        chosen = _inside(rows, free)
+        left = contract(events, terms, free)
+        found = solve(rows, chosen, np.flatnonzero(free), left, limit_s)
+        if found is None:
+            return None
+        shift = np.zeros(count)
+        shift[free] = found.shift_s
+        shift = spread(events, terms, free, left, shift)
+        bound, solved = found.bound, True
+        dual = np.zeros(len(rows.least))
+        dual[chosen] = found.dual
+
+
+def _own_shift(terms: Terms, shift: Array) -> Array:
+    """How far each event is from where its own term wants it, (N,)."""
+    padded = np.append(shift, 0.0)
+    return shift - padded[terms.behind]
+
+
+def _inside(rows: Rows, free: Flags) -> NDArray[np.int64]:
+    """The rows all of whose events are free."""
+    row = np.repeat(np.arange(len(rows.least)), np.diff(rows.matrix.indptr))
+    outside = np.bincount(row[~free[rows.matrix.indices]], minlength=len(rows.least))
+    return np.flatnonzero(outside == 0)
+
+
+def _near(events: Events, order: NDArray[np.int64], rows: Rows, broken: Array, lack: Array, own: Array) -> Flags:
+    """The events that are likely to be met: those in the time that a moved one passes, or that a broken row asks for.
+
+    Only a guess at what the next round would ask for, which saves rounds: any guess ends at the same optimum.
+    """
+    moved = np.flatnonzero(np.abs(own) > BROKEN_S)
+    part = rows.matrix[broken]
+    row = np.repeat(broken, np.diff(part.indptr))
+    reach = np.where(part.data > 0.0, lack[row], -lack[row])
+    at = np.concatenate((events.written_s[moved], events.written_s[part.indices]))
+    to = at + np.concatenate((own[moved], reach))
+    ranked = events.written_s[order]
+    low = np.searchsorted(ranked, np.minimum(at, to), side="left")
+    high = np.searchsorted(ranked, np.maximum(at, to), side="right")
+    edge = np.bincount(low, minlength=len(order) + 1) - np.bincount(high, minlength=len(order) + 1)
+    near = np.zeros(len(order), dtype=bool)
+    near[order] = np.cumsum(edge[:-1]) > 0
+    return near

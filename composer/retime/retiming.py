@@ -1,0 +1,294 @@
+"""Retiming: the least change of times with which a rig can do a score, and what it changed."""
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.limits.duration import least_durations
+from composer.retime.apply import retimed
+from composer.retime.events import Events, events_of, knot_times, with_waits
+from composer.retime.local import Least, least_cost
+from composer.retime.pins import Chain, chains_too_long
+from composer.retime.polish import polish
+from composer.retime.rows import Rows, duration_rows, joined, order_rows, pin_rows
+from composer.retime.shrink import Shrunk, factor_that_fits, scaled
+from composer.retime.terms import all_terms, cost
+from composer.rig.model import Rig
+from composer.tracks import MOVE, STEP, Tracks, fiber_of
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+Flags = NDArray[np.bool_]
+
+KEEPS = ("clock", "rhythm")
+
+SHRINKS = 1000
+"""How many chains `shrink` takes on, one after another, before it gives up."""
+
+
+@dataclass(frozen=True, slots=True)
+class MovedHit:
+    """A hit that moved: its instants, the fibers whose moves land in it, one of those moves (segment) and its line."""
+
+    was_s: float
+    now_s: float
+    fibers: tuple[int, ...]
+    knot: int
+    line: int
+
+
+@dataclass(frozen=True, slots=True)
+class Lead:
+    """A free start that moved against what it keeps: instants, segment and line."""
+
+    fiber: int
+    was_s: float
+    now_s: float
+    knot: int
+    line: int
+
+
+@dataclass(frozen=True, slots=True)
+class ShrunkMove:
+    """A move that went `factor` of its way: where it lands as written, segment and line."""
+
+    fiber: int
+    was_s: float
+    factor: float
+    knot: int
+    line: int
+
+
+@dataclass(frozen=True, slots=True)
+class PinsShort:
+    """Two pins (or the start and a pin) too close: seconds lacking, fibers in the chain, the factor that would fit."""
+
+    from_s: float
+    to_s: float
+    short_s: float
+    fibers: tuple[int, ...]
+    lines: tuple[int, ...]
+    factor: float
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Retiming:
+    """What retiming came to; times in seconds, cost and bound in stroke-seconds (nan where pins leave no answer).
+
+    tracks: the new tracks; those as written where pins are too close
+    bound: proven: no retiming costs less
+    warp_was_s, warp_now_s: the hits' instants as written and retimed, both from 0 on, (H + 1,)
+    """
+
+    keep: str
+    tracks: Tracks
+    hits_moved: tuple[MovedHit, ...]
+    leads: tuple[Lead, ...]
+    shrunk: tuple[ShrunkMove, ...]
+    pins_short: tuple[PinsShort, ...]
+    cost: float
+    bound: float
+    solve_s: float
+    was_s: float
+    warp_was_s: Array
+    warp_now_s: Array
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Programme:
+    """The whole programme of some tracks: prepared tracks, where their knots come from, events, rows, which keep rhythm."""
+
+    tracks: Tracks
+    origin: Index
+    least_s: Array
+    events: Events
+    rows: Rows
+    rhythm: Flags = field(repr=False)
+
+
+def programme_of(
+    tracks: Tracks, abilities: Abilities, pins_s: Array, give_s: Array, firm: Array | None, rhythm: bool | Flags
+) -> Programme:
+    """The programme of tracks; firm and rhythm as `retime` takes them."""
+    prepared, origin = with_waits(tracks)
+    least = durations_to_keep(prepared, abilities)
+    events = events_of(prepared, abilities, least, None if firm is None else firm[origin])
+    rows = joined(
+        [
+            duration_rows(prepared, events, least),
+            order_rows(events),
+            pin_rows(events, pins_s, give_s),
+        ]
+    )
+    return Programme(prepared, origin, least, events, rows, _rhythm_of(events, prepared, origin, rhythm))
+
+
+def durations_to_keep(tracks: Tracks, abilities: Abilities, segments: Index | None = None) -> Array:
+    """Least durations as the programme keeps them: a jump takes no time, and what no time mends keeps what it has."""
+    least = least_durations(tracks, abilities, segments)
+    where = np.arange(len(tracks.time_s)) if segments is None else segments
+    least[tracks.manner[where] == STEP] = 0.0
+    endless = np.flatnonzero(~np.isfinite(least) & (tracks.manner[where] == MOVE))
+    least[endless] = tracks.time_s[where[endless] + 1] - tracks.time_s[where[endless]]
+    return np.where(np.isfinite(least), least, 0.0)
+
+
+def _rhythm_of(events: Events, tracks: Tracks, origin: Index, rhythm: bool | Flags) -> Flags:
+    """(N,) which events keep rhythm; by segment given, a hit does where the greater weight of what lands in it does."""
+    count = len(events.written_s)
+    if isinstance(rhythm, bool | np.bool_):
+        return np.full(count, bool(rhythm))
+    mine = np.asarray(rhythm)[origin]
+    landed = np.flatnonzero(events.arrival)
+    share = np.bincount(events.event[landed], weights=np.where(mine[landed - 1], 1.0, -1.0), minlength=count)[: events.hits]
+    return np.concatenate((share > 0.0, mine[np.flatnonzero(events.free)]))
+
+
+def retime(
+    tracks: Tracks,
+    abilities: Abilities,
+    rig: Rig,
+    pins_s: Array,
+    keep: str = "clock",
+    shrink: bool = False,
+    give_s: Array | None = None,
+    firm: Array | None = None,
+    rhythm: Flags | None = None,
+    whole: bool = False,
+    limit_s: float = np.inf,
+    clock: Callable[[], float] = lambda: 0.0,
+) -> Retiming:
+    """The least change of times after which the rig can do the score.
+
+    pins_s: (P,) instants that must not move, `give_s` (P,) how far each may after all (0 where not given)
+    keep: "clock" (instants) or "rhythm" (the intervals between hits); rhythm (K,) where it differs by segment
+    firm: (K,) how many times as costly each segment is to move
+    whole: solve all at once rather than round the snags (for comparison; the answer costs the same)
+    clock: what says the time in seconds, for `solve_s`; without one that is 0
+    Raises Unsolved where the solver fails or runs past `limit_s`.
+    """
+    began = clock()
+    pins = np.sort(np.asarray(pins_s, dtype=float))
+    give = np.zeros(len(pins)) if give_s is None else np.asarray(give_s, dtype=float)[np.argsort(pins_s, kind="stable")]
+    by_rhythm: bool | Flags = rhythm if rhythm is not None else keep == "rhythm"
+
+    def build(some: Tracks) -> tuple[Programme, list[Chain]]:
+        programme = programme_of(some, abilities, pins, give, firm, by_rhythm)
+        return programme, chains_too_long(programme.events, programme.rows, pins, give) if len(pins) else []
+
+    programme, chains = build(tracks)
+    shrunk: dict[int, Shrunk] = {}
+    tries = 0
+    while chains and shrink and tries < SHRINKS:
+        current, hopeless = programme.tracks, True
+        for chain in chains:
+            factor = factor_that_fits(current, chain, lambda some, k: durations_to_keep(some, abilities, k))
+            tries += 1
+            if factor <= 0.0:
+                continue
+            hopeless = False
+            current = scaled(current, np.array(chain.knots), factor)
+            for k in chain.knots:
+                written = int(programme.origin[k])
+                before = shrunk[written].factor if written in shrunk else 1.0
+                shrunk[written] = Shrunk(int(fiber_of(tracks)[written]), written, before * factor)
+        if hopeless:
+            break
+        tracks = retimed(current, programme.origin, current.time_s, tracks.duration_s)
+        programme, chains = build(tracks)
+    found = (
+        None
+        if chains
+        else least_cost(
+            programme.events, programme.rows, all_terms(programme.events, programme.rhythm), whole=whole, limit_s=limit_s
+        )
+    )
+    short = tuple(_short(chain, programme, abilities) for chain in chains)
+    return _told(programme, tracks, keep, found, shrunk, short, clock() - began)
+
+
+def _short(chain: Chain, programme: Programme, abilities: Abilities) -> PinsShort:
+    fiber = fiber_of(programme.tracks)
+    return PinsShort(
+        chain.from_s,
+        chain.to_s,
+        chain.short_s,
+        tuple(dict.fromkeys(int(fiber[k]) for k in chain.knots)),
+        tuple(dict.fromkeys(int(programme.tracks.line[k]) for k in chain.knots)),
+        factor_that_fits(programme.tracks, chain, lambda some, k: durations_to_keep(some, abilities, k)),
+    )
+
+
+def _told(
+    programme: Programme,
+    tracks: Tracks,
+    keep: str,
+    found: Least | None,
+    shrunk: dict[int, Shrunk],
+    short: tuple[PinsShort, ...],
+    solve_s: float,
+) -> Retiming:
+    """The retiming in the terms of who reads it."""
+    events, prepared, origin = programme.events, programme.tracks, programme.origin
+    terms = all_terms(events, programme.rhythm)
+    hits = events.hits
+    was = np.concatenate(([0.0], events.written_s[:hits]))
+    fiber = fiber_of(prepared)
+    shift = np.zeros(len(events.written_s)) if found is None else polish(events, programme.rows, found.shift_s)
+    now = was + np.concatenate(([0.0], shift[:hits]))
+
+    moved_hits = np.flatnonzero(shift[:hits] != 0.0)
+    landed = np.flatnonzero(events.arrival)
+    landed = landed[np.argsort(events.event[landed], kind="stable")]
+    of_hit = np.searchsorted(events.event[landed], np.arange(hits + 1))
+    told_hits = []
+    for hit in moved_hits.tolist():
+        ends = landed[of_hit[hit] : of_hit[hit + 1]]
+        lines = [int(prepared.line[k - 1]) for k in ends if prepared.line[k - 1] > 0]
+        told_hits.append(
+            MovedHit(
+                float(was[hit + 1]),
+                float(now[hit + 1]),
+                tuple(dict.fromkeys(fiber[ends].tolist())),
+                int(origin[ends[0] - 1]),
+                min(lines, default=0),
+            )
+        )
+    own = shift[hits:] - np.append(shift, 0.0)[terms.behind[hits:]]
+    starts = np.flatnonzero(events.free)
+    leads = [
+        Lead(
+            int(fiber[k]),
+            float(events.written_s[hits + n]),
+            float(events.written_s[hits + n] + shift[hits + n]),
+            int(origin[k]),
+            int(prepared.line[k]),
+        )
+        for n, k in ((n, starts[n]) for n in np.flatnonzero(np.abs(own) > 1e-9))
+    ]
+    last_rhythm = bool(programme.rhythm[hits - 1]) if hits else False
+    duration = tracks.duration_s + (float(shift[hits - 1]) if last_rhythm else 0.0)
+    times = knot_times(events, shift, prepared)
+    new = tracks
+    if found is not None:
+        new = retimed(prepared, origin, times, max(duration, float(times.max(initial=0.0))))
+    return Retiming(
+        keep=keep,
+        tracks=new,
+        hits_moved=tuple(told_hits),
+        leads=tuple(leads),
+        shrunk=tuple(
+            ShrunkMove(one.fiber, float(tracks.time_s[one.knot + 1]), one.factor, one.knot, int(tracks.line[one.knot]))
+            for one in shrunk.values()
+        ),
+        pins_short=short,
+        cost=cost(terms, shift) if found is not None else float("nan"),
+        bound=found.bound if found is not None else float("nan"),
+        solve_s=solve_s,
+        was_s=tracks.duration_s,
+        warp_was_s=was,
+        warp_now_s=now,
+    )

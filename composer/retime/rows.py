@@ -1,0 +1,170 @@
+"""The rows of the programme: what the displacements of the events must satisfy, all of the form `matrix @ shift >= least`."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy import sparse
+
+from composer.retime.events import Events
+from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks, fiber_of
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+MOVE_ROW, HOLD_ROW, ORDER_ROW, PIN_ROW, ABOVE_ROW, DUTY_ROW, AIR_ROW = range(7)
+"""What a row stands for."""
+
+ALREADY = 4e-7
+"""A move that lasts at least this share less than it must is no snag (the checker allows 1e-6 of a rate or acceleration)."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Rows:
+    """M rows over N events.
+
+    matrix: (M, N) csr
+    least: (M,) seconds
+    kind: (M,) one of the kinds above
+    knot: (M,) the segment that a row speaks of, a pin's number for PIN_ROW, -1 for none
+    """
+
+    matrix: sparse.csr_array
+    least: Array
+    kind: NDArray[np.int8]
+    knot: Index
+
+    def short(self, shift_s: Array, allowed_s: float = 1e-9) -> Index:
+        """The rows that displacements (N,) break by more than `allowed_s`."""
+        return np.flatnonzero(self.least - self.matrix @ shift_s > allowed_s)
+
+
+def joined(parts: list[Rows]) -> Rows:
+    """Rows of several parts, one after another."""
+    return Rows(
+        sparse.vstack([part.matrix for part in parts], format="csr"),
+        np.concatenate([part.least for part in parts]),
+        np.concatenate([part.kind for part in parts]),
+        np.concatenate([part.knot for part in parts]),
+    )
+
+
+def differences(events: Events, later: Index, earlier: Index, least: Array, kind: int, knot: Index) -> Rows:
+    """Rows `shift[later] - shift[earlier] >= least`; either may be -1, which stands still."""
+    count = len(later)
+    row = np.arange(count)
+    rows = np.concatenate((row[later >= 0], row[earlier >= 0]))
+    columns = np.concatenate((later[later >= 0], earlier[earlier >= 0]))
+    values = np.concatenate((np.ones(np.count_nonzero(later >= 0)), -np.ones(np.count_nonzero(earlier >= 0))))
+    matrix = sparse.csr_array((values, (rows, columns)), shape=(count, len(events.written_s)))
+    return Rows(matrix, least, np.full(count, kind, dtype=np.int8), knot)
+
+
+def segment_ends(tracks: Tracks) -> Index:
+    """The segments that end: all knots but the last of each fiber."""
+    return np.setdiff1d(np.arange(len(tracks.time_s)), tracks.first[1:] - 1, assume_unique=True)
+
+
+def duration_rows(tracks: Tracks, events: Events, least_s: Array) -> Rows:
+    """Every moving segment lasts at least its least duration, every hold at least 0."""
+    k = segment_ends(tracks)
+    later, earlier = events.event[k + 1], events.event[k]
+    tied = (tracks.manner[k] == SUDDEN) | (tracks.manner[k] == STEP)
+    keep = ~tied & (later != earlier)
+    k, later, earlier = k[keep], later[keep], earlier[keep]
+
+    def at(event: Index, knot: Index) -> Array:
+        hung = events.written_s[np.maximum(event, 0)] + events.offset_s[knot] if len(events.written_s) else np.zeros(len(knot))
+        return np.where(event < 0, tracks.time_s[knot], hung)
+
+    end = at(later, k + 1)
+    lasts = end - at(earlier, k)
+    lack = least_s[k] - lasts
+    moving = tracks.manner[k] != HOLD
+    # Rounding of written times, and what the checker lets pass, must not move what is no snag.
+    allowed = np.where(moving, ALREADY * least_s[k], SAME_INSTANT_S) + 8.0 * np.spacing(np.abs(end))
+    lack = np.where((lack > 0.0) & (lack <= allowed), 0.0, lack)
+    return joined(
+        [
+            differences(events, later[part], earlier[part], lack[part], kind, k[part])
+            for part, kind in ((moving, MOVE_ROW), (~moving, HOLD_ROW))
+        ]
+    )
+
+
+def order_rows(events: Events) -> Rows:
+    """Hits keep their order, the first one not before the start."""
+    hits = np.arange(events.hits)
+    gaps = -np.diff(events.written_s[: events.hits], prepend=0.0)
+    return differences(events, hits, hits - 1, np.minimum(gaps, 0.0), ORDER_ROW, np.full(events.hits, -1))
+
+
+def pin_rows(events: Events, pins_s: Array, give_s: Array) -> Rows:
+    """A pinned hit stays within `give_s` of where it is; where no hit is pinned, the hits around stay on their sides."""
+    written = events.written_s[: events.hits]
+    later: list[int] = []
+    earlier: list[int] = []
+    least: list[float] = []
+    pin: list[int] = []
+
+    def not_before(hit: int, shift_s: float, number: int) -> None:
+        later.append(hit), earlier.append(-1), least.append(min(shift_s, 0.0)), pin.append(number)
+
+    def not_after(hit: int, shift_s: float, number: int) -> None:
+        later.append(-1), earlier.append(hit), least.append(min(-shift_s, 0.0)), pin.append(number)
+
+    for number, (at_s, give) in enumerate(zip(pins_s, give_s, strict=True)):
+        after = int(np.searchsorted(written, at_s - SAME_INSTANT_S))
+        if after < events.hits and written[after] <= at_s + SAME_INSTANT_S:
+            not_before(after, -give, number)
+            not_after(after, give, number)
+            continue
+        if after < events.hits:
+            not_before(after, at_s - give - written[after], number)
+        if after > 0:
+            not_after(after - 1, at_s + give - written[after - 1], number)
+    return differences(
+        events, np.array(later, dtype=np.int64), np.array(earlier, dtype=np.int64), np.array(least), PIN_ROW,
+        np.array(pin, dtype=np.int64),
+    )  # fmt: skip
+
+
+def above_rows(tracks: Tracks, events: Events, max_hold_s: Array, runs: tuple[Index, Index, Array, Array]) -> Rows:
+    """Each run above half stroke lasts at most its fiber's `max_hold_s`, (F,).
+
+    runs: first and last segment of each run, (R,), and the share of each of the two that lies in it; segments between
+        count whole
+    """
+    first, last, first_share, last_share = runs
+    fiber = fiber_of(tracks)
+    n = len(events.written_s)
+    values: list[float] = []
+    columns: list[int] = []
+    rows: list[int] = []
+    least: list[float] = []
+    named: list[int] = []
+    for begin, end, share_a, share_b in zip(first, last, first_share, last_share, strict=True):
+        most = max_hold_s[fiber[begin]]
+        if not np.isfinite(most) or end + 1 >= tracks.first[fiber[begin] + 1]:
+            continue
+        parts: dict[int, float] = {}
+        constant = 0.0
+
+        def add(knot: int, factor: float, parts: dict[int, float] = parts) -> float:
+            event = int(events.event[knot])
+            if event < 0:
+                return factor * tracks.time_s[knot]
+            parts[event] = parts.get(event, 0.0) + factor
+            return factor * (events.written_s[event] + events.offset_s[knot])
+
+        for k in range(begin, end + 1):
+            share = share_a if k == begin else share_b if k == end else 1.0
+            constant += add(k + 1, share) + add(k, -share)
+        parts = {event: factor for event, factor in parts.items() if abs(factor) > 1e-15}
+        for event, factor in parts.items():
+            rows.append(len(least)), columns.append(event), values.append(-factor)
+        lack = constant - most
+        least.append(0.0 if 0.0 < lack <= ALREADY * most else lack)
+        named.append(begin)
+    matrix = sparse.csr_array((values, (rows, columns)), shape=(len(least), n))
+    return Rows(matrix, np.array(least), np.full(len(least), ABOVE_ROW, dtype=np.int8), np.array(named, dtype=np.int64))
