@@ -1,0 +1,80 @@
+"""All the outputs of a run as one: a verb goes to each that still answers, and one that is lost takes no other with it."""
+
+from collections.abc import Callable, Sequence
+
+from player.outputs.base import Array, Event, LinkLost, Output
+
+
+class Boards:
+    """The outputs of a run. Every verb returns events; that of a link just lost has the kind "lost"."""
+
+    def __init__(self, outputs: Sequence[Output]):
+        self.outputs = tuple(outputs)
+        self._lost: dict[int, str] = {}
+        self._state = ["closed"] * len(self.outputs)
+
+    @property
+    def live(self) -> tuple[Output, ...]:
+        """Those whose link is there."""
+        return tuple(output for number, output in enumerate(self.outputs) if number not in self._lost)
+
+    @property
+    def links(self) -> tuple[tuple[str, str], ...]:
+        """Drivers and state of each, for the operator."""
+        return tuple(("+".join(output.drivers), state) for output, state in zip(self.outputs, self._state, strict=True))
+
+    def send(self, due_s: float, command: Array) -> list[Event]:
+        """The same set to every board, for the same instant."""
+        return self._each(lambda output: output.send(due_s, command))
+
+    def arm(self) -> list[Event]:
+        """Arm every board."""
+        return self._each(lambda output: output.arm(), "armed")
+
+    def rest(self, over_s: float) -> list[Event]:
+        """Every board to rest, and disarmed."""
+        return self._each(lambda output: output.rest(over_s), "idle")
+
+    def vent(self) -> list[Event]:
+        """Vent every board."""
+        return self._each(lambda output: output.vent(), "vented")
+
+    def poll(self) -> list[Event]:
+        """What has come in from all of them."""
+        heard: list[Event] = []
+        heard += self._each(lambda output: heard.extend(output.poll()))
+        for event in heard:
+            for number, output in enumerate(self.outputs):
+                if event.kind == "state" and event.driver in output.drivers and number not in self._lost:
+                    self._state[number] = event.status
+        return heard
+
+    def settled(self, status: str) -> bool:
+        """Whether every board that still answers, and has to be armed, says that it is in that state."""
+        return all(
+            self._state[number] == status
+            for number, output in enumerate(self.outputs)
+            if number not in self._lost and output.must_arm
+        )
+
+    def close(self) -> None:
+        """Let go of all of them, lost ones too."""
+        for output in self.outputs:
+            try:
+                output.close()
+            except (LinkLost, OSError):
+                continue
+
+    def _each(self, deed: Callable[[Output], None], state: str = "") -> list[Event]:
+        lost = []
+        for number, output in enumerate(self.outputs):
+            if number in self._lost:
+                continue
+            try:
+                deed(output)
+                if state:
+                    self._state[number] = state
+            except LinkLost as gone:
+                self._lost[number], self._state[number] = str(gone), "lost"
+                lost += [Event("lost", driver, str(gone)) for driver in output.drivers]
+        return lost

@@ -1,0 +1,91 @@
+"""What the loop plays: something that moves on by ticks, and a command for all valves after each."""
+
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.drive.inverse import commands, lead_s
+from composer.limits.abilities import Abilities
+from composer.rig.model import Rig
+from player.engine.transport import Cue, Transport
+
+Array = NDArray[np.float64]
+
+
+class Source(Protocol):
+    """A score under the operator's hand, or a recording.
+
+    command: (F,) drive units for the tick that has just been taken; lead_s: seconds by which it must be in force earlier
+    strain: (F,) wanted at the end of that tick, None where that is not known
+    """
+
+    command: Array
+    strain: Array | None
+    lead_s: float
+    position_s: float
+    duration_s: float
+    phase: str
+    waiting: Cue | None
+    cue: Cue | None
+    next_cue: Cue | None
+    let_down: int
+
+    def start(self, from_s: float = 0.0) -> None:
+        """Begin from a place, fibers first brought to it."""
+
+    def pause(self) -> None:
+        """Stand and hold."""
+
+    def go_on(self) -> None:
+        """Go on from a stand."""
+
+    def jump(self, to_s: float) -> None:
+        """Go to another place."""
+
+    def rest(self) -> None:
+        """Bring all to rest."""
+
+    def tick(self, dt_s: float) -> str:
+        """Let a tick pass: "wait", "end", "at_rest", or "" for nothing worth telling."""
+
+
+class Driven(Transport):
+    """A score's transport with the drives behind it: wanted strains become commands, each ahead by its valve's response.
+
+    The score runs ahead by the longest lead of all; fibers with a shorter one are given where they were that much ago.
+    """
+
+    def __init__(self, rig: Rig, abilities: Abilities, tracks, cues: tuple[Cue, ...] = ()):
+        super().__init__(tracks, abilities, cues)
+        self._rig = rig
+        lead = lead_s(rig, abilities)
+        self.lead_s = float(lead.max(initial=0.0))
+        self._lag_s = self.lead_s - lead
+        self._lags = bool(self._lag_s.any())
+        self._past = [self.strain]
+        self._sent = self.strain
+        self._fibers = np.arange(len(lead))
+        self.command = commands(rig, abilities, self.strain, np.zeros_like(self.strain))
+
+    def tick(self, dt_s: float) -> str:
+        """Let a tick pass and work out the command for it; what happened, as `Transport.tick`."""
+        happened = super().tick(dt_s)
+        strain = self._lagging(dt_s) if self._lags else self.strain
+        # A valve's opening holds for the whole tick, so it is given the tick's mean rate, and nothing adds up.
+        self.command = commands(self._rig, self._abilities, strain, (strain - self._sent) / dt_s)
+        self._sent = strain
+        return happened
+
+    def _lagging(self, dt_s: float) -> Array:
+        """Each fiber's strain (F,) as it was its lag ago, in a straight line between the ends of ticks."""
+        ticks = self._lag_s / dt_s
+        whole = np.floor(ticks + 1e-9).astype(np.int64)
+        part = np.maximum(ticks - whole, 0.0)
+        keep = int(whole.max()) + 2
+        self._past = [self.strain, *self._past[: keep - 1]]
+        past = np.array(self._past)
+        last = len(past) - 1
+        newer = past[np.minimum(whole, last), self._fibers]
+        older = past[np.minimum(whole + 1, last), self._fibers]
+        return newer + part * (older - newer)
