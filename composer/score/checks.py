@@ -1,4 +1,4 @@
-"""What must be true of a score as a whole and can be told without its rig: meters, tempi, places, pins, cues, phrases, entries."""
+"""What must be true of a score as a whole and can be told without its rig: tempi, places, pins, cues, phrases, entries."""
 
 from bisect import bisect_right
 from collections.abc import Callable, Iterator
@@ -92,16 +92,16 @@ def _meters(checks: _Checks) -> None:
 
 def _tempi(checks: _Checks) -> None:
     placed = [(checks.bars.count_of(t.at) if t.at else Fraction(0), t) for t in checks.score.tempi]
-    _twice(checks, "two tempi from one place", [(at, t.span) for at, t in placed], "keep one, or move one with 'at'")
+    keys = [((at, t.at.seconds if at is None else None), t.span) for at, t in placed]
+    _twice(checks, "two tempi from one place", keys, "keep one, or move one with 'at'")
     ramps = [(at, checks.bars.count_of(t.until), t) for at, t in placed if t.until is not None]
     for start, end, ramp in ramps:
-        if start is None or end is None:
-            continue
-        if end <= start:
+        apart = checks.order(ramp.at, ramp.until)
+        if apart is not None and apart <= 0:
             checks.fault(ramp.until.span, "the change of tempo ends before it begins", "a place after its start")
             continue
         for at, other in placed:
-            if at is not None and start < at < end:
+            if None not in (start, at, end) and start < at < end:
                 found = f"this tempo begins within the change of tempo of line {ramp.span.line}"
                 checks.fault(other.span, found, "a place before it begins, or where it ends or later")
 
@@ -131,7 +131,7 @@ def _places(checks: _Checks) -> None:
         if place.count >= counts + 1:
             checks.fault(
                 place.span,
-                f"bar {place.bar} has {counts} count{'s' if counts > 1 else ''}, so there is no count {_number(place.count)} in it",
+                f"bar {place.bar} has {counts} count{'s' if counts > 1 else ''} and no count {_number(place.count)}",
                 f"a count from 1 to less than {counts + 1}",
             )
 

@@ -69,7 +69,7 @@ def _misfit(start: str, body: str) -> Misfit:
     if at >= len(body):
         return Misfit(len(body) + 1, 1, "the line ends here", tell(accepts), "")
     word = match.group() if match else body[at]
-    return Misfit(at + 1, len(word), _found(word), tell(accepts), _hint(word, accepts))
+    return Misfit(at + 1, len(word), _found(word), tell(accepts), _hint(word, accepts, body[:at]))
 
 
 def _found(word: str) -> str:
@@ -98,7 +98,7 @@ def tell(accepts: Iterable[str]) -> str:
     return " or ".join([", ".join(parts[:-1]), parts[-1]] if len(parts) > 1 else parts)
 
 
-def _hint(word: str, accepts: Iterable[str]) -> str:
+def _hint(word: str, accepts: Iterable[str], before: str) -> str:
     words = [token.lower() for token in accepts if token not in SAMPLES]
     if word.lower() in words:
         return f"write '{word.lower()}' in small letters"
@@ -110,6 +110,6 @@ def _hint(word: str, accepts: Iterable[str]) -> str:
         return "write a plain minus: -"
     if re.fullmatch(r"\.[0-9]+\D*", word):
         return f"write 0{word}"
-    if re.fullmatch(r"[0-9]+,[0-9]+.*", word):
+    if word == "," and before[-1:].isdigit():
         return "write a point, not a comma, in a decimal"
     return nearest(word.lower(), words)

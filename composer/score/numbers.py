@@ -14,6 +14,10 @@ _WRITTEN = re.compile(
 )
 
 
+_FINEST = 1_000_000
+"""The largest denominator that is written as a fraction; beyond it a decimal is easier to read."""
+
+
 class Unreadable(ValueError):
     """A number that cannot be: the message says why, `hint` what to do."""
 
@@ -63,7 +67,8 @@ def write_like(original: str, value: Fraction) -> str:
     """A new value written in the form of the old one: fractions stay fractions, decimals decimals, the unit stays.
 
     `value` is in the model's unit (seconds where milliseconds are written). The same value gives the same text. A word
-    such as `rest` becomes a plain number. Values that no decimal can give are rounded to 6 places beyond a whole or decimal form.
+    such as `rest` becomes a plain number. What no decimal can give is rounded to
+    6 places, unless the old form was a fraction.
     """
     try:
         old = written(original)
@@ -84,6 +89,8 @@ def write_place_like(original: str, bar: int, count: Fraction, seconds: Fraction
 
 
 def _number(value: Fraction, form: str, size: int) -> str:
+    if value.denominator > _FINEST:
+        form = "decimal"
     sign, value = ("-" if value < 0 else ""), abs(value)
     whole = value.numerator // value.denominator
     if form in ("fraction", "mixed") and value.denominator == 1:

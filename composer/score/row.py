@@ -40,10 +40,11 @@ class Row:
         try:
             value = written(str(token)).value
         except Unreadable as stop:
-            self.fault(self.span(token), str(stop), f"{what} {limits.told}", stop.hint)
+            self.fault(self.span(token), str(stop), f"{limits.says}, {limits.told}", stop.hint)
             return limits.low or Fraction(1)
         if not limits.holds(value):
-            self.fault(self.span(token), f"{what} '{token}' is out of range", f"{limits.told} ({limits.says})")
+            wrong = "is negative" if value < 0 else "is out of range"
+            self.fault(self.span(token), f"'{token}' {wrong}", f"{limits.says}, {limits.told}")
         return value
 
     def duration(self, token: Token, what: str) -> Duration:

@@ -112,7 +112,7 @@ def _inner(sheet: Sheet, block: _Block | None, row: Row, body: str) -> None:
 
 
 def _outer(sheet: Sheet, row: Row, body: str) -> _Block | None:
-    """A statement in column 1; the block that it opens, if it does. Lines below one that cannot be read are read all the same."""
+    """A statement in column 1, and the block that it opens. The lines below one that cannot be read are read all the same."""
     tree = parse_line("statement", body)
     if isinstance(tree, Misfit):
         _misfit(sheet, row, tree)

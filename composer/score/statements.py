@@ -81,21 +81,14 @@ def _meter(tree: Tree, row: Row, span: Span) -> Meter:
 
 def _tempo(tree: Tree, row: Row, span: Span) -> Tempo:
     found = tokens_of(tree)
-    at = _counted(found["PLACE"], row) if "PLACE" in found else None
+    at = row.place(found["PLACE"]) if "PLACE" in found else None
     return Tempo(row.number_of(found["NUMBER"], "tempo"), None, at, None, span, row.spans(rate=found["NUMBER"]))
 
 
 def _ramp(tree: Tree, row: Row, span: Span) -> Tempo:
     _, first, _, last, _, start, _, end = tree.children
     rates = row.number_of(first, "tempo"), row.number_of(last, "tempo")
-    return Tempo(*rates, _counted(start, row), _counted(end, row), span, row.spans(rate=first, to=last))
-
-
-def _counted(token: Any, row: Row) -> Place:
-    place = row.place(token)
-    if place.seconds is not None:
-        row.fault(place.span, "a tempo's place is a bar and a count, since seconds depend on the tempo", "a place such as 17:1")
-    return place
+    return Tempo(*rates, row.place(start), row.place(end), span, row.spans(rate=first, to=last))
 
 
 def _group(tree: Tree, row: Row, span: Span) -> Group:

@@ -92,7 +92,8 @@ FAMILIES: tuple[tuple[str, tuple[str, ...]], ...] = (
 """Words that are named together where all of them could stand."""
 
 KEYWORDS: frozenset[str] = (
-    frozenset("to from until within wait clock rhythm by every end middle edges along x y z seed".split())
+    frozenset({"to", "from", "until", "within", "wait", "clock", "rhythm", "by", "every"})
+    | {"end", "middle", "edges", "along", "x", "y", "z", "seed"}
     | {name for _, family in FAMILIES for name in family}
     | set(MANNERS)
     | set(TARGETS)
