@@ -45,12 +45,28 @@ def strain_at(tracks: Tracks, abilities: Abilities, times_s: ArrayLike) -> Array
     At a knot the segment that begins there counts, so a jump has happened. Before 0 s a fiber is as at 0 s. A
     sudden segment follows the fiber's rate table; one given less time than it needs runs through the same way faster.
     """
-    return _on_grid(motion_of(tracks, abilities), times_s, strain_in)
+    return on_grid(motion_of(tracks, abilities), times_s, strain_in)
 
 
 def rate_at(tracks: Tracks, abilities: Abilities, times_s: ArrayLike) -> Array:
     """Strain rate (F, T) in 1/s wanted of every fiber at `times_s`, as `strain_at`; at a knot the rate just after it."""
-    return _on_grid(motion_of(tracks, abilities), times_s, rate_in)
+    return on_grid(motion_of(tracks, abilities), times_s, rate_in)
+
+
+def on_grid(motion: Motion, times_s: ArrayLike, ask: Callable[..., Array]) -> Array:
+    """Ask `strain_in` or `rate_in` of every fiber at every time, as `strain_at`: for whoever asks the same motion often."""
+    times = np.maximum(times_s, 0.0)
+    tracks = motion.tracks
+    segment = segments_at(tracks, times)
+    found = np.empty(segment.shape)
+    rows = max(1, BLOCK // max(1, segment.shape[1]))
+    for begin in range(0, tracks.fibers, rows):
+        part = slice(begin, begin + rows)
+        shape = segment[part].shape
+        fiber = np.broadcast_to(np.arange(tracks.fibers)[part, None], shape)
+        time = np.broadcast_to(times if times.ndim == 1 else times[part], shape)
+        found[part] = ask(motion, fiber.ravel(), segment[part].ravel(), time.ravel()).reshape(shape)
+    return found
 
 
 def segments_at(tracks: Tracks, times_s: ArrayLike) -> NDArray[np.int64]:
@@ -145,22 +161,6 @@ class Cursor:
         self._ends[fibers] = np.where(last, np.inf, tracks.time_s[np.minimum(segment + 1, len(tracks.time_s) - 1)])
         self._per_second[fibers] = _one_over(self._motion.lasts[segment])
         self._sudden[fibers] = tracks.manner[segment] == SUDDEN
-
-
-def _on_grid(motion: Motion, times_s: ArrayLike, ask: Callable[..., Array]) -> Array:
-    """Ask every fiber at every time, a block of fibers at a time."""
-    times = np.maximum(times_s, 0.0)
-    tracks = motion.tracks
-    segment = segments_at(tracks, times)
-    found = np.empty(segment.shape)
-    rows = max(1, BLOCK // max(1, segment.shape[1]))
-    for begin in range(0, tracks.fibers, rows):
-        part = slice(begin, begin + rows)
-        shape = segment[part].shape
-        fiber = np.broadcast_to(np.arange(tracks.fibers)[part, None], shape)
-        time = np.broadcast_to(times if times.ndim == 1 else times[part], shape)
-        found[part] = ask(motion, fiber.ravel(), segment[part].ravel(), time.ravel()).reshape(shape)
-    return found
 
 
 def _one_over(lasts: Array) -> Array:

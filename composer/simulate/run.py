@@ -1,0 +1,101 @@
+"""A whole score on the simulated rig, a block of ticks at a time, so that its length costs no memory."""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.drive.inverse import commands, lead_s
+from composer.limits.abilities import Abilities
+from composer.motion import Motion, motion_of, on_grid, strain_in
+from composer.rig.model import Rig
+from composer.simulate.duty import beyond_after, coils_of, share_used
+from composer.simulate.rig import SimulatedRig
+from composer.tracks import SAME_INSTANT_S, Tracks
+
+Array = NDArray[np.float64]
+
+DEFAULT_HZ = 200.0
+BLOCK = 1 << 17
+"""Values of one kind in a block."""
+
+LONGEST_TAIL_S = 10.0
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Block:
+    """B ticks on end: `time_s` (B,), `target` and `strain` (F, B), `pressure_kPa` (F, B) gauge, `supply_kPa` (B,) gauge.
+
+    duty: (B,) the greatest share of its coil's allowance that any valve has in use
+    """
+
+    time_s: Array
+    target: Array
+    strain: Array
+    pressure_kPa: Array
+    supply_kPa: Array
+    duty: Array
+
+
+def blocks(
+    tracks: Tracks, rig: Rig, abilities: Abilities, rate_Hz: float = DEFAULT_HZ, inverse: bool = True
+) -> Iterator[Block]:
+    """Play tracks on a simulated rig at `rate_Hz` and yield what happens at every tick from 0 s on, in order.
+
+    It goes on past the score's end for as long as the slowest fiber takes for a stroke, so that late arrivals are seen.
+    Commands are sent as a player sends them: due ahead of the score by the lead of the slowest to respond, each asking for
+    the strain wanted at the end of its tick. `inverse` false sends everything without lead.
+    """
+    tick = 1.0 / rate_Hz
+    motion = motion_of(tracks, abilities)
+    lead = lead_s(rig, abilities, inverse)
+    longest = float(lead.max(initial=0.0))
+    early = int(np.ceil(longest / tick - SAME_INSTANT_S))
+    # Commands are due `longest` ahead of the ticks, which are `early` whole ticks less this part of one.
+    part = early * tick - longest
+    part = part if part > SAME_INSTANT_S else 0.0
+    last = int(np.ceil((tracks.duration_s + tail_s(abilities)) * rate_Hz - 1e-6))
+    simulated = SimulatedRig(rig, abilities)
+    coils = coils_of(rig)
+    beyond = np.zeros(tracks.fibers)
+    rest = np.zeros(tracks.fibers)
+    before = rest
+    size = max(1, BLOCK // max(1, tracks.fibers))
+    for begin in range(-early, last + 1, size):
+        ticks = np.arange(begin, min(begin + size, last + 1))
+        sent = _sent(motion, rig, ticks + early, tick, lead - longest)
+        time = ticks * tick
+        strain, pressure = np.empty((tracks.fibers, len(ticks))), np.empty((tracks.fibers, len(ticks)))
+        supply, duty = np.empty(len(ticks)), np.empty(len(ticks))
+        for column in range(len(ticks)):
+            # The state at the tick itself, then the way to the next.
+            was = simulated.strain
+            strain[:, column], pressure[:, column] = was, simulated.pressure_kPa
+            supply[column], duty[column] = simulated.supply_kPa, share_used(coils, beyond).max(initial=0.0)
+            now = sent[:, column] if ticks[column] + early >= 0 else rest
+            if part:
+                simulated.step(part, before)
+            simulated.step(tick - part, now)
+            before = now
+            beyond = beyond_after(coils, beyond, was, simulated.strain, tick)
+        shown = ticks >= 0
+        if shown.any():
+            target = on_grid(motion, time[shown], strain_in)
+            yield Block(time[shown], target, strain[:, shown], pressure[:, shown], supply[shown], duty[shown])
+
+
+def tail_s(abilities: Abilities) -> float:
+    """Seconds for which a run goes on after the score's end: the longest stroke of any fiber, within reason."""
+    slowest = np.minimum(abilities.fill, abilities.exhaust).min(axis=1)[abilities.which]
+    return float(min((abilities.stroke / slowest).max(initial=0.0), LONGEST_TAIL_S))
+
+
+def _sent(motion: Motion, rig: Rig, number: NDArray[np.int64], tick: float, behind: Array) -> Array:
+    """Commands (F, B) of such numbers: number m is in force from m ticks on, for fibers that respond `behind` the slowest."""
+    ends = (number + 1) * tick
+    if behind.any():
+        ends = ends + behind[:, None]
+    wanted = on_grid(motion, ends, strain_in)
+    rate = (wanted - on_grid(motion, ends - tick, strain_in)) / tick
+    return commands(rig, motion.abilities, wanted, rate)
