@@ -33,12 +33,9 @@ def command(folder: Path) -> int:
     scores = [folder / name for name, _ in demos if name.endswith(".score")]
     if scores:
         click.echo("\nThe pieces and rigs are invented. To try:")
-        for verb, rest in (
-            ("check", ""),
-            ("retime", f" -o {_quoted(scores[0].with_suffix('.play'))}"),
-            ("play", " --to sim --retime"),
-        ):
-            click.echo(f"  drawcord {verb} {_quoted(scores[0])}{rest}")
+        score, play = _quoted(scores[0]), _quoted(scores[0].with_suffix(".play"))
+        for line in (f"check {score}", f"retime {score} -o {play}", f"play {score} --to sim --retime"):
+            click.echo(f"  drawcord {line}")
     return 0
 
 

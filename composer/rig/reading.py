@@ -7,6 +7,7 @@ from typing import Any
 from composer.faults import nearest
 from composer.fiber.kinds import KINDS
 from composer.fiber.mounting import Supply, Valve
+from composer.keys import Key
 from composer.rig.canonical import fingerprint
 from composer.rig.document import Document, open_document, say_names, say_value
 from composer.rig.fibers import Fibers, Hung, Stock, check_name, read_fibers
@@ -102,6 +103,8 @@ def _fiber_types(document: Document) -> dict[str, FiberType | None]:
             # Without a kind nobody can say which of the other keys are right; only the kind is to be blamed.
             written = {key: value for key, value in written.items() if key == "kind"}
         keys = keys_of_type(written if isinstance(written, Mapping) else {})
+        if isinstance(written, Mapping):
+            written = _without_doubtful(written, keys)
         values = read_table(document, path, written, keys, what)
         if values is None or not good:
             read[name] = None
@@ -109,6 +112,15 @@ def _fiber_types(document: Document) -> dict[str, FiberType | None]:
         kind = values.pop("kind")
         read[name] = FiberType(name, kind, KINDS[kind].make(**values), document.line(path))
     return read
+
+
+def _without_doubtful(written: Mapping[str, Any], keys: tuple[Key, ...]) -> Mapping[str, Any]:
+    """The table without keys that may be right once its base is: only the base is to be blamed."""
+    base = next((key for key in keys if key.name == "base"), None)
+    if base is None or written.get("base") in list(base.choices):
+        return written
+    known = {key.name for key in keys}
+    return {name: value for name, value in written.items() if name in known}
 
 
 def _supply(document: Document, rig: dict[str, Any] | None) -> Supply | None:
