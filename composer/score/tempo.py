@@ -224,7 +224,7 @@ def _tempi(score: Score, meter: tuple[Array, Array, Array], faults: list[Fault])
 
 
 def _end_of_timed_ramp(end_s: float, start_s: float, count: float, rate: float, to: float) -> float:
-    """The count at which a ramp from `rate` to `to` ends when its end is given in seconds: x = T (to - rate) / log(to / rate)."""
+    """The count at which a ramp ends that is given its end in seconds: counts = T (to - rate) / log(to / rate)."""
     if end_s <= start_s:
         return count
     mean = rate if to == rate else (to - rate) / float(np.log(to / rate))

@@ -1,0 +1,53 @@
+"""From a score to tracks: every entry, fiber and repeat as arrays, no object a move."""
+
+import numpy as np
+
+from composer.faults import Fault, Faults
+from composer.limits.abilities import Abilities
+from composer.rig.model import Rig
+from composer.rig.select import Selector
+from composer.score.expand_lines import phrase_lines
+from composer.score.expand_starts import starts_of
+from composer.score.expand_times import Moments, moments
+from composer.score.layers import knots_of
+from composer.score.model import Score
+from composer.score.names import check_names
+from composer.score.sums import summed
+from composer.score.tempo import TempoMap, tempo_map, with_text
+from composer.tracks import Tracks
+
+
+def expand(score: Score, rig: Rig, abilities: Abilities, selector: Selector, tempo: TempoMap | None = None) -> Tracks:
+    """The tracks of a score on a rig; `tempo` is the score's tempo map where it has been made already.
+
+    Raises Faults, all that are found: what `check_names` finds, then entries that take over at one instant, starts before
+    the score's, and times that do not rise once every unit is seconds.
+    """
+    tempo = tempo or tempo_map(score)
+    faults: list[Fault] = []
+
+    def stop_at_faults() -> None:
+        if faults:
+            raise Faults(with_text(faults, score))
+
+    faults += check_names(score, rig, selector)
+    stop_at_faults()
+    starts = starts_of(score, rig, selector, tempo, faults)
+    lines = phrase_lines(score, starts.variants, faults)
+    stop_at_faults()
+    found = moments(starts, lines, tempo, rig, faults)
+    stop_at_faults()
+    layers = int(np.count_nonzero(starts.added))
+    knots = knots_of(found, starts, lines, abilities, len(rig.fibers) + layers)
+    owner = np.concatenate([np.arange(len(rig.fibers)), starts.fiber[starts.added]])
+    duration = _duration(found)
+    return summed(knots, owner, len(rig.fibers), abilities, duration)
+
+
+def _duration(found: Moments) -> float:
+    """When the last instance is over, by its phrase's length, its last line or the entry that takes over from it."""
+    if not len(found.start):
+        return 0.0
+    over = found.end.copy()
+    np.maximum.at(over, found.instance, found.until)
+    return float(np.max(np.minimum(over, found.cut)))

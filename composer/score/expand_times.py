@@ -1,0 +1,187 @@
+"""When every line of every instance happens, in seconds, and where a later entry cuts it short."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.faults import Fault
+from composer.rig.model import Rig
+from composer.score.expand_lines import Lines
+from composer.score.expand_starts import MOST_FAULTS, Starts
+from composer.score.model import Entry, Span
+from composer.score.shapes import NAMES
+from composer.score.tempo import TempoMap, fault_at
+from composer.tracks import SAME_INSTANT_S
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+STEPS = NAMES.index("step")
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Moments:
+    """N instances in order of chain and start, and their M lines in that order. A chain is what moves as one: a fiber with
+    all entries that take over from one another, or one instance of an `add` entry.
+
+    order: (N,) index into Starts; chain: (N,) the fiber's index, or from `fibers` on one for each added layer
+    start, cut, end: (N,) s: where it starts, where the next of its chain takes over (inf: never), where it is over
+    instance, row: (M,) index into these instances and into Lines; opens: (M,) first line of its instance
+    before, leaves, arrives, until: (M,) s: the line before (or the start), the move's own start and end, the line
+    """
+
+    order: Index
+    chain: Index
+    start: Array
+    cut: Array
+    end: Array
+    instance: Index
+    row: Index
+    opens: NDArray[np.bool_]
+    before: Array
+    leaves: Array
+    arrives: Array
+    until: Array
+
+
+def moments(starts: Starts, lines: Lines, tempo: TempoMap, rig: Rig, faults: list[Fault]) -> Moments:
+    """All instants of a score; instants within SAME_INSTANT_S become one float. Faults are added to `faults`."""
+    fibers, start = len(rig.fibers), tempo.seconds(starts.count)
+    chain = np.where(starts.added, fibers + np.cumsum(starts.added) - 1, starts.fiber)
+    order = np.lexsort((start, chain))
+    chain, start, count = chain[order], start[order], starts.count[order]
+    variant, stretch = starts.variant[order], starts.stretch[order]
+    end = _later(tempo, count, lines.length[variant], stretch)
+
+    sizes = np.diff(lines.first)[variant]
+    begin = np.concatenate([[0], np.cumsum(sizes)])
+    instance = np.repeat(np.arange(len(order)), sizes)
+    row = np.arange(begin[-1]) + (lines.first[:-1][variant] - begin[:-1])[instance]
+    opens = np.zeros(len(row), dtype=bool)
+    opens[begin[:-1]] = True
+
+    until = _later(tempo, count[instance], lines.offset[row], stretch[instance])
+    sources = [start, end, until]
+    over, lasts = np.flatnonzero(lines.has_over[row]), np.flatnonzero(lines.has_lasts[row])
+    sources.append(_shifted(tempo, until[over], -lines.over[row[over]] * stretch[instance[over], None]))
+    before = _before(until, start, instance, opens)
+    sources.append(_shifted(tempo, before[lasts], lines.lasts[row[lasts]] * stretch[instance[lasts], None]))
+    start, end, until, leaves_over, arrives_lasts = _snapped(sources)
+
+    before = _before(until, start, instance, opens)
+    leaves, arrives = before.copy(), until.copy()
+    leaves[over], arrives[lasts] = leaves_over, arrives_lasts
+    step = (lines.shape[row] == STEPS) & ~lines.has_lasts[row]
+    leaves[step] = until[step]
+    taken = np.append(chain[1:] == chain[:-1], False)
+    cut = np.where(taken, np.append(start[1:], np.inf), np.inf)
+    found = Moments(order, chain, start, cut, end, instance, row, opens, before, leaves, arrives, until)
+    _check_starts(found, starts, rig, faults)
+    _check_lines(found, starts, lines, rig, faults)
+    return found
+
+
+def _before(until: Array, start: Array, instance: Index, opens: NDArray[np.bool_]) -> Array:
+    before = np.empty_like(until)
+    before[1:] = until[:-1]
+    before[opens] = start[instance[opens]]
+    return before
+
+
+def _later(tempo: TempoMap, count: Array, by: Array, stretch: Array) -> Array:
+    """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS times `stretch`, after `count`."""
+    bars = by[:, 0] * stretch
+    some = np.flatnonzero(bars)
+    if some.size:
+        count = count.copy()
+        count[some] = tempo.counts_of_bars(tempo.bars(count[some]) + bars[some])
+    return tempo.seconds(count + by[:, 1] * stretch) + by[:, 2] * stretch
+
+
+def _shifted(tempo: TempoMap, seconds: Array, by: Array) -> Array:
+    """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS, after instants in seconds."""
+    if not by[:, :2].any():
+        return seconds + by[:, 2]
+    moved = _later(tempo, tempo.counts(seconds), by * np.array([1.0, 1.0, 0.0]), np.ones(len(by)))
+    return np.where(by[:, :2].any(axis=1), moved, seconds) + by[:, 2]
+
+
+def _snapped(sources: list[Array]) -> list[Array]:
+    """The same instants, those that are one within SAME_INSTANT_S as one float: the earliest of them."""
+    known, which = np.unique(np.concatenate(sources), return_inverse=True)
+    leads = np.ones(len(known), dtype=bool)
+    leads[1:] = np.diff(known) > SAME_INSTANT_S
+    snapped = known[leads][np.cumsum(leads) - 1][which]
+    return np.split(snapped, np.cumsum([len(part) for part in sources])[:-1])
+
+
+def _check_starts(found: Moments, starts: Starts, rig: Rig, faults: list[Fault]) -> None:
+    """Two entries that take over on one fiber at one instant: one fault for each pair of entries."""
+    both = np.flatnonzero(found.cut == found.start)
+    entry = starts.entry[found.order]
+    pairs, first, count = np.unique(
+        np.column_stack([entry[both], entry[both + 1]]), axis=0, return_index=True, return_counts=True
+    )
+    for (a, b), k, times in zip(pairs[:MOST_FAULTS], first, count, strict=False):
+        one, other = sorted((starts.entries[a], starts.entries[b]), key=lambda entry: entry.span.line)
+        where = found.start[both[k]]
+        name = rig.fibers[int(found.chain[both[k]])].name
+        more = f" and {times - 1} more such starts" if times > 1 else ""
+        lines = (
+            f"the entry of line {other.span.line}"
+            if one is other
+            else f"the entries of lines {one.span.line} and {other.span.line}"
+        )
+        faults.append(
+            fault_at(
+                other.span,
+                f"{lines} start{'s twice' if one is other else ''} on '{name}' at one instant, {where:.6g} s{more}",
+                "one that takes over",
+                "start one of them later, or write 'add' to one",
+            )
+        )
+
+
+def _check_lines(found: Moments, starts: Starts, lines: Lines, rig: Rig, faults: list[Fault]) -> None:
+    """Offsets that do not rise, moves that reach back too far, lengths too short, once all are seconds."""
+    shut = lines.shut[found.row]
+    flat = ~found.opens & ((found.until < found.before) | ((found.until == found.before) & ~shut))
+    reach = (found.leaves < found.before) | (found.arrives > found.until)
+    last = np.append(found.opens[1:], True) if len(found.opens) else found.opens
+    short = last & (found.until > found.end[found.instance])
+
+    def tell(wrong: NDArray[np.bool_], what: str, expected: str, place: str) -> None:
+        seen: set[Span] = set()
+        for k in np.flatnonzero(wrong):
+            line = lines.written[found.row[k]]
+            span = {"offset": line.offset.span, "over": (line.over or line.offset).span, "line": line.span}[place]
+            if span in seen:
+                continue
+            seen.add(span)
+            faults.append(fault_at(span, what + _playing(found, starts, rig, int(k)), expected))
+            if len(seen) > MOST_FAULTS:
+                return
+
+    tell(flat & ~reach, "this line comes no later than the one before it", "offsets that rise", "offset")
+    tell(reach, "this move would begin before the line before it", "an 'over' that fits between them", "over")
+    seen: set[Span] = set()
+    for k in np.flatnonzero(short):
+        phrase = lines.phrases[starts.variant[found.order[found.instance[k]]]]
+        span = phrase.span if phrase.length is None else phrase.length.span
+        if phrase.length is not None and span not in seen:
+            seen.add(span)
+            faults.append(
+                fault_at(
+                    span,
+                    f"phrase '{phrase.name}' is declared shorter than its last line" + _playing(found, starts, rig, int(k)),
+                    "a length that holds all its lines",
+                )
+            )
+
+
+def _playing(found: Moments, starts: Starts, rig: Rig, move: int) -> str:
+    """Which entry and fiber brought a phrase's fault to light: units meet only where it is played."""
+    which = found.order[found.instance[move]]
+    entry: Entry = starts.entries[starts.entry[which]]
+    return f", as '{rig.fibers[int(starts.fiber[which])].name}' plays it from line {entry.span.line}"

@@ -1,0 +1,222 @@
+"""Layers on top of one another: the sum of a fiber's base and its added layers, exact, with a knot wherever any has one."""
+
+from math import comb
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.limits.tables import travel_time_s
+from composer.score.layers import NO_WAY, Knots
+from composer.score.shapes import NAMES
+from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN, Tracks
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+
+def summed(knots: Knots, owner: Index, fibers: int, abilities: Abilities, duration_s: float) -> Tracks:
+    """The tracks of `fibers` fibers; chain c moves fiber owner[c], the first `fibers` chains being the bases in order."""
+    added = np.unique(owner[fibers:])
+    if not added.size:
+        return _tracks(knots.first, knots, duration_s)
+    mixed = np.zeros(fibers, dtype=bool)
+    mixed[added] = True
+    chain = np.repeat(np.arange(len(owner)), np.diff(knots.first))
+    take = mixed[owner[chain]]
+    sum_first, sums = _sum(_picked(knots, take), owner[chain[take]], chain[take], fibers, abilities)
+    # Fibers without a layer on top go through as they are; all are put back in order.
+    fiber = np.concatenate([owner[chain[~take]], np.repeat(np.arange(fibers), np.diff(sum_first))])
+    order = np.argsort(fiber, kind="stable")
+    plain = _picked(knots, ~take)
+    whole = Knots(
+        np.concatenate([[0], np.cumsum(np.bincount(fiber, minlength=fibers))]),
+        *(np.concatenate([getattr(plain, name), getattr(sums, name)])[order] for name in _COLUMNS),
+    )
+    return _tracks(whole.first, whole, duration_s)
+
+
+_COLUMNS = ("time_s", "curve", "manner", "shape", "line", "phrase_line", "earliest")
+
+
+def _tracks(first: Index, knots: Knots, duration_s: float) -> Tracks:
+    latest = float(knots.time_s.max(initial=0.0))
+    return Tracks(first, *(getattr(knots, name) for name in _COLUMNS[:-1]), duration_s=max(duration_s, latest))
+
+
+def _picked(knots: Knots, which: NDArray) -> Knots:
+    """Some knots, without the division into chains."""
+    return Knots(np.zeros(1, dtype=np.int64), *(getattr(knots, name)[which] for name in _COLUMNS))
+
+
+def _sum(knots: Knots, fiber: Index, chain: Index, fibers: int, abilities: Abilities) -> tuple[Index, Knots]:
+    """Knots of the sums, divided by fiber. All chains of each fiber together, any number of them.
+
+    A layer that holds is a constant; the constants are added as whole numbers, so that what goes up comes down to the same
+    value. Only the layers that move between two knots are added as polynomials.
+    """
+    ends = np.append(np.where(chain[1:] == chain[:-1], knots.time_s[1:], np.inf), np.inf)
+    order = np.lexsort((knots.time_s, fiber))
+    f, t = fiber[order], knots.time_s[order]
+    new = np.ones(len(order), dtype=bool)
+    new[1:] = (f[1:] != f[:-1]) | (t[1:] > t[:-1])
+    spot = np.empty(len(order), dtype=np.int64)
+    spot[order] = np.cumsum(new) - 1
+    at, whose = t[new], f[new]
+    until = np.append(np.where(whose[1:] == whose[:-1], at[1:], np.inf), np.inf)
+
+    end_value = knots.curve.sum(axis=1)
+    jump, holds = knots.manner == STEP, knots.manner == HOLD
+    moving = np.flatnonzero(~jump & ~holds)
+    stop = np.append(spot[1:], 0)
+
+    base, moved = _constants(knots, spot, stop, end_value, chain, len(at), whose)
+    curve = np.zeros((len(at), 6))
+    curve[:, 0] = base
+    spans = stop[moving] - spot[moving]
+    which = np.repeat(moving, spans)
+    piece = np.repeat(spot[moving] - np.cumsum(spans) + spans, spans) + np.arange(len(which))
+    lasts = (ends - knots.time_s)[which]
+    part = sub_polynomial(knots.curve[which], (at[piece] - knots.time_s[which]) / lasts, (until[piece] - at[piece]) / lasts)
+    for power in range(6):
+        curve[:, power] += np.bincount(piece, weights=part[:, power], minlength=len(at))
+
+    layers = np.bincount(piece, minlength=len(at))
+    manner = np.where(layers > 0, MOVE, HOLD).astype(np.int8)
+    shape = np.full(len(at), -1, dtype=np.int8)
+    alone = (layers[piece] == 1) & (at[piece] == knots.time_s[which]) & (until[piece] == ends[which])
+    manner[piece[alone]], shape[piece[alone]] = knots.manner[which[alone]], knots.shape[which[alone]]
+    flat = (manner != HOLD) & (np.abs(curve[:, 1:]).max(axis=1) <= NO_WAY)
+    manner[flat], shape[flat], curve[flat, 1:] = HOLD, -1, 0.0
+
+    # Whose line: of the layer that moves most, else of the knot that is written last.
+    line, phrase_line = np.zeros(len(at), dtype=np.int32), np.zeros(len(at), dtype=np.int32)
+    written = np.argsort(knots.line, kind="stable")
+    line[spot[written]], phrase_line[spot[written]] = knots.line[written], knots.phrase_line[written]
+    most = np.argsort(np.abs(part[:, 1:].sum(axis=1)), kind="stable")
+    line[piece[most]], phrase_line[piece[most]] = knots.line[which[most]], knots.phrase_line[which[most]]
+
+    jumps = np.zeros(len(at), dtype=bool)
+    jumps[spot[jump]] = True
+    earliest = at.copy()
+    earliest[piece[alone]] = knots.earliest[which[alone]]
+    sums = Knots(np.zeros(1, dtype=np.int64), at, curve, manner, shape, line, phrase_line, earliest)
+    whole = _with_jumps(sums, jumps, moved, knots, spot, jump)
+    owner = np.repeat(whose, 1 + whole[0])
+    timed = _timed_suddens(whole[1], owner, abilities)
+    return _merged(timed[0], timed[1], fibers)
+
+
+def _constants(
+    knots: Knots, spot: Index, stop: Index, end_value: Array, chain: Index, count: int, whose: Index
+) -> tuple[Array, Array]:
+    """The sum of what holds from each knot on, and the sum of all layers just before each knot's jumps.
+
+    Every layer's value counts from the knot where it begins to hold to where it ends; sums are of whole multiples of a
+    power of two, which add without rounding.
+    """
+    holds, jump = knots.manner == HOLD, knots.manner == STEP
+    # The sums of one fiber must fit; over all fibers they may run round, as differences do not mind.
+    largest = float(np.bincount(whose[spot], weights=np.abs(knots.curve[:, 0])).max()) + 1.0
+    unit = 2.0 ** min(52, 60 - int(np.ceil(np.log2(largest))))
+    steps = np.zeros(count + 1, dtype=np.int64)
+    value = np.rint(knots.curve[:, 0] * unit).astype(np.int64)
+    opens = np.ones(count, dtype=bool)
+    opens[1:] = whose[1:] != whose[:-1]
+    first_spot = np.maximum.accumulate(np.where(opens, np.arange(count), 0))
+    ended = np.append(chain[1:] == chain[:-1], False)
+    np.add.at(steps, spot[holds], value[holds])
+    np.subtract.at(steps, stop[holds & ended], value[holds & ended])
+    gathered = np.cumsum(steps[:-1])
+    # Each fiber's sums begin anew: what the fibers before it hold for ever is taken off.
+    carried = np.concatenate([[0], gathered])[first_spot]
+    base = (gathered - carried) / unit
+    # Just before the jumps at a knot: what holds or arrives there, worked out from the layers that jump.
+    moved = np.zeros(count)
+    np.add.at(moved, spot[jump], (end_value - knots.curve[:, 0])[jump])
+    return base, moved
+
+
+def sub_polynomial(curve: Array, start: Array, share: Array) -> Array:
+    """The part of polynomials in u, (n, 6) lowest power first, from u = start over `share` of u, in its own u."""
+    part = np.zeros_like(curve)
+    for j in range(6):
+        for i in range(j, 6):
+            part[:, j] += comb(i, j) * curve[:, i] * start ** (i - j)
+        part[:, j] *= share**j
+    return part
+
+
+def _with_jumps(
+    sums: Knots, jumps: NDArray[np.bool_], moved: Array, knots: Knots, spot: Index, jump: NDArray[np.bool_]
+) -> tuple[Index, Knots]:
+    """The sums with a STEP before each knot at which layers jump and the jumps do not cancel; how many each got."""
+    jumps &= np.abs(moved) > NO_WAY
+    extra = jumps.astype(np.int64)
+    place = np.arange(len(extra)) + np.cumsum(extra)
+    total = len(extra) + int(extra.sum())
+    where = place[jumps] - 1
+    by, by_phrase = sums.line.copy(), sums.phrase_line.copy()
+    by[spot[jump]], by_phrase[spot[jump]] = knots.line[jump], knots.phrase_line[jump]
+
+    def spread(values: NDArray, of_jump: NDArray) -> NDArray:
+        wide = np.empty((total, *values.shape[1:]), dtype=values.dtype)
+        wide[place], wide[where] = values, of_jump
+        return wide
+
+    steps = np.zeros((int(extra.sum()), 6))
+    steps[:, 0], steps[:, 1] = sums.curve[jumps, 0] - moved[jumps], moved[jumps]
+    return extra, Knots(
+        sums.first,
+        spread(sums.time_s, sums.time_s[jumps]),
+        spread(sums.curve, steps),
+        spread(sums.manner, np.full(len(steps), STEP, dtype=np.int8)),
+        spread(sums.shape, np.full(len(steps), NAMES.index("step"), dtype=np.int8)),
+        spread(sums.line, by[jumps]),
+        spread(sums.phrase_line, by_phrase[jumps]),
+        spread(sums.earliest, sums.time_s[jumps]),
+    )
+
+
+def _timed_suddens(knots: Knots, fiber: Index, abilities: Abilities) -> tuple[Knots, Index]:
+    """Sudden moves that a sum has lifted to other strains, where the fiber has another speed: each starts so that it arrives
+    in time, out of the hold before it or after one of its own."""
+    sudden = np.flatnonzero(knots.manner == SUDDEN)
+    if not sudden.size:
+        return knots, fiber
+    a, b = knots.curve[sudden, 0], knots.curve[sudden].sum(axis=1)
+    arrives = knots.time_s[sudden + 1]
+    begins = arrives - travel_time_s(abilities, fiber[sudden], a, b)
+    before = np.maximum(sudden - 1, 0)
+    waits = (sudden > 0) & (knots.manner[before] == HOLD) & (fiber[before] == fiber[sudden])
+    earliest = np.where(waits, np.maximum(knots.time_s[before], knots.earliest[sudden]), knots.time_s[sudden])
+    begins = np.where(begins <= earliest + SAME_INSTANT_S, earliest, begins)
+    late = ~waits & (begins > knots.time_s[sudden])
+    time = knots.time_s.copy()
+    old = time[sudden[late]]
+    time[sudden] = begins
+    # A hold of its own, before each that has none to wait in.
+    at = sudden[late]
+    hold = np.zeros((len(at), 6))
+    hold[:, 0] = knots.curve[at, 0]
+    return Knots(
+        knots.first,
+        np.insert(time, at, old),
+        np.insert(knots.curve, at, hold, axis=0),
+        np.insert(knots.manner, at, HOLD),
+        np.insert(knots.shape, at, -1),
+        np.insert(knots.line, at, knots.line[at]),
+        np.insert(knots.phrase_line, at, knots.phrase_line[at]),
+        np.insert(knots.earliest, at, old),
+    ), np.insert(fiber, at, fiber[at])
+
+
+def _merged(knots: Knots, fiber: Index, fibers: int) -> tuple[Index, Knots]:
+    """The knots with holds of no length left out and holds in a row made one, divided by fiber."""
+    last = np.append(fiber[1:] != fiber[:-1], True)
+    kept = np.flatnonzero(last | (knots.manner != HOLD) | (np.append(knots.time_s[1:], np.inf) > knots.time_s))
+    again = np.zeros(len(kept), dtype=bool)
+    rests = knots.manner[kept] == HOLD
+    again[1:] = rests[1:] & rests[:-1] & (fiber[kept][1:] == fiber[kept][:-1])
+    kept = kept[~again]
+    return np.concatenate([[0], np.cumsum(np.bincount(fiber[kept], minlength=fibers))]), _picked(knots, kept)
