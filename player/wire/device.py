@@ -17,6 +17,7 @@ class Device:
     """One valve driver. Times are µs that never go back, of any size; on the wire they wrap at 2^32.
 
     set_valves(first, values): called at once whenever channels take new values
+    room: how many sets really wait at most, what the build says unless it is changed
     strain(first, count): called for what the channels' strains are, 0 to 65535; supply(): kPa gauge × 10
     """
 
@@ -32,6 +33,7 @@ class Device:
         self.status = m.VENTED
         self.values = [0] * len(build.drives)
         self.late = 0
+        self.room = build.queue
         self.channels = 0
         self.watchdog_us = 0
         self._set_valves, self._strain, self._supply = set_valves, strain, supply
@@ -218,7 +220,7 @@ class Device:
                 late = ahead < 0
                 self.late = self.late + late & COUNTER
                 self._apply(message, now_us + ahead if message.due_us else 0, now_us, late)
-            elif len(self._queue) >= self.build.queue:
+            elif len(self._queue) >= self.room:
                 self._refuse("full", seq)
             else:
                 insort(self._queue, (now_us + ahead, now_us, message), key=itemgetter(0))

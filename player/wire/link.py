@@ -5,7 +5,8 @@ The rules of the host's side:
 1. `open` greets, and where the board answers in version 1 with channels enough, configures it; then it is ready. Greeting
    a board that is armed disarms it, by the protocol.
 2. hello, configure, arm and rest are asked again, with the same seq, until the state with that seq comes; after so many
-   tries they have failed. An answer that comes late or twice does no harm; unasked states in between are taken as what they say.
+   tries they have failed. An answer that comes late or twice does no harm; unasked states in between are taken as what they
+   say.
 3. A fault with the seq of what was asked refuses it. So does a wrong rig, whatever its seq.
 4. `vent` goes before all that is not yet sent, from every state, and is asked again every 50 ms.
 5. Whatever ends a run other than by rest is followed by a vent: failure, a clock that jumps, a board that starts anew, one

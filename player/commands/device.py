@@ -1,0 +1,94 @@
+"""`drawcord device`: a simulated valve driver behind a pseudo-terminal."""
+
+import signal
+import sys
+from collections.abc import Callable
+from contextlib import ExitStack
+
+import click
+
+from composer.faults import fault, nearest
+
+
+@click.command("device")
+@click.argument("rig", metavar="RIG", type=click.Path(path_type=str))
+@click.option("--driver", metavar="NAME", help="Which board of the rig; needed where it has several.")
+@click.option("--fault", "mishap", metavar="NAME", help="Go wrong on purpose; an unknown name lists them.")
+@click.option(
+    "--log", metavar="FILE", type=click.Path(path_type=str), help="Write what was set, when it was due and when done, as CSV."
+)
+@click.option("--name", metavar="TEXT", help="What the board calls itself.")
+def command(rig: str, driver: str | None, mishap: str | None, log: str | None, name: str | None) -> int:
+    """Run a simulated board of valves, with the rig's fibers behind it.
+
+    The first line printed is the path of the terminal that it listens on: play to it with --to serial:PATH.
+    It runs until Ctrl-C (or SIGTERM), and players may come and go; then every channel is vented.
+    """
+    from player.wire.mishaps import MISHAPS, Mishap
+
+    if mishap is not None and mishap not in MISHAPS:
+        rows = "\n".join(f"   {known:<14} {row.says}" for known, row in MISHAPS.items())
+        raise click.UsageError(f"no fault '{mishap}'. {nearest(mishap, MISHAPS)}\nThe faults are:\n{rows}")
+    from composer.limits.abilities import abilities_of
+    from composer.load import load_rig
+    from player.outputs.serial_board import SerialBoard
+    from player.outputs.serial_ports import announced
+    from player.wire.rules import Build
+    from player.wire.simulated import Bench
+
+    loaded = load_rig(rig)
+    drivers = [board.name for board in loaded.drivers]
+    driver = _choose(rig, drivers, driver)
+    bench = Bench(loaded, abilities_of(loaded), driver)
+    try:
+        called = name if name is not None else f"{loaded.name} {driver}, simulated"
+        build = Build(called, bench.drives, senses_strain=True, senses_supply=True, rig=loaded.fingerprint)
+    except ValueError as wrong:
+        raise fault("--name", str(wrong)) from None
+    with ExitStack() as stack:
+        board = SerialBoard(build, bench, MISHAPS[mishap] if mishap else Mishap(""), _log(log, stack))
+        for number in (signal.SIGINT, signal.SIGTERM, signal.SIGHUP):
+            signal.signal(number, lambda *_: board.stop())
+        stack.enter_context(announced(board.path, called + (f", fault {mishap}" if mishap else "")))
+        click.echo(board.path)
+        sys.stdout.flush()
+        board.run()
+    return 0
+
+
+def _choose(rig: str, drivers: list[str], asked: str | None) -> str:
+    """The board to be, of those of the rig."""
+    if asked is None and len(drivers) == 1:
+        return drivers[0]
+    if asked in drivers:
+        return asked
+    names = ", ".join(drivers)
+    if asked is None:
+        raise fault(
+            rig, f"the rig has {len(drivers)} boards: {names}", "one of them", "say which with --driver NAME; one process each"
+        )
+    raise fault(rig, f"no driver '{asked}'", f"one of {names}", nearest(asked, drivers))
+
+
+def _log(path: str | None, stack: ExitStack) -> Callable[[str], None]:
+    """Where the lines of the log go; each is in the file before the next set is due."""
+    if path is None:
+        return lambda line: None
+    try:
+        file = stack.enter_context(open(path, "w", buffering=1, encoding="utf-8", newline="\n"))
+    except (OSError, ValueError) as error:
+        raise fault(path, f"the log cannot be written: {getattr(error, 'strerror', None) or error}") from None
+    full = False
+
+    def write(line: str) -> None:
+        nonlocal full
+        if full:
+            return
+        try:
+            file.write(line)
+        except OSError as error:
+            # The board goes on: a log that is full must not leave valves open.
+            full = True
+            click.echo(f"{path}: the log ends here: {error.strerror}", err=True)
+
+    return write
