@@ -1,7 +1,7 @@
 """What must be true of a score as a whole and can be told without its rig: tempi, places, pins, cues, phrases, entries."""
 
 from bisect import bisect_right
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from fractions import Fraction
 from itertools import pairwise
 
@@ -39,15 +39,18 @@ class Bars:
         return self.starts[at] + (place.bar - self.bars[at]) * self.counts[at] + place.count - 1
 
 
-def check_score(score: Score, doubtful: set[str], torn: set[str]) -> list[Fault]:
+def check_score(score: Score, doubtful: set[str], torn: set[str], loose: Sequence[Entry] = ()) -> list[Fault]:
     """All that is wrong with a score whose lines were read.
 
     Args:
         score: the score as read
         doubtful: names whose own statement could not be read, so that nobody else is blamed; "*" for all names
         torn: phrases of which some lines could not be read
+        loose: entries of sections whose first line could not be read
     """
     checks = _Checks(score, doubtful, torn)
+    for entry in loose:
+        _entry(checks, None, entry)
     for check in CHECKS:
         check(checks)
     return checks.faults
@@ -207,7 +210,7 @@ def _entries(checks: _Checks) -> None:
                      "fewer repeats, or parts of it as scores of their own")  # fmt: skip
 
 
-def _entry(checks: _Checks, section: Section, entry: Entry) -> int:
+def _entry(checks: _Checks, section: Section | None, entry: Entry) -> int:
     """One entry against the phrase it plays; how many moves it makes for each fiber."""
     score = checks.score
     phrase = score.phrases.get(entry.phrase.text)
@@ -225,8 +228,8 @@ def _entry(checks: _Checks, section: Section, entry: Entry) -> int:
         )
     if entry.repeat and entry.repeat.times > 1 and entry.repeat.every is None and not torn and _lasts_nothing(phrase):
         found = f"phrase '{phrase.name}' lasts no time, so its repeats need 'every'"
-        checks.fault(entry.repeat.span, found, "such as 'times 4 every 8'")
-    repeats = (entry.repeat.times if entry.repeat else 1) * (section.repeat.times if section.repeat else 1)
+        checks.fault(entry.repeat.span, found, "'every' and a duration, such as 'times 4 every 8'")
+    repeats = (entry.repeat.times if entry.repeat else 1) * (section.repeat.times if section and section.repeat else 1)
     moves = repeats * max(1, len(phrase.lines))
     if moves > most("moves"):
         checks.fault(

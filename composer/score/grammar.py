@@ -10,7 +10,7 @@ from lark import Lark, Tree
 from lark.exceptions import UnexpectedInput
 
 from composer.faults import nearest
-from composer.score.words import FAMILIES, KEYWORDS, SAMPLES, TARGETS
+from composer.score.words import FAMILIES, KEYWORDS, OPTIONS, SAMPLES, TARGETS
 
 STARTS = ("statement", "move", "entry")
 
@@ -108,6 +108,11 @@ def _hint(word: str, accepts: Iterable[str], before: str) -> str:
         return 'write straight quotes: "'
     if any(c in "−–—" for c in word):
         return "write a plain minus: -"
+    if "PHRASE_NAME" in accepts and word in OPTIONS:
+        return f"'{word}' opens an option, so it cannot be a phrase's name; the phrase comes before the options"
+    for token, unit in (("HERTZ", "Hz"), ("SPEED", " m/s")):
+        if token in accepts and re.fullmatch(r"-?[0-9][0-9./+]*", word):
+            return f"write its unit: {word}{unit}"
     if re.fullmatch(r"\.[0-9]+\D*", word):
         return f"write 0{word}"
     if word == "," and before[-1:].isdigit():

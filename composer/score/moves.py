@@ -16,7 +16,7 @@ def line_of(tree: Tree, row: Row, body: str) -> Line:
     shape = manner.get("shape")
     word = shape.children[0] if shape else None
     name = str(word) if word is not None else QUIET
-    controls = tuple(row.target(child) for child in shape.children[1:]) if shape else ()
+    controls = tuple(row.target(child, "control") for child in shape.children[1:]) if shape else ()
     over = row.duration(manner["over"].children[1], "over") if "over" in manner else None
     if over and name == "step":
         row.fault(over.span, "a step takes no time, so 'over' means nothing here", "'step' alone, or another shape with 'over'")
@@ -38,7 +38,7 @@ def line_of(tree: Tree, row: Row, body: str) -> Line:
 def _quiver(tree: Tree, row: Row) -> Quiver:
     word, hertz, _, by = tree.children
     amplitude = row.target(by, "by")
-    if amplitude.unit == "hold" or amplitude.value == 0:
+    if amplitude.unit == "hold":
         row.fault(amplitude.span, "a quiver needs an amplitude of its own", "an amount such as 0.05 or 1mm")
     value = row.number_of(hertz, "quiver")
     return Quiver(value, amplitude, row.span(word), row.spans(hertz=hertz))

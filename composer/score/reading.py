@@ -37,7 +37,7 @@ def parse_score(text: str, file: str, read_used: ReadUsed | None = None) -> tupl
     reader = _Reader(file, read_used)
     main = reader.read(text, "", ())
     score = reader.score(main)
-    faults = [*reader.faults, *check_score(score, reader.doubtful, reader.torn)]
+    faults = [*reader.faults, *check_score(score, reader.doubtful, reader.torn, main.loose)]
     order = {name: at for at, name in enumerate(reader.sheets)}
     faults.sort(key=lambda fault: (order.get(fault.where.file, 0), fault.where.line, fault.where.column))
     if len(faults) > most("faults"):

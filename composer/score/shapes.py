@@ -19,3 +19,14 @@ BACKWARDS = {"swell": "settle", "settle": "swell"}
 
 QUIET = "smooth"
 """The shape of a line that names none."""
+
+SAYS: dict[str, tuple[str, str]] = {
+    "smooth": ("10u³ − 15u⁴ + 6u⁵", "limb-like: leaves and arrives softly (the minimum-jerk profile)"),
+    "linear": ("u", "constant speed"),
+    "swell": ("u²", "gathers speed"),
+    "settle": ("1 − (1 − u)²", "leaves fast, arrives softly"),
+    "sudden": ("as fast as the fiber can go", "an accent: starts late, arrives exactly on the count"),
+    "step": ("a jump on the count", "tests and on/off gear; the checker reports it"),
+    "curve": ("a Bézier curve of degree 5", "any other way there, by its control values"),
+}
+"""Each shape's progress and its use, as the manual tells them; u runs from 0 to 1 over the move."""

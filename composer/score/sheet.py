@@ -16,6 +16,7 @@ from composer.score.statements import PhraseHead, SectionHead, Text, statement_o
 class Sheet:
     """What one file says, in the order of its lines; `doubtful` are names whose statement could not be read.
 
+    loose: entries of sections whose first line could not be read
     torn: phrases that have lines which could not be read, so that what is said of the whole must wait
     """
 
@@ -32,6 +33,7 @@ class Sheet:
     faults: list[Fault] = field(default_factory=list)
     doubtful: set[str] = field(default_factory=set)
     torn: set[str] = field(default_factory=set)
+    loose: list[Entry] = field(default_factory=list)
 
 
 @dataclass(slots=True)
@@ -137,7 +139,11 @@ def _outer(sheet: Sheet, row: Row, body: str) -> _Block | None:
 
 def _close(sheet: Sheet, block: _Block | None) -> None:
     """Put a block's head and lines together."""
-    if block is None or block.head is None:
+    if block is None:
+        return
+    if block.head is None:
+        if block.start == "entry":
+            sheet.loose.extend(block.rows)
         return
     head, rows = block.head, tuple(block.rows)
     if isinstance(head, PhraseHead):
