@@ -29,7 +29,7 @@ class Boards:
 
     def arm(self) -> list[Event]:
         """Arm every board."""
-        return self._each(lambda output: output.arm(), "armed")
+        return self._each(lambda output: output.arm(), "armed", sure=True)
 
     def rest(self, over_s: float) -> list[Event]:
         """Every board to rest, and disarmed."""
@@ -42,12 +42,12 @@ class Boards:
     def poll(self) -> list[Event]:
         """What has come in from all of them."""
         heard: list[Event] = []
-        heard += self._each(lambda output: heard.extend(output.poll()))
+        lost = self._each(lambda output: heard.extend(output.poll()))
         for event in heard:
             for number, output in enumerate(self.outputs):
                 if event.kind == "state" and event.driver in output.drivers and number not in self._lost:
                     self._state[number] = event.status
-        return heard
+        return heard + lost
 
     def settled(self, status: str) -> bool:
         """Whether every board that still answers, and has to be armed, says that it is in that state."""
@@ -65,14 +65,15 @@ class Boards:
             except (LinkLost, OSError):
                 continue
 
-    def _each(self, deed: Callable[[Output], None], state: str = "") -> list[Event]:
+    def _each(self, deed: Callable[[Output], None], state: str = "", sure: bool = False) -> list[Event]:
+        """Do it with each; the state that follows is taken as read only where `sure`, or where there is no board to say it."""
         lost = []
         for number, output in enumerate(self.outputs):
             if number in self._lost:
                 continue
             try:
                 deed(output)
-                if state:
+                if state and (sure or not output.must_arm):
                     self._state[number] = state
             except LinkLost as gone:
                 self._lost[number], self._state[number] = str(gone), "lost"

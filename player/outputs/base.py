@@ -16,7 +16,7 @@ Array = NDArray[np.float64]
 
 
 class LinkLost(Exception):
-    """The way to a board is gone: unplugged, closed at the other end, or failing on every write. The text says which and why."""
+    """The way to a board is gone: unplugged, closed at the other end, or failing every write; the text says which."""
 
 
 @dataclass(frozen=True, slots=True)

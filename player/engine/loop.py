@@ -1,0 +1,357 @@
+"""The engine: once a tick from the score's place to sets on their way, ahead of their due time, and back with what boards tell.
+
+A set's due time follows from its tick's number, never from when the loop woke, so the host's jitter ends here. The engine
+knows no terminal and no command line: it is given a source, outputs and a clock, and yields a snapshot a tick.
+"""
+
+import gc
+from collections import deque
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
+from dataclasses import dataclass
+
+import numpy as np
+
+from composer.rig.model import Rig
+from player.engine.boards import Boards
+from player.engine.clock import Clock
+from player.engine.errors import Errors
+from player.engine.run_log import RunLog
+from player.engine.safety import FAULTS, Refused, Safety, after
+from player.engine.source import Source
+from player.engine.status import MOST_FAULTS, Ending, Lateness, RunFault, Status
+from player.outputs.base import Event, Mark, Output
+from player.wire.values import clip, is_valve, to_wire
+
+AHEAD_S = 0.06
+"""Sets are sent this long before they are due, less where a board's queue is short: a host may stall so long unseen."""
+
+QUEUE_SHARE = 0.75
+"""The part of a board's queue that sets ahead of their time may fill."""
+
+SLICE_S = 0.005
+"""The engine looks for what the operator asks at least this often, however slow the ticks are."""
+
+SETTLE_S = 0.5
+"""Seconds that a board has to say that it has disarmed."""
+
+STILL = 1e-7
+"""A fiber that moves less than this strain in a tick stands still."""
+
+
+@dataclass(frozen=True, slots=True)
+class Command:
+    """What the operator asks: pause, go_on, jump (`value` in s), next_cue, rest, vent, or stop (rest, then vent)."""
+
+    kind: str
+    value: float = 0.0
+
+
+class Engine:
+    """One run, from pre-flight to the end. `ask` may be called from a signal's handler or another thread at any moment."""
+
+    def __init__(
+        self,
+        rig: Rig,
+        source: Source,
+        outputs: Sequence[Output],
+        clock: Clock,
+        rate_Hz: float = 200.0,
+        log: RunLog | None = None,
+        ahead_s: float = AHEAD_S,
+    ):
+        self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
+        self.safety = Safety()
+        self.lateness = Lateness()
+        self.boards = Boards(outputs)
+        self.errors = Errors(len(rig.fibers))
+        self.ending: Ending | None = None
+        self._rig, self._clock, self._log = rig, clock, log
+        self._dt = 1.0 / rate_Hz
+        self._asked: deque[Command] = deque(maxlen=1000)
+        self._told: list[str] = []
+        self._faults: list[RunFault] = []
+        self._more_faults = 0
+        self._how, self._why = "stopped", "stopped before it began"
+        self._due_s = clock.now()
+        self._moving = 0
+        self._valve = is_valve([fiber.mounting.valve.drive for fiber in rig.fibers])
+
+    def ask(self, kind: str, value: float = 0.0) -> None:
+        """Hand the engine something the operator wants; it is done at the next tick, or within a few milliseconds."""
+        self._asked.append(Command(kind, value))
+
+    def preflight(self) -> tuple[Mark, ...]:
+        """Every board asked what must be true before arming; with all marks good the engine may be armed."""
+        marks = tuple(mark for output in self.boards.outputs for mark in output.preflight(self.rate_Hz))
+        queues = [output.queue_sets for output in self.boards.outputs if output.queue_sets]
+        if queues:
+            self.ahead_s = min(self.ahead_s, QUEUE_SHARE * min(queues) * self._dt)
+        self.ahead_s = max(self.ahead_s, 2.0 * self._dt)
+        if all(mark.ok for mark in marks):
+            self._become("preflight")
+        return marks
+
+    def arm(self) -> None:
+        """Arm every board. Raises Refused without a fresh pre-flight."""
+        self._become("arm")
+
+    def run(self, from_s: float = 0.0) -> Iterator[Status]:
+        """Play from a place of the score until all is at rest, or vented; a snapshot after every tick.
+
+        However the caller leaves off, by an exception too, the fibers are vented if they are not at rest.
+        """
+        began = self._clock.now()
+        try:
+            self._obey()
+            if self.safety.state == "armed":
+                self._why = "the score came to its end"
+                self._become("play", lambda: self.source.start(from_s))
+                with _no_collecting():
+                    yield from self._ticks()
+        finally:
+            if self.safety.state not in ("idle", "vented"):
+                self._stop("fault", "the player broke off", "vent")
+            self._end(began)
+
+    def close(self) -> None:
+        """Let go of every output; whatever is armed still is vented first."""
+        if self.safety.state not in ("idle", "vented"):
+            self._become("vent")
+        self.boards.close()
+
+    def _ticks(self) -> Iterator[Status]:
+        start = self._clock.now() + self.ahead_s + self._dt
+        tick = 0
+        while self.safety.state in ("playing", "paused", "resting"):
+            due = start + tick * self._dt
+            late = self._wait(due - self.ahead_s) - (due - self.ahead_s)
+            if late > self.ahead_s + self._dt:
+                # All that was ahead is used up. To catch up would be a leap; the score goes on later instead.
+                start, due = start + late, due + late
+                self._slip(late)
+            self._count(late)
+            self._obey()
+            if self.safety.state not in ("playing", "paused", "resting"):
+                break
+            was = self.source.strain
+            happened = self.source.tick(self._dt)
+            if self.source.strain is not None and was is not None:
+                self._moving = int(np.count_nonzero(np.abs(self.source.strain - was) > STILL))
+                self.errors.want(due + self.source.lead_s + self._dt, self.source.strain, self.source.position_s)
+            self._send(due, late)
+            self._happen(happened)
+            self._hear(self.boards.poll())
+            tick += 1
+            yield self.status(late)
+
+    def _send(self, due: float, late: float) -> None:
+        self._due_s = due
+        self._hear(self.boards.send(due, self.source.command))
+        if self._log is not None:
+            sent = to_wire(clip(self.source.command, self._valve)[0], self._valve)
+            self._log.set(self._clock.now(), due, late, self.source.position_s, sent)
+
+    def _count(self, late: float) -> None:
+        self.lateness.count(late)
+        self.lateness.late += late > self._dt
+        self.lateness.past_due += late > self.ahead_s
+
+    def _slip(self, late: float) -> None:
+        self.lateness.slips += 1
+        self.lateness.slipped_s += late
+        self._tell(f"the host stood still for {late:.3f} s; the score goes on that much later")
+        if self._log is not None:
+            self._log.tell("slip", self._clock.now(), seconds=late)
+
+    def _wait(self, moment: float) -> float:
+        """Wait until that moment, but do at once what cannot wait."""
+        while True:
+            if self._asked and any(command.kind in ("vent", "stop", "rest") for command in tuple(self._asked)):
+                self._obey()
+                if self.safety.state == "vented":
+                    return max(moment, self._clock.now())
+            now = self._clock.now()
+            if moment - now <= SLICE_S:
+                return self._clock.wait_until(moment)
+            self._clock.wait_until(now + SLICE_S)
+
+    def _obey(self) -> None:
+        """Do what has been asked, in order; a vent before all else."""
+        asked = [self._asked.popleft() for _ in range(len(self._asked))]
+        asked.sort(key=lambda command: command.kind != "vent")
+        for command in asked:
+            if self._log is not None:
+                self._log.tell("command", self._clock.now(), command=command.kind, value=command.value)
+            try:
+                self._do(command)
+            except Refused as refused:
+                self._tell(str(refused))
+
+    def _do(self, command: Command) -> None:
+        kind = command.kind
+        if kind == "stop":
+            kind = "vent" if self.safety.state == "resting" else "rest"
+        if kind == "next_cue":
+            if self.source.next_cue is None:
+                raise Refused("there is no further cue")
+            self.source.jump(self.source.next_cue.at_s)
+        elif kind == "jump":
+            self.source.jump(command.value)
+        elif kind == "rest":
+            self._stop("stopped", "stopped by the operator", "rest")
+        elif kind == "vent":
+            self._stop("vented", "vented by the operator", "vent")
+        else:
+            self._become(kind)
+
+    def _happen(self, happened: str) -> None:
+        """What the source came to in this tick."""
+        if happened == "wait" and self.source.waiting is not None:
+            self._become("wait")
+            self._tell(f'waiting at cue "{self.source.waiting.name}"')
+        elif happened == "end":
+            self._stop("end", "the score came to its end", "end")
+        elif happened == "at_rest" or (self.safety.state == "resting" and not self.boards.live):
+            self._become("at_rest")
+
+    def _hear(self, events: Sequence[Event]) -> None:
+        """What boards told; a fault of one may end the run for all."""
+        for event in events:
+            if event.kind == "sense":
+                self.errors.sense(event.time_s, event.fibers, event.strain)
+                if self._log is not None:
+                    self._log.sense(self._clock.now(), event.time_s, event.fibers, event.strain)
+                continue
+            if self._log is not None and (event.kind != "state" or event.say):
+                self._log.tell(
+                    "board",
+                    self._clock.now(),
+                    driver=event.driver,
+                    kind=event.kind,
+                    say=event.say,
+                    code=event.code,
+                    status=event.status,
+                )
+            if event.kind == "lost":
+                self._fault(event.driver, f"{event.driver}: the link is lost: {event.say}", "fault")
+            elif event.kind == "fault":
+                name, means, sentence = FAULTS.get(event.code, (f"fault {event.code}", "fault", "a fault not known here"))
+                said = f": {event.say}" if event.say else ""
+                self._fault(event.driver, f"{event.driver}: {name}: {sentence}{said}", means)
+            elif event.kind == "state" and self.safety.state in ("playing", "paused") and event.status != "armed":
+                self._fault(event.driver, f"{event.driver}: the board says that it is {event.status}", "fault")
+            elif event.kind == "note":
+                self._tell(f"{event.driver}: {event.say}")
+
+    def _fault(self, driver: str, say: str, means: str) -> None:
+        """Keep a fault for the report, tell it, and do what it means for the run."""
+        if any(fault.say == say for fault in self._faults):
+            self._more_faults += 1
+        elif len(self._faults) < MOST_FAULTS:
+            self._faults.append(RunFault(self.source.position_s, driver, say))
+            self._tell(say)
+        else:
+            self._more_faults += 1
+        if means != "note" and self.safety.state in ("armed", "playing", "paused", "resting"):
+            self._stop("fault", say, means)
+
+    def _stop(self, how: str, why: str, event: str) -> None:
+        """End the run by that event; the first reason stays, unless a later one is graver."""
+        gravity = ("end", "stopped", "vented", "fault")
+        was = self.safety.state
+        self._become(event)
+        if was not in ("resting", "vented") or gravity.index(how) > gravity.index(self._how):
+            self._how, self._why = how, why
+
+    def _become(self, event: str, start: Callable[[], None] | None = None) -> None:
+        """The transition of an event, and all that it must do."""
+        was = self.safety.state
+        self.safety, must = after(self.safety, event)
+        deeds = {
+            "arm": lambda: self._hear(self.boards.arm()),
+            "start": start or self.source.start,
+            "hold": self.source.pause,
+            "resume": self.source.go_on,
+            "let_down": self._let_down,
+            "disarm": self._disarm,
+            "vent": lambda: self._hear(self.boards.vent()),
+        }
+        if self._log is not None:
+            self._log.tell("state", self._clock.now(), was=was, event=event, state=self.safety.state)
+        for deed in must:
+            deeds[deed]()
+
+    def _let_down(self) -> None:
+        self.source.rest()
+        if self.source.phase == "at rest":
+            self._become("at_rest")
+
+    def _disarm(self) -> None:
+        """All wants are at rest: once the last set has been due, tell every board to rest and disarm, and hear it say so."""
+        self._clock.wait_until(self._due_s + self.source.lead_s + self._dt)
+        self._hear(self.boards.rest(0.0))
+        until = self._clock.now() + SETTLE_S
+        while not self.boards.settled("idle") and self._clock.now() < until and self.safety.state != "vented":
+            self._clock.wait_until(self._clock.now() + SLICE_S)
+            self._hear(self.boards.poll())
+            if any(command.kind in ("vent", "stop") for command in tuple(self._asked)):
+                self._asked.clear()
+                self._stop("vented", "vented by the operator", "vent")
+        if not self.boards.settled("idle") and self.safety.state != "vented":
+            self._fault("", "a board did not say that it has disarmed; it is vented", "note")
+            self._stop("fault", "a board did not say that it has disarmed", "vent")
+
+    def _tell(self, say: str) -> None:
+        if len(self._told) < MOST_FAULTS:
+            self._told.append(say)
+
+    def status(self, late_s: float = 0.0) -> Status:
+        """A snapshot; what was new to tell is told once."""
+        source, told = self.source, tuple(self._told)
+        self._told.clear()
+        return Status(
+            state=self.safety.state,
+            phase=source.phase,
+            position_s=source.position_s,
+            duration_s=source.duration_s,
+            cue=source.cue.name if source.cue else "",
+            next_cue=source.next_cue.name if source.next_cue else "",
+            waiting=source.waiting.name if source.waiting else "",
+            moving=self._moving,
+            let_down=source.let_down,
+            ticks=self.lateness.ticks,
+            late_ticks=self.lateness.late,
+            past_due=self.lateness.past_due,
+            late_s=late_s,
+            links=self.boards.links,
+            told=told,
+        )
+
+    def _end(self, began: float) -> None:
+        if self._log is not None and self._log.broken:
+            self._fault("", f"the log could not be written to its end: {self._log.broken}", "note")
+        self.ending = Ending(
+            how=self._how,
+            why=self._why,
+            state=self.safety.state,
+            position_s=self.source.position_s,
+            lasted_s=self._clock.now() - began,
+            faults=tuple(self._faults),
+            more_faults=self._more_faults,
+        )
+
+
+@contextmanager
+def _no_collecting() -> Iterator[None]:
+    """Garbage is collected before and after the loop, never in it; what exists already is set aside for good."""
+    was = gc.isenabled()
+    gc.collect()
+    gc.freeze()
+    gc.disable()
+    try:
+        yield
+    finally:
+        gc.unfreeze()
+        if was:
+            gc.enable()
