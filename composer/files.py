@@ -80,32 +80,35 @@ def replacing(path: str | os.PathLike[str], mode: str = "w") -> Iterator[IO[Any]
     form: dict[str, Any] = {} if mode == "wb" else {"encoding": "utf-8", "newline": "\n"}
     was = _target(name)
     if was is not None and not stat.S_ISREG(was.st_mode):
-        try:
-            file = open(name, mode, **form)  # noqa: SIM115  closed by the block below
-        except (OSError, ValueError) as error:
-            _cannot("write", name, error)
-        with file:
+        with _saying(name), open(name, mode, **form) as file:
             yield file
         return
     target = os.path.realpath(name)
     beside, handle = _beside(name, target)
     try:
-        with os.fdopen(handle, mode, **form) as file:
-            yield file
-            file.flush()
-            if was is not None:
-                os.chmod(beside, stat.S_IMODE(was.st_mode))
-            os.fsync(file.fileno())
-        os.replace(beside, target)
-    except OSError as error:
-        _remove(beside)
-        if error.errno in _FULL or error.filename == beside:
-            _cannot("write", name, error)
-        raise
+        with _saying(name, beside):
+            with os.fdopen(handle, mode, **form) as file:
+                yield file
+                file.flush()
+                if was is not None:
+                    os.chmod(beside, stat.S_IMODE(was.st_mode))
+                os.fsync(file.fileno())
+            os.replace(beside, target)
     except BaseException:
         _remove(beside)
         raise
     _sync_folder(target)
+
+
+@contextmanager
+def _saying(name: str, *also: str) -> Iterator[None]:
+    """Turn what the system says of this file, or of its disk, into `Faults`; errors of other files pass as they are."""
+    try:
+        yield
+    except OSError as error:
+        if error.errno in _FULL or error.filename in (name, *also):
+            _cannot("write", name, error)
+        raise
 
 
 def check_writable(path: str | os.PathLike[str]) -> None:

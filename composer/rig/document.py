@@ -8,7 +8,7 @@ from typing import Any
 
 from composer.faults import Fault, Faults, Where
 from composer.rig.lines import Path, Place, Spot, find_places
-from composer.rig.schema import MOST_BYTES, MOST_DOTS, MOST_FAULTS, MOST_LINE
+from composer.rig.schema import MOST_BYTES, MOST_DOTS, MOST_FAULTS, MOST_LINE, MOST_LINES
 from composer.rig.syntax import syntax_fault
 
 _CHAIN = re.compile(rf"""(?<![\w-])(?:(?:[\w-]+|"[^"]*"|'[^']*')[ \t]*\.[ \t]*){{{MOST_DOTS}}}""")
@@ -70,6 +70,8 @@ def open_document(text: str, file: str) -> Document:
     if size > MOST_BYTES:
         raise Faults([Fault(Where(file), f"the rig file has {size} bytes", f"at most {MOST_BYTES}")])
     lines = text.replace("\r\n", "\n").split("\n")
+    if len(lines) > MOST_LINES:
+        raise Faults([Fault(Where(file), f"the rig file has {len(lines)} lines", f"at most {MOST_LINES}")])
     for number, line in enumerate(lines, 1):
         if len(line) > MOST_LINE:
             where = Where(file, number, MOST_LINE + 1, 1, line)

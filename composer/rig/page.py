@@ -20,12 +20,7 @@ def page_tables() -> dict[str, str]:
     """Every table of the page, by its heading."""
     tables = {f"[{table.name}]": table.keys for table in (RIG, SUPPLY)}
     for kind in KINDS.values():
-        base = next((key for key in kind.keys_of({}) if key.name == "base"), None)
-        keys = kind.keys_of({})
-        if base is not None:
-            inner = {key.name for key in kind.keys_of({"base": base.choices[0]})} - {key.name for key in keys}
-            keys = tuple(key for key in kind.keys_of({}) if key.name not in inner)
-        tables[f'[fiber_type.NAME], kind = "{kind.name}"'] = (*TYPE_KEYS, *keys)
+        tables[f'[fiber_type.NAME], kind = "{kind.name}"'] = (*TYPE_KEYS, *kind.keys_of({}))
     tables["[valve_type.NAME]"] = VALVE_TYPE.keys
     tables["[driver.NAME]"] = DRIVER.keys
     tables["[[fiber]]"] = FIBER.keys

@@ -7,9 +7,10 @@ from typing import Any, Literal
 from composer.fiber.kinds import KINDS
 from composer.keys import Key
 
-MOST_BYTES = 4 << 20
+MOST_BYTES = 2 << 20
+MOST_LINES = 100_000
 MOST_LINE = 4096
-MOST_DOTS = 64
+MOST_DOTS = 16
 MOST_FAULTS = 100
 MOST_FIBERS = 4096
 MOST_CHANNELS = 4096

@@ -1,0 +1,165 @@
+import os
+import stat
+
+import pytest
+
+from composer.faults import Faults
+from composer.files import check_writable, read_bytes, read_text, replacing
+
+
+def test_text_comes_as_it_was_written(tmp_path):
+    (tmp_path / "a.score").write_bytes("föhre\r\nreed\n".encode())
+    assert read_text(tmp_path / "a.score", 100) == "föhre\r\nreed\n"
+
+
+def test_a_byte_order_mark_is_no_part_of_the_text(tmp_path):
+    (tmp_path / "a.score").write_bytes(b"\xef\xbb\xbfreed")
+    assert read_text(tmp_path / "a.score", 100) == "reed"
+
+
+def test_a_file_of_just_the_limit_is_read_and_one_byte_more_is_refused(tmp_path):
+    (tmp_path / "a").write_bytes(b"x" * 10)
+    assert read_bytes(tmp_path / "a", 10) == b"x" * 10
+    with pytest.raises(Faults, match="a: the file has more than 9 bytes; expected at most 9 bytes"):
+        read_bytes(tmp_path / "a", 9)
+
+
+def test_a_file_without_end_is_refused_at_once():
+    with pytest.raises(Faults, match="/dev/zero: cannot read: this is a device or a pipe; expected an ordinary file"):
+        read_bytes("/dev/zero", 10)
+
+
+def test_a_pipe_is_refused_without_waiting_for_a_writer(tmp_path):
+    os.mkfifo(tmp_path / "pipe")
+    with pytest.raises(Faults, match="this is a device or a pipe"):
+        read_bytes(tmp_path / "pipe", 10)
+
+
+@pytest.mark.parametrize(
+    ("name", "said"),
+    [
+        ("none.score", "cannot read: there is no such file"),
+        (".", "cannot read: this is a folder, not a file"),
+        ("file/below", "cannot read: a part of its path is a file, not a folder"),
+        ("x" * 300, "cannot read: the name is too long"),
+        ("nul\0nul", "cannot read: this is no possible file name"),
+        ("loop", "cannot read: its links run in a circle"),
+    ],
+)
+def test_what_cannot_be_read_is_said_in_plain_words(tmp_path, name, said):
+    (tmp_path / "file").write_text("x")
+    (tmp_path / "loop").symlink_to(tmp_path / "loop")
+    with pytest.raises(Faults) as caught:
+        read_text(tmp_path / name, 100)
+    assert [fault.found for fault in caught.value.faults] == [said]
+
+
+def test_text_that_is_not_utf8_is_shown_at_its_line_column_and_byte(tmp_path):
+    (tmp_path / "a.score").write_bytes(b"\xef\xbb\xbfone\n  f\xf6hre\r\nx")
+    with pytest.raises(Faults) as caught:
+        read_text(tmp_path / "a.score", 100)
+    assert str(caught.value).split("a.score", 1)[1] == (
+        ":2:4: byte 0xF6 at offset 10 is not UTF-8; expected UTF-8 text\n"
+        "    2 |   f\N{REPLACEMENT CHARACTER}hre\n"
+        "      |    ^\n"
+        "   save the file again with the encoding UTF-8"
+    )
+
+
+def test_a_binary_file_is_called_one(tmp_path):
+    (tmp_path / "a.score").write_bytes(b"PK\x03\x04\0\0")
+    with pytest.raises(Faults, match="a zero byte at offset 4: this is a binary file, not text"):
+        read_text(tmp_path / "a.score", 100)
+
+
+def test_utf16_is_called_by_its_name(tmp_path):
+    (tmp_path / "a.score").write_bytes("reed".encode("utf-16"))
+    with pytest.raises(Faults, match="the file is UTF-16 text; expected UTF-8 text"):
+        read_text(tmp_path / "a.score", 100)
+
+
+def test_the_target_changes_only_when_the_block_ends(tmp_path):
+    target = tmp_path / "out.csv"
+    target.write_text("old")
+    with replacing(target) as file:
+        file.write("föhre\n")
+        file.flush()
+        assert target.read_text() == "old"
+    assert target.read_bytes() == "föhre\n".encode()
+    assert os.listdir(tmp_path) == ["out.csv"]
+
+
+@pytest.mark.parametrize("error", [RuntimeError, KeyboardInterrupt, OSError])
+def test_a_block_that_fails_leaves_the_target_and_nothing_else(tmp_path, error):
+    target = tmp_path / "out.csv"
+    target.write_text("old")
+    with pytest.raises(error), replacing(target, "wb") as file:
+        file.write(b"half")
+        raise error
+    assert target.read_text() == "old"
+    assert os.listdir(tmp_path) == ["out.csv"]
+
+
+def test_a_new_file_has_the_permissions_of_any_new_file_and_a_replaced_one_keeps_its_own(tmp_path):
+    was = os.umask(0o027)
+    try:
+        with replacing(tmp_path / "new") as file:
+            file.write("x")
+    finally:
+        os.umask(was)
+    (tmp_path / "old").write_text("y")
+    (tmp_path / "old").chmod(0o604)
+    with replacing(tmp_path / "old") as file:
+        file.write("x")
+    assert stat.S_IMODE((tmp_path / "new").stat().st_mode) == 0o640
+    assert stat.S_IMODE((tmp_path / "old").stat().st_mode) == 0o604
+
+
+def test_a_link_stays_a_link_to_the_file_that_is_replaced(tmp_path):
+    (tmp_path / "far").mkdir()
+    (tmp_path / "far" / "real").write_text("old")
+    (tmp_path / "link").symlink_to(tmp_path / "far" / "real")
+    with replacing(tmp_path / "link") as file:
+        file.write("new")
+    assert (tmp_path / "link").is_symlink()
+    assert (tmp_path / "far" / "real").read_text() == "new"
+
+
+def test_a_device_is_written_to_and_stays_a_device():
+    with replacing("/dev/null") as file:
+        file.write("gone")
+    assert stat.S_ISCHR(os.stat("/dev/null").st_mode)
+
+
+def test_a_full_disk_is_said_in_plain_words():
+    with pytest.raises(Faults, match="/dev/full: cannot write: the disk is full"), replacing("/dev/full") as file:
+        file.write("x")
+
+
+@pytest.mark.parametrize(
+    ("name", "said"),
+    [
+        ("none/out.csv", "cannot write: there is no folder '{}/none'"),
+        (".", "cannot write: this is a folder, not a file"),
+        ("folder/", "cannot write: this is a folder, not a file"),
+        ("file/out.csv", "cannot write: a part of its path is a file, not a folder"),
+        ("x" * 300, "cannot write: the name is too long"),
+        ("nul\0nul", "cannot write: this is no possible file name"),
+    ],
+)
+def test_what_cannot_be_written_is_known_before_work_starts(tmp_path, name, said):
+    (tmp_path / "file").write_text("x")
+    for attempt in (check_writable, lambda path: replacing(path).__enter__()):
+        with pytest.raises(Faults) as caught:
+            attempt(f"{tmp_path}/{name}")
+        assert [fault.found for fault in caught.value.faults] == [said.format(tmp_path)]
+
+
+def test_looking_whether_a_file_can_be_written_leaves_nothing(tmp_path):
+    check_writable(tmp_path / "out.csv")
+    assert os.listdir(tmp_path) == []
+
+
+def test_a_folder_that_takes_no_files_is_known_before_work_starts():
+    with pytest.raises(Faults, match="cannot write: "):
+        check_writable("/proc/out.csv")
