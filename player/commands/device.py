@@ -14,9 +14,7 @@ from composer.faults import fault, nearest
 @click.argument("rig", metavar="RIG", type=click.Path(path_type=str))
 @click.option("--driver", metavar="NAME", help="Which board of the rig; needed where it has several.")
 @click.option("--fault", "mishap", metavar="NAME", help="Go wrong on purpose; an unknown name lists them.")
-@click.option(
-    "--log", metavar="FILE", type=click.Path(path_type=str), help="Write what was set, when it was due and when done, as CSV."
-)
+@click.option("--log", metavar="FILE", type=click.Path(path_type=str), help="Write each set, when due and when done, as CSV.")
 @click.option("--name", metavar="TEXT", help="What the board calls itself.")
 def command(rig: str, driver: str | None, mishap: str | None, log: str | None, name: str | None) -> int:
     """Run a simulated board of valves, with the rig's fibers behind it.
@@ -75,9 +73,11 @@ def _log(path: str | None, stack: ExitStack) -> Callable[[str], None]:
     if path is None:
         return lambda line: None
     try:
-        file = stack.enter_context(open(path, "w", buffering=1, encoding="utf-8", newline="\n"))
+        # Ends with the stack, after the board.
+        file = open(path, "w", buffering=1, encoding="utf-8", newline="\n")  # noqa: SIM115
     except (OSError, ValueError) as error:
         raise fault(path, f"the log cannot be written: {getattr(error, 'strerror', None) or error}") from None
+    stack.callback(file.close)
     full = False
 
     def write(line: str) -> None:

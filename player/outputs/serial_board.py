@@ -24,6 +24,7 @@ STEP_S = 0.002
 GAP_S = 0.0015
 """The simulated rig is moved in steps of STEP_S, in gaps between sets of at least GAP_S; but at least every LONGEST_STEP_S."""
 LONGEST_STEP_S = 0.02
+PRIORITY = 10
 BACKLOG_BYTES = 65536
 """What nobody reads is dropped beyond this, as a UART would."""
 
@@ -68,6 +69,9 @@ class SerialBoard:
 
     def run(self) -> None:
         """Serve until `stop`; then everything is vented and the terminal is gone."""
+        with suppress(OSError, AttributeError):
+            # Where the system permits it, other work does not hold a due set up; where not, the log shows what it costs.
+            os.sched_setscheduler(0, os.SCHED_FIFO, os.sched_param(PRIORITY))
         gc.collect()
         gc.freeze()
         gc.disable()
