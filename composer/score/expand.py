@@ -37,11 +37,11 @@ def expand(score: Score, rig: Rig, abilities: Abilities, selector: Selector, tem
     stop_at_faults()
     found = moments(starts, lines, tempo, rig, faults)
     stop_at_faults()
-    layers = int(np.count_nonzero(starts.added))
-    knots = knots_of(found, starts, lines, abilities, len(rig.fibers) + layers)
     owner = np.concatenate([np.arange(len(rig.fibers)), starts.fiber[starts.added]])
     duration = _duration(found)
-    return summed(knots, owner, len(rig.fibers), abilities, duration)
+    knots = knots_of(found, starts, lines, abilities, len(owner))
+    del found, starts  # a large score needs the room
+    return summed(knots, owner, len(rig.fibers), duration, abilities)
 
 
 def _duration(found: Moments) -> float:

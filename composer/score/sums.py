@@ -1,5 +1,6 @@
 """Layers on top of one another: the sum of a fiber's base and its added layers, exact, with a knot wherever any has one."""
 
+from itertools import pairwise
 from math import comb
 
 import numpy as np
@@ -15,26 +16,53 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 
-def summed(knots: Knots, owner: Index, fibers: int, abilities: Abilities, duration_s: float) -> Tracks:
-    """The tracks of `fibers` fibers; chain c moves fiber owner[c], the first `fibers` chains being the bases in order."""
-    added = np.unique(owner[fibers:])
-    if not added.size:
+def summed(knots: Knots, owner: Index, fibers: int, duration_s: float, abilities: Abilities) -> Tracks:
+    """The tracks of `fibers` fibers; chain c moves fiber owner[c], the first `fibers` chains being the bases in order.
+
+    A block of fibers at a time, so that what is worked out between fits the processor's cache and little memory.
+    """
+    if len(owner) == fibers:
         return _tracks(knots.first, knots, duration_s)
-    mixed = np.zeros(fibers, dtype=bool)
-    mixed[added] = True
-    chain = np.repeat(np.arange(len(owner)), np.diff(knots.first))
-    take = mixed[owner[chain]]
-    sum_first, sums = _sum(_picked(knots, take), owner[chain[take]], chain[take], fibers, abilities)
-    # Fibers without a layer on top go through as they are; all are put back in order.
-    fiber = np.concatenate([owner[chain[~take]], np.repeat(np.arange(fibers), np.diff(sum_first))])
-    order = np.argsort(fiber, kind="stable")
-    plain = _picked(knots, ~take)
-    whole = Knots(
-        np.concatenate([[0], np.cumsum(np.bincount(fiber, minlength=fibers))]),
-        *(np.concatenate([getattr(plain, name), getattr(sums, name)])[order] for name in _COLUMNS),
-    )
+    chains = np.argsort(owner, kind="stable")
+    sizes = np.diff(knots.first)[chains]
+    block = np.cumsum(np.bincount(owner, weights=np.diff(knots.first), minlength=fibers)).astype(np.int64) // BLOCK
+    edges = np.searchsorted(block[owner[chains]], np.arange(int(block[-1]) + 2))
+    layered = np.bincount(owner, minlength=fibers) > 1
+    done: list[Knots] = []
+    counts = np.zeros(fibers, dtype=np.int64)
+    for begin, end in pairwise(edges):
+        mine = chains[begin:end]
+        if not len(mine):
+            continue
+        size = sizes[begin:end]
+        at = np.repeat(knots.first[mine] - np.cumsum(size) + size, size) + np.arange(size.sum())
+        part, fiber = _picked(knots, at), np.repeat(owner[mine], size)
+        some = layered[fiber]
+        if some.any():
+            part, fiber = _beside(
+                _sum(_picked(part, some), fiber[some], np.repeat(mine, size)[some], abilities), part, fiber, some
+            )
+        counts += np.bincount(fiber, minlength=fibers)
+        done.append(part)
+    whole = Knots(_divided(counts), *(np.concatenate([getattr(part, name) for part in done]) for name in _COLUMNS))
     return _tracks(whole.first, whole, duration_s)
 
+
+def _divided(counts: Index) -> Index:
+    return np.concatenate([[0], np.cumsum(counts)])
+
+
+def _beside(sums: tuple[Knots, Index], part: Knots, fiber: Index, some: NDArray[np.bool_]) -> tuple[Knots, Index]:
+    """The sums and, in the order of fibers, those without a layer on top, which go through as they are."""
+    plain = _picked(part, ~some)
+    both = np.concatenate([fiber[~some], sums[1]])
+    order = np.argsort(both, kind="stable")
+    columns = (np.concatenate([getattr(plain, name), getattr(sums[0], name)])[order] for name in _COLUMNS)
+    return Knots(part.first, *columns), both[order]
+
+
+BLOCK = 1 << 17
+"""Knots, as a rule, that are summed at once."""
 
 _COLUMNS = ("time_s", "curve", "manner", "shape", "line", "phrase_line", "earliest")
 
@@ -49,8 +77,8 @@ def _picked(knots: Knots, which: NDArray) -> Knots:
     return Knots(np.zeros(1, dtype=np.int64), *(getattr(knots, name)[which] for name in _COLUMNS))
 
 
-def _sum(knots: Knots, fiber: Index, chain: Index, fibers: int, abilities: Abilities) -> tuple[Index, Knots]:
-    """Knots of the sums, divided by fiber. All chains of each fiber together, any number of them.
+def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities) -> tuple[Knots, Index]:
+    """Knots of the sums, and the fiber of each. All chains of each fiber together, any number of them.
 
     A layer that holds is a constant; the constants are added as whole numbers, so that what goes up comes down to the same
     value. Only the layers that move between two knots are added as polynomials.
@@ -103,8 +131,7 @@ def _sum(knots: Knots, fiber: Index, chain: Index, fibers: int, abilities: Abili
     sums = Knots(np.zeros(1, dtype=np.int64), at, curve, manner, shape, line, phrase_line, earliest)
     whole = _with_jumps(sums, jumps, moved, knots, spot, jump)
     owner = np.repeat(whose, 1 + whole[0])
-    timed = _timed_suddens(whole[1], owner, abilities)
-    return _merged(timed[0], timed[1], fibers)
+    return _merged(*_timed_suddens(whole[1], owner, abilities))
 
 
 def _constants(
@@ -211,12 +238,12 @@ def _timed_suddens(knots: Knots, fiber: Index, abilities: Abilities) -> tuple[Kn
     ), np.insert(fiber, at, fiber[at])
 
 
-def _merged(knots: Knots, fiber: Index, fibers: int) -> tuple[Index, Knots]:
-    """The knots with holds of no length left out and holds in a row made one, divided by fiber."""
+def _merged(knots: Knots, fiber: Index) -> tuple[Knots, Index]:
+    """The knots with holds of no length left out and holds in a row made one."""
     last = np.append(fiber[1:] != fiber[:-1], True)
     kept = np.flatnonzero(last | (knots.manner != HOLD) | (np.append(knots.time_s[1:], np.inf) > knots.time_s))
     again = np.zeros(len(kept), dtype=bool)
     rests = knots.manner[kept] == HOLD
     again[1:] = rests[1:] & rests[:-1] & (fiber[kept][1:] == fiber[kept][:-1])
     kept = kept[~again]
-    return np.concatenate([[0], np.cumsum(np.bincount(fiber[kept], minlength=fibers))]), _picked(knots, kept)
+    return _picked(knots, kept), fiber[kept]
