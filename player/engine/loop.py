@@ -96,6 +96,10 @@ class Engine:
         """Arm every board. Raises Refused without a fresh pre-flight."""
         self._become("arm")
 
+    def tend(self) -> None:
+        """Keep the links alive while nothing is played: what boards tell is heard, and they hear from the player."""
+        self._hear(self.boards.poll())
+
     def run(self, from_s: float = 0.0) -> Iterator[Status]:
         """Play from a place of the score until all is at rest, or vented; a snapshot after every tick.
 
@@ -234,7 +238,9 @@ class Engine:
                     status=event.status,
                 )
             if event.kind == "lost":
-                self._fault(event.driver, f"{event.driver}: the link is lost: {event.say}", "fault")
+                self._fault(event.driver, f"{event.driver}: {event.say}", "fault")
+            elif event.kind == "silent" and self.safety.state not in ("idle", "vented"):
+                self._fault(event.driver, f"{event.driver}: {event.say}", "fault")
             elif event.kind == "fault":
                 name, means, sentence = FAULTS.get(event.code, (f"fault {event.code}", "fault", "a fault not known here"))
                 said = f": {event.say}" if event.say else ""
@@ -275,7 +281,7 @@ class Engine:
             "resume": self.source.go_on,
             "let_down": self._let_down,
             "disarm": self._disarm,
-            "vent": lambda: self._hear(self.boards.vent()),
+            "vent": self._vent,
         }
         if self._log is not None:
             self._log.tell("state", self._clock.now(), was=was, event=event, state=self.safety.state)
@@ -294,13 +300,23 @@ class Engine:
         until = self._clock.now() + SETTLE_S
         while not self.boards.settled("idle") and self._clock.now() < until and self.safety.state != "vented":
             self._clock.wait_until(self._clock.now() + SLICE_S)
-            self._hear(self.boards.poll())
+            self.tend()
             if any(command.kind in ("vent", "stop") for command in tuple(self._asked)):
                 self._asked.clear()
                 self._stop("vented", "vented by the operator", "vent")
         if not self.boards.settled("idle") and self.safety.state != "vented":
             self._fault("", "a board did not say that it has disarmed; it is vented", "note")
             self._stop("fault", "a board did not say that it has disarmed", "vent")
+
+    def _vent(self) -> None:
+        """Tell every board to vent, all of them before any is waited for; then hear them say that they have."""
+        self._hear(self.boards.vent())
+        until = self._clock.now() + SETTLE_S
+        while not self.boards.settled("vented") and self._clock.now() < until:
+            self._clock.wait_until(self._clock.now() + SLICE_S)
+            self.tend()
+        if not self.boards.settled("vented"):
+            self._fault("", "a board did not say that it has vented: shut its supply by hand", "note")
 
     def _tell(self, say: str) -> None:
         if len(self._told) < MOST_FAULTS:

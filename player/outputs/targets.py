@@ -11,6 +11,8 @@ from player.engine.clock import Clock
 from player.outputs.base import Output
 
 DEFAULT_BAUD = 1_000_000
+"""Baud of a line for which none is said: 48 channels at 200 Hz fill a quarter of it."""
+
 BAUDS = (115_200, 2_000_000)
 """Slowest and fastest line of the wire protocol."""
 
@@ -65,7 +67,7 @@ def _file(context: Context, drivers: tuple[str, ...], target: Target) -> Output:
 
 
 def _serial(context: Context, drivers: tuple[str, ...], target: Target) -> Output:
-    from player.outputs.serial_line import SerialLine
+    from player.outputs.board import Board
 
     port, baud = target.rest, DEFAULT_BAUD
     if with_baud := _BAUD.fullmatch(target.rest):
@@ -76,7 +78,7 @@ def _serial(context: Context, drivers: tuple[str, ...], target: Target) -> Outpu
         baud = int(with_baud["baud"])
     if not port:
         raise _wrong(target, "no port after 'serial:'", "serial:PORT or serial:PORT@BAUD", "'drawcord ports' lists those found")
-    return SerialLine(context.rig, drivers[0], port, baud, context.clock)
+    return Board(context.rig, context.abilities, drivers[0], port, baud, context.clock)
 
 
 SCHEMES = {
