@@ -14,6 +14,9 @@ _WRITTEN = re.compile(
 )
 
 
+WORDS = {Fraction(0): "rest", Fraction(1): "full"}
+"""Targets that have a word; one written as a word stays a word where it can."""
+
 _FINEST = 1_000_000
 """The largest denominator that is written as a fraction; beyond it a decimal is easier to read."""
 
@@ -66,10 +69,12 @@ def written(text: str) -> Written:
 def write_like(original: str, value: Fraction) -> str:
     """A new value written in the form of the old one: fractions stay fractions, decimals decimals, the unit stays.
 
-    `value` is in the model's unit (seconds where milliseconds are written). The same value gives the same text. A word
-    such as `rest` becomes a plain number. What no decimal can give is rounded to
+    `value` is in the model's unit (seconds where milliseconds are written). The same value gives the same text. The words
+    `rest` and `full` become plain numbers where neither fits. What no decimal can give is rounded to
     6 places, unless the old form was a fraction.
     """
+    if original in WORDS.values() and value in WORDS:
+        return WORDS[value]
     try:
         old = written(original)
     except Unreadable:

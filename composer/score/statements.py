@@ -128,7 +128,9 @@ def _section(tree: Tree, row: Row, span: Span) -> SectionHead:
     options = row.once(rest)
     repeat = repeat_of(options["times"], row) if "times" in options else None
     if repeat is not None and repeat.every is None:
-        row.fault(repeat.span, "a section's repeats need the time between them", "'every' and a duration, such as 'times 4 every 8'")
+        row.fault(
+            repeat.span, "a section's repeats need the time between them", "'every' and a duration, such as 'times 4 every 8'"
+        )
     firm = options["firm"].children[1] if "firm" in options else None
     return SectionHead(
         str(name),

@@ -27,7 +27,9 @@ def test_a_number_is_read_exactly(text, value, form, unit):
     assert (number.value, number.form, number.unit) == (value, form, unit)
 
 
-@pytest.mark.parametrize("text", ["", "x", "1.", ".5", "1/0", "2+1/0", "1" * 19, "0." + "1" * 19, "1/" + "9" * 5000, "1.2.3", "--1", "١"])
+@pytest.mark.parametrize(
+    "text", ["", "x", "1.", ".5", "1/0", "2+1/0", "1" * 19, "0." + "1" * 19, "1/" + "9" * 5000, "1.2.3", "--1", "١"]
+)
 def test_what_is_no_number_is_refused(text):
     with pytest.raises(Unreadable):
         written(text)
@@ -57,6 +59,8 @@ def test_what_is_no_number_is_refused(text):
         ("4Hz", "5", "5Hz"),
         ("0.8 m/s", "-1/2", "-0.5 m/s"),
         ("rest", "7/20", "0.35"),
+        ("rest", "0", "rest"),
+        ("rest", "1", "full"),
         ("hold", "1", "1"),
     ],
 )

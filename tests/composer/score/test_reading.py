@@ -132,7 +132,11 @@ def test_a_used_file_brings_its_phrases_and_groups_and_nothing_else():
 
 
 def test_a_used_file_uses_others_relative_to_itself():
-    used = {"a/b.score": "use c.score\nuse ../d.score\n", "a/c.score": "phrase c\n  1 full\n", "d.score": "phrase d\n  1 full\n"}
+    used = {
+        "a/b.score": "use c.score\nuse ../d.score\n",
+        "a/c.score": "phrase c\n  1 full\n",
+        "d.score": "phrase d\n  1 full\n",
+    }
     assert set(read("use a/b.score\n", used).phrases) == {"c", "d"}
 
 
@@ -154,7 +158,9 @@ def test_a_score_that_uses_itself_is_a_circle():
 
 def test_files_lead_no_deeper_than_the_bound():
     used = {f"{n}.score": f"use {n + 1}.score\n" for n in range(most("depth") + 1)}
-    assert faults_of("use 0.score\n", used)[0].startswith(f"{most('depth') - 1}.score:1:5: 'use' leads more than {most('depth')}")
+    assert faults_of("use 0.score\n", used)[0].startswith(
+        f"{most('depth') - 1}.score:1:5: 'use' leads more than {most('depth')}"
+    )
     used[f"{most('depth') - 1}.score"] = ""
     assert read("use 0.score\n", used)
 
@@ -182,9 +188,7 @@ def test_a_phrase_defined_here_and_in_a_used_file_names_both():
 
 @pytest.mark.parametrize("line", ['title "a"', "rig a.toml", "keep clock"])
 def test_what_may_stand_once_names_both_lines_where_it_stands_twice(line):
-    assert faults_of(f"{line}\n\n{line}\n") == [
-        f"estuary.score:3:1: '{line.split()[0]}' is written twice: here and in line 1"
-    ]
+    assert faults_of(f"{line}\n\n{line}\n") == [f"estuary.score:3:1: '{line.split()[0]}' is written twice: here and in line 1"]
 
 
 def test_a_half_typed_line_leaves_the_rest_of_the_score_readable():
@@ -201,8 +205,11 @@ def test_a_bad_head_puts_no_blame_on_those_who_name_it():
 
 
 ALPHABET = st.sampled_from(
-    [*"0123456789.:/+-%#\"'=,*\t \n\r\x00\ufeff\u2028é\U0001f300", "\n  ", "1:1", "250ms", "4Hz", "m/s"]
-    + sorted(GOOD.replace("\n", " ").split())
+    [
+        *"0123456789.:/+-%#\"'=,*\t \n\r\x00\ufeff\u2028é\U0001f300",
+        *("\n  ", "1:1", "250ms", "4Hz", "m/s"),
+        *sorted(GOOD.replace("\n", " ").split()),
+    ]
 )
 
 
