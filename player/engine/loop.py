@@ -4,10 +4,8 @@ A set's due time follows from its tick's number, never from when the loop woke, 
 knows no terminal and no command line: it is given a source, outputs and a clock, and yields a snapshot a tick.
 """
 
-import gc
 from collections import deque
 from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
 from dataclasses import dataclass
 
 import numpy as np
@@ -16,10 +14,12 @@ from composer.rig.model import Rig
 from player.engine.boards import Boards
 from player.engine.clock import Clock
 from player.engine.errors import Errors
+from player.engine.quiet import no_collecting
 from player.engine.run_log import RunLog
-from player.engine.safety import FAULTS, Refused, Safety, after
+from player.engine.safety import Refused, Safety, after
 from player.engine.source import Source
 from player.engine.status import MOST_FAULTS, Ending, Lateness, RunFault, Status
+from player.engine.verdicts import ARMED, verdict
 from player.outputs.base import Event, Mark, Output
 from player.wire.values import clip, is_valve, to_wire
 
@@ -111,7 +111,7 @@ class Engine:
             if self.safety.state == "armed":
                 self._why = "the score came to its end"
                 self._become("play", lambda: self.source.start(from_s))
-                with _no_collecting():
+                with no_collecting():
                     yield from self._ticks()
         finally:
             if self.safety.state not in ("idle", "vented"):
@@ -237,18 +237,11 @@ class Engine:
                     code=event.code,
                     status=event.status,
                 )
-            if event.kind == "lost":
-                self._fault(event.driver, f"{event.driver}: {event.say}", "fault")
-            elif event.kind == "silent" and self.safety.state not in ("idle", "vented"):
-                self._fault(event.driver, f"{event.driver}: {event.say}", "fault")
-            elif event.kind == "fault":
-                name, means, sentence = FAULTS.get(event.code, (f"fault {event.code}", "fault", "a fault not known here"))
-                said = f": {event.say}" if event.say else ""
-                self._fault(event.driver, f"{event.driver}: {name}: {sentence}{said}", means)
-            elif event.kind == "state" and self.safety.state in ("playing", "paused") and event.status != "armed":
-                self._fault(event.driver, f"{event.driver}: the board says that it is {event.status}", "fault")
-            elif event.kind == "note":
-                self._tell(f"{event.driver}: {event.say}")
+            means, say = verdict(event, self.safety.state)
+            if means == "tell":
+                self._tell(say)
+            elif means:
+                self._fault(event.driver, say, means)
 
     def _fault(self, driver: str, say: str, means: str) -> None:
         """Keep a fault for the report, tell it, and do what it means for the run."""
@@ -259,16 +252,16 @@ class Engine:
             self._tell(say)
         else:
             self._more_faults += 1
-        if means != "note" and self.safety.state in ("armed", "playing", "paused", "resting"):
+        if means != "note" and self.safety.state in ARMED:
             self._stop("fault", say, means)
 
     def _stop(self, how: str, why: str, event: str) -> None:
-        """End the run by that event; the first reason stays, unless a later one is graver."""
+        """End the run by that event; the first reason stays, unless a later one is graver. Raises Refused before anything is done."""
         gravity = ("end", "stopped", "vented", "fault")
-        was = self.safety.state
-        self._become(event)
-        if was not in ("resting", "vented") or gravity.index(how) > gravity.index(self._how):
+        after(self.safety, event)
+        if self.safety.state not in ("resting", "vented") or gravity.index(how) > gravity.index(self._how):
             self._how, self._why = how, why
+        self._become(event)
 
     def _become(self, event: str, start: Callable[[], None] | None = None) -> None:
         """The transition of an event, and all that it must do."""
@@ -356,18 +349,3 @@ class Engine:
             faults=tuple(self._faults),
             more_faults=self._more_faults,
         )
-
-
-@contextmanager
-def _no_collecting() -> Iterator[None]:
-    """Garbage is collected before and after the loop, never in it; what exists already is set aside for good."""
-    was = gc.isenabled()
-    gc.collect()
-    gc.freeze()
-    gc.disable()
-    try:
-        yield
-    finally:
-        gc.unfreeze()
-        if was:
-            gc.enable()
