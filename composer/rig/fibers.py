@@ -199,8 +199,9 @@ def _mirrors(document: Document, found: Fibers) -> dict[str, int]:
     """The index of each fiber's partner; said of one fiber, it holds for both, and the two must not disagree."""
     index = {item.name: n for n, item in enumerate(found.hung)}
     said: dict[str, tuple[str, Hung]] = {}
+    blamed = set()
     for item in found.hung:
-        if item.mirror is None or (item.mirror not in index and not found.known):
+        if item.mirror is None or item.path in blamed or (item.mirror not in index and not found.known):
             continue
         key = (*item.path, "mirror" if item.path[0] == "fiber" else "mirrored")
         if item.mirror not in index:
@@ -212,8 +213,9 @@ def _mirrors(document: Document, found: Fibers) -> dict[str, int]:
         for one, other in ((item.name, item.mirror), (item.mirror, item.name)):
             was, by = said.setdefault(one, (other, item))
             if was != other:
-                found = f"{item.name} is mirrored with {item.mirror}, but {one} with {was} (line {document.line(by.path)})"
-                document.at_value(key, found, "one partner for every fiber")
+                blamed.add(item.path)
+                disagree = f"{item.name} is mirrored with {item.mirror}, but {one} with {was} (line {document.line(by.path)})"
+                document.at_value(key, disagree, "one partner for every fiber")
                 break
     return {one: index[other] for one, (other, _) in said.items()}
 
