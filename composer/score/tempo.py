@@ -41,7 +41,7 @@ class TempoMap:
         """Seconds from the score's start at `counts`, any shape."""
         counts = np.asarray(counts, dtype=float)
         if len(self.rate) == 1 and self.slope[0] == 0.0:
-            return counts / self.rate[0]
+            return self.tempo_s[0] + (counts - self.tempo_count[0]) / self.rate[0]
         k = _stretch(self.tempo_count, counts)
         gone = counts - self.tempo_count[k]
         bend = np.where(gone > 0.0, self.slope[k] * gone / self.rate[k], 0.0)
@@ -51,7 +51,7 @@ class TempoMap:
         """Counts at `seconds`, any shape: the inverse of `seconds`."""
         seconds = np.asarray(seconds, dtype=float)
         if len(self.rate) == 1 and self.slope[0] == 0.0:
-            return seconds * self.rate[0]
+            return self.tempo_count[0] + (seconds - self.tempo_s[0]) * self.rate[0]
         k = _stretch(self.tempo_s, seconds)
         gone = seconds - self.tempo_s[k]
         bend = np.where(gone > 0.0, self.slope[k] * gone, 0.0)
