@@ -22,6 +22,7 @@ BOUNDS: dict[str, Bound] = {
         Bound("digits", 18, "digits in a row in a number"),
         Bound("depth", 8, "files deep that `use` may lead"),
         Bound("files", 64, "files that a score may use"),
+        Bound("nesting", 64, "groups within one another"),
         Bound("repeats", 100_000, "repeats of an entry or a section"),
         Bound("moves", 4_000_000, "moves once every entry is written out for every fiber"),
         Bound("faults", 1000, "faults listed for one score"),

@@ -10,6 +10,12 @@ from composer.score.bounds import BOUNDS, most
 from composer.score.model import Duration, Entry, Line, Meter, Phrase, Place, Score, Section, Span
 from composer.score.row import where
 
+MOST_HINTS = 50
+"""Unknown phrases for which the nearest is sought."""
+
+BAD_METER = "meter?"
+"""Among the doubtful names: a meter could not be read, so that no place can be judged."""
+
 DEFAULT_METER = 4
 """Counts in a bar where the score names no meter."""
 
@@ -61,6 +67,7 @@ class _Checks:
         self.score = score
         self.doubtful = doubtful
         self.torn = torn
+        self.hints: dict[str, str] = {}
         self.bars = Bars(score.meters)
         self.faults: list[Fault] = []
 
@@ -68,6 +75,13 @@ class _Checks:
         lines = self.score.lines.get(span.file, ())
         text = lines[span.line - 1] if 0 < span.line <= len(lines) else ""
         self.faults.append(Fault(where(span, text), found, expected, hint))
+
+    def hint(self, name: str) -> str:
+        """The nearest phrase, or all there are; for a few names only, since the search takes its time in a long score."""
+        if name not in self.hints and len(self.hints) < MOST_HINTS:
+            phrases = list(self.score.phrases)
+            self.hints[name] = (nearest(name, phrases) if len(phrases) <= MOST_HINTS * 20 else "") or _known(phrases)
+        return self.hints.get(name, "")
 
     def order(self, early: Place, late: Place) -> Fraction | None:
         """How long after the one place the other is, in counts or seconds; None where one is in bars, the other in seconds."""
@@ -94,19 +108,23 @@ def _meters(checks: _Checks) -> None:
 
 
 def _tempi(checks: _Checks) -> None:
+    if BAD_METER in checks.doubtful:
+        return
     placed = [(checks.bars.count_of(t.at) if t.at else Fraction(0), t) for t in checks.score.tempi]
     keys = [((at, t.at.seconds if at is None else None), t.span) for at, t in placed]
     _twice(checks, "two tempi from one place", keys, "keep one, or move one with 'at'")
-    ramps = [(at, checks.bars.count_of(t.until), t) for at, t in placed if t.until is not None]
-    for start, end, ramp in ramps:
+    for ramp in (tempo for tempo in checks.score.tempi if tempo.until is not None):
         apart = checks.order(ramp.at, ramp.until)
         if apart is not None and apart <= 0:
             checks.fault(ramp.until.span, "the change of tempo ends before it begins", "a place after its start")
-            continue
-        for at, other in placed:
-            if None not in (start, at, end) and start < at < end:
-                found = f"this tempo begins within the change of tempo of line {ramp.span.line}"
-                checks.fault(other.span, found, "a place before it begins, or where it ends or later")
+    busy: tuple[Fraction, int] | None = None  # until when the changes so far last, and the line that says so
+    for at, tempo in sorted(((at, t) for at, t in placed if at is not None), key=lambda one: (one[0], one[1].span.line)):
+        end = checks.bars.count_of(tempo.until) if tempo.until else None
+        if busy and at < busy[0]:
+            found = f"this tempo begins within the change of tempo of line {busy[1]}"
+            checks.fault(tempo.span, found, "a place before it begins, or where it ends or later")
+        if end is not None and (busy is None or end > busy[0]):
+            busy = end, tempo.span.line
 
 
 def _every_place(score: Score) -> Iterator[Place | None]:
@@ -127,6 +145,8 @@ def _every_place(score: Score) -> Iterator[Place | None]:
 
 
 def _places(checks: _Checks) -> None:
+    if BAD_METER in checks.doubtful:
+        return
     for place in _every_place(checks.score):
         if place is None or place.seconds is not None:
             continue
@@ -140,21 +160,23 @@ def _places(checks: _Checks) -> None:
 
 
 def _pins(checks: _Checks) -> None:
+    if BAD_METER in checks.doubtful:
+        return
     for pin in checks.score.pins:
         apart = checks.order(pin.at, pin.until) if pin.until else None
         if apart is not None and apart < 0:
             checks.fault(pin.until.span, "the pins end before they begin", "a place after the first pin")
-        elif apart is not None and pin.every is not None and _same(pin.every, pin.at):
-            _repeats(checks, pin.every.span, apart / pin.every.value)
+        elif pin.every is not None and (times := _times(pin.every, pin.at, pin.until, apart)) > most("repeats"):
+            checks.fault(pin.every.span, f"that makes {int(times)} pins", f"at most {most('repeats')}")
 
 
-def _repeats(checks: _Checks, span: Span, times: Fraction) -> None:
-    if times > most("repeats"):
-        checks.fault(span, f"that makes {int(times)} pins", f"at most {most('repeats')}")
-
-
-def _same(duration: Duration, place: Place) -> bool:
-    return duration.unit == ("counts" if place.seconds is None else "s")
+def _times(every: Duration, first: Place, last: Place, apart: Fraction | None) -> Fraction:
+    """How many pins there are; 0 where only the tempo can tell."""
+    if every.unit == "bars":
+        return (last.bar - first.bar) / every.value
+    if apart is not None and every.unit == ("counts" if first.seconds is None else "s"):
+        return apart / every.value
+    return Fraction(0)
 
 
 def _cues(checks: _Checks) -> None:
@@ -216,8 +238,7 @@ def _entry(checks: _Checks, section: Section | None, entry: Entry) -> int:
     phrase = score.phrases.get(entry.phrase.text)
     if phrase is None:
         if not {"*", entry.phrase.text} & checks.doubtful:
-            hint = nearest(entry.phrase.text, score.phrases) or _known(list(score.phrases))
-            checks.fault(entry.phrase.span, f"no phrase '{entry.phrase.text}'", "", hint)
+            checks.fault(entry.phrase.span, f"no phrase '{entry.phrase.text}'", "", checks.hint(entry.phrase.text))
         return 0
     torn = phrase.name in checks.torn
     if entry.retrograde and not torn and phrase.lines and phrase.lines[0].offset.value != 0:
@@ -252,27 +273,44 @@ def _known(names: list[str]) -> str:
 
 
 def _circles(checks: _Checks) -> None:
-    """Groups that hold themselves, by way of others or not: one fault a circle."""
+    """Groups that hold themselves, by way of others or not, and groups too deep within one another."""
     groups = checks.score.groups
-    done: set[str] = set()
+    depth: dict[str, int] = {}
     for name in groups:
-        path: list[str] = []
-        stack = [(name, iter(groups[name].members))] if name not in done else []
-        path.append(name)
+        if name in depth:
+            continue
+        path = {name: 1}  # the groups that are open, in order; each with its depth so far
+        stack = [iter(groups[name].members)]
         while stack:
-            here, members = stack[-1]
-            for member in members:
-                if member.text in path:
-                    loop = [*path[path.index(member.text) :], member.text]
-                    checks.fault(member.span, f"a group cannot hold itself: {' -> '.join(loop)}", "", "take it out")
-                elif member.text in groups and member.text not in done:
-                    stack.append((member.text, iter(groups[member.text].members)))
-                    path.append(member.text)
-                    break
-            else:
-                done.add(here)
+            here = next(reversed(path))
+            member = next(stack[-1], None)
+            if member is None:
                 stack.pop()
-                path.pop()
+                depth[here] = path.pop(here)
+                if path:
+                    _deeper(path, depth[here])
+            elif member.text in path:
+                way = list(path)
+                loop = [*way[way.index(member.text) :], member.text]
+                checks.fault(member.span, f"a group cannot hold itself: {_chain(loop)}", "", "take it out")
+            elif member.text in depth:
+                _deeper(path, depth[member.text])
+            elif member.text in groups:
+                path[member.text] = 1
+                stack.append(iter(groups[member.text].members))
+    deepest = next((groups[name] for name in groups if depth[name] > most("nesting")), None)
+    if deepest:
+        found = f"'{deepest.name}' holds more than {most('nesting')} {BOUNDS['nesting'].says}"
+        checks.fault(deepest.span, found, "", "name the fibers themselves")
+
+
+def _deeper(path: dict[str, int], below: int) -> None:
+    last = next(reversed(path))
+    path[last] = max(path[last], below + 1)
+
+
+def _chain(names: list[str]) -> str:
+    return " -> ".join(names if len(names) <= 8 else [*names[:4], "…", *names[-3:]])
 
 
 def _number(value: Fraction) -> str:

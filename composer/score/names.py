@@ -3,10 +3,13 @@
 from composer.faults import Fault, nearest
 from composer.fiber.kinds import KINDS
 from composer.rig.model import Rig
-from composer.rig.select import Circle, Selector, UnknownName
+from composer.rig.select import Selector, UnknownName
 from composer.score.bounds import BOUNDS, most
 from composer.score.model import Entry, Name, Phrase, Score, Section, Span, Target
 from composer.score.row import where
+
+MOST_FAULTS = 200
+"""Names that are looked up in vain before no more are looked for: the search for the nearest takes its time."""
 
 
 def groups_of(score: Score) -> dict[str, tuple[str, ...]]:
@@ -56,11 +59,10 @@ class _Names:
 
     def resolve(self, name: Name) -> tuple[int, ...]:
         """The fibers of a name; none, and a fault, where there are none. A group's own members are told of at the group."""
+        if len(self.faults) >= MOST_FAULTS:
+            return ()
         try:
             return self.selector.resolve(name.text)
-        except Circle as stop:
-            if name.text not in self.score.groups:
-                self.fault(name.span, f"no fiber or group '{name.text}'", "", stop.hint)
         except UnknownName as stop:
             if name.text not in self.score.groups:
                 rig = self.score.rig.text if self.score.rig else self.rig.file

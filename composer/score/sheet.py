@@ -5,6 +5,7 @@ from typing import Any
 
 from composer.faults import Fault, Where
 from composer.score.bounds import BOUNDS, most
+from composer.score.checks import BAD_METER
 from composer.score.grammar import Misfit, body_of, parse_line
 from composer.score.model import Cue, Entry, Group, Line, Meter, Phrase, Pin, Section, Tempo
 from composer.score.moves import entry_of, line_of
@@ -121,6 +122,8 @@ def _outer(sheet: Sheet, row: Row, body: str) -> _Block | None:
         word, _, rest = body.strip().partition(" ")
         sheet.doubtful.update(rest.replace("=", " ").split()[:1])
         likely = tree.hint.removeprefix("did you mean '").removesuffix("'?") if tree.column == 1 else word
+        if likely == "meter":
+            sheet.doubtful.add(BAD_METER)
         return _Block(_STARTS.get(likely, ""), None)
     made = statement_of(tree, row, body)
     kept = row.sound
@@ -129,8 +132,8 @@ def _outer(sheet: Sheet, row: Row, body: str) -> _Block | None:
             sheet.doubtful.add(made.name)
         return _Block("move" if isinstance(made, PhraseHead) else "entry", made if kept else None)
     if not kept:
-        if isinstance(made, Group):
-            sheet.doubtful.add(made.name)
+        if isinstance(made, Group | Meter):
+            sheet.doubtful.add(made.name if isinstance(made, Group) else BAD_METER)
         return None
     lists = {Text: sheet.texts, Meter: sheet.meters, Tempo: sheet.tempi, Group: sheet.groups, Pin: sheet.pins, Cue: sheet.cues}
     lists[type(made)].append(made)

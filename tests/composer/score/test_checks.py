@@ -5,8 +5,10 @@ from fractions import Fraction
 import pytest
 
 from composer.faults import Faults
+from composer.rig.select import Selector
 from composer.score.bounds import most
 from composer.score.checks import Bars
+from composer.score.names import groups_of
 from composer.score.reading import read_score
 
 PHRASE = "phrase p\n  0 rest\n  2 full\n"
@@ -48,6 +50,7 @@ def test_bars_are_counted_through_changes_of_meter():
         ("section s at 1:5", ["1:14 bar 1 has 4 counts and no count 5"]),
         ("pin 5:1 every 1 until 4:1", ["1:23 the pins end before they begin"]),
         ("pin 5:1 every 1 until 5:1", []),
+        ("pin 1:1 every 1/1000bars until 200:1", ["1:15 that makes 199000 pins"]),
         ("pin 0s every 1ms until 1000s", ["1:14 that makes 1000000 pins"]),
         ('cue "a" at 1:1\ncue "a" at 2:1', ["2:1 a cue of this name is there already: here and in line 1"]),
         ("phrase p", ["1:1 phrase 'p' has no lines"]),
@@ -98,7 +101,26 @@ def test_many_entries_are_bounded_together():
     assert said(text) == ["4:1 written out, this score has more than 4000000 moves"]
 
 
-def test_groups_within_groups_a_thousand_deep_are_checked_all_the_same():
-    deep = "".join(f"group g{n} = g{n + 1}\n" for n in range(3000))
+@pytest.mark.parametrize("backwards", [False, True])
+def test_groups_lie_no_deeper_within_one_another_than_the_bound(make_rig, backwards):
+    def chain(count: int) -> str:
+        lines = [f"group g{n} = g{n + 1}\n" for n in range(1, count)] + [f"group g{count} = r.1\n"]
+        return "".join(reversed(lines) if backwards else lines)
+
+    deep = chain(most("nesting"))
     assert said(deep) == []
-    assert len(said(deep + "group g3000 = g0\n")) == 1
+    assert Selector(make_rig(1), groups_of(read_score(deep, "s"))).resolve("g1") == (0,)
+    assert [one.partition(" ")[2] for one in said(chain(most("nesting") + 1))] == [
+        "'g1' holds more than 64 groups within one another"
+    ]
+
+
+def test_a_circle_of_a_thousand_groups_is_told_once_and_in_short():
+    text = "".join(f"group g{n} = g{(n + 1) % 1000}\n" for n in range(1000))
+    found = [one for one in said(text) if "itself" in one]
+    assert found == ["1000:14 a group cannot hold itself: g0 -> g1 -> g2 -> g3 -> … -> g998 -> g999 -> g0"]
+
+
+def test_where_a_meter_cannot_be_read_no_place_is_judged():
+    assert said("meter 5/3\npin 1:5\n") == ["1:7 a note value of 3 is none"]
+    assert said("metre 5/4\npin 1:5\n") == ["1:1 unknown word 'metre'"]
