@@ -23,7 +23,8 @@ class Landings:
     error: (H,) strain there less strain wanted there
     late_s: (H,) seconds after the written instant at which the fiber had done 95 % of the move: 0 where it had by then,
         nan where it never did before the move after the next began
-    largest: the greatest |strain - target| at any tick within the score, largest_fiber and largest_s where it was
+    largest: the |strain - target| that is the greatest share of its fiber's stroke at any tick within the score,
+        largest_fiber and largest_s where it was
     """
 
     segment: Index
@@ -37,14 +38,14 @@ class Landings:
 
 
 class LandingLog:
-    """Watches a run of tracks: `add` every block in order, then `landings`."""
+    """Watches a run of tracks on fibers of `stroke` (F,): `add` every block in order, then `landings`."""
 
-    def __init__(self, tracks: Tracks):
+    def __init__(self, tracks: Tracks, stroke: Array):
         moving = tracks.manner != HOLD
         fibers = fiber_of(tracks)
         time = tracks.time_s + durations(tracks)
         segments = np.flatnonzero(moving)
-        self._tracks = tracks
+        self._tracks, self._stroke = tracks, stroke[:, None]
         self._segment = segments[np.argsort(time[segments], kind="stable")]
         self._fiber, self._time = fibers[self._segment], time[self._segment]
         start, self._end = tracks.curve[:, 0], end_strain(tracks)
@@ -54,7 +55,7 @@ class LandingLog:
         self._error = np.full(len(self._segment), np.nan)
         self._passed = np.full(len(tracks.time_s), np.inf)
         self._done = 0
-        self._largest = (0.0, 0, 0.0)
+        self._worst, self._largest = 0.0, (0.0, 0, 0.0)
         self._was: tuple[float, Array] | None = None
 
     def add(self, block: Block) -> None:
@@ -65,10 +66,11 @@ class LandingLog:
         self._land(times, strain)
         self._pass(times, strain)
         within = block.time_s <= self._tracks.duration_s + SAME_INSTANT_S
-        wrong = np.abs(block.strain - block.target)[:, within]
-        if wrong.size and wrong.max() > self._largest[0]:
+        wrong = np.abs(block.strain - block.target)[:, within] / self._stroke
+        if wrong.size and wrong.max() > self._worst:
             fiber, tick = np.unravel_index(np.argmax(wrong), wrong.shape)
-            self._largest = (float(wrong[fiber, tick]), int(fiber), float(block.time_s[tick]))
+            self._worst = float(wrong[fiber, tick])
+            self._largest = (self._worst * float(self._stroke[fiber, 0]), int(fiber), float(block.time_s[tick]))
         self._was = (float(times[-1]), strain[:, -1].copy())
 
     def landings(self) -> Landings:

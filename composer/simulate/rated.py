@@ -28,6 +28,7 @@ class RatedFibers:
     exhaust: Array
     air_L: Array
     by_valve: NDArray[np.bool_]
+    any_valve: bool
     indifferent_kPa: float
 
     def at(self, strain: Array) -> Moved:
@@ -36,13 +37,15 @@ class RatedFibers:
 
     def after(self, was: Moved, dt_s: float, command: Array, supply_kPa: float) -> Moved:
         """The fibers after `dt_s` of a constant `command` (M,) and `supply_kPa` in the receiver: exact for any `dt_s`."""
-        goal = np.where(self.by_valve, (command > 0.0) * self.stroke, np.clip(command, 0.0, 1.0) * self.stroke)
-        opening = np.where(self.by_valve, np.minimum(np.abs(command), 1.0), 1.0) * dt_s
+        if self.any_valve:
+            goal = np.where(self.by_valve, command > 0.0, np.minimum(np.maximum(command, 0.0), 1.0)) * self.stroke
+            seconds = np.where(self.by_valve, np.minimum(np.abs(command), 1.0), 1.0) * dt_s
+        else:
+            goal, seconds = np.minimum(np.maximum(command, 0.0), 1.0) * self.stroke, dt_s
         push = min(max(supply_kPa / self.indifferent_kPa, 0.0), 1.0)
-        step = np.clip(goal - was.strain, -self.exhaust * opening, self.fill * (push * opening))
-        reached = was.strain + step
-        # Adding the step may miss a goal within reach by a rounding error, and a stop must be met exactly.
-        reached = np.where(np.abs(goal - reached) < 1e-12, goal, reached)
+        # Goals are compared before anything is added, so that a fiber within reach is at its goal to the last digit.
+        highest, lowest = was.strain + self.fill * (push * seconds), was.strain - self.exhaust * seconds
+        reached = np.minimum(np.maximum(goal, lowest), highest)
         drawn = self.air_L @ np.maximum(reached - was.strain, 0.0)
         return Moved(reached, was.pressure_kPa, float(drawn))
 
@@ -51,11 +54,13 @@ def rated_fibers(rig: Rig, abilities: Abilities, members: NDArray[np.int64]) -> 
     """The rated fibers among a rig's fibers, by their indices."""
     make = abilities.which[members]
     stroke = abilities.stroke[members]
+    by_valve = is_valve_drive(rig)[members]
     return RatedFibers(
         stroke=stroke,
         fill=abilities.fill[make, 0],
         exhaust=abilities.exhaust[make, 0],
         air_L=abilities.air_L[make, -1] / stroke,
-        by_valve=is_valve_drive(rig)[members],
+        by_valve=by_valve,
+        any_valve=bool(by_valve.any()),
         indifferent_kPa=receiver.needed_kPa(rig.supply),
     )

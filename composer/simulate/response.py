@@ -17,8 +17,9 @@ class Response:
     def __init__(self, delay_s: Array, at_rest: Array):
         """`delay_s` (F,) seconds, `at_rest` (F,) the command that has always been in force before the first."""
         self._at_rest = at_rest
-        self._delays, group = np.unique(delay_s, return_inverse=True)
-        self._members = [np.flatnonzero(group == number) for number in range(len(self._delays))]
+        delays, group = np.unique(delay_s, return_inverse=True)
+        self._each: list[float] = delays.tolist() or [0.0]
+        self._members = [np.flatnonzero(group == number) for number in range(len(self._each))]
         self.reset()
 
     def reset(self) -> None:
@@ -31,23 +32,27 @@ class Response:
         begin, end = self._now, self._now + dt_s
         self._sent.append((begin, np.array(command, dtype=float)))
         self._now = end
-        oldest = begin - self._delays[-1]
+        oldest = begin - self._each[-1]
         while len(self._sent) > 1 and self._sent[1][0] <= oldest + SAME_INSTANT_S:
             self._sent.popleft()
-        turns = np.array([sent for sent, _ in self._sent])
-        edges = (turns[:, None] + self._delays).ravel()
-        inside = np.unique(edges[(edges > begin + SAME_INSTANT_S) & (edges < end - SAME_INSTANT_S)])
+        first, last = begin + SAME_INSTANT_S, end - SAME_INSTANT_S
+        edges = {sent + delay for sent, _ in self._sent for delay in self._each}
         at = begin
-        for until in [*inside, end]:
-            if until - at > SAME_INSTANT_S or until == end:
-                yield until - at, self._in_force(turns, at)
+        for until in sorted(edge for edge in edges if first < edge < last):
+            if until - at > SAME_INSTANT_S:
+                yield until - at, self._in_force(at)
                 at = until
+        yield end - at, self._in_force(at)
 
-    def _in_force(self, turns: Array, at: float) -> Array:
-        which = np.searchsorted(turns, at - self._delays + SAME_INSTANT_S, side="right") - 1
-        if len(self._delays) == 1:
-            return self._sent[int(which[0])][1]
+    def _in_force(self, at: float) -> Array:
+        each = [self._latest(at - delay + SAME_INSTANT_S) for delay in self._each]
+        if len(each) == 1:
+            return each[0]
         command = np.empty(len(self._at_rest))
-        for members, turn in zip(self._members, which, strict=True):
-            command[members] = self._sent[int(turn)][1][members]
+        for members, sent in zip(self._members, each, strict=True):
+            command[members] = sent[members]
         return command
+
+    def _latest(self, until: float) -> Array:
+        """What was sent last, up to then."""
+        return next(command for sent, command in reversed(self._sent) if sent <= until)

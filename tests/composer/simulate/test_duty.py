@@ -3,7 +3,8 @@
 import numpy as np
 import pytest
 
-from composer.simulate.duty import beyond_after, coils_of, share_used
+from composer.limits.coil import coils_of
+from composer.simulate.duty import beyond_after, share_used
 
 
 def run(rig, moving):

@@ -40,7 +40,7 @@ def tracks_of(*segments, fibers=1, tail=1.0):
 
 
 def land(tracks, rig, **how):
-    log = LandingLog(tracks)
+    log = LandingLog(tracks, abilities_of(rig).stroke)
     for block in blocks(tracks, rig, abilities_of(rig), **how):
         log.add(block)
     return log.landings()
