@@ -21,6 +21,9 @@ Flags = NDArray[np.bool_]
 BROKEN_S = 1e-10
 """A row short by no more than this is kept; the polish makes it exact."""
 
+WHOLE_FROM = 0.3
+"""Once this share of all events is in it, growing the programme further costs more than solving the whole."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Least:
@@ -34,11 +37,18 @@ class Least:
 
 
 def least_cost(
-    events: Events, rows: Rows, terms: Terms, free: Flags | None = None, whole: bool = False, limit_s: float = np.inf
+    events: Events,
+    rows: Rows,
+    terms: Terms,
+    free: Flags | None = None,
+    whole: bool = False,
+    limit_s: float = np.inf,
+    slack_price: float = np.inf,
 ) -> Least | None:
     """The least-cost shifts of all events, or None where no times satisfy the rows.
 
     free: events to begin with, from an earlier solution; whole: solve the whole at once instead of growing
+    slack_price: what a second costs by which a row beyond the plain differences is broken, in strokes
     """
     count = len(events.written_s)
     free = np.zeros(count, dtype=bool) if free is None else free.copy()
@@ -54,11 +64,13 @@ def least_cost(
         if solved and (not len(broken) or (grown == free).all()):
             return Least(shift, cost(terms, shift), bound, dual, free)
         free = grown | _near(events, order, rows, broken, lack, _own_shift(terms, shift))
+        if np.count_nonzero(free) > WHOLE_FROM * count:
+            free[:] = True
         following = free[events.hits :] & (terms.behind[events.hits :] >= 0)
         free[events.own_hit[events.hits :][following]] = True
         chosen = _inside(rows, free)
         left = contract(events, terms, free)
-        found = solve(rows, chosen, np.flatnonzero(free), left, limit_s)
+        found = solve(rows, chosen, np.flatnonzero(free), left, limit_s, slack_price)
         if found is None:
             return None
         shift = np.zeros(count)

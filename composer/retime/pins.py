@@ -84,8 +84,16 @@ def _bounds(events: Events, rows: Rows, count: int) -> tuple[Array, Array, Index
 
 
 def _chain(
-    event: int, by: list[int], sources: list[int], simple: Index, rows: Rows, low_pin: Index, high_pin: Index, pins_s: Array, short: float
-) -> Chain:  # fmt: skip
+    event: int,
+    by: list[int],
+    sources: list[int],
+    simple: Index,
+    rows: Rows,
+    low_pin: Index,
+    high_pin: Index,
+    pins_s: Array,
+    short: float,
+) -> Chain:
     """The chain that ends at a pinned event, followed back to where it comes from."""
     knots: list[int] = []
     here = event

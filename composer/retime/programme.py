@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 from scipy import sparse
 from scipy.optimize import linprog
 
-from composer.retime.rows import Rows
+from composer.retime.rows import ABOVE_ROW, Rows
 from composer.retime.terms import Contracted
 
 Array = NDArray[np.float64]
@@ -37,9 +37,12 @@ class Solved:
     dual: Array
 
 
-def solve(rows: Rows, chosen: Index, events: Index, terms: Contracted, limit_s: float = np.inf) -> Solved | None:
+def solve(
+    rows: Rows, chosen: Index, events: Index, terms: Contracted, limit_s: float = np.inf, slack_price: float = np.inf
+) -> Solved | None:
     """The least cost over `events` (n,) subject to the rows `chosen` (m,), which name no other event; None where none fits.
 
+    slack_price: finite: what a second costs by which a row that speaks of more than two events is broken, in strokes
     Raises Unsolved where HiGHS fails or runs past `limit_s`.
     """
     n = len(events)
@@ -84,6 +87,14 @@ def solve(rows: Rows, chosen: Index, events: Index, terms: Contracted, limit_s: 
         place = place - sparse.csr_array((np.ones(len(has)), (has, behind[tied][has])), shape=(t, n))
         ties = sparse.csr_array(place @ as_columns + apart)
 
+    soft = np.flatnonzero(rows.kind[chosen] >= ABOVE_ROW) if np.isfinite(slack_price) else np.empty(0, dtype=np.int64)
+    if len(soft):
+        give = sparse.csr_array((np.ones(len(soft)), (soft, np.arange(len(soft)))), shape=(len(chosen), len(soft)))
+        above = sparse.hstack([above, give], format="csr")
+        price, lower = np.append(price, np.full(len(soft), slack_price)), np.append(lower, np.zeros(len(soft)))
+        as_columns = sparse.hstack([as_columns, sparse.csr_array((n, len(soft)))], format="csr")
+        ties = None if ties is None else sparse.hstack([ties, sparse.csr_array((t, len(soft)))], format="csr")
+
     options = {"primal_feasibility_tolerance": TOLERANCE, "dual_feasibility_tolerance": TOLERANCE}
     if np.isfinite(limit_s):
         options["time_limit"] = max(limit_s, 1e-3)
@@ -93,7 +104,7 @@ def solve(rows: Rows, chosen: Index, events: Index, terms: Contracted, limit_s: 
         b_ub=-rows.least[chosen] if len(chosen) else None,
         A_eq=ties,
         b_eq=None if ties is None else np.zeros(t),
-        bounds=np.column_stack((lower, np.full(width, np.inf))),
+        bounds=np.column_stack((lower, np.full(len(lower), np.inf))),
         method="highs-ds",
         options=options,
     )

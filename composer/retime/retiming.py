@@ -1,23 +1,20 @@
 """Retiming: the least change of times with which a rig can do a score, and what it changed."""
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.limits.duration import least_durations
 from composer.retime.apply import retimed
-from composer.retime.events import Events, events_of, knot_times, with_waits
-from composer.retime.local import Least, least_cost
 from composer.retime.pins import Chain, chains_too_long
 from composer.retime.polish import polish
-from composer.retime.rows import Rows, duration_rows, joined, order_rows, pin_rows
 from composer.retime.shrink import Shrunk, factor_that_fits, scaled
-from composer.retime.terms import all_terms, cost
+from composer.retime.solving import Answer, Programme, answer, at_times, durations_to_keep, programme_of
+from composer.retime.terms import cost
 from composer.rig.model import Rig
-from composer.tracks import MOVE, STEP, Tracks, fiber_of
+from composer.tracks import Tracks, fiber_of
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -97,56 +94,6 @@ class Retiming:
     warp_now_s: Array
 
 
-@dataclass(frozen=True, slots=True, eq=False)
-class Programme:
-    """The whole programme of some tracks: prepared tracks, where their knots come from, events, rows, which keep rhythm."""
-
-    tracks: Tracks
-    origin: Index
-    least_s: Array
-    events: Events
-    rows: Rows
-    rhythm: Flags = field(repr=False)
-
-
-def programme_of(
-    tracks: Tracks, abilities: Abilities, pins_s: Array, give_s: Array, firm: Array | None, rhythm: bool | Flags
-) -> Programme:
-    """The programme of tracks; firm and rhythm as `retime` takes them."""
-    prepared, origin = with_waits(tracks)
-    least = durations_to_keep(prepared, abilities)
-    events = events_of(prepared, abilities, least, None if firm is None else firm[origin])
-    rows = joined(
-        [
-            duration_rows(prepared, events, least),
-            order_rows(events),
-            pin_rows(events, pins_s, give_s),
-        ]
-    )
-    return Programme(prepared, origin, least, events, rows, _rhythm_of(events, prepared, origin, rhythm))
-
-
-def durations_to_keep(tracks: Tracks, abilities: Abilities, segments: Index | None = None) -> Array:
-    """Least durations as the programme keeps them: a jump takes no time, and what no time mends keeps what it has."""
-    least = least_durations(tracks, abilities, segments)
-    where = np.arange(len(tracks.time_s)) if segments is None else segments
-    least[tracks.manner[where] == STEP] = 0.0
-    endless = np.flatnonzero(~np.isfinite(least) & (tracks.manner[where] == MOVE))
-    least[endless] = tracks.time_s[where[endless] + 1] - tracks.time_s[where[endless]]
-    return np.where(np.isfinite(least), least, 0.0)
-
-
-def _rhythm_of(events: Events, tracks: Tracks, origin: Index, rhythm: bool | Flags) -> Flags:
-    """(N,) which events keep rhythm; by segment given, a hit does where the greater weight of what lands in it does."""
-    count = len(events.written_s)
-    if isinstance(rhythm, bool | np.bool_):
-        return np.full(count, bool(rhythm))
-    mine = np.asarray(rhythm)[origin]
-    landed = np.flatnonzero(events.arrival)
-    share = np.bincount(events.event[landed], weights=np.where(mine[landed - 1], 1.0, -1.0), minlength=count)[: events.hits]
-    return np.concatenate((share > 0.0, mine[np.flatnonzero(events.free)]))
-
-
 def retime(
     tracks: Tracks,
     abilities: Abilities,
@@ -199,13 +146,7 @@ def retime(
             break
         tracks = retimed(current, programme.origin, current.time_s, tracks.duration_s)
         programme, chains = build(tracks)
-    found = (
-        None
-        if chains
-        else least_cost(
-            programme.events, programme.rows, all_terms(programme.events, programme.rhythm), whole=whole, limit_s=limit_s
-        )
-    )
+    found = None if chains else answer(programme, rig, abilities, whole, limit_s)
     short = tuple(_short(chain, programme, abilities) for chain in chains)
     return _told(programme, tracks, keep, found, shrunk, short, clock() - began)
 
@@ -226,18 +167,18 @@ def _told(
     programme: Programme,
     tracks: Tracks,
     keep: str,
-    found: Least | None,
+    found: Answer | None,
     shrunk: dict[int, Shrunk],
     short: tuple[PinsShort, ...],
     solve_s: float,
 ) -> Retiming:
     """The retiming in the terms of who reads it."""
     events, prepared, origin = programme.events, programme.tracks, programme.origin
-    terms = all_terms(events, programme.rhythm)
+    terms = programme.terms
     hits = events.hits
     was = np.concatenate(([0.0], events.written_s[:hits]))
     fiber = fiber_of(prepared)
-    shift = np.zeros(len(events.written_s)) if found is None else polish(events, programme.rows, found.shift_s)
+    shift = np.zeros(len(events.written_s)) if found is None else polish(events, found.rows, found.least.shift_s)
     now = was + np.concatenate(([0.0], shift[:hits]))
 
     moved_hits = np.flatnonzero(shift[:hits] != 0.0)
@@ -269,12 +210,10 @@ def _told(
         )
         for n, k in ((n, starts[n]) for n in np.flatnonzero(np.abs(own) > 1e-9))
     ]
-    last_rhythm = bool(programme.rhythm[hits - 1]) if hits else False
-    duration = tracks.duration_s + (float(shift[hits - 1]) if last_rhythm else 0.0)
-    times = knot_times(events, shift, prepared)
     new = tracks
     if found is not None:
-        new = retimed(prepared, origin, times, max(duration, float(times.max(initial=0.0))))
+        now_there = at_times(programme, shift)
+        new = retimed(prepared, origin, now_there.time_s, now_there.duration_s)
     return Retiming(
         keep=keep,
         tracks=new,
@@ -286,7 +225,7 @@ def _told(
         ),
         pins_short=short,
         cost=cost(terms, shift) if found is not None else float("nan"),
-        bound=found.bound if found is not None else float("nan"),
+        bound=found.least.bound if found is not None else float("nan"),
         solve_s=solve_s,
         was_s=tracks.duration_s,
         warp_was_s=was,

@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 from scipy import sparse
 
 from composer.retime.events import Events
-from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks, fiber_of
+from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -129,42 +129,49 @@ def pin_rows(events: Events, pins_s: Array, give_s: Array) -> Rows:
     )  # fmt: skip
 
 
-def above_rows(tracks: Tracks, events: Events, max_hold_s: Array, runs: tuple[Index, Index, Array, Array]) -> Rows:
-    """Each run above half stroke lasts at most its fiber's `max_hold_s`, (F,).
+def no_rows(events: Events) -> Rows:
+    """No rows at all."""
+    none = np.empty(0, dtype=np.int64)
+    return differences(events, none, none, np.empty(0), ORDER_ROW, none)
 
-    runs: first and last segment of each run, (R,), and the share of each of the two that lies in it; segments between
-        count whole
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Sums:
+    """Sums of durations that must not be too long: (P,) parts `row`, `segment`, `share`, and for each of R rows `most_s`.
+
+    A row's sum is that of its parts' shares times what their segments last.
     """
-    first, last, first_share, last_share = runs
-    fiber = fiber_of(tracks)
-    n = len(events.written_s)
-    values: list[float] = []
-    columns: list[int] = []
-    rows: list[int] = []
-    least: list[float] = []
-    named: list[int] = []
-    for begin, end, share_a, share_b in zip(first, last, first_share, last_share, strict=True):
-        most = max_hold_s[fiber[begin]]
-        if not np.isfinite(most) or end + 1 >= tracks.first[fiber[begin] + 1]:
-            continue
-        parts: dict[int, float] = {}
-        constant = 0.0
 
-        def add(knot: int, factor: float, parts: dict[int, float] = parts) -> float:
-            event = int(events.event[knot])
-            if event < 0:
-                return factor * tracks.time_s[knot]
-            parts[event] = parts.get(event, 0.0) + factor
-            return factor * (events.written_s[event] + events.offset_s[knot])
+    row: Index
+    segment: Index
+    share: Array
+    most_s: Array
 
-        for k in range(begin, end + 1):
-            share = share_a if k == begin else share_b if k == end else 1.0
-            constant += add(k + 1, share) + add(k, -share)
-        parts = {event: factor for event, factor in parts.items() if abs(factor) > 1e-15}
-        for event, factor in parts.items():
-            rows.append(len(least)), columns.append(event), values.append(-factor)
-        lack = constant - most
-        least.append(0.0 if 0.0 < lack <= ALREADY * most else lack)
-        named.append(begin)
-    matrix = sparse.csr_array((values, (rows, columns)), shape=(len(least), n))
-    return Rows(matrix, np.array(least), np.full(len(least), ABOVE_ROW, dtype=np.int8), np.array(named, dtype=np.int64))
+
+def sum_rows(tracks: Tracks, events: Events, sums: Sums, kind: int, knot: Index, end: tuple[int, float]) -> Rows:
+    """Rows `sum <= most_s`; knot: (R,) a segment to name for each; end: what the score's end hangs from, as in Programme."""
+    last = np.zeros(len(tracks.time_s), dtype=bool)
+    last[tracks.first[1:] - 1] = True
+    later = np.where(last[sums.segment], end[0], events.event[np.minimum(sums.segment + 1, len(last) - 1)])
+    offset = np.where(last[sums.segment], end[1], events.offset_s[np.minimum(sums.segment + 1, len(last) - 1)])
+    earlier = events.event[sums.segment]
+    written = np.append(events.written_s, 0.0)
+    start = np.where(earlier < 0, tracks.time_s[sums.segment], written[earlier] + events.offset_s[sums.segment])
+    lasts = written[later] + offset - start
+    count = len(sums.most_s)
+    constant = np.bincount(sums.row, weights=sums.share * lasts, minlength=count)
+    columns = np.concatenate((later, earlier))
+    rows, values = np.tile(sums.row, 2), np.concatenate((-sums.share, sums.share))
+    real = columns >= 0
+    matrix = sparse.csr_array((values[real], (rows[real], columns[real])), shape=(count, len(events.written_s)))
+    matrix.sum_duplicates()
+    matrix.data[np.abs(matrix.data) < 1e-14] = 0.0
+    matrix.eliminate_zeros()
+    lack = constant - sums.most_s
+    lack = np.where((lack > 0.0) & (lack <= ALREADY * np.abs(sums.most_s)), 0.0, lack)
+    return Rows(matrix, lack, np.full(count, kind, dtype=np.int8), knot)
+
+
+def picked(rows: Rows, chosen: Index | NDArray[np.bool_]) -> Rows:
+    """Some of the rows."""
+    return Rows(rows.matrix[chosen], rows.least[chosen], rows.kind[chosen], rows.knot[chosen])

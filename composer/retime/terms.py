@@ -22,7 +22,7 @@ class Terms:
 
 
 def all_terms(events: Events, rhythm: Flags) -> Terms:
-    """One term an event: its own shift under `clock`; under `rhythm`, (N,), a hit's from the hit before, a start's from its hit."""
+    """One term an event: its own shift, or, where `rhythm` (N,), a hit's from the hit before and a start's from its hit."""
     numbers = np.arange(len(events.written_s))
     behind = np.where(rhythm, np.where(numbers < events.hits, numbers - 1, events.own_hit), -1)
     return Terms(numbers, np.where(behind == numbers, -1, behind), events.weight)

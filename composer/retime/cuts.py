@@ -1,0 +1,79 @@
+"""Cutting planes (Kelley 1960): rows for the spans that ask too much of a coil, added when the times at hand break them."""
+
+from dataclasses import replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.limits.buckets import level
+from composer.limits.coil import coils_of, on_times
+from composer.limits.duty import on_time
+from composer.retime.events import Events
+from composer.retime.rows import DUTY_ROW, Rows, Sums, no_rows, sum_rows
+from composer.rig.model import Rig
+from composer.tracks import Tracks
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+Span = tuple[int, int]
+"""First and last segment of a span of one fiber."""
+
+AT_ONCE = 40
+"""How many spans of one coil are added in one round, the deepest first."""
+
+EXACT = 1e-9
+"""Relative: what overdraws a store by less is the solver's rounding."""
+
+
+def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) -> list[Span]:
+    """Spans of tracks with the times at hand that ask too much of a coil and are not yet known, deepest first by coil."""
+    coils, on = coils_of(rig), on_time(now, rig, abilities)
+    found: list[Span] = []
+    for f in range(now.fibers):
+        mine = slice(on.first[f], on.first[f + 1])
+        seconds, segment = on.on_s[mine], on.segment[mine]
+        if seconds[-1] * (1.0 - coils.duty[f]) <= coils.burst_s[f] * (1.0 + EXACT):
+            continue
+        here = level(on.time_s[mine], seconds, coils.duty[f])
+        over = np.flatnonzero((here.missing > coils.burst_s[f] * (1.0 + EXACT)) & (segment >= 0))
+        for end in over[np.argsort(-here.missing[over], kind="stable")][:AT_ONCE]:
+            # A span begins with the first energised segment after the coil had last recovered.
+            begin = here.since[end] + 1 + int(np.argmax(segment[here.since[end] + 1 :] >= 0))
+            span = (int(segment[begin]), int(segment[end]))
+            if span not in known:
+                found.append(span)
+    return found
+
+
+def duty_rows(
+    spans: list[Span], tracks: Tracks, events: Events, rig: Rig, abilities: Abilities, end: tuple[int, float]
+) -> Rows:
+    """For each span of prepared tracks: its on-time less `duty` times its length at most `duty_burst_s`."""
+    if not spans:
+        return no_rows(events)
+    coils = coils_of(rig)
+    energised = _energised(tracks, rig, abilities)
+    fiber = np.searchsorted(tracks.first, [first for first, _ in spans], side="right") - 1
+    lengths = np.array([last - first + 1 for first, last in spans])
+    segment = np.concatenate([np.arange(first, last + 1) for first, last in spans])
+    row = np.repeat(np.arange(len(spans)), lengths)
+    share = energised[segment] - coils.duty[fiber][row]
+    sums = Sums(row, segment, share, coils.burst_s[fiber])
+    return sum_rows(tracks, events, sums, DUTY_ROW, np.array([last for _, last in spans]), end)
+
+
+def _energised(tracks: Tracks, rig: Rig, abilities: Abilities) -> Array:
+    """(K,) 1 for each segment of prepared tracks that energises its coil, be it without length yet, 0 for the others."""
+    stretched = lengthened(tracks)
+    on = np.zeros(len(tracks.time_s))
+    on[on_times(stretched, rig, abilities).segment] = 1.0
+    return on
+
+
+def lengthened(tracks: Tracks) -> Tracks:
+    """The tracks with a second added to every segment: a hold of no length can be told from one that energises nothing."""
+    place = np.arange(len(tracks.time_s)) - np.repeat(tracks.first[:-1], np.diff(tracks.first))
+    times = tracks.time_s + place
+    return replace(tracks, time_s=times, duration_s=float(max(tracks.duration_s, times.max(initial=0.0)) + 1.0))

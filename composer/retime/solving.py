@@ -1,0 +1,145 @@
+"""Solving a programme: rows added until the times break none, and rows given up that no times can keep."""
+
+from dataclasses import dataclass, field, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.limits.duration import least_durations
+from composer.retime.cuts import Span, duty_rows, duty_spans
+from composer.retime.events import Events, events_of, knot_times, with_waits
+from composer.retime.hold import hold_rows
+from composer.retime.local import Least, least_cost
+from composer.retime.rows import ABOVE_ROW, Rows, duration_rows, joined, order_rows, picked, pin_rows
+from composer.retime.terms import Terms, all_terms
+from composer.rig.model import Rig
+from composer.tracks import MOVE, STEP, Tracks
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+Flags = NDArray[np.bool_]
+
+ROUNDS = 200
+"""How many rounds of cutting planes are tried; each adds at least one row that the times at hand break."""
+
+GIVEN_UP_S = 1e-6
+"""A row that even at a high price stays broken by more than this is one that no times can keep."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Programme:
+    """The whole programme of some tracks.
+
+    tracks: prepared by `with_waits`; origin (K',) where their knots come from; rhythm (N,) which events keep rhythm
+    end: what the score's end hangs from, event and offset (-1: an instant)
+    """
+
+    tracks: Tracks
+    origin: Index
+    least_s: Array
+    events: Events
+    rows: Rows
+    terms: Terms
+    rhythm: Flags = field(repr=False)
+    end: tuple[int, float]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Answer:
+    """The optimum found, the rows that it was found with, and how many rows no times could keep."""
+
+    least: Least
+    rows: Rows
+    given_up: int
+
+
+def programme_of(
+    tracks: Tracks, abilities: Abilities, pins_s: Array, give_s: Array, firm: Array | None, rhythm: bool | Flags
+) -> Programme:
+    """The programme of tracks; pins in order of time, firm and rhythm as `retime` takes them."""
+    prepared, origin = with_waits(tracks)
+    least = durations_to_keep(prepared, abilities)
+    events = events_of(prepared, abilities, least, None if firm is None else firm[origin])
+    keeps = _rhythm_of(events, origin, rhythm)
+    last = events.hits - 1
+    end = (last, tracks.duration_s - events.written_s[last]) if last >= 0 and keeps[last] else (-1, tracks.duration_s)
+    rows = joined(
+        [
+            duration_rows(prepared, events, least),
+            order_rows(events),
+            pin_rows(events, pins_s, give_s),
+            hold_rows(prepared, events, abilities, end),
+        ]
+    )
+    return Programme(prepared, origin, least, events, rows, all_terms(events, keeps), keeps, end)
+
+
+def durations_to_keep(tracks: Tracks, abilities: Abilities, segments: Index | None = None) -> Array:
+    """Least durations as the programme keeps them: a jump takes no time, and what no time mends keeps what it has."""
+    least = least_durations(tracks, abilities, segments)
+    where = np.arange(len(tracks.time_s)) if segments is None else segments
+    least[tracks.manner[where] == STEP] = 0.0
+    endless = np.flatnonzero(~np.isfinite(least) & (tracks.manner[where] == MOVE))
+    least[endless] = tracks.time_s[where[endless] + 1] - tracks.time_s[where[endless]]
+    return np.where(np.isfinite(least), least, 0.0)
+
+
+def _rhythm_of(events: Events, origin: Index, rhythm: bool | Flags) -> Flags:
+    """(N,) which events keep rhythm; by segment given, a hit does where the greater part of what lands in it does."""
+    count = len(events.written_s)
+    if isinstance(rhythm, bool | np.bool_):
+        return np.full(count, bool(rhythm))
+    mine = np.asarray(rhythm)[origin]
+    landed = np.flatnonzero(events.arrival)
+    share = np.bincount(events.event[landed], weights=np.where(mine[landed - 1], 1.0, -1.0), minlength=count)[: events.hits]
+    return np.concatenate((share > 0.0, mine[np.flatnonzero(events.free)]))
+
+
+def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = False, limit_s: float = np.inf) -> Answer | None:
+    """The least-cost times that keep every row and every span, or None where pins leave none.
+
+    Rows over more than two events that no times can keep are given up, as few as a high price on each finds.
+    """
+    rows, known, given_up = programme.rows, set(), 0
+    free: Flags | None = None
+    for _ in range(ROUNDS):
+        least = least_cost(programme.events, rows, programme.terms, free, whole, limit_s)
+        if least is None:
+            rows, dropped = _keepable(programme, rows, whole, limit_s)
+            if not dropped:
+                return None
+            given_up += dropped
+            continue
+        free = least.free
+        now = at_times(programme, least.shift_s)
+        spans: list[Span] = duty_spans(now, rig, abilities, known)
+        if not spans:
+            return Answer(least, rows, given_up)
+        known.update(spans)
+        rows = joined([rows, duty_rows(spans, programme.tracks, programme.events, rig, abilities, programme.end)])
+    return Answer(least, rows, given_up)
+
+
+def _keepable(programme: Programme, rows: Rows, whole: bool, limit_s: float) -> tuple[Rows, int]:
+    """The rows less those over more than two events that stay broken at a high price, and how many those are."""
+    price = 1e4 * max(1.0, float(programme.events.weight.max(initial=0.0)))
+    least = least_cost(programme.events, rows, programme.terms, None, whole, limit_s, price)
+    if least is None:
+        return rows, 0
+    broken = (rows.kind >= ABOVE_ROW) & (rows.least - rows.matrix @ least.shift_s > GIVEN_UP_S)
+    return picked(rows, ~broken), int(np.count_nonzero(broken))
+
+
+def at_times(programme: Programme, shift_s: Array) -> Tracks:
+    """The prepared tracks with their events displaced, waits and all."""
+    times = knot_times(programme.events, shift_s, programme.tracks)
+    return replace(programme.tracks, time_s=times, duration_s=end_of(programme, shift_s, times))
+
+
+def end_of(programme: Programme, shift_s: Array, times: Array) -> float:
+    """The score's end: as written, or under rhythm as the last hit moved; never before the last knot."""
+    event, offset = programme.end
+    moved = shift_s[event] if event >= 0 else 0.0
+    written = offset + (programme.events.written_s[event] if event >= 0 else 0.0)
+    return float(max(written + moved, times.max(initial=0.0)))

@@ -1,0 +1,145 @@
+"""How fast retiming is, as ratios in one run: against one HiGHS dual-simplex solve of the same programme, assembled here.
+
+Run: python tests/bench/retiming.py [MOVES FIBERS SHARE_TOO_FAST]
+"""
+
+import platform
+import sys
+import time
+from pathlib import Path
+
+import numpy as np
+from scipy import sparse
+from scipy.optimize import linprog
+
+sys.path.insert(0, str(Path(__file__).parents[1]))
+
+from conftest import make_rig
+
+from composer.limits.abilities import abilities_of
+from composer.limits.duration import least_durations
+from composer.retime.retiming import retime
+from composer.score.shapes import PROGRESS
+from composer.tracks import HOLD, MOVE, Tracks
+
+STROKE, FILL, EXHAUST = 0.3, 0.6, 0.3
+
+
+def big_score(moves: int, fibers: int, too_fast: float, seed: int = 1) -> Tracks:
+    """Moves of many fibers on a grid of quarter counts, a share of them too fast; about half follow a hold."""
+    rng = np.random.default_rng(seed)
+    first, times, curves, manners, shapes = [0], [], [], [], []
+    for _ in range(fibers):
+        at, value = 0.25 * float(rng.integers(0, 8)), 0.0
+        if at > 0.0:
+            times.append(0.0), curves.append(np.zeros(6)), manners.append(HOLD), shapes.append(-1)
+        for _ in range(moves // fibers):
+            target = rng.uniform(0.0, STROKE)
+            way = target - value
+            needs = 1.875 * abs(way) / (FILL if way > 0 else EXHAUST)
+            counts = np.ceil(needs / 0.25) + rng.integers(0, 4)
+            if rng.random() < too_fast:
+                counts = max(1.0, np.floor(needs * 0.7 / 0.25))
+            curve = way * PROGRESS["smooth"]
+            curve[0] += value
+            times.append(at), curves.append(curve), manners.append(MOVE), shapes.append(0)
+            at, value = at + 0.25 * counts, target
+            if rng.random() < 0.5:
+                times.append(at), manners.append(HOLD), shapes.append(-1)
+                curves.append(np.array([value, 0, 0, 0, 0, 0]))
+                at += 0.25 * float(rng.integers(1, 6))
+        times.append(at), manners.append(HOLD), shapes.append(-1), curves.append(np.array([value, 0, 0, 0, 0, 0]))
+        first.append(len(times))
+    count = len(times)
+    return Tracks(
+        np.array(first), np.array(times), np.array(curves), np.array(manners, np.int8), np.array(shapes, np.int8),
+        np.ones(count, np.int32), np.ones(count, np.int32), float(max(times)),
+    )  # fmt: skip
+
+
+def by_hand(tracks: Tracks, abilities, keep: str) -> tuple[float, float]:
+    """Seconds of one whole-score solve, assembly left out, and its cost."""
+    least = least_durations(tracks, abilities)
+    weight = np.abs(tracks.curve[:, 1:].sum(axis=1)) / STROKE
+    instants: dict[float, int] = {}
+    knots = []
+    for f in range(tracks.fibers):
+        for k in range(tracks.first[f] + 1, tracks.first[f + 1]):
+            if tracks.manner[k - 1] != HOLD:
+                knots.append(tracks.time_s[k])
+    for instant in np.unique(knots):
+        instants[float(instant)] = len(instants)
+    written = list(instants)
+    price = [0.0] * len(written)
+    rows, columns, values, bound = [], [], [], []
+    starts, m = [], 0
+
+    def row(later, earlier, least_s):
+        nonlocal m
+        rows.append(m), columns.append(later), values.append(-1.0)
+        if earlier is not None:
+            rows.append(m), columns.append(earlier), values.append(1.0)
+        bound.append(-least_s)
+        m += 1
+
+    for f in range(tracks.fibers):
+        at = None
+        for k in range(tracks.first[f], tracks.first[f + 1] - 1):
+            if tracks.manner[k] == HOLD:
+                start = len(written)
+                written.append(tracks.time_s[k + 1])
+                price.append(weight[k + 1] / 20.0)
+                row(start, at, 0.0)
+                starts.append((start, instants[float(tracks.time_s[k + 2])]) if k + 2 < tracks.first[f + 1] else (start, start))
+                at = start
+            else:
+                hit = instants[float(tracks.time_s[k + 1])]
+                price[hit] += weight[k]
+                row(hit, at, least[k])
+                at = hit
+    for h in range(1, len(instants)):
+        row(h, h - 1, 0.0)
+    n, hits = len(written), len(instants)
+    written, price = np.array(written), np.array(price)
+    behind = np.full(n, -1)
+    if keep == "rhythm":
+        behind[:hits] = np.arange(hits) - 1
+        for start, hit in starts:
+            behind[start] = hit
+    line = np.arange(n)
+    has = behind >= 0
+    apart = sparse.csr_array((np.ones(n), (line, line)), shape=(n, n))
+    apart = apart - sparse.csr_array((np.ones(has.sum()), (line[has], behind[has])), shape=(n, n))
+    ties = sparse.hstack([apart, -sparse.eye_array(n), sparse.eye_array(n)], format="csr")
+    above = sparse.csr_array((values, (rows, columns)), shape=(m, 3 * n))
+    wanted = apart @ written
+    began = time.perf_counter()
+    found = linprog(
+        np.concatenate((np.zeros(n), price, price)), A_ub=above, b_ub=np.array(bound), A_eq=ties, b_eq=wanted,
+        bounds=(0.0, None), method="highs-ds",
+    )  # fmt: skip
+    return time.perf_counter() - began, float(found.fun)
+
+
+def main() -> None:
+    given = sys.argv[1:]
+    moves, fibers, share = int(given[0]) if given else 33000, int(given[1]) if given else 64, float(given[2]) if given else 0.05
+    rig = make_rig.__wrapped__()(fibers)
+    abilities = abilities_of(rig)
+    tracks = big_score(moves, fibers, share)
+    print(
+        f"{tracks.moves} moves on {fibers} fibers, {share:.0%} too fast; {platform.machine()}, Python {platform.python_version()}"
+    )
+    for keep in ("clock", "rhythm"):
+        best = np.inf
+        for _ in range(3):
+            began = time.perf_counter()
+            ours = retime(tracks, abilities, rig, np.empty(0), keep)
+            best = min(best, time.perf_counter() - began)
+        theirs_s, theirs = by_hand(tracks, abilities, keep)
+        print(f"{keep}: ours / whole solve = {best / theirs_s:.3f} ({best:.2f} s, {theirs_s:.2f} s); "
+              f"cost {ours.cost:.9g} and {theirs:.9g}, apart {abs(ours.cost - theirs) / theirs:.1e}; bound {ours.bound:.9g}")  # fmt: skip
+
+
+if __name__ == "__main__":
+    main()
