@@ -27,7 +27,8 @@ class Physics:
     """A modelled fiber as mounted, in SI: one fiber's shape, its share of the load, and how many there are on the valve.
 
     load: N on each fiber; friction: share of ideal force; settle: s; count: bundle times series
-    stroke: usable strain; full: gauge pressure in Pa that it is defined at
+    stop: strain at which the shape, or what holds it, ends the motion
+    stroke: usable strain; full: gauge pressure in Pa that it is defined at; limit: the most it may ever have
     """
 
     shape: Kinematics
@@ -36,8 +37,10 @@ class Physics:
     friction: float
     settle: float
     count: int
+    stop: float
     stroke: float
     full: float
+    limit: float
     n: float
     ambient: float
     water: bool
@@ -58,8 +61,8 @@ def pressures(physics: Physics, e: Array) -> tuple[Array, Array]:
 
 def slopes(physics: Physics, e: Array) -> tuple[Array, Array]:
     """dP/de in Pa along both ways, by central differences inside the shape's range."""
-    h = 1e-6 * max(physics.shape.stop, 1e-3)
-    low, high = np.maximum(e - h, 0.0), np.minimum(e + h, physics.shape.stop)
+    h = 1e-6 * max(physics.stop, 1e-3)
+    low, high = np.maximum(e - h, 0.0), np.minimum(e + h, physics.stop)
     up, down = pressures(physics, high), pressures(physics, low)
     return (up[0] - down[0]) / (high - low), (up[1] - down[1]) / (high - low)
 

@@ -1,0 +1,167 @@
+"""How modelled fibers move: valve and tube, gas in the fiber, dry friction, lag; all fibers of a rig at once.
+
+A step is explicit in the flow, which changes slowly, and exact in what is stiff: pressure stops at the set-point and at the
+supply, strain at the edge of the friction band. So it is stable at any tick; below LONGEST_S it is accurate too.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.fiber.gas import free_litres
+from composer.limits.abilities import Abilities
+from composer.rig.model import Rig
+from composer.simulate import charts
+from composer.simulate.charts import Charts, look_up
+from composer.simulate.moved import Moved
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+LONGEST_S = 2.5e-3
+"""The longest step that is taken at once; a longer tick is cut into equal parts no longer than this."""
+
+NEAR = 1e-9
+"""Strain by which a wanted strain must differ from what there is before a strain drive opens its valve."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Blown(Moved):
+    """Modelled fibers after a step: also gauge `pressure` in Pa and `played`, the strain after friction and before the lag."""
+
+    pressure: Array
+    played: Array
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class ModelledFibers:
+    """M modelled fibers; arrays (M,). `drive` is 0 pressure, 1 strain, 2 valve; `full` Pa gauge that a set-point of 1 means."""
+
+    charts: Charts
+    which: Index
+    stroke: Array
+    full: Array
+    settle: Array
+    drive: NDArray[np.int8]
+    indifferent_kPa: float
+
+    def at(self, strain: Array) -> Blown:
+        """Fibers at such strains (M,), blown up to them from below and settled."""
+        holds = self._holds(strain)
+        pressure = np.where(strain > 0.0, holds[:, charts.HOLDS_IN], 0.0)
+        return Blown(np.array(strain, dtype=float), pressure / 1e3, 0.0, pressure, np.array(strain, dtype=float))
+
+    def after(self, was: Moved, dt_s: float, command: Array, supply_kPa: float) -> Blown:
+        """The fibers after `dt_s` of a constant command (M,), in drive units, with such a pressure in the receiver."""
+        parts = max(1, int(np.ceil(dt_s / LONGEST_S - 1e-9)))
+        now, drawn = was, 0.0
+        for _ in range(parts):
+            now = self._part(now, dt_s / parts, command, min(supply_kPa * 1e3, self.charts.supply))
+            drawn += now.drawn_L
+        return Blown(now.strain, now.pressure_kPa, drawn, now.pressure, now.played)
+
+    def _holds(self, strain: Array) -> Array:
+        """Pressures (M, 2) that hold strains on the way in and out."""
+        return look_up(self.charts.by_strain, self.which, strain / self.charts.stroke[self.which])
+
+    def _flows(self, pressure: Array, supply: float) -> Array:
+        """Chart rows (M, 8) at a pressure, the last column the flow in from this supply."""
+        rows = look_up(self.charts.by_pressure, self.which, pressure / self.charts.supply)
+        level = supply / self.charts.supply * (charts.SUPPLIES - 1)
+        below = min(int(level), charts.SUPPLIES - 2)
+        enters = rows[:, charts.ENTERS + below], rows[:, charts.ENTERS + below + 1]
+        rows[:, charts.ENTERS] = enters[0] + (level - below) * (enters[1] - enters[0])
+        return rows
+
+    def _part(self, was: Blown, h: float, command: Array, supply: float) -> Blown:
+        pressure, played = was.pressure, was.played
+        edge_in, edge_out = self._holds(played).T
+        goal, opening = self._goal(command, played, pressure, edge_in, edge_out, supply)
+        filling = goal > pressure
+        # On the way to the edge of the friction band the fiber stands still, and its gas takes less for a rise in pressure.
+        edge = np.where(filling, np.maximum(edge_in, pressure), np.minimum(edge_out, pressure))
+        here = self._flows(pressure, supply)
+        flow = np.where(filling, here[:, charts.ENTERS], -here[:, charts.LEAVES]) * opening
+        room = self._room(here, played)
+        still = np.abs(edge - pressure) * room
+        takes = np.where(filling, here[:, charts.TAKES_IN], here[:, charts.TAKES_OUT])
+        middle = self._rise(pressure, edge, flow * (h / 2.0), still, room, takes, goal)
+        there = self._flows(middle, supply)
+        flow = np.where(filling, there[:, charts.ENTERS], -there[:, charts.LEAVES]) * opening
+        takes = np.where(filling, there[:, charts.TAKES_IN], there[:, charts.TAKES_OUT])
+        pressure_now = self._rise(pressure, edge, flow * h, still, room, takes, goal)
+        ends = look_up(self.charts.by_pressure, self.which, pressure_now / self.charts.supply)
+        now = np.minimum(np.maximum(played, ends[:, charts.IN]), ends[:, charts.OUT])
+        drawn = np.maximum(self._mass(pressure, pressure_now, edge, room, takes), 0.0).sum()
+        return Blown(
+            self._settled(was.strain, played, now, h), pressure_now / 1e3, float(free_litres(drawn)), pressure_now, now
+        )
+
+    def _goal(
+        self, command: Array, played: Array, pressure: Array, edge_in: Array, edge_out: Array, supply: float
+    ) -> tuple[Array, Array]:
+        """The pressure that each drive goes for, and how far its valve opens to get there."""
+        goal = np.clip(command, 0.0, 1.0) * self.full
+        opening = np.ones(len(command))
+        by_strain = self.drive == 1
+        if by_strain.any():
+            wanted = np.clip(command, 0.0, 1.0) * self.stroke
+            holds = self._holds(wanted)
+            sought = np.where(wanted > played + NEAR, holds[:, 0], np.where(wanted < played - NEAR, holds[:, 1], pressure))
+            sought = np.where(wanted <= 0.0, np.minimum(holds[:, 1], sought), sought)
+            goal = np.where(by_strain, np.minimum(sought, self.full), goal)
+        by_valve = self.drive == 2
+        if by_valve.any():
+            opening = np.where(by_valve, np.minimum(np.abs(command), 1.0), opening)
+            full = np.where(command > 0.0, self.full, np.where(command < 0.0, 0.0, pressure))
+            goal = np.where(by_valve, full, goal)
+        # What is above the supply never leaves through the filling valve: it holds.
+        return np.where(goal > pressure, np.maximum(np.minimum(goal, supply), pressure), goal), opening
+
+    def _room(self, row: Array, played: Array) -> Array:
+        """Mass a Pa in kg of a fiber that stands still at `played`, between those at the two edges of the band."""
+        band = row[:, charts.OUT] - row[:, charts.IN]
+        share = np.divide(played - row[:, charts.IN], band, out=np.zeros_like(band), where=band > 1e-12)
+        share = np.clip(share, 0.0, 1.0)
+        return row[:, charts.ROOM_IN] + share * (row[:, charts.ROOM_OUT] - row[:, charts.ROOM_IN])
+
+    @staticmethod
+    def _rise(pressure: Array, edge: Array, mass: Array, still: Array, room: Array, takes: Array, goal: Array) -> Array:
+        """The pressure after so much mass (negative: out): first to the edge at rest, the remainder while moving, no further
+        than the goal."""
+        size = np.abs(mass)
+        at_rest = np.minimum(size, still)
+        change = np.sign(mass) * (at_rest / room + (size - at_rest) / takes)
+        reached = pressure + change
+        return np.where(goal > pressure, np.minimum(reached, goal), np.maximum(reached, goal))
+
+    @staticmethod
+    def _mass(pressure: Array, now: Array, edge: Array, room: Array, takes: Array) -> Array:
+        """The mass in kg that went in for a rise from `pressure` to `now` past `edge`; negative where it fell."""
+        to_edge = np.clip(now, np.minimum(pressure, edge), np.maximum(pressure, edge)) - pressure
+        return to_edge * room + (now - pressure - to_edge) * takes
+
+    def _settled(self, strain: Array, before: Array, now: Array, h: float) -> Array:
+        """The lag of elastomer and braid (Kelvin and Voigt): exact for a strain that goes straight from `before` to `now`."""
+        lags = self.settle > 0.0
+        tau = np.where(lags, self.settle, 1.0)
+        behind = tau * (now - before) / h
+        return np.where(lags, now - behind + (strain - before + behind) * np.exp(-h / tau), now)
+
+
+def modelled_fibers(rig: Rig, abilities: Abilities, members: Index) -> ModelledFibers:
+    """The modelled fibers among a rig's fibers, by their indices."""
+    supply = rig.supply.pressure_kPa * 1e3
+    makes, which = np.unique(abilities.which[members], return_inverse=True)
+    physics = [abilities.capabilities[make].physics for make in makes]
+    drives = [("pressure", "strain", "valve").index(rig.fibers[m].mounting.valve.drive) for m in members]
+    return ModelledFibers(
+        charts=charts.charts_of(physics, supply),
+        which=which,
+        stroke=abilities.stroke[members],
+        full=np.array([each.limit for each in physics])[which],
+        settle=np.array([each.settle for each in physics])[which],
+        drive=np.array(drives, dtype=np.int8),
+        indifferent_kPa=rig.supply.pressure_kPa,
+    )
