@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Sequence
 
+from composer.faults import Faults
 from player.outputs.base import Array, Event, LinkLost, Output
 
 
@@ -57,13 +58,15 @@ class Boards:
             if number not in self._lost and output.must_arm
         )
 
-    def close(self) -> None:
-        """Let go of all of them, lost ones too."""
+    def close(self) -> list[Event]:
+        """Let go of all of them, lost ones too; what could not be finished comes back as events."""
+        failed = []
         for output in self.outputs:
             try:
                 output.close()
-            except (LinkLost, OSError):
-                continue
+            except (LinkLost, Faults, OSError) as why:
+                failed.append(Event("lost", output.drivers[0], str(why)))
+        return failed
 
     def _each(self, deed: Callable[[Output], None], state: str = "", sure: bool = False) -> list[Event]:
         """Do it with each; the state that follows is taken as read only where `sure`, or where there is no board to say it."""

@@ -65,7 +65,7 @@ class Engine:
         self.lateness = Lateness()
         self.boards = Boards(outputs)
         self.errors = Errors(len(rig.fibers))
-        self.ending: Ending | None = None
+        self._lasted_s = 0.0
         self._rig, self._clock, self._log = rig, clock, log
         self._dt = 1.0 / rate_Hz
         self._asked: deque[Command] = deque(maxlen=1000)
@@ -119,10 +119,11 @@ class Engine:
             self._end(began)
 
     def close(self) -> None:
-        """Let go of every output; whatever is armed still is vented first."""
+        """Let go of every output; whatever is armed still is vented first. Harmless when called twice."""
         if self.safety.state not in ("idle", "vented"):
             self._become("vent")
-        self.boards.close()
+        for event in self.boards.close():
+            self._fault(event.driver, f"{event.driver}: {event.say}", "note")
 
     def _ticks(self) -> Iterator[Status]:
         start = self._clock.now() + self.ahead_s + self._dt
@@ -340,12 +341,17 @@ class Engine:
     def _end(self, began: float) -> None:
         if self._log is not None and self._log.broken:
             self._fault("", f"the log could not be written to its end: {self._log.broken}", "note")
-        self.ending = Ending(
+        self._lasted_s = self._clock.now() - began
+
+    @property
+    def ending(self) -> Ending:
+        """How the run ended; whole once it has been closed."""
+        return Ending(
             how=self._how,
             why=self._why,
             state=self.safety.state,
             position_s=self.source.position_s,
-            lasted_s=self._clock.now() - began,
+            lasted_s=self._lasted_s,
             faults=tuple(self._faults),
             more_faults=self._more_faults,
         )

@@ -1,0 +1,189 @@
+"""The terminal while a score plays: one line that lives, and keys. On a thread of its own, so that a slow or stopped terminal
+never holds up the engine."""
+
+import contextlib
+import os
+import select
+import sys
+import threading
+from collections import deque
+from collections.abc import Callable
+
+from player.engine.status import Status
+
+REFRESH_S = 0.1
+KEYS = {
+    "\n": "go_on",
+    "\r": "go_on",
+    " ": "pause",
+    "p": "pause",
+    "n": "next_cue",
+    "r": "rest",
+    "v": "vent",
+    "\x1b": "vent",
+}
+"""What each key asks of the engine; pause and go_on take turns on the same key."""
+
+KEYS_SAID = "Return goes on, space pauses, n next cue, r rest, v or Escape vent, Ctrl-C rest, twice vent"
+
+_COLOURS = {"playing": "32", "paused": "33", "resting": "33", "vented": "31", "lost": "31", "fault": "31"}
+
+
+def live_line(status: Status, place: str, colour: bool, width: int) -> str:
+    """The one line: state, place, cue, seconds left, fibers moving, links, late ticks; no wider than `width`."""
+    state = status.state if status.phase != "bringing" else "moving to place"
+    if status.waiting:
+        state = f'waiting at "{status.waiting}", Return goes on'
+    parts = [state, f"bar {place}" if ":" in place else place]
+    if status.cue and not status.waiting:
+        parts.append(f'"{status.cue}"')
+    if status.next_cue:
+        parts.append(f'next "{status.next_cue}"')
+    left = max(0.0, status.duration_s - status.position_s)
+    parts += [f"{left:.0f} s left", f"{status.moving} moving"]
+    if status.let_down:
+        parts.append(f"{status.let_down} let down")
+    parts += [link_of(status), f"{status.late_ticks} late"]
+    line = "  ".join(parts)
+    line = line if len(line) <= width else line[: max(0, width - 1)] + "…"
+    code = _COLOURS.get(status.state)
+    return f"\x1b[{code}m{state}\x1b[0m{line[len(state) :]}" if colour and code and line.startswith(state) else line
+
+
+def link_of(status: Status) -> str:
+    """Every board's state, in one word where they agree."""
+    states = {state for _, state in status.links}
+    if len(states) == 1:
+        return f"link {states.pop()}"
+    return "links " + " ".join(f"{driver}:{state}" for driver, state in status.links)
+
+
+class Front:
+    """Shows the latest snapshot on stderr and hands keys to the engine. Without a terminal it only prints what is told."""
+
+    def __init__(self, ask: Callable[[str], None], say_place: Callable[[float], str], quiet: bool = False):
+        self._ask, self._say_place, self._quiet = ask, say_place, quiet
+        self._latest: Status | None = None
+        self._told: deque[str] = deque(maxlen=1000)
+        self._ends = threading.Event()
+        self._lives = not quiet and _is_terminal(sys.stderr) and os.environ.get("TERM") != "dumb"
+        self._colour = self._lives and not os.environ.get("NO_COLOR")
+        self._keys = _is_terminal(sys.stdin) and _in_foreground()
+        self._thread: threading.Thread | None = None
+
+    def show(self, status: Status) -> None:
+        """Take a snapshot; costs the engine next to nothing."""
+        self._told.extend(status.told)
+        self._latest = status
+
+    def __enter__(self) -> "Front":
+        if self._lives and self._keys:
+            print(KEYS_SAID, file=sys.stderr)
+        self._thread = threading.Thread(target=self._live, name="front", daemon=True)
+        self._thread.start()
+        return self
+
+    def __exit__(self, *_: object) -> None:
+        self._ends.set()
+        if self._thread is not None:
+            self._thread.join(timeout=1.0)
+
+    def _live(self) -> None:
+        with _keys_at_once(self._keys):
+            while not self._ends.is_set():
+                self._draw()
+                self._listen()
+            self._draw()
+            if self._lives:
+                self._write("\n")
+
+    def _listen(self) -> None:
+        """Wait for a key, or until the line wants drawing anew."""
+        if not self._keys:
+            self._ends.wait(REFRESH_S)
+            return
+        ready, _, _ = select.select([sys.stdin], [], [], REFRESH_S)
+        if not ready:
+            return
+        typed = os.read(sys.stdin.fileno(), 64)
+        if not typed:
+            self._keys = False
+        # An arrow or function key begins with Escape too, but more follows at once: no vent by a slip of the cursor keys.
+        keys = [] if len(typed) > 1 and typed[:1] == b"\x1b" else typed.decode(errors="replace").lower()
+        for key in keys:
+            asks = KEYS.get(key)
+            paused = self._latest is not None and self._latest.state == "paused"
+            if asks == "pause" and paused:
+                asks = "go_on"
+            if asks and not (asks == "go_on" and not paused):
+                self._ask(asks)
+
+    def _draw(self) -> None:
+        while self._told:
+            said = self._told.popleft()
+            if not self._quiet:
+                self._write(("\r\x1b[K" if self._lives else "") + said + "\n")
+        if self._lives and self._latest is not None:
+            width = _width()
+            place = self._say_place(self._latest.position_s)
+            self._write("\r\x1b[K" + live_line(self._latest, place, self._colour, width))
+
+    def _write(self, text: str) -> None:
+        with contextlib.suppress(OSError, ValueError):
+            sys.stderr.write(text)
+            sys.stderr.flush()
+
+
+def ask_to_arm(tend: Callable[[], None]) -> bool:
+    """Ask for `arm` to be typed, while `tend` keeps the boards company; False for any other answer, or none at all."""
+    print("The boards are ready. Type 'arm' to let the fibers move, anything else to leave it: ", end="", file=sys.stderr)
+    sys.stderr.flush()
+    answer = b""
+    while not answer.endswith(b"\n") and len(answer) < 256:
+        ready, _, _ = select.select([sys.stdin], [], [], 0.02)
+        tend()
+        if ready:
+            more = os.read(sys.stdin.fileno(), 256)
+            if not more:
+                break
+            answer += more
+    return answer.decode(errors="replace").strip().lower() == "arm"
+
+
+def _is_terminal(stream: object) -> bool:
+    try:
+        return stream is not None and os.isatty(stream.fileno())
+    except (OSError, ValueError, AttributeError):
+        return False
+
+
+def _in_foreground() -> bool:
+    try:
+        return os.tcgetpgrp(sys.stdin.fileno()) == os.getpgrp()
+    except OSError:
+        return False
+
+
+def _width() -> int:
+    try:
+        return max(20, os.get_terminal_size(sys.stderr.fileno()).columns - 1)
+    except OSError:
+        return 79
+
+
+@contextlib.contextmanager
+def _keys_at_once(wanted: bool):
+    """Keys come one by one and are not shown; signals by key stay."""
+    if not wanted:
+        yield
+        return
+    import termios
+    import tty
+
+    handle = sys.stdin.fileno()
+    was = termios.tcgetattr(handle)
+    try:
+        tty.setcbreak(handle, termios.TCSANOW)
+        yield
+    finally:
+        termios.tcsetattr(handle, termios.TCSANOW, was)

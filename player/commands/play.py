@@ -1,0 +1,198 @@
+"""`drawcord play`: a score, a play file or a recording in real time."""
+
+import json
+import os
+import signal
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import ExitStack, contextmanager
+from typing import Any
+
+import click
+
+SLOWEST_HZ, FASTEST_HZ = 20.0, 1000.0
+
+
+@click.command("play")
+@click.argument("score", metavar="SCORE|PLAY|RECORDING", type=click.Path(path_type=str))
+@click.option("--to", "targets", metavar="TARGET", multiple=True, required=True, help="sim, serial:PORT[@BAUD] or file:PATH.")
+@click.option("--from", "start", metavar="CUE|PLACE", help="Start at a cue, or a place such as 5:1 or 12.4s.")
+@click.option("--rate", metavar="HZ", type=float, help="Sets a second; 200 unless given, a recording's own for a recording.")
+@click.option("--retime", "mend", is_flag=True, help="Mend the score first, where the rig cannot do it as written.")
+@click.option("--arm", is_flag=True, help="Arm without asking.")
+@click.option("--log", metavar="FILE", type=click.Path(path_type=str), help="Keep the run's log.")
+@click.option("--rig", metavar="RIG", type=click.Path(path_type=str), help="Another rig file than the one named inside.")
+@click.option("--json", "as_json", is_flag=True, help="Print one JSON object at the end, and nothing else.")
+def command(
+    score: str,
+    targets: tuple[str, ...],
+    start: str | None,
+    rate: float | None,
+    mend: bool,
+    arm: bool,
+    log: str | None,
+    rig: str | None,
+    as_json: bool,
+) -> int:
+    """Play a score in real time.
+
+    TARGET is where it goes; a rig with several drivers wants one for each, with its name in front: left=serial:/dev/ttyACM0.
+    sim and file:PATH without a name take all drivers that are left, need no arming, and may stand beside a serial line.
+
+    A score that the rig cannot do is refused unless --retime mends it first. Ctrl-C brings all fibers to rest at their safe
+    rate and disarms; a second one vents. The software is no safety device.
+    """
+    from player.commands.played import load_played
+    from player.commands.refusal import refused
+
+    played = load_played(score, rig, mend)
+    hertz = _rate(rate, played.recording.rate_Hz if played.recording else 200.0)
+    start_s = played.seconds_of(start) if start is not None else 0.0
+    if played.tracks is not None and (code := refused(played, as_json)) is not None:
+        return code
+    return _run(played, targets, hertz, start_s, arm, log, as_json)
+
+
+def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bool, log: str | None, as_json: bool) -> int:
+    """Open, pre-flight, arm, play, and leave everything at rest, or vented, whatever happens."""
+    from player.commands.front import Front
+    from player.commands.run_report import report, sentences
+    from player.engine.clock import SteadyClock
+    from player.engine.loop import Engine
+    from player.engine.safety import Refused
+    from player.outputs.targets import Context, make_outputs
+
+    clock = SteadyClock()
+    outputs = make_outputs(targets, Context(played.rig, played.abilities, clock, hertz))
+    with ExitStack() as stack:
+        run_log = _open_log(log, stack, played, targets, hertz, clock.now()) if log is not None else None
+        engine = Engine(played.rig, played.source(), outputs, clock, hertz, run_log)
+        stack.callback(engine.close)
+        interrupt = stack.enter_context(_signals(engine.ask))
+        for output in outputs:
+            output.open()
+        _preflight(engine, sys.stderr if not as_json else None)
+        if any(output.must_arm for output in outputs) and not arm and not _asked_to_arm(engine):
+            click.echo("not armed; nothing has moved", err=True)
+            return 2
+        interrupt.become_stops()
+        try:
+            engine.arm()
+        except Refused as why:
+            click.echo(str(why), err=True)
+            return 2
+        with Front(engine.ask, played.say_place, quiet=as_json) as front:
+            for status in engine.run(start_s):
+                front.show(status)
+            front.show(engine.status())
+        engine.close()
+        told = report(engine, played, outputs)
+        if run_log is not None:
+            run_log.tell("end", clock.now(), **told)
+    click.echo(json.dumps(told) if as_json else "\n".join(sentences(told)))
+    return told["exit"]
+
+
+def _rate(asked: float | None, usual: float) -> float:
+    """The rate in Hz, within what makes sense."""
+    if asked is None:
+        return usual
+    # Written so that nan is refused too.
+    if not SLOWEST_HZ <= asked <= FASTEST_HZ:
+        raise click.UsageError(f"--rate {asked:g}: expected {SLOWEST_HZ:g} to {FASTEST_HZ:g} sets a second")
+    return asked
+
+
+def _preflight(engine, tell) -> None:
+    """A mark a line; raises Faults with all that is not in order."""
+    from composer.faults import Fault, Faults, Where
+
+    marks = engine.preflight()
+    wrong = [mark for mark in marks if not mark.ok]
+    if wrong:
+        raise Faults(
+            Fault(Where("pre-flight"), f"not so: {mark.asked}" + (f": {mark.found}" if mark.found else ""), hint=mark.hint)
+            for mark in wrong
+        )
+    if tell is not None and any(output.must_arm for output in engine.boards.outputs):
+        for mark in marks:
+            print(f"ok  {mark.asked}" + (f" ({mark.found})" if mark.found else ""), file=tell)
+
+
+def _asked_to_arm(engine) -> bool:
+    """The operator's own deed, at the keyboard."""
+    from composer.faults import fault
+    from player.commands.front import ask_to_arm
+
+    if not os.isatty(sys.stdin.fileno()) if sys.stdin else True:
+        raise fault("--to", "a serial target has to be armed, and there is no terminal to ask at", hint="give --arm to arm it")
+    return ask_to_arm(engine.tend)
+
+
+class _Interrupt:
+    """What signals do: before arming they end the program, afterwards they ask the engine to stop."""
+
+    def __init__(self, ask: Callable[[str], None]):
+        self._ask, self._stops = ask, False
+
+    def become_stops(self) -> None:
+        """From here on the fibers may be moving."""
+        self._stops = True
+
+    def __call__(self, *_: object) -> None:
+        if not self._stops:
+            raise KeyboardInterrupt
+        self._ask("stop")
+
+
+@contextmanager
+def _signals(ask: Callable[[str], None]) -> Iterator[_Interrupt]:
+    """Ctrl-C, and being told to end, or losing the terminal: the first brings all to rest, the second vents."""
+    interrupt = _Interrupt(ask)
+    numbers = [signal.SIGINT, signal.SIGTERM] + ([signal.SIGHUP] if hasattr(signal, "SIGHUP") else [])
+    before = {number: signal.signal(number, interrupt) for number in numbers}
+    try:
+        yield interrupt
+    finally:
+        for number, handler in before.items():
+            signal.signal(number, handler)
+
+
+def _open_log(path: str, stack: ExitStack, played, targets: tuple[str, ...], hertz: float, now_s: float):
+    """The run's log, begun; every record is in the system's hands as soon as it is written."""
+    from composer.faults import fault
+    from player.engine.clock import stamp
+    from player.engine.run_log import RunLog
+
+    try:
+        # Unbuffered, so that a run killed at any moment leaves all that was logged up to there.
+        file = open(path, "wb", buffering=0)  # noqa: SIM115
+    except (OSError, ValueError) as error:
+        why = getattr(error, "strerror", None) or error
+        raise fault(path, f"the log cannot be written: {why}", hint="choose another place with --log FILE") from None
+    stack.callback(file.close)
+
+    def write(data: bytes) -> None:
+        view = memoryview(data)
+        while view:
+            view = view[file.write(view) :]
+
+    log = RunLog(write)
+    log.tell("head", now_s, **_head(played, targets, hertz), date=stamp())
+    if log.broken:
+        raise fault(path, f"the log cannot be written: {log.broken}", hint="choose another place with --log FILE")
+    return log
+
+
+def _head(played, targets: tuple[str, ...], hertz: float) -> dict[str, Any]:
+    return {
+        "played": played.path,
+        "kind": played.kind,
+        "title": played.title,
+        "rig": played.rig.file,
+        "fingerprint": f"{played.rig.fingerprint:08x}",
+        "targets": list(targets),
+        "rate_Hz": hertz,
+        "fibers": list(played.names),
+        "drives": [fiber.mounting.valve.drive for fiber in played.rig.fibers],
+    }
