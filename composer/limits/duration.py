@@ -21,6 +21,9 @@ Index = NDArray[np.int64]
 RESOLUTION = 1.0 / 65535.0
 """The least step of a drive's set-point, as a share of usable stroke: sixteen bits on the wire."""
 
+BLOCK = 1 << 16
+"""Segments worked out at a time: arrays that stay in the processor's caches keep the cost of a move the same at any size."""
+
 STEP_S = 0.005
 """A jump is told to its reader as if made within one tick of this many seconds."""
 
@@ -59,14 +62,19 @@ def duration_ceilings(tracks: Tracks, abilities: Abilities, segments: Index | No
 
 def _durations(tracks: Tracks, abilities: Abilities, segments: Index | None, exact: bool) -> Array:
     where = np.arange(len(tracks.time_s)) if segments is None else np.asarray(segments, dtype=np.int64)
-    manner, fibers = tracks.manner[where], fiber_of(tracks)[where]
-    least = np.zeros(len(where))
+    fibers = fiber_of(tracks)[where]
+    blocks = range(0, len(where), BLOCK) or range(1)
+    return np.concatenate([_of_block(tracks, abilities, where[b : b + BLOCK], fibers[b : b + BLOCK], exact) for b in blocks])
 
+
+def _of_block(tracks: Tracks, abilities: Abilities, where: Index, fibers: Index, exact: bool) -> Array:
+    manner = tracks.manner[where]
+    least = np.zeros(len(where))
     moving = np.flatnonzero(manner == MOVE)
     if len(moving):
         fiber, curve, shape = fibers[moving], tracks.curve[where[moving]], tracks.shape[where[moving]]
         least[moving] = np.maximum(
-            _by_rate(abilities, fiber, curve, shape, exact), acceleration_time_s(abilities, fiber, curve, shape)
+            durations_by_rate(abilities, fiber, curve, shape, exact), acceleration_time_s(abilities, fiber, curve, shape)
         )
     sudden = np.flatnonzero(manner == SUDDEN)
     if len(sudden):
@@ -114,7 +122,7 @@ def _named(peaks: Array, shape: NDArray[np.int8]) -> Array:
     return np.where(shape >= 0, peaks[np.maximum(shape, 0)], np.nan)
 
 
-def _by_rate(abilities: Abilities, fiber: Index, curve: Array, shape: NDArray[np.int8], exact: bool) -> Array:
+def durations_by_rate(abilities: Abilities, fiber: Index, curve: Array, shape: NDArray[np.int8], exact: bool = True) -> Array:
     """Least seconds by the rates alone, (K,): closed forms where they are constant, else exact or a ceiling."""
     low, high = speed_range(curve, shape)
     tables, capability = tables_of(abilities), abilities.which[fiber]

@@ -77,6 +77,15 @@ def search(curve: Array, low: Array, high: Array, at_low: Array) -> Array:
     return u
 
 
+def where_positive(curve: Array) -> tuple[NDArray[np.int64], Array, Array]:
+    """The stretches of u on which each row is above 0: rows, u from, u to, (P,) each, in order of row and then of u."""
+    cuts = np.column_stack([np.zeros(len(curve)), roots(curve), np.ones(len(curve))])
+    cuts = np.where(np.isnan(cuts), 1.0, cuts)
+    middles = value(curve, 0.5 * (cuts[:, :-1] + cuts[:, 1:]))
+    row, stretch = np.nonzero((middles > 0.0) & (cuts[:, 1:] > cuts[:, :-1]))
+    return row, cuts[row, stretch], cuts[row, stretch + 1]
+
+
 def extremes(curve: Array) -> tuple[Array, Array]:
     """Each row's least and greatest value over [0, 1], two of (K,)."""
     if curve.shape[1] == 1:

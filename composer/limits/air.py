@@ -1,0 +1,230 @@
+"""The limit of air: the receiver never falls below its least pressure.
+
+The receiver is a token bucket that is full at the start: its store is receiver_L (max_receiver_kPa - min_pressure_kPa) / 100
+litres of free air (at 100 kPa), refilled by the compressor up to the cut-out. With water the same numbers stand for litres
+of water and the pump's flow.
+
+The air that all fibers have drawn up to an instant is a sum of curves. They are laid out as straight pieces between points
+on the curves, which finds every span that may overdraw; the instants of the deepest are then closed in on with the
+curves themselves, so that what is reported is exact.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.fiber.mounting import Supply
+from composer.limits.abilities import Abilities
+from composer.limits.buckets import level, overdraws
+from composer.limits.fills import Fills, air_at, drawn, fills_of, sudden_strain
+from composer.limits.limit import TOLERANCE, Limit
+from composer.limits.polynomials import value
+from composer.limits.snag import Snag
+from composer.limits.stretches import line_of
+from composer.rig.model import Rig
+from composer.score.shapes import NAMES
+from composer.tracks import SUDDEN, Tracks
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+FREE_AIR_KPA = 100.0
+"""A litre of receiver gives up a litre of free air for each 100 kPa that it falls (ANR: 100 kPa)."""
+
+PIECES, FEWEST, BUDGET = 16, 4, 1_000_000
+"""Straight pieces a fill: sixteen, but four at least where a long score would need more pieces than the budget in all."""
+
+CHORD = 0.72
+"""A chord of a smooth fill cut into n pieces strays by at most this over n² of its litres: 10 / sqrt(3) / 8."""
+
+GRID, ROUNDS = 33, 7
+"""Points and rounds of closing in on an instant: each round narrows the window sixteen times."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Demand:
+    """Air drawn since the start as straight lines between rising instants, (N,) each; at the instants of a lone fill exact.
+
+    strays_L: by how much a sum of chords may differ from the sum of curves, anywhere
+    """
+
+    time_s: Array
+    litres: Array
+    strays_L: float
+
+
+@dataclass(frozen=True, slots=True)
+class Use:
+    """What the supply goes through: lowest pressure in kPa gauge, litres of free air in all, the spans that overdraw it.
+
+    spans: (from_s, to_s, drawn_L, bears_L) each, in order of time
+    """
+
+    lowest_kPa: float
+    used_L: float
+    spans: tuple[tuple[float, float, float, float], ...]
+
+
+def store_L(supply: Supply) -> float:
+    """What a full receiver can give before it is at its least pressure, in litres of free air."""
+    return supply.receiver_L * (supply.max_receiver_kPa - supply.min_pressure_kPa) / FREE_AIR_KPA
+
+
+def refill_L_s(supply: Supply) -> float:
+    """What the compressor delivers, in litres of free air a second."""
+    return supply.compressor_L_min / 60.0
+
+
+def demand(tracks: Tracks, abilities: Abilities, fills: Fills | None = None) -> Demand:
+    """The air drawn by all fibers together since the start, for cuts and pictures."""
+    fills = fills_of(tracks, abilities) if fills is None else fills
+    count = len(fills.fiber)
+    if not count:
+        return Demand(np.zeros(1), np.zeros(1), 0.0)
+    pieces = np.full(count, max(FEWEST, min(PIECES, BUDGET // count)))
+    straight = (tracks.shape[fills.segment] == NAMES.index("linear")) & _even(abilities)[abilities.which[fills.fiber]]
+    pieces[straight | fills.at_once] = 1
+    fill = np.repeat(np.arange(count), pieces + 1)
+    number = np.arange(len(fill)) - np.repeat(np.cumsum(pieces + 1) - pieces - 1, pieces + 1)
+    share = number / pieces[fill]
+    time = fills.from_s[fill] + share * (fills.to_s[fill] - fills.from_s[fill])
+    gone = _at_shares(tracks, abilities, fills, fill, share)
+    last = number == pieces[fill]
+    flow = np.zeros(len(fill))
+    inner = np.flatnonzero(~last)
+    flow[inner] = (gone[inner + 1] - gone[inner]) / np.maximum(time[inner + 1] - time[inner], 1e-12)
+    before = np.concatenate([[0.0], flow[:-1]])
+    before[number == 0] = 0.0
+    order = np.argsort(time, kind="stable")
+    time = np.concatenate([[0.0], time[order]])
+    rates = np.concatenate([[0.0], np.cumsum((flow - before)[order])])
+    litres = np.concatenate([[0.0], np.cumsum(np.maximum(rates[:-1], 0.0) * np.diff(time))])
+    return Demand(time, litres, _strays(fills, pieces))
+
+
+def _at_shares(tracks: Tracks, abilities: Abilities, fills: Fills, fill: Index, share: Array) -> Array:
+    """Litres drawn by fills after shares of their time, (N,) each."""
+    segment, fiber = fills.segment[fill], fills.fiber[fill]
+    u = fills.u_from[fill] + share * (fills.u_to[fill] - fills.u_from[fill])
+    strain = value(tracks.curve[segment], u)
+    sudden = np.flatnonzero(tracks.manner[segment] == SUDDEN)
+    if len(sudden):
+        curve = tracks.curve[segment[sudden]]
+        strain[sudden] = sudden_strain(abilities, fiber[sudden], curve[:, 0], curve.sum(axis=1), share[sudden])
+    start = air_at(abilities, fills.fiber, value(tracks.curve[fills.segment], fills.u_from))
+    return air_at(abilities, fiber, strain) - start[fill]
+
+
+def _even(abilities: Abilities) -> NDArray[np.bool_]:
+    """(A,) whether a capability draws the same for every step of strain."""
+    each = np.diff(abilities.air_L, axis=1) / np.diff(abilities.strain, axis=1)
+    return np.ptp(each, axis=1) <= 1e-9 * np.abs(each).max(axis=1)
+
+
+def _strays(fills: Fills, pieces: Index) -> float:
+    """The greatest sum, over the fills under way at one instant, of what the chords of each may stray."""
+    each = np.where(pieces == 1, 0.0, CHORD / pieces**2 * fills.litres)
+    time = np.concatenate([fills.from_s, fills.to_s])
+    order = np.argsort(time, kind="stable")
+    return float(np.cumsum(np.concatenate([each, -each])[order]).max(initial=0.0))
+
+
+def use(tracks: Tracks, supply: Supply, abilities: Abilities) -> Use:
+    """How a score uses the supply, with every span that asks for more than store and compressor give over it."""
+    fills = fills_of(tracks, abilities)
+    asked = demand(tracks, abilities, fills)
+    store, refill = store_L(supply), refill_L_s(supply)
+    now = level(asked.time_s, asked.litres, refill)
+    exact = _Exact(tracks, abilities, fills, refill)
+    deepest = int(now.missing.argmax())
+    _, _, missing = exact.deepen(asked.time_s[now.since[deepest]], asked.time_s[deepest])
+    spans = []
+    slack = min(2.0 * asked.strays_L / store, 0.5) if store > 0.0 else 0.5
+    near = overdraws(asked.time_s, asked.litres, store, refill, -slack)
+    for start, end in zip(near.start, near.end, strict=True):
+        from_s, to_s, short = exact.deepen(asked.time_s[start], asked.time_s[end])
+        missing = max(missing, short)
+        if short > store * (1.0 + TOLERANCE):
+            bears = store + refill * (to_s - from_s)
+            spans.append((from_s, to_s, short - store + bears, bears))
+    lowest = supply.max_receiver_kPa - missing * FREE_AIR_KPA / supply.receiver_L
+    return Use(max(lowest, 0.0), float(fills.litres.sum()), tuple(spans))
+
+
+class _Exact:
+    """The curves themselves, asked in small windows of time."""
+
+    def __init__(self, tracks: Tracks, abilities: Abilities, fills: Fills, refill: float):
+        self.tracks, self.abilities, self.fills, self.refill = tracks, abilities, fills, refill
+        order = np.argsort(fills.to_s, kind="stable")
+        self.ends = fills.to_s[order]
+        self.total = np.concatenate([[0.0], np.cumsum(fills.litres[order])])
+
+    def deepen(self, from_s: float, to_s: float) -> tuple[float, float, float]:
+        """A span near this one that is the deepest there: from, to, and the litres missing at its end."""
+        start, lowest = self._extreme(from_s, -1.0)
+        end, highest = self._extreme(to_s, 1.0)
+        return (start, end, highest - lowest) if end > start else (from_s, from_s, 0.0)
+
+    def _extreme(self, near_s: float, sign: float) -> tuple[float, float]:
+        """The instant about `near_s` at which demand less refill is least (sign -1) or greatest (1), and what it is there."""
+        fills = self.fills
+        under_way = (fills.from_s <= near_s) & (fills.to_s >= near_s)
+        width = (fills.to_s - fills.from_s)[under_way].max(initial=0.0) / FEWEST
+        low, high = max(near_s - width, 0.0), near_s + width
+        best_s, best = near_s, self._short(np.array([near_s]))[0]
+        for _ in range(ROUNDS if width > 0.0 else 0):
+            grid = np.linspace(low, high, GRID)
+            short = self._short(grid)
+            at = int((sign * short).argmax())
+            if sign * short[at] > sign * best:
+                best_s, best = float(grid[at]), short[at]
+            step = grid[1] - grid[0]
+            low, high = max(best_s - step, 0.0), best_s + step
+        return float(best_s), float(best)
+
+    def _short(self, time_s: Array) -> Array:
+        """Demand less refill since the start, at some instants close to one another, (N,)."""
+        fills, first, last = self.fills, time_s[0], time_s[-1]
+        done = np.searchsorted(self.ends, first, side="right")
+        here = np.flatnonzero((fills.to_s > first) & (fills.from_s < last))
+        which = np.repeat(here, len(time_s))
+        each = drawn(self.tracks, self.abilities, fills, which, np.tile(time_s, len(here)))
+        return self.total[done] + each.reshape(len(here), len(time_s)).sum(axis=0) - self.refill * time_s
+
+
+def blame(tracks: Tracks, fills: Fills, from_s: float, to_s: float) -> int:
+    """The segment whose line of the score draws the most between two instants, -1 where none does."""
+    there = np.flatnonzero((fills.from_s < to_s) & (fills.to_s > from_s))
+    if not len(there):
+        return -1
+    line = tracks.line[fills.segment[there]]
+    by_line = np.bincount(line, weights=fills.litres[there])
+    mine = there[line == by_line.argmax()]
+    return int(fills.segment[mine[fills.litres[mine].argmax()]])
+
+
+def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
+    """The spans that ask for too much air, the deepest of each stretch in which the receiver is not full again.
+
+    From and to are the span; needs the litres drawn in it, has the store and what the compressor delivers over it; the line
+    is the one that draws the most.
+    """
+    return snags_of(use(tracks, rig.supply, abilities), tracks, abilities)
+
+
+def snags_of(used: Use, tracks: Tracks, abilities: Abilities) -> list[Snag]:
+    """The snags of a use that is known already."""
+    if not used.spans:
+        return []
+    fills = fills_of(tracks, abilities)
+    found = []
+    for from_s, to_s, asked, bears in used.spans:
+        knot = blame(tracks, fills, from_s, to_s)
+        line = line_of(tracks, knot) if knot >= 0 else 0
+        found.append(Snag("air", None, from_s, to_s, asked, bears, "L", -1, line))
+    return found
+
+
+LIMIT = Limit("air", "L", "air drawn in any span at most the receiver's store and the compressor's delivery over it", snags)

@@ -1,0 +1,88 @@
+"""What fibers draw from the supply: one fill for each stretch in which a fiber's strain rises, in litres of free air."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.limits.duration import PEAK_SPEED, STEP_S
+from composer.limits.polynomials import derivative, value, where_positive
+from composer.limits.tables import cells, strain_after, tables_of, travel_time_s
+from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN, Tracks, durations, fiber_of
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Fills:
+    """Stretches of rising strain, (P,) each, in order of fiber and time.
+
+    fiber, segment: whose, and in which segment of the tracks; u_from, u_to: the shares of its curve between which it rises
+    from_s, to_s: the stretch in time; litres: what it draws in all, for a bundle all of its fibers together
+    at_once: a jump, which is taken to draw evenly over one tick of 5 ms
+    """
+
+    fiber: Index
+    segment: Index
+    u_from: Array
+    u_to: Array
+    from_s: Array
+    to_s: Array
+    litres: Array
+    at_once: NDArray[np.bool_]
+
+
+def air_at(abilities: Abilities, fiber: Index, strain: Array) -> Array:
+    """Litres of free air that each fiber draws in filling from rest to each strain, any one shape; past its table no more."""
+    tables = tables_of(abilities)
+    first = abilities.which[fiber] * tables.points
+    points, litres = tables.fill.strain, abilities.air_L.ravel()
+    at = cells(abilities, fiber, strain)
+    held = np.clip(strain, points[first], points[first + tables.points - 1])
+    return litres[at] + (litres[at + 1] - litres[at]) * (held - points[at]) / (points[at + 1] - points[at])
+
+
+def fills_of(tracks: Tracks, abilities: Abilities) -> Fills:
+    """All fills of the tracks. Exhausting draws nothing, and what a fiber lets out is not given back."""
+    rise = tracks.curve[:, 1:].sum(axis=1)
+    # A named shape never turns back; a sum, a cut or a line's own curve may.
+    one_way = (tracks.shape >= 0) & ~np.isnan(PEAK_SPEED[np.maximum(tracks.shape, 0)])
+    one_way |= (tracks.manner == SUDDEN) | (tracks.manner == STEP)
+    whole = np.flatnonzero((tracks.manner != HOLD) & one_way & (rise > 0.0))
+    own = np.flatnonzero((tracks.manner == MOVE) & ~one_way)
+    row, start, end = where_positive(derivative(tracks.curve[own]))
+    segment = np.concatenate([whole, own[row]])
+    u_from = np.concatenate([np.zeros(len(whole)), start])
+    u_to = np.concatenate([np.ones(len(whole)), end])
+    order = np.lexsort((u_from, segment))
+    segment, u_from, u_to = segment[order], u_from[order], u_to[order]
+
+    fiber, lasts, curve = fiber_of(tracks)[segment], durations(tracks)[segment], tracks.curve[segment]
+    at_once = (tracks.manner[segment] == STEP) | (lasts <= SAME_INSTANT_S)
+    from_s = tracks.time_s[segment] + np.where(at_once, 0.0, u_from * lasts)
+    to_s = tracks.time_s[segment] + np.where(at_once, STEP_S, u_to * lasts)
+    litres = air_at(abilities, fiber, value(curve, u_to)) - air_at(abilities, fiber, value(curve, u_from))
+    some = litres > 0.0
+    return Fills(*(x[some] for x in (fiber, segment, u_from, u_to, from_s, to_s, litres, at_once)))
+
+
+def drawn(tracks: Tracks, abilities: Abilities, fills: Fills, which: Index, time_s: Array) -> Array:
+    """Litres drawn by some fills from their start up to some instants, (N,) each; nothing before, all of it after."""
+    fiber, segment = fills.fiber[which], fills.segment[which]
+    share = np.clip((time_s - fills.from_s[which]) / (fills.to_s[which] - fills.from_s[which]), 0.0, 1.0)
+    curve, u_from = tracks.curve[segment], fills.u_from[which]
+    strain = value(curve, u_from + share * (fills.u_to[which] - u_from))
+    sudden = np.flatnonzero((tracks.manner[segment] == SUDDEN) & ~fills.at_once[which])
+    if len(sudden):
+        start, end = curve[sudden, 0], curve[sudden].sum(axis=1)
+        strain[sudden] = sudden_strain(abilities, fiber[sudden], start, end, share[sudden])
+    litres = air_at(abilities, fiber, strain) - air_at(abilities, fiber, value(curve, u_from))
+    litres = np.where(fills.at_once[which], share * fills.litres[which], litres)
+    return np.where(share >= 1.0, fills.litres[which], np.where(share <= 0.0, 0.0, litres))
+
+
+def sudden_strain(abilities: Abilities, fiber: Index, start: Array, end: Array, share: Array) -> Array:
+    """Strain of a `sudden` move after a share of its time; one with too little time runs through the same way faster."""
+    return strain_after(abilities, fiber, start, end, share * travel_time_s(abilities, fiber, start, end))

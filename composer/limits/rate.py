@@ -1,0 +1,175 @@
+"""The limit of rate: no strain rate above the fastest fill or exhaust at that strain."""
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.limits.alike import alike
+from composer.limits.duration import STEP_S, duration_ceilings, durations_by_rate, least_durations, speed_range
+from composer.limits.limit import TOLERANCE, Limit
+from composer.limits.over_tables import worst_over_tables
+from composer.limits.polynomials import derivative, value, where_positive
+from composer.limits.snag import Snag
+from composer.limits.stretches import Pieces, as_snags, gather
+from composer.limits.tables import rates
+from composer.rig.model import Rig
+from composer.tracks import MOVE, SAME_INSTANT_S, SUDDEN, Tracks, durations, end_strain, fiber_of
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+SAMPLES = 129
+"""Where a table bends the limit, a move that breaks it is sampled so often to find where it does so, then bisected."""
+
+BISECTIONS = 40
+
+
+def least_s(tracks: Tracks, abilities: Abilities, segments: Index | None = None) -> Array:
+    """Least seconds of each segment by rate alone, (K,) or one for each of `segments`; as `duration.least_durations`."""
+    of = np.arange(len(tracks.time_s)) if segments is None else segments
+    least = np.zeros(len(of))
+    moves = tracks.manner[of] == MOVE
+    at = of[moves]
+    least[moves] = durations_by_rate(abilities, fiber_of(tracks)[at], tracks.curve[at], tracks.shape[at])
+    least[~moves] = least_durations(tracks, abilities, of[~moves])
+    return least
+
+
+def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
+    """Every stretch in which a fiber is asked to go faster than it can: needs its rate where it is worst, has the limit there.
+
+    A jump is told as if made within one tick of 5 ms, and time does not mend it. A `sudden` move with too little time is
+    told by the mean rates of the whole of it.
+    """
+    lasts = durations(tracks)
+    ceilings = duration_ceilings(tracks, abilities)
+    suspects = np.flatnonzero(lasts * (1.0 + TOLERANCE) < ceilings)
+    fiber, least, worst_u = fiber_of(tracks)[suspects], ceilings[suspects], np.full(len(suspects), np.nan)
+    moves = tracks.manner[suspects] == MOVE
+    at = suspects[moves]
+    least[moves] = durations_by_rate(abilities, fiber[moves], tracks.curve[at], tracks.shape[at], exact=False)
+    varied = np.flatnonzero(moves & ~abilities.constant[abilities.which[fiber]])
+    if len(varied):
+        curve = tracks.curve[suspects[varied]]
+        one, kind = alike(abilities.which[fiber[varied]].astype(float), curve)
+        worst, u = worst_over_tables(abilities, fiber[varied][one], curve[one])
+        least[varied], worst_u[varied] = worst[kind], u[kind]
+    broken = lasts[suspects] * (1.0 + TOLERANCE) < least
+    of, least, worst_u = suspects[broken], least[broken], worst_u[broken]
+    if not len(of):
+        return []
+    manner = tracks.manner[of]
+    at_once = (manner != SUDDEN) & ((manner != MOVE) | (lasts[of] <= SAME_INSTANT_S))
+    sudden, moves = manner == SUDDEN, (manner == MOVE) & ~at_once
+    lots = [
+        _jumps(tracks, abilities, of[at_once]),
+        _suddens(tracks, of[sudden], least[sudden]),
+        _moves(tracks, abilities, of[moves], lasts[of[moves]], worst_u[moves]),
+    ]
+    return as_snags("rate", "1/s", gather(*lots), tracks)
+
+
+def _jumps(tracks: Tracks, abilities: Abilities, of: Index) -> Pieces:
+    fiber = fiber_of(tracks)[of]
+    start, end = tracks.curve[of, 0], end_strain(tracks)[of]
+    return Pieces(
+        fiber=fiber,
+        from_s=tracks.time_s[of],
+        to_s=tracks.time_s[of],
+        needs=np.abs(end - start) / STEP_S,
+        has=rates(abilities, fiber, start, end > start),
+        knot=of,
+        mends=tracks.manner[of] == MOVE,
+    )
+
+
+def _suddens(tracks: Tracks, of: Index, least: Array) -> Pieces:
+    lasts = durations(tracks)[of]
+    way = np.abs(end_strain(tracks)[of] - tracks.curve[of, 0])
+    return Pieces(
+        fiber=fiber_of(tracks)[of],
+        from_s=tracks.time_s[of],
+        to_s=tracks.time_s[of] + lasts,
+        needs=way / np.maximum(lasts, SAME_INSTANT_S),
+        has=way / least,
+        knot=of,
+        mends=np.ones(len(of), dtype=bool),
+    )
+
+
+def _moves(tracks: Tracks, abilities: Abilities, of: Index, lasts: Array, worst_u: Array) -> Pieces:
+    """The stretches of moves that break the limit, by polynomial roots where it is constant, by bisection elsewhere.
+
+    worst_u: (M,) where each asks the most, for those whose limit is a table.
+    """
+    fiber, curve = fiber_of(tracks)[of], tracks.curve[of]
+    constant = abilities.constant[abilities.which[fiber]]
+    needs, has = np.empty(len(of)), np.empty(len(of))
+    rows, starts, ends = [], [], []
+
+    same = np.flatnonzero(constant)
+    low, high = speed_range(curve[same], tracks.shape[of[same]])
+    fill, exhaust = (rates(abilities, fiber[same], curve[same, 0], np.full(len(same), way)) for way in (True, False))
+    filling = high / fill >= -low / exhaust
+    needs[same] = np.where(filling, high, -low) / lasts[same]
+    has[same] = np.where(filling, fill, exhaust)
+    for sign, limit in ((1.0, fill), (-1.0, exhaust)):
+        over = sign * derivative(curve[same])
+        over[:, 0] -= limit * lasts[same] * (1.0 + 0.5 * TOLERANCE)
+        row, start, end = where_positive(over)
+        rows.append(same[row])
+        starts.append(start)
+        ends.append(end)
+
+    varied = np.flatnonzero(~constant)
+    if len(varied):
+        worst = worst_u[varied]
+        speed = value(derivative(curve[varied]), worst)
+        needs[varied] = np.abs(speed) / lasts[varied]
+        has[varied] = rates(abilities, fiber[varied], value(curve[varied], worst), speed > 0.0)
+        row, start, end = _bisected(abilities, fiber[varied], curve[varied], lasts[varied], worst)
+        rows.append(varied[row])
+        starts.append(start)
+        ends.append(end)
+
+    row, start, end = np.concatenate(rows), np.concatenate(starts), np.concatenate(ends)
+    return Pieces(
+        fiber=fiber[row],
+        from_s=tracks.time_s[of[row]] + start * lasts[row],
+        to_s=tracks.time_s[of[row]] + end * lasts[row],
+        needs=needs[row],
+        has=has[row],
+        knot=of[row],
+        mends=np.ones(len(row), dtype=bool),
+    )
+
+
+def _bisected(abilities: Abilities, fiber: Index, curve: Array, lasts: Array, worst_u: Array) -> tuple[Index, Array, Array]:
+    """The stretches of u in which each move outruns its table: rows, from and to; `worst_u` lies in one of them."""
+    speed_curve = derivative(curve)
+
+    def over(row: Index, u: Array) -> Array:
+        speed = value(speed_curve[row], u)
+        limit = rates(abilities, fiber[row], value(curve[row], u), speed > 0.0)
+        return np.abs(speed) - limit * lasts[row] * (1.0 + 0.5 * TOLERANCE)
+
+    grid = np.broadcast_to(np.linspace(0.0, 1.0, SAMPLES), (len(fiber), SAMPLES))
+    u = np.sort(np.column_stack([grid, worst_u]), axis=1)
+    number = np.repeat(np.arange(len(fiber)), SAMPLES + 1)
+    broken = over(number, u.ravel()).reshape(u.shape) > 0.0
+    row, change = np.nonzero(broken[:, 1:] != broken[:, :-1])
+    low, high, first = u[row, change], u[row, change + 1], broken[row, change]
+    for _ in range(BISECTIONS):
+        middle = 0.5 * (low + high)
+        as_low = (over(row, middle) > 0.0) == first
+        low, high = np.where(as_low, middle, low), np.where(as_low, high, middle)
+    edge = 0.5 * (low + high)
+    from_row = np.concatenate([np.flatnonzero(broken[:, 0]), row[~first]])
+    start = np.concatenate([np.zeros(np.count_nonzero(broken[:, 0])), edge[~first]])
+    to_row = np.concatenate([row[first], np.flatnonzero(broken[:, -1])])
+    end = np.concatenate([edge[first], np.ones(np.count_nonzero(broken[:, -1]))])
+    by_start, by_end = np.lexsort((start, from_row)), np.lexsort((end, to_row))
+    return from_row[by_start], start[by_start], end[by_end]
+
+
+LIMIT = Limit("rate", "1/s", "no strain rate above the fastest fill or exhaust at that strain", snags, least_s)

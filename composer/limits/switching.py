@@ -1,0 +1,42 @@
+"""The limit of switching: no coil is energised more often than its valve can switch.
+
+A switch is the start of energising, as `coil` defines it. Moves that follow one another without a hold are one stretch
+and one start; two starts closer than 1 / max_switch_Hz are a snag, which more time between them mends.
+"""
+
+import numpy as np
+
+from composer.limits.abilities import Abilities
+from composer.limits.coil import coils_of, on_times
+from composer.limits.limit import TOLERANCE, Limit
+from composer.limits.snag import Snag
+from composer.limits.stretches import Pieces, as_snags
+from composer.rig.model import Rig
+from composer.tracks import Tracks
+
+
+def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
+    """Every stretch of starts that follow too soon: needs switches a second where they are closest, has the most."""
+    on = on_times(tracks, rig, abilities)
+    begin = np.flatnonzero(np.diff(on.stretch, prepend=-1))
+    fiber, start, segment = on.fiber[begin], on.from_s[begin], on.segment[begin]
+    most = coils_of(rig).switch_Hz
+    apart = np.diff(start)
+    soon = np.flatnonzero((fiber[1:] == fiber[:-1]) & (apart * most[fiber[1:]] < 1.0 - TOLERANCE))
+    return as_snags(
+        "switching",
+        "Hz",
+        Pieces(
+            fiber=fiber[soon],
+            from_s=start[soon],
+            to_s=start[soon + 1],
+            needs=1.0 / apart[soon],
+            has=most[fiber[soon]],
+            knot=segment[soon + 1],
+            mends=np.ones(len(soon), dtype=bool),
+        ),
+        tracks,
+    )
+
+
+LIMIT = Limit("switching", "Hz", "no two starts of a coil closer than one over its valve's max_switch_Hz", snags)
