@@ -62,9 +62,8 @@ def test_a_message_is_little_endian_in_the_order_of_the_page(message, expected):
 def test_the_fixed_part_of_each_body_has_the_size_of_its_fields():
     for spec in m.SPECS:
         size = sum(m.SIZES[field.type][1] for field in spec.fields)
-        empty = m.MADE[spec.made](
-            *[0 for f in spec.fields if not f.counts], *([""] if spec.tail_type == "text" else [()] if spec.tail else [])
-        )
+        tail = {"": [], "u16s": [()], "text": [""]}[spec.tail_type]
+        empty = m.MADE[spec.made](*[0 for field in spec.fields if not field.counts], *tail)
         assert len(m.encode(empty, 0)) == 2 + size
 
 
