@@ -289,15 +289,13 @@ def _fiber(document: Document, item: Hung, stock: Stock, mirror: int | None) -> 
 def _check_worn(document: Document, item: Hung, kind: FiberType | None) -> None:
     """What a fiber on a person's body must have."""
     if not item.values["max_hold_s"] > 0.0:
-        path, found = (*item.path, "max_hold_s"), "is worn and has no max_hold_s"
-        note = document.at_value if path in document.places else document.at_key
-        note(
-            path,
-            f"{_title(item)} {found}",
-            "a number above 0 (s)",
-            "the rig says worn = true: every fiber needs a longest hold",
-        )
-    if kind is not None and getattr(kind.make, "max_pressure_kPa", None) is None:
+        path = (*item.path, "max_hold_s")
+        given = path in document.places
+        lacks = "its max_hold_s is 0, which is no limit" if given else "has no max_hold_s"
+        hint = "the rig says worn = true: every fiber needs a longest hold"
+        note = document.at_value if given else document.at_key
+        note(path, f"{_title(item)} is worn and {lacks}", "a number above 0 (s)", hint)
+    if kind is not None and kind.max_pressure_kPa is None:
         hint = "the rig says worn = true: every type needs a greatest pressure"
         document.at_key(
             ("fiber_type", kind.name), f"fiber_type '{kind.name}' is worn and has no max_pressure_kPa", "a number (kPa)", hint

@@ -15,6 +15,11 @@ class FiberType:
     make: Any
     line: int
 
+    @property
+    def max_pressure_kPa(self) -> float | None:
+        """The gauge pressure that it must never exceed, None where its table says none; of a held fiber, its base's."""
+        return getattr(getattr(self.make, "base", self.make), "max_pressure_kPa", None)
+
 
 @dataclass(frozen=True, slots=True)
 class Driver:

@@ -76,4 +76,6 @@ def _span(message: str, text: str, column: int) -> tuple[int, int]:
     if message.startswith(("Cannot overwrite", "Cannot declare", "Cannot redefine")):
         whole = re.match(r"\[\[?.*?\]\]?|[^=]*", text[indent:])
         return indent + 1, max(1, len(whole[0].rstrip()) if whole else 1)
+    if message.startswith("Unescaped"):
+        return max(1, column - 2), 2
     return column, 1

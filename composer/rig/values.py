@@ -112,21 +112,24 @@ def _value(document: Document, path: Path, value: Any, key: Key) -> Any:
 
 def _wrong(value: Any, key: Key) -> str:
     """What is wrong with a value for its key; nothing if it will do."""
-    found = f"is {say_value(value)}"
+    if _fits(value, key):
+        return ""
+    return "is empty" if key.type == "text" and isinstance(value, str) else f"is {say_value(value)}"
+
+
+def _fits(value: Any, key: Key) -> bool:
+    """Whether a value is of its key's type and in its range."""
     if key.type in ("number", "integer"):
-        return "" if _number(value) and _within(value, key) and (key.type == "number" or float(value).is_integer()) else found
+        return _number(value) and _within(value, key) and (key.type == "number" or float(value).is_integer())
     if key.type == "vector":
-        good = isinstance(value, list) and len(value) == 3 and all(_number(v) and _within(v, key) for v in value)
-        return "" if good else found
+        return isinstance(value, list) and len(value) == 3 and all(_number(v) and _within(v, key) for v in value)
     if key.type == "names":
-        return "" if isinstance(value, list) and all(isinstance(v, str) for v in value) else found
+        return isinstance(value, list) and all(isinstance(v, str) for v in value)
     if key.type == "switch":
-        return "" if isinstance(value, bool) else found
+        return isinstance(value, bool)
     if key.type == "choice":
-        return "" if value in key.choices else found
-    if isinstance(value, str) and not value.strip():
-        return "is empty"
-    return "" if isinstance(value, str) else found
+        return value in key.choices
+    return isinstance(value, str) and value.strip() != ""
 
 
 def _number(value: Any) -> bool:
