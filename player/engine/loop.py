@@ -11,6 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from composer.rig.model import Rig
+from player.engine.account import Account
 from player.engine.boards import Boards
 from player.engine.clock import Clock
 from player.engine.errors import Errors
@@ -18,7 +19,7 @@ from player.engine.quiet import no_collecting
 from player.engine.run_log import RunLog
 from player.engine.safety import Refused, Safety, after
 from player.engine.source import Source
-from player.engine.status import MOST_FAULTS, Ending, Lateness, RunFault, Status
+from player.engine.status import Ending, Lateness, Status
 from player.engine.verdicts import ARMED, verdict
 from player.outputs.base import Event, Mark, Output
 from player.wire.values import clip, is_valve, to_wire
@@ -65,14 +66,10 @@ class Engine:
         self.lateness = Lateness()
         self.boards = Boards(outputs)
         self.errors = Errors(len(rig.fibers))
-        self._lasted_s = 0.0
         self._rig, self._clock, self._log = rig, clock, log
         self._dt = 1.0 / rate_Hz
         self._asked: deque[Command] = deque(maxlen=1000)
-        self._told: list[str] = []
-        self._faults: list[RunFault] = []
-        self._more_faults = 0
-        self._how, self._why = "stopped", "stopped before it began"
+        self._account = Account()
         self._due_s = clock.now()
         self._moving = 0
         self._valve = is_valve([fiber.mounting.valve.drive for fiber in rig.fibers])
@@ -109,7 +106,6 @@ class Engine:
         try:
             self._obey()
             if self.safety.state == "armed":
-                self._why = "the score came to its end"
                 self._become("play", lambda: self.source.start(from_s))
                 with no_collecting():
                     yield from self._ticks()
@@ -165,7 +161,7 @@ class Engine:
     def _slip(self, late: float) -> None:
         self.lateness.slips += 1
         self.lateness.slipped_s += late
-        self._tell(f"the host stood still for {late:.3f} s; the score goes on that much later")
+        self._account.tell(f"the host stood still for {late:.3f} s; the score goes on that much later")
         if self._log is not None:
             self._log.tell("slip", self._clock.now(), seconds=late)
 
@@ -191,7 +187,7 @@ class Engine:
             try:
                 self._do(command)
             except Refused as refused:
-                self._tell(str(refused))
+                self._account.tell(str(refused))
 
     def _do(self, command: Command) -> None:
         kind = command.kind
@@ -214,7 +210,7 @@ class Engine:
         """What the source came to in this tick."""
         if happened == "wait" and self.source.waiting is not None:
             self._become("wait")
-            self._tell(f'waiting at cue "{self.source.waiting.name}"')
+            self._account.tell(f'waiting at cue "{self.source.waiting.name}"')
         elif happened == "end":
             self._stop("end", "the score came to its end", "end")
         elif happened == "at_rest" or (self.safety.state == "resting" and not self.boards.live):
@@ -240,28 +236,20 @@ class Engine:
                 )
             means, say = verdict(event, self.safety.state)
             if means == "tell":
-                self._tell(say)
+                self._account.tell(say)
             elif means:
                 self._fault(event.driver, say, means)
 
     def _fault(self, driver: str, say: str, means: str) -> None:
         """Keep a fault for the report, tell it, and do what it means for the run."""
-        if any(fault.say == say for fault in self._faults):
-            self._more_faults += 1
-        elif len(self._faults) < MOST_FAULTS:
-            self._faults.append(RunFault(self.source.position_s, driver, say))
-            self._tell(say)
-        else:
-            self._more_faults += 1
+        self._account.fault(self.source.position_s, driver, say)
         if means != "note" and self.safety.state in ARMED:
             self._stop("fault", say, means)
 
     def _stop(self, how: str, why: str, event: str) -> None:
-        """End the run by that event; the first reason stays, unless a later one is graver. Raises Refused before anything is done."""
-        gravity = ("end", "stopped", "vented", "fault")
+        """End the run by that event, for that reason. Raises Refused before anything is done."""
         after(self.safety, event)
-        if self.safety.state not in ("resting", "vented") or gravity.index(how) > gravity.index(self._how):
-            self._how, self._why = how, why
+        self._account.ends(how, why, ending=self.safety.state in ("resting", "vented"))
         self._become(event)
 
     def _become(self, event: str, start: Callable[[], None] | None = None) -> None:
@@ -312,14 +300,9 @@ class Engine:
         if not self.boards.settled("vented"):
             self._fault("", "a board did not say that it has vented: shut its supply by hand", "note")
 
-    def _tell(self, say: str) -> None:
-        if len(self._told) < MOST_FAULTS:
-            self._told.append(say)
-
     def status(self, late_s: float = 0.0) -> Status:
         """A snapshot; what was new to tell is told once."""
-        source, told = self.source, tuple(self._told)
-        self._told.clear()
+        source = self.source
         return Status(
             state=self.safety.state,
             phase=source.phase,
@@ -335,23 +318,15 @@ class Engine:
             past_due=self.lateness.past_due,
             late_s=late_s,
             links=self.boards.links,
-            told=told,
+            told=self._account.news(),
         )
 
     def _end(self, began: float) -> None:
         if self._log is not None and self._log.broken:
             self._fault("", f"the log could not be written to its end: {self._log.broken}", "note")
-        self._lasted_s = self._clock.now() - began
+        self._account.lasted_s = self._clock.now() - began
 
     @property
     def ending(self) -> Ending:
         """How the run ended; whole once it has been closed."""
-        return Ending(
-            how=self._how,
-            why=self._why,
-            state=self.safety.state,
-            position_s=self.source.position_s,
-            lasted_s=self._lasted_s,
-            faults=tuple(self._faults),
-            more_faults=self._more_faults,
-        )
+        return self._account.ending(self.safety.state, self.source.position_s)

@@ -4,9 +4,6 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-MOST_FAULTS = 200
-"""Faults kept for the report; further ones are only counted."""
-
 
 @dataclass(frozen=True, slots=True)
 class Status:
