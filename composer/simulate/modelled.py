@@ -9,11 +9,11 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from composer.fiber import charts
+from composer.fiber.charts import Charts, look_up
 from composer.fiber.gas import free_litres
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
-from composer.simulate import charts
-from composer.simulate.charts import Charts, look_up
 from composer.simulate.moved import Moved
 
 Array = NDArray[np.float64]
