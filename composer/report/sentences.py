@@ -1,0 +1,238 @@
+"""Every sentence about a snag, in one place: what is asked, what can be done, and what would mend it."""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from composer.limits.snag import Snag
+from composer.rig.model import Rig
+from composer.score.shapes import NAMES
+from composer.tracks import STEP, SUDDEN, Tracks
+
+MOST_NAMES = 4
+"""Fibers that a sentence names before it says how many more there are."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Teller:
+    """What sentences are made from: the score's tracks, the rig, and how a place is said ("2:1" for an instant in s)."""
+
+    tracks: Tracks
+    rig: Rig
+    say_place: Callable[[float], str]
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """A snag in words: what is wrong, and what would mend it."""
+
+    says: str
+    mends: str
+
+
+def tell(snag: Snag, teller: Teller, fibers: Sequence[int] = ()) -> Told:
+    """The sentences for a snag; `fibers` are those that it is told of together, where they are asked for the same."""
+    return _KINDS[snag.kind](snag, teller, _Who.of(snag, teller, fibers))
+
+
+def place_in_words(place: str) -> str:
+    """A place as it is spoken: "2:1" is bar 2 count 1."""
+    bar, _, count = place.partition(":")
+    return f"bar {bar} count {count}"
+
+
+@dataclass(frozen=True, slots=True)
+class _Who:
+    """The subject of a sentence, and its verbs in the right number."""
+
+    names: str
+    many: bool
+
+    @staticmethod
+    def of(snag: Snag, teller: Teller, fibers: Sequence[int]) -> "_Who":
+        indices = list(fibers) or ([] if snag.fiber is None else [snag.fiber])
+        return _Who(named([teller.rig.fibers[f].name for f in indices]), len(indices) > 1)
+
+    def verb(self, one: str, many: str) -> str:
+        """The names with the verb in their number."""
+        return f"{self.names} {many if self.many else one}"
+
+    def then(self, one: str, many: str) -> str:
+        """As `verb` where the names have been said already."""
+        return f"they {many}" if self.many else f"it {one}"
+
+
+def named(names: Sequence[str]) -> str:
+    """Fibers as a sentence names them: runs as ranges, as a score writes them, and not too many of either."""
+    runs: list[list[str]] = []
+    for name in names:
+        stem, _, number = name.rpartition(".")
+        last, _, previous = runs[-1][-1].rpartition(".") if runs else ("", "", "")
+        if stem and stem == last and number.isdigit() and previous.isdigit() and int(number) == int(previous) + 1:
+            runs[-1].append(name)
+        else:
+            runs.append([name])
+    said: list[tuple[str, int]] = []
+    for run in runs:
+        said += [(f"{run[0]}-{run[-1].rpartition('.')[2]}", len(run))] if len(run) > 2 else [(name, 1) for name in run]
+    if len(said) > MOST_NAMES:
+        rest = sum(count for _, count in said[MOST_NAMES - 1 :])
+        said = [*said[: MOST_NAMES - 1], (f"{rest} more", rest)]
+    return listed([words for words, _ in said])
+
+
+def listed(names: Sequence[str]) -> str:
+    """Names as a sentence lists them: "a", "a and b", "a, b and c"."""
+    return names[0] if len(names) == 1 else " and ".join([", ".join(names[:-1]), names[-1]]) if names else ""
+
+
+def two(needs: float, has: float) -> tuple[str, str]:
+    """Two numbers as people write them, with as many digits as it takes to tell them apart."""
+    for digits in (2, 3, 4, 6, 9):
+        said = tuple(_digits(x, digits) for x in (needs, has))
+        if said[0] != said[1]:
+            return said
+    return f"{needs:.12g}", f"{has:.12g}"
+
+
+def _digits(x: float, digits: int) -> str:
+    """Hundredths where a number is about 1 or more, else `digits` figures; more `digits` give more of either."""
+    if abs(x) >= 0.1 or x == 0.0:
+        return f"{x:.{digits}f}"
+    return f"{x:.{digits}g}" if abs(x) >= 1e-4 else f"{x:.{digits - 1}e}"
+
+
+def _at(teller: Teller, seconds: float) -> str:
+    return place_in_words(teller.say_place(seconds))
+
+
+def _way(teller: Teller, knot: int) -> str:
+    """Which way a segment goes, as a verb."""
+    curve = teller.tracks.curve[knot]
+    there = curve[1:].sum()
+    both_ways = np.ptp(np.sign(np.diff(np.polyval(curve[::-1], np.linspace(0.0, 1.0, 33))))) > 1.0
+    return "move" if both_ways else "fill" if there > 0.0 else "empty"
+
+
+def _lasts(teller: Teller, knot: int) -> float:
+    tracks = teller.tracks
+    after = tracks.first[np.searchsorted(tracks.first, knot, side="right")]
+    return 0.0 if knot + 1 == after else float(tracks.time_s[knot + 1] - tracks.time_s[knot])
+
+
+def _move(snag: Snag, teller: Teller, who: _Who, needs_s: float, manner: str, why: str = "") -> Told:
+    lasts = _lasts(teller, snag.knot)
+    lands = _at(teller, float(teller.tracks.time_s[snag.knot]) + lasts)
+    has, needs = two(lasts, needs_s)
+    more, _ = two(needs_s - lasts, 0.0)
+    says = (
+        f"{who.verb('is', 'are')} asked to {manner} in {has} s, landing at {lands}; {who.then('needs', 'need')} {needs} s{why}."
+    )
+    return Told(says, f"Give it {more} s more.")
+
+
+def _rate(snag: Snag, teller: Teller, who: _Who) -> Told:
+    tracks, knot = teller.tracks, snag.knot
+    lasts = _lasts(teller, knot)
+    if tracks.manner[knot] == STEP or lasts <= 0.0:
+        return _jump(snag, teller, who)
+    if tracks.manner[knot] == SUDDEN:
+        told = _move(snag, teller, who, lasts * snag.needs / snag.has, f"{_way(teller, knot)} suddenly")
+        return Told(told.says, f"{told.mends} Let the line before it end earlier.")
+    told = _move(snag, teller, who, lasts * snag.needs / snag.has, _way(teller, knot))
+    return Told(told.says, told.mends + _shrunk(snag))
+
+
+def _shrunk(snag: Snag) -> str:
+    """How much of the way would do, where that is some of it at all."""
+    share = np.floor(100.0 * snag.has / snag.needs) / 100.0
+    return f" Or ask for {share:.2f} of the way." if share >= 0.05 else ""
+
+
+def _jump(snag: Snag, teller: Teller, who: _Who) -> Told:
+    tracks, knot = teller.tracks, snag.knot
+    way = tracks.curve[knot, 1:].sum()
+    says = (
+        f"{who.verb('is', 'are')} asked to jump by {abs(way) * 100.0:.3g} % strain at {_at(teller, snag.from_s)}, "
+        "in no time at all; no fiber can."
+    )
+    if tracks.shape[knot] == NAMES.index("step"):
+        return Told(says, "Write 'sudden' in place of 'step', or give the move a duration.")
+    return Told(says, "Leave out the phrase's line at 0, so that it starts from what is there, or bring the fiber there first.")
+
+
+def _accel(snag: Snag, teller: Teller, who: _Who) -> Told:
+    needs_s = _lasts(teller, snag.knot) * np.sqrt(snag.needs / snag.has)
+    told = _move(snag, teller, who, needs_s, _way(teller, snag.knot), " to speed up and slow down")
+    return Told(told.says, told.mends + _shrunk(snag))
+
+
+def _stroke(snag: Snag, teller: Teller, who: _Who) -> Told:
+    at = _at(teller, snag.from_s)
+    if snag.needs < 0.0:
+        says = f"{who.verb('is', 'are')} asked for {-snag.needs * 100.0:.3g} % strain below rest at {at}; nothing goes there."
+        return Told(says, "Let the entries that add up ask for less there; time does not mend it.")
+    needs, has = two(snag.needs * 100.0, snag.has * 100.0)
+    says = f"{who.verb('is', 'are')} asked for {needs} % strain at {at}; {who.then('can', 'can')} use {has} %."
+    return Told(says, f"Scale it to {np.floor(1000.0 * snag.has / snag.needs) / 1000.0:.3f} of that; time does not mend it.")
+
+
+def _switching(snag: Snag, teller: Teller, who: _Who) -> Told:
+    soon, least = two(1.0 / snag.needs, 1.0 / snag.has)
+    says = (
+        f"{who.verb('has its valve', 'have their valves')} switched on again after {soon} s at {_at(teller, snag.from_s)}; "
+        f"it takes {least} s from one start to the next."
+    )
+    return Told(says, "Let the moves follow one another without a hold, or begin further apart.")
+
+
+def _duty(snag: Snag, teller: Teller, who: _Who) -> Told:
+    needs, has = two(snag.needs, snag.has)
+    says = (
+        f"{who.verb('has its coil', 'have their coils')} on for {needs} s from {_at(teller, snag.from_s)} "
+        f"to {_at(teller, snag.to_s)}; {who.then('bears', 'bear')} {has} s over that span."
+    )
+    less, _ = two(snag.needs - snag.has, 0.0)
+    return Told(says, f"Let it rest longer within that span, or move {less} s less.")
+
+
+def _hold(snag: Snag, teller: Teller, who: _Who) -> Told:
+    needs, has = two(snag.needs, snag.has)
+    says = (
+        f"{who.verb('stays', 'stay')} above half stroke for {needs} s from {_at(teller, snag.from_s)}; "
+        f"{who.then('may', 'may')} for {has} s."
+    )
+    return Told(says, f"Bring it below half stroke by {_at(teller, snag.from_s + snag.has)}.")
+
+
+def _air(snag: Snag, teller: Teller, who: _Who) -> Told:
+    needs, has = two(snag.needs, snag.has)
+    says = (
+        f"The fibers draw {needs} L of free air from {_at(teller, snag.from_s)} to {_at(teller, snag.to_s)}; "
+        f"receiver and compressor have {has} L for it."
+    )
+    rho = teller.rig.supply.compressor_L_min / 60.0
+    less, _ = two(snag.needs - snag.has, 0.0)
+    spread = f"Spread it over {two((snag.needs - snag.has) / rho, 0.0)[0]} s more, or ask" if rho > 0.0 else "Ask"
+    return Told(says, f"{spread} for {less} L less.")
+
+
+def _pin(snag: Snag, teller: Teller, who: _Who) -> Told:
+    has, needs = two(snag.has, snag.needs)
+    says = (
+        f"What must happen from {_at(teller, snag.from_s)} to {_at(teller, snag.to_s)} takes {needs} s; the pins leave {has} s."
+    )
+    return Told(says, f"Move the pins apart by {two(snag.needs - snag.has, 0.0)[0]} s, or shrink the moves between them.")
+
+
+_KINDS: dict[str, Callable[[Snag, Teller, _Who], Told]] = {
+    "stroke": _stroke,
+    "rate": _rate,
+    "accel": _accel,
+    "switching": _switching,
+    "duty": _duty,
+    "hold": _hold,
+    "air": _air,
+    "pin": _pin,
+}
