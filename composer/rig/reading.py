@@ -65,6 +65,9 @@ def _check_tables(document: Document) -> None:
 def _one(document: Document, table: Table) -> dict[str, Any] | None:
     """The values of a table that stands once and must be there."""
     if table.name not in document.values:
+        if any(f"'{table.name}'" in nearest(name, TABLES) for name in document.values if name not in TABLES):
+            # The misspelt table has been told already.
+            return None
         needs = ", ".join(key.name for key in table.keys if key.required)
         document.at_key((), f"the rig file has no [{table.name}]", f"a table [{table.name}] with {needs}")
         return None

@@ -29,11 +29,8 @@ def read_table(document: Document, path: Path, table: Any, keys: Sequence[Key], 
         document.at_value(path, f"{what} is {say_value(table)}", "a table of keys")
         return None
     known = {key.name: key for key in keys}
-    good = True
-    for name in table:
-        if name not in known:
-            good = False
-            _unknown(document, (*path, name), name, known, what)
+    misspelt = [_unknown(document, (*path, name), name, known, what) for name in table if name not in known]
+    good = not misspelt
     values: dict[str, Any] = {}
     missing = []
     for key in keys:
@@ -46,21 +43,23 @@ def read_table(document: Document, path: Path, table: Any, keys: Sequence[Key], 
             values[key.name] = key.default
     for key in missing:
         good = False
+        if key.name in misspelt:
+            continue
         hint = f"add: {key.name} = {_sample(key)}   # {key.says}"
         document.at_key(path, f"{what} has no {key.name}", expected(key), hint)
     return values if good else None
 
 
-def _unknown(document: Document, path: Path, name: str, known: Mapping[str, Key], what: str) -> None:
-    """The fault of a key that its table does not have."""
-    near = nearest(name, known)
-    if not near:
+def _unknown(document: Document, path: Path, name: str, known: Mapping[str, Key], what: str) -> str:
+    """The fault of a key that its table does not have; returns the key that it is taken for, if any."""
+    hint = nearest(name, known)
+    if not hint:
         # Units are the part that people guess: 'pressure' and 'pressure_bar' both mean pressure_kPa.
         stem = name.split("_")[0].lower()
-        near = nearest(stem, [k for k in known if k.lower().startswith(stem)]) if len(stem) > 2 else ""
-        alike = [k for k in known if k.lower().split("_")[0] == stem]
-        near = f"did you mean '{alike[0]}'?" if alike else near
-    document.at_key(path, f"no key '{name}' in {what}", "" if near else f"one of {say_names(known, 40)}", near)
+        alike = next((key for key in known if key.lower().split("_")[0] == stem), "")
+        hint = f"did you mean '{alike}'?" if alike else ""
+    document.at_key(path, f"no key '{name}' in {what}", "" if hint else f"one of {say_names(known, 40)}", hint)
+    return next((key for key in known if f"'{key}'" in hint), "")
 
 
 def expected(key: Key) -> str:
