@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.score.tempo import TempoMap
+from composer.picture.bars import Bars
 
 Array = NDArray[np.float64]
 
@@ -19,7 +19,7 @@ class Tick:
     strong: bool
 
 
-def bar_ticks(tempo: TempoMap, from_s: float, to_s: float, width: float, label_px: float, count_px: float) -> tuple[Tick, ...]:
+def bar_ticks(tempo: Bars, from_s: float, to_s: float, width: float, label_px: float, count_px: float) -> tuple[Tick, ...]:
     """Ticks of bars, and of counts where there is room, over `width` pixels from `from_s` to `to_s`.
 
     Bars are labelled by 1, 2, 4, 8 ... (bar 1 always among them) so that labels stand `label_px` apart at least; bars between
@@ -51,7 +51,7 @@ def bar_ticks(tempo: TempoMap, from_s: float, to_s: float, width: float, label_p
 
 
 def _count_ticks(
-    tempo: TempoMap, bars: NDArray[np.int64], from_s: float, to_s: float, per_px: float, label_px: float, count_px: float
+    tempo: Bars, bars: NDArray[np.int64], from_s: float, to_s: float, per_px: float, label_px: float, count_px: float
 ) -> list[Tick]:
     ticks = []
     for bar in bars:
@@ -67,7 +67,7 @@ def _count_ticks(
     return ticks
 
 
-def _narrowest(tempo: TempoMap, first: int, last: int, step: int) -> float:
+def _narrowest(tempo: Bars, first: int, last: int, step: int) -> float:
     """The shortest time in s that `step` bars on end take, between two bars; exact for few bars, sampled for very many."""
     starts = np.arange(first - first % step, max(last, first + 1), step)
     if len(starts) > 4096:

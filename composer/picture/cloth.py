@@ -12,8 +12,6 @@ from composer.picture.image import Image, Rows
 from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
 from composer.picture.scene import Scene, Stretch
 
-SMALLEST = (640, 400)
-LARGEST = (7680, 4320)
 LEAST_MARK = 5
 """Pixels, at scale 1, that a mark takes at least, so that a snag of an instant is still seen."""
 
@@ -98,7 +96,7 @@ def _bars(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
 
 def _ticks(plan: Layout, scene: Scene) -> tuple[Tick, ...]:
     look = plan.look
-    return bar_ticks(scene.tempo, scene.from_s, scene.to_s, plan.width, look.px(38), look.px(7))
+    return bar_ticks(scene.tempo, scene.from_s, scene.to_s, plan.width, look.px(34), look.px(7))
 
 
 def _bar_lines_over(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:

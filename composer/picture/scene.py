@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.picture.bands import Band
-from composer.score.tempo import TempoMap
+from composer.picture.bars import Bars
 
 Array = NDArray[np.float64]
 
@@ -62,7 +62,7 @@ class Scene:
     extending: NDArray[np.bool_]
     bands: tuple[Band, ...]
     names: tuple[str, ...]
-    tempo: TempoMap
+    tempo: Bars
     snags: tuple[Stretch, ...] = ()
     pins_s: tuple[float, ...] = ()
     cues: tuple[CueMark, ...] = ()

@@ -1,13 +1,12 @@
 """What a preview tells: as JSON, as a few sentences, as rows of a table."""
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from typing import Any
 
 import numpy as np
 
 from composer.limits.abilities import Abilities
 from composer.motion import segments_at
-from composer.score.tempo import TempoMap
 from composer.simulate.hits import Landings
 from composer.simulate.run import Block
 from composer.tracks import Tracks
@@ -17,16 +16,22 @@ UNSEEN = 0.005
 
 
 def as_json(
-    found: Landings, tracks: Tracks, abilities: Abilities, tempo: TempoMap, names: Sequence[str], head: dict[str, Any]
+    found: Landings,
+    tracks: Tracks,
+    abilities: Abilities,
+    say_place: Callable[[float], str],
+    names: Sequence[str],
+    head: dict[str, Any],
 ) -> dict[str, Any]:
     """The report as JSON has it: `head`, then the largest error, and error and lateness at every hit.
 
+    say_place: bar and count of an instant in s
     error is strain less strain wanted (1), error_of_stroke its share of the fiber's stroke; late_s is null where a fiber
     never did 95 % of its move before the move after the next.
     """
     hits = [
         {
-            "place": tempo.say_place(float(time)),
+            "place": say_place(float(time)),
             "time_s": round(float(time), 9),
             "fiber": names[fiber],
             "line": int(tracks.line[segment]),
@@ -38,11 +43,11 @@ def as_json(
             found.segment, found.fiber, found.time_s, found.error, found.late_s, strict=True
         )
     ]
-    return {**head, "largest": _largest(found, tracks, abilities, tempo, names), "hits": hits}
+    return {**head, "largest": _largest(found, tracks, abilities, say_place, names), "hits": hits}
 
 
 def _largest(
-    found: Landings, tracks: Tracks, abilities: Abilities, tempo: TempoMap, names: Sequence[str]
+    found: Landings, tracks: Tracks, abilities: Abilities, say_place: Callable[[float], str], names: Sequence[str]
 ) -> dict[str, Any] | None:
     if not tracks.fibers:
         return None
@@ -53,17 +58,22 @@ def _largest(
         "error_of_stroke": _tidy(found.largest / abilities.stroke[fiber]),
         "fiber": names[fiber],
         "time_s": round(found.largest_s, 9),
-        "place": tempo.say_place(found.largest_s),
+        "place": say_place(found.largest_s),
         "line": int(tracks.line[segment]),
     }
 
 
 def sentences(
-    found: Landings, tracks: Tracks, abilities: Abilities, tempo: TempoMap, names: Sequence[str], lowest_kPa: float
+    found: Landings,
+    tracks: Tracks,
+    abilities: Abilities,
+    say_place: Callable[[float], str],
+    names: Sequence[str],
+    lowest_kPa: float,
 ) -> list[str]:
     """What a person should know first: the worst on the way, the worst at a hit, the supply."""
     told = []
-    largest = _largest(found, tracks, abilities, tempo, names)
+    largest = _largest(found, tracks, abilities, say_place, names)
     if largest is None or largest["error_of_stroke"] < UNSEEN:
         told.append("Every fiber follows the score all the way.")
     else:
@@ -80,7 +90,7 @@ def sentences(
         how = "does not get there before it is called elsewhere" if np.isnan(late) else f"gets there {late:.2f} s late"
         told.append(
             f"{bad} of {len(share)} landings miss. The worst: {names[found.fiber[worst]]} at bar"
-            f" {_bar_count(tempo.say_place(float(found.time_s[worst])))} is {_share(share[worst])} of its stroke short of its"
+            f" {_bar_count(say_place(float(found.time_s[worst])))} is {_share(share[worst])} of its stroke short of its"
             f" target and {how}."
         )
     elif len(share):

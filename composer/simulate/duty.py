@@ -1,35 +1,14 @@
 """Coil duty as it runs: how much of its allowance each valve has used up, a token bucket seen from its empty side."""
 
-from dataclasses import dataclass
-
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.rig.model import Rig
+from composer.limits.coil import Coils
 
 Array = NDArray[np.float64]
 
 STILL = 1e-9
 """Strain by which a fiber must move in a step for its coil to count as energised."""
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Coils:
-    """By fiber (F,): `duty` share of time, `burst_s` seconds beyond it, `holding` whether holding above rest takes current."""
-
-    duty: Array
-    burst_s: Array
-    holding: NDArray[np.bool_]
-
-
-def coils_of(rig: Rig) -> Coils:
-    """The coils of a rig's valves."""
-    valves = [fiber.mounting.valve for fiber in rig.fibers]
-    return Coils(
-        np.array([valve.duty for valve in valves], dtype=float),
-        np.array([valve.duty_burst_s for valve in valves], dtype=float),
-        np.array([valve.energised_while_holding for valve in valves], dtype=bool),
-    )
 
 
 def beyond_after(coils: Coils, beyond_s: Array, was: Array, strain: Array, dt_s: float) -> Array:

@@ -8,9 +8,10 @@ from numpy.typing import NDArray
 
 from composer.drive.inverse import commands, lead_s
 from composer.limits.abilities import Abilities
+from composer.limits.coil import coils_of
 from composer.motion import Motion, motion_of, on_grid, strain_in
 from composer.rig.model import Rig
-from composer.simulate.duty import beyond_after, coils_of, share_used
+from composer.simulate.duty import beyond_after, share_used
 from composer.simulate.rig import SimulatedRig
 from composer.tracks import SAME_INSTANT_S, Tracks
 
@@ -28,6 +29,7 @@ class Block:
     """B ticks on end: `time_s` (B,), `target` and `strain` (F, B), `pressure_kPa` (F, B) gauge, `supply_kPa` (B,) gauge.
 
     duty: (B,) the greatest share of its coil's allowance that any valve has in use
+    drawn_L: free air drawn by all fibers up to the block's end, in L
     """
 
     time_s: Array
@@ -36,6 +38,7 @@ class Block:
     pressure_kPa: Array
     supply_kPa: Array
     duty: Array
+    drawn_L: float
 
 
 def blocks(
@@ -82,7 +85,9 @@ def blocks(
         shown = ticks >= 0
         if shown.any():
             target = on_grid(motion, time[shown], strain_in)
-            yield Block(time[shown], target, strain[:, shown], pressure[:, shown], supply[shown], duty[shown])
+            yield Block(
+                time[shown], target, strain[:, shown], pressure[:, shown], supply[shown], duty[shown], simulated.drawn_L
+            )
 
 
 def tail_s(abilities: Abilities) -> float:

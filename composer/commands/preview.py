@@ -1,0 +1,187 @@
+"""`drawcord preview`: how the fibers would really move, as a picture, a table, a report or a window."""
+
+import json
+import os
+import sys
+from collections.abc import Callable
+from contextlib import ExitStack
+from typing import Any
+
+import click
+
+SIZE = "1920x1080"
+
+
+@click.command()
+@click.argument("score", metavar="SCORE|PLAY")
+@click.option("--png", metavar="FILE", help="Write the picture to FILE.")
+@click.option("--csv", metavar="FILE", help="Write target, strain and pressure of every fiber at every tick to FILE.")
+@click.option("--json", "as_json", is_flag=True, help="Print the report as JSON on stdout, and nothing else.")
+@click.option("--rate", "rate_Hz", type=float, default=200.0, show_default=True, metavar="HZ", help="Ticks a second.")
+@click.option("--size", default=SIZE, show_default=True, metavar="WxH", help="Size of the picture in pixels.")
+@click.option("--rig", metavar="RIG", help="The rig file, where it is not where SCORE or PLAY says.")
+@click.option("--no-inverse", is_flag=True, help="Send without the lead that makes fibers land on the count.")
+def command(
+    score: str, png: str | None, csv: str | None, as_json: bool, rate_Hz: float, size: str, rig: str | None, no_inverse: bool
+) -> int:
+    """Simulate how the fibers would really move.
+
+    A score is taken as it is, snags and all, so that you see what they would do. Without --png, --csv or --json a window opens.
+    """
+    if not 20.0 <= rate_Hz <= 2000.0:
+        raise click.BadParameter(f"{rate_Hz:g} is out of range; 20 to 2000 Hz can be simulated.", param_hint="--rate")
+    width, height = _size(size)
+    window = not (png or csv or as_json)
+    if window and not _has_screen():
+        raise click.UsageError(
+            "there is no screen here for a window; --png FILE writes the picture, --csv FILE the table,"
+            " --json prints the report."
+        )
+    # Here, so that a wrong call is answered at once.
+    from composer.files import check_writable, replacing
+    from composer.picture import material
+    from composer.report import preview
+
+    _outputs_apart({"--png": png, "--csv": csv}, [score, rig])
+    for path in (png, csv):
+        if path:
+            check_writable(path)
+    piece = _piece(score, rig)
+    _outputs_apart({"--png": png, "--csv": csv}, [score, piece.rig.file])
+    columns = 16384 if window else 2
+    if png:
+        from composer.picture.cloth import layout
+
+        columns = layout(width, height).width
+    with ExitStack() as open_files:
+        each: Callable[[Any], None] = lambda block: None  # noqa: E731
+        if csv:
+            table = open_files.enter_context(replacing(csv))
+            table.write(preview.csv_header(piece.names) + "\n")
+
+            def each(block: Any) -> None:
+                table.writelines(row + "\n" for row in preview.csv_rows(block, piece.tracks.duration_s))
+
+        with click.progressbar(
+            length=1000, label="simulating", file=sys.stderr, hidden=not sys.stderr.isatty(), show_pos=False
+        ) as bar:
+            seen = material.run(
+                piece, columns, rate_Hz, not no_inverse, each, lambda share: bar.update(int(1000 * share) - bar.pos)
+            )
+        if png:
+            _write_png(png, piece, seen, width, height)
+    if window:
+        from composer.picture.viewer import show
+
+        return show(material.scene_of(piece, seen))
+    if as_json:
+        head = {
+            "score": score,
+            "rig": piece.rig.file,
+            "rate_Hz": rate_Hz,
+            "inverse": not no_inverse,
+            "duration_s": round(piece.tracks.duration_s, 9),
+            "fibers": piece.tracks.fibers,
+            "air": {"lowest_kPa": round(seen.lowest_kPa, 3), "used_L": round(seen.used_L, 6)},
+        }
+        report = preview.as_json(seen.landings, piece.tracks, piece.abilities, piece.tempo.say_place, piece.names, head)
+        click.echo(json.dumps(report, ensure_ascii=False, allow_nan=False))
+        return 0
+    for line in preview.sentences(
+        seen.landings, piece.tracks, piece.abilities, piece.tempo.say_place, piece.names, seen.lowest_kPa
+    ):
+        click.echo(line)
+    for path in (png, csv):
+        if path:
+            click.echo(f"written: {path}")
+    return 0
+
+
+def _piece(path: str, rig_path: str | None) -> Any:
+    """What is to be previewed: a play file by its ending or its first bytes, else a score."""
+    from composer.load import load_rig, load_score
+    from composer.picture.material import Piece
+    from composer.picture.scene import CueMark
+
+    rig = load_rig(rig_path) if rig_path else None
+    if _is_play(path):
+        from composer.report.played import piece_of_play
+
+        return piece_of_play(path, rig)
+    loaded = load_score(path, rig)
+    return Piece(
+        title=loaded.score.title or os.path.basename(path),
+        rig=loaded.rig,
+        abilities=loaded.abilities,
+        tracks=loaded.tracks,
+        tempo=loaded.tempo,
+        pins_s=tuple(loaded.pins_s.tolist()),
+        cues=tuple(CueMark(cue.name, cue.seconds, cue.wait) for cue in loaded.cues),
+    )
+
+
+def _is_play(path: str) -> bool:
+    if path.lower().endswith(".play"):
+        return True
+    try:
+        with open(path, "rb") as file:
+            return os.path.isfile(path) and file.read(4) == b"PK\x03\x04"
+    except (OSError, ValueError):
+        return False
+
+
+def _write_png(path: str, piece: Any, seen: Any, width: int, height: int) -> None:
+    from composer.files import replacing
+    from composer.picture import cloth, png
+    from composer.picture.material import scene_of
+
+    if not png.has_letters():
+        click.echo("this machine has no fonts, so the picture comes out without words; install one, such as DejaVu", err=True)
+    scene = scene_of(piece, seen)
+    picture = png.drawn(lambda painter: cloth.paint(painter, scene, width, height), width, height)
+    with replacing(path, "wb") as file:
+        file.write(png.png_bytes(picture))
+
+
+def _size(text: str) -> tuple[int, int]:
+    """Width and height in pixels of "1920x1080"."""
+    from composer.picture.size import LARGEST, SMALLEST
+
+    wide, cross, high = text.lower().partition("x")
+    if not (cross and wide.isascii() and high.isascii() and wide.isdigit() and high.isdigit() and len(text) < 16):
+        raise click.BadParameter(f"'{text}' is no size; write width x height in pixels, such as {SIZE}.", param_hint="--size")
+    width, height = int(wide), int(high)
+    if not (SMALLEST[0] <= width <= LARGEST[0] and SMALLEST[1] <= height <= LARGEST[1]):
+        raise click.BadParameter(
+            f"{width}x{height} is out of range; {SMALLEST[0]}x{SMALLEST[1]} to {LARGEST[0]}x{LARGEST[1]} can be drawn.",
+            param_hint="--size",
+        )
+    return width, height
+
+
+def _outputs_apart(outputs: dict[str, str | None], inputs: list[str | None]) -> None:
+    """Raise Faults where an output would be written over an input or over another output."""
+    from composer.faults import fault
+
+    taken = {os.path.realpath(path): "what is previewed" for path in inputs if path}
+    for option, path in outputs.items():
+        if path is None:
+            continue
+        there = taken.setdefault(os.path.realpath(path), option)
+        if there != option:
+            raise fault(path, f"{option} would write over {there}", "a file of its own", "nothing was written")
+
+
+def _has_screen() -> bool:
+    """Whether a window can be shown: asked in a process of its own, as Qt ends one whose screen cannot be reached."""
+    import subprocess
+
+    if sys.platform.startswith("linux") and not (os.environ.get("DISPLAY") or os.environ.get("WAYLAND_DISPLAY")):
+        return False
+    if os.environ.get("QT_QPA_PLATFORM", "").split(":")[0] in ("offscreen", "minimal", "vnc"):
+        return False
+    ask = "import sys; from PySide6.QtGui import QGuiApplication; QGuiApplication(sys.argv)"
+    try:
+        return subprocess.run([sys.executable, "-c", ask], capture_output=True, timeout=20, check=False).returncode == 0
+    except (OSError, subprocess.TimeoutExpired):
+        return False
