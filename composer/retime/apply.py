@@ -34,15 +34,3 @@ def retimed(tracks: Tracks, origin: Index, time_s: Array, duration_s: float) -> 
         phrase_line=tracks.phrase_line[keep],
         duration_s=duration_s,
     )
-
-
-def warped(was_s: Array, now_s: Array, time_s: float, rhythm: bool) -> float:
-    """Where an instant of the score as written lies now: between hits in proportion, after the last as the last one moved.
-
-    Under `clock` what comes after the last hit stays, unless the hit now comes later still.
-    """
-    if time_s <= was_s[-1]:
-        return float(np.interp(time_s, was_s, now_s))
-    if rhythm:
-        return float(time_s + now_s[-1] - was_s[-1])
-    return float(max(time_s, now_s[-1]))

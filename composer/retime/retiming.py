@@ -77,7 +77,7 @@ class Retiming:
 
     tracks: the new tracks; those as written where pins are too close
     bound: proven: no retiming costs less
-    warp_was_s, warp_now_s: the hits' instants as written and retimed, both from 0 on, (H + 1,)
+    warp_was_s, warp_now_s: 0, the hits and the score's end as written and as retimed, (W,) each, rising
     """
 
     keep: str
@@ -228,6 +228,12 @@ def _told(
         bound=found.least.bound if found is not None else float("nan"),
         solve_s=solve_s,
         was_s=tracks.duration_s,
-        warp_was_s=was,
-        warp_now_s=now,
+        **_warp(was, now, tracks.duration_s, new.duration_s),
     )
+
+
+def _warp(was: Array, now: Array, was_end_s: float, now_end_s: float) -> dict[str, Array]:
+    """The warp with the score's end, where that comes after the last hit as written."""
+    if was_end_s > was[-1] and now_end_s >= now[-1]:
+        was, now = np.append(was, was_end_s), np.append(now, now_end_s)
+    return {"warp_was_s": was, "warp_now_s": now}
