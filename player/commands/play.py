@@ -42,10 +42,14 @@ def command(
     A score that the rig cannot do is refused unless --retime mends it first. Ctrl-C brings all fibers to rest at their safe
     rate and disarms; a second one vents. The software is no safety device.
     """
+    from player.commands.mending import NotMended
     from player.commands.played import load_played
-    from player.commands.refusal import refused
+    from player.commands.refusal import not_mended, refused
 
-    played = load_played(score, rig, mend)
+    try:
+        played = load_played(score, rig, mend)
+    except NotMended as why:
+        return not_mended(score, str(why), as_json)
     hertz = _rate(rate, played.recording.rate_Hz if played.recording else 200.0)
     start_s = played.seconds_of(start) if start is not None else 0.0
     if played.tracks is not None and (code := refused(played, as_json)) is not None:

@@ -8,7 +8,7 @@ from fractions import Fraction
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.faults import fault, nearest
+from composer.faults import Faults, fault, nearest
 from composer.files import read_bytes
 from composer.limits.abilities import Abilities, abilities_of
 from composer.rig.model import Rig
@@ -140,28 +140,56 @@ def _score(path: str, rig_path: str | None, mend: bool) -> Played:
     loaded = load_score(path, None if rig_path is None else load_rig(rig_path))
     tracks, warp = loaded.tracks, UNWARPED
     if mend:
-        tracks, warp = mended(loaded)
+        from player.commands.mending import mended
+
+        tracks, was_s, now_s = mended(loaded)
+        warp = Warp(was_s, now_s)
     cues = tuple(Cue(cue.name, warp.now(cue.seconds), cue.wait) for cue in loaded.cues)
     title = loaded.score.title or os.path.basename(path)
     return Played(path, "score", title, loaded.rig, loaded.abilities, tracks, loaded.tempo, warp, cues)
 
 
+def _play_file(path: str, rig_path: str | None) -> Played:
+    from composer.play_file import read_play
+
+    play = read_play(path)
+    rig = _rig(path, rig_path or play.rig_path)
+    if rig.fingerprint != play.fingerprint:
+        raise _another_rig(path, "retimed", play.fingerprint, rig)
+    if play.fibers != tuple(fiber.name for fiber in rig.fibers):
+        raise fault(path, f"its fibers are not those of {rig.file}", hint="retime the score again for this rig")
+    cues = tuple(Cue(cue.name, cue.seconds, cue.wait) for cue in play.cues)
+    warp = Warp(play.warp_was_s, play.warp_now_s) if len(play.warp_was_s) else UNWARPED
+    title = play.title or os.path.basename(path)
+    return Played(path, "play file", title, rig, abilities_of(rig), play.tracks, play.tempo, warp, cues)
+
+
 def _recording(path: str, rig_path: str | None) -> Played:
-    from composer.load import load_rig
     from player.outputs.recording import read
 
     found = read(read_bytes(path, LARGEST_BYTES), path)
-    named = rig_path or (os.path.join(os.path.dirname(path), found.rig_path) if found.rig_path else None)
-    if named is None or (rig_path is None and not os.path.exists(named)):
-        raise fault(path, f"its rig file {named or ''} is not there", hint="say where the rig file is with --rig RIG")
-    rig = load_rig(named)
+    rig = _rig(path, rig_path or (os.path.join(os.path.dirname(path), found.rig_path) if found.rig_path else ""))
     if rig.fingerprint != found.fingerprint:
-        raise fault(
-            path,
-            f"this was recorded for a rig with the fingerprint {found.fingerprint:08x}; {named} has {rig.fingerprint:08x}",
-            hint="play it with the rig file that it was recorded with (--rig RIG), or record it again",
-        )
+        raise _another_rig(path, "recorded", found.fingerprint, rig)
+    channels = {driver.name: driver.channels for driver in rig.drivers}
+    if any(channels.get(name) != count for name, count in found.drivers):
+        raise fault(path, f"its drivers are not those of {rig.file}", hint="record it again with this rig")
     return Played(path, "recording", os.path.basename(path), rig, abilities_of(rig), recording=found)
+
+
+def _rig(path: str, rig_path: str) -> Rig:
+    """The rig that a file made for playing names, or that stands in for it."""
+    from composer.load import load_rig
+
+    if not os.path.isfile(rig_path):
+        raise fault(path, f"its rig file {rig_path} is not there", hint="say where the rig file is with --rig RIG")
+    return load_rig(rig_path)
+
+
+def _another_rig(path: str, how: str, fingerprint: int, rig: Rig) -> Faults:
+    found = f"this was {how} for a rig with the fingerprint {fingerprint:08x}; {rig.file} has {rig.fingerprint:08x}"
+    hint = f"play it with the rig file that it was {how} for (--rig RIG), or make it again for this one"
+    return fault(path, found, hint=hint)
 
 
 def _playback(recording: Recording, rig: Rig, abilities: Abilities) -> Source:

@@ -9,8 +9,10 @@ from composer.tracks import Tracks
 EASE_S = 0.25
 """Seconds from full pace to a stand, and back; no time at all where nothing moves."""
 
+PATIENCE_S = 1.0
+"""Fibers at their acceleration limit may hold up a change of pace for so long; then it comes, at SLOWEST / EASE_S or faster."""
+
 SLOWEST = 0.25
-"""However near its acceleration limit a fiber is, the pace changes at least at this share of 1 / EASE_S."""
 
 STILL = 1e-9
 """Strain rates below this, in 1/s, are no movement."""
@@ -27,6 +29,7 @@ class Pace:
         self.wanted = 0.0
         self._tracks, self._abilities = tracks, abilities
         self._braced = np.isfinite(abilities.accel)
+        self._eased_s = 0.0
         self._stop_s: float | None = None
         self._stop_moves = False
 
@@ -42,7 +45,11 @@ class Pace:
     def step(self, at_s: float, dt_s: float, stop_s: float | None) -> float:
         """Seconds of the score that pass in a tick from `at_s`; where something moves at `stop_s`, eased to stand there."""
         was = self.speed
-        now = self.wanted if was == self.wanted or not self._moves(at_s) else self._eased(at_s, dt_s)
+        if was == self.wanted or not self._moves(at_s):
+            now, self._eased_s = self.wanted, 0.0
+        else:
+            now = self._eased(at_s, dt_s)
+            self._eased_s += dt_s
         if stop_s is not None and stop_s - at_s < EASE_S / 2.0 and self._moves_at_stop(stop_s):
             now = min(now, np.sqrt(2.0 * max(stop_s - at_s, 0.0) / EASE_S))
         self.speed = now
@@ -67,7 +74,7 @@ class Pace:
         bent = self.speed**2 * (later - rate) / JUST_BEFORE_S
         bounds = np.sort(np.stack([(-most - bent) / rate, (most - bent) / rate]), axis=0)
         change = min(max(usual, float(bounds[0].max())), float(bounds[1].min()))
-        least = SLOWEST * usual
+        least = SLOWEST * usual if self._eased_s >= PATIENCE_S else 0.0
         return max(change, least) if usual > 0.0 else min(change, least)
 
     def _moves(self, at_s: float) -> bool:
