@@ -47,7 +47,10 @@ class Range:
 
     def holds(self, value: Fraction) -> bool:
         """Whether a value lies within."""
-        return (self.low < value if self.above else self.low <= value) and value <= self.high
+        over, under = value.numerator, value.denominator  # in whole numbers: this is asked of every number of a score
+        low, high = self.low.numerator * under, self.high.numerator * under
+        over_low, over_high = over * self.low.denominator, over * self.high.denominator
+        return (low < over_low if self.above else low <= over_low) and over_high <= high
 
     @property
     def told(self) -> str:

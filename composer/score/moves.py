@@ -20,9 +20,6 @@ def line_of(tree: Tree, row: Row, body: str) -> Line:
     over = row.duration(manner["over"].children[1], "over") if "over" in manner else None
     if over and name == "step":
         row.fault(over.span, "a step takes no time, so 'over' means nothing here", "'step' alone, or another shape with 'over'")
-    for control in controls:
-        if control.unit == "hold":
-            row.fault(control.span, "a curve's control value cannot be 'hold'", "a target such as 0.6, 12%, rest or full")
     return Line(
         offset=row.duration(offset, "offset"),
         target=row.target(target),

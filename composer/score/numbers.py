@@ -48,22 +48,24 @@ def written(text: str) -> Written:
     match = _WRITTEN.fullmatch(text)
     if match is None:
         raise Unreadable(f"'{text}' is not a number")
-    if any(len(digits) > most("digits") for digits in re.findall("[0-9]+", text)):
+    if len(text) > most("digits") and any(len(digits) > most("digits") for digits in re.findall("[0-9]+", text)):
         raise Unreadable(f"a number has more than {most('digits')} digits in a row")
     sign = -1 if match["sign"] else 1
     whole = int(match["whole"])
     unit = match["unit"] or ""
     if match["decimals"] is not None:
         places = len(match["decimals"])
-        return Written(sign * (whole + Fraction(int(match["decimals"]), 10**places)), "decimal", places, unit)
+        value = Fraction(sign * int(match["whole"] + match["decimals"]), 10**places)
+        return Written(value, "decimal", places, unit)
     below = match["under"] or match["below"]
     if below is None:
         return Written(Fraction(sign * whole), "whole", 0, unit)
     if int(below) == 0:
         raise Unreadable(f"'{text}' divides by 0")
     if match["top"] is not None:
-        return Written(sign * (whole + Fraction(int(match["top"]), int(below))), "mixed", int(below), unit)
-    return Written(sign * Fraction(whole, int(below)), "fraction", int(below), unit)
+        value = Fraction(sign * (whole * int(below) + int(match["top"])), int(below))
+        return Written(value, "mixed", int(below), unit)
+    return Written(Fraction(sign * whole, int(below)), "fraction", int(below), unit)
 
 
 def write_like(original: str, value: Fraction) -> str:

@@ -52,7 +52,7 @@ class Row:
         value = self.number_of(token, what)
         suffix = str(token).lstrip("-+/.0123456789")
         unit, scale = UNITS[suffix]
-        return Duration(value / scale, unit, self.span(token))
+        return Duration(value if scale == 1 else value / scale, unit, self.span(token))
 
     def place(self, token: Token) -> Place:
         """A token as a place; whether its count is within its bar's meter is for the whole score to say."""
