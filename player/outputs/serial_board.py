@@ -25,6 +25,7 @@ GAP_S = 0.0015
 """The simulated rig is moved in steps of STEP_S, in gaps between sets of at least GAP_S; but at least every LONGEST_STEP_S."""
 LONGEST_STEP_S = 0.02
 PRIORITY = 10
+JUMP_S = 0.1
 BACKLOG_BYTES = 65536
 """What nobody reads is dropped beyond this, as a UART would."""
 
@@ -163,7 +164,7 @@ class SerialBoard:
             self._device = self._make()
             self._armed_s = None
         elif what == "jump":
-            self._begin_s -= 1.0
+            self._begin_s -= JUMP_S
         elif what == "tell":
             self._after(self._device.fail(*self._mishap.tells, self._us()))
         else:

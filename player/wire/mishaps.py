@@ -101,10 +101,12 @@ MISHAPS: dict[str, Mishap] = {
     ),
     "slow-clock": Mishap("its clock is 1 % slow", rate=0.99),
     "fast-clock": Mishap("its clock is 1 % fast", rate=1.01),
-    "jumping-clock": Mishap("3 s after arming its clock jumps ahead by 1 s", strike="jump"),
+    "jumping-clock": Mishap("3 s after arming its clock jumps ahead by 0.1 s", strike="jump"),
     "stuck-valve": Mishap("3 s after arming the valve of channel 0 no longer moves", strike="bench", bench=_sticks),
     "railed": Mishap("3 s after arming the sensor of channel 0 reads full stroke", strike="bench", bench=_rails),
-    "leak": Mishap("3 s after arming the fiber of channel 0 loses half of its strain each second", strike="bench", bench=_leaks),
+    "leak": Mishap(
+        "3 s after arming the fiber of channel 0 loses half of its strain each second", strike="bench", bench=_leaks
+    ),
     "low-supply": Mishap("3 s after arming the supply reads below the rig's least", strike="bench", bench=_runs_low),
 }
 """Name of each: what it does. `drawcord device RIG --fault NAME`."""
