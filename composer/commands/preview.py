@@ -38,6 +38,7 @@ def command(
             " --json prints the report."
         )
     # Here, so that a wrong call is answered at once.
+    from composer.commands.piece import load_piece
     from composer.files import check_writable, replacing
     from composer.picture import material
     from composer.report import preview
@@ -46,7 +47,7 @@ def command(
     for path in (png, csv):
         if path:
             check_writable(path)
-    piece = _piece(score, rig)
+    piece = load_piece(score, rig)
     _outputs_apart({"--png": png, "--csv": csv}, [score, piece.rig.file])
     columns = 16384 if window else 2
     if png:
@@ -95,39 +96,6 @@ def command(
         if path:
             click.echo(f"written: {path}")
     return 0
-
-
-def _piece(path: str, rig_path: str | None) -> Any:
-    """What is to be previewed: a play file by its ending or its first bytes, else a score."""
-    from composer.load import load_rig, load_score
-    from composer.picture.material import Piece
-    from composer.picture.scene import CueMark
-
-    rig = load_rig(rig_path) if rig_path else None
-    if _is_play(path):
-        from composer.report.played import piece_of_play
-
-        return piece_of_play(path, rig)
-    loaded = load_score(path, rig)
-    return Piece(
-        title=loaded.score.title or os.path.basename(path),
-        rig=loaded.rig,
-        abilities=loaded.abilities,
-        tracks=loaded.tracks,
-        tempo=loaded.tempo,
-        pins_s=tuple(loaded.pins_s.tolist()),
-        cues=tuple(CueMark(cue.name, cue.seconds, cue.wait) for cue in loaded.cues),
-    )
-
-
-def _is_play(path: str) -> bool:
-    if path.lower().endswith(".play"):
-        return True
-    try:
-        with open(path, "rb") as file:
-            return os.path.isfile(path) and file.read(4) == b"PK\x03\x04"
-    except (OSError, ValueError):
-        return False
 
 
 def _write_png(path: str, piece: Any, seen: Any, width: int, height: int) -> None:

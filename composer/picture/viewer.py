@@ -8,12 +8,15 @@ from PySide6.QtWidgets import QApplication, QWidget
 
 from composer.picture import cloth, palette
 from composer.picture.axes import say_seconds
-from composer.picture.look import LEFT, pen
+from composer.picture.look import LEFT, colour, pen
 from composer.picture.material import part
 from composer.picture.scene import Scene
 
 NARROWEST_S = 0.5
 FRAME_MS = 33
+FOOT = 18
+"""Pixels, at scale 1, below the picture for the line that says where the head is and what the keys do."""
+
 KEYS = "Space plays and pauses   ← → scroll   + − zoom   0 shows all   Home to the start   Esc closes"
 
 
@@ -105,7 +108,8 @@ class Viewer(QWidget):
             self._picture = QImage(width, height, QImage.Format.Format_RGB32)
             inner = QPainter(self._picture)
             shown = part(self._whole, self._from_s, self._to_s, plan.width)
-            cloth.paint(inner, shown, width, height)
+            inner.fillRect(0, 0, width, height, colour(palette.GROUND))
+            cloth.paint(inner, shown, width, height - plan.look.px(FOOT))
             inner.end()
         painter = QPainter(self)
         painter.drawImage(QRectF(0, 0, self.width(), self.height()), self._picture)
@@ -118,10 +122,10 @@ class Viewer(QWidget):
         if self._from_s <= self._head_s <= self._to_s:
             x = plan.left + (self._head_s - self._from_s) / (self._to_s - self._from_s) * plan.width
             painter.setPen(pen(palette.INK, look.px(2)))
-            painter.drawLine(QPointF(x, plan.strip_top), QPointF(x, height - look.px(64)))
+            painter.drawLine(QPointF(x, plan.strip_top), QPointF(x, height - look.px(FOOT + 64)))
         bar = self._whole.tempo.say_place(self._head_s)
         word = f"{'playing' if self.playing else 'paused'} at {bar}, {say_seconds(self._head_s, 1)}    {KEYS}"
-        box = QRectF(look.px(16), height - look.px(15), self.width() * self.devicePixelRatioF() - look.px(32), look.px(13))
+        box = QRectF(look.px(16), height - look.px(FOOT), self.width() * self.devicePixelRatioF() - look.px(32), look.px(13))
         look.write(painter, box, word, 10.5, palette.QUIET_INK, LEFT)
 
     def _time_at(self, x: float) -> float:
