@@ -113,9 +113,18 @@ class _Names:
                     self.fault(
                         target.span,
                         f"{self.rig.fibers[index].name}, a fiber of kind {kind}, has no target in {target.unit}",
-                        "a share of its stroke such as 0.6" + "".join(f" or {unit}" for unit in sorted(KINDS[kind].units)),
+                        _allowed(sorted(KINDS[kind].units)),
                         f"it plays '{phrase.name}' in line {entry.span.line}",
                     )
+
+
+def _allowed(units: list[str]) -> str:
+    *most_of_them, last = units
+    return (
+        "a share of its stroke such as 0.6, or an amount in "
+        + (", ".join(most_of_them) + " or " if most_of_them else "")
+        + last
+    )
 
 
 def _amounts(phrase: Phrase) -> list[Target]:

@@ -33,9 +33,7 @@ def main() -> None:
     text = score(200)
     cold = seconds(text)
     warm = seconds(text, cold=False)
-    print(
-        f"grammar built: {built * 1e3:.0f} ms; 200 lines cold: {cold * 1e3:.1f} ms; after a keystroke: {warm / cold:.2f} of that"
-    )
+    print(f"grammar: {built * 1e3:.0f} ms; 200 lines cold: {cold * 1e3:.1f} ms, a keystroke later: {warm / cold:.2f} × that")
     one = cold / 200
     for lines in (2000, 20000):
         print(f"{lines} lines: cost a line {seconds(score(lines)) / lines / one:.2f} of that at 200")

@@ -78,3 +78,10 @@ def test_moves_are_bounded_over_all_fibers(said):
     text = PHRASE + "section s at 1:1 times 5000 every 8\n  all p times {} every 8\n"
     assert said(text.format(100)) == []
     assert said(text.format(101))[0].startswith("6:3 with this entry the score has more than 4000000 moves")
+
+
+def test_a_unit_that_the_kind_lacks_is_told_with_those_that_it_has(make_rig):
+    rig = make_rig(2)
+    score = read_score("phrase p\n  2 90deg\nsection s at 1:1\n  all p\n", "s.score")
+    (only,) = check_names(score, rig, Selector(rig, groups_of(score)))
+    assert only.expected == "a share of its stroke such as 0.6, or an amount in % or mm"
