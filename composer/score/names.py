@@ -119,12 +119,10 @@ class _Names:
 
 
 def _allowed(units: list[str]) -> str:
-    *most_of_them, last = units
-    return (
-        "a share of its stroke such as 0.6, or an amount in "
-        + (", ".join(most_of_them) + " or " if most_of_them else "")
-        + last
-    )
+    plain = "a share of its stroke such as 0.6"
+    if not units:
+        return plain
+    return f"{plain}, or an amount in {' or '.join([', '.join(units[:-1]), units[-1]] if units[:-1] else units)}"
 
 
 def _amounts(phrase: Phrase) -> list[Target]:
