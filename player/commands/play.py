@@ -15,7 +15,7 @@ SLOWEST_HZ, FASTEST_HZ = 20.0, 1000.0
 
 @click.command("play")
 @click.argument("score", metavar="SCORE|PLAY|RECORDING", type=click.Path(path_type=str))
-@click.option("--to", "targets", metavar="TARGET", multiple=True, required=True, help="sim, serial:PORT[@BAUD] or file:PATH.")
+@click.option("--to", "targets", metavar="TARGET", multiple=True, help="sim, serial:PORT[@BAUD] or file:PATH.")
 @click.option("--from", "start", metavar="CUE|PLACE", help="Start at a cue, or a place such as 5:1 or 12.4s.")
 @click.option("--rate", metavar="HZ", type=float, help="Sets a second; 200 unless given, a recording's own for a recording.")
 @click.option("--retime", "mend", is_flag=True, help="Mend the score first, where the rig cannot do it as written.")
@@ -37,7 +37,7 @@ def command(
     """Play a score in real time.
 
     TARGET is where it goes; a rig with several drivers wants one for each, with its name in front: left=serial:/dev/ttyACM0.
-    sim and file:PATH without a name take all drivers that are left, need no arming, and may stand beside a serial line.
+    sim and file:PATH without a name take all drivers that are left, and need no arming.
 
     A score that the rig cannot do is refused unless --retime mends it first. Ctrl-C brings all fibers to rest at their safe
     rate and disarms; a second one vents. The software is no safety device.
@@ -46,10 +46,14 @@ def command(
     from player.commands.played import load_played
     from player.commands.refusal import not_mended, refused
 
+    if not targets:
+        raise click.UsageError("where to? Add --to sim, --to serial:PORT[@BAUD] or --to file:PATH")
+    _check_written(targets, log, score, rig)
     try:
         played = load_played(score, rig, mend)
     except NotMended as why:
         return not_mended(score, str(why), as_json)
+    _refuse_clashes([played.rig.file, *played.used], targets, log)
     hertz = _rate(rate, played.recording.rate_Hz if played.recording else 200.0)
     start_s = played.seconds_of(start) if start is not None else 0.0
     if played.tracks is not None and (code := refused(played, as_json)) is not None:
@@ -69,8 +73,7 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
     clock = SteadyClock()
     outputs = make_outputs(targets, Context(played.rig, played.abilities, clock, hertz))
     with ExitStack() as stack:
-        run_log = _open_log(log, stack, played, targets, hertz, clock.now()) if log is not None else None
-        engine = Engine(played.rig, played.source(), outputs, clock, hertz, run_log)
+        engine = Engine(played.rig, played.source(), outputs, clock, hertz)
         stack.callback(engine.close)
         interrupt = stack.enter_context(_signals(engine.ask))
         for output in outputs:
@@ -79,6 +82,8 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
         if any(output.must_arm for output in outputs) and not arm and not _asked_to_arm(engine):
             click.echo("not armed; nothing has moved", err=True)
             return 2
+        run_log = _open_log(log, stack, played, targets, hertz, clock.now()) if log is not None else None
+        engine.keep_log(run_log)
         interrupt.become_stops()
         try:
             engine.arm()
@@ -95,6 +100,29 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
             run_log.tell("end", clock.now(), **told)
     click.echo(json.dumps(told) if as_json else "\n".join(sentences(told)))
     return told["exit"]
+
+
+def _check_written(targets: tuple[str, ...], log: str | None, *read: str | None) -> None:
+    """Raise Faults, before any work, where a file cannot be written, or stands for something that is read or written too."""
+    from composer.files import check_writable
+    from player.outputs.targets import files_of
+
+    _refuse_clashes([path for path in read if path], targets, log)
+    for path in files_of(targets) + ([log] if log else []):
+        check_writable(path)
+
+
+def _refuse_clashes(read: list[str], targets: tuple[str, ...], log: str | None) -> None:
+    """Raise Faults where a file to be written is one that is read, or is written twice."""
+    from composer.faults import fault
+    from player.outputs.targets import files_of
+
+    taken = {os.path.realpath(path): f"is read: {path}" for path in read}
+    for path in files_of(targets) + ([log] if log else []):
+        real = os.path.realpath(path)
+        if real in taken:
+            raise fault(path, f"cannot be written, as it {taken[real]}", hint="name another file")
+        taken[real] = "is written already"
 
 
 def _rate(asked: float | None, usual: float) -> float:

@@ -54,7 +54,10 @@ def _between(at: float, from_s: Array, to_s: Array) -> float:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Played:
-    """Something to play: `tracks` with `tempo`, `warp` and `cues` (instants as played), or a `recording`."""
+    """Something to play: `tracks` with `tempo`, `warp` and `cues` (instants as played), or a `recording`.
+
+    used: further files that it was read from
+    """
 
     path: str
     kind: str
@@ -66,6 +69,7 @@ class Played:
     warp: Warp = UNWARPED
     cues: tuple[Cue, ...] = ()
     recording: Recording | None = None
+    used: tuple[str, ...] = ()
 
     @property
     def names(self) -> tuple[str, ...]:
@@ -146,7 +150,9 @@ def _score(path: str, rig_path: str | None, mend: bool) -> Played:
         warp = Warp(was_s, now_s)
     cues = tuple(Cue(cue.name, warp.now(cue.seconds), cue.wait) for cue in loaded.cues)
     title = loaded.score.title or os.path.basename(path)
-    return Played(path, "score", title, loaded.rig, loaded.abilities, tracks, loaded.tempo, warp, cues)
+    return Played(
+        path, "score", title, loaded.rig, loaded.abilities, tracks, loaded.tempo, warp, cues, used=tuple(loaded.score.lines)
+    )
 
 
 def _play_file(path: str, rig_path: str | None) -> Played:
@@ -201,7 +207,7 @@ def _playback(recording: Recording, rig: Rig, abilities: Abilities) -> Source:
     valve = is_valve([fiber.mounting.valve.drive for fiber in rig.fibers])
     numbers = np.where(valve, 32768, 0).astype(np.uint16)[None].repeat(len(recording.time_s), axis=0)
     numbers[:, place >= 0] = recording.values[:, place[place >= 0]]
-    return Playback(rig, abilities, recording.time_s, from_wire(numbers, valve))
+    return Playback(rig, abilities, recording.time_s, from_wire(numbers, valve), at_rest=recording.ended == "rest")
 
 
 def _place(text: str, where: str) -> Place | None:

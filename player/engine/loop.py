@@ -58,7 +58,6 @@ class Engine:
         outputs: Sequence[Output],
         clock: Clock,
         rate_Hz: float = 200.0,
-        log: RunLog | None = None,
         ahead_s: float = AHEAD_S,
     ):
         self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
@@ -66,7 +65,8 @@ class Engine:
         self.lateness = Lateness()
         self.boards = Boards(outputs)
         self.errors = Errors(len(rig.fibers))
-        self._rig, self._clock, self._log = rig, clock, log
+        self._clock = clock
+        self._log: RunLog | None = None
         self._dt = 1.0 / rate_Hz
         self._asked: deque[Command] = deque(maxlen=1000)
         self._account = Account()
@@ -77,6 +77,10 @@ class Engine:
     def ask(self, kind: str, value: float = 0.0) -> None:
         """Hand the engine something the operator wants; it is done at the next tick, or within a few milliseconds."""
         self._asked.append(Command(kind, value))
+
+    def keep_log(self, log: RunLog | None) -> None:
+        """From here on all that happens goes into this log."""
+        self._log = log
 
     def preflight(self) -> tuple[Mark, ...]:
         """Every board asked what must be true before arming; with all marks good the engine may be armed."""

@@ -29,7 +29,8 @@ class Playback:
     next_cue: Cue | None = None
     let_down = 0
 
-    def __init__(self, rig: Rig, abilities: Abilities, time_s: Array, commands: Array):
+    def __init__(self, rig: Rig, abilities: Abilities, time_s: Array, commands: Array, at_rest: bool = False):
+        """`at_rest`: the boards were told to rest after the last set, so all fibers were there already."""
         self.position_s = 0.0
         self.duration_s = float(time_s[-1])
         self.phase = "at rest"
@@ -44,26 +45,29 @@ class Playback:
         self._from = self.command
         self._gone_s = 0.0
         self._next_s = 0.0
-        self._goes = False
+        self._ends_at_rest = at_rest
+        self._over = False
 
     def start(self, from_s: float = 0.0) -> None:
         """Begin with the first set; a recording has no other place to begin from, as it does not say what came before."""
-        self.phase, self._goes = "playing", True
+        self.phase = "playing"
 
     def pause(self) -> None:
         """Hold the last set-points, valves shut."""
-        self._goes, self.phase = False, "standing"
+        self.phase = "standing"
 
     def go_on(self) -> None:
         """Go on with the next set."""
-        self._goes, self.phase = True, "playing"
+        self.phase = "playing"
 
     def jump(self, to_s: float) -> None:
         """A recording is only played through."""
 
     def rest(self) -> None:
         """Let all down."""
-        if self.phase not in ("to rest", "at rest"):
+        if self.phase == "at rest" or (self._over and self._ends_at_rest):
+            self.phase = "at rest"
+        elif self.phase != "to rest":
             self.phase, self._from, self._gone_s = "to rest", self.command.copy(), 0.0
 
     def tick(self, dt_s: float) -> str:
@@ -74,7 +78,7 @@ class Playback:
             self._next_s += dt_s
             self.command = self._commands[max(at, 0)]
             if at >= len(self._time_s) - 1:
-                self.phase = "standing"
+                self.phase, self._over = "standing", True
                 return "end"
         elif self.phase == "standing":
             self.command = self.command * self._shut

@@ -10,7 +10,7 @@ crc is CRC-32 (as in zlib) over length, kind, time and body; time is the engine'
     2 state     JSON: {"was", "event", "state"}
     3 command   JSON: {"command", "value"}: what the operator or a signal asked for
     4 set       due_us:u64 late_us:u32 position_us:u64 value:u16 for every fiber, in the rig's order, as on the wire
-    5 sense     at_us:u64 count:u16, then fiber:u16 for each, then strain:f32 for each
+    5 sense     at_us:u64 first:u16 strain:f32 for each fiber from `first` on, in the rig's order
     6 board     JSON: {"driver", "kind", "say", "code", "status"}: what a board told: states, faults, notes
     7 slip      JSON: {"seconds"}: the host stood still longer than sets were ahead; the score went on that much later
     8 end       JSON: how the run ended, and its counters
@@ -40,7 +40,10 @@ LARGEST_BODY = 1 << 22
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Record:
-    """One record as read: `told` for JSON bodies; sets and senses in arrays, times in s."""
+    """One record as read: `told` for JSON bodies; times in s.
+
+    due_s: when a set was due, or strains were sensed; values: (F,) uint16 of a set, (S,) strains of `fibers` (S,) of a sense
+    """
 
     kind: str
     time_s: float
@@ -60,7 +63,7 @@ class RunLog:
         self.broken = ""
         self._put(MAGIC)
 
-    def tell(self, kind: str, time_s: float, **told: Any) -> None:
+    def tell(self, kind: str, time_s: float, /, **told: Any) -> None:
         """A record with a JSON body."""
         self._record(kind, time_s, json.dumps(told, separators=(",", ":")).encode())
 
@@ -70,9 +73,11 @@ class RunLog:
         self._record("set", time_s, body)
 
     def sense(self, time_s: float, at_s: float, fibers: NDArray[np.int64], strain: NDArray[np.float64]) -> None:
-        """Strains that a board has sensed."""
-        head = _SENSE.pack(_us(at_s), len(fibers))
-        self._record("sense", time_s, head + fibers.astype("<u2").tobytes() + strain.astype("<f4").tobytes())
+        """Strains (S,) that a board has sensed of fibers (S,); a record for each run of neighbours."""
+        for run in np.split(np.arange(len(fibers)), np.flatnonzero(np.diff(fibers) != 1) + 1):
+            if run.size:
+                head = _SENSE.pack(_us(at_s), int(fibers[run[0]]))
+                self._record("sense", time_s, head + strain[run].astype("<f4").tobytes())
 
     def _record(self, kind: str, time_s: float, body: bytes) -> None:
         framed = _FRAME.pack(len(body), _NUMBERS[kind], _us(time_s)) + body
@@ -118,8 +123,7 @@ def _decoded(kind: str, time_s: float, body: bytes) -> Record:
         values = np.frombuffer(body, dtype="<u2", offset=_SET.size)
         return Record(kind, time_s, {}, due * 1e-6, late * 1e-6, position * 1e-6, values)
     if kind == "sense":
-        at, count = _SENSE.unpack_from(body)
-        fibers = np.frombuffer(body, dtype="<u2", count=count, offset=_SENSE.size).astype(np.int64)
-        strain = np.frombuffer(body, dtype="<f4", count=count, offset=_SENSE.size + 2 * count)
-        return Record(kind, time_s, {}, due_s=at * 1e-6, values=strain, fibers=fibers)
+        at, first = _SENSE.unpack_from(body)
+        strain = np.frombuffer(body, dtype="<f4", offset=_SENSE.size)
+        return Record(kind, time_s, {}, due_s=at * 1e-6, values=strain, fibers=np.arange(first, first + len(strain)))
     return Record(kind, time_s, json.loads(body))

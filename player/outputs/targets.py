@@ -99,15 +99,8 @@ def make_outputs(texts: Sequence[str], context: Context) -> tuple[Output, ...]:
     Raises:
         Faults: for every target that is written wrong, names no driver or one twice, and for drivers left without one.
     """
+    targets = parsed(texts)
     faults: list[Fault] = []
-    targets: list[Target] = []
-    for text in texts:
-        try:
-            targets.append(_parsed(text))
-        except Faults as wrong:
-            faults.extend(wrong.faults)
-    if faults:
-        raise Faults(faults)
     known = [driver.name for driver in context.rig.drivers]
     taken: dict[str, Target] = {}
     for target in targets:
@@ -129,7 +122,8 @@ def make_outputs(texts: Sequence[str], context: Context) -> tuple[Output, ...]:
             expected = " or ".join(f"{name}={target.text}" for name in known[:4])
             faults.append(_fault(target, found, expected, f"the rig has {len(known)} drivers, each on a line of its own"))
         elif not left or target.text in share or share:
-            faults.append(_fault(target, "there is no driver left for this target", _listed(known)))
+            others = " ".join(other.text for other in targets if other is not target)
+            faults.append(_fault(target, f"no driver is left for this target, after {others}", "one target for each driver"))
         else:
             share[target.text] = tuple(left)
             left = []
@@ -145,6 +139,25 @@ def make_outputs(texts: Sequence[str], context: Context) -> tuple[Output, ...]:
         drivers = (target.driver,) if target.driver else share[target.text]
         made.append(SCHEMES[target.scheme].make(context, drivers, target))
     return tuple(made)
+
+
+def parsed(texts: Sequence[str]) -> list[Target]:
+    """The parts of every target. Raises Faults with all that are written wrong."""
+    faults: list[Fault] = []
+    targets: list[Target] = []
+    for text in texts:
+        try:
+            targets.append(_parsed(text))
+        except Faults as wrong:
+            faults.extend(wrong.faults)
+    if faults:
+        raise Faults(faults)
+    return targets
+
+
+def files_of(texts: Sequence[str]) -> list[str]:
+    """The paths that the targets would write. Raises Faults as `parsed`."""
+    return [target.rest for target in parsed(texts) if target.scheme == "file" and target.rest]
 
 
 def _parsed(text: str) -> Target:
