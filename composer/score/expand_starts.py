@@ -60,15 +60,18 @@ def starts_of(score: Score, rig: Rig, selector: Selector, tempo: TempoMap, fault
     )
 
 
+GOLDEN = np.uint64(0x9E3779B97F4A7C15)
+
+
 def scattered(seed: int, fibers: NDArray[np.int64]) -> Array:
     """A number in [-1, 1) for each fiber index, the same on any machine: SplitMix64 (Steele, Lea and Flood 2014)."""
-    step = np.uint64(0x9E3779B97F4A7C15)
-    seeded = _mixed(np.array([seed % 2**64], dtype=np.uint64) + step)
-    drawn = _mixed(seeded + step * (fibers.astype(np.uint64) + np.uint64(1)))
+    seeded = mixed(np.array([seed % 2**64], dtype=np.uint64) + GOLDEN)
+    drawn = mixed(seeded + GOLDEN * (fibers.astype(np.uint64) + np.uint64(1)))
     return (drawn >> np.uint64(11)).astype(float) * 2.0**-52 - 1.0
 
 
-def _mixed(z: NDArray[np.uint64]) -> NDArray[np.uint64]:
+def mixed(z: NDArray[np.uint64]) -> NDArray[np.uint64]:
+    """SplitMix64's output for states, any shape."""
     z = (z ^ (z >> np.uint64(30))) * np.uint64(0xBF58476D1CE4E5B9)
     z = (z ^ (z >> np.uint64(27))) * np.uint64(0x94D049BB133111EB)
     return z ^ (z >> np.uint64(31))

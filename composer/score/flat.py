@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
+from itertools import zip_longest
 from math import isclose
 from typing import Protocol
 
@@ -11,9 +12,9 @@ from numpy.typing import NDArray
 from composer.faults import fault
 from composer.rig.model import Rig
 from composer.score.bounds import BOUNDS, most
-from composer.score.layers import BEZIER, CURVE, NO_WAY
+from composer.score.layers import BEZIER, NO_WAY
 from composer.score.model import Score, Span
-from composer.score.shapes import NAMES, PROGRESS
+from composer.score.shapes import PROGRESS
 from composer.score.tempo import TempoMap
 from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
@@ -133,9 +134,9 @@ def _parts(tracks: Tracks, fiber: int, rig: Rig) -> Iterator[_Part]:
     part: _Part | None = None
     number = 0
     segments = _segments(tracks, int(tracks.first[fiber]), int(tracks.first[fiber + 1]) - 1)
-    for (k, jumps), (_, jumps_next) in zip(segments, [*segments[1:], (0, False)], strict=True):
+    for (k, jumps), following in zip_longest(segments, segments[1:]):
         ends = float(tracks.time_s[k + 1])
-        if tracks.manner[k] == HOLD and jumps_next:
+        if tracks.manner[k] == HOLD and following is not None and following[1]:
             continue  # the line of the jump says that the fiber holds until then
         if part is None or (jumps and ends <= part.reaches_s + SAME_INSTANT_S):
             if part is not None:
@@ -175,12 +176,11 @@ def _move(tracks: Tracks, k: int, jumps: bool, rig: Rig, fiber: int) -> str:
     target = _percent(float(curve.sum()), rig, fiber)
     if tracks.manner[k] == SUDDEN:
         return f"{target} sudden"
-    shape = int(tracks.shape[k])
-    if shape >= 0 and shape != CURVE:
-        whole = PROGRESS[NAMES[shape]] * (curve.sum() - curve[0])
+    for shape in ("smooth", "linear", "swell", "settle"):
+        whole = PROGRESS[shape] * (curve.sum() - curve[0])
         whole[0] += curve[0]
         if np.abs(whole - curve).max() <= WHOLE_SHAPES:
-            return f"{target} {NAMES[shape]}"
+            return f"{target} {shape}"
     inner = " ".join(_percent(float(value), rig, fiber) for value in controls(curve)[1:5])
     return f"{target} curve {inner}"
 

@@ -186,7 +186,8 @@ def _cut_sudden(ways: _Ways, abilities: Abilities, cut: Index, a: Array) -> Arra
     begins = np.maximum(ways.leaves[cut], ways.arrives[cut] - needs)
     # Where there is less time than needed it runs through the same way faster.
     faster = np.where(needs > has, needs / has, 1.0)
-    return strain_after(abilities, fiber, a, target, np.maximum(0.0, ways.stops[cut] - begins) * faster)
+    gone = ways.stops[cut] - begins
+    return np.where(gone <= SAME_INSTANT_S, a, strain_after(abilities, fiber, a, target, np.maximum(0.0, gone) * faster))
 
 
 def _start_suddens(ways: _Ways, abilities: Abilities) -> None:
@@ -199,7 +200,7 @@ def _start_suddens(ways: _Ways, abilities: Abilities) -> None:
     early = ways.leaves[sudden]
     begins = np.where(begins <= early + SAME_INSTANT_S, early, begins)
     ways.leaves[sudden] = np.minimum(begins, ways.stops[sudden])
-    ways.goes[sudden] &= (ways.leaves[sudden] < ways.stops[sudden]) & (ways.b[sudden] != ways.a[sudden])
+    ways.goes[sudden] &= (ways.leaves[sudden] < ways.stops[sudden]) & (np.abs(ways.b - ways.a)[sudden] > NO_WAY)
 
 
 def affine_scan(alpha: Array, beta: Array) -> Array:

@@ -1,0 +1,32 @@
+from itertools import pairwise
+
+import numpy as np
+from hypothesis import given
+from hypothesis import strategies as st
+
+from composer.score.layers import BEZIER, affine_scan
+
+
+@given(st.lists(st.tuples(st.sampled_from([0.0, 1.0, 0.5, 0.123, 1e-3]), st.floats(-2, 2)), min_size=1, max_size=300))
+def test_the_scan_is_what_a_loop_gives(steps):
+    alpha, beta = np.array(steps).T.copy()
+    alpha[0] = 0.0
+    value, expected = 0.0, []
+    for a, b in zip(alpha, beta, strict=True):
+        value = a * value + b
+        expected.append(value)
+    np.testing.assert_allclose(affine_scan(alpha, beta), expected, atol=1e-12)
+
+
+def test_a_value_is_held_through_any_number_of_holds_to_the_last_bit():
+    alpha, beta = np.ones(10_001), np.zeros(10_001)
+    alpha[0], beta[0] = 0.0, 0.1
+    assert np.all(affine_scan(alpha, beta) == 0.1)
+
+
+@given(st.lists(st.floats(-3, 3), min_size=6, max_size=6), st.floats(0, 1))
+def test_powers_of_a_bezier_curve_give_what_de_casteljau_gives(points, u):
+    curve = np.array(points) @ BEZIER
+    while len(points) > 1:
+        points = [p + (q - p) * u for p, q in pairwise(points)]
+    assert abs(np.polyval(curve[::-1], u) - points[0]) < 1e-12
