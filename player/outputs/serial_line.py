@@ -15,6 +15,7 @@ from player.outputs.serial_ports import ports_found
 BAUD = 115_200
 SLOWEST, FASTEST = 115_200, 2_000_000
 READ_BYTES = 65_536
+DRAIN_TRIES, DRAIN_S = 5, 0.02
 
 
 class LineLost(LinkLost):
@@ -104,8 +105,15 @@ class SerialLine:
         return len(self._waiting)
 
     def close(self) -> None:
-        """Let go of the port, after giving what was written a moment to leave; harmless when called twice."""
+        """Let go of the port, after giving what is kept DRAIN_TRIES moments to leave; harmless when called twice."""
+        for _ in range(DRAIN_TRIES):
+            if self._serial is None or not self._waiting:
+                break
+            with suppress(LineLost, OSError):
+                select.select([], [self._fd], [], DRAIN_S)
+                self.write(b"")
         port, self._serial, self._fd = self._serial, None, -1
+        self._waiting.clear()
         if port is not None:
             with suppress(OSError, termios.error):
                 fcntl.ioctl(port.fileno(), termios.TIOCNXCL)

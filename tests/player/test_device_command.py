@@ -99,7 +99,8 @@ class Played:
     def __init__(self, path, rig, channels=4, **host):
         self.line = SerialLine(path, 2_000_000)
         self.line.open()
-        self.host = Host(channels, load_rig(rig).fingerprint, **host)
+        # A busy machine may hold a test up: only the test of the watchdog wants it tight.
+        self.host = Host(channels, load_rig(rig).fingerprint, **{"watchdog_ms": 3000, **host})
         self.events = []
 
     def go(self, seconds, until=()):
@@ -137,10 +138,10 @@ def test_sets_sent_ahead_are_each_in_the_log_with_their_due_time_and_none_is_lat
     with device(rig, "--log", str(log)) as (_, path):
         played = Played(path, rig).armed()
         played.go(0.5)
-        begin = time.monotonic() + 0.3
+        begin = time.monotonic() + 1.0
         for n in range(50):
             assert played.host.set(begin + 0.004 * n, 0, [n * 1000] * 4, time.monotonic())
-        played.go(1.0)
+        played.go(1.7)
         assert played.host.late == 0
         assert any(max(event.strain) > 0 for event in played.events if isinstance(event, link.Sensed))
         assert played.host.supply_kPa == pytest.approx(800.0, abs=20.0)
