@@ -260,7 +260,7 @@ def _check_tracks(name: str, values: dict[str, NDArray]) -> None:
         _wrong(name, "first does not part the knots among the fibers")
     starts, ends = first[:-1], first[1:] - 1
     if len(time) and (time[starts] != 0.0).any():
-        _wrong(name, "a fiber's first knot is not at 0 s")
+        _wrong(name, "in time_s a fiber's first knot is not at 0 s")
     step = np.diff(time)
     inside = np.ones(max(len(time) - 1, 0), dtype=bool)
     inside[ends[:-1]] = False

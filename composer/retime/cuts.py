@@ -37,7 +37,9 @@ def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) ->
         if seconds[-1] * (1.0 - coils.duty[f]) <= coils.burst_s[f] * (1.0 + EXACT):
             continue
         here = level(on.time_s[mine], seconds, coils.duty[f])
-        over = np.flatnonzero((here.missing > coils.burst_s[f] * (1.0 + EXACT)) & (segment >= 0))
+        # The hold at the end of a track lasts as long as the score: no times change that.
+        ends = (segment >= 0) & (segment != now.first[f + 1] - 1)
+        over = np.flatnonzero((here.missing > coils.burst_s[f] * (1.0 + EXACT)) & ends)
         for end in over[np.argsort(-here.missing[over], kind="stable")][:AT_ONCE]:
             # A span begins with the first energised segment after the coil had last recovered.
             begin = here.since[end] + 1 + int(np.argmax(segment[here.since[end] + 1 :] >= 0))
@@ -47,9 +49,7 @@ def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) ->
     return found
 
 
-def duty_rows(
-    spans: list[Span], tracks: Tracks, events: Events, rig: Rig, abilities: Abilities, end: tuple[int, float]
-) -> Rows:
+def duty_rows(spans: list[Span], tracks: Tracks, events: Events, rig: Rig, abilities: Abilities) -> Rows:
     """For each span of prepared tracks: its on-time less `duty` times its length at most `duty_burst_s`."""
     if not spans:
         return no_rows(events)
@@ -61,7 +61,7 @@ def duty_rows(
     row = np.repeat(np.arange(len(spans)), lengths)
     share = energised[segment] - coils.duty[fiber][row]
     sums = Sums(row, segment, share, coils.burst_s[fiber])
-    return sum_rows(tracks, events, sums, DUTY_ROW, np.array([last for _, last in spans]), end)
+    return sum_rows(tracks, events, sums, DUTY_ROW, np.array([last for _, last in spans]))
 
 
 def _energised(tracks: Tracks, rig: Rig, abilities: Abilities) -> Array:

@@ -63,7 +63,7 @@ def chains_too_long(events: Events, rows: Rows, pins_s: Array, give_s: Array) ->
                 earliest[event], by[event] = reach, line
         short = earliest[event] - highest[event]
         if short > SHORT_S:
-            done.append(_chain(event, by, sources, simple, rows, low_pin, high_pin, pins_s, short))
+            done.append(_chain(event, by, sources, simple, rows, low_pin, high_pin, pins_s, short, events.offset_s != 0.0))
             earliest[event], by[event] = float(highest[event]), -1
             low_pin[event] = high_pin[event]
     return done
@@ -93,14 +93,19 @@ def _chain(
     high_pin: Index,
     pins_s: Array,
     short: float,
+    tied: NDArray[np.bool_],
 ) -> Chain:
     """The chain that ends at a pinned event, followed back to where it comes from."""
     knots: list[int] = []
     here = event
     while here >= 0 and by[here] >= 0:
         line = by[here]
+        knot = int(rows.knot[simple[line]])
         if rows.kind[simple[line]] == MOVE_ROW:
-            knots.append(int(rows.knot[simple[line]]))
+            knots.append(knot)
+        elif rows.kind[simple[line]] == HOLD_ROW and tied[knot + 1]:
+            # A hold before a sudden move is as long as what is left once that move has had its time.
+            knots.append(knot + 1)
         here = sources[line]
     first = int(low_pin[here]) if here >= 0 else -1
     last = int(high_pin[event])

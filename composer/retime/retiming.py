@@ -131,12 +131,17 @@ def retime(
     tries = 0
     while chains and shrink and tries < SHRINKS:
         current, hopeless = programme.tracks, True
+        fiber, done = fiber_of(current), set()
         for chain in chains:
+            # A move that follows a shrunk one starts from elsewhere now: its chain is counted anew in the next round.
+            if done & set(fiber[list(chain.knots)].tolist()):
+                continue
             factor = factor_that_fits(current, chain, lambda some, k: durations_to_keep(some, abilities, k))
             tries += 1
             if factor <= 0.0:
                 continue
             hopeless = False
+            done.update(fiber[list(chain.knots)].tolist())
             current = scaled(current, np.array(chain.knots), factor)
             for k in chain.knots:
                 written = int(programme.origin[k])

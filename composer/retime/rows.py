@@ -148,12 +148,9 @@ class Sums:
     most_s: Array
 
 
-def sum_rows(tracks: Tracks, events: Events, sums: Sums, kind: int, knot: Index, end: tuple[int, float]) -> Rows:
-    """Rows `sum <= most_s`; knot: (R,) a segment to name for each; end: what the score's end hangs from, as in Programme."""
-    last = np.zeros(len(tracks.time_s), dtype=bool)
-    last[tracks.first[1:] - 1] = True
-    later = np.where(last[sums.segment], end[0], events.event[np.minimum(sums.segment + 1, len(last) - 1)])
-    offset = np.where(last[sums.segment], end[1], events.offset_s[np.minimum(sums.segment + 1, len(last) - 1)])
+def sum_rows(tracks: Tracks, events: Events, sums: Sums, kind: int, knot: Index) -> Rows:
+    """Rows `sum <= most_s`; knot: (R,) a segment to name for each. No part may be the hold without end of a fiber."""
+    later, offset = events.event[sums.segment + 1], events.offset_s[sums.segment + 1]
     earlier = events.event[sums.segment]
     written = np.append(events.written_s, 0.0)
     start = np.where(earlier < 0, tracks.time_s[sums.segment], written[earlier] + events.offset_s[sums.segment])

@@ -69,7 +69,7 @@ def programme_of(
             duration_rows(prepared, events, least),
             order_rows(events),
             pin_rows(events, pins_s, give_s),
-            hold_rows(prepared, events, abilities, end),
+            hold_rows(prepared, events, abilities),
         ]
     )
     return Programme(prepared, origin, least, events, rows, all_terms(events, keeps), keeps, end)
@@ -117,7 +117,7 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
         if not spans:
             return Answer(least, rows, given_up)
         known.update(spans)
-        rows = joined([rows, duty_rows(spans, programme.tracks, programme.events, rig, abilities, programme.end)])
+        rows = joined([rows, duty_rows(spans, programme.tracks, programme.events, rig, abilities)])
     return Answer(least, rows, given_up)
 
 

@@ -56,7 +56,7 @@ class Made:
 
 def random_score(seed: int, fibers: int = 4, moves: int = 6, stroke: float = 0.3, fill: float = 0.6, exhaust: float = 0.3,
                  pins: bool = True, sudden: bool = True, grid_s: float = 0.25) -> Made:  # fmt: skip
-    """Moves on a common grid, so that many land together, some too fast; holds between some; pins where they fit easily."""
+    """Moves on a common grid, so that many land together, some too fast; holds between some; rest at the end."""
     rng = np.random.default_rng(seed)
     made, latest = [], 0.0
     for _ in range(fibers):
@@ -81,7 +81,9 @@ def random_score(seed: int, fibers: int = 4, moves: int = 6, stroke: float = 0.3
                 at += float(rng.integers(1, 5)) * grid_s
             one.append((at, target, shape))
             at, value = at + takes, target
-        one.append((at, None, "end"))
+        takes = np.ceil(2.5 * value / exhaust / grid_s) * grid_s
+        one += [(at, 0.0, "smooth"), (at + takes, None, "end")]
+        at += takes
         made.append(one)
         latest = max(latest, at)
     instants = rng.uniform(0.0, latest, int(rng.integers(1, 3))) if pins and rng.random() < 0.6 else np.empty(0)

@@ -1,5 +1,7 @@
 """Least costs against an independent formulation for Clarabel (Goulart and Chen 2024), written from the manual page alone."""
 
+from itertools import pairwise
+
 import cvxpy as cp
 import numpy as np
 import pytest
@@ -49,7 +51,7 @@ def least_by_clarabel(made, stroke, fill, exhaust, accel, keep):
         first = landings[instant][0][0]
         rules += [t[other] == t[first] for other, _ in landings[instant][1:]]
     hit = {instant: t[landings[instant][0][0]] for instant in instants}
-    rules += [hit[b] >= hit[a] for a, b in zip(instants, instants[1:], strict=False)]
+    rules += [hit[b] >= hit[a] for a, b in pairwise(instants)]
     for pin in made.pins_s:
         for instant in instants:
             rules += [hit[instant] == instant] if abs(instant - pin) < 1e-6 else []
