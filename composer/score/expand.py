@@ -13,7 +13,7 @@ from composer.score.layers import knots_of
 from composer.score.model import Score
 from composer.score.names import check_names
 from composer.score.sums import summed
-from composer.score.tempo import TempoMap, tempo_map, with_text
+from composer.score.tempo import TempoMap, fault_at, tempo_map, with_text
 from composer.tracks import Tracks
 
 
@@ -34,6 +34,10 @@ def expand(score: Score, rig: Rig, abilities: Abilities, selector: Selector, tem
     stop_at_faults()
     starts = starts_of(score, rig, selector, tempo, faults)
     lines = phrase_lines(score, starts.variants, faults)
+    faults += [
+        fault_at(span, "a quiver cannot be played by this version", hint="take it out; the rest of the line stays as it is")
+        for span in dict.fromkeys(quiver.span for quiver in lines.quiver.values())
+    ]
     stop_at_faults()
     found = moments(starts, lines, tempo, rig, faults)
     stop_at_faults()
