@@ -28,8 +28,8 @@ def fastest_by_toppra(curve: np.ndarray) -> float:
 def test_a_path_with_rate_limits_lasts_what_toppra_finds(make_rig, seed):
     rng = np.random.default_rng(seed)
     targets = np.concatenate((rng.uniform(0.02, 0.3, 5), [0.0]))
-    track = [(0.01 * n, float(target), "linear") for n, target in enumerate(targets)]
-    tracks = tracks_of([[*track, (0.01 * len(track), None, "end")]])
+    track = [(1e-4 * n, float(target), "linear") for n, target in enumerate(targets)]
+    tracks = tracks_of([[*track, (1e-4 * len(track), None, "end")]])
     rig = make_rig(1, fill=FILL, exhaust=EXHAUST)
     theirs = [fastest_by_toppra(curve) for curve in tracks.curve[:-1]]
     for keep in ("clock", "rhythm"):
