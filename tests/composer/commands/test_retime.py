@@ -97,9 +97,7 @@ def test_keep_on_the_command_line_is_what_is_kept(demo):
     ]
 
 
-@pytest.mark.parametrize(
-    "outputs", [("-o", "one.score"), ("--flat", "estuary.rig.toml"), ("-o", "a", "--flat", "a"), ("-o", "no/a")]
-)
+@pytest.mark.parametrize("outputs", ["-o one.score", "--flat estuary.rig.toml", "-o a --flat a", "-o no/a"])
 def test_an_output_that_cannot_be_written_is_refused_before_work_starts(demo, outputs):
     path = score(demo, "  reed.1  up\n")
     before = {item.name: item.read_bytes() for item in demo.iterdir()}
