@@ -59,6 +59,8 @@ class Use:
     """What the supply goes through: lowest pressure in kPa gauge, litres of free air in all, the spans that overdraw it.
 
     spans: (from_s, to_s, drawn_L, bears_L) each, in order of time
+
+    Of dips that differ by less than twice what the chords stray (`Demand.strays_L`) the lowest may be that of another.
     """
 
     lowest_kPa: float
@@ -163,16 +165,17 @@ class _Exact:
 
     def deepen(self, from_s: float, to_s: float) -> tuple[float, float, float]:
         """A span near this one that is the deepest there: from, to, and the litres missing at its end."""
-        start, lowest = self._extreme(from_s, -1.0)
-        end, highest = self._extreme(to_s, 1.0)
+        # Demand less refill falls on and on where nothing is drawn: the end lies after the start, and the start before it.
+        end, highest = self._extreme(to_s, 1.0, from_s, np.inf)
+        start, lowest = self._extreme(from_s, -1.0, 0.0, end)
         return (start, end, highest - lowest) if end > start else (from_s, from_s, 0.0)
 
-    def _extreme(self, near_s: float, sign: float) -> tuple[float, float]:
-        """The instant about `near_s` at which demand less refill is least (sign -1) or greatest (1), and what it is there."""
+    def _extreme(self, near_s: float, sign: float, from_s: float, to_s: float) -> tuple[float, float]:
+        """Where, about `near_s` and within bounds, demand less refill is least (sign -1) or greatest (1), and what it is."""
         fills = self.fills
         under_way = (fills.from_s <= near_s) & (fills.to_s >= near_s)
         width = (fills.to_s - fills.from_s)[under_way].max(initial=0.0) / FEWEST
-        low, high = max(near_s - width, 0.0), near_s + width
+        low, high = max(near_s - width, from_s), min(near_s + width, to_s)
         best_s, best = near_s, self._short(np.array([near_s]))[0]
         for _ in range(ROUNDS if width > 0.0 else 0):
             grid = np.linspace(low, high, GRID)
@@ -181,7 +184,7 @@ class _Exact:
             if sign * short[at] > sign * best:
                 best_s, best = float(grid[at]), short[at]
             step = grid[1] - grid[0]
-            low, high = max(best_s - step, 0.0), best_s + step
+            low, high = max(best_s - step, from_s), min(best_s + step, to_s)
         return float(best_s), float(best)
 
     def _short(self, time_s: Array) -> Array:
