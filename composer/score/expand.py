@@ -12,7 +12,7 @@ from composer.score.expand_times import Moments, moments
 from composer.score.layers import knots_of
 from composer.score.model import Score
 from composer.score.names import check_names
-from composer.score.sums import summed
+from composer.score.sums import MOST_PIECES, Crowded, summed
 from composer.score.tempo import TempoMap, fault_at, tempo_map, with_text
 from composer.tracks import Tracks
 
@@ -44,8 +44,21 @@ def expand(score: Score, rig: Rig, abilities: Abilities, selector: Selector, tem
     owner = np.concatenate([np.arange(len(rig.fibers)), starts.fiber[starts.added]])
     duration = _duration(found)
     knots = knots_of(found, starts, lines, abilities, len(owner))
+    entries = starts.entries
     del found, starts  # a large score needs the room
-    return summed(knots, owner, len(rig.fibers), duration, abilities)
+    try:
+        return summed(knots, owner, len(rig.fibers), duration, abilities)
+    except Crowded as stop:
+        crowded = next(entry for entry in entries if entry.span.line == stop.line)
+        faults.append(
+            fault_at(
+                crowded.span,
+                f"added moves overlap so often that they fall into more than {MOST_PIECES} pieces",
+                "fewer at a time",
+                "add fewer repeats, or repeats that are over before many more have begun",
+            )
+        )
+        raise Faults(with_text(faults, score)) from None
 
 
 def _duration(found: Moments) -> float:

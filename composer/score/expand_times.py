@@ -119,6 +119,8 @@ def _snapped(sources: list[Array]) -> list[Array]:
 def _check_starts(found: Moments, starts: Starts, rig: Rig, faults: list[Fault]) -> None:
     """Two entries that take over on one fiber at one instant: one fault for each pair of entries."""
     both = np.flatnonzero(found.cut == found.start)
+    if not both.size:
+        return
     entry = starts.entry[found.order]
     pairs, first, count = np.unique(
         np.column_stack([entry[both], entry[both + 1]]), axis=0, return_index=True, return_counts=True

@@ -16,11 +16,28 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 
+BLOCK = 1 << 17
+"""Knots, as a rule, that are summed at once."""
+
+MOST_PIECES = 1 << 26
+"""Pieces that the moves of all layers may be cut into by the knots of the others."""
+
+
+class Crowded(Exception):
+    """Too many layers at once; `line` is that of an entry that runs through most of the others."""
+
+    def __init__(self, line: int):
+        self.line = line
+        super().__init__(f"too many layers at once on line {line}")
+
+
 def summed(knots: Knots, owner: Index, fibers: int, duration_s: float, abilities: Abilities) -> Tracks:
     """The tracks of `fibers` fibers; chain c moves fiber owner[c], the first `fibers` chains being the bases in order.
 
     A block of fibers at a time, so that what is worked out between fits the processor's cache and little memory.
+    Raises Crowded where so many layers move at once that their moves fall into more than MOST_PIECES pieces.
     """
+    room = MOST_PIECES
     if len(owner) == fibers:
         return _tracks(knots.first, knots, duration_s)
     chains = np.argsort(owner, kind="stable")
@@ -39,9 +56,9 @@ def summed(knots: Knots, owner: Index, fibers: int, duration_s: float, abilities
         part, fiber = _picked(knots, at), np.repeat(owner[mine], size)
         some = layered[fiber]
         if some.any():
-            part, fiber = _beside(
-                _sum(_picked(part, some), fiber[some], np.repeat(mine, size)[some], abilities), part, fiber, some
-            )
+            sums, fiber_of_sums, pieces = _sum(_picked(part, some), fiber[some], np.repeat(mine, size)[some], abilities, room)
+            part, fiber = _beside(sums, fiber_of_sums, part, fiber, some)
+            room -= pieces
         counts += np.bincount(fiber, minlength=fibers)
         done.append(part)
     whole = Knots(_divided(counts), *(np.concatenate([getattr(part, name) for part in done]) for name in _COLUMNS))
@@ -52,17 +69,14 @@ def _divided(counts: Index) -> Index:
     return np.concatenate([[0], np.cumsum(counts)])
 
 
-def _beside(sums: tuple[Knots, Index], part: Knots, fiber: Index, some: NDArray[np.bool_]) -> tuple[Knots, Index]:
+def _beside(sums: Knots, fiber_of_sums: Index, part: Knots, fiber: Index, some: NDArray[np.bool_]) -> tuple[Knots, Index]:
     """The sums and, in the order of fibers, those without a layer on top, which go through as they are."""
     plain = _picked(part, ~some)
-    both = np.concatenate([fiber[~some], sums[1]])
+    both = np.concatenate([fiber[~some], fiber_of_sums])
     order = np.argsort(both, kind="stable")
-    columns = (np.concatenate([getattr(plain, name), getattr(sums[0], name)])[order] for name in _COLUMNS)
+    columns = (np.concatenate([getattr(plain, name), getattr(sums, name)])[order] for name in _COLUMNS)
     return Knots(part.first, *columns), both[order]
 
-
-BLOCK = 1 << 17
-"""Knots, as a rule, that are summed at once."""
 
 _COLUMNS = ("time_s", "curve", "manner", "shape", "line", "phrase_line", "earliest")
 
@@ -77,8 +91,10 @@ def _picked(knots: Knots, which: NDArray) -> Knots:
     return Knots(np.zeros(1, dtype=np.int64), *(getattr(knots, name)[which] for name in _COLUMNS))
 
 
-def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities) -> tuple[Knots, Index]:
-    """Knots of the sums, and the fiber of each. All chains of each fiber together, any number of them.
+def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities, room: int) -> tuple[Knots, Index, int]:
+    """Knots of the sums, the fiber of each, and how many pieces of moves they took, at most `room`.
+
+    All chains of each fiber together, any number of them.
 
     A layer that holds is a constant; the constants are added as whole numbers, so that what goes up comes down to the same
     value. Only the layers that move between two knots are added as polynomials.
@@ -102,18 +118,20 @@ def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities) -> tupl
     curve = np.zeros((len(at), 6))
     curve[:, 0] = base
     spans = stop[moving] - spot[moving]
-    which = np.repeat(moving, spans)
-    piece = np.repeat(spot[moving] - np.cumsum(spans) + spans, spans) + np.arange(len(which))
-    lasts = (ends - knots.time_s)[which]
-    part = sub_polynomial(knots.curve[which], (at[piece] - knots.time_s[which]) / lasts, (until[piece] - at[piece]) / lasts)
-    for power in range(6):
-        curve[:, power] += np.bincount(piece, weights=part[:, power], minlength=len(at))
+    if (pairs := int(spans.sum())) > room:
+        raise Crowded(int(knots.line[moving[np.argmax(spans)]]))
+    by = _add_moving(curve, knots, moving, spot[moving], spans, (ends - knots.time_s)[moving], at, until)
 
-    layers = np.bincount(piece, minlength=len(at))
+    change = np.zeros(len(at) + 1, dtype=np.int64)
+    np.add.at(change, spot[moving], 1)
+    np.subtract.at(change, stop[moving], 1)
+    layers = np.cumsum(change[:-1])
     manner = np.where(layers > 0, MOVE, HOLD).astype(np.int8)
     shape = np.full(len(at), -1, dtype=np.int8)
-    alone = (layers[piece] == 1) & (at[piece] == knots.time_s[which]) & (until[piece] == ends[which])
-    manner[piece[alone]], shape[piece[alone]] = knots.manner[which[alone]], knots.shape[which[alone]]
+    earliest = at.copy()
+    alone = moving[(spans == 1) & (layers[spot[moving]] == 1)]
+    manner[spot[alone]], shape[spot[alone]] = knots.manner[alone], knots.shape[alone]
+    earliest[spot[alone]] = knots.earliest[alone]
     flat = (manner != HOLD) & (np.abs(curve[:, 1:]).max(axis=1) <= NO_WAY)
     manner[flat], shape[flat], curve[flat, 1:] = HOLD, -1, 0.0
 
@@ -121,17 +139,42 @@ def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities) -> tupl
     line, phrase_line = np.zeros(len(at), dtype=np.int32), np.zeros(len(at), dtype=np.int32)
     written = np.argsort(knots.line, kind="stable")
     line[spot[written]], phrase_line[spot[written]] = knots.line[written], knots.phrase_line[written]
-    most = np.argsort(np.abs(part[:, 1:].sum(axis=1)), kind="stable")
-    line[piece[most]], phrase_line[piece[most]] = knots.line[which[most]], knots.phrase_line[which[most]]
+    moves = np.flatnonzero(by >= 0)
+    line[moves], phrase_line[moves] = knots.line[by[moves]], knots.phrase_line[by[moves]]
 
     jumps = np.zeros(len(at), dtype=bool)
     jumps[spot[jump]] = True
-    earliest = at.copy()
-    earliest[piece[alone]] = knots.earliest[which[alone]]
     sums = Knots(np.zeros(1, dtype=np.int64), at, curve, manner, shape, line, phrase_line, earliest)
     whole = _with_jumps(sums, jumps, moved, knots, spot, jump)
     owner = np.repeat(whose, 1 + whole[0])
-    return _merged(*_timed_suddens(whole[1], owner, abilities))
+    return *_merged(*_timed_suddens(whole[1], owner, abilities)), pairs
+
+
+def _add_moving(
+    curve: Array, knots: Knots, moving: Index, spot: Index, spans: Index, lasts: Array, at: Array, until: Array
+) -> Index:
+    """Add what moves to the sums' polynomials, each segment in the pieces that it runs through, from piece `spot` on over
+    `spans` of them; the segment that moves most in each piece, -1 where none does."""
+    largest, by = np.zeros(len(at)), np.full(len(at), -1, dtype=np.int64)
+    chunk = np.cumsum(spans) // BLOCK
+    for begin, end in pairwise(np.searchsorted(chunk, np.arange(int(chunk[-1]) + 2 if len(chunk) else 1))):
+        if begin == end:
+            continue
+        span = spans[begin:end]
+        which = np.repeat(np.arange(begin, end), span)
+        piece = np.repeat(spot[begin:end] - np.cumsum(span) + span, span) + np.arange(len(which))
+        segment = moving[which]
+        start = (at[piece] - knots.time_s[segment]) / lasts[which]
+        part = sub_polynomial(knots.curve[segment], start, (until[piece] - at[piece]) / lasts[which])
+        low, high = int(piece.min()), int(piece.max()) + 1
+        for power in range(6):
+            curve[low:high, power] += np.bincount(piece - low, weights=part[:, power], minlength=high - low)
+        way = np.abs(part[:, 1:].sum(axis=1))
+        order = np.argsort(way, kind="stable")
+        order = order[(way[order] > largest[piece[order]]) | (by[piece[order]] < 0)]
+        # Of several that are written to one place the last stays: the largest.
+        largest[piece[order]], by[piece[order]] = way[order], segment[order]
+    return by
 
 
 def _constants(
