@@ -8,7 +8,7 @@ import numpy as np
 from composer.limits.snag import Snag
 from composer.rig.model import Rig
 from composer.score.shapes import NAMES
-from composer.tracks import STEP, SUDDEN, Tracks
+from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
 MOST_NAMES = 4
 """Fibers that a sentence names before it says how many more there are."""
@@ -98,7 +98,7 @@ def two(needs: float, has: float) -> tuple[str, str]:
 
 def _digits(x: float, digits: int) -> str:
     """Hundredths where a number is about 1 or more, else `digits` figures; more `digits` give more of either."""
-    if abs(x) >= 0.1 or x == 0.0:
+    if abs(x) >= 0.0995 or x == 0.0:
         return f"{x:.{digits}f}"
     return f"{x:.{digits}g}" if abs(x) >= 1e-4 else f"{x:.{digits - 1}e}"
 
@@ -127,9 +127,20 @@ def _move(snag: Snag, teller: Teller, who: _Who, needs_s: float, manner: str, wh
     has, needs = two(lasts, needs_s)
     more, _ = two(needs_s - lasts, 0.0)
     says = (
-        f"{who.verb('is', 'are')} asked to {manner} in {has} s, landing at {lands}; {who.then('needs', 'need')} {needs} s{why}."
+        f"{who.verb('is', 'are')} asked to {manner} in {has} s, landing at {lands}; {who.then('needs', 'need')} {needs} s{why}"
     )
-    return Told(says, f"Give it {more} s more.")
+    return Told(f"{says}{_in_a_row(snag, teller)}.", f"Give it {more} s more.")
+
+
+def _in_a_row(snag: Snag, teller: Teller) -> str:
+    """How many moves the stretch of a snag goes through, where it tells of the worst of them."""
+    tracks = teller.tracks
+    here = slice(tracks.first[snag.fiber], tracks.first[snag.fiber + 1])
+    start = tracks.time_s[here]
+    end = np.append(start[1:], start[-1])
+    within = (start < snag.to_s - SAME_INSTANT_S) & (end > snag.from_s + SAME_INSTANT_S) & (tracks.manner[here] != HOLD)
+    count = np.count_nonzero(within)
+    return f" (the worst of {count} moves in a row)" if count > 1 else ""
 
 
 def _rate(snag: Snag, teller: Teller, who: _Who) -> Told:

@@ -1,0 +1,163 @@
+"""Sentences that a movement director understands."""
+
+import numpy as np
+import pytest
+
+from composer.limits.abilities import abilities_of
+from composer.limits.check import check
+from composer.limits.snag import Snag
+from composer.report.sentences import Teller, listed, named, place_in_words, tell, two
+from composer.score.shapes import NAMES, PROGRESS
+from composer.tracks import HOLD, MOVE, STEP, SUDDEN, Tracks
+
+
+def _say(seconds: float) -> str:
+    """Places of a score in 4/4 at 60 counts a minute, as written in a score."""
+    bar, count = divmod(seconds, 4.0)
+    return f"{int(bar) + 1}:{count + 1.0:g}"
+
+
+def _track(*moves: tuple[float, float, str], duration_s: float | None = None) -> Tracks:
+    """One fiber's track of (seconds, target, shape), line 10 of the score first."""
+    time, curve, manner, shape, at = [0.0], [], [], [], 0.0
+    for seconds, target, name in moves:
+        row = PROGRESS.get(name, np.zeros(6)) * (target - at)
+        row[0] += at
+        curve.append(row)
+        manner.append({"hold": HOLD, "step": STEP, "sudden": SUDDEN}.get(name, MOVE))
+        shape.append(NAMES.index(name) if name in NAMES else -1)
+        time.append(time[-1] + seconds)
+        at = target
+    curve.append(np.array([at, 0, 0, 0, 0, 0]))
+    count = len(time)
+    return Tracks(
+        first=np.array([0, count]),
+        time_s=np.array(time),
+        curve=np.array(curve),
+        manner=np.array([*manner, HOLD], dtype=np.int8),
+        shape=np.array([*shape, -1], dtype=np.int8),
+        line=np.array([10 + n if manner[n] != HOLD else 0 for n in range(count - 1)] + [0], dtype=np.int32),
+        phrase_line=np.zeros(count, dtype=np.int32),
+        duration_s=time[-1] if duration_s is None else duration_s,
+    )
+
+
+def _told(rig, tracks, kind):
+    snags = [s for s in check(tracks, rig, abilities_of(rig)).snags if s.kind == kind]
+    return tell(snags[0], Teller(tracks, rig, _say))
+
+
+def test_a_move_that_is_too_fast_is_told_by_its_time_and_the_time_it_needs(make_rig):
+    told = _told(make_rig(1, fill=0.6), _track((4.0, 0.0, "hold"), (0.25, 0.3, "linear")), "rate")
+    assert told.says == "r.1 is asked to fill in 0.25 s, landing at bar 2 count 1.25; it needs 0.50 s."
+    assert told.mends == "Give it 0.25 s more. Or ask for 0.50 of the way."
+
+
+def test_a_fiber_that_lets_go_too_fast_is_said_to_empty(make_rig):
+    told = _told(make_rig(1, exhaust=0.3), _track((1.0, 0.3, "linear"), (0.5, 0.0, "linear")), "rate")
+    assert told.says == "r.1 is asked to empty in 0.50 s, landing at bar 1 count 2.5; it needs 1.00 s."
+
+
+def test_the_time_that_a_sentence_asks_for_is_enough(make_rig):
+    rig = make_rig(1, fill=0.6)
+    tracks = _track((0.3, 0.3, "smooth"))
+    (snag,) = check(tracks, rig, abilities_of(rig)).snags
+    needs = 0.3 * snag.needs / snag.has
+    assert f"it needs {needs:.2f} s" in tell(snag, Teller(tracks, rig, _say)).says
+    assert check(_track((needs, 0.3, "smooth")), rig, abilities_of(rig)).ok
+
+
+def test_a_sudden_move_with_too_little_time_is_told_as_one(make_rig):
+    told = _told(make_rig(1, fill=0.6), _track((0.25, 0.3, "sudden")), "rate")
+    assert told.says == "r.1 is asked to fill suddenly in 0.25 s, landing at bar 1 count 1.25; it needs 0.50 s."
+
+
+def test_a_step_is_told_to_become_sudden(make_rig):
+    told = _told(make_rig(1), _track((1.0, 0.0, "hold"), (0.0, 0.15, "step"), (1.0, 0.15, "hold")), "rate")
+    assert told.says == "r.1 is asked to jump by 15 % strain at bar 1 count 2, in no time at all; no fiber can."
+    assert "'sudden'" in told.mends
+
+
+def test_every_other_kind_has_its_sentence(make_rig):
+    cases = {
+        "stroke": (make_rig(1, stroke=0.3), _track((4.0, 0.4, "linear"))),
+        "accel": (make_rig(1, accel=4.0), _track((0.5, 0.2, "smooth"))),
+        "hold": (make_rig(1, max_hold_s=2.0), _track((1.0, 0.3, "linear"), (5.0, 0.3, "hold"))),
+        "duty": (make_rig(1, duty=0.5, duty_burst_s=2.0), _track((6.0, 0.3, "linear"))),
+        "switching": (
+            make_rig(1, max_switch_Hz=10.0),
+            _track((0.05, 0.01, "linear"), (0.03, 0.01, "hold"), (0.05, 0.02, "linear")),
+        ),
+        "air": (make_rig(1, air_mL=9000.0, receiver_L=1.0, compressor_L_min=60.0), _track((2.0, 0.3, "linear"))),
+    }
+    said = {kind: _told(rig, tracks, kind) for kind, (rig, tracks) in cases.items()}
+    assert said["stroke"].says == "r.1 is asked for 40.00 % strain at bar 1 count 4; it can use 30.00 %."
+    assert said["stroke"].mends == "Scale it to 0.750 of that; time does not mend it."
+    assert (
+        said["accel"].says
+        == "r.1 is asked to fill in 0.50 s, landing at bar 1 count 1.5; it needs 0.54 s to speed up and slow down."
+    )
+    assert said["hold"].says.startswith("r.1 stays above half stroke for 5.50 s from bar 1 count 1.5")
+    assert said["hold"].says.endswith("; it may for 2.00 s.")
+    assert said["hold"].mends == "Bring it below half stroke by bar 1 count 3.5."
+    assert (
+        said["duty"].says
+        == "r.1 has its coil on for 6.00 s from bar 1 count 1 to bar 2 count 3; it bears 5.00 s over that span."
+    )
+    assert said["switching"].says == (
+        "r.1 has its valve switched on again after 0.08 s at bar 1 count 1; it takes 0.10 s from one start to the next."
+    )
+    assert said["air"].says == (
+        "The fibers draw 9.00 L of free air from bar 1 count 1 to bar 1 count 3; receiver and compressor have 5.50 L for it."
+    )
+    assert said["air"].mends == "Spread it over 3.50 s more, or ask for 3.50 L less."
+
+
+def test_below_rest_is_told_as_below_rest(make_rig):
+    told = _told(make_rig(1), _track((1.0, -0.02, "linear")), "stroke")
+    assert told.says == "r.1 is asked for 2 % strain below rest at bar 1 count 1; nothing goes there."
+
+
+def test_pins_too_close_are_told_with_what_is_lacking(make_rig):
+    snag = Snag("pin", None, 0.0, 4.0, 4.5, 4.0, "s", -1, 3)
+    told = tell(snag, Teller(_track((1.0, 0.1, "linear")), make_rig(1), _say))
+    assert told.says == "What must happen from bar 1 count 1 to bar 2 count 1 takes 4.50 s; the pins leave 4.00 s."
+
+
+def test_fibers_asked_for_the_same_are_told_in_one_sentence(make_rig):
+    tracks = _track((0.25, 0.3, "linear"))
+    (snag,) = check(tracks, make_rig(1), abilities_of(make_rig(1))).snags
+    told = tell(snag, Teller(tracks, make_rig(4), _say), [0, 1, 2, 3])
+    assert told.says.startswith("r.1-4 are asked to fill in 0.25 s")
+    assert told.says.endswith("they need 0.50 s.")
+
+
+@pytest.mark.parametrize(
+    ("names", "said"),
+    [
+        (["a.1"], "a.1"),
+        (["a.1", "a.2"], "a.1 and a.2"),
+        (["a.1", "a.2", "a.3", "b"], "a.1-3 and b"),
+        (["a.1", "a.3", "a.5"], "a.1, a.3 and a.5"),
+        (["a.1", "a.3", "a.5", "a.7", "a.8", "a.9"], "a.1, a.3, a.5 and a.7-9"),
+        (["a.1", "a.3", "a.5", "a.7", "a.9", "b", "c"], "a.1, a.3, a.5 and 4 more"),
+    ],
+)
+def test_names_in_a_row_are_written_as_a_score_writes_them(names, said):
+    assert named(names) == said
+
+
+def test_a_list_of_none_is_empty():
+    assert listed([]) == ""
+
+
+def test_places_are_spoken():
+    assert place_in_words("5:2.5") == "bar 5 count 2.5"
+
+
+@pytest.mark.parametrize(
+    ("needs", "has", "said"),
+    [(0.72, 0.31, ("0.72", "0.31")), (0.7204, 0.7199, ("0.7204", "0.7199")), (12.0, 10.0, ("12.00", "10.00"))],
+)
+def test_two_numbers_are_told_apart(needs, has, said):
+    assert two(needs, has) == said
