@@ -19,6 +19,9 @@ Index = NDArray[np.int64]
 
 STEPS = NAMES.index("step")
 
+LONGEST_S = 1_000_000
+"""A score may last so long: as long as a place in seconds may be written."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Moments:
@@ -79,6 +82,7 @@ def moments(starts: Starts, lines: Lines, tempo: TempoMap, rig: Rig, faults: lis
     found = Moments(order, chain, start, cut, end, instance, row, opens, before, leaves, arrives, until)
     _check_starts(found, starts, rig, faults)
     _check_lines(found, starts, lines, rig, faults)
+    _check_length(found, starts, faults)
     return found
 
 
@@ -180,6 +184,15 @@ def _check_lines(found: Moments, starts: Starts, lines: Lines, rig: Rig, faults:
                     "a length that holds all its lines",
                 )
             )
+
+
+def _check_length(found: Moments, starts: Starts, faults: list[Fault]) -> None:
+    """No instance may end later than seconds can be told apart to a nanosecond; the entry that ends last is named."""
+    last = np.argmax(found.end) if len(found.end) else 0
+    latest = float(max(found.end.max(initial=0.0), found.until.max(initial=0.0)))
+    if latest > LONGEST_S:
+        span = starts.entries[starts.entry[found.order[last]]].span
+        faults.append(fault_at(span, f"the score lasts {latest:.4g} s", f"at most {LONGEST_S} s", "cut it in parts"))
 
 
 def _playing(found: Moments, starts: Starts, rig: Rig, move: int) -> str:
