@@ -76,7 +76,7 @@ def segments_at(tracks: Tracks, times_s: ArrayLike) -> NDArray[np.int64]:
     if times.ndim == 1 and len(times) > FEW:
         found = np.empty((tracks.fibers, len(times)), dtype=np.int64)
         for fiber, (begin, end) in enumerate(zip(first, last, strict=True)):
-            found[fiber] = begin + np.searchsorted(tracks.time_s[begin + 1 : end + 1], times, side="right")
+            found[fiber] = begin + tracks.time_s[begin + 1 : end + 1].searchsorted(times, side="right")
         return found
     low = np.broadcast_to(first[:, None], (tracks.fibers, times.shape[-1])).copy()
     high = np.broadcast_to(last[:, None], low.shape).copy()

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from composer.motion import segments_at
 from composer.simulate.run import Block
 from composer.tracks import HOLD, SAME_INSTANT_S, Tracks, durations, end_strain, fiber_of
 
@@ -95,25 +96,22 @@ class LandingLog:
 
     def _pass(self, times: Array, strain: Array) -> None:
         """When each move was done, looked for until the second move after it begins."""
-        for fiber in range(self._tracks.fibers):
-            begin, end = self._tracks.first[fiber : fiber + 2]
-            now = begin + np.searchsorted(self._tracks.time_s[begin + 1 : end], times + SAME_INSTANT_S, side="right")
-            move = self._latest[now]
-            for _ in range(2):
-                moves = np.flatnonzero(move >= 0)
-                which = move[moves]
-                over = self._way[which] * (strain[fiber, moves] - self._goal[which])
-                done = moves[over >= -SAME_INSTANT_S]
-                segment, at = np.unique(move[done], return_index=True)
-                at = done[at]
-                self._passed[segment] = np.minimum(self._passed[segment], self._when(times, strain[fiber], segment, at))
-                move = np.where(move >= 0, self._previous[move], -1)
+        move = self._latest[segments_at(self._tracks, times + SAME_INSTANT_S)]
+        for _ in range(2):
+            over = self._way[move] * (strain - self._goal[move])
+            # A fiber that was past its goal a tick before, in the same move, has been seen.
+            news = (over >= -SAME_INSTANT_S) & (move >= 0)
+            news[:, 1:] &= ~news[:, :-1] | (move[:, 1:] != move[:, :-1])
+            fiber, at = np.nonzero(news)
+            segment = move[fiber, at]
+            np.minimum.at(self._passed, segment, self._when(times, strain, segment, fiber, at))
+            move = np.where(move >= 0, self._previous[move], -1)
 
-    def _when(self, times: Array, strain: Array, segment: Index, at: Index) -> Array:
+    def _when(self, times: Array, strain: Array, segment: Index, fiber: Index, at: Index) -> Array:
         """The instant at which a fiber, past its goal at tick `at`, passed it on the straight line from the tick before."""
         before = np.maximum(at - 1, 0)
-        step = strain[at] - strain[before]
-        over = strain[at] - self._goal[segment]
+        step = strain[fiber, at] - strain[fiber, before]
+        over = strain[fiber, at] - self._goal[segment]
         back = np.clip(np.divide(over, step, out=np.zeros_like(step), where=step != 0.0), 0.0, 1.0)
         return times[at] - back * (times[at] - times[before])
 

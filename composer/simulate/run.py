@@ -98,9 +98,9 @@ def tail_s(abilities: Abilities) -> float:
 
 def _sent(motion: Motion, rig: Rig, number: NDArray[np.int64], tick: float, behind: Array) -> Array:
     """Commands (F, B) of such numbers: number m is in force from m ticks on, for fibers that respond `behind` the slowest."""
-    ends = (number + 1) * tick
+    # One more in front: each tick starts where the one before ends.
+    ends = np.append(number, number[-1] + 1) * tick
     if behind.any():
         ends = ends + behind[:, None]
     wanted = on_grid(motion, ends, strain_in)
-    rate = (wanted - on_grid(motion, ends - tick, strain_in)) / tick
-    return commands(rig, motion.abilities, wanted, rate)
+    return commands(rig, motion.abilities, wanted[:, 1:], np.diff(wanted, axis=1) / tick)
