@@ -4,7 +4,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.retime.events import Events
-from composer.retime.rows import PIN_ROW, Rows
+from composer.retime.rows import HOLD_ROW, MOVE_ROW, ORDER_ROW, PIN_ROW, Rows
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -21,8 +21,7 @@ def polish(events: Events, rows: Rows, shift_s: Array) -> Array:
     more than the solver's tolerance.
     """
     shift = np.where(np.abs(shift_s) < STILL_S, 0.0, shift_s)
-    size = np.diff(rows.matrix.indptr)
-    simple = (size <= 2) & (rows.kind != PIN_ROW)
+    simple = np.isin(rows.kind, (MOVE_ROW, HOLD_ROW, ORDER_ROW))
     held = _held(rows, len(shift))
     later, earlier, least = _pairs(rows, np.flatnonzero(simple))
     by_place = np.append(events.place, -1)

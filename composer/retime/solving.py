@@ -7,11 +7,12 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.duration import least_durations
-from composer.retime.cuts import Span, duty_rows, duty_spans
+from composer.retime.air_cuts import overdrawn, share_rows, whole_rows
+from composer.retime.cuts import duty_rows, duty_spans
 from composer.retime.events import Events, events_of, knot_times, with_waits
 from composer.retime.hold import hold_rows
 from composer.retime.local import Least, least_cost
-from composer.retime.rows import ABOVE_ROW, Rows, duration_rows, joined, order_rows, picked, pin_rows
+from composer.retime.rows import ABOVE_ROW, Rows, duration_rows, joined, no_rows, order_rows, picked, pin_rows
 from composer.retime.terms import Terms, all_terms
 from composer.rig.model import Rig
 from composer.tracks import MOVE, STEP, Tracks
@@ -25,6 +26,9 @@ ROUNDS = 200
 
 GIVEN_UP_S = 1e-6
 """A row that even at a high price stays broken by more than this is one that no times can keep."""
+
+CLOSER, CLOSER_ROUNDS, NEAR = 12, 12, 0.05
+"""Where air is short: how often a clean answer is bettered, in how many rounds each, and what share of the store is near."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -101,10 +105,18 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
 
     Rows over more than two events that no times can keep are given up, as few as a high price on each finds.
     """
-    rows, known, given_up = programme.rows, set(), 0
+    events = programme.events
+    rows, given_up, bound = programme.rows, 0, np.nan
+    coils: set[tuple[int, int]] = set()
+    air: set[tuple[int, int]] = set()
+    shares = no_rows(events)
     free: Flags | None = None
     for _ in range(ROUNDS):
-        least = least_cost(programme.events, rows, programme.terms, free, whole, limit_s)
+        least = least_cost(events, joined([rows, shares]), programme.terms, free, whole, limit_s)
+        if least is None and len(shares.least):
+            # The rows about earlier times may stand in one another's way: the latest alone are true to the times at hand.
+            shares = picked(shares, np.arange(len(shares.least) // 2, len(shares.least)))
+            continue
         if least is None:
             rows, dropped = _keepable(programme, rows, whole, limit_s)
             if not dropped:
@@ -113,12 +125,55 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
             continue
         free = least.free
         now = at_times(programme, least.shift_s)
-        spans: list[Span] = duty_spans(now, rig, abilities, known)
+        new = duty_spans(now, rig, abilities, coils)
+        coils.update(new)
+        if new:
+            rows = joined([rows, duty_rows(new, programme.tracks, events, rig, abilities)])
+            continue
+        spans = overdrawn(now, rig, abilities)
+        if spans:
+            more = whole_rows(spans, now, events, least.shift_s, rig, abilities, air)
+            if len(more.least):
+                rows = joined([rows, more])
+                continue
+        if not len(shares.least):
+            bound = least.bound
         if not spans:
-            return Answer(least, rows, given_up)
-        known.update(spans)
-        rows = joined([rows, duty_rows(spans, programme.tracks, programme.events, rig, abilities)])
-    return Answer(least, rows, given_up)
+            break
+        shares = joined([shares, share_rows(spans, now, events, least.shift_s, rig, abilities)])
+    if least is None:
+        return None
+    if len(shares.least) and not spans:
+        least, shares = _closer(programme, rig, abilities, rows, least, shares, limit_s)
+    bound = least.bound if np.isnan(bound) else bound
+    return Answer(replace(least, bound=bound), joined([rows, shares]), given_up)
+
+
+def _closer(
+    programme: Programme, rig: Rig, abilities: Abilities, rows: Rows, best: Least, shares: Rows, limit_s: float
+) -> tuple[Least, Rows]:
+    """A cheaper answer than one that keeps the air, and its rows about it, if there is one near: sequential programming.
+
+    The rows about the way there are let go, and the spans that are tight are made linear about the answer itself; if the
+    programme then finds nothing cheaper, no small change of times is.
+    """
+    events = programme.events
+    for _ in range(CLOSER):
+        now = at_times(programme, best.shift_s)
+        about = share_rows(overdrawn(now, rig, abilities, NEAR), now, events, best.shift_s, rig, abilities)
+        for _ in range(CLOSER_ROUNDS):
+            found = least_cost(events, joined([rows, about]), programme.terms, best.free, False, limit_s)
+            if found is None or found.cost >= best.cost * (1.0 - 1e-6):
+                return best, shares
+            now = at_times(programme, found.shift_s)
+            spans = overdrawn(now, rig, abilities)
+            if not spans and not duty_spans(now, rig, abilities, set()):
+                best, shares = found, about
+                break
+            about = joined([about, share_rows(spans, now, events, found.shift_s, rig, abilities)])
+        else:
+            break
+    return best, shares
 
 
 def _keepable(programme: Programme, rows: Rows, whole: bool, limit_s: float) -> tuple[Rows, int]:
