@@ -4,18 +4,20 @@ import os
 from collections.abc import Callable
 
 from PySide6.QtCore import QBuffer, QByteArray, QIODevice
-from PySide6.QtGui import QFontDatabase, QGuiApplication, QImage, QPainter
+from PySide6.QtGui import QFontDatabase, QImage, QPainter
+from PySide6.QtWidgets import QApplication
 
-_application: QGuiApplication | None = None
+_application: QApplication | None = None
 
 
 def ready() -> None:
     """Have Qt ready to draw text: without a screen unless a window's application runs already."""
     global _application
-    if QGuiApplication.instance() is None:
+    if QApplication.instance() is None:
         # A file needs no screen, and one that is named but cannot be reached would end the program.
         os.environ["QT_QPA_PLATFORM"] = "offscreen"
-        _application = QGuiApplication(["drawcord"])
+        # One that could show windows too, as a process can only have one.
+        _application = QApplication(["drawcord"])
 
 
 def has_letters() -> bool:
