@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from composer.faults import Fault
 from composer.rig.model import Rig
+from composer.score.bounds import RANGES
 from composer.score.expand_lines import Lines
 from composer.score.expand_starts import MOST_FAULTS, Starts
 from composer.score.model import Entry, Span
@@ -19,7 +20,7 @@ Index = NDArray[np.int64]
 
 STEPS = NAMES.index("step")
 
-LONGEST_S = 1_000_000
+LONGEST_S = float(RANGES["seconds"].high)
 """A score may last so long: as long as a place in seconds may be written."""
 
 
@@ -192,7 +193,7 @@ def _check_length(found: Moments, starts: Starts, faults: list[Fault]) -> None:
     latest = float(max(found.end.max(initial=0.0), found.until.max(initial=0.0)))
     if latest > LONGEST_S:
         span = starts.entries[starts.entry[found.order[last]]].span
-        faults.append(fault_at(span, f"the score lasts {latest:.4g} s", f"at most {LONGEST_S} s", "cut it in parts"))
+        faults.append(fault_at(span, f"the score lasts {latest:.4g} s", f"at most {LONGEST_S:.0f} s", "cut it in parts"))
 
 
 def _playing(found: Moments, starts: Starts, rig: Rig, move: int) -> str:

@@ -22,6 +22,9 @@ CURVE, SUDDENLY = NAMES.index("curve"), NAMES.index("sudden")
 NO_WAY = 1e-12
 """Strain below which a move goes nowhere and is a hold."""
 
+SETTLED = 1e-13
+"""Strain to which values must agree that were worked out one from the other; far below NO_WAY, above what rounding does."""
+
 NUDGE = 1e-7
 """Step in strain for a slope by differences."""
 
@@ -161,7 +164,7 @@ def _solve_values(ways: _Ways, abilities: Abilities) -> None:
     for _ in range(len(cut)):
         a = _shifted(b, ways.leads)[cut]
         reached = _cut_sudden(ways, abilities, cut, a)
-        if np.all(np.abs(reached - b[cut]) <= 1e-15):
+        if np.all(np.abs(reached - b[cut]) <= SETTLED):
             break
         # Newton's step for the whole row at once; a move that has not begun yet ends where it starts.
         slope = (_cut_sudden(ways, abilities, cut, a + NUDGE) - reached) / NUDGE

@@ -2,20 +2,19 @@
 
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
-from fractions import Fraction
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from composer.faults import Fault, Faults, Where
+from composer.score.bounds import RANGES
+from composer.score.checks import DEFAULT_METER
 from composer.score.model import Meter, Place, Score, Span, Tempo
 
 Array = NDArray[np.float64]
 
 DEFAULT_RATE = 60
-DEFAULT_METER = 4
-SLOWEST, FASTEST = 1, 1000
-"""Counts a minute that a score may ask for."""
+"""Counts a minute where the score names no tempo."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -239,10 +238,9 @@ def _in_order(
     timed: list[tuple[float, Tempo]] = []
     for tempo in tempi:
         for rate in (tempo.rate, tempo.to):
-            if rate is not None and not SLOWEST <= rate <= FASTEST:
-                faults.append(
-                    fault_at(tempo.span, f"a tempo of {_said(rate)} counts a minute", f"{SLOWEST} to {FASTEST} counts a minute")
-                )
+            if rate is not None and not RANGES["tempo"].holds(rate):
+                found = f"a tempo of {float(rate):g} counts a minute"
+                faults.append(fault_at(tempo.span, found, f"counts a minute, {RANGES['tempo'].told}"))
                 break
         else:
             try:
@@ -255,7 +253,3 @@ def _in_order(
     musical.sort(key=lambda change: change[0])
     timed.sort(key=lambda change: change[0])
     return musical, timed
-
-
-def _said(value: Fraction) -> str:
-    return f"{float(value):g}"

@@ -1,10 +1,14 @@
 from itertools import pairwise
 
 import numpy as np
+import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from composer.limits.abilities import abilities_of
 from composer.score.layers import BEZIER, affine_scan
+
+from .playing import faster_when_full, played, thread
 
 
 @given(st.lists(st.tuples(st.sampled_from([0.0, 1.0, 0.5, 0.123, 1e-3]), st.floats(-2, 2)), min_size=1, max_size=300))
@@ -30,3 +34,14 @@ def test_powers_of_a_bezier_curve_give_what_de_casteljau_gives(points, u):
     while len(points) > 1:
         points = [p + (q - p) * u for p, q in pairwise(points)]
     assert abs(np.polyval(curve[::-1], u) - points[0]) < 1e-12
+
+
+@pytest.mark.parametrize("every", ["0.00001s", "0.001s", "0.02s"])
+def test_a_long_row_of_sudden_moves_that_hang_on_one_another_settles_in_a_few_rounds(make_rig, monkeypatch, every):
+    rounds = []
+    monkeypatch.setattr("composer.score.layers.affine_scan", lambda *way: rounds.append(1) or affine_scan(*way))
+    rig = make_rig(1)
+    text = f"phrase p\n  0.05 full sudden\n  0.1 rest sudden\nsection a at 1:1\n  r.1 p times 5000 every {every}\n"
+    one = thread(played(text, rig, faster_when_full(abilities_of(rig))), 0)
+    assert len(rounds) < 20
+    assert np.abs(np.array(one.end[:-1]) - one.start[1:]).max() < 1e-11

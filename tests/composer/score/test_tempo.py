@@ -8,7 +8,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from composer.faults import Faults
-from composer.score.model import Meter, Place, Span
+from composer.score.model import Meter, Place, Span, Tempo
 from composer.score.reading import parse_score
 from composer.score.tempo import TempoMap, tempo_map
 
@@ -83,6 +83,12 @@ def test_a_count_that_its_bar_does_not_have_is_a_fault():
 def test_changes_that_contradict_one_another_are_faults(text, says):
     with pytest.raises(Faults, match=says):
         mapped(text)
+
+
+def test_a_tempo_that_no_one_can_count_is_a_fault():
+    tempo = Tempo(Fraction(1001), None, None, None, Span("t.score", 1, 1, 2))
+    with pytest.raises(Faults, match="1001 counts a minute; expected counts a minute, 1 to 1000"):
+        tempo_map(replace(parse_score("", "t.score")[0], tempi=(tempo,)))
 
 
 def test_a_meter_that_changes_inside_a_bar_is_a_fault():
