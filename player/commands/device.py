@@ -1,13 +1,17 @@
 """`drawcord device`: a simulated valve driver behind a pseudo-terminal."""
 
+import fcntl
 import signal
+import subprocess
 import sys
 from collections.abc import Callable
-from contextlib import ExitStack
+from contextlib import ExitStack, suppress
 
 import click
 
 from composer.faults import fault, nearest
+
+PIPE_BYTES = 1 << 20
 
 
 @click.command("device")
@@ -27,17 +31,16 @@ def command(rig: str, driver: str | None, mishap: str | None, log: str | None, n
     if mishap is not None and mishap not in MISHAPS:
         rows = "\n".join(f"   {known:<14} {row.says}" for known, row in MISHAPS.items())
         raise click.UsageError(f"no fault '{mishap}'. {nearest(mishap, MISHAPS)}\nThe faults are:\n{rows}")
-    from composer.limits.abilities import abilities_of
     from composer.load import load_rig
+    from player.outputs.serial_bench import BenchProcess
     from player.outputs.serial_board import SerialBoard
     from player.outputs.serial_ports import announced
     from player.wire.rules import Build
-    from player.wire.simulated import Bench
 
     loaded = load_rig(rig)
     drivers = [board.name for board in loaded.drivers]
     driver = _choose(rig, drivers, driver)
-    bench = Bench(loaded, abilities_of(loaded), driver)
+    bench = BenchProcess(loaded, driver, mishap)
     try:
         called = name if name is not None else f"{loaded.name} {driver}, simulated"
         build = Build(called, bench.drives, senses_strain=True, senses_supply=True, rig=loaded.fingerprint)
@@ -47,6 +50,8 @@ def command(rig: str, driver: str | None, mishap: str | None, log: str | None, n
         board = SerialBoard(build, bench, MISHAPS[mishap] if mishap else Mishap(""), _log(log, stack))
         for number in (signal.SIGINT, signal.SIGTERM, signal.SIGHUP):
             signal.signal(number, lambda *_: board.stop())
+        stack.callback(bench.close)
+        bench.start()
         stack.enter_context(announced(board.path, called + (f", fault {mishap}" if mishap else "")))
         click.echo(board.path)
         sys.stdout.flush()
@@ -69,15 +74,19 @@ def _choose(rig: str, drivers: list[str], asked: str | None) -> str:
 
 
 def _log(path: str | None, stack: ExitStack) -> Callable[[str], None]:
-    """Where the lines of the log go; each is in the file before the next set is due."""
+    """Where the lines of the log go: through a pipe to a process that writes them.
+
+    So a disk that is busy holds no set up, and a board that is killed leaves a log that is whole.
+    """
     if path is None:
         return lambda line: None
     try:
-        # Ends with the stack, after the board.
-        file = open(path, "w", buffering=1, encoding="utf-8", newline="\n")  # noqa: SIM115
+        with open(path, "wb") as file:
+            writer = subprocess.Popen(["cat"], stdin=subprocess.PIPE, stdout=file, bufsize=0, start_new_session=True)
     except (OSError, ValueError) as error:
         raise fault(path, f"the log cannot be written: {getattr(error, 'strerror', None) or error}") from None
-    stack.callback(file.close)
+    with suppress(OSError, AttributeError):
+        fcntl.fcntl(writer.stdin, fcntl.F_SETPIPE_SZ, PIPE_BYTES)
     full = False
 
     def write(line: str) -> None:
@@ -85,10 +94,17 @@ def _log(path: str | None, stack: ExitStack) -> Callable[[str], None]:
         if full:
             return
         try:
-            file.write(line)
-        except OSError as error:
+            writer.stdin.write(line.encode())
+        except OSError:
             # The board goes on: a log that is full must not leave valves open.
             full = True
-            click.echo(f"{path}: the log ends here: {error.strerror}", err=True)
+            click.echo(f"{path}: the log ends here: it could not be written", err=True)
 
+    def end() -> None:
+        with suppress(OSError):
+            writer.stdin.close()
+        with suppress(subprocess.TimeoutExpired):
+            writer.wait(10.0)
+
+    stack.callback(end)
     return write

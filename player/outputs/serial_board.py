@@ -12,18 +12,16 @@ from contextlib import suppress
 from random import Random
 
 from player.engine.clock import SteadyClock
+from player.outputs.serial_bench import BenchProcess
 from player.wire.device import Applied, Changed, Device, Told
 from player.wire.messages import ARMED, FAULTS, IDLE, STATUSES
 from player.wire.mishaps import STRIKES_AFTER_S, Mishap
 from player.wire.rules import Build
-from player.wire.simulated import Bench
 
 SPIN_S = 0.0003
 """The last fraction before a due time is spent asking the time: the system wakes a sleeper up to this much too late."""
-STEP_S = 0.002
-GAP_S = 0.0015
-"""The simulated rig is moved in steps of STEP_S, in gaps between sets of at least GAP_S; but at least every LONGEST_STEP_S."""
-LONGEST_STEP_S = 0.02
+LOOK_S = 0.05
+"""A signal is heeded, and a mishap strikes, at most so long after its time."""
 PRIORITY = 10
 JUMP_S = 0.1
 BACKLOG_BYTES = 65536
@@ -38,7 +36,7 @@ class SerialBoard:
     log: takes lines of CSV under HEADER; times in µs of the board's clock, host_s the machine's monotonic clock
     """
 
-    def __init__(self, build: Build, bench: Bench, mishap: Mishap, log: Callable[[str], None]):
+    def __init__(self, build: Build, bench: BenchProcess, mishap: Mishap, log: Callable[[str], None]):
         self._build, self._bench, self._mishap, self._log = mishap.build(build), bench, mishap, log
         self._clock = SteadyClock()
         self._chance = Random(1)
@@ -52,7 +50,7 @@ class SerialBoard:
         self._muted = mishap.mute
         self._struck = False
         self._armed_s: float | None = None
-        self._begin_s = self._moved_s = self._clock.now()
+        self._begin_s = self._clock.now()
         self._leaving: deque[tuple[float, bytes]] = deque()
         self._waiting = bytearray()
         log(HEADER)
@@ -90,22 +88,14 @@ class SerialBoard:
         """Wait for bytes or a due time, whichever is first; then do it."""
         now_s = self._clock.now()
         due_s = self._when(self._device.next_us())
-        gap_s = due_s - now_s
-        behind_s = now_s - self._moved_s
-        if behind_s >= LONGEST_STEP_S or (behind_s >= STEP_S and gap_s > GAP_S):
-            self._bench.step(behind_s)
-            self._moved_s = now_s
-            return
-        until_s = min(due_s, self._moved_s + STEP_S if gap_s > GAP_S else due_s)
-        if self._leaving:
-            until_s = min(until_s, self._leaving[0][0])
-        wait_s = until_s - now_s - SPIN_S
+        until_s = min(due_s, self._leaving[0][0]) if self._leaving else due_s
+        wait_s = min(until_s - now_s - SPIN_S, LOOK_S)
         wants = [self._master] if self._waiting else []
         readable = select.select([self._master], wants, [], max(0.0, wait_s))[0]
         if readable:
             self._receive()
         else:
-            if until_s == due_s:
+            if due_s - self._clock.now() <= 2.0 * SPIN_S:
                 self._clock.wait_until(due_s)
             self._after(self._device.advance(self._us()))
         self._strike()
@@ -168,7 +158,7 @@ class SerialBoard:
         elif what == "tell":
             self._after(self._device.fail(*self._mishap.tells, self._us()))
         else:
-            self._mishap.bench(self._bench)
+            self._bench.strike()
 
     def _send(self) -> None:
         out = self._device.to_send()

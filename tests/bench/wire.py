@@ -5,14 +5,17 @@ python tests/bench/wire.py [--seconds 60] [--rate 500] [--channels 48] [--ahead 
 
 import argparse
 import csv
+import os
 import select
 import subprocess
 import sys
 import tempfile
 import time
+from contextlib import suppress
 from pathlib import Path
 
 from composer.load import load_rig
+from player.engine.clock import SteadyClock
 from player.outputs.serial_line import SerialLine
 from player.wire import messages as m
 from player.wire.frames import FrameReader, frame
@@ -40,6 +43,18 @@ def costs(channels: int) -> None:
     print(
         f"a set of {channels}: written in {write:.1f} us, read in {read:.1f} us, {write / copy:.0f} and {read / copy:.0f} copies"
     )
+
+
+def bare_us(rate: float, seconds: float) -> list[int]:
+    """How late a loop is that does nothing but wait, sorted: what the machine itself costs."""
+    with suppress(OSError):
+        os.sched_setscheduler(0, os.SCHED_FIFO, os.sched_param(10))
+    late, due = [], time.monotonic()
+    for _ in range(int(rate * seconds)):
+        due += 1.0 / rate
+        SteadyClock(0.0003).wait_until(due)
+        late.append(round((time.monotonic() - due) * 1e6))
+    return sorted(late)
 
 
 def play(path: str, rig: int, channels: int, rate: float, seconds: float, ahead: float) -> Host:
@@ -96,9 +111,10 @@ def main() -> None:
     print(
         f"{host.state}: {len(late_us)} sets at {asked.rate:g} Hz, {host.late} came after their due time, {host.skipped} skipped"
     )
+    bare = bare_us(asked.rate, min(asked.seconds, 20.0))
     for share in (0.5, 0.99, 0.999, 1.0):
-        at = late_us[min(len(late_us) - 1, int(share * len(late_us)))]
-        print(f"   {100 * share:5.1f} % applied within {at} us of due, {at * asked.rate / 1e4:.2f} % of a tick")
+        at, least = (row[min(len(row) - 1, int(share * len(row)))] for row in (late_us, bare))
+        print(f"   {100 * share:5.1f} % applied within {at} us of due; a bare loop on this machine: {least} us")
     print(f"   board's clock known to {host.clock.bound_us(time.monotonic()):.0f} us, bad frames {host.bad + host.unreadable}")
 
 

@@ -197,6 +197,9 @@ def test_a_log_is_whole_up_to_the_last_line_when_the_board_is_killed(rig, tmp_pa
         Played(path, rig).armed().close()
         process.kill()
         process.wait(timeout=10)
+        end = time.monotonic() + 10.0
+        while len(rows(log)) < 2 and time.monotonic() < end:
+            time.sleep(0.01)
     assert [row["note"] for row in rows(log)][:2] == ["vented to idle: hello", "idle to armed: arm"]
     assert log.read_text().endswith("\n")
 
