@@ -41,7 +41,7 @@ def costs(channels: int) -> None:
     read = cost_us(lambda: m.decode(reader.feed(sent)[0]))
     copy = cost_us(lambda: bytearray(sent))
     print(
-        f"a set of {channels}: written in {write:.1f} us, read in {read:.1f} us, {write / copy:.0f} and {read / copy:.0f} copies"
+        f"a set of {channels}: written in {write:.1f} us, read in {read:.1f} us, {write / copy:.0f}, {read / copy:.0f} copies"
     )
 
 
