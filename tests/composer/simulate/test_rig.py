@@ -124,3 +124,21 @@ def test_reset_brings_everything_back_to_the_start(make_rig):
     sim.step(0.005, [0.0, 0.0])
     assert sim.strain.tolist() == [0.0, 0.0]
     assert np.isnan(sim.pressure_kPa).all()
+
+
+@settings(deadline=None, max_examples=40)
+@given(
+    receiver_L=st.floats(0.001, 1.0),
+    compressor_L_min=st.floats(0.0, 200.0),
+    sent=st.lists(st.floats(0.0, 1.0), min_size=1, max_size=30),
+    tick=st.sampled_from([0.0005, 0.01]),
+)
+def test_a_receiver_of_any_size_is_never_below_empty_nor_above_the_cut_out_and_its_air_is_accounted_for(
+    make_rig, receiver_L, compressor_L_min, sent, tick
+):
+    sim = simulated(make_rig(8, receiver_L=receiver_L, compressor_L_min=compressor_L_min, air_mL=20.0))
+    for share in sent:
+        sim.step(tick, np.full(8, share))
+        assert -1e-9 <= sim.supply_kPa <= 800.0 + 1e-9
+    stored = receiver_L / 100.0 * (800.0 - sim.supply_kPa)
+    assert stored == pytest.approx(sim.drawn_L - sim.delivered_L, abs=1e-9)
