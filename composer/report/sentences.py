@@ -7,7 +7,6 @@ import numpy as np
 
 from composer.limits.snag import Snag
 from composer.rig.model import Rig
-from composer.score.shapes import NAMES
 from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
 MOST_NAMES = 4
@@ -135,11 +134,11 @@ def _move(snag: Snag, teller: Teller, who: _Who, needs_s: float, manner: str, wh
 def _in_a_row(snag: Snag, teller: Teller) -> str:
     """How many moves the stretch of a snag goes through, where it tells of the worst of them."""
     tracks = teller.tracks
-    here = slice(tracks.first[snag.fiber], tracks.first[snag.fiber + 1])
-    start = tracks.time_s[here]
-    end = np.append(start[1:], start[-1])
-    within = (start < snag.to_s - SAME_INSTANT_S) & (end > snag.from_s + SAME_INSTANT_S) & (tracks.manner[here] != HOLD)
-    count = np.count_nonzero(within)
+    here, there = tracks.first[snag.fiber], tracks.first[snag.fiber + 1]
+    start = tracks.time_s[here:there]
+    begin = here + max(int(np.searchsorted(start, snag.from_s + SAME_INSTANT_S, side="right")) - 1, 0)
+    end = here + int(np.searchsorted(start, snag.to_s - SAME_INSTANT_S, side="left"))
+    count = np.count_nonzero(tracks.manner[begin:end] != HOLD)
     return f" (the worst of {count} moves in a row)" if count > 1 else ""
 
 
@@ -168,9 +167,12 @@ def _jump(snag: Snag, teller: Teller, who: _Who) -> Told:
         f"{who.verb('is', 'are')} asked to jump by {abs(way) * 100.0:.3g} % strain at {_at(teller, snag.from_s)}, "
         "in no time at all; no fiber can."
     )
-    if tracks.shape[knot] == NAMES.index("step"):
-        return Told(says, "Write 'sudden' in place of 'step', or give the move a duration.")
-    return Told(says, "Leave out the phrase's line at 0, so that it starts from what is there, or bring the fiber there first.")
+    if tracks.manner[knot] != STEP:
+        return Told(says, "Give the move a duration.")
+    return Told(
+        says,
+        "Write 'sudden' in place of 'step'. Where it is a phrase's line at 0, leave that out, or bring the fiber there first.",
+    )
 
 
 def _accel(snag: Snag, teller: Teller, who: _Who) -> Told:
@@ -182,10 +184,13 @@ def _accel(snag: Snag, teller: Teller, who: _Who) -> Told:
 def _stroke(snag: Snag, teller: Teller, who: _Who) -> Told:
     at = _at(teller, snag.from_s)
     if snag.needs < 0.0:
-        says = f"{who.verb('is', 'are')} asked for {-snag.needs * 100.0:.3g} % strain below rest at {at}; nothing goes there."
+        says = (
+            f"{who.verb('is', 'are')} asked for up to {-snag.needs * 100.0:.3g} % strain below rest from {at} on; "
+            "nothing goes there."
+        )
         return Told(says, "Let the entries that add up ask for less there; time does not mend it.")
     needs, has = two(snag.needs * 100.0, snag.has * 100.0)
-    says = f"{who.verb('is', 'are')} asked for {needs} % strain at {at}; {who.then('can', 'can')} use {has} %."
+    says = f"{who.verb('is', 'are')} asked for up to {needs} % strain from {at} on; {who.then('can', 'can')} use {has} %."
     return Told(says, f"Scale it to {np.floor(1000.0 * snag.has / snag.needs) / 1000.0:.3f} of that; time does not mend it.")
 
 

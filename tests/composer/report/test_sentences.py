@@ -91,7 +91,7 @@ def test_every_other_kind_has_its_sentence(make_rig):
         "air": (make_rig(1, air_mL=9000.0, receiver_L=1.0, compressor_L_min=60.0), _track((2.0, 0.3, "linear"))),
     }
     said = {kind: _told(rig, tracks, kind) for kind, (rig, tracks) in cases.items()}
-    assert said["stroke"].says == "r.1 is asked for 40.00 % strain at bar 1 count 4; it can use 30.00 %."
+    assert said["stroke"].says == "r.1 is asked for up to 40.00 % strain from bar 1 count 4 on; it can use 30.00 %."
     assert said["stroke"].mends == "Scale it to 0.750 of that; time does not mend it."
     assert (
         said["accel"].says
@@ -115,7 +115,7 @@ def test_every_other_kind_has_its_sentence(make_rig):
 
 def test_below_rest_is_told_as_below_rest(make_rig):
     told = _told(make_rig(1), _track((1.0, -0.02, "linear")), "stroke")
-    assert told.says == "r.1 is asked for 2 % strain below rest at bar 1 count 1; nothing goes there."
+    assert told.says == "r.1 is asked for up to 2 % strain below rest from bar 1 count 1 on; nothing goes there."
 
 
 def test_pins_too_close_are_told_with_what_is_lacking(make_rig):
