@@ -52,7 +52,7 @@ def charts_of(physics: list[Physics], supply: float) -> Charts:
         np.array(pressure),
         np.array(strain),
         np.full(len(physics), supply),
-        np.array([_reach(each) for each in physics]),
+        np.array([reach_of(each) for each in physics]),
         supply,
     )
 
@@ -68,20 +68,20 @@ def look_up(table: Array, which: NDArray[np.int64], share: Array) -> Array:
     return low + part * (flat.take(row + 1, axis=0) - low)
 
 
-def _reach(physics: Physics) -> float:
+def reach_of(physics: Physics) -> float:
     """The strain at which the shape stops, just short of where a braid would need endless pressure."""
     return physics.stop * (1.0 - 1e-9)
 
 
 def _by_strain(physics: Physics) -> Array:
-    strain = np.linspace(0.0, _reach(physics), POINTS)
+    strain = np.linspace(0.0, reach_of(physics), POINTS)
     return np.column_stack(rates.pressures(physics, strain))
 
 
 def _by_pressure(physics: Physics, supply: float) -> Array:
     pressure = np.linspace(0.0, supply, POINTS)
     # Strain over pressure from pressure over strain, which rises: denser in strain than the chart is in pressure.
-    strain = np.linspace(0.0, _reach(physics), 8 * POINTS)
+    strain = np.linspace(0.0, reach_of(physics), 8 * POINTS)
     holds_in, holds_out = rates.pressures(physics, strain)
     way_in, way_out = np.interp(pressure, holds_in, strain), np.interp(pressure, holds_out, strain)
     columns = np.empty((POINTS, ENTERS + SUPPLIES))

@@ -16,7 +16,7 @@ KEYS = (
 
 @dataclass(frozen=True, slots=True)
 class Helix:
-    """A helix of constant curvature and torsion in 1/m; its radius and its rise a turn in m follow."""
+    """A helix of constant curvature and torsion in 1/m; its radius and its rise a turn in m follow, inf for a straight line."""
 
     curvature: float
     torsion: float
@@ -24,12 +24,16 @@ class Helix:
     @property
     def radius(self) -> float:
         """Radius in m: k / (k² + t²)."""
-        return self.curvature / (self.curvature**2 + self.torsion**2)
+        return self.curvature / self._square if self._square > 0.0 else math.inf
 
     @property
     def rise(self) -> float:
         """Rise in m along the axis in one turn: 2 pi t / (k² + t²)."""
-        return 2.0 * math.pi * self.torsion / (self.curvature**2 + self.torsion**2)
+        return 2.0 * math.pi * self.torsion / self._square if self._square > 0.0 else math.inf
+
+    @property
+    def _square(self) -> float:
+        return self.curvature**2 + self.torsion**2
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

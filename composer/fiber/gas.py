@@ -17,7 +17,8 @@ RHO_ANR = 1.185
 
 RHO_WATER = 998.2
 MU_WATER = 1.0016e-3
-"""Water at 20 °C: density in kg/m³, viscosity in Pa s."""
+SOUND_WATER = 1482.0
+"""Water at 20 °C: density in kg/m³, viscosity in Pa s, speed of sound in m/s."""
 
 
 def air_viscosity(T: float | np.ndarray) -> float | np.ndarray:

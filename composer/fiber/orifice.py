@@ -65,5 +65,5 @@ def water_flow(area: float, tube_resistance: float, drop: Array) -> Array:
     a = RHO_WATER / (2.0 * area**2)
     size = np.abs(drop)
     # The root of a Q² + R Q = drop in the form that loses no digits where the tube governs.
-    flow = 2.0 * size / (tube_resistance + np.sqrt(tube_resistance**2 + 4.0 * a * size))
-    return np.sign(drop) * flow
+    below = tube_resistance + np.sqrt(tube_resistance**2 + 4.0 * a * size)
+    return np.sign(drop) * np.divide(2.0 * size, below, out=np.zeros(np.shape(below)), where=below > 0.0)

@@ -44,14 +44,16 @@ def pressure_before(pipe: Pipe, flow: Array, after: Array, T: float = T_ANR) -> 
     """
     if pipe.length <= 0.0:
         return np.maximum(after, 0.0)
+    flow = flow / pipe.parallel
     flux = flow / pipe.area
     low = np.maximum(after, flux * np.sqrt(R_AIR * T))
     resistance = friction_factor(4.0 * flow / (np.pi * pipe.bore * air_viscosity(T))) * pipe.length / pipe.bore
-    add = flux**2 * R_AIR * T
-    square = low**2 + add * resistance
-    for _ in range(12):
-        square = low**2 + add * (resistance + np.log(square / low**2))
-    return np.sqrt(square)
+    # x = (p1/p2)² solves x = 1 + share (f L/D + ln x); Newton's steps come down to it from above, share being at most 1.
+    share = flux**2 * R_AIR * T / low**2
+    x = (1.0 + share * resistance) / (1.0 - share / 2.0)
+    for _ in range(8):
+        x = x - (x - 1.0 - share * (resistance + np.log(x))) / np.maximum(1.0 - share / x, 1e-9)
+    return low * np.sqrt(x)
 
 
 def fill_flow(path: Path, supply: Array, fiber: Array) -> Array:

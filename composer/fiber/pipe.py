@@ -12,20 +12,21 @@ Array = NDArray[np.float64]
 
 @dataclass(frozen=True, slots=True)
 class Pipe:
-    """A smooth tube of circular bore; bore and length in m."""
+    """A smooth tube of circular bore; bore and length in m; `parallel` such tubes side by side share the flow."""
 
     bore: float
     length: float
+    parallel: int = 1
 
     @property
     def area(self) -> float:
-        """Cross-section in m²."""
+        """Cross-section in m² of one."""
         return np.pi / 4.0 * self.bore**2
 
     @property
     def volume(self) -> float:
-        """Dead volume in m³."""
-        return self.area * self.length
+        """Dead volume in m³ of all."""
+        return self.area * self.length * self.parallel
 
 
 def delay(pipe: Pipe, T: float = T_ANR) -> float:
@@ -66,7 +67,7 @@ def isothermal_flow(pipe: Pipe, upstream: Array, downstream: Array, T: float = T
         if np.all(np.abs(new - flow) <= 1e-12 * (new + 1e-30)):
             break
         flow = new
-    return np.where(p1 > p2, flow, 0.0).reshape(shape)
+    return pipe.parallel * np.where(p1 > p2, flow, 0.0).reshape(shape)
 
 
 def _choked(p1: Array, resistance: Array) -> Array:
@@ -79,4 +80,4 @@ def _choked(p1: Array, resistance: Array) -> Array:
 
 def water_resistance(pipe: Pipe) -> float:
     """Pressure drop of a tube over its flow of water, in Pa s/m³: 128 mu L / (pi D⁴) (Hagen and Poiseuille)."""
-    return 128.0 * MU_WATER * pipe.length / (np.pi * pipe.bore**4) if pipe.length > 0.0 else 0.0
+    return 128.0 * MU_WATER * pipe.length / (np.pi * pipe.bore**4 * pipe.parallel)

@@ -6,7 +6,7 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.fiber.gas import R_AIR, RHO_ANR
+from composer.fiber.gas import R_AIR, RHO_ANR, SOUND_WATER
 from composer.fiber.mounting import Supply
 from composer.fiber.orifice import water_area, water_flow
 from composer.fiber.path import Path, exhaust_flow, fill_flow
@@ -45,6 +45,13 @@ class Physics:
     ambient: float
     water: bool
 
+    @property
+    def delay(self) -> float:
+        """Seconds, whole milliseconds, that a change at the valve takes to the fiber at the speed of sound."""
+        if self.water:
+            return round(sum(pipe.length for pipe in self.path.pipes) / SOUND_WATER, 3)
+        return round(self.path.delay, 3)
+
 
 def worst_supply(supply: Supply) -> float:
     """The lowest gauge pressure in Pa that the fibers are promised for: regulator, or receiver where that is lower."""
@@ -74,9 +81,7 @@ def gas_volume(physics: Physics, e: Array) -> Array:
 
 def capacity(physics: Physics, e: Array, pressure: Array, slope: Array) -> Array:
     """Mass in kg that raises the pressure by one Pa while the fiber moves: (V + n P V' e'(P)) / (n R T); `pressure` gauge."""
-    swell = physics.count * physics.shape.volume_slope(e) / slope
-    absolute = pressure + physics.ambient
-    return (gas_volume(physics, e) + physics.n * absolute * swell) / (physics.n * R_AIR * physics.path.T)
+    return _mass_by_strain(physics, e, pressure, slope) / slope
 
 
 def fastest(physics: Physics, e: Array, supply: float) -> tuple[Array, Array]:
@@ -94,9 +99,16 @@ def fastest(physics: Physics, e: Array, supply: float) -> tuple[Array, Array]:
     flow_in = fill_flow(physics.path, np.full(e.shape, supply + physics.ambient), p_in + physics.ambient)
     flow_out = exhaust_flow(physics.path, p_out + physics.ambient, physics.ambient)
     return (
-        flow_in / capacity(physics, e, p_in, slope_in) / slope_in,
-        flow_out / capacity(physics, e, p_out, slope_out) / slope_out,
+        flow_in / _mass_by_strain(physics, e, p_in, slope_in),
+        flow_out / _mass_by_strain(physics, e, p_out, slope_out),
     )
+
+
+def _mass_by_strain(physics: Physics, e: Array, pressure: Array, slope: Array) -> Array:
+    """Mass in kg for a strain of 1, (V dP/de + n P V') / (n R T): `capacity` times dP/de, fit for a slope of nothing too."""
+    swell = physics.count * physics.shape.volume_slope(e)
+    absolute = pressure + physics.ambient
+    return (gas_volume(physics, e) * slope + physics.n * absolute * swell) / (physics.n * R_AIR * physics.path.T)
 
 
 def drawn(physics: Physics, e: Array) -> Array:

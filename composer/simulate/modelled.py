@@ -54,7 +54,7 @@ class ModelledFibers:
 
     def after(self, was: Moved, dt_s: float, command: Array, supply_kPa: float) -> Blown:
         """The fibers after `dt_s` of a constant command (M,), in drive units, with such a pressure in the receiver."""
-        parts = max(1, int(np.ceil(dt_s / LONGEST_S - 1e-9)))
+        parts = parts_of(dt_s)
         now, drawn = was, 0.0
         for _ in range(parts):
             now = self._part(now, dt_s / parts, command, min(supply_kPa * 1e3, self.charts.supply))
@@ -95,7 +95,7 @@ class ModelledFibers:
         now = np.minimum(np.maximum(played, ends[:, charts.IN]), ends[:, charts.OUT])
         drawn = np.maximum(self._mass(pressure, pressure_now, edge, room, takes), 0.0).sum()
         return Blown(
-            self._settled(was.strain, played, now, h), pressure_now / 1e3, float(free_litres(drawn)), pressure_now, now
+            settled(self.settle, was.strain, played, now, h), pressure_now / 1e3, float(free_litres(drawn)), pressure_now, now
         )
 
     def _goal(
@@ -142,12 +142,18 @@ class ModelledFibers:
         to_edge = np.clip(now, np.minimum(pressure, edge), np.maximum(pressure, edge)) - pressure
         return to_edge * room + (now - pressure - to_edge) * takes
 
-    def _settled(self, strain: Array, before: Array, now: Array, h: float) -> Array:
-        """The lag of elastomer and braid (Kelvin and Voigt): exact for a strain that goes straight from `before` to `now`."""
-        lags = self.settle > 0.0
-        tau = np.where(lags, self.settle, 1.0)
-        behind = tau * (now - before) / h
-        return np.where(lags, now - behind + (strain - before + behind) * np.exp(-h / tau), now)
+
+def parts_of(dt_s: float) -> int:
+    """The number of equal steps, none longer than LONGEST_S, that a tick is cut into."""
+    return max(1, int(np.ceil(dt_s / LONGEST_S - 1e-9)))
+
+
+def settled(settle: Array, strain: Array, before: Array, now: Array, h: float) -> Array:
+    """The lag of elastomer and braid (Kelvin and Voigt), `settle` in s: exact where strain goes straight from `before` to `now`."""
+    lags = settle > 0.0
+    tau = np.where(lags, settle, 1.0)
+    behind = tau * (now - before) / h
+    return np.where(lags, now - behind + (strain - before + behind) * np.exp(-h / tau), now)
 
 
 def modelled_fibers(rig: Rig, abilities: Abilities, members: Index) -> ModelledFibers:

@@ -5,21 +5,29 @@ from collections.abc import Callable
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from composer.drive.inverse import members_by_kind
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
-from composer.simulate import rated, receiver
+from composer.simulate import modelled, rated, receiver, watered
 from composer.simulate.moved import Moved, Simulated
 from composer.simulate.response import Response
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-KINDS: dict[str, Callable[[Rig, Abilities, Index], Simulated]] = {"rated": rated.rated_fibers}
-"""How fibers of each kind move: a further kind is one file beside this one and one row here."""
+LAWS: dict[str, Callable[[Rig, Abilities, Index], Simulated]] = {
+    "rated": rated.rated_fibers,
+    "air": modelled.modelled_fibers,
+    "water": watered.watered_fibers,
+}
+"""How fibers move, rated ones and modelled ones by what fills them: a further law is one file beside this one and one row."""
 
-HALVINGS = 40
-"""Halvings in search of the supply that a step ends with: enough to leave no more than rounding."""
+SAME_KPA = 1e-6
+"""Supplies closer than this are one."""
+
+MOST_TRIES = 60
+"""Tries in search of the supply that a step ends with; most find it in five."""
+
+Attempt = Callable[[float], tuple[list[Moved], receiver.Receiver]]
 
 
 class SimulatedRig:
@@ -31,12 +39,16 @@ class SimulatedRig:
 
     def __init__(self, rig: Rig, abilities: Abilities):
         self._supply = rig.supply
-        members = members_by_kind(rig)
-        self._members: list[Index] = list(members.values())
-        self._kinds = [KINDS[kind](rig, abilities, which) for kind, which in members.items()]
+        physics = [abilities.capabilities[which].physics for which in abilities.which]
+        law = np.array(["rated" if each is None else rig.supply.medium for each in physics], dtype=object)
+        members: dict[str, Index] = {name: np.flatnonzero(law == name) for name in dict.fromkeys(law)}
+        self._members = list(members.values())
+        self._kinds = [LAWS[name](rig, abilities, which) for name, which in members.items()]
         self._indifferent_kPa = max((kind.indifferent_kPa for kind in self._kinds), default=0.0)
         self._fibers = len(rig.fibers)
-        delay = np.array([fiber.mounting.valve.switch_ms * 1e-3 for fiber in rig.fibers])
+        # A rating says what valve, tube and fiber do together; a modelled fiber's tube comes on top of its valve.
+        tube = np.array([0.0 if each is None else each.delay for each in physics])
+        delay = tube + np.array([fiber.mounting.valve.switch_ms * 1e-3 for fiber in rig.fibers])
         # At rest a set-point is 0 and a valve is shut, which is 0 too.
         self._response = Response(delay, np.zeros(self._fibers))
         self.reset()
@@ -84,14 +96,33 @@ class SimulatedRig:
         if min(ends.supply_kPa, self.supply_kPa) < self._indifferent_kPa:
             # Short of air: the step is taken with the supply that it ends with (implicit), which falls the less the
             # lower it is, so that there is one answer, never below empty, for a receiver of any size and any tick.
-            low, high = 0.0, max(self._receiver.supply_kPa, ends.supply_kPa, self._indifferent_kPa)
-            for _ in range(HALVINGS):
-                middle = (low + high) / 2
-                moved, ends = attempt(middle)
-                low, high = (middle, high) if ends.supply_kPa > middle else (low, middle)
-            moved, ends = attempt(low)
+            moved, ends = self._in_short_supply(attempt, ends.supply_kPa)
         self._receiver = ends
         self._show(moved)
+
+    def _in_short_supply(self, attempt: Attempt, end_kPa: float) -> tuple[list[Moved], receiver.Receiver]:
+        """The step whose supply is the one that it ends with, to SAME_KPA: by false position, after Illinois.
+
+        Always the side on which it ends with no less than it was taken with, so that a receiver is never below empty.
+        """
+        low, high = 0.0, max(self._receiver.supply_kPa, end_kPa, self._indifferent_kPa)
+        best, highest = attempt(low), attempt(high)
+        above = apart = best[1].supply_kPa
+        below = highest[1].supply_kPa - high
+        if below >= -SAME_KPA:
+            return highest
+        for _ in range(MOST_TRIES):
+            if apart <= SAME_KPA or high - low <= SAME_KPA:
+                break
+            supply = (low * below - high * above) / (below - above)
+            tried = attempt(supply)
+            over = tried[1].supply_kPa - supply
+            if over >= 0.0:
+                # The end that stays counts half, which keeps the search from crawling up on one side.
+                low, best, apart, above, below = supply, tried, over, over, below / 2.0
+            else:
+                high, below, above = supply, over, above / 2.0
+        return best
 
     def _show(self, moved: list[Moved]) -> None:
         self._moved = moved
