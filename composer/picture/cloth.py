@@ -156,7 +156,7 @@ def _names(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
 
 
 def _snags(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
-    """A hatch over each snag, and a strip above the cloth that shows when there is any."""
+    """A hatch over each snag of a fiber, and a strip above the cloth that shows when there is any."""
     look = plan.look
     least = look.px(LEAST_MARK)
     brush = look.hatch()
@@ -164,15 +164,14 @@ def _snags(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
     painter.setClipRect(QRectF(plan.left, plan.strip_top, plan.width, plan.top + rows.height - plan.strip_top))
     for snag in scene.snags:
-        if snag.to_s < scene.from_s or snag.from_s > scene.to_s:
+        if snag.fiber is None or snag.to_s < scene.from_s or snag.from_s > scene.to_s:
             continue
         left, right = _span(plan, scene, snag, least)
         painter.fillRect(QRectF(left, plan.strip_top + look.px(2), right - left, look.px(5)), colour(palette.LIMIT))
-        if snag.fiber is not None:
-            top, bottom = plan.top + rows.top[snag.fiber], plan.top + rows.bottom[snag.fiber]
-            if bottom - top < least:
-                top, bottom = (top + bottom - least) / 2, (top + bottom + least) / 2
-            painter.fillRect(QRectF(left, top, right - left, bottom - top), brush)
+        top, bottom = plan.top + rows.top[snag.fiber], plan.top + rows.bottom[snag.fiber]
+        if bottom - top < least:
+            top, bottom = (top + bottom - least) / 2, (top + bottom + least) / 2
+        painter.fillRect(QRectF(left, top, right - left, bottom - top), brush)
     painter.restore()
 
 

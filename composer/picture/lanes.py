@@ -45,14 +45,9 @@ def _lane(painter: QPainter, look: Look, lane: Lane, box: QRectF, scene: Scene) 
     def y_of(value: float) -> float:
         return box.bottom() - inset - (value - low) / (high - low) * (box.height() - 2 * inset)
 
-    if lane.supply:
-        for snag in scene.snags:
-            if snag.fiber is None:
-                begin = box.left() + (snag.from_s - scene.from_s) / (scene.to_s - scene.from_s) * box.width()
-                end = box.left() + (snag.to_s - scene.from_s) / (scene.to_s - scene.from_s) * box.width()
-                shown = QRectF(begin, box.top(), max(end - begin, look.px(5)), box.height()).intersected(box)
-                painter.fillRect(shown, look.hatch())
     _scale(painter, look, lane, box, y_of)
+    if lane.supply:
+        _short(painter, look, box, scene)
     if lane.limit is not None and low <= lane.limit <= high:
         y = y_of(lane.limit)
         painter.setPen(pen(palette.LIMIT, max(1.0, 1.2 * look.scale), 255, (5.0, 3.0)))
@@ -69,10 +64,22 @@ def _lane(painter: QPainter, look: Look, lane: Lane, box: QRectF, scene: Scene) 
         painter.drawPolyline(QPolygonF([QPointF(a, b) for a, b in zip(x, y, strict=True)]))
 
 
+def _short(painter: QPainter, look: Look, box: QRectF, scene: Scene) -> None:
+    """Snags of the air: a hatch along the foot of the lane, which leaves the curve to be read."""
+    for snag in scene.snags:
+        if snag.fiber is None:
+            begin, end = (
+                box.left() + (at - scene.from_s) / (scene.to_s - scene.from_s) * box.width() for at in (snag.from_s, snag.to_s)
+            )
+            high = look.px(8)
+            shown = QRectF(begin, box.bottom() - high, max(end - begin, look.px(5)), high).intersected(box)
+            painter.fillRect(shown, look.hatch())
+
+
 def _scale(painter: QPainter, look: Look, lane: Lane, box: QRectF, y_of: Callable[[float], float]) -> None:
     """The lane's name, and round values at its left."""
     line = look.px(13)
-    values = value_ticks(lane.low, lane.high, max(2, int(box.height() / (1.4 * line))))
+    values = value_ticks(lane.low, lane.high, max(3, int(box.height() / (1.4 * line))))
     wide = max((look.width(f"{value:g}", 10) for value in values), default=0.0)
     for value in values:
         y = y_of(value)
