@@ -180,4 +180,8 @@ def knot_times(events: Events, shift_s: Array, tracks: Tracks) -> Array:
     hung = events.written_s[at] + shift_s[at] + events.offset_s
     # A tied start that lies where it belongs keeps its written bits too.
     stays = ~moved & ((events.offset_s == 0.0) | (np.abs(hung - tracks.time_s) <= SAME_INSTANT_S))
-    return np.where((events.event < 0) | stays, tracks.time_s, hung)
+    times = np.where((events.event < 0) | stays, tracks.time_s, hung)
+    # What is left of a wait before a tied start may come out a rounding below nothing.
+    tied = np.flatnonzero(events.offset_s != 0.0)
+    times[tied] = np.maximum(times[tied], times[tied - 1])
+    return times

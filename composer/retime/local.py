@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from composer.retime.events import Events
 from composer.retime.programme import solve
 from composer.retime.rows import Rows
-from composer.retime.terms import Terms, contract, cost, spread
+from composer.retime.terms import Terms, contract, cost, spread, tilted
 
 Array = NDArray[np.float64]
 Flags = NDArray[np.bool_]
@@ -56,6 +56,7 @@ def least_cost(
     shift, bound, dual = np.zeros(count), 0.0, np.zeros(len(rows.least))
     order = np.argsort(events.written_s, kind="stable")
     solved = not free.any()
+    priced, most = tilted(events, terms)
     while True:
         lack = rows.least - rows.matrix @ shift
         broken = np.flatnonzero(lack > BROKEN_S)
@@ -69,14 +70,15 @@ def least_cost(
         following = free[events.hits :] & (terms.behind[events.hits :] >= 0)
         free[events.own_hit[events.hits :][following]] = True
         chosen = _inside(rows, free)
-        left = contract(events, terms, free)
+        left = contract(events, priced, free)
         found = solve(rows, chosen, np.flatnonzero(free), left, limit_s, slack_price)
         if found is None:
             return None
         shift = np.zeros(count)
         shift[free] = found.shift_s
-        shift = spread(events, terms, free, left, shift)
-        bound, solved = found.bound, True
+        shift = spread(events, priced, free, left, shift)
+        # Divided by the tilt, the dual values satisfy the programme without it.
+        bound, solved = found.bound / most, True
         dual = np.zeros(len(rows.least))
         dual[chosen] = found.dual
 

@@ -20,6 +20,10 @@ LIGHTEST = 1e-9
 """What a term weighs at least, in strokes, so that an event whose moves go nowhere still stays where it is."""
 
 
+SCALE = 1e3
+"""HiGHS is given strokes times this, so that its tolerance on duals is small beside the tilt that breaks ties."""
+
+
 class Unsolved(Exception):
     """The solver gave up; `status` and `message` are its own."""
 
@@ -70,6 +74,7 @@ def solve(
         ),
         shape=(n, width),
     )
+    weight = weight * SCALE
     price = np.zeros(width)
     price[len(loose) :] = np.concatenate((weight[simple], weight[simple], weight[tied], weight[tied]))
     lower = np.zeros(width)
@@ -91,7 +96,7 @@ def solve(
     if len(soft):
         give = sparse.csr_array((np.ones(len(soft)), (soft, np.arange(len(soft)))), shape=(len(chosen), len(soft)))
         above = sparse.hstack([above, give], format="csr")
-        price, lower = np.append(price, np.full(len(soft), slack_price)), np.append(lower, np.zeros(len(soft)))
+        price, lower = np.append(price, np.full(len(soft), slack_price * SCALE)), np.append(lower, np.zeros(len(soft)))
         as_columns = sparse.hstack([as_columns, sparse.csr_array((n, len(soft)))], format="csr")
         ties = None if ties is None else sparse.hstack([ties, sparse.csr_array((t, len(soft)))], format="csr")
 
@@ -112,5 +117,5 @@ def solve(
         return None
     if found.status != 0:
         raise Unsolved(found.status, found.message)
-    dual = np.maximum(-found.ineqlin.marginals, 0.0) if len(chosen) else np.empty(0)
+    dual = np.maximum(-found.ineqlin.marginals, 0.0) / SCALE if len(chosen) else np.empty(0)
     return Solved(as_columns @ found.x, float(dual @ rows.least[chosen]), dual)

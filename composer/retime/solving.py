@@ -24,6 +24,9 @@ Flags = NDArray[np.bool_]
 ROUNDS = 200
 """How many rounds of cutting planes are tried; each adds at least one row that the times at hand break."""
 
+AIR_ROUNDS = 40
+"""How many rounds close in on times that keep the air before what is left is reported as it is."""
+
 GIVEN_UP_S = 1e-6
 """A row that even at a high price stays broken by more than this is one that no times can keep."""
 
@@ -111,12 +114,14 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
     air: set[tuple[int, int]] = set()
     shares = no_rows(events)
     free: Flags | None = None
+    rounds = 0
     for _ in range(ROUNDS):
         least = least_cost(events, joined([rows, shares]), programme.terms, free, whole, limit_s)
         if least is None and len(shares.least):
-            # The rows about earlier times may stand in one another's way: the latest alone are true to the times at hand.
-            shares = picked(shares, np.arange(len(shares.least) // 2, len(shares.least)))
-            continue
+            # Rows about earlier times may stand in one another's way. The latest alone are true to the times at hand; what
+            # they ask beyond what can be is given at a price, so that the next round starts nearer.
+            shares = picked(shares, np.arange((len(shares.least) + 1) // 2, len(shares.least)))
+            least = least_cost(events, joined([rows, shares]), programme.terms, free, whole, limit_s, _price(programme))
         if least is None:
             rows, dropped = _keepable(programme, rows, whole, limit_s)
             if not dropped:
@@ -138,8 +143,9 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
                 continue
         if not len(shares.least):
             bound = least.bound
-        if not spans:
+        if not spans or rounds >= AIR_ROUNDS:
             break
+        rounds += 1
         shares = joined([shares, share_rows(spans, now, events, least.shift_s, rig, abilities)])
     if least is None:
         return None
@@ -178,12 +184,16 @@ def _closer(
 
 def _keepable(programme: Programme, rows: Rows, whole: bool, limit_s: float) -> tuple[Rows, int]:
     """The rows less those over more than two events that stay broken at a high price, and how many those are."""
-    price = 1e4 * max(1.0, float(programme.events.weight.max(initial=0.0)))
-    least = least_cost(programme.events, rows, programme.terms, None, whole, limit_s, price)
+    least = least_cost(programme.events, rows, programme.terms, None, whole, limit_s, _price(programme))
     if least is None:
         return rows, 0
     broken = (rows.kind >= ABOVE_ROW) & (rows.least - rows.matrix @ least.shift_s > GIVEN_UP_S)
     return picked(rows, ~broken), int(np.count_nonzero(broken))
+
+
+def _price(programme: Programme) -> float:
+    """What a second of a row broken costs, in strokes: far more than what any row is worth in a programme that has times."""
+    return 1e4 * max(1.0, float(programme.events.weight.max(initial=0.0)))
 
 
 def at_times(programme: Programme, shift_s: Array) -> Tracks:
