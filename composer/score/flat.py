@@ -12,7 +12,8 @@ from numpy.typing import NDArray
 from composer.faults import fault
 from composer.rig.model import Rig
 from composer.score.bounds import BOUNDS, most
-from composer.score.layers import BEZIER, NO_WAY
+from composer.score.expand_ways import NO_WAY
+from composer.score.layers import BEZIER
 from composer.score.model import Score, Span
 from composer.score.shapes import PROGRESS
 from composer.score.tempo import TempoMap

@@ -8,7 +8,8 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.tables import travel_time_s
-from composer.score.layers import NO_WAY, Knots
+from composer.score.expand_ways import NO_WAY
+from composer.score.layers import Knots
 from composer.score.shapes import NAMES
 from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
