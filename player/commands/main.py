@@ -94,3 +94,7 @@ def run(arguments: list[str]) -> int:
             err=True,
         )
         return 2
+
+
+if __name__ == "__main__":
+    main()

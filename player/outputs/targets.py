@@ -72,10 +72,11 @@ def _serial(context: Context, drivers: tuple[str, ...], target: Target) -> Outpu
     port, baud = target.rest, DEFAULT_BAUD
     if with_baud := _BAUD.fullmatch(target.rest):
         port = with_baud["port"]
-        if not with_baud["baud"].isdecimal() or not BAUDS[0] <= int(with_baud["baud"]) <= BAUDS[1]:
+        digits = with_baud["baud"]
+        if not re.fullmatch("[0-9]{1,9}", digits) or not BAUDS[0] <= int(digits) <= BAUDS[1]:
             expected = f"a whole number from {BAUDS[0]} to {BAUDS[1]} after '@'"
-            raise _wrong(target, f"a rate of '{with_baud['baud']}' baud", expected)
-        baud = int(with_baud["baud"])
+            raise _wrong(target, f"a rate of '{digits[:20]}' baud", expected)
+        baud = int(digits)
     if not port:
         raise _wrong(target, "no port after 'serial:'", "serial:PORT or serial:PORT@BAUD", "'drawcord ports' lists those found")
     return Board(context.rig, context.abilities, drivers[0], port, baud, context.clock)
