@@ -1,46 +1,67 @@
 """From the strain wanted to what a valve driver is sent, and how far ahead it must be sent to land on the count.
 
 Drive units: `pressure` and `strain` drives take a set-point, 0 to 1 (full pressure, usable stroke); `valve` drives a signed
-opening, 1 filling fully open, -1 exhausting fully open, 0 shut. A further kind of fiber is one row of `SENT`.
+opening, 1 filling fully open, -1 exhausting fully open, 0 shut.
 """
 
-from collections.abc import Callable
-
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
 
-from composer.limits import tables
+from composer.drive.modelled import ModelledInverse, modelled_inverse
+from composer.drive.rated import RatedInverse
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
 
 Array = NDArray[np.float64]
-Index = NDArray[np.int64]
+
+LOOK_S = 0.25
+"""How long before a move its fiber is made ready for it, in s: how far ahead the inverse wants to know the score."""
 
 
-def commands(rig: Rig, abilities: Abilities, wanted_strain: ArrayLike, wanted_rate: ArrayLike) -> Array:
-    """What to send, in drive units, so that fibers have these strains (1) and rates (1/s); both (F,) or (F, T).
+class Inverse:
+    """What to send, tick after tick, so that a rig's fibers have the strains wanted; it remembers where friction holds them.
 
-    Clipped to what a drive can take. Where the opening of a valve is sent over a tick, let `wanted_rate` be the mean over
-    that tick, (strain at its end - strain at its start) / tick, so that nothing adds up from tick to tick.
+    lead_s: (F,) seconds by which each fiber's commands must run ahead of the score; soon_s: (F,) the lag of each fiber, so
+    far ahead it wants to know the score at least. With `on` false nothing leads and friction is left out, which shows
+    what the inverse buys.
     """
-    strain, rate = np.asarray(wanted_strain, dtype=float), np.asarray(wanted_rate, dtype=float)
-    sent = np.empty(np.broadcast_shapes(strain.shape, rate.shape))
-    strain, rate = np.broadcast_to(strain, sent.shape), np.broadcast_to(rate, sent.shape)
-    for kind, members in members_by_kind(rig).items():
-        sent[members] = SENT[kind](rig, abilities, members, strain[members], rate[members])
-    return sent
 
+    def __init__(self, rig: Rig, abilities: Abilities, on: bool = True):
+        physics = [abilities.capabilities[which].physics for which in abilities.which]
+        by_valve = is_valve_drive(rig)
+        # Water answers at once to its valve: what is known of its rates is all there is to invert.
+        by_rates = np.array(
+            [each is None or (each.water and valve) for each, valve in zip(physics, by_valve, strict=True)], bool
+        )
+        plain, modelled = np.flatnonzero(by_rates), np.flatnonzero(~by_rates)
+        self._laws: list[tuple[NDArray[np.int64], RatedInverse | ModelledInverse]] = []
+        if plain.size:
+            self._laws.append((plain, RatedInverse(abilities, plain, by_valve[plain])))
+        if modelled.size:
+            self._laws.append((modelled, modelled_inverse(rig, abilities, modelled, on)))
+        tube = np.array([0.0 if each is None else each.path.delay for each in physics])
+        switch = np.array([fiber.mounting.valve.switch_ms * 1e-3 for fiber in rig.fibers])
+        # A rating says what valve, tube and fiber do together; a modelled fiber's tube comes on top of its valve.
+        self.lead_s = (switch + tube) * on
+        self.soon_s = np.array([0.0 if each is None else each.settle for each in physics])
+        self.reset()
 
-def lead_s(rig: Rig, abilities: Abilities, on: bool = True) -> Array:
-    """Seconds (F,) by which each fiber's commands must run ahead of the score; all 0 where `on` is false.
+    def reset(self, strain: Array | None = None) -> None:
+        """Begin again, all fibers at rest and vented, or standing at `strain` (F,)."""
+        begin = np.zeros(len(self.lead_s)) if strain is None else strain
+        self._told = [law.at(begin[members]) for members, law in self._laws]
 
-    For a rated fiber the response time of its valve: its rates are what a bench saw of valve, tube and fiber together.
-    """
-    lead = np.zeros(len(rig.fibers))
-    if on:
-        for kind, members in members_by_kind(rig).items():
-            lead[members] = LEADS[kind](rig, abilities, members)
-    return lead
+    def commands(self, strain: Array, soon: Array, ahead: Array, tick_s: float) -> Array:
+        """What to send (F, T), in drive units, over ticks that are to end at `strain` (F, T); each call goes on from the last.
+
+        soon: (F, T) strain wanted `soon_s` later, ahead: (F, T) LOOK_S later, both `strain` where nobody knows; clipped to
+        what a drive can take.
+        """
+        sent = np.empty(strain.shape)
+        for number, (members, law) in enumerate(self._laws):
+            part = (strain[members], soon[members], ahead[members])
+            sent[members], self._told[number] = law.commands(self._told[number], *part, tick_s)
+        return sent
 
 
 def is_valve_drive(rig: Rig) -> NDArray[np.bool_]:
@@ -51,32 +72,3 @@ def is_valve_drive(rig: Rig) -> NDArray[np.bool_]:
 def vented(rig: Rig) -> Array:
     """The command (F,) that lets every fiber's air out as fast as it goes."""
     return np.where(is_valve_drive(rig), -1.0, 0.0)
-
-
-def members_by_kind(rig: Rig) -> dict[str, Index]:
-    """The indices of the fibers of each kind that the rig has."""
-    kinds = np.array([fiber.type.kind for fiber in rig.fibers], dtype=object)
-    return {kind: np.flatnonzero(kinds == kind) for kind in dict.fromkeys(kinds)}
-
-
-def _rated_sent(rig: Rig, abilities: Abilities, members: Index, strain: Array, rate: Array) -> Array:
-    """A rated fiber: the strain as a share of its stroke, or the rate as a share of the fastest in its direction."""
-    beside = (slice(None),) + (None,) * (strain.ndim - 1)
-    share = np.clip(strain / abilities.stroke[members][beside], 0.0, 1.0)
-    by_valve = is_valve_drive(rig)[members]
-    if by_valve.any():
-        fiber = np.broadcast_to(members[beside], strain.shape)
-        opening = np.clip(rate / tables.rates(abilities, fiber, strain, rate > 0.0), -1.0, 1.0)
-        share = np.where(by_valve[beside], opening, share)
-    return share
-
-
-def _rated_lead(rig: Rig, abilities: Abilities, members: Index) -> Array:
-    return np.array([rig.fibers[member].mounting.valve.switch_ms * 1e-3 for member in members])
-
-
-SENT: dict[str, Callable[[Rig, Abilities, Index, Array, Array], Array]] = {"rated": _rated_sent}
-"""What is sent to each kind of fiber."""
-
-LEADS: dict[str, Callable[[Rig, Abilities, Index], Array]] = {"rated": _rated_lead}
-"""How far ahead each kind of fiber must be sent to."""

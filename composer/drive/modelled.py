@@ -18,9 +18,6 @@ from composer.rig.model import Rig
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-LOOK_S = 0.25
-"""How long before a move its fiber is brought to the edge of the friction band, in s."""
-
 STILL = 1e-9
 """A change of strain by less than this is none."""
 
@@ -36,8 +33,8 @@ class Told:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class ModelledInverse:
-    """M modelled fibers, arrays (M,): `limit` Pa gauge that a set-point of 1 means, `settle` s, `drive` 0 pressure, 1 strain,
-    2 valve."""
+    """M modelled fibers, arrays (M,): `limit` Pa gauge that a set-point of 1 means, `settle` in s, `drive` 0 pressure,
+    1 strain, 2 valve. With `leads` false nothing is led and friction is left out: the plain static curve."""
 
     charts: Charts
     which: Index
@@ -45,54 +42,81 @@ class ModelledInverse:
     limit: Array
     settle: Array
     drive: NDArray[np.int8]
+    leads: bool
 
-    def at_rest(self) -> Told:
-        """The memory of fibers at rest, vented."""
-        nothing = np.zeros(len(self.which))
-        return Told(nothing, nothing, nothing)
+    def at(self, strain: Array) -> Told:
+        """What is remembered of fibers that stand at strains (M,), blown up to them."""
+        pressure = self._holds(strain)[:, charts.HOLDS_IN]
+        return Told((strain > STILL).astype(float), strain, np.where(strain > STILL, pressure, 0.0))
 
     def commands(self, told: Told, strain: Array, soon: Array, ahead: Array, tick_s: float) -> tuple[Array, Told]:
-        """What to send over a tick that is to end at `strain` (M,), in drive units, and what to remember.
+        """What to send over ticks that are to end at `strain` (M, T), in drive units, and what to remember.
 
-        soon: (M,) strain wanted one lag later, ahead: (M,) strain wanted LOOK_S later; both are `strain` where nobody knows.
+        soon: (M, T) strain wanted one lag later, ahead: (M, T) some way later; both are `strain` where nobody knows.
         The lag is led by settle times rate, but no further than the score itself goes within it, since friction would keep
         what went too far.
         """
-        step = strain - told.strain
-        moving = np.abs(step) > STILL
-        coming = np.where(moving, step, ahead - strain)
-        side = np.where(coming > STILL, 1.0, np.where(coming < -STILL, 0.0, told.side))
-        led = strain + np.where(moving, step, 0.0) * self.settle / tick_s
-        low, high = np.minimum(strain, soon), np.maximum(strain, soon)
-        played = np.clip(np.clip(led, low, high), 0.0, self.stroke)
-        holds = look_up(self.charts.by_strain, self.which, played / self.charts.stroke[self.which])
+        step = np.diff(strain, axis=1, prepend=told.strain[:, None])
+        side, played = self._side(told, step, ahead - strain), strain
+        if self.leads:
+            led = strain + step * (self.settle / tick_s)[:, None]
+            played = np.clip(led, np.minimum(strain, soon), np.maximum(strain, soon))
+        played = np.clip(played, 0.0, self.stroke[:, None])
+        holds = self._holds(played)
         # At rest with no move to come, a fiber is vented whole and not just to the edge where it stops moving.
-        out = np.where(played > STILL, holds[:, charts.HOLDS_OUT], 0.0)
-        goal = out + side * (holds[:, charts.HOLDS_IN] - out)
-        sent = np.where(self.drive == 1, played / self.stroke, np.clip(goal / self.limit, 0.0, 1.0))
-        pressure = goal
+        out = np.where(played > STILL, holds[..., charts.HOLDS_OUT], 0.0)
+        goal = out + (side if self.leads else 0.5) * (holds[..., charts.HOLDS_IN] - out)
+        goal = np.where(self.leads | (played > STILL), goal, 0.0)
+        sent = np.where(
+            (self.drive == 1)[:, None], played / self.stroke[:, None], np.clip(goal / self.limit[:, None], 0.0, 1.0)
+        )
+        pressure = goal[:, -1]
         by_valve = self.drive == 2
         if by_valve.any():
-            opening, reached = self._opening(told, goal, tick_s)
-            sent, pressure = np.where(by_valve, opening, sent), np.where(by_valve, reached, goal)
-        return sent, Told(side, strain, pressure)
+            opening, pressure = self._openings(told, goal, strain, tick_s)
+            sent = np.where(by_valve[:, None], opening, sent)
+        return sent, Told(side[:, -1], strain[:, -1].copy(), pressure)
 
-    def _opening(self, told: Told, goal: Array, tick_s: float) -> tuple[Array, Array]:
-        """The signed opening (M,) that takes the pressure from where it is to `goal` in a tick, and where it will be then."""
-        row = look_up(self.charts.by_pressure, self.which, 0.5 * (told.pressure + goal) / self.charts.supply)
-        edges = look_up(self.charts.by_strain, self.which, told.strain / self.charts.stroke[self.which])
-        filling = goal > told.pressure
+    def _holds(self, strain: Array) -> Array:
+        """Pressures (..., 2) in Pa that hold strains (M, ...) on the way in and out."""
+        which = np.broadcast_to(self.which.reshape(-1, *[1] * (strain.ndim - 1)), strain.shape)
+        share = strain / self.charts.stroke[which]
+        return look_up(self.charts.by_strain, which.ravel(), share.ravel()).reshape(*strain.shape, 2)
+
+    @staticmethod
+    def _side(told: Told, step: Array, coming: Array) -> Array:
+        """The edge (M, T) of the band to be on: of the move under way, else of the next in sight, else where it was."""
+        way = np.where(np.abs(step) > STILL, step, coming)
+        known = np.abs(way) > STILL
+        latest = np.maximum.accumulate(np.where(known, np.arange(way.shape[1]), -1), axis=1)
+        side = np.take_along_axis((way > 0.0).astype(float), np.maximum(latest, 0), axis=1)
+        return np.where(latest >= 0, side, told.side[:, None])
+
+    def _openings(self, told: Told, goal: Array, strain: Array, tick_s: float) -> tuple[Array, Array]:
+        """Signed openings (M, T) that take the pressure to each goal in its tick as far as it goes, and where it ends (M,)."""
+        opening = np.empty_like(goal)
+        pressure, before = told.pressure, told.strain
+        for tick in range(goal.shape[1]):
+            opening[:, tick], pressure = self._opening(pressure, goal[:, tick], before, tick_s)
+            before = strain[:, tick]
+        return opening, pressure
+
+    def _opening(self, pressure: Array, goal: Array, strain: Array, tick_s: float) -> tuple[Array, Array]:
+        row = look_up(self.charts.by_pressure, self.which, 0.5 * (pressure + goal) / self.charts.supply)
+        edges = self._holds(strain)
+        filling = goal > pressure
         edge = np.where(filling, edges[:, charts.HOLDS_IN], edges[:, charts.HOLDS_OUT])
-        still = np.clip(edge, np.minimum(told.pressure, goal), np.maximum(told.pressure, goal)) - told.pressure
+        still = np.clip(edge, np.minimum(pressure, goal), np.maximum(pressure, goal)) - pressure
         takes = np.where(filling, row[:, charts.TAKES_IN], row[:, charts.TAKES_OUT])
-        mass = still * row[:, charts.ROOM_IN] + (goal - told.pressure - still) * takes
-        flow = np.where(filling, row[:, charts.ENTERS + charts.SUPPLIES - 1], row[:, charts.LEAVES])
-        wide = np.divide(mass, flow * tick_s, out=np.sign(mass), where=flow * tick_s > np.abs(mass))
-        share = np.divide(wide * flow * tick_s, mass, out=np.ones_like(mass), where=mass != 0.0)
-        return wide, told.pressure + np.clip(share, 0.0, 1.0) * (goal - told.pressure)
+        mass = still * row[:, charts.ROOM_IN] + (goal - pressure - still) * takes
+        most = tick_s * np.where(filling, row[:, charts.ENTERS + charts.SUPPLIES - 1], row[:, charts.LEAVES])
+        enough = most > np.abs(mass)
+        opening = np.divide(mass, most, out=np.sign(mass), where=enough)
+        share = np.divide(most, np.abs(mass), out=np.ones_like(mass), where=~enough & (mass != 0.0))
+        return opening, pressure + share * (goal - pressure)
 
 
-def modelled_inverse(rig: Rig, abilities: Abilities, members: Index) -> ModelledInverse:
+def modelled_inverse(rig: Rig, abilities: Abilities, members: Index, leads: bool) -> ModelledInverse:
     """The inverse of the modelled fibers among a rig's fibers, by their indices."""
     makes, which = np.unique(abilities.which[members], return_inverse=True)
     physics = [abilities.capabilities[make].physics for make in makes]
@@ -104,15 +128,5 @@ def modelled_inverse(rig: Rig, abilities: Abilities, members: Index) -> Modelled
         limit=np.array([each.limit for each in physics])[which],
         settle=np.array([each.settle for each in physics])[which],
         drive=np.array(drives, dtype=np.int8),
-    )
-
-
-def modelled_lead(rig: Rig, abilities: Abilities, members: Index) -> Array:
-    """Seconds (M,) by which commands run ahead: the valve's response and the way of the pressure through the tube."""
-    return np.array(
-        [
-            rig.fibers[member].mounting.valve.switch_ms * 1e-3
-            + abilities.capabilities[abilities.which[member]].physics.path.delay
-            for member in members
-        ]
+        leads=leads,
     )

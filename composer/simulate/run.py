@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.drive.inverse import commands, lead_s
+from composer.drive.inverse import LOOK_S, Inverse
 from composer.limits.abilities import Abilities
 from composer.limits.coil import coils_of
 from composer.motion import Motion, motion_of, on_grid, strain_in
@@ -52,7 +52,8 @@ def blocks(
     """
     tick = 1.0 / rate_Hz
     motion = motion_of(tracks, abilities)
-    lead = lead_s(rig, abilities, inverse)
+    sender = Inverse(rig, abilities, inverse)
+    lead = sender.lead_s
     longest = float(lead.max(initial=0.0))
     early = int(np.ceil(longest / tick - SAME_INSTANT_S))
     # Commands are due `longest` ahead of the ticks, which are `early` whole ticks less this part of one.
@@ -67,7 +68,7 @@ def blocks(
     size = max(1, BLOCK // max(1, tracks.fibers))
     for begin in range(-early, last + 1, size):
         ticks = np.arange(begin, min(begin + size, last + 1))
-        sent = _sent(motion, rig, ticks + early, tick, lead - longest)
+        sent = _sent(motion, sender, ticks + early, tick, lead - longest)
         time = ticks * tick
         strain, pressure = np.empty((tracks.fibers, len(ticks))), np.empty((tracks.fibers, len(ticks)))
         supply, duty = np.empty(len(ticks)), np.empty(len(ticks))
@@ -96,11 +97,10 @@ def tail_s(abilities: Abilities) -> float:
     return float(min((abilities.stroke / slowest).max(initial=0.0), LONGEST_TAIL_S))
 
 
-def _sent(motion: Motion, rig: Rig, number: NDArray[np.int64], tick: float, behind: Array) -> Array:
+def _sent(motion: Motion, sender: Inverse, number: NDArray[np.int64], tick: float, behind: Array) -> Array:
     """Commands (F, B) of such numbers: number m is in force from m ticks on, for fibers that respond `behind` the slowest."""
-    # One more in front: each tick starts where the one before ends.
-    ends = np.append(number, number[-1] + 1) * tick
-    if behind.any():
-        ends = ends + behind[:, None]
+    ends = (number + 1) * tick + behind[:, None]
     wanted = on_grid(motion, ends, strain_in)
-    return commands(rig, motion.abilities, wanted[:, 1:], np.diff(wanted, axis=1) / tick)
+    soon = on_grid(motion, ends + sender.soon_s[:, None], strain_in) if sender.soon_s.any() else wanted
+    ahead = on_grid(motion, ends + LOOK_S, strain_in)
+    return sender.commands(wanted, soon, ahead, tick)

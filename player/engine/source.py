@@ -5,7 +5,7 @@ from typing import Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.drive.inverse import commands, lead_s
+from composer.drive.inverse import LOOK_S, Inverse
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
 from player.engine.transport import Cue, Transport
@@ -58,24 +58,26 @@ class Driven(Transport):
 
     def __init__(self, rig: Rig, abilities: Abilities, tracks, cues: tuple[Cue, ...] = ()):
         super().__init__(tracks, abilities, cues)
-        self._rig = rig
-        lead = lead_s(rig, abilities)
+        self._inverse = Inverse(rig, abilities)
+        lead = self._inverse.lead_s
         self.lead_s = float(lead.max(initial=0.0))
         self._lag_s = self.lead_s - lead
         self._lags = bool(self._lag_s.any())
         self._past = [self.strain]
-        self._sent = self.strain
         self._fibers = np.arange(len(lead))
-        self.command = commands(rig, abilities, self.strain, np.zeros_like(self.strain))
+        self._send(self.strain, 1.0)
 
     def tick(self, dt_s: float) -> str:
         """Let a tick pass and work out the command for it; what happened, as `Transport.tick`."""
         happened = super().tick(dt_s)
         strain = self._lagging(dt_s) if self._lags else self.strain
-        # A valve's opening holds for the whole tick, so it is given the tick's mean rate, and nothing adds up.
-        self.command = commands(self._rig, self._abilities, strain, (strain - self._sent) / dt_s)
-        self._sent = strain
+        self._send(strain, dt_s)
         return happened
+
+    def _send(self, strain: Array, dt_s: float) -> None:
+        soon = self.coming(self._inverse.soon_s - self._lag_s)
+        ahead = self.coming(LOOK_S - self._lag_s)
+        self.command = self._inverse.commands(strain[:, None], soon[:, None], ahead[:, None], dt_s)[:, 0]
 
     def _lagging(self, dt_s: float) -> Array:
         """Each fiber's strain (F,) as it was its lag ago, in a straight line between the ends of ticks."""

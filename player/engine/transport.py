@@ -44,6 +44,7 @@ class Transport:
         self.waiting: Cue | None = None
         self._abilities = abilities
         self._cursor = Cursor(tracks, abilities)
+        self._scout = Cursor(tracks, abilities)
         self._pace = Pace(tracks, abilities)
         self._holds = Holds(abilities)
         self._held = self.strain
@@ -117,6 +118,15 @@ class Transport:
         if self._ways is None:
             self.strain = self._holds.limited(self._held, dt_s, paused=self.phase == "standing")
         return happened
+
+    def coming(self, after_s: Array) -> Array:
+        """Strain (F,) that will be wanted `after_s` (F,) seconds after the last tick, as far as anyone knows now."""
+        if self._ways is not None:
+            return self._ways.at(np.maximum(self._gone_s + after_s, 0.0))
+        if self.phase != "playing" or self._pace.wanted < 1.0:
+            return self.strain
+        end = self._stop.at_s if self._stop else self.duration_s
+        return self._scout.at(np.minimum(self.position_s + after_s, end))[0]
 
     def _place(self, at_s: float) -> None:
         self.position_s = min(max(at_s, 0.0), self.duration_s)
