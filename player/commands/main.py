@@ -2,9 +2,6 @@
 
 import os
 import sys
-from importlib import import_module
-
-import click
 
 COMMANDS = {
     "check": ("composer.commands.check", "Expand a score, check it, and report what the rig cannot do."),
@@ -18,39 +15,8 @@ COMMANDS = {
 }
 """Name of each command: its module, which defines `command`, and its line in the help."""
 
-
-class Gathered(click.Group):
-    """The commands of both packages, imported one at a time."""
-
-    def list_commands(self, ctx: click.Context) -> list[str]:
-        """All names, in the table's order."""
-        return list(COMMANDS)
-
-    def get_command(self, ctx: click.Context, name: str) -> click.Command | None:
-        """The command of that name, its module imported now."""
-        if name not in COMMANDS:
-            return None
-        return import_module(COMMANDS[name][0]).command
-
-    def resolve_command(self, ctx: click.Context, args: list[str]) -> tuple[str | None, click.Command | None, list[str]]:
-        """As click does, with the nearest known name for a misspelt one."""
-        if args and args[0] not in COMMANDS and not args[0].startswith("-"):
-            from composer.faults import nearest
-
-            hint = nearest(args[0], COMMANDS)
-            ctx.fail(f"no command '{args[0]}'. " + (hint or "The commands are: " + ", ".join(COMMANDS) + "."))
-        return super().resolve_command(ctx, args)
-
-    def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
-        """The list in the help, from the table alone."""
-        with formatter.section("Commands"):
-            formatter.write_dl([(name, line) for name, (_, line) in COMMANDS.items()])
-
-
-@click.group(cls=Gathered, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
-@click.version_option(package_name="drawcord", prog_name="drawcord")
-def drawcord() -> None:
-    """Compose and play motion for arrays of fluid-driven fibers."""
+HELP = ("-h", "--help")
+VERSION = "--version"
 
 
 def main() -> None:
@@ -60,22 +26,23 @@ def main() -> None:
 
 def run(arguments: list[str]) -> int:
     """Run one command; returns its exit code: 0 done, 1 snags or a fault in the run, 2 wrong input or call."""
-    from composer.faults import Faults
-
     try:
-        code = drawcord.main(args=arguments, prog_name="drawcord", standalone_mode=False)
+        if not arguments or arguments[0] in HELP:
+            print(help_text())
+            code = 0
+        elif arguments[0] == VERSION:
+            from importlib.metadata import version
+
+            print(f"drawcord {version('drawcord')}")
+            code = 0
+        else:
+            from player.commands.gathered import call
+
+            code = call(arguments)
         sys.stdout.flush()
-        return code if isinstance(code, int) else 0
-    except click.exceptions.Exit as end:
-        return end.exit_code
-    except click.ClickException as wrong:
-        wrong.show()
-        return 2
-    except Faults as wrong:
-        click.echo(str(wrong), err=True)
-        return 2
-    except (click.Abort, KeyboardInterrupt):
-        click.echo("stopped", err=True)
+        return code
+    except KeyboardInterrupt:
+        print("stopped", file=sys.stderr)
         return 130
     except BrokenPipeError:
         # The reader of our output has gone; without this, Python would complain once more at exit.
@@ -84,16 +51,33 @@ def run(arguments: list[str]) -> int:
     except Exception as error:
         if os.environ.get("DRAWCORD_TRACEBACK"):
             raise
-        trace = error.__traceback__
-        while trace and trace.tb_next:
-            trace = trace.tb_next
-        at = f" ({trace.tb_frame.f_code.co_filename}:{trace.tb_lineno})" if trace else ""
-        click.echo(
-            f"drawcord met a fault of its own: {type(error).__name__}: {error}{at}\n"
-            "   nothing half-written is left behind; DRAWCORD_TRACEBACK=1 shows the whole of it for a report",
-            err=True,
-        )
+        print(_own_fault(error), file=sys.stderr)
         return 2
+
+
+def help_text() -> str:
+    """The help on the top level, from the table alone."""
+    width = max(map(len, COMMANDS))
+    rows = "\n".join(f"  {name:<{width}}  {says}" for name, (_, says) in COMMANDS.items())
+    return (
+        "Usage: drawcord COMMAND [OPTIONS] ...\n\n"
+        "Compose and play motion for arrays of fluid-driven fibers.\n\n"
+        f"Commands:\n{rows}\n\n"
+        "Options:\n  -h, --help  This text; behind a command, all about that command.\n"
+        "  --version   The version."
+    )
+
+
+def _own_fault(error: Exception) -> str:
+    """A fault of the program itself, with the place where it came up."""
+    trace = error.__traceback__
+    while trace and trace.tb_next:
+        trace = trace.tb_next
+    at = f" ({trace.tb_frame.f_code.co_filename}:{trace.tb_lineno})" if trace else ""
+    return (
+        f"drawcord met a fault of its own: {type(error).__name__}: {error}{at}\n"
+        "   nothing half-written is left behind; DRAWCORD_TRACEBACK=1 shows the whole of it for a report"
+    )
 
 
 if __name__ == "__main__":

@@ -18,8 +18,8 @@ from player.wire.values import SHUT, clip, is_valve, to_wire
 GREET_S = 6.0
 """Seconds in which a board has to answer a greeting, asked again meanwhile."""
 
-LISTEN_S = 0.6
-"""Seconds of pings before arming, so that the board's clock is known well."""
+LISTEN_S, LONGEST_LISTEN_S = 0.6, 4.0
+"""Seconds of pings before arming, so that the board's clock is known well; as many more as it takes, up to the second."""
 
 TURN_S = 0.002
 """While waiting for a board, its line is looked at this often."""
@@ -79,6 +79,7 @@ class Board:
         self._until(lambda: host.state in (link.READY, link.FAILED), GREET_S)
         if host.state == link.READY:
             self._until(lambda: host.state == link.FAILED, LISTEN_S)
+            self._until(lambda: host.state == link.FAILED or self._bound_us() < 5e5 / rate_Hz, LONGEST_LISTEN_S)
         board, trouble = host.board, host.trouble
         if board is None:
             hint = "is it powered, and is this its port and baud rate?"
@@ -106,7 +107,7 @@ class Board:
             ready = host.state == link.READY
             marks.append(Mark(f"{who}: it is ready to arm", ready, "" if ready else self._why))
         if host.state == link.READY:
-            bound = host.clock.bound_us(self._clock.now())
+            bound = self._bound_us()
             marks.append(
                 Mark(
                     f"{who}: its clock is known to within a tick",
@@ -179,6 +180,9 @@ class Board:
     def close(self) -> None:
         """Let go of the port."""
         self._line.close()
+
+    def _bound_us(self) -> float:
+        return self._host.clock.bound_us(self._clock.now())
 
     def _flush(self) -> None:
         self._line.write(self._host.to_send())

@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from composer.limits.abilities import abilities_of
@@ -11,6 +11,7 @@ from player.engine.ways import SAFE, safe_ways
 strains = st.lists(st.floats(0.0, 0.3), min_size=4, max_size=4).map(np.array)
 
 
+@settings(deadline=None, max_examples=40)
 @given(strains, strains)
 def test_no_way_is_faster_than_two_thirds_of_the_rate_of_its_direction(make_rig, a, b):
     ways = safe_ways(abilities_of(make_rig(4)), a, b)
@@ -19,6 +20,7 @@ def test_no_way_is_faster_than_two_thirds_of_the_rate_of_its_direction(make_rig,
     assert rates.max() <= 0.6 / SAFE + 1e-6 and rates.min() >= -0.3 / SAFE - 1e-6
 
 
+@settings(deadline=None, max_examples=40)
 @given(strains, strains)
 def test_every_way_begins_and_ends_where_it_was_asked_to(make_rig, a, b):
     ways = safe_ways(abilities_of(make_rig(4)), a, b)
