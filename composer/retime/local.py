@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from composer.retime.events import Events
 from composer.retime.programme import solve
+from composer.retime.reach import reached
 from composer.retime.rows import Rows
 from composer.retime.terms import Terms, contract, cost, spread, tilted
 
@@ -56,6 +57,7 @@ def least_cost(
     shift, bound, dual = np.zeros(count), 0.0, np.zeros(len(rows.least))
     order = np.argsort(events.written_s, kind="stable")
     solved = not free.any()
+    by_rhythm = bool((terms.behind[: events.hits] >= 0).any())
     priced, most = tilted(events, terms)
     while True:
         lack = rows.least - rows.matrix @ shift
@@ -64,6 +66,8 @@ def least_cost(
         grown[rows.matrix[broken].indices] = True
         if solved and (not len(broken) or (grown == free).all()):
             return Least(shift, cost(terms, shift), bound, dual, free)
+        if not free.any() and not by_rhythm:
+            grown |= reached(events, rows, broken)
         free = grown | _near(events, order, rows, broken, lack, _own_shift(terms, shift))
         if np.count_nonzero(free) > WHOLE_FROM * count:
             free[:] = True

@@ -6,7 +6,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.retime.events import Events
-from composer.retime.rows import HOLD_ROW, MOVE_ROW, ORDER_ROW, PIN_ROW, Rows
+from composer.retime.reach import pairs, simple_rows
+from composer.retime.rows import HOLD_ROW, MOVE_ROW, PIN_ROW, Rows
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -37,13 +38,8 @@ def chains_too_long(events: Events, rows: Rows, pins_s: Array, give_s: Array) ->
 
     Each chain is counted from the nearest pin before it, as if that one had been reached: so each names its own lack.
     """
-    simple = np.flatnonzero((rows.kind == MOVE_ROW) | (rows.kind == HOLD_ROW) | (rows.kind == ORDER_ROW))
-    part = rows.matrix[simple]
-    row = np.repeat(np.arange(len(simple)), np.diff(part.indptr))
-    later = np.full(len(simple), -1, dtype=np.int64)
-    earlier = np.full(len(simple), -1, dtype=np.int64)
-    later[row[part.data > 0.0]] = part.indices[part.data > 0.0]
-    earlier[row[part.data < 0.0]] = part.indices[part.data < 0.0]
+    simple = simple_rows(rows)
+    later, earlier, lack = pairs(rows, simple)
 
     lowest, highest, low_pin, high_pin = _bounds(events, rows, len(events.written_s))
     order = np.argsort(events.place[later], kind="stable")
@@ -53,7 +49,7 @@ def chains_too_long(events: Events, rows: Rows, pins_s: Array, give_s: Array) ->
     at = np.concatenate((events.place, [len(earliest)]))
     rank = np.argsort(at[: len(earliest)], kind="stable")
     begin = np.searchsorted(events.place[later][order], np.arange(len(earliest) + 1))
-    least, sources, sorted_rows = rows.least[simple].tolist(), earlier.tolist(), order.tolist()
+    least, sources, sorted_rows = lack.tolist(), earlier.tolist(), order.tolist()
     for position, event in enumerate(rank.tolist()):
         for n in range(begin[position], begin[position + 1]):
             line = sorted_rows[n]

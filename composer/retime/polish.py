@@ -4,7 +4,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.retime.events import Events
-from composer.retime.rows import HOLD_ROW, MOVE_ROW, ORDER_ROW, PIN_ROW, Rows
+from composer.retime.reach import pairs, simple_rows
+from composer.retime.rows import PIN_ROW, Rows
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -21,9 +22,8 @@ def polish(events: Events, rows: Rows, shift_s: Array) -> Array:
     more than the solver's tolerance.
     """
     shift = np.where(np.abs(shift_s) < STILL_S, 0.0, shift_s)
-    simple = np.isin(rows.kind, (MOVE_ROW, HOLD_ROW, ORDER_ROW))
     held = _held(rows, len(shift))
-    later, earlier, least = _pairs(rows, np.flatnonzero(simple))
+    later, earlier, least = pairs(rows, simple_rows(rows))
     by_place = np.append(events.place, -1)
     forward = np.argsort(by_place[later], kind="stable")
     backward = np.argsort(-by_place[earlier], kind="stable")
@@ -44,18 +44,6 @@ def _held(rows: Rows, count: int) -> Flags:
     up[part.indices[part.data > 0.0]] = True
     down[part.indices[part.data < 0.0]] = True
     return up & down
-
-
-def _pairs(rows: Rows, chosen: Index) -> tuple[Index, Index, Array]:
-    """Later and earlier event of difference rows, -1 for none, and the least difference of their displacements."""
-    part = rows.matrix[chosen]
-    row = np.repeat(np.arange(len(chosen)), np.diff(part.indptr))
-    later = np.full(len(chosen), -1, dtype=np.int64)
-    earlier = np.full(len(chosen), -1, dtype=np.int64)
-    plus = part.data > 0.0
-    later[row[plus]] = part.indices[plus]
-    earlier[row[~plus]] = part.indices[~plus]
-    return later, earlier, rows.least[chosen]
 
 
 def _pass(shift: Array, later: Index, earlier: Index, least: Array, order: Index, held: Flags, *, push: bool) -> bool:

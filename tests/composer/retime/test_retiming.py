@@ -141,7 +141,7 @@ def test_too_long_above_half_stroke_is_let_down_in_time(make_rig):
     rig = make_rig(1, max_hold_s=2.0)
     found = do(rig, tracks_of([track]))
     assert check(found.tracks, rig, abilities_of(rig)).ok
-    # Half of the first move, the hold, half of the second: without the hold 2.5 s are left, so the last hit must come earlier too.
+    # Half of the first move, the hold, half of the second: without the hold 2.5 s are left, so the last hit comes earlier too.
     assert found.tracks.time_s.tolist() == pytest.approx([0.0, 1.0, 1.0, 4.0])
     assert found.cost == pytest.approx(1.0 + 3.0 / 20.0)
 
