@@ -29,7 +29,10 @@ def test_the_version_is_that_of_the_package(capsys):
 
 
 def test_help_needs_neither_click_nor_numpy():
-    script = "import sys; from player.commands.main import run; run(['--help']); print(sorted({'click', 'numpy'} & set(sys.modules)))"
+    script = (
+        "import sys; from player.commands.main import run; run(['--help']); "
+        "print(sorted({'click', 'numpy'} & set(sys.modules)))"
+    )
     out = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, check=True).stdout
     assert out.endswith("[]\n")
 
