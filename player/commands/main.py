@@ -11,6 +11,7 @@ COMMANDS = {
     "device": ("player.commands.device", "A simulated valve driver behind a pseudo-terminal."),
     "ports": ("player.commands.ports", "The ports found on this machine."),
     "rig": ("composer.commands.rig", "What each fiber of a rig can do where it hangs."),
+    "fit": ("composer.commands.fit", "A fiber type from what a bench measured."),
     "demos": ("composer.commands.demos", "Copy the demo scores and rigs into a folder."),
 }
 """Name of each command: its module, which defines `command`, and its line in the help."""
