@@ -102,11 +102,15 @@ class Front:
         if not self._keys:
             self._ends.wait(REFRESH_S)
             return
-        ready, _, _ = select.select([sys.stdin], [], [], REFRESH_S)
-        if not ready:
+        try:
+            ready, _, _ = select.select([sys.stdin], [], [], REFRESH_S)
+            typed = os.read(sys.stdin.fileno(), 64) if ready else None
+        except (OSError, ValueError):
+            typed = b""
+        if typed is None:
             return
-        typed = os.read(sys.stdin.fileno(), 64)
         if not typed:
+            # The terminal is gone; the signal that says so stops the run.
             self._keys = False
         # An arrow or function key begins with Escape too, but more follows at once: no vent by a slip of the cursor keys.
         keys = [] if len(typed) > 1 and typed[:1] == b"\x1b" else typed.decode(errors="replace").lower()
@@ -186,4 +190,5 @@ def _keys_at_once(wanted: bool):
         tty.setcbreak(handle, termios.TCSANOW)
         yield
     finally:
-        termios.tcsetattr(handle, termios.TCSANOW, was)
+        with contextlib.suppress(OSError, termios.error):
+            termios.tcsetattr(handle, termios.TCSANOW, was)
