@@ -4,6 +4,7 @@ Each distinct capability has one chart; the fibers that share it share its rows.
 """
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -27,6 +28,10 @@ while moving in and out (kg/Pa); mass flow out (kg/s); from ENTERS on, mass flow
 
 HOLDS_IN, HOLDS_OUT = range(2)
 """Columns by strain: pressure that holds it on the way in and out (Pa)."""
+
+
+SOLVED = 192
+"""Pressures at which flows are solved; between them they are taken in a straight line."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -78,6 +83,7 @@ def _by_strain(physics: Physics) -> Array:
     return np.column_stack(rates.pressures(physics, strain))
 
 
+@lru_cache(maxsize=64)
 def _by_pressure(physics: Physics, supply: float) -> Array:
     pressure = np.linspace(0.0, supply, POINTS)
     # Strain over pressure from pressure over strain, which rises: denser in strain than the chart is in pressure.
@@ -95,8 +101,13 @@ def _by_pressure(physics: Physics, supply: float) -> Array:
         moves = (pressure >= holds[0]) & (pressure < holds[-1])
         slope = rates.slopes(physics, strains)[slope_of]
         columns[:, takes] = np.where(moves, rates.capacity(physics, strains, pressure, slope), columns[:, room])
-    absolute = pressure + physics.ambient
-    columns[:, LEAVES] = exhaust_flow(physics.path, absolute, physics.ambient)
+    # Flows bend most where the pressures are nearly equal, so the solved ones lie closest together there.
+    near = np.linspace(0.0, 1.0, SOLVED) ** 2
+    columns[:, LEAVES] = np.interp(
+        pressure, supply * near, exhaust_flow(physics.path, supply * near + physics.ambient, physics.ambient)
+    )
     for number, level in enumerate(np.linspace(0.0, supply, SUPPLIES)):
-        columns[:, ENTERS + number] = fill_flow(physics.path, np.full(POINTS, level + physics.ambient), absolute)
+        solved = level * (1.0 - near[::-1])
+        flow = fill_flow(physics.path, np.full(SOLVED, level + physics.ambient), solved + physics.ambient)
+        columns[:, ENTERS + number] = np.interp(pressure, solved, flow) * (pressure < level)
     return columns

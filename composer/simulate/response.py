@@ -32,9 +32,7 @@ class Response:
         begin, end = self._now, self._now + dt_s
         self._sent.append((begin, np.array(command, dtype=float)))
         self._now = end
-        oldest = begin - self._each[-1]
-        while len(self._sent) > 1 and self._sent[1][0] <= oldest + SAME_INSTANT_S:
-            self._sent.popleft()
+        self._forget(begin)
         first, last = begin + SAME_INSTANT_S, end - SAME_INSTANT_S
         edges = {sent + delay for sent, _ in self._sent for delay in self._each}
         at = begin
@@ -43,6 +41,31 @@ class Response:
                 yield until - at, self._in_force(at)
                 at = until
         yield end - at, self._in_force(at)
+
+    def mean(self, dt_s: float, command: Array) -> Array:
+        """Hold `command` (F,) for the next `dt_s`; the mean (F,) over that time of what is in force at each valve."""
+        begin, end = self._now, self._now + dt_s
+        self._sent.append((begin, np.array(command, dtype=float)))
+        self._now = end
+        self._forget(begin)
+        mean = np.empty(len(self._at_rest))
+        for members, delay in zip(self._members, self._each, strict=True):
+            until, share = end - delay, np.zeros(len(members))
+            for sent, held in reversed(self._sent):
+                since = max(sent, begin - delay)
+                if until > since:
+                    share += held[members] * ((until - since) / dt_s)
+                    until = since
+                if sent <= begin - delay:
+                    break
+            mean[members] = share
+        return mean
+
+    def _forget(self, begin: float) -> None:
+        """Drop what no valve will ever see again."""
+        oldest = begin - self._each[-1]
+        while len(self._sent) > 1 and self._sent[1][0] <= oldest + SAME_INSTANT_S:
+            self._sent.popleft()
 
     def _in_force(self, at: float) -> Array:
         each = [self._latest(at - delay + SAME_INSTANT_S) for delay in self._each]

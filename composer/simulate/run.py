@@ -47,20 +47,22 @@ def blocks(
     """Play tracks on a simulated rig at `rate_Hz` and yield what happens at every tick from 0 s on, in order.
 
     It goes on past the score's end for as long as the slowest fiber takes for a stroke, so that late arrivals are seen.
-    Commands are sent as a player sends them: due ahead of the score by the lead of the slowest to respond, each asking for
-    the strain wanted at the end of its tick. `inverse` false sends everything without lead.
+    Commands are sent as a player sends them: ahead of the score by the lead of the slowest to respond, each asking for the
+    strain wanted at the end of its tick. `inverse` false sends everything without lead.
     """
     tick = 1.0 / rate_Hz
     motion = motion_of(tracks, abilities)
     sender = Inverse(rig, abilities, inverse)
     lead = sender.lead_s
+    simulated = SimulatedRig(rig, abilities)
     longest = float(lead.max(initial=0.0))
     early = int(np.ceil(longest / tick - SAME_INSTANT_S))
-    # Commands are due `longest` ahead of the ticks, which are `early` whole ticks less this part of one.
+    # Commands are due `longest` ahead of the ticks, which are `early` whole ticks less this part of one: none where the
+    # rig takes the mean over a step anyway, which may as well be a whole tick then.
+    longest = early * tick if simulated.averages else longest
     part = early * tick - longest
     part = part if part > SAME_INSTANT_S else 0.0
     last = int(np.ceil((tracks.duration_s + tail_s(abilities)) * rate_Hz - 1e-6))
-    simulated = SimulatedRig(rig, abilities)
     coils = coils_of(rig)
     beyond = np.zeros(tracks.fibers)
     rest = np.zeros(tracks.fibers)
@@ -98,7 +100,7 @@ def tail_s(abilities: Abilities) -> float:
 
 
 def _sent(motion: Motion, sender: Inverse, number: NDArray[np.int64], tick: float, behind: Array) -> Array:
-    """Commands (F, B) of such numbers: number m is in force from m ticks on, for fibers that respond `behind` the slowest."""
+    """Commands (F, B) of such numbers: number m is in force from m ticks on, for fibers that respond `behind` that."""
     ends = (number + 1) * tick + behind[:, None]
     wanted = on_grid(motion, ends, strain_in)
     soon = on_grid(motion, ends + sender.soon_s[:, None], strain_in) if sender.soon_s.any() else wanted
