@@ -12,8 +12,8 @@ from numpy.typing import NDArray
 from composer.faults import fault
 from composer.files import read_bytes, replacing, say_bytes
 from composer.load import CuePoint
-from composer.score.shapes import NAMES
 from composer.score.tempo import TempoMap
+from composer.shapes import NAMES
 from composer.tracks import HOLD, STEP, Tracks, end_strain
 
 Array = NDArray[np.float64]

@@ -25,7 +25,7 @@ class Tracks:
     curve: (K, 6) strain along the segment as a polynomial in u, the share of its time gone, lowest power first
     manner: (K,) int8: HOLD (constant), MOVE (polynomial), SUDDEN (as fast as the fiber goes at each strain; `curve`
         is the straight line between its ends), STEP (no time at all: the strain jumps)
-    shape: (K,) int8: index into `composer.score.shapes.NAMES` where a whole written shape stands, -1 for a sum or a cut
+    shape: (K,) int8: index into `composer.shapes.NAMES` where a whole written shape stands, -1 for a sum or a cut
     line, phrase_line: (K,) int32: lines of the score that made the segment (0 for none): of the section's entry and of the
         phrase's line; where the phrase came from another file phrase_line is 0
     duration_s: the score's length, at least the last knot's time

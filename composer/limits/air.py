@@ -23,7 +23,7 @@ from composer.limits.polynomials import value
 from composer.limits.snag import Snag
 from composer.limits.stretches import line_of
 from composer.rig.model import Rig
-from composer.score.shapes import NAMES
+from composer.shapes import NAMES
 from composer.tracks import SUDDEN, Tracks
 
 Array = NDArray[np.float64]

@@ -12,7 +12,7 @@ from composer.limits.alike import alike
 from composer.limits.over_tables import durations_over_tables
 from composer.limits.polynomials import derivative, extremes
 from composer.limits.tables import slowest_rates, tables_of, travel_time_s
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import MOVE, STEP, SUDDEN, Tracks, fiber_of
 
 Array = NDArray[np.float64]

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.score.shapes import NAMES
+from composer.shapes import NAMES
 from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks, fiber_of
 
 Array = NDArray[np.float64]

@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.retime.pins import Chain
-from composer.score.shapes import PROGRESS
+from composer.shapes import PROGRESS
 from composer.tracks import HOLD, Tracks, fiber_of
 
 Array = NDArray[np.float64]

@@ -8,8 +8,8 @@ from numpy.typing import NDArray
 
 from composer.faults import Fault
 from composer.score.model import Duration, Line, Phrase, Quiver, Score, Target
-from composer.score.shapes import BACKWARDS, NAMES
 from composer.score.tempo import fault_at
+from composer.shapes import BACKWARDS, NAMES
 
 Array = NDArray[np.float64]
 

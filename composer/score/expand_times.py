@@ -11,8 +11,8 @@ from composer.score.bounds import RANGES
 from composer.score.expand_lines import Lines
 from composer.score.expand_starts import MOST_FAULTS, Starts
 from composer.score.model import Entry, Span
-from composer.score.shapes import NAMES
 from composer.score.tempo import TempoMap, fault_at
+from composer.shapes import NAMES
 from composer.tracks import SAME_INSTANT_S
 
 Array = NDArray[np.float64]

@@ -11,7 +11,7 @@ from composer.limits.tables import strain_after, travel_time_s
 from composer.score.expand_lines import HELD, Lines
 from composer.score.expand_starts import Starts
 from composer.score.expand_times import Moments
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import SAME_INSTANT_S
 
 Array = NDArray[np.float64]

@@ -15,8 +15,8 @@ from composer.score.bounds import BOUNDS, most
 from composer.score.expand_ways import NO_WAY
 from composer.score.layers import BEZIER
 from composer.score.model import Score, Span
-from composer.score.shapes import PROGRESS
 from composer.score.tempo import TempoMap
+from composer.shapes import PROGRESS
 from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
 Array = NDArray[np.float64]

@@ -11,7 +11,7 @@ from composer.score.expand_lines import Lines
 from composer.score.expand_starts import Starts
 from composer.score.expand_times import Moments
 from composer.score.expand_ways import NO_WAY, POWERS, SUDDENLY, Ways, goes_nowhere, ways_of
-from composer.score.shapes import NAMES
+from composer.shapes import NAMES
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN
 
 Array = NDArray[np.float64]

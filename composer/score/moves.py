@@ -6,7 +6,7 @@ from lark import Token, Tree
 
 from composer.score.model import Canon, Entry, Line, Name, Quiver, Repeat, Ripple, Scatter
 from composer.score.row import Row, tokens_of
-from composer.score.shapes import QUIET
+from composer.shapes import QUIET
 
 
 def line_of(tree: Tree, row: Row, body: str) -> Line:

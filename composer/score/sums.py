@@ -10,7 +10,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.tables import travel_time_s
 from composer.score.expand_ways import NO_WAY
 from composer.score.layers import Knots
-from composer.score.shapes import NAMES
+from composer.shapes import NAMES
 from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
 Array = NDArray[np.float64]

@@ -3,8 +3,8 @@
 from collections.abc import Iterable
 
 from composer.score.bounds import BOUNDS, RANGES
-from composer.score.shapes import SAYS
 from composer.score.words import MANNERS, OPTIONS, STATEMENTS, Word
+from composer.shapes import SAYS
 
 
 def _table(head: tuple[str, ...], rows: Iterable[tuple[str, ...]]) -> str:

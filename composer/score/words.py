@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from composer.score.shapes import NAMES as SHAPES
+from composer.shapes import NAMES as SHAPES
 
 
 @dataclass(frozen=True, slots=True)

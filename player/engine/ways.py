@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.duration import least_durations
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks
 
 Array = NDArray[np.float64]

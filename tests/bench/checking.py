@@ -21,7 +21,7 @@ from composer.limits.abilities import Abilities, abilities_of
 from composer.limits.check import check
 from composer.limits.duration import least_durations
 from composer.rig.model import Rig
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks
 
 SHAPES = ("smooth", "linear", "swell", "settle")

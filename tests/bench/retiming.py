@@ -19,7 +19,7 @@ from conftest import make_rig
 from composer.limits.abilities import abilities_of
 from composer.limits.duration import least_durations
 from composer.retime.retiming import retime
-from composer.score.shapes import PROGRESS
+from composer.shapes import PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks
 
 STROKE, FILL, EXHAUST = 0.3, 0.6, 0.3
@@ -160,7 +160,7 @@ def main() -> None:
     abilities = abilities_of(rig)
     for says, tracks in (
         ("without a rest", big_score(moves, fibers, share)),
-        ("in passages", with_rests(moves, fibers, share)),
+        ("in passages", with_rests(moves, fibers, 1.7 * share)),
     ):
         least = least_durations(tracks, abilities)
         lasts = np.diff(tracks.time_s, append=0.0)

@@ -7,7 +7,7 @@ from hypothesis import strategies as st
 
 from composer.limits.abilities import abilities_of
 from composer.motion import Cursor, rate_at, segments_at, strain_at
-from composer.score.shapes import PROGRESS
+from composer.shapes import PROGRESS
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN, Tracks
 
 

@@ -7,7 +7,7 @@ import pytest
 
 from composer.fiber.capability import Capability
 from composer.limits.abilities import Abilities
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN, Tracks
 
 

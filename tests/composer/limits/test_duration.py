@@ -9,7 +9,7 @@ from composer.limits.abilities import abilities_of
 from composer.limits.duration import duration_ceilings, least_durations, speed_range
 from composer.limits.over_tables import durations_over_tables
 from composer.limits.tables import rates
-from composer.score.shapes import NAMES
+from composer.shapes import NAMES
 from composer.tracks import fiber_of
 
 FACTOR = {"linear": 1.0, "swell": 2.0, "settle": 2.0}

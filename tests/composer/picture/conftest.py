@@ -6,8 +6,8 @@ import pytest
 from composer.limits.abilities import abilities_of
 from composer.picture.material import Piece, run, scene_of
 from composer.picture.scene import CueMark
-from composer.score.shapes import PROGRESS
 from composer.score.tempo import TempoMap
+from composer.shapes import PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks
 
 

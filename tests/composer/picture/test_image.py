@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 from composer.limits.abilities import abilities_of
 from composer.picture import image, palette
 from composer.picture.bands import Band
-from composer.score.shapes import PROGRESS
+from composer.shapes import PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks
 
 RISE = Tracks(

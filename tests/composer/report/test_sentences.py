@@ -7,7 +7,7 @@ from composer.limits.abilities import abilities_of
 from composer.limits.check import check
 from composer.limits.snag import Snag
 from composer.report.sentences import Teller, listed, named, place_in_words, tell, two
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN, Tracks
 
 

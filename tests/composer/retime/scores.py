@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN, Tracks
 
 SHAPES = ("smooth", "linear", "swell", "settle")

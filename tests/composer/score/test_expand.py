@@ -5,7 +5,7 @@ from composer.faults import Faults
 from composer.limits.abilities import abilities_of
 from composer.limits.tables import travel_time_s
 from composer.motion import strain_at
-from composer.score.shapes import NAMES
+from composer.shapes import NAMES
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN
 
 from .playing import faster_when_full, played, thread

@@ -3,7 +3,7 @@ import pytest
 from composer.faults import Fault
 from composer.score.expand_lines import HELD, Lines, phrase_lines
 from composer.score.reading import parse_score
-from composer.score.shapes import NAMES
+from composer.shapes import NAMES
 
 
 def table(text: str, *wanted: tuple[str, bool]) -> tuple[Lines, list[Fault]]:

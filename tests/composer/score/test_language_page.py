@@ -7,9 +7,9 @@ import pytest
 
 from composer.faults import Faults
 from composer.score.reading import read_score
-from composer.score.shapes import NAMES, SAYS
 from composer.score.tables import tables
 from composer.score.words import KEYWORDS, MANNERS, OPTIONS, STATEMENTS
+from composer.shapes import NAMES, SAYS
 
 PAGE = files("composer").joinpath("manual/language.md").read_text(encoding="utf-8")
 

@@ -7,9 +7,9 @@ import pytest
 from composer.faults import Faults
 from composer.score.model import Entry, Line
 from composer.score.reading import read_score
-from composer.score.shapes import NAMES
 from composer.score.spans import span_of
 from composer.score.words import MANNERS, OPTIONS
+from composer.shapes import NAMES
 
 
 def entry(options: str) -> Entry:

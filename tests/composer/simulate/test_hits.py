@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from composer.limits.abilities import abilities_of
-from composer.score.shapes import PROGRESS
+from composer.shapes import PROGRESS
 from composer.simulate.hits import LandingLog
 from composer.simulate.run import blocks
 from composer.tracks import HOLD, MOVE, Tracks

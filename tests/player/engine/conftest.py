@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from composer.limits.abilities import abilities_of
-from composer.score.shapes import NAMES, PROGRESS
+from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks
 from player.engine.clock import VirtualClock
 from player.engine.loop import Engine
