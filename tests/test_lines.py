@@ -9,14 +9,7 @@ from importlinter.cli import lint_imports
 
 ROOT = Path(__file__).parent.parent
 SOURCES = sorted(path for room in ("composer", "player") for path in (ROOT / room).rglob("*.py"))
-TOUCH_FILES = (
-    "composer/files.py",
-    "composer/load.py",
-    "composer/play_file.py",
-    "/commands/",
-    "player/outputs/",
-    "picture/png.py",
-)
+TOUCH_FILES = ("composer/files.py", "composer/load.py", "play_file.py", "/commands/", "player/outputs/", "picture/png.py")
 
 
 def test_imports_keep_to_the_lines(monkeypatch, capsys):
