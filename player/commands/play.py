@@ -64,6 +64,7 @@ def command(
 def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bool, log: str | None, as_json: bool) -> int:
     """Open, pre-flight, arm, play, and leave everything at rest, or vented, whatever happens."""
     from player.commands.front import Front
+    from player.commands.priority import real_time
     from player.commands.run_report import report, sentences
     from player.engine.clock import SteadyClock
     from player.engine.loop import Engine
@@ -91,11 +92,12 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
             click.echo(str(why), err=True)
             return 2
         with Front(engine.ask, played.say_place, quiet=as_json) as front:
-            for status in engine.run(start_s):
-                front.show(status)
+            with real_time() as first:
+                for status in engine.run(start_s):
+                    front.show(status)
             front.show(engine.status())
         engine.close()
-        told = report(engine, played, outputs)
+        told = report(engine, played, outputs, "real-time" if first else "usual")
         if run_log is not None:
             run_log.tell("end", clock.now(), **told)
     click.echo(json.dumps(told) if as_json else "\n".join(sentences(told)))

@@ -3,12 +3,13 @@
 from collections.abc import Sequence
 from typing import Any
 
+from player.commands.played import Played
 from player.engine.loop import Engine
 from player.outputs.base import Output
 
 
-def report(engine: Engine, played, outputs: Sequence[Output]) -> dict[str, Any]:
-    """Everything of a run that has ended; times in s, lateness in ms, strains as 1."""
+def report(engine: Engine, played: Played, outputs: Sequence[Output], priority: str) -> dict[str, Any]:
+    """Everything of a run that has ended; times in s, lateness in ms, strains as 1; priority: "real-time" or "usual"."""
     ending, lateness = engine.ending, engine.lateness
     faults = [
         {
@@ -31,6 +32,7 @@ def report(engine: Engine, played, outputs: Sequence[Output]) -> dict[str, Any]:
         "duration_s": round(ending.lasted_s, 6),
         "rate_Hz": engine.rate_Hz,
         "ahead_ms": round(engine.ahead_s * 1e3, 3),
+        "priority": priority,
         "ticks": lateness.ticks,
         "late_ticks": lateness.late,
         "past_due": lateness.past_due,
@@ -49,7 +51,7 @@ def report(engine: Engine, played, outputs: Sequence[Output]) -> dict[str, Any]:
     }
 
 
-def _largest_error(engine: Engine, played) -> dict[str, Any] | None:
+def _largest_error(engine: Engine, played: Played) -> dict[str, Any] | None:
     """Where wanted and sensed were furthest apart; None where nothing was sensed."""
     worst = engine.errors.worst
     if worst is None:
