@@ -62,7 +62,7 @@ class Device:
     def receive(self, data: bytes, now_us: int) -> list[Event]:
         """Bytes that came, in pieces of any size; first does what time has brought. Never raises, whatever comes."""
         self._bring(now_us)
-        for payload in self._reader.feed(data):
+        for payload in self._reader.frames(data):
             self._frame(payload, now_us)
         return self._take()
 

@@ -5,6 +5,7 @@ Stuffing is COBS (S. Cheshire and M. Baker, "Consistent Overhead Byte Stuffing",
 """
 
 from binascii import crc_hqx
+from collections.abc import Iterator
 
 from player.wire.messages import BODY_LIMIT
 
@@ -91,8 +92,11 @@ class FrameReader:
 
     def feed(self, data: bytes) -> list[bytes]:
         """Take bytes as they came, in pieces of any size; returns the payloads (type, seq, body) that they complete."""
+        return list(self.frames(data))
+
+    def frames(self, data: bytes) -> Iterator[bytes]:
+        """As `feed`, one after the other: at each payload `bad` counts what was dropped before it. To be gone through to its end."""
         pieces = data.split(b"\0")
-        found: list[bytes] = []
         last = len(pieces) - 1
         for place, piece in enumerate(pieces):
             if not self._too_long:
@@ -110,10 +114,9 @@ class FrameReader:
                 if payload is None:
                     self.bad += 1
                 else:
-                    found.append(payload)
+                    yield payload
             self._kept.clear()
             self._too_long = False
-        return found
 
 
 def _opened(stuffed: bytes) -> bytes | None:

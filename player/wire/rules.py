@@ -25,7 +25,9 @@ Same bytes at the same times give the same bytes and the same values, always. Th
 11. Left by hello only, then configure, arm: status 2 and 3.
 12. The device's own faults (over-pressure, sensor): every channel to 0, queue dropped, status 3, the fault said.
 13. Order: what a time brings comes before the bytes of that time: sets due (none that is due after the watchdog trips), ramp,
-    watchdog, state, sense. Answers carry the seq of what they answer, faults before the state; unasked frames carry 0.
+    watchdog, state, sense. Frames are done one after the other, in whatever pieces their bytes came: a state counts what was
+    dropped before the frame that it answers, not what follows. Answers carry the seq of what they answer, faults before the
+    state; unasked frames carry 0.
 14. state: unasked every 50 ms from the start (one where several were missed), and at once where the status changed by itself.
     With it, where it senses strain and is configured, sense for the channels configured.
 15. `late` and `bad` count from the start, hello leaves them, and wrap.

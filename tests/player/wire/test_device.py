@@ -96,6 +96,17 @@ def test_a_ping_is_answered_by_a_pong_with_its_seq_both_clocks_and_no_state():
     assert Desk().say(m.Ping(77), seq=5, at=4321) == [(5, m.Pong(77, 4321))]
 
 
+def test_a_state_counts_what_was_dropped_before_its_frame_and_not_after_in_whatever_pieces_the_bytes_came():
+    ask, dross = frame(m.encode(m.Vent(), 1)), b"dross\0"
+    whole = [answer.bad for _, answer in Desk().bytes(dross + ask + dross + dross + ask)]
+    desk = Desk()
+    for byte in dross + ask + dross + dross:
+        pieces = desk.bytes(bytes((byte,)))
+    assert whole == [1, 3]
+    assert [answer.bad for _, answer in desk.bytes(ask)] == [3]
+    assert pieces == []
+
+
 def test_the_clock_wraps_at_2_to_the_32():
     desk = Desk(now=(1 << 32) - 10)
     assert desk.say(m.Ping(1), at=(1 << 32) + 5) == [(9, m.Pong(1, 5))]
