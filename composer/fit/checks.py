@@ -1,6 +1,6 @@
 """Whether what a bench measured can be true: time that goes on, sizes and units, enough of a swing."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,9 @@ LEAST_STRAIN = -0.1
 LEAST_MOVED = 0.002
 MOST_FORCE_N = 1e5
 MOST_TIME_S = 1e6
+Place = Callable[[int, str], Where]
+"""Where the value of a row and a column stands."""
+
 GAP = 20.0
 """An interval so many times the usual one is a gap."""
 
@@ -43,7 +46,7 @@ def _first(bad: NDArray[np.bool_]) -> int | None:
     return int(found[0]) if len(found) else None
 
 
-def _time(bench: Bench, at) -> Fault | None:
+def _time(bench: Bench, at: Place) -> Fault | None:
     far = _first(np.abs(bench.time) > MOST_TIME_S)
     if far is not None:
         return Fault(at(far, "time_s"), f"a time of {bench.time[far]:g} s", f"at most {MOST_TIME_S:g} s", "begin at 0")
@@ -62,7 +65,7 @@ def _time(bench: Bench, at) -> Fault | None:
     return None
 
 
-def _strain(bench: Bench, at) -> Fault | None:
+def _strain(bench: Bench, at: Place) -> Fault | None:
     most, least = int(np.argmax(bench.strain)), int(np.argmin(bench.strain))
     share = "strain as a share of rest length: 0.3, not 30"
     if bench.strain[most] > MOST_STRAIN:
@@ -78,7 +81,7 @@ def _strain(bench: Bench, at) -> Fault | None:
     return None
 
 
-def _pressure(bench: Bench, at) -> Fault | None:
+def _pressure(bench: Bench, at: Place) -> Fault | None:
     kPa = bench.pressure / 1e3
     most, least = int(np.argmax(kPa)), int(np.argmin(kPa))
     if kPa[most] > MOST_PRESSURE_KPA:
@@ -97,7 +100,7 @@ def _pressure(bench: Bench, at) -> Fault | None:
     return None
 
 
-def _force(bench: Bench, at) -> Fault | None:
+def _force(bench: Bench, at: Place) -> Fault | None:
     if bench.force is None:
         return None
     most, least = int(np.argmax(bench.force)), int(np.argmin(bench.force))

@@ -17,7 +17,7 @@ CONFIDENCE = 0.95
 class Found:
     """One parameter: its value, its interval at CONFIDENCE, its unit, and whether the data tell it.
 
-    why: what to say where they do not, or where there is more to say
+    why: what to say where they do not; held: they say nothing of it at all, and the value was not found but taken
     """
 
     key: str
@@ -27,6 +27,7 @@ class Found:
     high: float
     told: bool
     why: str = ""
+    held: bool = False
 
 
 @dataclass(frozen=True, slots=True, eq=False)

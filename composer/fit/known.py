@@ -6,7 +6,7 @@ from dataclasses import dataclass, fields
 from typing import Any
 
 from composer.faults import Fault, Faults, Where, fault, nearest
-from composer.fiber.kinds import KINDS
+from composer.fiber.kinds import KINDS, STRAIGHT
 from composer.fit.bench import Bench
 from composer.fit.parameters import OF_MAKE, Parameter
 from composer.keys import Key
@@ -52,11 +52,7 @@ def known_of(bench: Bench, name: str, rig: Rig | None, load_N: float | None) -> 
     make = base if kind in ("bending", "coiling") else kind
     wanted = {each.key for each in OF_MAKE.get(str(make), ())} or RATED_FOUND
     by_name = {key.name: key for key in keys}
-    wrong = [
-        problem
-        for key, one in bench.said.items()
-        for problem in _wrong(key, one.value, one.where, by_name, kind, rig is not None)
-    ]
+    wrong = [problem for key, one in bench.said.items() for problem in _wrong(key, one.value, one.where, by_name, kind)]
     if bench.force is not None and (load_N is not None or "load_N" in said):
         where = bench.said["load_N"].where if "load_N" in said else Where(bench.file)
         wrong.append(Fault(where, "a load is given, and the bench has a column force_N", "one of the two"))
@@ -67,9 +63,8 @@ def known_of(bench: Bench, name: str, rig: Rig | None, load_N: float | None) -> 
     for key in keys:
         if key.name in said:
             values[key.name], come[key.name] = _typed(said[key.name], key), "as the bench file says"
-        elif key.name in from_rig and key.name not in wanted:
-            if from_rig[key.name] is not None:
-                values[key.name], come[key.name] = from_rig[key.name], "as in the rig"
+        elif key.name not in wanted and from_rig.get(key.name) is not None:
+            values[key.name], come[key.name] = from_rig[key.name], "as in the rig"
     _missing(bench, kind, keys, values, wanted, rig)
     starts = {key: float(from_rig[key]) for key in wanted if isinstance(from_rig.get(key), int | float)}
     load = load_N if load_N is not None else float(said.get("load_N", 0.0))
@@ -122,12 +117,12 @@ def _flat(make: Any) -> dict[str, Any]:
     values = {field.name: getattr(make, field.name) for field in fields(make)}
     base = values.pop("base", None)
     if base is not None:
-        # The make's class is named after its row in the table of kinds.
-        values = {"base": type(base).__name__.lower(), **_flat(base), **values}
+        name = next(name for name, (_, make_type) in STRAIGHT.items() if isinstance(base, make_type))
+        values = {"base": name, **_flat(base), **values}
     return values
 
 
-def _wrong(name: str, value: Any, where: Where, keys: Mapping[str, Key], kind: str, has_rig: bool) -> list[Fault]:
+def _wrong(name: str, value: Any, where: Where, keys: Mapping[str, Key], kind: str) -> list[Fault]:
     """What is wrong with a value of the head: the wrong type, out of range, or a key that this kind does not have."""
     if name == "kind":
         return []

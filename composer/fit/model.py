@@ -1,4 +1,4 @@
-"""The strain that a make of fiber would have shown on a bench: virtual work, friction's play, the lag of elastomer and braid."""
+"""The strain that a make of fiber would have shown on a bench: virtual work, the play of friction, the lag of elastomer."""
 
 from dataclasses import dataclass
 
@@ -51,7 +51,7 @@ def drive_of(bench: Bench, load: float) -> Drive:
 def strain_on(drive: Drive, shape: Kinematics, stop: float, friction: float, settle: float) -> Array:
     """The strain (N,) of a fiber of that shape under that drive; `friction` a share of ideal force, `settle` in s."""
     edge_in, edge_out = edges(drive, shape, stop, friction)
-    return lagged(drive.time, played(drive, edge_in, edge_out), drive.first, settle)
+    return lagged(drive.time, played(drive, edge_in, edge_out), settle)
 
 
 def edges(drive: Drive, shape: Kinematics, stop: float, friction: float) -> tuple[Array, Array]:
@@ -96,8 +96,10 @@ def played(drive: Drive, edge_in: Array, edge_out: Array) -> Array:
     return np.minimum(np.maximum(at_turn[drive.stretch], edge_in), edge_out)
 
 
-def lagged(time: Array, strain: Array, first: float, settle: float) -> Array:
-    """The lag of elastomer and braid (Kelvin and Voigt): exact for a strain that goes straight from row to row."""
+def lagged(time: Array, strain: Array, settle: float) -> Array:
+    """The lag of elastomer and braid (Kelvin and Voigt), settled at the first row; exact for a strain that goes straight
+    from row to row.
+    """
     if settle <= 0.0:
         return strain
     h = np.diff(time)
@@ -105,7 +107,7 @@ def lagged(time: Array, strain: Array, first: float, settle: float) -> Array:
     behind = settle * np.diff(strain) / h
     # e' = p' − b + (e − p + b) k, written for d = e − p, so that a step is one product and one sum.
     adds = (behind * (keeps - 1.0)).tolist()
-    d = first - float(strain[0])
+    d = 0.0
     apart = [d]
     for keep, add in zip(keeps.tolist(), adds, strict=True):
         d = d * keep + add

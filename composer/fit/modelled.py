@@ -1,37 +1,28 @@
 """Fitting a make: the parameters that bring the modelled strain closest to the measured, few outliers notwithstanding."""
 
 import math
-from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass, replace
-from itertools import product
+from collections.abc import Iterator, Sequence
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.optimize import least_squares
+from scipy.stats import chi2
 
 from composer.faults import Fault, Faults, Where
 from composer.fiber.contractile import COS2_LIMIT
 from composer.fit.bench import Bench, thinned
 from composer.fit.fitted import CONFIDENCE, Fitted, Found
 from composer.fit.known import Known, make_of
-from composer.fit.model import Drive, drive_of, strain_on
+from composer.fit.model import drive_of
 from composer.fit.parameters import SLEEVE, Parameter
+from composer.fit.problem import Problem, Progress, soft_cost, soft_scale, solve
 from composer.fit.smooth import noise
-from composer.fit.uncertainty import Uncertainty, robust_scale, uncertainty
+from composer.fit.uncertainty import Uncertainty, hanging_together, robust_scale, uncertainty
 
 Array = NDArray[np.float64]
 
 MOST_ROWS = 8000
 """Rows that are fitted at most; a longer bench is taken in means of several rows."""
-
-REFINED = 3
-"""Best of the starts that are followed to their end."""
-
-SOFT = 1.5
-"""Residuals beyond so many standard deviations begin to count less than their square."""
-
-STEP = 1e-5
-"""Step of differences, in the parameters' own scales."""
 
 ALIKE = 0.95
 """Correlation from which two parameters are hardly told apart."""
@@ -39,58 +30,17 @@ ALIKE = 0.95
 DRAWS = 60
 """Other draws of the sensors' noise that the fit is played through, to see what it does to the parameters."""
 
+SHOWS = 0.999
+"""Confidence from which a stop is believed to be there."""
+
+MISSED = 1.5
+"""Left-over noise above so many times that of the sensors: something that was given is not so."""
+
+SEEN = 0.002
+"""... unless it stays below this share of the stroke."""
+
 POOR = 0.05
 """Left-over noise above this share of the stroke: the model does not describe the data."""
-
-Progress = Callable[[float], None]
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Problem:
-    """One fit: the drive, the strain measured (N,), what is known, what is looked for, and what is held meanwhile."""
-
-    drive: Drive
-    measured: Array
-    known: Known
-    free: tuple[Parameter, ...]
-    held: dict[str, float]
-
-    def values(self, theta: Array) -> dict[str, float]:
-        """Parameters by key from the solver's, which are in units of their scales."""
-        found = {each.key: float(value) * each.scale for each, value in zip(self.free, theta, strict=True)}
-        return {**self.held, **found}
-
-    def strain(self, theta: Array) -> Array:
-        """The strain (N,) that these parameters give."""
-        make = make_of(self.known, {"max_pressure_kPa": 1.0, **self.values(theta)})
-        base = getattr(make, "base", make)
-        stop = make.stop() if base is not make else base.shape().stop
-        return strain_on(self.drive, base.shape(), stop, base.friction_fraction, base.settle_ms * 1e-3)
-
-    def residual(self, theta: Array) -> Array:
-        """Modelled less measured strain (N,)."""
-        return self.strain(theta) - self.measured
-
-    def jacobian(self, theta: Array) -> Array:
-        """Slopes (N, P) of the residual, by central differences, one-sided at a bound."""
-        low, high = self.bounds()
-        columns = []
-        for number in range(len(theta)):
-            ends = []
-            for way in (-STEP, STEP):
-                moved = theta.copy()
-                moved[number] = min(max(theta[number] + way, low[number]), high[number])
-                ends.append((moved[number], self.strain(moved)))
-            (a, before), (b, after) = ends
-            columns.append((after - before) / (b - a))
-        return np.column_stack(columns)
-
-    def bounds(self) -> tuple[Array, Array]:
-        """Lower and upper bounds (P,) of the solver's parameters."""
-        return (
-            np.array([each.low / each.scale for each in self.free]),
-            np.array([each.high / each.scale for each in self.free]),
-        )
 
 
 def fit_modelled(bench: Bench, known: Known, progress: Progress = lambda share: None) -> Fitted:
@@ -103,22 +53,48 @@ def fit_modelled(bench: Bench, known: Known, progress: Progress = lambda share: 
     if not problem.free:
         theta = np.zeros(0)
         return _fitted(bench, short, problem, theta, None, (), known)
-    theta = _solve(problem, starts, progress)
+    theta = solve(problem, starts, progress)
+    if SLEEVE in problem.free and not _sleeve_shows(problem, theta):
+        return _without(bench, short, problem, (SLEEVE,), starts, progress)
     sure = _uncertainty(problem, theta, short)
     # What the data do not touch at all is held at what is known or usual, and the others are found anew.
     blind = [
         number
         for number, each in enumerate(problem.free)
-        if sure.half[number] * each.scale > (each.high - each.low) / 2.0 or sure.blind[number] and _idle(problem, theta, number)
+        if sure.half[number] * each.scale > (each.high - each.low) / 2.0
+        or (sure.blind[number] and _idle(problem, theta, number))
     ]
     if blind and len(blind) < len(problem.free):
-        untold = tuple(problem.free[number] for number in blind)
-        held = {each.key: _usual(each, known, short) for each in untold}
-        problem = replace(problem, free=tuple(each for each in problem.free if each not in untold), held=held)
-        theta = _solve(problem, starts, progress)
-        sure = _uncertainty(problem, theta, short)
-        return _fitted(bench, short, problem, theta, sure, untold, known)
+        return _without(bench, short, problem, tuple(problem.free[number] for number in blind), starts, progress)
     return _fitted(bench, short, problem, theta, sure, (), known)
+
+
+def _without(
+    bench: Bench,
+    short: Bench,
+    problem: Problem,
+    untold: tuple[Parameter, ...],
+    starts: dict[str, tuple[float, ...]],
+    progress: Progress,
+) -> Fitted:
+    """The fit with what the data do not touch held at what is known or usual."""
+    held = {each.key: _usual(each, problem.known, short) for each in untold}
+    fewer = replace(problem, free=tuple(each for each in problem.free if each not in untold), held=held)
+    theta = solve(fewer, starts, progress)
+    return _fitted(bench, short, fewer, theta, _uncertainty(fewer, theta, short), untold, problem.known)
+
+
+def _sleeve_shows(problem: Problem, theta: Array) -> bool:
+    """Whether the data are plainly worse explained by a sleeve that is never pulled straight.
+
+    Of a fiber that was not filled so far, the limit that fits best is where its highest strain happens to lie.
+    """
+    free = tuple(each for each in problem.free if each is not SLEEVE)
+    endless = replace(problem, free=free, held={SLEEVE.key: SLEEVE.high})
+    at = solve(endless, {each.key: (problem.values(theta)[each.key],) for each in free}, lambda share: None)
+    residual = problem.residual(theta)
+    gained = soft_cost(endless.residual(at), residual) - soft_cost(residual, residual)
+    return gained / hanging_together(residual) > chi2.ppf(SHOWS, 1)
 
 
 def _check_stroke(bench: Bench, known: Known) -> None:
@@ -155,64 +131,12 @@ def _idle(problem: Problem, theta: Array, number: int) -> bool:
     return float(np.abs(problem.jacobian(theta)[:, number]).max()) < 1e-9
 
 
-def _solve(problem: Problem, starts: dict[str, tuple[float, ...]], progress: Progress) -> Array:
-    """The best parameters (P,), in their scales, from the best few of all starts."""
-    low, high = problem.bounds()
-    grid = list(product(*(starts[each.key] for each in problem.free)))
-    scales = np.array([each.scale for each in problem.free])
-    thetas = [np.clip(np.array(start) / scales, low, high) for start in grid]
-    costs = [float(np.mean(np.abs(problem.residual(theta)))) for theta in thetas]
-    order = np.argsort(costs, kind="stable")[:REFINED]
-    soft = max(SOFT * robust_scale(problem.residual(thetas[order[0]])), 1e-7)
-    best: tuple[float, Array] | None = None
-    for done, number in enumerate(order):
-        found = _least(problem, thetas[number], soft, 60)
-        progress((done + 1) / (len(order) + 2))
-        cost = float(np.mean(np.abs(problem.residual(found))))
-        if best is None or cost < best[0]:
-            best = (cost, found)
-    assert best is not None
-    theta = best[1]
-    for _ in range(2):
-        # The scale of what is left is known only once a fit has been found.
-        theta = _least(problem, theta, soft_scale(problem.residual(theta)), 200)
-    progress(1.0)
-    return theta
-
-
-def soft_scale(residual: Array) -> float:
-    """The size of a residual in strain from which it counts less than its square."""
-    return max(SOFT * robust_scale(residual), 1e-7)
-
-
-def _least(problem: Problem, theta: Array, soft: float, most: int) -> Array:
-    """The nearest least of the soft_l1 loss."""
-    low, high = problem.bounds()
-    inside = np.clip(theta, low + 1e-6 * (high - low), high - 1e-6 * (high - low))
-    # In units of the soft scale, so that the solver's tolerances mean the same for any fiber.
-    return least_squares(
-        lambda at: problem.residual(at) / soft,
-        inside,
-        jac=lambda at: problem.jacobian(at) / soft,
-        bounds=(low, high),
-        loss="soft_l1",
-        max_nfev=most,
-        ftol=1e-9,
-        xtol=1e-9,
-        gtol=1e-9,
-    ).x
-
-
 def _uncertainty(problem: Problem, theta: Array, bench: Bench) -> Uncertainty:
     residual = problem.residual(theta)
-    shaken = np.array([redrawn.strain(theta) for redrawn in _redrawn(problem, bench)]).reshape(-1, len(residual))
-    return uncertainty(
-        residual,
-        problem.jacobian(theta),
-        soft_scale(residual),
-        CONFIDENCE,
-        shaken - problem.strain(theta) if len(shaken) else shaken,
-    )
+    strain = problem.strain(theta)
+    shaken = np.array([redrawn.strain(theta) - strain for redrawn in _redrawn(problem, bench)])
+    soft = soft_scale(residual)
+    return uncertainty(residual, problem.jacobian(theta), soft, CONFIDENCE, shaken.reshape(-1, len(residual)))
 
 
 def _redrawn(problem: Problem, bench: Bench) -> Iterator[Problem]:
@@ -248,20 +172,18 @@ def _fitted(
     for each in known.parameters:
         value = values[each.key]
         if each in untold or sure is None:
-            found.append(Found(each.key, each.unit, value, each.low, each.high, False, _why_untold(each, known)))
+            found.append(Found(each.key, each.unit, value, each.low, each.high, False, _why_untold(each, known), held=True))
             continue
         number = problem.free.index(each)
         half = float(sure.half[number]) * each.scale
         low, high = max(value - half, each.low), min(value + half, each.high)
         told = each.told(value, half)
         found.append(Found(each.key, each.unit, value, low, high, told, "" if told else _why_loose(each, beside)))
-    notes = list(_notes(bench, known, left, stroke))
-    highest = float(short.pressure.max()) / 1e3
+    notes = list(_notes(short, known, left, stroke))
+    highest = float(problem.drive.pressure.max()) / 1e3
     make = make_of(known, {"max_pressure_kPa": _floor(highest), **values})
     if "max_pressure_kPa" not in known.values:
-        notes.append(
-            f"max_pressure_kPa is the highest pressure of the bench, {_floor(highest):g} kPa: nothing beyond it was tried"
-        )
+        notes.append(f"max_pressure_kPa is the highest pressure of the bench: nothing beyond {_floor(highest):g} kPa was tried")
     elif highest > 1.02 * known.values["max_pressure_kPa"]:
         notes.append(f"the bench went up to {highest:.4g} kPa, above max_pressure_kPa, {known.values['max_pressure_kPa']:g}")
     base = getattr(make, "base", make)
@@ -337,6 +259,11 @@ def _notes(bench: Bench, known: Known, left: float, stroke: float) -> Iterator[s
         yield (
             f"the fit misses the data by {left:.2g} of strain, {100.0 * left / stroke:.0f} % of the stroke: this make does not"
             " explain this bench; look at the picture, the units, the load and the dimensions"
+        )
+    elif left > max(MISSED * noise(bench.strain), SEEN * stroke):
+        yield (
+            f"the fit misses the data by {left:.2g} of strain, where the sensor's own noise is {noise(bench.strain):.2g}:"
+            " load or dimensions may not be as given, or this fiber does what its kind does not"
         )
     if bench.pressure.min() > 90e3 and bench.strain[np.argmin(bench.pressure)] < 0.1 * stroke:
         yield "pressure is never below 90 kPa, and the fiber is near rest there: are these absolute pressures? Gauge is meant."

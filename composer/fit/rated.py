@@ -1,12 +1,14 @@
 """Fitting a rated fiber: its stroke from where it comes to stand, its rates from its fastest moves."""
 
+from itertools import pairwise
+
 import numpy as np
 from numpy.typing import NDArray
 from scipy.stats import t as student
 
 from composer.faults import fault
 from composer.fit.bench import Bench, thinned
-from composer.fit.fitted import CONFIDENCE, Fitted, Found
+from composer.fit.fitted import Fitted, Found
 from composer.fit.known import Known, make_of
 from composer.fit.smooth import noise, smoothed, turns
 from composer.fit.uncertainty import hanging_together
@@ -90,7 +92,7 @@ def _rates(bench: Bench, clean: Array, rows: NDArray[np.int64], stroke: float) -
     """(rate, its standard error) of every long move up and down, positive both."""
     up: list[tuple[float, float]] = []
     down: list[tuple[float, float]] = []
-    for first, last in zip(rows[:-1], rows[1:], strict=True):
+    for first, last in pairwise(rows.tolist()):
         begin, end = float(clean[first]), float(clean[last])
         if abs(end - begin) < LONG * stroke:
             continue

@@ -62,7 +62,10 @@ def _head(lines: Sequence[str], file: str) -> tuple[dict[str, Said], int | None]
             wrong.append(Fault(where, f"{name} is there twice", "", f"the other stands at line {said[name].where.line}"))
         else:
             try:
-                said[name] = Said(tomllib.loads(f"v = {value}")["v"], where)
+                # A bench's numbers are not as strict as TOML's: .5 and +1 will do.
+                said[name] = (
+                    Said(float(value), where) if NUMBER.fullmatch(value) else Said(tomllib.loads(f"v = {value}")["v"], where)
+                )
             except (tomllib.TOMLDecodeError, RecursionError, ValueError):
                 hint = "numbers stand without a unit, words in quotes"
                 wrong.append(Fault(where, f"{name} is {value[:60]}", "a number or a word in quotes", hint))

@@ -42,7 +42,8 @@ def smoothed(values: Array) -> Array:
     middle = values.mean()
     lines = {size: _lines(values - middle, size) for size in WINDOWS if size <= len(values)}
     around = np.convolve(values - middle, np.full(CLOSE, 1.0 / CLOSE), mode="valid")
-    for _, size, place in sorted((_variance(size, place), size, place) for size in lines for place in (0, size // 2, size - 1)):
+    places = ((_variance(n, place), n, place) for n in lines for place in (0, n // 2, n - 1))
+    for _, size, place in sorted(places):
         mean, slope, strays = lines[size]
         near = min(max(place - CLOSE // 2, 0), size - CLOSE)
         aside = around[near : near + len(mean)] - (mean + slope * (near + CLOSE // 2 - (size - 1) / 2.0))

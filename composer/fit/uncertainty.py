@@ -14,9 +14,10 @@ NULL = 1e-9
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Uncertainty:
-    """half: (P,) to either side, so that all intervals hold at once at the confidence asked for; correlation: (P, P); scale: standard deviation left over.
+    """How well parameters are told.
 
-    blind: (P,) whether a parameter leans on a direction of which the data say nothing
+    half: (P,) to either side, so that all intervals hold at once at the confidence asked for; correlation: (P, P)
+    scale: standard deviation left over; blind: (P,) whether a parameter leans on a direction of which the data say nothing
     """
 
     half: Array

@@ -123,7 +123,7 @@ def _dots(painter: QPainter, frame: Frame, x: Array, y: Array, of: Colour = MEAS
     painter.save()
     painter.setClipRect(frame.box)
     # Many dots side by side make a band; half see-through, they show where most of them lie.
-    dots = pen(of, 3.2 * LOOK.scale if len(x) < 400 else 2.2 * LOOK.scale, 255 if len(x) < 400 else 130)
+    dots = pen(of, 3.2 * LOOK.scale if len(x) < 400 else 2.6 * LOOK.scale, 255 if len(x) < 400 else 150)
     dots.setCapStyle(Qt.PenCapStyle.RoundCap)
     painter.setPen(dots)
     painter.drawPoints(frame.points(x, y))
@@ -133,6 +133,6 @@ def _dots(painter: QPainter, frame: Frame, x: Array, y: Array, of: Colour = MEAS
 def _line(painter: QPainter, frame: Frame, x: Array, y: Array) -> None:
     painter.save()
     painter.setClipRect(frame.box)
-    painter.setPen(pen(MODELLED, 1.5 * LOOK.scale))
+    painter.setPen(pen(MODELLED, 1.1 * LOOK.scale))
     painter.drawPolyline(frame.points(x, y))
     painter.restore()

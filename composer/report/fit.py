@@ -28,7 +28,8 @@ def sentences(fitted: Fitted, bench: str) -> Iterator[str]:
     span = fitted.time[-1] - fitted.time[0]
     load = "with the force that was measured" if fitted.load_N is None else f"at a load of {fitted.load_N:g} N"
     thinned = "" if fitted.used == fitted.rows else f", taken as {fitted.used} means"
-    yield f"fitted from {_plain(bench)}: {fitted.rows} rows{thinned}, {span:.4g} s, {load}"
+    file = _plain(bench.replace("\\", "/").rsplit("/", 1)[-1])
+    yield f"fitted from {file}: {fitted.rows} rows{thinned}, {span:.4g} s, {load}"
     if fitted.kind == "rated":
         yield f"the stroke measured is {fitted.stroke:.4g}, and its noise {fitted.noise:.2g} (standard deviation)"
     else:
@@ -63,6 +64,7 @@ def as_json(fitted: Fitted, bench: str) -> dict[str, Any]:
                 "low": _tidy(one.low),
                 "high": _tidy(one.high),
                 "told": one.told,
+                "held": one.held,
                 "why": one.why,
             }
             for one in fitted.found
@@ -78,6 +80,8 @@ def as_json(fitted: Fitted, bench: str) -> dict[str, Any]:
 
 def value_text(one: Found) -> str:
     """A value with as many digits as its interval is worth."""
+    if one.held:
+        return _rounded(one.value, 1e-3 * abs(one.value))
     return _rounded(one.value, max(one.high - one.value, one.value - one.low))
 
 
@@ -103,7 +107,7 @@ def _remark(key: str, found: dict[str, Found], fitted: Fitted) -> str:
         one = found[key]
         if one.told:
             return interval_text(one)
-        return f"THE DATA CANNOT TELL: {interval_text(one)}"
+        return "THE DATA CANNOT TELL: " + ("not found but taken" if one.held else interval_text(one))
     return fitted.known.get(key, "")
 
 
@@ -113,7 +117,9 @@ def _rounded(value: float, half: float) -> str:
         return "0"
     size = math.floor(math.log10(abs(value)))
     digits = 1 - math.floor(math.log10(half)) if half > 0.0 else 5 - size
-    digits = min(max(digits, 2 - size), 5 - size, 12)
+    if half < abs(value):
+        digits = min(max(digits, 2 - size), 5 - size)
+    digits = min(digits, 12)
     shown = round(value, digits)
     return say_number(shown) if digits <= 0 else f"{shown:.{digits}f}".rstrip("0").rstrip(".")
 

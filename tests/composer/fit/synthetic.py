@@ -85,22 +85,39 @@ def needed_kPa(e, true, load):
     return (push + load / 1e3) / pull_a_kPa
 
 
+def needed_by_a_sleeve_kPa(e, true, load):
+    """The same of a tube in a pleated sleeve: P A = A_w G (l − l⁻³) + load, l = 1 + e."""
+    r, t = true["outer_diameter_mm"] / 2e3, true["wall_mm"] / 1e3
+    area, wall = np.pi * r**2, np.pi * (r**2 - (r - t) ** 2)
+    return (wall * true["shear_modulus_kPa"] * (1.0 + e - (1.0 + e) ** -3) + load / 1e3) / area
+
+
+def stop_of(true):
+    """The strain at which a fiber ends its motion."""
+    if "sleeve_limit" in true:
+        return true["sleeve_limit"]
+    return (1.0 - 1.0 / np.sqrt(3.0) / np.cos(np.radians(true["braid_angle_deg"]))) / true["end_factor"]
+
+
 def held(pressure_kPa, true, load):
     """Strain that a pressure holds without friction, by root finding, through a fine table."""
-    stop = (1.0 - 1.0 / np.sqrt(3.0) / np.cos(np.radians(true["braid_angle_deg"]))) / true["end_factor"]
+    stop = stop_of(true)
+    needed = needed_by_a_sleeve_kPa if "sleeve_limit" in true else needed_kPa
     levels = np.linspace(0.0, 1.2 * pressure_kPa.max() + 1.0, 1500)
     table = []
     for level in levels:
-        if needed_kPa(0.0, true, load) >= level:
+        if needed(0.0, true, load) >= level:
             table.append(0.0)
+        elif needed(stop * (1.0 - 1e-7), true, load) <= level:
+            table.append(stop)
         else:
-            table.append(brentq(lambda e, level=level: needed_kPa(e, true, load) - level, 0.0, stop * (1.0 - 1e-7), xtol=1e-13))
+            table.append(brentq(lambda e, level=level: needed(e, true, load) - level, 0.0, stop * (1.0 - 1e-7), xtol=1e-13))
     return lambda p: np.interp(p, levels, table)
 
 
 def exact(true=TRUE, load=LOAD_N, program=pressure_program, until=23.0, rate=200, fine=20):
     """Times in s, pressures in kPa and strains as they are, without noise; `fine` steps of the equations between rows."""
-    steps = int(round(until * rate)) * fine
+    steps = round(until * rate) * fine
     time = np.arange(steps + 1) / (rate * fine)
     pressure = program(time)
     at = held(pressure, true, load)
