@@ -54,12 +54,12 @@ class ModelledInverse:
 
         soon: (M, T) strain wanted one lag later, ahead: (M, T) some way later; both are `strain` where nobody knows.
         The lag is led by settle times rate, but no further than the score itself goes within it, since friction would keep
-        what went too far.
+        what went too far; a fiber that stands still sets out one lag early, as no valve gives it a leading jump.
         """
         step = np.diff(strain, axis=1, prepend=told.strain[:, None])
         side, played = self._side(told, step, ahead - strain), strain
         if self.leads:
-            led = strain + step * (self.settle / tick_s)[:, None]
+            led = np.where(np.abs(step) > STILL, strain + step * (self.settle / tick_s)[:, None], soon)
             played = np.clip(led, np.minimum(strain, soon), np.maximum(strain, soon))
         played = np.clip(played, 0.0, self.stroke[:, None])
         holds = self._holds(played)
