@@ -155,7 +155,7 @@ def _missing(
     if not left:
         return
     names = ", ".join(key.name for key in left)
-    lines = "\n   ".join(f"# {key.name} = {_sample(key)}   ({key.says})" for key in left)
+    lines = "\n   ".join(f"# {key.name} = {_sample(key)}   # {key.says}" for key in left)
     raise fault(
         bench.file,
         f"for a fiber of kind {kind} these must be known and are not: {names}",
