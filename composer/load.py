@@ -91,8 +91,8 @@ def made_from(score: Score, rig: Rig) -> Loaded:
 def _rig_of(score: Score, folder: str, faults: list[Fault]) -> Rig | None:
     """The rig that a score names; None, and faults, where it cannot be had."""
     if score.rig is None:
-        # Where the statement is there but could not be read, that has been said.
-        if not any(fault.where.text.lstrip().startswith("rig") for fault in faults):
+        # Where the statement is there but could not be read, or the file is none, that has been said.
+        if not any(fault.where.text.lstrip().startswith("rig") or not fault.where.line for fault in faults):
             faults.append(Fault(Where(score.file), "the score names no rig", "a statement such as 'rig estuary.rig.toml'"))
         return None
     try:

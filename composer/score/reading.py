@@ -34,6 +34,11 @@ def read_score(text: str, file: str, read_used: ReadUsed | None = None) -> Score
 
 def parse_score(text: str, file: str, read_used: ReadUsed | None = None) -> tuple[Score, list[Fault]]:
     """As `read_score`, but with the faults beside what could be read: for an editor, where a line is often half-typed."""
+    table = next((line for line in text.splitlines() if line.strip() and not line.lstrip().startswith("#")), "").strip()
+    if table.startswith("[") and table.endswith("]"):
+        # Told once: as a score, every line of a rig file would be a fault.
+        found = f"its first line is '{table[:40]}', so it is a rig or another file of settings"
+        return _Reader(file, read_used).score(_Reader(file, read_used).read("", "", ())), [Fault(Where(file), found, "a score")]
     reader = _Reader(file, read_used)
     main = reader.read(text, "", ())
     score = reader.score(main)

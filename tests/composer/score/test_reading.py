@@ -238,3 +238,11 @@ def test_a_good_score_spoilt_anywhere_gives_a_score_or_faults(data):
     score, faults = parse_score(text, "any.score", lambda path: "")
     assert isinstance(score, Score)
     assert all(one.found and one.where.file for one in faults)
+
+
+def test_a_rig_given_as_a_score_is_told_in_one_sentence():
+    with pytest.raises(Faults) as told:
+        read_score('# Estuary\n\n[rig]\nname = "Estuary"\nworn = false\n', "estuary.rig.toml")
+    assert str(told.value) == (
+        "estuary.rig.toml: its first line is '[rig]', so it is a rig or another file of settings; expected a score"
+    )
