@@ -112,7 +112,7 @@ def events_of(tracks: Tracks, abilities: Abilities, least_s: Array, firm: Array 
     free = ~begins & ~arrival & ~tied
 
     cluster = _clusters(tracks.time_s)
-    level = _levels(tracks, cluster, begins)
+    level = _levels(least_s, cluster, begins)
     landed = np.flatnonzero(arrival)
     keys, hit = np.unique(np.column_stack((cluster[landed], level[landed])), axis=0, return_inverse=True)
     hit = hit.ravel()
@@ -159,14 +159,13 @@ def _clusters(time_s: Array) -> Index:
     return rank
 
 
-def _levels(tracks: Tracks, cluster: Index, begins: Flags) -> Index:
+def _levels(least_s: Array, cluster: Index, begins: Flags) -> Index:
     """How many of its fiber's moves end, one after another, within a knot's own instant, up to that knot, (K,).
 
-    Moves without length as written still have to be made one after another, so their ends are hits of their own.
+    Moves without length as written that take time must be made one after another, so their ends are hits of their own.
     """
     same = np.concatenate(([False], cluster[1:] == cluster[:-1])) & ~begins
-    before = np.concatenate(([HOLD], tracks.manner[:-1]))
-    ends = np.cumsum(same & (before != HOLD) & (before != STEP))
+    ends = np.cumsum(same & (np.concatenate(([0.0], least_s[:-1])) > 0.0))
     opening = np.maximum.accumulate(np.where(same, 0, np.arange(len(same))))
     return ends - ends[opening]
 
@@ -181,7 +180,7 @@ def knot_times(events: Events, shift_s: Array, tracks: Tracks) -> Array:
     # A tied start that lies where it belongs keeps its written bits too.
     stays = ~moved & ((events.offset_s == 0.0) | (np.abs(hung - tracks.time_s) <= SAME_INSTANT_S))
     times = np.where((events.event < 0) | stays, tracks.time_s, hung)
-    # What is left of a wait before a tied start may come out a rounding below nothing.
-    tied = np.flatnonzero(events.offset_s != 0.0)
-    times[tied] = np.maximum(times[tied], times[tied - 1])
+    # What is left of a hold may come out a rounding below nothing.
+    starts = np.flatnonzero(events.free | (events.offset_s != 0.0))
+    times[starts] = np.maximum(times[starts], times[starts - 1])
     return times

@@ -12,7 +12,7 @@ from composer.retime.cuts import duty_rows, duty_spans
 from composer.retime.events import Events, events_of, knot_times, with_waits
 from composer.retime.hold import hold_rows
 from composer.retime.local import Least, least_cost
-from composer.retime.rows import ABOVE_ROW, Rows, duration_rows, joined, no_rows, order_rows, picked, pin_rows
+from composer.retime.rows import ABOVE_ROW, AIR_ROW, Rows, duration_rows, joined, no_rows, order_rows, picked, pin_rows
 from composer.retime.terms import Terms, all_terms
 from composer.rig.model import Rig
 from composer.tracks import MOVE, STEP, Tracks
@@ -114,7 +114,7 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
     air: set[tuple[int, int]] = set()
     shares = no_rows(events)
     free: Flags | None = None
-    rounds = 0
+    rounds, no_air = 0, False
     for _ in range(ROUNDS):
         least = least_cost(events, joined([rows, shares]), programme.terms, free, whole, limit_s)
         if least is None and len(shares.least):
@@ -123,10 +123,13 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
             shares = picked(shares, np.arange((len(shares.least) + 1) // 2, len(shares.least)))
             least = least_cost(events, joined([rows, shares]), programme.terms, free, whole, limit_s, _price(programme))
         if least is None:
-            rows, dropped = _keepable(programme, rows, whole, limit_s)
+            kept = _keepable(programme, rows, whole, limit_s)
+            dropped = len(rows.least) - len(kept.least)
             if not dropped:
                 return None
-            given_up += dropped
+            # Where no times keep the air even over whole moves, what is left of it is the checker's to tell.
+            no_air |= np.count_nonzero(kept.kind == AIR_ROW) < np.count_nonzero(rows.kind == AIR_ROW)
+            rows, given_up = kept, given_up + dropped
             continue
         free = least.free
         now = at_times(programme, least.shift_s)
@@ -135,7 +138,7 @@ def answer(programme: Programme, rig: Rig, abilities: Abilities, whole: bool = F
         if new:
             rows = joined([rows, duty_rows(new, programme.tracks, events, rig, abilities)])
             continue
-        spans = overdrawn(now, rig, abilities)
+        spans = [] if no_air else overdrawn(now, rig, abilities)
         if spans:
             more = whole_rows(spans, now, events, least.shift_s, rig, abilities, air)
             if len(more.least):
@@ -182,13 +185,13 @@ def _closer(
     return best, shares
 
 
-def _keepable(programme: Programme, rows: Rows, whole: bool, limit_s: float) -> tuple[Rows, int]:
-    """The rows less those over more than two events that stay broken at a high price, and how many those are."""
+def _keepable(programme: Programme, rows: Rows, whole: bool, limit_s: float) -> Rows:
+    """The rows less those over more than two events that stay broken at a high price."""
     least = least_cost(programme.events, rows, programme.terms, None, whole, limit_s, _price(programme))
     if least is None:
-        return rows, 0
+        return rows
     broken = (rows.kind >= ABOVE_ROW) & (rows.least - rows.matrix @ least.shift_s > GIVEN_UP_S)
-    return picked(rows, ~broken), int(np.count_nonzero(broken))
+    return picked(rows, ~broken)
 
 
 def _price(programme: Programme) -> float:

@@ -53,7 +53,7 @@ def least_by_clarabel(made, stroke, fill, exhaust, accel, keep, longest):
                     starts.append((k, abs(way) / stroke / 20.0))
             landings.setdefault(round(tracks.time_s[k + 1], 7), []).append((k + 1, abs(way) / stroke))
         if longest:
-            positive += [longest * one - total for total in above_half(tracks, t, wait, a, b, 0.5 * stroke)]
+            positive += [longest * one - total for total in above_half(tracks, t, wait, a, b, 0.5 * stroke + 1e-9)]
     instants = sorted(landings)
     for instant in instants:
         first = landings[instant][0][0]
