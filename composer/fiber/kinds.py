@@ -8,6 +8,7 @@ from composer.fiber import bending, coiling, contractile, extensile, modelled, r
 from composer.fiber.capability import Capability
 from composer.fiber.make import Make
 from composer.fiber.mounting import Mounting
+from composer.fiber.problems import problems
 from composer.keys import Key
 
 
@@ -65,7 +66,7 @@ def _held(make: Callable[..., Any], own: tuple[Key, ...]) -> Callable[..., Any]:
 
 def _row(name: str, keys: Any, make: Callable[..., Any], units: set[str]) -> Kind:
     """The row of a kind that is modelled from its make."""
-    return Kind(name, keys, make, modelled.capability, frozenset(units), modelled.problems)
+    return Kind(name, keys, make, modelled.capability, frozenset(units), problems)
 
 
 KINDS: dict[str, Kind] = {

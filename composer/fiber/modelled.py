@@ -1,7 +1,6 @@
 """From a make as mounted to its physics in SI and to its capability: the same way for every modelled kind."""
 
 import math
-from typing import Any
 
 import numpy as np
 
@@ -10,21 +9,12 @@ from composer.fiber.bending import Bending
 from composer.fiber.capability import Capability
 from composer.fiber.coiling import Coiling
 from composer.fiber.make import Make
-from composer.fiber.mounting import Mounting, Supply
+from composer.fiber.mounting import Mounting
 from composer.fiber.orifice import orifice
 from composer.fiber.path import Path
 from composer.fiber.pipe import Pipe
 from composer.fiber.rates import Physics
-from composer.fiber.work import exhausting_pressure, filling_pressure, ideal_force, reach
-
-FULL_SHARE = 0.95
-"""Share of the worst supply at which a stroke is usable (rig-file.md)."""
-
-LEAST_STROKE = 1e-4
-"""A usable strain below this is none."""
-
-LEAST_RETURN = 50.0
-"""Pressure in Pa, half way to its stop, below which a fiber would never come back to rest."""
+from composer.fiber.work import ideal_force, reach
 
 
 def physics_of(make: Make | Bending | Coiling, mounting: Mounting) -> Physics:
@@ -39,7 +29,7 @@ def physics_of(make: Make | Bending | Coiling, mounting: Mounting) -> Physics:
         # Half of the fiber's own bore; of a bundle, so many side by side.
         Pipe(shape.bore, shape.length * mounting.series / 2.0, mounting.bundle),
     )
-    full = _full(base, supply)
+    full = rates.full_pressure(base.max_pressure_kPa, supply)
     load = mounting.load_N / mounting.bundle
     return Physics(
         shape=shape,
@@ -84,65 +74,3 @@ def capability(make: Make | Bending | Coiling, mounting: Mounting) -> Capability
         held_above=high,
         physics=physics,
     )
-
-
-def problems(make: Make | Bending | Coiling, mounting: Mounting) -> list[tuple[str, str, str]]:
-    """What cannot be about a make as mounted, as (key to change, what was found, what was expected).
-
-    Asks for a few pressures only, so that thousands of fibers, each mounted in its own way, are soon seen through.
-    """
-    found = make.problems()
-    if found:
-        return found
-    base = make if isinstance(make, Make) else make.base
-    shape, friction = base.shape(), base.friction_fraction
-    stop = shape.stop if isinstance(make, Make) else make.stop()
-    load, full = mounting.load_N / mounting.bundle, _full(base, mounting.supply)
-    begins, moves = filling_pressure(shape, np.array([0.0, min(LEAST_STROKE, stop)]), load, friction)
-    if begins >= full:
-        return [_too_heavy(base, mounting, begins, full)]
-    if moves > full or stop < LEAST_STROKE:
-        return [_no_stroke(make, base, mounting, full, stop)]
-    returns = exhausting_pressure(shape, np.array([stop / 2.0]), load, friction)[0]
-    if returns < LEAST_RETURN:
-        found = f"neither elastomer nor load brings it back to rest: {returns:.2g} Pa hold it half way"
-        return [("shear_modulus_kPa", found, f"an elastomer, or a load, that takes {LEAST_RETURN:g} Pa at least")]
-    return []
-
-
-def _too_heavy(base: Make, mounting: Mounting, begins: float, full: float) -> tuple[str, str, str]:
-    """A load that the fiber cannot begin to move: fewer newtons, or what else would do."""
-    lifts = full * (1.0 - base.friction_fraction) * base.shape().volume_slope(np.zeros(1))[0] / base.shape().length
-    load = mounting.load_N
-    found = f"a load of {load:g} N needs {begins / 1e3:.4g} kPa to begin to move, and {_gets(base, mounting.supply, full)}"
-    key = _pressure_key(base, mounting.supply)
-    others = f"more {key}, or a bundle of {math.floor(load / lifts) + 1}"
-    return "load_N", found, f"less than {lifts * mounting.bundle:.3g} N, {others}"
-
-
-def _no_stroke(make: Any, base: Make, mounting: Mounting, full: float, stop: float) -> tuple[str, str, str]:
-    """A fiber that moves by next to nothing, by its shape or by its pressure."""
-    if stop < LEAST_STROKE:
-        own = {"contract": "braid_angle_deg", "extend": "sleeve_limit"}[base.direction]
-        key = own if base.shape().stop < LEAST_STROKE else "constraint_length_mm"
-        return key, f"its shape ends the motion at a strain of {stop:.2g}", "a make that moves by 0.01 % of its length at least"
-    found = f"no stroke is left: {_gets(base, mounting.supply, full)}"
-    return _pressure_key(base, mounting.supply), found, "what moves it by 0.01 % of its length at least"
-
-
-def _full(base: Make, supply: Supply) -> float:
-    """The gauge pressure in Pa at which a stroke is usable."""
-    return min(FULL_SHARE * rates.worst_supply(supply), base.max_pressure_kPa * 1e3)
-
-
-def _pressure_key(base: Make, supply: Supply) -> str:
-    """The key that sets that pressure."""
-    if base.max_pressure_kPa * 1e3 <= FULL_SHARE * rates.worst_supply(supply):
-        return "max_pressure_kPa"
-    return "pressure_kPa" if supply.pressure_kPa <= supply.min_pressure_kPa else "min_pressure_kPa"
-
-
-def _gets(base: Make, supply: Supply, full: float) -> str:
-    """How much it gets, and by which key."""
-    key = _pressure_key(base, supply)
-    return f"it gets {full / 1e3:.4g} kPa ({'' if key == 'max_pressure_kPa' else '95 % of '}{key})"

@@ -52,6 +52,20 @@ def mass_flow(orifice: Orifice, upstream: Array, downstream: Array, T: float = T
     return np.where(np.asarray(upstream) >= downstream, flow, -flow)
 
 
+def upstream_pressure(orifice: Orifice, flow: Array, downstream: Array, T: float = T_ANR) -> Array:
+    """The absolute pressure in Pa that drives a mass flow in kg/s out at `downstream` Pa: the inverse of `mass_flow`."""
+    b = orifice.b
+    bend = max(NEARLY_EQUAL, 0.5 * (1.0 + b))
+    at_bend = np.sqrt(1.0 - ((bend - b) / (1.0 - b)) ** 2)
+    choked = flow / (orifice.C * RHO_ANR * np.sqrt(T_ANR / T))
+    straight = downstream + choked * (1.0 - bend) / at_bend
+    # On the ellipse (1 - 2b) p² + 2b p2 p = p2² + (1 - b)² (m'/C')²; the root in the form that holds for b of a half, too.
+    right = downstream**2 + ((1.0 - b) * choked) ** 2
+    under = np.maximum((b * downstream) ** 2 + (1.0 - 2.0 * b) * right, 0.0)
+    ellipse = right / (b * downstream + np.sqrt(under))
+    return np.where(downstream > bend * straight, straight, np.where(downstream <= b * choked, choked, ellipse))
+
+
 def water_area(orifice: Orifice) -> float:
     """Effective area in m² of the same opening for water: the nozzle area that has this sonic conductance."""
     return orifice.C / CONDUCTANCE_PER_AREA

@@ -7,14 +7,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.fiber import pipe as tubes
-from composer.fiber.gas import R_AIR, T_ANR, air_viscosity
-from composer.fiber.orifice import Orifice, mass_flow
+from composer.fiber.gas import R_AIR, RHO_ANR, T_ANR, air_viscosity
+from composer.fiber.orifice import Orifice, upstream_pressure
 from composer.fiber.pipe import Pipe, friction_factor
 
 Array = NDArray[np.float64]
 
-HALVINGS = 60
-"""Bisection steps for the pressure between valve and tube: to the last digit of a double."""
+HALVINGS = 54
+"""Bisection steps for the flow: to the last digits of a double."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,39 +58,38 @@ def pressure_before(pipe: Pipe, flow: Array, after: Array, T: float = T_ANR) -> 
 
 def fill_flow(path: Path, supply: Array, fiber: Array) -> Array:
     """Mass flow in kg/s from a supply into a fiber, absolute pressures in Pa, valve fully open; 0 where supply is the lower."""
-
-    def excess(middle: Array) -> Array:
-        flow = np.maximum(mass_flow(path.valve, supply, middle, path.T), 0.0)
-        before = fiber
-        for pipe in reversed(path.pipes):
-            before = pressure_before(pipe, flow, before, path.T)
-        return before - middle
-
-    supply, fiber = np.broadcast_arrays(np.asarray(supply, float), np.asarray(fiber, float))
-    middle = _bisect(excess, fiber, np.maximum(supply, fiber))
-    return np.where(supply > fiber, np.maximum(mass_flow(path.valve, supply, middle, path.T), 0.0), 0.0)
+    return _flow(
+        lambda flow: upstream_pressure(path.valve, flow, _through(path.pipes[::-1], flow, fiber, path.T), path.T),
+        path,
+        supply,
+        fiber,
+    )
 
 
 def exhaust_flow(path: Path, fiber: Array, ambient: Array | float) -> Array:
     """Mass flow in kg/s from a fiber to the outside, absolute pressures in Pa, valve fully open; 0 where fiber is the lower."""
-
-    def excess(middle: Array) -> Array:
-        flow = np.maximum(mass_flow(path.valve, middle, ambient, path.T), 0.0)
-        before = middle
-        for pipe in path.pipes:
-            before = pressure_before(pipe, flow, before, path.T)
-        return fiber - before
-
-    fiber, ambient = np.broadcast_arrays(np.asarray(fiber, float), np.asarray(ambient, float))
-    middle = _bisect(excess, ambient, np.maximum(fiber, ambient))
-    return np.where(fiber > ambient, np.maximum(mass_flow(path.valve, middle, ambient, path.T), 0.0), 0.0)
+    return _flow(
+        lambda flow: _through(path.pipes, flow, upstream_pressure(path.valve, flow, ambient, path.T), path.T),
+        path,
+        fiber,
+        ambient,
+    )
 
 
-def _bisect(falling: Callable[[Array], Array], low: Array, high: Array) -> Array:
-    """The root of a falling function between two arrays of bounds, each element on its own."""
-    low, high = low.copy(), high.copy()
+def _through(pipes: tuple[Pipe, ...], flow: Array, after: Array, T: float) -> Array:
+    """Pressure before the last of these tubes, the first of them at the outlet."""
+    for pipe in pipes:
+        after = pressure_before(pipe, flow, after, T)
+    return after
+
+
+def _flow(needs: Callable[[Array], Array], path: Path, high: Array, low: Array) -> Array:
+    """The flow for which `needs`, the pressure at the inlet that drives a flow to the outlet, is the one that is there."""
+    high, low = np.broadcast_arrays(np.asarray(high, float), np.asarray(low, float))
+    # Bisection on the flow, not on a pressure between: a wide valve's drop would be lost in the last digits.
+    least, most = np.zeros(high.shape), path.valve.C * RHO_ANR * np.sqrt(T_ANR / path.T) * high
     for _ in range(HALVINGS):
-        middle = 0.5 * (low + high)
-        right = falling(middle) > 0.0
-        low, high = np.where(right, middle, low), np.where(right, high, middle)
-    return 0.5 * (low + high)
+        middle = 0.5 * (least + most)
+        more = needs(middle) < high
+        least, most = np.where(more, middle, least), np.where(more, most, middle)
+    return np.where(high > low, 0.5 * (least + most), 0.0)

@@ -18,6 +18,9 @@ Array = NDArray[np.float64]
 POINTS = 97
 """Strains in a table."""
 
+FULL_SHARE = 0.95
+"""Share of the worst supply at which a stroke is usable (rig-file.md)."""
+
 HELD_SHARE = 0.02
 """Below this share of stroke the exhaust rate, and above one less it the fill rate, keeps its value there (physics.md)."""
 
@@ -56,6 +59,11 @@ class Physics:
 def worst_supply(supply: Supply) -> float:
     """The lowest gauge pressure in Pa that the fibers are promised for: regulator, or receiver where that is lower."""
     return min(supply.pressure_kPa, supply.min_pressure_kPa) * 1e3
+
+
+def full_pressure(max_pressure_kPa: float, supply: Supply) -> float:
+    """The gauge pressure in Pa at which a stroke is usable, for a fiber that may have so much."""
+    return min(FULL_SHARE * worst_supply(supply), max_pressure_kPa * 1e3)
 
 
 def pressures(physics: Physics, e: Array) -> tuple[Array, Array]:

@@ -11,6 +11,9 @@ from numpy.typing import NDArray
 
 Array = NDArray[np.float64]
 
+LEAST_SLOPE = 1e-12
+"""Share of its volume at rest below which a fiber's dV/de counts as this."""
+
 
 class Kinematics(Protocol):
     """What one fiber's shape does with strain."""
@@ -53,8 +56,9 @@ def exhausting_pressure(shape: Kinematics, e: Array, load: float, friction: floa
 
 
 def _needed(shape: Kinematics, e: Array, load: float) -> Array:
-    slope = np.maximum(shape.volume_slope(e), 1e-300)
-    return (shape.energy_slope(e) + load * shape.length) / slope
+    # At the very stop of a braid V' is nothing and at rest W' is, but for rounding: never a pressure without end, or below 0.
+    slope = np.maximum(shape.volume_slope(e), LEAST_SLOPE * shape.volume(0.0))
+    return (np.maximum(shape.energy_slope(e), 0.0) + load * shape.length) / slope
 
 
 def reach(shape: Kinematics, pressure: float, load: float, friction: float) -> float:

@@ -149,7 +149,7 @@ def parts_of(dt_s: float) -> int:
 
 
 def settled(settle: Array, strain: Array, before: Array, now: Array, h: float) -> Array:
-    """The lag of elastomer and braid (Kelvin and Voigt), `settle` in s: exact where strain goes straight from `before` to `now`."""
+    """The lag of elastomer and braid (Kelvin and Voigt), `settle` in s: exact for a straight way from `before` to `now`."""
     lags = settle > 0.0
     tau = np.where(lags, settle, 1.0)
     behind = tau * (now - before) / h

@@ -27,10 +27,11 @@ HOLDS_IN, HOLDS_OUT, SWELL = range(3)
 
 @dataclass(frozen=True, slots=True, eq=False)
 class WateredFibers:
-    """M modelled fibers full of water; arrays (M,). `drive` is 0 pressure, 1 strain, 2 valve; `full` Pa gauge of a set-point of 1.
+    """M modelled fibers full of water; arrays (M,). `drive` is 0 pressure, 1 strain, 2 valve.
 
-    by_strain: (A, POINTS, 3) from 0 to `reach` (A,); by_pressure: (A, POINTS, 2) strain on the way in and out, from 0 to `top` Pa
-    area: m² of valve; resistance: Pa s/m³ of tubes; limit: Pa gauge of the regulator
+    by_strain: (A, POINTS, 3) from 0 to `reach` (A,)
+    by_pressure: (A, POINTS, 2) strain on the way in and out, from 0 to `top` Pa gauge, the regulator's
+    full: Pa gauge that a set-point of 1 means; area: m² of valve; resistance: Pa s/m³ of tubes
     """
 
     by_strain: Array
@@ -125,7 +126,7 @@ def watered_fibers(rig: Rig, abilities: Abilities, members: Index) -> WateredFib
         reach=np.array([reach_of(each) for each in physics]),
         top=top,
         stroke=abilities.stroke[members],
-        full=np.array([min(each.limit, top) for each in physics])[which],
+        full=np.array([each.limit for each in physics])[which],
         settle=np.array([each.settle for each in physics])[which],
         drive=np.array(drives, dtype=np.int8),
         area=np.array([water_area(each.path.valve) for each in physics])[which],

@@ -28,7 +28,9 @@ def table(name: str, kind: str, make) -> str:
         values = {"base": {"contract": "contractile", "extend": "extensile"}[base.direction], **values.pop("base"), **values}
     lines = [f"[fiber_type.{name}]", f'kind = "{kind}"']
     lines += [
-        f'{key} = "{value}"' if isinstance(value, str) else f"{key} = {value}" for key, value in values.items() if value is not None
+        f'{key} = "{value}"' if isinstance(value, str) else f"{key} = {value}"
+        for key, value in values.items()
+        if value is not None
     ]
     return "\n".join(lines) + "\n"
 

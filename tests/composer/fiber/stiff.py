@@ -131,8 +131,8 @@ def way_flow(fiber, p_from, p_to, filling):
 def journey(fiber, P0, e0, goal, supply, times, strain0=None):
     """Gauge pressure, strain after friction, strain after lag at `times` for a valve open until the pressure is `goal`.
 
-    Integrates dP/dt = n (R T m' - P V' de/dt) / V and settle ds/dt = e - s with LSODA; de/dt = e'(P) dP/dt where the fiber is at
-    the edge of its friction band, else 0.
+    Integrates dP/dt = n (R T m' - P V' de/dt) / V and settle ds/dt = e - s with LSODA; de/dt = e'(P) dP/dt where the fiber
+    is at the edge of its friction band, else 0.
     """
     filling = goal > P0
     holds = fiber.holds("in" if filling else "out")

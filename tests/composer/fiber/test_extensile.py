@@ -24,7 +24,12 @@ def test_without_a_load_pressure_on_the_bore_holds_the_stretched_wall(e, G_kPa, 
 def test_a_wall_as_large_as_the_area_it_is_blown_on_extends_as_bellows_of_the_trade_do(outside):
     # With the wall's area equal to the one that the pressure acts on, 350 kPa on G = 100 kPa: l - l^-3 = 3.5.
     whole = Extensile(
-        rest_length_mm=100.0, outer_diameter_mm=6.0, wall_mm=2.999999, shear_modulus_kPa=100.0, max_pressure_kPa=350.0, sleeve_limit=5.0
+        rest_length_mm=100.0,
+        outer_diameter_mm=6.0,
+        wall_mm=2.999999,
+        shear_modulus_kPa=100.0,
+        max_pressure_kPa=350.0,
+        sleeve_limit=5.0,
     )
     e = reach(whole.shape(), 350e3, 0.0, 0.0)
     assert e == pytest.approx(outside["fibers_of_the_trade"]["extension"], abs=0.1)

@@ -216,9 +216,9 @@ def test_the_mass_for_a_rise_of_pressure_is_that_of_the_balance():
     V = lambda e: float(rates.gas_volume(physics, np.array(e)))  # noqa: E731
     e = np.linspace(e0, e1, 2001)
     P, volume = np.interp(e, at, holds) + 101325.0, np.array([V(each) for each in e])
-    mass = np.sum(
-        (volume[1:] + volume[:-1]) / 2 * np.diff(P) / physics.n + (P[1:] + P[:-1]) / 2 * np.diff(volume)
-    ) / (R_AIR * 293.15)
+    mass = np.sum((volume[1:] + volume[:-1]) / 2 * np.diff(P) / physics.n + (P[1:] + P[:-1]) / 2 * np.diff(volume)) / (
+        R_AIR * 293.15
+    )
     assert arrived
     assert flow * took == pytest.approx(mass, rel=1e-3)
 

@@ -1,3 +1,5 @@
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from hypothesis import assume, given, settings
@@ -30,7 +32,8 @@ def test_at_rest_the_elastomer_is_at_rest(make):
     shape = make.shape()
     assert float(shape.energy(np.array(0.0))) == pytest.approx(0.0, abs=1e-12 * shape.wall * make.shear_modulus_kPa * 1e3)
     assert float(shape.energy_slope(np.array(0.0))) == pytest.approx(
-        0.0, abs=1e-11 * shape.wall * make.shear_modulus_kPa * 1e3 / np.tan(np.radians(getattr(make, "braid_angle_deg", 45.0))) ** 2
+        0.0,
+        abs=1e-11 * shape.wall * make.shear_modulus_kPa * 1e3 / np.tan(np.radians(getattr(make, "braid_angle_deg", 45.0))) ** 2,
     )
 
 
@@ -52,7 +55,7 @@ def cycle(shape, load, friction, turns):
     A strain that turns back stays until pressure has crossed the friction band, where no work is done.
     """
     gas = lifted = stored = rubbed = 0.0
-    for begin, end in zip(turns[:-1], turns[1:], strict=True):
+    for begin, end in pairwise(turns):
         e = np.linspace(begin, end, 2001)
         middle, step = (e[1:] + e[:-1]) / 2.0, np.diff(e)
         holds = filling_pressure if end > begin else exhausting_pressure
@@ -65,7 +68,12 @@ def cycle(shape, load, friction, turns):
 
 
 @settings(max_examples=100)
-@given(st.sampled_from([CORD, PLEAT]), st.floats(0.0, 20.0), st.floats(0.0, 0.4), st.lists(st.floats(0.0, 0.9), min_size=2, max_size=8))
+@given(
+    st.sampled_from([CORD, PLEAT]),
+    st.floats(0.0, 20.0),
+    st.floats(0.0, 0.4),
+    st.lists(st.floats(0.0, 0.9), min_size=2, max_size=8),
+)
 def test_the_work_of_the_gas_is_in_load_elastomer_and_friction_over_any_path(make, load, friction, turns):
     shape = make.shape()
     gas, lifted, stored, rubbed = cycle(shape, load, friction, [turn * shape.stop for turn in turns])
@@ -74,7 +82,12 @@ def test_the_work_of_the_gas_is_in_load_elastomer_and_friction_over_any_path(mak
 
 
 @settings(max_examples=100)
-@given(st.sampled_from([CORD, PLEAT]), st.floats(0.0, 20.0), st.floats(0.0, 0.4), st.lists(st.floats(0.0, 0.9), min_size=2, max_size=8))
+@given(
+    st.sampled_from([CORD, PLEAT]),
+    st.floats(0.0, 20.0),
+    st.floats(0.0, 0.4),
+    st.lists(st.floats(0.0, 0.9), min_size=2, max_size=8),
+)
 def test_over_a_closed_cycle_all_the_work_of_the_gas_is_friction(make, load, friction, turns):
     shape = make.shape()
     strains = [turn * shape.stop for turn in turns]
