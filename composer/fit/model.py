@@ -13,10 +13,7 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 POINTS = 1024
-"""Strains in the table of a constant load."""
-
-HALVINGS = 44
-"""Bisections for a load that changes: to the last digits of a strain."""
+"""Strains in a table."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -74,13 +71,22 @@ def edges(drive: Drive, shape: Kinematics, stop: float, friction: float) -> tupl
 
 
 def _held(pressure: Array, load: Array, shape: Kinematics, top: float) -> Array:
-    """The strain (N,) whose needed pressure is the given one, each row under a load of its own."""
-    low, high = np.zeros(len(pressure)), np.full(len(pressure), top)
-    for _ in range(HALVINGS):
-        middle = 0.5 * (low + high)
-        reached = filling_pressure(shape, middle, load, 0.0) <= pressure
+    """The strain (N,) whose needed pressure is the given one, each row under a load of its own.
+
+    What is needed is linear in the load, and rises with strain: its cell is found by halving, in tables of both parts.
+    """
+    strain = np.linspace(0.0, top, POINTS)
+    own = filling_pressure(shape, strain, 0.0, 0.0)
+    per_newton = filling_pressure(shape, strain, 1.0, 0.0) - own
+    low = np.zeros(len(pressure), dtype=np.int64)
+    high = np.full(len(pressure), POINTS - 1)
+    while np.any(high - low > 1):
+        middle = (low + high) // 2
+        reached = own[middle] + load * per_newton[middle] <= pressure
         low, high = np.where(reached, middle, low), np.where(reached, high, middle)
-    return 0.5 * (low + high)
+    begin, end = own[low] + load * per_newton[low], own[high] + load * per_newton[high]
+    share = np.clip((pressure - begin) / np.maximum(end - begin, 1e-300), 0.0, 1.0)
+    return strain[low] + share * (strain[high] - strain[low])
 
 
 def played(drive: Drive, edge_in: Array, edge_out: Array) -> Array:

@@ -15,14 +15,14 @@ from composer.fit.fitted import CONFIDENCE, Fitted, Found
 from composer.fit.known import Known, make_of
 from composer.fit.model import drive_of
 from composer.fit.parameters import SLEEVE, Parameter
-from composer.fit.problem import Problem, Progress, soft_cost, soft_scale, solve
+from composer.fit.problem import Problem, Progress, near, soft_cost, soft_scale, solve
 from composer.fit.smooth import noise
 from composer.fit.uncertainty import Uncertainty, hanging_together, robust_scale, uncertainty
 
 Array = NDArray[np.float64]
 
-MOST_ROWS = 8000
-"""Rows that are fitted at most; a longer bench is taken in means of several rows."""
+MOST_ROWS = 16_000
+"""Rows that are fitted at most; a longer bench is taken in means of several, and what that does is part of what is told."""
 
 ALIKE = 0.95
 """Correlation from which two parameters are hardly told apart."""
@@ -56,7 +56,7 @@ def fit_modelled(bench: Bench, known: Known, progress: Progress = lambda share: 
     theta = solve(problem, starts, progress)
     if SLEEVE in problem.free and not _sleeve_shows(problem, theta):
         return _without(bench, short, problem, (SLEEVE,), starts, progress)
-    sure = _uncertainty(problem, theta, short)
+    sure = _uncertainty(problem, theta, bench, short)
     # What the data do not touch at all is held at what is known or usual, and the others are found anew.
     blind = [
         number
@@ -81,7 +81,7 @@ def _without(
     held = {each.key: _usual(each, problem.known, short) for each in untold}
     fewer = replace(problem, free=tuple(each for each in problem.free if each not in untold), held=held)
     theta = solve(fewer, starts, progress)
-    return _fitted(bench, short, fewer, theta, _uncertainty(fewer, theta, short), untold, problem.known)
+    return _fitted(bench, short, fewer, theta, _uncertainty(fewer, theta, bench, short), untold, problem.known)
 
 
 def _sleeve_shows(problem: Problem, theta: Array) -> bool:
@@ -131,12 +131,18 @@ def _idle(problem: Problem, theta: Array, number: int) -> bool:
     return float(np.abs(problem.jacobian(theta)[:, number]).max()) < 1e-9
 
 
-def _uncertainty(problem: Problem, theta: Array, bench: Bench) -> Uncertainty:
+def _uncertainty(problem: Problem, theta: Array, bench: Bench, short: Bench) -> Uncertainty:
     residual = problem.residual(theta)
     strain = problem.strain(theta)
-    shaken = np.array([redrawn.strain(theta) - strain for redrawn in _redrawn(problem, bench)])
+    shaken = np.array([redrawn.strain(theta) - strain for redrawn in _redrawn(problem, short)])
     soft = soft_scale(residual)
-    return uncertainty(residual, problem.jacobian(theta), soft, CONFIDENCE, shaken.reshape(-1, len(residual)))
+    sure = uncertainty(residual, problem.jacobian(theta), soft, CONFIDENCE, shaken.reshape(-1, len(residual)))
+    if short.rows == bench.rows:
+        return sure
+    # Rows half as close move the parameters by more than those at hand have moved them from what every row would give.
+    coarse = thinned(bench, MOST_ROWS // 2)
+    other = replace(problem, drive=drive_of(coarse, problem.known.load_N), measured=coarse.strain)
+    return replace(sure, half=sure.half + np.abs(near(other, theta) - theta))
 
 
 def _redrawn(problem: Problem, bench: Bench) -> Iterator[Problem]:

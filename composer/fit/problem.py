@@ -113,6 +113,11 @@ def soft_cost(residual: Array, typical: Array) -> float:
     return float(2.0 * soft**2 * np.sum(np.sqrt(1.0 + u2) - 1.0))
 
 
+def near(problem: Problem, theta: Array) -> Array:
+    """The best parameters (P,) near others, such as those of a like problem."""
+    return _least(problem, theta, soft_scale(problem.residual(theta)), 30)
+
+
 def _least(problem: Problem, theta: Array, soft: float, most: int) -> Array:
     """The nearest least of the soft_l1 loss."""
     low, high = problem.bounds()
