@@ -95,7 +95,10 @@ class FrameReader:
         return list(self.frames(data))
 
     def frames(self, data: bytes) -> Iterator[bytes]:
-        """As `feed`, one after the other: at each payload `bad` counts what was dropped before it. To be gone through to its end."""
+        """As `feed`, one after the other: at each payload `bad` counts what was dropped before it.
+
+        To be gone through to its end.
+        """
         pieces = data.split(b"\0")
         last = len(pieces) - 1
         for place, piece in enumerate(pieces):

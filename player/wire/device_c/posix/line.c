@@ -1,0 +1,169 @@
+/* See line.h. */
+
+#define _XOPEN_SOURCE 700
+
+#include "line.h"
+
+#include <fcntl.h>
+#include <poll.h>
+#include <pthread.h>
+#include <stdlib.h>
+#include <string.h>
+#include <termios.h>
+#include <unistd.h>
+
+#define ROOM 65536u  /* what nobody reads is dropped beyond this, as a UART would */
+#define PARTS 1024u
+
+/* So many bytes that leave together. */
+struct part {
+    int64_t leaves_ns;
+    size_t count;
+};
+
+static pthread_mutex_t lock = PTHREAD_MUTEX_INITIALIZER;
+static struct line_wrongs wrongs;
+static int master = -1, wake[2];
+static uint8_t bytes_of[ROOM];
+static size_t first_byte, byte_count;
+static struct part part_of[PARTS];
+static size_t first_part, part_count;
+static uint32_t chance_in = 1, chance_out = 2;
+
+/* Numbers by chance, always the same ones: G. Marsaglia, "Xorshift RNGs", Journal of Statistical Software 8(14), 2003. */
+static uint32_t draw(uint32_t *chance, uint32_t below)
+{
+    *chance ^= *chance << 13;
+    *chance ^= *chance >> 17;
+    *chance ^= *chance << 5;
+    return *chance % below;
+}
+
+static size_t spoil(uint8_t *bytes, size_t count, uint32_t *chance)
+{
+    size_t at, kept = 0;
+
+    if (!wrongs.garbled && !wrongs.lost)
+        return count;
+    for (at = 0; at < count; at++) {
+        uint8_t byte = bytes[at];
+        if ((int)draw(chance, 1000) < wrongs.garbled)
+            byte ^= (uint8_t)(1 + draw(chance, 255));
+        if ((int)draw(chance, 1000) >= wrongs.lost)
+            bytes[kept++] = byte;
+    }
+    return kept;
+}
+
+const char *line_open(const struct line_wrongs *given)
+{
+    struct termios raw;
+    const char *path;
+    int slave;
+
+    wrongs = *given;
+    master = posix_openpt(O_RDWR | O_NOCTTY);
+    if (master < 0 || grantpt(master) || unlockpt(master) || !(path = ptsname(master)))
+        return NULL;
+    /* Kept open, so that the terminal outlives the hosts that come and go. */
+    slave = open(path, O_RDWR | O_NOCTTY);
+    if (slave < 0 || tcgetattr(slave, &raw))
+        return NULL;
+    raw.c_iflag = 0;
+    raw.c_oflag = 0;
+    raw.c_lflag = 0;
+    raw.c_cflag = CS8 | CREAD | CLOCAL;
+    raw.c_cc[VMIN] = 1;
+    raw.c_cc[VTIME] = 0;
+    cfsetispeed(&raw, B38400);
+    cfsetospeed(&raw, B38400);
+    if (tcsetattr(slave, TCSANOW, &raw) || pipe(wake) || fcntl(master, F_SETFL, O_NONBLOCK) ||
+        fcntl(wake[0], F_SETFL, O_NONBLOCK) || fcntl(wake[1], F_SETFL, O_NONBLOCK))
+        return NULL;
+    return path;
+}
+
+void line_wake(void)
+{
+    /* A pipe that is full wakes as well. */
+    if (write(wake[1], "", 1) < 0)
+        return;
+}
+
+void line_wait(int64_t now_ns, int64_t most_ns)
+{
+    struct pollfd on[2] = {{0, POLLIN, 0}, {0, POLLIN, 0}};
+    uint8_t scrap[64];
+
+    on[0].fd = master;
+    on[1].fd = wake[0];
+    pthread_mutex_lock(&lock);
+    if (part_count) {
+        int64_t leaves_ns = part_of[first_part].leaves_ns;
+        if (leaves_ns <= now_ns)
+            on[0].events |= POLLOUT;
+        else if (leaves_ns - now_ns < most_ns)
+            most_ns = leaves_ns - now_ns;
+    }
+    pthread_mutex_unlock(&lock);
+    poll(on, 2, (int)((most_ns + 999999) / 1000000));
+    while (read(wake[0], scrap, sizeof scrap) > 0)
+        continue;
+}
+
+size_t line_read(uint8_t *bytes, size_t room, int64_t now_ns)
+{
+    ssize_t count = read(master, bytes, room);
+
+    if (count <= 0)
+        return 0;
+    if (wrongs.echoes)
+        line_put(bytes, (size_t)count, now_ns);
+    return spoil(bytes, (size_t)count, &chance_in);
+}
+
+void line_clear(void)
+{
+    pthread_mutex_lock(&lock);
+    byte_count = part_count = 0;
+    pthread_mutex_unlock(&lock);
+}
+
+void line_put(const uint8_t *bytes, size_t count, int64_t now_ns)
+{
+    uint8_t sent[4096];
+    size_t at;
+
+    if (count > sizeof sent)
+        count = sizeof sent;
+    memcpy(sent, bytes, count);
+    pthread_mutex_lock(&lock);
+    count = spoil(sent, count, &chance_out);
+    if (byte_count + count > ROOM || part_count == PARTS)
+        byte_count = part_count = 0;
+    for (at = 0; at < count; at++)
+        bytes_of[(first_byte + byte_count++) % ROOM] = sent[at];
+    if (count)
+        part_of[(first_part + part_count++) % PARTS] = (struct part){now_ns + wrongs.late_ns, count};
+    pthread_mutex_unlock(&lock);
+}
+
+void line_send(int64_t now_ns)
+{
+    pthread_mutex_lock(&lock);
+    while (part_count && part_of[first_part].leaves_ns <= now_ns) {
+        struct part *part = &part_of[first_part];
+        size_t straight = ROOM - first_byte < part->count ? ROOM - first_byte : part->count;
+        ssize_t done = write(master, bytes_of + first_byte, straight);
+        if (done <= 0)
+            break;
+        first_byte = (first_byte + (size_t)done) % ROOM;
+        byte_count -= (size_t)done;
+        part->count -= (size_t)done;
+        if (!part->count) {
+            first_part = (first_part + 1) % PARTS;
+            part_count--;
+        }
+    }
+    pthread_mutex_unlock(&lock);
+}
