@@ -64,14 +64,17 @@ class Document:
             raise Faults(sorted(once[:MOST_FAULTS], key=lambda f: (f.where.line, f.where.column)) + last)
 
 
-def open_document(text: str, file: str) -> Document:
-    """Read TOML text into a document; raises `Faults` for text that is too long or no TOML, at line and column."""
+def open_document(text: str, file: str, what: str = "rig file") -> Document:
+    """Read TOML text into a document; raises `Faults` for text that is too long or no TOML, at line and column.
+
+    `what` is how messages call the file.
+    """
     size = len(text.encode("utf-8", "surrogatepass"))
     if size > MOST_BYTES:
-        raise Faults([Fault(Where(file), f"the rig file has {size} bytes", f"at most {MOST_BYTES}")])
+        raise Faults([Fault(Where(file), f"the {what} has {size} bytes", f"at most {MOST_BYTES}")])
     lines = text.replace("\r\n", "\n").split("\n")
     if len(lines) > MOST_LINES:
-        raise Faults([Fault(Where(file), f"the rig file has {len(lines)} lines", f"at most {MOST_LINES}")])
+        raise Faults([Fault(Where(file), f"the {what} has {len(lines)} lines", f"at most {MOST_LINES}")])
     for number, line in enumerate(lines, 1):
         if len(line) > MOST_LINE:
             where = Where(file, number, MOST_LINE + 1, 1, line)

@@ -1,0 +1,1 @@
+"""What comes in from hands and clocks: the map file, MIDI, OSC, followed and sent time."""
