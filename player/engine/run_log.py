@@ -1,10 +1,7 @@
 """The log of a run: one append-only file, framed and checksummed, so that a run cut off at any byte can be read up to there.
 
-Little-endian. The file begins with `MAGIC`. A record is
-
-    length:u32  kind:u8  time_us:u64  body: `length` bytes  crc:u32
-
-crc is CRC-32 (as in zlib) over length, kind, time and body; time is the engine's monotonic clock. Bodies:
+Little-endian. The file begins with `MAGIC`; records as in `player.engine.framed`, their time that of the engine's monotonic
+clock. Bodies:
 
     1 head      JSON: what is played, on which rig, to which targets, from which date; fiber names and drives in the rig's order
     2 state     JSON: {"was", "event", "state"}
@@ -18,7 +15,6 @@ crc is CRC-32 (as in zlib) over length, kind, time and body; time is the engine'
 
 import json
 import struct
-import zlib
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
@@ -26,16 +22,13 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from player.engine.framed import framed, frames
+
 MAGIC = b"drawclog\x01\x00"
 KINDS = {1: "head", 2: "state", 3: "command", 4: "set", 5: "sense", 6: "board", 7: "slip", 8: "end"}
 _NUMBERS = {name: number for number, name in KINDS.items()}
-_FRAME = struct.Struct("<IBQ")
-_CRC = struct.Struct("<I")
 _SET = struct.Struct("<QIQ")
 _SENSE = struct.Struct("<QH")
-
-LARGEST_BODY = 1 << 22
-"""Bytes; a longer record is no record."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -80,8 +73,7 @@ class RunLog:
                 self._record("sense", time_s, head + strain[run].astype("<f4").tobytes())
 
     def _record(self, kind: str, time_s: float, body: bytes) -> None:
-        framed = _FRAME.pack(len(body), _NUMBERS[kind], _us(time_s)) + body
-        self._put(framed + _CRC.pack(zlib.crc32(framed)))
+        self._put(framed(_NUMBERS[kind], _us(time_s), body))
 
     def _put(self, data: bytes) -> None:
         if self.broken:
@@ -105,15 +97,9 @@ def records(data: bytes) -> tuple[list[Record], int]:
     if not data.startswith(MAGIC):
         raise ValueError("no run log of a version that is known here")
     at, found = len(MAGIC), []
-    while at + _FRAME.size + _CRC.size <= len(data):
-        length, number, time_us = _FRAME.unpack_from(data, at)
-        end = at + _FRAME.size + length
-        if length > LARGEST_BODY or number not in KINDS or end + _CRC.size > len(data):
-            break
-        if zlib.crc32(data[at:end]) != _CRC.unpack_from(data, end)[0]:
-            break
-        found.append(_decoded(KINDS[number], time_us * 1e-6, data[at + _FRAME.size : end]))
-        at = end + _CRC.size
+    for number, time_us, body, end in frames(data, at, KINDS):
+        found.append(_decoded(KINDS[number], time_us * 1e-6, body))
+        at = end
     return found, len(data) - at
 
 
