@@ -42,19 +42,25 @@ class Block:
 
 
 def blocks(
-    tracks: Tracks, rig: Rig, abilities: Abilities, rate_Hz: float = DEFAULT_HZ, inverse: bool = True
+    tracks: Tracks,
+    rig: Rig,
+    abilities: Abilities,
+    rate_Hz: float = DEFAULT_HZ,
+    inverse: bool = True,
+    real: tuple[Rig, Abilities] | None = None,
 ) -> Iterator[Block]:
     """Play tracks on a simulated rig at `rate_Hz` and yield what happens at every tick from 0 s on, in order.
 
     It goes on past the score's end for as long as the slowest fiber takes for a stroke, so that late arrivals are seen.
     Commands are sent as a player sends them: ahead of the score by the lead of the slowest to respond, each asking for the
-    strain wanted at the end of its tick. `inverse` false sends everything without lead.
+    strain wanted at the end of its tick. `inverse` false sends everything without lead. `real`: the rig that is simulated,
+    where it is not the one that the sender believes in.
     """
     tick = 1.0 / rate_Hz
     motion = motion_of(tracks, abilities)
     sender = Inverse(rig, abilities, inverse)
     lead = sender.lead_s
-    simulated = SimulatedRig(rig, abilities)
+    simulated = SimulatedRig(*(real or (rig, abilities)))
     longest = float(lead.max(initial=0.0))
     early = int(np.ceil(longest / tick - SAME_INSTANT_S))
     # Commands are due `longest` ahead of the ticks, which are `early` whole ticks less this part of one: none where the
