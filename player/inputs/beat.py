@@ -34,7 +34,7 @@ class Beat:
 
 MOST_TICKS = 96
 FEWEST_TICKS = 12
-TURN_S = 0.0025
+TURN_S = 0.0015
 """How far the latest ticks may lie beside the line, on top of their noise, before the tempo is taken to have turned."""
 
 

@@ -132,8 +132,10 @@ class MidiBinds:
     def _falls_silent(self, events: list[Event], here: "_Here", why: str) -> None:
         port = here.port
         for index, channel, number in sorted(port.pressed):
-            self._lift(events, here, index, channel, number)
-        self._release(events, here, lambda key: True)
+            # The way to rest of what strokes moved is the governor's: it takes the fibers of `Silent` down at their safe rate.
+            if not isinstance(self._map.binds[index].deed, Stroke):
+                self._lift(events, here, index, channel, number)
+        port.pressed.clear()
         events.append(Silent(here.source, here.at_s, tuple(sorted(port.driven)), why))
         self.let_go(tuple(port.driven))
         port.driven.clear()
@@ -205,7 +207,9 @@ class MidiBinds:
             return
         here.port.pressed.discard(key)
         deed = self._map.binds[index].deed
-        if isinstance(deed, Does) and deed.what == "hold_to_run":
+        if isinstance(deed, Stroke):
+            self._want(events, here, index, deed, 0.0)
+        elif isinstance(deed, Does) and deed.what == "hold_to_run":
             events.append(HoldToRun(here.source, here.at_s, False))
         self._release(events, here, lambda held: held == key)
 
@@ -215,7 +219,6 @@ class MidiBinds:
         """Let go of the phrases that are held; one that is struck again is not brought to rest first."""
         for key in [key for key in here.port.held if which(key)]:
             name, deed = here.port.held.pop(key)
-            here.port.pressed.discard(key) if not retrigger else None
             events.append(End(here.source, here.at_s, name, deed.fibers, deed.rest and not retrigger))
 
     def _control(self, events: list[Event], here: "_Here", message: Message) -> None:
@@ -253,17 +256,15 @@ class MidiBinds:
         channel = message.channel + 1
         for index, bind, _ in self._found("note", message.note, channel, here.source):
             if isinstance(bind.deed, Stroke):
+                here.port.pressed.add((index, channel, message.note))
                 self._want(events, here, index, bind.deed, message.velocity / 127.0)
             else:
                 self._press(events, here, index, channel, message.note, message.velocity / 127.0)
 
     def _note_off(self, events: list[Event], here: "_Here", message: Message) -> None:
         channel = message.channel + 1
-        for index, bind, _ in self._found("note", message.note, channel, here.source):
-            if isinstance(bind.deed, Stroke):
-                self._want(events, here, index, bind.deed, 0.0)
-            else:
-                self._lift(events, here, index, channel, message.note)
+        for index, _, _ in self._found("note", message.note, channel, here.source):
+            self._lift(events, here, index, channel, message.note)
 
     def _bend(self, events: list[Event], here: "_Here", message: Message) -> None:
         self._move(events, here, "bend", 0, message.channel + 1, message.pitch + 8192)

@@ -7,7 +7,6 @@ from dataclasses import dataclass
 from composer.keys import Key
 
 MOST_BINDS = 2048
-MOST_FIBERS_WRITTEN = 200
 
 DOES = {
     "vent": "every valve exhausts, at once",
