@@ -6,9 +6,12 @@ Whatever is wrong changes nothing and is counted by its reason. There is no addr
 import heapq
 import math
 from collections.abc import Collection, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
-from composer.rig.select import Selector, UnknownName
+from composer.rig.model import Rig
+from composer.rig.select import Selector
+from composer.score.model import Score
+from composer.score.names import groups_of
 from player.inputs.beat import Beat
 from player.inputs.events import Ask, Back, Begin, End, Event, Silent, Wanted
 from player.inputs.model import Bind, Does, Map, Play, Stroke
@@ -25,11 +28,12 @@ MOST_WAITING = 4096
 FIBER, GROUP, PHRASE = "/drawcord/fiber/", "/drawcord/group/", "/drawcord/phrase/"
 CUE = "/drawcord/cue"
 ASKS = {f"/drawcord/{what}": what for what in ("pause", "go_on", "rest", "vent")}
-URGENT = tuple(f"/drawcord/{what}\0".encode() for what in ("rest", "vent"))
+STOPS = ("/drawcord/rest", "/drawcord/vent")
+URGENT = tuple(f"{address}\0".encode() for address in STOPS)
 """Packets that begin so are taken however many others come: nobody's flood keeps anyone from stopping."""
 
 ADDRESSES = {
-    "/drawcord/fiber/NAME": ("f", "the stroke wanted of a fiber, range or wildcard, a share from 0 to 1"),
+    "/drawcord/fiber/NAME": ("f", "the stroke wanted of a fiber, a share from 0 to 1"),
     "/drawcord/group/NAME": ("f", "the stroke wanted of a group"),
     "/drawcord/phrase/NAME": (
         "f, or nothing",
@@ -46,12 +50,32 @@ ADDRESSES = {
 
 @dataclass(frozen=True, slots=True)
 class Known:
-    """What names may stand in addresses: fibers and groups, phrases with the fibers that play them, cues."""
+    """What names may stand in addresses, with the fibers of each: fibers, groups, phrases; and the cues there are.
 
-    selector: Selector
-    groups: Collection[str] = ()
-    phrases: Mapping[str, tuple[int, ...]] | None = None
+    Only whole names: to look for what a misspelt one may have meant would give strangers a way to keep the player busy.
+    """
+
+    fibers: Mapping[str, int]
+    groups: Mapping[str, tuple[int, ...]] = field(default_factory=dict)
+    phrases: Mapping[str, tuple[int, ...]] = field(default_factory=dict)
     cues: Collection[str] = ()
+
+
+def known_of(rig: Rig, score: Score | None = None) -> Known:
+    """The names of a rig and of a score that has been checked on it; a phrase is played by all fibers that ever do."""
+    fibers = {fiber.name: index for index, fiber in enumerate(rig.fibers)}
+    if score is None:
+        return Known(fibers, dict(rig.groups))
+    selector = Selector(rig, groups_of(score))
+    groups = dict(rig.groups) | {name: selector.resolve(name) for name in score.groups}
+    players: dict[str, set[int]] = {name: set() for name in score.phrases}
+    for section in score.sections:
+        for entry in section.entries:
+            chosen = [index for name in entry.fibers for index in selector.resolve(name.text)]
+            partners = (rig.fibers[index].mirror for index in chosen) if entry.mirror else chosen
+            players[entry.phrase.text].update(index for index in partners if index is not None)
+    phrases = {name: tuple(sorted(found)) for name, found in players.items() if found}
+    return Known(fibers, groups, phrases, tuple(cue.name for cue in score.cues))
 
 
 class OscBinds:
@@ -129,12 +153,15 @@ class OscBinds:
         return True
 
     def _take(self, due: list[Event], message: OscMessage, now_s: float, ahead_s: float) -> None:
+        far = ahead_s > FARTHEST_S
+        full = ahead_s > 0.0 and len(self._waiting) + len(self._binds.get(message.address, "1")) * 2 > MOST_WAITING
+        if message.address in STOPS and (far or full):
+            # Whoever asks for a stop with a clock that is wrong gets it now.
+            ahead_s, far, full = 0.0, False, False
         at_s = now_s + ahead_s
+        if far or full:
+            raise Refused("late" if far else "full")
         events = self._events(message, at_s)
-        if ahead_s > FARTHEST_S:
-            raise Refused("late")
-        if ahead_s > 0.0 and len(self._waiting) + len(events) > MOST_WAITING:
-            raise Refused("full")
         self.taken += 1
         self._heard_s = now_s
         if self._silent:
@@ -161,36 +188,24 @@ class OscBinds:
             if message.arguments[0] not in self._known.cues:
                 raise Refused("name")
             return [Ask(SOURCE, at_s, "cue", str(message.arguments[0]))]
-        for room, find in ((FIBER, self._fiber), (GROUP, self._group)):
-            if address.startswith(room):
-                return [Wanted(SOURCE, at_s, find(address[len(room) :]), _share(message))]
+        if address.startswith(FIBER):
+            index = self._known.fibers.get(address[len(FIBER) :])
+            if index is None:
+                raise Refused("name")
+            return [Wanted(SOURCE, at_s, (index,), _share(message))]
+        if address.startswith(GROUP):
+            fibers = self._known.groups.get(address[len(GROUP) :])
+            if fibers is None:
+                raise Refused("name")
+            return [Wanted(SOURCE, at_s, fibers, _share(message))]
         if address.startswith(PHRASE):
             return [self._phrase(address[len(PHRASE) :], message, at_s)]
         if address in self._binds:
             return [event for index, bind in self._binds[address] for event in self._bound(index, bind, message, at_s)]
         raise Refused("address")
 
-    def _fiber(self, name: str) -> tuple[int, ...]:
-        if name in self._known.groups:
-            raise Refused("name")
-        return self._resolve(name)
-
-    def _group(self, name: str) -> tuple[int, ...]:
-        if name not in self._known.groups:
-            raise Refused("name")
-        return self._resolve(name)
-
-    def _resolve(self, name: str) -> tuple[int, ...]:
-        # Selectors remember what they have found: names that no fiber could have are not handed on.
-        if not 0 < len(name) <= 64 or not name.isascii():
-            raise Refused("name")
-        try:
-            return self._known.selector.resolve(name)
-        except UnknownName:
-            raise Refused("name") from None
-
     def _phrase(self, name: str, message: OscMessage, at_s: float) -> Event:
-        fibers = (self._known.phrases or {}).get(name)
+        fibers = self._known.phrases.get(name)
         if fibers is None:
             raise Refused("name")
         scale = _share(message) if message.types else 1.0
