@@ -49,7 +49,13 @@ def known_of(bench: Bench, name: str, rig: Rig | None, load_N: float | None) -> 
     said = {key: one.value for key, one in bench.said.items()}
     base = said.get("base", from_rig.get("base"))
     keys = KINDS[kind].keys_of({"base": base})
-    make = base if kind in ("bending", "coiling") else kind
+    held = next((key for key in keys if key.name == "base"), None)
+    if held is not None and base not in list(held.choices):
+        # Without a base nobody can say which of the other keys are right.
+        where = bench.said["base"].where if "base" in bench.said else Where(bench.file)
+        found = f"base is {base!r}"[:80] if base is not None else f"nothing says what base the {kind} fiber '{name}' has"
+        raise Faults([Fault(where, found, expected(held), f'such as a line # base = "{held.choices[0]}" above the header')])
+    make = base if held is not None else kind
     wanted = {each.key for each in OF_MAKE.get(str(make), ())} or RATED_FOUND
     by_name = {key.name: key for key in keys}
     wrong = [problem for key, one in bench.said.items() for problem in _wrong(key, one.value, one.where, by_name, kind)]

@@ -106,7 +106,7 @@ def lagged(time: Array, strain: Array, settle: float) -> Array:
     """The lag of elastomer and braid (Kelvin and Voigt), settled at the first row; exact for a strain that goes straight
     from row to row.
     """
-    if settle <= 0.0:
+    if settle < 1e-9:
         return strain
     h = np.diff(time)
     keeps = np.exp(-h / settle)
