@@ -78,10 +78,10 @@ class ModelledInverse:
         return sent, Told(side[:, -1], strain[:, -1].copy(), pressure)
 
     def _holds(self, strain: Array) -> Array:
-        """Pressures (..., 2) in Pa that hold strains (M, ...) on the way in and out."""
+        """Chart rows (..., 3) of strains (M, ...): pressures in Pa that hold them on the way in and out, and the room."""
         which = np.broadcast_to(self.which.reshape(-1, *[1] * (strain.ndim - 1)), strain.shape)
-        share = strain / self.charts.stroke[which]
-        return look_up(self.charts.by_strain, which.ravel(), share.ravel()).reshape(*strain.shape, 2)
+        share = strain / self.charts.reach[which]
+        return look_up(self.charts.by_strain, charts.POINTS * which.ravel(), share.ravel()).reshape(*strain.shape, 3)
 
     @staticmethod
     def _side(told: Told, step: Array, coming: Array) -> Array:
@@ -102,13 +102,13 @@ class ModelledInverse:
         return opening, pressure
 
     def _opening(self, pressure: Array, goal: Array, strain: Array, tick_s: float) -> tuple[Array, Array]:
-        row = look_up(self.charts.by_pressure, self.which, 0.5 * (pressure + goal) / self.charts.supply)
+        row = look_up(self.charts.by_pressure, charts.POINTS * self.which, 0.5 * (pressure + goal) / self.charts.supply)
         edges = self._holds(strain)
         filling = goal > pressure
         edge = np.where(filling, edges[:, charts.HOLDS_IN], edges[:, charts.HOLDS_OUT])
         still = np.clip(edge, np.minimum(pressure, goal), np.maximum(pressure, goal)) - pressure
         takes = np.where(filling, row[:, charts.TAKES_IN], row[:, charts.TAKES_OUT])
-        mass = still * row[:, charts.ROOM_IN] + (goal - pressure - still) * takes
+        mass = still * edges[:, charts.ROOM] + (goal - pressure - still) * takes
         most = tick_s * np.where(filling, row[:, charts.ENTERS + charts.SUPPLIES - 1], row[:, charts.LEAVES])
         enough = most > np.abs(mass)
         opening = np.divide(mass, most, out=np.sign(mass), where=enough)

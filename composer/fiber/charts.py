@@ -22,55 +22,62 @@ POINTS = 1024
 SUPPLIES = 6
 """Supply pressures for which filling is charted, from none to the regulator's, evenly."""
 
-IN, OUT, ROOM_IN, ROOM_OUT, TAKES_IN, TAKES_OUT, LEAVES, ENTERS = range(8)
-"""Columns by pressure: strain on the way in and out (1); mass a Pa at rest there, at the strain of either way; mass a Pa
-while moving in and out (kg/Pa); mass flow out (kg/s); from ENTERS on, mass flow in from each charted supply (kg/s)."""
-
-HOLDS_IN, HOLDS_OUT = range(2)
-"""Columns by strain: pressure that holds it on the way in and out (Pa)."""
-
-
 SOLVED = 192
 """Pressures at which flows are solved; between them they are taken in a straight line."""
+
+IN, OUT, TAKES_IN, TAKES_OUT, LEAVES, ENTERS = range(6)
+"""Columns by pressure: strain on the way in and out (1); mass a Pa while moving in and out (kg/Pa); mass flow out (kg/s); from
+ENTERS on, mass flow in from each charted supply (kg/s)."""
+
+HOLDS_IN, HOLDS_OUT, ROOM = range(3)
+"""Columns by strain: pressure that holds it on the way in and out (Pa); mass a Pa while it stands still (kg/Pa)."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Chart:
+    """A tables of POINTS rows each, end to end: `rows` (A * POINTS, columns), `steps` from each to the next, 0 at ends."""
+
+    rows: Array
+    steps: Array
+
+
+def chart_of(tables: list[Array]) -> Chart:
+    """One chart of tables (POINTS, columns) each."""
+    rows = np.array(tables)
+    return Chart(rows.reshape(-1, rows.shape[2]), np.diff(rows, axis=1, append=rows[:, -1:]).reshape(-1, rows.shape[2]))
+
+
+def look_up(chart: Chart, begins: NDArray[np.int64], share: Array) -> Array:
+    """Rows (M, columns) at a share (M,), 0 to 1, of the table that begins at row `begins` (M,), straight between its rows."""
+    at = np.minimum(np.maximum(share, 0.0), 1.0) * (POINTS - 1)
+    row = at.astype(np.int64)
+    part = at - row
+    row += begins
+    return chart.rows.take(row, axis=0) + part[:, None] * chart.steps.take(row, axis=0)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Charts:
-    """A charts of one grid size: `by_pressure` (A, POINTS, 8 + SUPPLIES - 1), `by_strain` (A, POINTS, 2).
+    """Charts of A capabilities: `by_pressure` with ENTERS + SUPPLIES columns, `by_strain` with 3.
 
-    top: (A,) the pressure of the last row in Pa; stroke: (A,) the strain of the last row
-    supply: the regulator's gauge pressure in Pa
+    supply: the regulator's gauge pressure in Pa, at the last row by pressure
+    reach: (A,) the strain of the last row by strain
     """
 
-    by_pressure: Array
-    by_strain: Array
-    top: Array
-    stroke: Array
+    by_pressure: Chart
+    by_strain: Chart
+    reach: Array
     supply: float
 
 
 def charts_of(physics: list[Physics], supply: float) -> Charts:
     """The charts of these fibers, fed by a regulator at `supply` Pa gauge."""
-    pressure = [_by_pressure(each, supply) for each in physics]
-    strain = [_by_strain(each) for each in physics]
     return Charts(
-        np.array(pressure),
-        np.array(strain),
-        np.full(len(physics), supply),
+        chart_of([_by_pressure(each, supply) for each in physics]),
+        chart_of([_by_strain(each) for each in physics]),
         np.array([reach_of(each) for each in physics]),
         supply,
     )
-
-
-def look_up(table: Array, which: NDArray[np.int64], share: Array) -> Array:
-    """Rows of charts (M, columns) at a share (M,), 0 to 1, of their last row, on the straight line between rows."""
-    at = np.clip(share, 0.0, 1.0) * (table.shape[1] - 1)
-    row = np.minimum(at.astype(np.int64), table.shape[1] - 2)
-    part = (at - row)[:, None]
-    flat = table.reshape(-1, table.shape[2])
-    row += which * table.shape[1]
-    low = flat.take(row, axis=0)
-    return low + part * (flat.take(row + 1, axis=0) - low)
 
 
 def reach_of(physics: Physics) -> float:
@@ -80,7 +87,12 @@ def reach_of(physics: Physics) -> float:
 
 def _by_strain(physics: Physics) -> Array:
     strain = np.linspace(0.0, reach_of(physics), POINTS)
-    return np.column_stack(rates.pressures(physics, strain))
+    return np.column_stack([*rates.pressures(physics, strain), _room(physics, strain)])
+
+
+def _room(physics: Physics, strain: Array) -> Array:
+    """Mass a Pa in kg of a fiber that stands still."""
+    return rates.gas_volume(physics, strain) / (physics.n * R_AIR * physics.path.T)
 
 
 @lru_cache(maxsize=64)
@@ -88,19 +100,14 @@ def _by_pressure(physics: Physics, supply: float) -> Array:
     pressure = np.linspace(0.0, supply, POINTS)
     # Strain over pressure from pressure over strain, which rises: denser in strain than the chart is in pressure.
     strain = np.linspace(0.0, reach_of(physics), 8 * POINTS)
-    holds_in, holds_out = rates.pressures(physics, strain)
-    way_in, way_out = np.interp(pressure, holds_in, strain), np.interp(pressure, holds_out, strain)
     columns = np.empty((POINTS, ENTERS + SUPPLIES))
-    columns[:, IN], columns[:, OUT] = way_in, way_out
-    still = physics.n * R_AIR * physics.path.T
-    for strains, holds, room, takes, slope_of in (
-        (way_in, holds_in, ROOM_IN, TAKES_IN, 0),
-        (way_out, holds_out, ROOM_OUT, TAKES_OUT, 1),
+    for column, takes, holds, way in zip(
+        (IN, OUT), (TAKES_IN, TAKES_OUT), rates.pressures(physics, strain), (0, 1), strict=True
     ):
-        columns[:, room] = rates.gas_volume(physics, strains) / still
+        strains = columns[:, column] = np.interp(pressure, holds, strain)
         moves = (pressure >= holds[0]) & (pressure < holds[-1])
-        slope = rates.slopes(physics, strains)[slope_of]
-        columns[:, takes] = np.where(moves, rates.capacity(physics, strains, pressure, slope), columns[:, room])
+        takes_moving = rates.capacity(physics, strains, pressure, rates.slopes(physics, strains)[way])
+        columns[:, takes] = np.where(moves, takes_moving, _room(physics, strains))
     # Flows bend most where the pressures are nearly equal, so the solved ones lie closest together there.
     near = np.linspace(0.0, 1.0, SOLVED) ** 2
     columns[:, LEAVES] = np.interp(

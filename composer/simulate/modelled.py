@@ -36,19 +36,25 @@ class Blown(Moved):
 
 @dataclass(frozen=True, slots=True, eq=False)
 class ModelledFibers:
-    """M modelled fibers; arrays (M,). `drive` is 0 pressure, 1 strain, 2 valve; `full` Pa gauge that a set-point of 1 means."""
+    """M modelled fibers; arrays (M,). `drive` is 0 pressure, 1 strain, 2 valve; `full` Pa gauge that a set-point of 1 means.
+
+    begins: (M,) the first row of each fiber's charts; reach: (M,) the strain of their last row by strain
+    """
 
     charts: Charts
-    which: Index
+    begins: Index
+    reach: Array
     stroke: Array
     full: Array
     settle: Array
     drive: NDArray[np.int8]
+    any_strain: bool
+    any_valve: bool
     indifferent_kPa: float
 
     def at(self, strain: Array) -> Blown:
         """Fibers at such strains (M,), blown up to them from below and settled."""
-        holds = self._holds(strain)
+        holds = self._by_strain(strain)
         pressure = np.where(strain > 0.0, holds[:, charts.HOLDS_IN], 0.0)
         return Blown(np.array(strain, dtype=float), pressure / 1e3, 0.0, pressure, np.array(strain, dtype=float))
 
@@ -61,85 +67,77 @@ class ModelledFibers:
             drawn += now.drawn_L
         return Blown(now.strain, now.pressure_kPa, drawn, now.pressure, now.played)
 
-    def _holds(self, strain: Array) -> Array:
-        """Pressures (M, 2) that hold strains on the way in and out."""
-        return look_up(self.charts.by_strain, self.which, strain / self.charts.stroke[self.which])
+    def _by_strain(self, strain: Array) -> Array:
+        """Chart rows (M, 3) at strains."""
+        return look_up(self.charts.by_strain, self.begins, strain / self.reach)
 
-    def _flows(self, pressure: Array, supply: float) -> Array:
-        """Chart rows (M, 8) at a pressure, the last column the flow in from this supply."""
-        rows = look_up(self.charts.by_pressure, self.which, pressure / self.charts.supply)
-        level = supply / self.charts.supply * (charts.SUPPLIES - 1)
-        below = min(int(level), charts.SUPPLIES - 2)
-        enters = rows[:, charts.ENTERS + below], rows[:, charts.ENTERS + below + 1]
-        rows[:, charts.ENTERS] = enters[0] + (level - below) * (enters[1] - enters[0])
-        return rows
+    def _by_pressure(self, pressure: Array) -> Array:
+        """Chart rows at pressures."""
+        return look_up(self.charts.by_pressure, self.begins, pressure / self.charts.supply)
 
     def _part(self, was: Blown, h: float, command: Array, supply: float) -> Blown:
         pressure, played = was.pressure, was.played
-        edge_in, edge_out = self._holds(played).T
+        edge_in, edge_out, room = self._by_strain(played).T
         goal, opening = self._goal(command, played, pressure, edge_in, edge_out, supply)
         filling = goal > pressure
         # On the way to the edge of the friction band the fiber stands still, and its gas takes less for a rise in pressure.
         edge = np.where(filling, np.maximum(edge_in, pressure), np.minimum(edge_out, pressure))
-        here = self._flows(pressure, supply)
-        flow = np.where(filling, here[:, charts.ENTERS], -here[:, charts.LEAVES]) * opening
-        room = self._room(here, played)
         still = np.abs(edge - pressure) * room
-        takes = np.where(filling, here[:, charts.TAKES_IN], here[:, charts.TAKES_OUT])
-        middle = self._rise(pressure, edge, flow * (h / 2.0), still, room, takes, goal)
-        there = self._flows(middle, supply)
-        flow = np.where(filling, there[:, charts.ENTERS], -there[:, charts.LEAVES]) * opening
-        takes = np.where(filling, there[:, charts.TAKES_IN], there[:, charts.TAKES_OUT])
-        pressure_now = self._rise(pressure, edge, flow * h, still, room, takes, goal)
-        ends = look_up(self.charts.by_pressure, self.which, pressure_now / self.charts.supply)
+        flow, takes = self._flow(pressure, filling, opening, supply)
+        middle = self._rise(pressure, filling, flow * (h / 2.0), still, room, takes, goal)
+        flow, takes = self._flow(middle, filling, opening, supply)
+        pressure_now = self._rise(pressure, filling, flow * h, still, room, takes, goal)
+        ends = self._by_pressure(pressure_now)
         now = np.minimum(np.maximum(played, ends[:, charts.IN]), ends[:, charts.OUT])
         drawn = np.maximum(self._mass(pressure, pressure_now, edge, room, takes), 0.0).sum()
         return Blown(
             settled(self.settle, was.strain, played, now, h), pressure_now / 1e3, float(free_litres(drawn)), pressure_now, now
         )
 
+    def _flow(self, pressure: Array, filling: NDArray[np.bool_], opening: Array | None, supply: float) -> tuple[Array, Array]:
+        """Mass flow in kg/s, in or out, at a pressure, and the mass a Pa that the moving fiber takes."""
+        rows = self._by_pressure(pressure).T
+        level = supply / self.charts.supply * (charts.SUPPLIES - 1)
+        below = min(int(level), charts.SUPPLIES - 2)
+        low, high = rows[charts.ENTERS + below], rows[charts.ENTERS + below + 1]
+        flow = np.where(filling, low + (level - below) * (high - low), rows[charts.LEAVES])
+        takes = np.where(filling, rows[charts.TAKES_IN], rows[charts.TAKES_OUT])
+        return flow if opening is None else flow * opening, takes
+
     def _goal(
         self, command: Array, played: Array, pressure: Array, edge_in: Array, edge_out: Array, supply: float
-    ) -> tuple[Array, Array]:
-        """The pressure that each drive goes for, and how far its valve opens to get there."""
-        goal = np.clip(command, 0.0, 1.0) * self.full
-        opening = np.ones(len(command))
-        by_strain = self.drive == 1
-        if by_strain.any():
-            wanted = np.clip(command, 0.0, 1.0) * self.stroke
-            holds = self._holds(wanted)
+    ) -> tuple[Array, Array | None]:
+        """The pressure that each drive goes for, and how far its valve opens to get there (None: all fully)."""
+        share = np.minimum(np.maximum(command, 0.0), 1.0)
+        goal, opening = share * self.full, None
+        if self.any_strain:
+            wanted = share * self.stroke
+            holds = self._by_strain(wanted)
             sought = np.where(wanted > played + NEAR, holds[:, 0], np.where(wanted < played - NEAR, holds[:, 1], pressure))
             sought = np.where(wanted <= 0.0, np.minimum(holds[:, 1], sought), sought)
-            goal = np.where(by_strain, np.minimum(sought, self.full), goal)
-        by_valve = self.drive == 2
-        if by_valve.any():
-            opening = np.where(by_valve, np.minimum(np.abs(command), 1.0), opening)
+            goal = np.where(self.drive == 1, np.minimum(sought, self.full), goal)
+        if self.any_valve:
+            by_valve = self.drive == 2
+            opening = np.where(by_valve, np.minimum(np.abs(command), 1.0), 1.0)
             full = np.where(command > 0.0, self.full, np.where(command < 0.0, 0.0, pressure))
             goal = np.where(by_valve, full, goal)
         # What is above the supply never leaves through the filling valve: it holds.
         return np.where(goal > pressure, np.maximum(np.minimum(goal, supply), pressure), goal), opening
 
-    def _room(self, row: Array, played: Array) -> Array:
-        """Mass a Pa in kg of a fiber that stands still at `played`, between those at the two edges of the band."""
-        band = row[:, charts.OUT] - row[:, charts.IN]
-        share = np.divide(played - row[:, charts.IN], band, out=np.zeros_like(band), where=band > 1e-12)
-        share = np.clip(share, 0.0, 1.0)
-        return row[:, charts.ROOM_IN] + share * (row[:, charts.ROOM_OUT] - row[:, charts.ROOM_IN])
-
     @staticmethod
-    def _rise(pressure: Array, edge: Array, mass: Array, still: Array, room: Array, takes: Array, goal: Array) -> Array:
-        """The pressure after so much mass (negative: out): first to the edge at rest, the remainder while moving, no further
-        than the goal."""
-        size = np.abs(mass)
-        at_rest = np.minimum(size, still)
-        change = np.sign(mass) * (at_rest / room + (size - at_rest) / takes)
-        reached = pressure + change
-        return np.where(goal > pressure, np.minimum(reached, goal), np.maximum(reached, goal))
+    def _rise(
+        pressure: Array, filling: NDArray[np.bool_], mass: Array, still: Array, room: Array, takes: Array, goal: Array
+    ) -> Array:
+        """The pressure after so much mass, in or out: first to the edge at rest, the remainder while moving, no further than
+        the goal."""
+        at_rest = np.minimum(mass, still)
+        change = at_rest / room + (mass - at_rest) / takes
+        return np.where(filling, np.minimum(pressure + change, goal), np.maximum(pressure - change, goal))
 
     @staticmethod
     def _mass(pressure: Array, now: Array, edge: Array, room: Array, takes: Array) -> Array:
         """The mass in kg that went in for a rise from `pressure` to `now` past `edge`; negative where it fell."""
-        to_edge = np.clip(now, np.minimum(pressure, edge), np.maximum(pressure, edge)) - pressure
+        to_edge = np.minimum(np.maximum(now, np.minimum(pressure, edge)), np.maximum(pressure, edge)) - pressure
         return to_edge * room + (now - pressure - to_edge) * takes
 
 
@@ -162,12 +160,16 @@ def modelled_fibers(rig: Rig, abilities: Abilities, members: Index) -> ModelledF
     makes, which = np.unique(abilities.which[members], return_inverse=True)
     physics = [abilities.capabilities[make].physics for make in makes]
     drives = [("pressure", "strain", "valve").index(rig.fibers[m].mounting.valve.drive) for m in members]
+    made = charts.charts_of(physics, supply)
     return ModelledFibers(
-        charts=charts.charts_of(physics, supply),
-        which=which,
+        charts=made,
+        begins=which * charts.POINTS,
+        reach=made.reach[which],
         stroke=abilities.stroke[members],
         full=np.array([each.limit for each in physics])[which],
         settle=np.array([each.settle for each in physics])[which],
         drive=np.array(drives, dtype=np.int8),
+        any_strain=1 in drives,
+        any_valve=2 in drives,
         indifferent_kPa=rig.supply.pressure_kPa,
     )

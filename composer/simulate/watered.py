@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.fiber import rates
-from composer.fiber.charts import POINTS, look_up, reach_of
+from composer.fiber.charts import POINTS, Chart, chart_of, look_up, reach_of
 from composer.fiber.orifice import water_area, water_flow
 from composer.fiber.pipe import water_resistance
 from composer.limits.abilities import Abilities
@@ -29,14 +29,14 @@ HOLDS_IN, HOLDS_OUT, SWELL = range(3)
 class WateredFibers:
     """M modelled fibers full of water; arrays (M,). `drive` is 0 pressure, 1 strain, 2 valve.
 
-    by_strain: (A, POINTS, 3) from 0 to `reach` (A,)
-    by_pressure: (A, POINTS, 2) strain on the way in and out, from 0 to `top` Pa gauge, the regulator's
+    by_strain: charts from strain 0 to `reach` (M,); by_pressure: of strain on the way in and out, from 0 to `top` Pa gauge
+    begins: (M,) the first row of each fiber's charts
     full: Pa gauge that a set-point of 1 means; area: m² of valve; resistance: Pa s/m³ of tubes
     """
 
-    by_strain: Array
-    by_pressure: Array
-    which: Index
+    by_strain: Chart
+    by_pressure: Chart
+    begins: Index
     reach: Array
     top: float
     stroke: Array
@@ -63,11 +63,11 @@ class WateredFibers:
         return Blown(now.strain, now.pressure_kPa, drawn, now.pressure, now.played)
 
     def _row(self, strain: Array) -> Array:
-        return look_up(self.by_strain, self.which, strain / self.reach[self.which])
+        return look_up(self.by_strain, self.begins, strain / self.reach)
 
     def _strains(self, pressure: Array) -> Array:
         """Strains (M, 2) that a pressure holds on the way in and out."""
-        return look_up(self.by_pressure, self.which, pressure / self.top)
+        return look_up(self.by_pressure, self.begins, pressure / self.top)
 
     def _part(self, was: Blown, h: float, command: Array, supply: float) -> Blown:
         played = was.played
@@ -120,10 +120,10 @@ def watered_fibers(rig: Rig, abilities: Abilities, members: Index) -> WateredFib
     drives = [("pressure", "strain", "valve").index(rig.fibers[m].mounting.valve.drive) for m in members]
     resistance = [sum(water_resistance(pipe) for pipe in each.path.pipes) for each in physics]
     return WateredFibers(
-        by_strain=np.array(by_strain),
-        by_pressure=np.array(by_pressure),
-        which=which,
-        reach=np.array([reach_of(each) for each in physics]),
+        by_strain=chart_of(by_strain),
+        by_pressure=chart_of(by_pressure),
+        begins=which * POINTS,
+        reach=np.array([reach_of(each) for each in physics])[which],
         top=top,
         stroke=abilities.stroke[members],
         full=np.array([each.limit for each in physics])[which],
