@@ -65,12 +65,13 @@ def test_the_level_of_a_stand_is_not_the_highest_of_its_noise():
     truth = np.concatenate([ramp, stand, ramp[::-1]])
     rise = []
     for seed in range(20):
-        left = truth + 0.15 * np.random.default_rng(seed).standard_normal(500)
+        # About a sixth of the sensor's noise is left on a stand once smoothed.
+        left = truth + 0.1 * np.random.default_rng(seed).standard_normal(500)
         flat = levelled(left, turns(left, 3.0), 0.6)
         rise.append((left.max() - 400.0, flat.max() - 400.0))
         assert np.all(np.abs(flat - left) < 0.7)
     highest, level = np.mean(rise, axis=0)
-    assert highest > 0.3 and abs(level) < 0.05
+    assert highest > 0.2 and abs(level) < 0.05
 
 
 @settings(deadline=None)
