@@ -102,7 +102,7 @@ def _axes(painter: QPainter, frame: Frame, title: str, seconds: bool) -> None:
         across = [(tick.at, tick.label) for tick in second_ticks(*frame.x, box.width(), px(64))]
     else:
         across = [(float(at), f"{at:g}") for at in value_ticks(*frame.x, 8)]
-    up = value_ticks(*frame.y, max(3, int(box.height() / px(48))))
+    up = value_ticks(*frame.y, max(3, int(box.height() / px(34))))
     painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
     for at, label in across:
         x = frame.points(np.array([at]), np.array([frame.y[0]])).first().x()
