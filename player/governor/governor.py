@@ -1,0 +1,103 @@
+"""The governor of a rig: its limits, made ready for ticks."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.limits.air import refill_L_s, store_L
+from composer.limits.coil import coils_of
+from composer.limits.duration import RESOLUTION
+from composer.limits.live import Live, live, look
+from composer.rig.model import Rig
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+LONGEST_TICK_S = 0.010
+"""Ticks may be as long as this unless the governor is made for longer ones."""
+
+LOW = 0.5 * (1.0 - 1e-4)
+"""Share of stroke at or below which a hold is over: so far below half that the check sees two holds as two."""
+
+LET_DOWN_TO = 0.45
+"""Share of stroke to which a fiber is let down whose hold has lasted as long as it may."""
+
+RECOVERED = 0.1
+"""A coil that has had to stop fills again when so much of its burst is free, so that it does not chatter at its limit."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Governor:
+    """What the governor of F fibers knows that never changes.
+
+    live: the rates, air and ways back; braced: (B,) fibers with a limit of acceleration, accel: (F,) that limit, 1/s²
+    stroke, least, low, let_down_to: (F,) strains: usable stroke, one step of the drive, end of a hold, where it is let down to
+    max_hold_s: (F,), inf for no limit; low_back_s: (F,) seconds that the way from `low` to rest takes
+    duty, burst_s, min_on_s, holding: (F,) of each coil: share of time, seconds beyond it, how long it stays on once it is, and
+        whether holding energises it
+    spare_s: (F,) seconds that a way back may take beyond what its rates say: ticks that begin late, and the brakes
+    store_L, refill_L_s: the supply
+    has_duty, has_hold, has_holding: whether any fiber has such a limit
+    """
+
+    live: Live
+    braced: Index
+    accel: Array
+    stroke: Array
+    least: Array
+    low: Array
+    let_down_to: Array
+    max_hold_s: Array
+    low_back_s: Array
+    duty: Array
+    burst_s: Array
+    min_on_s: Array
+    holding: NDArray[np.bool_]
+    spare_s: Array
+    store_L: float
+    refill_L_s: float
+    has_duty: bool
+    has_hold: bool
+    has_holding: bool
+
+    @property
+    def fibers(self) -> int:
+        """How many fibers."""
+        return len(self.stroke)
+
+
+def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_TICK_S) -> Governor:
+    """The governor of a rig for ticks of at most `longest_tick_s`; the shorter they may be the closer it goes to the limits."""
+    tables = live(abilities, longest_tick_s)
+    coils = coils_of(rig)
+    stroke = abilities.stroke
+    braced = np.flatnonzero(np.isfinite(abilities.accel))
+    least = stroke * RESOLUTION
+    at_least, at_low = look(tables, least), look(tables, LOW * stroke)
+    # To gather speed and to brake again cost a braced fiber half of rate / accel each, and its ticks begin late four times:
+    # to stop, to turn, to brake, to stand. Another fiber loses what is left of its last tick.
+    spare = longest_tick_s + at_least.back
+    spare[braced] += 3.0 * longest_tick_s + at_least.exhaust[braced] / abilities.accel[braced]
+    return Governor(
+        live=tables,
+        braced=braced,
+        accel=abilities.accel,
+        stroke=stroke,
+        least=least,
+        low=LOW * stroke,
+        let_down_to=LET_DOWN_TO * stroke,
+        max_hold_s=abilities.max_hold_s,
+        low_back_s=at_low.back,
+        duty=coils.duty,
+        burst_s=coils.burst_s,
+        min_on_s=1.0 / coils.switch_Hz,
+        holding=coils.holding,
+        spare_s=spare,
+        store_L=store_L(rig.supply),
+        refill_L_s=refill_L_s(rig.supply),
+        has_duty=bool(np.any(coils.duty < 1.0)),
+        has_hold=bool(np.any(np.isfinite(abilities.max_hold_s))),
+        has_holding=bool(np.any(coils.holding)),
+    )
