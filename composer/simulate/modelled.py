@@ -28,10 +28,14 @@ NEAR = 1e-9
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Blown(Moved):
-    """Modelled fibers after a step: also gauge `pressure` in Pa and `played`, the strain after friction and before the lag."""
+    """Modelled fibers after a step: also gauge `pressure` in Pa and `played`, the strain after friction and before the lag.
+
+    rows: what the charts say at this pressure, kept for the next step; None where no chart goes by it
+    """
 
     pressure: Array
     played: Array
+    rows: Array | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -56,7 +60,8 @@ class ModelledFibers:
         """Fibers at such strains (M,), blown up to them from below and settled."""
         holds = self._by_strain(strain)
         pressure = np.where(strain > 0.0, holds[:, charts.HOLDS_IN], 0.0)
-        return Blown(np.array(strain, dtype=float), pressure / 1e3, 0.0, pressure, np.array(strain, dtype=float))
+        strain = np.array(strain, dtype=float)
+        return Blown(strain, pressure / 1e3, 0.0, pressure, strain, self._by_pressure(pressure))
 
     def after(self, was: Moved, dt_s: float, command: Array, supply_kPa: float) -> Blown:
         """The fibers after `dt_s` of a constant command (M,), in drive units, with such a pressure in the receiver."""
@@ -65,7 +70,7 @@ class ModelledFibers:
         for _ in range(parts):
             now = self._part(now, dt_s / parts, command, min(supply_kPa * 1e3, self.charts.supply))
             drawn += now.drawn_L
-        return Blown(now.strain, now.pressure_kPa, drawn, now.pressure, now.played)
+        return now if parts == 1 else Blown(now.strain, now.pressure_kPa, drawn, now.pressure, now.played, now.rows)
 
     def _by_strain(self, strain: Array) -> Array:
         """Chart rows (M, 3) at strains."""
@@ -83,20 +88,25 @@ class ModelledFibers:
         # On the way to the edge of the friction band the fiber stands still, and its gas takes less for a rise in pressure.
         edge = np.where(filling, np.maximum(edge_in, pressure), np.minimum(edge_out, pressure))
         still = np.abs(edge - pressure) * room
-        flow, takes = self._flow(pressure, filling, opening, supply)
+        flow, takes = self._flow(was.rows, filling, opening, supply)
         middle = self._rise(pressure, filling, flow * (h / 2.0), still, room, takes, goal)
-        flow, takes = self._flow(middle, filling, opening, supply)
+        flow, takes = self._flow(self._by_pressure(middle), filling, opening, supply)
         pressure_now = self._rise(pressure, filling, flow * h, still, room, takes, goal)
         ends = self._by_pressure(pressure_now)
         now = np.minimum(np.maximum(played, ends[:, charts.IN]), ends[:, charts.OUT])
         drawn = np.maximum(self._mass(pressure, pressure_now, edge, room, takes), 0.0).sum()
         return Blown(
-            settled(self.settle, was.strain, played, now, h), pressure_now / 1e3, float(free_litres(drawn)), pressure_now, now
+            settled(self.settle, was.strain, played, now, h),
+            pressure_now / 1e3,
+            float(free_litres(drawn)),
+            pressure_now,
+            now,
+            ends,
         )
 
-    def _flow(self, pressure: Array, filling: NDArray[np.bool_], opening: Array | None, supply: float) -> tuple[Array, Array]:
-        """Mass flow in kg/s, in or out, at a pressure, and the mass a Pa that the moving fiber takes."""
-        rows = self._by_pressure(pressure).T
+    def _flow(self, rows: Array, filling: NDArray[np.bool_], opening: Array | None, supply: float) -> tuple[Array, Array]:
+        """Mass flow in kg/s, in or out, by chart rows at a pressure, and the mass a Pa that the moving fiber takes."""
+        rows = rows.T
         level = supply / self.charts.supply * (charts.SUPPLIES - 1)
         below = min(int(level), charts.SUPPLIES - 2)
         low, high = rows[charts.ENTERS + below], rows[charts.ENTERS + below + 1]
