@@ -25,7 +25,7 @@
 #define SPIN_NS 200000 /* the last fraction before a due time is spent asking the time: sleepers wake so much too late */
 #define LOOK_NS 50000000
 #define JUMP_NS 100000000
-#define PRIORITY 10
+#define PRIORITY 40 /* above the player's on the same machine: a true board has a processor of its own */
 
 /* What can go wrong so many seconds after arming, once; channel 0 where it is one channel's. */
 enum strike { RESET, SILENT, JUMP, OVER_PRESSURE, SENSOR, STUCK, RAILED, LEAK, LOW_SUPPLY, STRIKES };

@@ -21,13 +21,14 @@ struct part {
     size_t count;
 };
 
-static pthread_mutex_t lock = PTHREAD_MUTEX_INITIALIZER;
+static pthread_mutex_t lock;
 static struct line_wrongs wrongs;
 static int master = -1, wake[2];
 static uint8_t bytes_of[ROOM];
 static size_t first_byte, byte_count;
 static struct part part_of[PARTS];
 static size_t first_part, part_count;
+static int forgotten; /* whether what `leaving` has copied is no longer in the ring */
 static uint32_t chance_in = 1, chance_out = 2;
 
 /* Numbers by chance, always the same ones: G. Marsaglia, "Xorshift RNGs", Journal of Statistical Software 8(14), 2003. */
@@ -57,11 +58,15 @@ static size_t spoil(uint8_t *bytes, size_t count, uint32_t *chance)
 
 const char *line_open(const struct line_wrongs *given)
 {
+    pthread_mutexattr_t inherits;
     struct termios raw;
     const char *path;
     int slave;
 
     wrongs = *given;
+    pthread_mutexattr_init(&inherits);
+    pthread_mutexattr_setprotocol(&inherits, PTHREAD_PRIO_INHERIT);
+    pthread_mutex_init(&lock, &inherits);
     master = posix_openpt(O_RDWR | O_NOCTTY);
     if (master < 0 || grantpt(master) || unlockpt(master) || !(path = ptsname(master)))
         return NULL;
@@ -126,6 +131,7 @@ void line_clear(void)
 {
     pthread_mutex_lock(&lock);
     byte_count = part_count = 0;
+    forgotten = 1;
     pthread_mutex_unlock(&lock);
 }
 
@@ -139,8 +145,10 @@ void line_put(const uint8_t *bytes, size_t count, int64_t now_ns)
     memcpy(sent, bytes, count);
     pthread_mutex_lock(&lock);
     count = spoil(sent, count, &chance_out);
-    if (byte_count + count > ROOM || part_count == PARTS)
+    if (byte_count + count > ROOM || part_count == PARTS) {
         byte_count = part_count = 0;
+        forgotten = 1;
+    }
     for (at = 0; at < count; at++)
         bytes_of[(first_byte + byte_count++) % ROOM] = sent[at];
     if (count)
@@ -148,22 +156,48 @@ void line_put(const uint8_t *bytes, size_t count, int64_t now_ns)
     pthread_mutex_unlock(&lock);
 }
 
-void line_send(int64_t now_ns)
+/* The straight beginning of what may leave now, copied. */
+static size_t leaving(uint8_t *bytes, size_t room, int64_t now_ns)
+{
+    size_t count = 0;
+
+    pthread_mutex_lock(&lock);
+    if (part_count && part_of[first_part].leaves_ns <= now_ns) {
+        count = part_of[first_part].count;
+        count = count > ROOM - first_byte ? ROOM - first_byte : count;
+        count = count > room ? room : count;
+        memcpy(bytes, bytes_of + first_byte, count);
+    }
+    forgotten = 0;
+    pthread_mutex_unlock(&lock);
+    return count;
+}
+
+static void has_left(size_t count)
 {
     pthread_mutex_lock(&lock);
-    while (part_count && part_of[first_part].leaves_ns <= now_ns) {
-        struct part *part = &part_of[first_part];
-        size_t straight = ROOM - first_byte < part->count ? ROOM - first_byte : part->count;
-        ssize_t done = write(master, bytes_of + first_byte, straight);
-        if (done <= 0)
-            break;
-        first_byte = (first_byte + (size_t)done) % ROOM;
-        byte_count -= (size_t)done;
-        part->count -= (size_t)done;
-        if (!part->count) {
+    if (!forgotten) {
+        first_byte = (first_byte + count) % ROOM;
+        byte_count -= count;
+        part_of[first_part].count -= count;
+        if (!part_of[first_part].count) {
             first_part = (first_part + 1) % PARTS;
             part_count--;
         }
     }
     pthread_mutex_unlock(&lock);
+}
+
+void line_send(int64_t now_ns)
+{
+    uint8_t bytes[4096];
+    size_t count;
+
+    /* Written without the lock: whoever puts never waits for the system. */
+    while ((count = leaving(bytes, sizeof bytes, now_ns)) > 0) {
+        ssize_t done = write(master, bytes, count);
+        if (done <= 0)
+            break;
+        has_left((size_t)done);
+    }
 }
