@@ -9,9 +9,11 @@ COMMANDS = {
     "preview": ("composer.commands.preview", "Simulate how the fibers would really move."),
     "play": ("player.commands.play", "Play a score in real time."),
     "device": ("player.commands.device", "A simulated valve driver behind a pseudo-terminal."),
+    "tempo": ("player.commands.tempo", "Tempi and markers of a MIDI file as a score has them, and the way back."),
     "ports": ("player.commands.ports", "The ports found on this machine."),
     "rig": ("composer.commands.rig", "What each fiber of a rig can do where it hangs."),
     "fit": ("composer.commands.fit", "A fiber type from what a bench measured."),
+    "manual": ("player.commands.manual", "The manual, page by page."),
     "demos": ("composer.commands.demos", "Copy the demo scores and rigs into a folder."),
 }
 """Name of each command: its module, which defines `command`, and its line in the help."""
