@@ -23,7 +23,7 @@ MOST_KEPT = 4096
 
 MOST_A_POLL = 1024
 
-_ERRORS = (rtmidi.RtMidiError, rtmidi.SystemError)
+_ERRORS = (rtmidi.RtMidiError,)
 
 NO_MIDI = "no MIDI system answers on this machine: neither ALSA (is /dev/snd there?) nor a running JACK server"
 
