@@ -81,16 +81,25 @@ def rig_of_two(tmp_path):
 
 
 @contextmanager
-def device(*arguments):
+def device(*arguments, env=None):
     """The command as a process of its own; yields it and the path it prints."""
     call = [sys.executable, "-c", "from player.commands.main import main; main()", "device", *arguments]
-    process = subprocess.Popen(call, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True)
+    process = subprocess.Popen(call, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, env=env)
     try:
         yield process, process.stdout.readline().strip()
     finally:
         if process.poll() is None:
             process.send_signal(signal.SIGTERM)
         process.communicate(timeout=20)
+
+
+@pytest.fixture(scope="session", params=["python", "portable"])
+def start(request, tmp_path_factory):
+    """The command with each of its boards: the one in Python and the one in C."""
+    if request.param == "python":
+        return device
+    cache = str(tmp_path_factory.mktemp("cache"))
+    return lambda *arguments: device(*arguments, "--portable", env={**os.environ, "XDG_CACHE_HOME": cache})
 
 
 class Played:
@@ -133,9 +142,9 @@ def rows(log):
         return list(csv.DictReader(file))
 
 
-def test_sets_sent_ahead_are_each_in_the_log_with_their_due_time_and_none_is_late(rig, tmp_path):
+def test_sets_sent_ahead_are_each_in_the_log_with_their_due_time_and_none_is_late(rig, tmp_path, start):
     log = tmp_path / "log.csv"
-    with device(rig, "--log", str(log)) as (_, path):
+    with start(rig, "--log", str(log)) as (_, path):
         played = Played(path, rig).armed()
         played.go(0.5)
         begin = time.monotonic() + 1.0
@@ -163,9 +172,9 @@ def test_sets_sent_ahead_are_each_in_the_log_with_their_due_time_and_none_is_lat
     assert told[-1]["note"] == "every channel vented"
 
 
-def test_a_player_that_is_gone_leaves_a_vented_board_that_the_next_one_can_play(rig, tmp_path):
+def test_a_player_that_is_gone_leaves_a_vented_board_that_the_next_one_can_play(rig, tmp_path, start):
     log = tmp_path / "log.csv"
-    with device(rig, "--log", str(log)) as (_, path):
+    with start(rig, "--log", str(log)) as (_, path):
         first = Played(path, rig, watchdog_ms=150).armed()
         first.host.set(time.monotonic(), 0, [60000] * 4, time.monotonic())
         first.go(0.1)
@@ -180,9 +189,9 @@ def test_a_player_that_is_gone_leaves_a_vented_board_that_the_next_one_can_play(
 
 
 @pytest.mark.parametrize("how", [signal.SIGINT, signal.SIGTERM])
-def test_a_signal_ends_it_with_everything_vented_and_exit_code_0(rig, tmp_path, how):
+def test_a_signal_ends_it_with_everything_vented_and_exit_code_0(rig, tmp_path, how, start):
     log = tmp_path / "log.csv"
-    with device(rig, "--log", str(log)) as (process, path):
+    with start(rig, "--log", str(log)) as (process, path):
         played = Played(path, rig).armed()
         process.send_signal(how)
         assert process.wait(timeout=10) == 0
@@ -191,9 +200,9 @@ def test_a_signal_ends_it_with_everything_vented_and_exit_code_0(rig, tmp_path, 
         played.close()
 
 
-def test_a_log_is_whole_up_to_the_last_line_when_the_board_is_killed(rig, tmp_path):
+def test_a_log_is_whole_up_to_the_last_line_when_the_board_is_killed(rig, tmp_path, start):
     log = tmp_path / "log.csv"
-    with device(rig, "--log", str(log)) as (process, path):
+    with start(rig, "--log", str(log)) as (process, path):
         Played(path, rig).armed().close()
         process.kill()
         process.wait(timeout=10)
@@ -204,8 +213,8 @@ def test_a_log_is_whole_up_to_the_last_line_when_the_board_is_killed(rig, tmp_pa
     assert log.read_text().endswith("\n")
 
 
-def test_a_board_that_nobody_reads_goes_on_and_answers_the_next_player(rig):
-    with device(rig) as (_, path):
+def test_a_board_that_nobody_reads_goes_on_and_answers_the_next_player(rig, start):
+    with start(rig) as (_, path):
         handle = os.open(path, os.O_RDWR | os.O_NOCTTY)
         for _ in range(300):
             os.write(handle, frame(m.encode(m.Ping(1), 1)) * 20)
@@ -215,8 +224,8 @@ def test_a_board_that_nobody_reads_goes_on_and_answers_the_next_player(rig):
         played.close()
 
 
-def test_a_wrong_rig_is_refused_by_the_simulated_board(rig, rig_of_two):
-    with device(rig) as (_, path):
+def test_a_wrong_rig_is_refused_by_the_simulated_board(rig, rig_of_two, start):
+    with start(rig) as (_, path):
         played = Played(path, rig_of_two)
         played.host.open(time.monotonic())
         played.go(10.0, ("ready", "failed"))
@@ -226,16 +235,16 @@ def test_a_wrong_rig_is_refused_by_the_simulated_board(rig, rig_of_two):
 
 
 @pytest.mark.parametrize(("name", "ends_in"), [("resets", "vented"), ("over-pressure", "failed"), ("jumping-clock", "failed")])
-def test_a_mishap_that_strikes_ends_the_run(rig, name, ends_in):
-    with device(rig, "--fault", name) as (_, path):
+def test_a_mishap_that_strikes_ends_the_run(rig, name, ends_in, start):
+    with start(rig, "--fault", name) as (_, path):
         played = Played(path, rig).armed()
         played.go(10.0, ("vented", "failed"))
         assert played.host.state == ends_in or (name == "resets" and played.host.state == "failed")
         played.close()
 
 
-def test_a_board_that_falls_silent_is_told_as_silent(rig):
-    with device(rig, "--fault", "silent") as (_, path):
+def test_a_board_that_falls_silent_is_told_as_silent(rig, start):
+    with start(rig, "--fault", "silent") as (_, path):
         played = Played(path, rig).armed()
         end = time.monotonic() + 10.0
         while time.monotonic() < end and not any(isinstance(event, link.Silent) for event in played.events):
@@ -246,8 +255,8 @@ def test_a_board_that_falls_silent_is_told_as_silent(rig):
 
 
 @pytest.mark.parametrize("name", ["garbles", "loses", "late-answers", "slow-clock", "fast-clock"])
-def test_a_board_that_is_only_bad_is_armed_and_rested_all_the_same(rig, name):
-    with device(rig, "--fault", name) as (_, path):
+def test_a_board_that_is_only_bad_is_armed_and_rested_all_the_same(rig, name, start):
+    with start(rig, "--fault", name) as (_, path):
         played = Played(path, rig, reply_s=0.3, tries=30, watchdog_ms=2000).armed()
         played.go(0.5)
         played.rested()
@@ -255,8 +264,8 @@ def test_a_board_that_is_only_bad_is_armed_and_rested_all_the_same(rig, name):
         played.close()
 
 
-def test_a_queue_that_is_smaller_than_it_says_answers_fault_5(rig):
-    with device(rig, "--fault", "full-queue") as (_, path):
+def test_a_queue_that_is_smaller_than_it_says_answers_fault_5(rig, start):
+    with start(rig, "--fault", "full-queue") as (_, path):
         played = Played(path, rig).armed()
         now = time.monotonic()
         played.host.set(now + 0.2, 0, [1] * 4, now)
@@ -266,14 +275,14 @@ def test_a_queue_that_is_smaller_than_it_says_answers_fault_5(rig):
         played.close()
 
 
-def test_a_rig_of_two_boards_asks_which_and_each_runs_as_its_own_process(rig_of_two, capsys):
+def test_a_rig_of_two_boards_asks_which_and_each_runs_as_its_own_process(rig_of_two, capsys, start):
     assert run(["device", rig_of_two]) == 2
     said = capsys.readouterr().err
     assert "the rig has 2 boards: left, right" in said
     assert "--driver NAME" in said
     with (
-        device(rig_of_two, "--driver", "left") as (_, left),
-        device(rig_of_two, "--driver", "right", "--name", "Own") as (_, right),
+        start(rig_of_two, "--driver", "left") as (_, left),
+        start(rig_of_two, "--driver", "right", "--name", "Own") as (_, right),
     ):
         assert left != right
         boards = [Played(left, rig_of_two).armed(), Played(right, rig_of_two).armed()]
@@ -313,3 +322,23 @@ def test_a_name_that_a_hello_could_not_carry_is_refused(rig, capsys):
 def test_a_rig_that_is_not_there_is_told(tmp_path, capsys):
     assert run(["device", str(tmp_path / "none.rig.toml")]) == 2
     assert "none.rig.toml" in capsys.readouterr().err
+
+
+def test_a_portable_board_without_a_compiler_says_what_to_do(rig, tmp_path, capsys, monkeypatch):
+    monkeypatch.setenv("PATH", str(tmp_path))
+    assert run(["device", rig, "--portable"]) == 2
+    said = capsys.readouterr().err
+    assert "--portable: no C compiler on this machine" in said
+    assert "leave --portable out" in said
+
+
+@pytest.mark.parametrize(
+    ("option", "value"), [("--name", "x" * 256), ("--name", "two\nlines"), ("--log", "no/such/folder/log.csv")]
+)
+def test_what_a_portable_board_cannot_take_is_told_before_anything_is_compiled(
+    rig, tmp_path, capsys, monkeypatch, option, value
+):
+    monkeypatch.setenv("XDG_CACHE_HOME", str(tmp_path / "cache"))
+    assert run(["device", rig, "--portable", option, value]) == 2
+    assert capsys.readouterr().err.startswith((option, value))
+    assert not (tmp_path / "cache").exists()
