@@ -7,11 +7,11 @@ import io
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-from mido import Message, MetaMessage, MidiFile, MidiTrack
+from mido import MetaMessage, MidiFile, MidiTrack
 
 from composer.faults import Faults, fault
 
-MOST_BYTES = 16 << 20
+MOST_BYTES = 8 << 20
 MOST_EVENTS = 50_000
 """Meters, tempi and markers, each."""
 
@@ -63,11 +63,6 @@ def write_midi(times: Times) -> bytes:
     return out.getvalue()
 
 
-def note_message_types() -> tuple[str, ...]:
-    """The channel messages that a reader passes over, as mido calls them."""
-    return tuple(Message.from_bytes([status, *[0] * count]).type for status, count in _DATA_BYTES.items())
-
-
 class _Reader:
     def __init__(self, data: bytes, file: str):
         self.data = data
@@ -89,11 +84,8 @@ class _Reader:
             raise self.wrong(4, "the header is cut short", "6 bytes or more")
         form, _, division = (int.from_bytes(data[at : at + 2], "big") for at in (8, 10, 12))
         if form > 1:
-            raise self.wrong(
-                8,
-                f"the file has format {form}, tracks that are pieces of their own" if form == 2 else f"format {form}",
-                "format 0 or 1",
-            )
+            what = "format 2, whose tracks are pieces of their own" if form == 2 else f"format {form}"
+            raise self.wrong(8, f"the file has {what}", "format 0 or 1")
         if division & 0x8000 or division == 0:
             raise self.wrong(
                 12,
@@ -106,9 +98,8 @@ class _Reader:
             tracks += 1
         if not tracks:
             raise fault(self.file, "the file has no track", "at least one")
-        return Times(
-            division, *(tuple(sorted(rows, key=lambda row: row[0])) for rows in (self.meters, self.tempi, self.markers))
-        )
+        rows = (self.meters, self.tempi, self.markers)
+        return Times(division, *(tuple(sorted(kind, key=lambda row: row[0])) for kind in rows))
 
     def _chunks(self) -> Iterator[tuple[int, int]]:
         """Where each track begins and ends; chunks of other kinds are passed over, as the standard asks."""
@@ -173,9 +164,8 @@ class _Reader:
             raise self.wrong(at, f"an event of {size} bytes that its track has no room for")
         if kind == _TEMPO:
             if size < 3 or not (tempo := int.from_bytes(body[:3], "big")):
-                raise self.wrong(
-                    at, "a tempo without end" if size >= 3 else "a tempo cut short", "microseconds of a quarter note"
-                )
+                found = "a tempo cut short" if size < 3 else "a tempo without end"
+                raise self.wrong(at, found, "microseconds of a quarter note")
             self._keep(self.tempi, (tick, tempo), at)
         elif kind == _METER:
             if size < 2 or not body[0] or body[1] > 6:

@@ -67,6 +67,16 @@ def midi_ports_found() -> list[Found]:
     return found
 
 
+def is_midi_there() -> bool:
+    """Whether any MIDI system answers."""
+    for api, _ in _systems():
+        scout = _client(rtmidi.MidiIn, api)
+        if scout is not None:
+            scout.delete()
+            return True
+    return False
+
+
 class MidiPorts:
     """Ports to hear and to send to, each named by part of its name; "" means every one there is.
 

@@ -28,10 +28,8 @@ def times_of(score: Score, tempo: TempoMap) -> Times:
     note = np.array([notes.get(int(bar), 4) for bar in tempo.meter_bar], dtype=float)
     starts = np.concatenate([[0.0], np.cumsum(np.diff(tempo.meter_count) * 4.0 * DIVISION / note[:-1])])
     ticks = _Ticks(tempo.meter_count, starts, 4.0 * DIVISION / note)
-    meters = tuple(
-        (round(float(tick)), int(counts), int(value))
-        for tick, counts, value in zip(starts, tempo.bar_counts, note, strict=True)
-    )
+    rows = zip(starts, tempo.bar_counts, note, strict=True)
+    meters = tuple((round(float(tick)), int(counts), int(value)) for tick, counts, value in rows)
     markers = sorted((ticks.at(tempo.counts_of(cue.at)), cue.name + (WAITS if cue.wait else "")) for cue in score.cues)
     return Times(DIVISION, meters, _tempi(score, tempo, ticks), tuple(markers))
 
