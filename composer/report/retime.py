@@ -7,8 +7,10 @@ from typing import Any
 import numpy as np
 
 from composer.limits.check import Check
+from composer.report.causes import cause_as_json, cause_in_words, pin_in_words
 from composer.report.check import snag_as_json
 from composer.report.sentences import Teller, named, tell
+from composer.retime.proof import Cause, PinCost, causes, pin_costs
 from composer.retime.retiming import Lead, MovedHit, PinsShort, Retiming
 from composer.rig.model import Rig
 from composer.score.tempo import TempoMap
@@ -28,6 +30,7 @@ def is_good(retiming: Retiming, checked: Check) -> bool:
 def as_json(retiming: Retiming, checked: Check, rig: Rig, tempo: TempoMap) -> dict[str, Any]:
     """The object that `retime --json` prints; places are those of the score as written."""
     names = [fiber.name for fiber in rig.fibers]
+    held, pins = _proven(retiming)
     return {
         "ok": is_good(retiming, checked),
         "keep": retiming.keep,
@@ -40,8 +43,9 @@ def as_json(retiming: Retiming, checked: Check, rig: Rig, tempo: TempoMap) -> di
                 "now_s": hit.now_s,
                 "fibers": [names[f] for f in hit.fibers],
                 "line": hit.line,
+                "held_by": cause_as_json(cause, names, tempo),
             }
-            for hit in retiming.hits_moved
+            for hit, cause in zip(retiming.hits_moved, held, strict=True)
         ],
         "leads": [
             {"fiber": names[lead.fiber], "was_s": lead.was_s, "now_s": lead.now_s, "line": lead.line} for lead in retiming.leads
@@ -63,7 +67,16 @@ def as_json(retiming: Retiming, checked: Check, rig: Rig, tempo: TempoMap) -> di
         "bound": _number(retiming.bound),
         "solve_s": retiming.solve_s,
         "snags_left": [snag_as_json(snag, _teller(retiming, rig, tempo)) for snag in checked.snags],
+        "pins": [
+            {"place": tempo.say_place(at_s), "at_s": at_s, "strokes": pin.force, "says": pin_in_words(pin, at_s, tempo)}
+            for pin, at_s in zip(pins, retiming.pins_s.tolist(), strict=False)
+        ],
     }
+
+
+def _proven(retiming: Retiming) -> tuple[list[Cause], list[PinCost]]:
+    """What holds each moved hit, and what each pin costs; neither where there is no answer."""
+    return (causes(retiming.proof), pin_costs(retiming.proof)) if retiming.proof is not None else ([], [])
 
 
 def _teller(retiming: Retiming, rig: Rig, tempo: TempoMap) -> Teller:
@@ -81,7 +94,11 @@ def sentences(retiming: Retiming, checked: Check, rig: Rig, tempo: TempoMap) -> 
     names = [fiber.name for fiber in rig.fibers]
     told = [*_short(retiming.pins_short, names, tempo)]
     if not retiming.pins_short:
-        told += [_summary(retiming), *_hits(retiming.hits_moved, names, tempo), *_leads(retiming, names, tempo)]
+        held, pins = _proven(retiming)
+        told += [_summary(retiming), *_hits(retiming.hits_moved, held, names, tempo), *_leads(retiming, names, tempo)]
+        told += [
+            pin_in_words(pin, at_s, tempo) for pin, at_s in zip(pins, retiming.pins_s.tolist(), strict=True) if pin.force != 0.0
+        ]
     for move in retiming.shrunk:
         told.append(
             f"{names[move.fiber]} goes {move.factor:.3g} of its way in the move that lands at {tempo.say_place(move.was_s)}"
@@ -114,23 +131,28 @@ def _apart(keep: str) -> str:
     return "another while before its hit" if keep == "rhythm" else "at another time"
 
 
-def _hits(hits: Sequence[MovedHit], names: list[str], tempo: TempoMap) -> Iterator[str]:
-    """One line a hit; neighbours that moved alike share one."""
-    groups: list[list[MovedHit]] = []
-    for hit in hits:
-        if groups and abs((hit.now_s - hit.was_s) - (groups[-1][-1].now_s - groups[-1][-1].was_s)) < SAME_S:
-            groups[-1].append(hit)
+def _hits(hits: Sequence[MovedHit], held: Sequence[Cause], names: list[str], tempo: TempoMap) -> Iterator[str]:
+    """One line a hit, with what holds it there; neighbours that moved alike and only keep their rhythm share it."""
+    groups: list[tuple[list[MovedHit], Cause]] = []
+    for hit, cause in zip(hits, held, strict=True):
+        if groups and cause.kind == "rhythm" and abs(_moved(hit) - _moved(groups[-1][0][-1])) < SAME_S:
+            groups[-1][0].append(hit)
         else:
-            groups.append([hit])
-    for group in groups:
+            groups.append(([hit], cause))
+    for group, cause in groups:
         first, last = group[0], group[-1]
         places = tempo.say_place(first.was_s)
         fibers = list(dict.fromkeys(f for hit in group for f in hit.fibers))
         if len(group) > 1:
             places += f" to {tempo.say_place(last.was_s)} ({len(group)} hits)"
-        moved = first.now_s - first.was_s
+        moved = _moved(first)
         way = "later" if moved > 0.0 else "earlier"
         yield f"  {places}: {_seconds(abs(moved))} {way}, {_fibers(fibers, names)}{_line(first.line)}"
+        yield f"    {cause_in_words(cause, names, tempo)}"
+
+
+def _moved(hit: MovedHit) -> float:
+    return hit.now_s - hit.was_s
 
 
 def _leads(retiming: Retiming, names: list[str], tempo: TempoMap) -> Iterator[str]:

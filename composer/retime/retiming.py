@@ -1,7 +1,7 @@
 """Retiming: the least change of times with which a rig can do a score, and what it changed."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -10,6 +10,7 @@ from composer.limits.abilities import Abilities
 from composer.retime.apply import retimed
 from composer.retime.pins import Chain, chains_too_long
 from composer.retime.polish import polish
+from composer.retime.proof import Proof
 from composer.retime.shrink import Shrunk, factor_that_fits, scaled
 from composer.retime.solving import Answer, Programme, answer, at_times, durations_to_keep, programme_of
 from composer.retime.terms import cost
@@ -77,6 +78,7 @@ class Retiming:
 
     tracks: the new tracks; those as written where pins are too close
     bound: proven: no retiming costs less
+    pins_s: (P,) the pins in order of time; proof: what causes and pins' costs are read from, None where pins leave no answer
     warp_was_s, warp_now_s: 0, the hits and the score's end as written and as retimed, (W,) each, rising
     """
 
@@ -92,6 +94,8 @@ class Retiming:
     was_s: float
     warp_was_s: Array
     warp_now_s: Array
+    pins_s: Array
+    proof: Proof | None = field(repr=False)
 
 
 def retime(
@@ -153,7 +157,7 @@ def retime(
         programme, chains = build(tracks)
     found = None if chains else answer(programme, rig, abilities, whole, limit_s)
     short = tuple(_short(chain, programme, abilities) for chain in chains)
-    return _told(programme, tracks, keep, found, shrunk, short, clock() - began)
+    return _told(programme, tracks, abilities, pins, keep, found, shrunk, short, clock() - began)
 
 
 def _short(chain: Chain, programme: Programme, abilities: Abilities) -> PinsShort:
@@ -171,6 +175,8 @@ def _short(chain: Chain, programme: Programme, abilities: Abilities) -> PinsShor
 def _told(
     programme: Programme,
     tracks: Tracks,
+    abilities: Abilities,
+    pins_s: Array,
     keep: str,
     found: Answer | None,
     shrunk: dict[int, Shrunk],
@@ -233,7 +239,25 @@ def _told(
         bound=found.least.bound if found is not None else float("nan"),
         solve_s=solve_s,
         was_s=tracks.duration_s,
+        pins_s=pins_s,
+        proof=_proof(programme, found, shift, abilities, len(pins_s)),
         **_warp(was, now, tracks.duration_s, new.duration_s),
+    )
+
+
+def _proof(programme: Programme, found: Answer | None, shift: Array, abilities: Abilities, pins: int) -> Proof | None:
+    if found is None:
+        return None
+    return Proof(
+        programme.tracks,
+        programme.least_s,
+        programme.events,
+        found.rows,
+        programme.terms,
+        shift,
+        found.least.dual,
+        abilities,
+        pins,
     )
 
 

@@ -42,9 +42,10 @@ def test_a_score_that_time_mends_ends_with_0_and_both_files_are_written(demo):
     assert found.return_value == 0, found.output
     told = json.loads(found.stdout)
     assert told["ok"] and not told["snags_left"] and told["cost"] == pytest.approx(told["bound"])
-    keys = "ok keep duration_s was_s hits_moved leads shrunk pins_short cost bound solve_s snags_left"
+    keys = "ok keep duration_s was_s hits_moved leads shrunk pins_short cost bound solve_s snags_left pins"
     assert list(told) == keys.split()
     (hit,) = told["hits_moved"]
+    assert hit["held_by"]["kind"] == "move" and hit["held_by"]["says"].startswith("reed.1 needs")
     assert (hit["place"], hit["was_s"], hit["fibers"], hit["line"]) == ("1:1.25", 0.25, ["reed.1"], 10)
     play = read_play(demo / "one.play")
     flat = load_score(demo / "flat.score")
