@@ -1,6 +1,6 @@
 """How late sets are at the valves of a simulated board on a pseudo-terminal, and what the wire costs, printed from one run.
 
-python tests/bench/wire.py [--seconds 60] [--rate 500] [--channels 48] [--ahead 0.05]
+python tests/bench/wire.py [--seconds 60] [--rate 500] [--channels 48] [--ahead 0.05] [--portable]
 """
 
 import argparse
@@ -93,12 +93,14 @@ def main() -> None:
     parser.add_argument("--rate", type=float, default=500.0)
     parser.add_argument("--channels", type=int, default=48)
     parser.add_argument("--ahead", type=float, default=0.05)
+    parser.add_argument("--portable", action="store_true", help="the board in C")
     asked = parser.parse_args()
     costs(asked.channels)
     rig = load_rig(str(DEMO))
     with tempfile.TemporaryDirectory() as folder:
         log = Path(folder) / "log.csv"
         call = [sys.executable, "-c", "from player.commands.main import main; main()", "device", str(DEMO), "--log", str(log)]
+        call += ["--portable"] * asked.portable
         device = subprocess.Popen(call, stdout=subprocess.PIPE, text=True)
         try:
             path = device.stdout.readline().strip()
