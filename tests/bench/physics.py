@@ -159,9 +159,7 @@ def against_solve_ivp():
     ends = together(fibers, rest, rest, rest, goals, 400e3, delays[0], 0.5, times[6:250])[3]
     as_one = (time.process_time() - begin) / (0.5 - delays[0])
     apart = np.max(np.abs(ends[-1] - strains[249]) / abilities.stroke)
-    print(
-        f"simulated rig over solve_ivp (LSODA, rtol 1e-6), 48 fibers: {as_one / (ours / 3.0):.0f} times as fast (50 at least)"
-    )
+    print(f"simulated rig to LSODA (rtol 1e-6), 48 fibers as one: {as_one / (ours / 3.0):.0f} times as fast (50 at least)")
     print(f"   over 48 solutions of one fiber each, without their common supply: {theirs / ours:.0f} times")
     print(f"   largest difference of strain: {100.0 * max(worst, apart):.2f} % of stroke (1 at most)")
 
