@@ -87,15 +87,12 @@ def _refuse_clashes(source: str, outputs: list[str]) -> None:
 
 def _write(loaded, retiming, play: str | None, flat: str | None) -> None:
     """Both files, each complete or not at all; what can fail before a byte is written does."""
-    import numpy as np
-
     from composer.files import replacing
     from composer.load import CuePoint
+    from composer.warp import Warp
 
-    cues = tuple(
-        CuePoint(cue.name, float(np.interp(cue.seconds, retiming.warp_was_s, retiming.warp_now_s)), cue.wait)
-        for cue in loaded.cues
-    )
+    warp = Warp(retiming.warp_was_s, retiming.warp_now_s)
+    cues = tuple(CuePoint(cue.name, warp.now(cue.seconds), cue.wait) for cue in loaded.cues)
     text = None
     if flat is not None:
         from composer.score.flat import write_flat

@@ -7,6 +7,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from composer.score.tempo import TempoMap
+from composer.warp import along
 
 Array = NDArray[np.float64]
 
@@ -48,11 +49,11 @@ class RetimedBars:
 
     def seconds(self, counts: ArrayLike) -> Array:
         """Seconds, as retimed, at `counts` of the score as written."""
-        return _along(self.tempo.seconds(counts), self.was_s, self.now_s)
+        return along(self.tempo.seconds(counts), self.was_s, self.now_s)
 
     def counts(self, seconds: ArrayLike) -> Array:
         """Counts of the score as written at `seconds` as retimed."""
-        return self.tempo.counts(_along(seconds, self.now_s, self.was_s))
+        return self.tempo.counts(along(seconds, self.now_s, self.was_s))
 
     def bars(self, counts: ArrayLike) -> Array:
         """Bars gone at `counts`."""
@@ -64,13 +65,4 @@ class RetimedBars:
 
     def say_place(self, seconds: float) -> str:
         """Bar and count, as written, of an instant as retimed."""
-        return self.tempo.say_place(float(_along(seconds, self.now_s, self.was_s)))
-
-
-def _along(at: ArrayLike, here: Array, there: Array) -> Array:
-    at = np.asarray(at, dtype=float)
-    if not len(here):
-        return at
-    between = np.interp(at, here, there)
-    before, beyond = at < here[0], at > here[-1]
-    return np.where(before, there[0] + at - here[0], np.where(beyond, there[-1] + at - here[-1], between))
+        return self.tempo.say_place(float(along(seconds, self.now_s, self.was_s)))

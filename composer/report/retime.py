@@ -4,8 +4,6 @@ import math
 from collections.abc import Iterator, Sequence
 from typing import Any
 
-import numpy as np
-
 from composer.limits.check import Check
 from composer.report.causes import cause_as_json, cause_in_words, pin_in_words
 from composer.report.check import snag_as_json
@@ -14,6 +12,7 @@ from composer.retime.proof import Cause, PinCost, causes, pin_costs
 from composer.retime.retiming import Lead, MovedHit, PinsShort, Retiming
 from composer.rig.model import Rig
 from composer.score.tempo import TempoMap
+from composer.warp import Warp
 
 SAME_S = 1e-6
 """Displacements that differ by less are told as one."""
@@ -81,8 +80,8 @@ def _proven(retiming: Retiming) -> tuple[list[Cause], list[PinCost]]:
 
 def _teller(retiming: Retiming, rig: Rig, tempo: TempoMap) -> Teller:
     """Who tells of snags that are left: at the places of the score as written, where its reader will look."""
-    was, now = retiming.warp_was_s, retiming.warp_now_s
-    return Teller(retiming.tracks, rig, lambda at_s: tempo.say_place(float(np.interp(at_s, now, was))))
+    warp = Warp(retiming.warp_was_s, retiming.warp_now_s)
+    return Teller(retiming.tracks, rig, lambda at_s: tempo.say_place(warp.was(at_s)))
 
 
 def _number(value: float) -> float | None:

@@ -15,6 +15,7 @@ from composer.rig.model import Rig
 from composer.score.model import Place, Span
 from composer.score.tempo import TempoMap
 from composer.tracks import Tracks
+from composer.warp import UNWARPED, Warp
 from player.engine.source import Source
 from player.engine.transport import Cue
 from player.outputs.recording import LARGEST_BYTES, MAGIC, Recording
@@ -25,31 +26,6 @@ ZIP = b"PK\x03\x04"
 """The first bytes of a play file, which is a NumPy .npz."""
 
 _PLACE = re.compile(r"(?P<bar>[0-9]{1,7}):(?P<count>[0-9./+]{1,40})|(?P<seconds>[0-9./+]{1,40})\s*(?P<unit>s|ms)")
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Warp:
-    """Instants as written and as retimed, both (N,) rising from 0; a straight line between, one pace beyond the last."""
-
-    was_s: Array
-    now_s: Array
-
-    def now(self, was_s: float) -> float:
-        """Where a written instant has gone."""
-        return _between(was_s, self.was_s, self.now_s)
-
-    def was(self, now_s: float) -> float:
-        """Where a retimed instant was written."""
-        return _between(now_s, self.now_s, self.was_s)
-
-
-UNWARPED = Warp(np.zeros(1), np.zeros(1))
-
-
-def _between(at: float, from_s: Array, to_s: Array) -> float:
-    if at >= from_s[-1]:
-        return float(to_s[-1] + at - from_s[-1])
-    return float(np.interp(at, from_s, to_s))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
