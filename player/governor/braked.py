@@ -11,8 +11,8 @@ from numpy.typing import NDArray
 
 Array = NDArray[np.float64]
 
-THERE = 1e-13
-"""A fiber that would stop within this strain of its place, and is as close to it, is there."""
+THERE, NEARLY_STILL = 1e-13, 1e-7
+"""A fiber this close to its place in strain, and no faster than this share of what a tick can change, is there and still."""
 
 
 def stops_at(strain: Array, rate: Array, accel: Array) -> Array:
@@ -21,26 +21,28 @@ def stops_at(strain: Array, rate: Array, accel: Array) -> Array:
 
 
 def braked(
-    strain: Array, rate: Array, wanted: Array, accel: Array, fill: Array, exhaust: Array, dt_s: float
+    strain: Array, rate: Array, stop: Array, wanted: Array, accel: Array, fill: Array, exhaust: Array, dt_s: float
 ) -> tuple[Array, Array]:
     """Strain and rate at the end of a tick of fibers that make for `wanted` within their rates and acceleration: (B,) each.
 
-    fill, exhaust: fastest rates in 1/s, the same at every strain. Every fiber can still stop between rest and stroke
-    afterwards, if it could before and `wanted` lies there.
+    stop: where they would stand if they braked now; fill, exhaust: fastest rates in 1/s, the same at every strain. Every
+    fiber can still stop between rest and stroke afterwards, if it could before and `wanted` lies there.
     """
-    ahead = wanted - stops_at(strain, rate, accel)
-    way = np.where((ahead > 0.0) | ((ahead == 0.0) & (rate > 0.0)), 1.0, -1.0)
+    way = np.copysign(1.0, wanted - stop)
     now = way * rate
     distance = way * (wanted - strain)
-    most = np.where(way > 0.0, fill, exhaust)
     change = accel * dt_s
+    # One that goes the other way stops first.
+    most = np.where(now < 0.0, 0.0, np.where(way > 0.0, fill, exhaust))
     forward = np.maximum(now, 0.0)
-    gathering = (distance + forward**2 / (2.0 * accel)) / (dt_s + forward / accel)
-    room = np.maximum((change - now) ** 2 + 4.0 * accel * distance - 2.0 * now**2, 0.0)
-    losing = 0.5 * (np.sqrt(room) - (change - now))
-    end = np.where(gathering >= now, gathering, losing)
-    end = np.maximum(np.minimum(end, np.minimum(most, now + change)), np.maximum(now - change, 0.0))
-    end = np.where(now < 0.0, np.minimum(now + change, 0.0), end)
-    gone = now * dt_s + (end - now) * (dt_s - np.abs(end - now) / (2.0 * accel))
-    there = end**2 / (2.0 * accel) + np.abs(distance - gone) <= THERE
+    needs = accel * distance
+    gathering = (needs + 0.5 * forward * forward) / (change + forward)
+    left = change - now
+    room = np.maximum(left * left + 4.0 * needs - 2.0 * now * now, 0.0)
+    end = np.where(gathering >= now, gathering, 0.5 * (np.sqrt(room) - left))
+    end = np.minimum(np.minimum(end, most), now + change)
+    end = np.maximum(end, np.maximum(now - change, np.minimum(now, 0.0)))
+    changed = end - now
+    gone = now * dt_s + changed * (dt_s - 0.5 * np.abs(changed) / accel)
+    there = (end <= NEARLY_STILL * change) & (np.abs(distance - gone) <= THERE)
     return np.where(there, wanted, strain + way * gone), np.where(there, 0.0, way * end)

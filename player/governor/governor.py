@@ -32,18 +32,20 @@ RECOVERED = 0.1
 class Governor:
     """What the governor of F fibers knows that never changes.
 
-    live: the rates, air and ways back; braced: (B,) fibers with a limit of acceleration, accel: (F,) that limit, 1/s²
+    live: the rates, air and ways back
+    braced: (B,) fibers with a limit of acceleration, a slice if all have one; accel: (F,) that limit, 1/s²
     stroke, least, low, let_down_to: (F,) strains: usable stroke, one step of the drive, end of a hold, where it is let down to
     max_hold_s: (F,), inf for no limit; low_back_s: (F,) seconds that the way from `low` to rest takes
-    duty, burst_s, min_on_s, holding: (F,) of each coil: share of time, seconds beyond it, how long it stays on once it is, and
-        whether holding energises it
+    duty, off_duty, burst_s, min_on_s, holding: (F,) of each coil: share of time that it may be on, and the rest of it, seconds
+        beyond it, how long it stays on once it is, and whether holding energises it
     spare_s: (F,) seconds that a way back may take beyond what its rates say: ticks that begin late, and the brakes
     store_L, refill_L_s: the supply
-    has_duty, has_hold, has_holding: whether any fiber has such a limit
+    has_braced, has_duty, has_hold, has_holding: whether any fiber has such a limit
     """
 
     live: Live
-    braced: Index
+    braced: Index | slice
+    has_braced: bool
     accel: Array
     stroke: Array
     least: Array
@@ -52,6 +54,7 @@ class Governor:
     max_hold_s: Array
     low_back_s: Array
     duty: Array
+    off_duty: Array
     burst_s: Array
     min_on_s: Array
     holding: NDArray[np.bool_]
@@ -82,7 +85,8 @@ def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_
     spare[braced] += 3.0 * longest_tick_s + at_least.exhaust[braced] / abilities.accel[braced]
     return Governor(
         live=tables,
-        braced=braced,
+        braced=slice(None) if len(braced) == len(stroke) else braced,
+        has_braced=len(braced) > 0,
         accel=abilities.accel,
         stroke=stroke,
         least=least,
@@ -91,6 +95,7 @@ def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_
         max_hold_s=abilities.max_hold_s,
         low_back_s=at_low.back,
         duty=coils.duty,
+        off_duty=1.0 - coils.duty,
         burst_s=coils.burst_s,
         min_on_s=1.0 / coils.switch_Hz,
         holding=coils.holding,

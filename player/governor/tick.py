@@ -46,16 +46,18 @@ class _Tick:
     def __init__(self, governor: Governor, state: State, dt_s: float):
         self.governor, self.state, self.dt_s = governor, state, dt_s
         self.up, self.down = longest_steps(state.here, dt_s)
-        self.stays_on = state.on & (state.since_on_s + dt_s < governor.min_on_s * (1.0 - ROUNDING))
-        self.some_stay_on = bool(self.stays_on.any())
+        # A coil that is on, or is switched on now, and may not be switched off at the end of this tick.
+        on_s = np.where(state.on, state.since_on_s, 0.0)
+        self.too_soon = on_s + dt_s < governor.min_on_s * (1.0 - ROUNDING)
+        self.stays_on = state.on & self.too_soon
         strain = state.strain
         # Where a fiber would stand if it braked now, and the highest strain that it cannot help coming to.
         self.stop = self.top = strain
         self.braced = governor.braced
-        if len(self.braced):
+        if self.governor.has_braced:
             b = self.braced
             self.stop = strain.copy()
-            self.stop[b] = stops_at(strain[b], state.rate[b], governor.accel[b])
+            self.stop[b] = np.clip(stops_at(strain[b], state.rate[b], governor.accel[b]), 0.0, governor.stroke[b])
             self.top = np.maximum(self.stop, strain)
         self.start_band = np.where(state.on, 0.0, governor.least)
         self.cut = np.full(len(strain), NONE, dtype=np.int8)
@@ -96,19 +98,18 @@ class _Tick:
         governor, strain = self.governor, self.state.strain
         idle = np.abs(goal - strain) <= self.start_band
         idle &= (goal > 0.0) | (strain == 0.0)
-        if len(self.braced):
+        if self.governor.has_braced:
             idle &= self.state.rate == 0.0
         aimed = np.where(idle, strain, goal)
-        if self.some_stay_on:
-            least = governor.least
-            moves = self.stays_on
-            if governor.has_holding:
-                moves = moves & ~(governor.holding & (strain > least))
-            np.subtract(aimed, least, out=aimed, where=idle & moves)
+        least = governor.least
+        idles = idle & self.stays_on
+        if governor.has_holding:
+            idles &= ~(governor.holding & (strain > least))
+        np.subtract(aimed, least, out=aimed, where=idles)
+        low = (aimed < least) & self.too_soon
+        if low.any():
             floor = np.minimum(self.stop, least) * (1.0 - 0.5 * self.dt_s / governor.min_on_s)
-            floor = np.where(self.stays_on, floor, 0.0)
-            self._cuts(goal < floor, SWITCHING)
-            aimed = np.maximum(aimed, floor)
+            aimed = np.where(low, np.maximum(aimed, floor), aimed)
         return aimed
 
     def _move(self, goal: Array) -> tuple[Array, Array]:
@@ -116,24 +117,25 @@ class _Tick:
         aimed, strain = self._aim(goal), self.state.strain
         there = np.minimum(np.maximum(aimed, strain - self.down), strain + self.up)
         rate = (there - strain) / self.dt_s
-        if len(self.braced):
+        if self.governor.has_braced:
             b = self.braced
             fill, exhaust = self.up[b] / self.dt_s, self.down[b] / self.dt_s
             there[b], rate[b] = braked(
-                strain[b], self.state.rate[b], aimed[b], self.governor.accel[b], fill, exhaust, self.dt_s
+                strain[b], self.state.rate[b], self.stop[b], aimed[b], self.governor.accel[b], fill, exhaust, self.dt_s
             )
+            there[b] = np.clip(there[b], 0.0, self.governor.stroke[b])  # what rounding left outside
         return there, rate
 
     def _cuts_on_the_way(self, goal: Array, strain: Array, rate: Array) -> None:
         short = np.abs(goal - strain) > self.governor.least
         self._cuts(short, RATE)
-        if len(self.braced):
+        if self.governor.has_braced:
             most = np.where(rate > 0.0, self.up, self.down) / self.dt_s
             self._cuts(short & np.isfinite(self.governor.accel) & (np.abs(rate) < most * (1.0 - 1e-9)), ACCEL)
 
     def _tops(self, strain: Array, rate: Array) -> Array:
         """The highest strain that a fiber at such a strain and rate cannot help coming to."""
-        if not len(self.braced):
+        if not self.governor.has_braced:
             return strain
         b = self.braced
         top = strain.copy()
@@ -145,14 +147,14 @@ class _Tick:
         here, start = self.state.here, self.state.strain
         top = self._tops(strain, rate)
         back = here.back + np.maximum(top - start, 0.0) * here.back_up
-        if len(self.braced):
+        if self.governor.has_braced:
             back = back + np.maximum(rate, 0.0) / self.governor.accel
         return top, back
 
     def _on(self, strain: Array) -> Mask:
         """Whether coils are energised in a tick that ends at `strain`."""
         on = strain != self.state.strain
-        if len(self.braced):
+        if self.governor.has_braced:
             on |= self.state.rate != 0.0
         if self.governor.has_holding:
             on |= self.governor.holding & (strain > self.governor.least)
@@ -166,7 +168,7 @@ class _Tick:
         governor = self.governor
         way = np.maximum(back, governor.min_on_s) + governor.spare_s
         way = np.where((strain == 0.0) & (rate == 0.0), 0.0, way)
-        return governor.burst_s - self._spent(self._on(strain)) - (1.0 - governor.duty) * way
+        return governor.burst_s - self._spent(self._on(strain)) - governor.off_duty * way
 
     def _too_long(self, top: Array, back: Array) -> Mask:
         """Whether a hold could not be over in time any more."""
@@ -190,8 +192,9 @@ class _Tick:
                 goal = self._instead(goal, too_long, np.minimum(goal, governor.let_down_to), HOLD)
                 hurried = self._hurry(too_long)
         if governor.has_duty:
-            spare = (1.0 - governor.duty) * governor.min_on_s
-            refuse = (top > self.top) & (self._slack(strain, rate, back) < spare)
+            spare = governor.off_duty * governor.min_on_s
+            slack = self._slack(strain, rate, back)
+            refuse = (top > self.top) & (slack < spare)
             refused = bool(refuse.any())
             if refused:
                 tired = tired | refuse
@@ -199,8 +202,8 @@ class _Tick:
         if hurried or refused:
             strain, rate = self._move(goal)
         if governor.has_duty:
-            top, back = self._back_s(strain, rate)
-            slack = self._slack(strain, rate, back)
+            if hurried or refused:
+                slack = self._slack(strain, rate, self._back_s(strain, rate)[1])
             forced = slack < 0.0
             if forced.any():
                 tired = tired | forced
@@ -222,11 +225,12 @@ class _Tick:
         rise = np.maximum(self._tops(strain, rate) - self.top, 0.0)
         asked_L = float(np.dot(rise, state.here.air_up))
         there_L = governor.store_L - state.air_missing_L
-        if len(self.braced):
+        if self.governor.has_braced:
             there_L -= float(np.dot(self.top - state.strain, state.here.air_up))
+        there_L = max(there_L, 0.0)
         if asked_L <= there_L:
             return strain, rate, 1.0
-        share = max(there_L, 0.0) / asked_L
+        share = there_L / asked_L
         fills = rise > 0.0
         self._cuts(fills, AIR)
         return *self._move(np.where(fills, self.top + share * rise, goal)), share
@@ -237,7 +241,9 @@ class _Tick:
         drawn_L = float(np.maximum(here.air - was.here.air, 0.0).sum())
         on = self._on(strain)
         by = asked - strain
-        self._cuts(np.abs(by) <= governor.least, NONE)
+        near = np.abs(by) <= governor.least
+        self._cuts(near, NONE)
+        self._cuts(near & self.stays_on & (by != 0.0), SWITCHING)
         return State(
             strain=strain,
             rate=rate,
