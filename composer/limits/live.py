@@ -117,7 +117,7 @@ def look(tables: Live, strain: Array) -> Look:
 
 
 def longest_steps(here: Look, dt_s: float) -> tuple[Array, Array]:
-    """The longest straight steps up and down, as strain, that keep every fiber within its rates throughout `dt_s`: (F,) each."""
+    """The longest straight steps up and down, in strain, that keep within the rates on the whole way in `dt_s`: (F,) each."""
     return dt_s * here.fill / (1.0 + dt_s * here.fill_falls), dt_s * here.exhaust / (1.0 + dt_s * here.exhaust_falls)
 
 

@@ -44,5 +44,5 @@ def braked(
     end = np.maximum(end, np.maximum(now - change, np.minimum(now, 0.0)))
     changed = end - now
     gone = now * dt_s + changed * (dt_s - 0.5 * np.abs(changed) / accel)
-    there = (end <= NEARLY_STILL * change) & (np.abs(distance - gone) <= THERE)
+    there = (np.abs(end) <= NEARLY_STILL * change) & (np.abs(distance - gone) <= THERE)
     return np.where(there, wanted, strain + way * gone), np.where(there, 0.0, way * end)

@@ -6,7 +6,7 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 
 WAYS = ("alone", "takes", "adds", "scales")
-"""By number: no hand on the fiber, the hand in the score's place, the hand's stroke added, the score's strain times the hand."""
+"""By number: no hand on the fiber, the hand in the score's place, added to it, the score times the hand."""
 
 ALONE, TAKES, ADDS, SCALES = range(4)
 
