@@ -22,5 +22,5 @@ def command() -> int:
     for name, kind, says in ports + midi:
         click.echo(f"{name:<{widest}}  {kind:<9}  {says}".rstrip())
     if not midi:
-        click.echo("No MIDI port was found. Is the controller plugged in?" if is_midi_there() else f"No MIDI: {NO_MIDI}.")
+        click.echo("No MIDI port was found. Is the controller plugged in?" if is_midi_there() else f"N{NO_MIDI[1:]}.")
     return 0

@@ -25,7 +25,7 @@ MOST_A_POLL = 1024
 
 _ERRORS = (rtmidi.RtMidiError,)
 
-NO_MIDI = "no MIDI system answers on this machine: neither ALSA (is /dev/snd there?) nor a running JACK server"
+NO_MIDI = "no MIDI system answers on this machine: neither ALSA nor a running JACK server"
 
 
 @dataclass(frozen=True, slots=True)

@@ -22,7 +22,7 @@ DOES = {
 HOW = {
     "takes": "the control takes its fibers over from the score",
     "adds": "the control's stroke is added to the score's",
-    "scales": "the score's stroke is multiplied by the control's value",
+    "scales": "the score's stroke is multiplied by the control's",
 }
 """How a hand and a running score are mixed on the same fibers."""
 
@@ -74,8 +74,8 @@ KINDS = {
         Kind(_number("cc", 119, "the number of a controller"), 127, "a knob, fader or pedal of 7 bits"),
         Kind(_number("cc14", 31, "its number n; n + 32 carries the fine part"), 16383, "a knob or fader of 14 bits"),
         Kind(_number("note", 127, "the number of a note; 60 is middle C"), 127, "a key or pad"),
-        Kind(Key("bend", "switch", "true", default=None), 16383, "the pitch wheel; its middle is one half"),
-        Kind(Key("pressure", "switch", "true", default=None), 127, "how hard the keys of a channel are pressed"),
+        Kind(Key("bend", "switch", "true: the pitch wheel, whose middle is one half", default=None), 16383, "the pitch wheel; its middle is one half"),
+        Kind(Key("pressure", "switch", "true: how hard the keys of the channel are pressed", default=None), 127, "how hard the keys of a channel are pressed"),
         Kind(_number("poly_pressure", 127, "the number of a note"), 127, "how hard one key is pressed"),
     )
 }
