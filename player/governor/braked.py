@@ -32,16 +32,17 @@ def braked(
     now = way * rate
     distance = way * (wanted - strain)
     change = accel * dt_s
-    # One that goes the other way stops first.
-    most = np.where(now < 0.0, 0.0, np.where(way > 0.0, fill, exhaust))
+    most = np.where(way > 0.0, fill, exhaust)
     forward = np.maximum(now, 0.0)
     needs = accel * distance
     gathering = (needs + 0.5 * forward * forward) / (change + forward)
     left = change - now
     room = np.maximum(left * left + 4.0 * needs - 2.0 * now * now, 0.0)
     end = np.where(gathering >= now, gathering, 0.5 * (np.sqrt(room) - left))
-    end = np.minimum(np.minimum(end, most), now + change)
-    end = np.maximum(end, np.maximum(now - change, np.minimum(now, 0.0)))
+    end = np.minimum(end, np.minimum(most, now + change))
+    end = np.maximum(end, np.maximum(now - change, 0.0))
+    # One that goes the other way stops first.
+    end = np.where(now < 0.0, np.minimum(now + change, 0.0), end)
     changed = end - now
     gone = now * dt_s + changed * (dt_s - 0.5 * np.abs(changed) / accel)
     there = (np.abs(end) <= NEARLY_STILL * change) & (np.abs(distance - gone) <= THERE)
