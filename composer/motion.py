@@ -8,6 +8,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from composer.limits import tables
 from composer.limits.abilities import Abilities
+from composer.quivers import Over, over, rate_added, strain_added
 from composer.tracks import SUDDEN, Tracks, durations, end_strain, fiber_of
 
 Array = NDArray[np.float64]
@@ -21,12 +22,14 @@ FEW = 4
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Motion:
-    """Tracks made ready for asking: `lasts` (K,) seconds a segment, `travel` (K,) seconds a sudden one takes, 0 elsewhere."""
+    """Tracks made ready for asking: `lasts` (K,) seconds a segment, `travel` (K,) seconds a sudden one takes, 0 elsewhere,
+    and the quivers by segment, None where there are none."""
 
     tracks: Tracks
     abilities: Abilities
     lasts: Array
     travel: Array
+    quivers: Over | None
 
 
 def motion_of(tracks: Tracks, abilities: Abilities) -> Motion:
@@ -36,7 +39,7 @@ def motion_of(tracks: Tracks, abilities: Abilities) -> Motion:
     if sudden.size:
         fiber = fiber_of(tracks)[sudden]
         travel[sudden] = tables.travel_time_s(abilities, fiber, tracks.curve[sudden, 0], end_strain(tracks)[sudden])
-    return Motion(tracks, abilities, durations(tracks), travel)
+    return Motion(tracks, abilities, durations(tracks), travel, over(tracks.quivers, tracks.time_s))
 
 
 def strain_at(tracks: Tracks, abilities: Abilities, times_s: ArrayLike) -> Array:
@@ -96,6 +99,8 @@ def strain_in(motion: Motion, fiber: NDArray[np.int64], segment: NDArray[np.int6
     sudden = np.flatnonzero(tracks.manner[segment] == SUDDEN)
     if sudden.size:
         value[sudden] = _sudden_strain(motion, fiber[sudden], segment[sudden], share[sudden])
+    if motion.quivers is not None:
+        value += strain_added(motion.quivers, segment, time_s)
     return value
 
 
@@ -107,6 +112,8 @@ def rate_in(motion: Motion, fiber: NDArray[np.int64], segment: NDArray[np.int64]
     sudden = np.flatnonzero(tracks.manner[segment] == SUDDEN)
     if sudden.size:
         value[sudden] = _sudden_rate(motion, fiber[sudden], segment[sudden], share[sudden])
+    if motion.quivers is not None:
+        value += rate_added(motion.quivers, segment, time_s)
     return value
 
 
@@ -141,6 +148,12 @@ class Cursor:
             segment = self._segment[which]
             strain[which] = _sudden_strain(self._motion, which, segment, share[which])
             rate[which] = _sudden_rate(self._motion, which, segment, share[which])
+        quivers = self._motion.quivers
+        if quivers is not None and self._quivering.any():
+            which = np.flatnonzero(self._quivering)
+            each = np.broadcast_to(times, self._fibers.shape)[which]
+            strain[which] += strain_added(quivers, self._segment[which], each)
+            rate[which] += rate_added(quivers, self._segment[which], each)
         return strain, rate
 
     def _jump(self, times: Array) -> None:
@@ -149,7 +162,7 @@ class Cursor:
         self._segment = np.empty_like(segment)
         self._curve = np.empty((len(segment), 6))
         self._begins, self._ends, self._per_second = (np.empty(len(segment)) for _ in range(3))
-        self._sudden = np.empty(len(segment), dtype=bool)
+        self._sudden, self._quivering = np.empty(len(segment), dtype=bool), np.zeros(len(segment), dtype=bool)
         self._enter(self._fibers, segment)
 
     def _enter(self, fibers: NDArray[np.int64], segment: NDArray[np.int64]) -> None:
@@ -161,6 +174,8 @@ class Cursor:
         self._ends[fibers] = np.where(last, np.inf, tracks.time_s[np.minimum(segment + 1, len(tracks.time_s) - 1)])
         self._per_second[fibers] = _one_over(self._motion.lasts[segment])
         self._sudden[fibers] = tracks.manner[segment] == SUDDEN
+        if (quivers := self._motion.quivers) is not None:
+            self._quivering[fibers] = quivers.first[segment + 1] > quivers.first[segment]
 
 
 def _one_over(lasts: Array) -> Array:

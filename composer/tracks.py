@@ -5,6 +5,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from composer.quivers import NONE, Quivers
+
 Array = NDArray[np.float64]
 
 HOLD, MOVE, SUDDEN, STEP = 0, 1, 2, 3
@@ -29,6 +31,7 @@ class Tracks:
     line, phrase_line: (K,) int32: lines of the score that made the segment (0 for none): of the section's entry and of the
         phrase's line; where the phrase came from another file phrase_line is 0
     duration_s: the score's length, at least the last knot's time
+    quivers: sines on top of `curve`; they lie over moves and jumps only: what holds and quivers is a move of a constant curve
     """
 
     first: NDArray[np.int64]
@@ -39,6 +42,7 @@ class Tracks:
     line: NDArray[np.int32]
     phrase_line: NDArray[np.int32]
     duration_s: float
+    quivers: Quivers = NONE
 
     @property
     def fibers(self) -> int:
