@@ -30,7 +30,7 @@ _FULL_FRAME = (0x7F, 0x01, 0x01)
 
 @dataclass(slots=True)
 class _Fine:
-    """The two halves of a 14-bit control."""
+    """The two halves of a 14-bit control; `open`: the coarse part waits for a fine one."""
 
     coarse: int = 0
     fine: int = 0
@@ -103,7 +103,7 @@ class MidiBinds:
             for (channel, number), pair in port.fine.items():
                 if pair.open and now_s - pair.coarse_s > PAIR_S:
                     pair.open = False
-                    if pair.fine and abs(pair.coarse_s - pair.fine_s) > PAIR_S:
+                    if pair.fine:
                         pair.fine = 0
                         self._move(events, here, "cc14", number, channel, pair.coarse << 7)
             if port.silent:
@@ -237,9 +237,9 @@ class MidiBinds:
             return
         pair = here.port.fine.setdefault((channel, number), _Fine())
         if fine:
-            pair.fine, pair.fine_s = value, here.at_s
+            pair.fine, pair.fine_s, pair.open = value, here.at_s, False
         else:
-            pair.coarse, pair.coarse_s, pair.open = value, here.at_s, True
+            pair.coarse, pair.coarse_s, pair.open = value, here.at_s, here.at_s - pair.fine_s > PAIR_S
         self._move(events, here, "cc14", number, channel, pair.coarse << 7 | pair.fine)
 
     def _all_up(self, events: list[Event], here: "_Here", channel: int, kinds: tuple[str, ...]) -> None:
