@@ -10,6 +10,7 @@ COMMANDS = {
     "play": ("player.commands.play", "Play a score in real time."),
     "device": ("player.commands.device", "A simulated valve driver behind a pseudo-terminal."),
     "tempo": ("player.commands.tempo", "Tempi and markers of a MIDI file as a score has them, and the way back."),
+    "preflight": ("player.commands.preflight", "What must be true before arming, a line each."),
     "report": ("player.commands.report", "A run told afterwards, from its log."),
     "ports": ("player.commands.ports", "The ports found on this machine."),
     "rig": ("composer.commands.rig", "What each fiber of a rig can do where it hangs."),

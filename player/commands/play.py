@@ -6,7 +6,6 @@ import signal
 import sys
 from collections.abc import Callable, Iterator
 from contextlib import ExitStack, contextmanager
-from typing import Any
 
 import click
 
@@ -64,6 +63,7 @@ def command(
 def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bool, log: str | None, as_json: bool) -> int:
     """Open, pre-flight, arm, play, and leave everything at rest, or vented, whatever happens."""
     from player.commands.front import Front
+    from player.commands.logging_run import open_log
     from player.commands.priority import real_time
     from player.commands.run_report import report, sentences
     from player.engine.clock import SteadyClock
@@ -74,7 +74,7 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
     clock = SteadyClock()
     outputs = make_outputs(targets, Context(played.rig, played.abilities, clock, hertz))
     with ExitStack() as stack:
-        engine = Engine(played.rig, played.source(), outputs, clock, hertz)
+        engine = Engine(played.rig, played.source(), outputs, clock, hertz, abilities=played.abilities)
         stack.callback(engine.close)
         interrupt = stack.enter_context(_signals(engine.ask))
         for output in outputs:
@@ -83,8 +83,7 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
         if any(output.must_arm for output in outputs) and not arm and not _asked_to_arm(engine):
             click.echo("not armed; nothing has moved", err=True)
             return 2
-        run_log = _open_log(log, stack, played, targets, hertz, clock.now()) if log is not None else None
-        engine.keep_log(run_log)
+        run_log = open_log(log, stack, engine, played, targets, clock.now()) if log is not None else None
         interrupt.become_stops()
         try:
             engine.arm()
@@ -140,6 +139,7 @@ def _rate(asked: float | None, usual: float) -> float:
 def _preflight(engine, tell) -> None:
     """A mark a line; raises Faults with all that is not in order."""
     from composer.faults import Fault, Faults, Where
+    from player.commands.marks import line
 
     marks = engine.preflight()
     wrong = [mark for mark in marks if not mark.ok]
@@ -150,7 +150,7 @@ def _preflight(engine, tell) -> None:
         )
     if tell is not None and any(output.must_arm for output in engine.boards.outputs):
         for mark in marks:
-            print(f"ok  {mark.asked}" + (f" ({mark.found})" if mark.found else ""), file=tell)
+            print(line(mark), file=tell)
 
 
 def _asked_to_arm(engine) -> bool:
@@ -190,43 +190,3 @@ def _signals(ask: Callable[[str], None]) -> Iterator[_Interrupt]:
     finally:
         for number, handler in before.items():
             signal.signal(number, handler)
-
-
-def _open_log(path: str, stack: ExitStack, played, targets: tuple[str, ...], hertz: float, now_s: float):
-    """The run's log, begun; every record is in the system's hands as soon as it is written."""
-    from composer.faults import fault
-    from player.engine.clock import stamp
-    from player.engine.run_log import RunLog
-
-    try:
-        # Unbuffered, so that a run killed at any moment leaves all that was logged up to there.
-        file = open(path, "wb", buffering=0)  # noqa: SIM115
-    except (OSError, ValueError) as error:
-        why = getattr(error, "strerror", None) or error
-        raise fault(path, f"the log cannot be written: {why}", hint="choose another place with --log FILE") from None
-    stack.callback(file.close)
-
-    def write(data: bytes) -> None:
-        view = memoryview(data)
-        while view:
-            view = view[file.write(view) :]
-
-    log = RunLog(write)
-    log.tell("head", now_s, **_head(played, targets, hertz), date=stamp())
-    if log.broken:
-        raise fault(path, f"the log cannot be written: {log.broken}", hint="choose another place with --log FILE")
-    return log
-
-
-def _head(played, targets: tuple[str, ...], hertz: float) -> dict[str, Any]:
-    return {
-        "played": played.path,
-        "kind": played.kind,
-        "title": played.title,
-        "rig": played.rig.file,
-        "fingerprint": f"{played.rig.fingerprint:08x}",
-        "targets": list(targets),
-        "rate_Hz": hertz,
-        "fibers": list(played.names),
-        "drives": [fiber.mounting.valve.drive for fiber in played.rig.fibers],
-    }

@@ -10,10 +10,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from composer.limits.abilities import Abilities, abilities_of
 from composer.rig.model import Rig
 from player.engine.account import Account
 from player.engine.boards import Boards
 from player.engine.clock import Clock
+from player.engine.diary import Diary
 from player.engine.errors import Errors
 from player.engine.quiet import no_collecting
 from player.engine.run_log import RunLog
@@ -22,7 +24,6 @@ from player.engine.source import Source
 from player.engine.status import Ending, Lateness, Status
 from player.engine.verdicts import ARMED, verdict
 from player.outputs.base import Event, Mark, Output
-from player.wire.values import clip, is_valve, to_wire
 
 AHEAD_S = 0.06
 """Sets are sent this long before they are due, less where a board's queue is short: a host may stall so long unseen."""
@@ -59,28 +60,31 @@ class Engine:
         clock: Clock,
         rate_Hz: float = 200.0,
         ahead_s: float = AHEAD_S,
+        abilities: Abilities | None = None,
     ):
+        """`abilities` of the rig, where they are known already."""
         self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
         self.safety = Safety()
         self.lateness = Lateness()
         self.boards = Boards(outputs)
         self.errors = Errors(len(rig.fibers))
         self._clock = clock
-        self._log: RunLog | None = None
         self._dt = 1.0 / rate_Hz
         self._asked: deque[Command] = deque(maxlen=1000)
         self._account = Account()
         self._due_s = clock.now()
         self._moving = 0
-        self._valve = is_valve([fiber.mounting.valve.drive for fiber in rig.fibers])
+        drives = [fiber.mounting.valve.drive for fiber in rig.fibers]
+        stroke = (abilities or abilities_of(rig)).stroke
+        self._diary = Diary(clock, stroke, drives, [driver.name for driver in rig.drivers])
 
     def ask(self, kind: str, value: float = 0.0) -> None:
         """Hand the engine something the operator wants; it is done at the next tick, or within a few milliseconds."""
         self._asked.append(Command(kind, value))
 
-    def keep_log(self, log: RunLog | None) -> None:
-        """From here on all that happens goes into this log."""
-        self._log = log
+    def keep_log(self, log: RunLog | None, say_place: Callable[[float], str] | None = None) -> None:
+        """From here on all that happens goes into this log, each with its place in the score as `say_place` has it."""
+        self._diary.keep(log, say_place)
 
     def preflight(self) -> tuple[Mark, ...]:
         """Every board asked what must be true before arming; with all marks good the engine may be armed."""
@@ -153,9 +157,7 @@ class Engine:
     def _send(self, due: float, late: float) -> None:
         self._due_s = due
         self._hear(self.boards.send(due, self.source.command))
-        if self._log is not None:
-            sent = to_wire(clip(self.source.command, self._valve)[0], self._valve)
-            self._log.set(self._clock.now(), due, late, self.source.position_s, sent)
+        self._diary.set(due, late, self.source.position_s, self.source.command, self.source.strain)
 
     def _count(self, late: float) -> None:
         self.lateness.count(late)
@@ -166,8 +168,7 @@ class Engine:
         self.lateness.slips += 1
         self.lateness.slipped_s += late
         self._account.tell(f"the host stood still for {late:.3f} s; the score goes on that much later")
-        if self._log is not None:
-            self._log.tell("slip", self._clock.now(), seconds=late)
+        self._diary.tell("slip", self.source.position_s, seconds=late)
 
     def _wait(self, moment: float) -> float:
         """Wait until that moment, but do at once what cannot wait."""
@@ -186,8 +187,7 @@ class Engine:
         asked = [self._asked.popleft() for _ in range(len(self._asked))]
         asked.sort(key=lambda command: command.kind != "vent")
         for command in asked:
-            if self._log is not None:
-                self._log.tell("command", self._clock.now(), command=command.kind, value=command.value)
+            self._diary.tell("command", self.source.position_s, command=command.kind, value=command.value)
             try:
                 self._do(command)
             except Refused as refused:
@@ -223,21 +223,10 @@ class Engine:
     def _hear(self, events: Sequence[Event]) -> None:
         """What boards told; a fault of one may end the run for all."""
         for event in events:
+            self._diary.event(event, self.source.position_s)
             if event.kind == "sense":
                 self.errors.sense(event.time_s, event.fibers, event.strain)
-                if self._log is not None:
-                    self._log.sense(self._clock.now(), event.time_s, event.fibers, event.strain)
                 continue
-            if self._log is not None and (event.kind != "state" or event.say):
-                self._log.tell(
-                    "board",
-                    self._clock.now(),
-                    driver=event.driver,
-                    kind=event.kind,
-                    say=event.say,
-                    code=event.code,
-                    status=event.status,
-                )
             means, say = verdict(event, self.safety.state)
             if means == "tell":
                 self._account.tell(say)
@@ -269,8 +258,7 @@ class Engine:
             "disarm": self._disarm,
             "vent": self._vent,
         }
-        if self._log is not None:
-            self._log.tell("state", self._clock.now(), was=was, event=event, state=self.safety.state)
+        self._diary.tell("state", self.source.position_s, was=was, event=event, state=self.safety.state)
         for deed in must:
             deeds[deed]()
 
@@ -326,8 +314,8 @@ class Engine:
         )
 
     def _end(self, began: float) -> None:
-        if self._log is not None and self._log.broken:
-            self._fault("", f"the log could not be written to its end: {self._log.broken}", "note")
+        if self._diary.broken:
+            self._fault("", f"the log could not be written to its end: {self._diary.broken}", "note")
         self._account.lasted_s = self._clock.now() - began
 
     @property

@@ -34,7 +34,7 @@ class Event:
     """What an output tells the engine.
 
     kind: "state" (`status` is what the board says it is in: idle, armed, vented, fault), "sense" (`strain` of `fibers` at
-        `time_s`), "fault" (`code` as in the wire protocol), or "note" (worth telling, nothing need be done)
+        `time_s`), "supply" (`kPa` gauge), "fault" (`code` as in the wire protocol), or "note" (worth telling, no more)
     driver: whose board; say: a sentence for the operator
     time_s: when, on the engine's clock; nan where that is not known
     fibers, strain: (S,) indices in the rig's order, and strains (1)
@@ -48,6 +48,7 @@ class Event:
     time_s: float = float("nan")
     fibers: NDArray[np.int64] = field(default_factory=lambda: np.empty(0, dtype=np.int64))
     strain: Array = field(default_factory=lambda: np.empty(0))
+    kPa: float = float("nan")
 
 
 class Output(Protocol):

@@ -12,7 +12,7 @@ from player.outputs.serial_line import SerialLine
 from player.wire import link
 from player.wire.host import Host
 from player.wire.line import highest_rate, line_load, line_room, set_frames
-from player.wire.messages import RIG_MISMATCH
+from player.wire.messages import RIG_MISMATCH, SENSES_STRAIN
 from player.wire.values import SHUT, clip, is_valve, to_wire
 
 GREET_S = 6.0
@@ -20,6 +20,9 @@ GREET_S = 6.0
 
 LISTEN_S, LONGEST_LISTEN_S = 0.6, 4.0
 """Seconds of pings before arming, so that the board's clock is known well; as many more as it takes, up to the second."""
+
+AT_REST = 0.25
+"""Share of stroke that a fiber without pressure may be sensed at before arming: its sensor may be off by so much."""
 
 TURN_S = 0.002
 """While waiting for a board, its line is looked at this often."""
@@ -50,7 +53,11 @@ class Board:
         self._fiber_of = np.full(channels, -1, dtype=np.int64)
         self._fiber_of[self._channel] = self._fibers
         self._host = Host(channels, rig.fingerprint, watchdog_ms=WATCHDOG_MS)
+        self._place = np.zeros(len(rig.fibers), dtype=np.int64)
+        self._place[self._fibers] = np.arange(len(self._fibers))
+        self._share = np.full(len(self._fibers), np.nan)
         self._why = ""
+        self._supply_kPa: float | None = None
         self._sets = 0
 
     def open(self) -> None:
@@ -116,6 +123,8 @@ class Board:
                     "the line is slow or disturbed: look at the cable, or play at a lower --rate",
                 )
             )
+            if board.flags & SENSES_STRAIN:
+                marks.append(self._sensors())
             if host.supply_kPa is not None:
                 least = self._rig.supply.min_pressure_kPa
                 marks.append(
@@ -127,6 +136,20 @@ class Board:
                     )
                 )
         return tuple(marks)
+
+    def _sensors(self) -> Mark:
+        """Whether every sensor of strain speaks, and says what a fiber at rest would."""
+        asked, hint = f"{self.drivers[0]}: its sensors are alive", "look at the sensors' plugs and cables"
+        if np.isnan(self._share).any():
+            return Mark(asked, False, "nothing is sensed" if np.isnan(self._share).all() else "not all of them speak", hint)
+        high = np.flatnonzero(self._share > AT_REST)
+        if high.size:
+            names = [self._rig.fibers[self._fibers[one]].name for one in high]
+            found = ", ".join(f"{name} reads {share:.0%}" for name, share in zip(names[:4], self._share[high], strict=False))
+            more = f", and {len(names) - 4} more" if len(names) > 4 else ""
+            hint = "these fibers should be at rest: let them come down, or look at the sensor"
+            return Mark(asked, False, found.replace("%", " %") + " of stroke" + more, hint)
+        return Mark(asked, True, f"{len(self._fibers)} of them")
 
     def arm(self) -> None:
         """Arm, and wait for the board to say so."""
@@ -159,7 +182,11 @@ class Board:
         now = self._clock.now()
         heard = self._host.receive(self._line.read(), now) + self._host.tick(now)
         self._flush()
-        return [event for told in heard for event in self._meant(told)]
+        events = [event for told in heard for event in self._meant(told)]
+        if self._host.supply_kPa is not None and self._host.supply_kPa != self._supply_kPa:
+            self._supply_kPa = self._host.supply_kPa
+            events.append(Event("supply", self.drivers[0], kPa=self._supply_kPa))
+        return events
 
     def counters(self) -> dict[str, float]:
         """Sets sent, and what host and board have counted."""
@@ -210,5 +237,6 @@ class Board:
         fibers = self._fiber_of[first : first + len(told.strain)]
         share = np.array(told.strain[: len(fibers)], dtype=float) / 65535.0
         there = fibers >= 0
+        self._share[self._place[fibers[there]]] = share[there]
         strokes = self._stroke[fibers[there]]
         return [Event("sense", driver, time_s=told.at_s, fibers=fibers[there], strain=share[there] * strokes)]
