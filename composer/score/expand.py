@@ -6,10 +6,10 @@ from composer.faults import Fault, Faults
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
 from composer.rig.select import Selector
-from composer.score.expand_lines import phrase_lines
+from composer.score.expand_lines import Lines, phrase_lines
 from composer.score.expand_starts import starts_of
 from composer.score.expand_times import Moments, moments
-from composer.score.layers import knots_of
+from composer.score.layers import Timed, knots_of
 from composer.score.model import Score
 from composer.score.names import check_names
 from composer.score.sums import MOST_PIECES, Crowded, summed
@@ -34,20 +34,18 @@ def expand(score: Score, rig: Rig, abilities: Abilities, selector: Selector, tem
     stop_at_faults()
     starts = starts_of(score, rig, selector, tempo, faults)
     lines = phrase_lines(score, starts.variants, faults)
-    faults += [
-        fault_at(span, "a quiver cannot be played by this version", hint="take it out; the rest of the line stays as it is")
-        for span in dict.fromkeys(quiver.span for quiver in lines.quiver.values())
-    ]
     stop_at_faults()
     found = moments(starts, lines, tempo, rig, faults)
     stop_at_faults()
     owner = np.concatenate([np.arange(len(rig.fibers)), starts.fiber[starts.added]])
     duration = _duration(found)
-    knots = knots_of(found, starts, lines, abilities, len(owner))
+    knots, timed = knots_of(found, starts, lines, abilities, len(owner))
+    _check_swings(timed, lines, faults)
+    stop_at_faults()
     entries = starts.entries
     del found, starts  # a large score needs the room
     try:
-        return summed(knots, owner, len(rig.fibers), duration, abilities)
+        return summed(knots, timed, owner, len(rig.fibers), duration, abilities)
     except Crowded as stop:
         crowded = next(entry for entry in entries if entry.span.line == stop.line)
         faults.append(
@@ -59,6 +57,20 @@ def expand(score: Score, rig: Rig, abilities: Abilities, selector: Selector, tem
             )
         )
         raise Faults(with_text(faults, score)) from None
+
+
+MOST_SWINGS = 1_000_000
+"""Periods of all quivers of a score together."""
+
+
+def _check_swings(timed: Timed, lines: Lines, faults: list[Fault]) -> None:
+    """So many periods at most that a check can look at each; the line is named that has the most of them."""
+    swings = timed.hertz * (timed.until_s - timed.from_s)
+    if (total := float(swings.sum())) > MOST_SWINGS:
+        quiver = lines.written[int(np.bincount(timed.row, weights=swings).argmax())].quiver
+        if quiver is not None:
+            says = f"the quivers of this score swing {total:.0f} times in all, most of them here"
+            faults.append(fault_at(quiver.span, says, f"at most {MOST_SWINGS} swings", "quiver for less long, or more slowly"))
 
 
 def _duration(found: Moments) -> float:

@@ -31,7 +31,7 @@ class Lines:
     control, control_unit: (n, 4) the inner control values of shape `curve`
     shape: (n,) index into shapes.NAMES; shut: (n,) where no time may pass to the line before (the end of one played backwards)
     phrase_line: (n,) line in the score's own file, 0 in another; written: the line as read, by row
-    quiver: what quivers, by row
+    hertz: (n,) of the quiver on a line, 0 without one; by, by_unit: (n,) its amplitude in the unit TARGET_UNITS[by_unit]
     """
 
     first: NDArray[np.int64]
@@ -50,7 +50,9 @@ class Lines:
     phrase_line: NDArray[np.int32]
     written: tuple[Line, ...]
     phrases: tuple[Phrase, ...]
-    quiver: dict[int, Quiver]
+    hertz: Array
+    by: Array
+    by_unit: NDArray[np.int8]
 
 
 @dataclass(frozen=True, slots=True)
@@ -158,6 +160,7 @@ def _table(rows: list[_Row], first: list[int], lengths: list[tuple[Fraction, ...
     def column(values: list, kind: type) -> NDArray:
         return np.array(values, dtype=kind)
 
+    quivers = [row.quiver for row in rows]
     controls = [row.controls or (None,) * 4 for row in rows]
     written = tuple(row.source for row in rows)
     return Lines(
@@ -179,5 +182,7 @@ def _table(rows: list[_Row], first: list[int], lengths: list[tuple[Fraction, ...
         phrase_line=column([row.source.span.line if row.source.span.file == file else 0 for row in rows], np.int32),
         written=written,
         phrases=tuple(phrases),
-        quiver={k: row.quiver for k, row in enumerate(rows) if row.quiver is not None},
+        hertz=column([0.0 if q is None else float(q.hertz) for q in quivers], np.float64),
+        by=column([0.0 if q is None else float(q.by.value) for q in quivers], np.float64),
+        by_unit=column([HELD if q is None else TARGET_UNITS.index(q.by.unit) for q in quivers], np.int8),
     )

@@ -10,9 +10,9 @@ from composer.limits.abilities import Abilities
 from composer.score.expand_lines import Lines
 from composer.score.expand_starts import Starts
 from composer.score.expand_times import Moments
-from composer.score.expand_ways import NO_WAY, POWERS, SUDDENLY, Ways, goes_nowhere, ways_of
+from composer.score.expand_ways import NO_WAY, POWERS, SUDDENLY, Ways, goes_nowhere, in_strain, ways_of
 from composer.shapes import NAMES
-from composer.tracks import HOLD, MOVE, STEP, SUDDEN
+from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -26,6 +26,7 @@ class Knots:
     """Knots of C chains, as Tracks has them of fibers: those of chain c are `first[c]:first[c + 1]`; see Tracks.
 
     earliest: (K,) s: when a sudden segment might have started at the earliest, its line having the time; else its time
+    quivers: (K,) whether a quiver lies over the segment
     """
 
     first: Index
@@ -36,10 +37,23 @@ class Knots:
     line: NDArray[np.int32]
     phrase_line: NDArray[np.int32]
     earliest: Array
+    quivers: NDArray[np.bool_]
 
 
-def knots_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities, chains: int) -> Knots:
-    """The knots of all chains."""
+@dataclass(frozen=True, slots=True, eq=False)
+class Timed:
+    """Q quivers of chains by instants, before there are knots to name: from_s to until_s; Hz; strain; `row` of Lines."""
+
+    chain: Index
+    row: Index
+    from_s: Array
+    until_s: Array
+    hertz: Array
+    amplitude: Array
+
+
+def knots_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities, chains: int) -> tuple[Knots, Timed]:
+    """The knots of all chains, with one at each end of every quiver, and the quivers."""
     keep = np.flatnonzero(found.opens | (found.before < found.cut[found.instance]))
     instance, row = found.instance[keep], found.row[keep]
     ways = ways_of(found, starts, lines, abilities, keep)
@@ -52,23 +66,47 @@ def knots_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities,
 
     moving = ways.goes & ~goes_nowhere(ways)
     moving &= (stops > leaves) | (np.abs(ways.b - ways.a) > NO_WAY)
-    waits = np.where(moving, leaves, following) > before
-    rests = moving & (following > stops)
+    # A line quivers from the line before on; a sudden one until it strikes, as it has no speed to spare from then on.
+    ends = np.where(moving & (ways.shape == SUDDENLY), leaves, until)
+    amplitude = in_strain(lines.by[row], lines.by_unit[row], ways.fiber, abilities) * starts.scale[found.order[instance]]
+    quivers = (lines.hertz[row] > 0.0) & (amplitude > 0.0) & (ends > before + SAME_INSTANT_S)
+    stays = np.where(moving, leaves, np.where(quivers, until, following))
+    waits = stays > before
+    after = np.where(moving, stops, stays)
+    trembles = moving & quivers & (until > stops) & (ways.shape != SUDDENLY)
+    after = np.where(trembles, until, after)
+    rests = (moving | quivers) & (following > after)
     line = np.array([entry.span.line for entry in starts.entries], dtype=np.int32)[starts.entry[found.order]][instance]
-    return _written(chains, chain, (waits, moving, rests), (before, leaves, stops), ways, line, lines.phrase_line[row])
+    parts = _Parts((waits, moving, trembles, rests), (before, leaves, stops, after), (ways.a, ways.a, ways.b, ways.b), quivers)
+    knots = _written(chains, chain, parts, ways, line, lines.phrase_line[row])
+    timed = (chain, row, before, ends, lines.hertz[row], amplitude)
+    return knots, Timed(*(values[quivers] for values in timed))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _Parts:
+    """What each of M moves is made of in time: its wait, its way, what of its line is left and quivers, its rest.
+
+    there, begins_s, strain: four of (M,) each: whether there is such a part, when it begins, the strain there
+    quivers: (M,) whether the line quivers, and with it all of these but the rest
+    """
+
+    there: tuple[NDArray[np.bool_], ...]
+    begins_s: tuple[Array, ...]
+    strain: tuple[Array, ...]
+    quivers: NDArray[np.bool_]
 
 
 def _written(
     chains: int,
     chain: Index,
-    which: tuple[NDArray[np.bool_], ...],
-    times: tuple[Array, ...],
+    parts: _Parts,
     ways: Ways,
     line: NDArray[np.int32],
     phrase_line: NDArray[np.int32],
 ) -> Knots:
-    """Knots in order: for each chain one at 0, then for each move its wait, its way, its rest; holds made one."""
-    sizes = sum(part.astype(np.int64) for part in which)
+    """Knots in order: for each chain one at 0, then for each move its parts; holds made one."""
+    sizes = sum(part.astype(np.int64) for part in parts.there)
     per_chain = np.bincount(chain, weights=sizes, minlength=chains).astype(np.int64) + 1
     first = np.concatenate([[0], np.cumsum(per_chain)])
     # Before move m come all earlier knots and the openings of the chains up to its own.
@@ -79,14 +117,19 @@ def _written(
     made, made_of = np.zeros(total, dtype=np.int32), np.zeros(total, dtype=np.int32)
     start = np.zeros(total)
     way_of = np.full(total, -1, dtype=np.int64)
-    for part, when, value in zip(which, times, (ways.a, ways.a, ways.b), strict=True):
+    quivers = np.zeros(total, dtype=bool)
+    for number, (part, when, value) in enumerate(zip(parts.there, parts.begins_s, parts.strain, strict=True)):
         at, move = place[part], np.flatnonzero(part)
         time[at], start[at], made[at], made_of[at] = when[move], value[move], line[move], phrase_line[move]
-        if part is which[1]:
+        if number < 3:
+            quivers[at] = parts.quivers[move]
+        if number == 1:
             way_of[at] = move
         place += part
     at = np.flatnonzero(way_of >= 0)
     manner[at], shape[at] = _manners(ways, way_of[at])
+    quivers &= (manner != STEP) & (manner != SUDDEN)
+    manner[quivers & (manner == HOLD)] = MOVE
 
     # A hold of no length is none, and a hold after a hold is one hold.
     last = first[1:] - 1
@@ -117,6 +160,7 @@ def _written(
         line=made[kept],
         phrase_line=made_of[kept],
         earliest=earliest,
+        quivers=quivers[kept],
     )
 
 

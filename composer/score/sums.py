@@ -8,8 +8,9 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.tables import travel_time_s
+from composer.quivers import NONE, Quivers
 from composer.score.expand_ways import NO_WAY
-from composer.score.layers import Knots
+from composer.score.layers import Knots, Timed
 from composer.shapes import NAMES
 from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
@@ -32,7 +33,7 @@ class Crowded(Exception):
         super().__init__(f"too many layers at once on line {line}")
 
 
-def summed(knots: Knots, owner: Index, fibers: int, duration_s: float, abilities: Abilities) -> Tracks:
+def summed(knots: Knots, timed: Timed, owner: Index, fibers: int, duration_s: float, abilities: Abilities) -> Tracks:
     """The tracks of `fibers` fibers; chain c moves fiber owner[c], the first `fibers` chains being the bases in order.
 
     A block of fibers at a time, so that what is worked out between fits the processor's cache and little memory.
@@ -40,7 +41,7 @@ def summed(knots: Knots, owner: Index, fibers: int, duration_s: float, abilities
     """
     room = MOST_PIECES
     if len(owner) == fibers:
-        return _tracks(knots.first, knots, duration_s)
+        return _tracks(knots.first, knots, timed, owner, duration_s)
     chains = np.argsort(owner, kind="stable")
     sizes = np.diff(knots.first)[chains]
     block = np.cumsum(np.bincount(owner, weights=np.diff(knots.first), minlength=fibers)).astype(np.int64) // BLOCK
@@ -63,7 +64,7 @@ def summed(knots: Knots, owner: Index, fibers: int, duration_s: float, abilities
         counts += np.bincount(fiber, minlength=fibers)
         done.append(part)
     whole = Knots(_divided(counts), *(np.concatenate([getattr(part, name) for part in done]) for name in _COLUMNS))
-    return _tracks(whole.first, whole, duration_s)
+    return _tracks(whole.first, whole, timed, owner, duration_s)
 
 
 def _divided(counts: Index) -> Index:
@@ -79,12 +80,30 @@ def _beside(sums: Knots, fiber_of_sums: Index, part: Knots, fiber: Index, some: 
     return Knots(part.first, *columns), both[order]
 
 
-_COLUMNS = ("time_s", "curve", "manner", "shape", "line", "phrase_line", "earliest")
+_COLUMNS = ("time_s", "curve", "manner", "shape", "line", "phrase_line", "earliest", "quivers")
 
 
-def _tracks(first: Index, knots: Knots, duration_s: float) -> Tracks:
+def _tracks(first: Index, knots: Knots, timed: Timed, owner: Index, duration_s: float) -> Tracks:
     latest = float(knots.time_s.max(initial=0.0))
-    return Tracks(first, *(getattr(knots, name) for name in _COLUMNS[:-1]), duration_s=max(duration_s, latest))
+    columns = (getattr(knots, name) for name in _COLUMNS[:-2])
+    return Tracks(first, *columns, duration_s=max(duration_s, latest), quivers=_quivers(first, knots.time_s, timed, owner))
+
+
+def _quivers(first: Index, time_s: Array, timed: Timed, owner: Index) -> Quivers:
+    """The quivers by the knots at their ends: after all jumps at their first instant, before any at their last."""
+    if not len(timed.chain):
+        return NONE
+    fiber = owner[timed.chain]
+    order = np.lexsort((timed.until_s, timed.from_s, fiber))
+    fiber, from_s, until_s = fiber[order], timed.from_s[order], timed.until_s[order]
+    knot, until = np.empty(len(fiber), dtype=np.int64), np.empty(len(fiber), dtype=np.int64)
+    edges = np.append(np.flatnonzero(np.diff(fiber, prepend=-1)), len(fiber))
+    for begin, end in pairwise(edges):
+        low, high = first[fiber[begin]], first[fiber[begin] + 1]
+        mine, part = time_s[low:high], slice(begin, end)
+        knot[part] = low + np.searchsorted(mine, from_s[part], side="right") - 1
+        until[part] = low + np.searchsorted(mine, until_s[part], side="left")
+    return Quivers(knot, until, timed.hertz[order], timed.amplitude[order])
 
 
 def _picked(knots: Knots, which: NDArray) -> Knots:
@@ -133,7 +152,12 @@ def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities, room: i
     alone = moving[(spans == 1) & (layers[spot[moving]] == 1)]
     manner[spot[alone]], shape[spot[alone]] = knots.manner[alone], knots.shape[alone]
     earliest[spot[alone]] = knots.earliest[alone]
-    flat = (manner != HOLD) & (np.abs(curve[:, 1:]).max(axis=1) <= NO_WAY)
+    quivers = np.zeros(len(at) + 1, dtype=np.int64)
+    shaking = moving[knots.quivers[moving]]
+    np.add.at(quivers, spot[shaking], 1)
+    np.subtract.at(quivers, stop[shaking], 1)
+    under = np.cumsum(quivers[:-1]) > 0
+    flat = (manner != HOLD) & ~under & (np.abs(curve[:, 1:]).max(axis=1) <= NO_WAY)
     manner[flat], shape[flat], curve[flat, 1:] = HOLD, -1, 0.0
 
     # Whose line: of the layer that moves most, else of the knot that is written last.
@@ -145,7 +169,7 @@ def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities, room: i
 
     jumps = np.zeros(len(at), dtype=bool)
     jumps[spot[jump]] = True
-    sums = Knots(np.zeros(1, dtype=np.int64), at, curve, manner, shape, line, phrase_line, earliest)
+    sums = Knots(np.zeros(1, dtype=np.int64), at, curve, manner, shape, line, phrase_line, earliest, under)
     whole = _with_jumps(sums, jumps, moved, knots, spot, jump)
     owner = np.repeat(whose, 1 + whole[0])
     return *_merged(*_timed_suddens(whole[1], owner, abilities)), pairs
@@ -246,6 +270,7 @@ def _with_jumps(
         spread(sums.line, by[jumps]),
         spread(sums.phrase_line, by_phrase[jumps]),
         spread(sums.earliest, sums.time_s[jumps]),
+        spread(sums.quivers, np.zeros(len(steps), dtype=bool)),
     )
 
 
@@ -279,6 +304,7 @@ def _timed_suddens(knots: Knots, fiber: Index, abilities: Abilities) -> tuple[Kn
         np.insert(knots.line, at, knots.line[at]),
         np.insert(knots.phrase_line, at, knots.phrase_line[at]),
         np.insert(knots.earliest, at, old),
+        np.insert(knots.quivers, at, False),
     ), np.insert(fiber, at, fiber[at])
 
 

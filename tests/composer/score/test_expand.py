@@ -245,7 +245,7 @@ def test_the_length_of_a_phrase_is_part_of_the_score_but_not_where_it_is_cut(mak
         ("phrase p\n  1 full\nsection a at 1:1\n  r.* p scatter 1 seed 1\n", 4, "before the score does"),
         ("phrase p\n  1 full\nsection a at 1:1\n  s.* p\n", 4, "s.*"),
         ("phrase p\n  1 full\nsection a at 1:1\n  r.1 p times 99 every 20000\n", 4, "lasts 1.96e+06 s"),
-        ("phrase p\n  1 full\n  3 hold quiver 4Hz by 0.05\nsection a at 1:1\n  r.* p\n", 3, "a quiver cannot be played"),
+        ("phrase p\n  1 full\n  9999s hold quiver 99Hz by 0.05\nsection a at 1:1\n  r.* p\n", 3, "swing 3959208 times in all"),
     ],
 )
 def test_what_only_expansion_can_see_is_told_with_its_line(make_rig, text, line, says):
