@@ -5,12 +5,17 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+from hypothesis import HealthCheck, settings
 
 from composer.fiber.mounting import Mounting, Supply, Valve
 from composer.fiber.rated import Rated
 from composer.rig.model import Driver, Fiber, FiberType, Rig
 
 TESTS = Path(__file__).parent
+
+# No test judges how long anything takes: a machine may be busy.
+settings.register_profile("drawcord", deadline=None, suppress_health_check=[HealthCheck.too_slow])
+settings.load_profile("drawcord")
 
 
 @pytest.fixture(scope="session")

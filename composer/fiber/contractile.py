@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.fiber.make import COMMON, Make
+from composer.fiber.make import COMMON, Make, Tube
 from composer.keys import Key
 
 Array = NDArray[np.float64]
@@ -33,10 +33,7 @@ class Contractile(Make):
     def shape(self) -> "Braid":
         """Its kinematics, in SI."""
         return Braid(
-            length=self.rest_length_mm * 1e-3,
-            radius=self.outer_diameter_mm * 0.5e-3,
-            wall_thickness=self.wall_mm * 1e-3,
-            modulus=self.shear_modulus_kPa * 1e3,
+            **self.tube(),
             angle=math.radians(self.braid_angle_deg),
             k=self.end_factor,
         )
@@ -47,7 +44,7 @@ class Contractile(Make):
 
 
 @dataclass(frozen=True, slots=True)
-class Braid:
+class Braid(Tube):
     """A braid of inextensible thread on an elastomer tube: lengths in m, modulus in Pa, angle at rest in radians.
 
     With l = 1 − k e the braid keeps cos a = l cos a0 and r = r0 sin a / sin a0 (Chou and Hannaford 1996); the end factor k
@@ -55,22 +52,8 @@ class Braid:
     neo-Hookean tube of constant volume stretched by l along, sin a / sin a0 around, and what is left through.
     """
 
-    length: float
-    radius: float
-    wall_thickness: float
-    modulus: float
     angle: float
     k: float
-
-    @property
-    def bore(self) -> float:
-        """Inner diameter at rest in m."""
-        return 2.0 * (self.radius - self.wall_thickness)
-
-    @property
-    def wall(self) -> float:
-        """Volume of the elastomer in m³."""
-        return math.pi * (self.radius**2 - (self.radius - self.wall_thickness) ** 2) * self.length
 
     @property
     def stop(self) -> float:

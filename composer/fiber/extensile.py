@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.fiber.make import COMMON, Make
+from composer.fiber.make import COMMON, Make, Tube
 from composer.keys import Key
 
 Array = NDArray[np.float64]
@@ -28,10 +28,7 @@ class Extensile(Make):
     def shape(self) -> "Sleeve":
         """Its kinematics, in SI."""
         return Sleeve(
-            length=self.rest_length_mm * 1e-3,
-            radius=self.outer_diameter_mm * 0.5e-3,
-            wall_thickness=self.wall_mm * 1e-3,
-            modulus=self.shear_modulus_kPa * 1e3,
+            **self.tube(),
             stop=self.sleeve_limit,
         )
 
@@ -41,27 +38,13 @@ class Extensile(Make):
 
 
 @dataclass(frozen=True, slots=True)
-class Sleeve:
+class Sleeve(Tube):
     """A tube whose outer radius a pleated sleeve holds while its length is free: lengths in m, modulus in Pa.
 
     V = pi r0² L0 (1 + e), W = Vw G/2 (l² + l⁻² − 2) with l = 1 + e, so that P A = A_w G (l − l⁻³) without a load.
     """
 
-    length: float
-    radius: float
-    wall_thickness: float
-    modulus: float
     stop: float
-
-    @property
-    def bore(self) -> float:
-        """Inner diameter at rest in m."""
-        return 2.0 * (self.radius - self.wall_thickness)
-
-    @property
-    def wall(self) -> float:
-        """Volume of the elastomer in m³."""
-        return math.pi * (self.radius**2 - (self.radius - self.wall_thickness) ** 2) * self.length
 
     def volume(self, e: Array) -> Array:
         """Enclosed volume in m³, wall included."""

@@ -1,5 +1,6 @@
 """What every fiber modelled from its make has in common: its keys, and the checks that they fit together."""
 
+import math
 from dataclasses import dataclass
 
 from composer.keys import Key
@@ -14,6 +15,26 @@ COMMON = (
     Key("max_pressure_kPa", "number", "never blown harder than this, gauge", "kPa", 0.0, 2000.0, above=True),
     Key("rated_cycles", "integer", "strokes that it is rated for", low=1, high=10**12, default=None),
 )
+
+
+@dataclass(frozen=True, slots=True)
+class Tube:
+    """An elastomer tube at rest: length, outer radius and thickness of wall in m, shear modulus in Pa."""
+
+    length: float
+    radius: float
+    wall_thickness: float
+    modulus: float
+
+    @property
+    def bore(self) -> float:
+        """Inner diameter at rest in m."""
+        return 2.0 * (self.radius - self.wall_thickness)
+
+    @property
+    def wall(self) -> float:
+        """Volume of the elastomer in m³."""
+        return math.pi * (self.radius**2 - (self.radius - self.wall_thickness) ** 2) * self.length
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -33,6 +54,15 @@ class Make:
     def radius_mm(self) -> float:
         """Outer radius at rest in mm."""
         return self.outer_diameter_mm / 2.0
+
+    def tube(self) -> dict[str, float]:
+        """The fields of its `Tube`, in SI."""
+        return {
+            "length": self.rest_length_mm * 1e-3,
+            "radius": self.radius_mm * 1e-3,
+            "wall_thickness": self.wall_mm * 1e-3,
+            "modulus": self.shear_modulus_kPa * 1e3,
+        }
 
     def wall_problems(self) -> list[tuple[str, str, str]]:
         """A wall that leaves no bore, as (key, found, expected); empty where there is one."""
