@@ -1,0 +1,89 @@
+"""A JACK server of one's own with its dummy driver, and a sender in a process of its own that knows nothing but mido."""
+
+import os
+import shutil
+import subprocess
+import sys
+import time
+from collections.abc import Iterator
+from contextlib import contextmanager
+
+SENDER = """
+import sys, time
+import mido
+mido.set_backend("mido.backends.rtmidi/UNIX_JACK")
+port = mido.open_output("faders", virtual=True, client_name=sys.argv[1])
+print("ready", flush=True)
+for line in sys.stdin:
+    words = line.split()
+    if words[0] == "clock":
+        count, period = int(words[1]), float(words[2])
+        start = time.perf_counter()
+        for number in range(count):
+            while time.perf_counter() < start + number * period:
+                pass
+            port.send(mido.Message("clock"))
+    else:
+        for message in mido.parse_all(bytes.fromhex(line)):
+            port.send(message)
+    print("sent", flush=True)
+port.close()
+"""
+
+
+def is_jack_there() -> bool:
+    """Whether this machine has a JACK server to start."""
+    return shutil.which("jackd") is not None
+
+
+@contextmanager
+def server(name: str) -> Iterator[str]:
+    """A server of that name while the block runs; clients of this process and of those that it starts find it."""
+    was = os.environ.get("JACK_DEFAULT_SERVER")
+    os.environ["JACK_DEFAULT_SERVER"] = name
+    command = ["jackd", "-r", "-n", name, "-d", "dummy", "-r", "48000", "-p", "256"]
+    with subprocess.Popen(command, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL) as process:
+        try:
+            yield name
+        finally:
+            process.terminate()
+            try:
+                process.wait(5)
+            except subprocess.TimeoutExpired:
+                process.kill()
+            if was is None:
+                del os.environ["JACK_DEFAULT_SERVER"]
+            else:
+                os.environ["JACK_DEFAULT_SERVER"] = was
+
+
+class Sender:
+    """The other process, a client of the JACK server with one port to send from."""
+
+    def __init__(self, client: str):
+        self._process = subprocess.Popen(
+            [sys.executable, "-c", SENDER, client],
+            stdin=subprocess.PIPE, stdout=subprocess.PIPE, stderr=subprocess.DEVNULL, text=True,
+        )  # fmt: skip
+        assert self._process.stdout.readline() == "ready\n"
+
+    def send(self, line: str) -> None:
+        """Bytes in hex, or "clock COUNT PERIOD"; returns when they are sent."""
+        self._process.stdin.write(line + "\n")
+        self._process.stdin.flush()
+        assert self._process.stdout.readline() == "sent\n"
+
+    def close(self) -> None:
+        """End it, and with it its port."""
+        self._process.stdin.close()
+        self._process.wait(10)
+        self._process.stdout.close()
+
+
+def until(true, poll, seconds: float = 20.0) -> None:
+    """Poll until something is true; the time is only there so that a failure ends."""
+    end = time.monotonic() + seconds
+    while not true():
+        assert time.monotonic() < end, "it did not come to pass"
+        poll()
+        time.sleep(0.01)
