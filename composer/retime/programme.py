@@ -1,35 +1,26 @@
-"""The linear programme over some events and rows, solved by HiGHS (Huangfu and Hall 2018) through scipy, with its duals."""
+"""The linear programme over some events and rows: made smaller, solved as a circulation, and told with its duals."""
 
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy import sparse
-from scipy.optimize import linprog
 
-from composer.retime.rows import ABOVE_ROW, Rows
+from composer.retime.flow import Arcs, Unsolved, circulate
+from composer.retime.rows import ABOVE_ROW, HOLD_ROW, MOVE_ROW, Rows
 from composer.retime.terms import Contracted
+
+__all__ = ["Solved", "Unsolved", "solve"]
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
-
-TOLERANCE = 1e-10
-"""Feasibility of HiGHS, primal (s) and dual (strokes); the tightest that it takes."""
+Flags = NDArray[np.bool_]
 
 LIGHTEST = 1e-9
 """What a term weighs at least, in strokes, so that an event whose moves go nowhere still stays where it is."""
 
-
 SCALE = 1e3
-"""HiGHS is given strokes times this, so that its tolerance on duals is small beside the tilt that breaks ties."""
-
-
-class Unsolved(Exception):
-    """The solver gave up; `status` and `message` are its own."""
-
-    def __init__(self, status: int, message: str):
-        self.status = status
-        super().__init__(message)
+"""HiGHS is given strokes times this, so that its tolerance on forces is small beside the tilt that breaks ties."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -41,6 +32,26 @@ class Solved:
     dual: Array
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class _Starts:
+    """S free starts that need no balance of their own, (S,) each, in numbers of the events solved for.
+
+    start; before, hit: the event that the rest hangs from (-1: none) and the one that the move lands in
+    rest, move: their rows; rest_s, move_s: least differences; weight: what a second costs; led: whether it is counted from
+    its hit
+    """
+
+    start: Index
+    before: Index
+    hit: Index
+    rest: Index
+    move: Index
+    rest_s: Array
+    move_s: Array
+    weight: Array
+    led: Flags
+
+
 def solve(
     rows: Rows, chosen: Index, events: Index, terms: Contracted, limit_s: float = np.inf, slack_price: float = np.inf
 ) -> Solved | None:
@@ -49,73 +60,105 @@ def solve(
     slack_price: finite: what a second costs by which a row that speaks of more than two events is broken, in strokes
     Raises Unsolved where HiGHS fails or runs past `limit_s`.
     """
-    n = len(events)
+    n, m = len(events), len(chosen)
     number = np.full(rows.matrix.shape[1], -1, dtype=np.int64)
     number[events] = np.arange(n)
     at, behind = number[terms.event], np.where(terms.behind >= 0, number[terms.behind], -1)
-    weight = np.maximum(terms.weight, LIGHTEST)
+    weight = np.maximum(terms.weight, LIGHTEST) * SCALE
+    matrix = sparse.csr_array(rows.matrix[chosen][:, events])
+    least, kind = rows.least[chosen], rows.kind[chosen]
 
-    # An event with one term of its own alone is a difference of two columns; all others are free, each term two columns
-    # and a row that says what they are.
-    linked = np.zeros(n, dtype=bool)
-    pair = behind >= 0
-    linked[at[pair]] = linked[behind[pair]] = True
-    linked |= np.bincount(at, minlength=n) != 1
-    own = ~linked[at]
-    loose = np.flatnonzero(linked)
-    simple, tied = np.flatnonzero(own), np.flatnonzero(~own)
-    s, t = len(simple), len(tied)
-    width = len(loose) + 2 * s + 2 * t
-    up = len(loose) + np.arange(s)
-    as_columns = sparse.csr_array(
-        (
-            np.concatenate((np.ones(len(loose)), np.ones(s), -np.ones(s))),
-            (np.concatenate((loose, at[simple], at[simple])), np.concatenate((np.arange(len(loose)), up, up + s))),
-        ),
-        shape=(n, width),
-    )
-    weight = weight * SCALE
-    price = np.zeros(width)
-    price[len(loose) :] = np.concatenate((weight[simple], weight[simple], weight[tied], weight[tied]))
-    lower = np.zeros(width)
-    lower[: len(loose)] = -np.inf
+    gone, term_of = _starts(matrix, kind, least, at, behind, weight)
+    kept_row = np.ones(m, dtype=bool)
+    kept_row[gone.rest] = kept_row[gone.move] = False
+    kept_row = np.flatnonzero(kept_row)
+    kept_term = np.ones(len(at), dtype=bool)
+    kept_term[term_of] = False
+    kept_term = np.flatnonzero(kept_term)
 
-    above = rows.matrix[chosen][:, events] @ as_columns
-    ties = None
-    if t:
-        first = len(loose) + 2 * s
-        line = np.arange(t)
-        apart = sparse.csr_array((-np.ones(t), (line, first + line)), shape=(t, width))
-        apart = apart + sparse.csr_array((np.ones(t), (line, first + t + line)), shape=(t, width))
-        place = sparse.csr_array((np.ones(t), (line, at[tied])), shape=(t, n))
-        has = np.flatnonzero(behind[tied] >= 0)
-        place = place - sparse.csr_array((np.ones(len(has)), (has, behind[tied][has])), shape=(t, n))
-        ties = sparse.csr_array(place @ as_columns + apart)
-
-    soft = np.flatnonzero(rows.kind[chosen] >= ABOVE_ROW) if np.isfinite(slack_price) else np.empty(0, dtype=np.int64)
-    if len(soft):
-        give = sparse.csr_array((np.ones(len(soft)), (soft, np.arange(len(soft)))), shape=(len(chosen), len(soft)))
-        above = sparse.hstack([above, give], format="csr")
-        price, lower = np.append(price, np.full(len(soft), slack_price * SCALE)), np.append(lower, np.zeros(len(soft)))
-        as_columns = sparse.hstack([as_columns, sparse.csr_array((n, len(soft)))], format="csr")
-        ties = None if ties is None else sparse.hstack([ties, sparse.csr_array((t, len(soft)))], format="csr")
-
-    options = {"primal_feasibility_tolerance": TOLERANCE, "dual_feasibility_tolerance": TOLERANCE}
-    if np.isfinite(limit_s):
-        options["time_limit"] = max(limit_s, 1e-3)
-    found = linprog(
-        price,
-        A_ub=-above if len(chosen) else None,
-        b_ub=-rows.least[chosen] if len(chosen) else None,
-        A_eq=ties,
-        b_eq=None if ties is None else np.zeros(t),
-        bounds=np.column_stack((lower, np.full(len(lower), np.inf))),
-        method="highs-ds",
-        options=options,
-    )
-    if found.status == 2:
+    price = np.full(len(kept_row), np.inf)
+    if np.isfinite(slack_price):
+        price[kind[kept_row] >= ABOVE_ROW] = slack_price * SCALE
+    s, none = len(gone.start), np.full(len(gone.start), -1)
+    clock, led = ~gone.led, gone.led & (gone.move_s <= 0.0)
+    endless = np.full(s, np.inf)
+    parts = [
+        # The whole way from the rest's beginning to the hit.
+        (_between(gone.hit, gone.before, n), gone.rest_s + gone.move_s, np.zeros(s), endless),
+        # By the clock: what it costs to be pushed later, and to leave earlier.
+        (_between(none[clock], gone.before[clock], n), gone.rest_s[clock], np.zeros(clock.sum()), gone.weight[clock]),
+        (_between(gone.hit[clock], none[clock], n), gone.move_s[clock], np.zeros(clock.sum()), gone.weight[clock]),
+        # By its hit: what it costs to be pushed nearer; that it must leave earlier than written costs the same anywhere.
+        (_between(gone.hit[led], gone.before[led], n), gone.rest_s[led], np.zeros(led.sum()), gone.weight[led]),
+        (_between(at[kept_term], behind[kept_term], n), np.zeros(len(kept_term)), -weight[kept_term], weight[kept_term]),
+        (matrix[kept_row], least[kept_row], np.zeros(len(kept_row)), price),
+    ]
+    whole = sparse.vstack([part[0] for part in parts], format="csr")
+    nodes = np.ones(n, dtype=bool)
+    nodes[gone.start] = False
+    nodes = np.flatnonzero(nodes)
+    arcs = Arcs(sparse.csr_array(whole[:, nodes]), *(np.concatenate([part[k] for part in parts]) for k in (1, 2, 3)))
+    found = circulate(arcs, limit_s)
+    if found is None:
         return None
-    if found.status != 0:
-        raise Unsolved(found.status, found.message)
-    dual = np.maximum(-found.ineqlin.marginals, 0.0) / SCALE if len(chosen) else np.empty(0)
-    return Solved(as_columns @ found.x, float(dual @ rows.least[chosen]), dual)
+    force, at_nodes = found
+    shift = np.zeros(n)
+    shift[nodes] = at_nodes
+    padded = np.append(shift, 0.0)
+    low, high = padded[gone.before] + gone.rest_s, padded[gone.hit] - gone.move_s
+    shift[gone.start] = np.maximum(np.minimum(np.where(gone.led, padded[gone.hit], 0.0), high), low)
+
+    through, later, earlier, nearer, _, own = np.split(force, np.cumsum([len(part[1]) for part in parts])[:-1])
+    dual = np.zeros(m)
+    dual[kept_row] = own
+    dual[gone.rest] = dual[gone.move] = through
+    dual[gone.rest[clock]] += later
+    dual[gone.move[clock]] += earlier
+    dual[gone.rest[led]] += nearer
+    must = gone.led & ~led
+    dual[gone.move[must]] += gone.weight[must]
+    dual = np.maximum(dual, 0.0) / SCALE
+    return Solved(shift, float(dual @ least), dual)
+
+
+def _between(later: Index, earlier: Index, n: int) -> sparse.csr_array:
+    """(C, n) `shift[later] - shift[earlier]`; -1 stands still."""
+    row = np.arange(len(later))
+    real, also = later >= 0, earlier >= 0
+    values = np.concatenate((np.ones(np.count_nonzero(real)), -np.ones(np.count_nonzero(also))))
+    places = (np.concatenate((row[real], row[also])), np.concatenate((later[real], earlier[also])))
+    return sparse.csr_array((values, places), shape=(len(later), n))
+
+
+def _starts(
+    matrix: sparse.csr_array, kind: NDArray[np.int8], least: Array, at: Index, behind: Index, weight: Array
+) -> tuple[_Starts, Index]:
+    """The starts of which only a rest, a move and one term speak, and the number of each one's term, (S,)."""
+    n = matrix.shape[1]
+    row = np.repeat(np.arange(matrix.shape[0]), np.diff(matrix.indptr))
+    plain = np.isin(kind, (HOLD_ROW, MOVE_ROW))
+    begins = (kind[row] == HOLD_ROW) & (matrix.data > 0.0)
+    leaves = (kind[row] == MOVE_ROW) & (matrix.data < 0.0)
+    rest, move, term = np.full(n, -1), np.full(n, -1), np.full(n, -1)
+    rest[matrix.indices[begins]] = row[begins]
+    move[matrix.indices[leaves]] = row[leaves]
+    term[at] = np.arange(len(at))
+    spoken = np.bincount(matrix.indices, minlength=n)
+    sole = (rest >= 0) & (move >= 0) & (spoken == 2) & (np.bincount(at, minlength=n) == 1)
+    sole &= np.bincount(behind[behind >= 0], minlength=n) == 0
+    ahead, before = np.full(n, -1), np.full(n, -1)
+    lands = plain[row] & (matrix.data > 0.0)
+    hangs = plain[row] & (matrix.data < 0.0)
+    by_row_lands, by_row_hangs = np.full(matrix.shape[0], -1), np.full(matrix.shape[0], -1)
+    by_row_lands[row[lands]] = matrix.indices[lands]
+    by_row_hangs[row[hangs]] = matrix.indices[hangs]
+    ahead[sole], before[sole] = by_row_lands[move[sole]], by_row_hangs[rest[sole]]
+    own = np.where(term >= 0, behind[term], -1)
+    sole &= (ahead >= 0) & ((own == -1) | (own == ahead))
+    # Two starts in a row, with no landing between them, both stay.
+    sole &= ~np.append(sole, False)[ahead] & ~np.append(sole, False)[before]
+    start = np.flatnonzero(sole)
+    return _Starts(
+        start, before[start], ahead[start], rest[start], move[start], least[rest[start]], least[move[start]],
+        weight[term[start]], own[start] >= 0,
+    ), term[start]  # fmt: skip
