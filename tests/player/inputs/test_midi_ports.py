@@ -10,7 +10,8 @@ from player.inputs.events import Silent, Timing, Wanted
 from player.inputs.midi import MidiBinds
 from player.inputs.midi_clock import ClockFollower
 from player.inputs.midi_ports import NO_MIDI, MidiPorts, midi_ports_found
-from tests.player.inputs.jack import Sender, is_jack_there, server, until
+
+from .jack import Sender, is_jack_there, server, until
 
 
 @pytest.fixture(scope="module")
