@@ -15,11 +15,6 @@ THERE, NEARLY_STILL = 1e-13, 1e-7
 """A fiber this close to its place in strain, and no faster than this share of what a tick can change, is there and still."""
 
 
-def stops_at(strain: Array, rate: Array, accel: Array) -> Array:
-    """The strain at which each fiber would stand if it braked from now on, any one shape."""
-    return strain + rate * np.abs(rate) / (2.0 * accel)
-
-
 def braked(
     strain: Array, rate: Array, stop: Array, wanted: Array, accel: Array, fill: Array, exhaust: Array, dt_s: float
 ) -> tuple[Array, Array]:

@@ -33,7 +33,8 @@ class Governor:
     """What the governor of F fibers knows that never changes.
 
     live: the rates, air and ways back
-    braced: (B,) fibers with a limit of acceleration, a slice if all have one; accel: (F,) that limit, 1/s²
+    braced: (B,) fibers with a limit of acceleration, a slice if all have one; accel: (F,) that limit, 1/s²,
+        and per_accel one over it, 0 for no limit
     stroke, least, low, let_down_to: (F,) strains: usable stroke, one step of the drive, end of a hold, where it is let down to
     max_hold_s: (F,), inf for no limit; low_back_s: (F,) seconds that the way from `low` to rest takes
     duty, off_duty, burst_s, min_on_s, holding: (F,) of each coil: share of time that it may be on, and the rest of it, seconds
@@ -45,8 +46,8 @@ class Governor:
 
     live: Live
     braced: Index | slice
-    has_braced: bool
     accel: Array
+    per_accel: Array
     stroke: Array
     least: Array
     low: Array
@@ -61,6 +62,7 @@ class Governor:
     spare_s: Array
     store_L: float
     refill_L_s: float
+    has_braced: bool
     has_duty: bool
     has_hold: bool
     has_holding: bool
@@ -86,8 +88,8 @@ def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_
     return Governor(
         live=tables,
         braced=slice(None) if len(braced) == len(stroke) else braced,
-        has_braced=len(braced) > 0,
         accel=abilities.accel,
+        per_accel=1.0 / abilities.accel,
         stroke=stroke,
         least=least,
         low=LOW * stroke,
@@ -102,6 +104,7 @@ def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_
         spare_s=spare,
         store_L=store_L(rig.supply),
         refill_L_s=refill_L_s(rig.supply),
+        has_braced=len(braced) > 0,
         has_duty=bool(np.any(coils.duty < 1.0)),
         has_hold=bool(np.any(np.isfinite(abilities.max_hold_s))),
         has_holding=bool(np.any(coils.holding)),

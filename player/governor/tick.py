@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from composer.limits.live import longest_steps, look
 from player.engine.ways import SAFE
-from player.governor.braked import braked, stops_at
+from player.governor.braked import braked
 from player.governor.causes import ACCEL, AIR, DUTY, HOLD, NONE, RATE, STROKE, SWITCHING
 from player.governor.governor import RECOVERED, Governor
 from player.governor.state import State
@@ -50,15 +50,14 @@ class _Tick:
         on_s = np.where(state.on, state.since_on_s, 0.0)
         self.too_soon = on_s + dt_s < governor.min_on_s * (1.0 - ROUNDING)
         self.stays_on = state.on & self.too_soon
-        strain = state.strain
         # Where a fiber would stand if it braked now, and the highest strain that it cannot help coming to.
-        self.stop = self.top = strain
-        self.braced = governor.braced
-        if self.governor.has_braced:
-            b = self.braced
-            self.stop = strain.copy()
-            self.stop[b] = np.clip(stops_at(strain[b], state.rate[b], governor.accel[b]), 0.0, governor.stroke[b])
+        self.stop = self.top = strain = state.strain
+        if governor.has_braced:
+            brakes = 0.5 * state.rate * np.abs(state.rate) * governor.per_accel
+            self.stop = np.minimum(np.maximum(strain + brakes, 0.0), governor.stroke)
             self.top = np.maximum(self.stop, strain)
+            b = governor.braced
+            self.before = strain[b], state.rate[b], self.stop[b]
         self.start_band = np.where(state.on, 0.0, governor.least)
         self.cut = np.full(len(strain), NONE, dtype=np.int8)
 
@@ -114,33 +113,31 @@ class _Tick:
 
     def _move(self, goal: Array) -> tuple[Array, Array]:
         """Strain and rate at the end of the tick, on the way to a goal."""
-        aimed, strain = self._aim(goal), self.state.strain
+        governor, aimed, strain = self.governor, self._aim(goal), self.state.strain
         there = np.minimum(np.maximum(aimed, strain - self.down), strain + self.up)
         rate = (there - strain) / self.dt_s
-        if self.governor.has_braced:
-            b = self.braced
+        if governor.has_braced:
+            b = governor.braced
             fill, exhaust = self.up[b] / self.dt_s, self.down[b] / self.dt_s
-            there[b], rate[b] = braked(
-                strain[b], self.state.rate[b], self.stop[b], aimed[b], self.governor.accel[b], fill, exhaust, self.dt_s
-            )
-            there[b] = np.clip(there[b], 0.0, self.governor.stroke[b])  # what rounding left outside
+            at, rate[b] = braked(*self.before, aimed[b], governor.accel[b], fill, exhaust, self.dt_s)
+            there[b] = np.minimum(np.maximum(at, 0.0), governor.stroke[b])  # what rounding left outside
         return there, rate
 
     def _cuts_on_the_way(self, goal: Array, strain: Array, rate: Array) -> None:
         short = np.abs(goal - strain) > self.governor.least
         self._cuts(short, RATE)
         if self.governor.has_braced:
-            most = np.where(rate > 0.0, self.up, self.down) / self.dt_s
-            self._cuts(short & np.isfinite(self.governor.accel) & (np.abs(rate) < most * (1.0 - 1e-9)), ACCEL)
+            most = np.where(rate > 0.0, self.up, self.down)
+            short &= np.abs(rate) * self.dt_s < most * (1.0 - 1e-9)
+            short &= self.governor.per_accel > 0.0
+            self._cuts(short, ACCEL)
 
     def _tops(self, strain: Array, rate: Array) -> Array:
         """The highest strain that a fiber at such a strain and rate cannot help coming to."""
         if not self.governor.has_braced:
             return strain
-        b = self.braced
-        top = strain.copy()
-        top[b] = stops_at(strain[b], np.maximum(rate[b], 0.0), self.governor.accel[b])
-        return top
+        rising = np.maximum(rate, 0.0)
+        return strain + 0.5 * rising * rising * self.governor.per_accel
 
     def _back_s(self, strain: Array, rate: Array) -> tuple[Array, Array]:
         """The highest strain that fibers must come to, and seconds from the tick's end to rest at most."""
@@ -148,7 +145,7 @@ class _Tick:
         top = self._tops(strain, rate)
         back = here.back + np.maximum(top - start, 0.0) * here.back_up
         if self.governor.has_braced:
-            back = back + np.maximum(rate, 0.0) / self.governor.accel
+            back = back + np.maximum(rate, 0.0) * self.governor.per_accel
         return top, back
 
     def _on(self, strain: Array) -> Mask:
