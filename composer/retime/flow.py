@@ -1,4 +1,4 @@
-"""The programme as a circulation, the form in which it is solved: forces, in strokes, that rows and costs pass from event to event.
+"""The programme as a circulation, the form in which it is solved: forces, in strokes, that rows and costs pass between events.
 
 The dual of least-cost displacement under difference rows is a flow of greatest value (Rockafellar 1984): one balance an
 event, one arc a row, bounded arcs for what displacement costs. It has far fewer equations than the programme has rows,
@@ -30,7 +30,7 @@ class Unsolved(Exception):
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Arcs:
-    """C arcs over n nodes: matrix (C, n) csr, what each asks of the shifts; least_s (C,); lowest, most (C,) bounds of its force.
+    """C arcs over n nodes: matrix (C, n) csr, what each asks of the shifts; least_s; lowest, most (C,) bounds of its force.
 
     An arc with bounds 0 and inf is a row `matrix @ shift >= least_s`; with a finite bound a row that may be broken at that
     price; from -w to w, with least 0, a cost `w * |matrix @ shift|`.
