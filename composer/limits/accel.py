@@ -7,6 +7,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.duration import acceleration_time_s, greatest_bend
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.polynomials import derivative, where_positive
+from composer.limits.quivering import least_with_quivers, shaken
 from composer.limits.snag import Snag
 from composer.limits.stretches import Pieces, as_snags, gather
 from composer.rig.model import Rig
@@ -24,13 +25,16 @@ def least_s(tracks: Tracks, abilities: Abilities, segments: Index | None = None)
     if len(mine) and np.isfinite(abilities.accel).any():
         at = of[mine]
         least[mine] = acceleration_time_s(abilities, fiber_of(tracks)[at], tracks.curve[at], tracks.shape[at])
+        place, _, by_acceleration = least_with_quivers(tracks, abilities, of, fiber_of(tracks)[of])
+        least[place] = by_acceleration
     return least
 
 
 def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
     """Every stretch in which |strain''| is above the fiber's limit: needs the greatest in the move, has the limit.
 
-    Acceleration within a move counts; the corner at which one move meets the next, or a hold, has none that is finite.
+    A quiver's greatest comes on top of the move's, and where it alone is too much time does not mend it. Acceleration within a
+    move counts; the corner at which one move meets the next, or a hold, has none that is finite.
     """
     if not np.isfinite(abilities.accel).any():
         return []
@@ -41,10 +45,16 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
     fiber = fiber_of(tracks)[of]
     limit, square = abilities.accel[fiber], lasts[of] ** 2
     needs = greatest_bend(tracks.curve[of], tracks.shape[of]) / square
+    shake = np.zeros(len(of))
+    if (shaking := shaken(tracks)) is not None:
+        place, row = shaking.of(of)
+        shake[place] = shaking.bend[row]
+    needs += shake
+    mends = shake < limit * (1.0 + TOLERANCE)
     lots = []
     for sign in (1.0, -1.0):
         over = sign * derivative(derivative(tracks.curve[of]))
-        over[:, 0] -= square * limit * (1.0 + 0.5 * TOLERANCE)
+        over[:, 0] -= square * (limit * (1.0 + 0.5 * TOLERANCE) - shake)
         row, start, end = where_positive(over)
         lots.append(
             Pieces(
@@ -54,7 +64,7 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
                 needs=needs[row],
                 has=limit[row],
                 knot=of[row],
-                mends=np.ones(len(row), dtype=bool),
+                mends=mends[row],
             )
         )
     return as_snags("accel", "1/s²", gather(*lots), tracks)

@@ -19,9 +19,10 @@ from composer.limits.abilities import Abilities
 from composer.limits.buckets import level, overdraws
 from composer.limits.fills import Fills, air_at, drawn, fills_of, sudden_strain
 from composer.limits.limit import TOLERANCE, Limit
-from composer.limits.polynomials import value
+from composer.limits.quivering import shaken
 from composer.limits.snag import Snag
 from composer.limits.stretches import line_of
+from composer.limits.swings import strain_of
 from composer.rig.model import Rig
 from composer.shapes import NAMES
 from composer.tracks import SUDDEN, Tracks
@@ -86,6 +87,8 @@ def demand(tracks: Tracks, abilities: Abilities, fills: Fills | None = None) -> 
         return Demand(np.zeros(1), np.zeros(1), 0.0)
     pieces = np.full(count, max(FEWEST, min(PIECES, BUDGET // count)))
     straight = (tracks.shape[fills.segment] == NAMES.index("linear")) & _even(abilities)[abilities.which[fills.fiber]]
+    if (moves := shaken(tracks)) is not None:
+        straight &= ~np.isin(fills.segment, moves.segment)
     pieces[straight | fills.at_once] = 1
     fill = np.repeat(np.arange(count), pieces + 1)
     number = np.arange(len(fill)) - np.repeat(np.cumsum(pieces + 1) - pieces - 1, pieces + 1)
@@ -109,12 +112,12 @@ def _at_shares(tracks: Tracks, abilities: Abilities, fills: Fills, fill: Index, 
     """Litres drawn by fills after shares of their time, (N,) each."""
     segment, fiber = fills.segment[fill], fills.fiber[fill]
     u = fills.u_from[fill] + share * (fills.u_to[fill] - fills.u_from[fill])
-    strain = value(tracks.curve[segment], u)
+    strain = strain_of(tracks, segment, u)
     sudden = np.flatnonzero(tracks.manner[segment] == SUDDEN)
     if len(sudden):
         curve = tracks.curve[segment[sudden]]
         strain[sudden] = sudden_strain(abilities, fiber[sudden], curve[:, 0], curve.sum(axis=1), share[sudden])
-    start = air_at(abilities, fills.fiber, value(tracks.curve[fills.segment], fills.u_from))
+    start = air_at(abilities, fills.fiber, strain_of(tracks, fills.segment, fills.u_from))
     return air_at(abilities, fiber, strain) - start[fill]
 
 

@@ -11,6 +11,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.alike import alike
 from composer.limits.over_tables import durations_over_tables
 from composer.limits.polynomials import derivative, extremes
+from composer.limits.quivering import least_with_quivers
 from composer.limits.tables import slowest_rates, tables_of, travel_time_s
 from composer.shapes import NAMES, PROGRESS
 from composer.tracks import MOVE, STEP, SUDDEN, Tracks, fiber_of
@@ -46,8 +47,9 @@ PEAK_SPEED, PEAK_ACCELERATION = _peaks(1), _peaks(2)
 def least_durations(tracks: Tracks, abilities: Abilities, segments: Index | None = None) -> Array:
     """Seconds that each segment takes at least, (K,) or one for each of `segments`.
 
-    0 for holds, and for jumps below the drive's resolution; inf for any other jump. Exact where rates are the same at every
-    strain, within 1e-4 of itself over a rate table.
+    0 for holds, and for jumps below the drive's resolution; inf for any other jump and for what quivers faster than its fiber.
+    Exact where rates are the same at every strain, within 1e-4 of itself over a rate table; a move that quivers is judged at
+    the worst phase of its quiver (`quivering`).
     """
     return _durations(tracks, abilities, segments, exact=True)
 
@@ -64,7 +66,10 @@ def _durations(tracks: Tracks, abilities: Abilities, segments: Index | None, exa
     where = np.arange(len(tracks.time_s)) if segments is None else np.asarray(segments, dtype=np.int64)
     fibers = fiber_of(tracks)[where]
     blocks = range(0, len(where), BLOCK) or range(1)
-    return np.concatenate([_of_block(tracks, abilities, where[b : b + BLOCK], fibers[b : b + BLOCK], exact) for b in blocks])
+    least = np.concatenate([_of_block(tracks, abilities, where[b : b + BLOCK], fibers[b : b + BLOCK], exact) for b in blocks])
+    place, by_rate, by_acceleration = least_with_quivers(tracks, abilities, where, fibers)
+    least[place] = np.maximum(by_rate, by_acceleration)
+    return least
 
 
 def _of_block(tracks: Tracks, abilities: Abilities, where: Index, fibers: Index, exact: bool) -> Array:

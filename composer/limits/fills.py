@@ -7,7 +7,9 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.duration import PEAK_SPEED, STEP_S
-from composer.limits.polynomials import derivative, value, where_positive
+from composer.limits.polynomials import derivative, where_positive
+from composer.limits.quivering import Shaken, shaken
+from composer.limits.swings import climb_of, strain_of, stretches
 from composer.limits.tables import cells, strain_after, tables_of, travel_time_s
 from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN, Tracks, durations, fiber_of
 
@@ -52,20 +54,32 @@ def fills_of(tracks: Tracks, abilities: Abilities) -> Fills:
     one_way |= (tracks.manner == SUDDEN) | (tracks.manner == STEP)
     whole = np.flatnonzero((tracks.manner != HOLD) & one_way & (rise > 0.0))
     own = np.flatnonzero((tracks.manner == MOVE) & ~one_way)
+    moves = shaken(tracks)
+    quivers, up_from, up_to = (own[:0], np.empty(0), np.empty(0)) if moves is None else _upstrokes(tracks, moves)
+    if moves is not None:
+        whole, own = np.setdiff1d(whole, moves.segment), np.setdiff1d(own, moves.segment)
     row, start, end = where_positive(derivative(tracks.curve[own]))
-    segment = np.concatenate([whole, own[row]])
-    u_from = np.concatenate([np.zeros(len(whole)), start])
-    u_to = np.concatenate([np.ones(len(whole)), end])
+    segment = np.concatenate([whole, own[row], quivers])
+    u_from = np.concatenate([np.zeros(len(whole)), start, up_from])
+    u_to = np.concatenate([np.ones(len(whole)), end, up_to])
     order = np.lexsort((u_from, segment))
     segment, u_from, u_to = segment[order], u_from[order], u_to[order]
 
-    fiber, lasts, curve = fiber_of(tracks)[segment], durations(tracks)[segment], tracks.curve[segment]
+    fiber, lasts = fiber_of(tracks)[segment], durations(tracks)[segment]
     at_once = (tracks.manner[segment] == STEP) | (lasts <= SAME_INSTANT_S)
     from_s = tracks.time_s[segment] + np.where(at_once, 0.0, u_from * lasts)
     to_s = tracks.time_s[segment] + np.where(at_once, STEP_S, u_to * lasts)
-    litres = air_at(abilities, fiber, value(curve, u_to)) - air_at(abilities, fiber, value(curve, u_from))
+    litres = air_at(abilities, fiber, strain_of(tracks, segment, u_to))
+    litres -= air_at(abilities, fiber, strain_of(tracks, segment, u_from))
     some = litres > 0.0
     return Fills(*(x[some] for x in (fiber, segment, u_from, u_to, from_s, to_s, litres, at_once)))
+
+
+def _upstrokes(tracks: Tracks, moves: Shaken) -> tuple[Index, Array, Array]:
+    """Every stretch in which a move that quivers rises: segment, and shares of its time."""
+    row = np.arange(len(moves.segment))
+    which, start, end = stretches(tracks, moves, row, lambda one, u: climb_of(tracks, moves.segment[one], u))
+    return moves.segment[which], start, end
 
 
 def drawn(tracks: Tracks, abilities: Abilities, fills: Fills, which: Index, time_s: Array) -> Array:
@@ -73,12 +87,12 @@ def drawn(tracks: Tracks, abilities: Abilities, fills: Fills, which: Index, time
     fiber, segment = fills.fiber[which], fills.segment[which]
     share = np.clip((time_s - fills.from_s[which]) / (fills.to_s[which] - fills.from_s[which]), 0.0, 1.0)
     curve, u_from = tracks.curve[segment], fills.u_from[which]
-    strain = value(curve, u_from + share * (fills.u_to[which] - u_from))
+    strain = strain_of(tracks, segment, u_from + share * (fills.u_to[which] - u_from))
     sudden = np.flatnonzero((tracks.manner[segment] == SUDDEN) & ~fills.at_once[which])
     if len(sudden):
         start, end = curve[sudden, 0], curve[sudden].sum(axis=1)
         strain[sudden] = sudden_strain(abilities, fiber[sudden], start, end, share[sudden])
-    litres = air_at(abilities, fiber, strain) - air_at(abilities, fiber, value(curve, u_from))
+    litres = air_at(abilities, fiber, strain) - air_at(abilities, fiber, strain_of(tracks, segment, u_from))
     litres = np.where(fills.at_once[which], share * fills.litres[which], litres)
     return np.where(share >= 1.0, fills.litres[which], np.where(share <= 0.0, 0.0, litres))
 

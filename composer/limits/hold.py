@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.duration import strain_range
-from composer.limits.levels import lasting, past
+from composer.limits.levels import lasting, past, reaches
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.snag import Snag
 from composer.limits.stretches import join, line_of
@@ -43,7 +43,7 @@ def runs_above_half(tracks: Tracks, abilities: Abilities) -> Runs:
     bound = np.flatnonzero(np.isfinite(abilities.max_hold_s[fiber]))
     if len(bound):
         half = 0.5 * abilities.stroke[fiber[bound]] + SLACK
-        _, high = strain_range(tracks.curve[bound], tracks.shape[bound])
+        _, high = reaches(tracks, *strain_range(tracks.curve[bound], tracks.shape[bound]), bound)
         bound = bound[high > half]
     row, start, end = past(tracks, abilities, bound, 0.5 * abilities.stroke[fiber[bound]] + SLACK, above=True)
     segment = bound[row]

@@ -1,5 +1,7 @@
 """The limit of rate: no strain rate above the fastest fill or exhaust at that strain."""
 
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -9,8 +11,9 @@ from composer.limits.duration import STEP_S, duration_ceilings, durations_by_rat
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.over_tables import worst_over_tables
 from composer.limits.polynomials import derivative, value, where_positive
+from composer.limits.quivering import asked, excess, least_with_quivers, shaken
 from composer.limits.snag import Snag
-from composer.limits.stretches import Pieces, as_snags, gather
+from composer.limits.stretches import NO_PIECES, Pieces, as_snags, gather
 from composer.limits.tables import rates
 from composer.rig.model import Rig
 from composer.tracks import MOVE, SAME_INSTANT_S, SUDDEN, Tracks, durations, end_strain, fiber_of
@@ -32,6 +35,8 @@ def least_s(tracks: Tracks, abilities: Abilities, segments: Index | None = None)
     at = of[moves]
     least[moves] = durations_by_rate(abilities, fiber_of(tracks)[at], tracks.curve[at], tracks.shape[at])
     least[~moves] = least_durations(tracks, abilities, of[~moves])
+    place, by_rate, _ = least_with_quivers(tracks, abilities, of, fiber_of(tracks)[of])
+    least[place] = by_rate
     return least
 
 
@@ -44,6 +49,9 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
     lasts = durations(tracks)
     ceilings = duration_ceilings(tracks, abilities)
     suspects = np.flatnonzero(lasts * (1.0 + TOLERANCE) < ceilings)
+    quivers = _quivers(tracks, abilities, suspects)
+    if (shaking := shaken(tracks)) is not None:
+        suspects = np.delete(suspects, shaking.of(suspects)[0])
     fiber, least, worst_u = fiber_of(tracks)[suspects], ceilings[suspects], np.full(len(suspects), np.nan)
     moves = tracks.manner[suspects] == MOVE
     at = suspects[moves]
@@ -56,8 +64,6 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
         least[varied], worst_u[varied] = worst[kind], u[kind]
     broken = lasts[suspects] * (1.0 + TOLERANCE) < least
     of, least, worst_u = suspects[broken], least[broken], worst_u[broken]
-    if not len(of):
-        return []
     manner = tracks.manner[of]
     at_once = (manner != SUDDEN) & ((manner != MOVE) | (lasts[of] <= SAME_INSTANT_S))
     sudden, moves = manner == SUDDEN, (manner == MOVE) & ~at_once
@@ -65,8 +71,38 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
         _jumps(tracks, abilities, of[at_once]),
         _suddens(tracks, of[sudden], least[sudden]),
         _moves(tracks, abilities, of[moves], lasts[of[moves]], worst_u[moves]),
+        quivers,
     ]
     return as_snags("rate", "1/s", gather(*lots), tracks)
+
+
+def _quivers(tracks: Tracks, abilities: Abilities, suspects: Index) -> Pieces:
+    """The stretches of moves that break the limit with their quivers, at the worst phase; time mends none whose quiver alone
+    is too fast."""
+    moves = shaken(tracks)
+    row = np.empty(0, dtype=np.int64) if moves is None else moves.of(suspects)[1]
+    of = suspects[:0] if moves is None else moves.segment[row]
+    fiber, curve, lasts = fiber_of(tracks)[of], tracks.curve[of], durations(tracks)[of]
+    worst = asked(abilities, fiber, curve, moves, row) if moves is not None else None
+    if moves is None or worst is None:
+        return NO_PIECES
+    broken = np.flatnonzero((lasts * (1.0 + TOLERANCE) < worst.least_s) & (lasts > SAME_INSTANT_S))
+    of, row, fiber, curve, lasts = of[broken], row[broken], fiber[broken], curve[broken], lasts[broken]
+
+    def over(one: Index, u: Array) -> Array:
+        return excess(abilities, fiber[one], curve[one], moves, row[one], lasts[one], u)
+
+    which, start, end = bisected(over, worst.u[broken])
+    mine = broken[which]
+    return Pieces(
+        fiber=fiber[which],
+        from_s=tracks.time_s[of[which]] + start * lasts[which],
+        to_s=tracks.time_s[of[which]] + end * lasts[which],
+        needs=np.abs(worst.speed[mine]) / lasts[which] + worst.swing[mine],
+        has=worst.limit[mine],
+        knot=of[which],
+        mends=np.isfinite(worst.least_s[mine]),
+    )
 
 
 def _jumps(tracks: Tracks, abilities: Abilities, of: Index) -> Pieces:
@@ -127,7 +163,15 @@ def _moves(tracks: Tracks, abilities: Abilities, of: Index, lasts: Array, worst_
         speed = value(derivative(curve[varied]), worst)
         needs[varied] = np.abs(speed) / lasts[varied]
         has[varied] = rates(abilities, fiber[varied], value(curve[varied], worst), speed > 0.0)
-        row, start, end = _bisected(abilities, fiber[varied], curve[varied], lasts[varied], worst)
+        speed_curve = derivative(curve[varied])
+
+        def over_table(row: Index, u: Array) -> Array:
+            speed = value(speed_curve[row], u)
+            mine = varied[row]
+            limit = rates(abilities, fiber[mine], value(curve[mine], u), speed > 0.0)
+            return np.abs(speed) - limit * lasts[mine] * (1.0 + 0.5 * TOLERANCE)
+
+        row, start, end = bisected(over_table, worst)
         rows.append(varied[row])
         starts.append(start)
         ends.append(end)
@@ -144,18 +188,14 @@ def _moves(tracks: Tracks, abilities: Abilities, of: Index, lasts: Array, worst_
     )
 
 
-def _bisected(abilities: Abilities, fiber: Index, curve: Array, lasts: Array, worst_u: Array) -> tuple[Index, Array, Array]:
-    """The stretches of u in which each move outruns its table: rows, from and to; `worst_u` lies in one of them."""
-    speed_curve = derivative(curve)
+def bisected(over: Callable[[Index, Array], Array], worst_u: Array) -> tuple[Index, Array, Array]:
+    """The stretches of u in which each of M moves is `over`, above 0, a limit: rows, from and to; `worst_u`, (M,), lies in one.
 
-    def over(row: Index, u: Array) -> Array:
-        speed = value(speed_curve[row], u)
-        limit = rates(abilities, fiber[row], value(curve[row], u), speed > 0.0)
-        return np.abs(speed) - limit * lasts[row] * (1.0 + 0.5 * TOLERANCE)
-
-    grid = np.broadcast_to(np.linspace(0.0, 1.0, SAMPLES), (len(fiber), SAMPLES))
+    over: of rows (n,) and u (n,), values (n,)
+    """
+    grid = np.broadcast_to(np.linspace(0.0, 1.0, SAMPLES), (len(worst_u), SAMPLES))
     u = np.sort(np.column_stack([grid, worst_u]), axis=1)
-    number = np.repeat(np.arange(len(fiber)), SAMPLES + 1)
+    number = np.repeat(np.arange(len(worst_u)), SAMPLES + 1)
     broken = over(number, u.ravel()).reshape(u.shape) > 0.0
     row, change = np.nonzero(broken[:, 1:] != broken[:, :-1])
     low, high, first = u[row, change], u[row, change + 1], broken[row, change]

@@ -25,6 +25,11 @@ class Pieces:
     mends: NDArray[np.bool_]
 
 
+NO_PIECES = Pieces(
+    np.empty(0, dtype=np.int64), *(np.empty(0) for _ in range(4)), np.empty(0, dtype=np.int64), np.empty(0, dtype=bool)
+)
+
+
 def gather(*all_pieces: Pieces) -> Pieces:
     """Several lots of pieces as one."""
     return Pieces(*(np.concatenate([getattr(p, name) for p in all_pieces]) for name in Pieces.__slots__))
