@@ -11,15 +11,15 @@ import rtmidi
 from mido import Message
 
 from composer.faults import fault, nearest
-from player.inputs.midi_stream import MidiStream
+from player.inputs.midi_stream import REFUSED, MidiStream
 from player.inputs.stamps import Stamps
 
 CLIENT = "drawcord"
 LOOK_S = 1.0
 """How often it is looked whether ports have come or gone."""
 
-MOST_KEPT = 4096
-"""Messages of a port that wait to be read; of more, the oldest are dropped and counted."""
+MOST_KEPT = 16384
+"""Messages of a port that wait to be read, and changes of ports; further ones are dropped."""
 
 MOST_A_POLL = 1024
 
@@ -91,7 +91,7 @@ class MidiPorts:
         self._outs: dict[str, Any] = {}
         self._changes: deque[Change] = deque(maxlen=MOST_KEPT)
         self._were: set[str] = set()
-        self._dropped = 0
+        self._refused = dict.fromkeys(REFUSED, 0)
         self._scouts = [(api, _client(rtmidi.MidiIn, api), _client(rtmidi.MidiOut, api)) for api, _ in _systems()]
         if not any(scout for _, scout, _ in self._scouts):
             raise fault("MIDI", NO_MIDI, hint="'drawcord ports' lists what there is")
@@ -111,10 +111,10 @@ class MidiPorts:
     @property
     def refused(self) -> dict[str, int]:
         """What was refused of all that came, by reason."""
-        total: dict[str, int] = {"dropped": self._dropped + sum(port.dropped for port in self._ins.values())}
+        total = dict(self._refused)
         for port in self._ins.values():
             for why, count in port.stream.refused.items():
-                total[why] = total.get(why, 0) + count
+                total[why] += count
         return total
 
     def missing(self) -> list[str]:
@@ -195,7 +195,8 @@ class MidiPorts:
 
     def _close_in(self, name: str) -> None:
         port = self._ins.pop(name)
-        self._dropped += port.dropped
+        for why, count in port.stream.refused.items():
+            self._refused[why] += count
         port.close()
 
     def _close_out(self, name: str) -> None:
@@ -206,42 +207,37 @@ class MidiPorts:
 
 
 class _In:
-    """An open port; the backend's thread stamps and keeps what comes."""
+    """An open port. What comes is kept by the backend until it is read.
+
+    No callback: one would have the backend's thread wait for Python's lock, and a JACK client that is late loses messages.
+    """
 
     def __init__(self, api: int, index: int, now: Callable[[], float]):
         self.stream = MidiStream()
-        self.dropped = 0
         self._now = now
         self._stamps = Stamps()
-        self._kept: deque[tuple[float, list[int]]] = deque()
+        self._read_s = now()
         self._port = rtmidi.MidiIn(api, CLIENT, queue_size_limit=MOST_KEPT)
         self._port.ignore_types(sysex=False, timing=False, active_sense=False)
-        self._port.set_callback(self._keep)
         try:
             self._port.open_port(index, "in")
         except _ERRORS:
             self._port.delete()
             raise
 
-    def _keep(self, event: tuple[list[int], float], _: object = None) -> None:
-        data, interval_s = event
-        at_s = self._stamps.at(self._now(), interval_s)
-        if len(self._kept) >= MOST_KEPT:
-            self.dropped += 1
-            return
-        self._kept.append((at_s, data))
-
     def taken(self, most: int) -> list[tuple[float, Message]]:
         """What waits, at most so many."""
         out: list[tuple[float, Message]] = []
-        while self._kept and len(out) < most:
-            at_s, data = self._kept.popleft()
+        now_s = self._now()
+        waited_s, self._read_s = now_s - self._read_s, now_s
+        while len(out) < most and (event := self._port.get_message()) is not None:
+            data, interval_s = event
+            at_s = self._stamps.at(now_s, interval_s, waited_s)
             out += [(at_s, message) for message in self.stream.feed(bytes(data))]
         return out
 
     def close(self) -> None:
         """Let go of it."""
-        self._port.cancel_callback()
         with suppress(*_ERRORS):
             self._port.close_port()
         self._port.delete()

@@ -68,14 +68,26 @@ def _number(name: str, high: int, says: str) -> Key:
     return Key(name, "integer", says, "", 0, high, default=None)
 
 
+def _switch(name: str, says: str) -> Key:
+    return Key(name, "switch", says, default=None)
+
+
 KINDS = {
     kind.key.name: kind
     for kind in (
         Kind(_number("cc", 119, "the number of a controller"), 127, "a knob, fader or pedal of 7 bits"),
         Kind(_number("cc14", 31, "its number n; n + 32 carries the fine part"), 16383, "a knob or fader of 14 bits"),
         Kind(_number("note", 127, "the number of a note; 60 is middle C"), 127, "a key or pad"),
-        Kind(Key("bend", "switch", "true: the pitch wheel, whose middle is one half", default=None), 16383, "the pitch wheel; its middle is one half"),
-        Kind(Key("pressure", "switch", "true: how hard the keys of the channel are pressed", default=None), 127, "how hard the keys of a channel are pressed"),
+        Kind(
+            Key("bend", "switch", "true: the pitch wheel, whose middle is one half", default=None),
+            16383,
+            "the pitch wheel; its middle is one half",
+        ),
+        Kind(
+            Key("pressure", "switch", "true: how hard the keys of the channel are pressed", default=None),
+            127,
+            "how hard the keys of a channel are pressed",
+        ),
         Kind(_number("poly_pressure", 127, "the number of a note"), 127, "how hard one key is pressed"),
     )
 }

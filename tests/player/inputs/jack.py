@@ -41,7 +41,7 @@ def server(name: str) -> Iterator[str]:
     """A server of that name while the block runs; clients of this process and of those that it starts find it."""
     was = os.environ.get("JACK_DEFAULT_SERVER")
     os.environ["JACK_DEFAULT_SERVER"] = name
-    command = ["jackd", "-r", "-n", name, "-d", "dummy", "-r", "48000", "-p", "256"]
+    command = ["jackd", "-r", "-S", "-n", name, "-d", "dummy", "-r", "48000", "-p", "256"]
     with subprocess.Popen(command, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL) as process:
         try:
             yield name

@@ -19,3 +19,9 @@ def test_intervals_that_lie_are_dropped_for_the_moment_of_arrival():
     for number in range(100):
         assert stamps.at(10.0 + number, 0.0) == pytest.approx(10.0 + number)
     assert stamps.at(200.0, -5.0) == pytest.approx(200.0)
+
+
+def test_what_waited_long_because_nobody_read_keeps_its_distances():
+    stamps = Stamps()
+    assert stamps.at(1.0, 0.0) == 1.0
+    assert [stamps.at(3.0, 0.02, 2.0) for _ in range(50)] == pytest.approx([1.0 + 0.02 * n for n in range(1, 51)], abs=1e-3)
