@@ -25,8 +25,8 @@ LINES = 4
 class Live:
     """The tables of some abilities made ready for ticks of at most `longest_s`.
 
-    columns: (13, A * n) for each point of each capability's table: the values there of the four lines, their slopes in the
-        cell that begins there, then the strain of the point and the four worst values within reach
+    columns: (14, A * n) for each point of each capability's table: the values there of the four lines, their slopes in the
+        cell that begins there, then the strain of the point and the five worst values within reach
     first, per_strain: (F,) index of each fiber's first point, points for a strain of 1; per_strain is None where the points
         of a table do not lie evenly
     """
@@ -46,6 +46,7 @@ class Look:
     fill, exhaust: fastest rates in 1/s; fill_falls, exhaust_falls: how steeply they fall, at most, within a tick's reach, 1/s
     air: litres drawn from rest up to here; air_up: at most so many litres for a strain of 1 within reach
     back: seconds that the way to rest takes at most, in ticks of any length; back_up: at most so much more for a strain of 1
+        upwards within reach; back_down: at least so much less for a strain of 1 downwards
     """
 
     fill: Array
@@ -56,6 +57,7 @@ class Look:
     exhaust_falls: Array
     air_up: Array
     back_up: Array
+    back_down: Array
 
 
 def live(abilities: Abilities, longest_s: float) -> Live:
@@ -86,7 +88,8 @@ def live(abilities: Abilities, longest_s: float) -> Live:
     each_back = 1.0 / slowest_here
     back = np.concatenate([np.zeros((len(strain), 1)), np.cumsum(step * each_back, axis=1)], axis=1)
     columns = [fill, exhaust, abilities.air_L, back, rises, eases, draws, each_back, strain]
-    columns += [fill_falls, exhaust_falls, air_up, _most_above(each_back, low, above)]
+    least_below = -_most_above(-each_back[:, ::-1], -high[:, ::-1], -below[:, ::-1])[:, ::-1]
+    columns += [fill_falls, exhaust_falls, air_up, _most_above(each_back, low, above), least_below]
     points = strain.shape[1]
     full = [c if c.shape[1] == points else np.pad(c, ((0, 0), (0, 1)), mode="edge") for c in columns]
     even = np.ptp(step, axis=1) <= 1e-9 * step.mean(axis=1)

@@ -19,7 +19,8 @@ LONGEST_TICK_S = 0.010
 """Ticks may be as long as this unless the governor is made for longer ones."""
 
 LOW = 0.5 * (1.0 - 1e-4)
-"""Share of stroke at or below which a hold is over: so far below half that the check sees two holds as two."""
+"""Share of stroke at or below which a hold is over at once: so far below half that the check sees two holds as two. Between
+here and half it is over when the fiber has been there for a tick."""
 
 LET_DOWN_TO = 0.45
 """Share of stroke to which a fiber is let down whose hold has lasted as long as it may."""
@@ -35,11 +36,12 @@ class Governor:
     live: the rates, air and ways back
     braced: (B,) fibers with a limit of acceleration, a slice if all have one; accel: (F,) that limit, 1/s²,
         and per_accel one over it, 0 for no limit
-    stroke, least, low, let_down_to: (F,) strains: usable stroke, one step of the drive, end of a hold, where it is let down to
-    max_hold_s: (F,), inf for no limit; low_back_s: (F,) seconds that the way from `low` to rest takes
+    stroke, least, half, low, let_down_to: (F,) strains: usable stroke, one step of the drive, the rest as above
+    max_hold_s: (F,), inf for no limit; half_back_s: (F,) seconds that the way from half stroke to rest takes
     duty, off_duty, burst_s, min_on_s, holding: (F,) of each coil: share of time that it may be on, and the rest of it, seconds
         beyond it, how long it stays on once it is, and whether holding energises it
-    spare_s: (F,) seconds that a way back may take beyond what its rates say: ticks that begin late, and the brakes
+    late_s, spare_s: (F,) seconds that a way down may take beyond what its rates say, for ticks that begin late and the brakes,
+        and the same for the way to rest, whose last step waits until the coil may be switched off
     store_L, refill_L_s: the supply
     has_braced, has_duty, has_hold, has_holding: whether any fiber has such a limit
     """
@@ -50,15 +52,17 @@ class Governor:
     per_accel: Array
     stroke: Array
     least: Array
+    half: Array
     low: Array
     let_down_to: Array
     max_hold_s: Array
-    low_back_s: Array
+    half_back_s: Array
     duty: Array
     off_duty: Array
     burst_s: Array
     min_on_s: Array
     holding: NDArray[np.bool_]
+    late_s: Array
     spare_s: Array
     store_L: float
     refill_L_s: float
@@ -80,11 +84,11 @@ def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_
     stroke = abilities.stroke
     braced = np.flatnonzero(np.isfinite(abilities.accel))
     least = stroke * RESOLUTION
-    at_least, at_low = look(tables, least), look(tables, LOW * stroke)
+    at_least, at_half = look(tables, least), look(tables, 0.5 * stroke)
     # To gather speed and to brake again cost a braced fiber half of rate / accel each, and its ticks begin late four times:
     # to stop, to turn, to brake, to stand. Another fiber loses what is left of its last tick.
-    spare = longest_tick_s + at_least.back
-    spare[braced] += 3.0 * longest_tick_s + at_least.exhaust[braced] / abilities.accel[braced]
+    late = np.full(len(stroke), longest_tick_s)
+    late[braced] += 3.0 * longest_tick_s + at_least.exhaust[braced] / abilities.accel[braced]
     return Governor(
         live=tables,
         braced=slice(None) if len(braced) == len(stroke) else braced,
@@ -92,16 +96,18 @@ def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_
         per_accel=1.0 / abilities.accel,
         stroke=stroke,
         least=least,
+        half=0.5 * stroke,
         low=LOW * stroke,
         let_down_to=LET_DOWN_TO * stroke,
         max_hold_s=abilities.max_hold_s,
-        low_back_s=at_low.back,
+        half_back_s=at_half.back,
         duty=coils.duty,
         off_duty=1.0 - coils.duty,
         burst_s=coils.burst_s,
         min_on_s=1.0 / coils.switch_Hz,
         holding=coils.holding,
-        spare_s=spare,
+        late_s=late,
+        spare_s=late + at_least.back,
         store_L=store_L(rig.supply),
         refill_L_s=refill_L_s(rig.supply),
         has_braced=len(braced) > 0,

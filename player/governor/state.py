@@ -65,7 +65,7 @@ def begin(governor: Governor, strain: Array | None = None) -> State:
 def standing_at(governor: Governor, state: State, strain: Array) -> State:
     """The same rig found standing at `strain` (F,) after something else moved it, a vent for one; coils and air stay spent."""
     fresh = begin(governor, strain)
-    above = np.where(fresh.strain > governor.low, state.above_s, 0.0)
+    above = np.where(fresh.strain > governor.half, state.above_s, 0.0)
     return replace(
         fresh,
         spent_s=state.spent_s,

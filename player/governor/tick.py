@@ -71,7 +71,7 @@ class _Tick:
             goal = np.where(silent, 0.0, goal)
             asked = np.where(silent, 0.0, asked)
         if governor.has_hold:
-            let_down = let_down & (goal > governor.let_down_to)
+            let_down = let_down & (goal > np.where(self.top <= governor.half, governor.half, governor.let_down_to))
             goal = self._instead(goal, let_down, governor.let_down_to, HOLD)
         if governor.has_duty:
             goal = self._instead(goal, tired & (goal > self.top), self.top, DUTY)
@@ -170,8 +170,15 @@ class _Tick:
     def _too_long(self, top: Array, back: Array) -> Mask:
         """Whether a hold could not be over in time any more."""
         governor = self.governor
-        lasts = self.state.above_s + self.dt_s + back + governor.spare_s - governor.low_back_s
-        return (top > governor.low) & (lasts > governor.max_hold_s)
+        down = np.maximum(self.state.strain - top, 0.0) * self.state.here.back_down
+        lasts = self.state.above_s + self.dt_s + back - down + governor.late_s - governor.half_back_s
+        return (top > governor.half) & (lasts > governor.max_hold_s)
+
+    def _above(self, strain: Array) -> Array:
+        """Seconds that a hold has lasted at the end of a tick that ends at `strain`."""
+        governor, was = self.governor, self.state
+        above = (strain > governor.half) | ((was.strain > governor.half) & (strain > governor.low))
+        return np.where(above, was.above_s + self.dt_s, 0.0)
 
     def _lasting(
         self, goal: Array, strain: Array, rate: Array, let_down: Mask, tired: Mask
@@ -249,7 +256,7 @@ class _Tick:
             since_on_s=np.where(on & ~was.on, dt_s, was.since_on_s + dt_s),
             spent_s=self._spent(on) if governor.has_duty else was.spent_s,
             tired=tired,
-            above_s=np.where(strain > governor.low, was.above_s + dt_s, 0.0) if governor.has_hold else was.above_s,
+            above_s=self._above(strain) if governor.has_hold else was.above_s,
             let_down=let_down,
             air_missing_L=max(was.air_missing_L - governor.refill_L_s * dt_s, 0.0) + drawn_L,
             cut=self.cut,

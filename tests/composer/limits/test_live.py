@@ -99,3 +99,12 @@ def test_a_fiber_with_a_limit_of_acceleration_has_the_least_rate_of_its_table_ev
     assert here.fill == pytest.approx([FILL.min()])
     assert here.exhaust == pytest.approx([EXHAUST.min()])
     assert here.fill_falls == 0.0
+
+
+def test_a_step_down_saves_at_least_what_it_is_credited(curved):
+    tables = live(curved, 0.01)
+    for strain in np.linspace(0.02, 0.3, 60):
+        here = look(tables, np.array([strain]))
+        down = np.minimum(longest_steps(here, 0.01)[1], strain)
+        there = look(tables, strain - down)
+        assert here.back - there.back >= down * here.back_down * (1.0 - 1e-9)

@@ -221,3 +221,27 @@ def test_what_the_receiver_lacks_is_what_was_drawn_less_what_the_compressor_deli
         run = run_of(compressor_L_min=delivered_L_min)
         run.wait(0.5, 0.3)
         assert run.wait(0.005, 0.3).air_missing_L == pytest.approx(left_L, abs=2e-5)
+
+
+def test_standing_at_half_stroke_is_no_hold(run_of):
+    run = run_of(max_hold_s=1.0)
+    run.wait(3.0, 0.15)
+    assert run.state.strain == [0.15]
+    assert not (run.cut == HOLD).any()
+
+
+def test_a_hold_that_ends_at_half_stroke_in_time_ends_there(run_of):
+    run = run_of(max_hold_s=1.0)
+    run.wait(0.5, 0.3)
+    run.wait(1.5, 0.15)
+    assert run.state.strain == [0.15]
+    assert not run.state.let_down
+
+
+def test_touching_half_stroke_does_not_begin_the_hold_anew(run_of):
+    run = run_of(max_hold_s=1.0, fill=60.0, exhaust=60.0)
+    for _ in range(300):
+        run.tick(0.3)
+        run.tick(0.15)
+    assert HOLD in run.cut
+    assert run.check().ok
