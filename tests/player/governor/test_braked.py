@@ -3,7 +3,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from player.governor.braked import braked
+from player.governor.braked import NEARLY_STILL, braked
 
 A, FILL, EXHAUST, DT = 20.0, 0.6, 0.3, 0.005
 
@@ -73,5 +73,5 @@ def test_whatever_is_wanted_it_keeps_its_limits_and_can_stop_within_the_stroke(s
         assert abs(rate - rate_was) <= accel * dt * (1.0 + 1e-6)
         assert -EXHAUST - 1e-12 <= rate <= FILL + 1e-12
         assert -1e-12 <= stops_at(strain, rate, accel) <= 0.3 + 1e-12
-        fastest = max(abs(rate), abs(rate_was))
+        fastest = max(abs(rate), abs(rate_was), NEARLY_STILL * accel * dt)
         assert abs(strain - strain_was) <= fastest * dt + 1e-12
