@@ -12,9 +12,12 @@ from numpy.typing import NDArray
 from composer.faults import fault
 from composer.files import read_bytes, replacing, say_bytes
 from composer.load import CuePoint
+from composer.quivers import NONE, Quivers
+from composer.score.bounds import RANGES
+from composer.score.expand import MOST_SWINGS
 from composer.score.tempo import TempoMap
 from composer.shapes import NAMES
-from composer.tracks import HOLD, STEP, Tracks, end_strain
+from composer.tracks import HOLD, STEP, SUDDEN, Tracks, end_strain
 
 Array = NDArray[np.float64]
 
@@ -27,6 +30,9 @@ MOST_BYTES = 512 << 20
 
 LONGEST_S, WIDEST = 1e6, 1e3
 """Longest score and greatest strain that are believed."""
+
+MOST_PAIRS = 4 * MOST_KNOTS
+"""Segments under quivers, those under several counted for each."""
 
 JOINT = 1e-6
 """Strain by which a segment may miss the start of the next: rounding, not a jump."""
@@ -60,8 +66,16 @@ ARRAYS: dict[str, tuple[str, str]] = {
 }
 """Every array of a play file: dtype and shape; letters are lengths, the same letter the same length."""
 
+QUIVERS: dict[str, tuple[str, str]] = {
+    "quiver_knot": ("<i8", "Q"),
+    "quiver_until": ("<i8", "Q"),
+    "quiver_hertz": ("<f8", "Q"),
+    "quiver_amplitude": ("<f8", "Q"),
+}
+"""The further arrays of a file in which something quivers: all of them or none."""
+
 MOST = {"T": MOST_TEXT, "R": MOST_TEXT, "N": MOST_TEXT, "L": MOST_TEXT, "F+1": MOST_FIBERS + 1, "K": MOST_KNOTS} | {
-    "S": 200_000, "M": 200_000, "C": MOST_CUES, "W": MOST_KNOTS + 1, "6": 6
+    "S": 200_000, "M": 200_000, "C": MOST_CUES, "W": MOST_KNOTS + 1, "Q": MOST_KNOTS, "6": 6
 }  # fmt: skip
 """The greatest length for each letter."""
 
@@ -106,12 +120,15 @@ def write_play(path: str | os.PathLike[str], play: Play) -> None:
         "warp_was_s": play.warp_was_s,
         "warp_now_s": play.warp_now_s,
     }
-    for name, (dtype, _) in ARRAYS.items():
-        if name not in values:
+    tables = ARRAYS | QUIVERS if len(tracks.quivers) else ARRAYS
+    for name, (dtype, _) in tables.items():
+        if name in QUIVERS:
+            values[name] = getattr(tracks.quivers, name.removeprefix("quiver_"))
+        elif name not in values:
             values[name] = getattr(tracks, name, None) if hasattr(tracks, name) else getattr(tempo, name)
         values[name] = np.ascontiguousarray(np.asarray(values[name]).astype(dtype)).reshape(np.shape(values[name]))
     with replacing(path, "wb") as file, zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED, compresslevel=4) as packed:
-        for name in ARRAYS:
+        for name in tables:
             whole = io.BytesIO()
             np.lib.format.write_array(whole, values[name], version=(1, 0), allow_pickle=False)
             packed.writestr(
@@ -150,7 +167,7 @@ def read_play(path: str | os.PathLike[str]) -> Play:
         rig_path=os.path.normpath(os.path.join(os.path.dirname(name), rig_path)),
         fingerprint=int(values["fingerprint"]),
         fibers=names,
-        tracks=Tracks(*(_own(values, field) for field in Tracks.__dataclass_fields__)),
+        tracks=_tracks(values),
         tempo=TempoMap(*(values[field] for field in TempoMap.__dataclass_fields__)),
         cues=tuple(
             CuePoint(cue, float(at), bool(wait))
@@ -161,8 +178,10 @@ def read_play(path: str | os.PathLike[str]) -> Play:
     )
 
 
-def _own(values: dict[str, NDArray], field: str) -> Any:
-    return float(values[field]) if field == "duration_s" else values[field]
+def _tracks(values: dict[str, NDArray]) -> Tracks:
+    arrays = {field: values[field] for field in Tracks.__dataclass_fields__ if field in ARRAYS and field != "duration_s"}
+    quivers = Quivers(*(values[array] for array in QUIVERS)) if "quiver_knot" in values else NONE
+    return Tracks(**arrays, duration_s=float(values["duration_s"]), quivers=quivers)
 
 
 def _wrong(name: str, found: str, expected: str = "") -> NoReturn:
@@ -178,15 +197,16 @@ def _arrays(name: str, data: bytes) -> dict[str, NDArray]:
     with packed:
         members = packed.infolist()
         found = [member.filename for member in members]
-        if sorted(found) != sorted(f"{array}.npy" for array in ARRAYS):
-            missing = [array for array in ARRAYS if f"{array}.npy" not in found]
-            more = [member[:40] for member in found if member.removesuffix(".npy") not in ARRAYS]
+        tables = ARRAYS | QUIVERS if any(member.removesuffix(".npy") in QUIVERS for member in found) else ARRAYS
+        if sorted(found) != sorted(f"{array}.npy" for array in tables):
+            missing = [array for array in tables if f"{array}.npy" not in found]
+            more = [member[:40] for member in found if member.removesuffix(".npy") not in tables]
             _wrong(name, f"it lacks {', '.join(missing[:4])}" if missing else f"it has a part too many: {(more or found)[0]!r}")
         if sum(member.file_size for member in members) > MOST_BYTES:
             _wrong(name, f"unpacked it is more than {say_bytes(MOST_BYTES)}")
         lengths: dict[str, int] = {}
         values: dict[str, NDArray] = {}
-        for array in ARRAYS:
+        for array in tables:
             try:
                 with packed.open(f"{array}.npy") as file:
                     values[array] = _array(name, array, file, lengths)
@@ -204,7 +224,7 @@ def _arrays(name: str, data: bytes) -> dict[str, NDArray]:
 
 def _array(name: str, array: str, file: IO[bytes], lengths: dict[str, int]) -> NDArray:
     """One array from its .npy, its shape checked against what the letters stand for so far."""
-    dtype, letters = ARRAYS[array]
+    dtype, letters = (ARRAYS | QUIVERS)[array]
     if np.lib.format.read_magic(file) != (1, 0):
         _wrong(name, f"its part {array} is of another .npy version", "1.0")
     shape, fortran, found = np.lib.format.read_array_header_1_0(file)
@@ -277,12 +297,36 @@ def _check_tracks(name: str, values: dict[str, NDArray]) -> None:
         _wrong(name, "line or phrase_line is negative")
     if (np.abs(curve) > WIDEST).any() or (curve[manner == HOLD, 1:] != 0.0).any():
         _wrong(name, "curve holds strains that no fiber has, or a hold that moves")
-    tracks = Tracks(**{field: _own(values, field) for field in Tracks.__dataclass_fields__})
+    tracks = _tracks(values)
     gap = curve[1:, 0] - end_strain(tracks)[:-1]
     if (np.abs(gap[inside]) > JOINT).any():
         _wrong(name, "a segment of curve does not begin where the one before it ends")
     if (step[inside][manner[:-1][inside] == STEP] > 1e-9).any():
         _wrong(name, "a jump takes time")
+    _check_quivers(name, tracks)
+
+
+def _check_quivers(name: str, tracks: Tracks) -> None:
+    """Quivers that begin and end on the knots of one fiber, lie over what moves or jumps, and swing as a score's may."""
+    quivers, knots = tracks.quivers, len(tracks.time_s)
+    if not len(quivers):
+        return
+    if ((quivers.knot < 0) | (quivers.until >= knots) | (quivers.until <= quivers.knot)).any():
+        _wrong(name, "a quiver begins or ends at a knot that there is not")
+    fiber = np.searchsorted(tracks.first, np.stack([quivers.knot, quivers.until]), side="right")
+    if (fiber[0] != fiber[1]).any():
+        _wrong(name, "a quiver goes from one fiber to another")
+    frequency = RANGES["quiver"]
+    if ((quivers.hertz < float(frequency.low)) | (quivers.hertz > float(frequency.high))).any():
+        _wrong(name, "quiver_hertz holds a frequency that no quiver has", f"{frequency.says}, {frequency.told}")
+    if ((quivers.amplitude < 0.0) | (quivers.amplitude > WIDEST)).any():
+        _wrong(name, "quiver_amplitude holds a strain that no fiber has")
+    lasts = tracks.time_s[quivers.until] - tracks.time_s[quivers.knot]
+    if (swings := float(quivers.hertz @ lasts)) > 2 * MOST_SWINGS:
+        _wrong(name, f"its quivers swing {swings:.0f} times", f"at most {2 * MOST_SWINGS}")
+    steady = np.concatenate([[0], np.cumsum((tracks.manner == HOLD) | (tracks.manner == SUDDEN))])
+    if (steady[quivers.until] > steady[quivers.knot]).any() or int((quivers.until - quivers.knot).sum()) > MOST_PAIRS:
+        _wrong(name, "a quiver lies over a hold or a sudden move, or many over very many")
 
 
 def _check_tempo(name: str, values: dict[str, NDArray]) -> None:

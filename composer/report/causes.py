@@ -15,6 +15,7 @@ WHY = {
     "exhaust": " at its fastest exhaust",
     "accel": ", as it can speed up no harder",
     "speed": " at its fastest",
+    "quiver": " at its fastest with a quiver on top",
 }
 
 

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from composer.limits.snag import Snag
+from composer.quivers import Quivers
 from composer.rig.model import Rig
 from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
@@ -147,11 +148,79 @@ def _rate(snag: Snag, teller: Teller, who: _Who) -> Told:
     lasts = _lasts(teller, knot)
     if tracks.manner[knot] == STEP or lasts <= 0.0:
         return _jump(snag, teller, who)
+    if not snag.mends:
+        return _shaken(snag, teller, who)
     if tracks.manner[knot] == SUDDEN:
         told = _move(snag, teller, who, lasts * snag.needs / snag.has, f"{_way(teller, knot)} suddenly")
         return Told(told.says, f"{told.mends} Let the line before it end earlier.")
+    if len(_quivers(teller, knot)):
+        return _moved_and_shaken(snag, teller, who)
     told = _move(snag, teller, who, lasts * snag.needs / snag.has, _way(teller, knot))
     return Told(told.says, told.mends + _shrunk(snag))
+
+
+def _quivers(teller: Teller, knot: int) -> np.ndarray:
+    """The numbers of the quivers over a segment, the fastest swing first."""
+    quivers = teller.tracks.quivers
+    over = np.flatnonzero((quivers.knot <= knot) & (quivers.until > knot))
+    return over[np.argsort(-quivers.hertz[over] * quivers.amplitude[over], kind="stable")]
+
+
+def _quiver_in_words(teller: Teller, which: np.ndarray) -> str:
+    """ "quiver at 4 Hz by 1.5 % strain" and so for each that lies over another."""
+    quivers = teller.tracks.quivers
+    said = [f"at {quivers.hertz[n]:.3g} Hz by {100.0 * quivers.amplitude[n]:.3g} % strain" for n in which]
+    return f"quiver {listed(said)}"
+
+
+def _slower(quivers: Quivers, which: np.ndarray, share: float) -> str:
+    """How much smaller or slower quivers must be, rounded down to what will do."""
+    if share <= 0.0:
+        return "Take the quiver out"
+    if len(which) > 1:
+        return f"Make the quivers {_down(share)} as wide, or {_down(share)} as fast"
+    one = which[0]
+    amplitude, hertz = 100.0 * quivers.amplitude[one] * share, quivers.hertz[one] * share
+    return f"Make it by at most {_down(amplitude)} % strain, or slow it to at most {_down(hertz)} Hz"
+
+
+def _down(x: float) -> str:
+    """Three figures, rounded down."""
+    if x <= 0.0:
+        return "0"
+    unit = 10.0 ** (np.floor(np.log10(x)) - 2.0)
+    return f"{np.floor(x / unit * (1.0 + 1e-12)) * unit:.6g}"
+
+
+def _shaken(snag: Snag, teller: Teller, who: _Who) -> Told:
+    """A quiver that is too fast by itself."""
+    which = _quivers(teller, snag.knot)
+    needs, has = two(snag.needs, snag.has)
+    says = (
+        f"{who.verb('is', 'are')} asked to {_quiver_in_words(teller, which)} from {_at(teller, snag.from_s)}: a rate of "
+        f"{needs} 1/s, where {who.then('can', 'can')} do {has} 1/s."
+    )
+    mend = _slower(teller.tracks.quivers, which, snag.has / snag.needs)
+    return Told(says, f"{mend}; no amount of time mends it.")
+
+
+def _moved_and_shaken(snag: Snag, teller: Teller, who: _Who) -> Told:
+    """A move that leaves its quiver too little of what the fiber can do."""
+    knot, lasts = snag.knot, _lasts(teller, snag.knot)
+    which = _quivers(teller, knot)
+    quivers = teller.tracks.quivers
+    swing = float((2.0 * np.pi * quivers.hertz * quivers.amplitude)[which].sum())
+    needs, has = two(snag.needs, snag.has)
+    says = (
+        f"{who.verb('is', 'are')} asked to {_way(teller, knot)} in {lasts:.2f} s, landing at "
+        f"{_at(teller, float(teller.tracks.time_s[knot]) + lasts)}, and to {_quiver_in_words(teller, which)}: together up to "
+        f"{needs} 1/s, where {who.then('can', 'can')} do {has} 1/s{_in_a_row(snag, teller)}."
+    )
+    own, left = snag.needs - swing, snag.has - swing
+    more, _ = two(lasts * own / left - lasts, 0.0) if left > 0.0 else ("", "")
+    give = f"Give it {more} s more" if more else "Give it more time"
+    smaller = _slower(quivers, which, 1.0 - (snag.needs - snag.has) / swing)
+    return Told(says, f"{give}. Or {smaller[0].lower()}{smaller[1:]}.")
 
 
 def _shrunk(snag: Snag) -> str:
@@ -176,9 +245,27 @@ def _jump(snag: Snag, teller: Teller, who: _Who) -> Told:
 
 
 def _accel(snag: Snag, teller: Teller, who: _Who) -> Told:
+    if len(which := _quivers(teller, snag.knot)):
+        return _accelerated(snag, teller, who, which)
     needs_s = _lasts(teller, snag.knot) * np.sqrt(snag.needs / snag.has)
     told = _move(snag, teller, who, needs_s, _way(teller, snag.knot), " to speed up and slow down")
     return Told(told.says, told.mends + _shrunk(snag))
+
+
+def _accelerated(snag: Snag, teller: Teller, who: _Who, which: np.ndarray) -> Told:
+    """Acceleration with quivers, which take twice (2 pi f) squared times their amplitude in fading."""
+    needs, has = two(snag.needs, snag.has)
+    says = (
+        f"{who.verb('is', 'are')} asked to {_quiver_in_words(teller, which)} from {_at(teller, snag.from_s)}: an acceleration "
+        f"of up to {needs} 1/s², where {who.then('bears', 'bear')} {has} 1/s²."
+    )
+    if snag.mends:
+        return Told(says, "Give the move beneath more time, or quiver less.")
+    share = snag.has / snag.needs
+    return Told(
+        says,
+        f"Make the quiver {_down(share)} as wide, or {_down(np.sqrt(share))} as fast; no amount of time mends it.",
+    )
 
 
 def _stroke(snag: Snag, teller: Teller, who: _Who) -> Told:
@@ -188,6 +275,8 @@ def _stroke(snag: Snag, teller: Teller, who: _Who) -> Told:
             f"{who.verb('is', 'are')} asked for up to {-snag.needs * 100.0:.3g} % strain below rest from {at} on; "
             "nothing goes there."
         )
+        if len(_quivers(teller, snag.knot)):
+            return Told(says, "Quiver less there, or further above rest; time does not mend it.")
         return Told(says, "Let the entries that add up ask for less there; time does not mend it.")
     needs, has = two(snag.needs * 100.0, snag.has * 100.0)
     says = f"{who.verb('is', 'are')} asked for up to {needs} % strain from {at} on; {who.then('can', 'can')} use {has} %."
@@ -195,6 +284,13 @@ def _stroke(snag: Snag, teller: Teller, who: _Who) -> Told:
 
 
 def _switching(snag: Snag, teller: Teller, who: _Who) -> Told:
+    if not snag.mends:
+        needs, has = two(snag.needs, snag.has)
+        says = (
+            f"{who.verb('has its valve', 'have their valves')} change over {needs} times a second to "
+            f"{_quiver_in_words(teller, _quivers(teller, snag.knot))} from {_at(teller, snag.from_s)}; it can {has} times."
+        )
+        return Told(says, f"Slow the quiver to at most {_down(0.5 * snag.has)} Hz; no amount of time mends it.")
     soon, least = two(1.0 / snag.needs, 1.0 / snag.has)
     says = (
         f"{who.verb('has its valve', 'have their valves')} switched on again after {soon} s at {_at(teller, snag.from_s)}; "

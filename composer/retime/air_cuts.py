@@ -14,6 +14,7 @@ from scipy import sparse
 from composer.limits.abilities import Abilities
 from composer.limits.air import refill_L_s, store_L, use
 from composer.limits.fills import Fills, drawn, fills_of
+from composer.limits.quivering import shaken
 from composer.retime.events import Events
 from composer.retime.rows import AIR_ROW, Rows, differences, joined, no_rows
 from composer.rig.model import Rig
@@ -55,6 +56,9 @@ def whole_rows(
     first = np.isin(fills.segment, now.first[:-1])
     begins = np.where(first, -1, begins)
     ends = events.event[fills.segment + 1]
+    # What a quiver draws hangs on how long it lasts, so no row over all timings may count it.
+    moves = shaken(now)
+    steady = np.ones(len(ends), dtype=bool) if moves is None else ~np.isin(fills.segment, moves.segment)
     hits_s = events.written_s[: events.hits] + shift_s[: events.hits]
     pairs: list[tuple[int, int, float]] = []
     for from_s, to_s in spans:
@@ -63,7 +67,7 @@ def whole_rows(
         high = min(int(np.searchsorted(hits_s, to_s + about)), events.hits, low + WIDEST)
         found = []
         for a in range(low, high):
-            inside = (begins >= a) & (ends > a) & (ends < high)
+            inside = steady & (begins >= a) & (ends > a) & (ends < high)
             litres = np.cumsum(np.bincount(ends[inside] - a, weights=fills.litres[inside], minlength=high - a))
             lasts = hits_s[max(a, 0) : high] - (hits_s[a] if a >= 0 else 0.0)
             need = (litres[-len(lasts) :] - store) / refill

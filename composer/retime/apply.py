@@ -23,6 +23,7 @@ def retimed(tracks: Tracks, origin: Index, time_s: Array, duration_s: float) -> 
     times = time_s.copy()
     # The move takes over the knot, and with it the arrival, of the wait that goes.
     times[idle + 1] = times[idle]
+    place = np.cumsum(keep) - keep
     return replace(
         tracks,
         first=tracks.first - np.searchsorted(idle, tracks.first, side="left"),
@@ -33,4 +34,5 @@ def retimed(tracks: Tracks, origin: Index, time_s: Array, duration_s: float) -> 
         line=tracks.line[keep],
         phrase_line=tracks.phrase_line[keep],
         duration_s=duration_s,
+        quivers=replace(tracks.quivers, knot=place[tracks.quivers.knot], until=place[tracks.quivers.until]),
     )

@@ -6,8 +6,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
+from composer.quivers import pairs
 from composer.shapes import NAMES
-from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks, fiber_of
+from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, STEP, SUDDEN, Tracks, fiber_of
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -70,11 +71,19 @@ def with_waits(tracks: Tracks) -> tuple[Tracks, Index]:
         shape=shape,
         line=tracks.line[origin],
         phrase_line=tracks.phrase_line[origin],
+        quivers=replace(
+            tracks.quivers,
+            knot=tracks.quivers.knot + np.searchsorted(need, tracks.quivers.knot, side="right"),
+            until=tracks.quivers.until + np.searchsorted(need, tracks.quivers.until, side="left"),
+        ),
     ), origin
 
 
 def strain_gone(tracks: Tracks) -> Array:
-    """Strain that each segment goes through, back and forth added up, (K,); |b - a| where it goes one way."""
+    """Strain that each segment goes through, back and forth added up, (K,); |b - a| where it goes one way.
+
+    A quiver adds what it goes through in one period, however long it lasts.
+    """
     gone = np.abs(tracks.curve[:, 1:].sum(axis=1))
     # Whole named shapes go one way, and so does a polynomial whose rate has coefficients of one sign.
     rate = tracks.curve[:, 1:] * np.arange(1.0, 6.0)
@@ -84,6 +93,10 @@ def strain_gone(tracks: Tracks) -> Array:
         scale = np.abs(rate[bent]).max(axis=1, keepdims=True)
         alike, back = np.unique(np.round(rate[bent] / scale, 12), axis=0, return_inverse=True)
         gone[bent] = np.array([_variation(row) for row in alike])[back.ravel()] * scale[:, 0]
+    if len(tracks.quivers):
+        segment, which = pairs(tracks.quivers)
+        moves = tracks.manner[segment] == MOVE
+        gone += np.bincount(segment[moves], 4.0 * tracks.quivers.amplitude[which[moves]], minlength=len(gone))
     return gone
 
 

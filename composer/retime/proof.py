@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.duration import acceleration_time_s
+from composer.limits.quivering import shaken
 from composer.retime.events import Events
 from composer.retime.rows import ABOVE_ROW, AIR_ROW, DUTY_ROW, HOLD_ROW, MOVE_ROW, ORDER_ROW, PIN_ROW, Rows
 from composer.retime.terms import Terms
@@ -54,7 +55,7 @@ class Cause:
 
     fiber, line: whose speed, hold or coil, and the entry's line; None and 0 where it is no fiber's
     from_s, to_s: instants as written that it lies between
-    needs_s: what a move takes at least; by: "fill", "exhaust", "accel" or "speed", what sets that
+    needs_s: what a move takes at least; by: "fill", "exhaust", "accel", "quiver" or "speed", what sets that
     after_s: the instant as written, of a landing or of the start (0), before which the move cannot leave; None where it can
     pin: number of a pin that holds the other end, -1 for none
     force: strokes: what a second less of it would spare, in stroke-seconds
@@ -225,7 +226,9 @@ class _Teller:
         curve = tracks.curve[knot : knot + 1]
         fiber = self.fiber[knot : knot + 1]
         by = "speed"
-        if tracks.manner[knot] == MOVE and acceleration_time_s(
+        if (moves := shaken(tracks)) is not None and len(moves.of(np.array([knot]))[0]):
+            by = "quiver"
+        elif tracks.manner[knot] == MOVE and acceleration_time_s(
             proof.abilities, fiber, curve, tracks.shape[knot : knot + 1]
         ) >= proof.least_s[knot] * (1.0 - 1e-9):
             by = "accel"

@@ -6,9 +6,10 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from composer.quivers import pairs
 from composer.retime.pins import Chain
 from composer.shapes import PROGRESS
-from composer.tracks import HOLD, Tracks, fiber_of
+from composer.tracks import HOLD, MOVE, Tracks, fiber_of
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -55,12 +56,14 @@ def factor_that_fits(tracks: Tracks, chain: Chain, least_s: Callable[[Tracks, In
 def scaled(tracks: Tracks, knots: Index, factor: float) -> Tracks:
     """Tracks in which the moves `knots` go `factor` of their way, counted from where their fiber's first one starts.
 
-    Holds that follow keep the new value; moves that follow go to their own targets from there.
+    Holds that follow keep the new value; moves that follow go to their own targets from there. A quiver shrinks with the moves
+    that it lies over, and keeps its frequency.
     """
     curve = tracks.curve.copy()
     fiber = fiber_of(tracks)
     chosen = np.zeros(len(fiber), dtype=bool)
     chosen[knots] = True
+    still = (tracks.manner == HOLD) | ((tracks.manner == MOVE) & np.all(tracks.curve[:, 1:] == 0.0, axis=1))
     for one in np.unique(fiber[knots]):
         mine = knots[fiber[knots] == one]
         base = tracks.curve[mine.min(), 0]
@@ -71,14 +74,17 @@ def scaled(tracks: Tracks, knots: Index, factor: float) -> Tracks:
                 curve[k, 0] += (1.0 - factor) * base
             elif carried is None:
                 break
-            elif tracks.manner[k] == HOLD:
+            elif still[k]:
                 curve[k, 0] = carried
             else:
                 curve[k] = _from(tracks.curve[k], carried)
             carried = float(curve[k].sum())
-            if k > mine.max() and tracks.manner[k] != HOLD:
+            if k > mine.max() and not still[k]:
                 break
-    return replace(tracks, curve=curve)
+    segment, which = pairs(tracks.quivers)
+    amplitude = tracks.quivers.amplitude.copy()
+    amplitude[which[chosen[segment]]] = factor * tracks.quivers.amplitude[which[chosen[segment]]]
+    return replace(tracks, curve=curve, quivers=replace(tracks.quivers, amplitude=amplitude))
 
 
 def _from(curve: Array, start: float) -> Array:

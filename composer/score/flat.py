@@ -1,5 +1,6 @@
 """A flat score: every move of tracks written out as a text that reads back to the same tracks."""
 
+from collections import Counter
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from itertools import zip_longest
@@ -10,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.faults import fault
+from composer.quivers import pairs
 from composer.rig.model import Rig
 from composer.score.bounds import BOUNDS, most
 from composer.score.expand_ways import NO_WAY
@@ -49,13 +51,16 @@ class CuePlace(Protocol):
 
 @dataclass(slots=True)
 class _Part:
-    """The phrase of one fiber, its `number`th, from `start_s` on, as lines of text; `reaches_s` its last line's instant."""
+    """The phrase of one fiber, its `number`th, from `start_s` on, as lines of text; `reaches_s` its last line's instant;
+    `adds`: a quiver that is to be added to what is there.
+    """
 
     fiber: int
     number: int
     start_s: float
     reaches_s: float
     lines: list[str]
+    adds: bool = False
 
 
 def write_flat(
@@ -67,8 +72,10 @@ def write_flat(
     retimed). rig_path: the rig's path relative to where the text will be, that of `score` where it is not given.
     Raises Faults where the text would be larger than a score may be, or a fiber goes below rest.
     """
-    parts = [part for fiber in range(tracks.fibers) for part in _parts(tracks, fiber, rig)]
+    inline = _inline(tracks)
+    parts = [part for fiber in range(tracks.fibers) for part in _parts(tracks, fiber, rig, inline)]
     parts = _lasting(parts, tracks.duration_s)
+    parts += _added(tracks, rig, inline)
     lines = [*_head(score, rig_path), *_cues(score, tempo, cues)]
     count = len(lines) + sum(len(part.lines) + 2 for part in parts)
     if count > most("lines"):
@@ -79,7 +86,8 @@ def write_flat(
         lines += ["", "section flat at 0s"]
         widest = max(len(rig.fibers[part.fiber].name) for part in parts)
         for part in sorted(parts, key=lambda part: (part.start_s, part.fiber)):
-            lines.append(f"  {rig.fibers[part.fiber].name:<{widest}}  {_phrase_name(part, rig)}  at {_number(part.start_s)}s")
+            entry = f"  {rig.fibers[part.fiber].name:<{widest}}  {_phrase_name(part, rig)}  at {_number(part.start_s)}s"
+            lines.append(entry + ("  add" if part.adds else ""))
     text = "\n".join(lines) + "\n"
     size = len(text.encode())
     if size > most("file"):
@@ -130,7 +138,35 @@ def _cues(score: Score, tempo: TempoMap, cues: Iterable[CuePlace]) -> Iterator[s
             yield f'cue     "{cue.name}" at {_number(cue.seconds)}s' + (" wait" if cue.wait else "")
 
 
-def _parts(tracks: Tracks, fiber: int, rig: Rig) -> Iterator[_Part]:
+def _inline(tracks: Tracks) -> dict[int, int]:
+    """The quivers that a line can say: those that lie over one segment and are alone there, by segment."""
+    segment, _ = pairs(tracks.quivers)
+    alone = dict.fromkeys(np.flatnonzero(np.bincount(segment) == 1).tolist())
+    quivers = tracks.quivers
+    return {int(k): n for n, k in enumerate(quivers.knot.tolist()) if quivers.until[n] == k + 1 and k in alone}
+
+
+def _added(tracks: Tracks, rig: Rig, inline: dict[int, int]) -> Iterator[_Part]:
+    """The other quivers: a phrase each that does nothing but quiver, to be added to what its fiber does."""
+    told, numbers = set(inline.values()), Counter[int]()
+    quivers = tracks.quivers
+    fiber = np.searchsorted(tracks.first, quivers.knot, side="right") - 1
+    for n, f in enumerate(fiber.tolist()):
+        begins, ends = float(tracks.time_s[quivers.knot[n]]), float(tracks.time_s[quivers.until[n]])
+        if n in told or ends <= begins + SAME_INSTANT_S or quivers.amplitude[n] <= 0.0:
+            continue
+        numbers[f] += 1
+        yield _Part(f, numbers[f], begins, ends, [f"  {_number(ends - begins)}s  hold{_quiver(tracks, n, rig, f)}"], True)
+
+
+def _quiver(tracks: Tracks, number: int, rig: Rig, fiber: int) -> str:
+    quivers = tracks.quivers
+    if quivers.amplitude[number] <= 0.0:
+        return ""
+    return f" quiver {_number(float(quivers.hertz[number]))}Hz by {_percent(float(quivers.amplitude[number]), rig, fiber)}"
+
+
+def _parts(tracks: Tracks, fiber: int, rig: Rig, inline: dict[int, int]) -> Iterator[_Part]:
     """The phrases of one fiber: one, and a further one from each jump straight out of a move: only a phrase can begin so."""
     part: _Part | None = None
     number = 0
@@ -148,7 +184,8 @@ def _parts(tracks: Tracks, fiber: int, rig: Rig) -> Iterator[_Part]:
             if jumps:
                 part.lines.append(f"  0  {_percent(float(tracks.curve[k].sum()), rig, fiber)}")
                 continue
-        part.lines.append(f"  {_number(ends - part.start_s)}s  {_move(tracks, k, jumps, rig, fiber)}")
+        quiver = _quiver(tracks, inline[k], rig, fiber) if k in inline else ""
+        part.lines.append(f"  {_number(ends - part.start_s)}s  {_move(tracks, k, jumps, rig, fiber)}{quiver}")
         part.reaches_s = ends
     if part is not None:
         yield part
@@ -171,7 +208,7 @@ def _move(tracks: Tracks, k: int, jumps: bool, rig: Rig, fiber: int) -> str:
     """Target and way of a segment."""
     if jumps:
         return f"{_percent(float(tracks.curve[k].sum()), rig, fiber)} step"
-    if tracks.manner[k] == HOLD:
+    if not tracks.curve[k, 1:].any():
         return "hold"
     curve = tracks.curve[k]
     target = _percent(float(curve.sum()), rig, fiber)
@@ -210,7 +247,8 @@ def _length(part: _Part, duration_s: float, carries: bool) -> str:
 
 
 def _phrase_name(part: _Part, rig: Rig) -> str:
-    return f"moves.{rig.fibers[part.fiber].name}" + (f".part{part.number}" if part.number > 1 else "")
+    about = "quivers" if part.adds else "moves"
+    return f"{about}.{rig.fibers[part.fiber].name}" + (f".part{part.number}" if part.number > 1 else "")
 
 
 def _percent(strain: float, rig: Rig, fiber: int) -> str:
