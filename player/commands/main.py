@@ -14,6 +14,7 @@ COMMANDS = {
     "report": ("player.commands.report", "A run told afterwards, from its log."),
     "ports": ("player.commands.ports", "The ports found on this machine."),
     "rig": ("composer.commands.rig", "What each fiber of a rig can do where it hangs."),
+    "take": ("player.commands.take", "What was played by hand, as a score."),
     "fit": ("composer.commands.fit", "A fiber type from what a bench measured."),
     "manual": ("player.commands.manual", "The manual, page by page."),
     "demos": ("composer.commands.demos", "Copy the demo scores and rigs into a folder."),

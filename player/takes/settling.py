@@ -70,11 +70,14 @@ def settle(
     tolerance: float,
     start: Array | None = None,
     only: Index | None = None,
+    *,
+    every: bool = False,
 ) -> Settled:
     """Fit what was played.
 
     time_s: (T,) instants of the samples; governed: strain (T,) of a fiber at them; tolerance: share of usable stroke
     start: (F,) strain that each fiber has as the take begins, at rest unless given; only: the fibers that were played
+    every: those of `only` that stand still too
     """
     start = (np.zeros(len(rig.fibers)) if start is None else start) / abilities.stroke
     step = _step(time_s)
@@ -82,7 +85,7 @@ def settle(
     fibers, shares, late = [], [], []
     for fiber in range(len(rig.fibers)) if only is None else only:
         share = np.clip(governed(int(fiber)) / abilities.stroke[fiber], 0.0, 1.0)
-        if np.abs(share - start[fiber]).max() <= STILL * tolerance:
+        if not every and np.abs(share - start[fiber]).max() <= STILL * tolerance:
             continue
         laid = np.interp(grid, time_s, share)
         if abs(share[0] - start[fiber]) > STILL * tolerance:

@@ -121,7 +121,7 @@ def _columns(lines: tuple[tuple[str, str], ...]) -> str:
 
 
 def number_text(value: Fraction) -> str:
-    """A number in its shortest form: whole, decimal, or with a fraction where that is shorter."""
+    """A number in its shortest form: whole, decimal, or with a fraction where that is shorter than three digits or more."""
     whole, part = divmod(value, 1)
     if not part:
         return str(whole)
@@ -130,7 +130,7 @@ def number_text(value: Fraction) -> str:
     if digits is None:
         return mixed if part.denominator <= 64 else f"{float(value):.9f}".rstrip("0").rstrip(".")
     decimal = f"{whole}.{int(part * 10**digits):0{digits}d}"
-    return mixed if len(mixed) < len(decimal) else decimal
+    return mixed if digits > 2 and len(mixed) < len(decimal) else decimal
 
 
 def target_text(share: float) -> str:
