@@ -19,6 +19,7 @@ KEYS = {
     "p": "pause",
     "n": "next_cue",
     "r": "rest",
+    "b": "bring_back",
     "v": "vent",
     "\x1b": "vent",
 }
@@ -70,6 +71,11 @@ class Front:
         self._colour = self._lives and not os.environ.get("NO_COLOR")
         self._keys = _is_terminal(sys.stdin) and _in_foreground()
         self._thread: threading.Thread | None = None
+
+    @property
+    def answers(self) -> bool:
+        """Whether there is somebody who sees and has keys."""
+        return self._lives and self._keys
 
     def show(self, status: Status) -> None:
         """Take a snapshot; costs the engine next to nothing."""

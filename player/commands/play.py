@@ -20,6 +20,7 @@ SLOWEST_HZ, FASTEST_HZ = 20.0, 1000.0
 @click.option("--retime", "mend", is_flag=True, help="Mend the score first, where the rig cannot do it as written.")
 @click.option("--arm", is_flag=True, help="Arm without asking.")
 @click.option("--log", metavar="FILE", type=click.Path(path_type=str), help="Keep the run's log.")
+@click.option("--trim", is_flag=True, help="Correct pressure set-points, slowly, by what boards sense.")
 @click.option("--rig", metavar="RIG", type=click.Path(path_type=str), help="Another rig file than the one named inside.")
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON object at the end, and nothing else.")
 def command(
@@ -30,6 +31,7 @@ def command(
     mend: bool,
     arm: bool,
     log: str | None,
+    trim: bool,
     rig: str | None,
     as_json: bool,
 ) -> int:
@@ -57,10 +59,12 @@ def command(
     start_s = played.seconds_of(start) if start is not None else 0.0
     if played.tracks is not None and (code := refused(played, as_json)) is not None:
         return code
-    return _run(played, targets, hertz, start_s, arm, log, as_json)
+    return _run(played, targets, hertz, start_s, arm, log, trim, as_json)
 
 
-def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bool, log: str | None, as_json: bool) -> int:
+def _run(
+    played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bool, log: str | None, trim: bool, as_json: bool
+) -> int:
     """Open, pre-flight, arm, play, and leave everything at rest, or vented, whatever happens."""
     from player.commands.front import Front
     from player.commands.logging_run import open_log
@@ -74,7 +78,7 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
     clock = SteadyClock()
     outputs = make_outputs(targets, Context(played.rig, played.abilities, clock, hertz))
     with ExitStack() as stack:
-        engine = Engine(played.rig, played.source(), outputs, clock, hertz, abilities=played.abilities)
+        engine = Engine(played.rig, played.source(), outputs, clock, hertz, abilities=played.abilities, trims=trim)
         stack.callback(engine.close)
         interrupt = stack.enter_context(_signals(engine.ask))
         for output in outputs:
@@ -91,6 +95,7 @@ def _run(played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bo
             click.echo(str(why), err=True)
             return 2
         with Front(engine.ask, played.say_place, quiet=as_json) as front:
+            engine.returns = front.answers
             with real_time() as first:
                 for status in engine.run(start_s):
                     front.show(status)

@@ -43,9 +43,11 @@ def command(log: str, as_json: bool, png: str | None) -> int:
     whole = as_object(found, log, left)
     if png is not None:
         from composer.picture.png import drawn, png_bytes
-        from player.commands.log_picture import HEIGHT, WIDTH, paint
+        from composer.picture.run import HEIGHT, WIDTH, paint
+        from player.commands.log_scene import scene
 
-        picture = png_bytes(drawn(lambda painter: paint(painter, found, whole), WIDTH, HEIGHT))
+        shown = scene(found, whole)
+        picture = png_bytes(drawn(lambda painter: paint(painter, shown), WIDTH, HEIGHT))
         with replacing(png, "wb") as file:
             file.write(picture)
     click.echo(json.dumps(whole, allow_nan=False) if as_json else "\n".join(sentences(whole)))

@@ -53,7 +53,7 @@ def report(engine: Engine, played: Played, outputs: Sequence[Output], priority: 
 
 def _largest_error(engine: Engine, played: Played) -> dict[str, Any] | None:
     """Where wanted and sensed were furthest apart; None where nothing was sensed."""
-    worst = engine.errors.worst
+    worst = engine.sensing.errors.worst
     if worst is None:
         return None
     return {

@@ -40,6 +40,20 @@ class Boards:
         """Vent every board."""
         return self._each(lambda output: output.vent(), "vented")
 
+    def reattach(self) -> tuple[list[str], list[str]]:
+        """Take hold again of those that are lost; what to tell of those that were found, and of those that were not."""
+        found, missing = [], []
+        for number in sorted(self._lost):
+            output = self.outputs[number]
+            try:
+                found.append(f"{'+'.join(output.drivers)} is found again at {output.reattach()}")
+            except LinkLost as why:
+                missing.append(f"{'+'.join(output.drivers)}: {why}")
+                continue
+            del self._lost[number]
+            self._state[number] = "idle"
+        return found, missing
+
     def poll(self) -> list[Event]:
         """What has come in from all of them."""
         heard: list[Event] = []

@@ -13,17 +13,19 @@ import numpy as np
 from composer.limits.abilities import Abilities, abilities_of
 from composer.rig.model import Rig
 from player.engine.account import Account
+from player.engine.alarms import ALARMS, REST_ALL, REST_FIBER, VENT, Raised
 from player.engine.boards import Boards
 from player.engine.clock import Clock
 from player.engine.diary import Diary
-from player.engine.errors import Errors
 from player.engine.quiet import no_collecting
 from player.engine.run_log import RunLog
 from player.engine.safety import Refused, Safety, after
+from player.engine.sensing import Sensing
 from player.engine.source import Source
 from player.engine.status import Ending, Lateness, Status
-from player.engine.verdicts import ARMED, verdict
-from player.outputs.base import Event, Mark, Output
+from player.engine.verdicts import ARMED, RUNNING, verdict
+from player.engine.ways import safe_ways
+from player.outputs.base import Event, LinkLost, Mark, Output
 
 AHEAD_S = 0.06
 """Sets are sent this long before they are due, less where a board's queue is short: a host may stall so long unseen."""
@@ -36,6 +38,9 @@ SLICE_S = 0.005
 
 SETTLE_S = 0.5
 """Seconds that a board has to say that it has disarmed."""
+
+STAND_BY_S = 0.05
+STAND_BY_SAID = "All is at rest or vented. Press b to bring everything back and go on from here, Ctrl-C to end the run."
 
 STILL = 1e-7
 """A fiber that moves less than this strain in a tick stands still."""
@@ -50,7 +55,10 @@ class Command:
 
 
 class Engine:
-    """One run, from pre-flight to the end. `ask` may be called from a signal's handler or another thread at any moment."""
+    """One run, from pre-flight to the end. `ask` may be called from a signal's handler or another thread at any moment.
+
+    returns: whether somebody is there who can have everything brought back after a fault; else a fault ends the run
+    """
 
     def __init__(
         self,
@@ -61,13 +69,14 @@ class Engine:
         rate_Hz: float = 200.0,
         ahead_s: float = AHEAD_S,
         abilities: Abilities | None = None,
+        trims: bool = False,
     ):
-        """`abilities` of the rig, where they are known already."""
+        """`abilities` of the rig, where they are known already; `trims`: pressure set-points follow what is sensed, slowly."""
         self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
+        self.returns = False
         self.safety = Safety()
         self.lateness = Lateness()
         self.boards = Boards(outputs)
-        self.errors = Errors(len(rig.fibers))
         self._clock = clock
         self._dt = 1.0 / rate_Hz
         self._asked: deque[Command] = deque(maxlen=1000)
@@ -75,8 +84,11 @@ class Engine:
         self._due_s = clock.now()
         self._moving = 0
         drives = [fiber.mounting.valve.drive for fiber in rig.fibers]
-        stroke = (abilities or abilities_of(rig)).stroke
-        self._diary = Diary(clock, stroke, drives, [driver.name for driver in rig.drivers])
+        abilities = abilities or abilities_of(rig)
+        self.sensing = Sensing(rig, abilities, trims)
+        at_rest = np.zeros_like(abilities.stroke)
+        self._falls_s = safe_ways(abilities, abilities.stroke, at_rest).longest_s
+        self._diary = Diary(clock, abilities.stroke, drives, [driver.name for driver in rig.drivers])
 
     def ask(self, kind: str, value: float = 0.0) -> None:
         """Hand the engine something the operator wants; it is done at the next tick, or within a few milliseconds."""
@@ -117,6 +129,12 @@ class Engine:
                 self._become("play", lambda: self.source.start(from_s))
                 with no_collecting():
                     yield from self._ticks()
+                    while self.returns and self._account.how == "fault" and self.source.resumes:
+                        yield from self._stand_by()
+                        if self.safety.state != "armed":
+                            break
+                        self._become("play", lambda: self.source.start(self.source.position_s))
+                        yield from self._ticks()
         finally:
             if self.safety.state not in ("idle", "vented"):
                 self._stop("fault", "the player broke off", "vent")
@@ -147,17 +165,59 @@ class Engine:
             happened = self.source.tick(self._dt)
             if self.source.strain is not None and was is not None:
                 self._moving = int(np.count_nonzero(np.abs(self.source.strain - was) > STILL))
-                self.errors.want(due + self.source.lead_s + self._dt, self.source.strain, self.source.position_s)
+                self.sensing.errors.want(due + self.source.lead_s + self._dt, self.source.strain, self.source.position_s)
             self._send(due, late)
             self._happen(happened)
             self._hear(self.boards.poll())
             tick += 1
             yield self.status(late)
 
+    def _stand_by(self) -> Iterator[Status]:
+        """After a fault, all at rest or vented: wait until the operator has had everything brought back, or ends the run."""
+        self._account.tell(STAND_BY_SAID)
+        # What was lost falls by its own weight; until it can be down, nothing sets out.
+        down_s = self._clock.now() + self._falls_s
+        while True:
+            self._clock.wait_until(self._clock.now() + STAND_BY_S)
+            self.tend()
+            asked = [self._asked.popleft().kind for _ in range(len(self._asked))]
+            for kind in asked:
+                self._diary.tell("command", self.source.position_s, command=kind, value=0.0)
+            if any(kind in ("stop", "rest") for kind in asked):
+                return
+            if "vent" in asked:
+                self._stop("vented", "vented by the operator", "vent")
+                return
+            if "bring_back" in asked and self._brought_back(down_s):
+                return
+            yield self.status()
+
+    def _brought_back(self, down_s: float) -> bool:
+        """Find lost boards, go through the pre-flight, and arm; whether all of it went well. What did not is told."""
+        found, missing = self.boards.reattach()
+        for say in found + missing:
+            self._account.tell(say)
+        if missing:
+            return False
+        self._clock.wait_until(down_s)
+        try:
+            wrong = [mark for mark in self.preflight() if not mark.ok]
+            for mark in wrong:
+                self._account.tell(f"not so: {mark.asked}: {mark.found}; {mark.hint}")
+            if wrong:
+                return False
+            self.source.found(self.sensing.begin_again())
+            self._become("arm")
+        except LinkLost as lost:
+            self._account.tell(f"lost again: {lost}")
+            return False
+        return self.safety.state == "armed"
+
     def _send(self, due: float, late: float) -> None:
         self._due_s = due
-        self._hear(self.boards.send(due, self.source.command))
-        self._diary.set(due, late, self.source.position_s, self.source.command, self.source.strain)
+        command = self.sensing.applied(self.source.command)
+        self._hear(self.boards.send(due, command))
+        self._diary.set(due, late, self.source.position_s, command, self.source.strain)
 
     def _count(self, late: float) -> None:
         self.lateness.count(late)
@@ -224,14 +284,24 @@ class Engine:
         """What boards told; a fault of one may end the run for all."""
         for event in events:
             self._diary.event(event, self.source.position_s)
-            if event.kind == "sense":
-                self.errors.sense(event.time_s, event.fibers, event.strain)
+            if event.kind in ("sense", "supply"):
+                for alarm, driver, say in self.sensing.sense(event, watched=self.safety.state in RUNNING):
+                    self._alarm(alarm, driver, say)
                 continue
             means, say = verdict(event, self.safety.state)
             if means == "tell":
                 self._account.tell(say)
             elif means:
                 self._fault(event.driver, say, means)
+
+    def _alarm(self, alarm: Raised, driver: str, say: str) -> None:
+        """What sensed strain or supply shows to be wrong, and what the table of alarms has done about it."""
+        does = ALARMS[alarm.name].does
+        self._diary.tell("alarm", self.source.position_s, alarm=alarm.name, fiber=alarm.fiber, does=does, say=say)
+        if does == REST_FIBER:
+            self.source.set_down(alarm.fiber)
+            say += "; it is brought to rest, and the run goes on without it"
+        self._fault(driver, say, {REST_ALL: "fault", VENT: "vent"}.get(does, "note"))
 
     def _fault(self, driver: str, say: str, means: str) -> None:
         """Keep a fault for the report, tell it, and do what it means for the run."""

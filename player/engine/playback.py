@@ -28,6 +28,7 @@ class Playback:
     cue: Cue | None = None
     next_cue: Cue | None = None
     let_down = 0
+    resumes = False
 
     def __init__(self, rig: Rig, abilities: Abilities, time_s: Array, commands: Array, at_rest: bool = False):
         """`at_rest`: the boards were told to rest after the last set, so all fibers were there already."""
@@ -52,6 +53,9 @@ class Playback:
         """Begin with the first set; a recording has no other place to begin from, as it does not say what came before."""
         self.phase = "playing"
 
+    def found(self, strain: Array) -> None:
+        """A recording begins with its first set alone, whatever was before."""
+
     def pause(self) -> None:
         """Hold the last set-points, valves shut."""
         self.phase = "standing"
@@ -69,6 +73,9 @@ class Playback:
             self.phase = "at rest"
         elif self.phase != "to rest":
             self.phase, self._from, self._gone_s = "to rest", self.command.copy(), 0.0
+
+    def set_down(self, fiber: int) -> None:
+        """A recording knows no strains, so no alarm of one is raised, and none is taken out."""
 
     def tick(self, dt_s: float) -> str:
         """The set whose time has come, within half a tick."""

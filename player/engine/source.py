@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 from composer.drive.inverse import LOOK_S, Inverse
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
+from player.engine.set_down import SetDown
 from player.engine.transport import Cue, Transport
 
 Array = NDArray[np.float64]
@@ -17,7 +18,7 @@ class Source(Protocol):
     """A score under the operator's hand, or a recording.
 
     command: (F,) drive units for the tick that has just been taken; lead_s: seconds by which it must be in force earlier
-    strain: (F,) wanted at the end of that tick, None where that is not known
+    strain: (F,) wanted at the end of that tick, None where that is not known; resumes: whether it can begin again in its midst
     """
 
     command: Array
@@ -30,9 +31,13 @@ class Source(Protocol):
     cue: Cue | None
     next_cue: Cue | None
     let_down: int
+    resumes: bool
 
     def start(self, from_s: float = 0.0) -> None:
         """Begin from a place, fibers first brought to it."""
+
+    def found(self, strain: Array) -> None:
+        """Every fiber is at rest or vented, found at these strains (F,)."""
 
     def pause(self) -> None:
         """Stand and hold."""
@@ -46,6 +51,9 @@ class Source(Protocol):
     def rest(self) -> None:
         """Bring all to rest."""
 
+    def set_down(self, fiber: int) -> None:
+        """Take one fiber out of the score, to rest and to stay there."""
+
     def tick(self, dt_s: float) -> str:
         """Let a tick pass: "wait", "end", "at_rest", or "" for nothing worth telling."""
 
@@ -56,6 +64,8 @@ class Driven(Transport):
     The score runs ahead by the longest lead of all; fibers with a shorter one are given where they were that much ago.
     """
 
+    resumes = True
+
     def __init__(self, rig: Rig, abilities: Abilities, tracks, cues: tuple[Cue, ...] = ()):
         super().__init__(tracks, abilities, cues)
         self._inverse = Inverse(rig, abilities)
@@ -65,14 +75,24 @@ class Driven(Transport):
         self._lags = bool(self._lag_s.any())
         self._past = [self.strain]
         self._fibers = np.arange(len(lead))
+        self._down = SetDown(abilities)
         self._send(self.strain, 1.0)
 
     def tick(self, dt_s: float) -> str:
         """Let a tick pass and work out the command for it; what happened, as `Transport.tick`."""
         happened = super().tick(dt_s)
+        self.strain = self._down.limited(self.strain, dt_s)
         strain = self._lagging(dt_s) if self._lags else self.strain
         self._send(strain, dt_s)
         return happened
+
+    def set_down(self, fiber: int) -> None:
+        """Take one fiber out of the score, to rest and to stay there."""
+        self._down.put(fiber, self.strain)
+
+    def coming(self, after_s: Array) -> Array:
+        """Strain (F,) that will be wanted, as `Transport.coming`, without the fibers that are taken out."""
+        return self._down.coming(super().coming(after_s), after_s)
 
     def _send(self, strain: Array, dt_s: float) -> None:
         soon = self.coming(self._inverse.soon_s - self._lag_s)

@@ -11,6 +11,9 @@ from player.engine.run_log import FULL, Record
 
 Array = NDArray[np.float64]
 
+GAP_S = 0.2
+"""Where sets are further apart, as after a fault, nothing was wanted between them."""
+
 SENSED_AFTER_S = 0.25
 """A landing is judged by the first sense from its instant on, if that comes within so many seconds."""
 
@@ -178,7 +181,7 @@ def wanted_at(log: Told, at_s: Array, fibers: NDArray[np.int64]) -> Array:
     span = times[later] - times[later - 1]
     part = np.divide(at_s - times[later - 1], span, out=np.ones_like(at_s), where=span > 0.0)[:, None]
     before, after = log.wanted[later - 1][:, fibers], log.wanted[later][:, fibers]
-    inside = (at_s >= times[0] - 1e-9) & (at_s <= times[-1] + 1e-9)
+    inside = (at_s >= times[0] - 1e-9) & (at_s <= times[-1] + 1e-9) & (span <= GAP_S)
     return np.where(inside[:, None], before + part * (after - before), np.nan)
 
 

@@ -74,6 +74,13 @@ class Transport:
         self._place(from_s)
         self._bring("play")
 
+    def found(self, strain: Array) -> None:
+        """Every fiber is at rest, or vented, and is found at these strains (F,): whatever comes next sets out from there."""
+        self.strain, self._held = strain.copy(), strain.copy()
+        self._ways, self.phase, self._then, self.waiting = None, "at rest", "", None
+        self._pace.stand()
+        self._holds.follow()
+
     def pause(self) -> None:
         """Ease to a stand and hold."""
         if self.phase == "playing":

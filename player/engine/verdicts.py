@@ -4,6 +4,7 @@ from player.engine.safety import FAULTS
 from player.outputs.base import Event
 
 RUNNING = ("playing", "paused")
+NOT_ARMED = 3
 ARMED = ("armed", "playing", "paused", "resting")
 
 
@@ -14,6 +15,9 @@ def verdict(event: Event, state: str) -> tuple[str, str]:
     said = f"{event.driver}: {event.say}"
     if event.kind == "lost" or (event.kind == "silent" and state in ARMED):
         return "fault", said
+    if event.kind == "fault" and event.code == NOT_ARMED and state not in RUNNING:
+        # Sets were on their way when the run was ended for another reason.
+        return "", ""
     if event.kind == "fault":
         name, means, sentence = FAULTS.get(event.code, (f"fault {event.code}", "fault", "a fault that is not known here"))
         return means, f"{event.driver}: {name}: {sentence}" + (f" ({event.say})" if event.say else "")

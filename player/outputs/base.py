@@ -85,6 +85,9 @@ class Output(Protocol):
     def poll(self) -> list[Event]:
         """What has come in since the last time; never blocks."""
 
+    def reattach(self) -> str:
+        """Take hold again of a board whose link was lost; returns where it was found. Raises LinkLost where it is not there."""
+
     def counters(self) -> dict[str, float]:
         """Counts for the report: sets sent, late at the device, bad frames, and whatever else the output can tell."""
 

@@ -1,14 +1,17 @@
 """`serial:PORT[@BAUD]`: a board of valves at the other end of a serial line, spoken to by the wire protocol."""
 
 from collections.abc import Callable
+from contextlib import suppress
 
 import numpy as np
 
+from composer.faults import Faults
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
 from player.engine.clock import Clock
 from player.outputs.base import Array, Event, LinkLost, Mark, fibers_of
 from player.outputs.serial_line import SerialLine
+from player.outputs.serial_ports import ports_found
 from player.wire import link
 from player.wire.host import Host
 from player.wire.line import highest_rate, line_load, line_room, set_frames
@@ -23,6 +26,9 @@ LISTEN_S, LONGEST_LISTEN_S = 0.6, 4.0
 
 AT_REST = 0.25
 """Share of stroke that a fiber without pressure may be sensed at before arming: its sensor may be off by so much."""
+
+FIND_S = 2.0
+"""Seconds that a port is listened to in search of a board that was lost."""
 
 TURN_S = 0.002
 """While waiting for a board, its line is looked at this often."""
@@ -43,6 +49,7 @@ class Board:
         self.queue_sets = 0
         self._clock, self._baud, self._rig = clock, baud, rig
         self._stroke = abilities.stroke
+        self._port, self._name = port, ""
         self._line = SerialLine(port, baud)
         self._fibers = fibers_of(rig, self.drivers)
         self._channel = np.array([rig.fibers[i].channel for i in self._fibers], dtype=np.int64)
@@ -92,6 +99,7 @@ class Board:
             hint = "is it powered, and is this its port and baud rate?"
             return (Mark(f"{who}: the board answers", False, self._why, hint), carries)
         self.queue_sets = board.queue // set_frames(channels)
+        self._name = board.name
         mismatch = trouble is not None and trouble.code == RIG_MISMATCH
         covers = board.channels >= channels
         marks = [
@@ -187,6 +195,37 @@ class Board:
             self._supply_kPa = self._host.supply_kPa
             events.append(Event("supply", self.drivers[0], kPa=self._supply_kPa))
         return events
+
+    def reattach(self) -> str:
+        """Take hold of the board again: at its own port, or at another where a board of its name serves this rig.
+
+        Raises LinkLost where it is nowhere found.
+        """
+        self._line.close()
+        ports = [self._port, *(port.path for port in ports_found() if port.path != self._port)]
+        for port in ports:
+            if self._answers_at(port):
+                self._port, self.target = port, f"serial:{port}@{self._baud}"
+                return port
+        raise LinkLost(f"{self._name or self.drivers[0]} is not found on any of the ports {', '.join(ports)}")
+
+    def _answers_at(self, port: str) -> bool:
+        """Whether this very board, ready for this rig, is at a port; then it is held."""
+        line, host = SerialLine(port, self._baud), Host(len(self._values), self._rig.fingerprint, watchdog_ms=WATCHDOG_MS)
+        try:
+            line.open()
+        except Faults:
+            return False
+        self._line, self._host = line, host
+        self._share[:] = np.nan
+        with suppress(LinkLost):
+            host.open(self._clock.now())
+            self._flush()
+            self._until(lambda: host.state in (link.READY, link.FAILED), FIND_S)
+            if host.state == link.READY and host.board.name == self._name:
+                return True
+        line.close()
+        return False
 
     def counters(self) -> dict[str, float]:
         """Sets sent, and what host and board have counted."""

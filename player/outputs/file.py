@@ -78,6 +78,10 @@ class File:
         """A file has nothing to tell."""
         return []
 
+    def reattach(self) -> str:
+        """It has no line that could be plugged in again."""
+        raise LinkLost(f"{self.target} cannot be taken hold of again")
+
     def counters(self) -> dict[str, float]:
         """Sets and bytes written."""
         return {"sets": self._sets, "bytes": self._bytes}

@@ -6,7 +6,7 @@ from composer.drive.inverse import vented
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
 from composer.simulate.rig import SimulatedRig
-from player.outputs.base import Array, Event, Mark, fibers_of
+from player.outputs.base import Array, Event, LinkLost, Mark, fibers_of
 
 SETTLE_STEP_S, SETTLE_S = 0.02, 30.0
 """After the last set the rig is let settle in steps of this long, for at most so long, in no time of the player's."""
@@ -70,6 +70,10 @@ class Sim:
         """What has been sensed since."""
         events, self._events = self._events, []
         return events
+
+    def reattach(self) -> str:
+        """It has no line that could be plugged in again."""
+        raise LinkLost(f"{self.target} cannot be taken hold of again")
 
     def counters(self) -> dict[str, float]:
         """Sets taken, the lowest supply, the strain that is left at the end."""

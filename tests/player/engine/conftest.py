@@ -55,6 +55,7 @@ class Kept:
         self.deeds: list[str] = []
         self.events: list[Event] = []
         self.lost_at = float("inf")
+        self.missing = False
         self.ready = True
 
     def open(self) -> None:
@@ -80,6 +81,13 @@ class Kept:
     def _do(self, deed: str, status: str) -> None:
         self.deeds.append(deed)
         self.events.append(Event("state", self.drivers[0], status=status))
+
+    def reattach(self) -> str:
+        if self.missing:
+            raise LinkLost("still unplugged")
+        self.deeds.append("reattach")
+        self.lost_at = float("inf")
+        return "here"
 
     def poll(self) -> list[Event]:
         events, self.events = self.events, []

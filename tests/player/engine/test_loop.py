@@ -114,7 +114,7 @@ def test_the_simulated_rig_is_where_the_score_wants_it_to_a_tick_of_travel(make_
     engine = make_engine(rig, tracks, [sim])
     play(engine)
     # Half of what a fiber goes in a tick at its fastest: within a tick it is at its set-point early, then waits there.
-    assert 0.0 < engine.errors.worst.error <= 0.5 * 0.6 * 0.005
+    assert 0.0 < engine.sensing.errors.worst.error <= 0.5 * 0.6 * 0.005
     assert sim.counters()["strain_left"] == 0.0
 
 
@@ -319,4 +319,64 @@ def test_ways_of_different_valves_are_each_sent_ahead_by_their_own_response(make
     sim = Sim(rig, abilities_of(rig), ("main",))
     engine = make_engine(rig, tracks, [sim])
     play(engine)
-    assert engine.errors.worst.error <= 0.5 * 0.6 * 0.005
+    assert engine.sensing.errors.worst.error <= 0.5 * 0.6 * 0.005
+
+
+def lost_in_mid_run(make_engine, make_rig, make_tracks, kept):
+    """An engine with an operator, the board of which is lost at the 50th set, up to where it stands by."""
+    output = kept(must_arm=True)
+    engine = make_engine(make_rig(4), make_tracks(4, [(0.0, 1.0, 0.3), (1.5, 2.5, 0.0)]), [output])
+    engine.returns, output.lost_at = True, 50
+    run = engine.run()
+    told = [word for status in run_until(run, "idle") for word in status.told]
+    return engine, output, run, told
+
+
+def run_until(run, state):
+    for status in run:
+        yield status
+        if status.state == state and any("Press b" in word for word in status.told):
+            return
+
+
+def test_a_lost_board_is_brought_back_by_the_operator_alone_and_the_score_goes_on_from_there(
+    make_engine, make_rig, make_tracks, kept
+):
+    engine, output, run, told = lost_in_mid_run(make_engine, make_rig, make_tracks, kept)
+    assert any("Press b" in word for word in told)
+    stood = engine.source.position_s
+    for _ in range(100):
+        next(run)
+    assert engine.safety.state == "idle" and "reattach" not in output.deeds and len(output.sets) == 50
+    engine.ask("bring_back")
+    for _ in run:
+        pass
+    assert output.deeds.count("arm") == 2 and engine.ending.how == "end" and engine.ending.exit_code == 1
+    back = output.commands[50:]
+    # Brought from rest to where the score stood, no faster than fibers go, then to the end.
+    assert back[0].max() < 0.05 and np.abs(np.diff(back, axis=0)).max() <= 2.0 * 0.6 / 0.3 / engine.rate_Hz
+    assert 0.0 < stood < engine.source.position_s == 2.5
+
+
+def test_a_board_that_is_still_missing_or_not_ready_leaves_the_run_standing_by(make_engine, make_rig, make_tracks, kept):
+    engine, output, run, _ = lost_in_mid_run(make_engine, make_rig, make_tracks, kept)
+    output.missing = True
+    engine.ask("bring_back")
+    assert any("still unplugged" in word for _ in range(3) for word in next(run).told)
+    output.missing, output.ready = False, False
+    engine.ask("bring_back")
+    assert any("not so: it is ready" in word for _ in range(3) for word in next(run).told)
+    assert engine.safety.state == "idle" and output.deeds.count("arm") == 1
+    engine.ask("stop")
+    for _ in run:
+        pass
+    assert engine.ending.how == "fault" and engine.ending.exit_code == 1
+
+
+def test_without_an_operator_a_lost_board_ends_the_run(make_engine, make_rig, make_tracks, kept):
+    output = kept(must_arm=True)
+    engine = make_engine(make_rig(4), make_tracks(4, [(0.0, 1.0, 0.3)]), [output])
+    output.lost_at = 50
+    for _ in engine.run():
+        pass
+    assert engine.ending.how == "fault" and "arm" in output.deeds and output.deeds.count("arm") == 1

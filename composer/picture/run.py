@@ -1,5 +1,6 @@
-"""A run's log as a picture: wanted and sensed as cloths one above the other, their distance, and how late ticks came."""
+"""A run as it was, as a picture: wanted and sensed as cloths one above the other, their distance, and how late ticks came."""
 
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -11,71 +12,56 @@ from composer.picture import palette
 from composer.picture.axes import second_ticks
 from composer.picture.image import colours
 from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
-from player.engine.told import Told, wanted_at
 
 WIDTH, HEIGHT = 1800, 1200
 LOOK = Look(1.35)
-NEAREST_S = 0.3
-"""A column shows the sense nearest to it, if that is no further than so many seconds."""
+LEFT_PX = LOOK.px(92)
+COLUMNS = WIDTH - LOOK.px(24) - LEFT_PX
+"""Columns of the cloths: an instant each."""
 
 WORST_SHOWN = 12
 
 Array = NDArray[np.float64]
 
 
-def paint(painter: QPainter, log: Told, whole: dict[str, Any]) -> None:
-    """Draw into WIDTH by HEIGHT pixels; `whole` is the object that the report tells."""
-    px = LOOK.px
+@dataclass(frozen=True, slots=True, eq=False)
+class RunScene:
+    """A run of `lasts_s`: shares of stroke wanted and sensed (F, COLUMNS), nan where not known; marks_s: what went wrong when.
+
+    told: the object of the run's report
+    """
+
+    lasts_s: float
+    wanted: Array
+    sensed: Array
+    marks_s: tuple[float, ...]
+    told: dict[str, Any]
+
+
+def paint(painter: QPainter, scene: RunScene) -> None:
+    """Draw into WIDTH by HEIGHT pixels."""
+    px, whole = LOOK.px, scene.told
     painter.fillRect(QRectF(0, 0, WIDTH, HEIGHT), colour(palette.GROUND))
     head = QRectF(px(24), px(12), WIDTH - px(48), px(32))
     wide = LOOK.write(painter, head, str(whole["title"] or whole["played"]), 19, bold=True)
     head.setLeft(head.left() + wide + px(22))
     LOOK.write(painter, head, f"{whole['date']}, {whole['ended']} at {whole['place']}", 13, palette.QUIET_INK)
-    left, right = px(92), WIDTH - px(24)
-    span = _span(log)
-    columns = right - left
-    times = span[0] + (np.arange(columns) + 0.5) * (span[1] - span[0]) / columns
-    everyone = np.arange(len(log.fibers))
-    wanted = wanted_at(log, times, everyone).T
-    sensed = _sensed(log, times)
-    tall = px(180)
-    top = px(80)
-    _cloth(painter, QRectF(left, top, columns, tall), "wanted", wanted, False)
+    tall, top = px(180), px(80)
+    _cloth(painter, QRectF(LEFT_PX, top, COLUMNS, tall), "wanted", scene.wanted, False)
     second = top + tall + px(38)
-    _cloth(painter, QRectF(left, second, columns, tall), "sensed", sensed, True)
+    _cloth(painter, QRectF(LEFT_PX, second, COLUMNS, tall), "sensed", scene.sensed, True)
     third = second + tall + px(38)
-    lane = QRectF(left, third, columns, px(110))
-    _distance(painter, lane, wanted, sensed)
-    _seconds(painter, lane, span)
-    _faults(painter, log, span, left, columns, top, third + px(110))
+    lane = QRectF(LEFT_PX, third, COLUMNS, px(110))
+    _distance(painter, lane, scene.wanted, scene.sensed)
+    _seconds(painter, lane, scene.lasts_s)
+    painter.setPen(pen(palette.LIMIT, 2.0, dash=(3.0, 2.0)))
+    for at_s in scene.marks_s:
+        x = int(LEFT_PX + min(max(at_s / scene.lasts_s, 0.0), 1.0) * COLUMNS)
+        painter.drawLine(x, int(top), x, int(third + px(110)))
     low = third + px(110) + px(66)
     room = HEIGHT - low - px(44)
-    _lateness(painter, QRectF(left, low, columns * 0.4, room), whole)
-    _worst(painter, QRectF(left + columns * 0.46, low - px(26), columns * 0.54, room + px(26)), whole)
-
-
-def _span(log: Told) -> tuple[float, float]:
-    """From the first set to the last, in s of the engine's clock, at least a second."""
-    if not len(log.in_force_s):
-        return 0.0, 1.0
-    first = float(log.in_force_s[0])
-    return first, max(float(log.in_force_s[-1]), first + 1.0)
-
-
-def _sensed(log: Told, times: Array) -> Array:
-    """Shares of stroke (F, T) of the sense nearest to each time, nan where there is none near."""
-    share = np.full((len(log.fibers), len(times)), np.nan)
-    for part in log.sensed:
-        order = np.argsort(part.at_s, kind="stable")
-        at = part.at_s[order]
-        later = np.clip(np.searchsorted(at, times), 1, max(len(at) - 1, 1))
-        if len(at) < 2:
-            continue
-        near = np.where(times - at[later - 1] < at[later] - times, later - 1, later)
-        values = part.share[order][near].T
-        values[:, np.abs(at[near] - times) > NEAREST_S] = np.nan
-        share[part.fibers] = values
-    return share
+    _lateness(painter, QRectF(LEFT_PX, low, COLUMNS * 0.4, room), whole)
+    _worst(painter, QRectF(LEFT_PX + COLUMNS * 0.46, low - px(26), COLUMNS * 0.54, room + px(26)), whole)
 
 
 def _cloth(painter: QPainter, box: QRectF, name: str, share: Array, can_lack: bool) -> None:
@@ -116,27 +102,13 @@ def _distance(painter: QPainter, box: QRectF, wanted: Array, sensed: Array) -> N
         painter.drawLine(x, int(box.bottom()), x, int(box.bottom() - worst[column] / most * box.height()))
 
 
-def _seconds(painter: QPainter, box: QRectF, span: tuple[float, float]) -> None:
+def _seconds(painter: QPainter, box: QRectF, lasts: float) -> None:
     px = LOOK.px
-    lasts = span[1] - span[0]
     for tick in second_ticks(0.0, lasts, box.width(), px(64)):
         x = box.left() + tick.at / lasts * box.width()
         painter.setPen(pen(palette.LINE))
         painter.drawLine(int(x), int(box.bottom()), int(x), int(box.bottom()) + px(5))
         LOOK.write(painter, QRectF(x - px(40), box.bottom() + px(6), px(80), px(18)), tick.label, 11, palette.QUIET_INK, CENTRE)
-
-
-def _faults(
-    painter: QPainter, log: Told, span: tuple[float, float], left: float, wide: float, top: float, bottom: float
-) -> None:
-    """A line down through all where something went wrong."""
-    painter.setPen(pen(palette.LIMIT, 2.0, dash=(3.0, 2.0)))
-    for record in log.happened:
-        fault = record.kind == "board" and record.told.get("kind") in ("fault", "lost", "silent")
-        if fault or record.kind in ("alarm", "slip"):
-            share = min(max((record.time_s - span[0]) / (span[1] - span[0]), 0.0), 1.0)
-            x = int(left + share * wide)
-            painter.drawLine(x, int(top), x, int(bottom))
 
 
 def _lateness(painter: QPainter, box: QRectF, whole: dict[str, Any]) -> None:

@@ -1,0 +1,41 @@
+"""What a run's log gives to its picture: wanted and sensed, an instant a column."""
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.picture.run import COLUMNS, RunScene
+from player.engine.told import Told, wanted_at
+
+Array = NDArray[np.float64]
+
+NEAREST_S = 0.3
+"""A column shows the sense nearest to it, if that is no further than so many seconds."""
+
+
+def scene(log: Told, told: dict[str, Any]) -> RunScene:
+    """The picture's contents; `told` is the object of the report."""
+    first = float(log.in_force_s[0]) if len(log.in_force_s) else 0.0
+    lasts = max(float(log.in_force_s[-1]) - first, 1.0) if len(log.in_force_s) else 1.0
+    times = first + (np.arange(COLUMNS) + 0.5) * lasts / COLUMNS
+    wanted = wanted_at(log, times, np.arange(len(log.fibers))).T
+    marks = tuple(fault["time_s"] - first for fault in told["faults"])
+    return RunScene(lasts, wanted, _sensed(log, times), marks, told)
+
+
+def _sensed(log: Told, times: Array) -> Array:
+    """Shares of stroke (F, T) of the sense nearest to each time, nan where there is none near."""
+    share = np.full((len(log.fibers), len(times)), np.nan)
+    for part in log.sensed:
+        if len(part.at_s) < 2:
+            continue
+        order = np.argsort(part.at_s, kind="stable")
+        at = part.at_s[order]
+        later = np.clip(np.searchsorted(at, times), 1, len(at) - 1)
+        near = np.where(times - at[later - 1] < at[later] - times, later - 1, later)
+        values = part.share[order][near].T
+        values[:, np.abs(at[near] - times) > NEAREST_S] = np.nan
+        known = np.isfinite(values)
+        share[part.fibers] = np.where(known, values, share[part.fibers])
+    return share

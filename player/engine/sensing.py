@@ -1,0 +1,71 @@
+"""What boards sense, held against what was wanted: the largest error, alarms, and the trim where it is asked for."""
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.limits.abilities import Abilities
+from composer.rig.model import Rig
+from player.engine.alarms import ALARMS, SLACK_S, Raised, Watch
+from player.engine.errors import Errors
+from player.engine.trim import Trim
+from player.outputs.base import Event
+
+Array = NDArray[np.float64]
+
+
+class Sensing:
+    """One for a run; `trim` is None unless set-points are to be corrected."""
+
+    def __init__(self, rig: Rig, abilities: Abilities, trims: bool = False):
+        self.errors = Errors(len(rig.fibers))
+        fastest = np.maximum(abilities.fill.max(axis=1), abilities.exhaust.max(axis=1))[abilities.which] / abilities.stroke
+        self.watch = Watch(fastest)
+        self.trim = Trim(tuple(fiber.mounting.valve.drive for fiber in rig.fibers)) if trims else None
+        self._names = [fiber.name for fiber in rig.fibers]
+        self._drivers = [fiber.driver for fiber in rig.fibers]
+        self._stroke = abilities.stroke
+        self._least_kPa = rig.supply.min_pressure_kPa
+        self._low: set[str] = set()
+        self._last = np.zeros(len(rig.fibers))
+
+    def sense(self, event: Event, watched: bool) -> list[tuple[Raised, str, str]]:
+        """What an event shows: new alarms, each with the driver and the sentence. Only the largest error unless `watched`."""
+        if event.kind == "supply":
+            return self._supply(event) if watched else []
+        self._last[event.fibers] = event.strain
+        self.errors.sense(event.time_s, event.fibers, event.strain)
+        zone = self.errors.around(event.time_s, SLACK_S, event.fibers) if watched else None
+        if zone is None:
+            return []
+        stroke = self._stroke[event.fibers]
+        share, low, high = event.strain / stroke, zone[0] / stroke, zone[1] / stroke
+        found = self.watch.look(event.time_s, event.fibers, share, low, high)
+        if self.trim is not None:
+            self.trim.sense(event.time_s, event.fibers, share, low, high, self.watch.alarmed)
+        where = {fiber: number for number, fiber in enumerate(event.fibers.tolist())}
+        return [(one, self._drivers[one.fiber], self._said(one, share[where[one.fiber]], low, high, where)) for one in found]
+
+    def begin_again(self) -> Array:
+        """After all have been to rest: strains (F,) as last sensed, 0 where nothing is; what was sensed before is forgotten."""
+        self.watch.forget()
+        self._low.clear()
+        return self._last.copy()
+
+    def applied(self, command: Array) -> Array:
+        """The command (F,) with the trim, where there is one."""
+        return command if self.trim is None else self.trim.applied(command)
+
+    def _said(self, one: Raised, share: float, low: Array, high: Array, where: dict[int, int]) -> str:
+        row, number = ALARMS[one.name], where[one.fiber]
+        wanted = f"{100 * low[number]:.0f} to {100 * high[number]:.0f} %"
+        return (
+            f"{self._names[one.fiber]} {row.says}: sensed at {100 * share:.0f} % of its stroke, wanted at {wanted}; {row.hint}"
+        )
+
+    def _supply(self, event: Event) -> list[tuple[Raised, str, str]]:
+        if event.kPa >= self._least_kPa or event.driver in self._low:
+            return []
+        self._low.add(event.driver)
+        row = ALARMS["supply"]
+        say = f"{event.driver}: {row.says}: {event.kPa:.0f} kPa, at least {self._least_kPa:.0f}; {row.hint}"
+        return [(Raised("supply", -1), event.driver, say)]
