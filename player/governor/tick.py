@@ -48,7 +48,7 @@ class _Tick:
         self.up, self.down = longest_steps(state.here, dt_s)
         # A coil that is on, or is switched on now, and may not be switched off at the end of this tick.
         on_s = np.where(state.on, state.since_on_s, 0.0)
-        self.too_soon = on_s + dt_s < governor.min_on_s * (1.0 - ROUNDING)
+        self.too_soon = on_s < governor.min_on_s * (1.0 - ROUNDING) - dt_s
         self.stays_on = state.on & self.too_soon
         # Where a fiber would stand if it braked now, and the highest strain that it cannot help coming to.
         self.stop = self.top = strain = state.strain
@@ -59,7 +59,7 @@ class _Tick:
             b = governor.braced
             self.before = strain[b], state.rate[b], self.stop[b]
         self.start_band = np.where(state.on, 0.0, governor.least)
-        self.cut = np.full(len(strain), NONE, dtype=np.int8)
+        self.cut = np.zeros(len(strain), dtype=np.int8)  # `NONE`
 
     def to(self, wanted: Array, silent: Mask | None) -> State:
         governor, state = self.governor, self.state
@@ -164,7 +164,10 @@ class _Tick:
         """Seconds of its burst that a coil would have left over when the fiber has gone back to rest from there."""
         governor = self.governor
         way = np.maximum(back, governor.min_on_s) + governor.spare_s
-        way = np.where((strain == 0.0) & (rate == 0.0), 0.0, way)
+        at_rest = strain == 0.0
+        if governor.has_braced:
+            at_rest &= rate == 0.0
+        way[at_rest] = 0.0
         return governor.burst_s - self._spent(self._on(strain)) - governor.off_duty * way
 
     def _too_long(self, top: Array, back: Array) -> Mask:
