@@ -20,6 +20,9 @@ HANDS_OFF_S = 0.5
 MOST_A_CALL = 8
 """Messages of one call: a MIDI 1.0 line carries about a thousand a second."""
 
+MOST_LOOKED = 64
+"""Controls looked at in one call; the next call looks at those that follow."""
+
 _MOVES = ("cc", "cc14", "bend", "note")
 
 
@@ -55,8 +58,9 @@ class Feedback:
             playing: binds whose phrase plays now
         """
         out: list[tuple[str, Message]] = []
-        for step in range(len(self._rows)):
-            index, bind, control = self._rows[(self._turn + step) % len(self._rows)]
+        for _ in range(min(MOST_LOOKED, len(self._rows))):
+            index, bind, control = self._rows[self._turn]
+            self._turn = (self._turn + 1) % len(self._rows)
             if now_s - self._hand_s.get(index, -np.inf) < HANDS_OFF_S or now_s - self._sent_s.get(index, -np.inf) < EVERY_S:
                 continue
             value = _value(bind, control, stroke, index in playing)
@@ -65,7 +69,6 @@ class Feedback:
             self._sent[index], self._sent_s[index] = value, now_s
             out += [(control.port, message) for message in _messages(control, value)]
             if len(out) >= MOST_A_CALL:
-                self._turn = (self._turn + step + 1) % len(self._rows)
                 break
         return out
 

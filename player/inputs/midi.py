@@ -46,7 +46,6 @@ class _Port:
     heard_s: float
     senses: bool = False
     silent: bool = False
-    driven: set[int] = field(default_factory=set)
     fine: dict[tuple[int, int], _Fine] = field(default_factory=dict)
     held: dict[tuple[int, int, int], tuple[tuple[object, ...], Play]] = field(default_factory=dict)
     pressed: set[tuple[int, int, int]] = field(default_factory=set)
@@ -126,7 +125,7 @@ class MidiBinds:
         return events
 
     def let_go(self, fibers: tuple[int, ...]) -> None:
-        """Something else moves these fibers now: controls with pickup must pass the present value anew."""
+        """Something else moves these fibers now: no source here drives them, and controls with pickup must pass anew."""
         self._mover[list(fibers)] = -1
 
     def _falls_silent(self, events: list[Event], here: "_Here", why: str) -> None:
@@ -136,9 +135,9 @@ class MidiBinds:
             if not isinstance(self._map.binds[index].deed, Stroke):
                 self._lift(events, here, index, channel, number)
         port.pressed.clear()
-        events.append(Silent(here.source, here.at_s, tuple(sorted(port.driven)), why))
-        self.let_go(tuple(port.driven))
-        port.driven.clear()
+        driven = np.flatnonzero((self._mover >= 0) & (self._mover // (len(self._map.binds) + 1) == port.number))
+        events.append(Silent(here.source, here.at_s, tuple(int(fiber) for fiber in driven), why))
+        self._mover[driven] = -1
         port.fine.clear()
         port.last.clear()
         port.silent, port.senses = True, False
@@ -165,13 +164,15 @@ class MidiBinds:
     def _want(self, events: list[Event], here: "_Here", index: int, deed: Stroke, value: float) -> None:
         stroke = deed.stroke(value)
         fibers = list(deed.fibers)
-        code = here.port.number * (len(self._map.binds) + 1) + index
+        code = self._code(here.port, index)
         last, here.port.last[index] = here.port.last.get(index), stroke
         if deed.pickup and not (self._mover[fibers] == code).all() and not self._passes(deed, fibers, last, stroke):
             return
         self._mover[fibers] = code
-        here.port.driven.update(deed.fibers)
         events.append(Wanted(here.source, here.at_s, deed.fibers, stroke, deed.how, index))
+
+    def _code(self, port: _Port, index: int) -> int:
+        return port.number * (len(self._map.binds) + 1) + index
 
     def _passes(self, deed: Stroke, fibers: list[int], last: float | None, stroke: float) -> bool:
         """Whether a control that went from `last` to `stroke` met the present value, or as near to it as it can go."""
@@ -196,8 +197,7 @@ class MidiBinds:
             name = (here.source, index, channel, number, self._played)
             at_s = here.at_s if deed.quantise is None or self.beat is None else self.beat.next_s(here.at_s, deed.quantise)
             here.port.held[key] = (name, deed)
-            here.port.driven.update(deed.fibers)
-            self.let_go(deed.fibers)
+            self._mover[list(deed.fibers)] = self._code(here.port, index)
             events.append(Begin(here.source, at_s, deed.phrase, deed.fibers, value, name, deed.how, index))
 
     def _lift(self, events: list[Event], here: "_Here", index: int, channel: int, number: int) -> None:

@@ -7,12 +7,16 @@ from contextlib import contextmanager, suppress
 from dataclasses import dataclass
 from typing import Any
 
-import rtmidi
 from mido import Message
 
 from composer.faults import fault, nearest
 from player.inputs.midi_stream import REFUSED, MidiStream
 from player.inputs.stamps import Stamps
+
+try:
+    import rtmidi
+except ImportError:  # its libraries of ALSA or JACK are not there: that is a machine without MIDI
+    rtmidi = None
 
 CLIENT = "drawcord"
 LOOK_S = 1.0
@@ -23,7 +27,7 @@ MOST_KEPT = 16384
 
 MOST_A_POLL = 1024
 
-_ERRORS = (rtmidi.RtMidiError,)
+_ERRORS: tuple[type[Exception], ...] = (rtmidi.RtMidiError,) if rtmidi else ()
 
 NO_MIDI = "no MIDI system answers on this machine: neither ALSA nor a running JACK server"
 
@@ -245,6 +249,8 @@ class _In:
 
 def _systems() -> list[tuple[int, str]]:
     """The MIDI systems that python-rtmidi was built for, but not the one that does nothing."""
+    if rtmidi is None:
+        return []
     apis = [api for api in rtmidi.get_compiled_api() if api != rtmidi.API_RTMIDI_DUMMY]
     return [(api, rtmidi.get_api_display_name(api)) for api in apis]
 

@@ -138,6 +138,10 @@ class OscBinds:
             self._driven.clear()
         return due
 
+    def let_go(self, fibers: Collection[int]) -> None:
+        """Something else moves these fibers now: silence here is not theirs any more."""
+        self._driven.difference_update(fibers)
+
     @property
     def waiting(self) -> int:
         """How many events wait for their time."""

@@ -89,9 +89,8 @@ def main() -> None:
     told("bundles 400 deep, refused", each(hostile, 2000))
     flood = each(lambda: osc.hear(packet, 0.0, 1.7e9), 20000)
     told("an OSC packet of a flood, refused", flood)
-    print(
-        f"a packet refused in a flood costs {flood / good:.2f} of one that is taken; {osc.refused['deep'] - bad} refused as deep"
-    )
+    refused = osc.refused["deep"] - bad
+    print(f"a packet refused in a flood costs {flood / good:.2f} of one that is taken; {refused} refused as deep")
 
     feedback, stroke = Feedback(hand), np.zeros(FIBERS)
 

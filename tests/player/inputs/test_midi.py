@@ -222,6 +222,14 @@ def test_one_controller_falling_silent_leaves_another_alone(binds_of):
     assert strokes(hear(binds, "B00800", 2.0, "two")) == [0.0]
 
 
+def test_fibers_that_another_controller_has_taken_over_stay_with_it(binds_of):
+    binds = binds_of(bind("cc = 7", 'fibers = "r.1-3"') + bind("cc = 8", 'fibers = "r.2"'))
+    hear(binds, "B0077F", 0.0, "one")
+    hear(binds, "B0087F", 1.0, "two")
+    binds.let_go((2,))
+    assert [event.fibers for event in binds.lost("one", 2.0, "gone")] == [(0,)]
+
+
 # clocks ------------------------------------------------------------------------------------------
 
 

@@ -99,6 +99,13 @@ def test_an_independent_sender_over_jack_moves_fibers_is_followed_is_missed_and_
     assert desk.ports.sources == desk.ports.sinks == ()
 
 
+def test_a_machine_whose_midi_libraries_are_missing_says_the_same(monkeypatch):
+    monkeypatch.setattr("player.inputs.midi_ports.rtmidi", None)
+    with pytest.raises(Faults, match=NO_MIDI):
+        MidiPorts(time.monotonic, hear=["box"])
+    assert midi_ports_found() == []
+
+
 def test_a_machine_without_any_midi_system_says_so_in_a_sentence(monkeypatch, capfd):
     monkeypatch.setenv("JACK_DEFAULT_SERVER", "no-such-server")
     monkeypatch.setattr("player.inputs.midi_ports._client", lambda make, api: None)

@@ -197,6 +197,8 @@ def test_silence_brings_its_fibers_to_rest_where_the_map_says_so(map_of):
     assert silent == Silent("osc", 11.5, (0, 1, 2), "osc: nothing came for 1.5 s")
     assert osc.tick(20.0) == []
     assert hear(osc, packet("/reeds", 0.5), 21.0)[0] == Back("osc", 21.0)
+    osc.let_go((1,))
+    assert [event.fibers for event in osc.tick(23.0)] == [(0,)]
 
 
 def test_the_names_of_a_score_are_known_with_the_fibers_that_play_its_phrases(make_rig):
