@@ -39,6 +39,9 @@ SLICE_S = 0.005
 SETTLE_S = 0.5
 """Seconds that a board has to say that it has disarmed."""
 
+SENSES_S = 0.25
+"""Before fibers are brought back from where they are, boards have so long to sense where that is."""
+
 STAND_BY_S = 0.05
 STAND_BY_SAID = "All is at rest or vented. Press b to bring everything back and go on from here, Ctrl-C to end the run."
 
@@ -200,13 +203,19 @@ class Engine:
         if missing:
             return False
         self._clock.wait_until(down_s)
+        self.sensing.begin_again()
         try:
             wrong = [mark for mark in self.preflight() if not mark.ok]
             for mark in wrong:
                 self._account.tell(f"not so: {mark.asked}: {mark.found}; {mark.hint}")
             if wrong:
                 return False
-            self.source.found(self.sensing.begin_again())
+            # What boards sensed before they were lost is long over: only what they sense now counts.
+            until = self._clock.now() + SENSES_S
+            while self._clock.now() < until:
+                self._clock.wait_until(self._clock.now() + SLICE_S)
+                self.tend()
+            self.source.found(self.sensing.last.copy())
             self._become("arm")
         except LinkLost as lost:
             self._account.tell(f"lost again: {lost}")

@@ -14,7 +14,7 @@ Array = NDArray[np.float64]
 
 
 class Sensing:
-    """One for a run; `trim` is None unless set-points are to be corrected."""
+    """One for a run; `trim` is None unless set-points are to be corrected; `last`: (F,) strain as last sensed, or 0."""
 
     def __init__(self, rig: Rig, abilities: Abilities, trims: bool = False):
         self.errors = Errors(len(rig.fibers))
@@ -26,13 +26,13 @@ class Sensing:
         self._stroke = abilities.stroke
         self._least_kPa = rig.supply.min_pressure_kPa
         self._low: set[str] = set()
-        self._last = np.zeros(len(rig.fibers))
+        self.last = np.zeros(len(rig.fibers))
 
     def sense(self, event: Event, watched: bool) -> list[tuple[Raised, str, str]]:
         """What an event shows: new alarms, each with the driver and the sentence. Only the largest error unless `watched`."""
         if event.kind == "supply":
             return self._supply(event) if watched else []
-        self._last[event.fibers] = event.strain
+        self.last[event.fibers] = event.strain
         self.errors.sense(event.time_s, event.fibers, event.strain)
         zone = self.errors.around(event.time_s, SLACK_S, event.fibers) if watched else None
         if zone is None:
@@ -45,11 +45,11 @@ class Sensing:
         where = {fiber: number for number, fiber in enumerate(event.fibers.tolist())}
         return [(one, self._drivers[one.fiber], self._said(one, share[where[one.fiber]], low, high, where)) for one in found]
 
-    def begin_again(self) -> Array:
-        """After all have been to rest: strains (F,) as last sensed, 0 where nothing is; what was sensed before is forgotten."""
+    def begin_again(self) -> None:
+        """Forget what was sensed before a fault: `last` (F,) is 0 until something is sensed anew."""
         self.watch.forget()
         self._low.clear()
-        return self._last.copy()
+        self.last[:] = 0.0
 
     def applied(self, command: Array) -> Array:
         """The command (F,) with the trim, where there is one."""

@@ -327,6 +327,8 @@ def lost_in_mid_run(make_engine, make_rig, make_tracks, kept):
     output = kept(must_arm=True)
     engine = make_engine(make_rig(4), make_tracks(4, [(0.0, 1.0, 0.3), (1.5, 2.5, 0.0)]), [output])
     engine.returns, output.lost_at = True, 50
+    # What was sensed before the loss says nothing of where fibers are when they are brought back.
+    output.events.append(Event("sense", "main", time_s=0.0, fibers=np.arange(4), strain=np.full(4, 0.25)))
     run = engine.run()
     told = [word for status in run_until(run, "idle") for word in status.told]
     return engine, output, run, told
