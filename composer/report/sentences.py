@@ -280,6 +280,8 @@ def _stroke(snag: Snag, teller: Teller, who: _Who) -> Told:
         return Told(says, "Let the entries that add up ask for less there; time does not mend it.")
     needs, has = two(snag.needs * 100.0, snag.has * 100.0)
     says = f"{who.verb('is', 'are')} asked for up to {needs} % strain from {at} on; {who.then('can', 'can')} use {has} %."
+    if len(_quivers(teller, snag.knot)):
+        return Told(says, "Quiver less there, or round a smaller strain; time does not mend it.")
     return Told(says, f"Scale it to {np.floor(1000.0 * snag.has / snag.needs) / 1000.0:.3f} of that; time does not mend it.")
 
 
