@@ -1,6 +1,7 @@
 """MIDI ports through python-rtmidi: opened by part of their name, watched for coming and going. No MIDI is understood here."""
 
 import os
+import threading
 from collections import deque
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager, suppress
@@ -95,11 +96,15 @@ class MidiPorts:
         self._outs: dict[str, Any] = {}
         self._changes: deque[Change] = deque(maxlen=MOST_KEPT)
         self._were: set[str] = set()
+        self._failed: set[str] = set()
         self._refused = dict.fromkeys(REFUSED, 0)
         self._scouts = [(api, _client(rtmidi.MidiIn, api), _client(rtmidi.MidiOut, api)) for api, _ in _systems()]
         if not any(scout for _, scout, _ in self._scouts):
             raise fault("MIDI", NO_MIDI, hint="'drawcord ports' lists what there is")
-        self._looked_s = -LOOK_S
+        # Ports are opened and closed by a thread of its own: that takes tens of milliseconds, and holds no lock meanwhile.
+        self._lock = threading.Lock()
+        self._looking: threading.Thread | None = None
+        self._looked_s = now()
         self._look()
 
     @property
@@ -115,10 +120,11 @@ class MidiPorts:
     @property
     def refused(self) -> dict[str, int]:
         """What was refused of all that came, by reason."""
-        total = dict(self._refused)
-        for port in self._ins.values():
-            for why, count in port.stream.refused.items():
-                total[why] += count
+        with self._lock:
+            total = dict(self._refused)
+            for port in self._ins.values():
+                for why, count in port.stream.refused.items():
+                    total[why] += count
         return total
 
     def missing(self) -> list[str]:
@@ -134,27 +140,33 @@ class MidiPorts:
     def poll(self) -> tuple[list[Heard], list[Change]]:
         """What has come in since the last time, in order of its moments, and which ports have come or gone."""
         now_s = self._now()
-        if now_s - self._looked_s >= LOOK_S:
-            self._look()
+        if now_s - self._looked_s >= LOOK_S and (self._looking is None or not self._looking.is_alive()):
+            self._looked_s = now_s
+            self._looking = threading.Thread(target=self._look, name="midi ports", daemon=True)
+            self._looking.start()
         heard: list[Heard] = []
-        for source, port in self._ins.items():
-            heard += [Heard(source, message, at_s) for at_s, message in port.taken(MOST_A_POLL)]
+        with self._lock:
+            for source, port in self._ins.items():
+                heard += [Heard(source, message, at_s) for at_s, message in port.taken(MOST_A_POLL)]
+            changes = list(self._changes)
+            self._changes.clear()
         heard.sort(key=lambda one: one.at_s)
-        changes = list(self._changes)
-        self._changes.clear()
         return heard, changes
 
     def send(self, message: Message, port: str = "") -> None:
         """Send to every open port with `port` in its name; one that fails is let go, and taken up again when it is back."""
-        for name, out in list(self._outs.items()):
-            if port in name:
-                try:
-                    out.send_message(message.bytes())
-                except (*_ERRORS, ValueError):
-                    self._close_out(name)
+        with self._lock:
+            for name, out in self._outs.items():
+                if port in name:
+                    try:
+                        out.send_message(message.bytes())
+                    except (*_ERRORS, ValueError):
+                        self._failed.add(name)
 
     def close(self) -> None:
         """Let go of all ports."""
+        if self._looking is not None:
+            self._looking.join()
         for name in list(self._ins):
             self._close_in(name)
         for name in list(self._outs):
@@ -167,7 +179,6 @@ class MidiPorts:
 
     def _look(self) -> None:
         """Open what has come, close what has gone."""
-        self._looked_s = self._now()
         there: dict[str, tuple[int, int]] = {}
         sinks: dict[str, tuple[int, int]] = {}
         for api, hears, sends in self._scouts:
@@ -175,8 +186,8 @@ class MidiPorts:
             sinks |= {name: (api, index) for index, name in enumerate(_names(sends)) if not name.startswith(CLIENT)}
         for name in [name for name in self._ins if name not in there]:
             self._close_in(name)
-            self._changes.append(Change(name, "lost", self._looked_s))
-        for name in [name for name in self._outs if name not in sinks]:
+            self._tell(name, "lost")
+        for name in [name for name in self._outs if name not in sinks or name in self._failed]:
             self._close_out(name)
         for name, (api, index) in there.items():
             if name not in self._ins and any(wanted in name for wanted in self._hear):
@@ -186,25 +197,35 @@ class MidiPorts:
                 with suppress(*_ERRORS):
                     out = rtmidi.MidiOut(api, CLIENT)
                     out.open_port(index, "out")
-                    self._outs[name] = out
+                    with self._lock:
+                        self._outs[name] = out
+
+    def _tell(self, name: str, kind: str) -> None:
+        with self._lock:
+            self._changes.append(Change(name, kind, self._now()))
 
     def _open_in(self, name: str, api: int, index: int) -> None:
         try:
-            self._ins[name] = _In(api, index, self._now)
+            port = _In(api, index, self._now)
         except _ERRORS:
             return
+        with self._lock:
+            self._ins[name] = port
         if name in self._were:
-            self._changes.append(Change(name, "back", self._looked_s))
+            self._tell(name, "back")
         self._were.add(name)
 
     def _close_in(self, name: str) -> None:
-        port = self._ins.pop(name)
-        for why, count in port.stream.refused.items():
-            self._refused[why] += count
+        with self._lock:
+            port = self._ins.pop(name)
+            for why, count in port.stream.refused.items():
+                self._refused[why] += count
         port.close()
 
     def _close_out(self, name: str) -> None:
-        out = self._outs.pop(name)
+        with self._lock:
+            out = self._outs.pop(name)
+            self._failed.discard(name)
         with suppress(*_ERRORS):
             out.close_port()
         out.delete()

@@ -13,9 +13,13 @@ import sys, time
 import mido
 mido.set_backend("mido.backends.rtmidi/UNIX_JACK")
 port = mido.open_output("faders", virtual=True, client_name=sys.argv[1])
+lights = mido.open_input("lights", virtual=True, client_name=sys.argv[1] + "-in")
 print("ready", flush=True)
 for line in sys.stdin:
     words = line.split()
+    if words[0] == "heard":
+        print(lights.receive().hex(), flush=True)
+        continue
     if words[0] == "clock":
         count, period = int(words[1]), float(words[2])
         start = time.perf_counter()
@@ -28,6 +32,7 @@ for line in sys.stdin:
             port.send(message)
     print("sent", flush=True)
 port.close()
+lights.close()
 """
 
 
@@ -58,7 +63,7 @@ def server(name: str) -> Iterator[str]:
 
 
 class Sender:
-    """The other process, a client of the JACK server with one port to send from."""
+    """The other process, a client of the JACK server with one port to send from and one to hear."""
 
     def __init__(self, client: str):
         self._process = subprocess.Popen(
@@ -72,6 +77,12 @@ class Sender:
         self._process.stdin.write(line + "\n")
         self._process.stdin.flush()
         assert self._process.stdout.readline() == "sent\n"
+
+    def heard(self) -> str:
+        """The next message that came to its other port, in hex; waits for it."""
+        self._process.stdin.write("heard\n")
+        self._process.stdin.flush()
+        return self._process.stdout.readline().strip()
 
     def close(self) -> None:
         """End it, and with it its port."""

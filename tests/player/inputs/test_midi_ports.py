@@ -35,7 +35,7 @@ class Desk:
     """What the player does with a port, tick by tick."""
 
     def __init__(self, map_):
-        self.ports = MidiPorts(time.monotonic, hear=["box"], send=["sink"])
+        self.ports = MidiPorts(time.monotonic, hear=["box"], send=["box-in"])
         self.binds = MidiBinds(map_, 4)
         self.events, self.changes, self.types = [], [], []
 
@@ -92,7 +92,11 @@ def test_an_independent_sender_over_jack_moves_fibers_is_followed_is_missed_and_
         before = len(desk.strokes())
         again.send("B0 15 20")
         until(lambda: len(desk.strokes()) == before + 1, desk.poll)
-        desk.ports.send(Message("control_change", control=1, value=1))
+        until(lambda: desk.ports.sinks, desk.poll)
+        desk.ports.send(Message("control_change", control=1, value=5), "box")
+        desk.ports.send(Message("control_change", control=1, value=6), "another")
+        desk.ports.send(Message("clock"))
+        assert [again.heard(), again.heard()] == ["B0 01 05", "F8"]
     finally:
         again.close()
         desk.ports.close()
