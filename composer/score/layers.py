@@ -26,7 +26,7 @@ class Knots:
     """Knots of C chains, as Tracks has them of fibers: those of chain c are `first[c]:first[c + 1]`; see Tracks.
 
     earliest: (K,) s: when a sudden segment might have started at the earliest, its line having the time; else its time
-    quivers: (K,) whether a quiver lies over the segment
+    quivers: (K,) 0 without a quiver over the segment, 1 beneath one, 2 where one begins or ends as well
     """
 
     first: Index
@@ -37,7 +37,7 @@ class Knots:
     line: NDArray[np.int32]
     phrase_line: NDArray[np.int32]
     earliest: Array
-    quivers: NDArray[np.bool_]
+    quivers: NDArray[np.int8]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -160,7 +160,7 @@ def _written(
         line=made[kept],
         phrase_line=made_of[kept],
         earliest=earliest,
-        quivers=quivers[kept],
+        quivers=2 * quivers[kept].astype(np.int8),
     )
 
 

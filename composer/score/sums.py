@@ -153,11 +153,12 @@ def _sum(knots: Knots, fiber: Index, chain: Index, abilities: Abilities, room: i
     manner[spot[alone]], shape[spot[alone]] = knots.manner[alone], knots.shape[alone]
     earliest[spot[alone]] = knots.earliest[alone]
     quivers = np.zeros(len(at) + 1, dtype=np.int64)
-    shaking = moving[knots.quivers[moving]]
+    shaking = moving[knots.quivers[moving] > 0]
     np.add.at(quivers, spot[shaking], 1)
     np.subtract.at(quivers, stop[shaking], 1)
-    under = np.cumsum(quivers[:-1]) > 0
-    flat = (manner != HOLD) & ~under & (np.abs(curve[:, 1:]).max(axis=1) <= NO_WAY)
+    under = (np.cumsum(quivers[:-1]) > 0).astype(np.int8)
+    under[np.concatenate([spot[shaking], stop[shaking]])] *= 2
+    flat = (manner != HOLD) & (under == 0) & (np.abs(curve[:, 1:]).max(axis=1) <= NO_WAY)
     manner[flat], shape[flat], curve[flat, 1:] = HOLD, -1, 0.0
 
     # Whose line: of the layer that moves most, else of the knot that is written last.
@@ -270,7 +271,7 @@ def _with_jumps(
         spread(sums.line, by[jumps]),
         spread(sums.phrase_line, by_phrase[jumps]),
         spread(sums.earliest, sums.time_s[jumps]),
-        spread(sums.quivers, np.zeros(len(steps), dtype=bool)),
+        spread(sums.quivers, np.zeros(len(steps), dtype=np.int8)),
     )
 
 
@@ -304,16 +305,19 @@ def _timed_suddens(knots: Knots, fiber: Index, abilities: Abilities) -> tuple[Kn
         np.insert(knots.line, at, knots.line[at]),
         np.insert(knots.phrase_line, at, knots.phrase_line[at]),
         np.insert(knots.earliest, at, old),
-        np.insert(knots.quivers, at, False),
+        np.insert(knots.quivers, at, 0),
     ), np.insert(fiber, at, fiber[at])
 
 
 def _merged(knots: Knots, fiber: Index) -> tuple[Knots, Index]:
-    """The knots with holds of no length left out and holds in a row made one."""
+    """The knots with holds of no length left out, and holds in a row made one, also beneath the same quivers."""
     last = np.append(fiber[1:] != fiber[:-1], True)
     kept = np.flatnonzero(last | (knots.manner != HOLD) | (np.append(knots.time_s[1:], np.inf) > knots.time_s))
     again = np.zeros(len(kept), dtype=bool)
     rests = knots.manner[kept] == HOLD
-    again[1:] = rests[1:] & rests[:-1] & (fiber[kept][1:] == fiber[kept][:-1])
+    quivers = knots.quivers[kept]
+    still = (quivers > 0) & (knots.manner[kept] == MOVE) & np.all(knots.curve[kept, 1:] == 0.0, axis=1)
+    again[1:] = (rests[1:] & rests[:-1]) | (still[1:] & still[:-1] & (quivers[1:] == 1))
+    again[1:] &= fiber[kept][1:] == fiber[kept][:-1]
     kept = kept[~again]
     return _picked(knots, kept), fiber[kept]

@@ -6,6 +6,7 @@ TEMPO = "tempo 60\ntempo 90 at 3:1\ntempo 90 to 45 from 4:1 to 6:1\n"
 
 AMOUNTS = st.sampled_from(["rest", "full", "0.4", "0.75", "12%", "20mm", "hold", "1/3"])
 WAYS = st.sampled_from(["", "smooth", "linear", "swell", "settle", "sudden", "step", "curve 0.2 0.7 12% 0.9"])
+QUIVERS = st.sampled_from([""] * 5 + [" quiver 2Hz by 0.05", " quiver 5.5Hz by 3mm", " quiver 0.3Hz by 1%"])
 
 
 @st.composite
@@ -21,6 +22,7 @@ def phrases(draw, name: str, unit: str) -> tuple[str, bool]:
         over = draw(st.sampled_from([0, 0, 1, 2, 3]))
         way = draw(WAYS)
         tail = f" over {over}/4{unit}" if over and over < gap and way != "step" else ""
+        tail += draw(QUIVERS)
         rows.append(f"  {at}/4{unit} {draw(AMOUNTS)} {way}{tail}")
     longer = draw(st.sampled_from(["", f" {at + 3}/4{unit}"]))
     return f"phrase {name}{longer}\n" + "\n".join(rows) + "\n", opens and not unit

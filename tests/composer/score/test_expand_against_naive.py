@@ -15,7 +15,7 @@ from composer.motion import strain_at
 from composer.rig.select import Selector
 from composer.score.expand import expand
 from composer.score.reading import read_score
-from composer.tracks import durations, end_strain
+from composer.tracks import MOVE, STEP, durations, end_strain
 
 from .random_scores import scores
 
@@ -77,11 +77,28 @@ class Voice:
     steps: list
     cut: float = math.inf
     pieces: list[Piece] = field(default_factory=list)
+    quivers: list[tuple] = field(default_factory=list)
 
 
 def amount(target, scale: float) -> float:
     per = {"stroke": STROKE, "%": 0.01, "mm": 1 / LENGTH_MM}[target.unit]
     return float(target.value) * per * scale
+
+
+def quiver_of(line, scale: float) -> tuple | None:
+    """Hertz and amplitude of what a line quivers."""
+    return line.quiver and (float(line.quiver.hertz), amount(line.quiver.by, scale))
+
+
+def quivering(quivers: list[tuple], at: float) -> float:
+    """The sum of quivers at an instant: a sine that opens and closes with the quarter of a sine."""
+    value = 0.0
+    for begin, end, hertz, amplitude in quivers:
+        if begin < at < end:
+            quarter = 0.25 / hertz
+            opens, closes = (math.sin(math.pi / 2 * min(1.0, part / quarter)) for part in (at - begin, end - at))
+            value += amplitude * opens * closes * math.sin(2.0 * math.pi * hertz * (at - begin))
+    return value
 
 
 def reached(pieces: list[Piece], at: float) -> float:
@@ -99,7 +116,7 @@ def later(start_count: float, by, stretch: float) -> float:
 
 
 def steps_of(phrase, start_count: float, entry) -> list:
-    """(window's begin, its end, knot, target or None, shape, controls) of each line, in seconds; forwards or backwards."""
+    """(window's begin, its end, knot, target or None, shape, controls, quiver) of each line in seconds, either way."""
     stretch, scale = float(entry.stretch), float(entry.scale)
     lines = phrase.lines
 
@@ -119,7 +136,7 @@ def steps_of(phrase, start_count: float, entry) -> list:
                     begin = seconds_of(count_of(knot) - float(line.over.value) * stretch)
             target = None if line.target.unit == "hold" else amount(line.target, scale)
             controls = [None if c.unit == "hold" else amount(c, scale) for c in line.controls]
-            steps.append((before, begin, knot, knot, target, line.shape, controls))
+            steps.append((before, begin, knot, knot, target, line.shape, controls, quiver_of(line, scale)))
             before = knot
         return steps
     whole = (phrase.length or lines[-1].offset).value
@@ -127,10 +144,10 @@ def steps_of(phrase, start_count: float, entry) -> list:
     for line in lines:
         values.append(values[-1] if line.target.unit == "hold" else amount(line.target, scale))
     start = seconds(Fraction(0))
-    steps.append((start, start, start, start, values[-1], "linear", []))
+    steps.append((start, start, start, start, values[-1], "linear", [], None))
     before = seconds(whole - lines[-1].offset.value)
     if before > start:
-        steps.append((start, start, before, before, None, "linear", []))
+        steps.append((start, start, before, before, None, "linear", [], None))
     for k in range(len(lines) - 1, 0, -1):
         knot = seconds(whole - lines[k - 1].offset.value)
         end = knot
@@ -140,7 +157,7 @@ def steps_of(phrase, start_count: float, entry) -> list:
             end = seconds_of(count_of(before) + float(lines[k].over.value) * stretch)
         shape = {"swell": "settle", "settle": "swell"}.get(lines[k].shape, lines[k].shape)
         controls = [values[k - 1] if c.unit == "hold" else amount(c, scale) for c in reversed(lines[k].controls)]
-        steps.append((before, before, end, knot, values[k - 1], shape, controls))
+        steps.append((before, before, end, knot, values[k - 1], shape, controls, quiver_of(lines[k], scale)))
         before = knot
     return steps
 
@@ -158,7 +175,7 @@ def move_of(a: float, b: float, begin: float, end: float, shape: str, controls: 
 
 def play(voice: Voice, value: float, cut: float) -> float:
     """Fill the voice's pieces, starting from `value`; returns the value at the cut or the end."""
-    for before, begin, end, knot, target, shape, controls in voice.steps:
+    for before, begin, end, knot, target, shape, controls, quiver in voice.steps:
         if before >= cut and not (voice.start == before == knot):
             break
         a, b = value, value if target is None else target
@@ -166,6 +183,9 @@ def play(voice: Voice, value: float, cut: float) -> float:
             begin = end
         elif shape == "sudden":
             begin = max(begin, end - abs(b - a) / (FILL if b > a else EXHAUST))
+        strikes = shape == "sudden" and abs(b - a) > 1e-12
+        if quiver and min(begin if strikes else knot, cut) > before + 1e-9:
+            voice.quivers.append((before, min(begin if strikes else knot, cut), *quiver))
         voice.pieces.append(Piece(before, min(begin, cut), lambda t, a=a: a))
         if begin < cut or begin == end == cut:
             stop = min(end, cut)
@@ -187,9 +207,10 @@ def order_of(entry, count: int) -> list[float]:
 
 
 def naive(score, rig, selector):
-    """For each fiber, its list of layers: each a list of pieces."""
+    """For each fiber, its list of layers, each a list of pieces; for each its quivers; the end."""
     voices = {f: [] for f in range(len(rig.fibers))}
     layers = {f: [] for f in range(len(rig.fibers))}
+    quivers = {f: [] for f in range(len(rig.fibers))}
     end = 0.0
     for section in score.sections:
         for entry in section.entries:
@@ -219,17 +240,19 @@ def naive(score, rig, selector):
         for k, (voice, length) in enumerate(mine):
             cut = mine[k + 1][0].start if k + 1 < len(mine) else math.inf
             if abs(cut - voice.start) < 1e-9:
-                return None, None
+                return None, None, None
             play(voice, reached(pieces, voice.start), cut)
             pieces += voice.pieces
+            quivers[f] += voice.quivers
             end = max(end, min(length, cut))
         stack = [pieces]
         for voice, length in layers[f]:
             play(voice, 0.0, math.inf)
             stack.append(voice.pieces)
+            quivers[f] += voice.quivers
             end = max(end, length)
         layers[f] = stack
-    return layers, end
+    return layers, quivers, end
 
 
 @settings(max_examples=250, deadline=None, suppress_health_check=list(HealthCheck))
@@ -238,7 +261,7 @@ def test_expansion_gives_the_strain_that_a_naive_one_gives_everywhere(make_rig, 
     rig = make_rig(4, stroke=STROKE, fill=FILL, exhaust=EXHAUST)
     abilities, selector = abilities_of(rig), Selector(rig, {})
     score = read_score(text, "law.score")
-    expected, end = naive(score, rig, selector)
+    expected, quivers, end = naive(score, rig, selector)
     try:
         tracks = expand(score, rig, abilities, selector)
     except Faults as wrong:
@@ -255,7 +278,7 @@ def test_expansion_gives_the_strain_that_a_naive_one_gives_everywhere(make_rig, 
         shares = np.array([0.001, 0.13, 0.5, 0.77, 0.999])
         times = (edges[wide, None] + np.diff(edges)[wide, None] * shares).ravel()
         ours = strain_at(tracks, abilities, times)[f]
-        theirs = [sum(reached(layer, t) for layer in stack) for t in times]
+        theirs = [sum(reached(layer, t) for layer in stack) + quivering(quivers[f], t) for t in times]
         np.testing.assert_allclose(ours, theirs, atol=2e-9)
 
         # What the format of tracks promises.
@@ -266,3 +289,6 @@ def test_expansion_gives_the_strain_that_a_naive_one_gives_everywhere(make_rig, 
         assert np.all(curve[manner == 0, 1:] == 0)
         assert np.all((lasts[mine][:-1] == 0) == (manner[:-1] == 3))
         np.testing.assert_allclose(curve[1:, 0], end_strain(tracks)[mine][:-1], atol=1e-12)
+    for knot, until in zip(tracks.quivers.knot, tracks.quivers.until, strict=True):
+        assert set(tracks.manner[knot:until].tolist()) <= {MOVE, STEP}
+        assert tracks.time_s[until] > tracks.time_s[knot]
