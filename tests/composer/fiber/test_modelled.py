@@ -3,7 +3,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from hypothesis import assume, event, given, settings
+from hypothesis import event, given, settings
 
 from composer.fiber.modelled import capability, physics_of
 from composer.fiber.problems import problems
@@ -19,7 +19,8 @@ def test_whatever_the_keys_say_is_a_problem_or_a_table_of_numbers(make, mounting
     for _, says, expected in found:
         assert not re.search(r"\b(nan|inf)\b", says + expected)
     event("a problem" if found else "a fiber")
-    assume(not found)
+    if found:
+        return
     able = capability(make, mounting)
     for table in (able.strain, able.fill, able.exhaust, able.air_L):
         assert np.all(np.isfinite(table))
