@@ -6,7 +6,6 @@ their ends are weighed in full, with the targets at each, and again closer. Each
 (tests hold the whole against an exhaustive one). Where no moves lead on, closer places are added until they do.
 """
 
-from dataclasses import replace
 
 import numpy as np
 
@@ -25,8 +24,8 @@ CLOSE = 1.0
 ROUNDS_S = ((0.12, 0.03), (0.03, 0.015), (0.015, 0.006))
 """How far about the knots found so far each further search weighs places, and how close together, in s."""
 
-REPAIRS = 4
-"""How often closer places are added before targets too are weighed closer together."""
+REPAIRS = 2
+"""How often places are added before still closer ones are, and rates no longer count there, and targets lie closer together."""
 
 BATCH = 1 << 21
 """Values of series that are fitted together."""
@@ -104,32 +103,30 @@ def _joined(played: Played, tempo: TempoMap, tried: list[Index], watched: list[A
     """The fewest moves over places that are tried, more being added where they break off."""
     paths: list[Path | None] = [None] * len(tried)
     left = list(range(len(tried)))
-    fine = 1.0
+    free: list[Index] = [np.empty(0, np.int64)] * len(tried)
     close: Places | None = None
     for repair in range(3 * REPAIRS):
         some = played.part(left)
-        if repair >= REPAIRS:
-            some = replace(some, rest_s=np.zeros(len(left)))
-        if repair >= 2 * REPAIRS:
-            # Nothing that the rates allow keeps so close: what is left over is for the check to find.
-            some = replace(some, up=np.full_like(some.up, np.inf), down=np.full_like(some.down, np.inf))
+        fine = 10.0 ** max(0, repair - 2 * REPAIRS + 1)
         places = places_of(some, tempo, COARSE, only=[tried[k] for k in left], fine=fine)
+        places.free[:] = np.concatenate([np.isin(_of_series(places, n), free[k]) for n, k in enumerate(left)])
         found, breaks = fewest(places, moves_of(some, places, likely(some, places), [watched[k] for k in left]))
         for k, path in zip(left, found, strict=True):
             paths[k] = path
         if not len(breaks):
             return paths
         broken = places.series[breaks]
-        if close is None or repair == 3:
-            close = places_of(played, tempo, COARSE if repair < 3 else CLOSE)
-        reach = 1 + repair // 2
+        if close is None or repair == REPAIRS:
+            close = places_of(played, tempo, COARSE if repair < REPAIRS else CLOSE)
         for at, series in zip(breaks, broken, strict=True):
             k = left[series]
             first, last = places.first[series], places.first[series + 1] - 1
-            low, high = places.place[max(first, at - reach)], places.place[min(last, at + 1 + reach)]
+            low, high = places.place[max(first, at - 2)], places.place[min(last, at + 3)]
             mine = _of_series(close, k)
-            tried[k] = np.union1d(tried[k], mine[(mine > low) & (mine < high)])
+            mine = mine[(mine > low) & (mine < high)]
+            tried[k] = np.union1d(tried[k], mine)
+            if repair >= REPAIRS:
+                # Nothing that the rates allow keeps so close: what is left over is for the check to find.
+                free[k] = np.union1d(free[k], np.concatenate([mine, places.place[max(first, at - 2) : at + 3]]))
         left = [left[series] for series in np.unique(broken)]
-        if repair >= REPAIRS:
-            fine = 10.0 ** ((repair - REPAIRS) // 2 + 1)
     raise Unfitted(f"no moves lead through series {left}")

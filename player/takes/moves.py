@@ -1,6 +1,8 @@
 """Which single moves stay within the slack of what was played, from which target at which place to which at which."""
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from itertools import product
 
 import numpy as np
 from numpy.typing import NDArray
@@ -28,8 +30,11 @@ ROUGH = 1.3
 EVEN = 8
 """Instants of a move at even distances at which it is held against what was played, besides those that are watched."""
 
-GOING = 40
+GOING = 32
 """Instants of a sudden move while it goes."""
+
+SUDDENS = 2048
+"""Sudden moves worked out at once."""
 
 BLOCK = 1 << 17
 """Values worked out at once."""
@@ -38,7 +43,7 @@ ROOM = 0.97
 """Of the slack: what lies between the instants looked at may be worse than they are by the rest."""
 
 NOT_QUITE = 0.995
-"""Of the fastest rate: rates are looked up where the fiber was, not where the curve is."""
+"""Of the fastest rate: rates are looked up at some instants, and between the strains of a table."""
 
 FLAT = 2.0
 """Slacks: over so short a way every shape is as good as a straight line."""
@@ -103,8 +108,11 @@ def roughly(played: Played, places: Places, pairs: Likely) -> Moves:
             good[part] = np.all(np.abs(curve - met) <= room, axis=0)
     for series in np.unique(places.series[sources[shapes == SUDDEN]]):
         mine = np.flatnonzero((shapes == SUDDEN) & (places.series[sources] == series))
-        off, _ = _sudden_off(played, places, played.clocks[series], sources[mine], targets[mine], None, None)
-        good[mine] = np.max(np.abs(off), axis=1) <= ROUGH * places.slack[targets[mine]]
+        for up in (True, False):
+            part = mine[(places.share[targets[mine]] > places.share[sources[mine]]) == up]
+            if len(part):
+                way = _Sudden(played, places, played.clocks[series], sources[part], targets[part], up)
+                good[part] = np.all(np.abs(way.curve(way.b)(way.a) - way.met) <= ROUGH / ROOM * way.slack, axis=1)
     masks = np.zeros((int(good.sum()), LEVELS), dtype=np.uint8)
     masks[:, 0] = 1
     return Moves(sources[good], targets[good], shapes[good], masks)
@@ -161,13 +169,11 @@ def _arrives_fast(played: Played, places: Places) -> NDArray[np.bool_]:
     before = 4.0 * played.step_s
     was = played.at(played.share, places.series, places.time_s - before)
     was_then = played.at(played.share, places.series, places.time_s - 2.0 * before)
-    speed = np.where(
-        np.abs(places.share - was) > np.abs(was - was_then), places.share - was, was - was_then
-    ) / before  # fmt: skip
-    up = played.nearest(played.up, places.series, places.time_s - before)
-    down = played.nearest(played.down, places.series, places.time_s - before)
+    late, soon = places.share - was, was - was_then
+    speed = np.where(np.abs(late) > np.abs(soon), late, soon) / before
+    fastest = played.rates_at(places.series, places.share, speed > 0.0)
     may = np.array([clock is not None for clock in played.clocks])[places.series]
-    return may & ((speed > FAST * up) | (-speed > FAST * down))
+    return may & (np.abs(speed) > FAST * fastest)
 
 
 def _fitting(played: Played, places: Places, source: Index, target: Index, shape: str, watch: "_Watch") -> tuple:
@@ -224,17 +230,20 @@ def _masks(
     gone = _progress(shape, u)
     weight = np.maximum(gone, 1e-9)
     steepest = _speed(shape, u) + 1e-9
-    up = lasts * (played.nearest(played.up, series[:, None], when) / steepest).min(axis=1) * NOT_QUITE
-    down = lasts * (played.nearest(played.down, series[:, None], when) / steepest).min(axis=1) * NOT_QUITE
+    # Rates are looked up where the curve is that goes from what was played to what was played.
+    way = places.share[target] - places.share[source]
+    fastest = played.rates_at(series[:, None], places.share[source][:, None] + way[:, None] * gone, (way > 0.0)[:, None])
+    reach = lasts * (fastest / steepest).min(axis=1) * NOT_QUITE
+    reach[places.free[source]] = np.inf
     bend = played.bend[series] * lasts**2 / max(PEAK_ACCELERATION[number], 1e-12) * NOT_QUITE
-    up, down = np.minimum(up, bend), np.minimum(down, bend)
+    reach = np.minimum(reach, bend)[:, None]
 
     levels = _levels(places, source)
     # (1 - w) a + w b within the slack of what was played, at every instant, is a bound on b for each a.
     top = ((met + slack) / weight)[:, None, :] - levels[:, :, None] * ((1.0 - gone) / weight)[:, None, :]
     bottom = top - (2.0 * slack / weight)[:, None, :]
-    high = np.minimum(top.min(axis=2), levels + up[:, None])
-    low = np.maximum(bottom.max(axis=2), levels - down[:, None])
+    high = np.minimum(top.min(axis=2), levels + reach)
+    low = np.maximum(bottom.max(axis=2), levels - reach)
     grain, lowest = places.grain[target][:, None], places.lowest[target][:, None]
     first = np.clip(np.ceil(np.nan_to_num(low, nan=1e9) / grain - 1e-9) - lowest, 0, LEVELS)
     last = np.clip(np.floor(np.nan_to_num(high, nan=-1e9) / grain + 1e-9) - lowest, -1, places.many[target][:, None] - 1)
@@ -261,50 +270,67 @@ def _levels(places: Places, source: Index) -> Array:
 def _suddens(played: Played, places: Places, source: Index, target: Index) -> tuple:
     """The sudden moves that fit: they wait, then go as fast as the fiber goes and arrive at the place."""
     masks = np.zeros((len(source), LEVELS), dtype=np.uint8)
-    for series in np.unique(places.series[source]):
-        clock = played.clocks[series]
-        mine = np.flatnonzero(places.series[source] == series)
-        if clock is None:
-            continue
-        # First with the values that were played, twice the slack being allowed.
-        off, _ = _sudden_off(played, places, clock, source[mine], target[mine], None, None)
-        room = 2.0 * places.slack[target[mine]]
-        mine = mine[np.max(np.abs(off), axis=1) <= room]
-        if not len(mine):
-            continue
-        starts, stops = _levels(places, source[mine]), _levels(places, target[mine])
-        slack = ROOM * places.slack[target[mine]]
-        for a in range(LEVELS):
-            for b in range(LEVELS):
-                some = np.flatnonzero(~np.isnan(starts[:, a]) & ~np.isnan(stops[:, b]))
-                some = some[np.abs(starts[some, a] - stops[some, b]) > 2.0 * places.slack[target[mine[some]]]]
-                if not len(some):
-                    continue
-                here = mine[some]
-                off, in_time = _sudden_off(played, places, clock, source[here], target[here], starts[some, a], stops[some, b])
-                fits = in_time & (np.max(np.abs(off), axis=1) <= slack[some])
-                masks[here[fits], a] |= np.uint8(1 << b)
+    rising = places.share[target] > places.share[source]
+    for series, up in product(np.unique(places.series[source]), (True, False)):
+        mine = np.flatnonzero((places.series[source] == series) & (rising == up))
+        for begin in range(0, len(mine), SUDDENS):
+            part = mine[begin : begin + SUDDENS]
+            way = _Sudden(played, places, played.clocks[series], source[part], target[part], up)
+            # First with the values that were played, twice the slack being allowed.
+            near = np.all(np.abs(way.curve(way.b)(way.a) - way.met) <= 2.0 * way.slack, axis=1)
+            if near.any():
+                masks[part[near]] = way.of(near).masks(places)
     good = np.flatnonzero(masks.any(axis=1))
     return source[good], target[good], np.full(len(good), SUDDEN, dtype=np.int8), masks[good]
 
 
-def _sudden_off(
-    played: Played, places: Places, clock: Clock, source: Index, target: Index, a: Array | None, b: Array | None
-) -> tuple[Array, NDArray[np.bool_]]:
-    """How far a sudden move from a to b is off what was played at some instants, (E, n), and whether it has the time."""
-    a = places.share[source] if a is None else a
-    b = places.share[target] if b is None else b
-    lasts = places.time_s[target] - places.time_s[source]
-    ends = np.interp(np.stack([a, b]), clock.share, clock.up_s), np.interp(np.stack([a, b]), clock.share, clock.down_s)
-    takes = np.where(b > a, ends[0][1] - ends[0][0], ends[1][0] - ends[1][1])
-    # Some instants over the whole of it, and more from just before it sets out.
-    going = np.minimum(1.2 * takes, lasts)[:, None] * (np.arange(GOING) + 0.5) / GOING
-    left = np.concatenate([going, lasts[:, None] * (np.arange(EVEN) + 0.5) / EVEN], axis=1)
-    rising = (b > a)[:, None]
-    up, down = ends[0][1][:, None], ends[1][1][:, None]
-    climbing = np.maximum(np.interp(up - left, clock.up_s, clock.share), a[:, None])
-    falling = np.minimum(np.interp(down + left, clock.down_s, clock.share), a[:, None])
-    curve = np.where(rising, climbing, falling)
-    when = places.time_s[target][:, None] - left
-    met = played.at(played.share, places.series[source][:, None], when)
-    return curve - met, takes <= lasts - np.maximum(1e-4 * lasts, played.rest_s[places.series[source]])
+class _Sudden:
+    """Some sudden moves of one series, one way, held against what was played at some instants over the whole of each and at
+    more while it goes."""
+
+    def __init__(self, played: Played, places: Places, clock: Clock, source: Index, target: Index, up: bool):
+        self.clock_s, self.share, self.up = (clock.up_s if up else clock.down_s), clock.share, up
+        self.source, self.target, series = source, target, places.series[source]
+        self.a, self.b = places.share[source], places.share[target]
+        self.lasts = places.time_s[target] - places.time_s[source]
+        self.rest = played.rest_s[series]
+        going = np.minimum(1.3 * self.takes(self.a, self.b) + 0.01, self.lasts)[:, None] * (np.arange(GOING) + 0.5) / GOING
+        self.left = np.concatenate([going, self.lasts[:, None] * (np.arange(EVEN) + 0.5) / EVEN], axis=1)
+        when = places.time_s[target][:, None] - self.left
+        self.met = played.at(played.share, series[:, None], when)
+        self.slack = ROOM * np.broadcast_to(played.slack_at(series[:, None], when), self.met.shape)
+
+    def of(self, some: NDArray[np.bool_]) -> "_Sudden":
+        """Some of them."""
+        fewer = object.__new__(_Sudden)
+        fewer.clock_s, fewer.share, fewer.up = self.clock_s, self.share, self.up
+        for name in ("source", "target", "a", "b", "lasts", "rest", "left", "met", "slack"):
+            setattr(fewer, name, getattr(self, name)[some])
+        return fewer
+
+    def takes(self, a: Array, b: Array) -> Array:
+        """Seconds from a to b, below 0 the other way."""
+        from_s, to_s = np.interp(a, self.share, self.clock_s), np.interp(b, self.share, self.clock_s)
+        return to_s - from_s if self.up else from_s - to_s
+
+    def curve(self, b: Array) -> Callable[[Array], Array]:
+        """The curve that arrives at b, as a function of where it sets out."""
+        clock = np.interp(b, self.share, self.clock_s)[:, None]
+        on_way = np.interp(clock - self.left if self.up else clock + self.left, self.clock_s, self.share)
+        return lambda a: (np.maximum if self.up else np.minimum)(on_way, a[:, None])
+
+    def masks(self, places: Places) -> NDArray[np.uint8]:
+        """For each target that they set out from, the targets at which they may arrive, as bits."""
+        starts, stops = _levels(places, self.source), _levels(places, self.target)
+        masks = np.zeros(starts.shape, dtype=np.uint8)
+        far = 2.0 * places.slack[self.target]
+        with np.errstate(invalid="ignore"):
+            for b in range(LEVELS):
+                arriving = self.curve(stops[:, b])
+                for a in range(LEVELS):
+                    takes = self.takes(starts[:, a], stops[:, b])
+                    fits = (np.abs(starts[:, a] - stops[:, b]) > far) & (takes > 0.0)
+                    fits &= takes <= self.lasts - np.maximum(1e-4 * self.lasts, self.rest)
+                    fits &= np.all(np.abs(arriving(starts[:, a]) - self.met) <= self.slack, axis=1)
+                    masks[fits, a] |= np.uint8(1 << b)
+        return masks

@@ -4,6 +4,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.ndimage import maximum_filter1d
 
 from composer.score.tempo import TempoMap
@@ -43,6 +44,7 @@ class Places:
 
     first: (S + 1,); series, place, time_s, share, slack: (N,) `place` in UNITs of a count
     grain: (N,) distance of the targets that are weighed; lowest: (N,) the lowest of them over its grain; many: (N,) how many
+    free: (N,) where moves begin whose rates do not count
     """
 
     first: Index
@@ -54,6 +56,7 @@ class Places:
     grain: Array
     lowest: Index
     many: Index
+    free: NDArray[np.bool_]
 
     def targets(self) -> Array:
         """The targets that are weighed at each place, (N, LEVELS), nan where there are no more."""
@@ -95,7 +98,7 @@ def places_of(played: Played, tempo: TempoMap, closeness: float, only: list[Inde
     many = np.clip(high - low + 1, 0, LEVELS)
     share[first[:-1]] = played.start
     many[first[:-1]] = 1
-    return Places(first, series, place, time, share, slack, grain, low.astype(np.int64), many.astype(np.int64))
+    return Places(first, series, place, time, share, slack, grain, low.astype(np.int64), many.astype(np.int64), np.zeros(len(place), bool))
 
 
 def round_number(value: Array) -> Array:

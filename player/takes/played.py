@@ -9,6 +9,9 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 
+RATES = 513
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Clock:
     """Seconds from rest to a share of stroke, and from it back to rest, as fast as a fiber goes: (G,) each."""
@@ -23,7 +26,7 @@ class Played:
     """S series on a grid of M instants, `begin_s` and then every `step_s`.
 
     share: (S, M) of usable stroke; slack: (S, M) by how much a curve may miss it
-    up, down: (S, M) the fastest rates there, share a second; bend: (S,) the greatest acceleration, share a s²
+    up, down: (S, RATES) the fastest rates at shares from 0 to 1, share a second; bend: (S,) the greatest acceleration, share a s²
     start: (S,) where the curve begins, exactly; clocks: for each series, None where it may not go `sudden`
     rest_s: (S,) holds that are shorter are not wanted; watch: for each series, instants at which a curve is to be held
         against it besides those that its own corners ask for
@@ -70,6 +73,11 @@ class Played:
         if self.even:  # as a rule
             return self.slack.ravel()[series * self.slack.shape[1]]
         return self.nearest(self.slack, series, time_s)
+
+    def rates_at(self, series: Index, share: Array, rising: NDArray[np.bool_]) -> Array:
+        """The fastest rates, share a second, at some shares of stroke; shapes broadcast."""
+        at = series * RATES + np.clip(share * (RATES - 1) + 0.5, 0.0, RATES - 1).astype(np.int64)
+        return np.stack([self.down.ravel(), self.up.ravel()])[rising.astype(np.int64), at]
 
     def nearest(self, values: Array, series: Index, time_s: Array) -> Array:
         """As `at`, of the nearest instant of the grid."""

@@ -27,11 +27,11 @@ ROUNDS = 12
 WATCHED = 1
 """So many rounds it is enough to look at more instants; after that the slack falls too."""
 
-TIGHTER, LEAST = 0.8, 1e-4
+TIGHTER, LEAST = 0.8, 0.1
 """By how much the slack of such a passage falls, and to what share of the tolerance at least."""
 
 SLOWER = 0.995
-"""By how much the rates of a passage that is too fast fall, besides what it is too fast by."""
+"""By how much the rates of a voice fall that is too fast somewhere, once looking at more instants is not enough."""
 
 SPARE = 1.05
 """A hold lasts at least so much longer than a valve takes to switch, once one was too short."""
@@ -197,10 +197,9 @@ class _Settling:
 
     def _tightened(self, settled: Settled, off: dict[int, Array]) -> dict[int, list[Array]]:
         """Make the slack smaller, or the rates lower, where something does not hold; the voices that are concerned, and instants."""
-        slack, up, down = self.played.slack.copy(), self.played.up.copy(), self.played.down.copy()
-        rest = self.played.rest_s.copy()
+        slack, rest, watch = self.played.slack.copy(), self.played.rest_s.copy(), list(self.played.watch)
+        ease = np.ones(len(slack))
         concerned: dict[int, list[Array]] = {}
-        watch = list(self.played.watch)
         for number, far in off.items():
             watch[number] = np.union1d(watch[number], self.grid_s[far])
             if self.round > WATCHED:
@@ -212,26 +211,21 @@ class _Settling:
             for number in numbers:
                 if number is None:
                     continue
-                concerned.setdefault(number, []).append(np.linspace(snag.from_s, snag.to_s, 9))
-                for span in self._moves_between(settled.paths[number], snag):
-                    if snag.kind in ("rate", "accel"):
-                        by = SLOWER * snag.has / snag.needs
-                        up[number, span] *= max(by, 0.5)
-                        down[number, span] *= max(by, 0.5)
-                    elif snag.kind == "switching" and rest[number] == 0.0:
-                        rest[number] = SPARE / snag.has
-                    else:
+                instants = np.linspace(snag.from_s, snag.to_s, 9)
+                concerned.setdefault(number, []).append(instants)
+                if snag.kind in ("rate", "accel"):
+                    watch[number] = np.union1d(watch[number], instants)
+                    ease[number] = SLOWER if self.round > WATCHED else 1.0
+                elif snag.kind == "switching" and rest[number] == 0.0:
+                    rest[number] = SPARE / snag.has
+                else:
+                    for span in self._moves_between(settled.paths[number], snag):
                         slack[number, span] *= TIGHTER
-        slack = np.maximum(slack, LEAST * self.tolerance)
         self.played = replace(
-            self.played,
-            slack=slack,
-            up=up,
-            down=down,
-            rest_s=rest,
-            watch=tuple(watch),
+            self.played, slack=np.maximum(slack, LEAST * self.tolerance), rest_s=rest, watch=tuple(watch),
+            up=self.played.up * ease[:, None], down=self.played.down * ease[:, None], bend=self.played.bend * ease,
             even=bool(np.all(slack == slack[:, :1])),
-        )
+        )  # fmt: skip
         return concerned
 
     def _moves_at(self, path: Path, time_s: Array) -> list[slice]:

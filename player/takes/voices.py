@@ -9,12 +9,11 @@ from composer.limits.tables import rates, travel_time_s
 from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, SAME_INSTANT_S, SUDDEN, Tracks
 from player.takes.fewest import Path
-from player.takes.played import Array, Clock, Index, Played
+from player.takes.played import RATES, Array, Clock, Index, Played
 
 ALIKE = 0.3
 """A share of the tolerance: fibers that differ by no more than this play one phrase."""
 
-CLOCK_POINTS = 513
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -85,13 +84,14 @@ def played_of(
     """
     leaders = [leader_of(voice) for voice in voices]
     curves = share
-    up, down = np.full(curves.shape, np.inf), np.full(curves.shape, np.inf)
+    grid = np.linspace(0.0, 1.0, RATES)
+    up, down = np.full((len(voices), RATES), np.inf), np.full((len(voices), RATES), np.inf)
     bend, slack, clocks = np.empty(len(voices)), np.empty(len(voices)), []
     for row, voice in enumerate(voices):
         kinds = {(abilities.which[f], s): int(f) for f, s in zip(voice.fibers, voice.scales, strict=True)}
         for (_, scale), fiber in kinds.items():
             unit = scale * abilities.stroke[fiber]
-            strain = curves[row] * unit
+            strain = grid * unit
             each = np.full(strain.shape, fiber)
             up[row] = np.minimum(up[row], rates(abilities, each, strain, np.ones(strain.shape, bool)) / unit)
             down[row] = np.minimum(down[row], rates(abilities, each, strain, np.zeros(strain.shape, bool)) / unit)
@@ -105,9 +105,9 @@ def played_of(
 
 
 def _clock(abilities: Abilities, fiber: int) -> Clock:
-    share = np.linspace(0.0, 1.0, CLOCK_POINTS)
-    strain, rest = share * abilities.stroke[fiber], np.zeros(CLOCK_POINTS)
-    each = np.full(CLOCK_POINTS, fiber)
+    share = np.linspace(0.0, 1.0, RATES)
+    strain, rest = share * abilities.stroke[fiber], np.zeros(RATES)
+    each = np.full(RATES, fiber)
     return Clock(share, travel_time_s(abilities, each, rest, strain), travel_time_s(abilities, each, strain, rest))
 
 
