@@ -1,7 +1,12 @@
 """What quivers ask of fibers on top of a move: least durations with them, and what no duration mends.
 
-Over a period a quiver of amplitude A and w = 2 pi f runs round in strain and rate. With its fades it never leaves the
-region |rate| <= w A, |strain| <= A (1 + sqrt(1 - (rate / w A)²)) / 2, and comes to every point of its border at some phase. A
+Over a period a quiver of amplitude A and w = 2 pi f runs round in strain and rate, a circle in strain / A and rate / w A but
+for its fades. With c = sqrt(1 - (rate / w A)²) its strain over A is
+
+    while it rises   from -(1 + c) / 2 to (1 + c) / 2
+    while it falls   from -c to (1 + c) / 2
+
+and at some phase it comes to each of these ends: a quiver fades in upwards, and as it fades out it comes back from nearer. A
 move is judged as if it met the quiver at its worst phase at every instant and in full, so that what is in order stays so
 at any tempo: its rate plus the quiver's within what the fiber can do at the strain of both, and the quiver's alone as
 well, which is all that is left of the two in the slowest of performances. Sums of several quivers are taken at their
@@ -18,7 +23,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.alike import alike
 from composer.limits.limit import TOLERANCE
 from composer.limits.polynomials import derivative, extremes, value
-from composer.limits.tables import cells, rates
+from composer.limits.tables import rates
 from composer.quivers import pairs
 from composer.tracks import MOVE, Tracks
 
@@ -28,6 +33,9 @@ Index = NDArray[np.int64]
 TURNS = 57
 """Points of a quarter of the border: the rate left is at most 1e-4 of the quiver's own above the least."""
 
+FLAT = 9
+"""Points of the border at the greatest rate."""
+
 SAMPLES, ZOOM, ZOOMS = 65, 17, 3
 """Samples of a move's time, and of each of the narrower windows round the worst of them."""
 
@@ -35,14 +43,16 @@ ROWS = 128
 """Moves worked out at a time."""
 
 
-def _border(alone: bool) -> tuple[Array, Array]:
-    """Strains over A and rates over w A, both ways of the first and one way of the second, at the worst phases."""
+def _border(alone: bool) -> tuple[Array, Array, Array]:
+    """Strains over A at the worst phases of rising and of falling, and the rates over w A there, either way as positive."""
     if not alone:
-        return np.linspace(-1.0, 1.0, 2 * TURNS), np.ones(2 * TURNS)
+        box = np.linspace(-1.0, 1.0, 2 * TURNS)
+        return box, box, np.ones(2 * TURNS)
     turn = np.linspace(0.0, 0.5 * np.pi, TURNS)
-    strain, rate = 0.5 * (1.0 + np.cos(turn)), np.sin(turn)
-    flat = np.array([-0.25, 0.0, 0.25])
-    return np.concatenate([strain, -strain, flat]), np.concatenate([rate, rate, np.ones(3)])
+    wide, flat = 0.5 * (1.0 + np.cos(turn)), np.linspace(-0.5, 0.5, FLAT)
+    rising = np.concatenate([wide, -wide, flat])
+    falling = np.concatenate([wide, -np.cos(turn), 0.5 * (flat + 0.5)])
+    return rising, falling, np.concatenate([np.sin(turn), np.sin(turn), np.ones(FLAT)])
 
 
 BORDERS = {alone: _border(alone) for alone in (True, False)}
@@ -179,15 +189,14 @@ class _Left:
 
 
 def _left(abilities: Abilities, fiber: Index, strain: Array, reach: Array, speed: Array, alone: bool) -> _Left:
-    strains, swings = BORDERS[alone]
-    at = strain[:, :, None] + reach[:, None, None] * strains
-    fibers = np.broadcast_to(fiber[:, None, None], at.shape)
-    cell = cells(abilities, fibers, at)
-    swing = np.broadcast_to(speed[:, None, None] * swings, at.shape)
+    *both, swings = BORDERS[alone]
+    shape = (*strain.shape, len(swings))
+    fibers = np.broadcast_to(fiber[:, None, None], shape)
+    swing = np.broadcast_to(speed[:, None, None] * swings, shape)
     found: list[Array] = []
     shares = []
-    for rising in (True, False):
-        limit = rates(abilities, fibers, at, np.full(at.shape, rising), cell)
+    for rising, strains in zip((True, False), both, strict=True):
+        limit = rates(abilities, fibers, strain[:, :, None] + reach[:, None, None] * strains, np.full(shape, rising))
         left = limit - swing
         worst = left.argmin(axis=2)[:, :, None]
         found += [np.take_along_axis(values, worst, 2)[:, :, 0] for values in (left, swing)]
