@@ -7,6 +7,7 @@ knows no terminal and no command line: it is given a source, outputs and a clock
 from collections import deque
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -61,6 +62,7 @@ class Engine:
     """One run, from pre-flight to the end. `ask` may be called from a signal's handler or another thread at any moment.
 
     returns: whether somebody is there who can have everything brought back after a fault; else a fault ends the run
+    returns_from: after which endings, beside a fault, everything can be brought back: none, but a hand plays on after a rest
     """
 
     def __init__(
@@ -77,6 +79,8 @@ class Engine:
         """`abilities` of the rig, where they are known already; `trims`: pressure set-points follow what is sensed, slowly."""
         self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
         self.returns = False
+        self.returns_from: tuple[str, ...] = ("fault",)
+        self._leaving = False
         self.safety = Safety()
         self.lateness = Lateness()
         self.boards = Boards(outputs)
@@ -132,7 +136,7 @@ class Engine:
                 self._become("play", lambda: self.source.start(from_s))
                 with no_collecting():
                     yield from self._ticks()
-                    while self.returns and self._account.how == "fault" and self.source.resumes:
+                    while self._may_return():
                         yield from self._stand_by()
                         if self.safety.state != "armed":
                             break
@@ -175,6 +179,17 @@ class Engine:
             tick += 1
             yield self.status(late)
 
+    def _may_return(self) -> bool:
+        return self.returns and not self._leaving and self._account.how in self.returns_from and self.source.resumes
+
+    def note(self, kind: str, **told: Any) -> None:
+        """A record of the source's own in the run's log, where one is kept."""
+        self._diary.tell(kind, self.source.position_s, **told)
+
+    def tell(self, say: str) -> None:
+        """Something for the operator to hear, with the next snapshot."""
+        self._account.tell(say)
+
     def _stand_by(self) -> Iterator[Status]:
         """After a fault, all at rest or vented: wait until the operator has had everything brought back, or ends the run."""
         self._account.tell(STAND_BY_SAID)
@@ -186,11 +201,12 @@ class Engine:
             asked = [self._asked.popleft().kind for _ in range(len(self._asked))]
             for kind in asked:
                 self._diary.tell("command", self.source.position_s, command=kind, value=0.0)
-            if any(kind in ("stop", "rest") for kind in asked):
+            if "stop" in asked or ("rest" in asked and "stopped" not in self.returns_from):
                 return
             if "vent" in asked:
                 self._stop("vented", "vented by the operator", "vent")
-                return
+                if "vented" not in self.returns_from:
+                    return
             if "bring_back" in asked and self._brought_back(down_s):
                 return
             yield self.status()
@@ -265,6 +281,7 @@ class Engine:
     def _do(self, command: Command) -> None:
         kind = command.kind
         if kind == "stop":
+            self._leaving = True
             kind = "vent" if self.safety.state == "resting" else "rest"
         if kind == "next_cue":
             if self.source.next_cue is None:

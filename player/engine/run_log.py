@@ -17,6 +17,8 @@ little-endian:
     11 supply   driver:u16, kPa × 10:u16: what a board's sensor of the supply reads
     12 layout   JSON: {"layout", "fibers"}: which fibers a sense is of, written before the first such sense
     13 alarm    JSON: {"alarm", "fiber", "does", "say"}: sensed strain shows that something is wrong
+    14 input    JSON: {"source", "what", "value"}: what a controller or another program sent, as it was understood
+    15 cut      JSON: {"why", "fibers", "by"}: what the governor holds back: indices of fibers, and strain of the worst
 
 A set takes at most twice the bytes that it has on the wire, a sense and a supply less than that.
 """
@@ -47,6 +49,8 @@ KINDS = {
     11: "supply",
     12: "layout",
     13: "alarm",
+    14: "input",
+    15: "cut",
 }
 _NUMBERS = {name: number for number, name in KINDS.items()}
 _SET = struct.Struct("<i3sI")

@@ -14,7 +14,10 @@ Array = NDArray[np.float64]
 
 
 class Sensing:
-    """One for a run; `trim` is None unless set-points are to be corrected; `last`: (F,) strain as last sensed, or 0."""
+    """One for a run; `trim` is None unless set-points are to be corrected; `last`: (F,) strain as last sensed, or 0.
+
+    supply_kPa: of each driver whose board has a sensor of it
+    """
 
     def __init__(self, rig: Rig, abilities: Abilities, trims: bool = False):
         self.errors = Errors(len(rig.fibers))
@@ -26,11 +29,13 @@ class Sensing:
         self._stroke = abilities.stroke
         self._least_kPa = rig.supply.min_pressure_kPa
         self._low: set[str] = set()
+        self.supply_kPa: dict[str, float] = {}
         self.last = np.zeros(len(rig.fibers))
 
     def sense(self, event: Event, watched: bool) -> list[tuple[Raised, str, str]]:
         """What an event shows: new alarms, each with the driver and the sentence. Only the largest error unless `watched`."""
         if event.kind == "supply":
+            self.supply_kPa[event.driver] = event.kPa
             return self._supply(event) if watched else []
         self.last[event.fibers] = event.strain
         self.errors.sense(event.time_s, event.fibers, event.strain)
