@@ -30,26 +30,67 @@ class Unsolved(Exception):
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Arcs:
-    """C arcs over n nodes: matrix (C, n) csr, what each asks of the shifts; least_s; lowest, most (C,) bounds of its force.
+    """C arcs over n nodes: what each asks of the shifts, and the bounds of its force.
 
-    An arc with bounds 0 and inf is a row `matrix @ shift >= least_s`; with a finite bound a row that may be broken at that
-    price; from -w to w, with least 0, a cost `w * |matrix @ shift|`.
+    later, earlier: nodes whose difference is asked for, -1 for what stands still; least_s; lowest, most: bounds of force
+
+    An arc with bounds 0 and inf is a row `shift[later] - shift[earlier] >= least_s`; with a finite bound a row that may be
+    broken at that price; from -w to w, with least 0, a cost `w * |shift[later] - shift[earlier]|`.
     """
 
-    matrix: sparse.csr_array
+    later: Index
+    earlier: Index
     least_s: Array
     lowest: Array
     most: Array
 
 
-def circulate(arcs: Arcs, limit_s: float = np.inf) -> tuple[Array, Array] | None:
-    """The forces (C,) and shifts (n,) at the optimum; None where no shifts keep the rows.
+@dataclass(frozen=True, slots=True, eq=False)
+class Wide:
+    """W further rows of any number of nodes: matrix (W, n) csr, least_s, and the price at which each may be broken."""
+
+    matrix: sparse.csr_array
+    least_s: Array
+    most: Array
+
+
+def merged(arcs: Arcs, nodes: int) -> tuple[Arcs, Index, Array]:
+    """The arcs, those that ask the same of the same nodes made one, and for each arc given its group and its share of force.
+
+    Of rows between the same two nodes only the one that asks most can hold; rows that may be broken add up their prices.
+    """
+    hard = np.isinf(arcs.most)
+    pair = (arcs.later + 1) * (nodes + 1) + arcs.earlier + 1
+    kind = np.where(hard, 0, np.where(arcs.lowest < 0.0, 1, 2))
+    order = np.lexsort((-arcs.least_s, pair * 3 + kind))
+    key, least = (pair * 3 + kind)[order], arcs.least_s[order]
+    new = np.ones(len(order), dtype=bool)
+    new[1:] = (key[1:] != key[:-1]) | (~hard[order][1:] & (least[1:] != least[:-1]))
+    group = np.empty(len(order), dtype=np.int64)
+    group[order] = np.cumsum(new) - 1
+    first = order[new]
+    share = np.zeros(len(order))
+    share[first] = 1.0
+    soft = np.flatnonzero(~hard)
+    count = len(first)
+    most, lowest = np.full(count, np.inf), np.zeros(count)
+    total = np.bincount(group[soft], weights=arcs.most[soft], minlength=count)
+    share[soft] = arcs.most[soft] / total[group[soft]]
+    some = np.bincount(group[soft], minlength=count) > 0
+    most[some] = total[some]
+    lowest[some] = np.bincount(group[soft], weights=arcs.lowest[soft], minlength=count)[some]
+    return Arcs(arcs.later[first], arcs.earlier[first], arcs.least_s[first], lowest, most), group, share
+
+
+def circulate(arcs: Arcs, wide: Wide, nodes: int, limit_s: float = np.inf) -> tuple[Array, Array, Array] | None:
+    """The forces of arcs (C,) and wide rows (W,) and the shifts (nodes,) at the optimum; None where no shifts keep the rows.
 
     Raises Unsolved where HiGHS fails or runs past `limit_s`.
     """
-    count, nodes = arcs.matrix.shape
-    if not count or not nodes:
-        return np.zeros(count), np.zeros(nodes)
+    count = len(arcs.least_s)
+    if not count + len(wide.least_s) or not nodes:
+        return np.zeros(count), np.zeros(len(wide.least_s)), np.zeros(nodes)
+    few, group, share = merged(arcs, nodes)
     solver = _Quiet()
     options: dict[str, object] = {
         "primal_feasibility_tolerance": TOLERANCE,
@@ -65,7 +106,7 @@ def circulate(arcs: Arcs, limit_s: float = np.inf) -> tuple[Array, Array] | None
         options["time_limit"] = max(limit_s, 1e-3)
     for name, value in options.items():
         solver.setOptionValue(name, value)
-    solver.passModel(_model(arcs, count, nodes))
+    solver.passModel(_model(few, wide, nodes))
     solver.run()
     status = solver.getModelStatus()
     if status in (highspy.HighsModelStatus.kUnbounded, highspy.HighsModelStatus.kUnboundedOrInfeasible):
@@ -73,7 +114,8 @@ def circulate(arcs: Arcs, limit_s: float = np.inf) -> tuple[Array, Array] | None
     if status != highspy.HighsModelStatus.kOptimal:
         raise Unsolved(status.name, solver.modelStatusToString(status))
     found = solver.getSolution()
-    return np.array(found.col_value), -np.array(found.row_dual)
+    force = np.array(found.col_value)
+    return force[: len(few.least_s)][group] * share, force[len(few.least_s) :], -np.array(found.row_dual)
 
 
 class _Quiet(highspy.Highs):
@@ -85,15 +127,27 @@ class _Quiet(highspy.Highs):
         super().enableCallbacks()
 
 
-def _model(arcs: Arcs, count: int, nodes: int) -> highspy.HighsLp:
+def _model(arcs: Arcs, wide: Wide, nodes: int) -> highspy.HighsLp:
+    matrix = sparse.vstack([between(arcs.later, arcs.earlier, nodes), wide.matrix], format="csr")
+    most = np.concatenate((arcs.most, wide.most))
     model = highspy.HighsLp()
-    model.num_col_, model.num_row_ = count, nodes
-    model.col_cost_ = -arcs.least_s
-    model.col_lower_, model.col_upper_ = arcs.lowest, np.where(np.isfinite(arcs.most), arcs.most, highspy.kHighsInf)
+    model.num_col_, model.num_row_ = len(most), nodes
+    model.col_cost_ = -np.concatenate((arcs.least_s, wide.least_s))
+    model.col_lower_ = np.concatenate((arcs.lowest, np.zeros(len(wide.most))))
+    model.col_upper_ = np.where(np.isfinite(most), most, highspy.kHighsInf)
     model.row_lower_ = model.row_upper_ = np.zeros(nodes)
-    # By arcs is by columns of the balances.
+    # Row by row of arcs is column by column of the balances.
     model.a_matrix_.format_ = highspy.MatrixFormat.kColwise
-    model.a_matrix_.start_ = arcs.matrix.indptr
-    model.a_matrix_.index_ = arcs.matrix.indices
-    model.a_matrix_.value_ = arcs.matrix.data
+    model.a_matrix_.start_ = matrix.indptr
+    model.a_matrix_.index_ = matrix.indices
+    model.a_matrix_.value_ = matrix.data
     return model
+
+
+def between(later: Index, earlier: Index, nodes: int) -> sparse.csr_array:
+    """(C, nodes) `shift[later] - shift[earlier]`; -1 stands still."""
+    both = np.column_stack((later, earlier)).ravel()
+    real = both >= 0
+    values = np.tile([1.0, -1.0], len(later))[real]
+    starts = np.concatenate(([0], np.cumsum(real.reshape(-1, 2).sum(axis=1))))
+    return sparse.csr_array((values, both[real], starts), shape=(len(later), nodes))

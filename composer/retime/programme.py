@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy import sparse
 
-from composer.retime.flow import Arcs, Unsolved, circulate
+from composer.retime.flow import Arcs, Unsolved, Wide, circulate
 from composer.retime.rows import ABOVE_ROW, HOLD_ROW, MOVE_ROW, Rows
 from composer.retime.terms import Contracted
 
@@ -68,7 +68,8 @@ def solve(
     matrix = sparse.csr_array(rows.matrix[chosen][:, events])
     least, kind = rows.least[chosen], rows.kind[chosen]
 
-    gone, term_of = _starts(matrix, kind, least, at, behind, weight)
+    row_later, row_earlier, plain = _pairs(matrix)
+    gone, term_of = _starts(matrix, kind, row_later, row_earlier, least, at, behind, weight)
     kept_row = np.ones(m, dtype=bool)
     kept_row[gone.rest] = kept_row[gone.move] = False
     kept_row = np.flatnonzero(kept_row)
@@ -76,41 +77,41 @@ def solve(
     kept_term[term_of] = False
     kept_term = np.flatnonzero(kept_term)
 
-    price = np.full(len(kept_row), np.inf)
-    if np.isfinite(slack_price):
-        price[kind[kept_row] >= ABOVE_ROW] = slack_price * SCALE
-    s, none = len(gone.start), np.full(len(gone.start), -1)
+    pair, other = kept_row[plain[kept_row]], kept_row[~plain[kept_row]]
+    price = np.where((kind >= ABOVE_ROW) & np.isfinite(slack_price), min(slack_price, 1e300) * SCALE, np.inf)
     clock, led = ~gone.led, gone.led & (gone.move_s <= 0.0)
-    endless = np.full(s, np.inf)
+    none, zero = np.full(len(gone.start), -1), np.zeros(len(gone.start))
     parts = [
         # The whole way from the rest's beginning to the hit.
-        (_between(gone.hit, gone.before, n), gone.rest_s + gone.move_s, np.zeros(s), endless),
+        (gone.hit, gone.before, gone.rest_s + gone.move_s, zero, zero + np.inf),
         # By the clock: what it costs to be pushed later, and to leave earlier.
-        (_between(none[clock], gone.before[clock], n), gone.rest_s[clock], np.zeros(clock.sum()), gone.weight[clock]),
-        (_between(gone.hit[clock], none[clock], n), gone.move_s[clock], np.zeros(clock.sum()), gone.weight[clock]),
+        (none[clock], gone.before[clock], gone.rest_s[clock], zero[clock], gone.weight[clock]),
+        (gone.hit[clock], none[clock], gone.move_s[clock], zero[clock], gone.weight[clock]),
         # By its hit: what it costs to be pushed nearer; that it must leave earlier than written costs the same anywhere.
-        (_between(gone.hit[led], gone.before[led], n), gone.rest_s[led], np.zeros(led.sum()), gone.weight[led]),
-        (_between(at[kept_term], behind[kept_term], n), np.zeros(len(kept_term)), -weight[kept_term], weight[kept_term]),
-        (matrix[kept_row], least[kept_row], np.zeros(len(kept_row)), price),
+        (gone.hit[led], gone.before[led], gone.rest_s[led], zero[led], gone.weight[led]),
+        (at[kept_term], behind[kept_term], np.zeros(len(kept_term)), -weight[kept_term], weight[kept_term]),
+        (row_later[pair], row_earlier[pair], least[pair], np.zeros(len(pair)), price[pair]),
     ]
-    whole = sparse.vstack([part[0] for part in parts], format="csr")
     nodes = np.ones(n, dtype=bool)
     nodes[gone.start] = False
     nodes = np.flatnonzero(nodes)
-    arcs = Arcs(sparse.csr_array(whole[:, nodes]), *(np.concatenate([part[k] for part in parts]) for k in (1, 2, 3)))
-    found = circulate(arcs, limit_s)
+    name = np.full(n + 1, -1)
+    name[nodes] = np.arange(len(nodes))
+    later, earlier, *rest = (np.concatenate([part[k] for part in parts]) for k in range(5))
+    arcs = Arcs(name[later], name[earlier], *rest)
+    found = circulate(arcs, Wide(sparse.csr_array(matrix[other][:, nodes]), least[other], price[other]), len(nodes), limit_s)
     if found is None:
         return None
-    force, at_nodes = found
+    force, wide, at_nodes = found
     shift = np.zeros(n)
     shift[nodes] = at_nodes
     padded = np.append(shift, 0.0)
     low, high = padded[gone.before] + gone.rest_s, padded[gone.hit] - gone.move_s
     shift[gone.start] = np.maximum(np.minimum(np.where(gone.led, padded[gone.hit], 0.0), high), low)
 
-    through, later, earlier, nearer, _, own = np.split(force, np.cumsum([len(part[1]) for part in parts])[:-1])
+    through, later, earlier, nearer, _, own = np.split(force, np.cumsum([len(part[2]) for part in parts])[:-1])
     dual = np.zeros(m)
-    dual[kept_row] = own
+    dual[pair], dual[other] = own, wide
     dual[gone.rest] = dual[gone.move] = through
     dual[gone.rest[clock]] += later
     dual[gone.move[clock]] += earlier
@@ -121,22 +122,30 @@ def solve(
     return Solved(shift, float(dual @ least), dual)
 
 
-def _between(later: Index, earlier: Index, n: int) -> sparse.csr_array:
-    """(C, n) `shift[later] - shift[earlier]`; -1 stands still."""
-    row = np.arange(len(later))
-    real, also = later >= 0, earlier >= 0
-    values = np.concatenate((np.ones(np.count_nonzero(real)), -np.ones(np.count_nonzero(also))))
-    places = (np.concatenate((row[real], row[also])), np.concatenate((later[real], earlier[also])))
-    return sparse.csr_array((values, places), shape=(len(later), n))
+def _pairs(matrix: sparse.csr_array) -> tuple[Index, Index, Flags]:
+    """(m,) later and earlier event of each row, -1 for none, and whether it is a plain difference of two."""
+    m = matrix.shape[0]
+    row = np.repeat(np.arange(m), np.diff(matrix.indptr))
+    up = matrix.data > 0.0
+    later, earlier = np.full(m, -1), np.full(m, -1)
+    later[row[up]], earlier[row[~up]] = matrix.indices[up], matrix.indices[~up]
+    even = np.bincount(row, weights=np.abs(matrix.data) != 1.0, minlength=m) == 0.0
+    return later, earlier, even & (np.bincount(row[up], minlength=m) <= 1) & (np.bincount(row[~up], minlength=m) <= 1)
 
 
 def _starts(
-    matrix: sparse.csr_array, kind: NDArray[np.int8], least: Array, at: Index, behind: Index, weight: Array
+    matrix: sparse.csr_array,
+    kind: NDArray[np.int8],
+    later: Index,
+    earlier: Index,
+    least: Array,
+    at: Index,
+    behind: Index,
+    weight: Array,
 ) -> tuple[_Starts, Index]:
     """The starts of which only a rest, a move and one term speak, and the number of each one's term, (S,)."""
     n = matrix.shape[1]
     row = np.repeat(np.arange(matrix.shape[0]), np.diff(matrix.indptr))
-    plain = np.isin(kind, (HOLD_ROW, MOVE_ROW))
     begins = (kind[row] == HOLD_ROW) & (matrix.data > 0.0)
     leaves = (kind[row] == MOVE_ROW) & (matrix.data < 0.0)
     rest, move, term = np.full(n, -1), np.full(n, -1), np.full(n, -1)
@@ -147,12 +156,7 @@ def _starts(
     sole = (rest >= 0) & (move >= 0) & (spoken == 2) & (np.bincount(at, minlength=n) == 1)
     sole &= np.bincount(behind[behind >= 0], minlength=n) == 0
     ahead, before = np.full(n, -1), np.full(n, -1)
-    lands = plain[row] & (matrix.data > 0.0)
-    hangs = plain[row] & (matrix.data < 0.0)
-    by_row_lands, by_row_hangs = np.full(matrix.shape[0], -1), np.full(matrix.shape[0], -1)
-    by_row_lands[row[lands]] = matrix.indices[lands]
-    by_row_hangs[row[hangs]] = matrix.indices[hangs]
-    ahead[sole], before[sole] = by_row_lands[move[sole]], by_row_hangs[rest[sole]]
+    ahead[sole], before[sole] = later[move[sole]], earlier[rest[sole]]
     own = np.where(term >= 0, behind[term], -1)
     sole &= (ahead >= 0) & ((own == -1) | (own == ahead))
     # Two starts in a row, with no landing between them, both stay.

@@ -12,7 +12,8 @@ from composer.retime.pins import Chain, chains_too_long
 from composer.retime.polish import polish
 from composer.retime.proof import Proof
 from composer.retime.shrink import Shrunk, factor_that_fits, scaled
-from composer.retime.solving import Answer, Programme, answer, at_times, durations_to_keep, programme_of
+from composer.retime.solving import Answer, answer
+from composer.retime.stage import Stage, at_times, durations_to_keep, stage_of
 from composer.retime.terms import cost
 from composer.rig.model import Rig
 from composer.tracks import Tracks, fiber_of
@@ -126,15 +127,15 @@ def retime(
     give = np.zeros(len(pins)) if give_s is None else np.asarray(give_s, dtype=float)[np.argsort(pins_s, kind="stable")]
     by_rhythm: bool | Flags = rhythm if rhythm is not None else keep == "rhythm"
 
-    def build(some: Tracks) -> tuple[Programme, list[Chain]]:
-        programme = programme_of(some, abilities, pins, give, firm, by_rhythm)
-        return programme, chains_too_long(programme.events, programme.rows, pins, give) if len(pins) else []
+    def build(some: Tracks) -> tuple[Stage, list[Chain]]:
+        stage = stage_of(some, abilities, pins, give, firm, by_rhythm)
+        return stage, chains_too_long(stage.events, stage.rows, pins, give) if len(pins) else []
 
-    programme, chains = build(tracks)
+    stage, chains = build(tracks)
     shrunk: dict[int, Shrunk] = {}
     tries = 0
     while chains and shrink and tries < SHRINKS:
-        current, hopeless = programme.tracks, True
+        current, hopeless = stage.tracks, True
         fiber, done = fiber_of(current), set()
         for chain in chains:
             # A move that follows a shrunk one starts from elsewhere now: its chain is counted anew in the next round.
@@ -148,32 +149,32 @@ def retime(
             done.update(fiber[list(chain.knots)].tolist())
             current = scaled(current, np.array(chain.knots), factor)
             for k in chain.knots:
-                written = int(programme.origin[k])
+                written = int(stage.origin[k])
                 before = shrunk[written].factor if written in shrunk else 1.0
                 shrunk[written] = Shrunk(int(fiber_of(tracks)[written]), written, before * factor)
         if hopeless:
             break
-        tracks = retimed(current, programme.origin, current.time_s, tracks.duration_s)
-        programme, chains = build(tracks)
-    found = None if chains else answer(programme, rig, abilities, whole, limit_s)
-    short = tuple(_short(chain, programme, abilities) for chain in chains)
-    return _told(programme, tracks, abilities, pins, keep, found, shrunk, short, clock() - began)
+        tracks = retimed(current, stage.origin, current.time_s, tracks.duration_s)
+        stage, chains = build(tracks)
+    found = None if chains else answer(stage, rig, abilities, whole, limit_s)
+    short = tuple(_short(chain, stage, abilities) for chain in chains)
+    return _told(stage, tracks, abilities, pins, keep, found, shrunk, short, clock() - began)
 
 
-def _short(chain: Chain, programme: Programme, abilities: Abilities) -> PinsShort:
-    fiber = fiber_of(programme.tracks)
+def _short(chain: Chain, stage: Stage, abilities: Abilities) -> PinsShort:
+    fiber = fiber_of(stage.tracks)
     return PinsShort(
         chain.from_s,
         chain.to_s,
         chain.short_s,
         tuple(dict.fromkeys(int(fiber[k]) for k in chain.knots)),
-        tuple(dict.fromkeys(int(programme.tracks.line[k]) for k in chain.knots)),
-        factor_that_fits(programme.tracks, chain, lambda some, k: durations_to_keep(some, abilities, k)),
+        tuple(dict.fromkeys(int(stage.tracks.line[k]) for k in chain.knots)),
+        factor_that_fits(stage.tracks, chain, lambda some, k: durations_to_keep(some, abilities, k)),
     )
 
 
 def _told(
-    programme: Programme,
+    stage: Stage,
     tracks: Tracks,
     abilities: Abilities,
     pins_s: Array,
@@ -184,8 +185,8 @@ def _told(
     solve_s: float,
 ) -> Retiming:
     """The retiming in the terms of who reads it."""
-    events, prepared, origin = programme.events, programme.tracks, programme.origin
-    terms = programme.terms
+    events, prepared, origin = stage.events, stage.tracks, stage.origin
+    terms = stage.terms
     hits = events.hits
     was = np.concatenate(([0.0], events.written_s[:hits]))
     fiber = fiber_of(prepared)
@@ -223,7 +224,7 @@ def _told(
     ]
     new = tracks
     if found is not None:
-        now_there = at_times(programme, shift)
+        now_there = at_times(stage, shift)
         new = retimed(prepared, origin, now_there.time_s, now_there.duration_s)
     return Retiming(
         keep=keep,
@@ -240,20 +241,20 @@ def _told(
         solve_s=solve_s,
         was_s=tracks.duration_s,
         pins_s=pins_s,
-        proof=_proof(programme, found, shift, abilities, len(pins_s)),
+        proof=_proof(stage, found, shift, abilities, len(pins_s)),
         **_warp(was, now, tracks.duration_s, new.duration_s),
     )
 
 
-def _proof(programme: Programme, found: Answer | None, shift: Array, abilities: Abilities, pins: int) -> Proof | None:
+def _proof(stage: Stage, found: Answer | None, shift: Array, abilities: Abilities, pins: int) -> Proof | None:
     if found is None:
         return None
     return Proof(
-        programme.tracks,
-        programme.least_s,
-        programme.events,
+        stage.tracks,
+        stage.least_s,
+        stage.events,
         found.rows,
-        programme.terms,
+        stage.terms,
         shift,
         found.least.dual,
         abilities,
