@@ -13,7 +13,7 @@ from composer.limits.over_tables import worst_over_tables
 from composer.limits.polynomials import derivative, value, where_positive
 from composer.limits.quivering import asked, excess, least_with_quivers, shaken
 from composer.limits.snag import Snag
-from composer.limits.stretches import NO_PIECES, Pieces, as_snags, gather
+from composer.limits.stretches import NO_PIECES, Pieces, as_snags, gather, picked
 from composer.limits.tables import rates
 from composer.rig.model import Rig
 from composer.tracks import MOVE, SAME_INSTANT_S, SUDDEN, Tracks, durations, end_strain, fiber_of
@@ -71,14 +71,19 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
         _jumps(tracks, abilities, of[at_once]),
         _suddens(tracks, of[sudden], least[sudden]),
         _moves(tracks, abilities, of[moves], lasts[of[moves]], worst_u[moves]),
-        quivers,
+        picked(quivers, quivers.mends),
     ]
-    return as_snags("rate", "1/s", gather(*lots), tracks)
+    # A quiver too fast by itself is told apart from moves beside it that only lack time.
+    alone = as_snags("rate", "1/s", picked(quivers, ~quivers.mends), tracks)
+    return as_snags("rate", "1/s", gather(*lots), tracks) + alone
 
 
 def _quivers(tracks: Tracks, abilities: Abilities, suspects: Index) -> Pieces:
-    """The stretches of moves that break the limit with their quivers, at the worst phase; time mends none whose quiver alone
-    is too fast."""
+    """The stretches of moves that break the limit with their quivers, at the worst phase.
+
+    A move too fast for its quiver needs its own rate and has what the quiver leaves it; one whose quiver alone is too fast
+    needs the quiver's rate, and time does not mend it.
+    """
     moves = shaken(tracks)
     row = np.empty(0, dtype=np.int64) if moves is None else moves.of(suspects)[1]
     of = suspects[:0] if moves is None else moves.segment[row]
@@ -93,15 +98,16 @@ def _quivers(tracks: Tracks, abilities: Abilities, suspects: Index) -> Pieces:
         return excess(abilities, fiber[one], curve[one], moves, row[one], lasts[one], u)
 
     which, start, end = bisected(over, worst.u[broken])
+    mends = np.isfinite(worst.least_s)
     mine = broken[which]
     return Pieces(
         fiber=fiber[which],
         from_s=tracks.time_s[of[which]] + start * lasts[which],
         to_s=tracks.time_s[of[which]] + end * lasts[which],
-        needs=np.abs(worst.speed[mine]) / lasts[which] + worst.swing[mine],
-        has=worst.limit[mine],
+        needs=np.where(mends[mine], np.abs(worst.speed[mine]) / lasts[which], worst.swing[mine]),
+        has=np.where(mends[mine], worst.limit[mine] - worst.swing[mine], worst.limit[mine]),
         knot=of[which],
-        mends=np.isfinite(worst.least_s[mine]),
+        mends=mends[mine],
     )
 
 

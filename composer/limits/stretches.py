@@ -35,6 +35,11 @@ def gather(*all_pieces: Pieces) -> Pieces:
     return Pieces(*(np.concatenate([getattr(p, name) for p in all_pieces]) for name in Pieces.__slots__))
 
 
+def picked(pieces: Pieces, which: NDArray[np.bool_]) -> Pieces:
+    """Some of the pieces, (P,) flags."""
+    return Pieces(*(getattr(pieces, name)[which] for name in Pieces.__slots__))
+
+
 def join(fiber: Index, from_s: Array, to_s: Array) -> tuple[Index, Index]:
     """The order of pieces by fiber and time, and for each in that order the number of its unbroken stretch, from 0 on."""
     order = np.lexsort((from_s, fiber))

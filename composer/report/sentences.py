@@ -205,22 +205,10 @@ def _shaken(snag: Snag, teller: Teller, who: _Who) -> Told:
 
 
 def _moved_and_shaken(snag: Snag, teller: Teller, who: _Who) -> Told:
-    """A move that leaves its quiver too little of what the fiber can do."""
-    knot, lasts = snag.knot, _lasts(teller, snag.knot)
-    which = _quivers(teller, knot)
-    quivers = teller.tracks.quivers
-    swing = float((2.0 * np.pi * quivers.hertz * quivers.amplitude)[which].sum())
-    needs, has = two(snag.needs, snag.has)
-    says = (
-        f"{who.verb('is', 'are')} asked to {_way(teller, knot)} in {lasts:.2f} s, landing at "
-        f"{_at(teller, float(teller.tracks.time_s[knot]) + lasts)}, and to {_quiver_in_words(teller, which)}: together up to "
-        f"{needs} 1/s, where {who.then('can', 'can')} do {has} 1/s{_in_a_row(snag, teller)}."
-    )
-    own, left = snag.needs - swing, snag.has - swing
-    more, _ = two(lasts * own / left - lasts, 0.0) if left > 0.0 else ("", "")
-    give = f"Give it {more} s more" if more else "Give it more time"
-    smaller = _slower(quivers, which, 1.0 - (snag.needs - snag.has) / swing)
-    return Told(says, f"{give}. Or {smaller[0].lower()}{smaller[1:]}.")
+    """A move that is too fast for what its quiver leaves it."""
+    told = _move(snag, teller, who, _lasts(teller, snag.knot) * snag.needs / snag.has, _way(teller, snag.knot))
+    quiver = _quiver_in_words(teller, _quivers(teller, snag.knot))
+    return Told(f"{told.says[:-1]} with the {quiver} on top.", f"{told.mends} Or quiver less, or more slowly.")
 
 
 def _shrunk(snag: Snag) -> str:

@@ -11,7 +11,8 @@ from hypothesis import strategies as st
 
 from composer.faults import Faults
 from composer.load import CuePoint
-from composer.play_file import ARRAYS, Play, read_play, write_play
+from composer.play_file import ARRAYS, QUIVERS, Play, read_play, write_play
+from composer.quivers import Quivers
 from composer.score.tempo import TempoMap
 from composer.tracks import Tracks
 
@@ -117,6 +118,47 @@ def test_a_play_file_with_bytes_changed_is_read_or_refused_in_words(tmp_path_fac
         read_play(path)
     except Faults as refused:
         assert str(path) in str(refused)
+
+
+QUIVERING = replace(TRACKS, quivers=Quivers(np.array([0, 1]), np.array([2, 2]), np.array([3.0, 0.5]), np.array([0.01, 0.02])))
+
+
+def test_quivers_are_kept_in_arrays_of_their_own_and_read_back(tmp_path, play):
+    write_play(tmp_path / "a.play", replace(play, tracks=QUIVERING))
+    found = read_play(tmp_path / "a.play").tracks.quivers
+    for name in Quivers.__dataclass_fields__:
+        assert getattr(found, name).tolist() == getattr(QUIVERING.quivers, name).tolist()
+    assert set(parts(tmp_path / "a.play")) == {f"{name}.npy" for name in ARRAYS | QUIVERS}
+
+
+UNSOUND_QUIVERS = {
+    "quiver_knot": [np.array([-1, 1]), np.array([2, 1]), np.array([0, 3]), np.array([0])],
+    "quiver_until": [np.array([4, 2]), np.array([2, 1]), np.array([3, 2]), np.array([2.0, 2.0])],
+    "quiver_hertz": [np.array([0.0, 1.0]), np.array([1e9, 1.0]), np.array([float("nan"), 1.0])],
+    "quiver_amplitude": [np.array([-0.1, 0.1]), np.array([1e9, 0.1])],
+    "manner": [np.array([1, 2, 0, 0], np.int8)],
+    "time_s": [np.array([0.0, 1.0, 9e5, 0.0])],
+}
+
+
+@pytest.mark.parametrize(("array", "value"), [(name, value) for name, values in UNSOUND_QUIVERS.items() for value in values])
+def test_unsound_quivers_are_refused(tmp_path, play, array, value):
+    path = tmp_path / "a.play"
+    longer = replace(QUIVERING, duration_s=9e5) if array == "time_s" else QUIVERING
+    write_play(path, replace(play, tracks=longer))
+    packed(path, parts(path) | {f"{array}.npy": npy(value)})
+    with pytest.raises(Faults, match="no sound play file"):
+        read_play(path)
+
+
+def test_a_file_with_some_of_the_arrays_of_quivers_is_refused(tmp_path, play):
+    path = tmp_path / "a.play"
+    write_play(path, replace(play, tracks=QUIVERING))
+    contents = parts(path)
+    del contents["quiver_hertz.npy"]
+    packed(path, contents)
+    with pytest.raises(Faults, match="it lacks quiver_hertz"):
+        read_play(path)
 
 
 NAN, HUGE = float("nan"), 1 << 40

@@ -1,11 +1,14 @@
 """Sentences that a movement director understands."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from composer.limits.abilities import abilities_of
 from composer.limits.check import check
 from composer.limits.snag import Snag
+from composer.quivers import Quivers
 from composer.report.sentences import Teller, listed, named, place_in_words, tell, two
 from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN, Tracks
@@ -161,3 +164,53 @@ def test_places_are_spoken():
 )
 def test_two_numbers_are_told_apart(needs, has, said):
     assert two(needs, has) == said
+
+
+def _quivering(amplitude: float, hertz: float, *, lasts: float = 2.0, at: float = 0.15, target: float | None = None) -> Tracks:
+    """A fiber that goes slowly to a strain and quivers there, or on a move to another."""
+    tracks = _track((8.0, at, "smooth"), (lasts, at if target is None else target, "linear"), (20.0, 0.15, "linear"))
+    return replace(tracks, quivers=Quivers(*(np.array([value]) for value in (1, 2, hertz, amplitude))))
+
+
+def test_a_quiver_too_fast_is_told_how_small_or_how_slow_it_may_be_and_either_will_do(make_rig):
+    rig = make_rig(1, fill=0.6, exhaust=0.3)
+    told = _told(rig, _quivering(0.05, 3.0), "rate")
+    assert told.says == (
+        "r.1 is asked to quiver at 3 Hz by 5 % strain from bar 3 count 1: a rate of 0.94 1/s, where it can do 0.30 1/s."
+    )
+    assert told.mends == "Make it by at most 1.59 % strain, or slow it to at most 0.954 Hz; no amount of time mends it."
+    for amplitude, hertz in ((0.0159, 3.0), (0.05, 0.954)):
+        assert check(_quivering(amplitude, hertz), rig, abilities_of(rig)).ok
+
+
+def test_a_move_too_fast_for_its_quiver_is_told_the_time_that_it_needs_with_it(make_rig):
+    rig = make_rig(1, fill=0.6, exhaust=0.6)
+    told = _told(rig, _quivering(0.01, 4.0, lasts=0.2, target=0.25), "rate")
+    assert told.says == (
+        "r.1 is asked to fill in 0.20 s, landing at bar 3 count 1.2; it needs 0.29 s "
+        "with the quiver at 4 Hz by 1 % strain on top."
+    )
+    assert told.mends == "Give it 0.087 s more. Or quiver less, or more slowly."
+    assert check(_quivering(0.01, 4.0, lasts=0.2 + 0.087, target=0.25), rig, abilities_of(rig)).ok
+
+
+def test_a_quiver_that_dips_below_rest_is_told_as_one(make_rig):
+    told = _told(make_rig(1), _quivering(0.02, 1.0, at=0.01), "stroke")
+    assert "up to 1 % strain below rest" in told.says
+    assert told.mends.startswith("Quiver less there, or further above rest")
+
+
+def test_a_quiver_too_fast_for_a_valve_is_told_the_frequency_that_it_can(make_rig):
+    told = _told(make_rig(1, max_switch_Hz=5.0), _quivering(0.001, 4.0), "switching")
+    assert (
+        "change over 8.00 times a second to quiver at 4 Hz by 0.1 % strain from bar 3 count 1; it can 5.00 times" in told.says
+    )
+    assert told.mends == "Slow the quiver to at most 2.5 Hz; no amount of time mends it."
+
+
+def test_a_quiver_too_abrupt_is_told_how_small_or_how_slow_it_may_be(make_rig):
+    rig = make_rig(1, accel=5.0)
+    assert "an acceleration of up to 12.63 1/s²" in _told(rig, _quivering(0.01, 4.0), "accel").says
+    assert _told(rig, _quivering(0.01, 4.0), "accel").mends.startswith("Make the quiver 0.395 as wide, or 0.629 as fast")
+    for amplitude, hertz in ((0.00395, 4.0), (0.01, 4.0 * 0.629)):
+        assert check(_quivering(amplitude, hertz), rig, abilities_of(rig)).ok
