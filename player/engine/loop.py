@@ -37,8 +37,8 @@ QUEUE_SHARE = 0.75
 SLICE_S = 0.005
 """The engine looks for what the operator asks at least this often, however slow the ticks are."""
 
-SETTLE_S = 0.5
-"""Seconds that a board has to say that it has disarmed."""
+SETTLE_S = 1.3
+"""Seconds that a board has to say that it has disarmed: on a disturbed line it may have to be told three times."""
 
 SENSES_S = 0.25
 """Before fibers are brought back from where they are, boards have so long to sense where that is."""
