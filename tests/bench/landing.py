@@ -76,10 +76,10 @@ def measure(tracks, rig, abilities, inverse, real):
                 continue  # it goes on: where it would have come to stand is not to be seen
             stands = begins[move + 2] if move + 2 < len(begins) else time[-1]
             window = slice(np.searchsorted(time, begins[move] - READY_S), np.searchsorted(time, stands - READY_S))
-            real_s = passes(time[window], strain[fiber, window])
-            if real_s is not None:
+            real_s, wanted_s = passes(time[window], strain[fiber, window]), passes(time[window], target[fiber, window])
+            if real_s is not None and wanted_s is not None:
                 late.append(max(real_s - begins[move + 1], 0.0))
-                beside.append(abs(real_s - passes(time[window], target[fiber, window])))
+                beside.append(abs(real_s - wanted_s))
     wrong = (strain - target) / abilities.stroke[:, None]
     return 1e3 * np.mean(late), 1e3 * np.mean(beside), 100.0 * np.sqrt((wrong**2).mean())
 
