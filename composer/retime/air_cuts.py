@@ -18,7 +18,7 @@ from composer.limits.quivering import shaken
 from composer.retime.events import Events
 from composer.retime.rows import AIR_ROW, Rows, differences, joined, no_rows
 from composer.rig.model import Rig
-from composer.tracks import Tracks
+from composer.tracks import Tracks, fiber_of
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -43,6 +43,16 @@ def overdrawn(now: Tracks, rig: Rig, abilities: Abilities, near: float = 0.0) ->
     higher = near * (supply.max_receiver_kPa - supply.min_pressure_kPa)
     supply = replace(supply, min_pressure_kPa=supply.min_pressure_kPa + higher)
     return [(from_s, to_s) for from_s, to_s, _, _ in use(now, supply, abilities).spans]
+
+
+def plainly_enough(now: Tracks, moves_L: float, rig: Rig, abilities: Abilities) -> bool:
+    """Whether a full receiver alone bears all that is drawn; moves_L: what the moves draw without their quivers."""
+    quivers = now.quivers
+    steepest = (np.diff(abilities.air_L, axis=1) / np.diff(abilities.strain, axis=1)).max(axis=1)[abilities.which]
+    lasts = now.time_s[quivers.until] - now.time_s[quivers.knot]
+    # In each period, and in one begun, a quiver climbs from its lowest to its highest.
+    climbs = 2.0 * quivers.amplitude * (quivers.hertz * lasts + 1.0)
+    return moves_L + float(climbs @ steepest[fiber_of(now)[quivers.knot]]) <= store_L(rig.supply)
 
 
 def whole_rows(

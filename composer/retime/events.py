@@ -79,15 +79,17 @@ def with_waits(tracks: Tracks) -> tuple[Tracks, Index]:
     ), origin
 
 
-def strain_gone(tracks: Tracks) -> Array:
-    """Strain that each segment goes through, back and forth added up, (K,); |b - a| where it goes one way.
+def strain_gone(tracks: Tracks, segments: Index | None = None) -> Array:
+    """Strain that each segment, or each of `segments`, goes through, back and forth added up; |b - a| where it goes one way.
 
     A quiver adds what it goes through in one period, however long it lasts.
     """
-    gone = np.abs(tracks.curve[:, 1:].sum(axis=1))
+    chosen = np.arange(len(tracks.time_s)) if segments is None else segments
+    curve, shape = tracks.curve[chosen], tracks.shape[chosen]
+    gone = np.abs(curve[:, 1:].sum(axis=1))
     # Whole named shapes go one way, and so does a polynomial whose rate has coefficients of one sign.
-    rate = tracks.curve[:, 1:] * np.arange(1.0, 6.0)
-    whole = (tracks.shape >= 0) & (tracks.shape != NAMES.index("curve"))
+    rate = curve[:, 1:] * np.arange(1.0, 6.0)
+    whole = (shape >= 0) & (shape != NAMES.index("curve"))
     bent = np.flatnonzero(~whole & (rate.min(axis=1) < 0.0) & (rate.max(axis=1) > 0.0))
     if len(bent):
         scale = np.abs(rate[bent]).max(axis=1, keepdims=True)
@@ -96,7 +98,7 @@ def strain_gone(tracks: Tracks) -> Array:
     if len(tracks.quivers):
         segment, which = pairs(tracks.quivers)
         moves = tracks.manner[segment] == MOVE
-        gone += np.bincount(segment[moves], 4.0 * tracks.quivers.amplitude[which[moves]], minlength=len(gone))
+        gone += np.bincount(segment[moves], 4.0 * tracks.quivers.amplitude[which[moves]], minlength=len(tracks.time_s))[chosen]
     return gone
 
 
@@ -109,11 +111,13 @@ def _variation(rate: Array) -> float:
     return float(np.abs(np.diff(stops)).sum())
 
 
-def events_of(tracks: Tracks, abilities: Abilities, least_s: Array, firm: Array | None = None) -> Events:
+def events_of(
+    tracks: Tracks, abilities: Abilities, least_s: Array, firm: Array | None = None, gone: Array | None = None
+) -> Events:
     """The events of tracks that `with_waits` has prepared.
 
     least_s: (K,) least duration of each segment, finite; that of a `sudden` is how long it lasts
-    firm: (K,) how many times as costly each segment is to move, None: all alike
+    firm: (K,) how many times as costly each segment is to move, None: all alike; gone: (K,) as `strain_gone`, where known
     """
     knots = len(tracks.time_s)
     fiber = fiber_of(tracks)
@@ -144,7 +148,7 @@ def events_of(tracks: Tracks, abilities: Abilities, least_s: Array, firm: Array 
     np.minimum.at(written, hit, tracks.time_s[landed])
     written[hits:] = tracks.time_s[starts]
 
-    heavy = strain_gone(tracks) / abilities.stroke[fiber] * (1.0 if firm is None else firm)
+    heavy = (strain_gone(tracks) if gone is None else gone) / abilities.stroke[fiber] * (1.0 if firm is None else firm)
     weight = np.empty(len(written))
     weight[:hits] = np.bincount(hit, weights=heavy[landed - 1], minlength=hits)
     weight[hits:] = heavy[starts] * LEAD_SHARE

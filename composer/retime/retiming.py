@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.retime.apply import retimed
+from composer.retime.memory import Memory
 from composer.retime.pins import Chain, chains_too_long
 from composer.retime.polish import polish
 from composer.retime.proof import Proof
@@ -16,7 +17,7 @@ from composer.retime.solving import Answer, answer
 from composer.retime.stage import Stage, at_times, durations_to_keep, stage_of
 from composer.retime.terms import cost
 from composer.rig.model import Rig
-from composer.tracks import Tracks, fiber_of
+from composer.tracks import SAME_INSTANT_S, Tracks, fiber_of
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -80,6 +81,7 @@ class Retiming:
     tracks: the new tracks; those as written where pins are too close
     bound: proven: no retiming costs less
     pins_s: (P,) the pins in order of time; proof: what causes and pins' costs are read from, None where pins leave no answer
+    memory: for a retiming after this one
     warp_was_s, warp_now_s: 0, the hits and the score's end as written and as retimed, (W,) each, rising
     """
 
@@ -97,6 +99,7 @@ class Retiming:
     warp_now_s: Array
     pins_s: Array
     proof: Proof | None = field(repr=False)
+    memory: Memory = field(repr=False)
 
 
 def retime(
@@ -112,6 +115,7 @@ def retime(
     whole: bool = False,
     limit_s: float = np.inf,
     clock: Callable[[], float] = lambda: 0.0,
+    after: Retiming | None = None,
 ) -> Retiming:
     """The least change of times after which the rig can do the score.
 
@@ -119,6 +123,7 @@ def retime(
     keep: "clock" (instants) or "rhythm" (the intervals between hits); rhythm (K,) where it differs by segment
     firm: (K,) how many times as costly each segment is to move
     whole: solve all at once rather than round the snags (for comparison; the answer costs the same)
+    after: a retiming of nearly the same score for the same abilities, from which what has not changed is taken
     clock: what says the time in seconds, for `solve_s`; without one that is 0
     Raises Unsolved where the solver fails or runs past `limit_s`.
     """
@@ -128,7 +133,7 @@ def retime(
     by_rhythm: bool | Flags = rhythm if rhythm is not None else keep == "rhythm"
 
     def build(some: Tracks) -> tuple[Stage, list[Chain]]:
-        stage = stage_of(some, abilities, pins, give, firm, by_rhythm)
+        stage = stage_of(some, abilities, pins, give, firm, by_rhythm, None if after is None else after.memory)
         return stage, chains_too_long(stage.events, stage.rows, pins, give) if len(pins) else []
 
     stage, chains = build(tracks)
@@ -156,9 +161,23 @@ def retime(
             break
         tracks = retimed(current, stage.origin, current.time_s, tracks.duration_s)
         stage, chains = build(tracks)
-    found = None if chains else answer(stage, rig, abilities, whole, limit_s)
+    found = None if chains else answer(stage, rig, abilities, whole, limit_s, _as_before(stage, after))
     short = tuple(_short(chain, stage, abilities) for chain in chains)
     return _told(stage, tracks, abilities, pins, keep, found, shrunk, short, clock() - began)
+
+
+def _as_before(stage: Stage, after: Retiming | None) -> Flags | None:
+    """(N,) the events at instants at which the retiming before had some that moved: a good guess at what will move now."""
+    if after is None or after.proof is None:
+        return None
+    moved = np.sort(after.proof.events.written_s[after.proof.shift_s != 0.0])
+    if not len(moved):
+        return None
+    written = stage.events.written_s
+    place = np.searchsorted(moved, written)
+    behind, ahead = moved[np.maximum(place - 1, 0)], moved[np.minimum(place, len(moved) - 1)]
+    apart = np.minimum(np.abs(ahead - written), np.abs(written - behind))
+    return apart <= SAME_INSTANT_S
 
 
 def _short(chain: Chain, stage: Stage, abilities: Abilities) -> PinsShort:
@@ -241,6 +260,7 @@ def _told(
         solve_s=solve_s,
         was_s=tracks.duration_s,
         pins_s=pins_s,
+        memory=stage.memory,
         proof=_proof(stage, found, shift, abilities, len(pins_s)),
         **_warp(was, now, tracks.duration_s, new.duration_s),
     )

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.retime.air_cuts import overdrawn, share_rows, whole_rows
+from composer.retime.air_cuts import Span, overdrawn, plainly_enough, share_rows, whole_rows
 from composer.retime.air_search import Found, better
 from composer.retime.cuts import duty_rows, duty_spans
 from composer.retime.local import Least, least_cost
@@ -41,6 +41,7 @@ class Answer:
 class _Bottom:
     """The optimum of the rows that are true for all times: it costs no more than any times that keep the air as well.
 
+    spans: those that its times still overdraw
     no_air: no times keep the air even over whole moves, so what is left of it is the checker's to tell
     """
 
@@ -48,6 +49,7 @@ class _Bottom:
     rows: Rows
     given_up: int
     no_air: bool
+    spans: list[Span]
 
 
 def answer(
@@ -66,8 +68,7 @@ def answer(
     bottom = _bottom(stage, rig, abilities, whole, limit_s, free)
     if bottom is None:
         return None
-    spans = [] if bottom.no_air else overdrawn(at_times(stage, bottom.least.shift_s), rig, abilities)
-    if not spans:
+    if not bottom.spans:
         return Answer(bottom.least, bottom.rows, bottom.given_up)
     closed = _closed_in(stage, rig, abilities, bottom, limit_s)
     clean = closed if closed is not None and closed[1] else None
@@ -84,7 +85,7 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, limit_s: 
     rows, given_up, no_air = stage.rows, 0, False
     coils: set[tuple[int, int]] = set()
     air: set[tuple[int, int]] = set()
-    least = None
+    least, spans = None, []
     for _ in range(ROUNDS):
         least = least_cost(events, rows, stage.terms, free, whole, limit_s)
         if least is None:
@@ -102,14 +103,15 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, limit_s: 
         if new:
             rows = joined([rows, duty_rows(new, stage.tracks, events, rig, abilities)])
             continue
-        spans = [] if no_air else overdrawn(now, rig, abilities)
+        enough = no_air or plainly_enough(now, stage.moves_L, rig, abilities)
+        spans = [] if enough else overdrawn(now, rig, abilities)
         more = whole_rows(spans, now, events, least.shift_s, rig, abilities, air) if spans else no_rows(events)
         if not len(more.least):
             break
         rows = joined([rows, more])
     if least is None or len(least.dual) != len(rows.least):
         least = least_cost(events, rows, stage.terms, free, whole, limit_s)
-    return None if least is None else _Bottom(least, rows, given_up, no_air)
+    return None if least is None else _Bottom(least, rows, given_up, no_air, spans)
 
 
 def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, limit_s: float) -> tuple[Found, bool] | None:

@@ -9,6 +9,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.duration import least_durations
 from composer.retime.events import Events, events_of, knot_times, with_waits
 from composer.retime.hold import hold_rows
+from composer.retime.memory import Memory, measured
 from composer.retime.rows import Rows, duration_rows, joined, order_rows, pin_rows
 from composer.retime.terms import Terms, all_terms
 from composer.tracks import MOVE, STEP, Tracks
@@ -23,6 +24,7 @@ class Stage:
     """The whole programme of some tracks.
 
     tracks: prepared by `with_waits`; origin (K',) where their knots come from; rhythm (N,) which events keep rhythm
+    memory: what is known of its segments, for the next score; moves_L: air that moves draw, without their quivers
     end: what the score's end hangs from, event and offset (-1: an instant)
     """
 
@@ -34,15 +36,24 @@ class Stage:
     terms: Terms
     rhythm: Flags = field(repr=False)
     end: tuple[int, float]
+    memory: Memory = field(repr=False)
+    moves_L: float
 
 
 def stage_of(
-    tracks: Tracks, abilities: Abilities, pins_s: Array, give_s: Array, firm: Array | None, rhythm: bool | Flags
+    tracks: Tracks,
+    abilities: Abilities,
+    pins_s: Array,
+    give_s: Array,
+    firm: Array | None,
+    rhythm: bool | Flags,
+    memory: Memory | None = None,
 ) -> Stage:
-    """The programme of tracks; pins in order of time, firm and rhythm as `retime` takes them."""
+    """The programme of tracks; pins in order of time, firm and rhythm as `retime` takes them; memory of another score's."""
     prepared, origin = with_waits(tracks)
-    least = durations_to_keep(prepared, abilities)
-    events = events_of(prepared, abilities, least, None if firm is None else firm[origin])
+    least, gone, litres, memory = measured(prepared, abilities, memory)
+    least = _to_keep(prepared, least, np.arange(len(least)))
+    events = events_of(prepared, abilities, least, None if firm is None else firm[origin], gone)
     keeps = _rhythm_of(events, origin, rhythm)
     last = events.hits - 1
     end = (last, tracks.duration_s - events.written_s[last]) if last >= 0 and keeps[last] else (-1, tracks.duration_s)
@@ -54,13 +65,16 @@ def stage_of(
             hold_rows(prepared, events, abilities),
         ]
     )
-    return Stage(prepared, origin, least, events, rows, all_terms(events, keeps), keeps, end)
+    return Stage(prepared, origin, least, events, rows, all_terms(events, keeps), keeps, end, memory, float(litres.sum()))
 
 
 def durations_to_keep(tracks: Tracks, abilities: Abilities, segments: Index | None = None) -> Array:
     """Least durations as the programme keeps them: a jump takes no time, and what no time mends keeps what it has."""
-    least = least_durations(tracks, abilities, segments)
     where = np.arange(len(tracks.time_s)) if segments is None else segments
+    return _to_keep(tracks, least_durations(tracks, abilities, segments), where)
+
+
+def _to_keep(tracks: Tracks, least: Array, where: Index) -> Array:
     least[tracks.manner[where] == STEP] = 0.0
     endless = np.flatnonzero(~np.isfinite(least) & (tracks.manner[where] == MOVE))
     least[endless] = tracks.time_s[where[endless] + 1] - tracks.time_s[where[endless]]

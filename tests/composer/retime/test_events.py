@@ -5,7 +5,7 @@ import pytest
 
 from composer.limits.abilities import abilities_of
 from composer.retime.events import events_of, strain_gone, with_waits
-from composer.retime.solving import durations_to_keep
+from composer.retime.stage import durations_to_keep
 
 from .scores import tracks_of
 
