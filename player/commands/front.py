@@ -9,6 +9,7 @@ import threading
 from collections import deque
 from collections.abc import Callable
 
+from player.commands.terminal import in_foreground, is_terminal, keys_at_once
 from player.engine.status import Status
 
 REFRESH_S = 0.1
@@ -67,9 +68,9 @@ class Front:
         self._latest: Status | None = None
         self._told: deque[str] = deque(maxlen=1000)
         self._ends = threading.Event()
-        self._lives = not quiet and _is_terminal(sys.stderr) and os.environ.get("TERM") != "dumb"
+        self._lives = not quiet and is_terminal(sys.stderr) and os.environ.get("TERM") != "dumb"
         self._colour = self._lives and not os.environ.get("NO_COLOR")
-        self._keys = _is_terminal(sys.stdin) and _in_foreground()
+        self._keys = is_terminal(sys.stdin) and in_foreground()
         self._thread: threading.Thread | None = None
 
     @property
@@ -95,7 +96,7 @@ class Front:
             self._thread.join(timeout=1.0)
 
     def _live(self) -> None:
-        with _keys_at_once(self._keys):
+        with keys_at_once(self._keys):
             while not self._ends.is_set():
                 self._draw()
                 self._listen()
@@ -160,41 +161,8 @@ def ask_to_arm(tend: Callable[[], None]) -> bool:
     return answer.decode(errors="replace").strip().lower() == "arm"
 
 
-def _is_terminal(stream: object) -> bool:
-    try:
-        return stream is not None and os.isatty(stream.fileno())
-    except (OSError, ValueError, AttributeError):
-        return False
-
-
-def _in_foreground() -> bool:
-    try:
-        return os.tcgetpgrp(sys.stdin.fileno()) == os.getpgrp()
-    except OSError:
-        return False
-
-
 def _width() -> int:
     try:
         return max(20, os.get_terminal_size(sys.stderr.fileno()).columns - 1)
     except OSError:
         return 79
-
-
-@contextlib.contextmanager
-def _keys_at_once(wanted: bool):
-    """Keys come one by one and are not shown; signals by key stay."""
-    if not wanted:
-        yield
-        return
-    import termios
-    import tty
-
-    handle = sys.stdin.fileno()
-    was = termios.tcgetattr(handle)
-    try:
-        tty.setcbreak(handle, termios.TCSANOW)
-        yield
-    finally:
-        with contextlib.suppress(OSError, termios.error):
-            termios.tcsetattr(handle, termios.TCSANOW, was)

@@ -58,6 +58,36 @@ class Source(Protocol):
         """Let a tick pass: "wait", "end", "at_rest", or "" for nothing worth telling."""
 
 
+class Lags:
+    """Fibers whose valves answer sooner than the slowest are given where they were wanted that much ago, so all are together.
+
+    lead_s: by how much all run ahead; each_s: (F,) by how much less each fiber must
+    """
+
+    def __init__(self, lead_s: Array, strain: Array):
+        """lead_s: (F,) by how much each fiber's commands must run ahead; strain: (F,) where they begin."""
+        self.lead_s = float(lead_s.max(initial=0.0))
+        self.each_s = self.lead_s - lead_s
+        self._any = bool(self.each_s.any())
+        self._fibers = np.arange(len(lead_s))
+        self._past = [strain]
+
+    def behind(self, strain: Array, dt_s: float) -> Array:
+        """Each fiber's strain (F,) as it was its lag ago, in a straight line between the ends of ticks."""
+        if not self._any:
+            return strain
+        ticks = self.each_s / dt_s
+        whole = np.floor(ticks + 1e-9).astype(np.int64)
+        part = np.maximum(ticks - whole, 0.0)
+        keep = int(whole.max()) + 2
+        self._past = [strain, *self._past[: keep - 1]]
+        past = np.array(self._past)
+        last = len(past) - 1
+        newer = past[np.minimum(whole, last), self._fibers]
+        older = past[np.minimum(whole + 1, last), self._fibers]
+        return newer + part * (older - newer)
+
+
 class Driven(Transport):
     """A score's transport with the drives behind it: wanted strains become commands, each ahead by its valve's response.
 
@@ -69,12 +99,8 @@ class Driven(Transport):
     def __init__(self, rig: Rig, abilities: Abilities, tracks, cues: tuple[Cue, ...] = ()):
         super().__init__(tracks, abilities, cues)
         self._inverse = Inverse(rig, abilities)
-        lead = self._inverse.lead_s
-        self.lead_s = float(lead.max(initial=0.0))
-        self._lag_s = self.lead_s - lead
-        self._lags = bool(self._lag_s.any())
-        self._past = [self.strain]
-        self._fibers = np.arange(len(lead))
+        self._lags = Lags(self._inverse.lead_s, self.strain)
+        self.lead_s = self._lags.lead_s
         self._down = SetDown(abilities)
         self._send(self.strain, 1.0)
 
@@ -82,8 +108,7 @@ class Driven(Transport):
         """Let a tick pass and work out the command for it; what happened, as `Transport.tick`."""
         happened = super().tick(dt_s)
         self.strain = self._down.limited(self.strain, dt_s)
-        strain = self._lagging(dt_s) if self._lags else self.strain
-        self._send(strain, dt_s)
+        self._send(self._lags.behind(self.strain, dt_s), dt_s)
         return happened
 
     def set_down(self, fiber: int) -> None:
@@ -95,19 +120,6 @@ class Driven(Transport):
         return self._down.coming(super().coming(after_s), after_s)
 
     def _send(self, strain: Array, dt_s: float) -> None:
-        soon = self.coming(self._inverse.soon_s - self._lag_s)
-        ahead = self.coming(LOOK_S - self._lag_s)
+        soon = self.coming(self._inverse.soon_s - self._lags.each_s)
+        ahead = self.coming(LOOK_S - self._lags.each_s)
         self.command = self._inverse.commands(strain[:, None], soon[:, None], ahead[:, None], dt_s)[:, 0]
-
-    def _lagging(self, dt_s: float) -> Array:
-        """Each fiber's strain (F,) as it was its lag ago, in a straight line between the ends of ticks."""
-        ticks = self._lag_s / dt_s
-        whole = np.floor(ticks + 1e-9).astype(np.int64)
-        part = np.maximum(ticks - whole, 0.0)
-        keep = int(whole.max()) + 2
-        self._past = [self.strain, *self._past[: keep - 1]]
-        past = np.array(self._past)
-        last = len(past) - 1
-        newer = past[np.minimum(whole, last), self._fibers]
-        older = past[np.minimum(whole + 1, last), self._fibers]
-        return newer + part * (older - newer)

@@ -1,4 +1,4 @@
-"""The screen of a session as lines of text: sources, meters, supply, state, lateness, what was told, keys. No terminal in here."""
+"""The screen of a session as lines of text: sources, meters, supply, state, lateness, what was told, keys. No terminal."""
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass

@@ -1,0 +1,192 @@
+"""The terminal of a live session: the screen that lives, and keys. On a thread of its own, so that a slow or stopped terminal
+never holds up the engine. Without a terminal it only prints what is told."""
+
+import contextlib
+import os
+import select
+import sys
+import threading
+from collections import deque
+from collections.abc import Callable
+
+from player.commands.terminal import in_foreground, is_terminal, keys_at_once
+from player.live.screen import Meters, Scene, frame
+
+REFRESH_S = 0.1
+MOST_TOLD = 200
+SMALLEST = (40, 12)
+"""Columns and lines below which there is no screen, only a line that says so."""
+
+KEYS = {
+    "a": "bring_back",
+    "b": "bring_back",
+    "r": "rest",
+    "v": "vent",
+    "\x1b": "vent",
+    " ": "pause",
+    "p": "pause",
+    "\n": "go_on",
+    "\r": "go_on",
+    "n": "next_cue",
+    "l": "let_go",
+    "t": "record",
+}
+"""What each key asks for; pause and go_on take turns on the same key, `h` is the hold-to-run."""
+
+HOLD = "h"
+FIRST_S, AGAIN_S = 0.9, 0.3
+"""A held key repeats: the first repeat comes within the one, the others within the other. Then it is up."""
+
+
+class HoldKey:
+    """A key that is held, as a terminal tells of it: it only ever says that it is down, again and again."""
+
+    def __init__(self) -> None:
+        self._until_s = float("-inf")
+        self.down = False
+
+    def pressed(self, now_s: float) -> bool:
+        """The key has come in; whether it has just gone down."""
+        went, self.down = not self.down, True
+        self._until_s = max(self._until_s, now_s + (FIRST_S if went else AGAIN_S))
+        return went
+
+    def is_up(self, now_s: float) -> bool:
+        """Whether it has just come up."""
+        if not self.down or now_s <= self._until_s:
+            return False
+        self.down = False
+        return True
+
+
+class LiveFront:
+    """Shows the latest scene on stderr and hands on what keys ask for.
+
+    ask: called from the front's own thread with what a key asks for, "hold" and "held" for the hold-to-run
+    """
+
+    def __init__(self, ask: Callable[[str], None], now: Callable[[], float], meters: Meters, quiet: bool = False):
+        self._ask, self._now, self._meters, self._quiet = ask, now, meters, quiet
+        self._scene: Scene | None = None
+        self._told: deque[str] = deque(maxlen=MOST_TOLD)
+        self._unsaid: deque[str] = deque(maxlen=1000)
+        self._ends = threading.Event()
+        self._lives = not quiet and is_terminal(sys.stderr) and os.environ.get("TERM") != "dumb"
+        self._colour = self._lives and not os.environ.get("NO_COLOR")
+        self._keys = is_terminal(sys.stdin) and in_foreground()
+        self._hold = HoldKey()
+        self._shown: list[str] = []
+        self._size = (0, 0)
+        self._thread: threading.Thread | None = None
+
+    @property
+    def answers(self) -> bool:
+        """Whether there is somebody who sees and has keys."""
+        return self._lives and self._keys
+
+    @property
+    def told(self) -> tuple[str, ...]:
+        """What was told of late, for the screen."""
+        return tuple(self._told)
+
+    def tell(self, said: tuple[str, ...]) -> None:
+        """Something for the operator."""
+        self._told.extend(said)
+        self._unsaid.extend(said)
+
+    def show(self, scene: Scene) -> None:
+        """The latest scene; costs the engine next to nothing."""
+        self._scene = scene
+
+    def __enter__(self) -> "LiveFront":
+        if self._lives:
+            self._write("\x1b[?1049h\x1b[?25l\x1b[2J")
+        self._thread = threading.Thread(target=self._live, name="front", daemon=True)
+        self._thread.start()
+        return self
+
+    def __exit__(self, *_: object) -> None:
+        self._ends.set()
+        if self._thread is not None:
+            self._thread.join(timeout=1.0)
+        if self._lives:
+            self._write("\x1b[?25h\x1b[?1049l")
+            for said in list(self._told)[-20:]:
+                self._write(said + "\n")
+
+    def _live(self) -> None:
+        with keys_at_once(self._keys):
+            while not self._ends.is_set():
+                self._draw()
+                self._listen()
+            self._draw()
+
+    def _listen(self) -> None:
+        if not self._keys:
+            self._ends.wait(REFRESH_S)
+            return
+        try:
+            ready, _, _ = select.select([sys.stdin], [], [], REFRESH_S)
+            typed = os.read(sys.stdin.fileno(), 256) if ready else None
+        except (OSError, ValueError):
+            typed = b""
+        if typed is not None and not typed:
+            # The terminal is gone; the signal that says so stops the run.
+            self._keys = False
+        self._typed(typed or b"")
+        if self._hold.is_up(self._now()):
+            self._ask("held")
+
+    def _typed(self, typed: bytes) -> None:
+        # An arrow or function key begins with Escape too, but more follows at once: no vent by a slip of the cursor keys.
+        keys = "" if len(typed) > 1 and typed[:1] == b"\x1b" else typed.decode(errors="replace").lower()
+        for key in keys:
+            if key == HOLD:
+                if self._hold.pressed(self._now()):
+                    self._ask("hold")
+                continue
+            asks = KEYS.get(key)
+            paused = self._scene is not None and self._scene.status.state == "paused"
+            if asks == "pause" and paused:
+                asks = "go_on"
+            if asks and not (asks == "go_on" and not paused):
+                self._ask(asks)
+
+    def _draw(self) -> None:
+        if not self._lives:
+            while self._unsaid:
+                said = self._unsaid.popleft()
+                if not self._quiet:
+                    self._write(said + "\n")
+            return
+        if self._scene is None:
+            return
+        width, height = _size()
+        if (width, height) != self._size:
+            self._size, self._shown = (width, height), []
+            self._write("\x1b[2J")
+        if width < SMALLEST[0] or height < SMALLEST[1]:
+            lines = [f"{self._scene.status.state}; wider, please"[:width]]
+        else:
+            lines = frame(self._scene, self._meters, width - 1, height, self._colour)
+        # Only lines that have changed are written, all at once: nothing flickers.
+        out = []
+        for row, line in enumerate(lines):
+            if row >= len(self._shown) or self._shown[row] != line:
+                out.append(f"\x1b[{row + 1};1H{line}\x1b[K")
+        self._shown = lines
+        if out:
+            self._write("".join(out))
+
+    def _write(self, text: str) -> None:
+        with contextlib.suppress(OSError, ValueError):
+            sys.stderr.write(text)
+            sys.stderr.flush()
+
+
+def _size() -> tuple[int, int]:
+    try:
+        size = os.get_terminal_size(sys.stderr.fileno())
+        return max(1, size.columns), max(1, size.lines)
+    except OSError:
+        return 80, 24

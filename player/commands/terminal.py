@@ -1,0 +1,41 @@
+"""What is asked of a terminal: whether there is one, whether its keys come here, and that they come one by one."""
+
+import contextlib
+import os
+import sys
+from collections.abc import Iterator
+
+
+def is_terminal(stream: object) -> bool:
+    """Whether a stream is one."""
+    try:
+        return stream is not None and os.isatty(stream.fileno())
+    except (OSError, ValueError, AttributeError):
+        return False
+
+
+def in_foreground() -> bool:
+    """Whether keys come to this program."""
+    try:
+        return os.tcgetpgrp(sys.stdin.fileno()) == os.getpgrp()
+    except OSError:
+        return False
+
+
+@contextlib.contextmanager
+def keys_at_once(wanted: bool) -> Iterator[None]:
+    """Keys come one by one and are not shown; signals by key stay."""
+    if not wanted:
+        yield
+        return
+    import termios
+    import tty
+
+    handle = sys.stdin.fileno()
+    was = termios.tcgetattr(handle)
+    try:
+        tty.setcbreak(handle, termios.TCSANOW)
+        yield
+    finally:
+        with contextlib.suppress(OSError, termios.error):
+            termios.tcsetattr(handle, termios.TCSANOW, was)
