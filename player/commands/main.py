@@ -8,6 +8,7 @@ COMMANDS = {
     "retime": ("composer.commands.retime", "Change the times as little as possible, so that the rig can do the score."),
     "preview": ("composer.commands.preview", "Simulate how the fibers would really move."),
     "play": ("player.commands.play", "Play a score in real time."),
+    "live": ("player.commands.live", "Play a rig by hand, or a score under the hands."),
     "device": ("player.commands.device", "A simulated valve driver behind a pseudo-terminal."),
     "tempo": ("player.commands.tempo", "Tempi and markers of a MIDI file as a score has them, and the way back."),
     "preflight": ("player.commands.preflight", "What must be true before arming, a line each."),
