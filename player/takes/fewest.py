@@ -1,6 +1,7 @@
 """The fewest moves from the start of a take to its end: breadth-first over places and targets, all series at once."""
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -37,14 +38,13 @@ def fewest(places: Places, moves: Moves) -> tuple[list[Path | None], Index]:
     """
     steps, breaks = _steps(places, moves)
     broken = np.unique(places.series[breaks])
-    by_target = np.argsort(moves.target, kind="stable")
-    begins = np.searchsorted(moves.target[by_target], np.arange(len(places.place) + 1))
     levels = places.targets()
-    rough = _roughness(places, levels)
-    paths = [
-        None if series in broken else _back(series, places, moves, steps, by_target, begins, levels, rough)
-        for series in range(len(places.first) - 1)
-    ]
+    cost, before, by = _roundest(moves, steps, _roughness(places, levels), levels)
+    paths: list[Path | None] = []
+    for series, last in enumerate(places.first[1:] - 1):
+        ends = np.where(steps[last] == steps[last].min(), cost[last], np.inf)
+        found = last * LEVELS + int(np.argmin(ends))
+        paths.append(None if series in broken else _back(found, places, moves, levels, before, by))
     return paths, breaks
 
 
@@ -108,33 +108,57 @@ def _roughness(places: Places, levels: Array) -> Array:
     return by_place[:, None] + by_number
 
 
-def _back(
-    series: int,
-    places: Places,
-    moves: Moves,
-    steps: NDArray[np.int32],
-    order: Index,
-    begins: Index,
-    levels: Array,
-    rough: Array,
-) -> Path:
-    """One path, from the end of a series to its start."""
-    at = int(places.first[series + 1]) - 1
-    best = np.where(steps[at] == steps[at].min(), rough[at], np.inf)
-    level = int(np.argmin(best))
-    knots, shapes = [(at, level)], []
-    while steps[at, level]:
-        into = order[begins[at] : begins[at + 1]]
-        source = moves.source[into]
-        good = (steps[source] == steps[at, level] - 1) & ((moves.masks[into] >> level) & 1).astype(bool)
-        edge, from_level = np.nonzero(good)
-        cost = rough[source[edge], from_level] + 0.5 * (moves.shape[into[edge]] > 1)
-        cost -= 1.0 * (np.abs(levels[source[edge], from_level] - levels[at, level]) < 1e-9)
-        pick = int(np.argmin(cost))
-        shapes.append(moves.shape[into[edge[pick]]])
-        at, level = int(source[edge[pick]]), int(from_level[pick])
-        knots.append((at, level))
-    knots.reverse()
-    node = np.array([place for place, _ in knots])
-    share = levels[node, [level for _, level in knots]]
-    return Path(places.place[node], places.time_s[node], share, np.array(shapes[::-1], dtype=np.int8))
+BENT = 0.5
+"""What a bent shape costs beside a straight or a smooth one, in the same measure as places and targets."""
+
+HELD = -1.0
+"""What a hold costs."""
+
+MOST_PAIRS = 1 << 16
+
+
+def _roundest(
+    moves: Moves, steps: NDArray[np.int32], rough: Array, levels: Array
+) -> tuple[Array, NDArray[np.int64], NDArray[np.int64]]:
+    """Of the ways of fewest moves the one that reads best: for each target of each place its cost, (N, LEVELS), and for each
+    state (place times LEVELS plus target) the state before and the move from there, (N * LEVELS,)."""
+    lots = [np.empty((0, 3), dtype=np.int64)]
+    for begin in range(0, len(moves.source), MOST_PAIRS):
+        part = slice(begin, begin + MOST_PAIRS)
+        source, target, masks = moves.source[part], moves.target[part], moves.masks[part]
+        leads = steps[source][:, :, None] + 1 == steps[target][:, None, :]
+        leads &= ((masks[:, :, None] >> np.arange(LEVELS, dtype=np.uint8)) & 1).astype(bool)
+        edge, a, b = np.nonzero(leads)
+        lots.append(np.column_stack([begin + edge, source[edge] * LEVELS + a, target[edge] * LEVELS + b]))
+    edge, left, right = np.concatenate(lots).T
+    number = steps.ravel()[right]
+    order = np.lexsort((right, number))
+    edge, left, right, number = edge[order], left[order], right[order], number[order]
+    flat = levels.ravel()
+    each = rough.ravel()[right] + BENT * (moves.shape[edge] > 1)
+    each += HELD * (np.abs(flat[left] - flat[right]) < 1e-9)
+    cost = np.zeros(steps.size)
+    before, by = np.full(steps.size, -1), np.full(steps.size, -1)
+    bounds = np.flatnonzero(np.diff(number, prepend=-1, append=NEVER))
+    for low, high in pairwise(bounds):
+        total = cost[left[low:high]] + each[low:high]
+        lead = np.flatnonzero(np.diff(right[low:high], prepend=-1))
+        sizes = np.diff(lead, append=high - low)
+        least = np.minimum.reduceat(total, lead)
+        best = np.flatnonzero(total <= np.repeat(least, sizes))
+        state = right[low:high][best]
+        first = np.flatnonzero(np.diff(state, prepend=-1))
+        state, best = state[first], best[first] + low
+        cost[state], before[state], by[state] = least, left[best], edge[best]
+    return cost.reshape(steps.shape), before, by
+
+
+def _back(state: int, places: Places, moves: Moves, levels: Array, before: Index, by: Index) -> Path:
+    """The path that leads to a state."""
+    states, shapes = [state], []
+    while before[state] >= 0:
+        shapes.append(moves.shape[by[state]])
+        state = int(before[state])
+        states.append(state)
+    node, level = np.divmod(np.array(states[::-1]), LEVELS)
+    return Path(places.place[node], places.time_s[node], levels[node, level], np.array(shapes[::-1], dtype=np.int8))

@@ -108,16 +108,23 @@ def round_number(value: Array) -> Array:
     return power * np.select([lead >= 5.0 - 1e-9, lead >= 2.0 - 1e-9], [5.0, 2.0], 1.0)
 
 
+SIXTEENTH = UNIT // 16
+
+
 def nearby(place: Index, around: int, step: int) -> Index:
-    """Places within `around` UNITs of others, on a grid of `step`."""
-    grid = (place[:, None] // step + np.arange(-(around // step), around // step + 1)) * step
-    return np.unique(grid[grid > 0])
+    """Places within `around` UNITs of others, on a grid of `step`, and the sixteenths of counts among them."""
+    found = []
+    for grain in {step, max(step, SIXTEENTH)}:
+        grid = (place[:, None] // grain + np.arange(-(around // grain) - 1, around // grain + 2)) * grain
+        near = np.abs(grid - place[:, None]) <= max(around, grain)
+        found.append(grid[near & (grid > 0)])
+    return np.unique(np.concatenate(found))
 
 
 def _range(played: Played, tempo: TempoMap) -> tuple[int, int]:
     """The first place and the last: where the take begins, and the first round place at or after its end."""
     begin, end = tempo.counts([played.begin_s, played.end_s])
-    whole = UNIT // 16
+    whole = SIXTEENTH
     low = round(float(begin) * UNIT)
     high = int(np.ceil(float(end) * UNIT / whole - 1e-6)) * whole
     return low, max(high, low + 1)

@@ -4,6 +4,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.check import Check, check
@@ -26,6 +27,9 @@ ROUNDS = 12
 
 WATCHED = 1
 """So many rounds it is enough to look at more instants; after that the slack falls too."""
+
+CLOSER = 4
+"""So many rounds a passage that is too fast is mended by rates alone."""
 
 TIGHTER, LEAST = 0.8, 0.1
 """By how much the slack of such a passage falls, and to what share of the tolerance at least."""
@@ -144,6 +148,7 @@ class _Settling:
         self.voices, self.played, self.share, self.start = voices, played, share, start
         self.rig, self.abilities, self.tempo, self.tolerance = rig, abilities, tempo, tolerance
         self.grid_s, self.late = grid_s, late
+        self.known: dict[int, tuple[Path, Array, NDArray[np.bool_]]] = {}
         self.voice_of = {int(f): number for number, voice in enumerate(voices) for f in voice.fibers}
 
     def run(self) -> Settled:
@@ -175,14 +180,22 @@ class _Settling:
         checked = check(tracks, self.rig, self.abilities)
         worst = np.zeros(tracks.fibers)
         off: dict[int, Array] = {}
-        for number, voice in enumerate(self.voices):
-            for fiber in voice.fibers:
-                error = np.abs(self._curve(tracks, int(fiber)) - self.share[[int(fiber)]][0])
-                worst[fiber] = error.max()
-                far = error > self.tolerance
-                if far.any():
-                    off[number] = off.get(number, np.zeros(len(far), dtype=bool)) | far
+        for number, (voice, path) in enumerate(zip(self.voices, paths, strict=True)):
+            if self.known.get(number, (None,))[0] is not path:
+                self.known[number] = path, *self._errors(voice, tracks)
+            _, worst[voice.fibers], far = self.known[number]
+            if far.any():
+                off[number] = far
         return Settled(self.voices, paths, tracks, checked, worst, self.late), off
+
+    def _errors(self, voice: Voice, tracks: Tracks) -> tuple[Array, NDArray[np.bool_]]:
+        """By how much each fiber of a voice is off at worst, and where any is off by too much, (M,)."""
+        far, worst = np.zeros(len(self.grid_s), dtype=bool), np.empty(len(voice.fibers))
+        for k, fiber in enumerate(voice.fibers):
+            error = np.abs(self._curve(tracks, int(fiber)) - self.share[[int(fiber)]][0])
+            worst[k] = error.max()
+            far |= error > self.tolerance
+        return worst, far
 
     def _curve(self, tracks: Tracks, fiber: int) -> Array:
         """The share of stroke of one fiber on the grid."""
@@ -216,6 +229,10 @@ class _Settling:
                 if snag.kind in ("rate", "accel"):
                     watch[number] = np.union1d(watch[number], instants)
                     ease[number] = SLOWER if self.round > WATCHED else 1.0
+                    # At last it is to stay so close to what was played that it goes no faster than that did.
+                    by = 1.0 if self.round <= CLOSER else TIGHTER**3
+                    for span in self._moves_between(settled.paths[number], snag):
+                        slack[number, span] *= by
                 elif snag.kind == "switching" and rest[number] == 0.0:
                     rest[number] = SPARE / snag.has
                 else:
