@@ -51,18 +51,28 @@ def paint(painter: QPainter, scene: Scene, width: int, height: int) -> None:
     rows = image.rows_of(scene.bands, plan.room)
     painter.fillRect(0, 0, width, height, colour(palette.GROUND))
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    _title(painter, plan, scene, width)
-    _bars(painter, plan, rows, scene)
-    _threads(painter, plan, image.threads(scene.share, scene.extending, rows))
-    _names(painter, plan, rows, scene)
-    _bar_lines_over(painter, plan, rows, scene)
-    _snags(painter, plan, rows, scene)
+    heading(painter, plan, rows, scene, width)
+    threads(painter, plan, rows, scene)
     _pins(painter, plan, rows, scene)
     _cues(painter, plan, rows, scene)
     below = plan.top + rows.height
     free = height - below - plan.look.px(40) - plan.look.px(28)
     lanes.paint(painter, plan.look, scene, plan.left, below, plan.width, min(free, 2 * plan.lane_room))
     legend.paint(painter, plan.look, scene, QRectF(plan.left, height - plan.look.px(36), plan.width, plan.look.px(30)))
+
+
+def heading(painter: QPainter, plan: Layout, rows: Rows, scene: Scene, width: int) -> None:
+    """Draw the title and the bars."""
+    _title(painter, plan, scene, width)
+    _bars(painter, plan, rows, scene)
+
+
+def threads(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
+    """Draw the threads with their names, bar lines and snags."""
+    _threads(painter, plan, image.threads(scene.share, scene.extending, rows))
+    _names(painter, plan, rows, scene)
+    _bar_lines_over(painter, plan, rows, scene)
+    _snags(painter, plan, rows, scene)
 
 
 def x_of(plan: Layout, scene: Scene, at_s: float) -> float:

@@ -66,6 +66,7 @@ def as_json(retiming: Retiming, checked: Check, rig: Rig, tempo: TempoMap) -> di
         "bound": _number(retiming.bound),
         "solve_s": retiming.solve_s,
         "snags_left": [snag_as_json(snag, _teller(retiming, rig, tempo)) for snag in checked.snags],
+        "stopped": retiming.stopped,
         "pins": [
             {"place": tempo.say_place(at_s), "at_s": at_s, "strokes": pin.force, "says": pin_in_words(pin, at_s, tempo)}
             for pin, at_s in zip(pins, retiming.pins_s.tolist(), strict=False)
@@ -115,6 +116,9 @@ def _summary(retiming: Retiming) -> str:
         return "Nothing had to move."
     hits, leads = len(retiming.hits_moved), len(retiming.leads)
     gap = retiming.cost - retiming.bound
+    if retiming.stopped:
+        told = f"the best known when time was up, at most {gap:.3g} above the least there can be"
+        return f"{_count(hits, 'hit')} moved. Cost {retiming.cost:.4g} stroke-seconds, {told}."
     proof = "proven to be the least there is" if gap <= PROVEN * max(1.0, retiming.cost) else (
         f"at most {gap:.3g} above the least there can be"
     )  # fmt: skip

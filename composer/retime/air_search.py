@@ -17,6 +17,7 @@ from composer.limits.buckets import overdraws
 from composer.retime.air_cuts import overdrawn, share_rows
 from composer.retime.cuts import duty_spans
 from composer.retime.events import Events
+from composer.retime.flow import Budget, Unsolved
 from composer.retime.local import Least, least_cost
 from composer.retime.rows import Rows, joined
 from composer.retime.stage import Stage, at_times
@@ -47,20 +48,26 @@ class Found:
 
 
 def better(
-    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, best: Found | None, limit_s: float
-) -> Found | None:
-    """The cheapest of what is found from several beginnings and `best`; None where nothing is.
+    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, best: Found | None, budget: Budget
+) -> tuple[Found | None, bool]:
+    """The cheapest of what is found from several beginnings and `best`, None where nothing is.
 
     bottom: the optimum of the rows that are true for all times, which ask too little
+    Returns as well whether time was up before all were tried.
     """
     moving = int(np.count_nonzero(bottom.free))
     tries = next((tries for most, tries in BEGINNINGS if moving <= most), 0)
-    for start in _beginnings(stage, bottom, best, tries):
-        x = _descend(stage, rig, abilities, rows, bottom, start, limit_s)
-        found = None if x is None else _hardened(stage, rig, abilities, rows, bottom, x, limit_s)
+    begin = _beginnings(stage, bottom, best, tries)
+    for number, start in enumerate(begin):
+        budget.say(f"air: beginning {number + 1} of {len(begin)}")
+        try:
+            x = _descend(stage, rig, abilities, rows, bottom, start, budget)
+            found = None if x is None else _hardened(stage, rig, abilities, rows, bottom, x, budget)
+        except Unsolved:
+            return best, True
         if found is not None and (best is None or found.least.cost < best.least.cost * (1.0 - 1e-9)):
             best = found
-    return best
+    return best, False
 
 
 def _beginnings(stage: Stage, bottom: Least, best: Found | None, tries: int) -> list[Array]:
@@ -88,7 +95,7 @@ def _beginnings(stage: Stage, bottom: Least, best: Found | None, tries: int) -> 
 
 
 def _descend(
-    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, start: Array, limit_s: float
+    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, start: Array, budget: Budget
 ) -> Array | None:
     """Times near some beginning that overdraw as little as may be, and cost as little."""
     events, x = stage.events, start
@@ -98,7 +105,7 @@ def _descend(
         for _ in range(STEPS):
             now = at_times(stage, x)
             about = share_rows(overdrawn(now, rig, abilities, NEAR), now, events, x, rig, abilities)
-            step = least_cost(events, joined([rows, about]), stage.terms, bottom.free, False, limit_s, price)
+            step = least_cost(events, joined([rows, about]), stage.terms, bottom.free, False, budget, price)
             if step is None:
                 return None
             predicted = step.cost + price * float(np.maximum(about.least - about.matrix @ step.shift_s, 0.0).sum())
@@ -131,14 +138,14 @@ def _overdraft(stage: Stage, rig: Rig, abilities: Abilities, shift_s: Array) -> 
 
 
 def _hardened(
-    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, x: Array, limit_s: float
+    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, x: Array, budget: Budget
 ) -> Found | None:
     """The optimum about some times, with rows added until the checker would find nothing; None where they clash."""
     events: Events = stage.events
     now = at_times(stage, x)
     about = share_rows(overdrawn(now, rig, abilities, NEAR), now, events, x, rig, abilities)
     for _ in range(HARDEN):
-        found = least_cost(events, joined([rows, about]), stage.terms, bottom.free, False, limit_s)
+        found = least_cost(events, joined([rows, about]), stage.terms, bottom.free, False, budget)
         if found is None:
             return None
         now = at_times(stage, found.shift_s)

@@ -6,6 +6,7 @@ and a free start with nothing but a rest before it and a move behind it needs no
 two hits alone. HiGHS (Huangfu and Hall 2018) solves it by its dual simplex; the balances' multipliers are the shifts.
 """
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import highspy
@@ -21,11 +22,33 @@ TOLERANCE = 1e-10
 
 
 class Unsolved(Exception):
-    """The solver gave up; `status` and `message` are its own."""
+    """The solver gave up; `status` and `message` are its own, `tried` says what it was given."""
 
-    def __init__(self, status: str, message: str):
-        self.status = status
+    def __init__(self, status: str, message: str, tried: str):
+        self.status, self.tried = status, tried
         super().__init__(message)
+
+
+@dataclass(frozen=True, slots=True)
+class Budget:
+    """How long all may take: `clock` says the time in s, `until` when it is up; `tell` hears what is being done."""
+
+    clock: Callable[[], float]
+    until: float
+    tell: Callable[[str], None] | None = None
+
+    def left(self) -> float:
+        """Seconds left."""
+        return self.until - self.clock()
+
+    def say(self, text: str) -> None:
+        """Tell whoever waits what is being done."""
+        if self.tell is not None:
+            self.tell(text)
+
+
+ENDLESS = Budget(lambda: 0.0, np.inf)
+"""As long as it takes."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -82,10 +105,10 @@ def merged(arcs: Arcs, nodes: int) -> tuple[Arcs, Index, Array]:
     return Arcs(arcs.later[first], arcs.earlier[first], arcs.least_s[first], lowest, most), group, share
 
 
-def circulate(arcs: Arcs, wide: Wide, nodes: int, limit_s: float = np.inf) -> tuple[Array, Array, Array] | None:
+def circulate(arcs: Arcs, wide: Wide, nodes: int, budget: Budget = ENDLESS) -> tuple[Array, Array, Array] | None:
     """The forces of arcs (C,) and wide rows (W,) and the shifts (nodes,) at the optimum; None where no shifts keep the rows.
 
-    Raises Unsolved where HiGHS fails or runs past `limit_s`.
+    Raises Unsolved where HiGHS fails or runs past its budget.
     """
     count = len(arcs.least_s)
     if not count + len(wide.least_s) or not nodes:
@@ -102,8 +125,12 @@ def circulate(arcs: Arcs, wide: Wide, nodes: int, limit_s: float = np.inf) -> tu
         "parallel": "off",
         "random_seed": 0,
     }
-    if np.isfinite(limit_s):
-        options["time_limit"] = max(limit_s, 1e-3)
+    left = budget.left()
+    tried = f"a programme of {nodes} moments and {len(few.least_s) + len(wide.least_s)} rows"
+    if left <= 0.0:
+        raise Unsolved("kTimeLimit", "Time limit reached", tried)
+    if np.isfinite(left):
+        options["time_limit"] = left
     for name, value in options.items():
         solver.setOptionValue(name, value)
     solver.passModel(_model(few, wide, nodes))
@@ -112,7 +139,7 @@ def circulate(arcs: Arcs, wide: Wide, nodes: int, limit_s: float = np.inf) -> tu
     if status in (highspy.HighsModelStatus.kUnbounded, highspy.HighsModelStatus.kUnboundedOrInfeasible):
         return None
     if status != highspy.HighsModelStatus.kOptimal:
-        raise Unsolved(status.name, solver.modelStatusToString(status))
+        raise Unsolved(status.name, solver.modelStatusToString(status), tried)
     found = solver.getSolution()
     force = np.array(found.col_value)
     return force[: len(few.least_s)][group] * share, force[len(few.least_s) :], -np.array(found.row_dual)

@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.retime.events import Events
+from composer.retime.flow import ENDLESS, Budget
 from composer.retime.programme import solve
 from composer.retime.reach import reached
 from composer.retime.rows import Rows
@@ -43,7 +44,7 @@ def least_cost(
     terms: Terms,
     free: Flags | None = None,
     whole: bool = False,
-    limit_s: float = np.inf,
+    budget: Budget = ENDLESS,
     slack_price: float = np.inf,
 ) -> Least | None:
     """The least-cost shifts of all events, or None where no times satisfy the rows.
@@ -75,7 +76,7 @@ def least_cost(
         free[events.own_hit[events.hits :][following]] = True
         chosen = _inside(rows, free)
         left = contract(events, priced, free)
-        found = solve(rows, chosen, np.flatnonzero(free), left, limit_s, slack_price)
+        found = solve(rows, chosen, np.flatnonzero(free), left, budget, slack_price)
         if found is None:
             return None
         shift = np.zeros(count)

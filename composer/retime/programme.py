@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy import sparse
 
-from composer.retime.flow import Arcs, Unsolved, Wide, circulate
+from composer.retime.flow import ENDLESS, Arcs, Budget, Unsolved, Wide, circulate
 from composer.retime.rows import ABOVE_ROW, HOLD_ROW, MOVE_ROW, Rows
 from composer.retime.terms import Contracted
 
@@ -53,12 +53,12 @@ class _Starts:
 
 
 def solve(
-    rows: Rows, chosen: Index, events: Index, terms: Contracted, limit_s: float = np.inf, slack_price: float = np.inf
+    rows: Rows, chosen: Index, events: Index, terms: Contracted, budget: Budget = ENDLESS, slack_price: float = np.inf
 ) -> Solved | None:
     """The least cost over `events` (n,) subject to the rows `chosen` (m,), which name no other event; None where none fits.
 
     slack_price: finite: what a second costs by which a row that speaks of more than two events is broken, in strokes
-    Raises Unsolved where HiGHS fails or runs past `limit_s`.
+    Raises Unsolved where HiGHS fails or runs past its budget.
     """
     n, m = len(events), len(chosen)
     number = np.full(rows.matrix.shape[1], -1, dtype=np.int64)
@@ -99,7 +99,7 @@ def solve(
     name[nodes] = np.arange(len(nodes))
     later, earlier, *rest = (np.concatenate([part[k] for part in parts]) for k in range(5))
     arcs = Arcs(name[later], name[earlier], *rest)
-    found = circulate(arcs, Wide(sparse.csr_array(matrix[other][:, nodes]), least[other], price[other]), len(nodes), limit_s)
+    found = circulate(arcs, Wide(sparse.csr_array(matrix[other][:, nodes]), least[other], price[other]), len(nodes), budget)
     if found is None:
         return None
     force, wide, at_nodes = found

@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.retime.apply import retimed
+from composer.retime.flow import Budget
 from composer.retime.memory import Memory
 from composer.retime.pins import Chain, chains_too_long
 from composer.retime.polish import polish
@@ -81,7 +82,7 @@ class Retiming:
     tracks: the new tracks; those as written where pins are too close
     bound: proven: no retiming costs less
     pins_s: (P,) the pins in order of time; proof: what causes and pins' costs are read from, None where pins leave no answer
-    memory: for a retiming after this one
+    memory: for a retiming after this one; stopped: whether time was up before these times were proven the best
     warp_was_s, warp_now_s: 0, the hits and the score's end as written and as retimed, (W,) each, rising
     """
 
@@ -100,6 +101,7 @@ class Retiming:
     pins_s: Array
     proof: Proof | None = field(repr=False)
     memory: Memory = field(repr=False)
+    stopped: bool = False
 
 
 def retime(
@@ -115,6 +117,7 @@ def retime(
     whole: bool = False,
     limit_s: float = np.inf,
     clock: Callable[[], float] = lambda: 0.0,
+    tell: Callable[[str], None] | None = None,
     after: Retiming | None = None,
 ) -> Retiming:
     """The least change of times after which the rig can do the score.
@@ -125,7 +128,9 @@ def retime(
     whole: solve all at once rather than round the snags (for comparison; the answer costs the same)
     after: a retiming of nearly the same score for the same abilities, from which what has not changed is taken
     clock: what says the time in seconds, for `solve_s`; without one that is 0
-    Raises Unsolved where the solver fails or runs past `limit_s`.
+    limit_s: how long the search may take by that clock; then the best times known are the answer, if there are any
+    tell: hears what is being done, and "" at the end
+    Raises Unsolved where the solver fails or time is up and no times are known.
     """
     began = clock()
     pins = np.sort(np.asarray(pins_s, dtype=float))
@@ -161,7 +166,9 @@ def retime(
             break
         tracks = retimed(current, stage.origin, current.time_s, tracks.duration_s)
         stage, chains = build(tracks)
-    found = None if chains else answer(stage, rig, abilities, whole, limit_s, _as_before(stage, after))
+    budget = Budget(clock, began + limit_s, tell)
+    found = None if chains else answer(stage, rig, abilities, whole, budget, _as_before(stage, after))
+    budget.say("")
     short = tuple(_short(chain, stage, abilities) for chain in chains)
     return _told(stage, tracks, abilities, pins, keep, found, shrunk, short, clock() - began)
 
@@ -261,6 +268,7 @@ def _told(
         was_s=tracks.duration_s,
         pins_s=pins_s,
         memory=stage.memory,
+        stopped=found is not None and found.stopped,
         proof=_proof(stage, found, shift, abilities, len(pins_s)),
         **_warp(was, now, tracks.duration_s, new.duration_s),
     )

@@ -9,9 +9,12 @@ from composer.limits.abilities import Abilities
 from composer.retime.air_cuts import Span, overdrawn, plainly_enough, share_rows, whole_rows
 from composer.retime.air_search import Found, better
 from composer.retime.cuts import duty_rows, duty_spans
+from composer.retime.flow import ENDLESS, Budget, Unsolved
 from composer.retime.local import Least, least_cost
+from composer.retime.polish import polish
 from composer.retime.rows import ABOVE_ROW, AIR_ROW, Rows, joined, no_rows, picked
 from composer.retime.stage import Stage, at_times
+from composer.retime.terms import cost
 from composer.rig.model import Rig
 
 Array = NDArray[np.float64]
@@ -30,11 +33,15 @@ GIVEN_UP_S = 1e-6
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Answer:
-    """The optimum found, the rows that it was found with, and how many rows no times could keep."""
+    """The optimum found, the rows that it was found with, and how many rows no times could keep.
+
+    stopped: whether time was up, so that these are the best times known and not the best there are
+    """
 
     least: Least
     rows: Rows
     given_up: int
+    stopped: bool = False
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -57,7 +64,7 @@ def answer(
     rig: Rig,
     abilities: Abilities,
     whole: bool = False,
-    limit_s: float = np.inf,
+    budget: Budget = ENDLESS,
     free: Flags | None = None,
 ) -> Answer | None:
     """The least-cost times that keep every row and every span, or None where pins leave none.
@@ -65,31 +72,51 @@ def answer(
     Rows over more than two events that no times can keep are given up, as few as a high price on each finds.
     free: (N,) events to begin with, as an earlier solution moved them
     """
-    bottom = _bottom(stage, rig, abilities, whole, limit_s, free)
+    try:
+        bottom = _bottom(stage, rig, abilities, whole, budget, free)
+    except Unsolved:
+        known = _pushed(stage)
+        if known is None:
+            raise
+        return Answer(known, stage.rows, 0, True)
     if bottom is None:
         return None
     if not bottom.spans:
         return Answer(bottom.least, bottom.rows, bottom.given_up)
-    closed = _closed_in(stage, rig, abilities, bottom, limit_s)
-    clean = closed if closed is not None and closed[1] else None
-    found = better(stage, rig, abilities, bottom.rows, bottom.least, None if clean is None else clean[0], limit_s)
-    if found is None:
-        found = closed[0] if closed is not None else Found(bottom.least, no_rows(stage.events))
+    found, clean, stopped = Found(bottom.least, no_rows(stage.events)), False, False
+    try:
+        closed = _closed_in(stage, rig, abilities, bottom, budget)
+        found, clean = (found, False) if closed is None else closed
+    except Unsolved:
+        stopped = True
+    best, late = better(stage, rig, abilities, bottom.rows, bottom.least, found if clean else None, budget)
+    found = found if best is None else best
     least = replace(found.least, bound=bottom.least.bound)
-    return Answer(least, joined([bottom.rows, found.shares]), bottom.given_up)
+    return Answer(least, joined([bottom.rows, found.shares]), bottom.given_up, stopped or late)
 
 
-def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, limit_s: float, free: Flags | None) -> _Bottom | None:
+def _pushed(stage: Stage) -> Least | None:
+    """Times found without a search, where there are some: what is broken pushes what follows, and pins what is before."""
+    events, rows = stage.events, stage.rows
+    shift = polish(events, rows, np.zeros(len(events.written_s)))
+    if len(rows.short(shift)):
+        return None
+    every = np.ones(len(shift), dtype=bool)
+    return Least(shift, cost(stage.terms, shift), 0.0, np.zeros(len(rows.least)), every)
+
+
+def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: Budget, free: Flags | None) -> _Bottom | None:
     """Cutting planes, each true for all times, until the times at hand break none of them."""
     events = stage.events
     rows, given_up, no_air = stage.rows, 0, False
     coils: set[tuple[int, int]] = set()
     air: set[tuple[int, int]] = set()
     least, spans = None, []
-    for _ in range(ROUNDS):
-        least = least_cost(events, rows, stage.terms, free, whole, limit_s)
+    for number in range(ROUNDS):
+        budget.say(f"round {number + 1}: {len(rows.least)} rows")
+        least = least_cost(events, rows, stage.terms, free, whole, budget)
         if least is None:
-            kept = _keepable(stage, rows, whole, limit_s)
+            kept = _keepable(stage, rows, whole, budget)
             dropped = len(rows.least) - len(kept.least)
             if not dropped:
                 return None
@@ -110,11 +137,11 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, limit_s: 
             break
         rows = joined([rows, more])
     if least is None or len(least.dual) != len(rows.least):
-        least = least_cost(events, rows, stage.terms, free, whole, limit_s)
+        least = least_cost(events, rows, stage.terms, free, whole, budget)
     return None if least is None else _Bottom(least, rows, given_up, no_air, spans)
 
 
-def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, limit_s: float) -> tuple[Found, bool] | None:
+def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, budget: Budget) -> tuple[Found, bool] | None:
     """Times closed in on from the bottom by rows about the times of each round, and whether the checker finds them clean."""
     events, least = stage.events, bottom.least
     shares = no_rows(events)
@@ -124,21 +151,21 @@ def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, li
         if not spans:
             return Found(least, shares), not duty_spans(now, rig, abilities, set())
         more = joined([shares, share_rows(spans, now, events, least.shift_s, rig, abilities)])
-        found = least_cost(events, joined([bottom.rows, more]), stage.terms, least.free, False, limit_s)
+        found = least_cost(events, joined([bottom.rows, more]), stage.terms, least.free, False, budget)
         if found is None:
             # Rows about earlier times may stand in one another's way. The latest alone are true to the times at hand; what
             # they ask beyond what can be is given at a price, so that the next round starts nearer.
             more = picked(more, np.arange((len(more.least) + 1) // 2, len(more.least)))
-            found = least_cost(events, joined([bottom.rows, more]), stage.terms, least.free, False, limit_s, _price(stage))
+            found = least_cost(events, joined([bottom.rows, more]), stage.terms, least.free, False, budget, _price(stage))
         if found is None:
             return None
         least, shares = found, more
     return Found(least, shares), False
 
 
-def _keepable(stage: Stage, rows: Rows, whole: bool, limit_s: float) -> Rows:
+def _keepable(stage: Stage, rows: Rows, whole: bool, budget: Budget) -> Rows:
     """The rows less those over more than two events that stay broken at a high price."""
-    least = least_cost(stage.events, rows, stage.terms, None, whole, limit_s, _price(stage))
+    least = least_cost(stage.events, rows, stage.terms, None, whole, budget, _price(stage))
     if least is None:
         return rows
     broken = (rows.kind >= ABOVE_ROW) & (rows.least - rows.matrix @ least.shift_s > GIVEN_UP_S)

@@ -42,7 +42,7 @@ def test_a_score_that_time_mends_ends_with_0_and_both_files_are_written(demo):
     assert found.return_value == 0, found.output
     told = json.loads(found.stdout)
     assert told["ok"] and not told["snags_left"] and told["cost"] == pytest.approx(told["bound"])
-    keys = "ok keep duration_s was_s hits_moved leads shrunk pins_short cost bound solve_s snags_left pins"
+    keys = "ok keep duration_s was_s hits_moved leads shrunk pins_short cost bound solve_s snags_left stopped pins"
     assert list(told) == keys.split()
     (hit,) = told["hits_moved"]
     assert hit["held_by"]["kind"] == "move" and hit["held_by"]["says"].startswith("reed.1 needs")
@@ -53,6 +53,37 @@ def test_a_score_that_time_mends_ends_with_0_and_both_files_are_written(demo):
     moving = play.tracks.time_s[play.tracks.first[0] : play.tracks.first[1]]
     assert flat.tracks.time_s[flat.tracks.first[0] : flat.tracks.first[1]] == pytest.approx(moving, abs=1e-6)
     assert [cue.seconds for cue in play.cues] == [4.0]
+
+
+def test_the_picture_shows_both_scores_and_is_written_only_where_time_mends(demo):
+    from PySide6.QtGui import QImage
+
+    path = score(demo, "  reed.1-8  up\n")
+    found = run(path, "--png", demo / "both.png")
+    assert found.return_value == 0, found.output
+    picture = QImage(str(demo / "both.png"))
+    assert (picture.width(), picture.height()) == (1600, 1000)
+    bad = score(demo, "  reed.1  up\n", "pin 1:1.25\n")
+    assert run(bad, "--png", demo / "none.png").return_value == 1
+    assert not (demo / "none.png").exists()
+
+
+def test_when_time_is_up_the_best_that_is_known_is_told_as_such(demo, monkeypatch):
+    import time
+
+    ticks = iter(range(0, 1_000_000, 100))
+    path = score(demo, "  reed.1  up\n")
+    with monkeypatch.context() as patched:
+        patched.setattr(time, "perf_counter", lambda: float(next(ticks)))
+        found = run(path, "--limit", "50")
+    assert found.return_value == 0, found.output
+    assert "the best known when time was up" in found.output
+
+
+def test_two_outputs_cannot_be_one_file(demo):
+    path = score(demo, "  reed.1  up\n")
+    found = run(path, "-o", demo / "same", "--png", demo / "same")
+    assert isinstance(found.exception, Faults) and "a file each" in str(found.exception)
 
 
 def test_pins_too_close_end_with_1_nothing_written_and_say_what_would_mend_it(demo):
