@@ -12,6 +12,9 @@ from typing import IO, Any, NoReturn
 from composer.faults import Fault, Faults, Where, fault
 
 _FULL = {errno.ENOSPC, errno.EDQUOT, errno.EFBIG, errno.EIO, errno.EROFS}
+_HANDWRITING = {".score": "a score", ".rig.toml": "a rig file", ".map.toml": "a map file"}
+"""Endings of the files that people write."""
+
 _MARKS = {b"\xff\xfe": "UTF-16", b"\xfe\xff": "UTF-16"}
 
 
@@ -111,10 +114,16 @@ def _saying(name: str, *also: str) -> Iterator[None]:
         raise
 
 
-def check_writable(path: str | os.PathLike[str]) -> None:
-    """Raise `Faults` now if `replacing(path)` would fail later: before long work starts, with nothing left behind."""
+def check_writable(path: str | os.PathLike[str], made: str | None = "") -> None:
+    """Raise `Faults` now if `replacing(path)` would fail later: before long work starts, with nothing left behind.
+
+    So too where a score, a rig or a map stands there that a person may have written, which is any that does not begin with
+    `made`, the words with which the caller's own files begin. With None whatever stands there may go.
+    """
     name = os.fspath(path)
     was = _target(name)
+    if was is not None and stat.S_ISREG(was.st_mode) and made is not None:
+        _spare_handwriting(name, made)
     if was is not None and not stat.S_ISREG(was.st_mode):
         if not os.access(name, os.W_OK):
             _cannot("write", name, PermissionError(errno.EACCES, os.strerror(errno.EACCES)))
@@ -122,6 +131,24 @@ def check_writable(path: str | os.PathLike[str]) -> None:
     beside, handle = _beside(name, os.path.realpath(name))
     os.close(handle)
     _remove(beside)
+
+
+def _spare_handwriting(name: str, made: str) -> None:
+    """Raise where a text that somebody may have worked on would be lost to a slip of the hand; empty files are none."""
+    what = next((what for ending, what in _HANDWRITING.items() if name.lower().endswith(ending)), None)
+    if what is None:
+        return
+    try:
+        with open(name, "rb") as file:
+            start = file.read(max(len(made.encode()), 1))
+    except OSError as error:
+        _cannot("write", name, error)
+    if start and not (made and start == made.encode()):
+        raise fault(
+            name,
+            f"cannot write: there is {what} of this name already, and it would be lost",
+            hint="name another file, or move that one away first",
+        )
 
 
 def say_bytes(count: int) -> str:

@@ -36,7 +36,7 @@ def command(
     _outputs_apart({"--png": png, "-o": output}, [bench, rig])
     for path in (png, output):
         if path:
-            check_writable(path)
+            check_writable(path, "# fitted from ")
     hung = load_rig(rig) if rig else None
     read = read_bench(read_text(bench, MOST_BYTES), bench)
     with click.progressbar(

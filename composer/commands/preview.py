@@ -44,11 +44,11 @@ def command(
     from composer.report import preview
 
     _outputs_apart({"--png": png, "--csv": csv}, [score, rig])
+    piece = load_piece(score, rig)
+    _outputs_apart({"--png": png, "--csv": csv}, [score, piece.rig.file])
     for path in (png, csv):
         if path:
             check_writable(path)
-    piece = load_piece(score, rig)
-    _outputs_apart({"--png": png, "--csv": csv}, [score, piece.rig.file])
     columns = 16384 if window else 2
     if png:
         from composer.picture.cloth import layout

@@ -42,7 +42,7 @@ def command(
     for source in (take, onto, rig):
         if source is not None and source != onto and os.path.realpath(source) == os.path.realpath(out):
             raise fault(out, f"writing here would overwrite {source}, which is read", hint="name another file")
-    check_writable(out)
+    check_writable(out, None if onto else "# Played by hand")
     made = make_score(
         take, out, rig=rig, tolerance=tolerance / 100.0, onto=onto, at=at, tempo=tempo, meter=meter, title=title
     )  # fmt: skip

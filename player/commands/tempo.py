@@ -29,7 +29,7 @@ def command(source: str, output: str | None) -> int:
         if os.path.exists(output) and os.path.exists(source) and os.path.samefile(output, source):
             raise fault(output, "the output is the input", "another file to write to")
         _suits(output, is_midi)
-        check_writable(output)
+        check_writable(output, "# from " if is_midi else "")
     elif not is_midi:
         raise fault(source, "a score becomes a MIDI file, which cannot be shown", hint="say where to: -o OUT.mid")
     if is_midi:

@@ -163,3 +163,21 @@ def test_looking_whether_a_file_can_be_written_leaves_nothing(tmp_path):
 def test_a_folder_that_takes_no_files_is_known_before_work_starts():
     with pytest.raises(Faults, match="cannot write: "):
         check_writable("/proc/out.csv")
+
+
+@pytest.mark.parametrize("name", ["piece.score", "small.rig.toml", "Small.RIG.TOML", "hands.map.toml"])
+def test_what_people_write_is_not_lost_to_an_output_of_that_name(tmp_path, name):
+    path = tmp_path / name
+    path.write_text("# Made by hand\n")
+    for made in ("", "# from ", "# Made by hands"):
+        with pytest.raises(Faults, match="of this name already, and it would be lost"):
+            check_writable(path, made)
+    check_writable(path, "# Made by hand")
+    check_writable(path, None)
+    assert path.read_text() == "# Made by hand\n"
+
+
+def test_an_empty_score_and_files_of_other_endings_may_be_replaced(tmp_path):
+    for name, text in (("piece.score", ""), ("piece.play", "x"), ("reed.toml", "x")):
+        (tmp_path / name).write_text(text)
+        check_writable(tmp_path / name)
