@@ -89,10 +89,19 @@ def paint(painter: QPainter, sheet: Sheet) -> None:
         _stroke(painter, look, QRectF(16, top + 38, half - 24, ROW - 64), row.able)
         _rates(painter, look, QRectF(half + 8, top + 38, half - 24, ROW - 64), row.able)
     foot = QRectF(24, sheet.height - FOOT, sheet.width - 48, 30)
-    note = "Dashed: the last 2 % of stroke on either way keep the rate from before, as the pressure behind the flow dies away."
+    look.write(painter, foot, foot_note(sheet), 12, palette.QUIET_INK)
+
+
+def foot_note(sheet: Sheet) -> str:
+    """What stands below: of dashed lines only where some are drawn, which no rated make has."""
+    notes = []
+    if any(row.able.physics is not None for row in sheet.rows):
+        notes.append(
+            "Dashed: the last 2 % of stroke on either way keep the rate from before, as the pressure behind the flow dies away."
+        )
     if sheet.left_out:
-        note += f"  {sheet.left_out} more makes have no room here."
-    look.write(painter, foot, note, 12, palette.QUIET_INK)
+        notes.append(f"{sheet.left_out} more makes have no room here.")
+    return "  ".join(notes)
 
 
 def _unit(able: Capability) -> tuple[float, str]:

@@ -77,8 +77,9 @@ def as_text(score: str, checked: Check, teller: Teller, notes: Iterable[str] = (
     if len(places) > MOST_TOLD:
         lines.append(f"and {len(places) - MOST_TOLD} more earlier in the score; --json lists them all")
     lines += [f"{score}: {note}" for note in notes]
+    full = round(checked.lowest_kPa) >= round(rig.supply.max_receiver_kPa)
     lines.append(
-        f"air: {checked.used_L:.1f} L in all, the receiver falls to {checked.lowest_kPa:.0f} kPa "
+        f"air: {checked.used_L:.1f} L in all, the receiver {'stays at' if full else 'falls to'} {checked.lowest_kPa:.0f} kPa "
         f"({rig.supply.min_pressure_kPa:.0f} kPa is the least)"
     )
     if checked.duty_fiber is not None:

@@ -4,7 +4,7 @@ import pytest
 from composer.fiber.modelled import capability
 from composer.limits.abilities import abilities_of
 from composer.picture import palette
-from composer.picture.makes import FOOT, HEAD, MOST_ROWS, ROW, loop, paint, sheet_of
+from composer.picture.makes import FOOT, HEAD, MOST_ROWS, ROW, foot_note, loop, paint, sheet_of
 from composer.picture.png import drawn
 from composer.rig.reading import read_rig
 
@@ -15,7 +15,8 @@ from ..fiber.rigs import rig_of
 def pixels_of(picture):
     picture = picture.convertToFormat(picture.Format.Format_RGB888)
     data = np.frombuffer(picture.constBits(), np.uint8).reshape(picture.height(), picture.bytesPerLine())
-    return data[:, : 3 * picture.width()].reshape(picture.height(), picture.width(), 3)
+    # A copy, as the picture may be gone before its pixels are looked at.
+    return data[:, : 3 * picture.width()].reshape(picture.height(), picture.width(), 3).copy()
 
 
 def has(pixels, colour):
@@ -52,6 +53,12 @@ def test_a_rated_make_has_rates_and_no_pressure(make_rig):
     pixels = pixels_of(drawn(lambda painter: paint(painter, sheet), sheet.width, sheet.height))
     assert has(pixels[:, sheet.width // 2 :], palette.DUTY)
     assert not has(pixels[:, : sheet.width // 2], palette.DUTY)
+
+
+def test_dashed_lines_are_explained_only_where_there_are_some(make_rig):
+    rated, modelled = make_rig(2), read_rig(rig_of("contractile", CORD, count=3), "f")
+    assert foot_note(sheet_of(rated, abilities_of(rated))) == ""
+    assert foot_note(sheet_of(modelled, abilities_of(modelled))).startswith("Dashed: ")
 
 
 def test_more_makes_than_there_is_room_for_are_counted():

@@ -101,3 +101,9 @@ def test_a_cue_that_waits_in_mid_move_is_noted_and_one_that_waits_in_a_hold_is_n
 
 def test_a_length_is_said_in_minutes_where_it_is_long():
     assert (minutes(61.5), minutes(216.2), minutes(3599.99)) == ("61.5 s", "3:36.2 min", "60:00.0 min")
+
+
+def test_a_receiver_that_is_never_drawn_down_by_half_a_kilopascal_stays_where_it_is(make_rig):
+    little, much = make_rig(1, air_mL=0.1), make_rig(1, air_mL=300.0)
+    assert "the receiver stays at 800 kPa (450 kPa" in as_text("a.score", *_both(little, _fast(1)))
+    assert "the receiver falls to 7" in as_text("a.score", *_both(much, _fast(1)))
