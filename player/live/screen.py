@@ -30,6 +30,9 @@ HOLD_KEY = ("h", "hold to run")
 
 _COLOURS = {"armed": "32", "playing": "32", "paused": "33", "resting": "33", "vented": "31"}
 BOLD, DIM, RED, YELLOW = "1", "2", "31", "33"
+SINGLE = 40
+"""Characters that a fiber's own meter takes at least."""
+
 AGE_S = 2.0
 """A source that has said something within this time is shown as lively."""
 
@@ -54,18 +57,24 @@ class Scene:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Meters:
-    """Rows of the meters: names, and the fibers (indices) of each; stroke: (F,)."""
+    """Rows of the meters: names, and the fibers (indices) of each; fibers: their names; stroke: (F,)."""
 
     rows: tuple[tuple[str, NDArray[np.int64]], ...]
+    fibers: tuple[str, ...]
     stroke: Array
 
 
 def meters_of(groups: Mapping[str, Sequence[int]], fibers: Sequence[str], stroke: Array) -> Meters:
-    """A row for each group, largest first as they are written; fibers of no group have a row each."""
+    """A row for each group, in their order; fibers of no group share one with those whose names begin alike, as reed.*."""
     rows = [(name, np.array(of, dtype=np.int64)) for name, of in groups.items() if of]
     grouped = {int(index) for _, of in rows for index in of}
-    rows += [(name, np.array([index])) for index, name in enumerate(fibers) if index not in grouped]
-    return Meters(tuple(rows), stroke)
+    stems: dict[str, list[int]] = {}
+    for index, name in enumerate(fibers):
+        if index not in grouped:
+            stem, dot, _ = name.rpartition(".")
+            stems.setdefault(f"{stem}.*" if dot else name, []).append(index)
+    rows += [(fibers[of[0]] if len(of) == 1 else stem, np.array(of)) for stem, of in stems.items()]
+    return Meters(tuple(rows), tuple(fibers), stroke)
 
 
 def frame(scene: Scene, meters: Meters, width: int, height: int, colour: bool) -> list[str]:
@@ -74,10 +83,11 @@ def frame(scene: Scene, meters: Meters, width: int, height: int, colour: bool) -
     head = _head(scene, width, paint)
     keys = _keys(scene, width, paint)
     room = max(0, height - len(head) - len(keys))
-    told_rows = min(max(2, room // 5), 12)
+    told_rows = min(max(2, room // 5), 12, len(scene.told))
     sources = _sources(scene, width, max(1, min(len(scene.seen), room // 4)), paint)
     rows = max(1, room - len(sources) - told_rows - 2)
     bars = _bars(scene, meters, width, rows, paint)
+    bars += _singles(scene, meters, width, rows - len(bars), paint)
     middle = [*sources, _rule("wanted ▏ allowed", width, paint), *bars, _rule("", width, paint)]
     told_rows = max(0, room - len(middle))
     told = [_cut(f"  {said}", width) for said in list(scene.told)[-told_rows:]] if told_rows else []
@@ -150,6 +160,25 @@ def _bars(scene: Scene, meters: Meters, width: int, rows: int, paint: _Paint) ->
         cells.append(_pad(f"   and {count - len(shown)} more", each))
     tall = -(-len(cells) // columns)
     return ["  ".join(cells[row::tall]) for row in range(tall)]
+
+
+def _singles(scene: Scene, meters: Meters, width: int, rows: int, paint: _Paint) -> list[str]:
+    """Every fiber by itself, where there is room for all of them."""
+    columns = max(1, width // SINGLE)
+    tall = -(-len(meters.fibers) // columns)
+    if tall + 1 > rows or len(meters.rows) >= len(meters.fibers):
+        return []
+    view, cells = scene.view, []
+    each = width // columns
+    for index, name in enumerate(meters.fibers):
+        allowed = float(np.clip(view.allowed[index] / meters.stroke[index], 0.0, 1.0))
+        bar = max(4, each - 31)
+        full = round(allowed * bar)
+        hand = "*" if view.touched[index] else " "
+        text = f" {hand}{_pad(name, 12)} {100 * allowed:3.0f} % "
+        why = paint(_pad(f" {CAUSES[view.cut[index]].shown}", each - len(text) - bar), YELLOW)
+        cells.append(paint(text, BOLD if hand == "*" else "") + "█" * full + "·" * (bar - full) + why)
+    return [_rule("fibers", width, paint), *("".join(cells[row::tall]) for row in range(tall))]
 
 
 def _meter(name: str, of: NDArray[np.int64], view: View, stroke: Array, width: int, paint: _Paint) -> str:
