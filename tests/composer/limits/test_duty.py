@@ -70,3 +70,16 @@ def test_a_coil_watched_in_small_steps_overheats_when_the_check_says(make_rig, m
     if found:
         assert max(s.needs - s.has for s in found) == pytest.approx(warmest - burst, abs=0.1)
     assert all(np.isfinite([s.needs, s.has]).all() for s in found)
+
+
+def test_a_coil_of_each_duty_class_bears_its_share_of_every_period_and_no_more(make_rig, make_tracks, outside):
+    for percent in outside["duty_classes"]["percent"]:
+        share, period = percent / 100.0, 20.0
+        rig = make_rig(1, duty=share, duty_burst_s=share * (1.0 - share) * period)
+
+        def periods(on_s, period=period):
+            return [(on_s, 0.2, "linear"), (period - on_s, 0.2, "hold"), (on_s, 0.0, "linear"), (period - on_s, 0.0, "hold")] * 3
+
+        assert _find(make_tracks(periods(share * period)), rig) == []
+        if percent < 100:
+            assert _find(make_tracks(periods(1.02 * share * period)), rig) != []
