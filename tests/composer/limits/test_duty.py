@@ -78,7 +78,8 @@ def test_a_coil_of_each_duty_class_bears_its_share_of_every_period_and_no_more(m
         rig = make_rig(1, duty=share, duty_burst_s=share * (1.0 - share) * period)
 
         def periods(on_s, period=period):
-            return [(on_s, 0.2, "linear"), (period - on_s, 0.2, "hold"), (on_s, 0.0, "linear"), (period - on_s, 0.0, "hold")] * 3
+            off_s = period - on_s
+            return [(on_s, 0.2, "linear"), (off_s, 0.2, "hold"), (on_s, 0.0, "linear"), (off_s, 0.0, "hold")] * 3
 
         assert _find(make_tracks(periods(share * period)), rig) == []
         if percent < 100:
