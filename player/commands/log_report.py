@@ -5,6 +5,8 @@ from typing import Any
 
 import numpy as np
 
+from player.commands.counted import small
+from player.commands.run_report import HOW
 from player.engine.told import Told, apart, landings, lateness
 
 SHOWN = 12
@@ -107,7 +109,8 @@ def sentences(whole: dict[str, Any]) -> Iterator[str]:
     if not whole["sound"]:
         cut = f"; the last {whole['left_bytes']} bytes are no whole record" if whole["left_bytes"] else ""
         yield f"The log breaks off at {whole['place']}{cut}. What follows tells of the run up to there."
-    yield f"Ended: {whole['ended']} at {whole['place']}" + (f" ({whole['why']})." if whole["why"] else ".")
+    how = HOW.get(whole["ended"], "Broken off")
+    yield f"{how} at {whole['place']}" + (f": {whole['why']}." if whole["why"] and whole["ended"] != "end" else ".")
     yield f"{whole['sets']} sets in {whole['duration_s']:.1f} s at {whole['rate_Hz']:g} Hz; {whole['senses']} senses."
     yield from _lateness(whole)
     yield from _hits(whole)
@@ -128,7 +131,7 @@ def _lateness(whole: dict[str, Any]) -> Iterator[str]:
     counts = [one["ticks"] for one in whole["lateness"]]
     if not sum(counts):
         return
-    yield f"Ticks by how late they came (the latest {whole['latest_ms']:.2f} ms):"
+    yield f"Ticks by how late they came (the latest {small(whole['latest_ms'])} ms):"
     last = max(n for n, count in enumerate(counts) if count)
     for one in whole["lateness"][: last + 1]:
         edge = "later" if one["to_ms"] is None else f"to {one['to_ms']:g} ms"
@@ -143,9 +146,9 @@ def _hits(whole: dict[str, Any]) -> Iterator[str]:
         return
     sizes = sorted(abs(one["error"]) for one in hits)
     middle = 100.0 * sizes[len(sizes) // 2]
-    yield f"{len(hits)} landings sensed: half of them within {middle:.2f} % of stroke. The worst:"
-    wide = max(len(one["fiber"]) for one in hits[:SHOWN])
-    yield f"  {'place':<10} {'fiber':<{wide}}  wanted  sensed   off by"
+    yield f"{len(hits)} landings sensed: half of them within {max(middle, 0.01):.2f} % of stroke. The worst:"
+    wide = max(len("fiber"), *(len(one["fiber"]) for one in hits[:SHOWN]))
+    yield f"  {'place':<10} {'fiber':<{wide}}   wanted   sensed    off by"
     for one in hits[:SHOWN]:
-        parts = f"{100 * one['wanted']:6.1f}% {100 * one['sensed']:6.1f}% {100 * one['error']:+7.2f}%"
-        yield f"  {one['place']:<10} {one['fiber']:<{wide}}  {parts}"
+        parts = f"{100 * one['wanted']:6.1f} % {100 * one['sensed']:6.1f} % {100 * one['error']:+7.2f} %"
+        yield f"  {one['place']:<10} {one['fiber']:<{wide}} {parts}"

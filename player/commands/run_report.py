@@ -3,6 +3,7 @@
 from collections.abc import Sequence
 from typing import Any
 
+from player.commands.counted import sentence, small
 from player.commands.played import Played
 from player.engine.loop import Engine
 from player.outputs.base import Output
@@ -66,7 +67,7 @@ def _largest_error(engine: Engine, played: Played) -> dict[str, Any] | None:
     }
 
 
-_HOW = {
+HOW = {
     "end": "Played to its end",
     "stopped": "Stopped and brought to rest",
     "vented": "Vented",
@@ -76,23 +77,21 @@ _HOW = {
 
 def sentences(told: dict[str, Any]) -> list[str]:
     """The report as a person reads it."""
-    lines = [f"{_HOW[told['ended']]} at {told['place']} after {told['duration_s']:.1f} s; the player is {told['state']}."]
+    lines = [f"{HOW[told['ended']]} at {told['place']} after {told['duration_s']:.1f} s; the player is {told['state']}."]
     late = told["lateness_ms"]
     lines.append(
         f"{told['ticks']} ticks at {told['rate_Hz']:g} Hz, sent {told['ahead_ms']:.0f} ms ahead; {told['late_ticks']} late by"
-        f" more than a tick, {told['past_due']} past due (99 % within {late['p99']:.2f} ms, worst {late['max']:.2f} ms)."
+        f" more than a tick, {told['past_due']} past due (99 % within {max(late['p99'], 0.01):.2f} ms, worst {small(late['max'])} ms)."
     )
     if told["stalls"]:
         lines.append(f"The host stood still {told['stalls']} times, {told['stalled_s']:.2f} s in all; the score waited for it.")
     error = told["largest_error"]
     if error is not None:
         lines.append(
-            f"Furthest from the score: {error['fiber']} at {error['place']}, by {100.0 * error['error_of_stroke']:.2f} % of its"
-            " stroke."
+            f"Furthest from the score: {error['fiber']} at {error['place']}, by {small(100.0 * error['error_of_stroke'])} %"
+            " of its stroke."
         )
-    for output in told["outputs"]:
-        counted = ", ".join(f"{key} {value:g}" for key, value in output.items() if key not in ("target", "drivers"))
-        lines.append(f"{output['target']} ({'+'.join(output['drivers'])}): {counted}.")
+    lines += map(sentence, told["outputs"])
     lines += [f"Fault at {fault['place']}: {fault['say']}." for fault in told["faults"]]
     if told["more_faults"]:
         lines.append(f"... and {told['more_faults']} more of them.")

@@ -150,7 +150,7 @@ def test_the_log_has_head_states_sets_and_end(score):
         (["--to", "sim", "--log", "nowhere/run.log"], "no folder"),
         (["--to", "file:nowhere/a.rec"], "no folder"),
         (["--to", "file:bench.score"], "is read"),
-        (["--to", "sim", "--log", "bench.rig.toml"], "is read"),
+        (["--to", "sim", "--log", "bench.rig.toml"], "there is a rig file of this name already"),
         (["--to", "file:a.rec", "--log", "a.rec"], "is written already"),
         (["--to", "serial:/dev/no-such-port", "--arm"], "no such port"),
         (["--to", "sim", "--rig", "nowhere.rig.toml"], "no such file"),

@@ -32,6 +32,13 @@ def test_a_whole_log_is_told_with_its_landings_and_lateness(log, capsys):
     assert run(["report", log]) == 0
     said = capsys.readouterr().out
     assert "8 landings sensed" in said and "Ticks by how late they came" in said and "No faults." in said
+    lines = said.splitlines()
+    assert "Played to its end at 1:2.5." in lines
+    # Heads of columns end where the numbers below them end.
+    head = next(n for n, line in enumerate(lines) if line.startswith("  place"))
+    for name in ("wanted", "sensed", "off by"):
+        end = lines[head].index(name) + len(name)
+        assert all(line[:end].endswith(" %") for line in lines[head + 1 : head + 9])
 
 
 def test_a_log_cut_off_is_told_up_to_there_and_says_so(log, capsys):
