@@ -26,7 +26,7 @@ def test_no_sampled_strain_changes_faster_than_its_fiber_can(make_rig, seed, kee
     assert change.min() >= -EXHAUST * (1.0 + 2e-6) - 1e-9
 
 
-@settings(max_examples=6, deadline=None)
+@settings(max_examples=3, deadline=None)
 @given(st.integers(0, 10_000))
 def test_no_receiver_reckoned_from_samples_falls_below_its_least(make_rig, seed):
     rig = make_rig(4, fill=FILL, exhaust=EXHAUST, air_mL=30.0, receiver_L=0.012, compressor_L_min=0.9)

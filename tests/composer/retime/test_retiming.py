@@ -286,7 +286,7 @@ def test_fills_that_overdraw_the_receiver_alone_are_spread_until_it_bears_them(m
     assert found.bound <= found.cost + 1e-9
 
 
-@settings(max_examples=8, deadline=None)
+@settings(max_examples=5, deadline=None)
 @given(seeds, keeps)
 def test_where_air_is_short_no_snag_is_left_and_the_bound_is_never_above_the_cost(make_rig, seed, keep):
     rig = short_of_air(make_rig)
