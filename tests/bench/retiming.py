@@ -205,8 +205,8 @@ def with_cuts() -> None:
     """Two lines: a score short of coil, and of air, over the same score with plenty of both."""
     tracks = with_rests(1500, 16, 0.05)
     times = {}
-    for name, more in (("plenty", {}), ("duty", {"duty": 0.5, "duty_burst_s": 3.0}),
-                       ("air", {"receiver_L": 0.03, "compressor_L_min": 0.8})):  # fmt: skip
+    for name, more in (("plenty", {}), ("duty", {"duty": 0.65, "duty_burst_s": 4.0}),
+                       ("air", {"air_mL": 30.0, "receiver_L": 0.06, "compressor_L_min": 9.0})):  # fmt: skip
         rig = make_rig.__wrapped__()(16, **more)
         began = time.perf_counter()
         found = retime(tracks, abilities_of(rig), rig, np.empty(0))
