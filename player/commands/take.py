@@ -12,7 +12,9 @@ import click
 @click.option("--tolerance", metavar="PERCENT", type=float, default=1.0, show_default=True,
               help="How far the score may be off what was played, in per cent of each fiber's stroke.")  # fmt: skip
 @click.option("--onto", metavar="SCORE", type=click.Path(path_type=str), help="Lay the take over this score.")
-@click.option("--at", "at", metavar="CUE|PLACE", help="With --onto: from this cue or place on; from its own start unless given.")
+@click.option(
+    "--at", "at", metavar="CUE|PLACE", help="With --onto: from this cue or place on; from its own start unless given."
+)
 @click.option("--rig", metavar="RIG", type=click.Path(path_type=str), help="The rig, where it is not where the take has it.")
 @click.option("--tempo", metavar="N", type=float, help="Counts a minute, for a take that was not played to a score; 60.")
 @click.option("--meter", metavar="N/V", help="Counts in a bar and their note value, likewise; 4/4.")
@@ -38,7 +40,9 @@ def command(
     if at is not None and onto is None:
         raise fault("--at", "a place, but no score that the take is laid over", hint="name the score with --onto")
     if onto is not None and (tempo is not None or meter is not None or title is not None):
-        raise fault("--onto", "the score has a tempo, a meter and a title of its own", "no --tempo, --meter or --title beside it")
+        raise fault(
+            "--onto", "the score has a tempo, a meter and a title of its own", "no --tempo, --meter or --title beside it"
+        )
     for source in (take, onto, rig):
         if source is not None and source != onto and os.path.realpath(source) == os.path.realpath(out):
             raise fault(out, f"writing here would overwrite {source}, which is read", hint="name another file")

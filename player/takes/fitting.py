@@ -6,7 +6,6 @@ their ends are weighed in full, with the targets at each, and again closer. Each
 (tests hold the whole against an exhaustive one). Where no moves lead on, closer places are added until they do.
 """
 
-
 import numpy as np
 
 from composer.score.tempo import TempoMap

@@ -21,7 +21,7 @@ SAME = 1e-9
 
 @dataclass(frozen=True, slots=True)
 class Laid:
-    """The text of a score with a take laid over it; fell: lines of entries that the take has taken over from, wholly or in part."""
+    """The text of a score with a take laid over it; fell: lines of entries from which it has taken over, or in part."""
 
     text: str
     fell: tuple[int, ...]
@@ -75,16 +75,16 @@ def lay_over(
     text = "\n".join(lines).rstrip("\n") + "\n\n" + "".join(f"# {line}\n" for line in about)
     text += "\n" + written.phrases if written.phrases else ""
     if kept:
-        text += f"\nsection {name}.beside at 1:1     # what the entries above that were taken over play elsewhere\n" + "".join(kept)
+        text += f"\n# What the entries above that were taken over play elsewhere.\nsection {name}.beside at 1:1\n" + "".join(
+            kept
+        )
     return Laid(f"{text}\nsection {name} at 1:1\n{written.entries}", tuple(fell))
 
 
 def _by_name(entry: Entry, starts: Starts, all_of: Index, left: Index) -> bool:
     """Whether the entry says the same of the fibers that are left once the others are not named any more."""
     ordered = entry.canon or entry.ripple or entry.mirror
-    return not ordered and not np.isin(starts.fiber[left], np.setdiff1d(starts.fiber[all_of], starts.fiber[left])).any() and len(
-        left
-    ) == np.count_nonzero(np.isin(starts.fiber[all_of], starts.fiber[left]))  # fmt: skip
+    return not ordered and np.count_nonzero(np.isin(starts.fiber[all_of], starts.fiber[left])) == len(left)
 
 
 def _one_by_one(entry: Entry, starts: Starts, left: Index, rig: Rig, selector: Selector, tempo: TempoMap) -> list[str]:
@@ -97,7 +97,8 @@ def _one_by_one(entry: Entry, starts: Starts, left: Index, rig: Rig, selector: S
     together: dict[int, list[int]] = defaultdict(list)
     for start in left:
         together[round(float(starts.count[start]) * UNIT)].append(int(starts.fiber[start]))
-    return [
-        f"  {fibers_text(np.array(sorted(fibers)), rig, selector)}  {entry.phrase.text}  at {place_text(place, tempo)}{options}\n"
-        for place, fibers in sorted(together.items())
-    ]
+    lines = []
+    for place, fibers in sorted(together.items()):
+        who = fibers_text(np.array(sorted(fibers)), rig, selector)
+        lines.append(f"  {who}  {entry.phrase.text}  at {place_text(place, tempo)}{options}\n")
+    return lines

@@ -97,7 +97,9 @@ def make_score(
 
 def _laid(take: Take, out: str, loaded: Loaded, tolerance: float, at: str | None, about: list[str], name: str) -> Made:
     score, rig, abilities, tempo = loaded.score, loaded.rig, loaded.abilities, loaded.tempo
-    if os.path.realpath(os.path.dirname(os.path.abspath(out))) != os.path.realpath(os.path.dirname(os.path.abspath(score.file))):
+    if os.path.realpath(os.path.dirname(os.path.abspath(out))) != os.path.realpath(
+        os.path.dirname(os.path.abspath(score.file))
+    ):
         raise fault(out, f"the paths in {score.file} start from its folder", "a file in that folder", "name one beside it")
     begin_s = float(take.time_s[0]) if at is None else _instant(at, loaded)
     # What was played before is dropped; where it comes in between two samples, it is where it was just then.

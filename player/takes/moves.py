@@ -33,7 +33,7 @@ EVEN = 8
 GOING = 32
 """Instants of a sudden move while it goes."""
 
-SUDDENS = 2048
+SUDDENS = 1024
 """Sudden moves worked out at once."""
 
 BLOCK = 1 << 17
@@ -87,7 +87,7 @@ def moves_of(played: Played, places: Places, pairs: Likely, watched: list[Array]
         mine = shapes == NAMES.index(shape)
         lots.append(_fitting(played, places, sources[mine], targets[mine], shape, watch))
     mine = shapes == SUDDEN
-    lots.append(_suddens(played, places, sources[mine], targets[mine]))
+    lots.append(_suddens(played, places, sources[mine], targets[mine], watch))
     return Moves(*(np.concatenate([lot[part] for lot in lots]) for part in range(4)))
 
 
@@ -267,7 +267,7 @@ def _levels(places: Places, source: Index) -> Array:
     return levels
 
 
-def _suddens(played: Played, places: Places, source: Index, target: Index) -> tuple:
+def _suddens(played: Played, places: Places, source: Index, target: Index, watch: "_Watch") -> tuple:
     """The sudden moves that fit: they wait, then go as fast as the fiber goes and arrive at the place."""
     masks = np.zeros((len(source), LEVELS), dtype=np.uint8)
     rising = places.share[target] > places.share[source]
@@ -275,11 +275,13 @@ def _suddens(played: Played, places: Places, source: Index, target: Index) -> tu
         mine = np.flatnonzero((places.series[source] == series) & (rising == up))
         for begin in range(0, len(mine), SUDDENS):
             part = mine[begin : begin + SUDDENS]
-            way = _Sudden(played, places, played.clocks[series], source[part], target[part], up)
+            clock = played.clocks[series]
+            way = _Sudden(played, places, clock, source[part], target[part], up)
             # First with the values that were played, twice the slack being allowed.
             near = np.all(np.abs(way.curve(way.b)(way.a) - way.met) <= 2.0 * way.slack, axis=1)
             if near.any():
-                masks[part[near]] = way.of(near).masks(places)
+                part = part[near]
+                masks[part] = _Sudden(played, places, clock, source[part], target[part], up, watch).masks(places)
     good = np.flatnonzero(masks.any(axis=1))
     return source[good], target[good], np.full(len(good), SUDDEN, dtype=np.int8), masks[good]
 
@@ -288,25 +290,24 @@ class _Sudden:
     """Some sudden moves of one series, one way, held against what was played at some instants over the whole of each and at
     more while it goes."""
 
-    def __init__(self, played: Played, places: Places, clock: Clock, source: Index, target: Index, up: bool):
+    def __init__(
+        self, played: Played, places: Places, clock: Clock, source: Index, target: Index, up: bool,
+        watch: "_Watch | None" = None,
+    ):  # fmt: skip
         self.clock_s, self.share, self.up = (clock.up_s if up else clock.down_s), clock.share, up
         self.source, self.target, series = source, target, places.series[source]
         self.a, self.b = places.share[source], places.share[target]
         self.lasts = places.time_s[target] - places.time_s[source]
         self.rest = played.rest_s[series]
         going = np.minimum(1.3 * self.takes(self.a, self.b) + 0.01, self.lasts)[:, None] * (np.arange(GOING) + 0.5) / GOING
-        self.left = np.concatenate([going, self.lasts[:, None] * (np.arange(EVEN) + 0.5) / EVEN], axis=1)
+        whole = self.lasts[:, None] * (np.arange(EVEN) + 0.5) / EVEN
+        if watch is not None:
+            watched = watch.instants(source, target, int(watch.points(source, target).max()))
+            whole = places.time_s[target][:, None] - watched
+        self.left = np.concatenate([going, whole], axis=1)
         when = places.time_s[target][:, None] - self.left
         self.met = played.at(played.share, series[:, None], when)
         self.slack = ROOM * np.broadcast_to(played.slack_at(series[:, None], when), self.met.shape)
-
-    def of(self, some: NDArray[np.bool_]) -> "_Sudden":
-        """Some of them."""
-        fewer = object.__new__(_Sudden)
-        fewer.clock_s, fewer.share, fewer.up = self.clock_s, self.share, self.up
-        for name in ("source", "target", "a", "b", "lasts", "rest", "left", "met", "slack"):
-            setattr(fewer, name, getattr(self, name)[some])
-        return fewer
 
     def takes(self, a: Array, b: Array) -> Array:
         """Seconds from a to b, below 0 the other way."""

@@ -98,7 +98,9 @@ def places_of(played: Played, tempo: TempoMap, closeness: float, only: list[Inde
     many = np.clip(high - low + 1, 0, LEVELS)
     share[first[:-1]] = played.start
     many[first[:-1]] = 1
-    return Places(first, series, place, time, share, slack, grain, low.astype(np.int64), many.astype(np.int64), np.zeros(len(place), bool))
+    return Places(
+        first, series, place, time, share, slack, grain, low.astype(np.int64), many.astype(np.int64), np.zeros(len(place), bool)
+    )
 
 
 def round_number(value: Array) -> Array:

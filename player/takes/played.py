@@ -1,4 +1,4 @@
-"""What was played, made ready for fitting: shares of stroke on an even grid of time, with what each may miss and how fast it may go."""
+"""What was played, made ready for fitting: shares of stroke on an even grid of time, what each may miss, how fast it may go."""
 
 from dataclasses import dataclass, replace
 
@@ -26,7 +26,7 @@ class Played:
     """S series on a grid of M instants, `begin_s` and then every `step_s`.
 
     share: (S, M) of usable stroke; slack: (S, M) by how much a curve may miss it
-    up, down: (S, RATES) the fastest rates at shares from 0 to 1, share a second; bend: (S,) the greatest acceleration, share a s²
+    up, down: (S, RATES) the fastest rates at shares from 0 to 1, share a second; bend: (S,) greatest acceleration, share a s²
     start: (S,) where the curve begins, exactly; clocks: for each series, None where it may not go `sudden`
     rest_s: (S,) holds that are shorter are not wanted; watch: for each series, instants at which a curve is to be held
         against it besides those that its own corners ask for

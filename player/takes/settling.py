@@ -209,7 +209,7 @@ class _Settling:
         return strain_at(one, alone, self.grid_s)[0] / self.abilities.stroke[fiber]
 
     def _tightened(self, settled: Settled, off: dict[int, Array]) -> dict[int, list[Array]]:
-        """Make the slack smaller, or the rates lower, where something does not hold; the voices that are concerned, and instants."""
+        """Make the slack smaller, or the rates lower, where something does not hold; which voices, and instants."""
         slack, rest, watch = self.played.slack.copy(), self.played.rest_s.copy(), list(self.played.watch)
         ease = np.ones(len(slack))
         concerned: dict[int, list[Array]] = {}

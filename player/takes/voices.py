@@ -15,10 +15,9 @@ ALIKE = 0.3
 """A share of the tolerance: fibers that differ by no more than this play one phrase."""
 
 
-
 @dataclass(frozen=True, slots=True, eq=False)
 class Voice:
-    """Fibers (indices in the rig, rising) and by how much of the voice's curve each goes; differs: their greatest difference."""
+    """Fibers (indices in the rig, rising) and how much of the voice's curve each goes; differs: how much they differ."""
 
     fibers: Index
     scales: Array
@@ -26,7 +25,7 @@ class Voice:
 
 
 def voices_of(share: Array, start: Array, which: Index, tolerance: float) -> list[Voice]:
-    """The voices among some fibers, in the order of their first fibers; a voice's curve is that of the fiber that goes furthest.
+    """The voices among some fibers, in the order of their first fibers; its curve is that of the fiber that goes furthest.
 
     share: (F, M) of usable stroke; start: (F,) where each begins; which: (F,) number of its capability
     """

@@ -3,6 +3,7 @@
 from collections.abc import Collection
 from dataclasses import dataclass
 from fractions import Fraction
+from itertools import pairwise
 
 import numpy as np
 
@@ -82,7 +83,7 @@ def gestures_of(path: Path, voice: int, tempo: TempoMap, *, punch: bool) -> list
     cuts = [k for k in range(path.moves) if still[k] and bars[k] >= PAUSE_BARS]
     bounds = [-1, *cuts, path.moves]
     found = []
-    for left, right in zip(bounds, bounds[1:], strict=False):
+    for left, right in pairwise(bounds):
         moves = range(left + 1, right)
         if not len(moves):
             continue

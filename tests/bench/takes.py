@@ -1,6 +1,6 @@
 """How fast a take is fitted, and with how few knots, in one run: 48 fibers of Estuary for ten minutes, at 200 Hz.
 
-Once with eight faders, each over six neighbours, once with a fader for every fiber. Time as a share of the time that was played;
+Once with eight faders, each over six neighbours, once with a fader for every fiber: how much faster than it was played, and
 knots against those of an exact search over close places (on the first minute, where that can be waited for).
 
 Run: python tests/bench/takes.py [MINUTES [--exact]]

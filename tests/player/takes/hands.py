@@ -12,7 +12,7 @@ TICK_S = 0.005
 
 
 def hand(seconds: float, seed: int, rest_s: float = 3.0, top: float = 1.0) -> np.ndarray:
-    """A fader, 0 to 1, every tick: minimum-jerk moves of 0.3 to 2.5 s and rests between; odd seeds in 127 steps, as MIDI has."""
+    """A fader, 0 to 1, every tick: minimum-jerk moves of 0.3 to 2.5 s, rests between; odd seeds in MIDI's 127 steps."""
     rng = np.random.default_rng(seed)
     time = np.arange(round(seconds / TICK_S) + 1) * TICK_S
     value, was, at = np.zeros(len(time)), 0.0, 0.3
@@ -27,7 +27,7 @@ def hand(seconds: float, seed: int, rest_s: float = 3.0, top: float = 1.0) -> np
 
 
 def governed(rig: Rig, abilities: Abilities, wanted: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-    """Times (T,) and strains (F, T) that the governor lets through, `wanted` (F, T) being shares of stroke; at rest at first."""
+    """Times (T,) and strains (F, T) that the governor lets through, `wanted` (F, T) in shares of stroke."""
     governor = governor_of(rig, abilities, TICK_S)
     state = begin(governor)
     let = np.zeros(wanted.shape)

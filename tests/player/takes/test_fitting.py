@@ -4,7 +4,6 @@ from itertools import product
 
 import numpy as np
 import pytest
-
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.optimize import linprog
@@ -50,9 +49,7 @@ def least_moves(times, value, every_s, most):
         found = linprog([0, 0], np.vstack([a, -a]), np.concatenate([met + TOLERANCE, TOLERANCE - met]), bounds=bounds)
         return found.status == 0
 
-    single = {
-        (i, j): [shape for shape in SHAPES if possible(i, j, shape)] for i in range(count) for j in range(i + 1, count)
-    }
+    single = {(i, j): [shape for shape in SHAPES if possible(i, j, shape)] for i in range(count) for j in range(i + 1, count)}
 
     def chains(i, left):
         if left == 0:
