@@ -3,6 +3,7 @@
 from importlib import import_module
 
 import click
+from click.shell_completion import CompletionItem
 
 from composer.faults import Faults, nearest
 from player.commands.main import COMMANDS, help_text
@@ -21,11 +22,16 @@ class Gathered(click.Group):
             return None
         return import_module(COMMANDS[name][0]).command
 
+    def shell_complete(self, ctx: click.Context, incomplete: str) -> list[CompletionItem]:
+        """The names that a word may become, from the table alone; click would import every command for its help."""
+        names = [CompletionItem(name, help=says) for name, (_, says) in COMMANDS.items() if name.startswith(incomplete)]
+        return names + click.Command.shell_complete(self, ctx, incomplete)
+
     def resolve_command(self, ctx: click.Context, args: list[str]) -> tuple[str | None, click.Command | None, list[str]]:
         """As click does, with the nearest known name for a misspelt one."""
-        if args and args[0] not in COMMANDS and not args[0].startswith("-"):
+        if not ctx.resilient_parsing and args and args[0] not in COMMANDS and not args[0].startswith("-"):
             hint = nearest(args[0], COMMANDS)
-            ctx.fail(f"no command '{args[0]}'. " + (hint or "The commands are: " + ", ".join(COMMANDS) + "."))
+            ctx.fail(f"no command '{args[0]}'; " + (hint or "the commands are: " + ", ".join(COMMANDS) + "."))
         return super().resolve_command(ctx, args)
 
     def get_help(self, ctx: click.Context) -> str:

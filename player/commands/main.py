@@ -18,12 +18,16 @@ COMMANDS = {
     "take": ("player.commands.take", "What was played by hand, as a score."),
     "fit": ("composer.commands.fit", "A fiber type from what a bench measured."),
     "manual": ("player.commands.manual", "The manual, page by page."),
+    "completion": ("player.commands.completion", "A script by which a shell completes commands, options and files."),
     "demos": ("composer.commands.demos", "Copy the demo scores and rigs into a folder."),
 }
 """Name of each command: its module, which defines `command`, and its line in the help."""
 
 HELP = ("-h", "--help")
 VERSION = "--version"
+
+COMPLETE = "_DRAWCORD_COMPLETE"
+"""The variable by which shells ask what a word may become."""
 
 
 def main() -> None:
@@ -34,13 +38,17 @@ def main() -> None:
 def run(arguments: list[str]) -> int:
     """Run one command; returns its exit code: 0 done, 1 snags or a fault in the run, 2 wrong input or call."""
     try:
-        if not arguments or arguments[0] in HELP:
+        if os.environ.get(COMPLETE):
+            from player.commands.gathered import call
+
+            code = call([])  # a shell asks, by variables alone
+        elif not arguments or arguments[0] in HELP:
             print(help_text())
             code = 0
         elif arguments[0] == VERSION:
-            from importlib.metadata import version
+            from player.commands.version import lines
 
-            print(f"drawcord {version('drawcord')}")
+            print("\n".join(lines()))
             code = 0
         else:
             from player.commands.gathered import call
@@ -71,7 +79,7 @@ def help_text() -> str:
         "Compose and play motion for arrays of fluid-driven fibers.\n\n"
         f"Commands:\n{rows}\n\n"
         "Options:\n  -h, --help  This text; behind a command, all about that command.\n"
-        "  --version   The version."
+        "  --version   The version, and what else a report of a fault should tell."
     )
 
 

@@ -46,7 +46,7 @@ def title_of(text: str) -> str:
 
 
 @click.command("manual")
-@click.argument("page", required=False)
+@click.argument("page", required=False, shell_complete=lambda ctx, param, start: [n for n in pages() if n.startswith(start)])
 @click.option("--html", "folder", metavar="DIR", help="Write all pages into a folder for a browser.")
 def command(page: str | None, folder: str | None) -> int:
     """The manual: without PAGE the list of pages, with PAGE that page."""

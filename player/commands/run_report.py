@@ -81,7 +81,8 @@ def sentences(told: dict[str, Any]) -> list[str]:
     late = told["lateness_ms"]
     lines.append(
         f"{told['ticks']} ticks at {told['rate_Hz']:g} Hz, sent {told['ahead_ms']:.0f} ms ahead; {told['late_ticks']} late by"
-        f" more than a tick, {told['past_due']} past due (99 % within {max(late['p99'], 0.01):.2f} ms, worst {small(late['max'])} ms)."
+        f" more than a tick, {told['past_due']} past due (99 % within {max(late['p99'], 0.01):.2f} ms, worst"
+        f" {small(late['max'])} ms)."
     )
     if told["stalls"]:
         lines.append(f"The host stood still {told['stalls']} times, {told['stalled_s']:.2f} s in all; the score waited for it.")

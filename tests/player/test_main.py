@@ -21,17 +21,30 @@ def test_help_lists_every_command_and_ends_with_zero(capsys, arguments):
     assert all(name in out for name in COMMANDS)
 
 
-def test_the_version_is_that_of_the_package(capsys):
+def test_the_version_is_that_of_the_package_in_a_line_of_its_own(capsys):
     from importlib.metadata import version
 
     assert run(["--version"]) == 0
-    assert capsys.readouterr().out == f"drawcord {version('drawcord')}\n"
+    assert capsys.readouterr().out.splitlines()[0] == f"drawcord {version('drawcord')}"
 
 
-def test_help_needs_neither_click_nor_numpy():
+def test_with_the_version_comes_what_a_report_of_a_fault_should_tell(capsys):
+    import platform
+    from importlib.metadata import version
+
+    assert run(["--version"]) == 0
+    said = capsys.readouterr().out
+    assert f"CPython {platform.python_version()}, " in said and platform.machine() in said
+    packages = (("numpy", "numpy"), ("scipy", "scipy"), ("HiGHS", "highspy"), ("Qt", "PySide6-Essentials"))
+    assert all(f"{name} {version(package)}" in said for name, package in packages)
+    assert len(said.splitlines()) <= 5 and max(map(len, said.splitlines())) <= 120
+
+
+@pytest.mark.parametrize("option", ["--help", "--version"])
+def test_help_and_version_need_neither_click_nor_numpy_nor_qt(option):
     script = (
-        "import sys; from player.commands.main import run; run(['--help']); "
-        "print(sorted({'click', 'numpy'} & set(sys.modules)))"
+        f"import sys; from player.commands.main import run; run(['{option}']); "
+        "print(sorted({'click', 'numpy', 'scipy', 'highspy', 'PySide6'} & set(sys.modules)))"
     )
     out = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, check=True).stdout
     assert out.endswith("[]\n")
@@ -41,7 +54,7 @@ def test_help_needs_neither_click_nor_numpy():
     ("arguments", "says"),
     [
         (["plya"], "did you mean 'play'?"),
-        (["juggle"], "The commands are: check"),
+        (["juggle"], "the commands are: check"),
         (["--loud"], "--loud"),
         (["play"], "Missing argument"),
         (["play", "--loud"], "--loud"),
