@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.faults import Fault, Faults, Where
+from composer.faults import Fault, Faults, Where, fault
 from composer.files import read_text
 from composer.limits.abilities import Abilities, abilities_of
 from composer.rig.model import Rig
@@ -57,6 +57,8 @@ class Loaded:
 def load_rig(path: str | os.PathLike[str]) -> Rig:
     """The rig of a file. Raises Faults with all that is wrong with it."""
     name = os.fspath(path)
+    if name.lower().endswith(".score"):
+        raise fault(name, "this is a score", "a rig file, such as NAME.rig.toml, which the score names in its line `rig`")
     return read_rig(read_text(name, MOST_BYTES), name)
 
 
@@ -66,6 +68,8 @@ def load_score(path: str | os.PathLike[str], rig: Rig | None = None) -> Loaded:
     Raises Faults: those of rig and score together, as far as either can be told without the other.
     """
     name = os.fspath(path)
+    if name.lower().endswith(".rig.toml"):
+        raise fault(name, "this is a rig file", "a score, such as NAME.score, which names this rig in its line `rig`")
     folder = os.path.dirname(name)
     score, faults = parse_score(
         read_text(name, most("file")), name, lambda used: read_text(os.path.join(folder, used), most("file"))

@@ -67,7 +67,7 @@ def test_text_that_is_not_utf8_is_shown_at_its_line_column_and_byte(tmp_path):
 
 
 def test_a_binary_file_is_called_one(tmp_path):
-    (tmp_path / "a.score").write_bytes(b"PK\x03\x04\0\0")
+    (tmp_path / "a.score").write_bytes(b"\x7fELF\0\0")
     with pytest.raises(Faults, match="a zero byte at offset 4: this is a binary file, not text"):
         read_text(tmp_path / "a.score", 100)
 
@@ -181,3 +181,13 @@ def test_an_empty_score_and_files_of_other_endings_may_be_replaced(tmp_path):
     for name, text in (("piece.score", ""), ("piece.play", "x"), ("reed.toml", "x")):
         (tmp_path / name).write_text(text)
         check_writable(tmp_path / name)
+
+
+@pytest.mark.parametrize(
+    ("start", "said"),
+    [(b"PK\x03\x04", "a play file"), (b"drawcrec", "a recording"), (b"drawclog", "the log of a run"), (b"MThd", "a MIDI file")],
+)
+def test_a_file_of_another_kind_of_ours_is_called_by_its_name(tmp_path, start, said):
+    (tmp_path / "a.score").write_bytes(start + b"\0\0")
+    with pytest.raises(Faults, match=f"this is {said}"):
+        read_text(tmp_path / "a.score", 100)

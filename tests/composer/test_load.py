@@ -174,3 +174,10 @@ def test_another_rig_can_stand_in(folder):
     rig = load_rig(folder / "rigs" / "reeds.rig.toml")
     path = changed(folder, "rig rigs/reeds.rig.toml", "rig nowhere.rig.toml")
     assert load_score(path, rig).rig is rig
+
+
+def test_a_score_taken_for_a_rig_is_told_and_the_other_way_round(folder):
+    with pytest.raises(Faults, match=r"reeds\.score: this is a score; expected a rig file"):
+        load_rig(folder / "reeds.score")
+    with pytest.raises(Faults, match=r"reeds\.rig\.toml: this is a rig file; expected a score"):
+        load_score(folder / "rigs" / "reeds.rig.toml")
