@@ -35,7 +35,7 @@ STEPS, HARDEN, RAISES = 30, 12, 3
 ENOUGH = 1e-7
 """Relative: a step that promises less is the last."""
 
-BEGINNINGS = ((300, 6), (1200, 3), (6000, 1))
+BEGINNINGS = ((300, 16), (1200, 4), (6000, 1))
 """How many beginnings are tried where no more than so many events may move; none above."""
 
 
