@@ -79,6 +79,7 @@ class Inbox:
                 else:
                     self.feedback.again()
                     events.append(Back(change.source, change.at_s))
+                    self._put(replace(self._seen.get(change.source, Seen(change.source)), silent=False))
             for one in heard:
                 events += self._heard(self.midi_binds.hear(one.source, one.message, one.at_s), self.osc_binds)
         events += self._heard(self.midi_binds.tick(now_s), self.osc_binds)
@@ -125,7 +126,10 @@ class Inbox:
             self.osc.close()
 
     def _heard(self, events: list[Event], others: MidiBinds | OscBinds) -> list[Event]:
-        """Fibers that one kind of input moves are no other's any more."""
+        """Fibers that one kind of input moves are no other's any more; a source is told of once when it is back."""
+        events = [
+            one for one in events if not isinstance(one, Back) or self._seen.get(one.source, Seen("", silent=True)).silent
+        ]
         for event in events:
             if isinstance(event, Wanted | Begin):
                 others.let_go(event.fibers)
