@@ -13,6 +13,8 @@ AHEAD_S = 0.02
 
 SCREEN_S = 0.05
 
+STAND_BY_SAID = "All is at rest or vented, and disarmed. Press a to arm and play on from here, Ctrl-C to end."
+
 
 @click.command("live")
 @click.argument("score", metavar="RIG|SCORE", type=click.Path(path_type=str))
@@ -92,6 +94,7 @@ def _run(call, parts, stack: ExitStack, arm: bool, as_json: bool) -> int:
     with front:
         engine.returns = front.answers
         engine.returns_from = ("fault", "stopped", "vented")
+        engine.stand_by_said = STAND_BY_SAID
         shown_s = float("-inf")
         with real_time() as first:
             for status in engine.run(call.start_s):

@@ -80,6 +80,7 @@ class Engine:
         self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
         self.returns = False
         self.returns_from: tuple[str, ...] = ("fault",)
+        self.stand_by_said = STAND_BY_SAID
         self._leaving = False
         self.safety = Safety()
         self.lateness = Lateness()
@@ -192,7 +193,7 @@ class Engine:
 
     def _stand_by(self) -> Iterator[Status]:
         """After a fault, all at rest or vented: wait until the operator has had everything brought back, or ends the run."""
-        self._account.tell(STAND_BY_SAID)
+        self._account.tell(self.stand_by_said)
         # What was lost falls by its own weight; until it can be down, nothing sets out.
         down_s = self._clock.now() + self._falls_s
         while True:

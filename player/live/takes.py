@@ -29,17 +29,13 @@ SUFFIX = ".take"
 
 @dataclass(frozen=True, slots=True)
 class Written:
-    """A take and the score that was made of it; `why` where none was made, "" where it was."""
+    """A take and the score that was made of it; `why` where none was made; good: nothing went wrong, and it checks clean."""
 
     take: str
     score: str
     made: Made | None
+    good: bool
     why: str = ""
-
-    @property
-    def good(self) -> bool:
-        """Whether the score is there, checks clean and is as near to what was played as it should be."""
-        return self.made is not None and self.made.checked.ok
 
 
 class Takes:
@@ -143,11 +139,13 @@ class Takes:
 
     def _write(self, take: str, score: str, samples: int) -> Written:
         if samples < FEWEST:
-            return Written(take, score, None, f"only {samples} ticks were recorded, too few for a score")
+            return Written(take, score, None, True, f"only {samples} ticks were recorded, too few for a score")
         try:
             made = make_score(take, score)
+            if not made.fibers:
+                return Written(take, score, None, True, "nothing moved in it")
             with replacing(score) as file:
                 file.write(made.text)
         except Faults as wrong:
-            return Written(take, score, None, str(wrong))
-        return Written(take, score, made)
+            return Written(take, score, None, False, str(wrong))
+        return Written(take, score, made, made.checked.ok)

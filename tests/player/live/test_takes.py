@@ -106,4 +106,12 @@ def test_a_touch_too_short_for_a_score_is_said_to_be(make_takes, rig):
     takes.tick(0.005, True, np.zeros(4), np.zeros(4))
     takes.close()
     (one,) = takes.written()
-    assert not one.good and "too few" in one.why
+    assert one.good and one.made is None and "too few" in one.why
+
+
+def test_a_take_in_which_nothing_moved_is_no_score(make_takes, rig, tmp_path):
+    takes, _ = make_takes()
+    play(takes, rig, 0.5, at=0.0)
+    takes.close()
+    (one,) = takes.written()
+    assert one.good and one.why == "nothing moved in it" and not (tmp_path / "out.score").exists()
