@@ -6,9 +6,14 @@ import shutil
 import signal
 import subprocess
 import sys
+import tomllib
+from itertools import pairwise
 from pathlib import Path
 
 import pytest
+
+from composer.limits.check import check
+from composer.load import load_rig, load_score
 
 ROOT = Path(__file__).parent.parent
 PAGES = [ROOT / "README.md", ROOT / "DEVELOPERS.md", *sorted(ROOT.glob("*/manual/*.md"))]
@@ -16,6 +21,21 @@ DRAWCORD = [sys.executable, "-m", "player.commands.main"]
 
 ENDLESS = {"play", "device", "live", "rehearse"}
 """Commands that go on until they are told to stop."""
+
+ARMS = {"play", "live"}
+
+RIGS = {"gannet": "gannet.rig.toml", "first": "veil.rig.toml", "veil": "veil.rig.toml"}
+"""The rigs of the boards that a command talks to, by a word in it; that of Estuary for all others."""
+
+MADE = (
+    "retime estuary.score -o estuary.play",
+    "retime gannet.score -o gannet.play",
+    "retime first.score -o first.play",
+    "play first.play --to file:first.rec --log first.log --from 8:1",
+    "tempo estuary.score -o song.mid",
+    "tempo first.score -o first.mid",
+)
+"""What makes the files that further commands begin with."""
 
 STOPPED_BEFORE_IT_BEGAN = 130
 """Exit code of a command that was told to stop while it still made ready; a busy machine wants more patience."""
@@ -31,12 +51,31 @@ def blocks_of(text):
             yield line.strip()
 
 
+def fenced(page):
+    """The fenced blocks of a page: what stands behind the fence, as words, and the block's text."""
+    found = re.findall(r"^```([^\n]*)\n(.*?)^```$", page.read_text(), re.MULTILINE | re.DOTALL)
+    return [(words.split(), text) for words, text in found]
+
+
+def files():
+    """Blocks of the documents that are files, such as ```score first.score: name and text."""
+    return [(words[1], text) for page in PAGES for words, text in fenced(page) if len(words) == 2]
+
+
+def outputs():
+    """Blocks of what a command says, behind the block of that command alone: the command and the block's text."""
+    for page in PAGES:
+        for (_, before), (words, text) in pairwise(fenced(page)):
+            if words == ["output"]:
+                yield pytest.param(before.strip(), text, id=f"{page.stem}: {before.strip()[9:]}")
+
+
 def commands():
     """Every command line of the documents that names no placeholder, once, with the page it stands in first."""
     seen = set()
     for page in PAGES:
         for line in blocks_of(page.read_text()):
-            line = line.split("  #")[0].split(" && ")[-1].strip()
+            line = line.split("  #")[0].split(" && ")[-1].split(" > ")[0].strip()
             line = re.sub(r"^(\$ )?(\.venv/bin/)?drawcord ", "drawcord ", line)
             if line.startswith("drawcord ") and line not in seen and not re.search(r"\b[A-Z]{3,}\b|\[|…", line):
                 seen.add(line)
@@ -45,12 +84,13 @@ def commands():
 
 @pytest.fixture(scope="module")
 def made(tmp_path_factory):
-    """A folder with the demos in it, as `drawcord demos .` leaves them, and with the play files made of them."""
+    """A folder with the demos, as `drawcord demos .` leaves them, the files of the documents, and what is made of both."""
     made = tmp_path_factory.mktemp("demos")
     shutil.copytree(ROOT / "scores_demo", made, dirs_exist_ok=True)
-    for name in ("estuary", "gannet"):
-        subprocess.run([*DRAWCORD, "retime", f"{name}.score", "-o", f"{name}.play"], cwd=made, check=True, capture_output=True)
-    subprocess.run([*DRAWCORD, "tempo", "estuary.score", "-o", "song.mid"], cwd=made, check=True, capture_output=True)
+    for name, text in files():
+        (made / name).write_text(text)
+    for command in MADE:
+        subprocess.run([*DRAWCORD, *command.split()], cwd=made, check=True, capture_output=True)
     return made
 
 
@@ -76,7 +116,8 @@ def start(arguments, folder):
 
 def boards(line, folder):
     """Simulated boards for the serial lines that a command names, and the command with their ports in their place."""
-    started, rig = [], "gannet.rig.toml" if "gannet" in line else "estuary.rig.toml"
+    started = []
+    rig = next((rig for word, rig in RIGS.items() if word in line), "estuary.rig.toml")
     for target in re.findall(r"(\w+=)?serial:(/dev/\S+?)(@\d+)?(?=\s|$)", line):
         driver = ["--driver", target[0].rstrip("=")] if target[0] else []
         board = start(["device", rig, *driver], folder)
@@ -110,7 +151,7 @@ def test_each_command_in_the_documents_does_what_it_says(line, folder):
         shutil.rmtree(folder / line.split()[-1])  # it makes the folder itself
     started, line = boards(line, folder)
     arguments = line.split()[1:]
-    if started and "--arm" not in arguments:
+    if started and arguments[0] in ARMS and "--arm" not in arguments:
         arguments.append("--arm")  # at a terminal it asks
     code, out, err = ended(arguments, folder, started)
     if arguments[0] == "preview" and not any(word.startswith("--") for word in arguments):
@@ -121,6 +162,49 @@ def test_each_command_in_the_documents_does_what_it_says(line, folder):
     assert code == (1 if arguments[0] == "check" else 0), f"{out}\n{err}"
     assert "Traceback" not in err
     assert "fault of its own" not in err
+
+
+@pytest.mark.parametrize(("line", "text"), list(outputs()))
+def test_what_the_documents_have_a_command_say_it_says(line, text, folder):
+    run = start(line.split()[1:], folder)
+    out, err = run.communicate(timeout=100)
+    assert text in out, f"{out}\n{err}"
+
+
+@pytest.mark.parametrize(("name", "text"), files())
+def test_each_file_in_the_documents_is_read_without_a_fault(name, text, tmp_path):
+    for other, its in files():
+        (tmp_path / other).write_text(its)
+    if name.endswith(".rig.toml"):
+        assert load_rig(tmp_path / name).fibers
+    else:
+        assert load_score(tmp_path / name).tracks.moves
+
+
+def test_the_first_hour_mends_its_score_by_hand_as_it_says(tmp_path):
+    for name, text in files():
+        (tmp_path / name).write_text(text)
+    score = tmp_path / "first.score"
+    mended = score.read_text().replace("  2   rest\n", "  4   rest\n")
+    assert mended != score.read_text()
+    score.write_text(mended)
+    loaded = load_score(score)
+    assert check(loaded.tracks, loaded.rig, loaded.abilities).ok
+
+
+@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.name)
+def test_tables_in_a_page_are_toml(page):
+    for words, text in fenced(page):
+        if words[:1] == ["toml"]:
+            assert tomllib.loads(text)
+
+
+def test_the_score_in_the_readme_is_the_demos_own():
+    demo = [line.split("#")[0].split() for line in (ROOT / "scores_demo" / "estuary.score").read_text().splitlines()]
+    shown = "".join(text for words, text in fenced(ROOT / "README.md") if words == ["score"])
+    assert shown
+    for line in shown.splitlines():
+        assert line.split("#")[0].split() in demo, line
 
 
 def test_the_test_command_of_the_readme_is_what_ci_runs():

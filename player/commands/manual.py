@@ -12,6 +12,9 @@ from composer.files import replacing
 
 ROOMS = ("composer", "player")
 
+ENDS = {"first-hour": -1, "changelog": 1}
+"""Pages that stand before all others, or behind them."""
+
 STYLE = """
 body { font: 17px/1.5 system-ui, sans-serif; max-width: 46em; margin: 2em auto; padding: 0 1em }
 body { color: #1c1d1f; background: #fbfaf7 }
@@ -31,13 +34,13 @@ a { color: #0b5c8a }
 
 
 def pages() -> dict[str, str]:
-    """The text of every page by its name, those of composing first."""
+    """The text of every page by its name: the first hour, those of composing, those of playing, what is new."""
     found = {}
     for room in ROOMS:
         for page in sorted(files(room).joinpath("manual").iterdir(), key=lambda entry: entry.name):
             if page.name.endswith(".md"):
                 found[page.name.removesuffix(".md")] = page.read_text(encoding="utf-8")
-    return found
+    return {name: found[name] for name in sorted(found, key=lambda name: ENDS.get(name, 0))}
 
 
 def title_of(text: str) -> str:

@@ -40,3 +40,7 @@ def test_a_folder_that_cannot_be_made_is_told(tmp_path, capsys):
     (tmp_path / "file").write_text("")
     assert run(["manual", "--html", str(tmp_path / "file" / "pages")]) == 2
     assert "cannot make the folder" in capsys.readouterr().err
+
+
+def test_the_first_hour_is_the_first_page_and_what_is_new_the_last():
+    assert next(iter(pages())) == "first-hour" and list(pages())[-1] == "changelog"
