@@ -1,9 +1,10 @@
 """How fast retiming is, as ratios in one run: against one HiGHS dual-simplex solve of the same programme, assembled here.
 
-Run: python tests/bench/retiming.py [MOVES FIBERS SHARE_TOO_FAST], or python tests/bench/retiming.py million for 10⁶ moves on
-4096 fibers beside the whole solve of 33 000 moves.
+python tests/bench/retiming.py [--moves 33000] [--fibers 64] [--too-fast 0.05], or with --million for 10⁶ moves on 4096
+fibers beside the whole solve of 33 000 moves.
 """
 
+import argparse
 import platform
 import resource
 import sys
@@ -159,13 +160,18 @@ def by_hand(tracks: Tracks, abilities, keep: str) -> tuple[float, float]:
 
 
 def main() -> None:
-    given = sys.argv[1:]
-    if given == ["million"]:
+    parser = argparse.ArgumentParser()
+    parser.add_argument("--moves", type=int, default=33000)
+    parser.add_argument("--fibers", type=int, default=64)
+    parser.add_argument("--too-fast", type=float, default=0.05)
+    parser.add_argument("--million", action="store_true")
+    options = parser.parse_args()
+    if options.million:
         million()
         return
     edited()
     with_cuts()
-    moves, fibers, share = int(given[0]) if given else 33000, int(given[1]) if given else 64, float(given[2]) if given else 0.05
+    moves, fibers, share = options.moves, options.fibers, options.too_fast
     rig = make_rig.__wrapped__()(fibers)
     abilities = abilities_of(rig)
     # Not every move that is given little time has too little, so more are given that.
