@@ -59,7 +59,8 @@ def main() -> None:
                 least = min(least, time.perf_counter() - begun)
             each = least / tracks.moves * 1e6
             base.setdefault(layered, []).append(each)
-            print(f"{tracks.moves:>9} {fibers:>7} {'yes' if layered else 'no':>7} {each:>10.3f} {each / base[layered][0]:>11.2f}")
+            over = each / base[layered][0]
+            print(f"{tracks.moves:>9} {fibers:>7} {'yes' if layered else 'no':>7} {each:>10.3f} {over:>11.2f}")
     print(f"highest memory: {resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024:.0f} MiB")
 
 
