@@ -1,5 +1,6 @@
 """What tests of every room share: values from outside, and small rigs made without a file."""
 
+import json
 import tomllib
 from collections.abc import Callable
 from pathlib import Path
@@ -101,5 +102,79 @@ def make_rig() -> Callable[..., Rig]:
             groups={"all": tuple(range(count))},
             fingerprint=0x1234ABCD,
         )
+
+    return make
+
+
+SMALL_RIG = {
+    "supply": {
+        "medium": "air",
+        "pressure_kPa": 400,
+        "min_pressure_kPa": 450,
+        "receiver_L": 10,
+        "max_receiver_kPa": 800,
+        "compressor_L_min": 40,
+        "polytropic": 1.2,
+    },
+    "fiber_type.drop": {
+        "kind": "rated",
+        "direction": "contract",
+        "rest_length_mm": 400,
+        "stroke": 0.3,
+        "fill_rate_per_s": 0.6,
+        "exhaust_rate_per_s": 0.3,
+        "air_mL": 3.0,
+        "max_pressure_kPa": 400,
+    },
+    "valve_type.mini": {
+        "C_dm3_s_bar": 0.005,
+        "b": 0.3,
+        "switch_ms": 8,
+        "max_switch_Hz": 50,
+        "drive": "strain",
+        "duty": 1.0,
+        "duty_burst_s": 30,
+        "energised_while_holding": False,
+    },
+}
+"""Tables and keys that every small rig has, as in a rig file."""
+
+
+@pytest.fixture(scope="session")
+def small_rig() -> Callable[..., str]:
+    """A maker of rig files: a row of `count` rated fibers on each board, further keys of SMALL_RIG with other values.
+
+    title: the rig's name; rows: name of each row and of its board; channels: of each board; tail: more text for its end
+    """
+
+    def make(
+        *,
+        title: str = "Bench",
+        rows: tuple[tuple[str, str], ...] = (("r", "main"),),
+        count: int = 4,
+        channels: int = 4,
+        tail: str = "",
+        **changed: float | str | bool,
+    ) -> str:
+        lines: list[str] = []
+        for table, keys in {"rig": {"name": title, "worn": False}, **SMALL_RIG}.items():
+            lines += ["", f"[{table}]"] if lines else [f"[{table}]"]
+            lines += [f"{key} = {json.dumps(changed.pop(key, value))}" for key, value in keys.items()]
+        assert not changed, f"no such keys: {', '.join(changed)}"
+        for _, board in rows:
+            lines += ["", f"[driver.{board}]", f"channels = {channels}"]
+        for name, board in rows:
+            lines += [
+                "",
+                "[[fibers]]",
+                f'name = "{name}"',
+                f"count = {count}",
+                'type = "drop"',
+                f'driver = "{board}"',
+                "tube_length_mm = 800",
+                "load_N = 1.5",
+                "step_m = [0.05, 0, 0]",
+            ]
+        return "\n".join(lines) + "\n" + tail
 
     return make

@@ -6,51 +6,6 @@ import pytest
 from composer.faults import Faults
 from composer.load import Loaded, load_rig, load_score
 
-RIG = """\
-[rig]
-name = "Reeds"
-
-[supply]
-pressure_kPa = 400
-min_pressure_kPa = 300
-receiver_L = 10
-max_receiver_kPa = 800
-compressor_L_min = 40
-
-[fiber_type.cord]
-kind = "rated"
-max_pressure_kPa = 400
-direction = "contract"
-rest_length_mm = 400
-stroke = 0.30
-fill_rate_per_s = 0.60
-exhaust_rate_per_s = 0.30
-air_mL = 3.0
-
-[valve_type.mini]
-C_dm3_s_bar = 0.005
-b = 0.3
-switch_ms = 8
-max_switch_Hz = 50
-drive = "pressure"
-
-[[fibers]]
-name = "reed"
-count = 4
-first_channel = 0
-type = "cord"
-valve = "mini"
-tube_bore_mm = 2.0
-tube_length_mm = 800
-load_N = 1.5
-at_m = [0, 0, 0]
-step_m = [0.05, 0, 0]
-toward = [0, 0, -1]
-
-[group]
-reeds = ["reed.*"]
-"""
-
 SCORE = """\
 title "Reeds"
 rig rigs/reeds.rig.toml
@@ -68,10 +23,13 @@ section a at 1:1
 
 
 @pytest.fixture
-def folder(tmp_path: Path) -> Path:
+def folder(tmp_path: Path, small_rig) -> Path:
     (tmp_path / "rigs").mkdir()
     (tmp_path / "parts").mkdir()
-    (tmp_path / "rigs" / "reeds.rig.toml").write_text(RIG)
+    rig = small_rig(
+        title="Reeds", rows=(("reed", "main"),), min_pressure_kPa=300, drive="pressure", tail='[group]\nreeds = ["reed.*"]\n'
+    )
+    (tmp_path / "rigs" / "reeds.rig.toml").write_text(rig)
     (tmp_path / "parts" / "water.score").write_text("phrase gather\n  2 full\n")
     (tmp_path / "reeds.score").write_text(SCORE)
     return tmp_path
@@ -138,9 +96,10 @@ def test_a_score_without_a_rig_says_so(folder):
 
 
 def test_faults_of_rig_and_score_come_together(folder):
-    (folder / "rigs" / "reeds.rig.toml").write_text(RIG.replace("stroke = 0.30", "stroke = -1"))
+    rig = folder / "rigs" / "reeds.rig.toml"
+    rig.write_text(rig.read_text().replace("stroke = 0.3", "stroke = -1"))
     said = "\n".join(faults(changed(folder, "tempo 120", "tempo 0")))
-    assert "reeds.score:4:" in said and "reeds.rig.toml:16:10:" in said
+    assert "reeds.score:4:" in said and "reeds.rig.toml:18:10:" in said
 
 
 def test_wrong_names_are_told_beside_wrong_numbers(folder):

@@ -19,64 +19,18 @@ from player.wire.frames import frame
 from player.wire.host import Host
 from player.wire.mishaps import MISHAPS
 
-RIG = """
-[rig]
-name = "Bench"
-
-[supply]
-medium = "air"
-pressure_kPa = 400
-min_pressure_kPa = 450
-receiver_L = 10
-max_receiver_kPa = 800
-compressor_L_min = 40
-polytropic = 1.2
-
-[fiber_type.drop]
-kind = "rated"
-direction = "contract"
-rest_length_mm = 400
-stroke = 0.30
-fill_rate_per_s = 0.60
-exhaust_rate_per_s = 0.30
-air_mL = 3.0
-
-[valve_type.mini]
-C_dm3_s_bar = 0.005
-b = 0.3
-switch_ms = 8
-max_switch_Hz = 50
-drive = "strain"
-"""
-ROW = """
-[[fibers]]
-name = "{name}"
-count = 4
-first_channel = 0
-step_m = [0.05, 0, 0]
-type = "drop"
-valve = "mini"
-driver = "{driver}"
-tube_bore_mm = 2.0
-tube_length_mm = 800
-load_N = 1.5
-at_m = [0.0, 0.0, 0.0]
-toward = [0, 0, -1]
-"""
-
 
 @pytest.fixture
-def rig(tmp_path):
+def rig(tmp_path, small_rig):
     path = tmp_path / "bench.rig.toml"
-    path.write_text(RIG + "\n[driver.main]\nchannels = 4\n" + ROW.format(name="r", driver="main"))
+    path.write_text(small_rig())
     return str(path)
 
 
 @pytest.fixture
-def rig_of_two(tmp_path):
+def rig_of_two(tmp_path, small_rig):
     path = tmp_path / "two.rig.toml"
-    boards = "\n[driver.left]\nchannels = 4\n[driver.right]\nchannels = 4\n"
-    path.write_text(RIG + boards + ROW.format(name="l", driver="left") + ROW.format(name="r", driver="right"))
+    path.write_text(small_rig(rows=(("l", "left"), ("r", "right"))))
     return str(path)
 
 

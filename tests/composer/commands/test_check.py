@@ -4,51 +4,6 @@ import json
 
 import pytest
 
-RIG = """
-[rig]
-name = "Small"
-
-[supply]
-medium = "air"
-pressure_kPa = 400
-min_pressure_kPa = 450
-receiver_L = 10
-max_receiver_kPa = 800
-compressor_L_min = 40
-
-[fiber_type.drop]
-kind = "rated"
-direction = "contract"
-rest_length_mm = 400
-stroke = 0.30
-fill_rate_per_s = 0.60
-exhaust_rate_per_s = 0.30
-air_mL = 3.0
-
-[valve_type.mini]
-C_dm3_s_bar = 0.005
-b = 0.3
-switch_ms = 8
-max_switch_Hz = 50
-drive = "pressure"
-duty = 0.6
-duty_burst_s = 30
-energised_while_holding = false
-
-[[fibers]]
-name = "reed"
-count = 3
-first_channel = 0
-type = "drop"
-valve = "mini"
-tube_bore_mm = 2.0
-tube_length_mm = 800
-load_N = 1.5
-at_m = [0.0, 0.0, 0.0]
-toward = [0, 0, -1]
-step_m = [0.05, 0, 0]
-"""
-
 SCORE = """title "Small"
 rig small.rig.toml
 tempo 60
@@ -62,12 +17,14 @@ section a at 2:1
 
 
 @pytest.fixture
-def run(tmp_path, monkeypatch, capsys):
+def run(tmp_path, monkeypatch, capsys, small_rig):
     """Write the rig and a score whose move takes some counts, run `drawcord check`, give its code, stdout and stderr."""
     from player.commands.main import run as drawcord
 
     monkeypatch.chdir(tmp_path)
-    (tmp_path / "small.rig.toml").write_text(RIG)
+    (tmp_path / "small.rig.toml").write_text(
+        small_rig(title="Small", rows=(("reed", "main"),), count=3, drive="pressure", duty=0.6)
+    )
 
     def check(seconds: str, *options: str, text: str = SCORE):
         (tmp_path / "small.score").write_text(text.format(seconds=seconds))

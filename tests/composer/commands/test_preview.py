@@ -9,44 +9,6 @@ import pytest
 
 from player.commands.main import run
 
-RIG = """
-[rig]
-name = "Bench"
-[supply]
-pressure_kPa = 400
-min_pressure_kPa = 450
-receiver_L = 10
-max_receiver_kPa = 800
-compressor_L_min = 40
-[fiber_type.drop]
-kind = "rated"
-direction = "contract"
-rest_length_mm = 400
-stroke = 0.30
-fill_rate_per_s = 0.60
-exhaust_rate_per_s = 0.30
-air_mL = 3.0
-[valve_type.mini]
-C_dm3_s_bar = 0.005
-b = 0.3
-switch_ms = 8
-drive = "strain"
-[driver.main]
-channels = 4
-[[fibers]]
-name = "reed"
-count = 2
-first_channel = 0
-type = "drop"
-valve = "mini"
-driver = "main"
-tube_bore_mm = 2.0
-tube_length_mm = 800
-load_N = 1.5
-at_m = [0, 0, 0]
-step_m = [0.05, 0, 0]
-"""
-
 SCORE = """title "Bench"
 rig bench.rig.toml
 tempo 60
@@ -58,9 +20,9 @@ section one at 1:1
 
 
 @pytest.fixture
-def score(tmp_path):
+def score(tmp_path, small_rig):
     """A maker of scores in which reed.1 rises, from 1 s on, in so many counts of a second."""
-    (tmp_path / "bench.rig.toml").write_text(RIG)
+    (tmp_path / "bench.rig.toml").write_text(small_rig(rows=(("reed", "main"),), count=2))
 
     def make(counts="1"):
         path = tmp_path / "bench.score"
