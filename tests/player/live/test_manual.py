@@ -23,7 +23,7 @@ def test_no_option_is_on_the_page_that_the_command_has_not():
     assert {option for line in lines for option in re.findall(r"--[a-z-]+", line)} <= options
 
 
-@pytest.mark.parametrize("key", [key for key in {*KEYS, HOLD} if key.isprintable() and key not in " bp"])
+@pytest.mark.parametrize("key", [key for key in sorted({*KEYS, HOLD}) if key.isprintable() and key not in " bp"])
 def test_every_key_is_on_the_page_and_the_screen(key):
     assert re.search(rf"^\| `{key}`[,| ]", PAGE, re.MULTILINE)
     assert key == HOLD or key in [shown for shown, _ in SHOWN]
