@@ -1,6 +1,6 @@
 """A rig under hands that a test moves, in virtual time."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 
 import numpy as np
 import pytest
@@ -93,6 +93,10 @@ class Bench:
                 break
         return self
 
+    def end(self) -> None:
+        """Leave off: the engine vents what is not at rest, and garbage is collected again."""
+        self._run.close()
+
     @property
     def share(self) -> np.ndarray:
         """Where all fibers are now, of their stroke."""
@@ -107,13 +111,18 @@ class Bench:
 
 
 @pytest.fixture
-def make_bench(make_rig) -> Callable[..., Bench]:
+def make_bench(make_rig) -> Iterator[Callable[..., Bench]]:
     """A maker of benches; keywords of the rig in `rig`."""
 
-    def make(count: int = 4, rig: dict | None = None, **more) -> Bench:
-        return Bench(make_rig(count, **(rig or {})), **more)
+    made = []
 
-    return make
+    def make(count: int = 4, rig: dict | None = None, **more) -> Bench:
+        made.append(Bench(make_rig(count, **(rig or {})), **more))
+        return made[-1]
+
+    yield make
+    for bench in made:
+        bench.end()
 
 
 @pytest.fixture(scope="session")
