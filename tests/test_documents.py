@@ -31,7 +31,7 @@ RIGS = {"gannet": "gannet.rig.toml", "first": "veil.rig.toml", "veil": "veil.rig
 
 MADE = (
     "retime estuary.score -o estuary.play",
-    "retime estuary.score --flat mended.score",
+    "retime gannet.score --flat solo.score",
     "retime gannet.score -o gannet.play",
     "retime first.score -o first.play",
     "play first.play --to file:first.rec --log first.log --from 8:1",
@@ -94,17 +94,16 @@ def made(tmp_path_factory):
         (made / name).write_text(text)
     for command in MADE:
         subprocess.run([*DRAWCORD, *command.split()], cwd=made, check=True, capture_output=True)
-    loaded = load_score(str(made / "estuary.score"))
-    flood = next(cue.seconds for cue in loaded.cues if cue.name == "flood")
-    played(made / "tonight.take", loaded.rig, 0.0)
-    played(made / "flood.take", loaded.rig, flood)
+    played(made / "tonight.take", load_rig(str(made / "estuary.rig.toml")), 0.0)
+    solo = load_score(str(made / "solo.score"))
+    played(made / "dive.take", solo.rig, next(cue.seconds for cue in solo.cues if cue.name == "dive"))
     return made
 
 
 def played(path, rig, from_s):
-    """A take as somebody leaves it who lifts the near reeds once, slowly, and lets them down again."""
+    """A take as somebody leaves it who lifts the first fibers once, slowly, and lets them down again."""
     take = TakeFile(str(path), rig)
-    lifts = np.array([0.1 * fiber.name.startswith("reed.") for fiber in rig.fibers])
+    lifts = np.where(np.arange(len(rig.fibers)) < 3, 0.1, 0.0)
     for tick in range(1201):
         strain = lifts * (1.0 - np.cos(np.pi * tick / 600.0)) / 2.0
         take.sample(from_s + tick / 200.0, strain, strain)
