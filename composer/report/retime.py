@@ -126,8 +126,8 @@ def _summary(retiming: Retiming) -> str:
     length = f" The score lasts {_seconds(longer)} longer." if longer > SAME_S else ""
     if longer < -SAME_S:
         length = f" The score is {_seconds(-longer)} shorter."
-    left = f"{_count(leads, 'move')} {'leaves' if leads == 1 else 'leave'} {_apart(retiming.keep)}"
-    return f"{_count(hits, 'hit')} moved, and {left}. Cost {retiming.cost:.4g} stroke-seconds, {proof}.{length}"
+    left = f", and {_count(leads, 'move')} {'leaves' if leads == 1 else 'leave'} {_apart(retiming.keep)}" if leads else ""
+    return f"{_count(hits, 'hit')} moved{left}. Cost {retiming.cost:.4g} stroke-seconds, {proof}.{length}"
 
 
 def _apart(keep: str) -> str:
