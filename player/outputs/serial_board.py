@@ -15,7 +15,7 @@ from player.engine.clock import SteadyClock
 from player.outputs.serial_bench import BenchProcess
 from player.wire.device import Applied, Changed, Device, Told
 from player.wire.messages import ARMED, FAULTS, IDLE, STATUSES
-from player.wire.mishaps import STRIKES_AFTER_S, Mishap
+from player.wire.mishaps import NONSENSE, STRIKES_AFTER_S, Mishap
 from player.wire.rules import Build
 
 SPIN_S = 0.0003
@@ -49,6 +49,7 @@ class SerialBoard:
         self._ends = False
         self._muted = mishap.mute
         self._struck = False
+        self._spoils = mishap.garble is not None and not mishap.strike
         self._armed_s: float | None = None
         self._begin_s = self._clock.now()
         self._leaving: deque[tuple[float, bytes]] = deque()
@@ -114,7 +115,7 @@ class SerialBoard:
             return
         if self._mishap.echoes:
             self._leaving.append((self._clock.now(), data))
-        if self._mishap.garble:
+        if self._spoils:
             data = self._mishap.garble(data, self._chance)
         self._after(self._device.receive(data, self._us()))
 
@@ -155,6 +156,10 @@ class SerialBoard:
             self._armed_s = None
         elif what == "jump":
             self._begin_s -= JUMP_S
+        elif what == "garble":
+            self._spoils = True
+        elif what == "misread":
+            self._after(self._device.receive(NONSENSE, self._us()))
         elif what == "tell":
             self._after(self._device.fail(*self._mishap.tells, self._us()))
         else:
@@ -164,7 +169,7 @@ class SerialBoard:
         out = self._device.to_send()
         now_s = self._clock.now()
         if out and not self._muted:
-            if self._mishap.garble:
+            if self._spoils:
                 out = self._mishap.garble(out, self._chance)
             self._leaving.append((now_s + self._mishap.answers_after_s, out))
         while self._leaving and self._leaving[0][0] <= now_s:

@@ -4,16 +4,21 @@ Nothing here knows of files or clocks: a mishap changes the board's build, its c
 after arming.
 """
 
+import re
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from random import Random
 from typing import Any
 
-from player.wire.messages import OVER_PRESSURE, SENSOR
+from player.wire.frames import frame
+from player.wire.messages import OVER_PRESSURE, SENSOR, Set, encode
 from player.wire.rules import Build
 
 STRIKES_AFTER_S = 3.0
 """So long after arming strikes what does not go wrong from the start."""
+
+NONSENSE = b"\0" + frame(encode(Set(0, 65535, (0,)), 0))
+"""A set of a channel that no board has; whatever was coming in before it is cut off."""
 
 Garble = Callable[[bytes, Random], bytes]
 
@@ -23,9 +28,11 @@ class Mishap:
     """A way to go wrong.
 
     build: what the board says it is, changed; garble: what happens to the bytes, each way
+        (from the strike on, where there is one)
     answers_after_s: how late its bytes leave; rate: how fast its clock runs; echoes: the line also sends back what it carries
     room: sets that its queue really keeps; mute: it never says anything
-    strike: what to do to the board at STRIKES_AFTER_S after arming, one of "mute", "reset", "jump", "tell", "bench"
+    strike: what to do to the board at STRIKES_AFTER_S after arming, one of "mute", "reset", "jump", "garble", "misread",
+        "tell", "bench"
     tells: for "tell", the code, channel and text of the fault; bench: for "bench", what becomes of the simulated rig
     """
 
@@ -60,6 +67,21 @@ def _lost(share: float) -> Garble:
     return garble
 
 
+def _cut(share: float) -> Garble:
+    """Each frame with a chance of `share` is cut off at any of its bytes; every other of these runs into the next frame."""
+
+    def cut(frame: bytes, chance: Random) -> bytes:
+        if len(frame) < 2 or chance.random() >= share:
+            return frame
+        kept = frame[: chance.randrange(len(frame))]
+        return kept if chance.random() < 0.5 else kept.rstrip(b"\0") + b"\0"
+
+    def garble(data: bytes, chance: Random) -> bytes:
+        return b"".join(cut(frame, chance) for frame in re.findall(rb"[^\0]*\0|[^\0]+", data))
+
+    return garble
+
+
 def _sticks(bench: Any) -> None:
     bench.stuck[0] = int(bench.numbers[0])
 
@@ -84,8 +106,15 @@ MISHAPS: dict[str, Mishap] = {
     "mute": Mishap("hears, and never says a word", mute=True),
     "silent": Mishap("3 s after arming it neither hears nor says anything more", strike="mute"),
     "garbles": Mishap("one byte in a hundred, each way, is another one", garble=_flipped(0.01)),
+    "garbles-much": Mishap("one byte in ten, each way, is another one", garble=_flipped(0.1)),
+    "garbles-later": Mishap(
+        "3 s after arming one byte in ten, each way, becomes another one", garble=_flipped(0.1), strike="garble"
+    ),
+    "noise-later": Mishap("3 s after arming every byte, each way, becomes another one", garble=_flipped(1.0), strike="garble"),
     "noise": Mishap("every byte, each way, is another one", garble=_flipped(1.0)),
     "loses": Mishap("one byte in a hundred, each way, is lost", garble=_lost(0.01)),
+    "cuts": Mishap("one frame in twenty, each way, is cut off anywhere", garble=_cut(0.05)),
+    "misreads": Mishap("3 s after arming it hears a command that makes no sense", strike="misread"),
     "echoes": Mishap("the line also sends back whatever it carries", echoes=True),
     "late-answers": Mishap("everything it says leaves 0.7 s late", answers_after_s=0.7),
     "resets": Mishap("3 s after arming it starts anew, vented, its clock at 0", strike="reset"),

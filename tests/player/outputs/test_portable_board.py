@@ -326,7 +326,7 @@ def test_an_echoing_line_sends_back_what_it_carries(board):
         assert sent in talk.raw
 
 
-@pytest.mark.parametrize(("option", "share"), [("--garble", "20"), ("--lose", "20")])
+@pytest.mark.parametrize(("option", "share"), [("--garble", "20"), ("--lose", "20"), ("--cut", "50")])
 def test_a_line_spoils_bytes_each_way(board, option, share):
     with board(option, share) as (_, talk):
         for _ in range(300):
@@ -334,6 +334,21 @@ def test_a_line_spoils_bytes_each_way(board, option, share):
         talk.listen(1.0)
         assert talk.reader.bad > 0
         assert talk.until(lambda _, said: isinstance(said, m.State) and said.bad > 0)
+
+
+def test_a_line_begins_to_spoil_bytes_some_time_after_arming(board):
+    with board("--garble", "1000", "--garble-after", "0.3") as (_, talk):
+        talk.armed().listen(0.1)
+        assert talk.reader.bad == 0
+        talk.listen(0.6)
+        talk.forget().listen(0.3)
+        assert talk.raw and talk.heard == []
+
+
+def test_a_command_that_makes_no_sense_is_told_and_changes_nothing(board):
+    with board("--misread-after", "0.2") as (_, talk):
+        assert talk.armed().fault(m.BAD_COMMAND).text == "set of a channel that is not configured"
+        assert talk.forget().state(m.ARMED)
 
 
 def test_answers_leave_late(board):

@@ -8,6 +8,7 @@ from player.wire.mishaps import MISHAPS
 from player.wire.rules import Build
 from player.wire.simulated import Bench
 
+FRAMES = bytes([7, 8, 9, 0]) * 250
 BUILD = Build("Bench", ("strain",) * 4, rig=5)
 
 
@@ -26,8 +27,8 @@ def test_each_mishap_says_what_it_does_and_does_something(name, make_rig):
         or mishap.answers_after_s > 0.0
         or mishap.rate != 1.0
         or mishap.build(BUILD) != BUILD
-        or (mishap.garble is not None and mishap.garble(bytes(1000), Random(1)) != bytes(1000))
-        or mishap.strike in ("mute", "reset", "jump")
+        or (mishap.garble is not None and mishap.garble(FRAMES, Random(1)) != FRAMES)
+        or mishap.strike in ("mute", "reset", "jump", "misread")
         or (mishap.strike == "tell" and mishap.tells[0] in FAULTS)
         or (mishap.strike == "bench" and (bench.stuck or bench.railed or bench.leaking or bench.low_supply))
     )
@@ -39,6 +40,17 @@ def test_one_byte_in_a_hundred_is_about_one_in_a_hundred():
     assert 850 < sum(byte != 0 for byte in garbled) < 1150
     assert 850 < 100_000 - len(MISHAPS["loses"].garble(bytes(100_000), Random(1))) < 1150
     assert 0 not in MISHAPS["noise"].garble(bytes(1000), Random(1))
+
+
+def test_frames_that_are_cut_off_lose_their_end_and_now_and_then_the_zero_too():
+    frames = b"".join(bytes([*range(1, 20), 0]) for _ in range(2000))
+    cut = MISHAPS["cuts"].garble(frames, Random(1))
+    pieces = cut.split(b"\0")[:-1]
+    whole = bytes(range(1, 20))
+    lasting = [piece for piece in pieces if piece != whole]
+    assert 60 < len(lasting) < 140
+    assert any(piece in (whole[:n] for n in range(19)) for piece in lasting), "an end is lost"
+    assert any(len(piece) > 19 for piece in lasting), "a frame runs into the next"
 
 
 def test_a_board_of_another_rig_is_of_another_rig():

@@ -28,7 +28,7 @@
 #define PRIORITY 40 /* above the player's on the same machine: a true board has a processor of its own */
 
 /* What can go wrong so many seconds after arming, once; channel 0 where it is one channel's. */
-enum strike { RESET, SILENT, JUMP, OVER_PRESSURE, SENSOR, STUCK, RAILED, LEAK, LOW_SUPPLY, STRIKES };
+enum strike { RESET, SILENT, JUMP, GARBLE, MISREAD, OVER_PRESSURE, SENSOR, STUCK, RAILED, LEAK, LOW_SUPPLY, STRIKES };
 
 static struct {
     const char *option, *says;
@@ -37,6 +37,8 @@ static struct {
     {"--reset-after", "starts anew, vented, its clock at 0", -1.0},
     {"--silent-after", "neither hears nor says anything more", -1.0},
     {"--jump-after", "its clock jumps ahead by 0.1 s", -1.0},
+    {"--garble-after", "bytes of the line begin to become others", -1.0},
+    {"--misread-after", "it hears a command that makes no sense", -1.0},
     {"--over-pressure-after", "finds channel 0 over its pressure", -1.0},
     {"--sensor-after", "the sensor of channel 0 fails", -1.0},
     {"--stuck-valve-after", "the valve of channel 0 no longer moves", -1.0},
@@ -255,6 +257,21 @@ static void *move_fibers(void *unused)
     return NULL;
 }
 
+/* A set of a channel that no board has, as if the line had carried it; what was coming in before is cut off. */
+static void misread(uint32_t now_us)
+{
+    static struct dc_out nonsense;
+    static const uint8_t end = 0;
+
+    dc_begin(&nonsense, 0x04, 0); /* set */
+    dc_put32(&nonsense, 0);
+    dc_put16(&nonsense, 65535);
+    dc_put16(&nonsense, 1);
+    dc_put16(&nonsense, 0);
+    dc_receive(&device, &end, 1, now_us);
+    dc_receive(&device, nonsense.bytes, dc_end(&nonsense), now_us);
+}
+
 static void happen(enum strike what, int64_t now_ns)
 {
     note("mishap", strikes[what].says, "", "");
@@ -265,6 +282,8 @@ static void happen(enum strike what, int64_t now_ns)
         break;
     case SILENT: mute = deaf = 1; break;
     case JUMP: begin_ns -= JUMP_NS; break;
+    case GARBLE: line_garble(); break;
+    case MISREAD: misread((uint32_t)board_us(now_ns)); break;
     case OVER_PRESSURE: dc_fail(&device, DC_OVER_PRESSURE, 0, "over-pressure", (uint32_t)board_us(now_ns)); break;
     case SENSOR: dc_fail(&device, DC_SENSOR, 0, "sensor failed", (uint32_t)board_us(now_ns)); break;
     case STUCK: __atomic_store_n(&wrongs.stuck, 0, __ATOMIC_RELAXED); break;
@@ -351,6 +370,8 @@ static int option(char **words, const char **plant_path, const char **log_path)
         line_wrongs.garbled = (int)value;
     else if (!strcmp(words[0], "--lose") && number(words[1], 0.0, 1000.0, &value))
         line_wrongs.lost = (int)value;
+    else if (!strcmp(words[0], "--cut") && number(words[1], 0.0, 1000.0, &value))
+        line_wrongs.cut = (int)value;
     else if (!strcmp(words[0], "--late-ms") && number(words[1], 0.0, 60000.0, &value))
         line_wrongs.late_ns = (int64_t)(value * 1e6);
     else {
@@ -401,6 +422,7 @@ int main(int count, char **words)
         return failed("--plant", "missing: the file of the board's parameters");
     if ((wrong = plant_read(&plant, plant_path)))
         return failed(plant_path, wrong);
+    line_wrongs.garbles_later = strikes[GARBLE].after_s >= 0.0;
     if (!(path = line_open(&line_wrongs)))
         return failed("pseudo-terminal", "the system gives none");
     /* Before any thread, so that signals come to this one alone. */

@@ -14,6 +14,7 @@
 
 #define ROOM 65536u  /* what nobody reads is dropped beyond this, as a UART would */
 #define PARTS 1024u
+#define CUT_WITHIN 48u /* a frame that is cut off ends within so many bytes, so that short ones are met too */
 
 /* So many bytes that leave together. */
 struct part {
@@ -29,7 +30,14 @@ static size_t first_byte, byte_count;
 static struct part part_of[PARTS];
 static size_t first_part, part_count;
 static int forgotten; /* whether what `leaving` has copied is no longer in the ring */
-static uint32_t chance_in = 1, chance_out = 2;
+
+/* One way of the line: its chance, and of a frame that is cut off, after how many bytes (0: whole), and how many have gone. */
+struct way {
+    uint32_t chance;
+    size_t cut_at, gone;
+    int runs_on;
+};
+static struct way in = {1, 0, 0, 0}, out = {2, 0, 0, 0};
 
 /* Numbers by chance, always the same ones: G. Marsaglia, "Xorshift RNGs", Journal of Statistical Software 8(14), 2003. */
 static uint32_t draw(uint32_t *chance, uint32_t below)
@@ -40,20 +48,43 @@ static uint32_t draw(uint32_t *chance, uint32_t below)
     return *chance % below;
 }
 
-static size_t spoil(uint8_t *bytes, size_t count, uint32_t *chance)
+/* Whether a byte is behind the place at which its frame is cut off; every other such frame runs into the next. */
+static int cut_off(struct way *way, uint8_t byte)
 {
+    int lost;
+
+    if (!way->gone++) {
+        way->cut_at = (int)draw(&way->chance, 1000) < wrongs.cut ? 1 + draw(&way->chance, CUT_WITHIN) : 0;
+        way->runs_on = (int)draw(&way->chance, 2);
+    }
+    lost = way->cut_at && way->gone >= way->cut_at && (byte || way->runs_on);
+    if (!byte)
+        way->gone = 0;
+    return lost;
+}
+
+static size_t spoil(uint8_t *bytes, size_t count, struct way *way)
+{
+    int garbled = __atomic_load_n(&wrongs.garbles_later, __ATOMIC_RELAXED) ? 0 : wrongs.garbled;
     size_t at, kept = 0;
 
-    if (!wrongs.garbled && !wrongs.lost)
+    if (!garbled && !wrongs.lost && !wrongs.cut)
         return count;
     for (at = 0; at < count; at++) {
         uint8_t byte = bytes[at];
-        if ((int)draw(chance, 1000) < wrongs.garbled)
-            byte ^= (uint8_t)(1 + draw(chance, 255));
-        if ((int)draw(chance, 1000) >= wrongs.lost)
+        if (wrongs.cut && cut_off(way, byte))
+            continue;
+        if ((int)draw(&way->chance, 1000) < garbled)
+            byte ^= (uint8_t)(1 + draw(&way->chance, 255));
+        if ((int)draw(&way->chance, 1000) >= wrongs.lost)
             bytes[kept++] = byte;
     }
     return kept;
+}
+
+void line_garble(void)
+{
+    __atomic_store_n(&wrongs.garbles_later, 0, __ATOMIC_RELAXED);
 }
 
 const char *line_open(const struct line_wrongs *given)
@@ -124,7 +155,7 @@ size_t line_read(uint8_t *bytes, size_t room, int64_t now_ns)
         return 0;
     if (wrongs.echoes)
         line_put(bytes, (size_t)count, now_ns);
-    return spoil(bytes, (size_t)count, &chance_in);
+    return spoil(bytes, (size_t)count, &in);
 }
 
 void line_clear(void)
@@ -144,7 +175,7 @@ void line_put(const uint8_t *bytes, size_t count, int64_t now_ns)
         count = sizeof sent;
     memcpy(sent, bytes, count);
     pthread_mutex_lock(&lock);
-    count = spoil(sent, count, &chance_out);
+    count = spoil(sent, count, &out);
     if (byte_count + count > ROOM || part_count == PARTS) {
         byte_count = part_count = 0;
         forgotten = 1;

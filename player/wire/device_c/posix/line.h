@@ -6,9 +6,10 @@
 #include <stddef.h>
 #include <stdint.h>
 
-/* Of a thousand bytes, each way, so many become others, so many are lost; every byte heard is sent back; all leaves late. */
+/* Of a thousand bytes, each way, so many become others (at once, or from `line_garble` on), so many are lost; of a thousand
+   frames so many are cut off anywhere; every byte heard is sent back; all leaves late. */
 struct line_wrongs {
-    int garbled, lost, echoes;
+    int garbled, garbles_later, lost, cut, echoes;
     int64_t late_ns;
 };
 
@@ -29,6 +30,9 @@ void line_put(const uint8_t *bytes, size_t count, int64_t now_ns);
 
 /* Sends what is to leave by now and fits. */
 void line_send(int64_t now_ns);
+
+/* From now on bytes become others. */
+void line_garble(void);
 
 /* Forgets what has not left. */
 void line_clear(void);
