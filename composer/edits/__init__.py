@@ -1,1 +1,1 @@
-"""What an edit of a score's text is: colours, completion, explanation, drags, mends, the retiming taken in. No screen, no files."""
+"""Edits of a score's text: colours, completion, explanation, drags, mends, the retiming taken in. No screen, no files."""

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable
 from dataclasses import dataclass, field
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -56,7 +57,7 @@ class Refusal:
 def edit_of(changes: Iterable[Change], say: str, moves: Moves | None = None) -> Edit:
     """An edit of changes in any order; those that change nothing are left out. Raises ValueError where two overlap."""
     kept = tuple(sorted(change for change in changes if change[0] != change[1] or change[2]))
-    for (_, end, _), (start, _, _) in zip(kept, kept[1:], strict=False):
+    for (_, end, _), (start, _, _) in pairwise(kept):
         if start < end:
             raise ValueError("changes overlap")
     return Edit(kept, say, moves or no_moves())

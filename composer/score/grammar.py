@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from functools import cache, lru_cache
 from importlib.resources import files
 
-from lark import Lark, Tree
+from lark import Lark, Token, Tree
 from lark.exceptions import UnexpectedInput
 
 from composer.faults import nearest
@@ -52,19 +52,38 @@ def body_of(text: str) -> str:
     return text.rstrip()
 
 
-def _misfit(start: str, body: str) -> Misfit:
-    """Parse again, a token at a time, and ask the parser what it could have taken where it stopped."""
+@dataclass(frozen=True, slots=True)
+class Partly:
+    """A line as far as it makes sense: its tokens, where it stops doing so (its length where it all does), what could stand
+    there by the names of the grammar's tokens."""
+
+    tokens: tuple[Token, ...]
+    stop: int
+    accepts: frozenset[str]
+
+
+@lru_cache(maxsize=16384)
+def parse_partly(start: str, body: str) -> Partly:
+    """Parse one line without its comment, a token at a time, as far as it goes: for an editor, where lines are half-typed."""
     parser = _grammar().parse_interactive(body, start=start)
+    tokens: list[Token] = []
     at = len(body)
     try:
         for token in parser.lexer_thread.lex(parser.parser_state):
             at = token.start_pos
             parser.feed_token(token)
+            tokens.append(token)
             at = len(body)
     except UnexpectedInput as stop:
         if at == len(body):
             at = stop.pos_in_stream
-    accepts = parser.accepts()
+    return Partly(tuple(tokens), at, frozenset(parser.accepts()))
+
+
+def _misfit(start: str, body: str) -> Misfit:
+    """Parse again, a token at a time, and ask the parser what it could have taken where it stopped."""
+    found = parse_partly(start, body)
+    at, accepts = found.stop, found.accepts
     match = _WORD.match(body, at)
     if at >= len(body):
         return Misfit(len(body) + 1, 1, "the line ends here", tell(accepts), "")
