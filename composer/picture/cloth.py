@@ -6,10 +6,11 @@ import numpy as np
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QImage, QPainter, QPolygonF
 
-from composer.picture import image, lanes, legend, palette
+from composer.picture import image, lanes, legend
 from composer.picture.axes import Tick, bar_ticks
 from composer.picture.image import Image, Rows
 from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
+from composer.picture.palette import DARK, Theme
 from composer.picture.scene import Scene, Stretch
 
 LEAST_MARK = 5
@@ -31,9 +32,9 @@ class Layout:
     strip_top: int
 
 
-def layout(width: int, height: int, lane_count: int = 3) -> Layout:
+def layout(width: int, height: int, lane_count: int = 3, theme: Theme = DARK) -> Layout:
     """The layout of a picture of that size with so many lanes."""
-    look = Look(min(width / 1280, height / 800) if min(width / 1280, height / 800) > 1 else 1.0)
+    look = Look(min(width / 1280, height / 800) if min(width / 1280, height / 800) > 1 else 1.0, theme)
     px = look.px
     left = px(168)
     cues_top = px(46)
@@ -45,11 +46,11 @@ def layout(width: int, height: int, lane_count: int = 3) -> Layout:
     return Layout(look, left, top, width - left - px(22), max(room, 1), lane_room, cues_top, bars_top, strip_top)
 
 
-def paint(painter: QPainter, scene: Scene, width: int, height: int) -> None:
+def paint(painter: QPainter, scene: Scene, width: int, height: int, theme: Theme = DARK) -> None:
     """Draw a whole cloth, with everything round it, into a picture of that size."""
-    plan = layout(width, height, len(scene.lanes))
+    plan = layout(width, height, len(scene.lanes), theme)
     rows = image.rows_of(scene.bands, plan.room)
-    painter.fillRect(0, 0, width, height, colour(palette.GROUND))
+    painter.fillRect(0, 0, width, height, colour(plan.look.theme.ground))
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     heading(painter, plan, rows, scene, width)
     threads(painter, plan, rows, scene)
@@ -69,7 +70,7 @@ def heading(painter: QPainter, plan: Layout, rows: Rows, scene: Scene, width: in
 
 def threads(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     """Draw the threads with their names, bar lines and snags."""
-    _threads(painter, plan, image.threads(scene.share, scene.extending, rows))
+    _threads(painter, plan, image.threads(scene.share, scene.extending, rows, plan.look.theme))
     _names(painter, plan, rows, scene)
     _bar_lines_over(painter, plan, rows, scene)
     _snags(painter, plan, rows, scene)
@@ -85,22 +86,24 @@ def _title(painter: QPainter, plan: Layout, scene: Scene, width: int) -> None:
     box = QRectF(look.px(16), look.px(10), width - look.px(38), look.px(30))
     used = look.write(painter, box, scene.title, 21, bold=True)
     rest = QRectF(box.left() + used + look.px(16), box.top() + look.px(3), box.width() - used - look.px(16), box.height())
-    look.write(painter, rest, scene.subtitle, 13, palette.QUIET_INK)
+    look.write(painter, rest, scene.subtitle, 13, look.theme.quiet_ink)
 
 
 def _bars(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     look = plan.look
     high = look.px(24)
-    look.write(painter, QRectF(look.px(16), plan.bars_top, plan.left - look.px(28), high), "bar", 12, palette.QUIET_INK, RIGHT)
+    look.write(
+        painter, QRectF(look.px(16), plan.bars_top, plan.left - look.px(28), high), "bar", 12, look.theme.quiet_ink, RIGHT
+    )
     for tick in _ticks(plan, scene):
         x = x_of(plan, scene, tick.at)
         foot = plan.strip_top
         rise = look.px(7 if tick.label and tick.strong else 4 if tick.strong else 3)
-        painter.setPen(pen(palette.QUIET_INK if tick.strong else palette.LINE, max(1.0, look.scale * 0.9)))
+        painter.setPen(pen(look.theme.quiet_ink if tick.strong else look.theme.line, max(1.0, look.scale * 0.9)))
         painter.drawLine(QPointF(x, foot - rise), QPointF(x, foot))
         if tick.label:
             box = QRectF(x - look.px(40), plan.bars_top, look.px(80), high - look.px(7))
-            size, of = (12.5, palette.INK) if tick.strong else (10.5, palette.QUIET_INK)
+            size, of = (12.5, look.theme.ink) if tick.strong else (10.5, look.theme.quiet_ink)
             look.write(painter, box, tick.label, size, of, CENTRE, bold=tick.strong)
 
 
@@ -114,7 +117,7 @@ def _bar_lines_over(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -
     for tick in _ticks(plan, scene):
         if tick.strong and tick.label:
             x = round(x_of(plan, scene, tick.at)) + 0.5
-            painter.setPen(pen(palette.INK, 1.0, 46))
+            painter.setPen(pen(plan.look.theme.ink, 1.0, 46))
             painter.drawLine(QPointF(x, plan.top), QPointF(x, plan.top + rows.height))
 
 
@@ -143,7 +146,7 @@ def _names(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     taken = -np.inf
     for band in scene.bands:
         top, bottom = plan.top + rows.top[band.first], plan.top + rows.bottom[band.last - 1]
-        painter.setPen(pen(palette.LINE, look.px(2)))
+        painter.setPen(pen(look.theme.line, look.px(2)))
         x = plan.left - look.px(5)
         painter.drawLine(QPointF(x, top), QPointF(x, bottom))
         tall = rows.bottom[band.first] - rows.top[band.first]
@@ -156,12 +159,12 @@ def _names(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
             if tall < line:
                 middle = top + line / 2 if fiber == band.first else bottom - line / 2
             box = QRectF(look.px(96), middle - line / 2, wide - look.px(96), line)
-            look.write(painter, box, scene.names[fiber], 10.5, palette.QUIET_INK, RIGHT)
+            look.write(painter, box, scene.names[fiber], 10.5, look.theme.quiet_ink, RIGHT)
         middle = (top + bottom) / 2
         if middle - line / 2 >= taken and (count > 1 or tall < line):
             room = look.px(88) if len(each) and (len(each) > 2 or bottom - top < 4 * line) else wide - look.px(12)
             box = QRectF(look.px(10), middle - line / 2, room, line)
-            look.write(painter, box, band.name, 11.5, palette.INK, LEFT if room == look.px(88) else RIGHT, bold=True)
+            look.write(painter, box, band.name, 11.5, look.theme.ink, LEFT if room == look.px(88) else RIGHT, bold=True)
             taken = middle + line / 2
 
 
@@ -177,7 +180,7 @@ def _snags(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
         if snag.fiber is None or snag.to_s < scene.from_s or snag.from_s > scene.to_s:
             continue
         left, right = _span(plan, scene, snag, least)
-        painter.fillRect(QRectF(left, plan.strip_top + look.px(2), right - left, look.px(5)), colour(palette.LIMIT))
+        painter.fillRect(QRectF(left, plan.strip_top + look.px(2), right - left, look.px(5)), colour(look.theme.limit))
         top, bottom = plan.top + rows.top[snag.fiber], plan.top + rows.bottom[snag.fiber]
         if bottom - top < least:
             top, bottom = (top + bottom - least) / 2, (top + bottom + least) / 2
@@ -202,9 +205,9 @@ def _pins(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
 
 def pin_at(painter: QPainter, look: Look, x: float, top: float, foot: float) -> None:
     """Draw one pin, its head at `top`, its point at `foot`."""
-    painter.setPen(pen(palette.PIN, max(1.0, 1.2 * look.scale)))
+    painter.setPen(pen(look.theme.pin, max(1.0, 1.2 * look.scale)))
     painter.drawLine(QPointF(x, top), QPointF(x, foot))
-    painter.setBrush(colour(palette.PIN))
+    painter.setBrush(colour(look.theme.pin))
     radius = look.px(3.5)
     painter.drawEllipse(QPointF(x, top), radius, radius)
 
@@ -223,17 +226,17 @@ def _cues(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
         # A name that would run into the one before goes half a line lower; where both are taken it is left out.
         row = next((number for number, end in enumerate(ends) if end <= x), None)
         top = plan.cues_top + (row or 0) * look.px(15)
-        painter.setPen(pen(palette.CUE, max(1.0, 1.2 * look.scale), 200, (4.0, 4.0)))
+        painter.setPen(pen(look.theme.cue, max(1.0, 1.2 * look.scale), 200, (4.0, 4.0)))
         # The line leaves the bars' numbers free.
         painter.drawLine(QPointF(x, top), QPointF(x, plan.bars_top))
         painter.drawLine(QPointF(x, plan.strip_top), QPointF(x, plan.top + rows.height))
         painter.setPen(Qt.PenStyle.NoPen)
-        painter.setBrush(colour(palette.CUE))
+        painter.setBrush(colour(look.theme.cue))
         painter.drawPolygon(QPolygonF([QPointF(x, top), QPointF(x + look.px(9), top + high / 3), QPointF(x, top + high / 1.5)]))
         if cue.waits:
             for shift in (-6, -10):
                 painter.drawRect(QRectF(x + look.px(shift) if shift > 0 else x - look.px(-shift), top, look.px(2), high / 1.5))
         if row is not None:
             room = plan.left + plan.width + look.px(18) - x - look.px(12)
-            look.write(painter, QRectF(x + look.px(12), top - look.px(3), min(wide, room), high), name, 12, palette.CUE)
+            look.write(painter, QRectF(x + look.px(12), top - look.px(3), min(wide, room), high), name, 12, look.theme.cue)
             ends[row] = x + look.px(16) + wide

@@ -10,6 +10,7 @@ from composer.limits.abilities import Abilities
 from composer.motion import strain_at
 from composer.picture import palette
 from composer.picture.bands import Band
+from composer.picture.palette import DARK, Theme
 from composer.tracks import Tracks
 
 Array = NDArray[np.float64]
@@ -33,14 +34,14 @@ class Rows:
     crowded: bool
 
 
-def rows_of(bands: Sequence[Band], height: int) -> Rows:
-    """Lay threads into at most `height` pixels, all alike, with a gap between bands."""
+def rows_of(bands: Sequence[Band], height: int, widest: int = WIDEST_THREAD) -> Rows:
+    """Lay threads into at most `height` pixels, all alike and at most `widest` high, with a gap between bands."""
     fibers = bands[-1].last if bands else 0
     band = np.repeat(np.arange(len(bands)), [one.last - one.first for one in bands])
     gaps = max(len(bands) - 1, 0)
     if not fibers:
         return Rows(0, np.zeros(0), np.zeros(0), False)
-    thread = min(height // fibers, WIDEST_THREAD)
+    thread = min(height // fibers, widest)
     gap = min(max(3, thread // 2 + 2), 10)
     while thread > 1 and thread * fibers + gap * gaps > height:
         thread -= 1
@@ -71,21 +72,21 @@ def extends(abilities: Abilities) -> NDArray[np.bool_]:
     return by_make[abilities.which]
 
 
-def colours(share: ArrayLike, extending: NDArray[np.bool_]) -> Image:
+def colours(share: ArrayLike, extending: NDArray[np.bool_], theme: Theme = DARK) -> Image:
     """Colours (F, T, 3) of shares of stroke (F, T): lightness by share, hue by direction; beyond 0 and 1 as at the end."""
     step = np.rint(np.clip(np.nan_to_num(share), 0.0, 1.0) * (palette.STEPS - 1)).astype(np.intp)
-    both = np.concatenate([palette.CONTRACT, palette.EXTEND])
+    both = np.concatenate([theme.contract, theme.extend])
     return both[step + palette.STEPS * np.asarray(extending)[:, None]]
 
 
-def threads(share: ArrayLike, extending: NDArray[np.bool_], rows: Rows) -> Image:
+def threads(share: ArrayLike, extending: NDArray[np.bool_], rows: Rows, theme: Theme = DARK) -> Image:
     """The image (height, T, 3) of threads laid out as `rows`: gaps and edges in the ground's colour."""
     share = np.asarray(share)
     image = np.empty((rows.height, share.shape[1], 3), dtype=np.uint8)
-    image[:] = palette.GROUND
+    image[:] = theme.ground
     if rows.crowded:
-        return _crowded(image, share, extending, rows)
-    colour = colours(share, extending)
+        return _crowded(image, share, extending, rows, theme)
+    colour = colours(share, extending, theme)
     top = rows.top.astype(int)
     tall = int(rows.bottom[0] - rows.top[0]) if len(top) else 0
     edge = tall // 4 if tall >= THREAD_WITH_EDGE else 0
@@ -94,7 +95,7 @@ def threads(share: ArrayLike, extending: NDArray[np.bool_], rows: Rows) -> Image
     return image
 
 
-def _crowded(image: Image, share: Array, extending: NDArray[np.bool_], rows: Rows) -> Image:
+def _crowded(image: Image, share: Array, extending: NDArray[np.bool_], rows: Rows, theme: Theme) -> Image:
     """Each pixel row the mean colour of the threads whose middle lies in it, or else of the nearest within half a pixel."""
     middle = (rows.top + rows.bottom) / 2
     begin = np.searchsorted(middle, np.arange(rows.height))
@@ -107,5 +108,5 @@ def _crowded(image: Image, share: Array, extending: NDArray[np.bool_], rows: Row
             if fiber >= len(middle) or rows.top[fiber] > row + 0.5:
                 continue
             part = slice(fiber, fiber + 1)
-        image[row] = np.rint(colours(share[part], extending[part]).mean(axis=0))
+        image[row] = np.rint(colours(share[part], extending[part], theme).mean(axis=0))
     return image

@@ -6,7 +6,6 @@ import numpy as np
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainter, QPolygonF
 
-from composer.picture import palette
 from composer.picture.axes import second_ticks, value_ticks
 from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
 from composer.picture.scene import Lane, Scene
@@ -20,22 +19,27 @@ def paint(painter: QPainter, look: Look, scene: Scene, left: float, top: float, 
     foot = top
     for number, lane in enumerate(scene.lanes):
         box = QRectF(left, top + gap + number * (each + gap), width, each)
-        painter.fillRect(box, colour(palette.PANEL))
+        painter.fillRect(box, colour(look.theme.panel))
         for tick in ticks:
             x = round(left + (tick.at - scene.from_s) / (scene.to_s - scene.from_s) * width) + 0.5
-            painter.setPen(pen(palette.FAINT_LINE))
+            painter.setPen(pen(look.theme.faint_line))
             painter.drawLine(QPointF(x, box.top()), QPointF(x, box.bottom()))
         _lane(painter, look, lane, box, scene)
         foot = box.bottom()
     look.write(
-        painter, QRectF(look.px(16), foot + look.px(3), left - look.px(28), look.px(18)), "time", 12, palette.QUIET_INK, RIGHT
+        painter,
+        QRectF(look.px(16), foot + look.px(3), left - look.px(28), look.px(18)),
+        "time",
+        12,
+        look.theme.quiet_ink,
+        RIGHT,
     )
     for tick in ticks:
         x = left + (tick.at - scene.from_s) / (scene.to_s - scene.from_s) * width
-        painter.setPen(pen(palette.QUIET_INK))
+        painter.setPen(pen(look.theme.quiet_ink))
         painter.drawLine(QPointF(x, foot), QPointF(x, foot + look.px(4)))
         box = QRectF(x - look.px(40), foot + look.px(3), look.px(80), look.px(18))
-        look.write(painter, box, tick.label, 11.5, palette.QUIET_INK, CENTRE)
+        look.write(painter, box, tick.label, 11.5, look.theme.quiet_ink, CENTRE)
 
 
 def _lane(painter: QPainter, look: Look, lane: Lane, box: QRectF, scene: Scene) -> None:
@@ -50,13 +54,13 @@ def _lane(painter: QPainter, look: Look, lane: Lane, box: QRectF, scene: Scene) 
         _short(painter, look, box, scene)
     if lane.limit is not None and low <= lane.limit <= high:
         y = y_of(lane.limit)
-        painter.setPen(pen(palette.LIMIT, max(1.0, 1.2 * look.scale), 255, (5.0, 3.0)))
+        painter.setPen(pen(look.theme.limit, max(1.0, 1.2 * look.scale), 255, (5.0, 3.0)))
         painter.drawLine(QPointF(box.left(), y), QPointF(box.right(), y))
         wide = look.width(lane.limit_word, 10.5)
         above = y - look.px(14) > box.top()
         word = QRectF(box.right() - wide - look.px(6), y - look.px(14) if above else y + look.px(1), wide + 2, look.px(13))
-        look.write(painter, word, lane.limit_word, 10.5, palette.LIMIT, LEFT)
-    painter.setPen(pen(lane.colour, max(1.4, 1.5 * look.scale)))
+        look.write(painter, word, lane.limit_word, 10.5, look.theme.limit, LEFT)
+    painter.setPen(pen(getattr(look.theme, lane.colour), max(1.4, 1.5 * look.scale)))
     columns = np.flatnonzero(np.isfinite(lane.values))
     for run in np.split(columns, np.flatnonzero(np.diff(columns) > 1) + 1):
         x = box.left() + (run + 0.5) * box.width() / len(lane.values)
@@ -83,12 +87,12 @@ def _scale(painter: QPainter, look: Look, lane: Lane, box: QRectF, y_of: Callabl
     wide = max((look.width(f"{value:g}", 10) for value in values), default=0.0)
     for value in values:
         y = y_of(value)
-        painter.setPen(pen(palette.LINE))
+        painter.setPen(pen(look.theme.line))
         painter.drawLine(QPointF(box.left(), round(y) + 0.5), QPointF(box.right(), round(y) + 0.5))
         place = min(max(y - line / 2, box.top() - 1), box.bottom() - line + 1)
         label = QRectF(box.left() - wide - look.px(8), place, wide + 2, line)
-        look.write(painter, label, f"{value:g}", 10, palette.QUIET_INK, RIGHT)
+        look.write(painter, label, f"{value:g}", 10, look.theme.quiet_ink, RIGHT)
     room = box.left() - wide - look.px(24)
     middle = box.center().y()
-    look.write(painter, QRectF(look.px(10), middle - line, room, line), lane.name, 11.5, palette.INK, LEFT, bold=True)
-    look.write(painter, QRectF(look.px(10), middle, room, line), lane.unit, 10.5, palette.QUIET_INK, LEFT)
+    look.write(painter, QRectF(look.px(10), middle - line, room, line), lane.name, 11.5, look.theme.ink, LEFT, bold=True)
+    look.write(painter, QRectF(look.px(10), middle, room, line), lane.unit, 10.5, look.theme.quiet_ink, LEFT)

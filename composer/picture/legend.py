@@ -13,8 +13,8 @@ def paint(painter: QPainter, look: Look, scene: Scene, box: QRectF) -> None:
     """Draw the legend of a scene into a box of one line."""
     x = box.left()
     for word, ramp, shown in (
-        ("contracts", palette.CONTRACT, not scene.extending.all()),
-        ("extends", palette.EXTEND, scene.extending.any()),
+        ("contracts", look.theme.contract, not scene.extending.all()),
+        ("extends", look.theme.extend, scene.extending.any()),
     ):
         if shown:
             x = _ramp(painter, look, box, x, word, ramp)
@@ -23,20 +23,20 @@ def paint(painter: QPainter, look: Look, scene: Scene, box: QRectF) -> None:
         count = len(scene.snags)
         word = f"{count} snag{'s' * (count != 1)}: more than the rig can do"
         swatch = QRectF(line.left(), box.center().y() - look.px(7), look.px(30), look.px(14))
-        painter.fillRect(swatch, colour(palette.PANEL))
+        painter.fillRect(swatch, colour(look.theme.panel))
         painter.fillRect(swatch, look.hatch())
         line.setLeft(_word(painter, look, line, look.px(36), word))
     if scene.pins_s:
         at = line.left() + look.px(4)
-        painter.setPen(pen(palette.PIN, max(1.0, 1.2 * look.scale)))
+        painter.setPen(pen(look.theme.pin, max(1.0, 1.2 * look.scale)))
         painter.drawLine(QPointF(at, box.center().y() - look.px(4)), QPointF(at, box.center().y() + look.px(8)))
-        painter.setBrush(colour(palette.PIN))
+        painter.setBrush(colour(look.theme.pin))
         painter.drawEllipse(QPointF(at, box.center().y() - look.px(5)), look.px(3.5), look.px(3.5))
         line.setLeft(_word(painter, look, line, look.px(13), "pin: must not move"))
     if scene.cues:
         y = box.center().y() - look.px(6)
         painter.setPen(Qt.PenStyle.NoPen)
-        painter.setBrush(colour(palette.CUE))
+        painter.setBrush(colour(look.theme.cue))
         left = line.left()
         painter.drawPolygon(
             QPolygonF([QPointF(left, y), QPointF(left + look.px(9), y + look.px(6)), QPointF(left, y + look.px(12))])
@@ -47,7 +47,7 @@ def paint(painter: QPainter, look: Look, scene: Scene, box: QRectF) -> None:
 def _word(painter: QPainter, look: Look, line: QRectF, skip: float, word: str) -> float:
     """Write a word behind its sign; returns where the next sign begins."""
     room = QRectF(line.left() + skip, line.top(), max(line.width() - skip, 0.0), line.height())
-    return room.left() + look.write(painter, room, word, 11.5, palette.INK) + look.px(22)
+    return room.left() + look.write(painter, room, word, 11.5, look.theme.ink) + look.px(22)
 
 
 def _ramp(painter: QPainter, look: Look, box: QRectF, x: float, word: str, ramp: Image) -> float:

@@ -5,8 +5,7 @@ from dataclasses import dataclass
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QBrush, QColor, QFont, QFontMetricsF, QPainter, QPen, QPixmap
 
-from composer.picture import palette
-from composer.picture.palette import Colour
+from composer.picture.palette import DARK, Colour, Theme
 
 FAMILIES = ["Noto Sans", "DejaVu Sans", "Segoe UI", "Helvetica Neue", "Arial", "Sans Serif"]
 
@@ -29,9 +28,10 @@ def pen(of: Colour, width: float = 1.0, alpha: int = 255, dash: tuple[float, ...
 
 @dataclass(frozen=True, slots=True)
 class Look:
-    """Sizes that grow with the picture: 1 at 1280 by 800, 3 on a 4K screen."""
+    """Sizes that grow with the picture, 1 at 1280 by 800, 3 on a 4K screen; and the colours that it is drawn in."""
 
     scale: float
+    theme: Theme = DARK
 
     def px(self, size: float) -> int:
         """A size in pixels of the smallest picture, at this scale, whole and at least 1."""
@@ -52,7 +52,7 @@ class Look:
         box: QRectF,
         text: str,
         size: float,
-        of: Colour = palette.INK,
+        of: Colour | None = None,
         align: Qt.AlignmentFlag = LEFT,
         bold: bool = False,
     ) -> float:
@@ -61,7 +61,7 @@ class Look:
         metrics = QFontMetricsF(font)
         shown = metrics.elidedText(text, Qt.TextElideMode.ElideRight, box.width())
         painter.setFont(font)
-        painter.setPen(colour(of))
+        painter.setPen(colour(of or self.theme.ink))
         painter.drawText(box, align | Qt.AlignmentFlag.AlignVCenter, shown)
         return metrics.horizontalAdvance(shown)
 
@@ -76,7 +76,7 @@ class Look:
         tile.fill(Qt.GlobalColor.transparent)
         painter = QPainter(tile)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-        for of, shift in ((palette.HATCH_DARK, size / 4.0), (palette.HATCH_LIGHT, 0.0)):
+        for of, shift in ((self.theme.hatch_dark, size / 4.0), (self.theme.hatch_light, 0.0)):
             painter.setPen(pen(of, size / 4.0, 255))
             for turn in (-1, 0, 1):
                 begin = turn * size + shift

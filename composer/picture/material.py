@@ -8,7 +8,6 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.check import check
-from composer.picture import palette
 from composer.picture.bands import bands_of
 from composer.picture.bars import Bars
 from composer.picture.image import column_times, extends
@@ -123,7 +122,7 @@ def lanes_of(rig: Rig, kept: Kept) -> tuple[Lane, ...]:
             kept.supply_kPa,
             max(0.0, lowest - 0.1 * (most - lowest)),
             most + 0.06 * (most - lowest) + 1.0,
-            palette.SUPPLY,
+            "supply",
             least,
             "minimum",
             True,
@@ -134,11 +133,11 @@ def lanes_of(rig: Rig, kept: Kept) -> tuple[Lane, ...]:
             duty,
             0.0,
             max(112.0, 1.08 * float(np.nanmax(duty, initial=0.0))),
-            palette.DUTY,
+            "duty",
             100.0,
             "all used",
         ),
-        Lane("largest miss", "% of stroke", miss, 0.0, max(20.0, 1.08 * float(np.nanmax(miss, initial=0.0))), palette.MISS),
+        Lane("largest miss", "% of stroke", miss, 0.0, max(20.0, 1.08 * float(np.nanmax(miss, initial=0.0))), "miss"),
     )
 
 

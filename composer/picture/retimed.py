@@ -11,7 +11,7 @@ from PySide6.QtGui import QPainter, QPolygonF
 from composer.limits.air import FREE_AIR_KPA, demand, refill_L_s
 from composer.limits.buckets import level
 from composer.limits.check import Check
-from composer.picture import cloth, lanes, legend, palette
+from composer.picture import cloth, lanes, legend
 from composer.picture.bands import bands_of
 from composer.picture.bars import Bars, RetimedBars
 from composer.picture.cloth import Layout, layout, x_of
@@ -78,7 +78,7 @@ def _air(piece: Piece, tracks: Tracks, times_s: Array, name: str) -> Lane:
     least, most = supply.min_pressure_kPa, supply.max_receiver_kPa
     low = min(float(pressure.min(initial=most)), least)
     return Lane(
-        name, "receiver, kPa", pressure, max(0.0, low - 0.1 * (most - low)), most + 0.06 * (most - low) + 1.0, palette.SUPPLY,
+        name, "receiver, kPa", pressure, max(0.0, low - 0.1 * (most - low)), most + 0.06 * (most - low) + 1.0, "supply",
         least, "minimum",
     )  # fmt: skip
 
@@ -90,7 +90,7 @@ def paint(painter: QPainter, both: Both, width: int, height: int) -> None:
     gap = look.px(BETWEEN)
     rows = rows_of(both.was.bands, max((plan.room - gap) // 2, 1))
     below = replace(plan, top=plan.top + rows.height + gap, strip_top=plan.top + rows.height + gap - look.px(10))
-    painter.fillRect(0, 0, width, height, colour(palette.GROUND))
+    painter.fillRect(0, 0, width, height, colour(look.theme.ground))
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     cloth.heading(painter, plan, rows, both.was, width)
     cloth.threads(painter, plan, rows, both.was)
@@ -110,7 +110,7 @@ def paint(painter: QPainter, both: Both, width: int, height: int) -> None:
 
 def _what(painter: QPainter, look: Look, plan: Layout, top: float, text: str) -> None:
     look.write(
-        painter, QRectF(look.px(10), top, plan.left - look.px(20), look.px(18)), text, 12.5, palette.INK, LEFT, bold=True
+        painter, QRectF(look.px(10), top, plan.left - look.px(20), look.px(18)), text, 12.5, look.theme.ink, LEFT, bold=True
     )
 
 
@@ -123,9 +123,9 @@ def _arrows(painter: QPainter, plan: Layout, both: Both, top: float, foot: float
         if (round(begin), round(end)) in drawn:
             continue
         drawn.add((round(begin), round(end)))
-        painter.setPen(pen(palette.CUE, max(1.0, 1.3 * look.scale)))
+        painter.setPen(pen(look.theme.cue, max(1.0, 1.3 * look.scale)))
         painter.drawLine(QPointF(begin, top), QPointF(end, foot - size))
-        painter.setBrush(colour(palette.CUE))
+        painter.setBrush(colour(look.theme.cue))
         painter.drawPolygon(
             QPolygonF([QPointF(end, foot), QPointF(end - size, foot - 2 * size), QPointF(end + size, foot - 2 * size)])
         )

@@ -33,7 +33,7 @@ class CueMark:
 class Lane:
     """A curve below the cloth: `values` (W,), one a column of the cloth, nan for none; from `low` to `high` in `unit`.
 
-    limit: a level not to be passed, None for none, with the word for it; supply: whether snags of the air lie over it
+    colour: its name in the theme; limit: a level not to be passed, None for none, with the word for it; supply: whether snags of the air lie over it
     """
 
     name: str
@@ -41,7 +41,7 @@ class Lane:
     values: Array
     low: float
     high: float
-    colour: tuple[int, int, int]
+    colour: str
     limit: float | None = None
     limit_word: str = ""
     supply: bool = False
