@@ -69,7 +69,7 @@ def as_text(score: str, checked: Check, teller: Teller, notes: Iterable[str] = (
         f"{score}: {_counted(tracks.fibers, 'fiber')} of {rig.name}, {_counted(tracks.moves, 'move')}, "
         f"{minutes(tracks.duration_s)}: " + ("the rig can do all of it" if not count else f"{_counted(count, 'snag')}")
     ]
-    places = _together(checked.snags, tracks)
+    places = together(checked.snags, tracks)
     for snag, fibers in places[:MOST_TOLD]:
         words = tell(snag, teller, fibers)
         lines.append(f"{score}:{snag.line}: {words.says}" if snag.line else f"{score}: {words.says}")
@@ -128,7 +128,7 @@ def _by_phrase(snag: Snag, tracks: Tracks) -> str:
     return f" (Its phrase: line {line}.)" if line else ""
 
 
-def _together(snags: Iterable[Snag], tracks: Tracks) -> list[tuple[Snag, list[int]]]:
+def together(snags: Iterable[Snag], tracks: Tracks) -> list[tuple[Snag, list[int]]]:
     """Snags that a sentence tells alike but for the fiber, as one with all their fibers; the latest first.
 
     Two stretches of one move are one to a reader: so what counts is when the move starts, where there is one.

@@ -1,0 +1,187 @@
+"""What window and workers say to one another, as data. A version counts the changes of the text since the window opened."""
+
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.editor.deltas import Delta
+from composer.faults import Fault
+from composer.limits.abilities import Abilities
+from composer.limits.check import Check
+from composer.rig.model import Rig
+from composer.tracks import Tracks
+
+Array = NDArray[np.float64]
+
+# ---- from the window --------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Whole:
+    """The whole text, the file that it stands for (relative paths begin there), and a rig file in place of the score's."""
+
+    version: int
+    file: str
+    text: str
+
+
+@dataclass(frozen=True, slots=True)
+class Changed:
+    """One change of the text, which makes it this version."""
+
+    version: int
+    delta: Delta
+
+
+@dataclass(frozen=True, slots=True)
+class Again:
+    """Files that the score leans on have changed: read them anew."""
+
+    version: int
+
+
+@dataclass(frozen=True, slots=True)
+class Ask:
+    """A question about a version of the text; `what` is a row of `composer.editor.questions.QUESTIONS`."""
+
+    number: int
+    version: int
+    what: str
+    about: tuple[Any, ...] = ()
+
+
+# ---- from a worker ----------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Doing:
+    """What a worker is at: a word for the status line, "" for nothing."""
+
+    version: int
+    what: str
+
+
+@dataclass(frozen=True, slots=True)
+class FileStamp:
+    """A file that the score leans on, as it stood when it was read: when it was written, how large; 0 for not there."""
+
+    path: str
+    changed_ns: int
+    size: int
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """What is wrong with a version, and the files that it was read from beside its own text."""
+
+    version: int
+    faults: tuple[Fault, ...]
+    leans_on: tuple[FileStamp, ...]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class RigRead:
+    """The rig, where it is another than before: sent ahead of the first picture that is of it."""
+
+    number: int
+    rig: Rig
+    abilities: Abilities
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Picture:
+    """A version that could be read: tracks and all that is drawn with them; `rig` is the number of a `RigRead`."""
+
+    version: int
+    rig: int
+    title: str
+    tracks: Tracks
+    tempo: Any
+    pins_s: Array
+    cues: tuple[Any, ...]
+    keep: str
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """Snags that are told together: which of the check's, the sentence, what would mend it, the place, the line, the fibers."""
+
+    snags: tuple[int, ...]
+    kind: str
+    says: str
+    mends: str
+    place: str
+    from_s: float
+    to_s: float
+    line: int
+    phrase_line: int
+    fibers: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Checked:
+    """The check of a version: what it found, and its list for the composer; notes are sentences about what is no snag."""
+
+    version: int
+    check: Check
+    rows: tuple[Row, ...]
+    notes: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Hit:
+    """A hit that retiming moved: instants, the sentence, the line."""
+
+    was_s: float
+    now_s: float
+    says: str
+    line: int
+    fibers: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Retimed:
+    """The retiming of a version: tracks, where instants went, each hit that moved, the report; `ok`: nothing is left."""
+
+    version: int
+    tracks: Tracks
+    was_s: Array
+    now_s: Array
+    hits: tuple[Hit, ...]
+    says: tuple[str, ...]
+    ok: bool
+    cost: float
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Simulated:
+    """A stretch of the simulated run of a version: `strain` (F, N) at `time_s` (N,), in order; `share` of the run is done."""
+
+    version: int
+    time_s: Array
+    strain: NDArray[np.float32]
+    supply_kPa: Array
+    duty: Array
+    share: float
+    retimed: bool = False
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Answer:
+    """The answer to a question; None where there is nothing to say, a `Refusal` where it cannot be."""
+
+    number: int
+    version: int
+    what: str
+    value: Any
+
+
+@dataclass(frozen=True, slots=True)
+class Failed:
+    """A fault of the program itself in a worker, as a sentence; what it was at is dropped, and it goes on."""
+
+    version: int
+    says: str
+    known: tuple[str, ...] = field(default=())
