@@ -156,16 +156,14 @@ class HangView(QWidget):
         if self._still is None or self._still.size() != QSize(width, height):
             self._still = QImage(width, height, QImage.Format.Format_RGB32)
             inner = QPainter(self._still)
-            hang_paint.paint_still(inner, self._room, camera, look, width, height, self._theme)
+            hang_paint.paint_still(inner, self._room, camera, look, width, height)
             inner.end()
         painter = QPainter(self)
         ratio = self.devicePixelRatioF()
         painter.scale(1.0 / ratio, 1.0 / ratio)
         painter.drawImage(0, 0, self._still)
-        self._lines = hang_paint.paint_fibers(
-            painter, self._room, camera, look, self._wanted, self._sensed, self._lit, self._theme
-        )
-        hang_paint.paint_names(painter, self._room, self._lines, look, self._hovered, width, self._theme)
+        self._lines = hang_paint.paint_fibers(painter, self._room, camera, look, self._wanted, self._sensed, self._lit)
+        hang_paint.paint_names(painter, self._room, self._lines, look, self._hovered, width)
         painter.end()
 
     def _size(self) -> tuple[int, int]:
@@ -175,7 +173,7 @@ class HangView(QWidget):
     def _look(self) -> Look:
         window = self.window()
         ratio = self.devicePixelRatioF()
-        return Look(max(1.0, min(window.width() * ratio / 1280.0, window.height() * ratio / 800.0)))
+        return Look(max(1.0, min(window.width() * ratio / 1280.0, window.height() * ratio / 800.0)), self._theme)
 
     def _seen(self) -> Camera:
         if self._camera is None:

@@ -11,6 +11,9 @@ Array = NDArray[np.float64]
 
 LEAST_SPAN_M = 0.05
 
+SAMPLES = 17
+"""Strains at which the reach of the fibers is looked up: a full turn is then seen every 22 degrees."""
+
 
 @dataclass(frozen=True, slots=True)
 class View:
@@ -81,9 +84,9 @@ class Camera:
 
 
 def extent(hanging: Hanging, stroke: ArrayLike) -> Array:
-    """The points (N, 3) that every motion stays among, roughly: all lines at rest, at half and at full stroke (F,)."""
+    """The points (N, 3) that every motion stays among, nearly: all lines from rest to full stroke (F,)."""
     stroke = np.asarray(stroke, dtype=float)
-    return np.concatenate([centre_lines(hanging, share * stroke) for share in (0.0, 0.5, 1.0)])
+    return np.concatenate([centre_lines(hanging, share * stroke) for share in np.linspace(0.0, 1.0, SAMPLES)])
 
 
 def fitted(points: Array, view: View, left: float, top: float, width: float, height: float) -> Camera:

@@ -15,7 +15,6 @@ from composer.picture.hang_camera import VIEWS, Camera, depth, extent, fitted, s
 from composer.picture.hang_shapes import Hanging, centre_lines, hanging_of, radii
 from composer.picture.image import extends
 from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
-from composer.picture.palette import Theme
 from composer.rig.model import Rig
 
 Array = NDArray[np.float64]
@@ -29,13 +28,21 @@ WIDTHS = 0.5
 APART = 0.02
 """Share of stroke by which what is wanted and what is sensed must differ for a ghost to be drawn."""
 
+NEAR_FLOOR = 0.4
+"""A floor lower than this share of the rig's height below it is out of the picture."""
+
+REST_SHADE = 0.34
+"""How bright a fiber is at rest, as a share of its ramp: here its place tells how far it has moved, and none may be lost."""
+
 NAMES_FROM_PX = 15.0
 """Pixels between neighbours, at scale 1, from which on every fiber has its name beside it."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Room:
-    """A rig ready to be drawn: its fibers where they hang, `stroke` (F,), which extend, names, bands, and the reach of all."""
+    """A rig ready to be drawn: its fibers where they hang, `stroke` (F,), which extend, names, bands, and the reach of all;
+    floor: whether they stand over one.
+    """
 
     hanging: Hanging
     stroke: Array
@@ -43,25 +50,29 @@ class Room:
     names: tuple[str, ...]
     bands: tuple[Band, ...]
     reach: Array
+    floor: bool
 
 
 def room_of(rig: Rig, abilities: Abilities) -> Room:
     """The room of a rig."""
     hanging = hanging_of(rig)
     reach = extent(hanging, abilities.stroke)
-    if _has_floor(reach):
+    floor = _has_floor(reach)
+    if floor:
         # The floor belongs to the picture where it is near.
         feet = reach.copy()
         feet[:, 2] = 0.0
-        low, high = reach[:, 2].min(), reach[:, 2].max()
-        reach = np.concatenate([reach, feet]) if low <= 1.2 * (high - low) else reach
+        reach = np.concatenate([reach, feet])
     names = tuple(fiber.name for fiber in rig.fibers)
-    return Room(hanging, abilities.stroke, extends(abilities), names, bands_of(rig), reach)
+    return Room(hanging, abilities.stroke, extends(abilities), names, bands_of(rig), reach, floor)
 
 
 def _has_floor(points: Array) -> bool:
-    """Whether the rig stands on a floor at height 0: nothing of it lies lower."""
-    return bool(len(points)) and float(points[:, 2].min()) >= -0.005
+    """Whether there is a floor at height 0: nothing lies lower, and it is near beside the rig's own height."""
+    if not len(points):
+        return False
+    low, high = float(points[:, 2].min()), float(points[:, 2].max())
+    return low >= -0.005 and low <= NEAR_FLOOR * max(high - low, 0.05)
 
 
 def camera_of(room: Room, view: str, width: int, height: int, look: Look) -> Camera:
@@ -70,43 +81,41 @@ def camera_of(room: Room, view: str, width: int, height: int, look: Look) -> Cam
     return fitted(room.reach, VIEWS[view], side, above, max(width - 2 * side, 40), max(height - above - below, 40))
 
 
-def paint_still(
-    painter: QPainter, room: Room, camera: Camera, look: Look, width: int, height: int, theme: Theme = palette.DARK
-) -> None:
+def paint_still(painter: QPainter, room: Room, camera: Camera, look: Look, width: int, height: int) -> None:
     """Draw what does not move: ground, floor, what fibers hang from, where their ends are at rest, the scale bar."""
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    painter.fillRect(0, 0, width, height, colour(theme.ground))
+    painter.fillRect(0, 0, width, height, colour(look.theme.ground))
     if not len(room.names):
-        look.write(painter, QRectF(0, 0, width, height), "no fibers", 14, theme.quiet_ink, CENTRE)
+        look.write(painter, QRectF(0, 0, width, height), "no fibers", 14, look.theme.quiet_ink, CENTRE)
         return
-    _floor(painter, room, camera, look, width, theme)
-    _rests(painter, room, camera, look, theme)
-    _bars(painter, room, camera, look, width, theme)
-    _scale(painter, camera, look, width, height, theme)
+    _floor(painter, room, camera, look, width)
+    _rests(painter, room, camera, look)
+    _bars(painter, room, camera, look, width)
+    _scale(painter, camera, look, width, height)
 
 
-def _floor(painter: QPainter, room: Room, camera: Camera, look: Look, width: int, theme: Theme) -> None:
-    if not _has_floor(room.reach):
+def _floor(painter: QPainter, room: Room, camera: Camera, look: Look, width: int) -> None:
+    if not room.floor:
         return
     low, high = room.reach.min(axis=0), room.reach.max(axis=0)
     pad = 0.12 * max(float((high - low).max()), 0.2)
     corners = [(low[0] - pad, low[1] - pad), (high[0] + pad, low[1] - pad), (high[0] + pad, high[1] + pad)]
     corners.append((low[0] - pad, high[1] + pad))
     seen = camera.pixels(np.array([(x, y, 0.0) for x, y in corners]))
-    painter.setPen(pen(theme.line, max(1.0, look.scale)))
+    painter.setPen(pen(look.theme.line, max(1.0, look.scale)))
     if camera.view.up_deg:
-        painter.setBrush(colour(theme.panel))
+        painter.setBrush(colour(look.theme.panel))
         painter.drawPolygon(QPolygonF([QPointF(*each) for each in seen]))
         painter.setBrush(Qt.BrushStyle.NoBrush)
         return
     y = float(seen[0, 1])
     painter.drawLine(QPointF(0, y), QPointF(width, y))
-    look.write(painter, QRectF(look.px(12), y + look.px(2), look.px(80), look.px(16)), "floor", 11, theme.quiet_ink, LEFT)
+    look.write(painter, QRectF(look.px(12), y + look.px(2), look.px(80), look.px(16)), "floor", 11, look.theme.quiet_ink, LEFT)
 
 
-def _rests(painter: QPainter, room: Room, camera: Camera, look: Look, theme: Theme) -> None:
+def _rests(painter: QPainter, room: Room, camera: Camera, look: Look) -> None:
     """Each fiber at rest, faintly, so that every motion is seen against it."""
-    painter.setPen(pen(theme.faint_line, max(1.0, look.scale)))
+    painter.setPen(pen(look.theme.faint_line, max(1.0, look.scale)))
     hanging = room.hanging
     lines = camera.pixels(centre_lines(hanging, np.zeros(len(room.names))))
     ends = lines[hanging.first[1:] - 1]
@@ -117,13 +126,13 @@ def _rests(painter: QPainter, room: Room, camera: Camera, look: Look, theme: The
         painter.drawLine(QPointF(x - size, y), QPointF(x + size, y))
 
 
-def _bars(painter: QPainter, room: Room, camera: Camera, look: Look, width: int, theme: Theme) -> None:
+def _bars(painter: QPainter, room: Room, camera: Camera, look: Look, width: int) -> None:
     """A bar through the points from which each band hangs, with its name where there is room."""
     hung = camera.pixels(room.hanging.at)
-    taken: list[QRectF] = []
-    for band in room.bands:
-        ends = hung[[band.first, band.last - 1]]
-        painter.setPen(pen(theme.line, max(2.0, 2.5 * look.scale)))
+    bars = [hung[[band.first, band.last - 1]] for band in room.bands]
+    taken = [QRectF(QPointF(*ends.min(axis=0)), QPointF(*(ends.max(axis=0) + look.px(3)))) for ends in bars]
+    for band, ends in zip(room.bands, bars, strict=True):
+        painter.setPen(pen(look.theme.line, max(2.0, 2.5 * look.scale)))
         painter.drawPolyline(QPolygonF([QPointF(*each) for each in hung[band.first : band.last].tolist()]))
         if band.last - band.first > 1:
             wide = look.width(band.name, 12) + 4
@@ -133,19 +142,19 @@ def _bars(painter: QPainter, room: Room, camera: Camera, look: Look, width: int,
             while any(box.intersects(other) for other in taken) and box.top() > 0:
                 box.translate(0, -look.px(17))
             taken.append(box)
-            look.write(painter, box, band.name, 12, theme.quiet_ink, CENTRE)
+            look.write(painter, box, band.name, 12, look.theme.quiet_ink, CENTRE)
 
 
-def _scale(painter: QPainter, camera: Camera, look: Look, width: int, height: int, theme: Theme) -> None:
+def _scale(painter: QPainter, camera: Camera, look: Look, width: int, height: int) -> None:
     length, words = scale_bar(camera.scale, look.px(180))
     right, y = width - look.px(20), height - look.px(16)
     left = right - length * camera.scale
-    painter.setPen(pen(theme.quiet_ink, max(1.0, 1.5 * look.scale)))
+    painter.setPen(pen(look.theme.quiet_ink, max(1.0, 1.5 * look.scale)))
     painter.drawLine(QPointF(left, y), QPointF(right, y))
     for x in (left, right):
         painter.drawLine(QPointF(x, y - look.px(4)), QPointF(x, y + look.px(4)))
     box = QRectF(right - look.px(90), y - look.px(20), look.px(90), look.px(15))
-    look.write(painter, box, words, 11.5, theme.quiet_ink, RIGHT)
+    look.write(painter, box, words, 11.5, look.theme.quiet_ink, RIGHT)
 
 
 def paint_fibers(
@@ -156,7 +165,6 @@ def paint_fibers(
     wanted: ArrayLike,
     sensed: ArrayLike | None = None,
     lit: Collection[int] = (),
-    theme: Theme = palette.DARK,
 ) -> Array:
     """Draw the fibers at `sensed` strain (F,), with a pale ghost where `wanted` (F,) differs; without sensed, at `wanted`.
 
@@ -171,19 +179,17 @@ def paint_fibers(
     if sensed is not None:
         apart = np.flatnonzero(np.abs(wanted - strain) > APART * room.stroke)
         if len(apart):
-            _ghosts(painter, room, camera, look, wanted, apart, theme)
-    _bodies(painter, room, camera, look, strain, lines, lit, theme)
+            _ghosts(painter, room, camera, look, wanted, apart)
+    _bodies(painter, room, camera, look, strain, lines, lit)
     return lines
 
 
-def _ghosts(
-    painter: QPainter, room: Room, camera: Camera, look: Look, wanted: Array, which: NDArray[np.intp], theme: Theme
-) -> None:
+def _ghosts(painter: QPainter, room: Room, camera: Camera, look: Look, wanted: Array, which: NDArray[np.intp]) -> None:
     """Where fibers should be: pale and thin, with a ring at the end."""
     hanging = room.hanging
     lines = camera.pixels(centre_lines(hanging, wanted))
     painter.setBrush(Qt.BrushStyle.NoBrush)
-    painter.setPen(pen(theme.ghost, max(1.2, 1.4 * look.scale), 150))
+    painter.setPen(pen(look.theme.ghost, max(1.2, 1.4 * look.scale), 150))
     size = look.px(4)
     for fiber in which.tolist():
         points = [QPointF(x, y) for x, y in lines[hanging.first[fiber] : hanging.first[fiber + 1]].tolist()]
@@ -192,13 +198,13 @@ def _ghosts(
 
 
 def _bodies(
-    painter: QPainter, room: Room, camera: Camera, look: Look, strain: Array, lines: Array, lit: Collection[int], theme: Theme
+    painter: QPainter, room: Room, camera: Camera, look: Look, strain: Array, lines: Array, lit: Collection[int]
 ) -> None:
     """The fibers themselves, those alike with one pen, the farthest first."""
     hanging = room.hanging
     first = hanging.first
     share = np.clip(strain / np.where(room.stroke > 0.0, room.stroke, 1.0), 0.0, 1.0)
-    shade = np.rint(share * (SHADES - 1)).astype(int)
+    shade = np.rint((REST_SHADE + (1.0 - REST_SHADE) * share) * (SHADES - 1)).astype(int)
     width = widths(room, camera, look, strain)
     step = np.maximum(np.rint(width / WIDTHS), 1).astype(int)
     far = np.rint(depth(hanging.at, camera.view) * 1e3)
@@ -208,12 +214,12 @@ def _bodies(
     painter.setBrush(Qt.BrushStyle.NoBrush)
     for fiber in sorted(lit):
         if 0 <= fiber < len(room.names):
-            painter.setPen(_round(theme.chosen, float(width[fiber]) + look.px(5)))
+            painter.setPen(_round(look.theme.chosen, float(width[fiber]) + look.px(5)))
             painter.drawPolyline([QPointF(x, y) for x, y in lines[first[fiber] : first[fiber + 1]].tolist()])
     size = look.px(2)
     for group in np.split(order, cuts):
         head = group[0]
-        ramp = theme.extend if room.extending[head] else theme.contract
+        ramp = look.theme.extend if room.extending[head] else look.theme.contract
         shown = ramp[round(shade[head] / (SHADES - 1) * (palette.STEPS - 1))]
         of = (int(shown[0]), int(shown[1]), int(shown[2]))
         painter.setPen(_round(of, step[head] * WIDTHS))
@@ -243,9 +249,7 @@ def _round(of: palette.Colour, width: float) -> QPen:
     return made
 
 
-def paint_names(
-    painter: QPainter, room: Room, lines: Array, look: Look, hovered: int | None, width: int, theme: Theme = palette.DARK
-) -> None:
+def paint_names(painter: QPainter, room: Room, lines: Array, look: Look, hovered: int | None, width: int) -> None:
     """Names beside the ends of fibers where they lie far enough apart, and that of the fiber under the pointer always."""
     if not len(room.names):
         return
@@ -254,13 +258,13 @@ def paint_names(
     if np.median(gaps) >= 3.2 * NAMES_FROM_PX * look.scale:
         for name, (x, y) in zip(room.names, ends.tolist(), strict=True):
             box = QRectF(x - look.px(60), y + look.px(5), look.px(120), look.px(14))
-            look.write(painter, box, name, 10.5, theme.quiet_ink, CENTRE)
+            look.write(painter, box, name, 10.5, look.theme.quiet_ink, CENTRE)
     if hovered is not None and hovered < len(room.names):
         x, y = ends[hovered]
         name = room.names[hovered]
         wide = look.width(name, 13, bold=True) + look.px(14)
         box = QRectF(min(max(x + look.px(10), 2.0), width - wide - 2.0), y - look.px(11), wide, look.px(22))
-        painter.setPen(pen(theme.line, 1.0))
-        painter.setBrush(colour(theme.panel))
+        painter.setPen(pen(look.theme.line, 1.0))
+        painter.setBrush(colour(look.theme.panel))
         painter.drawRoundedRect(box, look.px(4), look.px(4))
-        look.write(painter, box, name, 13, theme.ink, CENTRE, bold=True)
+        look.write(painter, box, name, 13, look.theme.ink, CENTRE, bold=True)
