@@ -38,7 +38,7 @@ def fewest(places: Places, moves: Moves) -> tuple[list[Path | None], Index]:
     """
     steps, breaks = _steps(places, moves)
     broken = np.unique(places.series[breaks])
-    levels = places.targets()
+    levels = places.targets_of(np.arange(len(places.place))).T
     cost, before, by = _roundest(moves, steps, _roughness(places, levels), levels)
     paths: list[Path | None] = []
     for series, last in enumerate(places.first[1:] - 1):

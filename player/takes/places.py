@@ -58,14 +58,13 @@ class Places:
     many: Index
     free: NDArray[np.bool_]
 
-    def targets(self) -> Array:
-        """The targets that are weighed at each place, (N, LEVELS), nan where there are no more."""
-        step = np.arange(LEVELS)
-        levels = (self.lowest[:, None] + step) * self.grain[:, None]
-        levels[np.isnan(levels) | (step >= self.many[:, None])] = np.nan
-        begins = self.first[:-1]
-        # Where a series begins is what it is, round or not.
-        levels[begins, 0] = self.share[begins]
+    def targets_of(self, some: Index) -> Array:
+        """The targets that are weighed at some places, (LEVELS, E), nan where there are no more."""
+        step = np.arange(LEVELS)[:, None]
+        levels = (self.lowest[some] + step) * self.grain[some]
+        begins = self.first[self.series[some]] == some
+        levels[0, begins] = self.share[some[begins]]
+        levels[step >= self.many[some]] = np.nan
         return levels
 
 

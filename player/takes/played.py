@@ -79,6 +79,22 @@ class Played:
         at = series * RATES + np.clip(share * (RATES - 1) + 0.5, 0.0, RATES - 1).astype(np.int64)
         return np.stack([self.down.ravel(), self.up.ravel()])[rising.astype(np.int64), at]
 
+    def least_rates(self, rungs: Array, series: Index, low: Array, high: Array, rising: NDArray[np.bool_]) -> Array:
+        """The least of the fastest rates between two shares of stroke, share a second, (E,); rungs as of `rungs`."""
+        first, last = (np.clip(s * (RATES - 1) + 0.5, 0.0, RATES - 1).astype(np.int64) for s in (low, high))
+        lot = rising.astype(np.int64) * len(self.up) + series
+        level = np.log2(last - first + 1).astype(np.int64)
+        return np.minimum(rungs[level, lot, first], rungs[level, lot, last + 1 - (1 << level)])
+
+    def rungs(self) -> Array:
+        """The least of 1, 2, 4 and so on neighbouring rates: (rungs, series going down and then going up, RATES)."""
+        found = [np.concatenate([self.down, self.up])]
+        for level in range(RATES.bit_length() - 1):
+            rung, ahead = found[-1].copy(), 1 << level
+            rung[:, :-ahead] = np.minimum(rung[:, :-ahead], found[-1][:, ahead:])
+            found.append(rung)
+        return np.array(found)
+
     def nearest(self, values: Array, series: Index, time_s: Array) -> Array:
         """As `at`, of the nearest instant of the grid."""
         place = np.rint((time_s - self.begin_s) / self.step_s).astype(np.int64)
