@@ -84,9 +84,9 @@ def load_score(path: str | os.PathLike[str], rig: Rig | None = None) -> Loaded:
     return made_from(score, rig)
 
 
-def made_from(score: Score, rig: Rig) -> Loaded:
-    """What follows from a score that was read and its rig. Raises Faults."""
-    abilities, tempo = abilities_of(rig), tempo_map(score)
+def made_from(score: Score, rig: Rig, abilities: Abilities | None = None) -> Loaded:
+    """What follows from a score that was read and its rig, whose abilities may be known already. Raises Faults."""
+    abilities, tempo = abilities_of(rig) if abilities is None else abilities, tempo_map(score)
     tracks = expand(score, rig, abilities, Selector(rig, groups_of(score)), tempo)
     pins, give = pins_of(score, tempo)
     return Loaded(score, rig, abilities, tempo, tracks, pins, give, cues_of(score, tempo))

@@ -48,13 +48,14 @@ def blocks(
     rate_Hz: float = DEFAULT_HZ,
     inverse: bool = True,
     real: tuple[Rig, Abilities] | None = None,
+    values: int = BLOCK,
 ) -> Iterator[Block]:
     """Play tracks on a simulated rig at `rate_Hz` and yield what happens at every tick from 0 s on, in order.
 
     It goes on past the score's end for as long as the slowest fiber takes for a stroke, so that late arrivals are seen.
     Commands are sent as a player sends them: ahead of the score by the lead of the slowest to respond, each asking for the
     strain wanted at the end of its tick. `inverse` false sends everything without lead. `real`: the rig that is simulated,
-    where it is not the one that the sender believes in.
+    where it is not the one that the sender believes in. values: of one kind in a block.
     """
     tick = 1.0 / rate_Hz
     motion = motion_of(tracks, abilities)
@@ -73,7 +74,7 @@ def blocks(
     beyond = np.zeros(tracks.fibers)
     rest = np.zeros(tracks.fibers)
     before = rest
-    size = max(1, BLOCK // max(1, tracks.fibers))
+    size = max(1, values // max(1, tracks.fibers))
     for begin in range(-early, last + 1, size):
         ticks = np.arange(begin, min(begin + size, last + 1))
         sent = _sent(motion, sender, ticks + early, tick, lead - longest)
