@@ -5,6 +5,10 @@ from collections.abc import Callable, Sequence
 from composer.faults import Faults
 from player.outputs.base import Array, Event, LinkLost, Output
 
+VENTED = ("vented", "fault")
+DISARMED = ("idle", *VENTED)
+"""What a board says that does not follow sets: at rest, or with every channel exhausted."""
+
 
 class Boards:
     """The outputs of a run. Every verb returns events; that of a link just lost has the kind "lost"."""
@@ -65,12 +69,28 @@ class Boards:
         return heard + lost
 
     def settled(self, status: str) -> bool:
-        """Whether every board that still answers, and has to be armed, says that it is in that state."""
-        return all(
-            self._state[number] == status
-            for number, output in enumerate(self.outputs)
-            if number not in self._lost and output.must_arm
+        """Whether every board that still answers, and has to be armed, says that it is in that state; one that has vented by
+        itself is disarmed, so it does for "idle" too."""
+        enough = DISARMED if status == "idle" else (status,)
+        return all(self._state[number] in enough for number in self._real)
+
+    @property
+    def vented(self) -> bool:
+        """Whether a board that still answers says that it has vented."""
+        return any(self._state[number] in VENTED for number in self._real)
+
+    @property
+    def moves(self) -> bool:
+        """Whether there is anything left that would follow a set: a board that is armed, or an output that is no board."""
+        real = self._real
+        return any(
+            number not in self._lost and (number not in real or self._state[number] not in DISARMED)
+            for number in range(len(self.outputs))
         )
+
+    @property
+    def _real(self) -> list[int]:
+        return [number for number, output in enumerate(self.outputs) if number not in self._lost and output.must_arm]
 
     def close(self) -> list[Event]:
         """Let go of all of them, lost ones too; what could not be finished comes back as events."""

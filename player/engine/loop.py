@@ -16,6 +16,7 @@ from composer.rig.model import Rig
 from player.engine.account import Account
 from player.engine.alarms import ALARMS, REST_ALL, REST_FIBER, VENT, Raised
 from player.engine.boards import Boards
+from player.engine.bringing_back import STAND_BY_S, STAND_BY_SAID, BringingBack
 from player.engine.clock import Clock
 from player.engine.diary import Diary
 from player.engine.quiet import no_collecting
@@ -26,7 +27,7 @@ from player.engine.source import Source
 from player.engine.status import Ending, Lateness, Status
 from player.engine.verdicts import ARMED, RUNNING, verdict
 from player.engine.ways import safe_ways
-from player.outputs.base import Event, LinkLost, Mark, Output
+from player.outputs.base import Event, Mark, Output
 
 AHEAD_S = 0.06
 """Sets are sent this long before they are due, less where a board's queue is short: a host may stall so long unseen."""
@@ -37,14 +38,16 @@ QUEUE_SHARE = 0.75
 SLICE_S = 0.005
 """The engine looks for what the operator asks at least this often, however slow the ticks are."""
 
+AT_ONCE = frozenset(("vent", "stop", "rest", "left"))
+"""What does not wait for the next tick."""
+
+ENDS = frozenset(("stop", "left"))
+"""What ends a run for good, so that nothing is brought back."""
+
+LEFT_SAID = "the front end that commanded is gone, and the rule is rest"
+
 SETTLE_S = 1.3
 """Seconds that a board has to say that it has disarmed: on a disturbed line it may have to be told three times."""
-
-SENSES_S = 0.25
-"""Before fibers are brought back from where they are, boards have so long to sense where that is."""
-
-STAND_BY_S = 0.05
-STAND_BY_SAID = "All is at rest or vented. Press b to bring everything back and go on from here, Ctrl-C to end the run."
 
 STILL = 1e-7
 """A fiber that moves less than this strain in a tick stands still."""
@@ -52,7 +55,8 @@ STILL = 1e-7
 
 @dataclass(frozen=True, slots=True)
 class Command:
-    """What the operator asks: pause, go_on, jump (`value` in s), next_cue, rest, vent, or stop (rest, then vent)."""
+    """What the operator asks: pause, go_on, jump (`value` in s), next_cue, rest, vent, bring_back, or stop (rest, then vent);
+    or "left": whoever commanded is gone, and the rule is rest."""
 
     kind: str
     value: float = 0.0
@@ -62,6 +66,7 @@ class Engine:
     """One run, from pre-flight to the end. `ask` may be called from a signal's handler or another thread at any moment.
 
     returns: whether somebody is there who can have everything brought back after a fault; else a fault ends the run
+    listen: called every few milliseconds at most, so that what front ends ask is heard at once
     returns_from: after which endings, beside a fault, everything can be brought back: none, but a hand plays on after a rest
     """
 
@@ -79,6 +84,7 @@ class Engine:
         """`abilities` of the rig, where they are known already; `trims`: pressure set-points follow what is sensed, slowly."""
         self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
         self.returns = False
+        self.listen: Callable[[], None] = lambda: None
         self.returns_from: tuple[str, ...] = ("fault",)
         self.stand_by_said = STAND_BY_SAID
         self._leaving = False
@@ -122,7 +128,8 @@ class Engine:
         self._become("arm")
 
     def tend(self) -> None:
-        """Keep the links alive while nothing is played: what boards tell is heard, and they hear from the player."""
+        """Keep the links alive while nothing is played: what boards and front ends say is heard, boards hear from the player."""
+        self.listen()
         self._hear(self.boards.poll())
 
     def run(self, from_s: float = 0.0) -> Iterator[Status]:
@@ -199,45 +206,29 @@ class Engine:
         while True:
             self._clock.wait_until(self._clock.now() + STAND_BY_S)
             self.tend()
-            asked = [self._asked.popleft().kind for _ in range(len(self._asked))]
-            for kind in asked:
-                self._diary.tell("command", self.source.position_s, command=kind, value=0.0)
-            if "stop" in asked or ("rest" in asked and "stopped" not in self.returns_from):
+            asked = [command.kind for command in self._asked_now()]
+            if not ENDS.isdisjoint(asked) or ("rest" in asked and "stopped" not in self.returns_from) or not self.returns:
                 return
             if "vent" in asked:
                 self._stop("vented", "vented by the operator", "vent")
                 if "vented" not in self.returns_from:
                     return
-            if "bring_back" in asked and self._brought_back(down_s):
+            if "bring_back" in asked and self._armed_again(down_s):
                 return
             yield self.status()
 
-    def _brought_back(self, down_s: float) -> bool:
-        """Find lost boards, go through the pre-flight, and arm; whether all of it went well. What did not is told."""
-        found, missing = self.boards.reattach()
-        for say in found + missing:
-            self._account.tell(say)
-        if missing:
-            return False
-        self._clock.wait_until(down_s)
-        self.sensing.begin_again()
-        try:
-            wrong = [mark for mark in self.preflight() if not mark.ok]
-            for mark in wrong:
-                self._account.tell(f"not so: {mark.asked}: {mark.found}; {mark.hint}")
-            if wrong:
-                return False
-            # What boards sensed before they were lost is long over: only what they sense now counts.
-            until = self._clock.now() + SENSES_S
-            while self._clock.now() < until:
-                self._clock.wait_until(self._clock.now() + SLICE_S)
-                self.tend()
-            self.source.found(self.sensing.last.copy())
-            self._become("arm")
-        except LinkLost as lost:
-            self._account.tell(f"lost again: {lost}")
-            return False
-        return self.safety.state == "armed"
+    def _armed_again(self, down_s: float) -> bool:
+        bringing = BringingBack(
+            self.boards,
+            self.source,
+            self.sensing,
+            self._clock,
+            self.tell,
+            self.tend,
+            self.preflight,
+            lambda: self._become("arm"),
+        )
+        return bringing.done(down_s) and self.safety.state == "armed"
 
     def _send(self, due: float, late: float) -> None:
         self._due_s = due
@@ -259,7 +250,8 @@ class Engine:
     def _wait(self, moment: float) -> float:
         """Wait until that moment, but do at once what cannot wait."""
         while True:
-            if self._asked and any(command.kind in ("vent", "stop", "rest") for command in tuple(self._asked)):
+            self.listen()
+            if self._asked and any(command.kind in AT_ONCE for command in tuple(self._asked)):
                 self._obey()
                 if self.safety.state == "vented":
                     return max(moment, self._clock.now())
@@ -270,19 +262,28 @@ class Engine:
 
     def _obey(self) -> None:
         """Do what has been asked, in order; a vent before all else."""
-        asked = [self._asked.popleft() for _ in range(len(self._asked))]
-        asked.sort(key=lambda command: command.kind != "vent")
-        for command in asked:
-            self._diary.tell("command", self.source.position_s, command=command.kind, value=command.value)
+        for command in sorted(self._asked_now(), key=lambda command: command.kind != "vent"):
             try:
                 self._do(command)
             except Refused as refused:
                 self._account.tell(str(refused))
 
+    def _asked_now(self) -> list[Command]:
+        """What has been asked since the last time, each of it logged."""
+        asked = [self._asked.popleft() for _ in range(len(self._asked))]
+        for command in asked:
+            self._diary.tell("command", self.source.position_s, command=command.kind, value=command.value)
+        return asked
+
     def _do(self, command: Command) -> None:
         kind = command.kind
-        if kind == "stop":
+        if kind in ENDS:
             self._leaving = True
+        if kind == "left":
+            if self.safety.state in ("armed", "playing", "paused"):
+                self._stop("stopped", LEFT_SAID, "rest")
+            return
+        if kind == "stop":
             kind = "vent" if self.safety.state == "resting" else "rest"
         if kind == "next_cue":
             if self.source.next_cue is None:
@@ -304,7 +305,7 @@ class Engine:
             self._account.tell(f'waiting at cue "{self.source.waiting.name}"')
         elif happened == "end":
             self._stop("end", "the score came to its end", "end")
-        elif happened == "at_rest" or (self.safety.state == "resting" and not self.boards.live):
+        elif happened == "at_rest" or (self.safety.state == "resting" and not self.boards.moves):
             self._become("at_rest")
 
     def _hear(self, events: Sequence[Event]) -> None:
@@ -375,9 +376,14 @@ class Engine:
             if any(command.kind in ("vent", "stop") for command in tuple(self._asked)):
                 self._asked.clear()
                 self._stop("vented", "vented by the operator", "vent")
-        if not self.boards.settled("idle") and self.safety.state != "vented":
+        if self.safety.state == "vented":
+            return
+        if not self.boards.settled("idle"):
             self._fault("", "a board did not say that it has disarmed; it is vented", "note")
             self._stop("fault", "a board did not say that it has disarmed", "vent")
+        elif self.boards.vented:
+            # One that has vented by itself is disarmed, but not at rest: what stands is what is worse.
+            self._become("vent")
 
     def _vent(self) -> None:
         """Tell every board to vent, all of them before any is waited for; then hear them say that they have."""

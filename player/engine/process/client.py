@@ -58,7 +58,7 @@ class Client:
         return cls(connection, commands, answers)
 
     def say(self, name: str, /, **fields: Any) -> bool:
-        """Say something of `messages.ASKED`; whether it is on its way. May be called by a signal's handler or another thread."""
+        """Say something of `messages.ASKED`; whether it is on its way. A signal's handler or another thread may call it."""
         line = messages.packed(name, **fields)
         try:
             return self._socket.send(line) == len(line)

@@ -1,7 +1,7 @@
 """What a run shows of itself in shared memory: a fixed layout, written once a tick, read by any number of front ends.
 
-Two slots take turns. The engine fills the one that nobody is told of, then raises the count, whose lowest bit says which slot is
-whole: a reader copies that slot, and takes the copy if the count is still the same. Neither ever waits for the other, and an
+Two slots take turns. The engine fills the one that nobody is told of, then raises the count, whose lowest bit says which slot
+is whole: a reader copies that slot, and takes the copy if the count is still the same. Neither ever waits for the other, and an
 engine killed in the midst of writing leaves the slot before it whole.
 """
 
@@ -109,7 +109,7 @@ class Writer:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Snapshot:
-    """One moment of a run, whole: a copy that nobody writes into. Every field of FIELDS is an attribute of `of`, as NumPy has it.
+    """One moment of a run, whole: a copy that nobody writes into. Fields of FIELDS by name in `of`, or by the methods.
 
     count: rises with every moment shown; 0 before the first
     """

@@ -112,9 +112,7 @@ TOLD = {
             "the run is over, all is let go: its report, as JSON and in sentences",
             {"exit": "number", "report": "object", "lines": "list"},
         ),
-        Message(
-            "failed", "the run did not come about, nothing has moved: why, in sentences", {"exit": "number", "lines": "list"}
-        ),
+        Message("failed", "the run did not come about, or broke off: why, in sentences", {"exit": "number", "lines": "list"}),
     )
 }
 """What a run says, by name."""
