@@ -1,14 +1,20 @@
 """The transport: play, pause, scrub, loop a passage, speed; where the head is, as bar and count and in seconds."""
 
 from PySide6.QtCore import QElapsedTimer, Qt, QTimer, Signal
+from PySide6.QtGui import QHideEvent, QKeyEvent
 from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QSlider, QWidget
 
 from composer.picture import play_head
 from composer.picture.axes import say_seconds
 from composer.picture.bars import Bars
+from composer.picture.metronome import Metronome
 from composer.picture.play_head import PlayHead
+from composer.sound.speaker import tool
 
 FRAME_MS = 16
+AGAIN_MS = 60
+"""How long the head must be left alone before the counts sound again."""
+
 STEPS = 10_000
 """Positions of the slider that scrubs."""
 
@@ -56,7 +62,27 @@ class Transport(QWidget):
             self._speed.addItem(f"{speed:g} × speed", speed)
         self._speed.setCurrentIndex(SPEEDS.index(1.0))
         self._speed.currentIndexChanged.connect(lambda at: self.set_speed(SPEEDS[at]))
-        for each in (self._start, self._play, self._where, self._scrub, self._from, self._to, self._loop, self._speed):
+        self._metronome = Metronome()
+        self._again = QTimer(self)
+        self._again.setSingleShot(True)
+        self._again.setInterval(AGAIN_MS)
+        self._again.timeout.connect(self._begin_sound)
+        self._counts = self._button("Counts", "hear the counts, the first of a bar higher (C)", lambda: None)
+        self._counts.setCheckable(True)
+        self._counts.toggled.connect(self._sound)
+        self._volume = QSlider(Qt.Orientation.Horizontal)
+        self._volume.setRange(0, 100)
+        self._volume.setValue(round(100 * self._metronome.volume))
+        self._volume.setFixedWidth(70)
+        self._volume.setAccessibleName("volume of the counts")
+        self._volume.setToolTip("volume of the counts")
+        self._volume.valueChanged.connect(self._set_volume)
+        if tool() is None:
+            self._counts.setEnabled(False)
+            self._volume.setEnabled(False)
+            self._counts.setToolTip("there is no program for sound on this machine: aplay or paplay would do")
+        shown = (self._start, self._play, self._where, self._scrub, self._from, self._to, self._loop, self._speed)
+        for each in (*shown, self._counts, self._volume):
             row.addWidget(each, 1 if each is self._scrub else 0)
         self._show()
 
@@ -64,6 +90,7 @@ class Transport(QWidget):
         button = QPushButton(word)
         button.setAccessibleName(word)
         button.setToolTip(says)
+        button.setFocusPolicy(Qt.FocusPolicy.TabFocus)
         button.clicked.connect(does)
         return button
 
@@ -94,6 +121,7 @@ class Transport(QWidget):
     def move_to(self, at_s: float) -> None:
         """Put the head at an instant."""
         self._head = play_head.moved_to(self._head, at_s)
+        self._sound()
         self._show()
         self.moved.emit(self._head.at_s)
 
@@ -107,6 +135,7 @@ class Transport(QWidget):
             self._head = play_head.started(self._head)
             self._clock.start()
             self._timer.start()
+            self._sound()
             self._show()
             self.playing_changed.emit(True)
 
@@ -132,6 +161,7 @@ class Transport(QWidget):
         self._speed.blockSignals(True)
         self._speed.setCurrentIndex(nearest)
         self._speed.blockSignals(False)
+        self._sound()
 
     def step_speed(self, way: int) -> None:
         """The next speed up (1) or down (-1)."""
@@ -142,6 +172,7 @@ class Transport(QWidget):
         """Go round in a passage."""
         self._mark_s = None
         self._head = play_head.with_loop(self._head, from_s, to_s)
+        self._sound()
         self._show()
         self.loop_changed.emit(self._head.loop_s)
 
@@ -165,18 +196,68 @@ class Transport(QWidget):
         """Play on to the end."""
         self._mark_s = None
         self._head = play_head.without_loop(self._head)
+        self._sound()
         self._show()
         self.loop_changed.emit(None)
 
+    @property
+    def counts_sound(self) -> bool:
+        """Whether the counts are to be heard."""
+        return self._counts.isChecked()
+
+    def set_counts_sound(self, on: bool) -> None:
+        """Have the counts heard, or not; without audio nothing happens."""
+        if self._counts.isEnabled():
+            self._counts.setChecked(on)
+
+    def _set_volume(self, percent: int) -> None:
+        self._metronome.volume = percent / 100.0
+
+    def _sound(self) -> None:
+        """End the sound, and begin it again in a moment where it should be heard: scrubbing begins nothing at each step."""
+        self._metronome.stop()
+        if self.playing and self.counts_sound:
+            self._again.start()
+
+    def _begin_sound(self) -> None:
+        if self.playing and self.counts_sound and self._bars is not None:
+            self._metronome.start(self._head, self._bars)
+
     def _run(self) -> None:
-        self._head = play_head.advanced(self._head, self._clock.nsecsElapsed() / 1e9)
+        passed = self._clock.nsecsElapsed() / 1e9
         self._clock.restart()
+        self._head = play_head.advanced(self._head, passed)
+        if self._bars is not None:
+            self._metronome.run(passed, self._bars)
         self._show()
         self.moved.emit(self._head.at_s)
         if not self._head.playing:
             self._timer.stop()
+            self._metronome.stop()
             self._show()
             self.playing_changed.emit(False)
+
+    def key(self, event: QKeyEvent) -> bool:
+        """Do what a key asks for, and say whether it asked for anything; windows hand on the keys that they have no use for."""
+        does = {
+            Qt.Key.Key_Space: self.toggle,
+            Qt.Key.Key_Home: self.to_start,
+            Qt.Key.Key_I: self.mark_loop_start,
+            Qt.Key.Key_O: self.mark_loop_end,
+            Qt.Key.Key_L: self.clear_loop,
+            Qt.Key.Key_Comma: lambda: self.step_speed(-1),
+            Qt.Key.Key_Period: lambda: self.step_speed(1),
+            Qt.Key.Key_C: lambda: self.set_counts_sound(not self.counts_sound),
+        }.get(event.key())
+        plain = Qt.KeyboardModifier.NoModifier, Qt.KeyboardModifier.KeypadModifier
+        if does is None or event.modifiers() not in plain:
+            return False
+        does()
+        return True
+
+    def hideEvent(self, event: QHideEvent) -> None:
+        """Nobody hears a transport that is not there."""
+        self._metronome.stop()
 
     def _scrubbed(self, position: int) -> None:
         self.move_to(position / STEPS * self._head.end_s)
