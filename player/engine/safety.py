@@ -110,12 +110,43 @@ def after(safety: Safety, event: str) -> tuple[Safety, tuple[str, ...]]:
 
 
 FAULTS = {
-    1: ("watchdog", "fault", "the board heard nothing in time and vented its fibers"),
-    2: ("rig mismatch", "fault", "the board is set up for another rig"),
-    3: ("not armed", "fault", "the board is not armed, so its fibers do not move"),
-    4: ("bad command", "fault", "the board did not understand what it was sent"),
-    5: ("queue full", "note", "the board's queue was full and it dropped a set"),
-    6: ("over-pressure", "vent", "the board measures more pressure than a fiber may have"),
-    7: ("sensor", "note", "a sensor of the board does not answer as it should"),
+    1: (
+        "watchdog",
+        "fault",
+        "the board heard nothing in time and vented its fibers",
+        "look at its line, and end what keeps this machine busy",
+    ),
+    2: (
+        "rig mismatch",
+        "fault",
+        "the board is set up for another rig",
+        "load the rig onto the board again, or play with the rig file that it has",
+    ),
+    3: (
+        "not armed",
+        "fault",
+        "the board is not armed, so its fibers do not move",
+        "look at its power: it may have started anew",
+    ),
+    4: (
+        "bad command",
+        "fault",
+        "the board did not understand what it was sent",
+        "look at its line, and at which version of the wire protocol it speaks",
+    ),
+    5: ("queue full", "note", "the board's queue was full and it dropped a set", "play at a lower --rate"),
+    6: (
+        "over-pressure",
+        "vent",
+        "the board measures more pressure than a fiber may have",
+        "look at regulator and relief valve",
+    ),
+    7: (
+        "sensor",
+        "note",
+        "a sensor of the board does not answer as it should",
+        "look at the sensor's plug and cable",
+    ),
 }
-"""Fault codes of the wire protocol: name, the event it is to the run ("note": told and counted, the run goes on), sentence."""
+"""Fault codes of the wire protocol: name, the event it is to the run ("note": told and counted, the run goes on), what has
+happened, and what to do."""

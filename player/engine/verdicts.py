@@ -7,22 +7,32 @@ RUNNING = ("playing", "paused")
 NOT_ARMED = 3
 ARMED = ("armed", "playing", "paused", "resting")
 
+LOOK = {
+    "lost": "look at its plug and cable",
+    "silent": "look at its power and cable, and shut its supply by hand if its fibers stay up",
+    "garbled": "look at its plug and cable, and at what disturbs them",
+}
+"""What the operator is to do about a line, by the kind of event."""
+
+UNKNOWN = ("a fault not known here", "fault", "the board tells of a fault of its own", "look it up in the board's manual")
+
 
 def verdict(event: Event, state: str) -> tuple[str, str]:
     """What an event means while the player is in `state`: ("", "") nothing, else an event of the safety table, or "note" for
     a fault that is told and kept while the run goes on, or "tell" for what is only told; and the sentence.
     """
     said = f"{event.driver}: {event.say}"
-    if event.kind == "lost" or (event.kind == "silent" and state in ARMED):
-        return "fault", said
+    if event.kind == "lost" or (event.kind in LOOK and state in ARMED):
+        return "fault", f"{said}; {LOOK[event.kind]}"
     if event.kind == "fault" and event.code == NOT_ARMED and state not in RUNNING:
         # Sets were on their way when the run was ended for another reason.
         return "", ""
     if event.kind == "fault":
-        name, means, sentence = FAULTS.get(event.code, (f"fault {event.code}", "fault", "a fault that is not known here"))
-        return means, f"{event.driver}: {name}: {sentence}" + (f" ({event.say})" if event.say else "")
+        name, means, sentence, look = FAULTS.get(event.code, UNKNOWN)
+        return means, f"{event.driver}: {name}: {sentence}" + (f" ({event.say})" if event.say else "") + f"; {look}"
     if event.kind == "state" and state in RUNNING and event.status != "armed":
-        return "fault", f"{event.driver}: the board is {event.status} in mid-run" + (f": {event.say}" if event.say else "")
+        why = f": {event.say}" if event.say else ""
+        return "fault", f"{event.driver}: the board is {event.status} in mid-run{why}; look at its power"
     if event.kind == "note":
         return "tell", said
     return "", ""

@@ -34,7 +34,8 @@ class Event:
     """What an output tells the engine.
 
     kind: "state" (`status` is what the board says it is in: idle, armed, vented, fault), "sense" (`strain` of `fibers` at
-        `time_s`), "supply" (`kPa` gauge), "fault" (`code` as in the wire protocol), or "note" (worth telling, no more)
+        `time_s`), "supply" (`kPa` gauge), "fault" (`code` as in the wire protocol), "silent" and "garbled" (what is the matter
+        with its line), "lost" (its link is gone), or "note" (worth telling, no more)
     driver: whose board; say: a sentence for the operator
     time_s: when, on the engine's clock; nan where that is not known
     fibers, strain: (S,) indices in the rig's order, and strains (1)

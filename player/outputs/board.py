@@ -16,6 +16,7 @@ from player.wire import link
 from player.wire.host import Host
 from player.wire.line import highest_rate, line_load, line_room, set_frames
 from player.wire.messages import RIG_MISMATCH, SENSES_STRAIN
+from player.wire.quality import Quality
 from player.wire.values import SHUT, clip, is_valve, to_wire
 
 GREET_S = 6.0
@@ -66,6 +67,7 @@ class Board:
         self._why = ""
         self._supply_kPa: float | None = None
         self._sets = 0
+        self._quality = Quality()
 
     def open(self) -> None:
         """Take hold of the port and greet the board."""
@@ -191,6 +193,10 @@ class Board:
         heard = self._host.receive(self._line.read(), now) + self._host.tick(now)
         self._flush()
         events = [event for told in heard for event in self._meant(told)]
+        lost = self._quality.look(now, self._host.bad + self._host.unreadable, self._host.frames)
+        if lost is not None:
+            say = f"the line garbles what it carries: {lost[0]} of the last {lost[1]} frames could not be read"
+            events.append(Event("garbled", self.drivers[0], say))
         if self._host.supply_kPa is not None and self._host.supply_kPa != self._supply_kPa:
             self._supply_kPa = self._host.supply_kPa
             events.append(Event("supply", self.drivers[0], kPa=self._supply_kPa))

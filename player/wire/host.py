@@ -162,6 +162,7 @@ class Host(Talk):
     # What the board says.
 
     def _hear(self, now_s: float) -> None:
+        self.frames += 1
         if self._silent:
             self._events.append(Back(now_s - self.heard_s))
         self.heard_s, self._silent = now_s, False

@@ -50,6 +50,7 @@ class Talk:
         self.board: Any = None
         self.clock = Clock()
         self.status: int | None = None
+        self.frames = 0
         self.queued = self.late = self.bad = self.skipped = self.echoes = self.unknown = 0
         self.supply_kPa: float | None = None
         self.trouble: Trouble | None = None
@@ -92,6 +93,7 @@ class Talk:
         self._send(m.Ping(host_us), self._next_seq())
 
     def _send(self, message: Any, seq: int) -> None:
+        self.frames += 1
         self._out += frame(m.encode(message, seq))
 
     def _next_seq(self) -> int:

@@ -30,8 +30,9 @@ def test_states_events_and_deeds_are_told_as_the_table_has_them(page):
 
 
 def test_every_fault_and_every_target_is_told(page):
-    for code, (name, _, sentence) in FAULTS.items():
-        assert f"| {code} {name} | {sentence} |" in page
+    for code, (name, _, sentence, look) in FAULTS.items():
+        row = next(line for line in page.splitlines() if line.startswith(f"| {code} {name} |"))
+        assert row.startswith(f"| {code} {name} | {sentence} |") and row.endswith(f"| {look} |")
     for scheme in SCHEMES.values():
         assert f"| `{scheme.written}` | {scheme.says} |" in page
 

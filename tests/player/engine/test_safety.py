@@ -81,4 +81,4 @@ def test_every_fault_code_of_the_wire_means_an_event_of_the_table_or_a_note():
     from player.wire.messages import FAULTS as CODES
 
     assert set(CODES) == set(FAULTS)
-    assert {means for _, means, _ in FAULTS.values()} <= {*EVENTS, "note"}
+    assert {means for _, means, *_ in FAULTS.values()} <= {*EVENTS, "note"}
