@@ -1,12 +1,13 @@
 """What window and workers say to one another, as data. A version counts the changes of the text since the window opened."""
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from composer.editor.deltas import Delta
+from composer.edits.edit import Edit
 from composer.faults import Fault
 from composer.limits.abilities import Abilities
 from composer.limits.check import Check
@@ -40,6 +41,13 @@ class Again:
     """Files that the score leans on have changed: read them anew."""
 
     version: int
+
+
+@dataclass(frozen=True, slots=True)
+class Mode:
+    """Which tracks are simulated: those retimed, or those written."""
+
+    retimed: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -106,9 +114,9 @@ class Picture:
 
 @dataclass(frozen=True, slots=True)
 class Row:
-    """Snags that are told together: which of the check's, the sentence, what would mend it, the place, the line, the fibers."""
+    """Snags that are told together: one of them (index into the check's), the sentence, what would mend it, where it is."""
 
-    snags: tuple[int, ...]
+    snag: int
     kind: str
     says: str
     mends: str
@@ -122,12 +130,13 @@ class Row:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Checked:
-    """The check of a version: what it found, and its list for the composer; notes are sentences about what is no snag."""
+    """The check of a version: what it found, its list for the composer; notes on what is no snag; `more` rows untold."""
 
     version: int
     check: Check
     rows: tuple[Row, ...]
     notes: tuple[str, ...] = ()
+    more: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -143,7 +152,10 @@ class Hit:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Retimed:
-    """The retiming of a version: tracks, where instants went, each hit that moved, the report; `ok`: nothing is left."""
+    """The retiming of a version: tracks, where instants went, each hit that moved, the report.
+
+    ok: no snag is left; known: whether there is a retiming at all
+    """
 
     version: int
     tracks: Tracks
@@ -153,11 +165,15 @@ class Retimed:
     says: tuple[str, ...]
     ok: bool
     cost: float
+    known: bool
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Simulated:
-    """A stretch of the simulated run of a version: `strain` (F, N) at `time_s` (N,), in order; `share` of the run is done."""
+    """A stretch of the simulated run of a version: `strain` (F, N) at `time_s` (N,), `step_s` apart, in order.
+
+    share: of the run, done; retimed: whether it is of the tracks as retimed
+    """
 
     version: int
     time_s: Array
@@ -165,7 +181,52 @@ class Simulated:
     supply_kPa: Array
     duty: Array
     share: float
-    retimed: bool = False
+    step_s: float
+    retimed: bool
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Ghost:
+    """What would come of an edit."""
+
+    tracks: Tracks
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Choice:
+    """A way to mend a snag, as `composer.edits.mending` offers it."""
+
+    way: str
+    say: str
+    edit: Edit
+    after: Ghost
+    snags_left: int
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Mended:
+    """The choices for a snag, and why the other ways do not help."""
+
+    choices: tuple[Choice, ...]
+    not_these: dict[str, str]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Taking:
+    """The edit that takes the retiming into the text, what comes of it, and sentences on what could not be said."""
+
+    edit: Edit
+    after: Ghost
+    off_s: float
+    notes: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Dragged:
+    """A drag as far as it has got: its edit, and what would come of it, None where it cannot be drawn."""
+
+    edit: Edit
+    after: Ghost | None
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -184,4 +245,7 @@ class Failed:
 
     version: int
     says: str
-    known: tuple[str, ...] = field(default=())
+
+
+class Superseded(Exception):
+    """Within a worker: a newer text has come, and what is being worked on is of no use any more."""

@@ -1,0 +1,99 @@
+"""What the window asks of a worker about a text, in one table."""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from fractions import Fraction
+from typing import TYPE_CHECKING, Any
+
+from composer.editor.messages import Dragged, Ghost, Mended, Taking
+from composer.edits import completion, dragging, hover, threads
+from composer.edits.edit import Edit, Refusal, apply
+from composer.faults import Faults
+from composer.limits.snag import Snag
+from composer.score.model import Place, Span
+
+if TYPE_CHECKING:
+    from composer.editor.desk import Desk
+
+
+@dataclass(frozen=True, slots=True)
+class Question:
+    """How a question is answered; whether it needs the text to have been read, and checked, as it now is."""
+
+    answer: Callable[..., Any]
+    needs_made: bool = True
+    needs_check: bool = False
+
+
+def _complete(desk: "Desk", line: int, column: int) -> tuple[completion.Offer, ...]:
+    return completion.complete(desk.text, line, column, desk.made)
+
+
+def _explain(desk: "Desk", line: int, column: int) -> hover.Hover | None:
+    return hover.explain(desk.text, line, column, desk.made)
+
+
+def _source(desk: "Desk", fiber: int, seconds: float) -> threads.Source | None:
+    return threads.source_at(desk.threads(), fiber, seconds)
+
+
+def _moved(desk: "Desk", line: int, column: int) -> threads.Stretches:
+    return threads.moved_by(desk.threads(), line, column)
+
+
+def _grip(desk: "Desk", fiber: int, seconds: float) -> dragging.Grip:
+    return dragging.grip(desk.made, fiber, dragging.knot_near(desk.made, fiber, seconds))
+
+
+def _drag(
+    desk: "Desk", held: dragging.Grip, time_s: float | None, strain: float | None, grid: Fraction, free: bool
+) -> Dragged | Refusal:
+    return _dragged(desk, dragging.drag(desk.made_text, desk.made, held, time_s, strain, grid, free))
+
+
+def _drag_hit(desk: "Desk", was_s: float, time_s: float, fiber: int, grid: Fraction, free: bool) -> Dragged | Refusal:
+    return _dragged(desk, dragging.drag_hit(desk.made_text, desk.made, was_s, time_s, fiber, grid, free))
+
+
+def _dragged(desk: "Desk", edit: Edit | Refusal) -> Dragged | Refusal:
+    if isinstance(edit, Refusal):
+        return edit
+    try:
+        after = Ghost(desk.remake(apply(desk.made_text, edit)).tracks)
+    except Faults as wrong:
+        return Refusal(f"Not there: {wrong.faults[0].found}.")
+    return Dragged(edit, after)
+
+
+def _copy(desk: "Desk", entry: int) -> Edit | Refusal:
+    return dragging.copy_for_this_one(desk.made_text, desk.made, entry)
+
+
+def _seconds(desk: "Desk", bar: int, count: float) -> float:
+    """The instant of a place, in s."""
+    span = Span(desk.file, 1, 1, 1)
+    tempo = desk.made.tempo
+    return float(tempo.seconds(tempo.counts_of(Place(bar, Fraction(count), None, span))))
+
+
+def _mends(desk: "Desk", snag: Snag) -> Mended | Refusal:
+    return desk.solver.mended(snag)
+
+
+def _take(desk: "Desk", from_s: float, to_s: float) -> Taking | Refusal:
+    return desk.solver.taken(from_s, to_s)
+
+
+QUESTIONS: dict[str, Question] = {
+    "complete": Question(_complete, needs_made=False),
+    "explain": Question(_explain, needs_made=False),
+    "source": Question(_source),
+    "moved": Question(_moved),
+    "grip": Question(_grip),
+    "drag": Question(_drag),
+    "drag hit": Question(_drag_hit),
+    "copy": Question(_copy),
+    "seconds": Question(_seconds),
+    "mends": Question(_mends),
+    "take": Question(_take),
+}

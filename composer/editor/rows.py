@@ -1,0 +1,34 @@
+"""The list of snags as the window shows it: those that a sentence tells alike are one row; the earliest first."""
+
+from composer.editor.messages import Row
+from composer.limits.check import Check
+from composer.report.check import together
+from composer.report.sentences import Teller, tell
+
+MOST_ROWS = 400
+"""Rows that are put into words; so many more are counted."""
+
+
+def rows_of(check: Check, teller: Teller) -> tuple[tuple[Row, ...], int]:
+    """The rows of a check in order of time, and how many more there are than can be told."""
+    tracks = teller.tracks
+    number = {id(snag): at for at, snag in enumerate(check.snags)}
+    groups = sorted(together(check.snags, tracks), key=lambda group: group[0].from_s)
+    rows = []
+    for snag, fibers in groups[:MOST_ROWS]:
+        said = tell(snag, teller, fibers)
+        rows.append(
+            Row(
+                snag=number[id(snag)],
+                kind=snag.kind,
+                says=said.says,
+                mends=said.mends,
+                place=teller.say_place(snag.from_s),
+                from_s=snag.from_s,
+                to_s=snag.to_s,
+                line=snag.line,
+                phrase_line=int(tracks.phrase_line[snag.knot]) if snag.knot >= 0 else 0,
+                fibers=tuple(fibers),
+            )
+        )
+    return tuple(rows), max(0, len(groups) - MOST_ROWS)

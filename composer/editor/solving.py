@@ -1,0 +1,193 @@
+"""The slow half of the work on a text: retiming, what would mend a snag, taking the retiming in, the simulated run."""
+
+from collections.abc import Generator
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from composer.editor.messages import Choice, Doing, Ghost, Hit, Mended, Retimed, Simulated, Superseded, Taking
+from composer.editor.rechecking import Known, recheck
+from composer.edits import mending, taking
+from composer.edits.edit import Refusal
+from composer.limits.check import Check, check
+from composer.limits.snag import Snag
+from composer.load import Loaded
+from composer.report.causes import cause_in_words
+from composer.report.retime import is_good, sentences
+from composer.retime.choices import choices_of
+from composer.retime.programme import Unsolved
+from composer.retime.proof import causes
+from composer.retime.retiming import Retiming, retime
+from composer.simulate.run import blocks, tail_s
+
+if TYPE_CHECKING:
+    from composer.editor.desk import Desk
+
+LIMIT_S = 20.0
+"""How long a retiming may look for the least before the best that is known is shown."""
+
+MOST_MOVES = 60_000
+"""Moves of a score up to which a run is simulated without being asked for."""
+
+RUN_HZ = 100.0
+KEEP_HZ = 50.0
+BLOCK_VALUES = 1 << 13
+MOST_KEPT = 1 << 25
+"""Values of strain that a run sends at most, 4 bytes each."""
+
+
+class Solver:
+    """What the solver keeps from one text to the next."""
+
+    def __init__(self, desk: "Desk"):
+        self.desk = desk
+        self.retiming: Retiming | None = None
+        self._of: Loaded | None = None
+        self._rig = 0
+        self._simulating = False
+        self._known: Known | None = None
+
+    def idle_or_simulating(self, idle: bool) -> bool:
+        """Whether a run of what is shown may begin: there is a text that can be read, and nothing else is in hand."""
+        return self.desk.made_version == self.desk.version and (idle or self._simulating)
+
+    def work(self) -> Generator[None, None, None]:
+        """Retime the text at hand, tell of it, then simulate it."""
+        desk, made = self.desk, self.desk.made
+        assert made is not None
+        self._simulating = False
+        yield
+        desk.say(Doing(desk.version, "retiming"))
+        before, self._of = self.retiming, None
+        try:
+            retiming = self._retimed(made, before)
+        except Unsolved as failed:
+            nothing = np.zeros(0)
+            says = (f"The solver gave up, and nothing is retimed: {failed}.",)
+            desk.say(Retimed(desk.version, made.tracks, nothing, nothing, (), says, False, 0.0, False))
+            return
+        self.retiming, self._of, self._rig = retiming, made, desk.leaning.number
+        yield
+        checked, self._known = yield from recheck(retiming.tracks, made.rig, made.abilities, self._known)
+        desk.say(self._told(made, retiming, checked))
+        yield
+        yield from self.simulate()
+
+    def simulate(self) -> Generator[None, None, None]:
+        """The run on the simulated rig, of what is shown, sent as far as it is known."""
+        desk, made = self.desk, self.desk.made
+        assert made is not None
+        retimed = desk.retimed_mode and self.retiming is not None and self._of is made
+        tracks = self.retiming.tracks if retimed and self.retiming is not None else made.tracks
+        if tracks.moves > MOST_MOVES:
+            return
+        self._simulating = True
+        desk.say(Doing(desk.version, "simulating"))
+        whole = max(tracks.duration_s, 1e-3) + tail_s(made.abilities)
+        keep_Hz = min(KEEP_HZ, MOST_KEPT / max(1.0, tracks.fibers * whole))
+        every = max(1, round(RUN_HZ / keep_Hz))
+        number = 0
+        for block in blocks(tracks, made.rig, made.abilities, RUN_HZ, values=BLOCK_VALUES):
+            pick = np.flatnonzero((np.arange(len(block.time_s)) + number) % every == 0)
+            number += len(block.time_s)
+            desk.say(
+                Simulated(
+                    desk.version,
+                    block.time_s[pick],
+                    block.strain[:, pick].astype(np.float32),
+                    block.supply_kPa[pick],
+                    block.duty[pick],
+                    min(1.0, float(block.time_s[-1]) / whole),
+                    every / RUN_HZ,
+                    retimed,
+                )
+            )
+            yield
+        self._simulating = False
+
+    def mended(self, snag: Snag) -> Mended | Refusal:
+        """What would mend a snag, each choice with its edit and what comes of it."""
+        desk, made = self.desk, self.desk.made
+        assert made is not None
+        desk.say(Doing(desk.version, "looking for what would mend it"))
+        if desk.check is None:
+            desk.check = check(made.tracks, made.rig, made.abilities)
+        same = [one for one in desk.check.snags if _alike(one, snag)]
+        if not same:
+            return Refusal("This snag is gone already.")
+        found = mending.mends(
+            desk.made_text, made, same[0], desk.check, self._remake, self.retiming if self._of is made else None
+        )
+        choices = tuple(
+            Choice(each.way, each.say, each.edit, Ghost(each.after.tracks), each.snags_left) for each in found.choices
+        )
+        return Mended(choices, dict(found.not_these))
+
+    def taken(self, from_s: float, to_s: float) -> Taking | Refusal:
+        """The edit that takes the retiming into the text, for what lies between two written instants."""
+        desk, made = self.desk, self.desk.made
+        assert made is not None
+        if self.retiming is None or self._of is not made:
+            self.retiming, self._of = self._retimed(made, self.retiming), made
+            self._rig = desk.leaning.number
+        desk.say(Doing(desk.version, "taking the retiming in"))
+        found = taking.take(desk.made_text, made, self.retiming, self._remake, from_s, to_s)
+        if isinstance(found, Refusal):
+            return found
+        return Taking(found.edit, Ghost(found.after.tracks), found.off_s, found.notes)
+
+    def _remake(self, text: str) -> Loaded:
+        if self.desk.newer():
+            raise Superseded
+        return self.desk.remake(text)
+
+    def _retimed(self, made: Loaded, before: Retiming | None) -> Retiming:
+        desk = self.desk
+
+        def look() -> None:
+            if desk.newer():
+                raise Superseded
+
+        def clock() -> float:
+            look()
+            return desk.clock()
+
+        keep = made.score.keep or "clock"
+        firm, rhythm = choices_of(made.score, made.tracks, keep)
+        return retime(
+            made.tracks,
+            made.abilities,
+            made.rig,
+            made.pins_s,
+            keep,
+            give_s=made.pins_give_s,
+            firm=firm,
+            rhythm=rhythm,
+            clock=clock,
+            limit_s=LIMIT_S,
+            tell=lambda _: look(),
+            after=before if self._rig == desk.leaning.number else None,
+        )
+
+    def _told(self, made: Loaded, retiming: Retiming, checked: Check) -> Retimed:
+        names = [fiber.name for fiber in made.rig.fibers]
+        held = causes(retiming.proof) if retiming.proof is not None else []
+        hits = tuple(
+            Hit(hit.was_s, hit.now_s, cause_in_words(cause, names, made.tempo), hit.line, hit.fibers)
+            for hit, cause in zip(retiming.hits_moved, held, strict=False)
+        )
+        return Retimed(
+            self.desk.version,
+            retiming.tracks,
+            retiming.warp_was_s,
+            retiming.warp_now_s,
+            hits,
+            tuple(sentences(retiming, checked, made.rig, made.tempo)),
+            is_good(retiming, checked),
+            float(np.nan_to_num(retiming.cost)),
+            True,
+        )
+
+
+def _alike(one: Snag, other: Snag) -> bool:
+    return (one.kind, one.fiber, one.line) == (other.kind, other.fiber, other.line) and abs(one.from_s - other.from_s) < 1e-6
