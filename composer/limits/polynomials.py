@@ -9,14 +9,20 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 
 STEPS = 80
-"""Most steps of a root search: every second one halves the bracket, so that doubles run out of digits before steps do."""
+"""Most steps of a root search: each is at most half the one before, so that doubles run out of digits before steps do."""
+
+FINE = 1e-15
+"""A Newton step that is no longer than this, in u, is its last: the one after would be lost in rounding."""
 
 
 def value(curve: Array, u: Array) -> Array:
     """Each row's value at `u`: curve (K, n) with u (K,) or (K, m) gives u's shape."""
     columns = curve.T[(...,) + (None,) * (u.ndim - 1)]
-    total = np.broadcast_to(columns[-1], u.shape).copy()
-    for coefficient in columns[-2::-1]:
+    if len(columns) == 1:
+        return np.broadcast_to(columns[0], u.shape).copy()
+    total = columns[-1] * u
+    total += columns[-2]
+    for coefficient in columns[-3::-1]:
         total *= u
         total += coefficient
     return total
@@ -37,6 +43,8 @@ def roots(curve: Array) -> Array:
     rows, terms = curve.shape
     if terms < 2:
         return np.empty((rows, 0))
+    if terms < 4:
+        return _closed(np.pad(curve, [(0, 0), (0, 3 - terms)]))[:, : terms - 1]
     cuts = np.column_stack([np.zeros(rows), roots(derivative(curve)), np.ones(rows)])
     # A missing cut becomes an empty stretch at the end: order is kept, and empty stretches hold no change of sign.
     cuts = np.where(np.isnan(cuts), 1.0, cuts)
@@ -51,30 +59,53 @@ def roots(curve: Array) -> Array:
     return np.sort(found, axis=1)
 
 
+def _closed(curve: Array) -> Array:
+    """The roots of quadratics, and of lines, whose last coefficient is 0: (K, 2), with no difference of near-equals."""
+    c, b, a = curve.T
+    with np.errstate(divide="ignore", invalid="ignore"):
+        q = -0.5 * (b + np.copysign(np.sqrt(b * b - 4.0 * a * c), b))
+        pair = np.column_stack([q / a, c / q])
+    inside = (pair > -FINE) & (pair < 1.0 + FINE)
+    return np.sort(np.where(inside, np.clip(pair, 0.0, 1.0), np.nan), axis=1)
+
+
 def search(curve: Array, low: Array, high: Array, at_low: Array) -> Array:
-    """The root of each row between `low` and `high`, between which it changes sign; `at_low` its value at low."""
-    slope = derivative(curve)
-    low, high = low.copy(), high.copy()
-    sign = np.sign(at_low)
-    u = np.where(at_low == 0.0, low, 0.5 * (low + high))
-    left = np.flatnonzero(at_low != 0.0)
-    for step in range(STEPS):
-        if not len(left):
-            break
-        at, height = u[left], value(curve[left], u[left])
-        before = np.sign(height) == sign[left]
-        low[left] = np.where(before, at, low[left])
-        high[left] = np.where(before, high[left], at)
-        middle = 0.5 * (low[left] + high[left])
+    """The root of each row between `low` and `high`, between which it changes sign; `at_low` its value at low.
+
+    Newton's method, kept between the ends of what still holds the root; where a step would leave them, or is more than half of
+    the step before (a root that is nearly touched), the middle is taken instead (Press et al., Numerical Recipes, 9.4).
+    """
+    noise = np.finfo(float).eps * np.abs(curve).sum(axis=1)  # below which a value says nothing of its sign
+    first, last = np.abs(at_low) <= noise, np.abs(value(curve, high)) <= noise
+    found = np.where(first, low, np.where(last, high, 0.5 * (low + high)))
+    left = np.flatnonzero(~(first | last))
+    if not len(left):
+        return found
+    rows, low, high, sign, u, noise = curve[left], low[left], high[left], np.sign(at_low[left]), found[left], noise[left]
+    slope, last = derivative(rows), high - low
+    for _ in range(STEPS):
+        height = value(rows, u)
+        before = np.sign(height) == sign
+        low, high = np.where(before, u, low), np.where(before, high, u)
         with np.errstate(divide="ignore", invalid="ignore"):
-            newton = at - height / value(slope[left], at)
-        inside = (newton > low[left]) & (newton < high[left])
-        # Newton closes in from one side only; a halving now and then keeps the bracket shrinking on rows where it stalls.
-        following = np.where(inside & (step % 4 != 3), newton, middle)
-        done = (height == 0.0) | (np.abs(following - at) <= 1e-16 + 2e-16 * at) | (middle <= low[left]) | (middle >= high[left])
-        u[left] = np.where(height == 0.0, at, following)
-        left = left[~done]
-    return u
+            newton = u - height / value(slope, u)
+            # A root at an end of the bracket may, in rounding, lie a little outside: no reason to begin again in its middle.
+            good = (newton > low - FINE) & (newton < high + FINE) & (2.0 * np.abs(newton - u) <= last)
+            newton = np.clip(newton, low, high)
+            there = (np.abs(height) <= noise) | (np.abs(newton - u) <= FINE)
+        following = np.where(there, u, np.where(good, newton, 0.5 * (low + high)))
+        last = np.abs(following - u)
+        done = there | (high - low <= FINE)
+        u = following
+        if done.any():
+            found[left[done]] = u[done]
+            left, go = left[~done], ~done
+            if not len(left):
+                return found
+            rows, slope, noise, last = rows[go], slope[go], noise[go], last[go]
+            low, high, sign, u = low[go], high[go], sign[go], u[go]
+    found[left] = u
+    return found
 
 
 def where_positive(curve: Array) -> tuple[NDArray[np.int64], Array, Array]:

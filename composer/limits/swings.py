@@ -1,7 +1,7 @@
 """Where moves that quiver really go: their strain as it is, followed from sample to sample and closed in on between.
 
-Samples lie so close that a swing has 32 of them, so that each crossing of a level and each turn is seen; two that lie closer
-together than that, where a swing only just touches, may be missed.
+Samples lie so close that a swing has 32 of them, so that each turn is seen; where one comes near a level its top is closed in
+on too, so that a swing that only just touches is not missed between two samples.
 """
 
 from collections.abc import Callable, Iterator
@@ -25,6 +25,9 @@ BLOCK = 1 << 19
 """Samples worked out at a time, as a rule."""
 
 BISECTIONS = 44
+
+TOPS = 48
+"""Steps in which a top is closed in on, each a third of what is left."""
 
 
 @lru_cache(maxsize=2)
@@ -64,7 +67,8 @@ def stretches(tracks: Tracks, moves: Shaken, row: Index, above: Callable[[Index,
     """
     found: list[tuple[Index, Array, Array]] = []
     for place, u, first in _samples(tracks, moves, row):
-        over_0 = above(place, u) > 0.0
+        place, u, first, height = _with_tops(above, place, u, first)
+        over_0 = height > 0.0
         last = np.append(first[1:], True)
         change = np.flatnonzero((over_0[1:] != over_0[:-1]) & ~first[1:])
         low, high, rises = u[change], u[change + 1], over_0[change + 1]
@@ -81,6 +85,40 @@ def stretches(tracks: Tracks, moves: Shaken, row: Index, above: Callable[[Index,
     if not found:
         return np.empty(0, dtype=np.int64), np.empty(0), np.empty(0)
     return tuple(np.concatenate(column) for column in zip(*found, strict=True))
+
+
+def _with_tops(
+    above: Callable[[Index, Array], Array], place: Index, u: Array, first: NDArray[np.bool_]
+) -> tuple[Index, Array, NDArray[np.bool_], Array]:
+    """Samples and their heights, and among them the tops and the bottoms that lie past 0 between two samples on this side."""
+    height = above(place, u)
+    last = np.append(first[1:], True)
+    extra: list[tuple[Index, Array]] = []
+    for sign in (1.0, -1.0):
+        tall = sign * height
+        before = np.where(first, tall, np.roll(tall, 1))
+        after = np.where(last, tall, np.roll(tall, -1))
+        # Above its highest sample a top rises by less than it falls to the lower sample beside that, or beyond that at an end.
+        beyond = np.where(first, np.roll(tall, -2), np.where(last, np.roll(tall, 2), before))
+        fall = tall - np.minimum(np.minimum(before, after), beyond)
+        near = (tall <= 0.0) & (tall >= before) & (tall >= after) & (tall + fall > 0.0)
+        at = np.flatnonzero(near)
+        if not len(at):
+            continue
+        of, low, high = place[at], u[at - ~first[at]], u[at + ~last[at]]
+        for _ in range(TOPS):
+            one, two = low + (high - low) / 3.0, high - (high - low) / 3.0
+            rising = sign * above(of, one) < sign * above(of, two)
+            low, high = np.where(rising, one, low), np.where(rising, high, two)
+        top = 0.5 * (low + high)
+        past = sign * above(of, top) > 0.0
+        extra.append((of[past], top[past]))
+    if not any(len(of) for of, _ in extra):
+        return place, u, first, height
+    place, u = (np.concatenate([own, *more]) for own, more in zip((place, u), zip(*extra, strict=True), strict=True))
+    order = np.lexsort((u, place))
+    place, u = place[order], u[order]
+    return place, u, np.append(True, place[1:] != place[:-1]), above(place, u)
 
 
 def strain_range_of(tracks: Tracks, moves: Shaken, row: Index) -> tuple[Array, Array]:

@@ -6,7 +6,9 @@ from hypothesis import given
 from hypothesis import strategies as st
 from hypothesis.extra.numpy import arrays
 
+from composer.limits import polynomials
 from composer.limits.polynomials import derivative, extremes, roots, value
+from composer.shapes import PROGRESS
 
 coefficients = st.sampled_from([0.0, 1.0, -1.0]) | st.floats(-10.0, 10.0).map(lambda x: round(x, 6))
 curves = st.integers(1, 6).flatmap(lambda terms: arrays(float, (4, terms), elements=coefficients))
@@ -63,3 +65,16 @@ def test_the_minimum_jerk_profile_peaks_at_fifteen_eighths(outside):
     speed = derivative(smooth)
     assert extremes(speed)[1] == pytest.approx([outside["minimum_jerk"]["peak_speed"]], rel=1e-14)
     assert extremes(derivative(speed))[1] == pytest.approx([outside["minimum_jerk"]["peak_acceleration"]], rel=1e-14)
+
+
+def test_roots_on_the_border_double_ones_too_take_no_more_steps_than_those_within(monkeypatch):
+    calls = []
+    monkeypatch.setattr(polynomials, "value", lambda curve, u: calls.append(u) or value(curve, u))
+    smooth = np.array(PROGRESS["smooth"])
+    for shift in (0.0, 0.3, -0.9):
+        for curve in (smooth, -smooth, derivative(smooth[None])[0]):
+            calls.clear()
+            shifted = curve.copy()
+            shifted[0] += shift
+            polynomials.roots(shifted[None])
+            assert len(calls) <= 40
