@@ -115,6 +115,33 @@ def replacing(path: str | os.PathLike[str], mode: str = "w") -> Iterator[IO[Any]
 
 
 @contextmanager
+def replacing_by_name(path: str | os.PathLike[str]) -> Iterator[str]:
+    """As `replacing`, for a program that wants a name to write to: the name of a file beside, which takes the target's place.
+
+    Devices and pipes are refused, as such a program may want to go back in what it writes.
+    """
+    name = os.fspath(path)
+    was = _target(name)
+    if was is not None and not stat.S_ISREG(was.st_mode):
+        raise fault(name, "cannot write: this is a device or a pipe", "an ordinary file")
+    target = os.path.realpath(name)
+    beside, handle = _beside(name, target)
+    os.close(handle)
+    try:
+        with _saying(name, beside):
+            yield beside
+            if was is not None:
+                os.chmod(beside, stat.S_IMODE(was.st_mode))
+            with open(beside, "rb+") as file:
+                os.fsync(file.fileno())
+            os.replace(beside, target)
+    except BaseException:
+        _remove(beside)
+        raise
+    _sync_folder(target)
+
+
+@contextmanager
 def _saying(name: str, *also: str) -> Iterator[None]:
     """Turn what the system says of this file, or of its disk, into `Faults`; errors of other files pass as they are."""
     try:
