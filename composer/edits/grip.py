@@ -76,7 +76,7 @@ def grip(made: Made, fiber: int, knot: int) -> Grip:
         return Grip(fiber, knot, at_s, strain, None, None, why, why, ())
     which = int(all_.instance[row])
     entry = all_.entries[int(all_.entry[which])]
-    section = next(one for one in made.score.sections if entry in one.entries)
+    section = next(s for s in made.score.sections if any(one is entry for one in s.entries))
     hang, why_time = _time(made.score, all_, row, edge, section, entry)
     target, why_target = _target(made.score, all_, row, edge)
     phrase = hang is not None and hang.handle.role in ("offset", "over")
