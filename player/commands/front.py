@@ -8,8 +8,11 @@ import sys
 import threading
 from collections import deque
 from collections.abc import Callable
+from typing import Any
 
-from player.commands.terminal import in_foreground, is_terminal, keys_at_once
+from player.commands.shown import status_of
+from player.commands.terminal import has_keys, is_screen, keys_at_once
+from player.engine.process.layout import Snapshot
 from player.engine.status import Status
 
 REFRESH_S = 0.1
@@ -21,12 +24,13 @@ KEYS = {
     "n": "next_cue",
     "r": "rest",
     "b": "bring_back",
+    "d": "detach",
     "v": "vent",
     "\x1b": "vent",
 }
 """What each key asks of the engine; pause and go_on take turns on the same key."""
 
-KEYS_SAID = "Return goes on, space pauses, n next cue, r rest, v or Escape vent, Ctrl-C rest, twice vent"
+KEYS_SAID = "Return goes on, space pauses, n next cue, r rest, v or Escape vent, d leaves, Ctrl-C rest, twice vent"
 
 _COLOURS = {"playing": "32", "paused": "33", "resting": "33", "vented": "31", "lost": "31", "fault": "31"}
 
@@ -61,27 +65,27 @@ def link_of(status: Status) -> str:
 
 
 class Front:
-    """Shows the latest snapshot on stderr and hands keys to the engine. Without a terminal it only prints what is told."""
+    """Shows the latest snapshot on stderr and hands on what keys ask for. Without a terminal it only prints what is told."""
 
-    def __init__(self, ask: Callable[[str], None], say_place: Callable[[float], str], quiet: bool = False):
-        self._ask, self._say_place, self._quiet = ask, say_place, quiet
+    def __init__(self, ask: Callable[[str], object], about: dict[str, Any], quiet: bool = False):
+        """about: what the run is, as it says itself."""
+        self._ask, self._about, self._quiet = ask, about, quiet
         self._latest: Status | None = None
+        self._place = ""
         self._told: deque[str] = deque(maxlen=1000)
         self._ends = threading.Event()
-        self._lives = not quiet and is_terminal(sys.stderr) and os.environ.get("TERM") != "dumb"
+        self._lives = not quiet and is_screen()
         self._colour = self._lives and not os.environ.get("NO_COLOR")
-        self._keys = is_terminal(sys.stdin) and in_foreground()
+        self._keys = has_keys()
         self._thread: threading.Thread | None = None
 
-    @property
-    def answers(self) -> bool:
-        """Whether there is somebody who sees and has keys."""
-        return self._lives and self._keys
+    def show(self, snapshot: Snapshot, inputs: dict[str, Any]) -> None:
+        """The latest of the run; inputs are shown on the screen of a live session alone."""
+        self._place, self._latest = snapshot.text("place"), status_of(snapshot, self._about)
 
-    def show(self, status: Status) -> None:
-        """Take a snapshot; costs the engine next to nothing."""
-        self._told.extend(status.told)
-        self._latest = status
+    def tell(self, lines: tuple[str, ...]) -> None:
+        """Lines for the operator."""
+        self._told.extend(lines)
 
     def __enter__(self) -> "Front":
         if self._lives and self._keys:
@@ -136,8 +140,7 @@ class Front:
                 self._write(("\r\x1b[K" if self._lives else "") + said + "\n")
         if self._lives and self._latest is not None:
             width = _width()
-            place = self._say_place(self._latest.position_s)
-            self._write("\r\x1b[K" + live_line(self._latest, place, self._colour, width))
+            self._write("\r\x1b[K" + live_line(self._latest, self._place, self._colour, width))
 
     def _write(self, text: str) -> None:
         with contextlib.suppress(OSError, ValueError):
@@ -145,14 +148,13 @@ class Front:
             sys.stderr.flush()
 
 
-def ask_to_arm(tend: Callable[[], None]) -> bool:
-    """Ask for `arm` to be typed, while `tend` keeps the boards company; False for any other answer, or none at all."""
+def ask_to_arm(is_there: Callable[[], bool]) -> bool:
+    """Ask for `arm` to be typed; False for any other answer, or none at all, or where the run `is_there` no more."""
     print("The boards are ready. Type 'arm' to let the fibers move, anything else to leave it: ", end="", file=sys.stderr)
     sys.stderr.flush()
     answer = b""
-    while not answer.endswith(b"\n") and len(answer) < 256:
-        ready, _, _ = select.select([sys.stdin], [], [], 0.02)
-        tend()
+    while not answer.endswith(b"\n") and len(answer) < 256 and is_there():
+        ready, _, _ = select.select([sys.stdin], [], [], 0.1)
         if ready:
             more = os.read(sys.stdin.fileno(), 256)
             if not more:

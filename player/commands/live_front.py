@@ -8,9 +8,13 @@ import sys
 import threading
 from collections import deque
 from collections.abc import Callable
+from typing import Any
 
-from player.commands.terminal import in_foreground, is_terminal, keys_at_once
-from player.live.screen import Meters, Scene, frame
+from player.commands.shown import meters_for, scene_of
+from player.commands.terminal import has_keys, is_screen, keys_at_once
+from player.engine.clock import SteadyClock
+from player.engine.process.layout import Snapshot
+from player.live.screen import Scene, frame
 
 REFRESH_S = 0.1
 MOST_TOLD = 200
@@ -29,6 +33,7 @@ KEYS = {
     "\r": "go_on",
     "n": "next_cue",
     "l": "let_go",
+    "d": "detach",
     "t": "record",
 }
 """What each key asks for; pause and go_on take turns on the same key, `h` is the hold-to-run."""
@@ -65,38 +70,30 @@ class LiveFront:
     ask: called from the front's own thread with what a key asks for, "hold" and "held" for the hold-to-run
     """
 
-    def __init__(self, ask: Callable[[str], None], now: Callable[[], float], meters: Meters, quiet: bool = False):
-        self._ask, self._now, self._meters, self._quiet = ask, now, meters, quiet
+    def __init__(self, ask: Callable[[str], object], about: dict[str, Any], quiet: bool = False):
+        """about: what the session is, as it says itself."""
+        self._ask, self._about, self._quiet = ask, about, quiet
+        self._now, self._meters = SteadyClock().now, meters_for(about)
         self._scene: Scene | None = None
         self._told: deque[str] = deque(maxlen=MOST_TOLD)
         self._unsaid: deque[str] = deque(maxlen=1000)
         self._ends = threading.Event()
-        self._lives = not quiet and is_terminal(sys.stderr) and os.environ.get("TERM") != "dumb"
+        self._lives = not quiet and is_screen()
         self._colour = self._lives and not os.environ.get("NO_COLOR")
-        self._keys = is_terminal(sys.stdin) and in_foreground()
+        self._keys = has_keys()
         self._hold = HoldKey()
         self._shown: list[str] = []
         self._size = (0, 0)
         self._thread: threading.Thread | None = None
-
-    @property
-    def answers(self) -> bool:
-        """Whether there is somebody who sees and has keys."""
-        return self._lives and self._keys
-
-    @property
-    def told(self) -> tuple[str, ...]:
-        """What was told of late, for the screen."""
-        return tuple(self._told)
 
     def tell(self, said: tuple[str, ...]) -> None:
         """Something for the operator."""
         self._told.extend(said)
         self._unsaid.extend(said)
 
-    def show(self, scene: Scene) -> None:
-        """The latest scene; costs the engine next to nothing."""
-        self._scene = scene
+    def show(self, snapshot: Snapshot, inputs: dict[str, Any]) -> None:
+        """The latest of the session, and of its inputs."""
+        self._scene = scene_of(snapshot, self._about, inputs, tuple(self._told), self._now())
 
     def __enter__(self) -> "LiveFront":
         if self._lives:
@@ -136,6 +133,9 @@ class LiveFront:
         self._typed(typed or b"")
         if self._hold.is_up(self._now()):
             self._ask("held")
+        elif self._hold.down:
+            # Said again and again: one that is not is up, whatever has become of this terminal.
+            self._ask("hold")
 
     def _typed(self, typed: bytes) -> None:
         # An arrow or function key begins with Escape too, but more follows at once: no vent by a slip of the cursor keys.

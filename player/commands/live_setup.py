@@ -1,7 +1,6 @@
 """A live session from the command line: everything read and checked before anything is opened, then the parts put together."""
 
 import os
-from collections.abc import Mapping, Sequence
 from contextlib import ExitStack
 from dataclasses import dataclass
 
@@ -60,6 +59,16 @@ class Call:
     hertz: float
     log: str | None
 
+    @property
+    def hold_bound(self) -> bool:
+        """Whether the map binds a control as the hold-to-run."""
+        return any(isinstance(bind.deed, Does) and bind.deed.what == "hold_to_run" for bind in self.map_.binds)
+
+    @property
+    def holds(self) -> bool:
+        """Whether the session runs only while something is held."""
+        return self.played.rig.worn or self.hold_bound
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Parts:
@@ -69,7 +78,6 @@ class Parts:
     engine: Engine
     session: Session
     outputs: tuple[Output, ...]
-    groups: Mapping[str, Sequence[int]]
     hold_to_run: bool
     hold_bound: bool
     says: tuple[str, ...]
@@ -162,12 +170,11 @@ def set_up(call: Call, stack: ExitStack) -> Parts:
     if not call.midi and any(bind.control is not None for bind in call.map_.binds):
         says.append(NOT_SENT)
     inbox = Inbox(call.map_, known, played.names, clock.now, time_of_day, ports, osc)
-    hold_bound = any(isinstance(bind.deed, Does) and bind.deed.what == "hold_to_run" for bind in call.map_.binds)
     engines: list[Engine] = []
     live = Live(
         rig, abilities, _beneath(call, lambda said: engines[0].tell(said)), inbox, clock.now,
         lambda kind, value=0.0: engines[0].ask(kind, value), lambda said: engines[0].tell(said), _repertoire(call),
-        1.0 / call.hertz, rig.worn or hold_bound, played.cues,
+        1.0 / call.hertz, call.holds, played.cues,
     )  # fmt: skip
     engine = Engine(rig, live, outputs, clock, call.hertz, ahead_s=AHEAD_S, abilities=abilities)
     engines.append(engine)
@@ -189,12 +196,11 @@ def set_up(call: Call, stack: ExitStack) -> Parts:
             sender = OscPort("127.0.0.1" if is_loopback(host) else "0.0.0.0", 0)
             stack.callback(sender.close)
         send_osc = lambda data: sender.send(data, host, port_number)  # noqa: E731
-    groups = dict(known.groups)
     session = Session(
         engine, live, inbox, clock.now, played.say_place, played.names, abilities.stroke, played.title, takes, clock_out,
         send_osc,
     )  # fmt: skip
-    return Parts(clock, engine, session, outputs, groups, rig.worn or hold_bound, hold_bound, tuple(says))
+    return Parts(clock, engine, session, outputs, call.holds, call.hold_bound, tuple(says))
 
 
 def _played(path: str, rig_path: str | None) -> tuple[Played, Loaded | None]:

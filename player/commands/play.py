@@ -1,11 +1,6 @@
 """`drawcord play`: a score, a play file or a recording in real time."""
 
-import json
 import os
-import signal
-import sys
-from collections.abc import Callable, Iterator
-from contextlib import ExitStack, contextmanager
 
 import click
 
@@ -22,6 +17,12 @@ SLOWEST_HZ, FASTEST_HZ = 20.0, 1000.0
 @click.option("--log", metavar="FILE", type=click.Path(path_type=str), help="Keep the run's log.")
 @click.option("--trim", is_flag=True, help="Correct pressure set-points, slowly, by what boards sense.")
 @click.option("--rig", metavar="RIG", type=click.Path(path_type=str), help="Another rig file than the one named inside.")
+@click.option(
+    "--when-left",
+    type=click.Choice(["rest", "go-on"]),
+    default="rest",
+    help="What the run does where this terminal goes away: rest, unless go-on is given.",
+)
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON object at the end, and nothing else.")
 def command(
     score: str,
@@ -33,6 +34,7 @@ def command(
     log: str | None,
     trim: bool,
     rig: str | None,
+    when_left: str,
     as_json: bool,
 ) -> int:
     """Play a score in real time.
@@ -41,7 +43,8 @@ def command(
     sim and file:PATH without a name take all drivers that are left, and need no arming.
 
     A score that the rig cannot do is refused unless --retime mends it first. Ctrl-C brings all fibers to rest at their safe
-    rate and disarms; a second one vents. The software is no safety device.
+    rate and disarms; a second one vents. The run is a process of its own: where this terminal goes away, --when-left says what
+    becomes of it, and 'drawcord attach' comes back to it. The software is no safety device.
     """
     from player.commands.mending import NotMended
     from player.commands.played import load_played
@@ -59,53 +62,31 @@ def command(
     start_s = played.seconds_of(start) if start is not None else 0.0
     if played.tracks is not None and (code := refused(played, as_json)) is not None:
         return code
-    return _run(played, targets, hertz, start_s, arm, log, trim, as_json)
+    return _run(played, targets, hertz, start_s, arm, log, trim, when_left, as_json)
 
 
 def _run(
-    played, targets: tuple[str, ...], hertz: float, start_s: float, arm: bool, log: str | None, trim: bool, as_json: bool
+    played,
+    targets: tuple[str, ...],
+    hertz: float,
+    start_s: float,
+    arm: bool,
+    log: str | None,
+    trim: bool,
+    rule: str,
+    as_json: bool,
 ) -> int:
-    """Open, pre-flight, arm, play, and leave everything at rest, or vented, whatever happens."""
+    """Start the run in a process of its own, and be its front end."""
+    from player.commands import play_process
+    from player.commands.attending import commanded
     from player.commands.front import Front
-    from player.commands.logging_run import open_log
-    from player.commands.priority import real_time
-    from player.commands.run_report import report, sentences
-    from player.engine.clock import SteadyClock
-    from player.engine.loop import Engine
-    from player.engine.safety import Refused
-    from player.outputs.targets import Context, make_outputs
+    from player.commands.terminal import has_keys, is_screen
+    from player.engine.process.start import start
 
-    clock = SteadyClock()
-    outputs = make_outputs(targets, Context(played.rig, played.abilities, clock, hertz))
-    with ExitStack() as stack:
-        engine = Engine(played.rig, played.source(), outputs, clock, hertz, abilities=played.abilities, trims=trim)
-        stack.callback(engine.close)
-        interrupt = stack.enter_context(_signals(engine.ask))
-        for output in outputs:
-            output.open()
-        _preflight(engine, sys.stderr if not as_json else None)
-        if any(output.must_arm for output in outputs) and not arm and not _asked_to_arm(engine):
-            click.echo("not armed; nothing has moved", err=True)
-            return 2
-        run_log = open_log(log, stack, engine, played, targets, clock.now()) if log is not None else None
-        interrupt.become_stops()
-        try:
-            engine.arm()
-        except Refused as why:
-            click.echo(str(why), err=True)
-            return 2
-        with Front(engine.ask, played.say_place, quiet=as_json) as front:
-            engine.returns = front.answers
-            with real_time() as first:
-                for status in engine.run(start_s):
-                    front.show(status)
-            front.show(engine.status())
-        engine.close()
-        told = report(engine, played, outputs, "real-time" if first else "usual")
-        if run_log is not None:
-            run_log.tell("end", clock.now(), **told)
-    click.echo(json.dumps(told) if as_json else "\n".join(sentences(told)))
-    return told["exit"]
+    about = play_process.about(played, targets, hertz)
+    answers = not as_json and is_screen() and has_keys()
+    client = start(play_process.body, about, rule, played, targets, hertz, log, trim, answers=answers)
+    return commanded(client, arm, start_s, as_json, lambda ask: Front(ask, about, quiet=as_json), rule)
 
 
 def _check_written(targets: tuple[str, ...], log: str | None, *read: str | None) -> None:
@@ -139,59 +120,3 @@ def _rate(asked: float | None, usual: float) -> float:
     if not SLOWEST_HZ <= asked <= FASTEST_HZ:
         raise click.UsageError(f"--rate {asked:g}: expected {SLOWEST_HZ:g} to {FASTEST_HZ:g} sets a second")
     return asked
-
-
-def _preflight(engine, tell) -> None:
-    """A mark a line; raises Faults with all that is not in order."""
-    from composer.faults import Fault, Faults, Where
-    from player.commands.marks import line
-
-    marks = engine.preflight()
-    wrong = [mark for mark in marks if not mark.ok]
-    if wrong:
-        raise Faults(
-            Fault(Where("pre-flight"), f"not so: {mark.asked}" + (f": {mark.found}" if mark.found else ""), hint=mark.hint)
-            for mark in wrong
-        )
-    if tell is not None and any(output.must_arm for output in engine.boards.outputs):
-        for mark in marks:
-            print(line(mark), file=tell)
-
-
-def _asked_to_arm(engine) -> bool:
-    """The operator's own deed, at the keyboard."""
-    from composer.faults import fault
-    from player.commands.front import ask_to_arm
-
-    if not os.isatty(sys.stdin.fileno()) if sys.stdin else True:
-        raise fault("--to", "a serial target has to be armed, and there is no terminal to ask at", hint="give --arm to arm it")
-    return ask_to_arm(engine.tend)
-
-
-class _Interrupt:
-    """What signals do: before arming they end the program, afterwards they ask the engine to stop."""
-
-    def __init__(self, ask: Callable[[str], None]):
-        self._ask, self._stops = ask, False
-
-    def become_stops(self) -> None:
-        """From here on the fibers may be moving."""
-        self._stops = True
-
-    def __call__(self, *_: object) -> None:
-        if not self._stops:
-            raise KeyboardInterrupt
-        self._ask("stop")
-
-
-@contextmanager
-def _signals(ask: Callable[[str], None]) -> Iterator[_Interrupt]:
-    """Ctrl-C, and being told to end, or losing the terminal: the first brings all to rest, the second vents."""
-    interrupt = _Interrupt(ask)
-    numbers = [signal.SIGINT, signal.SIGTERM] + ([signal.SIGHUP] if hasattr(signal, "SIGHUP") else [])
-    before = {number: signal.signal(number, interrupt) for number in numbers}
-    try:
-        yield interrupt
-    finally:
-        for number, handler in before.items():
-            signal.signal(number, handler)

@@ -5,12 +5,13 @@ from typing import Any
 
 from player.commands.counted import sentence, small
 from player.commands.played import Played
+from player.commands.priority import Permitted
 from player.engine.loop import Engine
 from player.outputs.base import Output
 
 
-def report(engine: Engine, played: Played, outputs: Sequence[Output], priority: str) -> dict[str, Any]:
-    """Everything of a run that has ended; times in s, lateness in ms, strains as 1; priority: "real-time" or "usual"."""
+def report(engine: Engine, played: Played, outputs: Sequence[Output], permitted: Permitted) -> dict[str, Any]:
+    """Everything of a run that has ended; times in s, lateness in ms, strains as 1."""
     ending, lateness = engine.ending, engine.lateness
     faults = [
         {
@@ -33,7 +34,8 @@ def report(engine: Engine, played: Played, outputs: Sequence[Output], priority: 
         "duration_s": round(ending.lasted_s, 6),
         "rate_Hz": engine.rate_Hz,
         "ahead_ms": round(engine.ahead_s * 1e3, 3),
-        "priority": priority,
+        "priority": permitted.priority,
+        "memory": permitted.memory,
         "ticks": lateness.ticks,
         "late_ticks": lateness.late,
         "past_due": lateness.past_due,

@@ -22,6 +22,16 @@ def in_foreground() -> bool:
         return False
 
 
+def is_screen() -> bool:
+    """Whether stderr is a terminal on which something can live."""
+    return is_terminal(sys.stderr) and os.environ.get("TERM") != "dumb"
+
+
+def has_keys() -> bool:
+    """Whether there are keys, and they come to this program."""
+    return is_terminal(sys.stdin) and in_foreground()
+
+
 @contextlib.contextmanager
 def keys_at_once(wanted: bool) -> Iterator[None]:
     """Keys come one by one and are not shown; signals by key stay."""

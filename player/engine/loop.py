@@ -91,7 +91,7 @@ class Engine:
         self.safety = Safety()
         self.lateness = Lateness()
         self.boards = Boards(outputs)
-        self._clock = clock
+        self.clock = clock
         self._dt = 1.0 / rate_Hz
         self._asked: deque[Command] = deque(maxlen=1000)
         self._account = Account()
@@ -127,8 +127,12 @@ class Engine:
         """Arm every board. Raises Refused without a fresh pre-flight."""
         self._become("arm")
 
+    def vent(self) -> None:
+        """Vent every board, whatever the state; while a run is on, ask for it instead."""
+        self._stop("vented", "vented by the operator", "vent")
+
     def tend(self) -> None:
-        """Keep the links alive while nothing is played: what boards and front ends say is heard, boards hear from the player."""
+        """Keep the links alive while nothing is played: boards and front ends are heard, and boards hear from the player."""
         self.listen()
         self._hear(self.boards.poll())
 
@@ -137,7 +141,7 @@ class Engine:
 
         However the caller leaves off, by an exception too, the fibers are vented if they are not at rest.
         """
-        began = self._clock.now()
+        began = self.clock.now()
         try:
             self._obey()
             if self.safety.state == "armed":
@@ -163,7 +167,7 @@ class Engine:
             self._fault(event.driver, f"{event.driver}: {event.say}", "note")
 
     def _ticks(self) -> Iterator[Status]:
-        start = self._clock.now() + self.ahead_s + self._dt
+        start = self.clock.now() + self.ahead_s + self._dt
         tick = 0
         while self.safety.state in ("playing", "paused", "resting"):
             due = start + tick * self._dt
@@ -202,9 +206,9 @@ class Engine:
         """After a fault, all at rest or vented: wait until the operator has had everything brought back, or ends the run."""
         self._account.tell(self.stand_by_said)
         # What was lost falls by its own weight; until it can be down, nothing sets out.
-        down_s = self._clock.now() + self._falls_s
+        down_s = self.clock.now() + self._falls_s
         while True:
-            self._clock.wait_until(self._clock.now() + STAND_BY_S)
+            self.clock.wait_until(self.clock.now() + STAND_BY_S)
             self.tend()
             asked = [command.kind for command in self._asked_now()]
             if not ENDS.isdisjoint(asked) or ("rest" in asked and "stopped" not in self.returns_from) or not self.returns:
@@ -222,7 +226,7 @@ class Engine:
             self.boards,
             self.source,
             self.sensing,
-            self._clock,
+            self.clock,
             self.tell,
             self.tend,
             self.preflight,
@@ -254,11 +258,11 @@ class Engine:
             if self._asked and any(command.kind in AT_ONCE for command in tuple(self._asked)):
                 self._obey()
                 if self.safety.state == "vented":
-                    return max(moment, self._clock.now())
-            now = self._clock.now()
+                    return max(moment, self.clock.now())
+            now = self.clock.now()
             if moment - now <= SLICE_S:
-                return self._clock.wait_until(moment)
-            self._clock.wait_until(now + SLICE_S)
+                return self.clock.wait_until(moment)
+            self.clock.wait_until(now + SLICE_S)
 
     def _obey(self) -> None:
         """Do what has been asked, in order; a vent before all else."""
@@ -367,11 +371,11 @@ class Engine:
 
     def _disarm(self) -> None:
         """All wants are at rest: once the last set has been due, tell every board to rest and disarm, and hear it say so."""
-        self._clock.wait_until(self._due_s + self.source.lead_s + self._dt)
+        self.clock.wait_until(self._due_s + self.source.lead_s + self._dt)
         self._hear(self.boards.rest(0.0))
-        until = self._clock.now() + SETTLE_S
-        while not self.boards.settled("idle") and self._clock.now() < until and self.safety.state != "vented":
-            self._clock.wait_until(self._clock.now() + SLICE_S)
+        until = self.clock.now() + SETTLE_S
+        while not self.boards.settled("idle") and self.clock.now() < until and self.safety.state != "vented":
+            self.clock.wait_until(self.clock.now() + SLICE_S)
             self.tend()
             if any(command.kind in ("vent", "stop") for command in tuple(self._asked)):
                 self._asked.clear()
@@ -388,9 +392,9 @@ class Engine:
     def _vent(self) -> None:
         """Tell every board to vent, all of them before any is waited for; then hear them say that they have."""
         self._hear(self.boards.vent())
-        until = self._clock.now() + SETTLE_S
-        while not self.boards.settled("vented") and self._clock.now() < until:
-            self._clock.wait_until(self._clock.now() + SLICE_S)
+        until = self.clock.now() + SETTLE_S
+        while not self.boards.settled("vented") and self.clock.now() < until:
+            self.clock.wait_until(self.clock.now() + SLICE_S)
             self.tend()
         if not self.boards.settled("vented"):
             self._fault("", "a board did not say that it has vented: shut its supply by hand", "note")
@@ -419,7 +423,7 @@ class Engine:
     def _end(self, began: float) -> None:
         if self._diary.broken:
             self._fault("", f"the log could not be written to its end: {self._diary.broken}", "note")
-        self._account.lasted_s = self._clock.now() - began
+        self._account.lasted_s = self.clock.now() - began
 
     @property
     def ending(self) -> Ending:

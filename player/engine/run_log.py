@@ -19,6 +19,8 @@ little-endian:
     13 alarm    JSON: {"alarm", "fiber", "does", "say"}: sensed strain shows that something is wrong
     14 input    JSON: {"source", "what", "value"}: what a controller or another program sent, as it was understood
     15 cut      JSON: {"why", "fibers", "by"}: what the governor holds back: indices of fibers, and strain of the worst
+    16 front    JSON: {"what", "say", "attached"}: a front end attached, commands, left or is gone; what was refused, and why
+    17 system   JSON: {"priority", "memory", "why"}: priority real-time or usual, memory locked or usual, and why not
 
 A set takes at most twice the bytes that it has on the wire, a sense and a supply less than that.
 """
@@ -51,6 +53,8 @@ KINDS = {
     13: "alarm",
     14: "input",
     15: "cut",
+    16: "front",
+    17: "system",
 }
 _NUMBERS = {name: number for number, name in KINDS.items()}
 _SET = struct.Struct("<i3sI")

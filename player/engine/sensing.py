@@ -15,6 +15,7 @@ Array = NDArray[np.float64]
 
 class Sensing:
     """One for a run; `trim` is None unless set-points are to be corrected; `last`: (F,) strain as last sensed, or 0.
+    `sensed`: (F,) the same, nan where nothing has been sensed.
 
     supply_kPa: of each driver whose board has a sensor of it
     """
@@ -31,13 +32,14 @@ class Sensing:
         self._low: set[str] = set()
         self.supply_kPa: dict[str, float] = {}
         self.last = np.zeros(len(rig.fibers))
+        self.sensed = np.full(len(rig.fibers), np.nan)
 
     def sense(self, event: Event, watched: bool) -> list[tuple[Raised, str, str]]:
         """What an event shows: new alarms, each with the driver and the sentence. Only the largest error unless `watched`."""
         if event.kind == "supply":
             self.supply_kPa[event.driver] = event.kPa
             return self._supply(event) if watched else []
-        self.last[event.fibers] = event.strain
+        self.last[event.fibers] = self.sensed[event.fibers] = event.strain
         self.errors.sense(event.time_s, event.fibers, event.strain)
         zone = self.errors.around(event.time_s, SLACK_S, event.fibers) if watched else None
         if zone is None:
@@ -55,6 +57,7 @@ class Sensing:
         self.watch.forget()
         self._low.clear()
         self.last[:] = 0.0
+        self.sensed[:] = np.nan
 
     def applied(self, command: Array) -> Array:
         """The command (F,) with the trim, where there is one."""

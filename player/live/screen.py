@@ -22,6 +22,7 @@ KEYS = (
     ("n", "next cue"),
     ("l", "let go"),
     ("t", "record"),
+    ("d", "leave"),
     ("Ctrl-C", "end"),
 )
 """Keys and what they do, as the last line has them."""

@@ -11,7 +11,6 @@ from player.governor.causes import CAUSES, NONE
 from player.inputs.osc_out import OscOut
 from player.live.clock_out import ClockOut
 from player.live.inbox import Inbox
-from player.live.screen import Scene
 from player.live.source import KEYBOARD, Live
 from player.live.takes import Takes
 
@@ -88,23 +87,10 @@ class Session:
         else:
             self.engine.ask(what)
 
-    def scene(self, status: Status, told: tuple[str, ...], hold_wanted: bool) -> Scene:
-        """What a screen shows of this moment."""
-        sensing = self.engine.sensing
-        return Scene(
-            title=self.title,
-            status=status,
-            place=self.say_place(status.position_s),
-            view=self.live.view,
-            seen=self.inbox.seen,
-            refused=self.inbox.refused,
-            supply_kPa=dict(sensing.supply_kPa),
-            late_ms=1e3 * status.late_s,
-            now_s=self.now(),
-            told=told,
-            take=self.takes.says if self.takes is not None else "",
-            hold_wanted=hold_wanted,
-        )
+    @property
+    def take_says(self) -> str:
+        """What the take says of itself, "" where none is recorded."""
+        return self.takes.says if self.takes is not None else ""
 
     def _cuts(self, cut: np.ndarray, by: np.ndarray) -> tuple[tuple[str, str, float], ...]:
         which = np.flatnonzero(cut != NONE)

@@ -75,6 +75,21 @@ class Client:
                 self.commands = fields["commands"]
         return heard
 
+    def put_back(self, heard: list[tuple[str, dict[str, Any]]]) -> None:
+        """What was heard and not used yet: it is heard again, before all else."""
+        self._kept = heard + self._kept
+
+    def is_there(self) -> bool:
+        """Whether the run is there still; takes nothing of what it has said."""
+        if not self.gone:
+            try:
+                self.gone = self._socket.recv(1, socket.MSG_PEEK) == b""
+            except BlockingIOError:
+                return True
+            except OSError:
+                self.gone = True
+        return not self.gone
+
     def snapshot(self) -> Snapshot:
         """The run as it is now; as it was last where it is gone. Also there after `close`."""
         assert self._reader is not None

@@ -23,7 +23,8 @@ UNFIT_MOST = 20
 """A front end that has sent so much that is no message is let go."""
 
 NOTES_MOST = 500
-LAST_S = 2.0
+HELLO_S = LAST_S = 2.0
+LOOK_S = 0.02
 
 
 class Front:
@@ -99,6 +100,14 @@ class Door:
         self._fronts.append(Front(connection))
         self._poll.register(connection, select.POLLIN)
 
+    def await_hello(self) -> None:
+        """Wait until the front end that was adopted has said hello, so that whatever goes wrong next is told to it."""
+        waits = int(HELLO_S / LOOK_S)
+        while waits > 0 and self._fronts and not self.attached:
+            waits -= 1
+            select.select([front.socket for front in self._fronts], [], [], LOOK_S)
+            self.serve()
+
     def serve(self) -> None:
         """Hear and do what has come in, send what waits; returns at once."""
         ready = {number for number, _ in self._poll.poll(0)}
@@ -132,10 +141,10 @@ class Door:
         """The last message, with time to be read by whoever reads; then all is let go."""
         for front in self._fronts:
             front.put(messages.packed(name, **fields), surely=True)
-        waits = int(LAST_S / 0.02)
+        waits = int(LAST_S / LOOK_S)
         while waits > 0 and any(front.waits for front in self._fronts):
             waits -= 1
-            select.select([], [front.socket for front in self._fronts if front.waits], [], 0.02)
+            select.select([], [front.socket for front in self._fronts if front.waits], [], LOOK_S)
             for front in tuple(self._fronts):
                 self._flush(front, quietly=True)
         self.close()

@@ -67,12 +67,14 @@ ASKED = {
         Message("when_left", "another rule for this run", {"rule": "rule"}),
         Message("preflight", "the pre-flight once more, before arming", states=DISARMED),
         Message("arm", "arm all boards: the operator's own deed", states=("idle",)),
-        Message("play", "start, fibers first brought to that place of the score", {"from_s": "seconds"}, states=("armed",)),
+        Message(
+            "play", "start, fibers first brought to that place", {"from_s": "seconds"}, states=("idle", "armed")
+        ),
         Message("pause", "stand and hold", states=("playing",)),
         Message("go_on", "go on from a pause or a cue that waits", states=("paused",)),
         Message("next_cue", "go to the next cue", states=MOVING),
         Message("jump", "go to another place of the score", {"to_s": "seconds"}, states=MOVING),
-        Message("rest", "all down at their safe rate, then disarmed", states=("armed", *MOVING)),
+        Message("rest", "all down at their safe rate, then disarmed"),
         Message("stop", "end the run: rest, or vent where all are on their way to rest already"),
         Message("bring_back", "after a fault, a rest or a vent: a fresh pre-flight, arm, and go on", states=DISARMED),
         Message("hold", "hold-to-run is down, said anew every tenth of a second, or up", {"down": "flag"}),
@@ -90,7 +92,11 @@ TOLD = {
             "the answer to hello, with the shared memory's descriptor; `about` is what the run is",
             {"version": "number", "run": "text", "pid": "number", "commands": "flag", "about": "object"},
         ),
-        Message("marks", "a pre-flight's marks: asked, ok, found, hint of each", {"ok": "flag", "marks": "list"}),
+        Message(
+            "marks",
+            "a pre-flight's marks: asked, ok, found, hint of each; whether there are boards that the operator has to arm",
+            {"ok": "flag", "must_arm": "flag", "marks": "list"},
+        ),
         Message(
             "told",
             "lines for the operator; `missed` is how many were dropped before them, as the front end did not keep up",

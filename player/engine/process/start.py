@@ -107,6 +107,7 @@ def run(connection: socket.socket, body: Body, about: dict[str, Any], rule: str,
     door.adopt(connection)
     memory = layout.Writer(buffer, fibers, boards)
     memory.show()
+    door.await_hello()
     try:
         if alone:
             door.tell((f"nobody can attach to this run: {alone}",))

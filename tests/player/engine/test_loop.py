@@ -67,7 +67,7 @@ def test_sets_are_sent_ahead_of_their_due_time_by_the_stated_bound(make_engine, 
     for status in engine.run():
         if status.state == "idle":
             break
-        assert output.due[-1] - engine._clock.now() == pytest.approx(AHEAD_S)
+        assert output.due[-1] - engine.clock.now() == pytest.approx(AHEAD_S)
 
 
 def test_a_short_queue_shortens_how_far_ahead_sets_are_sent(make_engine, make_rig, tracks, kept):

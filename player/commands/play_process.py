@@ -1,0 +1,92 @@
+"""What the process of a run does, from `play`: open, pre-flight, arm, play, and leave everything at rest, or vented."""
+
+from collections.abc import Sequence
+from contextlib import ExitStack
+from typing import Any
+
+from player.commands.logging_run import open_log
+from player.commands.played import Played
+from player.commands.priority import at_its_best
+from player.commands.run_report import report, sentences
+from player.commands.signals import stopping
+from player.engine.clock import SteadyClock, stamp
+from player.engine.loop import Engine
+from player.engine.process.conduct import Conduct
+from player.engine.process.door import Door
+from player.engine.process.layout import Writer
+from player.engine.process.show import Show, boards_of
+from player.engine.safety import Refused
+from player.outputs.targets import Context, make_outputs
+
+NOT_ARMED = "not armed; nothing has moved"
+
+
+def about(
+    played: Played, targets: Sequence[str], rate_Hz: float, kind: str = "play", groups: Any = None, **more: Any
+) -> dict[str, Any]:
+    """What a run is, for front ends: all that they need to know and that does not change.
+
+    keys: kind ("play" or "live"), played, title, rig, worn, fibers, stroke (strain), drives, boards, groups ([name, indices]),
+        targets, rate_Hz, duration_s, cues ([name, at_s, waits]), began (UTC)
+    """
+    return {
+        "kind": kind,
+        "played": played.path,
+        "title": played.title,
+        "rig": played.rig.file,
+        "worn": played.rig.worn,
+        "fibers": list(played.names),
+        "stroke": [float(stroke) for stroke in played.abilities.stroke],
+        "drives": [fiber.mounting.valve.drive for fiber in played.rig.fibers],
+        "boards": list(boards_of(played.rig)),
+        "groups": [[name, [int(one) for one in of]] for name, of in (groups or {}).items()],
+        "targets": list(targets),
+        "rate_Hz": rate_Hz,
+        "duration_s": played.tracks.duration_s if played.tracks is not None else 0.0,
+        "cues": [[cue.name, cue.at_s, cue.wait] for cue in played.cues],
+        "began": stamp(),
+    } | more
+
+
+def body(
+    door: Door, memory: Writer, played: Played, targets: tuple[str, ...], rate_Hz: float, log: str | None, trim: bool
+) -> tuple[str, dict[str, Any]]:
+    """The run, for `player.engine.process.start`; returns its last message."""
+    clock = SteadyClock()
+    outputs = make_outputs(targets, Context(played.rig, played.abilities, clock, rate_Hz))
+    with ExitStack() as stack:
+        engine = Engine(played.rig, played.source(), outputs, clock, rate_Hz, abilities=played.abilities, trims=trim)
+        stack.callback(engine.close)
+        interrupt = stack.enter_context(stopping(engine.ask))
+        conduct = Conduct(engine, door, Show(memory, engine, played.rig, played.say_place))
+        for output in outputs:
+            output.open()
+        conduct.preflight()
+        if not conduct.wait_for_arm():
+            return not_armed(engine)
+        run_log = open_log(log, stack, engine, played, targets, clock.now()) if log is not None else None
+        interrupt.become_stops()
+        try:
+            engine.arm()
+        except Refused as why:
+            return failed(str(why))
+        with at_its_best() as permitted:
+            engine.note("system", priority=permitted.priority, memory=permitted.memory, why=permitted.why)
+            for status in engine.run(conduct.wait_for_play()):
+                conduct.after(status)
+        conduct.after(engine.status())
+        engine.close()
+        told = report(engine, played, outputs, permitted)
+        if run_log is not None:
+            run_log.tell("end", clock.now(), **told)
+    return "ended", {"exit": told["exit"], "report": told, "lines": sentences(told)}
+
+
+def not_armed(engine: Engine) -> tuple[str, dict[str, Any]]:
+    """The last message where the run did not come about."""
+    return failed(NOT_ARMED if engine.safety.state != "vented" else "vented, and not armed; nothing has moved")
+
+
+def failed(why: str, code: int = 2) -> tuple[str, dict[str, Any]]:
+    """The last message of a run that did not come about."""
+    return "failed", {"exit": code, "lines": [why]}
