@@ -54,8 +54,8 @@ def paint(painter: QPainter, scene: Scene, width: int, height: int, theme: Theme
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     heading(painter, plan, rows, scene, width)
     threads(painter, plan, rows, scene)
-    _pins(painter, plan, rows, scene)
-    _cues(painter, plan, rows, scene)
+    pins(painter, plan, rows, scene)
+    cues(painter, plan, rows, scene)
     below = plan.top + rows.height
     free = height - below - plan.look.px(40) - plan.look.px(28)
     lanes.paint(painter, plan.look, scene, plan.left, below, plan.width, min(free, 2 * plan.lane_room))
@@ -65,14 +65,14 @@ def paint(painter: QPainter, scene: Scene, width: int, height: int, theme: Theme
 def heading(painter: QPainter, plan: Layout, rows: Rows, scene: Scene, width: int) -> None:
     """Draw the title and the bars."""
     _title(painter, plan, scene, width)
-    _bars(painter, plan, rows, scene)
+    bars(painter, plan, rows, scene)
 
 
 def threads(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     """Draw the threads with their names, bar lines and snags."""
     _threads(painter, plan, image.threads(scene.share, scene.extending, rows, plan.look.theme))
     _names(painter, plan, rows, scene)
-    _bar_lines_over(painter, plan, rows, scene)
+    bar_lines_over(painter, plan, rows, scene)
     _snags(painter, plan, rows, scene)
 
 
@@ -89,7 +89,8 @@ def _title(painter: QPainter, plan: Layout, scene: Scene, width: int) -> None:
     look.write(painter, rest, scene.subtitle, 13, look.theme.quiet_ink)
 
 
-def _bars(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
+def bars(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
+    """Draw the bars and counts above the cloth."""
     look = plan.look
     high = look.px(24)
     look.write(
@@ -112,7 +113,7 @@ def _ticks(plan: Layout, scene: Scene) -> tuple[Tick, ...]:
     return bar_ticks(scene.tempo, scene.from_s, scene.to_s, plan.width, look.px(34), look.px(7))
 
 
-def _bar_lines_over(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
+def bar_lines_over(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     """Labelled bars go on through the cloth, faint enough to leave the threads their brightness."""
     for tick in _ticks(plan, scene):
         if tick.strong and tick.label:
@@ -195,7 +196,7 @@ def _span(plan: Layout, scene: Scene, snag: Stretch, least: float) -> tuple[floa
     return left, right
 
 
-def _pins(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
+def pins(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     """A pin is a head on a needle that points at its instant."""
     look = plan.look
     for at in scene.pins_s:
@@ -212,7 +213,7 @@ def pin_at(painter: QPainter, look: Look, x: float, top: float, foot: float) -> 
     painter.drawEllipse(QPointF(x, top), radius, radius)
 
 
-def _cues(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
+def cues(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     """A cue is a pennant with its name, and a dashed line down through the cloth; one that waits bears two bars."""
     look = plan.look
     high = look.px(17)

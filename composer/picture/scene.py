@@ -33,7 +33,8 @@ class CueMark:
 class Lane:
     """A curve below the cloth: `values` (W,), one a column of the cloth, nan for none; from `low` to `high` in `unit`.
 
-    colour: its name in the theme; limit: a level not to be passed, None for none, with the word for it; supply: whether snags of the air lie over it
+    colour: its name in the theme; limit: a level not to be passed, None for none, with the word for it
+    supply: whether snags of the air lie over it
     """
 
     name: str
