@@ -114,7 +114,10 @@ class Picture:
 
 @dataclass(frozen=True, slots=True)
 class Row:
-    """Snags that are told together: one of them (index into the check's), the sentence, what would mend it, where it is."""
+    """Snags that are told together: one of them (index into the check's), the sentence, what would mend it, where it is.
+
+    others: indices of those that are told with it
+    """
 
     snag: int
     kind: str
@@ -126,6 +129,7 @@ class Row:
     line: int
     phrase_line: int
     fibers: tuple[int, ...]
+    others: tuple[int, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)

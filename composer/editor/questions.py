@@ -5,6 +5,8 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
+
 from composer.editor.messages import Dragged, Ghost, Mended, Taking
 from composer.edits import completion, dragging, hover, threads
 from composer.edits.edit import Edit, Refusal, apply
@@ -41,18 +43,16 @@ def _moved(desk: "Desk", line: int, column: int) -> threads.Stretches:
     return threads.moved_by(desk.threads(), line, column)
 
 
-def _grip(desk: "Desk", fiber: int, seconds: float) -> dragging.Grip:
-    return dragging.grip(desk.made, fiber, dragging.knot_near(desk.made, fiber, seconds))
-
-
 def _drag(
-    desk: "Desk", held: dragging.Grip, time_s: float | None, strain: float | None, grid: Fraction, free: bool
+    desk: "Desk", segment: int, time_s: float | None, strain: float | None, grid: Fraction, free: bool
 ) -> Dragged | Refusal:
+    """The knot in which a segment ends, dragged."""
+    tracks = desk.made.tracks
+    if not 0 <= segment < len(tracks.time_s) - 1:
+        return Refusal("That knot is gone.")
+    fiber = int(np.searchsorted(tracks.first, segment, side="right")) - 1
+    held = dragging.grip(desk.made, fiber, segment + 1)
     return _dragged(desk, dragging.drag(desk.made_text, desk.made, held, time_s, strain, grid, free))
-
-
-def _drag_hit(desk: "Desk", was_s: float, time_s: float, fiber: int, grid: Fraction, free: bool) -> Dragged | Refusal:
-    return _dragged(desk, dragging.drag_hit(desk.made_text, desk.made, was_s, time_s, fiber, grid, free))
 
 
 def _dragged(desk: "Desk", edit: Edit | Refusal) -> Dragged | Refusal:
@@ -89,9 +89,7 @@ QUESTIONS: dict[str, Question] = {
     "explain": Question(_explain, needs_made=False),
     "source": Question(_source),
     "moved": Question(_moved),
-    "grip": Question(_grip),
     "drag": Question(_drag),
-    "drag hit": Question(_drag_hit),
     "copy": Question(_copy),
     "seconds": Question(_seconds),
     "mends": Question(_mends),

@@ -1,0 +1,244 @@
+"""The list of snags, each a sentence, and beside it what would mend the one that is chosen, a button each."""
+
+from collections.abc import Sequence
+
+from PySide6.QtCore import QEvent, QObject, QSize, Qt, Signal
+from PySide6.QtGui import QKeyEvent
+from PySide6.QtWidgets import (
+    QAbstractItemView,
+    QHBoxLayout,
+    QLabel,
+    QListWidget,
+    QListWidgetItem,
+    QPushButton,
+    QScrollArea,
+    QVBoxLayout,
+    QWidget,
+)
+
+from composer.editor.messages import Choice, Mended, Row
+from composer.edits.edit import Refusal
+
+WAYS = {
+    "time": "Give it time",
+    "lead": "Let it lead",
+    "shrink": "Shrink it",
+    "pin": "Pin this",
+    "retime": "Retime this hit",
+    "air": "Ask less of the air",
+}
+"""What each way to mend is called, as far as its own words do not say more."""
+
+
+class Wrapped(QListWidget):
+    """A list of sentences that are wrapped to its width."""
+
+    def __init__(self, name: str):
+        super().__init__()
+        self.setAccessibleName(name)
+        self.setWordWrap(True)
+        self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.setSelectionMode(QAbstractItemView.SelectionMode.SingleSelection)
+        self.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
+        self.setResizeMode(QListWidget.ResizeMode.Adjust)
+        self.setSpacing(1)
+
+    def sizeHint(self) -> QSize:
+        """Not so wide as its longest sentence."""
+        return QSize(300, 150)
+
+
+class Mends(QScrollArea):
+    """The choices for one snag. ghost: the choice under pointer or focus, None for none; chosen: one that is taken."""
+
+    ghost = Signal(object)
+    chosen = Signal(object)
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.setWidgetResizable(True)
+        self.setAccessibleName("what would mend it")
+        self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self._buttons: dict[QObject, Choice] = {}
+        self.say("Choose a snag: what would mend it comes up here.")
+
+    def sizeHint(self) -> QSize:
+        """About as wide as a sentence."""
+        return QSize(260, 150)
+
+    @property
+    def choices(self) -> tuple[Choice, ...]:
+        """The choices shown."""
+        return tuple(self._buttons.values())
+
+    @property
+    def buttons(self) -> tuple[QPushButton, ...]:
+        """Their buttons."""
+        return tuple(self._buttons)
+
+    def say(self, says: str) -> None:
+        """Show a sentence alone."""
+        self._fill([_label(says)])
+
+    def show_mended(self, mended: Mended | Refusal) -> None:
+        """Show the choices, and why the other ways do not help."""
+        if isinstance(mended, Refusal):
+            self.say(mended.say)
+            return
+        self._buttons = {}
+        parts: list[QWidget] = []
+        made: dict[QObject, Choice] = {}
+        for choice in mended.choices:
+            left = "no snag is left then" if choice.snags_left == 0 else f"{choice.snags_left} left then"
+            button = QPushButton(f"{choice.say}\n{left}")
+            button.setAccessibleName(f"{choice.say}, {left}")
+            button.setToolTip(WAYS.get(choice.way, ""))
+            button.setObjectName("mend")
+            button.installEventFilter(self)
+            button.clicked.connect(lambda _=False, choice=choice: self.chosen.emit(choice))
+            made[button] = choice
+            parts.append(button)
+        if not parts:
+            parts.append(_label("Nothing that is tried here mends it:"))
+        parts += [_label(says, quiet=True) for says in mended.not_these.values()]
+        self._fill(parts)
+        self._buttons = made
+
+    def _fill(self, parts: Sequence[QWidget]) -> None:
+        if self._buttons:
+            self._buttons = {}
+            self.ghost.emit(None)
+        inner = QWidget()
+        column = QVBoxLayout(inner)
+        column.setContentsMargins(6, 4, 6, 4)
+        column.setSpacing(4)
+        for part in parts:
+            column.addWidget(part)
+        column.addStretch(1)
+        self.setWidget(inner)
+
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        """Pointer or focus on a choice shows what would come of it."""
+        choice = self._buttons.get(watched)
+        if choice is not None:
+            if event.type() in (QEvent.Type.Enter, QEvent.Type.FocusIn):
+                self.ghost.emit(choice)
+            elif event.type() in (QEvent.Type.Leave, QEvent.Type.FocusOut):
+                self.ghost.emit(None)
+        return super().eventFilter(watched, event)
+
+
+def _label(says: str, quiet: bool = False) -> QLabel:
+    label = QLabel(says)
+    label.setWordWrap(True)
+    label.setAccessibleName(says)
+    if quiet:
+        label.setObjectName("quiet")
+    return label
+
+
+class SnagsPanel(QWidget):
+    """Snags, and what would mend them.
+
+    row_chosen: a row that was gone to; mends_wanted: a row for which choices are to be found
+    """
+
+    row_chosen = Signal(object)
+    mends_wanted = Signal(object)
+
+    def __init__(self) -> None:
+        super().__init__()
+        self._rows: tuple[Row, ...] = ()
+        self._at: tuple | None = None
+        self.setAccessibleName("snags")
+        self._list = Wrapped("list of snags")
+        self._list.currentRowChanged.connect(self._changed)
+        self._list.itemActivated.connect(lambda _: self.mends.setFocus())
+        self._list.installEventFilter(self)
+        self.mends = Mends()
+        row = QHBoxLayout(self)
+        row.setContentsMargins(0, 0, 0, 0)
+        row.setSpacing(1)
+        row.addWidget(self._list, 3)
+        row.addWidget(self.mends, 2)
+
+    @property
+    def list(self) -> Wrapped:
+        """The list itself."""
+        return self._list
+
+    @property
+    def rows(self) -> tuple[Row, ...]:
+        """What it lists."""
+        return self._rows
+
+    @property
+    def current(self) -> Row | None:
+        """The row that is chosen."""
+        at = self._list.currentRow()
+        return self._rows[at] if 0 <= at < len(self._rows) else None
+
+    def show_rows(self, rows: Sequence[Row], notes: Sequence[str] = (), more: int = 0) -> None:
+        """List these; the one that was chosen stays so where it is still there."""
+        before = self.current
+        self._rows = tuple(rows)
+        self._list.blockSignals(True)
+        self._list.clear()
+        for row in rows:
+            item = QListWidgetItem(f"{row.place}  {row.says} {row.mends}")
+            item.setData(Qt.ItemDataRole.AccessibleTextRole, f"snag at {row.place}, line {row.line}: {row.says} {row.mends}")
+            item.setToolTip(f"line {row.line}" + (f", phrase in line {row.phrase_line}" if row.phrase_line else ""))
+            self._list.addItem(item)
+        for note in (*notes, *([f"and {more} more snags later in the score"] if more else [])):
+            item = QListWidgetItem(note)
+            item.setFlags(Qt.ItemFlag.ItemIsEnabled)
+            self._list.addItem(item)
+        if not rows and not notes:
+            item = QListWidgetItem("No snags: the rig can do all of it.")
+            item.setFlags(Qt.ItemFlag.ItemIsEnabled)
+            self._list.addItem(item)
+        at = next((n for n, row in enumerate(rows) if before is not None and _same(row, before)), -1)
+        self._list.setCurrentRow(at)
+        self._list.blockSignals(False)
+        if at < 0:
+            self.mends.say("Choose a snag: what would mend it comes up here." if rows else "")
+        else:
+            self.mends_wanted.emit(self._rows[at])
+
+    def choose(self, snag: int) -> None:
+        """Choose the row that tells of a snag (index into the check's), without going there."""
+        at = next((n for n, row in enumerate(self._rows) if snag in (row.snag, *row.others)), None)
+        if at is not None:
+            self._list.blockSignals(True)
+            self._list.setCurrentRow(at)
+            self._list.blockSignals(False)
+            self.mends_wanted.emit(self._rows[at])
+
+    def step(self, way: int) -> None:
+        """Go to the next row, or the one before."""
+        if self._rows:
+            at = self._list.currentRow()
+            self._list.setCurrentRow((at + way) % len(self._rows) if at >= 0 else 0 if way > 0 else len(self._rows) - 1)
+
+    def _changed(self, at: int) -> None:
+        if 0 <= at < len(self._rows):
+            self.row_chosen.emit(self._rows[at])
+            self.mends_wanted.emit(self._rows[at])
+
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        """Return in the list goes to the choices."""
+        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress:
+            buttons = self.mends.buttons
+            if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Right) and buttons:
+                buttons[0].setFocus()
+                return True
+        return super().eventFilter(watched, event)
+
+
+def _same(row: Row, other: Row) -> bool:
+    return (row.kind, row.line, row.phrase_line, row.fibers) == (
+        other.kind,
+        other.line,
+        other.phrase_line,
+        other.fibers,
+    ) and abs(row.from_s - other.from_s) < 0.5
