@@ -18,10 +18,15 @@ from ..score.random_scores import scores
 from .making import demo, made, text_of
 
 HEAD = "tempo 60\nphrase up 8\n  1/2 rest\n  2 0.5 smooth\n  3.5 hold\n  6 rest over 3/2\n"
-TEXT = (
-    HEAD
-    + "phrase in\n  0 rest\n  500ms full sudden\nsection s at 2:1\n  r.1 up\n  r.2 up after 4 stretch 2\n  r.3 in at 20s scale 0.5\n  r.4 up after 1bar\n"
-)
+TEXT = f"""{HEAD}phrase in
+  0 rest
+  500ms full sudden
+section s at 2:1
+  r.1 up
+  r.2 up after 4 stretch 2
+  r.3 in at 20s scale 0.5
+  r.4 up after 1bar
+"""
 
 
 def numbers(text: str) -> list[tuple[int, str]]:
