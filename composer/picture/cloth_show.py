@@ -12,7 +12,7 @@ from composer.picture import over
 from composer.picture.axes import say_seconds
 from composer.picture.hits import hits_of
 from composer.picture.image import Rows, extends, rows_of
-from composer.picture.look import CENTRE, Look, colour
+from composer.picture.look import CENTRE, Look, colour, painting
 from composer.picture.over import Shown
 from composer.picture.palette import DARK, Theme
 from composer.picture.sampling import Sampler, Source
@@ -66,6 +66,7 @@ class ClothShow(QWidget):
             bar.setAccessibleName(name)
             bar.setFocusPolicy(Qt.FocusPolicy.NoFocus)
             bar.valueChanged.connect(self._scrolled)
+        self._style_bars()
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setMouseTracking(True)
         self.setMinimumSize(320, 200)
@@ -136,7 +137,19 @@ class ClothShow(QWidget):
         """Show it in other colours."""
         self._theme = theme
         self._last = None
+        self._style_bars()
         self._redraw()
+
+    def _style_bars(self) -> None:
+        ground, raised, edge = ("rgb({}, {}, {})".format(*getattr(self._theme, name)) for name in ("ground", "raised", "edge"))
+        for bar in (self._along, self._across):
+            bar.setStyleSheet(
+                f"QScrollBar {{ background: {ground}; border: none; }}"
+                f"QScrollBar::handle {{ background: {edge}; border: 3px solid {ground}; min-width: 24px; min-height: 24px; }}"
+                f"QScrollBar::handle:hover {{ border-color: {raised}; }}"
+                "QScrollBar::add-line, QScrollBar::sub-line { width: 0; height: 0; }"
+                "QScrollBar::add-page, QScrollBar::sub-page { background: none; }"
+            )
 
     def select(self, stretches: Sequence[Stretch]) -> None:
         """Light stretches of threads: those that the caret's line moves, say. None of them is scrolled to; see `reveal`."""
@@ -307,14 +320,16 @@ class ClothShow(QWidget):
 
     def paintEvent(self, event: QPaintEvent) -> None:
         """Draw what stands still when it has changed, and what moves over it."""
+        with painting(self) as painter:
+            self._paint(painter)
+
+    def _paint(self, painter: QPainter) -> None:
         scale = self.devicePixelRatioF()
-        painter = QPainter(self)
         view = self._current()
         if view is None or self._shown is None:
             painter.fillRect(self.rect(), colour(self._theme.ground))
             look = replace(self._look(), scale=self._look().scale / scale)
             look.write(painter, QRectF(self.rect()), NOTHING, 13, self._theme.quiet_ink, CENTRE)
-            painter.end()
             return
         if self._still is None or self._still.size() != QSize(view.width, view.height):
             self._still = self._draw_still(view)
@@ -324,7 +339,6 @@ class ClothShow(QWidget):
         painter.drawImage(0, 0, self._still)
         over.head(painter, view, self._head_s)
         self._paint_moving(painter, view)
-        painter.end()
 
     def _paint_moving(self, painter: QPainter, view: View) -> None:
         """What else moves over the picture, for whoever adds hands to it."""
@@ -334,28 +348,27 @@ class ClothShow(QWidget):
         still = QImage(view.width, view.height, QImage.Format.Format_RGB32)
         still.fill(colour(self._theme.ground))
         self._tiles.use(self._source, view.rows, self._theme)
-        painter = QPainter(still)
-        if view.rows.height:
-            painter.drawImage(view.plan.left, view.plan.top, self._threads(view))
-        over.around(painter, view, self._shown)
-        over.over(painter, view, self._shown)
-        painter.end()
+        with painting(still) as painter:
+            if view.rows.height:
+                painter.drawImage(view.plan.left, view.plan.top, self._threads(view))
+            over.around(painter, view, self._shown)
+            over.over(painter, view, self._shown)
         return still
 
     def _threads(self, view: View) -> QImage:
         """The threads in view; what is not there yet is stretched from the last whole picture."""
         drawn = QImage(view.plan.width, view.shown, QImage.Format.Format_RGB32)
         drawn.fill(colour(self._theme.ground))
-        painter = QPainter(drawn)
-        if self._last is not None:
-            image, was = self._last
-            left, right = (view.x_of(at) - view.plan.left for at in (was.from_s, was.to_s))
-            share = view.rows.height / max(was.rows.height, 1)
-            painter.drawImage(QRectF(left, was.scroll * share - view.scroll, right - left, image.height() * share), image)
-        if self._tiles.paint(painter, view, FRAME_BUDGET_MS):
+        with painting(drawn) as painter:
+            if self._last is not None:
+                image, was = self._last
+                left, right = (view.x_of(at) - view.plan.left for at in (was.from_s, was.to_s))
+                share = view.rows.height / max(was.rows.height, 1)
+                painter.drawImage(QRectF(left, was.scroll * share - view.scroll, right - left, image.height() * share), image)
+            whole = self._tiles.paint(painter, view, FRAME_BUDGET_MS)
+        if whole:
             self._last = (drawn, view)
-        painter.end()
-        return drawn.copy() if self._last is not None and self._last[0] is drawn else drawn
+        return drawn
 
     def _place_bars(self, view: View) -> None:
         """Scroll bars say where in the whole the window is."""

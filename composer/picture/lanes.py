@@ -28,7 +28,7 @@ def paint(painter: QPainter, look: Look, scene: Scene, left: float, top: float, 
         foot = box.bottom()
     look.write(
         painter,
-        QRectF(look.px(16), foot + look.px(3), left - look.px(28), look.px(18)),
+        QRectF(look.px(16), foot + look.px(3), left - look.px(50), look.px(18)),
         "time",
         12,
         look.theme.quiet_ink,

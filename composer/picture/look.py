@@ -1,9 +1,11 @@
 """Pens, letters and the hatch, at the scale of the picture at hand."""
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 
 from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QBrush, QColor, QFont, QFontMetricsF, QPainter, QPen, QPixmap
+from PySide6.QtGui import QBrush, QColor, QFont, QFontMetricsF, QPaintDevice, QPainter, QPen, QPixmap
 
 from composer.picture.palette import DARK, Colour, Theme
 
@@ -24,6 +26,16 @@ def pen(of: Colour, width: float = 1.0, alpha: int = 255, dash: tuple[float, ...
     if dash:
         made.setDashPattern(list(dash))
     return made
+
+
+@contextmanager
+def painting(on: QPaintDevice) -> Iterator[QPainter]:
+    """A painter that ends whatever happens: Qt does not survive the end of what is still being painted on."""
+    painter = QPainter(on)
+    try:
+        yield painter
+    finally:
+        painter.end()
 
 
 @dataclass(frozen=True, slots=True)

@@ -66,9 +66,10 @@ def reach(abilities: Abilities, fiber: int, knots: Knots, which: Index) -> list[
     elapsed = (knots.at_s - knots.from_s)[which, None] * share
     stroke = float(abilities.stroke[fiber])
     start = np.broadcast_to(np.clip(knots.from_strain[which], 0.0, stroke)[:, None], elapsed.shape)
-    f = np.full(elapsed.shape, fiber)
-    high = tables.strain_after(abilities, f, start, np.full(elapsed.shape, stroke), elapsed)
-    low = tables.strain_after(abilities, f, start, np.zeros(elapsed.shape), elapsed)
+    low, high = (
+        tables.strain_after(abilities, fiber, start.ravel(), np.full(start.size, goal), elapsed.ravel()).reshape(elapsed.shape)
+        for goal in (0.0, stroke)
+    )
     return [(knots.from_s[k] + elapsed[n], low[n], high[n]) for n, k in enumerate(which)]
 
 

@@ -11,7 +11,7 @@ from PySide6.QtWidgets import QWidget
 
 from composer.picture import strand_paint
 from composer.picture.axes import say_seconds
-from composer.picture.look import Look, colour
+from composer.picture.look import Look, colour, painting
 from composer.picture.palette import DARK, Theme
 from composer.picture.sampling import Sampler
 from composer.picture.strand import Knots, in_words, knots_of, unit_of
@@ -213,7 +213,10 @@ class StrandView(QWidget):
 
     def paintEvent(self, event: QPaintEvent) -> None:
         """Draw everything."""
-        painter = QPainter(self)
+        with painting(self) as painter:
+            self._paint(painter)
+
+    def _paint(self, painter: QPainter) -> None:
         painter.fillRect(self.rect(), colour(self._theme.ground))
         face = self._face()
         if face is None:
@@ -228,7 +231,6 @@ class StrandView(QWidget):
                     painter, face, self._strand(), held.way, (held.was_s, held.was_strain), (held.at_s, held.strain),
                     words, self._grid, self._targets,
                 )  # fmt: skip
-        painter.end()
 
     def _in_words(self, held: Held) -> str:
         assert self._weave is not None and self._fiber is not None
