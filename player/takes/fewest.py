@@ -123,13 +123,16 @@ def _roundest(
     """Of the ways of fewest moves the one that reads best: for each target of each place its cost, (N, LEVELS), and for each
     state (place times LEVELS plus target) the state before and the move from there, (N * LEVELS,)."""
     lots = [np.empty((0, 3), dtype=np.int64)]
-    for begin in range(0, len(moves.source), MOST_PAIRS):
-        part = slice(begin, begin + MOST_PAIRS)
+    least, most = steps.min(axis=1), np.where(steps == NEVER, -2, steps).max(axis=1)
+    may = (least[moves.source] < most[moves.target]) & (most[moves.source] + 1 >= least[moves.target])
+    may = np.flatnonzero(may)
+    for begin in range(0, len(may), MOST_PAIRS):
+        part = may[begin : begin + MOST_PAIRS]
         source, target, masks = moves.source[part], moves.target[part], moves.masks[part]
-        leads = steps[source][:, :, None] + 1 == steps[target][:, None, :]
+        leads = (steps[source] + 1)[:, :, None] == steps[target][:, None, :]
         leads &= ((masks[:, :, None] >> np.arange(LEVELS, dtype=np.uint8)) & 1).astype(bool)
         edge, a, b = np.nonzero(leads)
-        lots.append(np.column_stack([begin + edge, source[edge] * LEVELS + a, target[edge] * LEVELS + b]))
+        lots.append(np.column_stack([part[edge], source[edge] * LEVELS + a, target[edge] * LEVELS + b]))
     edge, left, right = np.concatenate(lots).T
     number = steps.ravel()[right]
     order = np.lexsort((right, number))

@@ -10,9 +10,9 @@ from numpy.typing import NDArray
 
 from composer.limits.duration import PEAK_ACCELERATION, PEAK_SPEED
 from composer.shapes import NAMES, PROGRESS
-from player.takes.places import LEVELS, Places
+from player.takes.places import LEVELS, ROOM, Places
 from player.takes.played import Array, Index, Played
-from player.takes.watch import EVEN, ROOM, Watch
+from player.takes.watch import EVEN, Watch
 
 NOT_QUITE = 0.995
 """Of the fastest rate: rates are looked up at some instants, and between the strains of a table."""
@@ -85,30 +85,30 @@ class _Weighed:
         size = VALUES // EVEN
         for begin in range(0, len(self.source), size):
             part = np.arange(begin, min(begin + size, len(self.source)))
-            self._hold(part, watch.even(self.source[part], self.target[part]))
+            when = watch.even(self.source[part], self.target[part])
+            series = self.series[part]
+            self._hold(part, when, self.played.at(self.played.share, series, when), self.played.slack_at(series, when))
         left = np.flatnonzero((self.low <= self.high).any(axis=0))
         points = watch.points(self.source[left], self.target[left])
-        for many in np.unique(points):
+        for many in np.unique(points[points > 0]):
             mine = left[points == many]
             size = max(1, VALUES // int(many))
             for begin in range(0, len(mine), size):
                 part = mine[begin : begin + size]
-                self._hold(part, watch.watched(self.source[part], self.target[part], int(many)))
+                self._hold(part, *watch.watched(self.source[part], self.target[part], int(many)))
         return self._masks()
 
-    def _hold(self, part: Index, when: Array) -> None:
-        """Hold some of the moves to what was played at some instants, (T, P)."""
-        played, series = self.played, self.series[part]
+    def _hold(self, part: Index, when: Array, met: Array, slack: Array) -> None:
+        """Hold some of the moves to what was played at some instants, (T, P), and its slack."""
         u = (when - self.begin[part]) / self.lasts[part]
-        met = played.at(played.share, series, when)
-        slack = ROOM * played.slack_at(series, when)
         gone = progress_at(self.shape, u)
         per = 1.0 / np.maximum(gone, LEAST_GONE)
         fast = np.flatnonzero(self.fast[part])
         if len(fast):
             self._hold_rates(part[fast], u[:, fast], gone[:, fast])
+        slack = ROOM * slack
         top = (met + slack) * per
-        bottom = top - 2.0 * slack * per
+        bottom = (met - slack) * per
         # (1 - w) / w
         per -= 1.0
         come = np.empty_like(per)

@@ -10,13 +10,16 @@ import numpy as np
 
 from composer.score.tempo import TempoMap
 from player.takes.fewest import Path, fewest
-from player.takes.moves import likely, roughly
+from player.takes.moves import roughly
 from player.takes.places import STEPS, UNIT, Places, nearby, places_of
 from player.takes.played import Array, Index, Played
 from player.takes.searching import COARSE, Search, of_series
 
-ROUNDS_S = ((0.12, 0.03), (0.03, 0.012))
+ROUNDS_S = ((0.26, 0.06), (0.04, 0.015))
 """How far about the knots found so far each further search weighs places, and how close together, in s."""
+
+NOTED = 0.1
+"""Of the slack: so far off a straight line between two instants an instant is watched too."""
 
 BATCH = 1 << 21
 """Values of series that are fitted together."""
@@ -48,10 +51,10 @@ class Fitting:
     def _fit(self, played: Played) -> list[Path]:
         tempo, coarse = self._tempo, places_of(played, self._tempo, COARSE)
         mine = [of_series(coarse, series) for series in range(len(played.share))]
-        watched = [coarse.time_s[coarse.first[k] : coarse.first[k + 1]] for k in range(len(mine))]
+        watched = [_with_furthest(played, k, coarse.time_s[coarse.first[k] : coarse.first[k + 1]]) for k in range(len(mine))]
         self._coarse += mine
         self._watched += watched
-        guesses, _ = fewest(coarse, roughly(played, coarse, likely(played, coarse)))
+        guesses, _ = fewest(coarse, roughly(played, coarse))
         knots = [mine[series] if guess is None else guess.place for series, guess in enumerate(guesses)]
         best: list[Path | None] = [None] * len(knots)
         for number, (around_s, apart_s) in enumerate(ROUNDS_S):
@@ -95,6 +98,23 @@ class Fitting:
         search = Search(some, self._tempo, tried, _and_watch(watched, some))
         search.keep(pins, windows)
         return search.run()
+
+
+def _with_furthest(played: Played, series: int, time_s: Array) -> Array:
+    """Instants, and between each two those at which what was played lies furthest above and below a straight line."""
+    share = played.share[series]
+    grid_s = played.begin_s + played.step_s * np.arange(len(share))
+    off = share - np.interp(grid_s, time_s, np.interp(time_s, grid_s, share))
+    inside = np.searchsorted(grid_s, time_s[:-1])
+    inside = np.unique(inside[inside < len(share)])
+    lasts = np.diff(inside, append=len(share))
+    furthest = []
+    for side in (off, -off):
+        most = np.maximum.reduceat(side, inside)
+        at = np.flatnonzero(side == np.repeat(most, lasts))
+        at = at[np.unique(np.repeat(np.arange(len(inside)), lasts)[at], return_index=True)[1]]
+        furthest.append(grid_s[at[most > NOTED * played.slack[series, at]]])
+    return np.union1d(time_s, np.concatenate(furthest))
 
 
 def _and_watch(watched: list[Array], played: Played) -> list[Array]:

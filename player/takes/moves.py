@@ -7,10 +7,10 @@ from numpy.typing import NDArray
 
 from composer.shapes import NAMES
 from player.takes.fits import fitting, progress_at
-from player.takes.places import LEVELS, Places
+from player.takes.places import LEVELS, ROOM, Places
 from player.takes.played import Array, Index, Played
-from player.takes.sudden import SUDDEN, Sudden, suddens
-from player.takes.watch import MIDDLES, ROOM, Watch
+from player.takes.sudden import GLANCED, SUDDEN, Sudden, suddens
+from player.takes.watch import MIDDLES, Watch
 
 SHAPES = ("linear", "smooth", "swell", "settle")
 """Shapes that are weighed everywhere; a linear move between equal targets is a hold."""
@@ -23,9 +23,6 @@ EARLY = np.array([0.2, 0.4, 0.6, 0.8])
 
 ROUGH = 1.3
 """Slacks by which a move may be off that only about fits: a better place or target nearby may mend so much."""
-
-BLOCK = 1 << 17
-"""Values worked out at once."""
 
 FLAT = 2.0
 """Slacks: over so short a way every shape is as good as a straight line."""
@@ -55,7 +52,7 @@ def moves_of(played: Played, places: Places, pairs: Likely, watched: list[Array]
     watched: for each series the instants between which it is about straight, rising
     """
     sources, targets, shapes = pairs
-    watch = Watch(places, watched)
+    watch = Watch(played, places, watched)
     lots, rungs = [], played.rungs()
     for shape in SHAPES:
         mine = shapes == NAMES.index(shape)
@@ -65,27 +62,17 @@ def moves_of(played: Played, places: Places, pairs: Likely, watched: list[Array]
     return Moves(*(np.concatenate([lot[part] for lot in lots]) for part in range(4)))
 
 
-def roughly(played: Played, places: Places, pairs: Likely) -> Moves:
-    """Those of some moves that would about fit if they went from what was played to what was played; targets do not count."""
-    sources, targets, shapes = pairs
-    good = np.zeros(len(sources), dtype=bool)
-    for shape in SHAPES:
-        mine = np.flatnonzero(shapes == NAMES.index(shape))
-        gone = progress_at(shape, MIDDLES)
-        for begin in range(0, len(mine), BLOCK // len(MIDDLES)):
-            part = mine[begin : begin + BLOCK // len(MIDDLES)]
-            source, target = sources[part], targets[part]
-            begins, lasts = places.time_s[source], places.time_s[target] - places.time_s[source]
-            met = played.at(played.share, places.series[source], begins + MIDDLES[:, None] * lasts)
-            curve = places.share[source] + (places.share[target] - places.share[source]) * gone[:, None]
-            room = ROUGH * np.minimum(places.slack[source], places.slack[target])
-            good[part] = np.all(np.abs(curve - met) <= room, axis=0)
+def roughly(played: Played, places: Places) -> Moves:
+    """The moves that would about fit if they went from what was played to what was played; targets do not count."""
+    sources, targets, shapes = _glanced(played, places, None, MIDDLES, ROUGH)
+    good = np.ones(len(sources), dtype=bool)
     for series in np.unique(places.series[sources[shapes == SUDDEN]]):
         mine = np.flatnonzero((shapes == SUDDEN) & (places.series[sources] == series))
         for up in (True, False):
             part = mine[(places.share[targets[mine]] > places.share[sources[mine]]) == up]
             if len(part):
-                way = Sudden(played, places, played.clocks[series], sources[part], targets[part], up)
+                clock = played.clocks[series]
+                way = Sudden(played, places, clock, sources[part], targets[part], up, going=GLANCED)
                 good[part] = np.all(np.abs(way.curve(way.b)(way.a) - way.met) <= ROUGH / ROOM * way.slack, axis=1)
     masks = np.zeros((int(good.sum()), LEVELS), dtype=np.uint8)
     masks[:, 0] = 1
@@ -103,6 +90,11 @@ class Only:
 
 def likely(played: Played, places: Places, only: Only | None = None) -> Likely:
     """The moves that pass a glance. All that fit are among them, but for bent ones that hardly differ from straight ones."""
+    return _glanced(played, places, only, EARLY, 2.0)
+
+
+def _glanced(played: Played, places: Places, only: Only | None, at: Array, slacks: float) -> Likely:
+    """The moves that are off by no more than so many slacks at shares `at` of their time, from what was played to it."""
     count = len(places.place)
     share, slack = places.share, places.slack
     alive = np.arange(count)
@@ -111,7 +103,7 @@ def likely(played: Played, places: Places, only: Only | None = None) -> Likely:
     ends = places.first[places.series + 1] if only is None else only.until + 1
     sudden = _arrives_fast(played, places)
     found: list[tuple[Index, Index, int]] = []
-    early = {shape: progress_at(shape, EARLY) for shape in SHAPES}
+    gone = {shape: progress_at(shape, at) for shape in SHAPES}
     for apart in range(1, FURTHEST + 1):
         inside = alive + apart < ends[alive]
         alive, low, high, fall, rise = (part[inside] for part in (alive, low, high, fall, rise))
@@ -132,13 +124,14 @@ def likely(played: Played, places: Places, only: Only | None = None) -> Likely:
             wanted = (only.fresh[alive] | only.fresh[there]) & (only.stage[alive] != only.stage[there])
             source, there = alive[wanted], there[wanted]
         begin, lasts = places.time_s[source], places.time_s[there] - places.time_s[source]
-        met = played.at(played.share, places.series[source], begin + EARLY[:, None] * lasts)
-        room = 2.0 * played.slack_at(places.series[source], begin + EARLY[:, None] * lasts)
+        when = begin + at[:, None] * lasts
+        met = played.at(played.share, places.series[source], when)
+        room = slacks * played.slack_at(places.series[source], when)
         way = share[there] - share[source]
         straight = np.abs(way) <= FLAT * slack[there]
         met -= share[source]
         for shape in SHAPES:
-            fits = np.all(np.abs(met - way * early[shape][:, None]) <= room, axis=0)
+            fits = np.all(np.abs(met - way * gone[shape][:, None]) <= room, axis=0)
             if shape != "linear":
                 fits &= ~straight
             found.append((source[fits], there[fits], NAMES.index(shape)))

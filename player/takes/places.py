@@ -24,6 +24,9 @@ FURTHEST_S = 1.0
 CORNER = 0.5
 """A share of the slack: straight lines between neighbouring places stay so close to what was played."""
 
+ROOM = 0.97
+"""Of the slack: what lies between the instants looked at may be worse than they are by the rest."""
+
 LEVELS = 5
 """Targets that are weighed at each place, at most."""
 
@@ -90,8 +93,8 @@ def places_of(played: Played, tempo: TempoMap, closeness: float, only: list[Inde
     slack = played.at(played.slack, series, time)
     grain = round_number(0.5 * slack / fine)
     tiny = 1e-9
-    low = np.ceil(np.maximum(share - slack, 0.0) / grain - tiny)
-    high = np.floor(np.minimum(share + slack, 1.0) / grain + tiny)
+    low = np.ceil(np.maximum(share - ROOM * slack, 0.0) / grain - tiny)
+    high = np.floor(np.minimum(share + ROOM * slack, 1.0) / grain + tiny)
     # Of too many targets those in the middle.
     low = np.where(high - low >= LEVELS, np.clip(np.rint(share / grain) - LEVELS // 2, low, high - LEVELS + 1), low)
     many = np.clip(high - low + 1, 0, LEVELS)

@@ -51,6 +51,7 @@ class Search:
         self._windows: list[tuple[Index, Index]] = []
         self._close: dict[tuple[int, float], Index] = {}
         self._known: tuple[Places, Moves] | None = None
+        self._was_left = self._left
 
     def keep(self, pins: list[tuple[Path, np.ndarray]], windows: list[tuple[Index, Index]]) -> None:
         """Search within windows alone, from their first places to their last (UNITs), rising, for each series.
@@ -62,7 +63,8 @@ class Search:
     def run(self) -> list[Path]:
         """The paths, each of the fewest moves over the places that were tried in the end. Raises Unfitted."""
         paths: list[Path | None] = [None] * len(self.tried)
-        for repair in range(ALL):
+        repair = 0
+        while repair < ALL:
             places, moves = self._weighed(repair)
             found, breaks = fewest(places, moves)
             for k, path in zip(self._left, found, strict=True):
@@ -71,6 +73,10 @@ class Search:
                 return paths
             self._known = places, moves
             self._repair(places, breaks, repair)
+            repair += 1
+            if self._pins is not None and repair == REPAIRS:
+                # What stays as it was leaves no way through: the whole of these series is searched.
+                self._pins, self._known, repair = None, None, 0
         raise Unfitted(f"no moves lead through series {self._left}")
 
     def _weighed(self, repair: int) -> tuple[Places, Moves]:
@@ -88,7 +94,7 @@ class Search:
             kept.append(pinned)
         if self.stages is not None and not repair:
             stage = np.concatenate([_nearest(of_series(places, n), self.stages[k]) for n, k in enumerate(left)])
-        if self._known is not None and fine == 1.0:
+        if self._known is not None and fine == 1.0 and (self.stages is None or repair > 1):
             known, fresh = self._carried(places)
             kept.append(known)
         fits = moves_of(some, places, likely(some, places, Only(until, stage, fresh)), [self.watched[k] for k in left])
@@ -106,7 +112,11 @@ class Search:
                 until[a:b] = b
             at = first + np.searchsorted(mine, path.place)
             pins = at[stays]
-            places.many[pins], places.grain[pins], places.lowest[pins] = 1, np.maximum(path.share[stays], 1e-9), path.share[stays] > 0.0
+            places.many[pins], places.grain[pins], places.lowest[pins] = (
+                1,
+                np.maximum(path.share[stays], 1e-9),
+                path.share[stays] > 0.0,
+            )
             same = stays[:-1] & stays[1:] & (until[at[:-1]] == at[:-1])
             lots.append(Moves(at[:-1][same], at[1:][same], path.shape[same], _first_to_first(int(same.sum()))))
         return until, _together(lots)

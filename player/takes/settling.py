@@ -15,7 +15,7 @@ from composer.rig.model import Rig
 from composer.score.tempo import TempoMap
 from composer.tracks import Tracks
 from player.takes.fewest import Path
-from player.takes.fitting import fit, mended
+from player.takes.fitting import Fitting
 from player.takes.played import Array, Index, Played
 from player.takes.voices import Voice, leader_of, played_of, tracks_of, voices_of
 
@@ -153,7 +153,8 @@ class _Settling:
 
     def run(self) -> Settled:
         """The curves, once all is well or nothing more can be done."""
-        paths = fit(self.played, self.tempo)
+        fitting = Fitting(self.played, self.tempo)
+        paths = fitting.fit()
         best: tuple[tuple[int, int], Settled] | None = None
         for self.round in range(ROUNDS):
             settled, off = self._seen(paths)
@@ -167,7 +168,7 @@ class _Settling:
                 break
             again = sorted(where)
             instants = [np.concatenate(where[number]) for number in again]
-            fresh = mended(self.played.part(again), self.tempo, [paths[number] for number in again], instants)
+            fresh = fitting.again(self.played, again, [paths[number] for number in again], instants)
             paths = list(paths)
             for number, path in zip(again, fresh, strict=True):
                 paths[number] = path

@@ -7,14 +7,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.shapes import NAMES
-from player.takes.places import LEVELS, Places
+from player.takes.places import LEVELS, ROOM, Places
 from player.takes.played import Array, Clock, Index, Played
-from player.takes.watch import MIDDLES, ROOM, Watch
+from player.takes.watch import MIDDLES, Watch
 
 SUDDEN = NAMES.index("sudden")
 
-GOING = 32
-"""Instants of a sudden move while it goes."""
+GOING, GLANCED = 32, 6
+"""Instants of a sudden move while it goes, and at a glance."""
 
 AT_ONCE = 1024
 """Sudden moves worked out at once."""
@@ -29,7 +29,7 @@ def suddens(played: Played, places: Places, source: Index, target: Index, watch:
         for begin in range(0, len(mine), AT_ONCE):
             part = mine[begin : begin + AT_ONCE]
             clock = played.clocks[series]
-            way = Sudden(played, places, clock, source[part], target[part], up)
+            way = Sudden(played, places, clock, source[part], target[part], up, going=GLANCED)
             # First with the values that were played, twice the slack being allowed.
             near = np.all(np.abs(way.curve(way.b)(way.a) - way.met) <= 2.0 * way.slack, axis=1)
             if near.any():
@@ -45,17 +45,18 @@ class Sudden:
 
     def __init__(
         self, played: Played, places: Places, clock: Clock, source: Index, target: Index, up: bool,
-        watch: Watch | None = None,
+        watch: Watch | None = None, going: int = GOING,
     ):  # fmt: skip
         self.clock_s, self.share, self.up = (clock.up_s if up else clock.down_s), clock.share, up
         self.source, self.target, series = source, target, places.series[source]
         self.a, self.b = places.share[source], places.share[target]
         self.lasts = places.time_s[target] - places.time_s[source]
         self.rest = played.rest_s[series]
-        going = np.minimum(1.3 * self.takes(self.a, self.b) + 0.01, self.lasts)[:, None] * (np.arange(GOING) + 0.5) / GOING
+        going = np.minimum(1.3 * self.takes(self.a, self.b) + 0.01, self.lasts)[:, None] * (np.arange(going) + 0.5) / going
         whole = self.lasts[:, None] * MIDDLES
         if watch is not None:
-            watched = watch.watched(source, target, int(watch.points(source, target).max()))
+            watched, _, _ = watch.watched(source, target, int(watch.points(source, target).max()))
+            watched = np.clip(watched, places.time_s[source], places.time_s[target])
             whole = np.concatenate([whole, (places.time_s[target] - watched).T], axis=1)
         self.left = np.concatenate([going, whole], axis=1)
         when = places.time_s[target][:, None] - self.left
