@@ -118,6 +118,13 @@ def left_behind(paths: Iterable[str] = ()) -> list[tuple[str, Recovered]]:
     return found
 
 
+def copy(source: str, target: str) -> None:
+    """Copy a file of text to where there is none. Raises Faults."""
+    data = read_bytes(source, most("file"))
+    with replacing(target, "wb") as file:
+        file.write(data)
+
+
 def remove(path: str) -> None:
     """Remove a file if it is there."""
     with suppress(OSError):
@@ -130,16 +137,25 @@ class Keeping:
     def __init__(self, path: str, of: str, saved: str, text: str):
         """Write the whole text into a new file that takes the place of one that is there. Raises OSError."""
         self.path = path
-        self._new = f"{path}.new"
+        self._new = f"{path}.{os.urandom(4).hex()}.new"
         self._handle = os.open(self._new, os.O_WRONLY | os.O_CREAT | os.O_TRUNC | getattr(os, "O_BINARY", 0), 0o600)
         self._dirty = True
         try:
             for line in recovery.begin(of, saved, text):
                 self._write(line)
         except OSError:
-            self.close()
-            remove(self._new)
+            self.drop()
             raise
+
+    @property
+    def dirty(self) -> bool:
+        """Whether something was written that may not have reached the disk itself."""
+        return self._dirty
+
+    def drop(self) -> None:
+        """Let go of a file that has not taken its place, and remove it."""
+        self.close()
+        remove(self._new)
 
     def take_place(self) -> None:
         """From now on this is the file of recovery. Raises OSError."""

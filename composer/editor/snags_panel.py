@@ -236,9 +236,5 @@ class SnagsPanel(QWidget):
 
 
 def _same(row: Row, other: Row) -> bool:
-    return (row.kind, row.line, row.phrase_line, row.fibers) == (
-        other.kind,
-        other.line,
-        other.phrase_line,
-        other.fibers,
-    ) and abs(row.from_s - other.from_s) < 0.5
+    like = all(getattr(row, name) == getattr(other, name) for name in ("kind", "line", "phrase_line", "fibers"))
+    return like and abs(row.from_s - other.from_s) < 0.5
