@@ -41,6 +41,16 @@ class Worker(QObject):
         """How many times it was started."""
         return self._number
 
+    @property
+    def runs(self) -> bool:
+        """Whether there is a process."""
+        return self._process is not None
+
+    @property
+    def process_id(self) -> int:
+        """The process's id, 0 for none."""
+        return self._process.pid if self._process is not None else 0
+
     def start(self) -> None:
         """Start the process, in place of one that runs."""
         self.stop()

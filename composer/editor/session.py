@@ -5,19 +5,34 @@ from collections.abc import Callable
 
 from PySide6.QtCore import QObject, QTimer, Signal
 
-from composer.editor import disk, recovery
+from composer.editor import disk, recovering, recovery
 from composer.editor.background import Later
 from composer.editor.deltas import Delta, between
 from composer.editor.keeper import Keeper
 from composer.editor.messages import FileStamp
 from composer.editor.notices import Notices
 from composer.editor.pane import TextPane
+from composer.editor.recovering import sentence
 from composer.faults import Faults, say
 
 LOOK_MS = 1000
 """How often files are looked at for what others have written."""
 
-NEW = 'title   "Untitled"\nrig     \n\nmeter   4/4\ntempo   60\n\nphrase lift 4\n  2      full\n  4      rest\n\nsection one at 1:1\n  \n'
+NEW = """title   "Untitled"
+rig
+
+meter   4/4
+tempo   60
+
+phrase lift 4
+  2      full
+  4      rest
+
+section one at 1:1
+  all         lift
+"""
+"""What a new score begins with."""
+
 UNNAMED = "untitled.score"
 
 
@@ -103,7 +118,7 @@ class Session(QObject):
         for name in ("theirs", "write", "ends", "gone"):
             self._notices.drop(name)
         self._leans_on = ()
-        found = self._put_aside(kept_at, text) if self.path is not None else self._orphans()
+        found = recovering.put_aside(kept_at, text) if self.path is not None else recovering.orphans()
         self._pane.open_text(text)
         self._revision += 1
         if not self.keeper.begin(kept_at, self.base, hash_, text):
@@ -111,72 +126,16 @@ class Session(QObject):
         self.began.emit(self.base, text)
         self.named.emit()
         for at, read in found[:3]:
-            self._offer(at, read)
+            recovering.offer(self, self._notices, self._later, at, read)
 
-    # ---- recovery -------------------------------------------------------------------------------------------------------
-
-    def _put_aside(self, kept_at: str, text: str) -> list[tuple[str, recovery.Recovered]]:
-        """What was left unsaved of this file, moved where nothing overwrites it; what is in the file already is dropped."""
-        folder, name = os.path.split(kept_at)
-        there = _beside(folder, name)
-        kept = []
-        for at, read in disk.left_behind(there) if there else []:
-            if read.text == text:
-                disk.remove(at)
-                continue
-            if at == kept_at:
-                aside = f"{kept_at}.{os.urandom(3).hex()}"
-                try:
-                    os.replace(at, aside)
-                except OSError:
-                    continue
-                at = aside
-            kept.append((at, read))
-        return kept
-
-    def _orphans(self) -> list[tuple[str, recovery.Recovered]]:
-        kept = []
-        for at, read in disk.left_behind():
-            if read.changes == 0 and recovery.hash_of(read.text) == read.saved:
-                disk.remove(at)
-            else:
-                kept.append((at, read))
-        return kept
-
-    def _offer(self, at: str, read: recovery.Recovered) -> None:
-        name = os.path.basename(read.of) if self.path is not None else "a score that had no name"
-        title = next((line for line in read.text.splitlines() if line.startswith("title")), "").partition('"')[2].rstrip('"')
-        what = f"{name} ({title})" if title else name
-        self._notices.say(
-            f"recovered {at}",
-            f"The window ended before {what} was saved. Its text is still there, to the last change.",
-            [
-                ("Take it up", lambda: self._take_up(at, read)),
-                ("Save it beside", lambda: self._save_beside(at, read)),
-                ("Throw it away", lambda: disk.remove(at)),
-            ],
-        )
-
-    def _take_up(self, at: str, read: recovery.Recovered) -> None:
+    def take_up(self, of: str, text: str) -> None:
+        """Go on with a text that was left behind, as one step that undo takes back."""
         if self.path is None:
-            self.base = read.of or self.base
+            self.base = of or self.base
             self._is_demo = os.path.dirname(self.base) == disk.demo()[1]
             self.began.emit(self.base, self._pane.text)
-        self.put_text(read.text)
+        self.put_text(text)
         self.keeper.rewrite()
-        self._later.do(lambda: disk.remove(at))
-
-    def _save_beside(self, at: str, read: recovery.Recovered) -> None:
-        beside = _free(self.path or os.path.join(os.getcwd(), UNNAMED), "recovered")
-
-        def done(_: object, wrong: Exception | None) -> None:
-            if wrong is None:
-                disk.remove(at)
-                self._notices.say("beside", f"It is in {beside}.")
-            else:
-                self._notices.say("beside", _sentence(wrong), kind="fault")
-
-        self._later.do(lambda: disk.write_score(beside, read.text), done)
 
     def put_text(self, text: str) -> None:
         """Put another text in place of the one at hand, as one step that undo takes back."""
@@ -219,7 +178,7 @@ class Session(QObject):
                 self.look()
                 return
             if wrong is not None:
-                self._notices.say("save", f"Not saved; the text is kept. {_sentence(wrong)}", kind="fault")
+                self._notices.say("save", f"Not saved; the text is kept. {sentence(wrong)}", kind="fault")
                 return
             self._notices.drop("save")
             self._notices.drop("gone")
@@ -264,7 +223,7 @@ class Session(QObject):
                 self._notices.say("rig", f"Its rig is beside it now: {target}.")
                 self.leaned_changed.emit()
             else:
-                self._notices.say("rig", _sentence(wrong), kind="fault")
+                self._notices.say("rig", sentence(wrong), kind="fault")
 
         if self._is_demo:
             copy()
@@ -317,7 +276,7 @@ class Session(QObject):
             elif isinstance(theirs, Faults):
                 self._stamp = disk.stamp_of(path) if path else None
                 self._notices.say(
-                    "theirs", f"{self.name} was written by another program, and cannot be read: {_sentence(theirs)}"
+                    "theirs", f"{self.name} was written by another program, and cannot be read: {sentence(theirs)}"
                 )
 
         self._later.do(job, done)
@@ -337,12 +296,12 @@ class Session(QObject):
             self.keeper.saved(recovery.hash_of(theirs.text))
 
         def keep() -> None:
-            beside = _free(self.path or UNNAMED, "theirs")
+            beside = recovering.free_beside(self.path or UNNAMED, "theirs")
             self._later.do(lambda: disk.write_score(beside, theirs.text), told_beside(beside))
 
         def told_beside(beside: str) -> Callable[[object, Exception | None], None]:
             def told(_: object, wrong: Exception | None) -> None:
-                says = f"Theirs is kept in {beside}." if wrong is None else _sentence(wrong)
+                says = f"Theirs is kept in {beside}." if wrong is None else sentence(wrong)
                 self._notices.say("beside", says, kind="notice" if wrong is None else "fault")
 
             return told
@@ -369,31 +328,9 @@ def _differs(one: FileStamp) -> bool:
     return (now.changed_ns, now.size) != (one.changed_ns, one.size) if now is not None else one.changed_ns != 0
 
 
-def _beside(folder: str, name: str) -> list[str]:
-    """The files of recovery of a score, the one in use and those put aside."""
-    try:
-        there = os.listdir(folder or ".")
-    except OSError:
-        return []
-    return [os.path.join(folder, each) for each in sorted(there) if each.startswith(name) and not each.endswith(".new")]
-
-
-def _free(path: str, word: str) -> str:
-    """A name beside a score's that no file has yet."""
-    stem = path[: -len(".score")] if path.lower().endswith(".score") else path
-    number = 1
-    while os.path.exists(name := f"{stem}.{word}{'' if number == 1 else f'-{number}'}.score"):
-        number += 1
-    return name
-
-
 def _rig_in(text: str) -> str:
     for line in text.splitlines():
         words = line.split("#")[0].split()
         if len(words) == 2 and words[0] == "rig":
             return words[1].strip('"')
     return ""
-
-
-def _sentence(wrong: Exception) -> str:
-    return say(wrong.faults[0]) if isinstance(wrong, Faults) else f"{type(wrong).__name__}: {wrong}"
