@@ -139,7 +139,7 @@ def _ranked(offers: list[_Bare], typed: str) -> list[_Bare]:
             rank = 1.0
         elif re.search(r"(?<=[.\-_])" + re.escape(wanted), name):
             rank = 2.0
-        elif wanted in name:
+        elif wanted in name and len(wanted) > 1:
             rank = 3.0
         elif len(offers) <= MOST_COMPARED and (like := SequenceMatcher(None, wanted, name).ratio()) >= NEAR:
             rank = 5.0 - like
@@ -179,20 +179,22 @@ def _fibers(place: _Place, _: str) -> Iterator[_Bare]:
     count = {name: len(fibers) for name, fibers in made.rig.groups.items()}
     for name, fibers in count.items():
         yield name, f"group of the rig, {fibers} fiber{'' if fibers == 1 else 's'}", "fiber", ""
-    stems: dict[str, list[int]] = {}
+    stems: dict[str, list[str]] = {}
     for fiber in made.rig.fibers:
-        stem, _, number = fiber.name.rpartition(".")
-        if stem and number.isdecimal():
-            stems.setdefault(stem, []).append(int(number))
-    typed = re.fullmatch(r"(.*\.)([0-9]+)-[0-9]*", place.typed)
-    for stem, numbers in stems.items():
-        low, high = min(numbers), max(numbers)
+        stem, _, last = fiber.name.rpartition(".")
+        if stem:
+            stems.setdefault(stem, []).append(last)
+    typed = re.fullmatch(r"(.*\.)([0-9]{1,9})-[0-9]*", place.typed)
+    for stem, ends in stems.items():
+        numbers = sorted(int(end) for end in ends if end.isdecimal())
+        low, high = (numbers[0], numbers[-1]) if numbers else (0, 0)
         if len(numbers) > 1 and high - low + 1 == len(numbers):
             yield f"{stem}.{low}-{high}", f"a range, {len(numbers)} fibers", "fiber", ""
             if typed and typed[1] == f"{stem}." and low <= int(typed[2]) < high:
                 first = int(typed[2])
                 yield f"{stem}.{first}-{high}", f"a range, {high - first + 1} fibers", "fiber", ""
-        yield f"{stem}.*", f"every fiber whose name begins with {stem}.", "fiber", ""
+        if len(ends) > 1:
+            yield f"{stem}.*", f"every fiber whose name begins with {stem}.", "fiber", ""
     for fiber in made.rig.fibers:
         yield fiber.name, f"a fiber of type {fiber.type.name}, channel {fiber.channel} of {fiber.driver}", "fiber", ""
 
@@ -224,6 +226,8 @@ def _places(place: _Place, _: str) -> Iterator[_Bare]:
     if begins is not None:
         places.sort(key=lambda one: abs((_bar(one[0]) or 0) - begins))
     for where, what in places:
+        if here and what == f"section {here[-1].name}":
+            continue  # where the entry starts anyway
         yield where, what, "place", what.partition(" ")[2].strip('"')
     if place.typed.isdecimal():
         yield f"{place.typed}:1", f"bar {place.typed}, its first count", "place", ""
