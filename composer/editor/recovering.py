@@ -1,4 +1,4 @@
-"""Texts that a window left behind when it ended by itself: found at the next start, and offered without waiting for an answer."""
+"""Texts that a window left behind when it ended by itself: found at the next start, and offered while work goes on."""
 
 import os
 from typing import TYPE_CHECKING
