@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from composer.fiber.mounting import Supply
 from composer.limits.abilities import Abilities
 from composer.limits.buckets import level, overdraws
-from composer.limits.fills import Fills, air_at, drawn, fills_of, sudden_strain
+from composer.limits.fills import Fills, air_at, drawn_together, fills_of, sudden_strain
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.quivering import shaken
 from composer.limits.snag import Snag
@@ -41,6 +41,8 @@ CHORD = 0.72
 
 GRID, ROUNDS = 33, 7
 """Points and rounds of closing in on an instant: each round narrows the window sixteen times."""
+
+POINTS = np.linspace(0.0, 1.0, GRID)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -86,7 +88,7 @@ def demand(tracks: Tracks, abilities: Abilities, fills: Fills | None = None) -> 
     if not count:
         return Demand(np.zeros(1), np.zeros(1), 0.0)
     pieces = np.full(count, max(FEWEST, min(PIECES, BUDGET // count)))
-    straight = (tracks.shape[fills.segment] == NAMES.index("linear")) & _even(abilities)[abilities.which[fills.fiber]]
+    straight = (tracks.shape[fills.segment] == NAMES.index("linear")) & even(abilities)[abilities.which[fills.fiber]]
     if (moves := shaken(tracks)) is not None:
         straight &= ~np.isin(fills.segment, moves.segment)
     pieces[straight | fills.at_once] = 1
@@ -94,7 +96,7 @@ def demand(tracks: Tracks, abilities: Abilities, fills: Fills | None = None) -> 
     number = np.arange(len(fill)) - np.repeat(np.cumsum(pieces + 1) - pieces - 1, pieces + 1)
     share = number / pieces[fill]
     time = fills.from_s[fill] + share * (fills.to_s[fill] - fills.from_s[fill])
-    gone = _at_shares(tracks, abilities, fills, fill, share)
+    gone = litres_at_shares(tracks, abilities, fills, fill, share)
     last = number == pieces[fill]
     flow = np.zeros(len(fill))
     inner = np.flatnonzero(~last)
@@ -108,7 +110,7 @@ def demand(tracks: Tracks, abilities: Abilities, fills: Fills | None = None) -> 
     return Demand(time, litres, _strays(fills, pieces))
 
 
-def _at_shares(tracks: Tracks, abilities: Abilities, fills: Fills, fill: Index, share: Array) -> Array:
+def litres_at_shares(tracks: Tracks, abilities: Abilities, fills: Fills, fill: Index, share: Array) -> Array:
     """Litres drawn by fills after shares of their time, (N,) each."""
     segment, fiber = fills.segment[fill], fills.fiber[fill]
     u = fills.u_from[fill] + share * (fills.u_to[fill] - fills.u_from[fill])
@@ -121,7 +123,7 @@ def _at_shares(tracks: Tracks, abilities: Abilities, fills: Fills, fill: Index, 
     return air_at(abilities, fiber, strain) - start[fill]
 
 
-def _even(abilities: Abilities) -> NDArray[np.bool_]:
+def even(abilities: Abilities) -> NDArray[np.bool_]:
     """(A,) whether a capability draws the same for every step of strain."""
     each = np.diff(abilities.air_L, axis=1) / np.diff(abilities.strain, axis=1)
     return np.ptp(each, axis=1) <= 1e-9 * np.abs(each).max(axis=1)
@@ -169,35 +171,42 @@ class _Exact:
     def deepen(self, from_s: float, to_s: float) -> tuple[float, float, float]:
         """A span near this one that is the deepest there: from, to, and the litres missing at its end."""
         # Demand less refill falls on and on where nothing is drawn: the end lies after the start, and the start before it.
-        end, highest = self._extreme(to_s, 1.0, from_s, np.inf)
-        start, lowest = self._extreme(from_s, -1.0, 0.0, end)
+        (start, end), (lowest, highest) = self._extremes([from_s, to_s], [-1.0, 1.0], [0.0, from_s], [to_s, np.inf])
+        if start > end:
+            (start,), (lowest,) = self._extremes([from_s], [-1.0], [0.0], [end])
         return (start, end, highest - lowest) if end > start else (from_s, from_s, 0.0)
 
-    def _extreme(self, near_s: float, sign: float, from_s: float, to_s: float) -> tuple[float, float]:
-        """Where, about `near_s` and within bounds, demand less refill is least (sign -1) or greatest (1), and what it is."""
+    def _extremes(
+        self, near: list[float], sign: list[float], at_least: list[float], at_most: list[float]
+    ) -> tuple[Array, Array]:
+        """Where, about some instants and within bounds, demand less refill is least (sign -1) or greatest (1), and it."""
+        near_s, way, from_s, to_s = (np.array(values)[:, None] for values in (near, sign, at_least, at_most))
         fills = self.fills
         under_way = (fills.from_s <= near_s) & (fills.to_s >= near_s)
-        width = (fills.to_s - fills.from_s)[under_way].max(initial=0.0) / FEWEST
-        low, high = max(near_s - width, from_s), min(near_s + width, to_s)
-        best_s, best = near_s, self._short(np.array([near_s]))[0]
-        for _ in range(ROUNDS if width > 0.0 else 0):
-            grid = np.linspace(low, high, GRID)
-            short = self._short(grid)
-            at = int((sign * short).argmax())
-            if sign * short[at] > sign * best:
-                best_s, best = float(grid[at]), short[at]
-            step = grid[1] - grid[0]
-            low, high = max(best_s - step, from_s), min(best_s + step, to_s)
-        return float(best_s), float(best)
+        width = np.where(under_way, fills.to_s - fills.from_s, 0.0).max(axis=1, initial=0.0)[:, None] / FEWEST
+        low, high = np.maximum(near_s - width, from_s), np.minimum(near_s + width, to_s)
+        under_way = np.flatnonzero(np.any((fills.to_s > low) & (fills.from_s < high), axis=0))
+        drawn = drawn_together(self.tracks, self.abilities, fills, under_way)
+        mine = np.sort(fills.to_s[under_way])
+        ended = np.concatenate([[0.0], np.cumsum(fills.litres[under_way][np.argsort(fills.to_s[under_way], kind="stable")])])
 
-    def _short(self, time_s: Array) -> Array:
-        """Demand less refill since the start, at some instants close to one another, (N,)."""
-        fills, first, last = self.fills, time_s[0], time_s[-1]
-        done = np.searchsorted(self.ends, first, side="right")
-        here = np.flatnonzero((fills.to_s > first) & (fills.from_s < last))
-        which = np.repeat(here, len(time_s))
-        each = drawn(self.tracks, self.abilities, fills, which, np.tile(time_s, len(here)))
-        return self.total[done] + each.reshape(len(here), len(time_s)).sum(axis=0) - self.refill * time_s
+        def short_at(time_s: Array) -> Array:
+            at = time_s.ravel()
+            # Of the fills that have ended those under way are told by their curves.
+            others = self.total[np.searchsorted(self.ends, at, "right")] - ended[np.searchsorted(mine, at, "right")]
+            return (others + drawn(at) - self.refill * at).reshape(time_s.shape)
+
+        best_s, best = near_s, short_at(near_s)
+        for _ in range(ROUNDS if width.any() else 0):
+            grid = low + (high - low) * POINTS
+            short = short_at(grid)
+            at = (way * short).argmax(axis=1)[:, None]
+            found = np.take_along_axis(short, at, 1)
+            better = way * found > way * best
+            best_s, best = np.where(better, np.take_along_axis(grid, at, 1), best_s), np.where(better, found, best)
+            step = grid[:, 1:2] - grid[:, :1]
+            low, high = np.maximum(best_s - step, from_s), np.minimum(best_s + step, to_s)
+        return best_s[:, 0], best[:, 0]
 
 
 def blame(tracks: Tracks, fills: Fills, from_s: float, to_s: float) -> int:

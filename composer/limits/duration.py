@@ -155,3 +155,8 @@ def strain_range(curve: Array, shape: NDArray[np.int8]) -> tuple[Array, Array]:
     if len(own):
         low[own], high[own] = extremes(curve[own])
     return low, high
+
+
+def one_way(tracks: Tracks) -> NDArray[np.bool_]:
+    """(K,) the segments whose curve never turns back: of a named shape, or no move. A sum, a cut or an own curve may."""
+    return (tracks.manner != MOVE) | ((tracks.shape >= 0) & ~np.isnan(_named(PEAK_SPEED, tracks.shape)))

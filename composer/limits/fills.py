@@ -1,13 +1,14 @@
 """What fibers draw from the supply: one fill for each stretch in which a fiber's strain rises, in litres of free air."""
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.limits.duration import PEAK_SPEED, STEP_S
-from composer.limits.polynomials import derivative, where_positive
+from composer.limits.duration import STEP_S, one_way
+from composer.limits.polynomials import derivative, value, where_positive
 from composer.limits.quivering import Shaken, shaken
 from composer.limits.swings import climb_of, strain_of, stretches
 from composer.limits.tables import cells, strain_after, tables_of, travel_time_s
@@ -42,18 +43,16 @@ def air_at(abilities: Abilities, fiber: Index, strain: Array) -> Array:
     first = abilities.which[fiber] * tables.points
     points, litres = tables.fill.strain, abilities.air_L.ravel()
     at = cells(abilities, fiber, strain)
-    held = np.clip(strain, points[first], points[first + tables.points - 1])
+    held = np.minimum(np.maximum(strain, points[first]), points[first + tables.points - 1])
     return litres[at] + (litres[at + 1] - litres[at]) * (held - points[at]) / (points[at + 1] - points[at])
 
 
 def fills_of(tracks: Tracks, abilities: Abilities) -> Fills:
     """All fills of the tracks. Exhausting draws nothing, and what a fiber lets out is not given back."""
     rise = tracks.curve[:, 1:].sum(axis=1)
-    # A named shape never turns back; a sum, a cut or a line's own curve may.
-    one_way = (tracks.shape >= 0) & ~np.isnan(PEAK_SPEED[np.maximum(tracks.shape, 0)])
-    one_way |= (tracks.manner == SUDDEN) | (tracks.manner == STEP)
-    whole = np.flatnonzero((tracks.manner != HOLD) & one_way & (rise > 0.0))
-    own = np.flatnonzero((tracks.manner == MOVE) & ~one_way)
+    straight_on = one_way(tracks)
+    whole = np.flatnonzero((tracks.manner != HOLD) & straight_on & (rise > 0.0))
+    own = np.flatnonzero((tracks.manner == MOVE) & ~straight_on)
     moves = shaken(tracks)
     quivers, up_from, up_to = (own[:0], np.empty(0), np.empty(0)) if moves is None else _upstrokes(tracks, moves)
     if moves is not None:
@@ -80,6 +79,30 @@ def _upstrokes(tracks: Tracks, moves: Shaken) -> tuple[Index, Array, Array]:
     row = np.arange(len(moves.segment))
     which, start, end = stretches(tracks, moves, row, lambda one, u: climb_of(tracks, moves.segment[one], u))
     return moves.segment[which], start, end
+
+
+def drawn_together(tracks: Tracks, abilities: Abilities, fills: Fills, which: Index) -> Callable[[Array], Array]:
+    """What some fills, (M,), draw together from their start up to some instants: of instants, (N,), litres, (N,).
+
+    Each is worked out at every instant; what does not change from one call to the next is gathered once.
+    """
+    manner = tracks.manner[fills.segment[which]]
+    if len(tracks.quivers) or np.any(fills.at_once[which] | (manner == SUDDEN)):
+        return lambda time_s: (
+            drawn(tracks, abilities, fills, np.repeat(which, len(time_s)), np.tile(time_s, len(which)))
+            .reshape(len(which), len(time_s))
+            .sum(axis=0)
+        )
+    fiber, curve = fills.fiber[which][:, None], tracks.curve[fills.segment[which]]
+    from_s, lasts = fills.from_s[which][:, None], (fills.to_s - fills.from_s)[which][:, None]
+    u_from, rise = fills.u_from[which][:, None], (fills.u_to - fills.u_from)[which][:, None]
+    before = air_at(abilities, fiber, value(curve, u_from)).sum()
+
+    def litres(time_s: Array) -> Array:
+        share = np.minimum(np.maximum((time_s - from_s) / lasts, 0.0), 1.0)
+        return air_at(abilities, fiber, value(curve, u_from + share * rise)).sum(axis=0) - before
+
+    return litres
 
 
 def drawn(tracks: Tracks, abilities: Abilities, fills: Fills, which: Index, time_s: Array) -> Array:

@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
+from composer.limits.duration import one_way
 from composer.limits.polynomials import where_positive
 from composer.limits.quivering import Shaken, shaken
 from composer.limits.swings import strain_of, stretches
@@ -30,7 +31,7 @@ def past(tracks: Tracks, abilities: Abilities, segments: Index, level: Array, ab
     sign = 1.0 if above else -1.0
     curve = sign * tracks.curve[segments]
     curve[:, 0] -= sign * level
-    row, start, end = where_positive(curve)
+    row, start, end = where_positive(curve, one_way(tracks)[segments])
     return row, time_share(tracks, abilities, segments[row], start), time_share(tracks, abilities, segments[row], end)
 
 

@@ -108,9 +108,22 @@ def search(curve: Array, low: Array, high: Array, at_low: Array) -> Array:
     return found
 
 
-def where_positive(curve: Array) -> tuple[NDArray[np.int64], Array, Array]:
-    """The stretches of u on which each row is above 0: rows, u from, u to, (P,) each, in order of row and then of u."""
-    cuts = np.column_stack([np.zeros(len(curve)), roots(curve), np.ones(len(curve))])
+def where_positive(curve: Array, one_way: NDArray[np.bool_] | None = None) -> tuple[NDArray[np.int64], Array, Array]:
+    """The stretches of u on which each row is above 0: rows, u from, u to, (P,) each, in order of row and then of u.
+
+    one_way: (K,) rows known to rise throughout, or to fall: they have one root at most, and no turn need be looked for.
+    """
+    if one_way is None or not one_way.any():
+        cuts = roots(curve)
+    else:
+        cuts = np.full((len(curve), max(curve.shape[1] - 1, 1)), np.nan)
+        mine, others = np.flatnonzero(one_way), np.flatnonzero(~one_way)
+        cuts[others, : curve.shape[1] - 1] = roots(curve[others])
+        begin, end = curve[mine, 0], curve[mine].sum(axis=1)
+        crossing = np.flatnonzero((begin > 0.0) != (end > 0.0))
+        at = mine[crossing]
+        cuts[at, 0] = search(curve[at], np.zeros(len(at)), np.ones(len(at)), begin[crossing])
+    cuts = np.column_stack([np.zeros(len(curve)), cuts, np.ones(len(curve))])
     cuts = np.where(np.isnan(cuts), 1.0, cuts)
     middles = value(curve, 0.5 * (cuts[:, :-1] + cuts[:, 1:]))
     row, stretch = np.nonzero((middles > 0.0) & (cuts[:, 1:] > cuts[:, :-1]))

@@ -100,8 +100,8 @@ def _exp_ratio(x: Array) -> Array:
 def _cell(keys: Array, points: int, capability: Index, share: Array) -> Index:
     """The flat index of the point that begins the cell in which `share` of a capability's table lies."""
     first = capability * points
-    found = np.searchsorted(keys, np.clip(share, 0.0, 1.0) + 2.0 * capability, side="right") - 1
-    return np.clip(found, first, first + points - 2)
+    found = np.searchsorted(keys, np.minimum(np.maximum(share, 0.0), 1.0) + 2.0 * capability, side="right") - 1
+    return np.minimum(np.maximum(found, first), first + points - 2)
 
 
 def cells(abilities: Abilities, fiber: Index, strain: Array) -> Index:
