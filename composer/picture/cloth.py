@@ -1,6 +1,7 @@
 """The cloth: time to the right, a thread a fiber; bars, pins and cues above, lanes below, all on one time axis."""
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from PySide6.QtCore import QPointF, QRectF, Qt
@@ -108,9 +109,13 @@ def bars(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
             look.write(painter, box, tick.label, size, of, CENTRE, bold=tick.strong)
 
 
+_known_ticks = lru_cache(maxsize=4)(bar_ticks)
+"""Asked for twice a frame: for the bars above, and for their lines through the cloth."""
+
+
 def _ticks(plan: Layout, scene: Scene) -> tuple[Tick, ...]:
     look = plan.look
-    return bar_ticks(scene.tempo, scene.from_s, scene.to_s, plan.width, look.px(34), look.px(7))
+    return _known_ticks(scene.tempo, scene.from_s, scene.to_s, plan.width, look.px(34), look.px(7))
 
 
 def bar_lines_over(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:

@@ -18,14 +18,12 @@ from composer.picture.palette import DARK, Theme
 from composer.picture.sampling import Sampler, Source
 from composer.picture.scene import Stretch
 from composer.picture.tiling import Tiles
-from composer.picture.view import NARROWEST_S, View, laid_out, most_zoom
+from composer.picture.view import BAR_PX, NARROWEST_S, View, laid_out, most_zoom
 from composer.picture.weave import Weave
 from composer.tracks import Tracks
 
 FRAME_BUDGET_MS = 12
 """How long a frame may work on threads that are missing before it shows what there is."""
-BAR_PX = 12
-"""The scroll bars' width, in pixels of the window."""
 STEPS = 1_000_000
 """Steps of a scroll bar over its whole."""
 NOTHING = "No score yet: what is written comes up here."
@@ -56,9 +54,10 @@ class ClothShow(QWidget):
         self._rows: tuple[tuple[object, int, int], Rows] | None = None
         self._view: View | None = None
         self._still: QImage | None = None
+        self._frame: QImage | None = None
         self._last: tuple[QImage, View] | None = None
         self._tiles = Tiles(self)
-        self._tiles.grown.connect(self._redraw)
+        self._tiles.grown.connect(self._grow)
         self._tiles.settled.connect(self.settled)
         self._along = QScrollBar(Qt.Orientation.Horizontal, self)
         self._across = QScrollBar(Qt.Orientation.Vertical, self)
@@ -94,11 +93,12 @@ class ClothShow(QWidget):
         else:
             assert self._shown is not None
             hits = self._shown.hits
-        known = self._shown or Shown(weave, hits)
+        marks = over.marks_of(weave.snags)
+        known = self._shown or Shown(weave, hits, marks)
         fiber = known.fiber if known.fiber is not None and known.fiber < weave.tracks.fibers else None
         keeps = before is not None and len(before.tracks.time_s) == len(weave.tracks.time_s)
         self._shown = replace(
-            known, weave=weave, hits=hits, fiber=fiber, snag=-1,
+            known, weave=weave, hits=hits, marks=marks, fiber=fiber, snag=-1,
             hit=known.hit if keeps else -1, lit=known.lit if keeps else known.lit[:0], ghost=None,
         )  # fmt: skip
         self._sources()
@@ -308,7 +308,12 @@ class ClothShow(QWidget):
         return self._view
 
     def _redraw(self) -> None:
-        self._view = self._still = None
+        self._view = self._still = self._frame = None
+        self.update()
+
+    def _grow(self) -> None:
+        """There are more threads to show; what lies round them stays."""
+        self._still = None
         self.update()
 
     def resizeEvent(self, event: QResizeEvent) -> None:
@@ -345,13 +350,16 @@ class ClothShow(QWidget):
 
     def _draw_still(self, view: View) -> QImage:
         assert self._shown is not None and self._source is not None
-        still = QImage(view.width, view.height, QImage.Format.Format_RGB32)
-        still.fill(colour(self._theme.ground))
+        if self._frame is None or self._frame.size() != QSize(view.width, view.height):
+            self._frame = QImage(view.width, view.height, QImage.Format.Format_RGB32)
+            self._frame.fill(colour(self._theme.ground))
+            with painting(self._frame) as painter:
+                over.around(painter, view, self._shown)
+        still = self._frame.copy()
         self._tiles.use(self._source, view.rows, self._theme)
         with painting(still) as painter:
             if view.rows.height:
                 painter.drawImage(view.plan.left, view.plan.top, self._threads(view))
-            over.around(painter, view, self._shown)
             over.over(painter, view, self._shown)
         return still
 

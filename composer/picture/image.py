@@ -74,9 +74,11 @@ def extends(abilities: Abilities) -> NDArray[np.bool_]:
 
 def colours(share: ArrayLike, extending: NDArray[np.bool_], theme: Theme = DARK) -> Image:
     """Colours (F, T, 3) of shares of stroke (F, T): lightness by share, hue by direction; beyond 0 and 1 as at the end."""
-    step = np.rint(np.clip(np.nan_to_num(share), 0.0, 1.0) * (palette.STEPS - 1)).astype(np.intp)
+    # fmax and fmin take the number where the other is nan.
+    held = np.fmin(np.fmax(share, 0.0), 1.0)
+    step = (held * (palette.STEPS - 1) + 0.5).astype(np.intp)
     both = np.concatenate([theme.contract, theme.extend])
-    return both[step + palette.STEPS * np.asarray(extending)[:, None]]
+    return both.take(step + palette.STEPS * np.asarray(extending)[:, None], axis=0)
 
 
 def threads(share: ArrayLike, extending: NDArray[np.bool_], rows: Rows, theme: Theme = DARK) -> Image:
@@ -98,15 +100,18 @@ def threads(share: ArrayLike, extending: NDArray[np.bool_], rows: Rows, theme: T
 def _crowded(image: Image, share: Array, extending: NDArray[np.bool_], rows: Rows, theme: Theme) -> Image:
     """Each pixel row the mean colour of the threads whose middle lies in it, or else of the nearest within half a pixel."""
     middle = (rows.top + rows.bottom) / 2
-    begin = np.searchsorted(middle, np.arange(rows.height))
-    end = np.searchsorted(middle, np.arange(1, rows.height + 1))
+    edges = np.searchsorted(middle, np.arange(rows.height + 1))
     covering = np.searchsorted(rows.bottom, np.arange(rows.height) + 0.5, side="right")
-    for row in range(rows.height):
-        part = slice(begin[row], end[row])
-        if begin[row] == end[row]:
-            fiber = covering[row]
-            if fiber >= len(middle) or rows.top[fiber] > row + 0.5:
-                continue
-            part = slice(fiber, fiber + 1)
-        image[row] = np.rint(colours(share[part], extending[part], theme).mean(axis=0))
+    colour = colours(share, extending, theme)
+    there = np.flatnonzero(edges[1:] > edges[:-1])
+    if there.size:
+        # Rows that have threads are one after another in order of threads: what lies between two is all of the first's.
+        run = colour[edges[there[0]] : edges[there[-1] + 1]]
+        total = np.add.reduceat(run, edges[there] - edges[there[0]], axis=0, dtype=np.uint32)
+        count = (edges[there + 1] - edges[there])[:, None, None]
+        image[there] = (total + count // 2) // count
+    for row in np.flatnonzero(edges[1:] == edges[:-1]):
+        fiber = covering[row]
+        if fiber < len(middle) and rows.top[fiber] <= row + 0.5:
+            image[row] = colour[fiber]
     return image

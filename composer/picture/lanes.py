@@ -3,12 +3,15 @@
 from collections.abc import Callable
 
 import numpy as np
+from numpy.typing import NDArray
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainter, QPolygonF
 
 from composer.picture.axes import second_ticks, value_ticks
 from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
 from composer.picture.scene import Lane, Scene
+
+Array = NDArray[np.float64]
 
 
 def paint(painter: QPainter, look: Look, scene: Scene, left: float, top: float, width: float, height: float) -> None:
@@ -63,9 +66,19 @@ def _lane(painter: QPainter, look: Look, lane: Lane, box: QRectF, scene: Scene) 
     painter.setPen(pen(getattr(look.theme, lane.colour), max(1.4, 1.5 * look.scale)))
     columns = np.flatnonzero(np.isfinite(lane.values))
     for run in np.split(columns, np.flatnonzero(np.diff(columns) > 1) + 1):
-        x = box.left() + (run + 0.5) * box.width() / len(lane.values)
-        y = np.array([y_of(value) for value in np.clip(lane.values[run], low, high)])
-        painter.drawPolyline(QPolygonF([QPointF(a, b) for a, b in zip(x, y, strict=True)]))
+        if len(run):
+            x = box.left() + (run + 0.5) * box.width() / len(lane.values)
+            y = box.bottom() - inset - (np.clip(lane.values[run], low, high) - low) / (high - low) * (box.height() - 2 * inset)
+            kept = bends(y)
+            painter.drawPolyline(QPolygonF([QPointF(a, b) for a, b in zip(x[kept].tolist(), y[kept].tolist(), strict=True)]))
+
+
+def bends(y: Array) -> Array:
+    """The indices of points, equally far apart, at which a line through them bends by as much as can be seen, and both ends."""
+    if len(y) < 3:
+        return np.arange(len(y))
+    kept = np.abs(y[2:] - 2 * y[1:-1] + y[:-2]) > 0.02
+    return np.concatenate([[0], np.flatnonzero(kept) + 1, [len(y) - 1]])
 
 
 def _short(painter: QPainter, look: Look, box: QRectF, scene: Scene) -> None:

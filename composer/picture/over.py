@@ -2,6 +2,7 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -32,12 +33,14 @@ MOST_MARKS = 4000
 class Shown:
     """All that is drawn round and over the threads, beside the weave itself.
 
+    marks: of the snags, (N,) each: fiber, -1 for the air's, from and to in s
     selected: lit stretches; lit: segments that move together; snag, hit: indices of what is chosen, -1 for none
     fiber: the thread that the keys are on, None for none; ghost: tracks that would be instead, with the words for both
     """
 
     weave: Weave
     hits: Hits
+    marks: tuple[NDArray[np.int64], Array, Array]
     selected: tuple[Stretch, ...] = ()
     lit: NDArray[np.int64] = field(default_factory=lambda: np.empty(0, dtype=np.int64))
     snag: int = -1
@@ -47,7 +50,14 @@ class Shown:
     words: tuple[str, str] = ("as written", "retimed")
 
 
-def scene_of(view: View, weave: Weave) -> Scene:
+def marks_of(snags: Sequence[Stretch]) -> tuple[NDArray[np.int64], Array, Array]:
+    """Snags as arrays, to be looked through at every frame."""
+    fiber = np.array([-1 if snag.fiber is None else snag.fiber for snag in snags], dtype=np.int64)
+    begin, end = (np.array([getattr(snag, name) for snag in snags], dtype=float) for name in ("from_s", "to_s"))
+    return fiber, begin, end
+
+
+def scene_of(view: View, weave: Weave, lanes_too: bool = True) -> Scene:
     """The headings of what is shown, as a scene without threads."""
     count = weave.tracks.fibers
     return Scene(
@@ -60,10 +70,10 @@ def scene_of(view: View, weave: Weave) -> Scene:
         bands=weave.bands,
         names=weave.names,
         tempo=weave.tempo,
-        snags=weave.snags,
+        snags=tuple(snag for snag in weave.snags if snag.fiber is None),
         pins_s=weave.pins_s,
         cues=weave.cues,
-        lanes=tuple(columns(lane, weave.to_s, view) for lane in weave.lanes),
+        lanes=tuple(columns(lane, weave.to_s, view) for lane in weave.lanes if lanes_too),
     )
 
 
@@ -95,7 +105,6 @@ def around(painter: QPainter, view: View, shown: Shown) -> None:
     _names(painter, view, shown)
     painter.save()
     painter.setClipRect(QRectF(plan.left - look.px(6), 0, plan.width + look.px(20), view.height))
-    cloth.bar_lines_over(painter, plan, rows, scene)
     cloth.pins(painter, plan, rows, scene)
     cloth.cues(painter, plan, rows, scene)
     painter.restore()
@@ -116,7 +125,7 @@ def _names(painter: QPainter, view: View, shown: Shown) -> None:
     look, plan, weave = view.look, view.plan, shown.weave
     line, top, foot = look.px(13), plan.top, plan.top + view.shown
     narrow = plan.left < look.px(140)
-    split = look.px(10) if narrow else look.px(72)
+    split = look.px(10) if narrow else max(look.px(24), plan.left - look.px(13) - look.width(_longest(weave.names), 11, True))
     painter.save()
     painter.setClipRect(QRectF(0, top - look.px(2), plan.left, view.shown + look.px(4)))
     shown_fibers = view.fibers_shown()
@@ -139,7 +148,7 @@ def _names(painter: QPainter, view: View, shown: Shown) -> None:
                 look.write(painter, box, weave.names[fiber], 11, of, RIGHT, bold=chosen)
         middle = (begin + end) / 2
         if middle - line / 2 >= taken and not (single and (narrow or band.last - band.first == 1)):
-            room = (split if single else plan.left) - look.px(18)
+            room = split - look.px(12) if single else plan.left - look.px(18)
             look.write(
                 painter, QRectF(look.px(8), middle - line / 2, room, line), band.name, 11.5, look.theme.ink, LEFT, bold=True
             )
@@ -159,11 +168,20 @@ def _names(painter: QPainter, view: View, shown: Shown) -> None:
     painter.restore()
 
 
+@lru_cache(maxsize=4)
+def _longest(names: tuple[str, ...]) -> str:
+    return max(names, key=len, default="")
+
+
 def over(painter: QPainter, view: View, shown: Shown) -> None:
     """Draw what lies over the threads: what is chosen, snags, ghosts, hits."""
     plan = view.plan
     painter.save()
     painter.setClipRect(QRectF(plan.left, plan.strip_top, plan.width, plan.top + view.shown - plan.strip_top))
+    rows = Rows(view.shown, view.rows.top, view.rows.bottom, view.rows.crowded)
+    scene = scene_of(view, shown.weave, lanes_too=False)
+    cloth.bar_lines_over(painter, plan, rows, scene)
+    cloth.cues(painter, plan, rows, scene)
     painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
     _snags(painter, view, shown)
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
@@ -182,8 +200,7 @@ def _snags(painter: QPainter, view: View, shown: Shown) -> None:
         return
     look, plan = view.look, view.plan
     least = look.px(cloth.LEAST_MARK)
-    fiber = np.array([-1 if snag.fiber is None else snag.fiber for snag in snags])
-    begin, end = (np.array([getattr(snag, name) for snag in snags]) for name in ("from_s", "to_s"))
+    fiber, begin, end = shown.marks
     seen = (fiber >= 0) & (end >= view.from_s) & (begin <= view.to_s)
     left, right = _spans(view, begin, end, least)
     strip = QRectF(0, plan.strip_top + look.px(2), 0, look.px(5))

@@ -15,6 +15,8 @@ from composer.picture.over import rhomb
 from composer.picture.palette import Colour, Theme
 from composer.picture.sampling import Sampler
 from composer.picture.strand import Knots, reach
+from composer.picture.view import RIGHT as BESIDE
+from composer.picture.view import left_of
 
 Array = NDArray[np.float64]
 
@@ -75,11 +77,11 @@ class Face:
 
 def face(look: Look, size: tuple[int, int], from_s: float, to_s: float, least: float, most: float, per_strain: float,
          unit: str) -> Face:  # fmt: skip
-    """The face of a strand in a widget of that size; its axis of time lies as a cloth's of the same width does."""
+    """The face of a strand in so many pixels; its axis of time lies as that of a cloth in as many does."""
     px = look.px
-    left = px(150 if size[0] >= 900 * look.scale else 104)
+    left = left_of(look, size[0])
     room = 0.07 * (most - least)
-    box = QRectF(left, px(26), max(size[0] - left - px(26), 1), max(size[1] - px(26) - px(24), 1))
+    box = QRectF(left, px(26), max(size[0] - left - px(BESIDE), 1), max(size[1] - px(26) - px(24), 1))
     return Face(look, box, from_s, to_s, least - room, most + room, per_strain, unit)
 
 

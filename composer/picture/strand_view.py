@@ -16,6 +16,7 @@ from composer.picture.palette import DARK, Theme
 from composer.picture.sampling import Sampler
 from composer.picture.strand import Knots, in_words, knots_of, unit_of
 from composer.picture.strand_paint import Face, Strand
+from composer.picture.view import BAR_PX
 from composer.picture.weave import Weave
 from composer.tracks import Tracks
 
@@ -195,7 +196,7 @@ class StrandView(QWidget):
             return None
         scale = self.devicePixelRatioF()
         look = Look(scale * max(self.fontInfo().pixelSize(), 8) / 13.0, self._theme)
-        size = (max(1, round(self.width() * scale)), max(1, round(self.height() * scale)))
+        size = (max(1, round((self.width() - BAR_PX) * scale)), max(1, round(self.height() * scale)))
         per_strain, unit = unit_of(self._weave.abilities, self._fiber)
         stroke = float(self._weave.abilities.stroke[self._fiber])
         if self._percent:

@@ -14,6 +14,10 @@ NARROWEST_S = 0.02
 """No shorter stretch is shown: some frames of motion, four ticks of a player."""
 FATTEST = 72
 """Pixels, at scale 1, that a thread may take when zoomed in."""
+BAR_PX = 12
+"""The scroll bars' width, in pixels of the window."""
+RIGHT = 14
+"""Pixels, at scale 1, right of the axis of time."""
 FAT = 44
 """Pixels, at scale 1, that a thread takes at most while all are shown."""
 
@@ -90,6 +94,11 @@ class View:
         return beside and self.plan.left - self.look.px(6) <= x <= self.plan.left + self.plan.width + self.look.px(6)
 
 
+def left_of(look: Look, width: int) -> int:
+    """Where the axis of time begins: what lies below a cloth of the same width has its seconds in the same columns."""
+    return look.px(150 if width >= 900 * look.scale else 104)
+
+
 def laid_out(look: Look, width: int, height: int, rows_in: Callable[[int, int], Rows], lanes: int, zoom: float, place: float,
              from_s: float, to_s: float) -> View:  # fmt: skip
     """The view of a widget of that size, pixels: `zoom` 1 shows all threads, `place` the share of them that lies above.
@@ -97,7 +106,7 @@ def laid_out(look: Look, width: int, height: int, rows_in: Callable[[int, int], 
     rows_in: lays the threads into a height, each at most so many pixels high
     """
     px = look.px
-    left = px(150 if width >= 900 * look.scale else 104)
+    left = left_of(look, width)
     cues_top = px(6)
     bars_top = cues_top + px(34)
     strip_top = bars_top + px(24)
@@ -107,7 +116,7 @@ def laid_out(look: Look, width: int, height: int, rows_in: Callable[[int, int], 
     lanes_height = lanes * each
     axis = px(22)
     room = max(height - top - lanes_height - axis - px(4), 1)
-    plan = Layout(look, left, top, max(width - left - px(14), 1), room, lanes_height, cues_top, bars_top, strip_top)
+    plan = Layout(look, left, top, max(width - left - px(RIGHT), 1), room, lanes_height, cues_top, bars_top, strip_top)
     rows = rows_in(max(1, round(room * zoom)), px(FAT if zoom <= 1.0 else FATTEST))
     scroll = min(max(round(place * rows.height), 0), max(rows.height - room, 0))
     return View(plan, rows, scroll, from_s, to_s, top + room, lanes_height, width, height)
