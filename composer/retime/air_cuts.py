@@ -28,6 +28,9 @@ Span = tuple[float, float]
 AT_ONCE, WIDEST = 20, 400
 """Rows over whole moves added for one span in one round, and hits looked at round a span."""
 
+CLEAN = 5e-7
+"""Share of the store by which times made clean stay within what the checker lets pass."""
+
 MARGIN = 1e-7
 """Share of the store that is kept back, well within what the checker lets pass."""
 
@@ -43,6 +46,14 @@ def overdrawn(now: Tracks, rig: Rig, abilities: Abilities, near: float = 0.0) ->
     higher = near * (supply.max_receiver_kPa - supply.min_pressure_kPa)
     supply = replace(supply, min_pressure_kPa=supply.min_pressure_kPa + higher)
     return [(from_s, to_s) for from_s, to_s, _, _ in use(now, supply, abilities).spans]
+
+
+def overdraft_L(now: Tracks, rig: Rig, abilities: Abilities) -> float:
+    """By how many litres the deepest span overdraws the store, 0 where that is well within what the checker lets pass."""
+    supply = rig.supply
+    higher = CLEAN * (supply.max_receiver_kPa - supply.min_pressure_kPa)
+    spans = use(now, replace(supply, min_pressure_kPa=supply.min_pressure_kPa + higher), abilities).spans
+    return max((asked - bears for _, _, asked, bears in spans), default=0.0)
 
 
 def plainly_enough(now: Tracks, moves_L: float, rig: Rig, abilities: Abilities) -> bool:

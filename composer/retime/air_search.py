@@ -1,41 +1,50 @@
 """Where air is short: cheaper times that the receiver bears, looked for from several beginnings.
 
 Demand is no convex function of times, so what is found is the best near each beginning: successive linear programming with
-an exact penalty (Fletcher and Sainz de la Maza 1989). The demand is made linear about the times at hand, the programme is
-solved with a price on overdrawing, and as much of the step is taken as lessens cost and price together. All other rows are
-convex, so a part of a step keeps them.
+an exact penalty in a box that grows and shrinks with how far it can be trusted (Fletcher and Sainz de la Maza 1989). Most
+of what keeps a search from the best is the order in which fills follow one another, so from the best that is known some
+moves are thrown elsewhere and the search begins again (iterated local search: Lourenço, Martin and Stützle 2003). Random
+numbers are always the same ones.
 """
 
 from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy import sparse
 
 from composer.limits.abilities import Abilities
-from composer.limits.air import demand, refill_L_s, store_L
-from composer.limits.buckets import overdraws
-from composer.retime.air_cuts import overdrawn, share_rows
-from composer.retime.cuts import duty_spans
-from composer.retime.events import Events
+from composer.limits.air import store_L
+from composer.retime.air_account import HAIR_S, Account, account_of
+from composer.retime.air_cuts import overdraft_L
+from composer.retime.cuts import duty_rows, duty_spans
 from composer.retime.flow import Budget, Unsolved
-from composer.retime.local import Least, least_cost
-from composer.retime.rows import Rows, joined
+from composer.retime.local import Least, inside
+from composer.retime.resident import Resident
+from composer.retime.rows import AIR_ROW, Rows, joined, no_rows
 from composer.retime.stage import Stage, at_times
-from composer.retime.terms import cost
+from composer.retime.terms import contract, cost, spread
 from composer.rig.model import Rig
 
 Array = NDArray[np.float64]
+Index = NDArray[np.int64]
 
-NEAR = 0.1
-"""Spans that fall short of overdrawing by no more than this share of the store are kept in view."""
+STEPS, CLEAN, CLEANED = 60, 10, 3
+"""Steps of one descent, rounds that make its answer clean, and how many answers are made so."""
 
-STEPS, HARDEN, RAISES = 30, 12, 3
-"""Steps of one search, rounds that make its answer clean, and how often the price is raised."""
+FINER = 64
+"""Straight pieces a curved fill is laid out as while an answer is made clean."""
 
-ENOUGH = 1e-7
-"""Relative: a step that promises less is the last."""
+SAME_S = 1e-3
+"""Times that differ by no more are the same answer, before they are made clean."""
 
-BEGINNINGS = ((300, 16), (1200, 4), (6000, 1))
+AGAIN, AT_LEAST = 12, 36
+"""An answer that so many beginnings end at is taken to be the best there is, once so many at least were tried."""
+
+ENOUGH, SMALLEST_S = 1e-7, 1e-6
+"""A step that promises less (relative), or a box smaller than that, is the last."""
+
+BEGINNINGS = ((40, 60), (100, 30), (300, 12), (1200, 4), (6000, 1))
 """How many beginnings are tried where no more than so many events may move; none above."""
 
 
@@ -55,103 +64,194 @@ def better(
     bottom: the optimum of the rows that are true for all times, which ask too little
     Returns as well whether time was up before all were tried.
     """
-    moving = int(np.count_nonzero(bottom.free))
-    tries = next((tries for most, tries in BEGINNINGS if moving <= most), 0)
-    begin = _beginnings(stage, bottom, best, tries)
-    for number, start in enumerate(begin):
-        budget.say(f"air: beginning {number + 1} of {len(begin)}")
-        try:
-            x = _descend(stage, rig, abilities, rows, bottom, start, budget)
-            found = None if x is None else _hardened(stage, rig, abilities, rows, bottom, x, budget)
-        except Unsolved:
-            return best, True
-        if found is not None and (best is None or found.least.cost < best.least.cost * (1.0 - 1e-9)):
-            best = found
+    count = len(stage.events.written_s)
+    free = np.ones(count, dtype=bool) if count <= BEGINNINGS[2][0] else bottom.free
+    tries = next((tries for most, tries in BEGINNINGS if np.count_nonzero(free) <= most), 0)
+    if not tries:
+        return best, False
+    try:
+        search = _Search(stage, rig, abilities, rows, bottom, free, budget)
+        ranked: list[tuple[float, Array]] = []
+        for number, start in enumerate(search.beginnings(best, tries, ranked)):
+            budget.say(f"air: beginning {number + 1} of {tries}")
+            there = search.descend(start)
+            if there is not None:
+                ranked.append(there)
+                ranked.sort(key=lambda one: one[0])
+                least = ranked[0][0] * (1.0 + 1e-6)
+                if least <= bottom.cost * (1.0 + 2e-6) or (
+                    number >= AT_LEAST and sum(worth <= least for worth, _ in ranked) >= AGAIN
+                ):
+                    break
+        for worth, x in _distinct(ranked):
+            if best is not None and worth >= best.least.cost * (1.0 - 1e-9):
+                break
+            found = search.cleaned(x)
+            if found is not None and (best is None or found.least.cost < best.least.cost * (1.0 - 1e-9)):
+                best = found
+    except Unsolved:
+        return best, True
     return best, False
 
 
-def _beginnings(stage: Stage, bottom: Least, best: Found | None, tries: int) -> list[Array]:
-    """The optimum that asks too little, the best known, all moves left early, and some mixtures, always the same."""
-    if not tries:
-        return []
-    events = stage.events
-    starts = np.arange(events.hits, len(events.written_s))
-    earliest = bottom.shift_s.copy()
-    free = np.flatnonzero(events.free)
-    before = events.event[free - 1]
-    landed = np.where(before < 0, 0.0, np.append(events.written_s + bottom.shift_s, 0.0)[before])
-    earliest[starts] = landed - events.written_s[starts]
-    begin = [bottom.shift_s] + ([best.least.shift_s] if best is not None else [])
-    if tries > 1:
-        begin.append(earliest)
-    rng = np.random.default_rng(1)
-    from_there = bottom.shift_s if best is None else best.least.shift_s
-    while len(begin) < tries:
-        mixed = from_there.copy()
-        share = rng.random(len(starts)) * (rng.random(len(starts)) < 0.5)
-        mixed[starts] += share * np.minimum(earliest[starts] - bottom.shift_s[starts], 0.0)
-        begin.append(mixed)
-    return begin
+def _distinct(ranked: list[tuple[float, Array]]) -> list[tuple[float, Array]]:
+    """The cheapest few of some times by their costs that are not the same as another."""
+    few: list[tuple[float, Array]] = []
+    for worth, x in ranked:
+        if len(few) < CLEANED and all(np.abs(x - other).max() > SAME_S for _, other in few):
+            few.append((worth, x))
+    return few
 
 
-def _descend(
-    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, start: Array, budget: Budget
-) -> Array | None:
-    """Times near some beginning that overdraw as little as may be, and cost as little."""
-    events, x = stage.events, start
-    price = 4.0 * max(1.0, float(bottom.dual.max(initial=0.0)), float(events.weight.max(initial=0.0)))
-    for _ in range(RAISES):
-        over, worth = _overdraft(stage, rig, abilities, x), cost(stage.terms, x)
-        for _ in range(STEPS):
-            now = at_times(stage, x)
-            about = share_rows(overdrawn(now, rig, abilities, NEAR), now, events, x, rig, abilities)
-            step = least_cost(events, joined([rows, about]), stage.terms, bottom.free, False, budget, price)
-            if step is None:
-                return None
-            predicted = step.cost + price * float(np.maximum(about.least - about.matrix @ step.shift_s, 0.0).sum())
-            merit = worth + price * over
-            if merit - predicted <= ENOUGH * max(1.0, merit):
-                break
-            share, taken = 1.0, False
-            while share > 1e-3:
-                y = x + share * (step.shift_s - x)
-                over_there, worth_there = _overdraft(stage, rig, abilities, y), cost(stage.terms, y)
-                if worth_there + price * over_there < merit - 0.05 * share * (merit - predicted):
-                    x, over, worth, taken = y, over_there, worth_there, True
-                    break
-                share *= 0.5
-            if not taken:
-                break
-        if over <= 1e-6:
-            break
-        price *= 10.0
-    return x
+class _Search:
+    """One programme in the solver, one account of the air, and the descents made with both."""
 
+    def __init__(
+        self, stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, free: NDArray[np.bool_], budget: Budget
+    ):
+        self.stage, self.rig, self.abilities, self.bottom = stage, rig, abilities, bottom
+        self.mask, self.free = free, np.flatnonzero(free)
+        self.account: Account = account_of(stage, bottom.shift_s, rig, abilities)
+        self.left = contract(stage.events, stage.terms, free)
+        self.price = 2.0 * max(1.0, float(stage.events.weight[free].sum()))
+        self.rng = np.random.default_rng(1)
+        self.budget, self.plain = budget, rows
+        self.keep(rows)
 
-def _overdraft(stage: Stage, rig: Rig, abilities: Abilities, shift_s: Array) -> float:
-    """By how many seconds of refill the spans are overdrawn, added up."""
-    # By chords of the curves: near enough to choose a step by, and far quicker than the spans to the last digit.
-    now = at_times(stage, shift_s)
-    asked, refill = demand(now, abilities), refill_L_s(rig.supply)
-    over = overdraws(asked.time_s, asked.litres, store_L(rig.supply), refill)
-    return float((over.asked - over.bears).sum()) / refill
+    def keep(self, rows: Rows) -> None:
+        """Search among the times that keep these rows."""
+        self.rows, self.chosen = rows, inside(rows, self.mask)
+        self.programme = Resident(rows, self.chosen, self.free, self.left, self.price, self.budget)
 
+    def whole(self, shift_s: Array) -> Array:
+        """(N,) shifts of all events from those of the free ones."""
+        full = np.zeros(len(self.mask))
+        full[self.free] = shift_s
+        return spread(self.stage.events, self.stage.terms, self.mask, self.left, full)
 
-def _hardened(
-    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, x: Array, budget: Budget
-) -> Found | None:
-    """The optimum about some times, with rows added until the checker would find nothing; None where they clash."""
-    events: Events = stage.events
-    now = at_times(stage, x)
-    about = share_rows(overdrawn(now, rig, abilities, NEAR), now, events, x, rig, abilities)
-    for _ in range(HARDEN):
-        found = least_cost(events, joined([rows, about]), stage.terms, bottom.free, False, budget)
-        if found is None:
+    def merit(self, full: Array) -> float:
+        """Cost, with a price on what is overdrawn."""
+        return cost(self.stage.terms, full) + self.price * self.account.overdraft_s(full)
+
+    def descend(self, start: Array) -> tuple[float, Array] | None:
+        """Cost and times, (N,), at the end of the descent from some (n,); None where the receiver does not bear them."""
+        x = self.programme.nearest(start)
+        if x is None:
             return None
-        now = at_times(stage, found.shift_s)
-        spans = overdrawn(now, rig, abilities)
-        if not spans:
-            clean = not duty_spans(now, rig, abilities, set())
-            return Found(replace(found, bound=bottom.bound), about) if clean else None
-        about = joined([about, share_rows(spans, now, events, found.shift_s, rig, abilities)])
-    return None
+        full = self._descended(self.whole(x), 0.25 * self.account.store / self.account.refill + 0.1)
+        lacks = self.account.overdraft_s(full)
+        return (cost(self.stage.terms, full), full) if lacks <= 1e-4 * self.account.store / self.account.refill else None
+
+    def _descended(self, full: Array, box: float) -> Array:
+        """Times from which no step within a small box lessens cost and price together, from some that keep the rows."""
+        x, columns = full[self.free], len(self.mask)
+        merit = self.merit(full)
+        for _ in range(STEPS):
+            hair = HAIR_S * self.rng.random(columns)
+            matrix, least = self.account.rows(full + hair, columns)
+            fixed = ~self.mask
+            step = self.programme.least(matrix[:, self.free], least - matrix[:, fixed] @ full[fixed], x - box, x + box)
+            if step is None:
+                box *= 0.5
+                continue
+            y, worth, over = step
+            promised = merit - worth - self.price * over
+            if promised <= ENOUGH * max(1.0, abs(worth)) and box < 0.01:
+                break
+            there = self.whole(y)
+            then = self.merit(there)
+            if then < merit - 0.1 * max(promised, 0.0):
+                if then < merit - 0.7 * promised:
+                    box *= 2.0
+                x, full, merit = y, there, then
+            else:
+                box *= 0.35
+            if box < SMALLEST_S:
+                break
+        return full
+
+    def cleaned(self, full: Array) -> Found | None:
+        """The best near some times with which the checker finds nothing, and the rows and forces that hold it there."""
+        events = self.stage.events
+        self.keep(self.plain)
+        coils: set[tuple[int, int]] = set()
+        hot = no_rows(events)
+        kept, box = store_L(self.rig.supply), 0.02 * self.account.store / self.account.refill
+        for _ in range(CLEAN):
+            self.account = replace(account_of(self.stage, full, self.rig, self.abilities, FINER), store=kept)
+            full = self._descended(full, box)
+            now = at_times(self.stage, full)
+            lacks, spans = overdraft_L(now, self.rig, self.abilities), duty_spans(now, self.rig, self.abilities, coils)
+            if lacks <= 0.0 and not spans:
+                break
+            if lacks > 0.0:
+                kept -= lacks * 1.1 + 1e-8 * self.account.store
+            if spans:
+                coils.update(spans)
+                hot = joined([hot, duty_rows(spans, self.stage.tracks, events, self.rig, self.abilities)])
+                self.keep(joined([self.plain, hot]))
+        else:
+            return None
+        return self._held(full, hot, box)
+
+    def _held(self, full: Array, hot: Rows, box: float) -> Found:
+        """Times that are clean, with the rows and forces that hold them there."""
+        columns = len(self.mask)
+        matrix, least = self.account.rows(full, columns)
+        x, fixed = full[self.free], ~self.mask
+        self.programme.least(matrix[:, self.free], least - matrix[:, fixed] @ full[fixed], x - box, x + box)
+        stay, pass_ = self.programme.forces()
+        count = len(least)
+        air = Rows(sparse.csr_array(matrix), least, np.full(count, AIR_ROW, dtype=np.int8), np.full(count, -1, dtype=np.int64))
+        dual = np.zeros(len(self.rows.least))
+        dual[self.chosen] = stay
+        there = Least(full, cost(self.stage.terms, full), self.bottom.bound, np.concatenate((dual, pass_)), self.mask)
+        return Found(there, joined([hot, air]))
+
+    def beginnings(self, best: Found | None, tries: int, ranked: list[tuple[float, Array]]):
+        """The optimum that asks too little, the best known, all moves left early; then the best so far with some thrown."""
+        events = self.stage.events
+        yield self.bottom.shift_s[self.free]
+        if best is not None:
+            yield best.least.shift_s[self.free]
+        starts = np.arange(events.hits, len(events.written_s))
+        self.earliest = self.bottom.shift_s.copy()
+        before = events.event[np.flatnonzero(events.free) - 1]
+        landed = np.where(before < 0, 0.0, np.append(events.written_s + self.bottom.shift_s, 0.0)[before])
+        self.earliest[starts] = landed - events.written_s[starts]
+        if tries > 3:
+            yield self.earliest[self.free]
+        reach = self.account.store / self.account.refill
+        leading = np.unique(self.account.start[self.account.start >= events.hits])
+        leading = leading[self.earliest[leading] < self.bottom.shift_s[leading]].tolist()
+        alone = [(start, share) for share in (1.0, 0.5) for start in leading][: tries // 2]
+        for number in range(tries - 3):
+            few = _distinct(ranked)
+            here = few[int(self.rng.integers(0, len(few)))][1] if few else self.bottom.shift_s
+            if number < len(alone):
+                # Each start alone, from the best so far.
+                start, share = alone[number]
+                thrown = (few[0][1] if few else here).copy()
+                thrown[start] += share * min(self.earliest[start] - thrown[start], 0.0)
+            else:
+                thrown = self.thrown(here, reach)
+            yield thrown[self.free]
+
+    def thrown(self, here: Array, reach: float) -> Array:
+        """Times with some fills moved to begin or to land elsewhere."""
+        account, events, rng = self.account, self.stage.events, self.rng
+        thrown, fills = here.copy(), len(account.start)
+        for fill in rng.choice(fills, min(int(rng.integers(1, 5)), fills), replace=False):
+            start, end = int(account.start[fill]), int(account.end[fill])
+            by = rng.normal() * 10.0 ** rng.uniform(-1.5, 0.0) * reach
+            how = int(rng.integers(0, 7))
+            if how in (0, 2) and start >= 0:
+                thrown[start] += by
+            if how in (1, 2) and end >= 0:
+                thrown[end] += by
+            if how >= 3 and start >= events.hits:
+                # At the very beginning of the rest before it, at its very end, or anywhere between.
+                earliest, latest = self.earliest[start], thrown[end] + events.written_s[end] - events.written_s[start]
+                share = (0.0, 0.0, 1.0, rng.random())[how - 3]
+                thrown[start] = earliest + share * max(latest - earliest, 0.0)
+        return thrown

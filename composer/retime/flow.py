@@ -114,7 +114,7 @@ def circulate(arcs: Arcs, wide: Wide, nodes: int, budget: Budget = ENDLESS) -> t
     if not count + len(wide.least_s) or not nodes:
         return np.zeros(count), np.zeros(len(wide.least_s)), np.zeros(nodes)
     few, group, share = merged(arcs, nodes)
-    solver = _Quiet()
+    solver = Quiet()
     options: dict[str, object] = {
         "primal_feasibility_tolerance": TOLERANCE,
         "dual_feasibility_tolerance": TOLERANCE,
@@ -145,7 +145,7 @@ def circulate(arcs: Arcs, wide: Wide, nodes: int, budget: Budget = ENDLESS) -> t
     return force[: len(few.least_s)][group] * share, force[len(few.least_s) :], -np.array(found.row_dual)
 
 
-class _Quiet(highspy.Highs):
+class Quiet(highspy.Highs):
     """HiGHS that prints nothing, not even its name, which it does where callbacks are set up before it is told not to."""
 
     def enableCallbacks(self) -> None:

@@ -74,7 +74,7 @@ def least_cost(
             free[:] = True
         following = free[events.hits :] & (terms.behind[events.hits :] >= 0)
         free[events.own_hit[events.hits :][following]] = True
-        chosen = _inside(rows, free)
+        chosen = inside(rows, free)
         left = contract(events, priced, free)
         found = solve(rows, chosen, np.flatnonzero(free), left, budget, slack_price)
         if found is None:
@@ -94,7 +94,7 @@ def _own_shift(terms: Terms, shift: Array) -> Array:
     return shift - padded[terms.behind]
 
 
-def _inside(rows: Rows, free: Flags) -> NDArray[np.int64]:
+def inside(rows: Rows, free: Flags) -> NDArray[np.int64]:
     """The rows all of whose events are free."""
     row = np.repeat(np.arange(len(rows.least)), np.diff(rows.matrix.indptr))
     outside = np.bincount(row[~free[rows.matrix.indices]], minlength=len(rows.least))
