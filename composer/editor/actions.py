@@ -35,8 +35,13 @@ ACTIONS: tuple[Action, ...] = (
     Action("complete", "&Edit", "Co&mplete the word", "Ctrl+Space", "what may stand at the caret", parted=True),
     Action("explain", "&Edit", "&Explain the word", "Ctrl+E", "what the word at the caret means here"),
     Action("comment", "&Edit", "Comment or not", "Ctrl+/", "make the chosen lines comments, or take that back"),
-    Action("copy_phrase", "&Edit", "Copy the phrase for this one", "Ctrl+D",
-           "the entry at the caret, or of the chosen hit, gets a copy of its phrase of its own"),  # fmt: skip
+    Action(
+        "copy_phrase",
+        "&Edit",
+        "Copy the phrase for this one",
+        "Ctrl+D",
+        "the entry at the caret, or of the chosen hit, gets a copy of its phrase of its own",
+    ),
     Action("find", "&Edit", "&Find …", "Ctrl+F", "find words in the text, and put others in their place", parted=True),
     Action("find_next", "&Edit", "Find the next", "F3", "the next place where they stand"),
     Action("find_previous", "&Edit", "Find the one before", "Shift+F3", "the place before where they stand"),
@@ -44,12 +49,20 @@ ACTIONS: tuple[Action, ...] = (
     Action("next_snag", "S&nags", "&Next snag", "F8", "the next snag, and what would mend it"),
     Action("previous_snag", "S&nags", "&Snag before", "Shift+F8", "the snag before"),
     Action("mend", "S&nags", "&Mend it", "Ctrl+M", "go to the choices that would mend the chosen snag"),
-    Action("take_hit", "S&nags", "Take the retiming of the chosen &hit", "Ctrl+Alt+H", "into the text, as one step", parted=True),
+    Action(
+        "take_hit", "S&nags", "Take the retiming of the chosen &hit", "Ctrl+Alt+H", "into the text, as one step", parted=True
+    ),
     Action("take_passage", "S&nags", "Take the retiming of the &passage", "Ctrl+Alt+P", "of the passage that is looped"),
     Action("take_all", "S&nags", "Take &all of the retiming", "Ctrl+Alt+A", "into the text, as one step"),
     Action("beside", "&View", "Retiming &beside the written", "Ctrl+R", "show on the cloth where hits would move", check=True),
-    Action("simulated", "&View", "Show and play as &retimed", "Ctrl+Shift+R",
-           "simulate, and move the hanging fibers, as retimed and not as written", check=True),  # fmt: skip
+    Action(
+        "simulated",
+        "&View",
+        "Show and play as &retimed",
+        "Ctrl+Shift+R",
+        "simulate, and move the hanging fibers, as retimed and not as written",
+        check=True,
+    ),
     Action("show_cloth", "&View", "&Cloth", "Alt+1", "time to the right, a thread a fiber", parted=True),
     Action("show_hang", "&View", "&Hanging fibers", "Alt+2", "the fibers where they hang, moved as simulated"),
     Action("show_rig", "&View", "R&ig", "Alt+3", "what each fiber can do"),
@@ -61,21 +74,34 @@ ACTIONS: tuple[Action, ...] = (
     Action("theme", "&View", "&Light or dark", "Ctrl+Shift+L", "the other look"),
     Action("play", "&Play", "&Play or pause", "Ctrl+Return", "from the play head"),
     Action("to_start", "&Play", "To the &start", "Ctrl+Shift+Home", "put the play head at the beginning"),
-    Action("head_here", "&Play", "Head to the &caret", "Ctrl+J", "put the play head where the caret's line first moves something"),
-    Action("loop_from", "&Play", "Passage &from here", "Ctrl+I", "the passage that is looped begins at the play head", parted=True),
+    Action("head_here", "&Play", "Head to the &caret", "Ctrl+J", "where the caret's line first moves something"),
+    Action("loop_from", "&Play", "Passage &from here", "Ctrl+I", "what is looped begins at the play head", parted=True),
     Action("loop_to", "&Play", "Passage &to here", "Ctrl+Shift+I", "it ends at the play head"),
     Action("no_loop", "&Play", "&No passage", "Ctrl+Shift+N", "play on to the end"),
     Action("slower", "&Play", "S&lower", "Ctrl+,", "a step slower", parted=True),
     Action("faster", "&Play", "Fas&ter", "Ctrl+.", "a step faster"),
     Action("half_speed", "&Play", "&Half speed or whole", "Ctrl+H", "half as fast, or as fast as written"),
-    Action("clicks", "&Play", "&Counts to be heard", "Ctrl+K", "a click on each count, where the machine has sound", check=True),
-    Action("finer_grid", "&Play", "Finer grid", "Ctrl+]", "what is dragged snaps to finer counts; Alt while dragging: to none",
-           parted=True),  # fmt: skip
+    Action(
+        "clicks",
+        "&Play",
+        "&Counts to be heard",
+        "Ctrl+Shift+K",
+        "a click on each count, where the machine has sound",
+        check=True,
+    ),
+    Action(
+        "finer_grid",
+        "&Play",
+        "Finer grid",
+        "Ctrl+]",
+        "what is dragged snaps to finer counts; Alt while dragging: to none",
+        parted=True,
+    ),
     Action("coarser_grid", "&Play", "Coarser grid", "Ctrl+[", "what is dragged snaps to coarser counts"),
     Action("keys", "&Help", "&Keys", "F1", "this sheet"),
     Action("first_help", "&Help", "&What to try first", "", "three lines for a first hour"),
     Action("about", "&Help", "&About", "", "which version this is"),
-)  # fmt: skip
+)
 
 
 def by_menu() -> dict[str, list[Action]]:

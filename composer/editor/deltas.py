@@ -3,6 +3,7 @@
 Positions count UTF-16 code units, as in a `QTextDocument`, so that no change has to look at the text before it.
 """
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 
 UNIT = 2
@@ -55,6 +56,20 @@ def between(was: str, now: str) -> Delta | None:
     head = _alike(was, now, most)
     tail = _alike(was[head:][::-1], now[head:][::-1], most - head)
     return Delta(units_in(was[:head]), units_in(was[head : len(was) - tail]), now[head : len(now) - tail])
+
+
+def counted(text: str, changes: Iterable[tuple[int, int, str]]) -> list[Delta]:
+    """Changes of a text by characters (from, to before, what stands there instead) as deltas."""
+    if text.isascii():
+        return [Delta(start, end - start, put) for start, end, put in changes]
+    made = []
+    at = units = 0
+    for start, end, put in sorted(changes):
+        units += units_in(text[at:start])
+        length = units_in(text[start:end])
+        made.append(Delta(units, length, put))
+        at, units = end, units + length
+    return made
 
 
 def _alike(one: str, other: str, most: int) -> int:

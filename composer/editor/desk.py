@@ -20,6 +20,7 @@ from composer.editor.messages import (
     Changed,
     Checked,
     Doing,
+    Lanes,
     Mode,
     Picture,
     RigRead,
@@ -34,6 +35,7 @@ from composer.edits.threads import Threads, threads_of
 from composer.faults import Fault, Faults, Where
 from composer.limits.check import Check
 from composer.load import Loaded, made_from
+from composer.picture.weave import lanes_of
 from composer.report.check import waiting_notes
 from composer.report.sentences import Teller
 from composer.rig.select import Selector
@@ -210,6 +212,8 @@ class Desk:
         teller = Teller(made.tracks, made.rig, made.tempo.say_place)
         rows, more = rows_of(self.check, teller)
         self.say(Checked(version, self.check, rows, tuple(waiting_notes(made.cues, teller)), more))
+        yield
+        self.say(Lanes(version, lanes_of(made.rig, made.abilities, made.tracks)))
 
     # ---- questions ------------------------------------------------------------------------------------------------------
 

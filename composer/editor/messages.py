@@ -11,6 +11,7 @@ from composer.edits.edit import Edit
 from composer.faults import Fault
 from composer.limits.abilities import Abilities
 from composer.limits.check import Check
+from composer.picture.scene import Lane
 from composer.rig.model import Rig
 from composer.tracks import Tracks
 
@@ -141,6 +142,14 @@ class Checked:
     rows: tuple[Row, ...]
     notes: tuple[str, ...] = ()
     more: int = 0
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Lanes:
+    """The curves below the cloth of a version: the receiver's pressure, the highest duty."""
+
+    version: int
+    lanes: tuple[Lane, ...]
 
 
 @dataclass(frozen=True, slots=True)

@@ -21,6 +21,7 @@ class Offers(QListWidget):
         super().__init__(pane)
         self._pane = pane
         self._offers: tuple[Offer, ...] = ()
+        self.setObjectName("offers")
         self.setAccessibleName("what may stand here")
         self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
         self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
@@ -43,7 +44,6 @@ class Offers(QListWidget):
             item = QListWidgetItem(says)
             item.setData(Qt.ItemDataRole.AccessibleTextRole, f"{one.text}, {one.says}")
             self.addItem(item)
-        self.setFont(self._pane.font())
         self.setCurrentRow(0)
         self._place()
         self.show()

@@ -2,10 +2,8 @@
 
 from collections.abc import Sequence
 
-from PySide6.QtCore import QMimeData, QPoint, QRect, Qt, QTimer, Signal
+from PySide6.QtCore import QEvent, QMimeData, QPoint, QRect, Qt, QTimer, Signal
 from PySide6.QtGui import (
-    QFont,
-    QFontDatabase,
     QKeyEvent,
     QPaintEvent,
     QResizeEvent,
@@ -23,7 +21,6 @@ from composer.edits.colouring import block_after
 from composer.score.bounds import most
 
 INDENT = "  "
-SMALLEST_PT, LARGEST_PT = 6.0, 48.0
 
 
 class TextPane(QPlainTextEdit):
@@ -31,6 +28,7 @@ class TextPane(QPlainTextEdit):
 
     changed: a change, as it is made; refused: a sentence on why something was not taken
     placed: the caret's line and column, from 1, when it has come to rest there
+    typed: a character that was typed; letters_wanted: 1 for larger letters, -1 for smaller
     asked: line, column and where on the screen, when somebody wants to know what a word means
     """
 
@@ -39,6 +37,7 @@ class TextPane(QPlainTextEdit):
     placed = Signal(int, int)
     asked = Signal(int, int, QPoint)
     typed = Signal(str)
+    letters_wanted = Signal(int)
 
     def __init__(self, parent: QWidget | None = None):
         super().__init__(parent)
@@ -51,14 +50,16 @@ class TextPane(QPlainTextEdit):
         self.setAccessibleDescription("The score as text. Control and Space completes a word; F1 shows all keys.")
         self.setTabChangesFocus(False)
         self.setCursorWidth(2)
-        font = QFontDatabase.systemFont(QFontDatabase.SystemFont.FixedFont)
-        font.setPointSizeF(max(font.pointSizeF(), 10.0))
-        self.setFont(font)
+        self.setObjectName("score")
         self.gutter = Gutter(self)
         self._rest = QTimer(self)
         self._rest.setSingleShot(True)
         self._rest.setInterval(60)
         self._rest.timeout.connect(self._tell_place)
+        self._soon = QTimer(self)
+        self._soon.setSingleShot(True)
+        self._soon.setInterval(0)
+        self._soon.timeout.connect(self.looks.colour_seen)
         self.document().contentsChange.connect(self._contents_change)
         self.cursorPositionChanged.connect(self._caret_moved)
         self.verticalScrollBar().valueChanged.connect(self.looks.colour_seen)
@@ -107,7 +108,7 @@ class TextPane(QPlainTextEdit):
         self._units = units
         self.changed.emit(Delta(at, out, cursor.selectedText().replace("\u2029", "\n")))
         # The layout is still being changed here; colours come when that is done.
-        QTimer.singleShot(0, self.looks.colour_seen)
+        self._soon.start()
 
     # ---- where things are -----------------------------------------------------------------------------------------------
 
@@ -174,9 +175,12 @@ class TextPane(QPlainTextEdit):
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Keep the line numbers beside the text."""
         super().resizeEvent(event)
+        self._place_gutter()
+        self.looks.colour_seen()
+
+    def _place_gutter(self) -> None:
         box = self.contentsRect()
         self.gutter.setGeometry(QRect(box.left(), box.top(), self.gutter.needs(), box.height()))
-        self.looks.colour_seen()
 
     def _make_room(self) -> None:
         self.setViewportMargins(self.gutter.needs(), 0, 0, 0)
@@ -279,18 +283,17 @@ class TextPane(QPlainTextEdit):
     def wheelEvent(self, event: QWheelEvent) -> None:
         """With Control the wheel makes letters larger or smaller."""
         if event.modifiers() & Qt.KeyboardModifier.ControlModifier:
-            self.resize_letters(1.0 if event.angleDelta().y() > 0 else -1.0)
+            self.letters_wanted.emit(1 if event.angleDelta().y() > 0 else -1)
         else:
             super().wheelEvent(event)
 
-    def resize_letters(self, points: float) -> None:
-        """Larger letters, or smaller."""
-        font = QFont(self.font())
-        font.setPointSizeF(min(max(font.pointSizeF() + points, SMALLEST_PT), LARGEST_PT))
-        self.setFont(font)
-        self._make_room()
-        self.gutter.update()
-        self.looks.colour_seen()
+    def changeEvent(self, event: QEvent) -> None:
+        """Other letters want another margin."""
+        super().changeEvent(event)
+        if event.type() in (QEvent.Type.FontChange, QEvent.Type.StyleChange):
+            self._make_room()
+            self._place_gutter()
+            self.looks.colour_seen()
 
     def event(self, event) -> bool:
         """A pointer that rests on a word asks what it means."""

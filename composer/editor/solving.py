@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from composer.editor.messages import Choice, Doing, Ghost, Hit, Mended, Retimed, Simulated, Superseded, Taking
-from composer.editor.rechecking import Known, recheck
+from composer.editor.rechecking import Known, recheck, same_motion
 from composer.edits import mending, taking
 from composer.edits.edit import Refusal
 from composer.limits.check import Check, check
@@ -19,6 +19,7 @@ from composer.retime.programme import Unsolved
 from composer.retime.proof import causes
 from composer.retime.retiming import Retiming, retime
 from composer.simulate.run import blocks, tail_s
+from composer.tracks import Tracks
 
 if TYPE_CHECKING:
     from composer.editor.desk import Desk
@@ -45,6 +46,7 @@ class Solver:
         self._of: Loaded | None = None
         self._rig = 0
         self._simulating = False
+        self._ran: tuple[bool, Tracks] | None = None
         self._known: Known | None = None
 
     def idle_or_simulating(self, idle: bool) -> bool:
@@ -79,8 +81,11 @@ class Solver:
         assert made is not None
         retimed = desk.retimed_mode and self.retiming is not None and self._of is made
         tracks = self.retiming.tracks if retimed and self.retiming is not None else made.tracks
-        if tracks.moves > MOST_MOVES:
+        if tracks.moves > MOST_MOVES or (
+            self._ran is not None and self._ran[0] == retimed and same_motion(self._ran[1], tracks)
+        ):
             return
+        self._ran = None
         self._simulating = True
         desk.say(Doing(desk.version, "simulating"))
         whole = max(tracks.duration_s, 1e-3) + tail_s(made.abilities)
@@ -103,7 +108,7 @@ class Solver:
                 )
             )
             yield
-        self._simulating = False
+        self._simulating, self._ran = False, (retimed, tracks)
 
     def mended(self, snag: Snag) -> Mended | Refusal:
         """What would mend a snag, each choice with its edit and what comes of it."""

@@ -1,0 +1,267 @@
+"""From what the workers tell to what is seen: one place that keeps cloth, strand, hanging fibers, transport and lists alike."""
+
+from typing import Any
+
+import numpy as np
+from PySide6.QtCore import QObject, QTimer, Signal
+
+from composer.editor.known import Known
+from composer.editor.messages import Checked, Choice, Lanes, Picture, Retimed, RigRead, Simulated, Told
+from composer.editor.retimed_panel import RetimedPanel
+from composer.editor.snags_panel import SnagsPanel
+from composer.editor.stage import HANG, RIG, Stage
+from composer.picture.palette import DARK, Theme
+from composer.picture.sampling import Sampler
+from composer.picture.scene import Stretch
+from composer.picture.strand import worded
+from composer.picture.strand_view import StrandView
+from composer.tracks import Tracks
+
+MOST_LIT = 4000
+"""Stretches that are lit at once."""
+
+RUN_MS = 120
+"""How often a simulated run that grows is drawn anew."""
+
+
+class Showing(QObject):
+    """What is shown. faults: of the newest text; fiber_changed: another strand is shown; redrawn: a new picture is up."""
+
+    faults = Signal(object)
+    fiber_changed = Signal(int)
+    redrawn = Signal()
+
+    def __init__(
+        self, stage: Stage, strand: StrandView, snags: SnagsPanel, retimed: RetimedPanel, parent: QObject | None = None
+    ):
+        super().__init__(parent)
+        self.known = Known()
+        self.stage, self.strand, self.snags, self.retimed_panel = stage, strand, snags, retimed
+        self.beside = True
+        self.as_retimed = False
+        self.hang: Any = None
+        self.rig_page: Any = None
+        self._theme = DARK
+        self._fiber: int | None = None
+        self._sampler: Sampler | None = None
+        self._ghost_said: Tracks | None = None
+        self._carried: Tracks | None = None
+        self._grow = QTimer(self)
+        self._grow.setSingleShot(True)
+        self._grow.setInterval(RUN_MS)
+        self._grow.timeout.connect(self._run_grown)
+        stage.transport.moved.connect(self._head_moved)
+        stage.cloth.head_moved.connect(self._head_put)
+        strand.head_moved.connect(self._head_put)
+        stage.cloth.stretch_changed.connect(strand.show_stretch)
+        strand.stretch_changed.connect(stage.cloth.show_stretch)
+        stage.leaves.currentChanged.connect(lambda _: self._show_hang())
+
+    # ---- what the workers tell ------------------------------------------------------------------------------------------
+
+    def hear(self, message: Any) -> None:
+        """Take in what a worker says, and show it."""
+        known = self.known
+        match message:
+            case Told():
+                known.stale = bool(message.faults)
+                self.faults.emit(message)
+            case RigRead():
+                known.take_rig(message)
+                self._show_rig()
+            case Picture():
+                if known.take_picture(message) is not None:
+                    self._show_picture()
+            case Checked():
+                weave = known.take_check(message)
+                if weave is not None:
+                    self._set_weave(weave)
+                    self.snags.show_rows(message.rows, message.notes, message.more)
+                    self._show_strand()
+            case Lanes():
+                weave = known.take_lanes(message)
+                if weave is not None:
+                    self._set_weave(weave)
+            case Retimed():
+                if known.take_retimed(message) and known.picture is not None:
+                    places = [known.picture.tempo.say_place(hit.was_s) for hit in message.hits]
+                    self.retimed_panel.show_retimed(message, places)
+                    self._show_ghost()
+                    self._show_strand()
+                    if self.as_retimed:
+                        self._set_piece()
+            case Simulated():
+                if known.take_run(message) and not self._grow.isActive():
+                    self._grow.start()
+
+    def _show_picture(self) -> None:
+        known = self.known
+        assert known.weave is not None and known.picture is not None
+        self._carried = None
+        self._set_weave(known.weave)
+        if self._fiber is not None and self._fiber >= len(known.names):
+            self._fiber = None
+        self._show_strand()
+        self._set_piece()
+        if known.picture.tracks.fibers and self._fiber is None:
+            self.show_fiber(0)
+        self.redrawn.emit()
+
+    def _set_weave(self, weave: Any) -> None:
+        # What is carried is shown until it is let go; the picture of the text comes then.
+        if self._carried is None:
+            chosen = self.snags.current
+            self.stage.cloth.set_weave(weave)
+            self._show_ghost()
+            if chosen is not None and self.known.checked is not None:
+                self.stage.cloth.choose_snag(None)
+
+    def _set_piece(self) -> None:
+        played = self.known.played(self.as_retimed)
+        if played is not None and self.known.abilities is not None:
+            tracks, bars = played
+            self._sampler = Sampler(tracks, self.known.abilities)
+            self.stage.transport.set_piece(bars, tracks.duration_s)
+
+    # ---- strand ---------------------------------------------------------------------------------------------------------
+
+    @property
+    def fiber(self) -> int | None:
+        """The fiber whose strand is shown."""
+        return self._fiber
+
+    def show_fiber(self, fiber: int | None) -> None:
+        """Show the strand of a fiber."""
+        if fiber != self._fiber:
+            self._fiber = fiber
+            self._show_strand()
+            self.stage.cloth.choose_fiber(fiber)
+            if self.hang is not None:
+                self.hang.light(() if fiber is None else (fiber,))
+            self.fiber_changed.emit(-1 if fiber is None else fiber)
+
+    def _show_strand(self) -> None:
+        known, fiber = self.known, self._fiber
+        if known.weave is None or fiber is None or known.abilities is None:
+            self.strand.set_strand(known.weave, None)
+            return
+        retimed = known.retimed.tracks if known.retimed is not None and known.retimed.hits else None
+        snags = worded(known.checked.check.snags, known.abilities, fiber) if known.checked is not None else ()
+        run = known.run.of(fiber) if known.run is not None and known.run.count else None
+        self.strand.set_strand(known.weave, fiber, retimed, run, snags)
+        self.strand.show_stretch(*self.stage.cloth.shown)
+
+    # ---- what would be --------------------------------------------------------------------------------------------------
+
+    def show_beside(self, beside: bool) -> None:
+        """Show the retiming beside what is written, or not."""
+        self.beside = beside
+        self._show_ghost()
+
+    def show_choice(self, choice: Choice | None) -> None:
+        """Show what would come of a choice, None for none."""
+        self._ghost_said = None if choice is None else choice.after.tracks
+        self._show_ghost(choice.say if choice is not None else "")
+
+    def _show_ghost(self, words: str = "") -> None:
+        known, cloth = self.known, self.stage.cloth
+        if self._carried is not None or cloth.weave is None:
+            return
+        if self._ghost_said is not None:
+            cloth.set_ghost(self._ghost_said, ("as written", words or "mended"))
+        elif self.beside and known.retimed is not None and known.retimed.hits:
+            cloth.set_ghost(known.retimed.tracks)
+        else:
+            cloth.set_ghost(None)
+
+    def carry(self, tracks: Tracks | None) -> None:
+        """Show tracks that would come of a drag under way; None: it is over."""
+        from dataclasses import replace
+
+        self._carried = tracks
+        if self.known.weave is None:
+            return
+        if tracks is None:
+            self._set_weave(self.known.weave)
+            self._show_strand()
+            return
+        weave = replace(self.known.weave, tracks=tracks)
+        self.stage.cloth.set_weave(weave)
+        if self._fiber is not None:
+            self.strand.set_strand(weave, self._fiber)
+
+    def light(self, stretches: Any) -> None:
+        """Light what a line of the text moves."""
+        if stretches is None:
+            self.stage.cloth.select(())
+            return
+        fibers, begins, ends = (getattr(stretches, name).tolist()[:MOST_LIT] for name in ("fiber", "from_s", "to_s"))
+        self.stage.cloth.select([Stretch(f, a, b) for f, a, b in zip(fibers, begins, ends, strict=True)])
+        if self.hang is not None:
+            self.hang.light(set(fibers))
+
+    # ---- rig ------------------------------------------------------------------------------------------------------------
+
+    def set_theme(self, theme: Theme) -> None:
+        """Everything in these colours."""
+        self._theme = theme
+        for view in (self.stage.cloth, self.strand, self.hang, self.rig_page):
+            if view is not None:
+                view.set_theme(theme)
+
+    def _show_rig(self) -> None:
+        known = self.known
+        assert known.rig is not None and known.abilities is not None
+        if self.hang is None:
+            from composer.picture.hang import HangView
+
+            self.hang = HangView(known.rig, known.abilities, view="three-quarter")
+            self.hang.fiber_clicked.connect(self.show_fiber)
+            self.hang.set_theme(self._theme)
+            self.stage.put(HANG, self.hang)
+        else:
+            self.hang.set_rig(known.rig, known.abilities)
+        if self.rig_page is None:
+            from composer.editor.rig_page import RigPage
+
+            self.rig_page = RigPage()
+            self.rig_page.fiber_chosen.connect(self.show_fiber)
+            self.rig_page.set_theme(self._theme)
+            self.stage.put(RIG, self.rig_page)
+        self.rig_page.show_rig(known.rig, known.abilities)
+
+    # ---- play head ------------------------------------------------------------------------------------------------------
+
+    def play_as_retimed(self, as_retimed: bool) -> None:
+        """Play what is retimed, or what is written; the head stays at its place in the score."""
+        was = self.known.warp(self.as_retimed).was(self.stage.transport.head_s)
+        self.as_retimed = as_retimed
+        self.known.run = None
+        self._set_piece()
+        self.stage.transport.move_to(self.known.warp(as_retimed).now(was))
+        self._show_strand()
+
+    def _head_moved(self, at_s: float) -> None:
+        written = self.known.warp(self.as_retimed).was(at_s)
+        self.stage.cloth.set_head(written, follow=self.stage.transport.playing)
+        self.strand.set_head(written)
+        self._show_hang()
+
+    def _head_put(self, written_s: float) -> None:
+        self.stage.transport.move_to(self.known.warp(self.as_retimed).now(written_s))
+
+    def _show_hang(self) -> None:
+        """Move the hanging fibers: as wanted, and as simulated where the run has come so far."""
+        if self.hang is None or self.stage.shown != HANG or self._sampler is None or self.known.abilities is None:
+            return
+        at = self.stage.transport.head_s
+        stroke = self.known.abilities.stroke
+        if len(stroke) != len(self.known.names):
+            return
+        wanted = self._sampler.shares(np.arange(len(stroke)), np.array([at]))[:, 0] * stroke
+        self.hang.show_strain(wanted, self.known.run.at(at) if self.known.run is not None else None)
+
+    def _run_grown(self) -> None:
+        self._show_strand()
+        if not self.stage.transport.playing:
+            self._show_hang()
