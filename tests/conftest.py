@@ -1,6 +1,9 @@
 """What tests of every room share: values from outside, and small rigs made without a file."""
 
 import json
+import os
+import shutil
+import tempfile
 import tomllib
 from collections.abc import Callable
 from pathlib import Path
@@ -17,6 +20,20 @@ TESTS = Path(__file__).parent
 # No test judges how long anything takes: a machine may be busy.
 settings.register_profile("drawcord", deadline=None, suppress_health_check=[HealthCheck.too_slow])
 settings.load_profile("drawcord")
+
+
+@pytest.fixture(scope="session", autouse=True)
+def own_runs():
+    """Runs of these tests listen in a folder of their own: no test vents what somebody else plays on this machine."""
+    was = os.environ.get("XDG_RUNTIME_DIR")
+    # Short, as a local socket's path may not be long.
+    folder = os.environ["XDG_RUNTIME_DIR"] = tempfile.mkdtemp(prefix="runs-")
+    yield folder
+    shutil.rmtree(folder, ignore_errors=True)
+    if was is None:
+        del os.environ["XDG_RUNTIME_DIR"]
+    else:
+        os.environ["XDG_RUNTIME_DIR"] = was
 
 
 @pytest.fixture(scope="session")

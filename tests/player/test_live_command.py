@@ -76,6 +76,12 @@ def started(*arguments, **more):
     return subprocess.Popen(command, **given)
 
 
+def engine_of(process):
+    """The process of the run that a command has started."""
+    found = subprocess.run(["pgrep", "-P", str(process.pid)], capture_output=True, text=True, check=True)
+    return int(found.stdout)
+
+
 def playing(address, params):
     return address == "/drawcord/state" and params[0] == "playing"
 
@@ -140,8 +146,10 @@ def test_a_killed_session_leaves_its_take_which_can_be_made_a_score(bench, repor
     reports.until(playing)
     SimpleUDPClient("127.0.0.1", port).send_message("/drawcord/fiber/r.3", 0.5)
     reports.until(lambda address, params: playing(address, params) and params[1] > 1.0)
-    process.kill()
+    engine = engine_of(process)
+    os.kill(engine, signal.SIGKILL)
     process.communicate()
+    assert process.returncode == 1
     assert not (bench / "out.score").exists()
     assert run(["take", "out.take", "-o", "saved.score"]) == 0
     loaded = load_score("saved.score")
@@ -195,7 +203,7 @@ class Terminal:
             preexec_fn=lambda: fcntl.ioctl(0, termios.TIOCSCTTY, 0),
         )  # fmt: skip
         os.close(slave)
-        self.shown = b""
+        self.shown = self.all = b""
 
     def until(self, text: str) -> None:
         """Read until a text has been shown since the last time; the time is only there so that a failure ends."""
@@ -205,11 +213,12 @@ class Terminal:
             ready, _, _ = select.select([self.master], [], [], 0.1)
             if ready:
                 try:
-                    self.shown += os.read(self.master, 65536)
+                    new = os.read(self.master, 65536)
                 except OSError:
                     break
+                self.shown += new
+                self.all += new
         assert text.encode() in self.shown, self.shown[-3000:]
-        self.all = self.shown
         self.shown = self.shown[self.shown.index(text.encode()) + len(text) :]
 
     def press(self, keys: bytes) -> None:
@@ -224,7 +233,7 @@ class Terminal:
 def test_the_screen_lives_and_its_keys_rest_arm_again_and_end(bench):
     terminal = Terminal("bench.rig.toml", "--to", "sim", "--osc", free_port(), NO_COLOR="1")
     terminal.until(" playing  Bench")
-    terminal.until("r.*")
+    assert b"r.*" in terminal.all
     assert not re.search(rb"\x1b\[[0-9;]*m", terminal.all)
     terminal.press(b"r")
     terminal.until(" idle  Bench")

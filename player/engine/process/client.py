@@ -4,6 +4,7 @@ import mmap
 import os
 import select
 import socket
+from contextlib import suppress
 from typing import Any
 
 from player.engine.process import messages
@@ -54,6 +55,10 @@ class Client:
             connection.connect(path)
         except OSError as why:
             connection.close()
+            if isinstance(why, ConnectionRefusedError):
+                # Its run was killed: nobody can listen there again.
+                with suppress(OSError):
+                    os.unlink(path)
             raise NotThere(f"no run answers at {path}: {why.strerror or why}") from None
         return cls(connection, commands, answers)
 
