@@ -34,7 +34,9 @@ class Diary:
     @property
     def broken(self) -> str:
         """Why the log could not be written any further, "" where it could."""
-        return self._log.broken if self._log is not None else ""
+        if self._log is None or not self._log.broken:
+            return ""
+        return f"{self._log.broken}; make room on its disk, or keep the log on another"
 
     def tell(self, kind: str, position_s: float, /, **told: Any) -> None:
         """A record with a JSON body, and the place in the score."""

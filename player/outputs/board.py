@@ -25,6 +25,8 @@ GREET_S = 6.0
 LISTEN_S, LONGEST_LISTEN_S = 0.6, 4.0
 """Seconds of pings before arming, so that the board's clock is known well; as many more as it takes, up to the second."""
 
+ASK_LINE = "is it powered, and is this its port and baud rate?"
+
 AT_REST = 0.25
 """Share of stroke that a fiber without pressure may be sensed at before arming: its sensor may be off by so much."""
 
@@ -98,8 +100,7 @@ class Board:
             self._until(lambda: host.state == link.FAILED or self._bound_us() < 5e5 / rate_Hz, LONGEST_LISTEN_S)
         board, trouble = host.board, host.trouble
         if board is None:
-            hint = "is it powered, and is this its port and baud rate?"
-            return (Mark(f"{who}: the board answers", False, self._why, hint), carries)
+            return (Mark(f"{who}: the board answers", False, self._why, ASK_LINE), carries)
         self.queue_sets = board.queue // set_frames(channels)
         self._name = board.name
         mismatch = trouble is not None and trouble.code == RIG_MISMATCH
@@ -122,14 +123,14 @@ class Board:
         ]
         if covers and not mismatch:
             ready = host.state == link.READY
-            marks.append(Mark(f"{who}: it is ready to arm", ready, "" if ready else self._why))
+            marks.append(Mark(f"{who}: it is ready to arm", ready, "" if ready else self._why, ASK_LINE))
         if host.state == link.READY:
             bound = self._bound_us()
             marks.append(
                 Mark(
-                    f"{who}: its clock is known to within a tick",
+                    f"{who}: its clock is known well enough to land within a tick",
                     bound < 1e6 / rate_Hz,
-                    f"to {bound:.0f} µs",
+                    f"to {bound / 1e3:.2f} ms; a tick is {1e3 / rate_Hz:g} ms",
                     "the line is slow or disturbed: look at the cable, or play at a lower --rate",
                 )
             )
