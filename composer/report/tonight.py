@@ -6,7 +6,6 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.signal import lfilter
 
 from composer.limits.abilities import Abilities
 from composer.limits.coil import coils_of
@@ -133,13 +132,18 @@ class Watch:
         self._most_at = np.where(more, time[at], self._most_at)
 
     def _count_warmth(self, on: NDArray[np.bool_], step: float) -> None:
+        """Each tick a coil comes nearer, by a share that its time constant says, to the warmth of being on, or to none."""
         for tau in np.unique(self._tau[np.isfinite(self._tau)]):
             which = np.flatnonzero(self._tau == tau)
-            keep = np.exp(-step / tau)
-            heat = on[which] / self._coils.duty[which, None]
-            warm, _ = lfilter([1.0 - keep], [1.0, -keep], heat, axis=1, zi=keep * self._warm[which, None])
-            self._warm[which] = warm[:, -1]
-            self._warmest[which] = np.maximum(self._warmest[which], warm.max(axis=1))
+            # The sum below is of rising powers, which stay far from what a float holds in stretches of so many ticks.
+            ticks = max(1, int(20.0 * tau / step))
+            heat = (1.0 - np.exp(-step / tau)) / self._coils.duty[which, None]
+            for begin in range(0, on.shape[1], ticks):
+                part = on[which, begin : begin + ticks]
+                rising = np.exp(step / tau * np.arange(1, part.shape[1] + 1))
+                warm = (self._warm[which, None] + np.cumsum(part * heat * rising, axis=1)) / rising
+                self._warm[which] = warm[:, -1]
+                self._warmest[which] = np.maximum(self._warmest[which], warm.max(axis=1))
 
     def tonight(self, found: Landings, say_place: Callable[[float], str], tracks: Tracks) -> Tonight:
         """All that was seen. say_place: bar and count of an instant in s"""
