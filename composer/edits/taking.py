@@ -1,10 +1,27 @@
 """The retiming taken into the text: numbers rewritten such that the text expands to the retimed times."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
-from composer.edits.edit import Edit, Refusal
+import numpy as np
+from numpy.typing import NDArray
+
+from composer.edits.edit import Edit, Refusal, apply, edit_of
+from composer.edits.instances import instances_of
 from composer.edits.made import Made, Remake
+from composer.edits.rewriting import Plan, Rewriting
+from composer.edits.wanted import chosen_times, wanted
+from composer.faults import Faults
+from composer.report.sentences import named
 from composer.retime.retiming import Retiming
+from composer.tracks import HOLD, SAME_INSTANT_S, Tracks, fiber_of
+
+Array = NDArray[np.float64]
+
+CLOSE_S = 1e-6
+"""Seconds to which the text as edited is where the retiming is, where numbers can say it."""
+
+ROUNDS = 4
+"""Ways of writing, each plainer than the one before: numbers, plain entries, move by move."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -26,4 +43,83 @@ def take(
 ) -> Taken | Refusal:
     """The retiming of `made.tracks` taken into the text, where instants as written lie from `from_s` to `to_s`: all, a
     passage, or one hit (both its instant). Takes a while: for a worker."""
-    raise NotImplementedError
+    proof = retiming.proof
+    if proof is None:
+        return Refusal("The pins are too close, so there is no retiming to take in.")
+    if retiming.shrunk:
+        return Refusal("This retiming shrinks moves: take in one that only moves them, or shrink the moves in the text first.")
+    times = chosen_times(proof, from_s, to_s)
+    if np.abs(times - proof.tracks.time_s).max(initial=0.0) <= SAME_INSTANT_S:
+        return Refusal("The retiming moves nothing there.")
+    aim = replace(proof.tracks, time_s=times, duration_s=max(retiming.tracks.duration_s, float(times.max(initial=0.0))))
+    if _runs_back(aim):
+        return Refusal("What moves there would run into what does not: take a longer passage in.")
+    all_, faults = instances_of(made.score, made.rig, made.abilities, made.tempo)
+    if faults:
+        return Refusal(f"{faults[0].found[:1].upper()}{faults[0].found[1:]}.")
+    new = wanted(all_, proof.tracks, times)
+    plan = Plan()
+    plan.flat |= set(all_.fiber[new.bent].tolist())
+    said = "the retiming" if from_s <= 0.0 and to_s == float("inf") else f"the retiming at {made.tempo.say_place(from_s)}"
+    why = "The retiming cannot be said in the text."
+    for _ in range(ROUNDS):
+        changes, notes = Rewriting(text, made, all_, new, aim, plan).changes_and_notes()
+        edit = edit_of(changes, f"{said} taken in")
+        try:
+            after = remake(apply(text, edit))
+        except Faults as wrong:
+            fault = wrong.faults[0]
+            why = f"The text would not be one that can be played: line {fault.where.line}, {fault.found}."
+            off, wrong_ones = np.inf, np.flatnonzero(_moved_fibers(proof.tracks, times))
+        else:
+            by_fiber = _off(aim, after.tracks)
+            off, wrong_ones = float(by_fiber.max(initial=0.0)), np.flatnonzero(by_fiber > CLOSE_S)
+            if off <= CLOSE_S:
+                return Taken(edit, after, off, notes)
+        touched = {int(n) for n in np.unique(all_.entry[np.isin(all_.fiber, wrong_ones)])}
+        if not touched <= plan.plain:
+            plan.plain |= touched
+        else:
+            plan.flat |= {int(f) for f in wrong_ones}
+    if np.isinf(off):
+        return Refusal(why)
+    who = named([made.rig.fibers[f].name for f in wrong_ones])
+    return Taken(edit, after, off, (*notes, f"{who}: up to {off * 1e3:.3g} ms off, as nearly as it can be written."))
+
+
+def _runs_back(aim: Tracks) -> bool:
+    """Whether some knot would come before the one before it on its fiber."""
+    falls = np.diff(aim.time_s) < -SAME_INSTANT_S
+    falls[aim.first[1:-1] - 1] = False
+    return bool(falls.any())
+
+
+def _moved_fibers(tracks: Tracks, times: Array) -> NDArray[np.bool_]:
+    moved = np.zeros(tracks.fibers, dtype=bool)
+    moved[fiber_of(tracks)[np.abs(times - tracks.time_s) > SAME_INSTANT_S]] = True
+    return moved
+
+
+def _off(aim: Tracks, got: Tracks) -> Array:
+    """(F,) the most by which a begin or an end of a move of one misses the nearest of the other, in s."""
+    off = np.zeros(aim.fibers)
+    for fiber in range(aim.fibers):
+        ours, theirs = _instants(aim, fiber), _instants(got, fiber)
+        if not len(ours) or not len(theirs):
+            off[fiber] = 0.0 if len(ours) == len(theirs) else np.inf
+            continue
+        off[fiber] = max(_farthest(ours, theirs), _farthest(theirs, ours))
+    return off
+
+
+def _instants(tracks: Tracks, fiber: int) -> Array:
+    low, high = int(tracks.first[fiber]), int(tracks.first[fiber + 1])
+    moves = low + np.flatnonzero(tracks.manner[low : high - 1] != HOLD)
+    return np.unique(np.concatenate([tracks.time_s[moves], tracks.time_s[moves + 1]]))
+
+
+def _farthest(some: Array, others: Array) -> float:
+    """The farthest that one of some instants is from the nearest of others, both rising."""
+    at = np.searchsorted(others, some)
+    before, after = others[np.maximum(at - 1, 0)], others[np.minimum(at, len(others) - 1)]
+    return float(np.minimum(np.abs(some - before), np.abs(some - after)).max())

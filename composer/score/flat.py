@@ -263,3 +263,10 @@ def _percent(strain: float, rig: Rig, fiber: int) -> str:
 
 def _number(value: float) -> str:
     return f"{value:.{DIGITS}f}".rstrip("0").rstrip(".")
+
+
+def fiber_in_words(tracks: Tracks, fiber: int, rig: Rig) -> list[tuple[str, float, bool, list[str]]]:
+    """All that one fiber does, as phrases: (name, start in s, whether it is added, lines), as `write_flat` has them."""
+    inline = _inline(tracks)
+    parts = [*_parts(tracks, fiber, rig, inline), *(part for part in _added(tracks, rig, inline) if part.fiber == fiber)]
+    return [(_phrase_name(part, rig), part.start_s, part.adds, part.lines) for part in parts]
