@@ -29,6 +29,7 @@ class Live:
         cell that begins there, then the strain of the point and the five worst values within reach
     first, per_strain: (F,) index of each fiber's first point, points for a strain of 1; per_strain is None where the points
         of a table do not lie evenly
+    steady: whether no rate falls anywhere, so that a step is as long as its rate says
     """
 
     abilities: Abilities
@@ -37,6 +38,7 @@ class Live:
     first: Index
     last_cell: int
     per_strain: Array | None
+    steady: bool
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -100,6 +102,7 @@ def live(abilities: Abilities, longest_s: float) -> Live:
         first=abilities.which * points,
         last_cell=points - 2,
         per_strain=(1.0 / step.mean(axis=1))[abilities.which] if even.all() else None,
+        steady=not (fill_falls.any() or exhaust_falls.any()),
     )
 
 
@@ -119,8 +122,10 @@ def look(tables: Live, strain: Array) -> Look:
     return Look(*lines, *found[2 * LINES + 1 :])
 
 
-def longest_steps(here: Look, dt_s: float) -> tuple[Array, Array]:
+def longest_steps(here: Look, dt_s: float, steady: bool = False) -> tuple[Array, Array]:
     """The longest straight steps up and down, in strain, that keep within the rates on the whole way in `dt_s`: (F,) each."""
+    if steady:
+        return dt_s * here.fill, dt_s * here.exhaust
     return dt_s * here.fill / (1.0 + dt_s * here.fill_falls), dt_s * here.exhaust / (1.0 + dt_s * here.exhaust_falls)
 
 

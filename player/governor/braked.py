@@ -23,22 +23,54 @@ def braked(
     stop: where they would stand if they braked now; fill, exhaust: fastest rates in 1/s, the same at every strain. Every
     fiber can still stop between rest and stroke afterwards, if it could before and `wanted` lies there.
     """
+    # It is done anew for every goal of a tick: each operation of numpy costs as much as fifty fibers, so they are few.
+    change = accel * dt_s
     way = np.copysign(1.0, wanted - stop)
     now = way * rate
-    distance = way * (wanted - strain)
-    change = accel * dt_s
-    most = np.where(way > 0.0, fill, exhaust)
-    forward = np.maximum(now, 0.0)
+    distance = wanted - strain
+    distance *= way
+    faster = now + change
     needs = accel * distance
-    gathering = (needs + 0.5 * forward * forward) / (change + forward)
-    left = change - now
-    room = np.maximum(left * left + 4.0 * needs - 2.0 * now * now, 0.0)
-    end = np.where(gathering >= now, gathering, 0.5 * (np.sqrt(room) - left))
-    end = np.minimum(end, np.minimum(most, now + change))
-    end = np.maximum(end, np.maximum(now - change, 0.0))
+    # With q = u + A dt the root of the braking is √(A D + A² dt² / 2 - q² / 4) - (A dt - q / 2).
+    room = 0.5 * change
+    room *= change
+    room += needs
+    half = 0.5 * faster
+    room -= half * half
+    np.maximum(room, 0.0, out=room)
+    end = np.sqrt(room, out=room)
+    half -= change
+    end += half
+    forward = np.maximum(now, 0.0)
+    gathering = 0.5 * forward
+    gathering *= forward
+    gathering += needs
+    forward += change
+    gathering /= forward
+    np.copyto(end, gathering, where=gathering >= now)
     # One that goes the other way stops first.
-    end = np.where(now < 0.0, np.minimum(now + change, 0.0), end)
-    changed = end - now
-    gone = now * dt_s + changed * (dt_s - 0.5 * np.abs(changed) / accel)
-    there = (np.abs(end) <= NEARLY_STILL * change) & (np.abs(distance - gone) <= THERE)
-    return np.where(there, wanted, strain + way * gone), np.where(there, 0.0, way * end)
+    most = np.where(way > 0.0, fill, exhaust)
+    np.copyto(most, 0.0, where=now < 0.0)
+    np.minimum(end, most, out=end)
+    np.minimum(end, faster, out=end)
+    least = np.minimum(faster, 0.0)
+    np.maximum(least, now - change, out=least)
+    np.maximum(end, least, out=end)
+    now -= end
+    gone = np.abs(now)
+    gone *= now
+    gone /= accel
+    gone *= 0.5
+    gone += dt_s * end
+    there = np.abs(end) <= NEARLY_STILL * change
+    if np.count_nonzero(there):
+        there &= np.abs(distance - gone) <= THERE
+        np.copyto(end, 0.0, where=there)
+        gone *= way
+        gone += strain
+        np.copyto(gone, wanted, where=there)
+    else:
+        gone *= way
+        gone += strain
+    end *= way
+    return gone, end

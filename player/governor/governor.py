@@ -25,6 +25,9 @@ here and half it is over when the fiber has been there for a tick."""
 LET_DOWN_TO = 0.45
 """Share of stroke to which a fiber is let down whose hold has lasted as long as it may."""
 
+ROUNDING = 1e-7
+"""Relative: a coil has been on long enough when it lacks so little; the check forgives ten times as much."""
+
 RECOVERED = 0.1
 """A coil that has had to stop fills again when so much of its burst is free, so that it does not chatter at its limit."""
 
@@ -35,38 +38,42 @@ class Governor:
 
     live: the rates, air and ways back
     braced: (B,) fibers with a limit of acceleration, a slice if all have one; accel: (F,) that limit, 1/s²,
-        and per_accel one over it, 0 for no limit
+        and half_per_accel half of one over it, 0 for no limit
     stroke, least, half, low, let_down_to: (F,) strains: usable stroke, one step of the drive, the rest as above
-    max_hold_s: (F,), inf for no limit; half_back_s: (F,) seconds that the way from half stroke to rest takes
+    over_s: (F,) seconds above half stroke and on the whole way back to rest from which on a hold is too long, inf for no limit
     duty, off_duty, burst_s, min_on_s, holding: (F,) of each coil: share of time that it may be on, and the rest of it, seconds
-        beyond it, how long it stays on once it is, and whether holding energises it
+        beyond it, how long it stays on once it is, and whether holding energises it; sure_on_s: min_on_s but for rounding
     late_s, spare_s: (F,) seconds that a way down may take beyond what its rates say, for ticks that begin late and the brakes,
         and the same for the way to rest, whose last step waits until the coil may be switched off
     store_L, refill_L_s: the supply
-    has_braced, has_duty, has_hold, has_holding: whether any fiber has such a limit
+    spare_on_s, recovered_s: (F,) seconds of its burst that a coil must have left to be switched on, and to fill once tired
+    has_braced, all_braced, has_duty, has_hold, has_holding: whether any fiber has such a limit
     """
 
     live: Live
     braced: Index | slice
     accel: Array
-    per_accel: Array
+    half_per_accel: Array
     stroke: Array
     least: Array
     half: Array
     low: Array
     let_down_to: Array
-    max_hold_s: Array
-    half_back_s: Array
+    over_s: Array
     duty: Array
     off_duty: Array
     burst_s: Array
     min_on_s: Array
+    sure_on_s: Array
     holding: NDArray[np.bool_]
     late_s: Array
     spare_s: Array
     store_L: float
     refill_L_s: float
+    spare_on_s: Array
+    recovered_s: Array
     has_braced: bool
+    all_braced: bool
     has_duty: bool
     has_hold: bool
     has_holding: bool
@@ -93,24 +100,27 @@ def governor_of(rig: Rig, abilities: Abilities, longest_tick_s: float = LONGEST_
         live=tables,
         braced=slice(None) if len(braced) == len(stroke) else braced,
         accel=abilities.accel,
-        per_accel=1.0 / abilities.accel,
+        half_per_accel=0.5 / abilities.accel,
         stroke=stroke,
         least=least,
         half=0.5 * stroke,
         low=LOW * stroke,
         let_down_to=LET_DOWN_TO * stroke,
-        max_hold_s=abilities.max_hold_s,
-        half_back_s=at_half.back,
+        over_s=abilities.max_hold_s - late + at_half.back,
         duty=coils.duty,
         off_duty=1.0 - coils.duty,
         burst_s=coils.burst_s,
         min_on_s=1.0 / coils.switch_Hz,
+        sure_on_s=(1.0 - ROUNDING) / coils.switch_Hz,
         holding=coils.holding,
         late_s=late,
         spare_s=late + at_least.back,
         store_L=store_L(rig.supply),
         refill_L_s=refill_L_s(rig.supply),
+        spare_on_s=(1.0 - coils.duty) / coils.switch_Hz,
+        recovered_s=RECOVERED * coils.burst_s + (1.0 - coils.duty) / coils.switch_Hz,
         has_braced=len(braced) > 0,
+        all_braced=0 < len(braced) == len(stroke),
         has_duty=bool(np.any(coils.duty < 1.0)),
         has_hold=bool(np.any(np.isfinite(abilities.max_hold_s))),
         has_holding=bool(np.any(coils.holding)),

@@ -17,14 +17,13 @@ from composer.limits.live import longest_steps, look
 from player.engine.ways import SAFE
 from player.governor.braked import braked
 from player.governor.causes import ACCEL, AIR, DUTY, HOLD, NONE, RATE, STROKE, SWITCHING
-from player.governor.governor import RECOVERED, Governor
+from player.governor.governor import Governor
 from player.governor.state import State
+
+_some = np.count_nonzero  # of a mask of few fibers a good deal faster than any()
 
 Array = NDArray[np.float64]
 Mask = NDArray[np.bool_]
-
-ROUNDING = 1e-7
-"""Relative: a coil has been on long enough when it lacks so little; the check forgives ten times as much."""
 
 
 def govern(governor: Governor, state: State, wanted: Array, dt_s: float, silent: Mask | None = None) -> State:
@@ -45,44 +44,64 @@ class _Tick:
 
     def __init__(self, governor: Governor, state: State, dt_s: float):
         self.governor, self.state, self.dt_s = governor, state, dt_s
-        self.up, self.down = longest_steps(state.here, dt_s)
+        self.up, self.down = longest_steps(state.here, dt_s, governor.live.steady)
         # A coil that is on, or is switched on now, and may not be switched off at the end of this tick.
-        on_s = np.where(state.on, state.since_on_s, 0.0)
-        self.too_soon = on_s < governor.min_on_s * (1.0 - ROUNDING) - dt_s
+        self.too_soon = np.where(state.on, state.since_on_s, 0.0) < governor.sure_on_s - dt_s
         self.stays_on = state.on & self.too_soon
         # Where a fiber would stand if it braked now, and the highest strain that it cannot help coming to.
         self.stop = self.top = strain = state.strain
+        self.at_rest = strain == 0.0
+        self.stands = None
         if governor.has_braced:
-            brakes = 0.5 * state.rate * np.abs(state.rate) * governor.per_accel
-            self.stop = np.minimum(np.maximum(strain + brakes, 0.0), governor.stroke)
+            self.stands = state.rate == 0.0
+            brakes = np.abs(state.rate)
+            brakes *= state.rate
+            brakes *= governor.half_per_accel
+            brakes += strain
+            np.maximum(brakes, 0.0, out=brakes)
+            self.stop = np.minimum(brakes, governor.stroke, out=brakes)
             self.top = np.maximum(self.stop, strain)
             b = governor.braced
             self.before = strain[b], state.rate[b], self.stop[b]
+            self._fastest()
+        self.idles_on = self.stays_on
+        if governor.has_holding:
+            self.idles_on = self.stays_on & ~(governor.holding & (strain > governor.least))
         self.start_band = np.where(state.on, 0.0, governor.least)
+        self.spent = state.spent_s - dt_s * governor.duty if governor.has_duty else state.spent_s
+        self.seen: tuple[Array | None, Mask, Array] = (None, state.on, state.spent_s)
         self.cut = np.zeros(len(strain), dtype=np.int8)  # `NONE`
 
     def to(self, wanted: Array, silent: Mask | None) -> State:
         governor, state = self.governor, self.state
         within = np.fmin(np.fmax(wanted, 0.0), governor.stroke)
         self._cuts(within != wanted, STROKE)
-        asked = np.where(wanted == wanted, wanted, within)
+        numbers = wanted == wanted
+        asked = wanted if _some(numbers) == len(wanted) else np.where(numbers, wanted, within)
         let_down, tired, goal = state.let_down, state.tired, within
         if silent is not None:
             goal = np.where(silent, 0.0, goal)
             asked = np.where(silent, 0.0, asked)
-        if governor.has_hold:
+        if _some(let_down):
             let_down = let_down & (goal > np.where(self.top <= governor.half, governor.half, governor.let_down_to))
             goal = self._instead(goal, let_down, governor.let_down_to, HOLD)
-        if governor.has_duty:
+        if _some(tired):
             goal = self._instead(goal, tired & (goal > self.top), self.top, DUTY)
         if silent is not None:
             self.down = np.where(silent & ~let_down, self.down / SAFE, self.down)
 
+            if governor.has_braced:
+                self._fastest()
+
         strain, rate = self._move(goal)
         self._cuts_on_the_way(goal, strain, rate)
-        goal, strain, rate, let_down, tired = self._lasting(goal, strain, rate, let_down, tired)
-        strain, rate, share = self._air(goal, strain, rate)
+        strain, rate, let_down, tired, share = self._lasting(goal, strain, rate, let_down, tired)
         return self._end(asked, strain, rate, let_down, tired, share)
+
+    def _fastest(self) -> None:
+        """Rates of braced fibers up and down in this tick."""
+        b = self.governor.braced
+        self.fill, self.exhaust = self.up[b] / self.dt_s, self.down[b] / self.dt_s
 
     def _instead(self, goal: Array, those: Mask, at: Array, cause: int) -> Array:
         """The goal, for some fibers another one, and why."""
@@ -96,40 +115,45 @@ class _Tick:
         """The goal as far as coils go: no start for less than a step of the drive, none that ends before it may."""
         governor, strain = self.governor, self.state.strain
         idle = np.abs(goal - strain) <= self.start_band
-        idle &= (goal > 0.0) | (strain == 0.0)
-        if self.governor.has_braced:
-            idle &= self.state.rate == 0.0
+        idle &= (goal > 0.0) | self.at_rest
+        if self.stands is not None:
+            idle &= self.stands
         aimed = np.where(idle, strain, goal)
         least = governor.least
-        idles = idle & self.stays_on
-        if governor.has_holding:
-            idles &= ~(governor.holding & (strain > least))
-        np.subtract(aimed, least, out=aimed, where=idles)
-        low = (aimed < least) & self.too_soon
-        if low.any():
+        np.subtract(aimed, least, out=aimed, where=idle & self.idles_on)
+        low = aimed < least
+        low &= self.too_soon
+        if _some(low):
             floor = np.minimum(self.stop, least) * (1.0 - 0.5 * self.dt_s / governor.min_on_s)
-            aimed = np.where(low, np.maximum(aimed, floor), aimed)
+            np.maximum(aimed, floor, out=aimed, where=low)
         return aimed
 
     def _move(self, goal: Array) -> tuple[Array, Array]:
         """Strain and rate at the end of the tick, on the way to a goal."""
-        governor, aimed, strain = self.governor, self._aim(goal), self.state.strain
+        governor, aimed = self.governor, self._aim(goal)
+        if governor.all_braced:
+            there, rate = braked(*self.before, aimed, governor.accel, self.fill, self.exhaust, self.dt_s)
+            np.maximum(there, 0.0, out=there)  # what rounding left outside
+            return np.minimum(there, governor.stroke, out=there), rate
+        strain = self.state.strain
         there = np.minimum(np.maximum(aimed, strain - self.down), strain + self.up)
         rate = (there - strain) / self.dt_s
         if governor.has_braced:
             b = governor.braced
-            fill, exhaust = self.up[b] / self.dt_s, self.down[b] / self.dt_s
-            at, rate[b] = braked(*self.before, aimed[b], governor.accel[b], fill, exhaust, self.dt_s)
-            there[b] = np.minimum(np.maximum(at, 0.0), governor.stroke[b])  # what rounding left outside
+            at, rate[b] = braked(*self.before, aimed[b], governor.accel[b], self.fill, self.exhaust, self.dt_s)
+            there[b] = np.minimum(np.maximum(at, 0.0), governor.stroke[b])
         return there, rate
 
     def _cuts_on_the_way(self, goal: Array, strain: Array, rate: Array) -> None:
         short = np.abs(goal - strain) > self.governor.least
+        if not _some(short):
+            return
         self._cuts(short, RATE)
         if self.governor.has_braced:
             most = np.where(rate > 0.0, self.up, self.down)
-            short &= np.abs(rate) * self.dt_s < most * (1.0 - 1e-9)
-            short &= self.governor.per_accel > 0.0
+            short &= np.abs(rate) < most * ((1.0 - 1e-9) / self.dt_s)
+            if not self.governor.all_braced:
+                short &= self.governor.half_per_accel > 0.0
             self._cuts(short, ACCEL)
 
     def _tops(self, strain: Array, rate: Array) -> Array:
@@ -137,127 +161,156 @@ class _Tick:
         if not self.governor.has_braced:
             return strain
         rising = np.maximum(rate, 0.0)
-        return strain + 0.5 * rising * rising * self.governor.per_accel
+        rising *= rising
+        rising *= self.governor.half_per_accel
+        rising += strain
+        return rising
 
     def _back_s(self, strain: Array, rate: Array) -> tuple[Array, Array]:
         """The highest strain that fibers must come to, and seconds from the tick's end to rest at most."""
-        here, start = self.state.here, self.state.strain
+        here = self.state.here
         top = self._tops(strain, rate)
-        back = here.back + np.maximum(top - start, 0.0) * here.back_up
+        back = top - self.state.strain
+        np.maximum(back, 0.0, out=back)
+        back *= here.back_up
+        back += here.back
         if self.governor.has_braced:
-            back = back + np.maximum(rate, 0.0) * self.governor.per_accel
+            back += np.maximum(rate, 0.0) * (2.0 * self.governor.half_per_accel)
         return top, back
 
-    def _on(self, strain: Array) -> Mask:
-        """Whether coils are energised in a tick that ends at `strain`."""
+    def _coils(self, strain: Array) -> tuple[Mask, Array]:
+        """Whether coils are energised in a tick that ends at `strain`, and what they have spent of their burst then."""
+        if self.seen[0] is strain:
+            return self.seen[1:]
+        governor = self.governor
         on = strain != self.state.strain
-        if self.governor.has_braced:
-            on |= self.state.rate != 0.0
-        if self.governor.has_holding:
-            on |= self.governor.holding & (strain > self.governor.least)
-        return on
-
-    def _spent(self, on: Mask) -> Array:
-        return np.maximum(self.state.spent_s + self.dt_s * (on - self.governor.duty), 0.0)
+        if self.stands is not None:
+            on |= ~self.stands
+        if governor.has_holding:
+            on |= governor.holding & (strain > governor.least)
+        spent = self.spent
+        if governor.has_duty:
+            spent = self.dt_s * on
+            spent += self.spent
+            np.maximum(spent, 0.0, out=spent)
+        self.seen = strain, on, spent
+        return on, spent
 
     def _slack(self, strain: Array, rate: Array, back: Array) -> Array:
         """Seconds of its burst that a coil would have left over when the fiber has gone back to rest from there."""
         governor = self.governor
-        way = np.maximum(back, governor.min_on_s) + governor.spare_s
+        way = np.maximum(back, governor.min_on_s)
+        way += governor.spare_s
+        way *= governor.off_duty
         at_rest = strain == 0.0
-        if governor.has_braced:
+        if self.stands is not None:
             at_rest &= rate == 0.0
-        way[at_rest] = 0.0
-        return governor.burst_s - self._spent(self._on(strain)) - governor.off_duty * way
+        np.copyto(way, 0.0, where=at_rest)
+        way += self._coils(strain)[1]
+        return np.subtract(governor.burst_s, way, out=way)
 
     def _too_long(self, top: Array, back: Array) -> Mask:
         """Whether a hold could not be over in time any more."""
         governor = self.governor
-        down = np.maximum(self.state.strain - top, 0.0) * self.state.here.back_down
-        lasts = self.state.above_s + self.dt_s + back - down + governor.late_s - governor.half_back_s
-        return (top > governor.half) & (lasts > governor.max_hold_s)
+        down = self.state.strain - top
+        np.maximum(down, 0.0, out=down)
+        down *= self.state.here.back_down
+        lasts = self.state.above_s + back
+        lasts -= down
+        return (lasts > governor.over_s - self.dt_s) & (top > governor.half)
 
     def _above(self, strain: Array) -> Array:
         """Seconds that a hold has lasted at the end of a tick that ends at `strain`."""
         governor, was = self.governor, self.state
-        above = (strain > governor.half) | ((was.strain > governor.half) & (strain > governor.low))
-        return np.where(above, was.above_s + self.dt_s, 0.0)
+        above = was.strain > governor.half
+        above &= strain > governor.low
+        above |= strain > governor.half
+        lasts = was.above_s + self.dt_s
+        lasts *= above
+        return lasts
 
     def _lasting(
         self, goal: Array, strain: Array, rate: Array, let_down: Mask, tired: Mask
-    ) -> tuple[Array, Array, Array, Mask, Mask]:
-        """Duty and hold: what they refuse is let down, or stays where it is, or comes back to rest."""
+    ) -> tuple[Array, Array, Mask, Mask, float]:
+        """Hold, duty and air: what they refuse is let down, or stays where it is, or comes back to rest; air is shared."""
         governor = self.governor
-        if not (governor.has_duty or governor.has_hold):
-            return goal, strain, rate, let_down, tired
-        hurried, refused = False, False
-        top, back = self._back_s(strain, rate)
+        slack, changed, way_back = None, False, governor.has_duty or governor.has_hold
+        top, back = self._back_s(strain, rate) if way_back else (self._tops(strain, rate), None)
+        rise = np.maximum(top - self.top, 0.0)
         if governor.has_hold:
             too_long = self._too_long(top, back)
-            if too_long.any():
+            if _some(too_long):
                 let_down = let_down | too_long
                 goal = self._instead(goal, too_long, np.minimum(goal, governor.let_down_to), HOLD)
-                hurried = self._hurry(too_long)
+                rise[too_long] = 0.0
+                self._hurry(too_long)
+                changed = True
         if governor.has_duty:
-            spare = governor.off_duty * governor.min_on_s
             slack = self._slack(strain, rate, back)
-            refuse = (top > self.top) & (slack < spare)
-            refused = bool(refuse.any())
-            if refused:
+            refuse = (slack < governor.spare_on_s) & (rise > 0.0)
+            if _some(refuse):
                 tired = tired | refuse
-                goal = self._instead(goal, refuse & (goal > self.top), self.top, DUTY)
-        if hurried or refused:
+                refuse &= goal > self.top
+                goal = self._instead(goal, refuse, self.top, DUTY)
+                rise[refuse] = 0.0
+                changed = True
+        share = self._air_share(rise)
+        if share < 1.0:
+            fills = rise > 0.0
+            goal = self._instead(goal, fills, self.top + share * rise, AIR)
+            changed = True
+        if changed:
             strain, rate = self._move(goal)
-        if governor.has_duty:
-            if hurried or refused:
+        if slack is not None:
+            if changed:
                 slack = self._slack(strain, rate, self._back_s(strain, rate)[1])
             forced = slack < 0.0
-            if forced.any():
+            if _some(forced):
                 tired = tired | forced
                 goal = self._instead(goal, forced, np.zeros_like(goal), DUTY)
                 self._hurry(forced)
                 strain, rate = self._move(goal)
-            recovered = (slack >= RECOVERED * governor.burst_s + spare) | (self.state.spent_s == 0.0)
-            tired = tired & ~recovered
-        return goal, strain, rate, let_down, tired
+            if _some(tired):
+                tired = tired & (slack < governor.recovered_s) & (self.state.spent_s != 0.0)
+        return strain, rate, let_down, tired, share
 
-    def _hurry(self, those: Mask) -> bool:
+    def _hurry(self, those: Mask) -> None:
         """These must come down as fast as they can, silent or not."""
-        self.down = np.where(those, longest_steps(self.state.here, self.dt_s)[1], self.down)
-        return True
-
-    def _air(self, goal: Array, strain: Array, rate: Array) -> tuple[Array, Array, float]:
-        """What the fibers ask of the supply, and where they come to if it has not all of that."""
-        governor, state = self.governor, self.state
-        rise = np.maximum(self._tops(strain, rate) - self.top, 0.0)
-        asked_L = float(np.dot(rise, state.here.air_up))
-        there_L = governor.store_L - state.air_missing_L
+        self.down = np.where(those, longest_steps(self.state.here, self.dt_s, self.governor.live.steady)[1], self.down)
         if self.governor.has_braced:
-            there_L -= float(np.dot(self.top - state.strain, state.here.air_up))
+            self._fastest()
+
+    def _air_share(self, rise: Array) -> float:
+        """How much of what it takes to rise so far the supply has, 1 for all of it."""
+        governor, state = self.governor, self.state
+        asked_L = float(rise.dot(state.here.air_up))
+        there_L = governor.store_L - state.air_missing_L
+        if governor.has_braced:
+            there_L -= float((self.top - state.strain).dot(state.here.air_up))
         there_L = max(there_L, 0.0)
-        if asked_L <= there_L:
-            return strain, rate, 1.0
-        share = there_L / asked_L
-        fills = rise > 0.0
-        self._cuts(fills, AIR)
-        return *self._move(np.where(fills, self.top + share * rise, goal)), share
+        return 1.0 if asked_L <= there_L else there_L / asked_L
 
     def _end(self, asked: Array, strain: Array, rate: Array, let_down: Mask, tired: Mask, share: float) -> State:
         governor, was, dt_s = self.governor, self.state, self.dt_s
         here = look(governor.live, strain)
-        drawn_L = float(np.maximum(here.air - was.here.air, 0.0).sum())
-        on = self._on(strain)
+        drawn = here.air - was.here.air
+        drawn_L = float(np.add.reduce(np.maximum(drawn, 0.0, out=drawn)))
+        since_on_s = was.since_on_s + dt_s
+        on, spent = self._coils(strain)
+        np.copyto(since_on_s, dt_s, where=on > was.on)
         by = asked - strain
         near = np.abs(by) <= governor.least
         self._cuts(near, NONE)
-        self._cuts(near & self.stays_on & (by != 0.0), SWITCHING)
+        near &= self.stays_on
+        if _some(near):
+            self._cuts(near & (by != 0.0), SWITCHING)
         return State(
             strain=strain,
             rate=rate,
             here=here,
             on=on,
-            since_on_s=np.where(on & ~was.on, dt_s, was.since_on_s + dt_s),
-            spent_s=self._spent(on) if governor.has_duty else was.spent_s,
+            since_on_s=since_on_s,
+            spent_s=spent,
             tired=tired,
             above_s=self._above(strain) if governor.has_hold else was.above_s,
             let_down=let_down,
