@@ -49,7 +49,11 @@ def layout(width: int, height: int, lane_count: int = 3, theme: Theme = DARK) ->
 
 def paint(painter: QPainter, scene: Scene, width: int, height: int, theme: Theme = DARK) -> None:
     """Draw a whole cloth, with everything round it, into a picture of that size."""
-    plan = layout(width, height, len(scene.lanes), theme)
+    paint_in(painter, layout(width, height, len(scene.lanes), theme), scene, width, height)
+
+
+def paint_in(painter: QPainter, plan: Layout, scene: Scene, width: int, height: int) -> None:
+    """As `paint`, with the layout given: its width may be less than what there is room for."""
     rows = image.rows_of(scene.bands, plan.room)
     painter.fillRect(0, 0, width, height, colour(plan.look.theme.ground))
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
@@ -60,7 +64,8 @@ def paint(painter: QPainter, scene: Scene, width: int, height: int, theme: Theme
     below = plan.top + rows.height
     free = height - below - plan.look.px(40) - plan.look.px(28)
     lanes.paint(painter, plan.look, scene, plan.left, below, plan.width, min(free, 2 * plan.lane_room))
-    legend.paint(painter, plan.look, scene, QRectF(plan.left, height - plan.look.px(36), plan.width, plan.look.px(30)))
+    box = QRectF(plan.left, height - plan.look.px(36), width - plan.left - plan.look.px(22), plan.look.px(30))
+    legend.paint(painter, plan.look, scene, box)
 
 
 def heading(painter: QPainter, plan: Layout, rows: Rows, scene: Scene, width: int) -> None:
@@ -95,7 +100,7 @@ def bars(painter: QPainter, plan: Layout, rows: Rows, scene: Scene) -> None:
     look = plan.look
     high = look.px(24)
     look.write(
-        painter, QRectF(look.px(16), plan.bars_top, plan.left - look.px(28), high), "bar", 12, look.theme.quiet_ink, RIGHT
+        painter, QRectF(look.px(16), plan.bars_top, plan.left - look.px(36), high), "bar", 12, look.theme.quiet_ink, RIGHT
     )
     for tick in _ticks(plan, scene):
         x = x_of(plan, scene, tick.at)

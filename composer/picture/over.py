@@ -73,14 +73,14 @@ def scene_of(view: View, weave: Weave, lanes_too: bool = True) -> Scene:
         snags=tuple(snag for snag in weave.snags if snag.fiber is None),
         pins_s=weave.pins_s,
         cues=weave.cues,
-        lanes=tuple(columns(lane, weave.to_s, view) for lane in weave.lanes if lanes_too),
+        lanes=tuple(columns(lane, weave.to_s, view.from_s, view.to_s, view.plan.width) for lane in weave.lanes if lanes_too),
     )
 
 
-def columns(lane: Lane, whole_s: float, view: View) -> Lane:
-    """A lane of the whole score as the window's columns have it: where one covers several, the worst of them."""
-    count, width = len(lane.values), view.plan.width
-    edge = (view.from_s + np.arange(width + 1) * view.per_px) / whole_s * count
+def columns(lane: Lane, whole_s: float, from_s: float, to_s: float, width: int) -> Lane:
+    """A lane of the whole score as `width` columns of a stretch have it: where one covers several, the worst of them."""
+    count = len(lane.values)
+    edge = np.linspace(from_s, to_s, width + 1) / whole_s * count
     begin = np.clip(np.floor(edge[:-1]), 0, count - 1).astype(int)
     end = np.clip(np.ceil(edge[1:]), 1, count).astype(int)
     if count and end[-1] - begin[0] > width:

@@ -5,7 +5,7 @@ how far a fiber has moved is told by lightness alone, so that a grey print tells
 snags are hatched, hits, pins and cues have shapes, states have words.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -199,7 +199,10 @@ LIGHT = Theme(
     extend=ramp(EXTEND_HUE_DEG, 0.93, 0.30),
 )
 
+PAPER = replace(LIGHT, name="paper", ground=(255, 255, 255))
+
 THEMES = {one.name: one for one in (DARK, LIGHT)}
+"""What a window may be shown in."""
 
 TEXT_ON: tuple[tuple[str, tuple[str, ...]], ...] = (
     ("ink", ("ground", "panel", "raised", "field")),

@@ -6,7 +6,9 @@ import numpy as np
 import pytest
 
 from composer.picture import palette
-from composer.picture.palette import THEMES
+from composer.picture.palette import PAPER
+
+THEMES = {**palette.THEMES, PAPER.name: PAPER}
 
 
 def pairs(table):
