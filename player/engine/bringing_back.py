@@ -1,8 +1,9 @@
 """After a run that ended at rest or vented: waiting for the operator, and bringing everything back by their deed."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
+from player.engine.asked import ENDS, Command
 from player.engine.boards import Boards
 from player.engine.clock import Clock
 from player.engine.sensing import Sensing
@@ -20,7 +21,7 @@ LOOK_S = 0.005
 
 @dataclass(frozen=True, slots=True, eq=False)
 class BringingBack:
-    """What is needed of an engine: its parts, and three of its deeds; `tend` hears boards and front ends."""
+    """What is needed of an engine: its parts, and some of its deeds; `tend` hears boards and front ends."""
 
     boards: Boards
     source: Source
@@ -30,6 +31,29 @@ class BringingBack:
     tend: Callable[[], None]
     preflight: Callable[[], tuple[Mark, ...]]
     arm: Callable[[], None]
+    vent: Callable[[], None]
+
+    def waits(
+        self, down_s: float, asked: Callable[[], list[Command]], returns: Callable[[], bool], returns_from: tuple[str, ...]
+    ) -> Iterator[None]:
+        """Wait for the operator, giving way now and again; ends once all is armed again, or is not to be brought back.
+
+        down_s: as `done` has it; asked: what has been asked since the last time; returns: whether somebody is there who could
+        returns_from: after which endings things are brought back, as the engine has it
+        """
+        while returns():
+            self.clock.wait_until(self.clock.now() + STAND_BY_S)
+            self.tend()
+            kinds = [command.kind for command in asked()]
+            if not ENDS.isdisjoint(kinds) or ("rest" in kinds and "stopped" not in returns_from):
+                return
+            if "vent" in kinds:
+                self.vent()
+                if "vented" not in returns_from:
+                    return
+            if "bring_back" in kinds and self.done(down_s):
+                return
+            yield
 
     def done(self, down_s: float) -> bool:
         """Find lost boards, go through the pre-flight, and arm; whether all of it went well. What did not is told.

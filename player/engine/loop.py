@@ -4,9 +4,7 @@ A set's due time follows from its tick's number, never from when the loop woke, 
 knows no terminal and no command line: it is given a source, outputs and a clock, and yields a snapshot a tick.
 """
 
-from collections import deque
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -15,8 +13,9 @@ from composer.limits.abilities import Abilities, abilities_of
 from composer.rig.model import Rig
 from player.engine.account import Account
 from player.engine.alarms import ALARMS, REST_ALL, REST_FIBER, VENT, Raised
+from player.engine.asked import AT_ONCE, ENDS, LEFT_SAID, Asked, Command
 from player.engine.boards import Boards
-from player.engine.bringing_back import STAND_BY_S, STAND_BY_SAID, BringingBack
+from player.engine.bringing_back import STAND_BY_SAID, BringingBack
 from player.engine.clock import Clock
 from player.engine.diary import Diary
 from player.engine.quiet import no_collecting
@@ -24,7 +23,7 @@ from player.engine.run_log import RunLog
 from player.engine.safety import Refused, Safety, after
 from player.engine.sensing import Sensing
 from player.engine.source import Source
-from player.engine.status import Ending, Lateness, Status
+from player.engine.status import Ending, Lateness, Status, status_of
 from player.engine.verdicts import ARMED, RUNNING, verdict
 from player.engine.ways import safe_ways
 from player.outputs.base import Event, Mark, Output
@@ -38,28 +37,12 @@ QUEUE_SHARE = 0.75
 SLICE_S = 0.005
 """The engine looks for what the operator asks at least this often, however slow the ticks are."""
 
-AT_ONCE = frozenset(("vent", "stop", "rest", "left"))
-"""What does not wait for the next tick."""
-
-ENDS = frozenset(("stop", "left"))
-"""What ends a run for good, so that nothing is brought back."""
-
-LEFT_SAID = "the front end that commanded is gone, and the rule is rest"
-
+STOPS_NOW = frozenset(("vent", "stop"))
 SETTLE_S = 1.3
 """Seconds that a board has to say that it has disarmed: on a disturbed line it may have to be told three times."""
 
 STILL = 1e-7
 """A fiber that moves less than this strain in a tick stands still."""
-
-
-@dataclass(frozen=True, slots=True)
-class Command:
-    """What the operator asks: pause, go_on, jump (`value` in s), next_cue, rest, vent, bring_back, or stop (rest, then vent);
-    or "left": whoever commanded is gone, and the rule is rest."""
-
-    kind: str
-    value: float = 0.0
 
 
 class Engine:
@@ -93,7 +76,7 @@ class Engine:
         self.boards = Boards(outputs)
         self.clock = clock
         self._dt = 1.0 / rate_Hz
-        self._asked: deque[Command] = deque(maxlen=1000)
+        self._asked = Asked()
         self._account = Account()
         self._due_s = clock.now()
         self._moving = 0
@@ -106,7 +89,7 @@ class Engine:
 
     def ask(self, kind: str, value: float = 0.0) -> None:
         """Hand the engine something the operator wants; it is done at the next tick, or within a few milliseconds."""
-        self._asked.append(Command(kind, value))
+        self._asked.put(kind, value)
 
     def keep_log(self, log: RunLog | None, say_place: Callable[[float], str] | None = None) -> None:
         """From here on all that happens goes into this log, each with its place in the score as `say_place` has it."""
@@ -176,7 +159,7 @@ class Engine:
                 # All that was ahead is used up. To catch up would be a leap; the score goes on later instead.
                 start, due = start + late, due + late
                 self._slip(late)
-            self._count(late)
+            self.lateness.count(late, self._dt, self.ahead_s)
             self._obey()
             if self.safety.state not in ("playing", "paused", "resting"):
                 break
@@ -205,45 +188,19 @@ class Engine:
     def _stand_by(self) -> Iterator[Status]:
         """After a fault, all at rest or vented: wait until the operator has had everything brought back, or ends the run."""
         self._account.tell(self.stand_by_said)
+        bringing = BringingBack(
+            self.boards, self.source, self.sensing, self.clock, self.tell, self.tend, self.preflight, self.arm, self.vent
+        )
         # What was lost falls by its own weight; until it can be down, nothing sets out.
         down_s = self.clock.now() + self._falls_s
-        while True:
-            self.clock.wait_until(self.clock.now() + STAND_BY_S)
-            self.tend()
-            asked = [command.kind for command in self._asked_now()]
-            if not ENDS.isdisjoint(asked) or ("rest" in asked and "stopped" not in self.returns_from) or not self.returns:
-                return
-            if "vent" in asked:
-                self._stop("vented", "vented by the operator", "vent")
-                if "vented" not in self.returns_from:
-                    return
-            if "bring_back" in asked and self._armed_again(down_s):
-                return
+        for _ in bringing.waits(down_s, self._asked_now, lambda: self.returns, self.returns_from):
             yield self.status()
-
-    def _armed_again(self, down_s: float) -> bool:
-        bringing = BringingBack(
-            self.boards,
-            self.source,
-            self.sensing,
-            self.clock,
-            self.tell,
-            self.tend,
-            self.preflight,
-            lambda: self._become("arm"),
-        )
-        return bringing.done(down_s) and self.safety.state == "armed"
 
     def _send(self, due: float, late: float) -> None:
         self._due_s = due
         command = self.sensing.applied(self.source.command)
         self._hear(self.boards.send(due, command))
         self._diary.set(due, late, self.source.position_s, command, self.source.strain)
-
-    def _count(self, late: float) -> None:
-        self.lateness.count(late)
-        self.lateness.late += late > self._dt
-        self.lateness.past_due += late > self.ahead_s
 
     def _slip(self, late: float) -> None:
         self.lateness.slips += 1
@@ -255,7 +212,7 @@ class Engine:
         """Wait until that moment, but do at once what cannot wait."""
         while True:
             self.listen()
-            if self._asked and any(command.kind in AT_ONCE for command in tuple(self._asked)):
+            if self._asked.has(AT_ONCE):
                 self._obey()
                 if self.safety.state == "vented":
                     return max(moment, self.clock.now())
@@ -274,7 +231,7 @@ class Engine:
 
     def _asked_now(self) -> list[Command]:
         """What has been asked since the last time, each of it logged."""
-        asked = [self._asked.popleft() for _ in range(len(self._asked))]
+        asked = self._asked.take()
         for command in asked:
             self._diary.tell("command", self.source.position_s, command=command.kind, value=command.value)
         return asked
@@ -373,51 +330,37 @@ class Engine:
         """All wants are at rest: once the last set has been due, tell every board to rest and disarm, and hear it say so."""
         self.clock.wait_until(self._due_s + self.source.lead_s + self._dt)
         self._hear(self.boards.rest(0.0))
-        until = self.clock.now() + SETTLE_S
-        while not self.boards.settled("idle") and self.clock.now() < until and self.safety.state != "vented":
-            self.clock.wait_until(self.clock.now() + SLICE_S)
-            self.tend()
-            if any(command.kind in ("vent", "stop") for command in tuple(self._asked)):
-                self._asked.clear()
-                self._stop("vented", "vented by the operator", "vent")
-        if self.safety.state == "vented":
-            return
-        if not self.boards.settled("idle"):
+        if self._settles("idle"):
+            if self.boards.vented:
+                # One that has vented by itself is disarmed, but not at rest: what stands is what is worse.
+                self._become("vent")
+        elif self.safety.state != "vented":
             self._fault("", "a board did not say that it has disarmed; it is vented", "note")
             self._stop("fault", "a board did not say that it has disarmed", "vent")
-        elif self.boards.vented:
-            # One that has vented by itself is disarmed, but not at rest: what stands is what is worse.
-            self._become("vent")
 
     def _vent(self) -> None:
         """Tell every board to vent, all of them before any is waited for; then hear them say that they have."""
         self._hear(self.boards.vent())
+        if not self._settles("vented"):
+            self._fault("", "a board did not say that it has vented: shut its supply by hand", "note")
+
+    def _settles(self, status: str) -> bool:
+        """Hear the boards until all are in that state; False where they are not within SETTLE_S, or were vented meanwhile."""
         until = self.clock.now() + SETTLE_S
-        while not self.boards.settled("vented") and self.clock.now() < until:
+        while not self.boards.settled(status) and self.clock.now() < until:
             self.clock.wait_until(self.clock.now() + SLICE_S)
             self.tend()
-        if not self.boards.settled("vented"):
-            self._fault("", "a board did not say that it has vented: shut its supply by hand", "note")
+            if status == "idle" and self._asked.has(STOPS_NOW):
+                self._asked.take()
+                self._stop("vented", "vented by the operator", "vent")
+            if status == "idle" and self.safety.state == "vented":
+                return False
+        return self.boards.settled(status)
 
     def status(self, late_s: float = 0.0) -> Status:
         """A snapshot; what was new to tell is told once."""
-        source = self.source
-        return Status(
-            state=self.safety.state,
-            phase=source.phase,
-            position_s=source.position_s,
-            duration_s=source.duration_s,
-            cue=source.cue.name if source.cue else "",
-            next_cue=source.next_cue.name if source.next_cue else "",
-            waiting=source.waiting.name if source.waiting else "",
-            moving=self._moving,
-            let_down=source.let_down,
-            ticks=self.lateness.ticks,
-            late_ticks=self.lateness.late,
-            past_due=self.lateness.past_due,
-            late_s=late_s,
-            links=self.boards.links,
-            told=self._account.news(),
+        return status_of(
+            self.safety.state, self.source, self.boards.links, self.lateness, self._moving, late_s, self._account.news()
         )
 
     def _end(self, began: float) -> None:

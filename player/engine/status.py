@@ -1,8 +1,13 @@
 """What the engine tells of itself: a snapshot after each tick, the lateness of ticks, and how the run ended."""
 
+import math
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 import numpy as np
+
+if TYPE_CHECKING:
+    from player.engine.source import Source
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,9 +58,11 @@ class Lateness:
     worst_s: float = 0.0
     classes: np.ndarray = field(default_factory=lambda: np.zeros(256, dtype=np.int64))
 
-    def count(self, late_s: float) -> None:
-        """Count a tick that came `late_s` after its moment."""
+    def count(self, late_s: float, tick_s: float = math.inf, ahead_s: float = math.inf) -> None:
+        """Count a tick that came `late_s` after its moment: late where by more than a tick, past due by more than `ahead_s`."""
         self.ticks += 1
+        self.late += late_s > tick_s
+        self.past_due += late_s > ahead_s
         self.worst_s = max(self.worst_s, late_s)
         self.classes[min(255, max(0, int(8.0 * np.log2(max(late_s, 1e-6) * 1e6))))] += 1
 
@@ -65,6 +72,30 @@ class Lateness:
             return 0.0
         which = int(np.searchsorted(np.cumsum(self.classes), share * self.ticks))
         return min(self.worst_s, 1e-6 * 2.0 ** ((which + 1) / 8.0)) if which else min(self.worst_s, 1e-6)
+
+
+def status_of(
+    state: str, source: "Source", links: tuple[tuple[str, str], ...], lateness: Lateness, moving: int, late_s: float,
+    told: tuple[str, ...],
+) -> Status:  # fmt: skip
+    """The snapshot of an engine whose source plays."""
+    return Status(
+        state=state,
+        phase=source.phase,
+        position_s=source.position_s,
+        duration_s=source.duration_s,
+        cue=source.cue.name if source.cue else "",
+        next_cue=source.next_cue.name if source.next_cue else "",
+        waiting=source.waiting.name if source.waiting else "",
+        moving=moving,
+        let_down=source.let_down,
+        ticks=lateness.ticks,
+        late_ticks=lateness.late,
+        past_due=lateness.past_due,
+        late_s=late_s,
+        links=links,
+        told=told,
+    )
 
 
 @dataclass(frozen=True, slots=True)

@@ -16,8 +16,8 @@ Array = NDArray[np.float64]
 
 MAGIC = b"drawshm\x00"
 VERSION = 1
-TEXT = 160
-"""Bytes of a name or a line; longer ones are cut."""
+LINE, NAME, WORD = 160, 96, 24
+"""Bytes of a line that was told, of a cue's name, of a state; longer ones are cut."""
 
 LINES = 12
 """Last lines of what was told."""
@@ -30,15 +30,15 @@ HEAD = np.dtype([("magic", "S8"), ("version", "<u4"), ("fibers", "<u4"), ("board
 FIELDS = (
     ("at_s", "<f8", "", "when this was written, on the engine's monotonic clock"),
     ("state", "u1", "", "index into STATE_NAMES"),
-    ("phase", f"S{TEXT}", "", "what the score is at"),
+    ("phase", f"S{WORD}", "", "what the score is at"),
     ("position_s", "<f8", "", "of the score"),
     ("duration_s", "<f8", "", "of the score"),
-    ("place", f"S{TEXT}", "", "position_s as bar and count"),
+    ("place", f"S{WORD}", "", "position_s as bar and count"),
     ("counts_a_minute", "<f8", "", "the running tempo; nan where there is none"),
-    ("cue", f"S{TEXT}", "", "the last cue passed"),
-    ("next_cue", f"S{TEXT}", "", "the one that comes"),
+    ("cue", f"S{NAME}", "", "the last cue passed"),
+    ("next_cue", f"S{NAME}", "", "the one that comes"),
     ("next_cue_s", "<f8", "", "its place in the score; nan without one"),
-    ("waiting", f"S{TEXT}", "", "the cue at which the score waits"),
+    ("waiting", f"S{NAME}", "", "the cue at which the score waits"),
     ("moving", "<u4", "", "fibers that move"),
     ("let_down", "<u4", "", "fibers that a pause, or an alarm, has let down"),
     ("ticks", "<u8", "", "since the start"),
@@ -59,10 +59,10 @@ FIELDS = (
     ("cut", "i1", "fibers", "index into player.governor.causes.CAUSES: why the governor holds it back"),
     ("by", "<f8", "fibers", "strain wanted less strain allowed"),
     ("touched", "u1", "fibers", "1 where a hand has it"),
-    ("link", f"S{TEXT}", "boards", "armed, idle, vented, fault, lost, closed: a word a board"),
+    ("link", f"S{WORD}", "boards", "armed, idle, vented, fault, lost, closed: a word a board"),
     ("supply_kPa", "<f8", "boards", "as last sensed; nan where it is not"),
     ("lines_told", "<u8", "", "how many lines have been told in all"),
-    ("lines", f"S{TEXT}", "lines", "the last of them, oldest first, empty ones before the first"),
+    ("lines", f"S{LINE}", "lines", "the last of them, oldest first, empty ones before the first"),
 )
 """A slot: name, type, what it has one of for each, meaning. Links are in the order of `about`'s "boards", supplies too."""
 
@@ -78,9 +78,9 @@ def size_of(fibers: int, boards: int) -> int:
     return HEAD.itemsize + 2 * slot_type(fibers, boards).itemsize
 
 
-def text(value: str) -> bytes:
-    """A text as a slot has it: UTF-8, cut between two characters."""
-    return value.encode(errors="replace")[:TEXT].decode(errors="ignore").encode()
+def text(value: str, most: int) -> bytes:
+    """A text as a slot has it: UTF-8 of at most so many bytes, cut between two characters."""
+    return value.encode(errors="replace")[:most].decode(errors="ignore").encode()
 
 
 class Writer:

@@ -67,9 +67,7 @@ ASKED = {
         Message("when_left", "another rule for this run", {"rule": "rule"}),
         Message("preflight", "the pre-flight once more, before arming", states=DISARMED),
         Message("arm", "arm all boards: the operator's own deed", states=("idle",)),
-        Message(
-            "play", "start, fibers first brought to that place", {"from_s": "seconds"}, states=("idle", "armed")
-        ),
+        Message("play", "start, fibers first brought to that place", {"from_s": "seconds"}, states=("idle", "armed")),
         Message("pause", "stand and hold", states=("playing",)),
         Message("go_on", "go on from a pause or a cue that waits", states=("paused",)),
         Message("next_cue", "go to the next cue", states=MOVING),

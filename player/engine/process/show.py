@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from composer.limits.coil import coils_of
 from composer.rig.model import Rig
 from player.engine.loop import Engine
-from player.engine.process.layout import LINES, STATE_NAMES, Writer, text
+from player.engine.process.layout import LINE, LINES, NAME, STATE_NAMES, WORD, Writer, text
 from player.engine.status import Status
 
 Array = NDArray[np.float64]
@@ -76,10 +76,11 @@ class Show:
 
     def _fill(self, status: Status, view: Any | None, commanded: bool, attached: int, now: float) -> None:
         slot, source, sensing = self._memory.slot, self._engine.source, self._engine.sensing
-        slot["at_s"], slot["state"], slot["phase"] = now, STATE_NAMES.index(status.state), text(status.phase)
+        slot["at_s"], slot["state"], slot["phase"] = now, STATE_NAMES.index(status.state), text(status.phase, WORD)
         slot["position_s"], slot["duration_s"] = status.position_s, status.duration_s
-        slot["place"] = text(self._say_place(status.position_s))
-        slot["cue"], slot["next_cue"], slot["waiting"] = text(status.cue), text(status.next_cue), text(status.waiting)
+        slot["place"] = text(self._say_place(status.position_s), WORD)
+        for name in ("cue", "next_cue", "waiting"):
+            slot[name] = text(getattr(status, name), NAME)
         slot["next_cue_s"] = source.next_cue.at_s if source.next_cue is not None else np.nan
         slot["moving"], slot["let_down"] = status.moving, status.let_down
         slot["ticks"], slot["late_ticks"], slot["past_due"] = status.ticks, status.late_ticks, status.past_due
@@ -94,12 +95,12 @@ class Show:
             slot["air_left"], slot["air_share"] = view.air_left, view.air_share
         self._boards(slot["link"], slot["supply_kPa"], sensing.supply_kPa)
         slot["lines_told"] = self._told
-        slot["lines"] = [b""] * (LINES - len(self._lines)) + [text(line) for line in self._lines]
+        slot["lines"] = [b""] * (LINES - len(self._lines)) + [text(line, LINE) for line in self._lines]
 
     def _boards(self, link: np.ndarray, supply: np.ndarray, kPa: dict[str, float]) -> None:
         states = {driver: state for drivers, state in self._engine.boards.links for driver in drivers.split("+")}
         for number, driver in enumerate(self._drivers):
-            link[number] = text(states.get(driver, "closed"))
+            link[number] = text(states.get(driver, "closed"), WORD)
             supply[number] = kPa.get(driver, np.nan)
 
 
