@@ -31,7 +31,7 @@ class Crew(QObject):
     doing = Signal(str)
     died = Signal(str)
 
-    def __init__(self, text: Callable[[], str], parent: QObject | None = None):
+    def __init__(self, text: Callable[[], str] = str, parent: QObject | None = None):
         super().__init__(parent)
         self._text = text
         self._file = ""
@@ -50,6 +50,10 @@ class Crew(QObject):
         self._stuck.setSingleShot(True)
         self._stuck.setInterval(STUCK_MS)
         self._stuck.timeout.connect(self._end_stuck)
+
+    def set_text(self, text: Callable[[], str]) -> None:
+        """Where the whole text is had from, for a worker that has to begin anew."""
+        self._text = text
 
     def warm(self) -> None:
         """Start both, so that they load what they need while the window comes up."""

@@ -77,7 +77,7 @@ class Known:
         self.bands, self.names = bands_of(told.rig), tuple(fiber.name for fiber in told.rig.fibers)
 
     def take_picture(self, told: Picture) -> Weave | None:
-        """A picture. Its snags are those of before until the new check has come; a retiming and a run of the same motion stay."""
+        """A picture. Snags of before stay until the new check has come, a retiming and a run of the same motion too."""
         if told.rig != self.rig_number or self.abilities is None:
             return None
         before = self.weave

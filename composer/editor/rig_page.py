@@ -204,8 +204,8 @@ class RigPage(QWidget):
         what = (
             f"water at {supply.pressure_kPa:g} kPa, pump {supply.compressor_L_min:g} L/min"
             if supply.medium == "water"
-            else f"air at {supply.pressure_kPa:g} kPa, receiver {supply.receiver_L:g} L from {supply.max_receiver_kPa:g} down to "
-            f"{supply.min_pressure_kPa:g} kPa, compressor {supply.compressor_L_min:g} L/min"
+            else f"air at {supply.pressure_kPa:g} kPa, receiver {supply.receiver_L:g} L from {supply.max_receiver_kPa:g} "
+            f"down to {supply.min_pressure_kPa:g} kPa, compressor {supply.compressor_L_min:g} L/min"
         )
         self._head.setText(f"<b>{_plain(rig.name)}</b>  {len(rig.fibers)} fibers, {what}  ({_plain(rig.file)})")
         self._fibers = _Fibers(rig, abilities)

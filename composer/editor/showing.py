@@ -1,5 +1,6 @@
 """From what the workers tell to what is seen: one place that keeps cloth, strand, hanging fibers, transport and lists alike."""
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -176,8 +177,6 @@ class Showing(QObject):
 
     def carry(self, tracks: Tracks | None) -> None:
         """Show tracks that would come of a drag under way; None: it is over."""
-        from dataclasses import replace
-
         self._carried = tracks
         if self.known.weave is None:
             return

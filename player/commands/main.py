@@ -6,6 +6,7 @@ import sys
 COMMANDS = {
     "check": ("composer.commands.check", "Expand a score, check it, and report what the rig cannot do."),
     "retime": ("composer.commands.retime", "Change the times as little as possible, so that the rig can do the score."),
+    "compose": ("composer.commands.compose", "Write a score in a window: text and cloth side by side."),
     "preview": ("composer.commands.preview", "Simulate how the fibers would really move."),
     "play": ("player.commands.play", "Play a score in real time."),
     "live": ("player.commands.live", "Play a rig by hand, or a score under the hands."),
