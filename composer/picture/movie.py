@@ -20,12 +20,10 @@ from composer.picture.material import Piece
 from composer.picture.palette import Theme
 from composer.picture.png import ready
 from composer.simulate.kept import Kept
-from composer.simulate.run import DEFAULT_HZ, blocks
+from composer.simulate.run import DEFAULT_HZ, Block, blocks
 
 Array = NDArray[np.float64]
 
-SMALLEST, LARGEST = (320, 240), (3840, 2160)
-SLOWEST_FPS, FASTEST_FPS = 5.0, 60.0
 MOST_KEPT = 1 << 26
 """Strains kept at most, 4 bytes each: fibers times frames."""
 
@@ -88,20 +86,40 @@ def plan_of(take: Take, theme: Theme = palette.DARK) -> Plan:
     )
 
 
-def simulated(piece: Piece, take: Take, rate_Hz: float = DEFAULT_HZ, progress: Callable[[float], None] = lambda share: None,
-              inverse: bool = True) -> Strains:  # fmt: skip
-    """Play the piece on the simulated rig up to the take's end, keeping what its frames and its cloth show."""
-    frames = Kept(np.array([take.time_s(n) for n in range(take.frames)]), piece.abilities.stroke)
-    cloth = Kept(
-        column_times(take.from_s, max(take.to_s, take.from_s + 1e-3), plan_of(take).cloth.width()), piece.abilities.stroke
-    )
+class Keeping:
+    """Watches a run: `add` every block in order; then `strains` are what the frames and the cloth of a take show."""
+
+    def __init__(self, piece: Piece, take: Take):
+        columns = column_times(take.from_s, max(take.to_s, take.from_s + 1e-3), plan_of(take).cloth.width())
+        self._frames = Kept(np.array([take.time_s(n) for n in range(take.frames)]), piece.abilities.stroke)
+        self._cloth = Kept(columns, piece.abilities.stroke)
+
+    def add(self, block: Block) -> None:
+        """Take in the next ticks."""
+        self._frames.add(block)
+        self._cloth.add(block)
+
+    @property
+    def strains(self) -> Strains:
+        """What was kept."""
+        return Strains(self._frames.strain, self._cloth.strain)
+
+
+def simulated(
+    piece: Piece,
+    take: Take,
+    rate_Hz: float = DEFAULT_HZ,
+    inverse: bool = True,
+    progress: Callable[[float], None] = lambda share: None,
+) -> Strains:
+    """Play a piece on the simulated rig up to the take's end and keep what it shows. progress: the share done, 0 to 1"""
+    keeping = Keeping(piece, take)
     for block in blocks(piece.tracks, piece.rig, piece.abilities, rate_Hz, inverse):
-        frames.add(block)
-        cloth.add(block)
+        keeping.add(block)
         progress(min(1.0, float(block.time_s[-1]) / max(take.to_s, 1e-3)))
         if float(block.time_s[-1]) >= take.to_s:
             break
-    return Strains(frames.strain, cloth.strain)
+    return keeping.strains
 
 
 class Film:

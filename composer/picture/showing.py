@@ -35,9 +35,7 @@ from composer.warp import along
 
 Array = NDArray[np.float64]
 
-KEYS = (
-    "Space play   I O L loop   , . speed   C counts   F S T view   R retimed   M simulated   D dark/light   0 all   Esc close"
-)
+KEYS = "Space play   I O L loop   , . speed   C counts   F S T view   R retimed   M simulated   D dark/light   Esc close"
 
 
 @dataclass(slots=True)
