@@ -21,7 +21,8 @@ WANDER_PPM = 2.0
 """What a fitted drift may be off later, through warming and ageing."""
 JUMP_US = 50_000.0
 SPREAD = 0.03
-"""A clock that is off by more than this share of the time since, and more than JUMP_US, has been set anew."""
+"""A clock that is off by more than JUMP_US, and more than this share of the time since and what was not known of it anyway, has
+been set anew."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,7 +78,8 @@ class Clock:
         if self._last is not None:
             guess = self.device_us(host_s)
             unwrapped = guess + ((device_us - guess + HALF) % TURN - HALF)
-            if abs(unwrapped - guess) > JUMP_US + half_us + SPREAD * abs(host_s - self._last.host_s) * 1e6:
+            doubt_us = JUMP_US + half_us + self.bound_us(host_s) + SPREAD * abs(host_s - self._last.host_s) * 1e6
+            if abs(unwrapped - guess) > doubt_us:
                 self.resets += 1
                 self.forget()
                 steady = False

@@ -82,3 +82,11 @@ def test_a_reading_of_the_device_is_told_in_time_of_the_host():
     clock = Clock()
     for at_s, truth_us in exchanges(clock, drift_ppm=100.0, jitter_s=1e-4, seconds=10.0):
         assert clock.host_s(int(truth_us) % TURN) == pytest.approx(at_s, abs=clock.bound_us(at_s) * 1e-6 + 2e-6)
+
+
+def test_a_first_exchange_that_was_held_up_on_its_way_back_makes_no_jump_of_the_next():
+    clock = Clock()
+    # The board read its clock at once; the answer lay about for 0.4 s before it was heard.
+    assert clock.heard(10.0, 10.4, 1_000_100)
+    assert clock.heard(10.5, 10.5002, 1_500_100)
+    assert clock.resets == 0 and abs(clock.device_us(10.5) - 1_500_000) < 1000
