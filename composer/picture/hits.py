@@ -1,6 +1,7 @@
 """Where moves land, ready for asking: what a pointer is near, what is in view, what one number of the text moves together."""
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -9,6 +10,10 @@ from composer.tracks import HOLD, Tracks, fiber_of
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
+
+
+LEAST_MOVE_S = 1e-3
+"""A hit that moves less than this is where it was."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -25,6 +30,7 @@ class Hits:
     span: float
 
 
+@lru_cache(maxsize=4)
 def hits_of(tracks: Tracks) -> Hits:
     """The hits of tracks: the end of every segment that is no hold."""
     segment = np.flatnonzero(tracks.manner != HOLD)
@@ -32,6 +38,17 @@ def hits_of(tracks: Tracks) -> Hits:
     at = tracks.time_s[np.minimum(segment + 1, len(tracks.time_s) - 1)]
     span = float(tracks.time_s.max(initial=0.0)) + 2.0
     return Hits(segment, fiber, at, fiber * span + at, span)
+
+
+@lru_cache(maxsize=4)
+def moved_hits(tracks: Tracks, ghost: Tracks) -> tuple[Index, Array, Array]:
+    """The hits that are at another instant in `ghost`, (M,) each: fiber, instant here, instant there; none of other knots."""
+    hits = hits_of(tracks)
+    if len(ghost.time_s) != len(tracks.time_s) or not np.array_equal(ghost.first, tracks.first):
+        return hits.fiber[:0], hits.at_s[:0], hits.at_s[:0]
+    there = ghost.time_s[np.minimum(hits.segment + 1, len(ghost.time_s) - 1)]
+    moved = np.abs(there - hits.at_s) > LEAST_MOVE_S
+    return hits.fiber[moved], hits.at_s[moved], there[moved]
 
 
 def nearest(hits: Hits, fiber: int, at_s: float, within_s: float) -> int:

@@ -2,19 +2,19 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
-from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
 from PySide6.QtGui import QImage, QPainter, QPolygonF
 
-from composer.picture import cloth, lanes
-from composer.picture.hits import Hits, in_view
+from composer.picture import cloth
+from composer.picture.heading import scene_of
+from composer.picture.hits import Hits, in_view, moved_hits
 from composer.picture.image import Rows
-from composer.picture.look import LEFT, RIGHT, colour, pen
+from composer.picture.look import LEFT, colour, pen
 from composer.picture.sampling import SPLIT_FROM
-from composer.picture.scene import Lane, Scene, Stretch
+from composer.picture.scene import Stretch
 from composer.picture.view import View
 from composer.picture.weave import Weave
 from composer.tracks import Tracks
@@ -55,122 +55,6 @@ def marks_of(snags: Sequence[Stretch]) -> tuple[NDArray[np.int64], Array, Array]
     fiber = np.array([-1 if snag.fiber is None else snag.fiber for snag in snags], dtype=np.int64)
     begin, end = (np.array([getattr(snag, name) for snag in snags], dtype=float) for name in ("from_s", "to_s"))
     return fiber, begin, end
-
-
-def scene_of(view: View, weave: Weave, lanes_too: bool = True) -> Scene:
-    """The headings of what is shown, as a scene without threads."""
-    count = weave.tracks.fibers
-    return Scene(
-        title="",
-        subtitle="",
-        from_s=view.from_s,
-        to_s=view.to_s,
-        share=np.zeros((count, 0)),
-        extending=np.zeros(count, dtype=bool),
-        bands=weave.bands,
-        names=weave.names,
-        tempo=weave.tempo,
-        snags=tuple(snag for snag in weave.snags if snag.fiber is None),
-        pins_s=weave.pins_s,
-        cues=weave.cues,
-        lanes=tuple(columns(lane, weave.to_s, view.from_s, view.to_s, view.plan.width) for lane in weave.lanes if lanes_too),
-    )
-
-
-def columns(lane: Lane, whole_s: float, from_s: float, to_s: float, width: int) -> Lane:
-    """A lane of the whole score as `width` columns of a stretch have it: where one covers several, the worst of them."""
-    count = len(lane.values)
-    edge = np.linspace(from_s, to_s, width + 1) / whole_s * count
-    begin = np.clip(np.floor(edge[:-1]), 0, count - 1).astype(int)
-    end = np.clip(np.ceil(edge[1:]), 1, count).astype(int)
-    if count and end[-1] - begin[0] > width:
-        extreme = np.fmin if lane.supply else np.fmax
-        values = extreme.reduceat(lane.values[: end[-1]], begin)
-    else:
-        values = lane.values[begin] if count else np.zeros(0)
-    values = np.where((edge[1:] <= 0.0) | (edge[:-1] >= count), np.nan, values)
-    return Lane(
-        lane.name, lane.unit, values, lane.low, lane.high, lane.colour, lane.limit, lane.limit_word, lane.supply
-    )  # fmt: skip
-
-
-def around(painter: QPainter, view: View, shown: Shown) -> None:
-    """Draw the headings above, the names beside and the lanes below."""
-    scene, plan, look = scene_of(view, shown.weave), view.plan, view.look
-    rows = Rows(view.shown, view.rows.top, view.rows.bottom, view.rows.crowded)
-    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    cloth.bars(painter, plan, rows, scene)
-    if shown.ghost is not None:
-        _which(painter, view, shown)
-    _names(painter, view, shown)
-    painter.save()
-    painter.setClipRect(QRectF(plan.left - look.px(6), 0, plan.width + look.px(20), view.height))
-    cloth.pins(painter, plan, rows, scene)
-    cloth.cues(painter, plan, rows, scene)
-    painter.restore()
-    if view.lanes_height:
-        lanes.paint(painter, look, scene, plan.left, view.lanes_top, plan.width, view.lanes_height)
-
-
-def _which(painter: QPainter, view: View, shown: Shown) -> None:
-    """What the two halves of a thread are."""
-    look, plan = view.look, view.plan
-    for row, (word, of) in enumerate(zip(shown.words, (look.theme.ink, look.theme.ghost), strict=True)):
-        box = QRectF(look.px(10), plan.cues_top + row * look.px(16), plan.left - look.px(24), look.px(16))
-        look.write(painter, box, f"{'above' if row == 0 else 'below'}: {word}", 11.5, of, LEFT)
-
-
-def _names(painter: QPainter, view: View, shown: Shown) -> None:
-    """Names of bands beside a bracket, of fibers where there is room, the one that the keys are on always."""
-    look, plan, weave = view.look, view.plan, shown.weave
-    line, top, foot = look.px(13), plan.top, plan.top + view.shown
-    narrow = plan.left < look.px(140)
-    split = look.px(10) if narrow else max(look.px(24), plan.left - look.px(13) - look.width(_longest(weave.names), 11, True))
-    painter.save()
-    painter.setClipRect(QRectF(0, top - look.px(2), plan.left, view.shown + look.px(4)))
-    shown_fibers = view.fibers_shown()
-    taken = -np.inf
-    for band in weave.bands:
-        if band.last <= shown_fibers.start or band.first >= shown_fibers.stop:
-            continue
-        begin, end = max(view.y_of(band.first)[0], top), min(view.y_of(band.last - 1)[1], foot)
-        painter.setPen(pen(look.theme.edge, look.px(2)))
-        x = plan.left - look.px(5)
-        painter.drawLine(QPointF(x, begin), QPointF(x, end))
-        high = view.rows.bottom[band.first] - view.rows.top[band.first]
-        single = high >= line
-        if single:
-            for fiber in range(max(band.first, shown_fibers.start), min(band.last, shown_fibers.stop)):
-                upper, lower = view.y_of(fiber)
-                chosen = fiber == shown.fiber
-                box = QRectF(split, (upper + lower - line) / 2, plan.left - look.px(11) - split, line)
-                of = look.theme.chosen if chosen else look.theme.quiet_ink
-                look.write(painter, box, weave.names[fiber], 11, of, RIGHT, bold=chosen)
-        middle = (begin + end) / 2
-        if middle - line / 2 >= taken and not (single and (narrow or band.last - band.first == 1)):
-            room = split - look.px(12) if single else plan.left - look.px(18)
-            look.write(
-                painter, QRectF(look.px(8), middle - line / 2, room, line), band.name, 11.5, look.theme.ink, LEFT, bold=True
-            )
-            taken = middle + line / 2
-    if shown.fiber is not None and shown.fiber in shown_fibers:
-        upper, lower = view.y_of(shown.fiber)
-        middle, size = (upper + lower) / 2, look.px(4)
-        if lower - upper < line:
-            box = QRectF(0, middle - line * 0.6, plan.left, line * 1.2)
-            painter.fillRect(box, colour(look.theme.raised))
-            box.adjust(look.px(8), 0, -look.px(14), 0)
-            look.write(painter, box, weave.names[shown.fiber], 11, look.theme.chosen, RIGHT, bold=True)
-        painter.setPen(Qt.PenStyle.NoPen)
-        painter.setBrush(colour(look.theme.chosen))
-        x = plan.left - look.px(8)
-        painter.drawPolygon(QPolygonF([QPointF(x, middle - size), QPointF(x + 2 * size, middle), QPointF(x, middle + size)]))
-    painter.restore()
-
-
-@lru_cache(maxsize=4)
-def _longest(names: tuple[str, ...]) -> str:
-    return max(names, key=len, default="")
 
 
 def over(painter: QPainter, view: View, shown: Shown) -> None:
@@ -355,28 +239,23 @@ def rhomb(
 
 def _moved(painter: QPainter, view: View, shown: Shown) -> None:
     """Arrows from where hits are to where they would be; a dotted strip above where threads are too thin for arrows."""
-    tracks, ghost, look = shown.weave.tracks, shown.ghost, view.look
+    look, ghost = view.look, shown.ghost
     assert ghost is not None
-    if len(ghost.time_s) != len(tracks.time_s) or not np.array_equal(ghost.first, tracks.first):
-        return
-    segment = shown.hits.segment
-    there = ghost.time_s[np.minimum(segment + 1, len(ghost.time_s) - 1)]
-    moved = np.abs(there - shown.hits.at_s) > 1e-3
-    fibers = view.fibers_shown()
-    seen = moved & (np.maximum(there, shown.hits.at_s) >= view.from_s) & (np.minimum(there, shown.hits.at_s) <= view.to_s)
+    fiber, here, there = moved_hits(shown.weave.tracks, ghost)
+    first, last = np.minimum(here, there), np.maximum(here, there)
+    seen = (last >= view.from_s) & (first <= view.to_s)
     strip = view.plan.strip_top + look.px(8)
-    begin, end = (np.minimum(there, shown.hits.at_s)[seen], np.maximum(there, shown.hits.at_s)[seen])
     painter.setPen(pen(look.theme.ghost, look.px(2), dash=(1.5, 1.5)))
-    painter.drawLines([QLineF(a, strip, b, strip) for a, b in _joined(*_spans(view, begin, end, look.px(2)))])
-    seen &= (shown.hits.fiber >= fibers.start) & (shown.hits.fiber < fibers.stop)
-    which = np.flatnonzero(seen)
+    painter.drawLines([QLineF(a, strip, b, strip) for a, b in _joined(*_spans(view, first[seen], last[seen], look.px(2)))])
+    fibers = view.fibers_shown()
+    which = np.flatnonzero(seen & (fiber >= fibers.start) & (fiber < fibers.stop))
     tall = view.rows.bottom[fibers.start] - view.rows.top[fibers.start] if len(fibers) else 0
     if tall < max(SPLIT_FROM, look.px(SPLIT_FROM)) or len(which) > MOST_HITS:
         return
     for index in which.tolist():
-        top, bottom = view.y_of(int(shown.hits.fiber[index]))
+        top, bottom = view.y_of(int(fiber[index]))
         y = top + (bottom - top) * 0.72
-        _arrow(painter, view, view.x_of(float(shown.hits.at_s[index])), view.x_of(float(there[index])), y)
+        _arrow(painter, view, view.x_of(float(here[index])), view.x_of(float(there[index])), y)
 
 
 def _arrow(painter: QPainter, view: View, begin: float, end: float, y: float) -> None:

@@ -8,9 +8,9 @@ from PySide6.QtCore import QBuffer, QByteArray, QIODevice, QMarginsF, QRectF, Qt
 from PySide6.QtGui import QFontMetricsF, QPageLayout, QPageSize, QPainter, QPdfWriter
 
 from composer.picture import cloth, png
+from composer.picture.heading import columns
 from composer.picture.image import column_times, extends
 from composer.picture.look import LEFT, RIGHT, Look, colour, painting, pen
-from composer.picture.over import columns
 from composer.picture.palette import PAPER
 from composer.picture.print_plan import PAGE_S, Named, Sheet, names_on, sheets
 from composer.picture.sampling import AT_ONCE, Sampler

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -41,6 +42,29 @@ class Sampler:
         each = np.repeat(fibers, len(times))
         strain = strain_in(self._motion, each, segment, np.tile(times, len(fibers)))
         return strain.reshape(len(fibers), len(times)) / self._stroke[fibers, None]
+
+
+@lru_cache(maxsize=4)
+def sampler_of(tracks: Tracks, abilities: Abilities) -> Sampler:
+    """The sampler of some tracks; kept for those last asked for, as several views ask for the same."""
+    return Sampler(tracks, abilities)
+
+
+@lru_cache(maxsize=4)
+def differing(tracks: Tracks, other: Tracks) -> NDArray[np.bool_]:
+    """(F,) which fibers move otherwise in `other`, tracks of as many fibers."""
+    count, theirs = np.diff(tracks.first), np.diff(other.first)
+    alike = np.flatnonzero(count == theirs)
+    differs = np.ones(tracks.fibers, dtype=bool)
+    if not alike.size:
+        return differs
+    begins = np.concatenate([[0], np.cumsum(count[alike])[:-1]])
+    within = np.arange(int(count[alike].sum())) - np.repeat(begins, count[alike])
+    here, there = (np.repeat(one.first[:-1][alike], count[alike]) + within for one in (tracks, other))
+    same = np.abs(tracks.time_s[here] - other.time_s[there]) <= 1e-6
+    same &= np.all(np.abs(tracks.curve[here] - other.curve[there]) <= 1e-9, axis=1)
+    differs[alike] = ~np.logical_and.reduceat(same, begins)
+    return differs
 
 
 @dataclass(frozen=True, slots=True, eq=False)
