@@ -87,7 +87,6 @@ ACTIONS: tuple[Action, ...] = (
         "&Counts to be heard",
         "Ctrl+Shift+K",
         "a click on each count, where the machine has sound",
-        check=True,
     ),
     Action(
         "finer_grid",

@@ -342,7 +342,7 @@ class Deeds:
             else:
                 self._go_to_seconds(float(stretches.from_s.min()))
 
-        self.crew.ask("moved", self.pane.place, go)
+        self.crew.ask("moved", self.pane.place[:1], go)
 
     def do_loop_from(self) -> None:
         """The passage begins here."""
@@ -369,9 +369,10 @@ class Deeds:
         transport = self.stage.transport
         transport.set_speed(1.0 if transport.head.speed == 0.5 else 0.5)
 
-    def do_clicks(self, on: bool) -> None:
-        """The counts heard."""
-        self.sound_counts(on)
+    def do_clicks(self) -> None:
+        """The counts heard, or not."""
+        transport = self.stage.transport
+        transport.set_counts_sound(not transport.counts_sound)
 
     def do_finer_grid(self) -> None:
         """A finer grid."""

@@ -20,6 +20,7 @@ from composer.editor.messages import (
     Changed,
     Checked,
     Doing,
+    Failed,
     Lanes,
     Mode,
     Picture,
@@ -115,7 +116,7 @@ class Desk:
         """The tracks at hand made ready for asking; once a text."""
         assert self.made is not None
         if self._threads is None or self._threads.tracks is not self.made.tracks:
-            self._threads = threads_of(self.made.score, self.made.tracks)
+            self._threads = threads_of(self.made)
         return self._threads
 
     def remake(self, text: str) -> Loaded:
@@ -245,10 +246,23 @@ class Desk:
                     continue
                 except Faults as wrong:
                     value = Refusal(wrong.faults[0].found)
+                except Exception as error:
+                    # A question that goes wrong takes nothing else with it.
+                    value = Refusal(own_fault(error))
+                    self.say(Failed(self.version, value.say))
             del self._asked[place]
             self.say(Answer(ask.number, ask.version, ask.what, value))
             return True
         return False
+
+
+def own_fault(error: Exception) -> str:
+    """A fault of the program itself, with the place where it came up."""
+    trace = error.__traceback__
+    while trace and trace.tb_next:
+        trace = trace.tb_next
+    at = f" ({os.path.basename(trace.tb_frame.f_code.co_filename)}:{trace.tb_lineno})" if trace else ""
+    return f"drawcord met a fault of its own: {type(error).__name__}: {error}{at}"
 
 
 def _solver(desk: Desk) -> Any:

@@ -82,6 +82,7 @@ class TextPane(QPlainTextEdit):
         self._units = self.document().characterCount() - 1
         self.document().setModified(False)
         self.looks.set_marks([])
+        self.moveCursor(QTextCursor.MoveOperation.Start)
         self.looks.colour_seen()
 
     def change(self, deltas: Sequence[Delta]) -> None:

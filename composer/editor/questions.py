@@ -39,8 +39,8 @@ def _source(desk: "Desk", fiber: int, seconds: float) -> threads.Source | None:
     return threads.source_at(desk.threads(), fiber, seconds)
 
 
-def _moved(desk: "Desk", line: int, column: int) -> threads.Stretches:
-    return threads.moved_by(desk.threads(), line, column)
+def _moved(desk: "Desk", line: int) -> threads.Stretches:
+    return threads.moved_by(desk.threads(), line)
 
 
 def _drag(

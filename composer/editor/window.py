@@ -2,7 +2,7 @@
 
 from typing import Any
 
-from PySide6.QtCore import QByteArray, QElapsedTimer, QPoint, QSettings, QSize, Qt, QTimer
+from PySide6.QtCore import QByteArray, QPoint, QSettings, QSize, Qt, QTimer
 from PySide6.QtGui import QAction, QCloseEvent, QKeySequence, QResizeEvent
 from PySide6.QtWidgets import QApplication, QMainWindow, QMenu, QSplitter, QTabWidget, QToolTip, QVBoxLayout, QWidget
 
@@ -28,13 +28,10 @@ from composer.editor.stage import Stage
 from composer.edits.completion import Offer
 from composer.edits.edit import Edit, Refusal
 from composer.picture.palette import THEMES
-from composer.picture.play_head import advanced
 from composer.picture.strand_view import StrandView
 
 SIZE = QSize(1280, 800)
 LETTERS_MS = 150
-JUMP_S = 0.1
-"""A head that is so far from where it should be by now has been put elsewhere."""
 
 
 class ComposeWindow(Deeds, QMainWindow):
@@ -66,9 +63,6 @@ class ComposeWindow(Deeds, QMainWindow):
         self._own_scale = 1.0
         self._scale = 0.0
         self._theme = THEMES["dark"]
-        self._metronome: Any = None
-        self._clock = QElapsedTimer()
-        self._heard = self.stage.transport.head
         self._letters = QTimer(self)
         self._letters.setSingleShot(True)
         self._letters.setInterval(LETTERS_MS)
@@ -174,8 +168,6 @@ class ComposeWindow(Deeds, QMainWindow):
         self.retimed.hit_chosen.connect(self._hit_chosen)
         self.retimed.take_wanted.connect(self.take)
         stage.transport.loop_changed.connect(self._passage_changed)
-        stage.transport.moved.connect(self._tick)
-        stage.transport.playing_changed.connect(lambda _: self._sound())
 
     # ---- text -----------------------------------------------------------------------------------------------------------
 
@@ -211,7 +203,7 @@ class ComposeWindow(Deeds, QMainWindow):
 
     def _caret_placed(self, line: int, column: int) -> None:
         self.foot.say("place", f"line {line}, column {column}")
-        self.crew.ask("moved", (line, column), self._light)
+        self.crew.ask("moved", (line,), self._light)
 
     def _light(self, stretches: Any) -> None:
         self.showing.light(None if isinstance(stretches, Refusal) or stretches is None else stretches)
@@ -369,40 +361,6 @@ class ComposeWindow(Deeds, QMainWindow):
     def _passage_changed(self, loop: Any) -> None:
         warp = self.showing.known.warp(self.showing.as_retimed)
         self.retimed.set_passage(None if loop is None else (warp.was(loop[0]), warp.was(loop[1])))
-
-    # ---- sound ----------------------------------------------------------------------------------------------------------
-
-    def sound_counts(self, on: bool) -> None:
-        """Have the counts heard while the head runs; where the machine has no sound, nothing happens."""
-        if self._metronome is not None:
-            self._metronome.stop()
-        self._metronome = None
-        if on:
-            from composer.picture.metronome import Metronome
-
-            self._metronome = Metronome()
-            self._sound()
-
-    def _sound(self) -> None:
-        played = self.showing.known.played(self.showing.as_retimed)
-        if self._metronome is not None and played is not None:
-            self._clock.start()
-            self._heard = self.stage.transport.head
-            self._metronome.start(self._heard, played[1])
-
-    def _tick(self, at_s: float) -> None:
-        """Sound goes on with the head; where that has jumped, it begins anew."""
-        played = self.showing.known.played(self.showing.as_retimed)
-        if self._metronome is None or played is None or not self.stage.transport.playing:
-            return
-        passed = self._clock.restart() / 1000.0
-        head = self.stage.transport.head
-        due = advanced(self._heard, passed)
-        if abs(due.at_s - at_s) > JUMP_S or (head.speed, head.loop_s) != (self._heard.speed, self._heard.loop_s):
-            self._sound()
-        else:
-            self._heard = head
-            self._metronome.run(passed, played[1])
 
     # ---- looks ----------------------------------------------------------------------------------------------------------
 

@@ -13,7 +13,7 @@ from contextlib import suppress
 from typing import Any, BinaryIO
 
 from composer.editor import framing
-from composer.editor.desk import SOLVER, Desk
+from composer.editor.desk import SOLVER, Desk, own_fault
 from composer.editor.messages import Again, Ask, Changed, Failed, Whole
 
 NICE = 5
@@ -54,7 +54,7 @@ def serve(role: str, into: BinaryIO, out: BinaryIO) -> None:
         except Exception as error:
             busy = True
             desk.drop()
-            framing.write(out, Failed(desk.version, _own_fault(error)))
+            framing.write(out, Failed(desk.version, own_fault(error)))
 
 
 class _Count:
@@ -74,14 +74,6 @@ class _Count:
 
 def _is_text(message: Any) -> bool:
     return isinstance(message, (Whole, Changed, Again)) and not isinstance(message, Ask)
-
-
-def _own_fault(error: Exception) -> str:
-    trace = error.__traceback__
-    while trace and trace.tb_next:
-        trace = trace.tb_next
-    at = f" ({os.path.basename(trace.tb_frame.f_code.co_filename)}:{trace.tb_lineno})" if trace else ""
-    return f"drawcord met a fault of its own: {type(error).__name__}: {error}{at}"
 
 
 def main() -> None:
