@@ -31,9 +31,7 @@ def check_call(wanted: Wanted) -> None:
     form = form_of(wanted.path)
     if form is None:
         endings = " nor ".join(FORMS)
-        raise click.BadParameter(
-            f"'{wanted.path}' ends in neither {endings}, which say what is made.", param_hint="--movie"
-        )
+        raise click.BadParameter(f"'{wanted.path}' ends in neither {endings}, which say what is made.", param_hint="--movie")
     small, large = SMALLEST_MOVIE, LARGEST_MOVIE
     if not (small[0] <= wanted.width <= large[0] and small[1] <= wanted.height <= large[1]):
         raise click.BadParameter(

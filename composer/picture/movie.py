@@ -122,6 +122,11 @@ def simulated(
     return keeping.strains
 
 
+def look_room(plan: Plan) -> int:
+    """Pixels round the cloth that the play head may reach into."""
+    return plan.look.px(8)
+
+
 class Film:
     """Draws the frames of a take. What stands still is drawn once; `frame` lays over it what moves."""
 
@@ -142,7 +147,8 @@ class Film:
         """The picture of one frame, the same image every time, drawn anew: take what is wanted of it before the next."""
         plan, at_s = self._plan, self.take.time_s(number)
         painter = QPainter(self._frame)
-        for box in (plan.head, plan.hang, plan.bars.united(plan.cloth)):
+        room = look_room(plan)
+        for box in (plan.head, plan.hang, plan.bars.united(plan.cloth).adjusted(-room, 0, room, room)):
             painter.drawImage(box, self._still, box)
         painter.save()
         painter.setClipRect(plan.hang)
