@@ -9,9 +9,12 @@ from composer.shapes import BACKWARDS, QUIET
 
 
 def plain_entry(score: Score, entry: Entry, fibers: str, phrase: str, place: str, own: bool) -> str:
-    """An entry's line with those options that say how, not when or who; `own`: the phrase's instants are the final ones."""
+    """An entry's line with a start as text, and those options that say how, not when or who.
+
+    own: the phrase's instants are the final ones, so that nothing stretches them
+    """
     row = score.lines[score.file][entry.span.line - 1]
-    line = f"  {fibers}  {phrase}  at {place}"
+    line = f"  {fibers}  {phrase}{place}"
     for name in ("scale", "stretch", "firm"):
         span = span_of(entry, f"{name} number")
         if span is not None and not (own and name == "stretch"):

@@ -17,7 +17,7 @@ from composer.edits.selection import selection
 from composer.edits.values import counts_from_place
 from composer.edits.wanted import Wanted
 from composer.score.flat import fiber_in_words
-from composer.score.model import Duration, Phrase, Section
+from composer.score.model import Duration, Entry, Phrase, Section
 from composer.score.numbers import write_place_like
 from composer.score.spans import Found, span_of, text_at, time_handles
 from composer.tracks import Tracks
@@ -111,8 +111,8 @@ class Rewriting:
         if self.all.backwards[which]:
             shift = float(self.new.start_s[which] - self.all.start_s[which])
             moved = np.abs(self.new.until_s[rows] - self.all.until_s[rows] - shift) if len(rows) else np.zeros(1)
-            early = np.abs(self.new.leaves_s[rows] - self.all.leaves_s[rows] - shift) if len(rows) else np.zeros(1)
-            if max(moved.max(), early.max()) > SAME_S:
+            early = np.abs(self.new.leaves_s[rows] - self.all.leaves_s[rows] - shift) * self.all.goes[rows]
+            if max(moved.max(), early.max(initial=0.0)) > SAME_S:
                 return None
             same = abs(shift) <= SAME_S
             return Saying((), float(self.all.start_count[which] if same else self.tempo.counts(self.new.start_s[which])))
@@ -214,7 +214,7 @@ class Rewriting:
             entry = self.all.entries[user.entry]
             written = lines.setdefault(user.entry, [])
             if user.fibers != (-1,):
-                place = place_text(user.start_count, self.made)
+                place = self._start_text(user, entry)
                 fibers = selection(user.fibers, self.score, self.made.rig)
                 written.append(plain_entry(self.score, entry, fibers, name, place, bool(user.own)))
         for n, written in lines.items():
@@ -232,6 +232,21 @@ class Rewriting:
             else:
                 self.changes.append(change_at(self.text, span, f"  # written out below: {row.strip()}"))
                 self._own_section(section, written)
+
+    def _start_text(self, user: _User, entry: Entry) -> str:
+        """Where a plain entry starts: in the words that are there if that is where it did, else a place."""
+        section = self.sections[id(entry)]
+        if section.repeat is None:
+            begins = float(self.tempo.counts_of(section.at))
+            if entry.at is not None:
+                begins = float(self.tempo.counts_of(entry.at))
+            elif entry.after is not None:
+                begins = float(self.tempo.shifted(begins, float(entry.after.value), entry.after.unit))
+            if abs(begins - user.start_count) < 1e-9:
+                written = entry.at or entry.after
+                word = "at" if entry.at is not None else "after"
+                return "" if written is None else f"  {word} {text_at(self.text, written.span)}"
+        return f"  at {place_text(user.start_count, self.made)}"
 
     def _own_section(self, section: Section, written: list[str]) -> None:
         """A section of its own for entries that are not repeated, behind the one that they were in."""

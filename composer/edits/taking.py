@@ -6,10 +6,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.edits.edit import Edit, Refusal, apply, edit_of
-from composer.edits.instances import instances_of
+from composer.edits.instances import Instances, instances_of
 from composer.edits.made import Made, Remake
 from composer.edits.rewriting import Plan, Rewriting
-from composer.edits.wanted import chosen_times, wanted
+from composer.edits.wanted import Wanted, chosen_times, wanted
 from composer.faults import Faults
 from composer.report.sentences import named
 from composer.retime.retiming import Retiming
@@ -58,6 +58,7 @@ def take(
     if faults:
         return Refusal(f"{faults[0].found[:1].upper()}{faults[0].found[1:]}.")
     new = wanted(all_, proof.tracks, times)
+    changed = _changed(all_, new)
     plan = Plan()
     plan.flat |= set(all_.fiber[new.bent].tolist())
     said = "the retiming" if from_s <= 0.0 and to_s == float("inf") else f"the retiming at {made.tempo.say_place(from_s)}"
@@ -76,7 +77,7 @@ def take(
             off, wrong_ones = float(by_fiber.max(initial=0.0)), np.flatnonzero(by_fiber > CLOSE_S)
             if off <= CLOSE_S:
                 return Taken(edit, after, off, notes)
-        touched = {int(n) for n in np.unique(all_.entry[np.isin(all_.fiber, wrong_ones)])}
+        touched = {int(n) for n in np.unique(all_.entry[np.isin(all_.fiber, wrong_ones) & changed])}
         if not touched <= plan.plain:
             plan.plain |= touched
         else:
@@ -85,6 +86,16 @@ def take(
         return Refusal(why)
     who = named([made.rig.fibers[f].name for f in wrong_ones])
     return Taken(edit, after, off, (*notes, f"{who}: up to {off * 1e3:.3g} ms off, as nearly as it can be written."))
+
+
+def _changed(all_: Instances, new: Wanted) -> NDArray[np.bool_]:
+    """(N,) which instances are to be elsewhere, in part at least."""
+    changed = np.abs(new.start_s - all_.start_s) > SAME_INSTANT_S
+    rows = (np.abs(new.until_s - all_.until_s) > SAME_INSTANT_S) | (
+        all_.goes & (np.abs(new.leaves_s - all_.leaves_s) > SAME_INSTANT_S)
+    )
+    changed[all_.instance[rows]] = True
+    return changed
 
 
 def _runs_back(aim: Tracks) -> bool:

@@ -8,7 +8,6 @@ from numpy.typing import NDArray
 from composer.edits.instances import Instances
 from composer.retime.events import knot_times
 from composer.retime.proof import Proof
-from composer.shapes import NAMES
 from composer.tracks import HOLD, SAME_INSTANT_S, Tracks
 
 Array = NDArray[np.float64]
@@ -18,7 +17,8 @@ Flags = NDArray[np.bool_]
 BENT_S = 1e-7
 """Seconds by which a knot within a move may miss where the move as a whole would have it; beyond, no number says that."""
 
-TIED = frozenset({NAMES.index("sudden"), NAMES.index("step")})
+LEAST_S = 5e-9
+"""Seconds by which a line must come after the one before it; nearer, they would be one instant."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -113,7 +113,8 @@ def _ways(found: Wanted, all_: Instances, which: int, rows: Index, was: Array, n
 def _own_start(all_: Instances, row: int) -> bool:
     """Whether a move starts by itself, not at the line before: `over`, or as late as it can."""
     line = all_.written[int(all_.row[row])]
-    return line.shape in ("sudden", "step") or bool(all_.leaves_s[row] > all_.before_s[row] + SAME_INSTANT_S)
+    over = line.over is not None and not all_.backwards[all_.instance[row]]
+    return over or line.shape in ("sudden", "step") or bool(all_.leaves_s[row] > all_.before_s[row] + SAME_INSTANT_S)
 
 
 def _stays(found: Wanted, all_: Instances, rows: Index) -> None:
@@ -128,14 +129,19 @@ def _stays(found: Wanted, all_: Instances, rows: Index) -> None:
         elif not all_.goes[following] and all_.until_s[row] >= all_.leaves_s[following] - SAME_INSTANT_S:
             found.until_s[row] = found.until_s[following] - float(all_.until_s[following] - all_.until_s[row])
     for row in still:
+        if row == rows[0] and all_.place[row] == 0 and all_.until_s[row] <= all_.before_s[row]:
+            continue  # where the phrase begins
         tied = row < rows[-1] and all_.goes[row + 1] and not _own_start(all_, row + 1)
-        if tied or row == rows[0]:
-            continue
-        low = float(found.until_s[row - 1])
+        if not tied and row > rows[0]:  # it goes with what it holds
+            found.until_s[row] = float(all_.until_s[row]) + float(found.until_s[row - 1] - all_.until_s[row - 1])
+        low = float(found.until_s[row - 1]) + LEAST_S if row > rows[0] else -np.inf
         high = float(found.leaves_s[row + 1]) if row < rows[-1] and all_.goes[row + 1] else np.inf
-        if not low < found.until_s[row] <= high:
+        if high < low:
+            # The hold has come to nothing, but a line has to come after the one before it.
+            found.leaves_s[row + 1], high = low, low
+        if not low <= found.until_s[row] <= high:
             gap = float(all_.until_s[row] - all_.before_s[row])
-            found.until_s[row] = low + gap if low + gap <= high else 0.5 * (low + high)
+            found.until_s[row] = low + gap if low + gap <= high else high
     for row in still:
         found.leaves_s[row] = found.arrives_s[row] = found.until_s[row]
 
