@@ -80,6 +80,10 @@ class Deeds:
         """Cloth and snags as pages."""
         self._dialog("Print to PDF", QFileDialog.AcceptMode.AcceptSave, self.print_to, "PDF pages (*.pdf)", "pdf")
 
+    def print_to(self, path: str) -> None:
+        """Print into a file."""
+        self.printer.start(path, self.showing.known, self.snags.rows)
+
     def do_quit(self) -> None:
         """Close the window."""
         self.close()

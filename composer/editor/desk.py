@@ -36,6 +36,7 @@ from composer.edits.threads import Threads, threads_of
 from composer.faults import Fault, Faults, Where
 from composer.limits.check import Check
 from composer.load import Loaded, made_from
+from composer.picture.print_plan import sections_of
 from composer.picture.weave import lanes_of
 from composer.report.check import waiting_notes
 from composer.report.sentences import Teller
@@ -132,7 +133,8 @@ class Desk:
             self._rig_told = self.leaning.number
             self.say(RigRead(self._rig_told, made.rig, made.abilities))
         title = made.score.title or os.path.basename(self.file)
-        return Picture(version, self._rig_told, title, made.tracks, made.tempo, made.pins_s, made.cues, made.score.keep)
+        sections = sections_of(made.score, made.tempo)
+        return Picture(version, self._rig_told, title, made.tracks, made.tempo, made.pins_s, made.cues, sections)
 
     # ---- the way of a text ----------------------------------------------------------------------------------------------
 

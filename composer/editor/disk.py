@@ -118,6 +118,12 @@ def left_behind(paths: Iterable[str] = ()) -> list[tuple[str, Recovered]]:
     return found
 
 
+def write_bytes(path: str, data: bytes) -> None:
+    """Write a file whole, or not at all. Raises Faults."""
+    with replacing(path, "wb") as file:
+        file.write(data)
+
+
 def copy(source: str, target: str) -> None:
     """Copy a file of text to where there is none. Raises Faults."""
     data = read_bytes(source, most("file"))

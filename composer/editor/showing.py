@@ -21,6 +21,9 @@ from composer.tracks import Tracks
 MOST_LIT = 4000
 """Stretches that are lit at once."""
 
+MOST_OUTLINED = 12
+"""Hanging fibers that are outlined at once; more would hide what they do."""
+
 RUN_MS = 120
 """How often a simulated run that grows is drawn anew."""
 
@@ -196,8 +199,9 @@ class Showing(QObject):
             return
         fibers, begins, ends = (getattr(stretches, name).tolist()[:MOST_LIT] for name in ("fiber", "from_s", "to_s"))
         self.stage.cloth.select([Stretch(f, a, b) for f, a, b in zip(fibers, begins, ends, strict=True)])
-        if self.hang is not None:
-            self.hang.light(set(fibers))
+        few = set(fibers)
+        if self.hang is not None and len(few) <= MOST_OUTLINED:
+            self.hang.light(few)
 
     # ---- rig ------------------------------------------------------------------------------------------------------------
 

@@ -20,6 +20,7 @@ from composer.editor.messages import Checked, Dragged, Failed, Retimed, Row, Tol
 from composer.editor.notices import Notices
 from composer.editor.offers import Offers
 from composer.editor.pane import TextPane
+from composer.editor.printing import Printer
 from composer.editor.retimed_panel import RetimedPanel
 from composer.editor.session import Session
 from composer.editor.showing import Showing
@@ -32,6 +33,8 @@ from composer.picture.strand_view import StrandView
 
 SIZE = QSize(1280, 800)
 LETTERS_MS = 150
+NEAR_S = 8.0
+"""Seconds to either side of a snag that are shown when it is gone to."""
 
 
 class ComposeWindow(Deeds, QMainWindow):
@@ -56,6 +59,7 @@ class ComposeWindow(Deeds, QMainWindow):
         self.crew.set_text(lambda: self.pane.text)
         self.showing = Showing(self.stage, self.strand, self.snags, self.retimed, self)
         self.hand = Hand(self.crew.ask, self)
+        self.printer = Printer(self.notices, self.later, self)
         self._names: dict[int, str] = {}
         self._entry = 0
         self._closing = False
@@ -206,7 +210,15 @@ class ComposeWindow(Deeds, QMainWindow):
         self.crew.ask("moved", (line,), self._light)
 
     def _light(self, stretches: Any) -> None:
-        self.showing.light(None if isinstance(stretches, Refusal) or stretches is None else stretches)
+        found = None if isinstance(stretches, Refusal) or stretches is None or not len(stretches.fiber) else stretches
+        self.showing.light(found)
+        picture = self.showing.known.picture
+        if found is not None and picture is not None:
+            count = len(set(found.fiber.tolist()))
+            first = picture.tempo.say_place(float(found.from_s.min()))
+            line, column = self.pane.place
+            what = f"moves {count} fiber{'s' * (count != 1)} from {first}"
+            self.foot.say("place", f"{what}    line {line}, column {column}")
 
     def _typed(self, character: str) -> None:
         if character.isalnum() or character in "._-:":
@@ -327,6 +339,11 @@ class ComposeWindow(Deeds, QMainWindow):
         self.snags.choose(index)
 
     def _row_chosen(self, row: Row) -> None:
+        begin, end = self.stage.cloth.shown
+        near = max(row.to_s - row.from_s, NEAR_S)
+        if end - begin > 4.0 * near:
+            middle = (row.from_s + row.to_s) / 2.0
+            self.stage.cloth.show_stretch(middle - near, middle + near)
         self.stage.cloth.choose_snag(row.snag)
         if row.fibers:
             self.showing.show_fiber(row.fibers[0])
