@@ -84,6 +84,7 @@ class Conduct:
     def wait_for_play(self) -> float:
         """Armed, until a front end plays, or something ends it; the place in s from which."""
         self._stage = "armed"
+        self._engine.note("front", what="commands", say=f"when left: {self._door.rule}", attached=self._door.attached)
         while "play" not in self._wants and not self._wants & {"vent", "rest", "stop", "left"}:
             self._idle()
             if self._engine.safety.state != "armed":

@@ -22,12 +22,13 @@ def folder() -> str:
     """The folder, made where it is missing. Raises NoRoom where it is not this user's alone."""
     from platformdirs import user_runtime_path
 
-    with warnings.catch_warnings():
-        # Where the system has no such folder of its own, there is another; that is nothing to be warned of.
-        warnings.simplefilter("ignore")
-        path = str(user_runtime_path("drawcord", appauthor=False))
-    above = os.path.dirname(path)
+    path = ""
     try:
+        with warnings.catch_warnings():
+            # Where the system has no such folder of its own, there is another; that is nothing to be warned of.
+            warnings.simplefilter("ignore")
+            path = str(user_runtime_path("drawcord", appauthor=False))
+        above = os.path.dirname(path)
         os.makedirs(above, mode=0o700, exist_ok=True)
         over = os.stat(above)
         if over.st_uid not in (0, os.geteuid()) or (over.st_mode & 0o022 and not over.st_mode & stat.S_ISVTX):
@@ -40,7 +41,7 @@ def folder() -> str:
         if stat.S_IMODE(found.st_mode) != 0o700:
             os.chmod(path, 0o700)
     except OSError as why:
-        raise NoRoom(f"{path}: {why.strerror or why}") from None
+        raise NoRoom(f"{path or why}: {why.strerror or why}") from None
     return path
 
 
