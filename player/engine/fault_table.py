@@ -13,7 +13,7 @@ class Row:
     exit: the player's exit code; state: the player's at the end, "" where nothing was armed, or the player is gone, "one or
     another" where chance decides
     ended: as the report has it; told, then: words of the sentence that the operator hears: what has happened, what to do
-    Where nothing is heard, `then` says what there is to know.
+    Where chance decides, these have several, with " / " between them. Where nothing is heard, `then` says what there is to know.
     """
 
     happens: str
@@ -53,8 +53,8 @@ LINE = {
         1,
         "idle or vented",
         "fault",
-        "the line garbles what it carries",
-        "look at its plug and cable, and at what disturbs them",
+        "the line garbles / heard nothing in time / has vented",
+        "look at its plug and cable / look at its line / look at its power and line",
     ),
     "garbage-all": Row(
         "every byte is another one", "noise", 2, "", "", "no answer to hello", "is this its port and baud rate?"

@@ -32,7 +32,7 @@ def verdict(event: Event, state: str) -> tuple[str, str]:
         return means, f"{event.driver}: {name}: {sentence}" + (f" ({event.say})" if event.say else "") + f"; {look}"
     if event.kind == "state" and state in RUNNING and event.status != "armed":
         why = f": {event.say}" if event.say else ""
-        return "fault", f"{event.driver}: the board is {event.status} in mid-run{why}; look at its power"
+        return "fault", f"{event.driver}: the board is {event.status} in mid-run{why}; look at its power and line"
     if event.kind == "note":
         return "tell", said
     return "", ""
