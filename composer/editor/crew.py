@@ -12,7 +12,7 @@ from composer.editor.messages import Again, Answer, Ask, Changed, Doing, Failed,
 READER, SOLVER = "reader", "solver"
 """As `composer.editor.desk` has them, which is not loaded into the window's process."""
 
-SLOW_ASKS = ("mends", "take")
+SLOW_ASKS = ("mends", "take", "print")
 """Questions that the solver answers."""
 
 MOST_DEATHS = 3
@@ -39,6 +39,7 @@ class Crew(QObject):
         self.version = 0
         self._number = 0
         self._asked: dict[int, tuple[int, Callable[[Any], None]]] = {}
+        self._lasting: dict[int, tuple[int, Callable[[Any], None]]] = {}
         self._does: dict[str, str] = {READER: "", SOLVER: ""}
         self._at: dict[str, int] = {READER: -1, SOLVER: -1}
         self._deaths: dict[str, list[int]] = {READER: [], SOLVER: []}
@@ -93,12 +94,18 @@ class Crew(QObject):
         self._retimed = retimed
         self._workers[SOLVER].send(Mode(retimed))
 
-    def ask(self, what: str, about: tuple[Any, ...], then: Callable[[Any], None]) -> None:
-        """Ask about the text as it is now. An answer that comes when it has changed is not heard."""
+    def ask(self, what: str, about: tuple[Any, ...], then: Callable[[Any], None], lasting: bool = False) -> None:
+        """Ask about the text as it is now. An answer that comes when it has changed is not heard, unless it is `lasting`."""
         self._number += 1
-        self._asked[self._number] = (self.version, then)
+        (self._lasting if lasting else self._asked)[self._number] = (self.version, then)
         role = SOLVER if what in SLOW_ASKS else READER
         self._workers[role].send(Ask(self._number, self.version, what, about))
+
+    def restart_solver(self) -> None:
+        """End what the solver is at; another begins with the text as it is."""
+        self._lasting.clear()
+        self._set_doing(SOLVER, "")
+        self._start(SOLVER)
 
     def end(self) -> None:
         """End both."""
@@ -123,16 +130,16 @@ class Crew(QObject):
 
     def _end_stuck(self) -> None:
         if self._does[SOLVER] in STOPPABLE and self._at[SOLVER] < self.version:
-            self._set_doing(SOLVER, "")
-            self._start(SOLVER)
+            self.restart_solver()
 
     def _hear(self, role: str, message: Any) -> None:
         if isinstance(message, Doing):
             self._at[role] = message.version
             self._set_doing(role, message.what)
         elif isinstance(message, Answer):
-            version, then = self._asked.pop(message.number, (-1, None))
-            if then is not None and version == self.version:
+            lasting = self._lasting.pop(message.number, None)
+            version, then = lasting or self._asked.pop(message.number, (-1, None))
+            if then is not None and (lasting or version == self.version):
                 then(message.value)
         elif isinstance(message, Failed):
             self._set_doing(role, "")

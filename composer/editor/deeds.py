@@ -82,7 +82,7 @@ class Deeds:
 
     def print_to(self, path: str) -> None:
         """Print into a file."""
-        self.printer.start(path, self.showing.known, self.snags.rows)
+        self.printer.start(path, self.snags.rows)
 
     def do_quit(self) -> None:
         """Close the window."""

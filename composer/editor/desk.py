@@ -36,7 +36,6 @@ from composer.edits.threads import Threads, threads_of
 from composer.faults import Fault, Faults, Where
 from composer.limits.check import Check
 from composer.load import Loaded, made_from
-from composer.picture.print_plan import sections_of
 from composer.picture.weave import lanes_of
 from composer.report.check import waiting_notes
 from composer.report.sentences import Teller
@@ -133,8 +132,7 @@ class Desk:
             self._rig_told = self.leaning.number
             self.say(RigRead(self._rig_told, made.rig, made.abilities))
         title = made.score.title or os.path.basename(self.file)
-        sections = sections_of(made.score, made.tempo)
-        return Picture(version, self._rig_told, title, made.tracks, made.tempo, made.pins_s, made.cues, sections)
+        return Picture(version, self._rig_told, title, made.tracks, made.tempo, made.pins_s, made.cues)
 
     # ---- the way of a text ----------------------------------------------------------------------------------------------
 
@@ -227,13 +225,14 @@ class Desk:
         """
         for place, ask in enumerate(self._asked):
             question = questions.QUESTIONS.get(ask.what)
-            if question is None or ask.version < self.version:
+            lasting = question is not None and question.lasting and self.made is not None
+            if question is None or (ask.version < self.version and not lasting):
                 del self._asked[place]
                 return True
             if ask.version > self.version:
                 continue
             value: Any = None
-            if question.needs_made and self.made_version != self.version:
+            if question.needs_made and self.made_version != self.version and not lasting:
                 if self.settled != self.version and not hopeless:
                     continue
                 value = Refusal("The text cannot be read as it stands; mend what is marked first.")

@@ -11,7 +11,6 @@ from composer.edits.edit import Edit
 from composer.faults import Fault
 from composer.limits.abilities import Abilities
 from composer.limits.check import Check
-from composer.picture.print_plan import Named
 from composer.picture.scene import Lane
 from composer.rig.model import Rig
 from composer.tracks import Tracks
@@ -111,7 +110,6 @@ class Picture:
     tempo: Any
     pins_s: Array
     cues: tuple[Any, ...]
-    sections: tuple[Named, ...]
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,71 +1,61 @@
-"""Pages for the rehearsal-room wall: made one at a time between other things, written when they are whole, stopped at a word."""
+"""Pages for the rehearsal-room wall: made by a worker while one writes on, written when they are whole, stopped at a word."""
 
 from collections.abc import Sequence
 from typing import Any
 
-from PySide6.QtCore import QObject, QTimer
+from PySide6.QtCore import QObject
 
 from composer.editor import disk
 from composer.editor.background import Later
-from composer.editor.known import Known
+from composer.editor.crew import Crew
 from composer.editor.messages import Row
 from composer.editor.notices import Notices
 from composer.editor.recovering import sentence
+from composer.edits.edit import Refusal
 
 
 class Printer(QObject):
     """One print at a time."""
 
-    def __init__(self, notices: Notices, later: Later, parent: QObject | None = None):
+    def __init__(self, crew: Crew, notices: Notices, later: Later, parent: QObject | None = None):
         super().__init__(parent)
-        self._notices, self._later = notices, later
-        self._pages: Any = None
-        self._printing: Any = None
+        self._crew, self._notices, self._later = crew, notices, later
         self._path = ""
-        self._timer = QTimer(self)
-        self._timer.setInterval(0)
-        self._timer.timeout.connect(self._next)
+        self.busy = False
+        crew.doing.connect(self._heard)
 
-    @property
-    def busy(self) -> bool:
-        """Whether pages are being made."""
-        return self._pages is not None
-
-    def start(self, path: str, known: Known, rows: Sequence[Row], paper: str = "A4") -> None:
+    def start(self, path: str, rows: Sequence[Row], paper: str = "A4") -> None:
         """Print what is shown into a PDF file."""
-        if known.weave is None or known.picture is None:
-            self._notices.say("print", "There is nothing to print yet: the text cannot be read.")
+        if self.busy:
             return
-        from composer.picture.pages import Line, Printing
-
-        lines = [Line(row.place, row.says, row.mends) for row in rows]
         self._path = path if path.lower().endswith(".pdf") else f"{path}.pdf"
-        self._printing = Printing(known.weave, known.picture.title, lines, known.picture.sections, paper)
-        self._pages = self._printing.pages()
-        self._say(0.0)
-        self._timer.start()
+        self.busy = True
+        self._say("")
+        lines = tuple((row.place, row.says, row.mends) for row in rows)
+        self._crew.ask("print", (lines, paper), self._printed, lasting=True)
 
     def stop(self) -> None:
         """Let it be; nothing is written."""
-        self._timer.stop()
-        self._pages = self._printing = None
-        self._notices.say("print", "Printing was stopped; nothing was written.")
+        if self.busy:
+            self.busy = False
+            self._crew.restart_solver()
+            self._notices.say("print", "Printing was stopped; nothing was written.")
 
-    def _say(self, share: float) -> None:
-        self._notices.say("print", f"Printing to {self._path}: {100 * share:.0f} % …", [("Stop printing", self.stop)])
+    def _say(self, share: str) -> None:
+        self._notices.say("print", f"Printing to {self._path}{share} …", [("Stop printing", self.stop)])
 
-    def _next(self) -> None:
-        if self._pages is None:
-            self._timer.stop()
+    def _heard(self, what: str) -> None:
+        if self.busy and what.startswith("printing "):
+            self._say(f": {what.removeprefix('printing ')}")
+
+    def _printed(self, pdf: Any) -> None:
+        if not self.busy:
             return
-        try:
-            share = next(self._pages)
-        except StopIteration:
-            self._timer.stop()
-            pdf, self._pages, self._printing = self._printing.pdf, None, None
+        self.busy = False
+        if isinstance(pdf, Refusal) or pdf is None:
+            self._notices.say("print", pdf.say if pdf is not None else "Nothing was printed.", kind="fault")
+        else:
             self._later.do(lambda: disk.write_bytes(self._path, pdf), self._written)
-            return
-        self._say(share)
 
     def _written(self, _: object, wrong: Exception | None) -> None:
         if wrong is None:

@@ -20,11 +20,15 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True, slots=True)
 class Question:
-    """How a question is answered; whether it needs the text to have been read, and checked, as it now is."""
+    """How a question is answered; whether it needs the text to have been read, and checked, as it now is.
+
+    lasting: it is answered although the text has changed since, of the last that could be read
+    """
 
     answer: Callable[..., Any]
     needs_made: bool = True
     needs_check: bool = False
+    lasting: bool = False
 
 
 def _complete(desk: "Desk", line: int, column: int) -> tuple[completion.Offer, ...]:
@@ -84,6 +88,11 @@ def _take(desk: "Desk", from_s: float, to_s: float) -> Taking | Refusal:
     return desk.solver.taken(from_s, to_s)
 
 
+def _print(desk: "Desk", lines: tuple[tuple[str, str, str], ...], paper: str) -> bytes | Refusal | None:
+    """The pages of what can be read, as a PDF file."""
+    return desk.solver.printed(lines, paper)
+
+
 QUESTIONS: dict[str, Question] = {
     "complete": Question(_complete, needs_made=False),
     "explain": Question(_explain, needs_made=False),
@@ -94,4 +103,5 @@ QUESTIONS: dict[str, Question] = {
     "seconds": Question(_seconds),
     "mends": Question(_mends),
     "take": Question(_take),
+    "print": Question(_print, lasting=True),
 }

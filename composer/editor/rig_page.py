@@ -4,16 +4,14 @@ from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
-from PySide6.QtCore import QAbstractTableModel, QModelIndex, QPointF, QRectF, Qt, Signal
-from PySide6.QtGui import QPainter, QPaintEvent, QPolygonF
+from PySide6.QtCore import QAbstractTableModel, QModelIndex, Qt, Signal
 from PySide6.QtWidgets import QAbstractItemView, QFrame, QLabel, QSplitter, QTableView, QVBoxLayout, QWidget
 
 from composer.faults import Fault
 from composer.limits.abilities import Abilities
 from composer.limits.tables import travel_time_s
-from composer.picture.axes import value_ticks
-from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
-from composer.picture.palette import DARK, Theme
+from composer.picture.able_view import AbleView
+from composer.picture.palette import Theme
 from composer.picture.strand import unit_of
 from composer.rig.model import Rig
 
@@ -91,72 +89,6 @@ class _Fibers(QAbstractTableModel):
         )[column]
 
 
-class Rates(QWidget):
-    """How fast one fiber goes at each strain, both ways."""
-
-    def __init__(self) -> None:
-        super().__init__()
-        self._of: tuple[str, np.ndarray, np.ndarray, np.ndarray, str] | None = None
-        self._theme = DARK
-        self.setMinimumHeight(120)
-        self.setAccessibleName("fastest rates over strain")
-
-    def show_fiber(self, rig: Rig, abilities: Abilities, fiber: int) -> None:
-        """Draw the rates of a fiber."""
-        which = abilities.which[fiber]
-        per, unit = unit_of(abilities, fiber)
-        name = rig.fibers[fiber].name
-        self._of = (name, per * abilities.strain[which], per * abilities.fill[which], per * abilities.exhaust[which], unit)
-        fill, exhaust = (float(np.max(values)) for values in self._of[2:4])
-        self.setAccessibleDescription(f"{name}: up to {fill:.0f} {unit}/s filling, {exhaust:.0f} {unit}/s emptying")
-        self.update()
-
-    def set_theme(self, theme: Theme) -> None:
-        """Draw in these colours."""
-        self._theme = theme
-        self.update()
-
-    def paintEvent(self, event: QPaintEvent) -> None:
-        """Draw two curves, each with its name at its end."""
-        painter = QPainter(self)
-        theme = self._theme
-        painter.fillRect(self.rect(), colour(theme.ground))
-        look = Look(max(self.fontInfo().pixelSize(), 8) / 13.0, theme)
-        if self._of is None:
-            look.write(painter, QRectF(self.rect()), "Choose a fiber: its rates come up here.", 13, theme.quiet_ink, CENTRE)
-            painter.end()
-            return
-        name, strain, fill, exhaust, unit = self._of
-        box = QRectF(look.px(64), look.px(30), self.width() - look.px(64 + 90), self.height() - look.px(30 + 34))
-        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-        look.write(
-            painter, QRectF(look.px(10), look.px(4), self.width() - look.px(20), look.px(22)), name, 14, theme.ink, bold=True
-        )
-        right, high = max(float(strain[-1]), 1e-9), 1.1 * max(float(fill.max()), float(exhaust.max()), 1e-9)
-
-        def at(x: float, y: float) -> QPointF:
-            return QPointF(box.left() + x / right * box.width(), box.bottom() - y / high * box.height())
-
-        for value in value_ticks(0.0, high, 5):
-            painter.setPen(pen(theme.faint_line))
-            painter.drawLine(at(0.0, value), at(right, value))
-            line = QRectF(0, at(0, value).y() - look.px(8), box.left() - look.px(6), look.px(16))
-            look.write(painter, line, f"{value:g}", 11, theme.quiet_ink, RIGHT)
-        for value in value_ticks(0.0, right, 8):
-            line = QRectF(at(value, 0).x() - look.px(30), box.bottom() + look.px(2), look.px(60), look.px(16))
-            look.write(painter, line, f"{value:g}", 11, theme.quiet_ink, CENTRE)
-        foot = QRectF(box.left(), box.bottom() + look.px(17), box.width(), look.px(16))
-        look.write(painter, foot, f"{unit} moved; fastest, {unit}/s", 11, theme.quiet_ink, CENTRE)
-        for word, values, of, dash in (("fill", fill, theme.duty, ()), ("exhaust", exhaust, theme.supply, (5.0, 3.0))):
-            painter.setPen(pen(of, look.px(2), 255, dash))
-            painter.drawPolyline(QPolygonF([at(float(x), float(y)) for x, y in zip(strain, values, strict=True)]))
-            end = at(right, float(values[-1]))
-            look.write(
-                painter, QRectF(end.x() + look.px(6), end.y() - look.px(9), look.px(84), look.px(18)), word, 12, of, LEFT
-            )
-        painter.end()
-
-
 class RigPage(QWidget):
     """The rig's fibers as a table. fiber_chosen: a row was chosen."""
 
@@ -185,7 +117,7 @@ class RigPage(QWidget):
         self.table.verticalHeader().hide()
         self.table.setShowGrid(False)
         self.table.setTabKeyNavigation(False)
-        self.rates = Rates()
+        self.rates = AbleView()
         split = QSplitter(Qt.Orientation.Vertical)
         split.addWidget(self.table)
         split.addWidget(self.rates)

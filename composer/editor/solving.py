@@ -141,6 +141,38 @@ class Solver:
             return found
         return Taking(found.edit, Ghost(found.after.tracks), found.off_s, found.notes)
 
+    def printed(self, lines: tuple[tuple[str, str, str], ...], paper: str) -> bytes | None:
+        """Cloth and snags of the text at hand as the pages of a PDF file; the list as the window has it."""
+        from composer.picture.bands import bands_of
+        from composer.picture.pages import Line, print_pages
+        from composer.picture.print_plan import sections_of
+        from composer.picture.scene import CueMark
+        from composer.picture.weave import Weave, lanes_of, stretches
+
+        desk, made = self.desk, self.desk.made
+        assert made is not None
+        snags = check(made.tracks, made.rig, made.abilities).snags
+        weave = Weave(
+            made.tracks,
+            made.abilities,
+            bands_of(made.rig),
+            tuple(fiber.name for fiber in made.rig.fibers),
+            made.tempo,
+            stretches(snags),
+            tuple(made.pins_s.tolist()),
+            tuple(CueMark(cue.name, cue.seconds, cue.wait) for cue in made.cues),
+            lanes_of(made.rig, made.abilities, made.tracks),
+        )
+        title = made.score.title or made.score.file.rpartition("/")[2]
+        return print_pages(
+            weave,
+            title,
+            [Line(*line) for line in lines],
+            sections_of(made.score, made.tempo),
+            paper,
+            progress=lambda share: desk.say(Doing(desk.version, f"printing {100 * share:.0f} %")),
+        )
+
     def _remake(self, text: str) -> Loaded:
         if self.desk.newer():
             raise Superseded

@@ -59,7 +59,7 @@ class ComposeWindow(Deeds, QMainWindow):
         self.crew.set_text(lambda: self.pane.text)
         self.showing = Showing(self.stage, self.strand, self.snags, self.retimed, self)
         self.hand = Hand(self.crew.ask, self)
-        self.printer = Printer(self.notices, self.later, self)
+        self.printer = Printer(self.crew, self.notices, self.later, self)
         self._names: dict[int, str] = {}
         self._entry = 0
         self._closing = False
