@@ -23,7 +23,7 @@ from composer.score.tempo import tempo_map
 from composer.tracks import Tracks
 from player.takes.file import load_take, rig_of
 from player.takes.form import Take
-from player.takes.laying import lay_over
+from player.takes.laying import Laying
 from player.takes.places import UNIT
 from player.takes.settling import Settled, settle
 from player.takes.writing import Written, place_text, score_text, within_bounds, write
@@ -108,21 +108,22 @@ def _laid(take: Take, out: str, loaded: Loaded, tolerance: float, at: str | None
         raise fault(take.score or out, f"the take ends before {at or 'there'}", "a place that was played", "choose another")
     begin = round(float(tempo.counts(begin_s)) * UNIT)
     times[0] = float(tempo.seconds(begin / UNIT))
-    start = strain_at(loaded.tracks, abilities, times[:1])[:, 0]
 
     def governed(fiber: int) -> Array:
         return np.interp(times, take.time_s, take.strain(take.governed, fiber))
 
     fibers = _played(loaded, governed, times, tolerance)
     selector = Selector(rig, groups_of(score))
-    settled = settle(times, governed, rig, abilities, tempo, tolerance, start, fibers, every=True)
+    laying = Laying(score, rig, abilities, selector, tempo, fibers, begin)
+    settled = settle(times, governed, rig, abilities, tempo, tolerance, laying.set_out(), fibers, every=True)
     called = _free("take", {section.name for section in score.sections})
     written = write(
         settled.voices, settled.paths, rig, selector, tempo, called, punch=True, taken=set(score.phrases)
     )  # fmt: skip
     end = max([begin, *(int(path.place[-1]) for path in settled.paths)])
     about.append(f"It begins at {place_text(begin, tempo)} and takes over from what stood there.")
-    laid = lay_over(score, rig, selector, tempo, written, fibers, begin, end, called, about)
+    left = settled.tracks.curve[settled.tracks.first[1:] - 1, 0]
+    laid = laying.lay(written, end, left, loaded.tracks.duration_s, called, about)
     return _made(take, within_bounds(laid.text, out), out, rig, settled, written, times, laid.fell)
 
 

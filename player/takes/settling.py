@@ -37,6 +37,9 @@ TIGHTER, LEAST = 0.8, 0.1
 SLOWER = 0.995
 """By how much the rates of a voice fall that is too fast somewhere, once looking at more instants is not enough."""
 
+ENOUGH, STOOD = 1.5, 1e-6
+"""Of the seconds that a coil is on for too long, how many are looked for; a share of stroke in a step that is no move."""
+
 SPARE = 1.05
 """A hold lasts at least so much longer than a valve takes to switch, once one was too short."""
 
@@ -225,6 +228,13 @@ class _Settling:
             for number in numbers:
                 if number is None:
                     continue
+                if snag.kind == "duty" and len(busy := self._busy(settled.paths[number], number, snag)):
+                    # Only where the coil is on and was not as it was played is there anything to be had.
+                    path = settled.paths[number]
+                    for k in busy:
+                        slack[number, self._span(path.time_s[k], path.time_s[k + 1])] *= TIGHTER**3
+                    concerned.setdefault(number, []).append((path.time_s[busy] + path.time_s[busy + 1]) / 2.0)
+                    continue
                 instants = np.linspace(snag.from_s, snag.to_s, 9)
                 concerned.setdefault(number, []).append(instants)
                 if snag.kind in ("rate", "accel"):
@@ -245,6 +255,16 @@ class _Settling:
             even=bool(np.all(slack == slack[:, :1])),
         )  # fmt: skip
         return concerned
+
+    def _busy(self, path: Path, number: int, snag: Snag) -> Index:
+        """The moves of a path in which a fiber stood still longest as it was played, as many as a coil's duty asks for."""
+        stood = np.concatenate([[0.0], np.cumsum(np.abs(np.diff(self.played.share[number])) < STOOD) * self.played.step_s])
+        idle = np.diff(np.interp(path.time_s, self.grid_s, stood))
+        idle[np.abs(np.diff(path.share)) < 1e-9] = 0.0
+        idle[(path.time_s[1:] <= snag.from_s) | (path.time_s[:-1] >= snag.to_s)] = 0.0
+        longest = np.argsort(-idle, kind="stable")
+        enough = 1 + int(np.searchsorted(np.cumsum(idle[longest]), ENOUGH * (snag.needs - snag.has)))
+        return np.sort(longest[:enough][idle[longest[:enough]] > 0.0])
 
     def _moves_at(self, path: Path, time_s: Array) -> list[slice]:
         """The stretches of the grid of the moves in which some instants lie."""

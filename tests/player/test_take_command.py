@@ -9,6 +9,7 @@ from composer.limits.abilities import abilities_of
 from composer.limits.check import check
 from composer.load import load_rig, load_score
 from composer.motion import strain_at
+from composer.score.flat import write_flat
 from player.commands.main import run
 from player.takes.file import TakeFile
 
@@ -125,12 +126,84 @@ def test_a_take_over_a_score_keeps_its_tempo_where_it_is_written_by_itself(folde
 
 
 def test_an_entry_that_would_add_to_what_was_played_is_refused_with_its_line(folder, capsys):
-    (folder / "beneath.score").write_text(SCORE + "section more at 1:1\n  r.2 nod add\n")
+    (folder / "beneath.score").write_text(SCORE + "phrase lift\n  1 0.1\nsection more at 1:1\n  r.2 lift add\n")
     play(folder, fibers=(1,), onto="beneath.score", from_s=4.0)
     assert run(["take", "a.take", "-o", "over.score", "--onto", "beneath.score", "--at", "middle"]) == 2
     err = capsys.readouterr().err
-    assert "beneath.score:14:" in err and "punch in before it begins" in err
+    assert "beneath.score:16:" in err and "punch in before it begins" in err
     assert not (folder / "over.score").exists()
+
+
+LONG = """rig bench.rig.toml
+tempo 60
+phrase sway
+  2  0.4
+  4  hold quiver 3Hz by 0.03
+  6  0.1
+  8  0.5
+  9  hold
+  11 0.3
+  13 hold quiver 3Hz by 0.03
+  16 rest
+phrase tremble
+  5 hold quiver 2Hz by 0.02
+section all at 1:1
+  r.* sway
+  r.2, r.3 tremble after 2 add
+  r.1-2 tremble after 9 add
+"""
+
+
+def punched(folder, score, at, seconds, fibers=(1,)):
+    """Record a hand on some fibers from `at` s on, for so long, over a score as the governor lets it play."""
+    rig, loaded = load_rig("bench.rig.toml"), load_score(score)
+    abilities = abilities_of(rig)
+    times = np.arange(round((at + seconds) / 0.005) + 1) * 0.005
+    wanted = strain_at(loaded.tracks, abilities, times) / abilities.stroke[:, None]
+    one = np.interp(times - at, np.arange(round((seconds + 4.0) / 0.005) + 1) * 0.005, hand(seconds + 4.0, 6, rest_s=0.5))
+    for fiber in fibers:
+        wanted[fiber] = np.where(times >= at, one, wanted[fiber])
+    times, let = governed(rig, abilities, wanted)
+    take = TakeFile("p.take", rig, score)
+    for k, now in enumerate(times):
+        take.sample(now, wanted[:, k] * abilities.stroke, let[:, k])
+    take.close()
+    return times, let
+
+
+@pytest.mark.parametrize("flat", [False, True])
+@pytest.mark.parametrize(("at", "seconds"), [(3.0, 2.5), (3.0, 5.0), (7.0, 3.3), (9.5, 2.0), (0.5, 10.0)])
+def test_after_a_punch_in_fibers_come_back_to_the_score_and_do_as_it_has_them(folder, capsys, flat, at, seconds):
+    (folder / "long.score").write_text(LONG)
+    before = load_score("long.score")
+    if flat:
+        (folder / "long.score").write_text(write_flat(before.tracks, before.score, before.rig, before.tempo))
+    times, let = punched(folder, "long.score", at, seconds)
+    assert run(["take", "p.take", "-o", "over.score", "--onto", "long.score", "--at", f"{at}s"]) == 0, capsys.readouterr()
+    after = load_score("over.score")
+    assert check(after.tracks, after.rig, after.abilities).ok
+    grid = np.arange(0.0, 16.5, 0.005)
+    there, was = strain_at(after.tracks, after.abilities, grid), strain_at(before.tracks, before.abilities, grid)
+    for fiber in (0, 2, 3):
+        assert there[fiber] == pytest.approx(was[fiber], abs=1e-9)
+    # A quiver fades out before the take and in after it, which takes a quarter of its period.
+    assert there[1][grid < at - 0.15] == pytest.approx(was[1][grid < at - 0.15], abs=1e-9)
+    taken = (times > at + 0.25) & (times <= at + seconds)
+    assert np.abs(there[1][: len(times)][taken] - let[1][taken]).max() <= 0.01 * 0.3 + 1e-9
+    back = grid >= 15.0 if at + seconds > 10.0 else grid >= 13.1
+    assert there[1][back] == pytest.approx(was[1][back], abs=1e-9)
+
+
+def test_a_fiber_is_handed_back_before_the_next_of_the_scores_entries_begins(folder):
+    (folder / "beneath.score").write_text(SCORE)
+    _, let = punched(folder, "beneath.score", 1.0, 2.2)
+    assert let[1][-1] > 0.02
+    assert run(["take", "p.take", "-o", "over.score", "--onto", "beneath.score", "--at", "1s"]) == 0
+    before, after = load_score("beneath.score"), load_score("over.score")
+    assert check(after.tracks, after.rig, after.abilities).ok
+    grid = np.arange(5.0, 9.0, 0.005)
+    there, was = (strain_at(score.tracks, score.abilities, grid) for score in (after, before))
+    assert there == pytest.approx(was, abs=1e-9)
 
 
 @pytest.mark.parametrize(
