@@ -10,7 +10,7 @@ from composer.fiber import rates
 from composer.fiber.capability import Capability
 from composer.fiber.rates import Physics
 from composer.limits.abilities import Abilities
-from composer.picture import palette, plot
+from composer.picture import plot
 from composer.picture.look import Look, colour
 from composer.picture.plot import Axis, Curve
 from composer.rig.model import Rig
@@ -20,8 +20,6 @@ SCALE = 1.25
 HEAD, ROW, FOOT = 84, 360, 44
 MOST_ROWS = 12
 """Makes in one picture; a rig that has more shows the first, and says so."""
-
-IN, OUT = palette.DUTY, palette.SUPPLY
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -48,7 +46,7 @@ class Sheet:
 def sheet_of(rig: Rig, abilities: Abilities) -> Sheet:
     """The picture of a rig: a row for each make as mounted, in the order of the rig."""
     makes = list(dict.fromkeys(abilities.which.tolist()))
-    rows = tuple(_row(rig, abilities, which) for which in makes[:MOST_ROWS])
+    rows = tuple(row_of(rig, abilities, which) for which in makes[:MOST_ROWS])
     left_out = len(makes) - len(rows)
     supply = rig.supply
     least = min(supply.pressure_kPa, supply.min_pressure_kPa)
@@ -56,7 +54,8 @@ def sheet_of(rig: Rig, abilities: Abilities) -> Sheet:
     return Sheet(rig.name, subtitle, rows, left_out, WIDTH, HEAD + ROW * len(rows) + FOOT)
 
 
-def _row(rig: Rig, abilities: Abilities, which: int) -> Row:
+def row_of(rig: Rig, abilities: Abilities, which: int) -> Row:
+    """One make of a rig as mounted, by the number of its capability."""
     members = np.flatnonzero(abilities.which == which)
     fiber = rig.fibers[members[0]]
     mounting = fiber.mounting
@@ -78,18 +77,23 @@ def paint(painter: QPainter, sheet: Sheet) -> None:
     """Draw the whole picture."""
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     look = Look(SCALE)
-    painter.fillRect(QRectF(0, 0, sheet.width, sheet.height), colour(palette.GROUND))
+    painter.fillRect(QRectF(0, 0, sheet.width, sheet.height), colour(look.theme.ground))
     used = look.write(painter, QRectF(24, 18, sheet.width - 48, 36), sheet.title, 21, bold=True)
-    look.write(painter, QRectF(44 + used, 22, sheet.width - used - 68, 34), sheet.subtitle, 13, palette.QUIET_INK)
+    look.write(painter, QRectF(44 + used, 22, sheet.width - used - 68, 34), sheet.subtitle, 13, look.theme.quiet_ink)
     for number, row in enumerate(sheet.rows):
         top = HEAD + number * ROW
         used = look.write(painter, QRectF(24, top, sheet.width * 0.7, 28), row.title, 14, bold=True)
-        look.write(painter, QRectF(44 + used, top, sheet.width - used - 68, 28), row.fibers, 13, palette.QUIET_INK)
-        half = sheet.width / 2
-        _stroke(painter, look, QRectF(16, top + 38, half - 24, ROW - 64), row.able)
-        _rates(painter, look, QRectF(half + 8, top + 38, half - 24, ROW - 64), row.able)
+        look.write(painter, QRectF(44 + used, top, sheet.width - used - 68, 28), row.fibers, 13, look.theme.quiet_ink)
+        paint_able(painter, look, QRectF(16, top + 38, sheet.width - 32, ROW - 64), row.able)
     foot = QRectF(24, sheet.height - FOOT, sheet.width - 48, 30)
-    look.write(painter, foot, foot_note(sheet), 12, palette.QUIET_INK)
+    look.write(painter, foot, foot_note(sheet), 12, look.theme.quiet_ink)
+
+
+def paint_able(painter: QPainter, look: Look, box: QRectF, able: Capability) -> None:
+    """Draw what one make can do: stroke over pressure on the left, fastest rates over strain on the right."""
+    half = (box.width() - look.px(13)) / 2.0
+    _stroke(painter, look, QRectF(box.left(), box.top(), half, box.height()), able)
+    _rates(painter, look, QRectF(box.right() - half, box.top(), half, box.height()), able)
 
 
 def foot_note(sheet: Sheet) -> str:
@@ -112,9 +116,9 @@ def _unit(able: Capability) -> tuple[float, str]:
 def _stroke(painter: QPainter, look: Look, box: QRectF, able: Capability) -> None:
     if able.physics is None:
         box = box.adjusted(look.px(52), look.px(22), -look.px(12), -look.px(36))
-        painter.fillRect(box, colour(palette.PANEL))
+        painter.fillRect(box, colour(look.theme.panel))
         note = "rated: a maker's sheet says nothing of pressure"
-        look.write(painter, box.adjusted(look.px(16), 0, 0, 0), note, 13, palette.QUIET_INK)
+        look.write(painter, box.adjusted(look.px(16), 0, 0, 0), note, 13, look.theme.quiet_ink)
         return
     per_strain, unit = _unit(able)
     pressure, way_in, way_out = loop(able.physics)
@@ -122,8 +126,8 @@ def _stroke(painter: QPainter, look: Look, box: QRectF, able: Capability) -> Non
     up = int(np.argmax(way_in >= 0.6 * able.stroke))
     down = int(np.argmax(way_out[::-1] <= 0.5 * able.stroke))
     curves = [
-        Curve(pressure / 1e3, way_in * per_strain, IN, "filling", arrows=(up,)),
-        Curve(pressure[::-1] / 1e3, way_out[::-1] * per_strain, OUT, "exhausting", arrows=(down,)),
+        Curve(pressure / 1e3, way_in * per_strain, look.theme.duty, "filling", arrows=(up,)),
+        Curve(pressure[::-1] / 1e3, way_out[::-1] * per_strain, look.theme.supply, "exhausting", arrows=(down,)),
     ]
     x, y = Axis(0.0, pressure[-1] / 1e3, "pressure in kPa, gauge"), Axis(0.0, top, f"stroke in {unit}")
     plot.paint(painter, look, box, x, y, curves)
@@ -145,8 +149,8 @@ def _rates(painter: QPainter, look: Look, box: QRectF, able: Capability) -> None
     top = 1.1 * max(able.fill.max(), able.exhaust.max())
     curves = []
     for rate, of, name, held in (
-        (able.fill, IN, "fill", able.strain >= able.held_above),
-        (able.exhaust, OUT, "exhaust", able.strain <= able.held_below),
+        (able.fill, look.theme.duty, "fill", able.strain >= able.held_above),
+        (able.exhaust, look.theme.supply, "exhaust", able.strain <= able.held_below),
     ):
         free = ~held if able.physics is not None else np.ones(len(at), dtype=bool)
         curves.append(Curve(at[free], rate[free], of, name))

@@ -8,7 +8,6 @@ from numpy.typing import NDArray
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QPainter, QPolygonF
 
-from composer.picture import palette
 from composer.picture.axes import value_ticks
 from composer.picture.look import CENTRE, LEFT, RIGHT, Look, colour, pen
 from composer.picture.palette import Colour
@@ -42,7 +41,7 @@ def paint(
 ) -> None:
     """Draw a plot into a box, the names of its curves above it on the right; `right` is a second scale for y."""
     inner = box.adjusted(look.px(52), look.px(22), -look.px(52 if right else 12), -look.px(36))
-    painter.fillRect(inner, colour(palette.PANEL))
+    painter.fillRect(inner, colour(look.theme.panel))
     _scales(painter, look, inner, x, y, right)
     painter.save()
     painter.setClipRect(inner.adjusted(-look.px(2), -look.px(2), look.px(2), look.px(2)))
@@ -63,10 +62,10 @@ def paint(
 def _scales(painter: QPainter, look: Look, inner: QRectF, x: Axis, y: Axis, right: Axis | None) -> None:
     for value in value_ticks(x.low, x.high, max(2, int(inner.width() / look.px(60)))):
         at = inner.left() + (value - x.low) / (x.high - x.low) * inner.width()
-        painter.setPen(pen(palette.FAINT_LINE, 1.0))
+        painter.setPen(pen(look.theme.faint_line, 1.0))
         painter.drawLine(QPointF(at, inner.top()), QPointF(at, inner.bottom()))
         box = QRectF(at - look.px(40), inner.bottom() + look.px(3), look.px(80), look.px(14))
-        look.write(painter, box, f"{value:g}", 11, palette.QUIET_INK, CENTRE)
+        look.write(painter, box, f"{value:g}", 11, look.theme.quiet_ink, CENTRE)
     most = max(2, int(inner.height() / look.px(28)))
     for axis, side in ((y, LEFT), (right, RIGHT)):
         if axis is None:
@@ -74,25 +73,25 @@ def _scales(painter: QPainter, look: Look, inner: QRectF, x: Axis, y: Axis, righ
         for value in value_ticks(axis.low, axis.high, most):
             at = inner.bottom() - (value - axis.low) / (axis.high - axis.low) * inner.height()
             if side is LEFT:
-                painter.setPen(pen(palette.FAINT_LINE, 1.0))
+                painter.setPen(pen(look.theme.faint_line, 1.0))
                 painter.drawLine(QPointF(inner.left(), at), QPointF(inner.right(), at))
                 box = QRectF(inner.left() - look.px(50), at - look.px(7), look.px(45), look.px(14))
-                look.write(painter, box, f"{value:g}", 11, palette.QUIET_INK, RIGHT)
+                look.write(painter, box, f"{value:g}", 11, look.theme.quiet_ink, RIGHT)
             else:
-                painter.setPen(pen(palette.QUIET_INK, 1.0))
+                painter.setPen(pen(look.theme.quiet_ink, 1.0))
                 painter.drawLine(QPointF(inner.right(), at), QPointF(inner.right() + look.px(4), at))
                 box = QRectF(inner.right() + look.px(7), at - look.px(7), look.px(45), look.px(14))
-                look.write(painter, box, f"{value:g}", 11, palette.QUIET_INK, LEFT)
+                look.write(painter, box, f"{value:g}", 11, look.theme.quiet_ink, LEFT)
     top = inner.top() - look.px(22)
-    look.write(painter, QRectF(inner.left() - look.px(46), top, inner.width() / 2, look.px(20)), y.title, 12, palette.INK)
+    look.write(painter, QRectF(inner.left() - look.px(46), top, inner.width() / 2, look.px(20)), y.title, 12, look.theme.ink)
     if right is not None:
-        look.write(painter, QRectF(inner.right() + look.px(7), top, look.px(45), look.px(20)), right.title, 12, palette.INK)
+        look.write(painter, QRectF(inner.right() + look.px(7), top, look.px(45), look.px(20)), right.title, 12, look.theme.ink)
     look.write(
         painter,
         QRectF(inner.left(), inner.bottom() + look.px(17), inner.width(), look.px(16)),
         x.title,
         12,
-        palette.INK,
+        look.theme.ink,
         CENTRE,
     )
 

@@ -144,6 +144,7 @@ class Transport(QWidget):
         if self.playing:
             self._head = play_head.stopped(self._head)
             self._timer.stop()
+            self._sound()
             self._show()
             self.playing_changed.emit(False)
 
