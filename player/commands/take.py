@@ -2,6 +2,7 @@
 
 import json
 import os
+from dataclasses import replace
 
 import click
 
@@ -19,18 +20,22 @@ import click
 @click.option("--tempo", metavar="N", type=float, help="Counts a minute, for a take that was not played to a score; 60.")
 @click.option("--meter", metavar="N/V", help="Counts in a bar and their note value, likewise; 4/4.")
 @click.option("--title", metavar="TEXT", help="The score's title; the take's name unless given.")
+@click.option(
+    "--force", is_flag=True, help="Replace OUT.score where there is a score already that somebody may have worked on."
+)
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON object and nothing else.")
 def command(
     take: str, out: str, tolerance: float, onto: str | None, at: str | None, rig: str | None, tempo: float | None,
-    meter: str | None, title: str | None, as_json: bool,
+    meter: str | None, title: str | None, force: bool, as_json: bool,
 ) -> int:  # fmt: skip
     """Write TAKE, recorded while playing by hand, as a score: the fewest moves that stay within the tolerance of it.
 
     A take that was cut off is written up to there. Ends with 1 where the rig cannot do all of the score.
     """
-    from composer.faults import fault
+    from composer.faults import Faults, fault
     from composer.files import check_writable, replacing
-    from composer.report.sentences import Teller, tell
+    from composer.report import check as report
+    from composer.report.sentences import Teller
     from player.takes.making import make_score
 
     if not 0.01 <= tolerance <= 20.0:
@@ -46,14 +51,17 @@ def command(
     for source in (take, onto, rig):
         if source is not None and source != onto and os.path.realpath(source) == os.path.realpath(out):
             raise fault(out, f"writing here would overwrite {source}, which is read", hint="name another file")
-    check_writable(out, None if onto else "# Played by hand")
+    try:
+        check_writable(out, None if force else "" if onto else "# Played by hand")
+    except Faults as wrong:
+        hint = "name another file, move that one away first, or have it replaced with --force"
+        raise Faults([replace(one, hint=hint) if "would be lost" in one.found else one for one in wrong.faults]) from None
     made = make_score(
         take, out, rig=rig, tolerance=tolerance / 100.0, onto=onto, at=at, tempo=tempo, meter=meter, title=title
     )  # fmt: skip
     with replacing(out) as file:
         file.write(made.text)
     teller = Teller(made.loaded.tracks, made.loaded.rig, made.loaded.tempo.say_place)
-    snags = [tell(snag, teller).says for snag in made.checked.snags]
     good = made.checked.ok and made.worst <= tolerance / 100.0
     if as_json:
         click.echo(
@@ -62,7 +70,7 @@ def command(
                     "take": take, "score": out, "ok": good, "complete": made.complete, "left_bytes": made.left_bytes,
                     "until_s": made.until_s, "fibers": made.fibers, "phrases": made.phrases, "knots": made.knots,
                     "worst": made.worst, "worst_fiber": made.worst_fiber, "late": made.late, "taken_over": made.fell,
-                    "snags": snags,
+                    "snags": [report.snag_as_json(snag, teller) for snag in made.checked.snags],
                 },
                 allow_nan=False,
             )
@@ -80,6 +88,6 @@ def command(
         f"{out}: written; {made.fibers} fibers in {made.phrases} phrases of {made.knots} moves and holds, "
         f"within {made.worst * 100.0:.2f} % of the stroke of what was played ({made.worst_fiber})"
     )
-    for text in snags:
-        click.echo(text)
+    if not made.checked.ok:
+        click.echo(report.as_text(out, made.checked, teller))
     return 0 if good else 1

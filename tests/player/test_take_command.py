@@ -171,6 +171,38 @@ def punched(folder, score, at, seconds, fibers=(1,)):
     return times, let
 
 
+def test_a_score_that_somebody_may_have_worked_on_is_replaced_by_force_alone(folder, capsys):
+    (folder / "beneath.score").write_text(SCORE)
+    (folder / "other.score").write_text("# mine\n")
+    play(folder, fibers=(1,), onto="beneath.score")
+    for out in ("other.score", "beneath.score"):
+        kept = (folder / out).read_text()
+        laid = ["take", "a.take", "-o", out, "--onto", "beneath.score"]
+        assert run(laid) == 2
+        assert "it would be lost" in (err := capsys.readouterr().err) and "--force" in err
+        assert (folder / out).read_text() == kept
+        assert run([*laid, "--force"]) == 0
+        assert "section take" in (folder / out).read_text()
+    # What a take itself was written to is nobody's work.
+    assert run(["take", "a.take", "-o", "alone.score"]) == 0
+    assert run(["take", "a.take", "-o", "alone.score"]) == 0
+
+
+def test_snags_are_told_as_the_check_tells_them(folder, capsys):
+    text = SCORE.replace("r.* nod times 5 ", "r.* leap times 5 ").replace(
+        "phrase nod", "phrase leap\n  0.02 full\n  1 rest\nphrase nod"
+    )
+    (folder / "beneath.score").write_text(text)
+    play(folder, fibers=(1,), onto="beneath.score", from_s=4.0, seconds=6.0)
+    assert run(["take", "a.take", "-o", "over.score", "--onto", "beneath.score", "--at", "4s"]) == 1
+    told = capsys.readouterr().out
+    assert run(["check", "over.score"]) == 1
+    assert told.endswith(capsys.readouterr().out)
+    assert run(["take", "a.take", "-o", "over.score", "--onto", "beneath.score", "--at", "4s", "--force", "--json"]) == 1
+    snags = json.loads(capsys.readouterr().out)["snags"]
+    assert snags and {snag["kind"] for snag in snags} == {"rate"}
+
+
 @pytest.mark.parametrize("flat", [False, True])
 @pytest.mark.parametrize(("at", "seconds"), [(3.0, 2.5), (3.0, 5.0), (7.0, 3.3), (9.5, 2.0), (0.5, 10.0)])
 def test_after_a_punch_in_fibers_come_back_to_the_score_and_do_as_it_has_them(folder, capsys, flat, at, seconds):
