@@ -10,11 +10,11 @@ from composer.limits.alike import alike
 from composer.limits.duration import STEP_S, duration_ceilings, durations_by_rate, least_durations, speed_range
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.over_tables import worst_over_tables
-from composer.limits.polynomials import derivative, value, where_positive
+from composer.limits.polynomials import derivative, search, value, where_positive
 from composer.limits.quivering import asked, excess, least_with_quivers, shaken
 from composer.limits.snag import Snag
 from composer.limits.stretches import NO_PIECES, Pieces, as_snags, gather, picked
-from composer.limits.tables import rates
+from composer.limits.tables import cells, rates, tables_of
 from composer.rig.model import Rig
 from composer.tracks import MOVE, SAME_INSTANT_S, SUDDEN, Tracks, durations, end_strain, fiber_of
 
@@ -22,9 +22,11 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 SAMPLES = 129
-"""Where a table bends the limit, a move that breaks it is sampled so often to find where it does so, then bisected."""
+"""Where a table bends the limit, a move that breaks it is sampled so often to find where it does so, then closed in on."""
 
-BISECTIONS = 40
+MANY = 200
+SECTIONS = (np.arange(1, 8) / 8.0, np.array([0.5]))
+"""Closing in on few places halves the rounds, each of which costs the same, by looking at seven at once; many are halved."""
 
 
 def least_s(tracks: Tracks, abilities: Abilities, segments: Index | None = None) -> Array:
@@ -97,7 +99,7 @@ def _quivers(tracks: Tracks, abilities: Abilities, suspects: Index) -> Pieces:
     def over(one: Index, u: Array) -> Array:
         return excess(abilities, fiber[one], curve[one], moves, row[one], lasts[one], u)
 
-    which, start, end = bisected(over, worst.u[broken])
+    which, start, end = stretches_over(over, worst.u[broken])
     mends = np.isfinite(worst.least_s)
     mine = broken[which]
     return Pieces(
@@ -140,7 +142,7 @@ def _suddens(tracks: Tracks, of: Index, least: Array) -> Pieces:
 
 
 def _moves(tracks: Tracks, abilities: Abilities, of: Index, lasts: Array, worst_u: Array) -> Pieces:
-    """The stretches of moves that break the limit, by polynomial roots where it is constant, by bisection elsewhere.
+    """The stretches of moves that break the limit, by polynomial roots where it is constant, by closing in elsewhere.
 
     worst_u: (M,) where each asks the most, for those whose limit is a table.
     """
@@ -177,7 +179,7 @@ def _moves(tracks: Tracks, abilities: Abilities, of: Index, lasts: Array, worst_
             limit = rates(abilities, fiber[mine], value(curve[mine], u), speed > 0.0)
             return np.abs(speed) - limit * lasts[mine] * (1.0 + 0.5 * TOLERANCE)
 
-        row, start, end = bisected(over_table, worst)
+        row, start, end = stretches_over(over_table, worst, _corners(abilities, fiber[varied], curve[varied]))
         rows.append(varied[row])
         starts.append(start)
         ends.append(end)
@@ -194,28 +196,57 @@ def _moves(tracks: Tracks, abilities: Abilities, of: Index, lasts: Array, worst_
     )
 
 
-def bisected(over: Callable[[Index, Array], Array], worst_u: Array) -> tuple[Index, Array, Array]:
+def stretches_over(
+    over: Callable[[Index, Array], Array], worst_u: Array, also: tuple[Index, Array] | None = None
+) -> tuple[Index, Array, Array]:
     """The stretches of u in which each of M moves is `over`, above 0, a limit: rows, from and to; `worst_u`, (M,), lies in one.
 
     over: of rows (n,) and u (n,), values (n,)
+    also: rows and u, (p,) each, that are looked at beside even samples, as where a limit has its corners
     """
-    grid = np.broadcast_to(np.linspace(0.0, 1.0, SAMPLES), (len(worst_u), SAMPLES))
-    u = np.sort(np.column_stack([grid, worst_u]), axis=1)
-    number = np.repeat(np.arange(len(worst_u)), SAMPLES + 1)
-    broken = over(number, u.ravel()).reshape(u.shape) > 0.0
-    row, change = np.nonzero(broken[:, 1:] != broken[:, :-1])
-    low, high, first = u[row, change], u[row, change + 1], broken[row, change]
-    for _ in range(BISECTIONS):
-        middle = 0.5 * (low + high)
-        as_low = (over(row, middle) > 0.0) == first
-        low, high = np.where(as_low, middle, low), np.where(as_low, high, middle)
+    count = len(worst_u)
+    more_rows, more_u = (np.empty(0, dtype=np.int64), np.empty(0)) if also is None else also
+    number = np.concatenate([np.repeat(np.arange(count), SAMPLES), np.arange(count), more_rows])
+    u = np.concatenate([np.tile(np.linspace(0.0, 1.0, SAMPLES), count), worst_u, more_u])
+    order = np.lexsort((u, number))
+    number, u = number[order], u[order]
+    broken = over(number, u) > 0.0
+    first = np.append(True, number[1:] != number[:-1])[: len(number)]
+    last = np.append(first[1:], True)[: len(number)]
+    change = np.flatnonzero((broken[1:] != broken[:-1]) & ~first[1:])
+    row, low, high, begins = number[change], u[change], u[change + 1], broken[change + 1]
+    sections = SECTIONS[len(row) > MANY]
+    for _ in range(int(np.ceil(40.0 / np.log2(len(sections) + 1)))):
+        at = low + np.multiply.outer(sections, high - low)
+        past = (over(np.tile(row, len(sections)), at.ravel()) > 0.0).reshape(at.shape) != begins
+        gone = past.all(axis=0)
+        place = np.where(gone, len(sections), past.argmin(axis=0))
+        edges = np.vstack([low, at, high])
+        low, high = np.take_along_axis(edges, np.array([place, place + 1]), 0)
     edge = 0.5 * (low + high)
-    from_row = np.concatenate([np.flatnonzero(broken[:, 0]), row[~first]])
-    start = np.concatenate([np.zeros(np.count_nonzero(broken[:, 0])), edge[~first]])
-    to_row = np.concatenate([row[first], np.flatnonzero(broken[:, -1])])
-    end = np.concatenate([edge[first], np.ones(np.count_nonzero(broken[:, -1]))])
+    from_row = np.concatenate([number[first & broken], row[begins]])
+    start = np.concatenate([np.zeros(np.count_nonzero(first & broken)), edge[begins]])
+    to_row = np.concatenate([row[~begins], number[last & broken]])
+    end = np.concatenate([edge[~begins], np.ones(np.count_nonzero(last & broken))])
     by_start, by_end = np.lexsort((start, from_row)), np.lexsort((end, to_row))
     return from_row[by_start], start[by_start], end[by_end]
+
+
+def _corners(abilities: Abilities, fiber: Index, curve: Array) -> tuple[Index, Array]:
+    """Where the strain of moves passes the points of their tables, at which a limit may be lowest: rows, and u."""
+    tables = tables_of(abilities)
+    u = np.linspace(0.0, 1.0, SAMPLES)
+    strain = curve @ np.vander(u, curve.shape[1], increasing=True).T
+    cell = cells(abilities, np.broadcast_to(fiber[:, None], strain.shape), strain)
+    passed = np.abs(np.diff(cell, axis=1))
+    row, stretch = np.nonzero(passed)
+    count = passed[row, stretch]
+    which = np.arange(count.sum()) - np.repeat(np.cumsum(count) - count, count)
+    row, stretch = np.repeat(row, count), np.repeat(stretch, count)
+    shifted = curve[row].copy()
+    shifted[:, 0] -= tables.fill.strain[np.minimum(cell[row, stretch], cell[row, stretch + 1]) + 1 + which]
+    low = u[stretch]
+    return row, search(shifted, low, u[stretch + 1], value(shifted, low))
 
 
 LIMIT = Limit("rate", "1/s", "no strain rate above the fastest fill or exhaust at that strain", snags, least_s)

@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from composer.limits.abilities import abilities_of
@@ -84,6 +84,7 @@ wild = st.lists(st.floats(-0.5, 0.5).map(lambda x: round(x, 4)), min_size=6, max
 
 
 @settings(deadline=None, max_examples=60)
+@example([-0.2812, 0.375, 0.0, 0.375, 0.125, 0.125], 2.0, [1.0, 0.4375, 2.0, 1.0, 1.0], [1.0] * 5, False)  # at a corner alone
 @given(wild, st.floats(0.1, 3.0), st.lists(rate, min_size=5, max_size=5), st.lists(rate, min_size=5, max_size=5), st.booleans())
 def test_the_stretches_are_where_dense_samples_are_too_fast(
     make_abilities, make_tracks, make_rig, curve, lasts, up, down, even
