@@ -1,11 +1,19 @@
 """A small piece to be drawn."""
 
+import os
+
+# No picture and no window needs a screen here.
+os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
+
 import numpy as np
 import pytest
 
 from composer.limits.abilities import abilities_of
+from composer.limits.check import check
+from composer.picture.bands import bands_of
 from composer.picture.material import Piece, run, scene_of
 from composer.picture.scene import CueMark
+from composer.picture.weave import Weave, lanes_of, stretches
 from composer.score.tempo import TempoMap
 from composer.shapes import PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks
@@ -42,5 +50,20 @@ def make_scene(make_piece):
     def make(columns=400, **how):
         piece = make_piece(**how)
         return scene_of(piece, run(piece, columns, 100.0))
+
+    return make
+
+
+@pytest.fixture(scope="session")
+def make_weave(make_piece):
+    """A maker of weaves of such pieces: with the snags that their check finds, and both lanes."""
+
+    def make(**how):
+        piece = make_piece(**how)
+        found = check(piece.tracks, piece.rig, piece.abilities).snags
+        return Weave(
+            piece.tracks, piece.abilities, bands_of(piece.rig), piece.names, piece.tempo, stretches(found), piece.pins_s,
+            piece.cues, lanes_of(piece.rig, piece.abilities, piece.tracks, 400),
+        )  # fmt: skip
 
     return make
