@@ -141,7 +141,7 @@ def _stays(found: Wanted, all_: Instances, rows: Index) -> None:
             found.leaves_s[row + 1], high = low, low
         if not low <= found.until_s[row] <= high:
             gap = float(all_.until_s[row] - all_.before_s[row])
-            found.until_s[row] = low + gap if low + gap <= high else high
+            found.until_s[row] = low + gap if row > rows[0] and low + gap <= high else high
     for row in still:
         found.leaves_s[row] = found.arrives_s[row] = found.until_s[row]
 
