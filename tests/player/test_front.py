@@ -67,11 +67,11 @@ def test_without_colour_there_is_no_control_character():
 class OnTerminal:
     """`drawcord play` on a terminal of its own; `see` waits for words, `end` gives exit code and all that was shown."""
 
-    def __init__(self, *arguments, **environment):
+    def __init__(self, *arguments, command="play", **environment):
         self.master, slave = pty.openpty()
         fcntl.ioctl(slave, termios.TIOCSWINSZ, struct.pack("HHHH", 24, 120, 0, 0))
         self.process = subprocess.Popen(
-            [sys.executable, "-m", "player.commands.main", "play", *arguments],
+            [sys.executable, "-m", "player.commands.main", command, *arguments],
             stdin=slave,
             stdout=slave,
             stderr=slave,
