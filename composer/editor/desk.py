@@ -78,6 +78,8 @@ class Desk:
         """Take a message in; work for the text before is dropped."""
         match message:
             case Whole():
+                if message.file != self.file:
+                    self._forget()
                 self.file, self.units = message.file, Units(message.text)
                 self._begin(message.version)
             case Changed():
@@ -135,6 +137,15 @@ class Desk:
         return Picture(version, self._rig_told, title, made.tracks, made.tempo, made.pins_s, made.cues)
 
     # ---- the way of a text ----------------------------------------------------------------------------------------------
+
+    def _forget(self) -> None:
+        """Nothing is known of another score: not what was read of the one before, nor its rig."""
+        self.leaning.forget()
+        self.made, self.made_version, self.made_text, self.settled = None, -1, "", -1
+        self.check = self.known = self._threads = None
+        self._rig_told = 0
+        if self.solver is not None:
+            self.solver.forget()
 
     def _begin(self, version: int) -> None:
         self.version = version

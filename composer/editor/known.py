@@ -71,6 +71,11 @@ class Known:
         self.stale = False
         """Whether the text has moved on from what is shown, and cannot be read as it is."""
 
+    def forget(self) -> None:
+        """Another score: nothing is known of it yet, but the rig stays until another is told."""
+        self.picture = self.weave = self.checked = self.retimed = self.run = None
+        self.stale = False
+
     def take_rig(self, told: RigRead) -> None:
         """A rig."""
         self.rig, self.abilities, self.rig_number = told.rig, told.abilities, told.number

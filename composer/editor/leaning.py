@@ -33,6 +33,10 @@ class Leaning:
         self._read: dict[str, tuple[FileStamp, Any, Faults | None]] = {}
         self._used: dict[str, FileStamp] = {}
 
+    def forget(self) -> None:
+        """The rig at hand is that of another score."""
+        self.rig, self.abilities, self._rig_path = None, None, ""
+
     def begin(self) -> None:
         """From here on `leans_on` gathers anew."""
         self._used = {}

@@ -205,7 +205,7 @@ class Looks:
                 if room < 160:
                     x, room = max(offset.x(), pane.viewport().width() - 340.0), 334.0
                     box = QRectF(x - 4, top, room + 8, height)
-                    painter.fillRect(box, QColor(*self._theme.field, 235))
+                    painter.fillRect(box, QColor(*self._theme.field))
                 says = metrics.elidedText("\u25b2 " + marks[0].says, Qt.TextElideMode.ElideRight, room)
                 painter.drawText(QRectF(x, top, room, height), Qt.AlignmentFlag.AlignVCenter, says)
             top += height

@@ -77,6 +77,12 @@ class RetimedPanel(QWidget):
         self._list.blockSignals(False)
         self._enable()
 
+    def clear(self) -> None:
+        """Nothing is known."""
+        self._hits = ()
+        self._list.clear()
+        self._enable()
+
     def set_passage(self, passage: tuple[float, float] | None) -> None:
         """The passage that is looped, in s as written."""
         self._passage = passage

@@ -29,7 +29,7 @@ phrase lift 4
   4      rest
 
 section one at 1:1
-  all         lift
+  *           lift
 """
 """What a new score begins with."""
 

@@ -98,6 +98,18 @@ class Showing(QObject):
                 if known.take_run(message) and not self._grow.isActive():
                     self._grow.start()
 
+    def forget(self) -> None:
+        """Another score: nothing of the one before is shown any more."""
+        self.known.forget()
+        self._fiber = self._sampler = self._ghost_said = self._carried = None
+        self.stage.transport.pause()
+        self.stage.transport.clear_loop()
+        self.stage.transport.to_start()
+        self.stage.cloth.set_weave(None)
+        self.strand.set_strand(None, None)
+        self.snags.clear()
+        self.retimed_panel.clear()
+
     def _show_picture(self) -> None:
         known = self.known
         assert known.weave is not None and known.picture is not None

@@ -205,6 +205,12 @@ class SnagsPanel(QWidget):
         else:
             self.mends_wanted.emit(self._rows[at])
 
+    def clear(self) -> None:
+        """Nothing is known."""
+        self._rows = ()
+        self._list.clear()
+        self.mends.say("")
+
     def choose(self, snag: int) -> None:
         """Choose the row that tells of a snag (index into the check's), without going there."""
         at = next((n for n, row in enumerate(self._rows) if snag in (row.snag, *row.others)), None)

@@ -53,6 +53,10 @@ class Solver:
         """Whether a run of what is shown may begin: there is a text that can be read, and nothing else is in hand."""
         return self.desk.made_version == self.desk.version and (idle or self._simulating)
 
+    def forget(self) -> None:
+        """Another score."""
+        self.retiming = self._of = self._known = self._ran = None
+
     def work(self) -> Generator[None, None, None]:
         """Retime the text at hand, tell of it, then simulate it."""
         desk, made = self.desk, self.desk.made
@@ -124,7 +128,7 @@ class Solver:
             desk.made_text, made, same[0], desk.check, self._remake, self.retiming if self._of is made else None
         )
         choices = tuple(
-            Choice(each.way, each.say, each.edit, Ghost(each.after.tracks), each.snags_left) for each in found.choices
+            Choice(each.way, each.say, each.edit, Ghost(each.ghost), each.snags_left) for each in found.choices
         )
         return Mended(choices, dict(found.not_these))
 

@@ -62,6 +62,8 @@ class ComposeWindow(Deeds, QMainWindow):
         self.printer = Printer(self.crew, self.notices, self.later, self)
         self._names: dict[int, str] = {}
         self._entry = 0
+        self._shown_file = ""
+        self._last_wrong = ""
         self._closing = False
         self._text_scale = 1.0
         self._own_scale = 1.0
@@ -178,6 +180,13 @@ class ComposeWindow(Deeds, QMainWindow):
     def _began(self, file: str, text: str) -> None:
         self.hand.forget()
         self._names = {}
+        if file != self._shown_file:
+            self._shown_file = file
+            self.showing.forget()
+            for at, word in enumerate(("Snags", "Retiming")):
+                self.lists.setTabText(at, word)
+            self.foot.say("snags", "")
+            self.notices.drop("other")
         self.crew.begin(file, text)
 
     def _text_changed(self, delta: Delta) -> None:
@@ -207,6 +216,12 @@ class ComposeWindow(Deeds, QMainWindow):
 
     def _caret_placed(self, line: int, column: int) -> None:
         self.foot.say("place", f"line {line}, column {column}")
+        wrong = self.pane.looks.marks.get(line)
+        if wrong:
+            self.foot.say("word", wrong[0].says)
+        elif self.foot.said("word") == self._last_wrong:
+            self.foot.say("word", "")
+        self._last_wrong = wrong[0].says if wrong else ""
         self.crew.ask("moved", (line,), self._light)
 
     def _light(self, stretches: Any) -> None:
