@@ -1,6 +1,7 @@
 """What the operator asks of a run, kept until the loop does it."""
 
 from collections import deque
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 AT_ONCE = frozenset(("vent", "stop", "rest", "left"))
@@ -37,6 +38,9 @@ class Asked:
         """All of it, in order; it waits no longer."""
         return [self._waits.popleft() for _ in range(len(self._waits))]
 
+    def __iter__(self) -> Iterator[Command]:
+        return iter(tuple(self._waits))
+
     def has(self, kinds: frozenset[str]) -> bool:
         """Whether one of these waits."""
-        return bool(self._waits) and any(command.kind in kinds for command in tuple(self._waits))
+        return bool(self._waits) and any(command.kind in kinds for command in self)
