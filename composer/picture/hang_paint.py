@@ -2,11 +2,13 @@
 
 from collections.abc import Collection
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
 from PySide6.QtGui import QPainter, QPen, QPolygonF
+from shiboken6 import VoidPtr
 
 from composer.limits.abilities import Abilities
 from composer.picture import palette
@@ -19,11 +21,17 @@ from composer.rig.model import Rig
 
 Array = NDArray[np.float64]
 
-SHADES = 48
+SHADES = 32
 """Steps of brightness, so that fibers alike are drawn with one pen."""
 
 WIDTHS = 0.5
 """Pixels between pens."""
+
+FINE_PX = 0.7
+"""Pixels between points of a curve below which some are left out."""
+
+LAYERS = 6
+"""Depths that are told apart when nearer fibers are laid over farther ones."""
 
 APART = 0.02
 """Share of stroke by which what is wanted and what is sensed must differ for a ghost to be drawn."""
@@ -176,25 +184,60 @@ def paint_fibers(
     strain = np.where(np.isfinite(strain), strain, wanted)
     lines = camera.pixels(centre_lines(hanging, strain))
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+    apart = np.zeros(0, dtype=np.intp)
     if sensed is not None:
         apart = np.flatnonzero(np.abs(wanted - strain) > APART * room.stroke)
-        if len(apart):
-            _ghosts(painter, room, camera, look, wanted, apart)
+    there = camera.pixels(centre_lines(hanging, wanted)) if len(apart) else lines
+    _bent_ghosts(painter, room, look, there, apart)
     _bodies(painter, room, camera, look, strain, lines, lit)
+    if len(apart):
+        _ghost_ends(painter, room, look, there, lines, apart)
     return lines
 
 
-def _ghosts(painter: QPainter, room: Room, camera: Camera, look: Look, wanted: Array, which: NDArray[np.intp]) -> None:
-    """Where fibers should be: pale and thin, with a ring at the end."""
-    hanging = room.hanging
-    lines = camera.pixels(centre_lines(hanging, wanted))
+def _bent_ghosts(painter: QPainter, room: Room, look: Look, there: Array, which: NDArray[np.intp]) -> None:
+    """Where fibers that bend or coil should be, pale and thin, under the fibers; `there` (N, 2): pixels of lines as wanted."""
+    first = room.hanging.first
     painter.setBrush(Qt.BrushStyle.NoBrush)
     painter.setPen(pen(look.theme.ghost, max(1.2, 1.4 * look.scale), 150))
-    size = look.px(4)
-    for fiber in which.tolist():
-        points = [QPointF(x, y) for x, y in lines[hanging.first[fiber] : hanging.first[fiber + 1]].tolist()]
-        painter.drawPolyline(points)
-        painter.drawEllipse(points[-1], size, size)
+    for fiber in which[room.hanging.bend[which] != 0.0].tolist():
+        painter.drawPolyline(_polygon(_thinned(there[first[fiber] : first[fiber + 1]])))
+
+
+def _ghost_ends(painter: QPainter, room: Room, look: Look, there: Array, here: Array, which: NDArray[np.intp]) -> None:
+    """Where ends should be, a bar across, over the fibers; from the end of a straight fiber a thin line leads there."""
+    last = room.hanging.first[1:] - 1
+    straight = last[which[room.hanging.bend[which] == 0.0]]
+    painter.setPen(pen(look.theme.ghost, max(1.2, 1.4 * look.scale), 200))
+    _lines(painter, here[straight], there[straight])
+    ends = there[last[which]]
+    way = ends - there[last[which] - 1]
+    way *= look.px(6) / np.maximum(np.hypot(*way.T), 1e-9)[:, None]
+    across = np.column_stack([-way[:, 1], way[:, 0]])
+    painter.setPen(pen(look.theme.ghost, max(1.8, 2.0 * look.scale), 230))
+    _lines(painter, ends - across, ends + across)
+
+
+def _lines(painter: QPainter, begins: Array, ends: Array) -> None:
+    """Draw lines between points (N, 2) and (N, 2)."""
+    if len(begins):
+        painter.drawLines([QLineF(*each) for each in np.column_stack([begins, ends]).tolist()])
+
+
+def _thinned(points: Array) -> Array:
+    """Points (N, 2) of one line, as few as do: a coil that is drawn small has far more than there are pixels."""
+    apart = float(np.abs(np.diff(points[:: max(1, len(points) // 16)], axis=0)).max(initial=0.0))
+    step = int(FINE_PX * max(1, len(points) // 16) / max(apart, 1e-6))
+    return points if step <= 1 else np.concatenate([points[:-1:step], points[-1:]])
+
+
+def _polygon(points: Array) -> QPolygonF:
+    """Points (N, 2) as Qt has them, written where it keeps them, as making each of them would take longer than drawing all."""
+    made = QPolygonF()
+    made.resize(len(points))
+    memory = np.frombuffer(VoidPtr(made.data(), points.size * 8, True), dtype=np.float64)
+    memory[:] = points.ravel()
+    return made
 
 
 def _bodies(
@@ -206,32 +249,38 @@ def _bodies(
     share = np.clip(strain / np.where(room.stroke > 0.0, room.stroke, 1.0), 0.0, 1.0)
     shade = np.rint((REST_SHADE + (1.0 - REST_SHADE) * share) * (SHADES - 1)).astype(int)
     width = widths(room, camera, look, strain)
-    step = np.maximum(np.rint(width / WIDTHS), 1).astype(int)
-    far = np.rint(depth(hanging.at, camera.view) * 1e3)
-    order = np.lexsort((step, shade, room.extending, -far))
-    alike = np.column_stack([shade, step, room.extending, far])[order]
-    cuts = np.flatnonzero(np.any(np.diff(alike, axis=0), axis=1)) + 1
+    step = np.maximum(np.rint(width / (WIDTHS * look.scale)), 1).astype(int)
+    far = _layers(depth(hanging.at, camera.view))
+    alike = np.column_stack([step, shade, room.extending, -far])
+    order = np.lexsort(alike.T)
+    cuts = np.flatnonzero(np.any(np.diff(alike[order], axis=0), axis=1)) + 1
     painter.setBrush(Qt.BrushStyle.NoBrush)
     for fiber in sorted(lit):
         if 0 <= fiber < len(room.names):
             painter.setPen(_round(look.theme.chosen, float(width[fiber]) + look.px(5)))
-            painter.drawPolyline([QPointF(x, y) for x, y in lines[first[fiber] : first[fiber + 1]].tolist()])
+            painter.drawPolyline(_polygon(lines[first[fiber] : first[fiber + 1]]))
     size = look.px(2)
     for group in np.split(order, cuts):
         head = group[0]
         ramp = look.theme.extend if room.extending[head] else look.theme.contract
-        shown = ramp[round(shade[head] / (SHADES - 1) * (palette.STEPS - 1))]
-        of = (int(shown[0]), int(shown[1]), int(shown[2]))
-        painter.setPen(_round(of, step[head] * WIDTHS))
+        red, green, blue = ramp[round(shade[head] / (SHADES - 1) * (palette.STEPS - 1))].tolist()
+        wide = float(step[head] * WIDTHS * look.scale)
+        painter.setPen(_round((red, green, blue), wide))
         straight = group[hanging.bend[group] == 0.0]
-        if len(straight):
-            ends = np.column_stack([lines[first[straight]], lines[first[straight + 1] - 1]]).tolist()
-            painter.drawLines([QLineF(*each) for each in ends])
+        _lines(painter, lines[first[straight]], lines[first[straight + 1] - 1])
         for fiber in group[hanging.bend[group] != 0.0].tolist():
-            painter.drawPolyline([QPointF(x, y) for x, y in lines[first[fiber] : first[fiber + 1]].tolist()])
+            painter.drawPolyline(_polygon(_thinned(lines[first[fiber] : first[fiber + 1]])))
         # A bead at the end, so that a small motion is seen where it is largest.
-        painter.setPen(_round(of, step[head] * WIDTHS + 2 * size))
-        painter.drawPoints([QPointF(x, y) for x, y in lines[first[group + 1] - 1].tolist()])
+        painter.setPen(_round((red, green, blue), wide + 2 * size))
+        painter.drawPoints(_polygon(lines[first[group + 1] - 1]))
+
+
+def _layers(deep: Array) -> NDArray[np.int64]:
+    """Which of a few layers each fiber lies in by its depth (F,), 0 the nearest."""
+    low, high = float(deep.min()), float(deep.max())
+    if high - low < 1e-6:
+        return np.zeros(len(deep), dtype=np.int64)
+    return np.rint((deep - low) / (high - low) * (LAYERS - 1)).astype(np.int64)
 
 
 def widths(room: Room, camera: Camera, look: Look, strain: Array) -> Array:
@@ -242,6 +291,7 @@ def widths(room: Room, camera: Camera, look: Look, strain: Array) -> Array:
     return true * max(1.0, least / thinnest) if np.isfinite(thinnest) and thinnest > 0.0 else true
 
 
+@lru_cache(maxsize=4096)
 def _round(of: palette.Colour, width: float) -> QPen:
     made = pen(of, width)
     made.setCapStyle(Qt.PenCapStyle.RoundCap)

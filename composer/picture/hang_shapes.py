@@ -17,8 +17,8 @@ from composer.rig.model import Fiber, Rig
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-STRAIGHT_POINTS, BENT_POINTS = 2, 33
-POINTS_A_TURN, MOST_POINTS = 16, 257
+STRAIGHT_POINTS, BENT_POINTS = 2, 25
+POINTS_A_TURN, MOST_POINTS = 14, 193
 RATED_RADIUS_M = 2.0e-3
 """A maker's sheet gives no diameter; this one is drawn."""
 
