@@ -12,7 +12,7 @@ from composer.edits.instances import Instances, instances_of
 from composer.edits.made import Made
 from composer.edits.rewriting import place_text
 from composer.edits.saying import Word, in_unit, phrase_words
-from composer.edits.values import counts_from_place
+from composer.edits.values import counts_from_place, form_of
 from composer.score.expand_lines import parts
 from composer.score.model import Duration, Entry, Phrase, Section, Span
 from composer.score.numbers import write_like, write_place_like
@@ -20,6 +20,9 @@ from composer.score.spans import Found, span_of, text_at, time_handles
 
 UP = Fraction(1, 100)
 """What a number that gives more time is rounded up to: counts, seconds or bars."""
+
+UP_FRACTION = Fraction(1, 16)
+"""The same where the move's own number is written as a fraction."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,6 +74,8 @@ def give_time(text: str, made: Made, spot: Spot, more_s: float) -> Edit | Refusa
         by = _up(made, spot, more_s, line.offset.unit)
         words.append((n, "offset", _later(made, line.offset, by)))
         said = said or f"{_written(made, line.offset)} to {words[-1][2]}"
+        if n == spot.at and line.over is not None:
+            words.append((n, "over", _later(made, line.over, _up(made, spot, more_s, line.over.unit))))
     words += _length(made, spot, more_s)
     return edit_of(phrase_changes(text, made, spot, words), f"{spot.phrase.name}: {said}, the rest as much later")
 
@@ -82,13 +87,16 @@ def let_lead(text: str, made: Made, spot: Spot, more_s: float) -> Edit | Refusal
     lines, at = spot.phrase.lines, spot.at
     line, before = lines[at], lines[at - 1] if at else None
     words: list[Word] = []
+    holds = before is not None and before.target.unit == "hold" and at > 1
+    if holds:
+        sooner = before.offset.value - _up(made, spot, more_s, before.offset.unit)
+        if before.offset.unit == lines[at - 2].offset.unit and sooner <= lines[at - 2].offset.value:
+            return Refusal("The hold before it is too short for it to leave that much earlier.")
+        words.append((at - 1, "offset", write_like(_written(made, before.offset), sooner)))
     if line.over is not None:
         words.append((at, "over", _later(made, line.over, _up(made, spot, more_s, line.over.unit))))
-        if before is not None and before.target.unit == "hold":
-            words.append((at - 1, "offset", _later(made, before.offset, -_up(made, spot, more_s, before.offset.unit))))
-        return edit_of(phrase_changes(text, made, spot, words), f"{spot.phrase.name}: over {words[0][2]}")
-    if before is not None and before.target.unit == "hold" and at > 1:
-        words.append((at - 1, "offset", _later(made, before.offset, -_up(made, spot, more_s, before.offset.unit))))
+        return edit_of(phrase_changes(text, made, spot, words), f"{spot.phrase.name}: over {words[-1][2]}")
+    if holds:
         return edit_of(phrase_changes(text, made, spot, words), f"{spot.phrase.name}: hold until {words[0][2]}")
     if before is not None and any(parts(before.offset)):
         return Refusal("The move before it lands where this one leaves, so it cannot leave earlier.")
@@ -99,12 +107,17 @@ def let_lead(text: str, made: Made, spot: Spot, more_s: float) -> Edit | Refusal
     if isinstance(start, Refusal):
         return start
     real_s = spot.from_s - float(made.tempo.seconds(begins - counts))
-    for n, one in enumerate(lines):
-        if any(parts(one.offset)):
-            unit = one.offset.unit
-            exact = in_unit(made.tempo, spot.from_s - real_s, spot.from_s, unit) / float(spot.entry.stretch)
-            words.append((n, "offset", _later(made, one.offset, Fraction(exact).limit_denominator(1_000_000))))
-    words += _length(made, spot, real_s)
+
+    def by(unit: str) -> Fraction:
+        exact = in_unit(made.tempo, spot.from_s - real_s, spot.from_s, unit) / float(spot.entry.stretch)
+        return Fraction(exact).limit_denominator(1_000_000)
+
+    words += [
+        (n, "offset", _later(made, one.offset, by(one.offset.unit))) for n, one in enumerate(lines) if any(parts(one.offset))
+    ]
+    if spot.phrase.length is not None:
+        length = spot.phrase.length
+        words.append((-1, "length", _later(made, length, ceil(by(length.unit) / UP) * UP)))
     changes = [*phrase_changes(text, made, spot, words), start]
     return edit_of(changes, f"line {spot.entry.span.line}: starts {counts:g} counts earlier, lands where it did")
 
@@ -177,7 +190,9 @@ def phrase_changes(text: str, made: Made, spot: Spot, words: list[Word]) -> list
 def _up(made: Made, spot: Spot, more_s: float, unit: str) -> Fraction:
     """More time in a unit of the phrase, rounded up."""
     value = in_unit(made.tempo, spot.to_s, spot.to_s + more_s, unit) / float(spot.entry.stretch)
-    return ceil(Fraction(value) / UP) * UP
+    form = form_of(_written(made, spot.phrase.lines[spot.at].offset))
+    step = UP_FRACTION if form in ("fraction", "mixed") else UP
+    return ceil(Fraction(value) / step) * step
 
 
 def _written(made: Made, duration: Duration) -> str:

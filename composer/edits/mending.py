@@ -67,12 +67,9 @@ def mends(text: str, made: Made, snag: Snag, checked: Check, remake: Remake, ret
 
     retiming: of `made.tracks` where there is one; without it nothing is offered that needs one.
     """
-    spot = None if snag.fiber is None or snag.knot < 0 else spot_of(made, snag.fiber, snag.knot)
-    case = _Case(text, made, snag, checked, remake, retiming, spot)
     choices: list[Choice] = []
     not_these: dict[str, str] = {}
-    for way in _FOR.get(snag.kind, ()):
-        found = _WAYS[way](case)
+    for way, found in each_mend(text, made, snag, checked, remake, retiming):
         if isinstance(found, Choice):
             choices.append(found)
         else:
@@ -80,14 +77,27 @@ def mends(text: str, made: Made, snag: Snag, checked: Check, remake: Remake, ret
     return Mending(tuple(choices), not_these)
 
 
-def _tried(case: _Case, way: str, say: str, edits: Iterator[Edit | Refusal]) -> Choice | Refusal:
-    """The first of some edits that mends the snag without making another; else why the last one does not."""
+def each_mend(
+    text: str, made: Made, snag: Snag, checked: Check, remake: Remake, retiming: Retiming | None = None
+) -> Iterator[tuple[str, Choice | Refusal]]:
+    """As `mends`, one way after another as it has been tried: for a window that shows each when it is there."""
+    spot = None if snag.fiber is None or snag.knot < 0 else spot_of(made, snag.fiber, snag.knot)
+    case = _Case(text, made, snag, checked, remake, retiming, spot)
+    for way in _FOR.get(snag.kind, ()):
+        yield way, _WAYS[way](case)
+
+
+def _tried(case: _Case, way: str, say: str, edits: Iterator[Edit | Refusal], known: Made | None = None) -> Choice | Refusal:
+    """The first of some edits that mends the snag without making another; else why the last one does not.
+
+    known: what follows from the first edit, where that has been worked out
+    """
     why = Refusal("Nothing of the kind would mend it.")
     for edit in edits:
         if isinstance(edit, Refusal):
             return why if why.say.startswith("It") else edit
         try:
-            after = case.remake(apply(case.text, edit))
+            after = known or case.remake(apply(case.text, edit))
         except Faults as wrong:
             said = wrong.faults[0].found
             why = Refusal(f"{said[:1].upper()}{said[1:]}.")
@@ -220,7 +230,7 @@ def _retime(case: _Case) -> Choice | Refusal:
         if isinstance(found, Refusal):
             why = found
             continue
-        tried = _tried(case, "retime", "Let the retimer do this hit", iter([found.edit]))
+        tried = _tried(case, "retime", "Let the retimer do this hit", iter([found.edit]), found.after)
         if isinstance(tried, Choice):
             return tried
         why = tried
