@@ -9,6 +9,7 @@ import signal
 import socket
 import subprocess
 import sys
+import threading
 import time
 
 import numpy as np
@@ -300,3 +301,90 @@ def test_learn_writes_a_bind_for_the_control_that_is_moved(jack, bench):
     sender.close()
     assert process.returncode == 0 and json.loads(out)["control"] == "{ cc = 7, channel = 3 }"
     assert (bench / "new.map.toml").read_text() == '[[bind]]\nmidi = { cc = 7, channel = 3 }\nfibers = "r.1-2"\npickup = true\n'
+
+
+RATES = [
+    (0, (24, 1), 24, (0, 0, 3, 0)),
+    (1, (25, 1), 25, (0, 0, 11, 3)),
+    (2, (30000, 1001), 30, (0, 0, 59, 0)),  # across a minute, of which numbers 0 and 1 are left out
+    (3, (30, 1), 30, (0, 1, 5, 12)),
+]
+
+
+def true_seconds(label, numbers, per_s, drop):
+    """Seconds that have gone when a label comes up, by counting every label from midnight on."""
+    gone, at = 0, [0, 0, 0, 0]
+    while tuple(at) != label:
+        gone, at[3] = gone + 1, at[3] + 1
+        if at[3] == numbers:
+            at[3], at[2] = 0, at[2] + 1
+        if at[2] == 60:
+            at[2], at[1] = 0, at[1] + 1
+            at[3] = 2 if drop and at[1] % 10 else 0
+    return gone * per_s[1] / per_s[0]
+
+
+def test_a_score_follows_time_code_of_every_rate_over_jack_coasts_and_stands_where_it_falls_silent(jack, bench, reports):
+    (bench / "bench.score").write_text((bench / "bench.score").read_text().replace("times 40", "times 400"))
+    sender = Sender("codebox")
+    process = started(
+        "bench.score", "--follow", "timecode", "--midi", "codebox", "--to", "sim", "--osc-to", f"127.0.0.1:{reports.port}"
+    )
+    reports.until(playing)
+    for code, per_s, numbers, label in RATES:
+        told = []
+        ends = threading.Event()
+
+        def listen(told=told, ends=ends):
+            while not ends.is_set():
+                message = reports.until(lambda address, params: address == "/drawcord/state")
+                told.append((time.perf_counter(), message.params[1]))
+
+        ear = threading.Thread(target=listen)
+        ear.start()
+        begin = sender.timecode(code, per_s, numbers, label, 2.0)
+        time.sleep(1.2)
+        ends.set()
+        ear.join()
+        first = true_seconds(label, numbers, per_s, code == 2)
+        off = [place - first - (now - begin) for now, place in told if 0.5 < now - begin < 1.9]
+        # A place is told that is in force a few ticks later; half of a frame of any rate is more than 15 ms.
+        assert len(off) > 10 and min(off) > -0.02 and np.median(off) < 0.045
+        stood = [place for now, place in told if now - begin > 2.9]
+        assert len(set(stood)) == 1 and stood[0] - first == pytest.approx(2.5, abs=0.1)
+    process.send_signal(signal.SIGINT)
+    _, err = process.communicate(timeout=60)
+    sender.close()
+    assert process.returncode == 0
+    for rate, label in (("24", "00:00:03:00"), ("25", "00:00:11:03"), ("30 drop", "00:00:59:00"), ("30", "00:01:05:12")):
+        assert f"time code {label} at {rate}: " in err
+    assert err.count("time code has ended: going on for a moment") >= len(RATES)
+    assert err.count("s: standing") == len(RATES)
+
+
+def test_motor_faders_and_lights_over_jack_show_what_the_governor_lets_through(jack, bench, reports):
+    (bench / "lit.map.toml").write_text(
+        '[[bind]]\nmidi = { cc = 21 }\nfibers = "r.1-2"\npickup = true\n'
+        '[[bind]]\nmidi = { note = 36 }\nphrase = "nod"\non = "r.3"\n'
+    )
+    (bench / "bench.score").write_text((bench / "bench.score").read_text().replace("r.* nod times 40", "r.1-2 nod\n  r.4 nod after 90"))
+    sender = Sender("litbox")
+    process = started(
+        "bench.score", "--map", "lit.map.toml", "--midi", "litbox", "--to", "sim", "--osc-to",
+        f"127.0.0.1:{reports.port}", "--json",
+    )  # fmt: skip
+    reports.until(playing)
+    heard = []
+    while not (heard and heard[-1] == "B0 15 00" and "B0 15 7F" in heard):
+        heard.append(sender.heard())
+    faders = [int(message.split()[2], 16) for message in heard if message.startswith("B0 15")]
+    top = faders.index(127)
+    assert top > 3 and faders[: top + 1] == sorted(faders[: top + 1]) and faders[top:] == sorted(faders[top:], reverse=True)
+    assert {message for message in heard if not message.startswith("B0 15")} <= {"90 24 00"}
+    sender.send("90 24 7f")
+    assert sender.heard() == "90 24 7F"
+    assert sender.heard() == "90 24 00"
+    process.send_signal(signal.SIGINT)
+    out, err = process.communicate(timeout=60)
+    sender.close()
+    assert (process.returncode, err) == (0, ""), out

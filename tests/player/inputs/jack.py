@@ -20,6 +20,29 @@ for line in sys.stdin:
     if words[0] == "heard":
         print(lights.receive().hex(), flush=True)
         continue
+    if words[0] == "timecode":
+        # Code, frames a second as numerator and denominator, numbers in a second, the first label, quarter frames.
+        code, top, under, numbers, h, m, s, f, quarters = map(int, words[1:])
+        begin = time.perf_counter()
+        for quarter in range(quarters):
+            piece = quarter % 8
+            if piece == 0:
+                values = (f & 15, f >> 4, s & 15, s >> 4, m & 15, m >> 4, h & 15, h >> 4 | code << 1)
+            while time.perf_counter() < begin + quarter * under / (4 * top):
+                pass
+            port.send(mido.Message("quarter_frame", frame_type=piece, frame_value=values[piece]))
+            if piece in (3, 7):
+                f += 1
+                if f == numbers:
+                    f, s = 0, s + 1
+                    if s == 60:
+                        s, m = 0, m + 1
+                        if m == 60:
+                            m, h = 0, h + 1
+                        if code == 2 and m % 10:
+                            f = 2
+        print(begin, flush=True)
+        continue
     if words[0] == "clock":
         count, period = int(words[1]), float(words[2])
         start = time.perf_counter()
@@ -77,6 +100,17 @@ class Sender:
         self._process.stdin.write(line + "\n")
         self._process.stdin.flush()
         assert self._process.stdout.readline() == "sent\n"
+
+    def timecode(
+        self, code: int, per_s: tuple[int, int], numbers: int, label: tuple[int, int, int, int], seconds: float
+    ) -> float:
+        """Time code for so many seconds; returns once it is sent, with the monotonic time of its first quarter frame."""
+        top, under = per_s
+        self._process.stdin.write(
+            f"timecode {code} {top} {under} {numbers} {' '.join(map(str, label))} {int(4 * seconds * top / under)}\n"
+        )
+        self._process.stdin.flush()
+        return float(self._process.stdout.readline())
 
     def heard(self) -> str:
         """The next message that came to its other port, in hex; waits for it."""
