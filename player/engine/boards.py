@@ -1,6 +1,6 @@
 """All the outputs of a run as one: a verb goes to each that still answers, and one that is lost takes no other with it."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 
 from composer.faults import Faults
 from player.outputs.base import Array, Event, LinkLost, Output
@@ -91,6 +91,15 @@ class Boards:
     @property
     def _real(self) -> list[int]:
         return [number for number, output in enumerate(self.outputs) if number not in self._lost and output.must_arm]
+
+    def sensing(self, newest_s: Mapping[str, float], until_s: float) -> bool:
+        """Whether a board that senses, and still answers, has not sensed anything from that time on; newest_s: by driver."""
+        return any(
+            newest_s[driver] < until_s
+            for output in self.live
+            for driver in output.drivers
+            if output.must_arm and driver in newest_s
+        )
 
     def close(self) -> list[Event]:
         """Let go of all of them, lost ones too; what could not be finished comes back as events."""

@@ -13,7 +13,8 @@ class Row:
     exit: the player's exit code; state: the player's at the end, "" where nothing was armed, or the player is gone, "one or
     another" where chance decides
     ended: as the report has it; told, then: words of the sentence that the operator hears: what has happened, what to do
-    Where chance decides, these have several, with " / " between them. Where nothing is heard, `then` says what there is to know.
+    Where chance decides, these have several, with " / " between them. Where nothing is heard, `then` says
+    what there is to know.
     """
 
     happens: str

@@ -38,6 +38,9 @@ SLICE_S = 0.005
 """The engine looks for what the operator asks at least this often, however slow the ticks are."""
 
 STOPS_NOW = frozenset(("vent", "stop"))
+LAST_SENSE_S = 0.12
+"""After the last set boards are heard so long, until they have sensed where it has brought their fibers."""
+
 SETTLE_S = 1.3
 """Seconds that a board has to say that it has disarmed: on a disturbed line it may have to be told three times."""
 
@@ -328,7 +331,14 @@ class Engine:
 
     def _disarm(self) -> None:
         """All wants are at rest: once the last set has been due, tell every board to rest and disarm, and hear it say so."""
-        self.clock.wait_until(self._due_s + self.source.lead_s + self._dt)
+        over_s = self._due_s + self.source.lead_s + self._dt
+        self.clock.wait_until(over_s)
+        # How the last landing went is sensed a little later.
+        while self.boards.sensing(self.sensing.newest_s, over_s) and self.clock.now() < over_s + LAST_SENSE_S:
+            if self._asked.has(STOPS_NOW):
+                break
+            self.clock.wait_until(self.clock.now() + SLICE_S)
+            self.tend()
         self._hear(self.boards.rest(0.0))
         if self._settles("idle"):
             if self.boards.vented:

@@ -17,7 +17,7 @@ class Sensing:
     """One for a run; `trim` is None unless set-points are to be corrected; `last`: (F,) strain as last sensed, or 0.
     `sensed`: (F,) the same, nan where nothing has been sensed.
 
-    supply_kPa: of each driver whose board has a sensor of it
+    newest_s: when each driver's board has last sensed strain; supply_kPa: of each driver whose board has a sensor of it
     """
 
     def __init__(self, rig: Rig, abilities: Abilities, trims: bool = False):
@@ -31,6 +31,7 @@ class Sensing:
         self._least_kPa = rig.supply.min_pressure_kPa
         self._low: set[str] = set()
         self.supply_kPa: dict[str, float] = {}
+        self.newest_s: dict[str, float] = {}
         self.last = np.zeros(len(rig.fibers))
         self.sensed = np.full(len(rig.fibers), np.nan)
 
@@ -40,6 +41,7 @@ class Sensing:
             self.supply_kPa[event.driver] = event.kPa
             return self._supply(event) if watched else []
         self.last[event.fibers] = self.sensed[event.fibers] = event.strain
+        self.newest_s[event.driver] = event.time_s
         self.errors.sense(event.time_s, event.fibers, event.strain)
         zone = self.errors.around(event.time_s, SLACK_S, event.fibers) if watched else None
         if zone is None:

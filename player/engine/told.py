@@ -173,15 +173,20 @@ def _arrays(head, sets, layouts, sensed, supply, hits, happened, end) -> Told:
 
 
 def wanted_at(log: Told, at_s: Array, fibers: NDArray[np.int64]) -> Array:
-    """Shares of stroke (N, S) wanted at times (N,), a straight line between sets; nan where nothing was sent."""
+    """Shares of stroke (N, S) wanted at times (N,), a straight line between sets; nan where nothing was sent.
+
+    The last want of a run that came to rest stands for SENSED_AFTER_S.
+    """
     times = log.in_force_s
     if len(times) < 2:
         return np.full((len(at_s), len(fibers)), np.nan)
     later = np.clip(np.searchsorted(times, at_s), 1, len(times) - 1)
     span = times[later] - times[later - 1]
-    part = np.divide(at_s - times[later - 1], span, out=np.ones_like(at_s), where=span > 0.0)[:, None]
+    part = np.minimum(np.divide(at_s - times[later - 1], span, out=np.ones_like(at_s), where=span > 0.0), 1.0)[:, None]
     before, after = log.wanted[later - 1][:, fibers], log.wanted[later][:, fibers]
-    inside = (at_s >= times[0] - 1e-9) & (at_s <= times[-1] + 1e-9) & (span <= GAP_S)
+    # What a run comes to rest with stands for a while; what it was vented from does not.
+    stands_s = SENSED_AFTER_S if log.end is not None and log.end.get("ended") in ("end", "stopped") else 0.0
+    inside = (at_s >= times[0] - 1e-9) & (at_s <= times[-1] + stands_s + 1e-9) & (span <= GAP_S)
     return np.where(inside[:, None], before + part * (after - before), np.nan)
 
 

@@ -58,6 +58,30 @@ def test_every_tick_is_in_one_class_of_lateness():
     assert sum(counts.values()) == 200 and counts[0.1] == 1 and counts[0.05] == 199
 
 
+def at_the_end(ended):
+    """A run of which the last move lands at its very end; it is sensed 40 ms later, 0.1 too far."""
+    data = bytearray()
+    log = RunLog(data.extend)
+    log.tell("head", 0.0, **HEAD)
+    log.tell("hits", 0.0, hits=[[1_000_000, "2:1", [0, 1]]])
+    for tick in range(101):
+        wanted = np.full(2, round(0.5 * tick / RATE * FULL), dtype=np.uint16)
+        log.set(tick / RATE, 10.0 + (tick - 1) / RATE, 0.0, tick / RATE, wanted, wanted)
+    log.sense(1.05, 11.04, np.array([0, 1]), np.array([0.5, 0.6]))
+    log.tell("end", 1.1, ended=ended, exit=0)
+    return told(records(bytes(data))[0])
+
+
+def test_a_landing_at_the_last_instant_is_judged_by_what_is_sensed_just_after_the_end():
+    worst, other = landings(at_the_end("end"))
+    assert (worst.place, worst.fiber, worst.error) == ("2:1", 1, pytest.approx(0.1, abs=1e-4))
+    assert other.error == pytest.approx(0.0, abs=1e-4)
+
+
+def test_after_a_vent_nothing_is_wanted_any_more():
+    assert landings(at_the_end("vented")) == []
+
+
 @pytest.mark.parametrize(
     "head", [{}, {**HEAD, "fibers": []}, {**HEAD, "stroke": [0.3]}, {**HEAD, "rate_Hz": 0}, {**HEAD, "stroke": [0.3, "x"]}]
 )
