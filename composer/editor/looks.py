@@ -31,6 +31,9 @@ from composer.score.bounds import most
 if TYPE_CHECKING:
     from composer.editor.pane import TextPane
 
+LEAST_LETTERS = 12
+"""Letters that must find room behind a line for what is wrong with it to be written there."""
+
 FURTHEST = 3000
 """Lines that are looked back over for the block that a line stands in."""
 
@@ -200,14 +203,14 @@ class Looks:
             height = pane.blockBoundingRect(block).height()
             marks = self._marks.get(block.blockNumber() + 1)
             if marks and top + height >= event.rect().top():
-                x = offset.x() + block.layout().boundingRect().width() + metrics.horizontalAdvance("   ")
+                x = offset.x() + block.layout().lineAt(0).naturalTextWidth() + metrics.horizontalAdvance("   ")
                 room = pane.viewport().width() - x - 6
-                if room < 160:
-                    x, room = max(offset.x(), pane.viewport().width() - 340.0), 334.0
-                    box = QRectF(x - 4, top, room + 8, height)
-                    painter.fillRect(box, QColor(*self._theme.field))
+                # Never over the text: where there is no room, the foot of the window and the pointer say it.
+                if room < metrics.horizontalAdvance("m") * LEAST_LETTERS:
+                    x = room = 0.0
                 says = metrics.elidedText("\u25b2 " + marks[0].says, Qt.TextElideMode.ElideRight, room)
-                painter.drawText(QRectF(x, top, room, height), Qt.AlignmentFlag.AlignVCenter, says)
+                if room:
+                    painter.drawText(QRectF(x, top, room, height), Qt.AlignmentFlag.AlignVCenter, says)
             top += height
             block = block.next()
         painter.end()

@@ -2,14 +2,16 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import Qt
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
 Choice = tuple[str, Callable[[], None]]
 
 
 class Notices(QWidget):
-    """Notices by name: another of the same name takes the place of the one before."""
+    """Notices by name: another of the same name takes the place of the one before. answered: a button was pressed."""
+
+    answered = Signal()
 
     def __init__(self, parent: QWidget | None = None):
         super().__init__(parent)
@@ -30,6 +32,7 @@ class Notices(QWidget):
         self.drop(name)
         notice = _Notice(says, [*choices, ("Close", lambda: None)] if not choices else list(choices), kind)
         notice.on_done = lambda: self.drop(name)
+        notice.on_answered = self.answered.emit
         self._shown[name] = notice
         self._rows.addWidget(notice)
         self.show()
@@ -53,6 +56,7 @@ class _Notice(QFrame):
         super().__init__()
         self.says = says
         self.on_done: Callable[[], None] = lambda: None
+        self.on_answered: Callable[[], None] = lambda: None
         self.setObjectName(kind)
         self.setAccessibleName("notice")
         row = QHBoxLayout(self)
@@ -77,3 +81,4 @@ class _Notice(QFrame):
     def _chosen(self, does: Callable[[], None]) -> None:
         self.on_done()
         does()
+        self.on_answered()

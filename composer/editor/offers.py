@@ -21,6 +21,7 @@ class Offers(QListWidget):
         super().__init__(pane)
         self._pane = pane
         self._offers: tuple[Offer, ...] = ()
+        self._chosen = True
         self.setObjectName("offers")
         self.setAccessibleName("what may stand here")
         self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
@@ -31,9 +32,13 @@ class Offers(QListWidget):
         self.hide()
         pane.installEventFilter(self)
 
-    def offer(self, offers: Sequence[Offer]) -> None:
-        """Show offers for the place of the caret; none hides the list."""
+    def offer(self, offers: Sequence[Offer], asked_for: bool = True) -> None:
+        """Show offers for the place of the caret; none hides the list.
+
+        asked_for: Return takes the first at once; where they came by themselves it does so only once one was chosen.
+        """
         self._offers = tuple(offers)
+        self._chosen = asked_for
         self.clear()
         if not offers:
             self.hide()
@@ -86,12 +91,13 @@ class Offers(QListWidget):
         step = {Qt.Key.Key_Up: -1, Qt.Key.Key_Down: 1, Qt.Key.Key_PageUp: -MOST_ROWS, Qt.Key.Key_PageDown: MOST_ROWS}.get(key)
         if step is not None:
             self.setCurrentRow(max(0, min(self.currentRow() + step, self.count() - 1)))
-        elif key in (Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Tab):
+            self._chosen = True
+        elif key == Qt.Key.Key_Tab or (key in (Qt.Key.Key_Return, Qt.Key.Key_Enter) and self._chosen):
             self.take()
         elif key == Qt.Key.Key_Escape:
             self.hide()
         else:
-            if key in (Qt.Key.Key_Left, Qt.Key.Key_Right, Qt.Key.Key_Home, Qt.Key.Key_End):
+            if key in (Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Left, Qt.Key.Key_Right, Qt.Key.Key_Home, Qt.Key.Key_End):
                 self.hide()
             return False
         return True

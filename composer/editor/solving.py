@@ -127,9 +127,7 @@ class Solver:
         found = mending.mends(
             desk.made_text, made, same[0], desk.check, self._remake, self.retiming if self._of is made else None
         )
-        choices = tuple(
-            Choice(each.way, each.say, each.edit, Ghost(each.ghost), each.snags_left) for each in found.choices
-        )
+        choices = tuple(Choice(each.way, each.say, each.edit, Ghost(each.ghost), each.snags_left) for each in found.choices)
         return Mended(choices, dict(found.not_these))
 
     def taken(self, from_s: float, to_s: float) -> Taking | Refusal:

@@ -54,6 +54,7 @@ class ComposeWindow(Deeds, QMainWindow):
         self.strand = StrandView()
         self.snags, self.retimed = SnagsPanel(), RetimedPanel()
         self.foot = Foot()
+        self.notices.answered.connect(self.pane.setFocus)
         self.session = Session(self.pane, self.notices, self.later, self)
         self.crew = crew if crew is not None else Crew(lambda: self.pane.text, self)
         self.crew.set_text(lambda: self.pane.text)
@@ -247,9 +248,10 @@ class ComposeWindow(Deeds, QMainWindow):
         fitting = []
         for one in offers if isinstance(offers, tuple) else ():
             there = before[one.start - 1 :]
-            if there and one.text.lower().startswith(there.lower()) and one.text != there:
+            # Numbers are typed, not chosen.
+            if there[:1].isalpha() and one.text.lower().startswith(there.lower()) and one.text != there:
                 fitting.append(one)
-        self.offers.offer(fitting[:40] if len(fitting) and before[-1:].strip() else [])
+        self.offers.offer(fitting[:40] if before[-1:].strip() else [], asked_for=False)
 
     def _take_offer(self, offer: Offer) -> None:
         line, column = self.pane.place
@@ -435,9 +437,11 @@ class ComposeWindow(Deeds, QMainWindow):
     def _remember(self) -> None:
         """As it was when it was last closed."""
         settings = self.settings
-        place = settings.value("place")
-        if isinstance(place, QByteArray):
-            self.restoreGeometry(place)
+        size = settings.value("size")
+        if isinstance(size, QSize) and size.isValid():
+            self.resize(size.expandedTo(QSize(640, 400)))
+        if settings.value("largest") in (True, "true"):
+            self.setWindowState(Qt.WindowState.WindowMaximized)
         for name, split in self.splits.items():
             state = settings.value(f"split/{name}")
             if isinstance(state, QByteArray):
@@ -449,7 +453,8 @@ class ComposeWindow(Deeds, QMainWindow):
         self.set_theme(name if name in THEMES else "dark")
 
     def _keep_settings(self) -> None:
-        self.settings.setValue("place", self.saveGeometry())
+        self.settings.setValue("size", self.normalGeometry().size() if self.isMaximized() else self.size())
+        self.settings.setValue("largest", self.isMaximized())
         for name, split in self.splits.items():
             self.settings.setValue(f"split/{name}", split.saveState())
         self.settings.setValue("letters", self._own_scale)
