@@ -348,8 +348,8 @@ def test_a_score_follows_time_code_of_every_rate_over_jack_coasts_and_stands_whe
         ear.join()
         first = true_seconds(label, numbers, per_s, code == 2)
         off = [place - first - (now - begin) for now, place in told if 0.5 < now - begin < 1.9]
-        # A place is told that is in force a few ticks later; half of a frame of any rate is more than 15 ms.
-        assert len(off) > 10 and min(off) > -0.02 and np.median(off) < 0.045
+        # A place is told that is in force a few ticks later, and heard when this process is let.
+        assert len(off) > 10 and -0.01 < float(np.median(off)) < 0.05
         stood = [place for now, place in told if now - begin > 2.9]
         assert len(set(stood)) == 1 and stood[0] - first == pytest.approx(2.5, abs=0.1)
     process.send_signal(signal.SIGINT)
