@@ -23,7 +23,7 @@ Array = NDArray[np.float64]
 
 MOST_HITS = 1500
 """Hits that are shown at once; where there are more, marks would cover the threads."""
-HIT_FROM = 6
+HIT_FROM = 9
 """Pixels, at scale 1, that a thread has at least where hits are shown."""
 MOST_MARKS = 4000
 """Marks of one kind drawn in one frame at most; beyond that, those that share pixels are drawn once."""
@@ -67,6 +67,8 @@ def over(painter: QPainter, view: View, shown: Shown) -> None:
     cloth.bar_lines_over(painter, plan, rows, scene)
     cloth.cues(painter, plan, rows, scene)
     painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
+    _snag_strip(painter, view, shown)
+    painter.setClipRect(QRectF(plan.left, plan.top, plan.width, view.shown))
     _snags(painter, view, shown)
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     _selected(painter, view, shown)
@@ -75,10 +77,26 @@ def over(painter: QPainter, view: View, shown: Shown) -> None:
     _lit(painter, view, shown)
     _hits(painter, view, shown)
     painter.restore()
+    if shown.ghost is not None:
+        _moved_strip(painter, view, shown)
+
+
+def _snag_strip(painter: QPainter, view: View, shown: Shown) -> None:
+    """A strip above the cloth that shows when there is any snag of a fiber."""
+    if not len(shown.marks[0]):
+        return
+    look = view.look
+    fiber, begin, end = shown.marks
+    seen = (fiber >= 0) & (end >= view.from_s) & (begin <= view.to_s)
+    left, right = _spans(view, begin[seen], end[seen], look.px(cloth.LEAST_MARK))
+    painter.setPen(Qt.PenStyle.NoPen)
+    painter.setBrush(colour(look.theme.limit))
+    top, high = view.plan.strip_top + look.px(2), look.px(5)
+    painter.drawRects([QRectF(a, top, b - a, high) for a, b in _joined(left, right)])
 
 
 def _snags(painter: QPainter, view: View, shown: Shown) -> None:
-    """A hatch over each snag of a fiber, and a strip above the cloth that shows when there is any."""
+    """A hatch over each snag of a fiber."""
     snags = shown.weave.snags
     if not snags:
         return
@@ -87,10 +105,6 @@ def _snags(painter: QPainter, view: View, shown: Shown) -> None:
     fiber, begin, end = shown.marks
     seen = (fiber >= 0) & (end >= view.from_s) & (begin <= view.to_s)
     left, right = _spans(view, begin, end, least)
-    strip = QRectF(0, plan.strip_top + look.px(2), 0, look.px(5))
-    painter.setPen(Qt.PenStyle.NoPen)
-    painter.setBrush(colour(look.theme.limit))
-    painter.drawRects([QRectF(a, strip.top(), b - a, strip.height()) for a, b in _joined(left[seen], right[seen])])
     fibers = view.fibers_shown()
     seen &= (fiber >= fibers.start) & (fiber < fibers.stop)
     which = np.flatnonzero(seen)
@@ -103,6 +117,7 @@ def _snags(painter: QPainter, view: View, shown: Shown) -> None:
     if len(boxes) > MOST_MARKS:
         _, kept = np.unique(np.round(boxes[:, :3] / least), axis=0, return_index=True)
         boxes = boxes[kept[:MOST_MARKS]]
+    painter.setPen(Qt.PenStyle.NoPen)
     painter.setBrush(look.hatch())
     painter.drawRects([QRectF(*box) for box in boxes.tolist()])
     if 0 <= shown.snag < len(snags) and snags[shown.snag].fiber is not None:
@@ -237,17 +252,27 @@ def rhomb(
     painter.drawPolygon(QPolygonF(corners))
 
 
-def _moved(painter: QPainter, view: View, shown: Shown) -> None:
-    """Arrows from where hits are to where they would be; a dotted strip above where threads are too thin for arrows."""
-    look, ghost = view.look, shown.ghost
-    assert ghost is not None
-    fiber, here, there = moved_hits(shown.weave.tracks, ghost)
+def _moved_strip(painter: QPainter, view: View, shown: Shown) -> None:
+    """A dotted strip above the cloth where hits would move: seen however thin threads are."""
+    look = view.look
+    assert shown.ghost is not None
+    _, here, there = moved_hits(shown.weave.tracks, shown.ghost)
     first, last = np.minimum(here, there), np.maximum(here, there)
     seen = (last >= view.from_s) & (first <= view.to_s)
-    strip = view.plan.strip_top + look.px(8)
+    top = view.plan.strip_top + look.px(8)
     painter.setPen(pen(look.theme.ghost, look.px(2), dash=(1.5, 1.5)))
-    painter.drawLines([QLineF(a, strip, b, strip) for a, b in _joined(*_spans(view, first[seen], last[seen], look.px(2)))])
+    left, right = view.plan.left, view.plan.left + view.plan.width
+    spans = _joined(*_spans(view, first[seen], last[seen], look.px(2)))
+    painter.drawLines([QLineF(max(a, left), top, min(b, right), top) for a, b in spans])
+
+
+def _moved(painter: QPainter, view: View, shown: Shown) -> None:
+    """Arrows from where hits are to where they would be, where threads have room for them."""
+    look = view.look
+    assert shown.ghost is not None
+    fiber, here, there = moved_hits(shown.weave.tracks, shown.ghost)
     fibers = view.fibers_shown()
+    seen = (np.maximum(here, there) >= view.from_s) & (np.minimum(here, there) <= view.to_s)
     which = np.flatnonzero(seen & (fiber >= fibers.start) & (fiber < fibers.stop))
     tall = view.rows.bottom[fibers.start] - view.rows.top[fibers.start] if len(fibers) else 0
     if tall < max(SPLIT_FROM, look.px(SPLIT_FROM)) or len(which) > MOST_HITS:

@@ -87,10 +87,19 @@ def needs_and_has(snag: Snag, abilities: Abilities, fiber: int) -> str:
         "air": (1.0, "L of air", "there are"),
         "pin": (1.0, "s before the pin", "there are"),
     }[snag.kind]
-    needs, there = two(abs(snag.needs) * scale, abs(snag.has) * scale)
+    needs, there = _rounded(abs(snag.needs) * scale, abs(snag.has) * scale)
     if snag.kind == "stroke" and snag.needs < 0.0:
         return f"goes {needs} {unit} below rest"
     return f"needs {needs} {said}, {has} {there}"
+
+
+def _rounded(needs: float, has: float) -> tuple[str, str]:
+    """Two numbers in as few digits as people want of them, and as many as it takes to tell them apart."""
+    for digits in (0, 1):
+        said = (f"{needs:.{digits}f}", f"{has:.{digits}f}")
+        if has >= 10.0 ** (2 - digits) and said[0] != said[1]:
+            return said
+    return two(needs, has)
 
 
 def worded(snags: Sequence[Snag], abilities: Abilities, fiber: int) -> list[tuple[float, float, str]]:

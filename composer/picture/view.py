@@ -96,7 +96,7 @@ class View:
 
 def left_of(look: Look, width: int) -> int:
     """Where the axis of time begins: what lies below a cloth of the same width has its seconds in the same columns."""
-    return look.px(150 if width >= 900 * look.scale else 104)
+    return look.px(168 if width >= 900 * look.scale else 108)
 
 
 def laid_out(look: Look, width: int, height: int, rows_in: Callable[[int, int], Rows], lanes: int, zoom: float, place: float,

@@ -448,7 +448,7 @@ def test_many_threads_are_drawn_whole_after_a_while(qtbot, make_weave):
     view.grab()
     qtbot.waitUntil(lambda: view.complete, timeout=30_000)
     here = view._current()
-    x = round(here.x_of(6.0))
+    x = round(here.x_of(6.6))
     column = pixels(view)[here.plan.top + 2 : here.plan.top + here.shown - 2, x]
     full = (np.abs(column - DARK.contract[255].astype(int)).max(axis=1) <= 1).mean()
     assert full > 0.9

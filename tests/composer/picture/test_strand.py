@@ -40,16 +40,29 @@ def test_a_snag_is_told_in_the_fibers_own_units(piece):
     found = check(piece.tracks, piece.rig, piece.abilities).snags
     rate = next(snag for snag in found if snag.kind == "rate" and snag.fiber == 1)
     # 400 mm long, it fills at 0.6 a second: 240 mm/s.
-    assert needs_and_has(rate, piece.abilities, 1).endswith("mm/s, can do 240.00")
+    assert needs_and_has(rate, piece.abilities, 1).endswith("mm/s, can do 240")
     ((from_s, to_s, words),) = [one for one in worded(found, piece.abilities, 1) if "mm/s" in one[2]]
     assert (from_s, to_s) == (rate.from_s, rate.to_s)
     assert words.startswith("needs ")
 
 
 @pytest.mark.parametrize(
+    ("needs", "has", "words"),
+    [
+        (1.5, 0.6, "needs 600 mm/s, can do 240"),
+        (0.6004, 0.6, "needs 240.2 mm/s, can do 240.0"),
+        (0.06, 0.05, "needs 24.0 mm/s, can do 20.0"),
+        (0.0060, 0.005, "needs 2.40 mm/s, can do 2.00"),
+    ],
+)
+def test_numbers_have_as_many_digits_as_it_takes_to_tell_them_apart(piece, needs, has, words):
+    assert needs_and_has(Snag("rate", 0, 0.0, 1.0, needs, has, "1/s", 1, 1), piece.abilities, 0) == words
+
+
+@pytest.mark.parametrize(
     ("kind", "needs", "has", "words"),
     [
-        ("stroke", 0.35, 0.3, "needs 140.00 mm, can do 120.00"),
+        ("stroke", 0.35, 0.3, "needs 140 mm, can do 120"),
         ("stroke", -0.05, 0.0, "goes 20.00 mm below rest"),
         ("hold", 5.0, 3.0, "needs 5.00 s held, it may hold 3.00"),
         ("duty", 5.0, 3.0, "needs 5.00 s of its coil, it bears 3.00"),
