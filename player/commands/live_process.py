@@ -6,6 +6,7 @@ from typing import Any
 
 from composer.faults import Faults, fault
 from player.commands import play_process
+from player.commands.earlier_logs import beside_earlier
 from player.commands.live_setup import Call, set_up
 from player.commands.logging_run import open_log
 from player.commands.play_process import failed, not_armed
@@ -70,6 +71,7 @@ def body(door: Door, memory: Writer, call: Call, answers: bool) -> tuple[str, di
         engine.close()
         told = report(engine, played, parts.outputs, permitted)
         told |= {"inputs": session.inputs_seen, "refused": session.inbox.refused}
+        told |= beside_earlier(call.log, played, told)
         lines = sentences(told)
         if session.takes is not None:
             session.takes.close()

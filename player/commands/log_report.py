@@ -6,6 +6,8 @@ from typing import Any
 import numpy as np
 
 from player.commands.counted import small
+from player.commands.earlier_logs import drift
+from player.commands.earlier_logs import sentences as drift_sentences
 from player.commands.run_report import HOW
 from player.engine.told import Told, apart, landings, lateness
 
@@ -52,9 +54,16 @@ def as_object(log: Told, path: str, left: int) -> dict[str, Any]:
             for name, (signed, size, most) in zip(log.fibers, apart(log), strict=True)
         ],
         "supply": _supply(log),
+        "drift": _drift(log, path),
         "faults": faults,
         "happened": [_happened(record) for record in log.happened if record.kind in ("state", "command", "slip", "alarm")],
     }
+
+
+def _drift(log: Told, path: str) -> dict[str, Any]:
+    """How its fibers stand beside those of earlier runs of the rig that lie in the log's folder."""
+    stood = log.end.get("stood") if log.end is not None else None
+    return drift(path, str(log.head.get("fingerprint")), str(log.head.get("date")), stood, list(log.fibers))
 
 
 def _number(value: float) -> float | None:
@@ -116,6 +125,7 @@ def sentences(whole: dict[str, Any]) -> Iterator[str]:
     yield from _hits(whole)
     for one in whole["supply"]:
         yield f"Supply at {one['driver']}: {one['lowest_kPa']:.0f} kPa at its lowest."
+    yield from drift_sentences(whole["drift"])
     if not whole["faults"]:
         yield "No faults."
     for one in whole["faults"]:

@@ -4,6 +4,7 @@ from collections.abc import Sequence
 from contextlib import ExitStack
 from typing import Any
 
+from player.commands.earlier_logs import beside_earlier
 from player.commands.logging_run import open_log
 from player.commands.played import Played
 from player.commands.priority import at_its_best
@@ -77,6 +78,7 @@ def body(
         conduct.after(engine.status())
         engine.close()
         told = report(engine, played, outputs, permitted)
+        told |= beside_earlier(log, played, told)
         if run_log is not None:
             run_log.tell("end", clock.now(), **told)
     return "ended", {"exit": told["exit"], "report": told, "lines": sentences(told)}

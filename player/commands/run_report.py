@@ -3,10 +3,14 @@
 from collections.abc import Sequence
 from typing import Any
 
+import numpy as np
+
 from player.commands.counted import sentence, small
+from player.commands.earlier_logs import sentences as drift_sentences
 from player.commands.played import Played
 from player.commands.priority import Permitted
 from player.engine.loop import Engine
+from player.engine.standing import WHERE
 from player.outputs.base import Output
 
 
@@ -51,6 +55,10 @@ def report(engine: Engine, played: Played, outputs: Sequence[Output], permitted:
         "more_faults": ending.more_faults,
         "outputs": [{"target": one.target, "drivers": list(one.drivers), **one.counters()} for one in outputs],
         "largest_error": _largest_error(engine, played),
+        "stood": {
+            where.replace(" ", "_"): [round(float(one), 5) if np.isfinite(one) else None for one in column]
+            for where, column in zip(WHERE, engine.sensing.standing.means.T, strict=True)
+        },
     }
 
 
@@ -95,6 +103,7 @@ def sentences(told: dict[str, Any]) -> list[str]:
             " of its stroke."
         )
     lines += map(sentence, told["outputs"])
+    lines += drift_sentences(told.get("drift", {"fibers": ()}))
     lines += [f"Fault at {fault['place']}: {fault['say']}." for fault in told["faults"]]
     if told["more_faults"]:
         lines.append(f"... and {told['more_faults']} more of them.")

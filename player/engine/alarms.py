@@ -52,6 +52,12 @@ ALARMS = {
         "is further and further from where it should be",
         "its fit is old, or its sensor drifts: fit the type again, or trim it",
     ),
+    "runs": Alarm(
+        "a fiber stands further and further off, run after run",
+        WARN,
+        "stands further off from run to run",
+        "its fit is old, or its sensor drifts: fit the type again, or look at the sensor's plug",
+    ),
     "jump": Alarm(
         "a sensor jumps faster than any fiber moves", WARN, "is said to have jumped", "look at the sensor's plug and cable"
     ),

@@ -7,6 +7,7 @@ from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
 from player.engine.alarms import ALARMS, SLACK_S, Raised, Watch
 from player.engine.errors import Errors
+from player.engine.standing import Standing
 from player.engine.trim import Trim
 from player.outputs.base import Event
 
@@ -24,6 +25,7 @@ class Sensing:
         self.errors = Errors(len(rig.fibers))
         fastest = np.maximum(abilities.fill.max(axis=1), abilities.exhaust.max(axis=1))[abilities.which] / abilities.stroke
         self.watch = Watch(fastest)
+        self.standing = Standing(len(rig.fibers))
         self.trim = Trim(tuple(fiber.mounting.valve.drive for fiber in rig.fibers)) if trims else None
         self._names = [fiber.name for fiber in rig.fibers]
         self._drivers = [fiber.driver for fiber in rig.fibers]
@@ -49,6 +51,7 @@ class Sensing:
         stroke = self._stroke[event.fibers]
         share, low, high = event.strain / stroke, zone[0] / stroke, zone[1] / stroke
         found = self.watch.look(event.time_s, event.fibers, share, low, high)
+        self.standing.sense(event.fibers, share, low, high, self.watch.alarmed)
         if self.trim is not None:
             self.trim.sense(event.time_s, event.fibers, share, low, high, self.watch.alarmed)
         where = {fiber: number for number, fiber in enumerate(event.fibers.tolist())}
