@@ -19,6 +19,9 @@ QUIET_S = 0.1
 BACKWARDS = 4
 """Pieces in falling order after which the code runs backwards."""
 
+VARISPEED = 1.25
+"""How much faster or slower than its frame rate says time code is taken to run."""
+
 MOST_TURNS = 256
 MIDNIGHT = Stamp(0, 0, 0, 0)
 
@@ -92,8 +95,13 @@ class CodeFollower:
 
     def _line(self) -> tuple[float, float, float]:
         assert self.rate is not None and self._quarter is not None
+        usual = 1.0 / (4.0 * float(self.rate.per_s))
         line = self._steady.line() if len(self._steady) >= PIECES else None
-        return line or (self._quarter, self._last_s or 0.0, 1.0 / (4.0 * float(self.rate.per_s)))
+        if line is None:
+            return self._quarter, self._last_s or 0.0, usual
+        quarter, at_s, slope = line
+        # Pieces that a busy host hands over in a bunch are no tempo: where the code is follows from them, how fast it goes not.
+        return quarter, at_s, min(max(slope, usual / VARISPEED), usual * VARISPEED)
 
     def _place_at(self, moment_s: float) -> float:
         beat = self.beat(moment_s)

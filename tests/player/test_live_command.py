@@ -367,7 +367,8 @@ def test_motor_faders_and_lights_over_jack_show_what_the_governor_lets_through(j
         '[[bind]]\nmidi = { cc = 21 }\nfibers = "r.1-2"\npickup = true\n'
         '[[bind]]\nmidi = { note = 36 }\nphrase = "nod"\non = "r.3"\n'
     )
-    (bench / "bench.score").write_text((bench / "bench.score").read_text().replace("r.* nod times 40", "r.1-2 nod\n  r.4 nod after 90"))
+    score = (bench / "bench.score").read_text()
+    (bench / "bench.score").write_text(score.replace("r.* nod times 40", "r.1-2 nod\n  r.4 nod after 90"))
     sender = Sender("litbox")
     process = started(
         "bench.score", "--map", "lit.map.toml", "--midi", "litbox", "--to", "sim", "--osc-to",

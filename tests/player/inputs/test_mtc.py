@@ -128,3 +128,22 @@ def test_whatever_comes_the_place_never_runs_backwards_by_its_rate(heard):
         follower.tick(now)
         beat = follower.beat(now)
         assert beat is None or beat.rate >= 0.0
+
+
+@pytest.mark.parametrize("code", range(4))
+def test_pieces_that_come_in_a_bunch_do_not_send_the_score_ahead_while_it_coasts(code):
+    rate = RATES[code]
+    first, follower = frames_of(Stamp(0, 0, 7, 0), rate), CodeFollower()
+    at_s = run(follower, code, first, 40, 100.0)
+    # The host stands still for 120 ms; what was sent meanwhile is heard in a moment, and then the source falls silent.
+    quarter_s = 1 / (4 * float(rate.per_s))
+    bunch = 8 * (int(0.12 / quarter_s) // 8)
+    for quarter in range(bunch):
+        label = stamp_of(first + 40 + quarter // 8 * 2, rate)
+        when_s = at_s + bunch * quarter_s + 0.001 * quarter
+        follower.hear(Timing("seq", when_s, "quarter_frame", piece(quarter % 8, label, code)))
+    place = (first + 40) / float(rate.per_s) + bunch * quarter_s
+    follower.tick(when_s + 0.2)
+    follower.tick(when_s + 1.0)
+    assert follower.state == "holding"
+    assert follower.beat(when_s + 1.0).place == pytest.approx(place + COAST_S, abs=0.15)
