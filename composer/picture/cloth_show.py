@@ -13,7 +13,7 @@ from composer.picture.axes import say_seconds
 from composer.picture.cloth_place import ClothPlace
 from composer.picture.hits import hits_of
 from composer.picture.image import extends
-from composer.picture.look import CENTRE, colour, painting
+from composer.picture.look import CENTRE, colour, focus_frame, painting
 from composer.picture.margins import around
 from composer.picture.over import Shown
 from composer.picture.palette import DARK, Theme
@@ -195,6 +195,8 @@ class ClothShow(ClothPlace):
         painter.drawImage(0, 0, self._still)
         over.head(painter, view, self._head_s)
         self._paint_moving(painter, view)
+        if self.hasFocus():
+            focus_frame(painter, view.look, self.width() * scale, self.height() * scale)
 
     def _paint_moving(self, painter: QPainter, view: View) -> None:
         """What else moves over the picture, for whoever adds hands to it."""

@@ -46,31 +46,26 @@ class ClothView(ClothHand):
         if self._weave is None or self._shown is None:
             return False
         shown, hits = self._shown, self._shown.hits
-        marks = [(snag.from_s, 0, index) for index, snag in enumerate(self._weave.snags)]
-        if shown.fiber is not None:
-            mine = np.flatnonzero(hits.fiber == shown.fiber)
-            marks += [(float(hits.at_s[index]), 1, int(index)) for index in mine]
-        marks.sort()
-        here = None
-        if shown.snag >= 0:
-            here = (self._weave.snags[shown.snag].from_s, 0, shown.snag)
-        elif shown.hit >= 0:
-            here = (float(hits.at_s[shown.hit]), 1, shown.hit)
-        if here is None:
-            later = marks if forward else []
-        else:
-            later = [mark for mark in marks if (mark > here if forward else mark < here)]
-        if not later:
+        mine = np.flatnonzero(hits.fiber == (-1 if shown.fiber is None else shown.fiber))
+        begins = shown.marks[1]
+        at = np.concatenate([begins, hits.at_s[mine]])
+        which = np.concatenate([np.arange(len(begins)), mine])
+        is_hit = np.arange(len(at)) >= len(begins)
+        order = np.lexsort((which, is_hit, at))
+        here = np.flatnonzero(np.where(is_hit, which == shown.hit, which == shown.snag)[order])
+        place = (0 if forward else -1) if not len(here) else int(here[0]) + (1 if forward else -1)
+        if not 0 <= place < len(order):
             self._change(snag=-1, hit=-1)
             return False
-        at, kind, index = later[0] if forward else later[-1]
-        if kind == 0:
+        mark = order[place]
+        index, at_s = int(which[mark]), float(at[mark])
+        if not is_hit[mark]:
             self.choose_snag(index)
-            self._tell(f"snag {index + 1} of {len(self._weave.snags)} at {self.say_time(at)}")
+            self._tell(f"snag {index + 1} of {len(self._weave.snags)} at {self.say_time(at_s)}")
         else:
             self._change(hit=index, snag=-1)
-            self.reveal(Stretch(int(hits.fiber[index]), at, at))
-            self._tell(f"hit of {self._weave.names[int(hits.fiber[index])]} at {self.say_time(at)}")
+            self.reveal(Stretch(int(hits.fiber[index]), at_s, at_s))
+            self._tell(f"hit of {self._weave.names[int(hits.fiber[index])]} at {self.say_time(at_s)}")
         return True
 
     def keyPressEvent(self, event: QKeyEvent) -> None:

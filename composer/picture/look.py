@@ -95,3 +95,12 @@ class Look:
                 painter.drawLine(QPointF(begin - size, 2.0 * size), QPointF(begin + 2.0 * size, -size))
         painter.end()
         return QBrush(tile)
+
+
+def focus_frame(painter: QPainter, look: Look, width: float, height: float) -> None:
+    """A frame just inside a widget of that size that the keys go to."""
+    thick = look.px(2)
+    painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
+    painter.setBrush(Qt.BrushStyle.NoBrush)
+    painter.setPen(pen(look.theme.chosen, thick))
+    painter.drawRect(QRectF(thick / 2, thick / 2, width - thick, height - thick))

@@ -12,7 +12,7 @@ from PySide6.QtWidgets import QWidget
 from composer.picture import strand_paint
 from composer.picture.axes import say_seconds
 from composer.picture.cloth_place import SAME_S
-from composer.picture.look import Look, colour, painting
+from composer.picture.look import Look, colour, focus_frame, painting
 from composer.picture.palette import DARK, Theme
 from composer.picture.sampling import Sampler, sampler_of
 from composer.picture.strand import Knots, in_words, knots_of, unit_of
@@ -212,6 +212,9 @@ class StrandShow(QWidget):
             painter.scale(1 / self.devicePixelRatioF(), 1 / self.devicePixelRatioF())
             held = self._held
             strand_paint.paint(painter, face, self._strand(), self._head_s, self._chosen)
+            if self.hasFocus():
+                scale = self.devicePixelRatioF()
+                focus_frame(painter, face.look, self.width() * scale, self.height() * scale)
             if held is not None:
                 words = self._in_words(held)
                 strand_paint.dragged(

@@ -452,3 +452,15 @@ def test_many_threads_are_drawn_whole_after_a_while(qtbot, make_weave):
     column = pixels(view)[here.plan.top + 2 : here.plan.top + here.shown - 2, x]
     full = (np.abs(column - DARK.contract[255].astype(int)).max(axis=1) <= 1).mean()
     assert full > 0.9
+
+
+def test_the_part_that_keys_go_to_has_a_frame(qtbot, make_weave):
+    view = ClothView()
+    qtbot.addWidget(view)
+    view.resize(500, 400)
+    view.set_weave(make_weave())
+    view.show()
+    view.activateWindow()
+    view.setFocus()
+    qtbot.waitUntil(view.hasFocus, timeout=10_000)
+    assert (pixels(view)[1] == np.array(DARK.chosen)).all(axis=1).all()
