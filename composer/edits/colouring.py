@@ -126,18 +126,33 @@ def colour_line(line: str, block: str) -> tuple[Coloured, ...]:
     found: list[Coloured] = []
     if body.strip():
         shown = body.replace("\ufeff", " ")
-        if block:
-            partly = parse_partly(block, shown)
-            for number, token in enumerate(partly.tokens):
-                found += _token(token, class_of(token, block, number))
-            stop = partly.stop
-        else:
-            stop = 0
+        tokens, stop = tokens_of(block, shown) if block else ((), 0)
+        for number, token in enumerate(tokens):
+            found += _token(token, class_of(token, block, number))
         found += _rest(shown, stop, bool(block))
     comment = line.find("#", len(body))
     if comment >= 0:
         found.append((comment, len(line.rstrip("\r")), "comment"))
     return tuple(found)
+
+
+def tokens_of(block: str, body: str) -> tuple[tuple[Token, ...], int]:
+    """The tokens of a line as far as it makes sense, and where it stops doing so."""
+    tree = parse_line(block, body)
+    if isinstance(tree, Misfit):
+        partly = parse_partly(block, body)
+        return partly.tokens, partly.stop
+    # What the reader has parsed is there already; of its marks the tree has none.
+    tokens = sorted(tree.scan_values(lambda value: isinstance(value, Token)), key=lambda token: token.start_pos)
+    marks, at = [], 0
+    for token in (*tokens, None):
+        end = len(body) if token is None else token.start_pos
+        for mark in ",=":
+            place = body.find(mark, at, end)
+            if place >= 0:
+                marks.append(Token("_COMMA" if mark == "," else "_EQUALS", mark, start_pos=place))
+        at = end if token is None else end + len(token)
+    return tuple(sorted((*tokens, *marks), key=lambda token: token.start_pos)), len(body)
 
 
 def class_of(token: Token, block: str, number: int) -> str:

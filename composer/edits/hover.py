@@ -7,7 +7,7 @@ import numpy as np
 from lark import Token
 
 from composer.edits.abilities import limits_of
-from composer.edits.colouring import blocks_until
+from composer.edits.colouring import blocks_until, tokens_of
 from composer.edits.language import UNITS, word_at
 from composer.edits.made import Made
 from composer.faults import Faults
@@ -17,7 +17,7 @@ from composer.score.bounds import most
 from composer.score.expand_lines import TARGET_UNITS as IN_TRACKS
 from composer.score.expand_lines import phrase_length
 from composer.score.expand_ways import in_strain
-from composer.score.grammar import body_of, parse_partly
+from composer.score.grammar import body_of
 from composer.score.model import Duration, Entry, Phrase, Place, Section
 from composer.score.names import groups_of
 from composer.score.numbers import Unreadable, written
@@ -67,7 +67,7 @@ def explain(text: str, line: int, column: int, made: Made | None = None) -> Hove
     body, block = body_of(row), blocks_until(lines, line)
     if not body.strip() or not block:
         return None
-    tokens = parse_partly(block, body).tokens
+    tokens, _ = tokens_of(block, body)
     for number, token in enumerate(tokens):
         if token.start_pos < column <= token.start_pos + len(token) + 1:
             after = tokens[number + 1] if number + 1 < len(tokens) else None

@@ -149,7 +149,9 @@ def _apart(aim: Tracks, got: Tracks, made: Made) -> Array:
 
 def _instants(tracks: Tracks, fiber: int) -> Array:
     low, high = int(tracks.first[fiber]), int(tracks.first[fiber + 1])
-    moves = low + np.flatnonzero(tracks.manner[low : high - 1] != HOLD)
+    # What quivers in place is a move of a constant curve, and may be cut anywhere.
+    goes = (tracks.manner[low : high - 1] != HOLD) & np.any(tracks.curve[low : high - 1, 1:] != 0.0, axis=1)
+    moves = low + np.flatnonzero(goes)
     return np.unique(np.concatenate([tracks.time_s[moves], tracks.time_s[moves + 1]]))
 
 

@@ -198,7 +198,7 @@ def _segments(tracks: Tracks, low: int, last: int) -> list[tuple[int, bool]]:
         jumps = tracks.manner[k] == STEP or tracks.time_s[k + 1] - tracks.time_s[k] <= SAME_INSTANT_S
         if jumps and (tracks.manner[k] == HOLD or abs(float(tracks.curve[k, 1:].sum())) <= NO_WAY):
             continue
-        if jumps and told and told[-1][1] and tracks.time_s[k] == tracks.time_s[told[-1][0]]:
+        if jumps and told and told[-1][1] and tracks.time_s[k] - tracks.time_s[told[-1][0]] <= SAME_INSTANT_S:
             told.pop()
         told.append((k, bool(jumps)))
     return told
