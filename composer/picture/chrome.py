@@ -31,6 +31,7 @@ QPushButton:checked {{ background: {of(theme.ink)}; color: {of(theme.ground)}; }
 QPushButton:disabled {{ color: {of(theme.quiet_ink)}; border-color: {of(theme.faint_line)}; background: {of(theme.ground)}; }}
 QComboBox QAbstractItemView {{ background: {of(theme.raised)}; color: {of(theme.ink)}; }}
 QSlider {{ border: {px(2)} solid transparent; min-height: {px(18)}; }}
+QSlider#volume {{ min-width: {px(64)}; max-width: {px(64)}; }}
 QSlider::groove:horizontal {{ height: {px(4)}; background: {of(theme.line)}; border-radius: {px(2)}; }}
 QSlider::sub-page:horizontal {{ height: {px(4)}; background: {of(theme.quiet_ink)}; border-radius: {px(2)}; }}
 QSlider::handle:horizontal {{ width: {px(10)}; margin: -{px(5)} 0; background: {of(theme.head)}; border-radius: {px(5)}; }}

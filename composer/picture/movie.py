@@ -24,6 +24,9 @@ from composer.simulate.run import DEFAULT_HZ, Block, blocks
 
 Array = NDArray[np.float64]
 
+TICKS = 400
+"""Ticks between two words on how far the run is."""
+
 MOST_KEPT = 1 << 26
 """Strains kept at most, 4 bytes each: fibers times frames."""
 
@@ -114,7 +117,8 @@ def simulated(
 ) -> Strains:
     """Play a piece on the simulated rig up to the take's end and keep what it shows. progress: the share done, 0 to 1"""
     keeping = Keeping(piece, take)
-    for block in blocks(piece.tracks, piece.rig, piece.abilities, rate_Hz, inverse):
+    ticks = TICKS * max(1, piece.tracks.fibers)
+    for block in blocks(piece.tracks, piece.rig, piece.abilities, rate_Hz, inverse, values=ticks):
         keeping.add(block)
         progress(min(1.0, float(block.time_s[-1]) / max(take.to_s, 1e-3)))
         if float(block.time_s[-1]) >= take.to_s:

@@ -81,6 +81,7 @@ class Showing(QWidget):
         self._hang.fiber_clicked.connect(self._choose)
         self._show_way()
         self._wear()
+        self._cloth.setFocus()
         self._work()
 
     def _build(self, piece: Piece) -> None:

@@ -28,6 +28,9 @@ from composer.warp import along
 Array = NDArray[np.float64]
 Tell = Callable[[object], None]
 
+TICKS = 400
+"""Ticks between two words on how far the run is."""
+
 FRAMES_HZ = 50.0
 MOST_FRAMES = 1 << 25
 MOST_COLUMNS = 8192
@@ -90,7 +93,7 @@ def simulate(piece: Piece, tell: Tell) -> None:
     log = LandingLog(piece.tracks, piece.abilities.stroke)
     watch = Watch(piece.rig, piece.abilities)
     whole = length + tail_s(piece.abilities)
-    for block in blocks(piece.tracks, piece.rig, piece.abilities, DEFAULT_HZ):
+    for block in blocks(piece.tracks, piece.rig, piece.abilities, DEFAULT_HZ, values=TICKS * fibers):
         for each in (shown, cloth, log, watch):
             each.add(block)
         tell(Progress("simulating", min(1.0, float(block.time_s[-1]) / whole)))

@@ -2,7 +2,7 @@
 
 from PySide6.QtCore import QElapsedTimer, Qt, QTimer, Signal
 from PySide6.QtGui import QHideEvent, QKeyEvent
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QSlider, QWidget
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QSlider, QWidget
 
 from composer.picture import play_head
 from composer.picture.axes import say_seconds
@@ -17,6 +17,9 @@ AGAIN_MS = 60
 
 STEPS = 10_000
 """Positions of the slider that scrubs."""
+
+WIDEST = "888:8.888    88:88.8"
+"""A place that is as wide as most, so that what stands beside it does not move."""
 
 SPEEDS = (0.25, 0.5, 0.75, 1.0, 1.25, 1.5, 2.0)
 
@@ -73,7 +76,8 @@ class Transport(QWidget):
         self._volume = QSlider(Qt.Orientation.Horizontal)
         self._volume.setRange(0, 100)
         self._volume.setValue(round(100 * self._metronome.volume))
-        self._volume.setFixedWidth(70)
+        self._volume.setObjectName("volume")
+        self._volume.setSizePolicy(QSizePolicy.Policy.Fixed, QSizePolicy.Policy.Fixed)
         self._volume.setAccessibleName("volume of the counts")
         self._volume.setToolTip("volume of the counts")
         self._volume.valueChanged.connect(self._set_volume)
@@ -273,5 +277,9 @@ class Transport(QWidget):
             self._play.setText(word)
             self._play.setAccessibleName(word)
         place = self._bars.say_place(head.at_s) if self._bars is not None else ""
+        if head.playing:
+            # While it runs, parts of a count are too quick to be read.
+            place = place.partition(".")[0]
         self._where.setText(f"{place}    {say_seconds(head.at_s, 1)}")
+        self._where.setMinimumWidth(self._where.fontMetrics().horizontalAdvance(WIDEST))
         self._loop.setEnabled(head.loop_s is not None or self._mark_s is not None)

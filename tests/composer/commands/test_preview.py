@@ -1,9 +1,14 @@
 """`drawcord preview` as it is called."""
 
+import contextlib
 import csv
 import io
 import json
+import signal
+import subprocess
+import sys
 
+import av
 import numpy as np
 import pytest
 
@@ -73,7 +78,7 @@ def test_without_a_screen_and_without_an_option_it_says_which_options_write_file
     monkeypatch.setenv("QT_QPA_PLATFORM", "offscreen")
     assert run(["preview", score()]) == 2
     said = capsys.readouterr().err
-    assert all(option in said for option in ("--png", "--csv", "--json"))
+    assert all(option in said for option in ("--png", "--movie", "--csv", "--json"))
 
 
 @pytest.mark.parametrize(
@@ -98,3 +103,82 @@ def test_a_wrong_call_is_answered_with_a_sentence_and_nothing_is_written(score, 
     assert word in said.err
     assert not said.out
     assert {file.name: file.read_bytes() for file in tmp_path.iterdir()} == before
+
+
+def test_a_movie_is_written_of_a_passage_named_by_a_cue_and_a_place(score, tmp_path, capsys):
+    path = score()
+    with open(path, "a") as file:
+        file.write('\ncue "here" at 1:2\n')
+    movie = tmp_path / "out.mp4"
+    call = ["preview", path, "--movie", str(movie), "--from", "here", "--to", "1:3", "--size", "320x240", "--fps", "10"]
+    assert run(call) == 0
+    said = capsys.readouterr()
+    assert f"written: {movie}, 11 frames" in said.out
+    assert not said.err
+    with av.open(str(movie)) as container:
+        frames = [frame.to_ndarray(format="rgb24") for frame in container.decode(video=0)]
+    assert len(frames) == 11
+    assert frames[0].shape == (240, 320, 3)
+
+
+def test_a_movie_and_the_report_come_from_one_run(score, tmp_path, capsys):
+    movie = tmp_path / "out.gif"
+    call = ["preview", score(), "--movie", str(movie), "--json", "--to", "1:2", "--size", "321x241", "--fps", "5"]
+    assert run(call) == 0
+    assert json.loads(capsys.readouterr().out)["fibers"] == 2
+    assert movie.read_bytes().startswith(b"GIF89a")
+
+
+def test_json_tells_what_fibers_will_do_tonight(score, capsys):
+    assert run(["preview", score(), "--json"]) == 0
+    told = json.loads(capsys.readouterr().out)
+    assert told["tonight"]["lowest_kPa"] == pytest.approx(told["air"]["lowest_kPa"], abs=1e-3)
+    assert told["tonight"]["landings"] == len(told["hits"])
+    assert {group["group"] for group in told["tonight"]["groups"]}
+
+
+@pytest.mark.parametrize(
+    ("options", "word"),
+    [
+        (["--movie", "{folder}/a.avi"], ".mp4 nor .gif"),
+        (["--movie", "{folder}/bench.score"], ".mp4 nor .gif"),
+        (["--movie", "{folder}/a.mp4", "--size", "641x360"], "odd side"),
+        (["--movie", "{folder}/a.mp4", "--size", "16x16"], "out of range"),
+        (["--movie", "{folder}/a.mp4", "--size", "9000x9000"], "out of range"),
+        (["--movie", "{folder}/a.mp4", "--fps", "nan"], "out of range"),
+        (["--movie", "{folder}/a.gif", "--fps", "60"], "out of range"),
+        (["--movie", "{folder}/a.mp4", "--from", "nowhere"], "no cue of that name"),
+        (["--movie", "{folder}/a.mp4", "--from", "1:9"], "no count 9"),
+        (["--movie", "{folder}/a.mp4", "--from", "1:x"], "no cue of that name"),
+        (["--movie", "{folder}/a.mp4", "--from", "900:1"], "ends before"),
+        (["--movie", "{folder}/a.mp4", "--from", "1:3", "--to", "1:2"], "an end after the start"),
+        (["--movie", "{folder}/a.mp4", "--view", "below"], "three-quarter"),
+        (["--movie", "{folder}/no/such/a.mp4"], "no folder"),
+        (["--movie", "{folder}/a.mp4", "--png", "{folder}/a.mp4"], "write over"),
+        (["--json", "--from", "1:2"], "--movie"),
+    ],
+)
+def test_a_movie_that_cannot_be_is_refused_before_any_work(score, tmp_path, capsys, options, word):
+    path = score()
+    before = {file.name: file.read_bytes() for file in tmp_path.iterdir()}
+    assert run(["preview", path, *(option.format(folder=tmp_path) for option in options)]) == 2
+    said = capsys.readouterr()
+    assert word in said.err
+    assert not said.out
+    assert {file.name: file.read_bytes() for file in tmp_path.iterdir()} == before
+
+
+def test_ctrl_c_while_filming_leaves_no_file(score, tmp_path):
+    path, movie = score(), tmp_path / "out.mp4"
+    call = [sys.executable, "-m", "player.commands.main", "preview", path, "--movie", str(movie), "--fps", "60"]
+    running = subprocess.Popen([*call, "--size", "1920x1080"], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True)
+    deadline = 600
+    while not list(tmp_path.glob(".drawcord-*.part")) and running.poll() is None and deadline:
+        deadline -= 1
+        with contextlib.suppress(subprocess.TimeoutExpired):
+            running.wait(timeout=0.1)
+    running.send_signal(signal.SIGINT)
+    err = running.communicate(timeout=60)[1]
+    assert running.returncode not in (0, 2)
+    assert "Traceback" not in err
+    assert sorted(file.name for file in tmp_path.iterdir()) == ["bench.rig.toml", "bench.score"]
