@@ -264,6 +264,9 @@ class Desk:
                     self.say(Failed(self.version, value.say))
             del self._asked[place]
             self.say(Answer(ask.number, ask.version, ask.what, value))
+            if self.solver is not None:
+                back_to = "simulating" if self.solver.simulating else "retiming"
+                self.say(Doing(self.version, "" if self._job is None else back_to))
             return True
         return False
 

@@ -88,6 +88,8 @@ class TextPane(QPlainTextEdit):
     def change(self, deltas: Sequence[Delta]) -> None:
         """Make changes, in any order and none over another, as one step of the history; the caret stays with its text."""
         cursor = QTextCursor(self.document())
+        # Undo puts the caret where the block began.
+        cursor.setPosition(min((delta.at for delta in deltas), default=0))
         cursor.beginEditBlock()
         for delta in sorted(deltas, key=lambda one: one.at, reverse=True):
             cursor.setPosition(delta.at)

@@ -69,7 +69,7 @@ def offer(session: "Session", notices: Notices, later: Later, at: str, read: rec
 
     notices.say(
         f"recovered {at}",
-        f"The window ended before {what} was saved. Its text is still there, to the last change.",
+        f"{what[:1].upper()}{what[1:]} was left unsaved. Its text is still there, to the last change.",
         [("Take it up", take_up), ("Save it beside", save_beside), ("Throw it away", lambda: disk.remove(at))],
     )
 

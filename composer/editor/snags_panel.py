@@ -12,6 +12,7 @@ from PySide6.QtWidgets import (
     QListWidgetItem,
     QPushButton,
     QScrollArea,
+    QSizePolicy,
     QVBoxLayout,
     QWidget,
 )
@@ -48,11 +49,61 @@ class Wrapped(QListWidget):
         return QSize(300, 150)
 
 
+class Sentence(QPushButton):
+    """A button with a sentence on it, wrapped to its width, and quieter words below; Return presses it too."""
+
+    def __init__(self, says: str, quiet: str):
+        super().__init__()
+        self.setObjectName("mend")
+        self.setAccessibleName(f"{says}, {quiet}")
+        column = QVBoxLayout(self)
+        column.setContentsMargins(6, 3, 6, 3)
+        column.setSpacing(0)
+        for text, name in ((says, ""), (quiet, "quiet")):
+            label = QLabel(text)
+            label.setWordWrap(True)
+            label.setObjectName(name)
+            label.setAttribute(Qt.WidgetAttribute.WA_TransparentForMouseEvents)
+            label.setAccessibleName(text)
+            column.addWidget(label)
+        policy = QSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)
+        policy.setHeightForWidth(True)
+        self.setSizePolicy(policy)
+
+    def hasHeightForWidth(self) -> bool:
+        """As high as its sentence needs."""
+        return True
+
+    def heightForWidth(self, width: int) -> int:
+        """The height for a width."""
+        return self.layout().heightForWidth(width)
+
+    def sizeHint(self) -> QSize:
+        """The size for the width at hand."""
+        width = max(self.width(), 120)
+        return QSize(width, self.heightForWidth(width))
+
+    def minimumSizeHint(self) -> QSize:
+        """No narrower than a word or two."""
+        return QSize(80, self.heightForWidth(max(self.width(), 80)))
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Return presses it."""
+        if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter):
+            self.click()
+        else:
+            super().keyPressEvent(event)
+
+
 class Mends(QScrollArea):
-    """The choices for one snag. ghost: the choice under pointer or focus, None for none; chosen: one that is taken."""
+    """The choices for one snag. ghost: the choice under pointer or focus, None for none; chosen: one that is taken.
+
+    left: the keys go back to the list
+    """
 
     ghost = Signal(object)
     chosen = Signal(object)
+    left = Signal()
 
     def __init__(self) -> None:
         super().__init__()
@@ -90,10 +141,8 @@ class Mends(QScrollArea):
         made: dict[QObject, Choice] = {}
         for choice in mended.choices:
             left = "no snag is left then" if choice.snags_left == 0 else f"{choice.snags_left} left then"
-            button = QPushButton(f"{choice.say}\n{left}")
-            button.setAccessibleName(f"{choice.say}, {left}")
+            button = Sentence(choice.say, left)
             button.setToolTip(WAYS.get(choice.way, ""))
-            button.setObjectName("mend")
             button.installEventFilter(self)
             button.clicked.connect(lambda _=False, choice=choice: self.chosen.emit(choice))
             made[button] = choice
@@ -125,6 +174,15 @@ class Mends(QScrollArea):
                 self.ghost.emit(choice)
             elif event.type() in (QEvent.Type.Leave, QEvent.Type.FocusOut):
                 self.ghost.emit(None)
+            elif isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress:
+                if event.key() in (Qt.Key.Key_Left, Qt.Key.Key_Escape):
+                    self.left.emit()
+                    return True
+                if event.key() in (Qt.Key.Key_Up, Qt.Key.Key_Down):
+                    buttons = self.buttons
+                    at = buttons.index(watched) + (1 if event.key() == Qt.Key.Key_Down else -1)
+                    buttons[at % len(buttons)].setFocus()
+                    return True
         return super().eventFilter(watched, event)
 
 
@@ -156,6 +214,7 @@ class SnagsPanel(QWidget):
         self._list.itemActivated.connect(lambda _: self.mends.setFocus())
         self._list.installEventFilter(self)
         self.mends = Mends()
+        self.mends.left.connect(self._list.setFocus)
         row = QHBoxLayout(self)
         row.setContentsMargins(0, 0, 0, 0)
         row.setSpacing(1)

@@ -45,13 +45,13 @@ class Solver:
         self.retiming: Retiming | None = None
         self._of: Loaded | None = None
         self._rig = 0
-        self._simulating = False
+        self.simulating = False
         self._ran: tuple[bool, Tracks] | None = None
         self._known: Known | None = None
 
     def idle_or_simulating(self, idle: bool) -> bool:
         """Whether a run of what is shown may begin: there is a text that can be read, and nothing else is in hand."""
-        return self.desk.made_version == self.desk.version and (idle or self._simulating)
+        return self.desk.made_version == self.desk.version and (idle or self.simulating)
 
     def forget(self) -> None:
         """Another score."""
@@ -61,7 +61,7 @@ class Solver:
         """Retime the text at hand, tell of it, then simulate it."""
         desk, made = self.desk, self.desk.made
         assert made is not None
-        self._simulating = False
+        self.simulating = False
         yield
         desk.say(Doing(desk.version, "retiming"))
         before, self._of = self.retiming, None
@@ -90,7 +90,7 @@ class Solver:
         ):
             return
         self._ran = None
-        self._simulating = True
+        self.simulating = True
         desk.say(Doing(desk.version, "simulating"))
         whole = max(tracks.duration_s, 1e-3) + tail_s(made.abilities)
         keep_Hz = min(KEEP_HZ, MOST_KEPT / max(1.0, tracks.fibers * whole))
@@ -112,7 +112,7 @@ class Solver:
                 )
             )
             yield
-        self._simulating, self._ran = False, (retimed, tracks)
+        self.simulating, self._ran = False, (retimed, tracks)
 
     def mended(self, snag: Snag) -> Mended | Refusal:
         """What would mend a snag, each choice with its edit and what comes of it."""

@@ -171,7 +171,7 @@ class ComposeWindow(Deeds, QMainWindow):
         self.snags.row_chosen.connect(self._row_chosen)
         self.snags.mends_wanted.connect(self._find_mends)
         self.snags.mends.ghost.connect(showing.show_choice)
-        self.snags.mends.chosen.connect(lambda choice: self.apply(choice.edit))
+        self.snags.mends.chosen.connect(self._mend)
         self.retimed.hit_chosen.connect(self._hit_chosen)
         self.retimed.take_wanted.connect(self.take)
         stage.transport.loop_changed.connect(self._passage_changed)
@@ -380,6 +380,11 @@ class ComposeWindow(Deeds, QMainWindow):
                 self.snags.mends.show_mended(mended)
 
         self.crew.ask("mends", (checked.check.snags[row.snag],), show)
+
+    def _mend(self, choice: Any) -> None:
+        """Take a choice; the keys stay with the list, for the next snag."""
+        self.snags.list.setFocus()
+        self.apply(choice.edit)
 
     def _hit_chosen(self, hit: Any) -> None:
         length = self.stage.cloth.shown[1] - self.stage.cloth.shown[0]
