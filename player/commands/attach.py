@@ -71,9 +71,7 @@ def _vent(names: list[str], as_json: bool) -> int:
     clients, wrong = [], []
     for name in names:
         try:
-            client = Client.at(path_of(name), commands=False)
-            client.say("vent")
-            clients.append(client)
+            clients.append(Client.at(path_of(name), commands=False, vents=True))
         except _errors() as why:
             wrong.append((name, why))
     rows = [{"run": client.run, "state": _vented(client)} for client in clients]

@@ -26,8 +26,11 @@ class Client:
     commands: whether this front end commands; gone: whether the run has closed the socket, or died
     """
 
-    def __init__(self, connection: socket.socket, commands: bool, answers: bool = False):
-        """Say hello over a connected socket and wait for the welcome. Raises NotThere, Stranger, Unreadable."""
+    def __init__(self, connection: socket.socket, commands: bool, answers: bool = False, vents: bool = False):
+        """Say hello over a connected socket and wait for the welcome; vents: say vent before all else.
+
+        Raises NotThere, Stranger, Unreadable.
+        """
         self._socket = connection
         self._rest = b""
         self._kept: list[tuple[str, dict[str, Any]]] = []
@@ -40,6 +43,8 @@ class Client:
         try:
             check_peer(connection)
             connection.setblocking(False)
+            if vents:
+                self.say("vent")
             self.say("hello", version=messages.VERSION, commands=commands, answers=answers)
             self._await_welcome()
         except BaseException:
@@ -47,7 +52,7 @@ class Client:
             raise
 
     @classmethod
-    def at(cls, path: str, commands: bool, answers: bool = False) -> "Client":
+    def at(cls, path: str, commands: bool, answers: bool = False, vents: bool = False) -> "Client":
         """Attach to the run that listens at a path. Raises NotThere, Stranger, Unreadable."""
         connection = socket.socket(socket.AF_UNIX, socket.SOCK_STREAM)
         try:
@@ -60,7 +65,7 @@ class Client:
                 with suppress(OSError):
                     os.unlink(path)
             raise NotThere(f"no run answers at {path}: {why.strerror or why}") from None
-        return cls(connection, commands, answers)
+        return cls(connection, commands, answers, vents)
 
     def say(self, name: str, /, **fields: Any) -> bool:
         """Say something of `messages.ASKED`; whether it is on its way. A signal's handler or another thread may call it."""

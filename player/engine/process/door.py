@@ -7,6 +7,7 @@ slow or hostile costs the run nothing but that.
 import os
 import select
 import socket
+from collections import Counter
 from collections.abc import Callable
 from contextlib import suppress
 from typing import Any
@@ -14,7 +15,9 @@ from typing import Any
 from player.engine.process import messages
 from player.engine.process.peers import Stranger, check_peer
 
-MOST_FRONTS = 16
+MOST_FRONTS = MOST_SILENT = 16
+"""Front ends that are attached, and such that have not said hello yet."""
+
 QUEUE_BYTES = 1 << 18
 """What waits for a front end that does not read; what is told last of all may be longer."""
 
@@ -23,6 +26,8 @@ UNFIT_MOST = 20
 """A front end that has sent so much that is no message is let go."""
 
 NOTES_MOST = 500
+"""Of each kind in the log: nobody fills a disk by nonsense, or hides behind it."""
+
 HELLO_S = LAST_S = 2.0
 LOOK_S = 0.02
 
@@ -73,7 +78,7 @@ class Door:
         self.note: Callable[..., None] = lambda **told: None
         self._memory, self._listener = memory, listener
         self._fronts: list[Front] = []
-        self._notes = 0
+        self._notes: Counter[str] = Counter()
         self._marks: dict[str, Any] | None = None
         self._poll = select.poll()
         if listener is not None:
@@ -171,8 +176,9 @@ class Door:
             check_peer(connection)
         except Stranger:
             why = "this run belongs to another user: only they may attach to it"
-        if len(self._fronts) >= MOST_FRONTS:
-            why = why or f"there are {MOST_FRONTS} front ends attached already; end one of them"
+        silent = [front for front in self._fronts if not front.greeted]
+        if len(silent) >= MOST_SILENT:
+            self._let_go(silent[0], "let go: it has not said hello")
         if why:
             self._told("refused", why)
             with suppress(OSError):
@@ -215,7 +221,7 @@ class Door:
         """Do what was asked; why not, "" where it is done."""
         if name == "hello":
             return self._greet(front, fields)
-        if not front.greeted:
+        if not front.greeted and name != "vent":
             return "a front end says hello first"
         row = messages.ASKED[name]
         why = messages.why_not(row, front.commands, self.state())
@@ -240,6 +246,8 @@ class Door:
     def _greet(self, front: Front, fields: dict[str, Any]) -> str:
         if front.greeted:
             return "it has said hello already"
+        if self.attached >= MOST_FRONTS:
+            return f"there are {MOST_FRONTS} front ends attached already; end one of them"
         if fields["version"] != messages.VERSION:
             return "the run is of another version: use the same drawcord for both"
         front.greeted = True
@@ -288,7 +296,7 @@ class Door:
                 self._let_go(front, "gone")
 
     def _told(self, what: str, say: str = "") -> None:
-        """Into the log, bounded: nobody fills a disk by nonsense."""
-        self._notes += 1
-        if self._notes <= NOTES_MOST:
+        """Into the log, bounded."""
+        self._notes[what] += 1
+        if self._notes[what] <= NOTES_MOST:
             self.note(what=what, say=say, attached=self.attached)

@@ -56,7 +56,7 @@ ASKED = {
             {"version": "number", "commands": "flag", "answers": "flag"},
             who="any",
         ),
-        Message("vent", "every valve exhausts at once", who="any"),
+        Message("vent", "every valve exhausts at once; taken before hello too", who="any"),
         Message("leave", "the front end detaches; where it commands, the run's rule applies", who="any"),
         Message(
             "command",

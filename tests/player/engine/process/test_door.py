@@ -1,12 +1,15 @@
 """Who is attached, who commands, what is asked: with front ends that behave, and with those that do not."""
 
+import mmap
 import os
+import socket
 
-from player.engine.process import messages
-from player.engine.process.door import MOST_FRONTS, NOTES_MOST, QUEUE_BYTES, UNFIT_MOST
+import pytest
+
+from player.engine.process import messages, peers
+from player.engine.process.door import MOST_FRONTS, MOST_SILENT, NOTES_MOST, QUEUE_BYTES, UNFIT_MOST
 from player.engine.process.layout import Reader
-
-NAMES = ("welcome", "command")
+from player.engine.process.room import listen
 
 
 def names(heard):
@@ -20,9 +23,6 @@ def test_hello_is_answered_with_a_welcome_and_who_commands(visit):
 
 
 def test_the_memory_comes_with_the_welcome_and_can_be_read(door):
-    import mmap
-    import socket
-
     ours, theirs = socket.socketpair()
     door.adopt(theirs)
     ours.sendall(messages.packed("hello", version=messages.VERSION, commands=False, answers=False))
@@ -55,9 +55,14 @@ def test_everybody_can_vent(door, visit):
     assert door.taken == [("vent", {})]
 
 
-def test_before_hello_nothing_is_taken(door, visit):
-    (refused,) = visit().say("vent")
+def test_before_hello_nothing_but_a_vent_is_taken(door, visit):
+    (refused,) = visit().say("rest")
     assert refused[0] == "refused" and door.taken == []
+
+
+def test_a_vent_needs_no_hello(door, visit):
+    visit().say("vent")
+    assert door.taken == [("vent", {})]
 
 
 def test_another_version_is_refused_and_stays_unattached(door, visit):
@@ -149,26 +154,44 @@ def test_what_the_log_is_told_is_bounded(door, visit):
     one.hello()
     for _ in range(NOTES_MOST + 50):
         one.say("rest")
-    assert len(door.notes) == NOTES_MOST
+    assert [note["what"] for note in door.notes].count("refused") == NOTES_MOST
 
 
-def test_no_more_front_ends_than_there_is_room_for(door, visit):
-    import socket
-
-    from player.engine.process.room import listen
-
+@pytest.fixture
+def listening(door):
+    """The door listens; a maker of connections to it."""
     door._listener = listen("crowd-1")
-    path = door._listener.getsockname()
     door._poll.register(door._listener)
-    for _ in range(MOST_FRONTS):
-        visit().hello()
-    late = socket.socket(socket.AF_UNIX)
-    late.connect(path)
-    door.serve()
-    assert b"attached already" in late.recv(4096) and late.recv(10) == b""
-    late.close()
+    path, made = door._listener.getsockname(), []
+
+    def connect():
+        made.append(socket.socket(socket.AF_UNIX))
+        made[-1].connect(path)
+        door.serve()
+        return made[-1]
+
+    yield connect
+    for one in made:
+        one.close()
     door.close()
     assert not os.path.exists(path)
+
+
+def test_no_more_front_ends_than_there_is_room_for_and_the_next_can_vent_all_the_same(door, visit, listening):
+    for _ in range(MOST_FRONTS):
+        visit().hello()
+    late = listening()
+    late.sendall(messages.packed("vent") + messages.packed("hello", version=messages.VERSION, commands=True, answers=True))
+    door.serve()
+    assert b"attached already" in late.recv(4096) and door.taken == [("vent", {})] and not door.commanded
+
+
+def test_connections_that_never_say_a_word_keep_nobody_out(door, visit, listening):
+    for _ in range(5 * MOST_SILENT):
+        listening()
+    assert len(door._fronts) <= MOST_SILENT
+    one = visit()
+    assert names(one.hello(commands=True)) == ["welcome", "command"] and door.commanded
 
 
 def test_the_end_is_told_to_everybody_who_reads(door, visit):
@@ -180,17 +203,6 @@ def test_the_end_is_told_to_everybody_who_reads(door, visit):
     assert one.socket.recv(10) == b""
 
 
-def test_another_users_process_is_turned_away(door, monkeypatch):
-    import socket
-
-    from player.engine.process import peers
-    from player.engine.process.room import listen
-
-    door._listener = listen("mine-1")
-    door._poll.register(door._listener)
+def test_another_users_process_is_turned_away(door, listening, monkeypatch):
     monkeypatch.setattr(peers, "peer_uid", lambda connection: os.geteuid() + 1)
-    stranger = socket.socket(socket.AF_UNIX)
-    stranger.connect(door._listener.getsockname())
-    door.serve()
-    assert b"belongs to another user" in stranger.recv(4096) and door._fronts == []
-    stranger.close()
+    assert b"belongs to another user" in listening().recv(4096) and door._fronts == []
