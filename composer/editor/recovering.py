@@ -46,7 +46,7 @@ def orphans() -> Found:
 
 def offer(session: "Session", notices: Notices, later: Later, at: str, read: recovery.Recovered) -> None:
     """A bar that says what was found, and what can be done with it."""
-    name = os.path.basename(read.of) if session.path is not None else "a score that had no name"
+    name = os.path.basename(read.of) if session.path is not None else "A score that had no name"
     title = next((line for line in read.text.splitlines() if line.startswith("title")), "").partition('"')[2].rstrip('"')
     what = f"{name} ({title})" if title else name
 
@@ -69,7 +69,7 @@ def offer(session: "Session", notices: Notices, later: Later, at: str, read: rec
 
     notices.say(
         f"recovered {at}",
-        f"{what[:1].upper()}{what[1:]} was left unsaved. Its text is still there, to the last change.",
+        f"{what} was left unsaved. Its text is still there, to the last change.",
         [("Take it up", take_up), ("Save it beside", save_beside), ("Throw it away", lambda: disk.remove(at))],
     )
 
