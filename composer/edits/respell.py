@@ -14,15 +14,20 @@ def respelled(score: Score, number: int, line: str) -> tuple[Score, list[Fault]]
     """The score with line `number` of its own file reading `line`, and the faults of that line; None where the line belongs to
     no phrase and no section, or has become something else, so that the whole must be read again."""
     line = line.removesuffix("\r")
+    indented = line[:1].isspace()
     faults: list[Fault] = []
     row = Row(score.file, number, line, faults)
     for name, phrase in score.phrases.items():
         if phrase.span.file != score.file:
             continue
+        if indented == (phrase.span.line == number):
+            continue
         made = _phrase(phrase, number, line, row)
         if made is not None and made.name == name:
             return _with_text(replace(score, phrases={**score.phrases, name: made}), number, line), faults
     for at, section in enumerate(score.sections):
+        if indented == (section.span.line == number):
+            continue
         part = _section(section, number, line, row)
         if part is not None:
             sections = (*score.sections[:at], part, *score.sections[at + 1 :])
