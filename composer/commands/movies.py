@@ -54,7 +54,13 @@ def take_of(wanted: Wanted, piece: Any) -> Any:
     from composer.commands.places import seconds_of
     from composer.faults import fault
     from composer.picture.movie import MOST_KEPT, Take
+    from composer.picture.movie_file import EncoderFailedError, encoder
 
+    try:
+        encoder()
+    except EncoderFailedError as wrong:
+        found = f"there is no encoder for movies here: {wrong}"
+        raise fault(wanted.path, found, hint="install imageio-ffmpeg again, which brings one along") from None
     start_s = 0.0 if wanted.start is None else seconds_of(piece, wanted.start, "--from")
     end_s = piece.tracks.duration_s if wanted.end is None else seconds_of(piece, wanted.end, "--to")
     if end_s <= start_s:

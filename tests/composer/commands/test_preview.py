@@ -12,6 +12,7 @@ import av
 import numpy as np
 import pytest
 
+from composer.picture import movie_file
 from player.commands.main import run
 
 SCORE = """title "Bench"
@@ -166,6 +167,16 @@ def test_a_movie_that_cannot_be_is_refused_before_any_work(score, tmp_path, caps
     assert word in said.err
     assert not said.out
     assert {file.name: file.read_bytes() for file in tmp_path.iterdir()} == before
+
+
+def test_without_an_encoder_it_says_what_to_install_before_any_work(score, tmp_path, capsys, monkeypatch):
+    def none():
+        raise movie_file.EncoderFailedError("No ffmpeg exe could be found")
+
+    monkeypatch.setattr(movie_file, "encoder", none)
+    assert run(["preview", score(), "--movie", str(tmp_path / "out.mp4")]) == 2
+    assert "imageio-ffmpeg" in capsys.readouterr().err
+    assert not (tmp_path / "out.mp4").exists()
 
 
 def test_ctrl_c_while_filming_leaves_no_file(score, tmp_path):
