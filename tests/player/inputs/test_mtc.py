@@ -135,9 +135,9 @@ def test_pieces_that_come_in_a_bunch_do_not_send_the_score_ahead_while_it_coasts
     rate = RATES[code]
     first, follower = frames_of(Stamp(0, 0, 7, 0), rate), CodeFollower()
     at_s = run(follower, code, first, 40, 100.0)
-    # The host stands still for 120 ms; what was sent meanwhile is heard in a moment, and then the source falls silent.
+    # The host stands still for 400 ms; what was sent meanwhile is heard in a moment, and then the source falls silent.
     quarter_s = 1 / (4 * float(rate.per_s))
-    bunch = 8 * (int(0.12 / quarter_s) // 8)
+    bunch = 8 * (int(0.4 / quarter_s) // 8)
     for quarter in range(bunch):
         label = stamp_of(first + 40 + quarter // 8 * 2, rate)
         when_s = at_s + bunch * quarter_s + 0.001 * quarter
