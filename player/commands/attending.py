@@ -10,6 +10,7 @@ from typing import Any, Protocol
 import click
 
 from player.commands.signals import Interrupt, stopping
+from player.engine.clock import SteadyClock
 from player.engine.process.client import Client
 from player.engine.process.layout import Snapshot
 
@@ -19,6 +20,9 @@ GONE = (
     "Look at the rig before anything else"
 )
 NOT_FROM_HERE = "this front end only watches, and can vent: another one commands"
+STANDS_S = 1.0
+STANDS = "the process of the run stands still: what is asked of it is not done; vent by hand where need be"
+LIVELY = ("playing", "paused", "resting")
 STAYS = "to leave would bring all to rest, as the rule is rest: press r for that"
 
 
@@ -59,6 +63,7 @@ class Attending:
         self.client, self.rule, self.left = client, rule, False
         self.interrupt: Interrupt | None = None
         self._screen: Screen | None = None
+        self._now, self._stands = SteadyClock().now, False
 
     def attend(self, screen: Screen) -> tuple[str, dict[str, Any]] | None:
         """Show and tell until the run has ended; its last message, None where it is gone without, or left."""
@@ -78,8 +83,17 @@ class Attending:
                     elif name in ("ended", "failed"):
                         screen.show(client.snapshot(), inputs)
                         return _after_close(client, (name, fields))
-                screen.show(client.snapshot(), inputs)
+                snapshot = client.snapshot()
+                screen.show(snapshot, inputs)
+                self._watch(snapshot)
         return None
+
+    def _watch(self, snapshot: Snapshot) -> None:
+        """Say where a run that should move on stands still, which is nobody's but its process's fault."""
+        stands = snapshot.state in LIVELY and self._now() - snapshot.number("at_s") > STANDS_S
+        if stands and not self._stands:
+            self._tell(STANDS)
+        self._stands = stands
 
     def ask(self, what: str) -> None:
         """What a key asks for."""

@@ -226,3 +226,15 @@ def test_where_there_is_no_run_that_is_said(score, capsys, arguments, says):
 def test_a_list_of_none_is_no_fault(score, capsys):
     assert run(["attach", "--list"]) == 0
     assert capsys.readouterr().out == "none of your runs is on\n"
+
+
+def test_a_run_that_stands_still_is_said_to(score):
+    terminal = OnTerminal(score, "--to", "sim")
+    terminal.see("bar 1:")
+    engine = engine_of(terminal.process)
+    os.kill(engine, signal.SIGSTOP)
+    terminal.see("stands still")
+    os.kill(engine, signal.SIGCONT)
+    terminal.type(b"\x03")
+    terminal.see("Stopped and brought to rest")
+    assert terminal.end() == 0

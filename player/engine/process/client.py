@@ -26,8 +26,16 @@ class Client:
     commands: whether this front end commands; gone: whether the run has closed the socket, or died
     """
 
-    def __init__(self, connection: socket.socket, commands: bool, answers: bool = False, vents: bool = False):
-        """Say hello over a connected socket and wait for the welcome; vents: say vent before all else.
+    def __init__(
+        self,
+        connection: socket.socket,
+        commands: bool,
+        answers: bool = False,
+        vents: bool = False,
+        patience_s: float = WELCOME_S,
+    ):
+        """Say hello over a connected socket and wait for the welcome; vents: say vent before all else;
+        patience_s: how long to wait.
 
         Raises NotThere, Stranger, Unreadable.
         """
@@ -46,7 +54,7 @@ class Client:
             if vents:
                 self.say("vent")
             self.say("hello", version=messages.VERSION, commands=commands, answers=answers)
-            self._await_welcome()
+            self._await_welcome(patience_s)
         except BaseException:
             self.close()
             raise
@@ -122,8 +130,8 @@ class Client:
             os.close(self._descriptor)
             self._descriptor = -1
 
-    def _await_welcome(self) -> None:
-        waits = int(WELCOME_S / 0.1)
+    def _await_welcome(self, patience_s: float) -> None:
+        waits = int(patience_s / 0.1)
         while not self.gone and waits > 0:
             waits -= 1
             for name, fields in self._receive(0.1):
@@ -135,7 +143,7 @@ class Client:
                     self._kept.append((name, fields))
             if self.about:
                 return
-        raise NotThere("the run is gone" if self.gone else f"the run does not answer within {WELCOME_S:g} s")
+        raise NotThere("the run is gone" if self.gone else f"the run does not answer within {patience_s:g} s")
 
     def _welcomed(self, fields: dict[str, Any]) -> None:
         if int(fields["version"]) != messages.VERSION or self._descriptor < 0:

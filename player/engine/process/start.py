@@ -25,6 +25,9 @@ from player.engine.process.room import NoRoom, listen, name_for
 
 Body = Callable[..., tuple[str, dict[str, Any]]]
 
+BEGINS_S = 60.0
+"""A process that is begun anew on a busy machine may want so long until it answers."""
+
 _BEGUN_ANEW = "from player.engine.process.start import _begun; _begun()"
 
 
@@ -46,7 +49,7 @@ def start(body: Body, about: dict[str, Any], rule: str, *arguments: Any, answers
         raise
     finally:
         theirs.close()
-    return Client(ours, commands=True, answers=answers)
+    return Client(ours, commands=True, answers=answers, patience_s=BEGINS_S)
 
 
 def _forked(given: tuple, ours: socket.socket, theirs: socket.socket) -> None:
