@@ -39,6 +39,9 @@ from player.wire.messages import Set, decode
 
 TICK_S, ROOM_S = 0.005, 0.002
 LOW, HIGH = 25, 100
+FRAMES = 48
+"""Of a period of JACK, a millisecond: a message waits for the next to begin."""
+
 MAP = '[[bind]]\nmidi = { cc = 21 }\nfibers = "r.*"\n[[bind]]\nosc = "/fader"\nfibers = "r.*"\n'
 
 
@@ -119,7 +122,7 @@ def bench(way: str, jumps: int, portable: bool) -> None:
         stack.callback(tap.close)
         live = ["live", "bench.rig.toml", "--map", "hand.map.toml", "--to", f"serial:{tap.path}", "--json", "--arm"]
         if way == "midi":
-            stack.enter_context(server(f"drawcord-bench-{os.getpid()}"))
+            stack.enter_context(server(f"drawcord-bench-{os.getpid()}", FRAMES))
             until(is_midi_there, lambda: None)
             sender = Sender("benchbox")
             stack.callback(sender.close)

@@ -65,11 +65,14 @@ def is_jack_there() -> bool:
 
 
 @contextmanager
-def server(name: str) -> Iterator[str]:
-    """A server of that name while the block runs; clients of this process and of those that it starts find it."""
+def server(name: str, frames: int = 256) -> Iterator[str]:
+    """A server of that name while the block runs; clients of this process and of those that it starts find it.
+
+    frames: of a period, at 48 kHz
+    """
     was = os.environ.get("JACK_DEFAULT_SERVER")
     os.environ["JACK_DEFAULT_SERVER"] = name
-    command = ["jackd", "-r", "-S", "-n", name, "-d", "dummy", "-r", "48000", "-p", "256"]
+    command = ["jackd", "-r", "-S", "-n", name, "-d", "dummy", "-r", "48000", "-p", str(frames)]
     with subprocess.Popen(command, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL) as process:
         try:
             yield name
