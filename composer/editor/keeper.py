@@ -74,6 +74,11 @@ class Keeper(QObject):
         if self._path and not self._rewrite.isActive():
             self._rewrite.start()
 
+    def moved(self, of: str) -> None:
+        """The text stands for another file now."""
+        self._of = of
+        self.rewrite()
+
     def saved(self, hash_: str, of: str = "") -> None:
         """The file now holds a text of that hash."""
         self._saved, self._of = hash_, of or self._of

@@ -135,7 +135,7 @@ class Session(QObject):
             self._is_demo = os.path.dirname(self.base) == disk.demo()[1]
             self.began.emit(self.base, self._pane.text)
         self.put_text(text)
-        self.keeper.rewrite()
+        self.keeper.moved(self.base)
 
     def put_text(self, text: str) -> None:
         """Put another text in place of the one at hand, as one step that undo takes back."""

@@ -299,6 +299,23 @@ def test_a_text_without_a_name_is_offered_at_the_next_start(make):
     assert disk.left_behind() == []
 
 
+def test_a_text_taken_up_twice_still_starts_its_paths_where_it_did(make, tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    first = make()
+    first.session.new()
+    first.type("# mine\n")
+    base = first.session.base
+    first.end()
+    for _ in range(2):
+        desk = make()
+        desk.session.open_demo()
+        (name,) = [name for name in desk.notices.said if name.startswith("recovered")]
+        desk.notices.choose(name, "Take it up")
+        desk.settle()
+        assert desk.session.base == base == str(tmp_path / "untitled.score")
+        desk.end()
+
+
 def test_line_ends_of_another_system_are_kept(make, tmp_path):
     path = tmp_path / "a.score"
     path.write_bytes(b'title "One"\r\ntempo 60\r\n')
