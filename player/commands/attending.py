@@ -11,8 +11,9 @@ import click
 
 from player.commands.signals import Interrupt, stopping
 from player.engine.clock import SteadyClock
-from player.engine.process.client import Client
+from player.engine.process.client import Client, NotThere, Stranger, Unreadable
 from player.engine.process.layout import Snapshot
+from player.engine.process.start import Body, start
 
 LOOK_S = 0.05
 GONE = (
@@ -54,6 +55,16 @@ def commanded(
         if last is None and not client.gone:
             last = attending.attend(screen(attending.ask))
     return told(client, last, as_json, attending.left)
+
+
+def begun(body: Body, about: dict[str, Any], rule: str, *arguments: Any, answers: bool) -> Client:
+    """A run begun in a process of its own. Raises Faults where that does not come about."""
+    from composer.faults import fault
+
+    try:
+        return start(body, about, rule, *arguments, answers=answers)
+    except (NotThere, Stranger, Unreadable, OSError) as why:
+        raise fault("the process of the run", f"did not begin: {why}", hint="nothing has moved; try again") from None
 
 
 class Attending:

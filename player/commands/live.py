@@ -55,12 +55,11 @@ def command(
 def _run(call, arm: bool, rule: str, as_json: bool) -> int:
     """Start the session in a process of its own, and be its front end."""
     from player.commands import live_process
-    from player.commands.attending import commanded
+    from player.commands.attending import begun, commanded
     from player.commands.live_front import LiveFront
     from player.commands.terminal import has_keys, is_screen
-    from player.engine.process.start import start
 
     about = live_process.about(call)
     answers = not as_json and is_screen() and has_keys()
-    client = start(live_process.body, about, rule, call, answers, answers=answers)
+    client = begun(live_process.body, about, rule, call, answers, answers=answers)
     return commanded(client, arm, call.start_s, as_json, lambda ask: LiveFront(ask, about, quiet=as_json), rule)

@@ -78,14 +78,13 @@ def _run(
 ) -> int:
     """Start the run in a process of its own, and be its front end."""
     from player.commands import play_process
-    from player.commands.attending import commanded
+    from player.commands.attending import begun, commanded
     from player.commands.front import Front
     from player.commands.terminal import has_keys, is_screen
-    from player.engine.process.start import start
 
     about = play_process.about(played, targets, hertz)
     answers = not as_json and is_screen() and has_keys()
-    client = start(play_process.body, about, rule, played, targets, hertz, log, trim, answers=answers)
+    client = begun(play_process.body, about, rule, played, targets, hertz, log, trim, answers=answers)
     return commanded(client, arm, start_s, as_json, lambda ask: Front(ask, about, quiet=as_json), rule)
 
 

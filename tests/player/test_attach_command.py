@@ -14,7 +14,7 @@ from player.commands.main import run
 from player.engine.run_log import records
 
 from .test_front import OnTerminal
-from .test_play_command import started, when_moving
+from .test_play_command import engine_of, started, when_moving
 
 MAIN = [sys.executable, "-m", "player.commands.main"]
 
@@ -36,12 +36,6 @@ def runs():
 def attach(*arguments):
     command = [*MAIN, "attach", *arguments]
     return subprocess.run(command, capture_output=True, text=True, stdin=subprocess.DEVNULL, timeout=60)
-
-
-def engine_of(process):
-    """The process of the run that a command has started."""
-    found = subprocess.run(["pgrep", "-P", str(process.pid)], capture_output=True, text=True, check=True)
-    return int(found.stdout)
 
 
 def until(true, what):

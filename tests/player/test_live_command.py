@@ -23,6 +23,7 @@ from player.engine.run_log import records
 from player.takes.file import load_take
 
 from .inputs.jack import Sender, is_jack_there, server, until
+from .test_play_command import engine_of
 
 
 @pytest.fixture
@@ -75,12 +76,6 @@ def started(*arguments, **more):
     command = [sys.executable, "-m", "player.commands.main", "live", *map(str, arguments)]
     given = {"stdout": subprocess.PIPE, "stderr": subprocess.PIPE, "stdin": subprocess.DEVNULL, "text": True} | more
     return subprocess.Popen(command, **given)
-
-
-def engine_of(process):
-    """The process of the run that a command has started."""
-    found = subprocess.run(["pgrep", "-P", str(process.pid)], capture_output=True, text=True, check=True)
-    return int(found.stdout)
 
 
 def playing(address, params):

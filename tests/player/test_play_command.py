@@ -35,6 +35,12 @@ def started(*arguments):
     return subprocess.Popen(command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, stdin=subprocess.DEVNULL, text=True)
 
 
+def engine_of(process):
+    """The process of the run that a command has started."""
+    found = subprocess.run(["pgrep", "-P", str(process.pid)], capture_output=True, text=True, check=True)
+    return int(found.stdout)
+
+
 def when_moving(log):
     """Wait until the log has sets in it."""
     for _ in range(600):
@@ -211,8 +217,9 @@ def test_a_vent_by_a_second_signal_is_recorded_as_such(score):
 def test_a_run_killed_outright_leaves_a_log_that_can_be_read(score):
     playing = started(score(times=100), "--to", "sim", "--log", "run.log")
     when_moving("run.log")
-    playing.kill()
+    os.kill(engine_of(playing), signal.SIGKILL)
     playing.communicate(timeout=30)
+    assert playing.returncode == 1
     with open("run.log", "rb") as file:
         found, _ = records(file.read())
     assert found[0].kind == "head" and sum(record.kind == "set" for record in found) > 5
