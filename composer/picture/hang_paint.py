@@ -42,8 +42,11 @@ NEAR_FLOOR = 0.4
 REST_SHADE = 0.34
 """How bright a fiber is at rest, as a share of its ramp: here its place tells how far it has moved, and none may be lost."""
 
-NAMES_FROM_PX = 15.0
-"""Pixels between neighbours, at scale 1, from which on every fiber has its name beside it."""
+NAMES_FROM_PX = 24.0
+"""Pixels between neighbours, at scale 1, from which on fibers have their names beside them, as far as there is room."""
+
+MOST_BESIDE = 64
+"""Names that a name is kept from running into, the last ones written."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -299,16 +302,25 @@ def _round(of: palette.Colour, width: float) -> QPen:
     return made
 
 
+def _end_names(painter: QPainter, room: Room, ends: Array, look: Look) -> None:
+    """A name below each end, left out where it would run into one that is there already."""
+    taken: list[QRectF] = []
+    for name, (x, y) in zip(room.names, ends.tolist(), strict=True):
+        wide = look.width(name, 10.5)
+        box = QRectF(x - wide / 2, y + look.px(5), wide + 2, look.px(14))
+        if not any(box.intersects(other) for other in taken[-MOST_BESIDE:]):
+            taken.append(box)
+            look.write(painter, box, name, 10.5, look.theme.quiet_ink, CENTRE)
+
+
 def paint_names(painter: QPainter, room: Room, lines: Array, look: Look, hovered: int | None, width: int) -> None:
     """Names beside the ends of fibers where they lie far enough apart, and that of the fiber under the pointer always."""
     if not len(room.names):
         return
     ends = lines[room.hanging.first[1:] - 1]
     gaps = np.hypot(*np.diff(ends, axis=0).T) if len(ends) > 1 else np.array([np.inf])
-    if np.median(gaps) >= 3.2 * NAMES_FROM_PX * look.scale:
-        for name, (x, y) in zip(room.names, ends.tolist(), strict=True):
-            box = QRectF(x - look.px(60), y + look.px(5), look.px(120), look.px(14))
-            look.write(painter, box, name, 10.5, look.theme.quiet_ink, CENTRE)
+    if np.median(gaps) >= NAMES_FROM_PX * look.scale:
+        _end_names(painter, room, ends, look)
     if hovered is not None and hovered < len(room.names):
         x, y = ends[hovered]
         name = room.names[hovered]

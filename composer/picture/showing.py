@@ -28,12 +28,15 @@ from composer.picture.hang import HangView
 from composer.picture.hang_camera import VIEWS
 from composer.picture.material import Piece
 from composer.picture.showing_process import Beside
-from composer.picture.showing_work import Failed, Mended, Progress, Ran, Snags, mend, simulate
+from composer.picture.showing_work import Failed, Mended, Progress, Ran, Snags, mend, simulate, strain_at_head
 from composer.picture.transport import Transport
 from composer.picture.weave import Weave
 from composer.warp import along
 
 Array = NDArray[np.float64]
+
+OPENS_AT = (1280, 800)
+"""Pixels of the window on a screen that has no more to give; on a larger one it takes four fifths."""
 
 KEYS = "Space play   I O L loop   , . speed   C counts   F S T view   R retimed   M simulated   D dark/light   Esc close"
 
@@ -159,7 +162,7 @@ class Showing(QWidget):
 
     def sizeHint(self) -> QSize:
         """The size to open with."""
-        return QSize(1280, 800)
+        return QSize(*OPENS_AT)
 
     @property
     def transport(self) -> Transport:
@@ -336,20 +339,15 @@ class Showing(QWidget):
         super().closeEvent(event)
 
 
-def strain_at_head(ran: Ran, at_s: float) -> Array:
-    """Strain (F,) of the simulated run at an instant, on the straight line between the samples beside it."""
-    times = ran.times_s
-    place = float(np.interp(at_s, times, np.arange(len(times))))
-    low = min(int(place), len(times) - 2) if len(times) > 1 else 0
-    high = min(low + 1, len(times) - 1)
-    part = place - low
-    return ran.strain[:, low] * (1.0 - part) + ran.strain[:, high] * part
-
-
 def show(piece: Piece, path: str | None = None, rig_path: str | None = None) -> int:
     """Show a piece in a window until it is closed; returns 0."""
     application = QApplication.instance() or QApplication(sys.argv[:1])
     window = Showing(piece, path, rig_path)
+    # Left to itself, Qt would open it at two thirds of the screen at most.
+    free = application.primaryScreen().availableGeometry()
+    window.resize(
+        *(max(min(size, room), room * 4 // 5) for size, room in zip(OPENS_AT, (free.width(), free.height()), strict=True))
+    )
     window.show()
     application.exec()
     return 0

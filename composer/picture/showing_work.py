@@ -82,6 +82,16 @@ class Failed:
     why: str
 
 
+def strain_at_head(ran: Ran, at_s: float) -> Array:
+    """Strain (F,) of the simulated run at an instant, on the straight line between the samples beside it."""
+    times = ran.times_s
+    place = float(np.interp(at_s, times, np.arange(len(times))))
+    low = min(int(place), len(times) - 2) if len(times) > 1 else 0
+    high = min(low + 1, len(times) - 1)
+    part = place - low
+    return ran.strain[:, low] * (1.0 - part) + ran.strain[:, high] * part
+
+
 def simulate(piece: Piece, tell: Tell) -> None:
     """Check a piece and play it on the simulated rig."""
     tell(Snags(stretches(check(piece.tracks, piece.rig, piece.abilities).snags)))

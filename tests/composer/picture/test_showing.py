@@ -11,9 +11,9 @@ from PySide6.QtWidgets import QComboBox, QPushButton, QSlider
 from composer.commands.piece import load_piece
 from composer.motion import strain_at
 from composer.picture import palette, showing_work
-from composer.picture.showing import Showing, strain_at_head
+from composer.picture.showing import Showing
 from composer.picture.showing_process import Beside
-from composer.picture.showing_work import Failed, Mended, Progress, Ran, Snags
+from composer.picture.showing_work import Failed, Mended, Progress, Ran, Snags, strain_at_head
 from composer.simulate.run import blocks
 
 WAIT_MS = 60_000
