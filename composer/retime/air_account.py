@@ -30,7 +30,7 @@ FEWEST, MOST, NODES = 8, 32, 4000
 IN_VIEW, ROWS = 0.5, 160
 """Spans are in view that miss at least this share of the store; and how many rows at most."""
 
-HAIR_S = 1e-6
+HAIR_S = 1e-7
 """By how much times are moved apart where they coincide."""
 
 

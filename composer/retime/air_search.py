@@ -8,6 +8,7 @@ numbers are always the same ones.
 """
 
 from dataclasses import dataclass, replace
+from itertools import zip_longest
 
 import numpy as np
 from numpy.typing import NDArray
@@ -29,11 +30,14 @@ from composer.rig.model import Rig
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-STEPS, CLEAN, CLEANED = 60, 10, 3
-"""Steps of one descent, rounds that make its answer clean, and how many answers are made so."""
+STEPS, RAISES, CLEAN, CLEANED = 60, 4, 10, 3
+"""Steps of one descent and prices that it tries, rounds that make its answer clean, and how many answers are made so."""
 
 FINER = 64
 """Straight pieces a curved fill is laid out as while an answer is made clean."""
+
+BLOCKS = 0.3
+"""How many of the throws move all that lies in some stretch of time by the same."""
 
 SAME_S = 1e-3
 """Times that differ by no more are the same answer, before they are made clean."""
@@ -41,7 +45,7 @@ SAME_S = 1e-3
 AGAIN, AT_LEAST = 12, 36
 """An answer that so many beginnings end at is taken to be the best there is, once so many at least were tried."""
 
-ENOUGH, SMALLEST_S = 1e-7, 1e-6
+ENOUGH, SMALLEST_S = 1e-7, 3e-6
 """A step that promises less (relative), or a box smaller than that, is the last."""
 
 BEGINNINGS = ((40, 60), (100, 30), (300, 12), (1200, 4), (6000, 1))
@@ -113,7 +117,7 @@ class _Search:
         self.mask, self.free = free, np.flatnonzero(free)
         self.account: Account = account_of(stage, bottom.shift_s, rig, abilities)
         self.left = contract(stage.events, stage.terms, free)
-        self.price = 2.0 * max(1.0, float(stage.events.weight[free].sum()))
+        self.plain_price = self.price = 2.0 * max(1.0, float(stage.events.weight[free].sum()))
         self.rng = np.random.default_rng(1)
         self.budget, self.plain = budget, rows
         self.keep(rows)
@@ -138,9 +142,20 @@ class _Search:
         x = self.programme.nearest(start)
         if x is None:
             return None
-        full = self._descended(self.whole(x), 0.25 * self.account.store / self.account.refill + 0.1)
+        full = self._priced(self.whole(x), 0.25 * self.account.store / self.account.refill + 0.1)
         lacks = self.account.overdraft_s(full)
         return (cost(self.stage.terms, full), full) if lacks <= 1e-4 * self.account.store / self.account.refill else None
+
+    def _priced(self, full: Array, box: float) -> Array:
+        """A descent whose price on overdrawing is raised until it is paid no longer."""
+        for number in range(RAISES):
+            self.price = self.plain_price * 10.0**number
+            self.programme.reprice(self.price)
+            full = self._descended(full, box)
+            if self.account.overdraft_s(full) <= 1e-7 * self.account.store / self.account.refill:
+                break
+            box *= 0.2
+        return full
 
     def _descended(self, full: Array, box: float) -> Array:
         """Times from which no step within a small box lessens cost and price together, from some that keep the rows."""
@@ -179,7 +194,7 @@ class _Search:
         kept, box = store_L(self.rig.supply), 0.02 * self.account.store / self.account.refill
         for _ in range(CLEAN):
             self.account = replace(account_of(self.stage, full, self.rig, self.abilities, FINER), store=kept)
-            full = self._descended(full, box)
+            full = self._priced(full, box)
             now = at_times(self.stage, full)
             lacks, spans = overdraft_L(now, self.rig, self.abilities), duty_spans(now, self.rig, self.abilities, coils)
             if lacks <= 0.0 and not spans:
@@ -222,25 +237,40 @@ class _Search:
         if tries > 3:
             yield self.earliest[self.free]
         reach = self.account.store / self.account.refill
-        leading = np.unique(self.account.start[self.account.start >= events.hits])
-        leading = leading[self.earliest[leading] < self.bottom.shift_s[leading]].tolist()
-        alone = [(start, share) for share in (1.0, 0.5) for start in leading][: tries // 2]
+        alone = self._alone()[: 2 * tries // 3]
         for number in range(tries - 3):
             few = _distinct(ranked)
-            here = few[int(self.rng.integers(0, len(few)))][1] if few else self.bottom.shift_s
+            # From one of the best, or from the optimum that asks too little, which still has every choice open.
+            some = [x for _, x in few] + [self.bottom.shift_s]
             if number < len(alone):
-                # Each start alone, from the best so far.
-                start, share = alone[number]
-                thrown = (few[0][1] if few else here).copy()
-                thrown[start] += share * min(self.earliest[start] - thrown[start], 0.0)
+                event, to, share = alone[number]
+                thrown = some[-1 if event < events.hits else 0].copy()
+                thrown[event] += share * (to - thrown[event])
             else:
-                thrown = self.thrown(here, reach)
+                thrown = self.thrown(some[int(self.rng.integers(0, len(some)))], reach)
             yield thrown[self.free]
+
+    def _alone(self) -> list[tuple[int, float, float]]:
+        """Throws of one event each, hits to the next and starts to their earliest: event, shift to go to, share of the way."""
+        account, events, bottom = self.account, self.stage.events, self.bottom.shift_s
+        starts = np.unique(account.start[account.start >= events.hits])
+        starts = starts[self.earliest[starts] < bottom[starts]].tolist()
+        landing = np.unique(account.end[(account.end >= 0) & (account.end < events.hits - 1)]).tolist()
+        at = events.written_s + bottom
+        of_hits = [(hit, float(at[hit + 1] - events.written_s[hit]), 1.0) for hit in landing]
+        of_starts = [(start, float(self.earliest[start]), share) for share in (1.0, 0.5) for start in starts]
+        return [one for pair in zip_longest(of_starts, of_hits) for one in pair if one is not None]
 
     def thrown(self, here: Array, reach: float) -> Array:
         """Times with some fills moved to begin or to land elsewhere."""
         account, events, rng = self.account, self.stage.events, self.rng
         thrown, fills = here.copy(), len(account.start)
+        if rng.random() < BLOCKS:
+            # All that lies between two instants together, later or earlier; half of the time what follows as well.
+            low, high = np.sort(rng.choice(events.written_s, 2))
+            block = (events.written_s >= low) & (events.written_s <= (high if rng.random() < 0.5 else np.inf))
+            thrown[block] += rng.normal() * reach * 10.0 ** rng.uniform(-1.0, 0.3)
+            return thrown
         for fill in rng.choice(fills, min(int(rng.integers(1, 5)), fills), replace=False):
             start, end = int(account.start[fill]), int(account.end[fill])
             by = rng.normal() * 10.0 ** rng.uniform(-1.5, 0.0) * reach

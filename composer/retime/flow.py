@@ -82,27 +82,98 @@ def merged(arcs: Arcs, nodes: int) -> tuple[Arcs, Index, Array]:
 
     Of rows between the same two nodes only the one that asks most can hold; rows that may be broken add up their prices.
     """
-    hard = np.isinf(arcs.most)
     pair = (arcs.later + 1) * (nodes + 1) + arcs.earlier + 1
-    kind = np.where(hard, 0, np.where(arcs.lowest < 0.0, 1, 2))
-    order = np.lexsort((-arcs.least_s, pair * 3 + kind))
-    key, least = (pair * 3 + kind)[order], arcs.least_s[order]
-    new = np.ones(len(order), dtype=bool)
-    new[1:] = (key[1:] != key[:-1]) | (~hard[order][1:] & (least[1:] != least[:-1]))
-    group = np.empty(len(order), dtype=np.int64)
+    hard, soft = np.flatnonzero(np.isinf(arcs.most)), np.flatnonzero(~np.isinf(arcs.most))
+    group, share = np.empty(len(pair), dtype=np.int64), np.zeros(len(pair))
+
+    order = hard[np.argsort(pair[hard])]
+    new = _fresh(pair[order])
+    first = np.flatnonzero(new)
     group[order] = np.cumsum(new) - 1
-    first = order[new]
-    share = np.zeros(len(order))
-    share[first] = 1.0
-    soft = np.flatnonzero(~hard)
-    count = len(first)
-    most, lowest = np.full(count, np.inf), np.zeros(count)
-    total = np.bincount(group[soft], weights=arcs.most[soft], minlength=count)
-    share[soft] = arcs.most[soft] / total[group[soft]]
-    some = np.bincount(group[soft], minlength=count) > 0
-    most[some] = total[some]
-    lowest[some] = np.bincount(group[soft], weights=arcs.lowest[soft], minlength=count)[some]
-    return Arcs(arcs.later[first], arcs.earlier[first], arcs.least_s[first], lowest, most), group, share
+    asks = np.maximum.reduceat(arcs.least_s[order], first) if len(first) else np.empty(0)
+    most = order[arcs.least_s[order] == asks[group[order]]]
+    # Of those that ask the same the first given holds, however they were sorted.
+    chosen = np.full(len(first), len(pair))
+    np.minimum.at(chosen, group[most], most)
+    share[chosen] = 1.0
+
+    order = soft[np.lexsort((arcs.least_s[soft], arcs.lowest[soft] < 0.0, pair[soft]))]
+    new = _fresh(pair[order]) | _fresh(arcs.lowest[order] < 0.0) | _fresh(arcs.least_s[order])
+    group[order] = np.cumsum(new) - 1
+    total = np.bincount(group[order], weights=arcs.most[order])
+    lowest = np.bincount(group[order], weights=arcs.lowest[order])
+    share[order] = arcs.most[order] / total[group[order]]
+    group[order] += len(chosen)
+    chosen = np.concatenate((chosen, order[new]))
+    return Arcs(
+        arcs.later[chosen], arcs.earlier[chosen], arcs.least_s[chosen], np.concatenate((np.zeros(len(asks)), lowest)),
+        np.concatenate((np.full(len(asks), np.inf), total)),
+    ), group, share  # fmt: skip
+
+
+def _fresh(values: NDArray[np.generic]) -> NDArray[np.bool_]:
+    """Where a value differs from the one before it."""
+    return np.append(True, values[1:] != values[:-1]) if len(values) else np.zeros(0, dtype=bool)
+
+
+class Circulation:
+    """A circulation that stays in the solver: nodes and arcs may be added, and it is solved again from where it was."""
+
+    def __init__(self, arcs: Arcs, wide: Wide, nodes: int):
+        """C arcs and W wide rows over some nodes."""
+        self.few, self.group, self.share = merged(arcs, nodes)
+        self.most = arcs.most.copy()
+        self.nodes, self.columns = nodes, len(self.few.least_s) + len(wide.least_s)
+        self.solver = quiet()
+        self.solver.passModel(_model(self.few, wide, nodes))
+
+    def add(self, nodes: int, matrix: sparse.csr_array, least_s: Array, lowest: Array, most: Array) -> None:
+        """More nodes, and rows or costs over all nodes: matrix (A, nodes in all), bounds of force as in Arcs."""
+        if nodes:
+            none = np.empty(0, dtype=np.int32)
+            self.solver.addRows(nodes, np.zeros(nodes), np.zeros(nodes), 0, np.zeros(nodes, dtype=np.int32), none, np.empty(0))
+            self.nodes += nodes
+        if len(least_s):
+            most = np.where(np.isfinite(most), most, highspy.kHighsInf)
+            start, index = matrix.indptr[:-1].astype(np.int32), matrix.indices.astype(np.int32)
+            self.solver.addCols(len(least_s), -least_s, lowest, most, matrix.nnz, start, index, matrix.data)
+            self.columns += len(least_s)
+        # What was the optimum still balances, so the primal simplex goes on from there.
+        self.solver.setOptionValue("simplex_strategy", 4)
+
+    def close(self, arcs: Index) -> None:
+        """Take costs from the programme: arcs with a finite bound of force, none of which may be below nothing."""
+        self.most[arcs] = 0.0
+        groups = np.unique(self.group[arcs])
+        mine = np.flatnonzero(np.isin(self.group, groups))
+        total = np.zeros(len(self.few.least_s))
+        np.add.at(total, self.group[mine], self.most[mine])
+        self.share[mine] = self.most[mine] / np.maximum(total[self.group[mine]], 1e-300)
+        self.solver.changeColsBounds(len(groups), groups.astype(np.int32), np.zeros(len(groups)), total[groups])
+
+    def solve(self, budget: Budget = ENDLESS) -> tuple[Array, Array, Array] | None:
+        """Forces of the arcs (C,), of all given or added beyond, and shifts (nodes,); None where no shifts keep the rows.
+
+        Raises Unsolved where HiGHS fails or runs past its budget.
+        """
+        if not self.columns or not self.nodes:
+            return np.zeros(len(self.group)), np.zeros(self.columns - len(self.few.least_s)), np.zeros(self.nodes)
+        left, solver = budget.left(), self.solver
+        tried = f"a programme of {self.nodes} moments and {self.columns} rows"
+        if left <= 0.0:
+            raise Unsolved("kTimeLimit", "Time limit reached", tried)
+        if np.isfinite(left):
+            # The limit is on all that this solver has run.
+            solver.setOptionValue("time_limit", solver.getRunTime() + left)
+        solver.run()
+        status = solver.getModelStatus()
+        if status in (highspy.HighsModelStatus.kUnbounded, highspy.HighsModelStatus.kUnboundedOrInfeasible):
+            return None
+        if status != highspy.HighsModelStatus.kOptimal:
+            raise Unsolved(status.name, solver.modelStatusToString(status), tried)
+        found = solver.getSolution()
+        force, count = np.array(found.col_value), len(self.few.least_s)
+        return force[:count][self.group] * self.share, force[count:], -np.array(found.row_dual)
 
 
 def circulate(arcs: Arcs, wide: Wide, nodes: int, budget: Budget = ENDLESS) -> tuple[Array, Array, Array] | None:
@@ -110,39 +181,18 @@ def circulate(arcs: Arcs, wide: Wide, nodes: int, budget: Budget = ENDLESS) -> t
 
     Raises Unsolved where HiGHS fails or runs past its budget.
     """
-    count = len(arcs.least_s)
-    if not count + len(wide.least_s) or not nodes:
-        return np.zeros(count), np.zeros(len(wide.least_s)), np.zeros(nodes)
-    few, group, share = merged(arcs, nodes)
+    return Circulation(arcs, wide, nodes).solve(budget)
+
+
+def quiet() -> "Quiet":
+    """A solver with the options that are used throughout: one thread, the same steps every time."""
     solver = Quiet()
-    options: dict[str, object] = {
-        "primal_feasibility_tolerance": TOLERANCE,
-        "dual_feasibility_tolerance": TOLERANCE,
-        "solver": "simplex",
-        "simplex_strategy": 1,
-        "presolve": "off",
-        "threads": 1,
-        "parallel": "off",
-        "random_seed": 0,
-    }
-    left = budget.left()
-    tried = f"a programme of {nodes} moments and {len(few.least_s) + len(wide.least_s)} rows"
-    if left <= 0.0:
-        raise Unsolved("kTimeLimit", "Time limit reached", tried)
-    if np.isfinite(left):
-        options["time_limit"] = left
-    for name, value in options.items():
+    for name, value in (
+        ("primal_feasibility_tolerance", TOLERANCE), ("dual_feasibility_tolerance", TOLERANCE), ("solver", "simplex"),
+        ("simplex_strategy", 1), ("presolve", "off"), ("threads", 1), ("parallel", "off"), ("random_seed", 0),
+    ):  # fmt: skip
         solver.setOptionValue(name, value)
-    solver.passModel(_model(few, wide, nodes))
-    solver.run()
-    status = solver.getModelStatus()
-    if status in (highspy.HighsModelStatus.kUnbounded, highspy.HighsModelStatus.kUnboundedOrInfeasible):
-        return None
-    if status != highspy.HighsModelStatus.kOptimal:
-        raise Unsolved(status.name, solver.modelStatusToString(status), tried)
-    found = solver.getSolution()
-    force = np.array(found.col_value)
-    return force[: len(few.least_s)][group] * share, force[len(few.least_s) :], -np.array(found.row_dual)
+    return solver
 
 
 class Quiet(highspy.Highs):

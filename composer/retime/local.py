@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from composer.retime.events import Events
 from composer.retime.flow import ENDLESS, Budget
-from composer.retime.programme import solve
+from composer.retime.parts import Parts
 from composer.retime.reach import reached
 from composer.retime.rows import Rows
 from composer.retime.terms import Terms, contract, cost, spread, tilted
@@ -23,7 +23,7 @@ Flags = NDArray[np.bool_]
 BROKEN_S = 1e-10
 """A row short by no more than this is kept; the polish makes it exact."""
 
-WHOLE_FROM = 0.3
+WHOLE_FROM = 0.6
 """Once this share of all events is in it, growing the programme further costs more than solving the whole."""
 
 
@@ -46,12 +46,15 @@ def least_cost(
     whole: bool = False,
     budget: Budget = ENDLESS,
     slack_price: float = np.inf,
+    parts: Parts | None = None,
 ) -> Least | None:
     """The least-cost shifts of all events, or None where no times satisfy the rows.
 
     free: events to begin with, from an earlier solution; whole: solve the whole at once instead of growing
     slack_price: what a second costs by which a row beyond the plain differences is broken, in strokes
+    parts: what is kept of the last solution of these rows less some at their end
     """
+    parts = Parts() if parts is None else parts
     count = len(events.written_s)
     free = np.zeros(count, dtype=bool) if free is None else free.copy()
     free |= whole
@@ -76,7 +79,7 @@ def least_cost(
         free[events.own_hit[events.hits :][following]] = True
         chosen = inside(rows, free)
         left = contract(events, priced, free)
-        found = solve(rows, chosen, np.flatnonzero(free), left, budget, slack_price)
+        found = parts.solve(rows, chosen, np.flatnonzero(free), left, budget, slack_price)
         if found is None:
             return None
         shift = np.zeros(count)

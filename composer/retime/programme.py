@@ -1,12 +1,12 @@
 """The linear programme over some events and rows: made smaller, solved as a circulation, and told with its duals."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy import sparse
 
-from composer.retime.flow import ENDLESS, Arcs, Budget, Unsolved, Wide, circulate
+from composer.retime.flow import ENDLESS, Arcs, Budget, Circulation, Unsolved, Wide, between
 from composer.retime.rows import ABOVE_ROW, HOLD_ROW, MOVE_ROW, Rows
 from composer.retime.terms import Contracted
 
@@ -52,6 +52,140 @@ class _Starts:
     led: Flags
 
 
+class Programme:
+    """A programme that stays in the solver: what is added is solved for from where it was. Numbers are those of the whole."""
+
+    def __init__(self, rows: Rows, chosen: Index, events: Index, terms: Contracted, slack_price: float = np.inf):
+        """As `solve` takes them."""
+        self.events, self.chosen, self.price = events, chosen, slack_price
+        self.wanted = _wanted(terms, rows.matrix.shape[1])
+        n, m = len(events), len(chosen)
+        number = np.full(rows.matrix.shape[1] + 1, -1, dtype=np.int64)
+        number[events] = np.arange(n)
+        at, behind = number[terms.event], number[terms.behind]
+        weight = np.maximum(terms.weight, LIGHTEST) * SCALE
+        matrix = sparse.csr_array(rows.matrix[chosen][:, events])
+        least, kind = rows.least[chosen], rows.kind[chosen]
+
+        row_later, row_earlier, plain = _pairs(matrix)
+        gone, term_of = _starts(matrix, kind, row_later, row_earlier, least, at, behind, weight)
+        kept_row = np.ones(m, dtype=bool)
+        kept_row[gone.rest] = kept_row[gone.move] = False
+        kept_row = np.flatnonzero(kept_row)
+        kept_term = np.ones(len(at), dtype=bool)
+        kept_term[term_of] = False
+        kept_term = np.flatnonzero(kept_term)
+
+        pair, other = kept_row[plain[kept_row]], kept_row[~plain[kept_row]]
+        price = np.where((kind >= ABOVE_ROW) & np.isfinite(slack_price), min(slack_price, 1e300) * SCALE, np.inf)
+        self.clock, self.led = ~gone.led, gone.led & (gone.move_s <= 0.0)
+        clock, led = self.clock, self.led
+        none, zero = np.full(len(gone.start), -1), np.zeros(len(gone.start))
+        parts = [
+            # The whole way from the rest's beginning to the hit.
+            (gone.hit, gone.before, gone.rest_s + gone.move_s, zero, zero + np.inf),
+            # By the clock: what it costs to be pushed later, and to leave earlier.
+            (none[clock], gone.before[clock], gone.rest_s[clock], zero[clock], gone.weight[clock]),
+            (gone.hit[clock], none[clock], gone.move_s[clock], zero[clock], gone.weight[clock]),
+            # By its hit: what it costs to be pushed nearer; that it must leave earlier than written costs the same anywhere.
+            (gone.hit[led], gone.before[led], gone.rest_s[led], zero[led], gone.weight[led]),
+            (at[kept_term], behind[kept_term], np.zeros(len(kept_term)), -weight[kept_term], weight[kept_term]),
+            (row_later[pair], row_earlier[pair], least[pair], np.zeros(len(pair)), price[pair]),
+        ]
+        nodes = np.ones(n, dtype=bool)
+        nodes[gone.start] = False
+        nodes = np.flatnonzero(nodes)
+        name = np.full(n + 1, -1)
+        name[nodes] = np.arange(len(nodes))
+        later, earlier, *rest = (np.concatenate([part[k] for part in parts]) for k in range(5))
+        arcs = Arcs(name[later], name[earlier], *rest)
+        wide = Wide(sparse.csr_array(matrix[other][:, nodes]), least[other], price[other])
+        self.circulation = Circulation(arcs, wide, len(nodes))
+        self.back = np.zeros(len(gone.start), dtype=bool)
+        self.sizes = np.cumsum([len(part[2]) for part in parts])
+        self.pair_rows, self.other_rows = chosen[pair], chosen[other]
+        # What was added: a row's number, -1 for a cost.
+        self.added = np.empty(0, dtype=np.int64)
+        self.nodes = events[nodes]
+        whole = np.append(events, -1)
+        self.gone = replace(
+            gone, start=events[gone.start], before=whole[gone.before], hit=whole[gone.hit], rest=chosen[gone.rest],
+            move=chosen[gone.move],
+        )  # fmt: skip
+
+    def grow(self, rows: Rows, chosen: Index, events: Index, terms: Contracted) -> bool:
+        """Add what is new to the programme in the solver; False where something that was given has gone."""
+        new_rows = np.setdiff1d(chosen, self.chosen, assume_unique=True)
+        new_events = np.setdiff1d(events, self.events, assume_unique=True)
+        if len(chosen) - len(new_rows) != len(self.chosen) or len(events) - len(new_events) != len(self.events):
+            return False
+        count = rows.matrix.shape[1]
+        wanted = _wanted(terms, count)
+        if not np.array_equal(wanted[:, self.events], self.wanted[:, self.events]):
+            return False
+        part = rows.matrix[new_rows]
+        # Starts that needed no balance of their own do once a row speaks of them.
+        spoken = np.zeros(count, dtype=bool)
+        spoken[part.indices] = True
+        back = np.flatnonzero(spoken[self.gone.start] & ~self.back)
+        starts = self.gone.start[back]
+        self._close(back)
+        self.nodes = np.concatenate((self.nodes, starts, new_events))
+        priced = np.concatenate((starts, new_events[wanted[2, new_events] > 0.0]))
+        again = np.concatenate((self.gone.rest[back], self.gone.move[back], new_rows))
+        name = np.full(count + 1, -1)
+        name[self.nodes] = np.arange(len(self.nodes))
+        costs = between(name[priced], name[wanted[0, priced].astype(np.int64)], len(self.nodes))
+        matrix = sparse.vstack([costs, sparse.csr_array(rows.matrix[again][:, self.nodes])], format="csr")
+        weight, none = np.maximum(wanted[1, priced], LIGHTEST) * SCALE, np.zeros(len(again))
+        price = np.full(len(again), np.inf)
+        if np.isfinite(self.price):
+            price[rows.kind[again] >= ABOVE_ROW] = self.price * SCALE
+        self.circulation.add(
+            len(starts) + len(new_events), matrix, np.concatenate((np.zeros(len(priced)), rows.least[again])),
+            np.concatenate((-weight, none)), np.concatenate((weight, price)),
+        )  # fmt: skip
+        self.added = np.concatenate((self.added, np.full(len(priced), -1), again))
+        self.events, self.chosen, self.wanted = events, chosen, wanted
+        return True
+
+    def _close(self, back: Index) -> None:
+        """Take out what starts cost that get a balance of their own; the way through their rest and move stays true."""
+        self.back[back] = True
+        rank_clock, rank_led = np.cumsum(self.clock) - 1, np.cumsum(self.led) - 1
+        clock, led = back[self.clock[back]], back[self.led[back]]
+        arcs = [self.sizes[0] + rank_clock[clock], self.sizes[1] + rank_clock[clock], self.sizes[2] + rank_led[led]]
+        if len(back):
+            self.circulation.close(np.concatenate(arcs))
+
+    def solve(self, rows: Rows, budget: Budget = ENDLESS) -> Solved | None:
+        """The least cost, None where no shifts keep the rows. Raises Unsolved where HiGHS fails or runs past its budget."""
+        found = self.circulation.solve(budget)
+        if found is None:
+            return None
+        force, beyond, at_nodes = found
+        gone, clock, led = self.gone, self.clock, self.led
+        shift = np.zeros(rows.matrix.shape[1] + 1)
+        shift[self.nodes] = at_nodes
+        low, high = shift[gone.before] + gone.rest_s, shift[gone.hit] - gone.move_s
+        own = np.maximum(np.minimum(np.where(gone.led, shift[gone.hit], 0.0), high), low)
+        shift[gone.start[~self.back]] = own[~self.back]
+
+        through, later, earlier, nearer, _, own = np.split(force, self.sizes[:-1])
+        dual = np.zeros(len(rows.least))
+        dual[self.pair_rows], dual[self.other_rows] = own, beyond[: len(self.other_rows)]
+        is_row = self.added >= 0
+        dual[gone.rest] = dual[gone.move] = through
+        np.add.at(dual, self.added[is_row], beyond[len(self.other_rows) :][is_row])
+        dual[gone.rest[clock]] += later
+        dual[gone.move[clock]] += earlier
+        dual[gone.rest[led]] += nearer
+        must = gone.led & ~led & ~self.back
+        dual[gone.move[must]] += gone.weight[must]
+        dual = np.maximum(dual[self.chosen], 0.0) / SCALE
+        return Solved(shift[self.events], float(dual @ rows.least[self.chosen]), dual)
+
+
 def solve(
     rows: Rows, chosen: Index, events: Index, terms: Contracted, budget: Budget = ENDLESS, slack_price: float = np.inf
 ) -> Solved | None:
@@ -60,66 +194,14 @@ def solve(
     slack_price: finite: what a second costs by which a row that speaks of more than two events is broken, in strokes
     Raises Unsolved where HiGHS fails or runs past its budget.
     """
-    n, m = len(events), len(chosen)
-    number = np.full(rows.matrix.shape[1], -1, dtype=np.int64)
-    number[events] = np.arange(n)
-    at, behind = number[terms.event], np.where(terms.behind >= 0, number[terms.behind], -1)
-    weight = np.maximum(terms.weight, LIGHTEST) * SCALE
-    matrix = sparse.csr_array(rows.matrix[chosen][:, events])
-    least, kind = rows.least[chosen], rows.kind[chosen]
+    return Programme(rows, chosen, events, terms, slack_price).solve(rows, budget)
 
-    row_later, row_earlier, plain = _pairs(matrix)
-    gone, term_of = _starts(matrix, kind, row_later, row_earlier, least, at, behind, weight)
-    kept_row = np.ones(m, dtype=bool)
-    kept_row[gone.rest] = kept_row[gone.move] = False
-    kept_row = np.flatnonzero(kept_row)
-    kept_term = np.ones(len(at), dtype=bool)
-    kept_term[term_of] = False
-    kept_term = np.flatnonzero(kept_term)
 
-    pair, other = kept_row[plain[kept_row]], kept_row[~plain[kept_row]]
-    price = np.where((kind >= ABOVE_ROW) & np.isfinite(slack_price), min(slack_price, 1e300) * SCALE, np.inf)
-    clock, led = ~gone.led, gone.led & (gone.move_s <= 0.0)
-    none, zero = np.full(len(gone.start), -1), np.zeros(len(gone.start))
-    parts = [
-        # The whole way from the rest's beginning to the hit.
-        (gone.hit, gone.before, gone.rest_s + gone.move_s, zero, zero + np.inf),
-        # By the clock: what it costs to be pushed later, and to leave earlier.
-        (none[clock], gone.before[clock], gone.rest_s[clock], zero[clock], gone.weight[clock]),
-        (gone.hit[clock], none[clock], gone.move_s[clock], zero[clock], gone.weight[clock]),
-        # By its hit: what it costs to be pushed nearer; that it must leave earlier than written costs the same anywhere.
-        (gone.hit[led], gone.before[led], gone.rest_s[led], zero[led], gone.weight[led]),
-        (at[kept_term], behind[kept_term], np.zeros(len(kept_term)), -weight[kept_term], weight[kept_term]),
-        (row_later[pair], row_earlier[pair], least[pair], np.zeros(len(pair)), price[pair]),
-    ]
-    nodes = np.ones(n, dtype=bool)
-    nodes[gone.start] = False
-    nodes = np.flatnonzero(nodes)
-    name = np.full(n + 1, -1)
-    name[nodes] = np.arange(len(nodes))
-    later, earlier, *rest = (np.concatenate([part[k] for part in parts]) for k in range(5))
-    arcs = Arcs(name[later], name[earlier], *rest)
-    found = circulate(arcs, Wide(sparse.csr_array(matrix[other][:, nodes]), least[other], price[other]), len(nodes), budget)
-    if found is None:
-        return None
-    force, wide, at_nodes = found
-    shift = np.zeros(n)
-    shift[nodes] = at_nodes
-    padded = np.append(shift, 0.0)
-    low, high = padded[gone.before] + gone.rest_s, padded[gone.hit] - gone.move_s
-    shift[gone.start] = np.maximum(np.minimum(np.where(gone.led, padded[gone.hit], 0.0), high), low)
-
-    through, later, earlier, nearer, _, own = np.split(force, np.cumsum([len(part[2]) for part in parts])[:-1])
-    dual = np.zeros(m)
-    dual[pair], dual[other] = own, wide
-    dual[gone.rest] = dual[gone.move] = through
-    dual[gone.rest[clock]] += later
-    dual[gone.move[clock]] += earlier
-    dual[gone.rest[led]] += nearer
-    must = gone.led & ~led
-    dual[gone.move[must]] += gone.weight[must]
-    dual = np.maximum(dual, 0.0) / SCALE
-    return Solved(shift, float(dual @ least), dual)
+def _wanted(terms: Contracted, count: int) -> Array:
+    """(3, N) of each event whose shift a term prices: what it is counted from (-1: nothing), its weight, and 1."""
+    wanted = np.zeros((3, count))
+    wanted[0, terms.event], wanted[1, terms.event], wanted[2, terms.event] = terms.behind, terms.weight, 1.0
+    return wanted
 
 
 def _pairs(matrix: sparse.csr_array) -> tuple[Index, Index, Flags]:

@@ -5,7 +5,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy import sparse
 
-from composer.retime.flow import TOLERANCE, Budget, Quiet, Unsolved, between
+from composer.retime.flow import Budget, Unsolved, between, quiet
 from composer.retime.rows import Rows
 from composer.retime.terms import Contracted
 
@@ -33,12 +33,8 @@ class Resident:
         below = sparse.hstack([kept, sparse.csr_array((len(chosen), 2 * self.terms))])
         left = sparse.vstack([sparse.hstack([apart, -one, one]), below])
         matrix = sparse.hstack([left, slack], format="csr")
-        self.solver = Quiet()
-        for name, value in (
-            ("primal_feasibility_tolerance", TOLERANCE), ("dual_feasibility_tolerance", 1e-9), ("solver", "simplex"),
-            ("simplex_strategy", 1), ("presolve", "off"), ("threads", 1), ("parallel", "off"), ("random_seed", 0),
-        ):  # fmt: skip
-            self.solver.setOptionValue(name, value)
+        self.solver = quiet()
+        self.solver.setOptionValue("dual_feasibility_tolerance", 1e-9)
         model = highspy.HighsLp()
         model.num_row_, model.num_col_ = matrix.shape
         model.col_cost_ = np.concatenate((np.zeros(self.n), self.weight, self.weight, [price]))
@@ -79,6 +75,11 @@ class Resident:
             return None
         found = np.array(solver.getSolution().col_value)
         return found[: self.n], float(solver.getInfo().objective_function_value - self.price * found[-1]), float(found[-1])
+
+    def reprice(self, price: float) -> None:
+        """Another price."""
+        self.price = price
+        self.solver.changeColCost(self.n + 2 * self.terms, price)
 
     def forces(self) -> tuple[Array, Array]:
         """The dual values, in strokes, of the rows that stay and of those that passed, at the last solution."""

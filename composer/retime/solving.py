@@ -11,6 +11,7 @@ from composer.retime.air_search import Found, better
 from composer.retime.cuts import duty_rows, duty_spans
 from composer.retime.flow import ENDLESS, Budget, Unsolved
 from composer.retime.local import Least, least_cost
+from composer.retime.parts import Parts
 from composer.retime.polish import polish
 from composer.retime.rows import ABOVE_ROW, AIR_ROW, Rows, joined, no_rows, picked
 from composer.retime.stage import Stage, at_times
@@ -111,11 +112,15 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
     rows, given_up, no_air = stage.rows, 0, False
     coils: set[tuple[int, int]] = set()
     air: set[tuple[int, int]] = set()
-    least, spans = None, []
+    least, spans, parts = None, [], Parts()
+    # What is asked too much of as written will most likely bind.
+    coils.update(hot := duty_spans(stage.tracks, rig, abilities, coils))
+    rows = joined([rows, duty_rows(hot, stage.tracks, events, rig, abilities)])
     for number in range(ROUNDS):
         budget.say(f"round {number + 1}: {len(rows.least)} rows")
-        least = least_cost(events, rows, stage.terms, free, whole, budget)
+        least = least_cost(events, rows, stage.terms, free, whole, budget, parts=parts)
         if least is None:
+            parts = Parts()
             kept = _keepable(stage, rows, whole, budget)
             dropped = len(rows.least) - len(kept.least)
             if not dropped:
