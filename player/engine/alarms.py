@@ -111,51 +111,66 @@ class Watch:
         self.lies = np.zeros(fibers, dtype=bool)
         self.alarmed = np.zeros(fibers, dtype=bool)
         self._fastest = fastest
+        # A ring a fiber: boards sense each at their own moments. What is newest stands apart, so that no look is sorted.
         self._at = np.full((KEEP, fibers), -np.inf)
         self._share = np.zeros((KEEP, fibers))
         self._low, self._high = np.zeros((KEEP, fibers)), np.zeros((KEEP, fibers))
+        self._next = np.zeros(fibers, dtype=np.int64)
+        self._last_s, self._last = np.full(fibers, -np.inf), np.zeros(fibers)
         self._off = np.zeros(fibers)
         self._raised: set[Raised] = set()
 
+    def due(self, at_s: float, fibers: Index) -> bool:
+        """Whether any of fibers (S,) was last looked at long enough ago."""
+        return bool((at_s - self._last_s[fibers] >= EVERY_S).any())
+
     def look(self, at_s: float, fibers: Index, share: Array, low: Array, high: Array) -> list[Raised]:
         """What was sensed of fibers (S,) as shares of stroke, and the zone in which it was wanted; alarms that are new."""
-        due = at_s - self._at[0, fibers] >= EVERY_S
-        fibers, share, low, high = fibers[due], share[due], low[due], high[due]
+        due = at_s - self._last_s[fibers] >= EVERY_S
+        if not due.all():
+            fibers, share, low, high = fibers[due], share[due], low[due], high[due]
         if not fibers.size:
             return []
-        since = np.minimum(at_s - self._at[0, fibers], 10.0)
-        known = np.isfinite(self._at[0, fibers])
-        step = np.where(known, np.abs(share - self._share[0, fibers]), 0.0)
-        jumps = known & (step > JUMP + 2.0 * self._fastest[fibers] * since) & ((share > high + OFF) | (share < low - OFF))
+        since = np.minimum(at_s - self._last_s[fibers], 10.0)
+        known = np.isfinite(self._last_s[fibers])
+        step = np.where(known, np.abs(share - self._last[fibers]), 0.0)
+        far = (share > high + OFF) | (share < low - OFF)
+        jumps = known & (step > JUMP + 2.0 * self._fastest[fibers] * since) & far
+        place = self._next[fibers]
         for kept, new in ((self._at, at_s), (self._share, share), (self._low, low), (self._high, high)):
-            kept[1:, fibers] = kept[:-1, fibers]
-            kept[0, fibers] = new
+            kept[place, fibers] = new
+        self._next[fibers] = (place + 1) % KEEP
+        self._last_s[fibers], self._last[fibers] = at_s, share
         rails = (share >= RAIL) & (high < 1.0 - OFF)
         # What lies is told once, and is not believed about leaks and valves from then on.
         found = self._new("rail", fibers[rails]) + self._new("jump", fibers[jumps & ~rails])
         self.lies[fibers[rails | jumps]] = True
         honest = ~self.lies[fibers]
-        leaks, stuck = self._held(at_s, fibers)
-        found += self._new("leak", fibers[leaks & honest]) + self._new("stuck", fibers[stuck & honest & ~leaks])
+        # Memory is searched for those alone that are off now: of thousands of fibers mostly none.
+        off = honest & (far | (share < low - LEAK))
+        if off.any():
+            leaks, stuck = self._held(at_s, fibers[off], share[off], low[off], far[off])
+            found += self._new("leak", fibers[off][leaks]) + self._new("stuck", fibers[off][stuck & ~leaks])
         return found + self._new("drift", fibers[self._drifts(fibers, share, low, high, since) & honest])
 
     def forget(self) -> None:
         """As if nothing had been sensed: after all have been to rest. What was raised stays raised."""
         self._at[:] = -np.inf
+        self._last_s[:] = -np.inf
         self._off[:] = 0.0
 
-    def _held(self, at_s: float, fibers: Index) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
-        """Which fibers leak, and which stand though they should move."""
+    def _held(
+        self, at_s: float, fibers: Index, now: Array, least: Array, far: NDArray[np.bool_]
+    ) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
+        """Which fibers (S,) leak, and which stand though they should move; now, least: sensed and wanted; far: whether far off."""
         share, low, high = self._share[:, fibers], self._low[:, fibers], self._high[:, fibers]
         near, long = self._lately(at_s, fibers, HOLD_S)
         still = (_most(high, near) - _least(low, near) < STILL) & (_least(low, near) > HELD)
-        fallen = (_most(share, near) - share[0] > LEAK) & (share[0] < low[0] - LEAK)
-        leaks = long & still & fallen
+        leaks = long & still & (_most(share, near) - now > LEAK) & (now < least - LEAK)
         near, long = self._lately(at_s, fibers, MOVE_S)
         wanted = _most(low, near) - _least(high, near) > STUCK_WANTED
-        away = (share[0] > high[0] + OFF) | (share[0] < low[0] - OFF)
         stands = _most(share, near) - _least(share, near) < STUCK_MOVED
-        return leaks, long & wanted & away & stands
+        return leaks, long & wanted & far & stands
 
     def _lately(self, at_s: float, fibers: Index, within_s: float) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
         """Which looks (KEEP, S) are of late, and for which fibers (S,) they are of nearly all that time."""

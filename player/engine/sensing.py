@@ -45,7 +45,8 @@ class Sensing:
         self.last[event.fibers] = self.sensed[event.fibers] = event.strain
         self.newest_s[event.driver] = event.time_s
         self.errors.sense(event.time_s, event.fibers, event.strain)
-        zone = self.errors.around(event.time_s, SLACK_S, event.fibers) if watched else None
+        looks = watched and self.watch.due(event.time_s, event.fibers)
+        zone = self.errors.around(event.time_s, SLACK_S, event.fibers) if looks else None
         if zone is None:
             return []
         stroke = self._stroke[event.fibers]
@@ -54,6 +55,8 @@ class Sensing:
         self.standing.sense(event.fibers, share, low, high, self.watch.alarmed)
         if self.trim is not None:
             self.trim.sense(event.time_s, event.fibers, share, low, high, self.watch.alarmed)
+        if not found:
+            return []
         where = {fiber: number for number, fiber in enumerate(event.fibers.tolist())}
         return [(one, self._drivers[one.fiber], self._said(one, share[where[one.fiber]], low, high, where)) for one in found]
 

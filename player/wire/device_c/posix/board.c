@@ -451,6 +451,7 @@ int main(int count, char **words)
         return failed("threads", "the system gives none");
     urgent(due, PRIORITY);
     urgent(pthread_self(), PRIORITY - 1);
+    urgent(fibers, PRIORITY - 2);
     memset(&action, 0, sizeof action);
     action.sa_handler = stop;
     sigaction(SIGINT, &action, NULL);
