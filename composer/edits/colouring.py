@@ -26,6 +26,9 @@ Coloured = tuple[int, int, str]
 BLOCKS = {"phrase": "move", "section": "entry"}
 """What a statement opens for the indented lines below it, by the names of the grammar's starts."""
 
+LONGEST = 4000
+"""Characters of a line up to which it is parsed at every keystroke; the words of a longer one are what they look like."""
+
 _VALUES = {
     "NUMBER": "number", "INTEGER": "number", "DURATION": "number", "TARGET": "number", "HERTZ": "number", "SPEED": "number",
     "SIGNATURE": "number", "PLACE": "place", "NAME": "name", "PHRASE_NAME": "phrase", "SELECTION": "fiber", "STRING": "text",
@@ -99,7 +102,7 @@ def block_after(line: str, block: str) -> str:
     body = body_of(line)
     word = body.lstrip("\ufeff").split(maxsplit=1)[0]
     if word not in STATEMENTS:
-        tree = parse_line("statement", body) if len(body) <= most("line") else None
+        tree = parse_line("statement", body) if len(body) <= LONGEST else None
         if isinstance(tree, Misfit):
             word = tree.hint.removeprefix("did you mean '").removesuffix("'?")
     return BLOCKS.get(word, "")
@@ -126,10 +129,11 @@ def colour_line(line: str, block: str) -> tuple[Coloured, ...]:
     found: list[Coloured] = []
     if body.strip():
         shown = body.replace("\ufeff", " ")
-        tokens, stop = tokens_of(block, shown) if block else ((), 0)
+        parsed = bool(block) and len(line) <= LONGEST
+        tokens, stop = tokens_of(block, shown) if parsed else ((), 0)
         for number, token in enumerate(tokens):
             found += _token(token, class_of(token, block, number))
-        found += _rest(shown, stop, bool(block))
+        found += _rest(shown, stop, parsed)
     comment = line.find("#", len(body))
     if comment >= 0:
         found.append((comment, len(line.rstrip("\r")), "comment"))

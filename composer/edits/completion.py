@@ -5,11 +5,10 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from difflib import SequenceMatcher
 
-from composer.edits.colouring import blank, block_of, blocks_until, class_of
+from composer.edits.colouring import LONGEST, blank, block_of, blocks_until, class_of
 from composer.edits.language import UNITS, word_at
 from composer.edits.made import Made
 from composer.edits.names import Names, names_of
-from composer.score.bounds import most as most_of
 from composer.score.grammar import Partly, body_of, parse_partly
 from composer.score.words import OPTIONS, SAMPLES, STATEMENTS, TARGET_UNITS
 from composer.score.words import UNITS as DURATION_UNITS
@@ -21,7 +20,6 @@ NEAR = 0.6
 MOST_COMPARED = 5000
 """Names that are held against what is typed letter by letter; beyond, only those that contain it."""
 
-_TAIL = re.compile(r'[^\s,="]*\Z')
 _HEAD = re.compile(r'[^\s,="]*')
 _NUMBER = re.compile(r"-?[0-9]+(\.[0-9]*|(\+[0-9]*)?/[0-9]*)?")
 
@@ -60,7 +58,7 @@ def complete(text: str, line: int, column: int, made: Made | None = None, most: 
     `made` is the last state that could be read, for fibers, groups and partners; names in the text itself count as typed.
     """
     lines = text.split("\n")
-    if not 0 < line <= len(lines) or len(lines[line - 1]) > most_of("line"):
+    if not 0 < line <= len(lines) or len(lines[line - 1]) > LONGEST:
         return ()
     row = lines[line - 1].removesuffix("\r")
     head = row[: max(0, column - 1)].replace("\ufeff", " ")
@@ -73,7 +71,7 @@ def complete(text: str, line: int, column: int, made: Made | None = None, most: 
         block = block_of(row, block)
     if not block:
         return ()
-    start = head.rindex('"') if head.count('"') % 2 else _TAIL.search(head).start()
+    start = head.rindex('"') if head.count('"') % 2 else _word_start(head)
     before, typed = head[:start], head[start:]
     partly = parse_partly(block, before)
     if partly.stop < len(before.rstrip()):
@@ -94,6 +92,18 @@ def complete(text: str, line: int, column: int, made: Made | None = None, most: 
 
 _ORDER = {name.upper(): n for n, name in enumerate((*STATEMENTS, *SHAPES, *OPTIONS))}
 _FIRST = ("SELECTION", "PHRASE_NAME", "DURATION", "PLACE", "REST", "FULL", "HOLD", "TARGET")
+_LONGEST = 64
+"""Characters of a word up to which it is held against names letter by letter."""
+
+
+def _word_start(head: str) -> int:
+    """Where the word begins that a text ends with."""
+    at = len(head)
+    while at and not head[at - 1].isspace() and head[at - 1] not in ',="':
+        at -= 1
+    return at
+
+
 _GO_ON = ("FROM", "EVERY", "TO", "WITHIN", "UNTIL", "WAIT")
 """Words that go on with what has just been written, before those that begin something else."""
 
@@ -130,6 +140,7 @@ def _ranked(offers: list[_Bare], typed: str) -> list[_Bare]:
     if not typed:
         return offers
     wanted = typed.lower()
+    short = len(wanted) <= _LONGEST and len(offers) <= MOST_COMPARED
     ranks: list[tuple[float, int, _Bare]] = []
     for n, offer in enumerate(offers):
         name, other = offer[0].lower(), offer[3].lower()
@@ -141,7 +152,7 @@ def _ranked(offers: list[_Bare], typed: str) -> list[_Bare]:
             rank = 2.0
         elif wanted in name and len(wanted) > 1:
             rank = 3.0
-        elif len(offers) <= MOST_COMPARED and (like := SequenceMatcher(None, wanted, name).ratio()) >= NEAR:
+        elif short and (like := SequenceMatcher(None, wanted, name).ratio()) >= NEAR:
             rank = 5.0 - like
         else:
             continue

@@ -7,13 +7,12 @@ import numpy as np
 from lark import Token
 
 from composer.edits.abilities import limits_of
-from composer.edits.colouring import blocks_until, tokens_of
+from composer.edits.colouring import LONGEST, blocks_until, tokens_of
 from composer.edits.language import UNITS, word_at
 from composer.edits.made import Made
 from composer.faults import Faults
 from composer.report.sentences import named
 from composer.rig.select import Selector, UnknownName
-from composer.score.bounds import most
 from composer.score.expand_lines import TARGET_UNITS as IN_TRACKS
 from composer.score.expand_lines import phrase_length
 from composer.score.expand_ways import in_strain
@@ -61,7 +60,7 @@ def explain(text: str, line: int, column: int, made: Made | None = None) -> Hove
     `made` is the last state that could be read; without one only the language itself is explained.
     """
     lines = text.split("\n")
-    if not 0 < line <= len(lines) or len(lines[line - 1]) > most("line"):
+    if not 0 < line <= len(lines) or len(lines[line - 1]) > LONGEST:
         return None
     row = lines[line - 1].removesuffix("\r").replace("\ufeff", " ")
     body, block = body_of(row), blocks_until(lines, line)

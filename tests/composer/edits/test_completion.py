@@ -6,6 +6,7 @@ from hypothesis import strategies as st
 
 from composer.edits.colouring import CLASSES, colours_of
 from composer.edits.completion import complete
+from composer.edits.hover import explain
 from composer.score.words import STATEMENTS
 
 from .making import DEMOS, demo, text_of
@@ -123,3 +124,14 @@ def test_every_word_of_the_language_in_the_demo_scores_is_offered_where_it_stand
             ):
                 whole = "\n".join([*text.split("\n")[: number - 1], line[: start + 1], *text.split("\n")[number:]])
                 assert line[start:end] in {one.text for one in complete(whole, number, start + 2, state)}, line
+
+
+@pytest.mark.parametrize("piece", ["x", "x ", "x, ", "reed.1, ", '"', "a=", "* ", "0.8 "])
+def test_a_line_as_long_as_a_line_may_be_is_completed_coloured_and_explained(piece):
+    state = demo("estuary")
+    for line in (piece * (90_000 // len(piece)), "  " + piece * (90_000 // len(piece)), "  " + "x" * 90_000 + " " + piece):
+        text = f"section s at 1:1\n{line}"
+        assert colours_of(text).lines[1] == line
+        for column in (3, 45_000, len(line) + 1):
+            complete(text, 2, column, state)
+            explain(text, 2, column, state)

@@ -259,7 +259,7 @@ def test_off_the_grid_a_line_lands_within_a_thousandth_of_a_count_or_a_ninety_si
     assert min(abs(end - held.at_s - by) for end in after) < 1.5 * 60 / 45 / 96
 
 
-@settings(max_examples=80, deadline=None, suppress_health_check=list(HealthCheck))
+@settings(max_examples=50, deadline=None, suppress_health_check=list(HealthCheck))
 @given(text=scores(), pick=st.integers(0, 10**6), strain=st.floats(0.0, 0.3))
 def test_a_strain_dragged_is_reached_to_a_step_of_its_unit(make_rig, text, pick, strain):
     rig = make_rig(4)
