@@ -281,7 +281,8 @@ class Door:
         self._fronts.remove(front)
         self._poll.unregister(front.socket)
         front.socket.close()
-        self._told(how)
+        if front.greeted or how != "gone":
+            self._told(how)
         if front.commands:
             self.left()
             self._say_who()

@@ -78,8 +78,24 @@ def runs() -> tuple[str, ...]:
     """Names of this user's runs, oldest first. Raises NoRoom."""
     sweep()
     at = folder()
-    found = [entry for entry in os.scandir(at) if entry.name.endswith(ENDING)]
+    found = [entry for entry in os.scandir(at) if entry.name.endswith(ENDING) and _listens(entry.path)]
     return tuple(entry.name.removesuffix(ENDING) for entry in sorted(found, key=lambda one: one.stat().st_mtime))
+
+
+def _listens(path: str) -> bool:
+    """Whether somebody listens there; where nobody ever will again the socket is done away with."""
+    with socket.socket(socket.AF_UNIX, socket.SOCK_STREAM) as tried:
+        tried.setblocking(False)
+        try:
+            tried.connect(path)
+        except ConnectionRefusedError:
+            with suppress(OSError):
+                os.unlink(path)
+            return False
+        except OSError:
+            # It is there, and busy.
+            return True
+    return True
 
 
 def path_of(name: str) -> str:

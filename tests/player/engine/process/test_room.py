@@ -1,9 +1,11 @@
 """The folder of a user's runs: theirs alone, or none."""
 
 import os
+import shutil
 import stat
 import subprocess
 import sys
+import tempfile
 
 import pytest
 
@@ -66,4 +68,14 @@ def test_sockets_of_killed_runs_are_swept_away_and_others_stay(here):
             pass
     sweep()
     assert sorted(os.listdir(at)) == ["notes.txt", f"now-{os.getpid()}.run"]
-    assert runs() == (f"now-{os.getpid()}",)
+
+
+def test_only_runs_that_listen_are_listed_though_their_process_may_not_be_reaped_yet(here, monkeypatch):
+    # A folder that is short enough for a socket's path.
+    short = tempfile.mkdtemp(prefix="runs-")
+    monkeypatch.setenv("XDG_RUNTIME_DIR", short)
+    gone, stays = listen(f"gone-{os.getpid()}"), listen(f"stays-{os.getpid()}")
+    gone.close()
+    assert runs() == (f"stays-{os.getpid()}",) and os.listdir(folder()) == [f"stays-{os.getpid()}.run"]
+    stays.close()
+    shutil.rmtree(short)
