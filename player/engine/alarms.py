@@ -162,7 +162,7 @@ class Watch:
     def _held(
         self, at_s: float, fibers: Index, now: Array, least: Array, far: NDArray[np.bool_]
     ) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
-        """Which fibers (S,) leak, and which stand though they should move; now, least: sensed and wanted; far: whether it is."""
+        """Which fibers (S,) leak, and which stand though they should move; now, least: sensed and wanted; far: or far off."""
         share, low, high = self._share[:, fibers], self._low[:, fibers], self._high[:, fibers]
         near, long = self._lately(at_s, fibers, HOLD_S)
         still = (_most(high, near) - _least(low, near) < STILL) & (_least(low, near) > HELD)
