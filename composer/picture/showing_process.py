@@ -2,15 +2,13 @@
 
 import multiprocessing
 import sys
+import threading
 from collections.abc import Callable
+from contextlib import suppress
 from multiprocessing.connection import Connection
 from typing import Any
 
-from PySide6.QtCore import QObject, QTimer, Signal
-
-LOOK_MS = 25
-MOST_AT_ONCE = 64
-"""Messages taken between two frames."""
+from PySide6.QtCore import QObject, Signal
 
 
 def _work(to_window: Connection, job: Callable[..., None], given: tuple[Any, ...]) -> None:
@@ -31,14 +29,15 @@ class Beside(QObject):
 
     said = Signal(object)
     done = Signal(bool)
+    _arrived = Signal(int, object)
+    _closed = Signal(int, bool)
 
     def __init__(self, parent: QObject | None = None):
         super().__init__(parent)
         self._process: multiprocessing.process.BaseProcess | None = None
-        self._from: Connection | None = None
-        self._timer = QTimer(self)
-        self._timer.setInterval(LOOK_MS)
-        self._timer.timeout.connect(self._look)
+        self._number = 0
+        self._arrived.connect(self._hand_on)
+        self._closed.connect(self._ended)
 
     @property
     def busy(self) -> bool:
@@ -50,43 +49,37 @@ class Beside(QObject):
         self.stop()
         # A fresh interpreter: a forked one would have the window's own threads cut off in it.
         context = multiprocessing.get_context("spawn")
-        self._from, to_window = context.Pipe(duplex=False)
+        listening, to_window = context.Pipe(duplex=False)
         self._process = context.Process(target=_work, args=(to_window, job, given), daemon=True)
         self._process.start()
         to_window.close()
-        self._timer.start()
+        # A long message takes as long as the process takes to send it: the window's thread does not wait for that.
+        threading.Thread(target=self._listen, args=(listening, self._process, self._number), daemon=True).start()
 
     def stop(self) -> None:
         """End the job; what it still had to tell is not heard."""
         process, self._process = self._process, None
-        self._timer.stop()
-        if self._from is not None:
-            self._from.close()
-            self._from = None
+        self._number += 1
         if process is not None:
             process.kill()
+
+    def _listen(self, listening: Connection, process: multiprocessing.process.BaseProcess, number: int) -> None:
+        """Hand on all that a process tells, until it has gone; in a thread of its own."""
+        try:
+            with listening, suppress(EOFError, OSError):
+                while True:
+                    self._arrived.emit(number, listening.recv())
+            process.join()
+            self._closed.emit(number, process.exitcode == 0)
+        except RuntimeError:
+            # The window has gone, and this object with it.
             process.join()
 
-    def _look(self) -> None:
-        for _ in range(MOST_AT_ONCE):
-            listening = self._from
-            if listening is None or not listening.poll():
-                return
-            try:
-                message = listening.recv()
-            except (EOFError, OSError):
-                self._ended()
-                return
+    def _hand_on(self, number: int, message: object) -> None:
+        if number == self._number:
             self.said.emit(message)
 
-    def _ended(self) -> None:
-        process, self._process = self._process, None
-        self._timer.stop()
-        if self._from is not None:
-            self._from.close()
-            self._from = None
-        good = False
-        if process is not None:
-            process.join()
-            good = process.exitcode == 0
-        self.done.emit(good)
+    def _ended(self, number: int, good: bool) -> None:
+        if number == self._number:
+            self._process = None
+            self.done.emit(good)

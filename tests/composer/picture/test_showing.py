@@ -16,7 +16,8 @@ from composer.picture.showing_process import Beside
 from composer.picture.showing_work import Failed, Mended, Progress, Ran, Snags, strain_at_head
 from composer.simulate.run import blocks
 
-WAIT_MS = 60_000
+WAIT_MS = 280_000
+pytestmark = pytest.mark.timeout(600)
 
 SCORE = """title "Bench"
 rig bench.rig.toml
