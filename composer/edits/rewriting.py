@@ -152,6 +152,9 @@ class Rewriting:
         found: list[str] = []
         for user in users:
             phrase = self._phrase(user)
+            if user.fibers == (-1,):  # nobody is left to play it
+                found.append(phrase.name)
+                continue
             key = (phrase.name, user.own or user.words)
             if key not in names:
                 section = self.sections[id(self.all.entries[user.entry])]
@@ -279,9 +282,9 @@ class Rewriting:
                 block += [f"phrase {own}", *lines, ""]
                 at = f"{start_s:.12f}".rstrip("0").rstrip(".")
                 entries.append(f"  {self.made.rig.fibers[fiber].name}  {own}  at {at}s" + ("  add" if adds else ""))
+        names = {one.name for one in self.score.sections} | self.taken
+        name = next(n for n in ("retimed", *(f"retimed-{k}" for k in range(2, len(names) + 3))) if n not in names)
         if entries:
-            names = {one.name for one in self.score.sections} | self.taken
-            name = next(n for n in ("retimed", *(f"retimed-{k}" for k in range(2, len(names) + 3))) if n not in names)
             self._behind(len(self.score.lines[self.score.file]), [*block, f"section {name} at 0s", *entries, ""])
         who = selection(self.plan.flat, self.score, self.made.rig)
         self.notes.append(f"{who}: entries lie over one another there, so every move is written out, in section '{name}'.")
