@@ -14,9 +14,11 @@ from player.commands.shown import meters_for, scene_of
 from player.commands.terminal import has_keys, is_screen, keys_at_once
 from player.engine.clock import SteadyClock
 from player.engine.process.layout import Snapshot
+from player.live.hold_key import HoldKey
 from player.live.screen import Scene, frame
 
 REFRESH_S = 0.1
+SLIVER_S = 0.001
 MOST_TOLD = 200
 SMALLEST = (40, 12)
 """Columns and lines below which there is no screen, only a line that says so."""
@@ -39,29 +41,6 @@ KEYS = {
 """What each key asks for; pause and go_on take turns on the same key, `h` is the hold-to-run."""
 
 HOLD = "h"
-FIRST_S, AGAIN_S = 0.9, 0.3
-"""A held key repeats: the first repeat comes within the one, the others within the other. Then it is up."""
-
-
-class HoldKey:
-    """A key that is held, as a terminal tells of it: it only ever says that it is down, again and again."""
-
-    def __init__(self) -> None:
-        self._until_s = float("-inf")
-        self.down = False
-
-    def pressed(self, now_s: float) -> bool:
-        """The key has come in; whether it has just gone down."""
-        went, self.down = not self.down, True
-        self._until_s = max(self._until_s, now_s + (FIRST_S if went else AGAIN_S))
-        return went
-
-    def is_up(self, now_s: float) -> bool:
-        """Whether it has just come up."""
-        if not self.down or now_s <= self._until_s:
-            return False
-        self.down = False
-        return True
 
 
 class LiveFront:
@@ -123,7 +102,7 @@ class LiveFront:
             self._ends.wait(REFRESH_S)
             return
         try:
-            ready, _, _ = select.select([sys.stdin], [], [], REFRESH_S)
+            ready, _, _ = select.select([sys.stdin], [], [], self._patience_s())
             typed = os.read(sys.stdin.fileno(), 256) if ready else None
         except (OSError, ValueError):
             typed = b""
@@ -136,6 +115,12 @@ class LiveFront:
         elif self._hold.down:
             # Said again and again: one that is not is up, whatever has become of this terminal.
             self._ask("hold")
+
+    def _patience_s(self) -> float:
+        """How long to wait for a key: until the screen is due, or until one that is held would be up."""
+        if not self._hold.down:
+            return REFRESH_S
+        return min(REFRESH_S, max(self._hold.until_s - self._now(), 0.0) + SLIVER_S)
 
     def _typed(self, typed: bytes) -> None:
         # An arrow or function key begins with Escape too, but more follows at once: no vent by a slip of the cursor keys.
