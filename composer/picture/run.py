@@ -28,12 +28,14 @@ Array = NDArray[np.float64]
 class RunScene:
     """A run of `lasts_s`: shares of stroke wanted and sensed (F, COLUMNS), nan where not known; marks_s: what went wrong when.
 
+    apart: the largest distance of any fiber (COLUMNS,), each sense against the want of its own instant; nan: not known
     told: the object of the run's report
     """
 
     lasts_s: float
     wanted: Array
     sensed: Array
+    apart: Array
     marks_s: tuple[float, ...]
     told: dict[str, Any]
 
@@ -52,7 +54,7 @@ def paint(painter: QPainter, scene: RunScene) -> None:
     _cloth(painter, QRectF(LEFT_PX, second, COLUMNS, tall), "sensed", scene.sensed, True)
     third = second + tall + px(38)
     lane = QRectF(LEFT_PX, third, COLUMNS, px(110))
-    _distance(painter, lane, scene.wanted, scene.sensed)
+    _distance(painter, lane, scene.apart)
     _seconds(painter, lane, scene.lasts_s)
     painter.setPen(pen(palette.LIMIT, 2.0, dash=(3.0, 2.0)))
     for at_s in scene.marks_s:
@@ -78,15 +80,14 @@ def _cloth(painter: QPainter, box: QRectF, name: str, share: Array, can_lack: bo
         LOOK.write(painter, box, "nothing was sensed", 13, palette.QUIET_INK, CENTRE)
 
 
-def _distance(painter: QPainter, box: QRectF, wanted: Array, sensed: Array) -> None:
+def _distance(painter: QPainter, box: QRectF, apart: Array) -> None:
     """The largest distance of any fiber, column by column."""
     px = LOOK.px
     painter.fillRect(box, colour(palette.PANEL))
     title = "furthest from what was wanted, % of stroke"
     LOOK.write(painter, QRectF(box.left(), box.top() - px(24), box.width(), px(22)), title, 13)
-    error = np.abs(sensed - wanted)
-    known = np.isfinite(error).any(axis=0) if error.size else np.zeros(0, dtype=bool)
-    worst = np.where(known, np.max(np.nan_to_num(error), axis=0, initial=0.0), 0.0)
+    known = np.isfinite(apart)
+    worst = np.nan_to_num(apart)
     most = max(0.02, float(worst.max(initial=0.0)) * 1.1)
     step = next(one for one in (0.01, 0.02, 0.05, 0.1, 0.2, 0.5, 1.0) if most / one <= 5.0 or one == 1.0)
     for level in np.arange(0.0, most, step):

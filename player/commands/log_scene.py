@@ -21,7 +21,32 @@ def scene(log: Told, told: dict[str, Any]) -> RunScene:
     times = first + (np.arange(COLUMNS) + 0.5) * lasts / COLUMNS
     wanted = wanted_at(log, times, np.arange(len(log.fibers))).T
     marks = tuple(fault["time_s"] - first for fault in told["faults"])
-    return RunScene(lasts, wanted, _sensed(log, times), marks, told)
+    return RunScene(lasts, wanted, _sensed(log, times), _apart(log, times), marks, told)
+
+
+def _apart(log: Told, times: Array) -> Array:
+    """The largest distance of sensed from wanted (T,), of each sense at its own instant; between senses that of the nearest."""
+    found = np.full(len(times), np.nan)
+    half_s = 0.5 * (times[1] - times[0]) if len(times) > 1 else np.inf
+    for part in log.sensed:
+        error = np.abs(part.share - wanted_at(log, part.at_s, part.fibers))
+        error[~np.isfinite(error)] = -1.0
+        worst = error.max(axis=1, initial=-1.0)
+        at, worst = part.at_s[worst >= 0.0], worst[worst >= 0.0]
+        if not len(at):
+            continue
+        nearest = _nearest(at, times) if len(at) > 1 else np.zeros(len(times), dtype=np.int64)
+        there = np.abs(at[nearest] - times) <= max(NEAREST_S, half_s)
+        found[there] = np.fmax(found[there], worst[nearest[there]])
+        # Of several senses in a column the worst is shown.
+        column = np.clip(np.searchsorted(times, at - half_s), 0, len(times) - 1)
+        np.fmax.at(found, column, worst)
+    return found
+
+
+def _nearest(at: Array, times: Array) -> NDArray[np.int64]:
+    later = np.clip(np.searchsorted(at, times), 1, len(at) - 1)
+    return np.where(times - at[later - 1] < at[later] - times, later - 1, later)
 
 
 def _sensed(log: Told, times: Array) -> Array:
@@ -32,8 +57,7 @@ def _sensed(log: Told, times: Array) -> Array:
             continue
         order = np.argsort(part.at_s, kind="stable")
         at = part.at_s[order]
-        later = np.clip(np.searchsorted(at, times), 1, len(at) - 1)
-        near = np.where(times - at[later - 1] < at[later] - times, later - 1, later)
+        near = _nearest(at, times)
         values = part.share[order][near].T
         values[:, np.abs(at[near] - times) > NEAREST_S] = np.nan
         known = np.isfinite(values)
