@@ -136,6 +136,12 @@ class TextPane(QPlainTextEdit):
         if focus:
             self.setFocus()
 
+    def show_line(self, line: int) -> None:
+        """Bring a line into view, wherever the caret is."""
+        block = self.document().findBlockByNumber(line - 1)
+        if block.isValid() and not self._is_seen(block):
+            self.verticalScrollBar().setValue(max(0, block.blockNumber() - 4))
+
     def words_before(self) -> str:
         """What of the caret's line stands before it."""
         cursor = self.textCursor()

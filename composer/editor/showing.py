@@ -21,6 +21,9 @@ from composer.tracks import Tracks
 MOST_LIT = 4000
 """Stretches that are lit at once."""
 
+MOST_EARLY = 400
+"""Messages that are kept for a picture that has not come yet."""
+
 MOST_OUTLINED = 12
 """Hanging fibers that are outlined at once; more would hide what they do."""
 
@@ -49,6 +52,7 @@ class Showing(QObject):
         self._fiber: int | None = None
         self._sampler: Sampler | None = None
         self._ghost_said: Tracks | None = None
+        self._early: list[Any] = []
         self._carried: Tracks | None = None
         self._grow = QTimer(self)
         self._grow.setSingleShot(True)
@@ -66,6 +70,8 @@ class Showing(QObject):
     def hear(self, message: Any) -> None:
         """Take in what a worker says, and show it."""
         known = self.known
+        if isinstance(message, (Retimed, Simulated)) and self._is_early(message):
+            return
         match message:
             case Told():
                 known.stale = bool(message.faults)
@@ -76,6 +82,9 @@ class Showing(QObject):
             case Picture():
                 if known.take_picture(message) is not None:
                     self._show_picture()
+                    early, self._early = self._early, []
+                    for told in early:
+                        self.hear(told)
             case Checked():
                 weave = known.take_check(message)
                 if weave is not None:
@@ -98,10 +107,21 @@ class Showing(QObject):
                 if known.take_run(message) and not self._grow.isActive():
                     self._grow.start()
 
+    def _is_early(self, message: Retimed | Simulated) -> bool:
+        """Whether it is of a text whose picture has not come yet; it is kept until then."""
+        picture = self.known.picture
+        if picture is not None and message.version <= picture.version:
+            return False
+        self._early = [one for one in self._early if one.version == message.version]
+        if len(self._early) < MOST_EARLY:
+            self._early.append(message)
+        return True
+
     def forget(self) -> None:
         """Another score: nothing of the one before is shown any more."""
         self.known.forget()
         self._fiber = self._sampler = self._ghost_said = self._carried = None
+        self._early = []
         self.stage.transport.pause()
         self.stage.transport.clear_loop()
         self.stage.transport.to_start()

@@ -4,7 +4,7 @@ from typing import Any
 
 from PySide6.QtCore import QByteArray, QPoint, QSettings, QSize, Qt, QTimer
 from PySide6.QtGui import QAction, QCloseEvent, QKeySequence, QResizeEvent
-from PySide6.QtWidgets import QApplication, QMainWindow, QMenu, QSplitter, QTabWidget, QToolTip, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QApplication, QComboBox, QMainWindow, QMenu, QSplitter, QTabWidget, QToolTip, QVBoxLayout, QWidget
 
 from composer.editor import disk, dressing
 from composer.editor.actions import ACTIONS, by_menu
@@ -78,6 +78,8 @@ class ComposeWindow(Deeds, QMainWindow):
         self._lay_out()
         self._make_menus()
         self._wire()
+        for box in self.findChildren(QComboBox):
+            box.view().setAccessibleName(box.accessibleName())
         self._remember()
 
     # ---- parts ----------------------------------------------------------------------------------------------------------
@@ -343,6 +345,11 @@ class ComposeWindow(Deeds, QMainWindow):
 
     def _carried(self, dragged: Dragged) -> None:
         self.foot.say("word", dragged.edit.say)
+        text = self.pane.text
+        lines = [text.count("\n", 0, start) + 1 for start, _, _ in dragged.edit.changes]
+        self.pane.looks.light(lines)
+        if lines:
+            self.pane.show_line(lines[0])
         if dragged.after is not None:
             self.showing.carry(dragged.after.tracks)
 
