@@ -20,7 +20,7 @@ from composer.picture.palette import DARK, Theme
 from composer.picture.sampling import Source, differing, sampler_of
 from composer.picture.scene import Stretch
 from composer.picture.tiling import Tiles
-from composer.picture.view import View
+from composer.picture.view import BAR_PX, View
 from composer.picture.weave import Weave
 from composer.tracks import Tracks
 
@@ -190,7 +190,9 @@ class ClothShow(ClothPlace):
         if self._still is None or self._still.size() != QSize(view.width, view.height):
             self._still = self._draw_still(view)
             self._place_bars(view)
-        painter.fillRect(self.rect(), colour(self._theme.ground))
+        # Only beside and below the picture, where the scroll bars are, is there ground to be seen.
+        for bar in (self._along, self._across):
+            painter.fillRect(bar.geometry().adjusted(-1, -1, BAR_PX, BAR_PX), colour(self._theme.ground))
         painter.scale(1 / scale, 1 / scale)
         painter.drawImage(0, 0, self._still)
         over.head(painter, view, self._head_s)
@@ -219,14 +221,18 @@ class ClothShow(ClothPlace):
     def _threads(self, view: View) -> QImage:
         """The threads in view; what is not there yet is stretched from the last whole picture."""
         drawn = QImage(view.plan.width, view.shown, QImage.Format.Format_RGB32)
-        drawn.fill(colour(self._theme.ground))
         with painting(drawn) as painter:
-            if self._last is not None:
-                image, was = self._last
-                left, right = (view.x_of(at) - view.plan.left for at in (was.from_s, was.to_s))
-                share = view.rows.height / max(was.rows.height, 1)
-                painter.drawImage(QRectF(left, was.scroll * share - view.scroll, right - left, image.height() * share), image)
-            whole = self._tiles.paint(painter, view, FRAME_BUDGET_MS)
+
+            def beneath() -> None:
+                painter.fillRect(drawn.rect(), colour(self._theme.ground))
+                if self._last is not None:
+                    image, was = self._last
+                    left, right = (view.x_of(at) - view.plan.left for at in (was.from_s, was.to_s))
+                    share = view.rows.height / max(was.rows.height, 1)
+                    there = QRectF(left, was.scroll * share - view.scroll, right - left, image.height() * share)
+                    painter.drawImage(there, image)
+
+            whole = self._tiles.paint(painter, view, FRAME_BUDGET_MS, beneath)
         if whole:
             self._last = (drawn, view)
         return drawn

@@ -1,7 +1,7 @@
 """The threads' image as tiles, kept from one frame to the next and worked out in slices between frames."""
 
 from collections import OrderedDict
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 import numpy as np
 from PySide6.QtCore import QElapsedTimer, QObject, QRect, QTimer, Signal
@@ -17,8 +17,8 @@ COLUMNS, ROWS = 256, 256
 MOST_BYTES = 160 << 20
 """What tiles may take in all; those not looked at for longest go first."""
 SLICE_MS = 8
-SHOW_EVERY_MS = 40
-"""How often a picture that grows is shown."""
+SHOW_EVERY_MS = 80
+"""How long after one frame a picture that grows is shown again: on a large window a frame itself takes a while."""
 
 Key = tuple[int, int, int]
 
@@ -62,22 +62,26 @@ class Tiles(QObject):
             self._bytes = 0
             self._wanted, self._job = [], None
 
-    def paint(self, painter: QPainter, view: View, budget_ms: int) -> bool:
+    def paint(self, painter: QPainter, view: View, budget_ms: int, beneath: Callable[[], None] = lambda: None) -> bool:
         """Draw what there is of a view, its left top at 0, 0, working on what is missing for `budget_ms` first.
 
-        Returns whether nothing was missing; what was is worked out later, and `grown` says so.
+        Returns whether nothing was missing; what was is worked out later, and `grown` says so. `beneath` is called before
+        anything is drawn where something is missing, to draw what shows in its place.
         """
         keys = self._keys(view)
         self._want(keys)
         self._work(budget_ms)
+        missing = any(key not in self._done or not self._done[key][1] for key in keys)
+        if missing:
+            beneath()
         for key in keys:
             there = self._done.get(key)
             if there is not None:
                 self._done.move_to_end(key)
                 self._draw(painter, view, key, there[0])
-        missing = any(key not in self._done or not self._done[key][1] for key in keys)
         if missing:
             self._timer.start()
+        self._since.restart()
         return not missing
 
     def _keys(self, view: View) -> list[Key]:
