@@ -11,6 +11,7 @@ from PySide6.QtWidgets import QHBoxLayout, QPushButton, QWidget
 from composer.limits.abilities import Abilities
 from composer.picture import hang_paint, palette
 from composer.picture.hang_camera import VIEWS, Camera
+from composer.picture.hang_names import paint_names
 from composer.picture.look import Look
 from composer.picture.palette import Theme
 from composer.rig.model import Rig
@@ -163,7 +164,7 @@ class HangView(QWidget):
         painter.scale(1.0 / ratio, 1.0 / ratio)
         painter.drawImage(0, 0, self._still)
         self._lines = hang_paint.paint_fibers(painter, self._room, camera, look, self._wanted, self._sensed, self._lit)
-        hang_paint.paint_names(painter, self._room, self._lines, look, self._hovered, width)
+        paint_names(painter, self._room, camera, self._lines, look, self._hovered, width)
         painter.end()
 
     def _size(self) -> tuple[int, int]:

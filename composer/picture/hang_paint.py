@@ -42,12 +42,6 @@ NEAR_FLOOR = 0.4
 REST_SHADE = 0.34
 """How bright a fiber is at rest, as a share of its ramp: here its place tells how far it has moved, and none may be lost."""
 
-NAMES_FROM_PX = 24.0
-"""Pixels between neighbours, at scale 1, from which on fibers have their names beside them, as far as there is room."""
-
-MOST_BESIDE = 64
-"""Names that a name is kept from running into, the last ones written."""
-
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Room:
@@ -140,20 +134,29 @@ def _rests(painter: QPainter, room: Room, camera: Camera, look: Look) -> None:
 def _bars(painter: QPainter, room: Room, camera: Camera, look: Look, width: int) -> None:
     """A bar through the points from which each band hangs, with its name where there is room."""
     hung = camera.pixels(room.hanging.at)
+    painter.setPen(pen(look.theme.line, max(2.0, 2.5 * look.scale)))
+    for band in room.bands:
+        painter.drawPolyline(_polygon(hung[band.first : band.last]))
+    for band, box in band_names(room, camera, look, width):
+        look.write(painter, box, band.name, 12, look.theme.quiet_ink, CENTRE)
+
+
+def band_names(room: Room, camera: Camera, look: Look, width: int) -> list[tuple[Band, QRectF]]:
+    """Where the names of bands of more than one fiber stand, above what they hang from, none over another or over a bar."""
+    hung = camera.pixels(room.hanging.at)
     bars = [hung[[band.first, band.last - 1]] for band in room.bands]
     taken = [QRectF(QPointF(*ends.min(axis=0)), QPointF(*(ends.max(axis=0) + look.px(3)))) for ends in bars]
+    placed = []
     for band, ends in zip(room.bands, bars, strict=True):
-        painter.setPen(pen(look.theme.line, max(2.0, 2.5 * look.scale)))
-        painter.drawPolyline(QPolygonF([QPointF(*each) for each in hung[band.first : band.last].tolist()]))
         if band.last - band.first > 1:
             wide = look.width(band.name, 12) + 4
-            middle = ends.mean(axis=0)
-            x = min(max(middle[0] - wide / 2, 4.0), width - wide - 4.0)
+            x = min(max(ends[:, 0].mean() - wide / 2, 4.0), width - wide - 4.0)
             box = QRectF(x, ends[:, 1].min() - look.px(24), wide, look.px(17))
             while any(box.intersects(other) for other in taken) and box.top() > 0:
                 box.translate(0, -look.px(17))
             taken.append(box)
-            look.write(painter, box, band.name, 12, look.theme.quiet_ink, CENTRE)
+            placed.append((band, box))
+    return placed
 
 
 def _scale(painter: QPainter, camera: Camera, look: Look, width: int, height: int) -> None:
@@ -300,33 +303,3 @@ def _round(of: palette.Colour, width: float) -> QPen:
     made.setCapStyle(Qt.PenCapStyle.RoundCap)
     made.setJoinStyle(Qt.PenJoinStyle.RoundJoin)
     return made
-
-
-def _end_names(painter: QPainter, room: Room, ends: Array, look: Look) -> None:
-    """A name below each end, left out where it would run into one that is there already."""
-    taken: list[QRectF] = []
-    for name, (x, y) in zip(room.names, ends.tolist(), strict=True):
-        wide = look.width(name, 10.5)
-        box = QRectF(x - wide / 2, y + look.px(5), wide + 2, look.px(14))
-        if not any(box.intersects(other) for other in taken[-MOST_BESIDE:]):
-            taken.append(box)
-            look.write(painter, box, name, 10.5, look.theme.quiet_ink, CENTRE)
-
-
-def paint_names(painter: QPainter, room: Room, lines: Array, look: Look, hovered: int | None, width: int) -> None:
-    """Names beside the ends of fibers where they lie far enough apart, and that of the fiber under the pointer always."""
-    if not len(room.names):
-        return
-    ends = lines[room.hanging.first[1:] - 1]
-    gaps = np.hypot(*np.diff(ends, axis=0).T) if len(ends) > 1 else np.array([np.inf])
-    if np.median(gaps) >= NAMES_FROM_PX * look.scale:
-        _end_names(painter, room, ends, look)
-    if hovered is not None and hovered < len(room.names):
-        x, y = ends[hovered]
-        name = room.names[hovered]
-        wide = look.width(name, 13, bold=True) + look.px(14)
-        box = QRectF(min(max(x + look.px(10), 2.0), width - wide - 2.0), y - look.px(11), wide, look.px(22))
-        painter.setPen(pen(look.theme.line, 1.0))
-        painter.setBrush(colour(look.theme.panel))
-        painter.drawRoundedRect(box, look.px(4), look.px(4))
-        look.write(painter, box, name, 13, look.theme.ink, CENTRE, bold=True)
