@@ -16,7 +16,7 @@ from composer.limits.air import even, litres_at_shares, refill_L_s, store_L
 from composer.limits.duration import STEP_S
 from composer.limits.fills import Fills, fills_of
 from composer.limits.quivering import shaken
-from composer.retime.stage import Stage, at_times
+from composer.retime.stage import Stage
 from composer.rig.model import Rig
 from composer.shapes import NAMES
 from composer.tracks import Tracks
@@ -41,6 +41,7 @@ class Account:
     fill, share, litres: (M,) whose node, the share of its fill's time, and what the fill has drawn there
     start, end: (P,) events that the move of each fill hangs from (-1: stands still at 0 s), u_from, u_to the shares of the move
     between which it fills; offset: (P,) how much later than its event a move's start is (a sudden's); written_s (N + 1,)
+    free: (n,) events that may move; column: (N + 1,) their places among these, n for all others
     """
 
     fill: Index
@@ -53,6 +54,8 @@ class Account:
     offset: Array
     at_once: NDArray[np.bool_]
     written_s: Array
+    free: Index
+    column: Index
     store: float
     refill: float
 
@@ -86,8 +89,8 @@ class Account:
         """By how many seconds of refill the deepest span overdraws the store."""
         return max(float(self.missing(shift_s)[0].max(initial=0.0)) - self.store, 0.0) / self.refill
 
-    def rows(self, shift_s: Array, columns: int) -> tuple[Array, Array]:
-        """(R, N) and (R,): the spans in view, made linear about some shifts; `matrix @ shift >= least` in seconds of refill."""
+    def rows(self, shift_s: Array) -> tuple[Array, Array]:
+        """(R, n), (R,): the spans in view, made linear about shifts (N,); `matrix @ shift[free] >= least`, s of refill."""
         _, order, at, short = self.missing(shift_s)
         # A span that asks most begins where demand less refill turns up and ends where it turns down.
         rise = np.diff(short)
@@ -95,24 +98,25 @@ class Account:
         down = np.concatenate(([True], rise <= 0.0))
         begins, ends = np.flatnonzero(up & down), np.flatnonzero(~up & ~down)
         if not len(begins) or not len(ends):
-            return np.empty((0, columns)), np.empty(0)
+            return np.empty((0, len(self.free))), np.empty(0)
         span = short[ends][:, None] - short[begins][None, :]
         span[begins[None, :] >= ends[:, None]] = -np.inf
         seen = np.flatnonzero(span.ravel() > (1.0 - IN_VIEW) * self.store)
         seen = seen[np.argsort(-span.ravel()[seen], kind="stable")[:ROWS]]
         end, begin = np.divmod(seen, len(begins))
         used, place = np.unique(np.concatenate((begins[begin], ends[end])), return_inverse=True)
-        slope = self._slopes(order[used], at[used], shift_s, columns)
+        slope = self._slopes(order[used], at[used], shift_s)
         matrix = (slope[place[: len(seen)]] - slope[place[len(seen) :]]) / self.refill
         over = (span.ravel()[seen] - self.store) / self.refill
-        return matrix, over + matrix @ shift_s
+        return matrix, over + matrix @ shift_s[self.free]
 
-    def _slopes(self, nodes: Index, time: Array, shift_s: Array, columns: int) -> Array:
-        """(V, N) how demand less refill at some nodes changes with each event's shift."""
+    def _slopes(self, nodes: Index, time: Array, shift_s: Array) -> Array:
+        """(V, n) how demand less refill at some nodes changes with each free event's shift."""
         at = self.written_s + np.append(shift_s, 0.0)
         begin, finish = at[self.start] + self.offset, at[self.end]
         lasts = np.maximum(finish - begin, 1e-9)
-        slope = np.zeros((len(nodes), columns + 1))
+        slope = np.zeros((len(nodes), len(self.free) + 1))
+        start, end = self.column[self.start], self.column[self.end]
         own = self.fill[nodes]
         # What draws there: the piece of each fill that is under way.
         when = self.instants(shift_s)
@@ -125,22 +129,21 @@ class Account:
         total = np.bincount(v, weights=flow, minlength=len(nodes)) - self.refill
         still = self.at_once[which]
         share = np.where(still, 0.0, (time[v] - begin[which]) / lasts[which])
-        np.add.at(slope, (v, self.start[which]), -flow * (1.0 - share))
-        np.add.at(slope, (v, self.end[which]), -flow * share)
+        np.add.at(slope, (v, start[which]), -flow * (1.0 - share))
+        np.add.at(slope, (v, end[which]), -flow * share)
         # The node itself goes with its own move.
         u = np.where(self.at_once[own], 0.0, self.u_from[own] + self.share[nodes] * (self.u_to - self.u_from)[own])
-        np.add.at(slope, (np.arange(len(nodes)), self.start[own]), total * (1.0 - u))
-        np.add.at(slope, (np.arange(len(nodes)), self.end[own]), total * u)
-        # The last place stands for what is fixed at 0 s.
+        np.add.at(slope, (np.arange(len(nodes)), start[own]), total * (1.0 - u))
+        np.add.at(slope, (np.arange(len(nodes)), end[own]), total * u)
+        # The last place stands for all that stands still.
         return slope[:, :-1]
 
 
-def account_of(stage: Stage, shift_s: Array, rig: Rig, abilities: Abilities, curved: int = 0) -> Account:
-    """The account of a stage's fills; what quivers fills as it does at the displacements given.
+def account_of(stage: Stage, now: Tracks, rig: Rig, abilities: Abilities, free: Index, curved: int = 0) -> Account:
+    """The account of the fills in tracks `now` of a stage; what quivers fills as it does there.
 
-    curved: straight pieces that a curved fill is laid out as, 0: by how many fills there are
+    free: (n,) events that may move; curved: straight pieces that a curved fill is laid out as, 0: by how many fills there are
     """
-    now = at_times(stage, shift_s)
     fills = fills_of(now, abilities)
     curved = curved or int(np.clip(NODES // max(len(fills.segment), 1), FEWEST, MOST))
     pieces = np.where(_straight(now, fills, abilities), 1, curved)
@@ -149,10 +152,12 @@ def account_of(stage: Stage, shift_s: Array, rig: Rig, abilities: Abilities, cur
     share = number / pieces[fill]
     events = stage.events
     segment = fills.segment
+    column = np.full(len(events.written_s) + 1, len(free))
+    column[free] = np.arange(len(free))
     return Account(
         fill, share, litres_at_shares(now, abilities, fills, fill, share), events.event[segment], events.event[segment + 1],
         fills.u_from, fills.u_to, np.where(events.event[segment] >= 0, events.offset_s[segment], 0.0), fills.at_once,
-        np.append(events.written_s, 0.0), store_L(rig.supply), refill_L_s(rig.supply),
+        np.append(events.written_s, 0.0), free, column, store_L(rig.supply), refill_L_s(rig.supply),
     )  # fmt: skip
 
 

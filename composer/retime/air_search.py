@@ -26,9 +26,11 @@ from composer.retime.rows import AIR_ROW, Rows, joined, no_rows
 from composer.retime.stage import Stage, at_times
 from composer.retime.terms import contract, cost, spread
 from composer.rig.model import Rig
+from composer.tracks import HOLD, Tracks
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
+Flags = NDArray[np.bool_]
 
 STEPS, RAISES, CLEAN, CLEANED = 60, 4, 10, 3
 """Steps of one descent and prices that it tries, rounds that make its answer clean, and how many answers are made so."""
@@ -74,28 +76,10 @@ def better(
     if not tries:
         return best, False
     try:
-        search = _Search(stage, rig, abilities, rows, bottom, free, budget)
-        ranked: list[tuple[float, Array]] = []
-        for number, start in enumerate(search.beginnings(best, tries, ranked)):
-            budget.say(f"air: beginning {number + 1} of {tries}")
-            there = search.descend(start)
-            if there is not None:
-                ranked.append(there)
-                ranked.sort(key=lambda one: one[0])
-                least = ranked[0][0] * (1.0 + 1e-6)
-                if least <= bottom.cost * (1.0 + 2e-6) or (
-                    number >= AT_LEAST and sum(worth <= least for worth, _ in ranked) >= AGAIN
-                ):
-                    break
-        for worth, x in _distinct(ranked):
-            if best is not None and worth >= best.least.cost * (1.0 - 1e-9):
-                break
-            found = search.cleaned(x)
-            if found is not None and (best is None or found.least.cost < best.least.cost * (1.0 - 1e-9)):
-                best = found
+        search = Search(stage, rig, abilities, rows, bottom, free, budget)
+        return search.best(tries, best), False
     except Unsolved:
         return best, True
-    return best, False
 
 
 def _distinct(ranked: list[tuple[float, Array]]) -> list[tuple[float, Array]]:
@@ -107,15 +91,26 @@ def _distinct(ranked: list[tuple[float, Array]]) -> list[tuple[float, Array]]:
     return few
 
 
-class _Search:
+class Search:
     """One programme in the solver, one account of the air, and the descents made with both."""
 
     def __init__(
-        self, stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, free: NDArray[np.bool_], budget: Budget
+        self,
+        stage: Stage,
+        rig: Rig,
+        abilities: Abilities,
+        rows: Rows,
+        bottom: Least,
+        free: Flags,
+        budget: Budget,
+        window: tuple[float, float] | None = None,
     ):
-        self.stage, self.rig, self.abilities, self.bottom = stage, rig, abilities, bottom
+        """Over the events `free` (N,). All others go where it costs least; in a window, they stay where `bottom` has them."""
+        self.stage, self.rig, self.abilities, self.bottom, self.window = stage, rig, abilities, bottom, window
         self.mask, self.free = free, np.flatnonzero(free)
-        self.account: Account = account_of(stage, bottom.shift_s, rig, abilities)
+        self.still = np.where(free, 0.0, bottom.shift_s) if window is not None else np.zeros(len(free))
+        self.standing = cost(stage.terms, self.still)
+        self.account: Account = account_of(stage, self.tracks(bottom.shift_s), rig, abilities, self.free)
         self.left = contract(stage.events, stage.terms, free)
         self.plain_price = self.price = 2.0 * max(1.0, float(stage.events.weight[free].sum()))
         self.rng = np.random.default_rng(1)
@@ -124,18 +119,55 @@ class _Search:
 
     def keep(self, rows: Rows) -> None:
         """Search among the times that keep these rows."""
-        self.rows, self.chosen = rows, inside(rows, self.mask)
+        self.rows = rows
+        if self.window is None:
+            self.chosen = inside(rows, self.mask)
+        else:
+            named = np.repeat(np.arange(len(rows.least)), np.diff(rows.matrix.indptr))
+            self.chosen = np.unique(named[self.mask[rows.matrix.indices]])
+            rows = replace(rows, least=rows.least - rows.matrix @ self.still)
         self.programme = Resident(rows, self.chosen, self.free, self.left, self.price, self.budget)
+
+    def tracks(self, full: Array) -> Tracks:
+        """The tracks with their events displaced; outside the window nothing moves, and so nothing is drawn."""
+        now = at_times(self.stage, full)
+        if self.window is None or len(now.quivers):
+            return now
+        ends = np.append(now.time_s[1:], np.inf)
+        here = (now.time_s < self.window[1]) & (ends > self.window[0])
+        return replace(now, manner=np.where(here, now.manner, HOLD).astype(np.int8))
 
     def whole(self, shift_s: Array) -> Array:
         """(N,) shifts of all events from those of the free ones."""
-        full = np.zeros(len(self.mask))
+        full = self.still.copy()
         full[self.free] = shift_s
-        return spread(self.stage.events, self.stage.terms, self.mask, self.left, full)
+        return spread(self.stage.events, self.stage.terms, self.mask, self.left, full) if self.window is None else full
 
     def merit(self, full: Array) -> float:
         """Cost, with a price on what is overdrawn."""
         return cost(self.stage.terms, full) + self.price * self.account.overdraft_s(full)
+
+    def best(self, tries: int, best: Found | None) -> Found | None:
+        """The cheapest clean answer from so many beginnings, or the one given, if that is cheaper."""
+        ranked: list[tuple[float, Array]] = []
+        for number, start in enumerate(self.beginnings(best, tries, ranked)):
+            self.budget.say(f"air: beginning {number + 1} of {tries}")
+            there = self.descend(start)
+            if there is not None:
+                ranked.append(there)
+                ranked.sort(key=lambda one: one[0])
+                least = ranked[0][0] * (1.0 + 1e-6)
+                if least <= self.bottom.cost * (1.0 + 2e-6) or (
+                    number >= AT_LEAST and sum(worth <= least for worth, _ in ranked) >= AGAIN
+                ):
+                    break
+        for worth, x in _distinct(ranked):
+            if best is not None and worth >= best.least.cost * (1.0 - 1e-9):
+                break
+            found = self.cleaned(x)
+            if found is not None and (best is None or found.least.cost < best.least.cost * (1.0 - 1e-9)):
+                best = found
+        return best
 
     def descend(self, start: Array) -> tuple[float, Array] | None:
         """Cost and times, (N,), at the end of the descent from some (n,); None where the receiver does not bear them."""
@@ -163,13 +195,13 @@ class _Search:
         merit = self.merit(full)
         for _ in range(STEPS):
             hair = HAIR_S * self.rng.random(columns)
-            matrix, least = self.account.rows(full + hair, columns)
-            fixed = ~self.mask
-            step = self.programme.least(matrix[:, self.free], least - matrix[:, fixed] @ full[fixed], x - box, x + box)
+            matrix, least = self.account.rows(full + hair)
+            step = self.programme.least(matrix, least, x - box, x + box)
             if step is None:
                 box *= 0.5
                 continue
             y, worth, over = step
+            worth += self.standing
             promised = merit - worth - self.price * over
             if promised <= ENOUGH * max(1.0, abs(worth)) and box < 0.01:
                 break
@@ -193,10 +225,14 @@ class _Search:
         hot = no_rows(events)
         kept, box = store_L(self.rig.supply), 0.02 * self.account.store / self.account.refill
         for _ in range(CLEAN):
-            self.account = replace(account_of(self.stage, full, self.rig, self.abilities, FINER), store=kept)
+            self.account = replace(
+                account_of(self.stage, self.tracks(full), self.rig, self.abilities, self.free, FINER), store=kept
+            )
             full = self._priced(full, box)
-            now = at_times(self.stage, full)
-            lacks, spans = overdraft_L(now, self.rig, self.abilities), duty_spans(now, self.rig, self.abilities, coils)
+            lacks = overdraft_L(self.tracks(full), self.rig, self.abilities)
+            # In a window coils are left to whoever looks at the whole.
+            whole = self.window is None
+            spans = duty_spans(at_times(self.stage, full), self.rig, self.abilities, coils) if whole else []
             if lacks <= 0.0 and not spans:
                 break
             if lacks > 0.0:
@@ -211,13 +247,14 @@ class _Search:
 
     def _held(self, full: Array, hot: Rows, box: float) -> Found:
         """Times that are clean, with the rows and forces that hold them there."""
-        columns = len(self.mask)
-        matrix, least = self.account.rows(full, columns)
-        x, fixed = full[self.free], ~self.mask
-        self.programme.least(matrix[:, self.free], least - matrix[:, fixed] @ full[fixed], x - box, x + box)
+        matrix, least = self.account.rows(full)
+        x = full[self.free]
+        self.programme.least(matrix, least, x - box, x + box)
         stay, pass_ = self.programme.forces()
         count = len(least)
-        air = Rows(sparse.csr_array(matrix), least, np.full(count, AIR_ROW, dtype=np.int8), np.full(count, -1, dtype=np.int64))
+        row, column = np.nonzero(matrix)
+        wide = sparse.csr_array((matrix[row, column], (row, self.free[column])), shape=(count, len(self.mask)))
+        air = Rows(wide, least, np.full(count, AIR_ROW, dtype=np.int8), np.full(count, -1, dtype=np.int64))
         dual = np.zeros(len(self.rows.least))
         dual[self.chosen] = stay
         there = Least(full, cost(self.stage.terms, full), self.bottom.bound, np.concatenate((dual, pass_)), self.mask)
@@ -267,7 +304,7 @@ class _Search:
         thrown, fills = here.copy(), len(account.start)
         if rng.random() < BLOCKS:
             # All that lies between two instants together, later or earlier; half of the time what follows as well.
-            low, high = np.sort(rng.choice(events.written_s, 2))
+            low, high = np.sort(rng.choice(events.written_s[self.free], 2))
             block = (events.written_s >= low) & (events.written_s <= (high if rng.random() < 0.5 else np.inf))
             thrown[block] += rng.normal() * reach * 10.0 ** rng.uniform(-1.0, 0.3)
             return thrown

@@ -20,12 +20,14 @@ Array = NDArray[np.float64]
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Memory:
-    """N segments known: what they are, in order, (N,) of bytes, and what they come to. For one rig's abilities alone.
+    """K segments known: what they are, (K, C) numbers, and what they come to. For one rig's abilities alone.
 
-    least_s, gone, litres: (N,) least duration, strain gone through, and free air drawn without quivers
+    key: (K,) a number made of what each is, least_s, gone, litres: (K,) least duration, strain gone through, and free air drawn
+    without quivers
     """
 
-    what: NDArray[np.void]
+    what: Array
+    key: NDArray[np.uint64]
     least_s: Array
     gone: Array
     litres: Array
@@ -34,11 +36,8 @@ class Memory:
 def measured(tracks: Tracks, abilities: Abilities, memory: Memory | None) -> tuple[Array, Array, Array, Memory]:
     """Least duration, strain gone through and air drawn of every segment, (K,) each, and all of it as the next memory."""
     what = _what(tracks, abilities)
-    place = np.zeros(len(what), dtype=np.int64)
-    known = np.zeros(len(what), dtype=bool)
-    if memory is not None and len(memory.what):
-        place = np.minimum(np.searchsorted(memory.what, what), len(memory.what) - 1)
-        known = memory.what[place] == what
+    key = _key(what)
+    known, place = _known(what, key, memory)
     fresh = np.flatnonzero(~known)
     least, gone, litres = (np.zeros(len(what)) for _ in range(3))
     if memory is not None:
@@ -51,28 +50,52 @@ def measured(tracks: Tracks, abilities: Abilities, memory: Memory | None) -> tup
         manner[fresh] = tracks.manner[fresh]
         fills = fills_of(replace(tracks, manner=manner, quivers=NONE), abilities)
         litres += np.bincount(fills.segment, weights=fills.litres, minlength=len(what))
-    kept, first = np.unique(what, return_index=True)
-    return least, gone, litres, Memory(kept, least[first], gone[first], litres[first])
+    return least, gone, litres, Memory(what, key, least.copy(), gone, litres)
 
 
-def _what(tracks: Tracks, abilities: Abilities) -> NDArray[np.void]:
-    """Everything that a segment's least duration and strain depend on, as one item of bytes each, (K,)."""
+def _known(what: Array, key: NDArray[np.uint64], memory: Memory | None) -> tuple[NDArray[np.bool_], NDArray[np.int64]]:
+    """(K,) which segments a memory holds, and where."""
+    # The first quiver, and the last, changes what is kept of each.
+    if memory is None or not len(memory.key) or memory.what.shape[1] != what.shape[1]:
+        return np.zeros(len(what), dtype=bool), np.zeros(len(what), dtype=np.int64)
+    if len(key) == len(memory.key) and np.count_nonzero(key != memory.key) <= len(key) // 4:
+        # After most edits nearly all are where they were.
+        place = np.arange(len(key))
+        known = np.all(what == memory.what, axis=1)
+        rest = np.flatnonzero(~known)
+    else:
+        known, place, rest = np.zeros(len(key), dtype=bool), np.zeros(len(key), dtype=np.int64), np.arange(len(key))
+    if len(rest):
+        order = np.argsort(memory.key, kind="stable")
+        there = order[np.minimum(np.searchsorted(memory.key[order], key[rest]), len(order) - 1)]
+        # Two that are not the same may have one key, so what they are decides.
+        known[rest], place[rest] = np.all(what[rest] == memory.what[there], axis=1), there
+    return known, place
+
+
+def _key(what: Array) -> NDArray[np.uint64]:
+    """(K,) a number made of all bits of each row."""
+    bits = what.view(np.uint64)
+    key = np.zeros(len(what), dtype=np.uint64)
+    for column in range(bits.shape[1]):
+        key = (key ^ bits[:, column]) * np.uint64(0x9E3779B97F4A7C15)
+        key ^= key >> np.uint64(29)
+    return key
+
+
+def _what(tracks: Tracks, abilities: Abilities) -> Array:
+    """Everything that a segment's least duration and strain depend on, as numbers, (K, C)."""
     count, fiber, quivers = len(tracks.time_s), fiber_of(tracks), tracks.quivers
-
-    segment, which = pairs(quivers) if len(quivers) else (np.empty(0, dtype=np.int64),) * 2
-    amplitude, hertz = quivers.amplitude[which], quivers.hertz[which]
-
-    def total(values: Array) -> Array:
-        return np.bincount(segment, weights=values, minlength=count)
-
-    highest = np.zeros(count)
-    np.maximum.at(highest, segment, hertz)
-    columns = np.column_stack(
-        (
-            abilities.which[fiber], abilities.accel[fiber], abilities.stroke[fiber], tracks.curve, tracks.manner, tracks.shape,
-            total(np.ones(len(segment))), total(amplitude), total(amplitude * hertz), total(amplitude * hertz**2), highest,
-        )
-    )  # fmt: skip
-    # Numbers that are equal have the same bytes but for the sign of nothing.
-    columns = np.ascontiguousarray(columns + 0.0)
-    return columns.view(np.dtype((np.void, columns.itemsize * columns.shape[1]))).ravel()
+    what = np.empty((count, 11 + (5 if len(quivers) else 0)))
+    what[:, 0], what[:, 1], what[:, 2] = abilities.which[fiber], abilities.accel[fiber], abilities.stroke[fiber]
+    what[:, 3:9], what[:, 9], what[:, 10] = tracks.curve, tracks.manner, tracks.shape
+    if len(quivers):
+        segment, which = pairs(quivers)
+        amplitude, hertz = quivers.amplitude[which], quivers.hertz[which]
+        for column, values in enumerate((np.ones(len(segment)), amplitude, amplitude * hertz, amplitude * hertz**2), 11):
+            what[:, column] = np.bincount(segment, weights=values, minlength=count)
+        what[:, 15] = 0.0
+        np.maximum.at(what[:, 15], segment, hertz)
+    # Numbers that are equal have the same bits but for the sign of nothing.
+    what += 0.0
+    return what

@@ -1,7 +1,5 @@
 """How far snags reach if everything after them only gives way later, or everything before them only earlier."""
 
-from heapq import heappop, heappush
-
 import numpy as np
 from numpy.typing import NDArray
 
@@ -11,6 +9,10 @@ from composer.retime.rows import HOLD_ROW, MOVE_ROW, ORDER_ROW, Rows
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 Flags = NDArray[np.bool_]
+
+
+ROUNDS = 400
+"""How far a push is followed; what lies beyond is asked for by the rows that are then found broken."""
 
 
 def pairs(rows: Rows, chosen: Index) -> tuple[Index, Index, Array]:
@@ -40,32 +42,27 @@ def reached(events: Events, rows: Rows, broken: Index) -> Flags:
     start[broken] = True
     begin = start[simple_rows(rows)]
     found = np.zeros(len(events.place), dtype=bool)
-    for ahead, behind, place in ((later, earlier, events.place), (earlier, later, -events.place)):
-        found |= _pushed(ahead, behind, least, place, begin)
+    for ahead, behind in ((later, earlier), (earlier, later)):
+        found |= _pushed(ahead, behind, least, len(found), begin)
     return found
 
 
-def _pushed(ahead: Index, behind: Index, least: Array, place: Index, begin: Flags) -> Flags:
-    """Events pushed along the rows from `behind` to `ahead`, each dealt with once, in the order of `place`."""
-    order = np.argsort(behind, kind="stable")
-    edge = np.searchsorted(behind[order], np.arange(len(place) + 1)).tolist()
-    rows, targets, lacks, rank = order.tolist(), ahead.tolist(), least.tolist(), place.tolist()
-    push = [0.0] * len(place)
-    waiting: list[tuple[int, int]] = []
-    queued = [False] * len(place)
-
-    def give(event: int, by: float) -> None:
-        if event >= 0 and by > push[event]:
-            push[event] = by
-            if not queued[event]:
-                queued[event] = True
-                heappush(waiting, (rank[event], event))
-
-    for row in np.flatnonzero(begin).tolist():
-        give(targets[row], lacks[row])
-    while waiting:
-        _, event = heappop(waiting)
-        for n in range(edge[event], edge[event + 1]):
-            row = rows[n]
-            give(targets[row], push[event] + lacks[row])
-    return np.array(push) > 0.0
+def _pushed(ahead: Index, behind: Index, least: Array, count: int, begin: Flags) -> Flags:
+    """Events pushed along the rows from `behind` to `ahead`: what was pushed further in one round passes it on in the next."""
+    order = np.argsort(behind)
+    edge = np.searchsorted(behind[order], np.arange(count + 1))
+    push = np.zeros(count)
+    rows, by = np.flatnonzero(begin), least[begin]
+    for _ in range(ROUNDS):
+        target = ahead[rows]
+        further = np.flatnonzero(target >= 0)
+        further = further[by[further] > push[target[further]]]
+        if not len(further):
+            break
+        np.maximum.at(push, target[further], by[further])
+        moved = np.unique(target[further])
+        each = edge[moved + 1] - edge[moved]
+        number = np.arange(each.sum()) - np.repeat(np.cumsum(each) - each, each)
+        rows = order[np.repeat(edge[moved], each) + number]
+        by = np.repeat(push[moved], each) + least[rows]
+    return push > 0.0

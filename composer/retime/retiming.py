@@ -238,16 +238,11 @@ def _told(
         )
     own = shift[hits:] - np.append(shift, 0.0)[terms.behind[hits:]]
     starts = np.flatnonzero(events.free)
-    leads = [
-        Lead(
-            int(fiber[k]),
-            float(events.written_s[hits + n]),
-            float(events.written_s[hits + n] + shift[hits + n]),
-            int(origin[k]),
-            int(prepared.line[k]),
-        )
-        for n, k in ((n, starts[n]) for n in np.flatnonzero(np.abs(own) > 1e-9))
-    ]
+    left = np.flatnonzero(np.abs(own) > 1e-9)
+    at = starts[left]
+    was_start = events.written_s[hits + left]
+    columns = (fiber[at], was_start, was_start + shift[hits + left], origin[at], prepared.line[at])
+    leads = [Lead(*row) for row in zip(*(column.tolist() for column in columns), strict=True)]
     new = tracks
     if found is not None:
         now_there = at_times(stage, shift)

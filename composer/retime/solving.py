@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 from composer.limits.abilities import Abilities
 from composer.retime.air_cuts import Span, overdrawn, plainly_enough, share_rows, whole_rows
 from composer.retime.air_search import Found, better
+from composer.retime.air_windows import by_windows
 from composer.retime.cuts import duty_rows, duty_spans
 from composer.retime.flow import ENDLESS, Budget, Unsolved
 from composer.retime.local import Least, least_cost
@@ -27,6 +28,9 @@ ROUNDS = 200
 
 AIR_ROUNDS = 40
 """How many rounds close in on times that keep the air."""
+
+WINDOWS_FROM = 300
+"""Scores of more events than this are searched place by place where they keep the clock."""
 
 GIVEN_UP_S = 1e-6
 """A row that even at a high price stays broken by more than this is one that no times can keep."""
@@ -84,16 +88,31 @@ def answer(
         return None
     if not bottom.spans:
         return Answer(bottom.least, bottom.rows, bottom.given_up)
-    found, clean, stopped = Found(bottom.least, no_rows(stage.events)), False, False
+    found, stopped = Found(bottom.least, no_rows(stage.events)), False
     try:
-        closed = _closed_in(stage, rig, abilities, bottom, budget)
-        found, clean = (found, False) if closed is None else closed
+        best, stopped = _best(stage, rig, abilities, bottom, budget)
+        if best is None:
+            closed = _closed_in(stage, rig, abilities, bottom, budget)
+            found = found if closed is None else closed[0]
     except Unsolved:
-        stopped = True
-    best, late = better(stage, rig, abilities, bottom.rows, bottom.least, found if clean else None, budget)
+        best, stopped = None, True
     found = found if best is None else best
     least = replace(found.least, bound=bottom.least.bound)
-    return Answer(least, joined([bottom.rows, found.shares]), bottom.given_up, stopped or late)
+    return Answer(least, joined([bottom.rows, found.shares]), bottom.given_up, stopped)
+
+
+def _best(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, budget: Budget) -> tuple[Found | None, bool]:
+    """The best times that keep the air as well, None where none are found, and whether time was up before all was tried."""
+    events = stage.events
+    if len(events.written_s) > WINDOWS_FROM and not (stage.terms.behind[: events.hits] >= 0).any():
+        found = by_windows(stage, rig, abilities, bottom.rows, bottom.least, bottom.spans, budget)
+        if found is not None:
+            return found, False
+    known = None
+    closed = _closed_in(stage, rig, abilities, bottom, budget)
+    if closed is not None and closed[1]:
+        known = closed[0]
+    return better(stage, rig, abilities, bottom.rows, bottom.least, known, budget)
 
 
 def _pushed(stage: Stage) -> Least | None:
@@ -149,15 +168,16 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
 def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, budget: Budget) -> tuple[Found, bool] | None:
     """Times closed in on from the bottom by rows about the times of each round, and whether the checker finds them clean."""
     events, least = stage.events, bottom.least
-    shares = no_rows(events)
+    shares, parts = no_rows(events), Parts()
     for _ in range(AIR_ROUNDS):
         now = at_times(stage, least.shift_s)
         spans = overdrawn(now, rig, abilities)
         if not spans:
             return Found(least, shares), not duty_spans(now, rig, abilities, set())
         more = joined([shares, share_rows(spans, now, events, least.shift_s, rig, abilities)])
-        found = least_cost(events, joined([bottom.rows, more]), stage.terms, least.free, False, budget)
+        found = least_cost(events, joined([bottom.rows, more]), stage.terms, least.free, False, budget, parts=parts)
         if found is None:
+            parts = Parts()
             # Rows about earlier times may stand in one another's way. The latest alone are true to the times at hand; what
             # they ask beyond what can be is given at a price, so that the next round starts nearer.
             more = picked(more, np.arange((len(more.least) + 1) // 2, len(more.least)))
