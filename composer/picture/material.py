@@ -1,7 +1,7 @@
 """A whole preview as data: the run on the simulated rig, what it told, and the scene of its picture."""
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -139,21 +139,6 @@ def lanes_of(rig: Rig, kept: Kept) -> tuple[Lane, ...]:
         ),
         Lane("largest miss", "% of stroke", miss, 0.0, max(20.0, 1.08 * float(np.nanmax(miss, initial=0.0))), "miss"),
     )
-
-
-def part(scene: Scene, from_s: float, to_s: float, width: int) -> Scene:
-    """A stretch of a whole scene, `width` columns of it: what a window shows when it scrolls and zooms."""
-    columns = scene.share.shape[1]
-    at = (column_times(from_s, to_s, width) - scene.from_s) / (scene.to_s - scene.from_s) * columns
-    which = np.clip(np.floor(at).astype(int), 0, columns - 1)
-    begin = np.clip(np.floor(at - (at[1] - at[0]) / 2 if width > 1 else at).astype(int), 0, columns - 1)
-    lanes = []
-    for lane in scene.lanes:
-        # Where a column of the window covers several, the worst of them is shown.
-        extreme = np.fmin if lane.supply else np.fmax
-        values = extreme.reduceat(lane.values, begin) if begin[-1] - begin[0] > width else lane.values[which]
-        lanes.append(replace(lane, values=values))
-    return replace(scene, from_s=from_s, to_s=to_s, share=scene.share[:, which], lanes=tuple(lanes))
 
 
 def _minutes(seconds: float) -> str:

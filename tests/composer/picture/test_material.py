@@ -3,20 +3,13 @@
 import numpy as np
 import pytest
 
-from composer.picture.material import part, run
+from composer.picture.material import run
 
 
 def test_a_scene_keeps_as_many_columns_as_are_asked_for(make_scene):
     scene = make_scene(columns=123)
     assert scene.share.shape == (4, 123)
     assert all(len(lane.values) == 123 and np.isfinite(lane.values).all() for lane in scene.lanes)
-
-
-def test_a_part_shows_the_columns_of_its_stretch(make_scene):
-    scene = make_scene(columns=800)
-    shown = part(scene, 2.0, 4.0, 100)
-    assert (shown.from_s, shown.to_s) == (2.0, 4.0)
-    assert shown.share[0] == pytest.approx(scene.share[0, 200:400:2], abs=0.03)
 
 
 def test_a_miss_that_lasts_less_than_a_column_is_still_in_its_lane(make_piece):
