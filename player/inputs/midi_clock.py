@@ -5,7 +5,7 @@ After the MIDI 1.0 specification: start and continue take effect with the next t
 
 from player.inputs.beat import Beat, Steady
 from player.inputs.events import Timing
-from player.inputs.turns import Turn
+from player.inputs.following import Follower
 
 TICKS = 24
 TICKS_A_SIXTEENTH = 6
@@ -18,45 +18,28 @@ SLOWEST, FASTEST = 1.0, 1000.0
 ENOUGH = 6
 """Ticks from which on their own tempo is believed."""
 
-MOST_TURNS = 256
 
-
-class ClockFollower:
+class ClockFollower(Follower):
     """Ticks in, the running tempo out. `state` is one of `player.inputs.turns.STATES`; `backwards` counts wrong moments."""
 
     def __init__(self, rate: float = 1.0, coast_s: float = COAST_S):
         """rate: counts a second to go by until enough ticks have come."""
-        self.state = "waiting"
-        self.backwards = 0
-        self._coast_s = coast_s
+        super().__init__(Steady(), coast_s)
         self._rate = rate
-        self._steady = Steady()
         self._tick = 0
         self._next = 0
         self._running = False
         self._placed: int | None = None
-        self._last_s: float | None = None
         self._gap: tuple[int, float] | None = None
-        self._held: float = 0.0
-        self._turns: list[Turn] = []
 
     @property
     def rate(self) -> float:
         """Counts a second as far as they are known."""
         return self._rate
 
-    def turns(self) -> tuple[Turn, ...]:
-        """What has happened since they were last asked for."""
-        told = tuple(self._turns)
-        self._turns.clear()
-        return told
-
     def hear(self, event: Timing) -> None:
         """One message; kinds of time code mean nothing here."""
-        at_s = event.at_s
-        if self._last_s is not None and at_s < self._last_s:
-            self.backwards += 1
-            at_s = self._last_s
+        at_s = self._in_order(event.at_s)
         if event.what == "clock":
             self._clock(at_s)
         elif event.what == "start":
@@ -77,19 +60,10 @@ class ClockFollower:
 
     def tick(self, now_s: float) -> None:
         """Let time pass: a clock that runs and says nothing is coasted on, then held."""
-        if not self._running or self._placed is None or self._last_s is None or self.state in ("wild", "holding"):
-            return
-        quiet_s = now_s - self._last_s
-        if quiet_s <= max(0.1, 4.0 / (TICKS * self._rate)):
-            return
-        if self.state == "running":
-            place = self._line_at(now_s)
-            self.state = "coasting"
-            self._tell("coast", place, now_s, f"the clock has said nothing for {quiet_s:.1f} s: going on at the last tempo")
-        if self.state == "coasting" and quiet_s > self._coast_s:
-            self._held = self._line_at(self._last_s + self._coast_s)
-            self.state = "holding"
-            self._tell("hold", self._held, now_s, f"the clock has said nothing for {quiet_s:.1f} s: standing")
+        if self._running and self._placed is not None:
+            after_s = max(0.1, 4.0 / (TICKS * self._rate))
+            said = "the clock has said nothing for {quiet:.1f} s: "
+            self._falls_silent(now_s, after_s, self._line_at, f"{said}going on at the last tempo", f"{said}standing")
 
     def beat(self, now_s: float) -> Beat | None:
         """The running tempo, of rate 0 where it stands; None before anything is known."""
@@ -109,10 +83,6 @@ class ClockFollower:
             # The silence that is waited out counts from here.
             self._last_s = at_s
         self._tell("run", self._next / TICKS, at_s, f"the clock {how} at count {self._next / TICKS + 1:g}")
-
-    def _tell(self, kind: str, place: float, at_s: float, say: str) -> None:
-        if len(self._turns) < MOST_TURNS:
-            self._turns.append(Turn(kind, place, at_s, say))
 
     def _line(self) -> tuple[float, float, float]:
         """A tick, its moment, and counts a second there."""

@@ -8,8 +8,8 @@ from fractions import Fraction
 
 from player.inputs.beat import Beat, Steady
 from player.inputs.events import Timing
+from player.inputs.following import Follower
 from player.inputs.timecode import RATES, Rate, Stamp, frames_of, is_label, seconds_of
-from player.inputs.turns import Turn
 
 PIECES = 8
 COAST_S = 0.5
@@ -22,11 +22,10 @@ BACKWARDS = 4
 VARISPEED = 1.25
 """How much faster or slower than its frame rate says time code is taken to run."""
 
-MOST_TURNS = 256
 MIDNIGHT = Stamp(0, 0, 0, 0)
 
 
-class CodeFollower:
+class CodeFollower(Follower):
     """Quarter frames in, the running score out. `state` is one of `player.inputs.turns.STATES`.
 
     invalid: labels that no frame has, counted; backwards: pieces in falling order, or at earlier moments, counted
@@ -34,35 +33,20 @@ class CodeFollower:
 
     def __init__(self, start: Stamp = MIDNIGHT, coast_s: float = COAST_S):
         """start: the label at which the score begins."""
-        self.state = "waiting"
+        super().__init__(Steady(most=192, fewest=24), coast_s)
         self.rate: Rate | None = None
         self.invalid = 0
-        self.backwards = 0
         self._start = start
-        self._coast_s = coast_s
-        self._steady = Steady(most=192, fewest=24)
         self._pieces = [0] * PIECES
         self._run = 0
         self._falling = 0
         self._last_piece = -1
         self._quarter: int | None = None
-        self._last_s: float | None = None
-        self._held = 0.0
         self._kept: Beat | None = None
-        self._turns: list[Turn] = []
-
-    def turns(self) -> tuple[Turn, ...]:
-        """What has happened since they were last asked for."""
-        told = tuple(self._turns)
-        self._turns.clear()
-        return told
 
     def hear(self, event: Timing) -> None:
         """One message; those of MIDI clock mean nothing here."""
-        at_s = event.at_s
-        if self._last_s is not None and at_s < self._last_s:
-            self.backwards += 1
-            at_s = self._last_s
+        at_s = self._in_order(event.at_s)
         if event.what == "quarter_frame":
             self._piece(event.value >> 4 & 7, event.value & 15, at_s)
         elif event.what == "full_frame":
@@ -70,16 +54,8 @@ class CodeFollower:
 
     def tick(self, now_s: float) -> None:
         """Let time pass: code that has ended is coasted on for a moment, then held."""
-        if self.state not in ("running", "coasting") or self._last_s is None:
-            return
-        quiet_s = now_s - self._last_s
-        if quiet_s > QUIET_S and self.state == "running":
-            self.state = "coasting"
-            self._tell("coast", self._place_at(now_s), now_s, "time code has ended: going on for a moment")
-        if quiet_s > self._coast_s and self.state == "coasting":
-            self._held = self._place_at(self._last_s + self._coast_s)
-            self.state = "holding"
-            self._tell("hold", self._held, now_s, f"time code has said nothing for {quiet_s:.1f} s: standing")
+        held = "time code has said nothing for {quiet:.1f} s: standing"
+        self._falls_silent(now_s, QUIET_S, self._place_at, "time code has ended: going on for a moment", held)
 
     def beat(self, now_s: float) -> Beat | None:
         """The running place in seconds of the score, of rate 0 where it stands; None before anything is known."""
@@ -111,10 +87,6 @@ class CodeFollower:
         """Seconds of the score at a quarter frame counted from midnight."""
         assert self.rate is not None
         return float(Fraction(quarter) / (4 * self.rate.per_s) - seconds_of(self._start, self.rate))
-
-    def _tell(self, kind: str, place: float, at_s: float, say: str) -> None:
-        if len(self._turns) < MOST_TURNS:
-            self._turns.append(Turn(kind, place, at_s, say))
 
     def _piece(self, piece: int, nibble: int, at_s: float) -> None:
         rising = piece == (self._last_piece + 1) % PIECES
