@@ -3,6 +3,7 @@
 from collections.abc import Callable, Mapping, Sequence
 
 from composer.faults import Faults
+from player.engine.quiet import collect_now
 from player.outputs.base import Array, Event, LinkLost, Output
 
 VENTED = ("vented", "fault")
@@ -34,6 +35,7 @@ class Boards:
 
     def arm(self) -> list[Event]:
         """Arm every board."""
+        collect_now()
         return self._each(lambda output: output.arm(), "armed", sure=True)
 
     def rest(self, over_s: float) -> list[Event]:

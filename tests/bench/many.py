@@ -83,13 +83,13 @@ def to_boards(seconds: float) -> None:
             for driver, board in zip(rig.drivers, boards, strict=True)
         ]
         engine = Engine(rig, Driven(rig, abilities, swaying(512, seconds)), outputs, clock, 250.0, abilities=abilities)
+        urgent = first()
         try:
             for output in outputs:
                 output.open()
             wrong = [mark for mark in engine.preflight() if not mark.ok]
             assert not wrong, wrong
             beside = Beside(seconds)
-            urgent = first()
             engine.arm()
             began, used = time.monotonic(), time.process_time()
             for _ in engine.run():
@@ -109,7 +109,7 @@ def to_boards(seconds: float) -> None:
     count = min(map(len, starts))
     apart_us = 1e6 * np.ptp(np.array([one[:count] for one in starts]), axis=0)
     lateness = engine.lateness
-    print(f"512 fibers at 250 Hz over 8 lines: {lateness.ticks} ticks, {100 * share:.0f} % of a core, {engine.ending.how}")
+    print(f"512 fibers at 250 Hz over 8 lines: {lateness.ticks} ticks, {100 * share:.0f} % of a core, {engine.ending.why}")
     late = ", ".join(f"{100 * of:g} %: {1e3 * lateness.quantile_s(of):.3f}" for of in (0.5, 0.99, 0.999))
     print(f"   in the player: {late} ms late, worst {1e3 * lateness.worst_s:.3f}; real-time priority: {urgent}")
     print(f"   at the valves: {spread(late_us)} us late; boards apart by {spread(apart_us.tolist())} us")

@@ -12,6 +12,7 @@ from pathlib import Path
 sys.path.insert(0, str(Path(__file__).parents[1]))
 
 from conftest import make_rig
+from machine import first
 from many import swaying
 
 from composer.limits.abilities import abilities_of
@@ -61,8 +62,8 @@ def soak(engine: Engine, log: Path, seconds: float) -> None:
         for status in engine.run():
             if status.position_s >= len(looks) * seconds / (LOOKS - 1):
                 looks.append(resident_KiB())
-    grown = 100.0 * (looks[-1] - looks[1]) / looks[1]
-    print(f"   {engine.lateness.ticks} ticks, {engine.ending.how}; {time.process_time() - began:.0f} s of a core")
+    grown = 100.0 * (looks[-1] - looks[min(1, len(looks) - 1)]) / looks[0]
+    print(f"   {engine.lateness.ticks} ticks, {engine.ending.why}; {time.process_time() - began:.0f} s of a core")
     print(f"   KiB in memory, one after another: {looks}; from the second to the last {grown:+.2f} %", flush=True)
 
 
@@ -80,6 +81,7 @@ def virtual(seconds: float) -> None:
 
 
 def real(seconds: float) -> None:
+    first()
     rig = make_rig.__wrapped__()(FIBERS, drive="pressure", air_mL=0.1)
     abilities, clock = abilities_of(rig), SteadyClock()
     build = Build("bench", Bench(rig, abilities, "main").drives, senses_strain=True, senses_supply=True, rig=rig.fingerprint)
