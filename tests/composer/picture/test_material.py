@@ -1,9 +1,12 @@
 """A run as a scene."""
 
+from functools import partial
+
 import numpy as np
 import pytest
 
 from composer.picture.material import run
+from composer.simulate.run import blocks
 
 
 def test_a_scene_keeps_as_many_columns_as_are_asked_for(make_scene):
@@ -20,7 +23,7 @@ def test_a_miss_that_lasts_less_than_a_column_is_still_in_its_lane(make_piece):
 
 
 def test_progress_runs_from_little_to_all(make_piece, monkeypatch):
-    monkeypatch.setattr("composer.simulate.run.BLOCK", 64)
+    monkeypatch.setattr("composer.picture.material.blocks", partial(blocks, values=64))
     told = []
     run(make_piece(), 10, 100.0, progress=told.append)
     assert told == sorted(told)
