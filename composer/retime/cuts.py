@@ -7,8 +7,8 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.buckets import level
-from composer.limits.coil import coils_of, on_times
-from composer.limits.duty import on_time
+from composer.limits.coil import Coils, coils_of, on_times
+from composer.limits.duty import OnTime, on_time
 from composer.retime.events import Events
 from composer.retime.rows import DUTY_ROW, Rows, Sums, no_rows, sum_rows
 from composer.rig.model import Rig
@@ -31,11 +31,9 @@ def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) ->
     """Spans of tracks with the times at hand that ask too much of a coil and are not yet known, deepest first by coil."""
     coils, on = coils_of(rig), on_time(now, rig, abilities)
     found: list[Span] = []
-    for f in range(now.fibers):
+    for f in _overdrawn(on, coils).tolist():
         mine = slice(on.first[f], on.first[f + 1])
         seconds, segment = on.on_s[mine], on.segment[mine]
-        if seconds[-1] * (1.0 - coils.duty[f]) <= coils.burst_s[f] * (1.0 + EXACT):
-            continue
         here = level(on.time_s[mine], seconds, coils.duty[f])
         # The hold at the end of a track lasts as long as the score: no times change that.
         ends = (segment >= 0) & (segment != now.first[f + 1] - 1)
@@ -47,6 +45,16 @@ def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) ->
             if span not in known:
                 found.append(span)
     return found
+
+
+def _overdrawn(on: OnTime, coils: Coils) -> Index:
+    """The fibers whose coils some span asks too much of."""
+    fiber = np.repeat(np.arange(len(coils.duty)), np.diff(on.first))
+    short = on.on_s - coils.duty[fiber] * on.time_s
+    # Each fiber lies so far below the one before it that its own lowest is the lowest so far.
+    apart = 2.0 * float(np.abs(short).max(initial=0.0)) + 1.0
+    missing = short - (np.minimum.accumulate(short - apart * fiber) + apart * fiber)
+    return np.unique(fiber[missing > coils.burst_s[fiber] * (1.0 + EXACT) - 1e-12 * apart * len(coils.duty)])
 
 
 def duty_rows(spans: list[Span], tracks: Tracks, events: Events, rig: Rig, abilities: Abilities) -> Rows:

@@ -137,11 +137,14 @@ def retime(
     give = np.zeros(len(pins)) if give_s is None else np.asarray(give_s, dtype=float)[np.argsort(pins_s, kind="stable")]
     by_rhythm: bool | Flags = rhythm if rhythm is not None else keep == "rhythm"
 
-    def build(some: Tracks) -> tuple[Stage, list[Chain]]:
-        stage = stage_of(some, abilities, pins, give, firm, by_rhythm, None if after is None else after.memory)
-        return stage, chains_too_long(stage.events, stage.rows, pins, give) if len(pins) else []
+    def build(some: Tracks) -> Stage:
+        return stage_of(some, abilities, pins, give, firm, by_rhythm, None if after is None else after.memory)
 
-    stage, chains = build(tracks)
+    def too_long(stage: Stage) -> list[Chain]:
+        return chains_too_long(stage.events, stage.rows, pins, give) if len(pins) else []
+
+    stage = build(tracks)
+    chains = too_long(stage) if shrink else []
     shrunk: dict[int, Shrunk] = {}
     tries = 0
     while chains and shrink and tries < SHRINKS:
@@ -165,9 +168,12 @@ def retime(
         if hopeless:
             break
         tracks = retimed(current, stage.origin, current.time_s, tracks.duration_s)
-        stage, chains = build(tracks)
+        stage = build(tracks)
+        chains = too_long(stage)
     budget = Budget(clock, began + limit_s, tell)
     found = None if chains else answer(stage, rig, abilities, whole, budget, _as_before(stage, after))
+    if found is None and not chains:
+        chains = too_long(stage)
     budget.say("")
     short = tuple(_short(chain, stage, abilities) for chain in chains)
     return _told(stage, tracks, abilities, pins, keep, found, shrunk, short, clock() - began)
