@@ -30,7 +30,7 @@ def weaker(text):
 
 @pytest.fixture
 def played(make_rig, make_tracks):
-    """A maker of runs of a lift that holds for 3 s: the engine afterwards, shares of stroke sensed at the end of the hold, and the
+    """A maker of runs of a lift that holds for 3 s: the engine, shares of stroke sensed at the end of the hold, and the
     largest correction of each fiber, tick by tick."""
     boards = []
 
