@@ -137,7 +137,7 @@ class Client:
             for name, fields in self._receive(0.1):
                 if name == "welcome" and not self.about:
                     self._welcomed(fields)
-                elif name == "refused" and not self.about:
+                elif name == "refused" and fields["what"] == "hello" and not self.about:
                     raise NotThere(fields["why"])
                 else:
                     self._kept.append((name, fields))

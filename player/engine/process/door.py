@@ -257,7 +257,10 @@ class Door:
             "welcome", version=messages.VERSION, run=self.run, pid=os.getpid(), commands=front.commands, about=self.about
         )
         try:
-            # The descriptor goes with the first byte; the queue is empty still, so that nothing comes before it.
+            # The descriptor goes with the first byte, so whatever was answered before must be on its way.
+            front.flush()
+            if front.waits:
+                raise BlockingIOError
             sent = socket.send_fds(front.socket, [welcome[:1]], [self._memory])
             front.put(welcome[sent:], surely=True)
         except OSError:

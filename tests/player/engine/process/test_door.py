@@ -65,6 +65,12 @@ def test_a_vent_needs_no_hello(door, visit):
     assert door.taken == [("vent", {})]
 
 
+def test_a_welcome_comes_whole_behind_what_was_answered_before(visit):
+    hello = messages.packed("hello", version=messages.VERSION, commands=False, answers=False)
+    heard = visit().send(b"nonsense\n" + messages.packed("rest") + hello)
+    assert names(heard) == ["refused", "refused", "welcome", "command"]
+
+
 def test_another_version_is_refused_and_stays_unattached(door, visit):
     (refused,) = visit().hello(commands=True, version=99)
     assert "another version" in refused[1]["why"] and door.attached == 0 and not door.commanded
