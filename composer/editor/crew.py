@@ -21,6 +21,9 @@ MOST_DEATHS = 3
 STUCK_MS = 1500
 """How long the solver may go on with an older text before it is ended and begun anew."""
 
+SECOND_MS = 400
+"""How much later than the reader the solver is started: window and first picture come first."""
+
 STOPPABLE = ("retiming", "looking for what would mend it", "taking the retiming in")
 
 
@@ -47,6 +50,10 @@ class Crew(QObject):
         for role, worker in self._workers.items():
             worker.said.connect(lambda message, role=role: self._hear(role, message))
             worker.ended.connect(lambda code, role=role: self._ended(role, code))
+        self._second = QTimer(self)
+        self._second.setSingleShot(True)
+        self._second.setInterval(SECOND_MS)
+        self._second.timeout.connect(lambda: self._start(SOLVER))
         self._stuck = QTimer(self)
         self._stuck.setSingleShot(True)
         self._stuck.setInterval(STUCK_MS)
@@ -57,9 +64,8 @@ class Crew(QObject):
         self._text = text
 
     def warm(self) -> None:
-        """Start both, so that they load what they need while the window comes up."""
-        for worker in self._workers.values():
-            worker.start()
+        """Start the reader, so that it loads what it needs while the window comes up; the solver follows a little later."""
+        self._workers[READER].start()
 
     def begin(self, file: str, text: str) -> None:
         """Another text."""
@@ -68,9 +74,12 @@ class Crew(QObject):
         self._asked.clear()
         for role, worker in self._workers.items():
             self._deaths[role] = []
-            if not worker.runs:
-                worker.start()
-            worker.send(Whole(self.version, file, text))
+            if worker.runs or role == READER:
+                if not worker.runs:
+                    worker.start()
+                worker.send(Whole(self.version, file, text))
+            else:
+                self._second.start()
         self._watch()
 
     def change(self, delta: Delta) -> None:
@@ -80,7 +89,7 @@ class Crew(QObject):
         for role, worker in self._workers.items():
             if worker.runs:
                 worker.send(Changed(self.version, delta))
-            else:
+            elif not (role == SOLVER and self._second.isActive()):
                 self._start(role)
         self._watch()
 
@@ -99,6 +108,9 @@ class Crew(QObject):
         self._number += 1
         (self._lasting if lasting else self._asked)[self._number] = (self.version, then)
         role = SOLVER if what in SLOW_ASKS else READER
+        if role == SOLVER and self._second.isActive():
+            self._second.stop()
+            self._start(SOLVER)
         self._workers[role].send(Ask(self._number, self.version, what, about))
 
     def restart_solver(self) -> None:
@@ -110,6 +122,7 @@ class Crew(QObject):
     def end(self) -> None:
         """End both."""
         self._stuck.stop()
+        self._second.stop()
         for worker in self._workers.values():
             worker.stop()
 

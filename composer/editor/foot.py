@@ -5,7 +5,7 @@ from fractions import Fraction
 from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QWidget
 
-from composer.edits.dragging import GRIDS
+from composer.edits.grids import GRIDS
 
 SAY_MS = 8000
 

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.editor.messages import Checked, Lanes, Picture, Retimed, RigRead, Simulated
-from composer.editor.rechecking import same_motion
+from composer.editor.motions import same_motion
 from composer.limits.abilities import Abilities
 from composer.picture.bands import Band, bands_of
 from composer.picture.bars import Bars, RetimedBars

@@ -1,21 +1,25 @@
 """What window and workers say to one another, as data. A version counts the changes of the text since the window opened."""
 
+from __future__ import annotations
+
 from dataclasses import dataclass
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-import numpy as np
-from numpy.typing import NDArray
+if TYPE_CHECKING:
+    # What the arrays and objects are is known to those who make them; the window loads it when the first of them comes.
+    import numpy as np
+    from numpy.typing import NDArray
 
-from composer.editor.deltas import Delta
-from composer.edits.edit import Edit
-from composer.faults import Fault
-from composer.limits.abilities import Abilities
-from composer.limits.check import Check
-from composer.picture.scene import Lane
-from composer.rig.model import Rig
-from composer.tracks import Tracks
+    from composer.editor.deltas import Delta
+    from composer.edits.edit import Edit
+    from composer.faults import Fault
+    from composer.limits.abilities import Abilities
+    from composer.limits.check import Check
+    from composer.picture.scene import Lane
+    from composer.rig.model import Rig
+    from composer.tracks import Tracks
 
-Array = NDArray[np.float64]
+    Array = NDArray[np.float64]
 
 # ---- from the window --------------------------------------------------------------------------------------------------
 

@@ -1,13 +1,16 @@
 """The list of what may stand at the caret, below it; the keys stay with the text."""
 
 from collections.abc import Sequence
+from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QEvent, QObject, QPoint, Qt, Signal
 from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import QAbstractItemView, QListWidget, QListWidgetItem
 
 from composer.editor.pane import TextPane
-from composer.edits.completion import Offer
+
+if TYPE_CHECKING:
+    from composer.edits.completion import Offer
 
 MOST_ROWS = 10
 
@@ -32,7 +35,7 @@ class Offers(QListWidget):
         self.hide()
         pane.installEventFilter(self)
 
-    def offer(self, offers: Sequence[Offer], asked_for: bool = True) -> None:
+    def offer(self, offers: "Sequence[Offer]", asked_for: bool = True) -> None:
         """Show offers for the place of the caret; none hides the list.
 
         asked_for: Return takes the first at once; where they came by themselves it does so only once one was chosen.

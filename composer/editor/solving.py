@@ -6,7 +6,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from composer.editor.messages import Choice, Doing, Ghost, Hit, Mended, Retimed, Simulated, Superseded, Taking
-from composer.editor.rechecking import Known, recheck, same_motion
+from composer.editor.motions import same_motion
+from composer.editor.rechecking import Known, recheck
 from composer.edits import mending, taking
 from composer.edits.edit import Refusal
 from composer.limits.check import Check, check

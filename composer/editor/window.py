@@ -1,6 +1,6 @@
 """The compose window: its parts, where they are, and who tells whom what."""
 
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import QByteArray, QPoint, QSettings, QSize, Qt, QTimer
 from PySide6.QtGui import QAction, QCloseEvent, QKeySequence, QResizeEvent
@@ -26,10 +26,12 @@ from composer.editor.session import Session
 from composer.editor.showing import Showing
 from composer.editor.snags_panel import SnagsPanel
 from composer.editor.stage import Stage
-from composer.edits.completion import Offer
 from composer.edits.edit import Edit, Refusal
 from composer.picture.palette import THEMES
 from composer.picture.strand_view import StrandView
+
+if TYPE_CHECKING:
+    from composer.edits.completion import Offer
 
 SIZE = QSize(1280, 800)
 LETTERS_MS = 150
@@ -244,7 +246,7 @@ class ComposeWindow(Deeds, QMainWindow):
         else:
             self.offers.hide()
 
-    def _offer_typed(self, offers: tuple[Offer, ...]) -> None:
+    def _offer_typed(self, offers: "tuple[Offer, ...]") -> None:
         """As one types, only what goes on from what is there is offered, and nothing that is there already."""
         before = self.pane.words_before()
         fitting = []
@@ -255,7 +257,7 @@ class ComposeWindow(Deeds, QMainWindow):
                 fitting.append(one)
         self.offers.offer(fitting[:40] if before[-1:].strip() else [], asked_for=False)
 
-    def _take_offer(self, offer: Offer) -> None:
+    def _take_offer(self, offer: "Offer") -> None:
         line, column = self.pane.place
         self.pane.replace_columns(line, offer.start, max(offer.end, column), offer.text)
 

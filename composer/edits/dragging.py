@@ -6,6 +6,7 @@ import numpy as np
 
 from composer.edits.copying import copy_for_this_one
 from composer.edits.edit import Edit, Moves, Refusal, change_at, edit_of
+from composer.edits.grids import GRIDS
 from composer.edits.grip import Grip, Hang, grip, knot_near
 from composer.edits.instances import Instances, instances_of
 from composer.edits.made import Made
@@ -16,9 +17,6 @@ from composer.score.model import Score
 from composer.score.numbers import write_like, write_place_like
 from composer.score.spans import Handle, text_at
 from composer.tracks import SAME_INSTANT_S
-
-GRIDS = (Fraction(1), Fraction(1, 2), Fraction(1, 3), Fraction(1, 4), Fraction(1, 6), Fraction(1, 8), Fraction(1, 16))
-"""Grids that a composer may choose, in counts."""
 
 MOST_LIT = 200_000
 """Up to so many segments all fibers are worked out while one is dragged; beyond, the one that is dragged alone."""
