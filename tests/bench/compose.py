@@ -176,7 +176,7 @@ def main() -> None:
             .split("\n")
             .index("  3      0.35    smooth               # 3 counts in: 35 % of the stroke, moving all the way from the start")
             + 1
-        )  # noqa: E501
+        )
         typist.window.pane.replace_columns(line, 14, 200, "")
         typist.until(lambda: typist.known.retimed is not None and typist.known.picture.version == typist.window.crew.version)
         typist.stalls.clear()
