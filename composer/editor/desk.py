@@ -8,6 +8,7 @@ and the solver (retiming, simulation, what would mend a snag).
 import os
 from collections import deque
 from collections.abc import Callable, Generator, Iterator
+from dataclasses import replace
 from typing import Any
 
 from composer.editor import questions
@@ -46,6 +47,9 @@ from composer.score.reading import parse_score
 from composer.score.tempo import fault_at, with_text
 
 READER, SOLVER = "reader", "solver"
+
+MOST_SNAGS = 20_000
+"""Snags that are sent to the window; all of them are counted."""
 
 
 class Desk:
@@ -223,7 +227,9 @@ class Desk:
         self.check, self.known = yield from recheck(made.tracks, made.rig, made.abilities, self.known)
         teller = Teller(made.tracks, made.rig, made.tempo.say_place)
         rows, more = rows_of(self.check, teller)
-        self.say(Checked(version, self.check, rows, tuple(waiting_notes(made.cues, teller)), more))
+        count = len(self.check.snags)
+        shown = replace(self.check, snags=self.check.snags[:MOST_SNAGS]) if count > MOST_SNAGS else self.check
+        self.say(Checked(version, shown, rows, tuple(waiting_notes(made.cues, teller)), more, count))
         yield
         self.say(Lanes(version, lanes_of(made.rig, made.abilities, made.tracks)))
 

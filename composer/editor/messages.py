@@ -138,13 +138,17 @@ class Row:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Checked:
-    """The check of a version: what it found, its list for the composer; notes on what is no snag; `more` rows untold."""
+    """The check of a version: what it found, its list for the composer; notes on what is no snag; `more` rows untold.
+
+    count: all snags, of which a window is told no more than it can show
+    """
 
     version: int
     check: Check
     rows: tuple[Row, ...]
     notes: tuple[str, ...] = ()
     more: int = 0
+    count: int = 0
 
 
 @dataclass(frozen=True, slots=True, eq=False)

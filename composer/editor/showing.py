@@ -196,6 +196,8 @@ class Showing(QObject):
 
     def show_choice(self, choice: Choice | None) -> None:
         """Show what would come of a choice, None for none."""
+        if choice is None and self._ghost_said is None:
+            return
         self._ghost_said = None if choice is None else choice.after.tracks
         self._show_ghost(choice.say if choice is not None else "")
 

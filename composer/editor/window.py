@@ -282,7 +282,7 @@ class ComposeWindow(Deeds, QMainWindow):
     def _hear(self, message: Any) -> None:
         self.showing.hear(message)
         if isinstance(message, Checked):
-            count = len(message.check.snags)
+            count = message.count
             self.foot.say("snags", "no snags" if not count else f"{count} snag{'s' * (count != 1)}")
             self.lists.setTabText(0, f"Snags, {len(message.rows)}" if message.rows else "Snags")
         elif isinstance(message, Retimed):
