@@ -29,7 +29,7 @@ Array = NDArray[np.float64]
 ROUNDS = 12
 """How often all places are looked for; each round leaves those before it in order."""
 
-EVENTS = 240
+EVENTS = 100
 """Events that may move in one window."""
 
 TRIES = ((3000, 12), (np.inf, 1))

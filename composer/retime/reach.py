@@ -11,7 +11,7 @@ Index = NDArray[np.int64]
 Flags = NDArray[np.bool_]
 
 
-ROUNDS = 400
+ROUNDS = 200
 """How far a push is followed; what lies beyond is asked for by the rows that are then found broken."""
 
 
@@ -51,7 +51,7 @@ def _pushed(ahead: Index, behind: Index, least: Array, count: int, begin: Flags)
     """Events pushed along the rows from `behind` to `ahead`: what was pushed further in one round passes it on in the next."""
     order = np.argsort(behind)
     edge = np.searchsorted(behind[order], np.arange(count + 1))
-    push = np.zeros(count)
+    push, fresh = np.zeros(count), np.zeros(count, dtype=bool)
     rows, by = np.flatnonzero(begin), least[begin]
     for _ in range(ROUNDS):
         target = ahead[rows]
@@ -60,7 +60,9 @@ def _pushed(ahead: Index, behind: Index, least: Array, count: int, begin: Flags)
         if not len(further):
             break
         np.maximum.at(push, target[further], by[further])
-        moved = np.unique(target[further])
+        fresh[target[further]] = True
+        moved = np.flatnonzero(fresh)
+        fresh[moved] = False
         each = edge[moved + 1] - edge[moved]
         number = np.arange(each.sum()) - np.repeat(np.cumsum(each) - each, each)
         rows = order[np.repeat(edge[moved], each) + number]
