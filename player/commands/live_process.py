@@ -56,13 +56,14 @@ def body(door: Door, memory: Writer, call: Call, answers: bool) -> tuple[str, di
             return not_armed(engine)
         run_log = open_log(call.log, stack, engine, played, call.targets, parts.clock.now()) if call.log is not None else None
         interrupt.become_stops()
-        try:
-            engine.arm()
-        except Refused as why:
-            return failed(str(why))
         engine.returns_from = ("fault", "stopped", "vented")
         engine.stand_by_said = STAND_BY_SAID
+        # From arming on boards vent when they hear nothing for a while: nothing else may keep the engine from talking to them.
         with at_its_best() as permitted:
+            try:
+                engine.arm()
+            except Refused as why:
+                return failed(str(why))
             engine.note("system", priority=permitted.priority, memory=permitted.memory, why=permitted.why)
             for status in engine.run(conduct.wait_for_play()):
                 session.after(status)

@@ -67,11 +67,12 @@ def body(
             return not_armed(engine)
         run_log = open_log(log, stack, engine, played, targets, clock.now()) if log is not None else None
         interrupt.become_stops()
-        try:
-            engine.arm()
-        except Refused as why:
-            return failed(str(why))
+        # From arming on boards vent when they hear nothing for a while: nothing else may keep the engine from talking to them.
         with at_its_best() as permitted:
+            try:
+                engine.arm()
+            except Refused as why:
+                return failed(str(why))
             engine.note("system", priority=permitted.priority, memory=permitted.memory, why=permitted.why)
             for status in engine.run(conduct.wait_for_play()):
                 conduct.after(status)
