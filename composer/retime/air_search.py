@@ -15,9 +15,9 @@ from numpy.typing import NDArray
 from scipy import sparse
 
 from composer.limits.abilities import Abilities
-from composer.limits.air import store_L
+from composer.limits.air import refill_L_s, store_L
 from composer.retime.air_account import HAIR_S, Account, account_of
-from composer.retime.air_cuts import overdraft_L
+from composer.retime.air_cuts import Span, overdraft_L
 from composer.retime.cuts import duty_rows, duty_spans
 from composer.retime.flow import Budget, Unsolved
 from composer.retime.local import Least, inside
@@ -50,6 +50,9 @@ AGAIN, AT_LEAST = 12, 36
 ENOUGH, SMALLEST_S = 1e-7, 3e-6
 """A step that promises less (relative), or a box smaller than that, is the last."""
 
+ALL_FROM = 300
+"""Scores of no more events than this are searched with all of them free to move."""
+
 BEGINNINGS = ((40, 60), (100, 30), (300, 12), (1200, 4), (6000, 1))
 """How many beginnings are tried where no more than so many events may move; none above."""
 
@@ -63,15 +66,26 @@ class Found:
 
 
 def better(
-    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, best: Found | None, budget: Budget
+    stage: Stage,
+    rig: Rig,
+    abilities: Abilities,
+    rows: Rows,
+    bottom: Least,
+    spans: list[Span],
+    best: Found | None,
+    budget: Budget,
 ) -> tuple[Found | None, bool]:
     """The cheapest of what is found from several beginnings and `best`, None where nothing is.
 
-    bottom: the optimum of the rows that are true for all times, which ask too little
+    bottom: the optimum of the rows that are true for all times, which ask too little; spans: those that it overdraws
     Returns as well whether time was up before all were tried.
     """
     count = len(stage.events.written_s)
-    free = np.ones(count, dtype=bool) if count <= BEGINNINGS[2][0] else bottom.free
+    free = (
+        np.ones(count, dtype=bool)
+        if count <= ALL_FROM
+        else _about(stage, bottom, spans, store_L(rig.supply) / refill_L_s(rig.supply))
+    )
     tries = next((tries for most, tries in BEGINNINGS if np.count_nonzero(free) <= most), 0)
     if not tries:
         return best, False
@@ -80,6 +94,17 @@ def better(
         return search.best(tries, best), False
     except Unsolved:
         return best, True
+
+
+def _about(stage: Stage, bottom: Least, spans: list[Span], reach_s: float) -> Flags:
+    """The events that the optimum moves, and those about the spans that it overdraws."""
+    events, behind = stage.events, stage.terms.behind
+    free, at = bottom.free.copy(), events.written_s + bottom.shift_s
+    for from_s, to_s in spans:
+        free |= (at >= from_s - reach_s) & (at <= to_s + reach_s)
+    following = free[events.hits :] & (behind[events.hits :] >= 0)
+    free[events.own_hit[events.hits :][following]] = True
+    return free
 
 
 def _distinct(ranked: list[tuple[float, Array]]) -> list[tuple[float, Array]]:

@@ -112,7 +112,7 @@ def _best(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, budget:
     closed = _closed_in(stage, rig, abilities, bottom, budget)
     if closed is not None and closed[1]:
         known = closed[0]
-    return better(stage, rig, abilities, bottom.rows, bottom.least, known, budget)
+    return better(stage, rig, abilities, bottom.rows, bottom.least, bottom.spans, known, budget)
 
 
 def _pushed(stage: Stage) -> Least | None:

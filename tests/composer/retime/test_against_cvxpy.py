@@ -9,11 +9,16 @@ import pytest
 from composer.limits.abilities import abilities_of
 from composer.limits.check import check
 from composer.retime.retiming import retime
+from composer.retime.rows import ABOVE_ROW, DUTY_ROW
 
 from .scores import random_score
 
 SEEDS = range(250)
 HOLD, SUDDEN = 0, 2
+BOUND = {kind: {"clock": 0, "rhythm": 0} for kind in (ABOVE_ROW, DUTY_ROW)}
+"""In how many of the scores compared some hold, and some coil, holds a time where it is."""
+
+SOLVED = {"clock": 0, "rhythm": 0}
 BEND = {"smooth": (1.875, 10.0 / np.sqrt(3.0)), "linear": (1.0, 0.0), "swell": (2.0, 2.0), "settle": (2.0, 2.0)}
 NAMES = ("smooth", "linear", "swell", "settle", "sudden")
 
@@ -136,3 +141,15 @@ def test_random_small_scores_cost_what_an_independent_solver_finds(make_rig, see
         if theirs is not None:
             assert ours.cost == pytest.approx(theirs, abs=1e-6, rel=1e-6), seed
             assert ours.bound == pytest.approx(ours.cost, abs=1e-8), seed
+            for kind in BOUND:
+                BOUND[kind][keep] += bool(np.any((ours.proof.rows.kind == kind) & (ours.proof.dual > 1e-6)))
+    SOLVED[keep] += len(seeds)
+
+
+@pytest.mark.parametrize("keep", ["clock", "rhythm"])
+def test_holds_and_coils_bind_in_many_of_the_scores_compared(keep):
+    # Counted by the comparisons above in the same process: where only some of them ran there, in proportion.
+    if SOLVED[keep]:
+        for kind, counts in BOUND.items():
+            assert counts[keep] >= 0.04 * SOLVED[keep], kind
+        assert sum(counts[keep] for counts in BOUND.values()) >= 0.1 * SOLVED[keep]

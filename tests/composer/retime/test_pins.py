@@ -2,12 +2,17 @@
 
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+from scipy.optimize import linprog
 
 from composer.limits.abilities import abilities_of
 from composer.retime.pins import chains_too_long
+from composer.retime.retiming import retime
+from composer.retime.rows import MOVE_ROW
 from composer.retime.stage import stage_of
 
-from .scores import tracks_of
+from .scores import random_score, tracks_of
 
 
 def chains(rig, fibers, pins, give=None):
@@ -48,3 +53,59 @@ def test_give_at_a_pin_is_counted(make_rig):
     assert chains(make_rig(1), [track], [0.4], [0.1]) == []
     (chain,) = chains(make_rig(1), [track], [0.4], [0.05])
     assert chain.short_s == pytest.approx(0.05)
+
+
+def solved(tracks, rig, pins, give):
+    """Whether times exist that keep what is pinned, by a programme of its own over the rows alone."""
+    stage = stage_of(tracks, abilities_of(rig), pins, give, None, False)
+    return stage, feasible(stage.rows.matrix, stage.rows.least)
+
+
+def feasible(matrix, least):
+    count = matrix.shape[1]
+    found = linprog(np.zeros(count), A_ub=-matrix, b_ub=-least, bounds=(None, None), method="highs")
+    return found.status == 0
+
+
+@settings(max_examples=40, deadline=None)
+@given(st.integers(0, 10_000))
+def test_a_conflict_holds_and_dissolves_without_any_one_of_its_pins_and_moves(make_rig, seed):
+    rig = make_rig(4)
+    tracks, pins = random_score(seed, moves=4).tracks, np.sort(random_score(seed + 1, moves=4).pins_s)
+    pins = np.unique(np.append(pins, tracks.time_s.max() / 2.0))
+    give = np.zeros(len(pins))
+    stage, fits = solved(tracks, rig, pins, give)
+    found = chains_too_long(stage.events, stage.rows, pins, give)
+    assert bool(found) != fits
+    for chain in found:
+        # Only the moves and pins that the conflict names, with rests and the order of hits, which are no one's to change.
+        mine = np.isin(pins, [chain.from_s, chain.to_s])
+        alone = stage_of(tracks, abilities_of(rig), pins[mine], give[mine], None, False)
+        named = (alone.rows.kind != MOVE_ROW) | np.isin(alone.rows.knot, chain.knots)
+        matrix, least = alone.rows.matrix[named], alone.rows.least[named].copy()
+        assert not feasible(matrix, least)
+        for knot in chain.knots:
+            without = named & ~((alone.rows.kind == MOVE_ROW) & (alone.rows.knot == knot))
+            assert feasible(alone.rows.matrix[without], alone.rows.least[without])
+        for place in np.flatnonzero(mine):
+            fewer = mine.copy()
+            fewer[place] = False
+            other = stage_of(tracks, abilities_of(rig), pins[fewer], give[fewer], None, False)
+            part = (other.rows.kind != MOVE_ROW) | np.isin(other.rows.knot, chain.knots)
+            assert feasible(other.rows.matrix[part], other.rows.least[part])
+        # With so many seconds more at the later pin they fit, with less they do not.
+        for share, fit in ((1.0 + 1e-6, True), (0.99, False)):
+            more = give[mine].copy()
+            more[-1] = share * chain.short_s
+            relaxed = stage_of(tracks, abilities_of(rig), pins[mine], more, None, False)
+            part = (relaxed.rows.kind != MOVE_ROW) | np.isin(relaxed.rows.knot, chain.knots)
+            assert feasible(relaxed.rows.matrix[part], relaxed.rows.least[part]) == fit
+
+
+def test_the_factor_told_fits_and_a_larger_one_does_not(make_rig):
+    track = [(0.0, 0.3, "linear"), (0.6, 0.0, "linear"), (1.2, 0.3, "linear"), (1.4, None, "end")]
+    tracks = tracks_of([track])
+    rig = make_rig(1)
+    (short,) = retime(tracks, abilities_of(rig), rig, np.array([0.6, 1.4])).pins_short
+    # A second and a half are wanted for what has 0.8 s.
+    assert short.factor == pytest.approx(0.8 / 1.5, rel=1e-6)
