@@ -204,8 +204,14 @@ def _three(fiber: ArrayLike, a: ArrayLike, b: ArrayLike) -> tuple[Index, Array, 
 def _way_time(abilities: Abilities, tables: Tables, way: OneWay, fiber: Index, low: Array, high: Array) -> Array:
     """Seconds between two strains, low to high, by one direction's rates."""
     capability = abilities.which[fiber]
-    first_cell, last_cell = cells(abilities, fiber, low), cells(abilities, fiber, high)
-    time = _clock(tables, way, capability, high, last_cell) - _clock(tables, way, capability, low, first_cell)
+    # Both ends at once: most calls are of a few ways, and cost what their steps cost.
+    number, both = len(low), np.concatenate([capability, capability])
+    ends = np.concatenate([low, high])
+    share = (ends - tables.low[both]) / tables.width[both]
+    cell = _cell(tables.stroke_key, tables.points, both, share)
+    clock = _clock(tables, way, both, ends, cell)
+    time = clock[number:] - clock[:number]
+    first_cell, last_cell = cell[:number], cell[number:]
     # Within one cell the difference of two clocks would lose a short way's digits.
     begin = capability * tables.points
     inside = (first_cell == last_cell) & (low >= way.strain[begin]) & (high <= way.strain[begin + tables.points - 1])

@@ -65,6 +65,8 @@ MOST_SWINGS = 1_000_000
 
 def _check_swings(timed: Timed, lines: Lines, faults: list[Fault]) -> None:
     """So many periods at most that a check can look at each; the line is named that has the most of them."""
+    if not len(timed.hertz):
+        return
     swings = timed.hertz * (timed.until_s - timed.from_s)
     if (total := float(swings.sum())) > MOST_SWINGS:
         quiver = lines.written[int(np.bincount(timed.row, weights=swings).argmax())].quiver

@@ -19,6 +19,9 @@ TIME_UNITS = ("bars", "counts", "s")
 TARGET_UNITS = ("stroke", "%", "mm", "deg", "hold")
 HELD = TARGET_UNITS.index("hold")
 
+UNIT_NUMBERS = {unit: number for number, unit in enumerate(TARGET_UNITS)}
+SHAPE_NUMBERS = {name: number for number, name in enumerate(NAMES)}
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Lines:
@@ -70,14 +73,16 @@ class _Row:
     shut: bool = False
 
 
-_NOTHING = (Fraction(0), Fraction(0), Fraction(0))
+_ZERO = Fraction(0)
+_NOTHING = (_ZERO, _ZERO, _ZERO)
 
 
 def parts(duration: Duration | None) -> tuple[Fraction, ...]:
     """A duration as parts of TIME_UNITS; none at all for None."""
     if duration is None:
         return _NOTHING
-    return tuple(duration.value if unit == duration.unit else Fraction(0) for unit in TIME_UNITS)
+    value, unit = duration.value, duration.unit
+    return (value if unit == "bars" else _ZERO, value if unit == "counts" else _ZERO, value if unit == "s" else _ZERO)
 
 
 def phrase_length(phrase: Phrase) -> Duration | None:
@@ -155,34 +160,48 @@ def _less(a: tuple[Fraction, ...], b: tuple[Fraction, ...]) -> tuple[Fraction, .
 
 def _table(rows: list[_Row], first: list[int], lengths: list[tuple[Fraction, ...]], phrases: list[Phrase], file: str) -> Lines:
     def triples(values: list[tuple[Fraction, ...]]) -> Array:
-        return np.array([[float(part) for part in value] for value in values], dtype=float).reshape(-1, 3)
+        return np.array([_number(part) for value in values for part in value], dtype=float).reshape(-1, 3)
 
     def column(values: list, kind: type) -> NDArray:
         return np.array(values, dtype=kind)
 
-    quivers = [row.quiver for row in rows]
-    controls = [row.controls or (None,) * 4 for row in rows]
-    written = tuple(row.source for row in rows)
+    control, control_unit = np.zeros((len(rows), 4)), np.full((len(rows), 4), HELD, dtype=np.int8)
+    over, lasts = np.zeros((len(rows), 3)), np.zeros((len(rows), 3))
+    hertz, by, by_unit = np.zeros(len(rows)), np.zeros(len(rows)), np.full(len(rows), HELD, dtype=np.int8)
+    has_over, has_lasts = np.zeros(len(rows), dtype=bool), np.zeros(len(rows), dtype=bool)
+    for at, row in enumerate(rows):  # what few lines have
+        if row.over is not None:
+            over[at], has_over[at] = triples([parts(row.over)])[0], row.shape != "step"
+        if row.lasts is not None:
+            lasts[at], has_lasts[at] = triples([row.lasts])[0], True
+        if row.controls:
+            control[at] = [_number(inner.value) for inner in row.controls]
+            control_unit[at] = [UNIT_NUMBERS[inner.unit] for inner in row.controls]
+        if (quiver := row.quiver) is not None:
+            hertz[at], by[at], by_unit[at] = _number(quiver.hertz), _number(quiver.by.value), UNIT_NUMBERS[quiver.by.unit]
     return Lines(
         first=column(first, np.int64),
         length=triples(lengths),
         offset=triples([row.offset for row in rows]),
-        over=triples([parts(row.over) for row in rows]),
-        has_over=column([row.over is not None and row.shape != "step" for row in rows], np.bool_),
-        lasts=triples([row.lasts or _NOTHING for row in rows]),
-        has_lasts=column([row.lasts is not None for row in rows], np.bool_),
-        value=column([float(row.target.value) for row in rows], np.float64),
-        unit=column([TARGET_UNITS.index(row.target.unit) for row in rows], np.int8),
-        control=column([[0.0 if c is None else float(c.value) for c in four] for four in controls], np.float64).reshape(-1, 4),
-        control_unit=column(
-            [[HELD if c is None else TARGET_UNITS.index(c.unit) for c in four] for four in controls], np.int8
-        ).reshape(-1, 4),
-        shape=column([NAMES.index(row.shape) for row in rows], np.int8),
+        over=over,
+        has_over=has_over,
+        lasts=lasts,
+        has_lasts=has_lasts,
+        value=column([_number(row.target.value) for row in rows], np.float64),
+        unit=column([UNIT_NUMBERS[row.target.unit] for row in rows], np.int8),
+        control=control,
+        control_unit=control_unit,
+        shape=column([SHAPE_NUMBERS[row.shape] for row in rows], np.int8),
         shut=column([row.shut for row in rows], np.bool_),
         phrase_line=column([row.source.span.line if row.source.span.file == file else 0 for row in rows], np.int32),
-        written=written,
+        written=tuple(row.source for row in rows),
         phrases=tuple(phrases),
-        hertz=column([0.0 if q is None else float(q.hertz) for q in quivers], np.float64),
-        by=column([0.0 if q is None else float(q.by.value) for q in quivers], np.float64),
-        by_unit=column([HELD if q is None else TARGET_UNITS.index(q.by.unit) for q in quivers], np.int8),
+        hertz=hertz,
+        by=by,
+        by_unit=by_unit,
     )
+
+
+def _number(value: Fraction) -> float:
+    """The float nearest to a fraction, without the ways round of `float`."""
+    return 0.0 if value is _ZERO else value.numerator / value.denominator

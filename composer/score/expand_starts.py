@@ -45,19 +45,23 @@ def starts_of(score: Score, rig: Rig, selector: Selector, tempo: TempoMap, fault
     for section in score.sections:
         work.section(section)
     sizes = np.array([len(part) for part in work.counts], dtype=np.int64)
-    entry = np.repeat(np.array(work.numbers, dtype=np.int64), sizes)
+    entry = np.array(work.numbers, dtype=np.int64).repeat(sizes)
     per_entry = np.array([(float(e.stretch), float(e.scale), e.add) for e in work.entries]).reshape(-1, 3)
     return Starts(
-        fiber=np.concatenate([*work.fibers, np.empty(0, np.int64)]),
-        variant=np.repeat(np.array(work.variant, dtype=np.int64), sizes),
+        fiber=_end_to_end(work.fibers, np.int64),
+        variant=np.array(work.variant, dtype=np.int64).repeat(sizes),
         entry=entry,
-        count=np.concatenate([*work.counts, np.empty(0)]),
+        count=_end_to_end(work.counts, np.float64),
         stretch=per_entry[entry, 0],
         scale=per_entry[entry, 1],
         added=per_entry[entry, 2] != 0.0,
         variants=list(work.variants),
         entries=work.entries,
     )
+
+
+def _end_to_end(parts: list[NDArray], kind: type) -> NDArray:
+    return np.concatenate(parts) if parts else np.empty(0, dtype=kind)
 
 
 GOLDEN = np.uint64(0x9E3779B97F4A7C15)
@@ -88,9 +92,7 @@ class _Work:
         self.numbers: list[int] = []
         self.entries: list[Entry] = []
         self.variants: dict[tuple[str, bool], int] = {}
-        self.at_m = np.array([fiber.at_m for fiber in rig.fibers], dtype=float).reshape(-1, 3)
         self.known: dict[tuple[str, ...], NDArray[np.int64]] = {}
-        self.mirrors = np.array([-1 if fiber.mirror is None else fiber.mirror for fiber in rig.fibers], dtype=np.int64)
 
     def section(self, section: Section) -> None:
         """All entries of a section, in all its repeats."""
@@ -121,7 +123,7 @@ class _Work:
         elif entry.after is not None:
             starts = self._shifted(starts, entry.after)
         starts = self._repeated(starts, entry.repeat, _times(phrase_length(phrase), entry.stretch))
-        counts = np.broadcast_to(starts[:, None], (len(starts), len(fibers)))
+        counts = starts[:, None].repeat(len(fibers), axis=1)
         if entry.canon is not None:
             rank = ranks(entry.canon.origin, len(fibers))
             counts = self.tempo.shifted(counts, rank * float(entry.canon.delay.value), entry.canon.delay.unit)
@@ -129,14 +131,18 @@ class _Work:
             off = scattered(entry.scatter.seed, fibers) * float(entry.scatter.within.value)
             counts = self.tempo.shifted(counts, off, entry.scatter.within.unit)
         if entry.ripple is not None:
-            along = self.at_m[fibers, entry.ripple.axis] / float(entry.ripple.speed)
+            hangs = np.array([self.rig.fibers[fiber].at_m[entry.ripple.axis] for fiber in fibers.tolist()], dtype=float)
+            along = hangs / float(entry.ripple.speed)
             counts = self.tempo.shifted(counts, along - along.min(), "s")
         self._not_before_the_start(entry, fibers, counts)
-        playing = self.mirrors[fibers] if entry.mirror else fibers
+        playing = fibers
+        if entry.mirror:
+            playing = np.array([self.rig.fibers[fiber].mirror for fiber in fibers.tolist()], dtype=np.int64)
         self.numbers.append(len(self.entries))
         self.entries.append(entry)
         self.variant.append(self.variants.setdefault((phrase.name, entry.retrograde), len(self.variants)))
-        self.fibers.append(np.broadcast_to(playing, counts.shape).ravel())
+        repeats = counts.size // max(len(playing), 1)
+        self.fibers.append(playing[None, :].repeat(repeats, axis=0).ravel())
         self.counts.append(np.maximum(counts, 0.0).ravel())
 
     def _shifted(self, counts: Array, by: Duration, times: Array | float = 1.0) -> Array:
@@ -160,8 +166,8 @@ class _Work:
         return self.known[texts]
 
     def _not_before_the_start(self, entry: Entry, fibers: NDArray[np.int64], counts: Array) -> None:
-        early = np.argwhere(counts < -1e-9)
-        if early.size:
+        if counts.min(initial=0.0) < -1e-9:
+            early = np.argwhere(counts < -1e-9)
             who = self.rig.fibers[int(fibers[early[0, 1]])].name
             by = -float(self.tempo.seconds(counts[tuple(early[0])]))
             raise Faults(

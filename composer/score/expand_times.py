@@ -18,6 +18,8 @@ from composer.tracks import SAME_INSTANT_S
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
+NO_LINES = np.empty(0, dtype=np.int64)
+
 STEPS = NAMES.index("step")
 
 LONGEST_S = float(RANGES["seconds"].high)
@@ -59,27 +61,36 @@ def moments(starts: Starts, lines: Lines, tempo: TempoMap, rig: Rig, faults: lis
     end = _later(tempo, count, lines.length[variant], stretch)
 
     sizes = np.diff(lines.first)[variant]
-    begin = np.concatenate([[0], np.cumsum(sizes)])
-    instance = np.repeat(np.arange(len(order)), sizes)
-    row = np.arange(begin[-1]) + (lines.first[:-1][variant] - begin[:-1])[instance]
+    stop = sizes.cumsum()
+    begin = stop - sizes
+    instance = np.arange(len(order)).repeat(sizes)
+    row = np.arange(len(instance)) + (lines.first[variant] - begin)[instance]
     opens = np.zeros(len(row), dtype=bool)
-    opens[begin[:-1]] = True
+    opens[begin] = True
 
     until = _later(tempo, count[instance], lines.offset[row], stretch[instance])
     sources = [start, end, until]
-    over, lasts = np.flatnonzero(lines.has_over[row]), np.flatnonzero(lines.has_lasts[row])
-    sources.append(_shifted(tempo, until[over], -lines.over[row[over]] * stretch[instance[over], None]))
-    before = _before(until, start, instance, opens)
-    sources.append(_shifted(tempo, before[lasts], lines.lasts[row[lasts]] * stretch[instance[lasts], None]))
-    start, end, until, leaves_over, arrives_lasts = _snapped(sources)
+    # Few phrases have moves of their own length, fewer are played backwards: what no line has is not looked for.
+    over = lines.has_over[row].nonzero()[0] if lines.has_over.any() else NO_LINES
+    lasts = lines.has_lasts[row].nonzero()[0] if lines.has_lasts.any() else NO_LINES
+    if over.size:
+        sources.append(_shifted(tempo, until[over], -lines.over[row[over]] * stretch[instance[over], None]))
+    if lasts.size:
+        before = _before(until, start, instance, opens)
+        sources.append(_shifted(tempo, before[lasts], lines.lasts[row[lasts]] * stretch[instance[lasts], None]))
+    start, end, until, *others = _snapped(sources)
 
     before = _before(until, start, instance, opens)
     leaves, arrives = before.copy(), until.copy()
-    leaves[over], arrives[lasts] = leaves_over, arrives_lasts
-    step = (lines.shape[row] == STEPS) & ~lines.has_lasts[row]
+    if over.size:
+        leaves[over] = others.pop(0)
+    if lasts.size:
+        arrives[lasts] = others.pop(0)
+    step = (((lines.shape == STEPS) & ~lines.has_lasts)[row]).nonzero()[0]
     leaves[step] = until[step]
-    taken = np.append(chain[1:] == chain[:-1], False)
-    cut = np.where(taken, np.append(start[1:], np.inf), np.inf)
+    cut = np.full(len(order), np.inf)
+    taken = (chain[1:] == chain[:-1]).nonzero()[0]
+    cut[taken] = start[taken + 1]
     found = Moments(order, chain, start, cut, end, instance, row, opens, before, leaves, arrives, until)
     _check_starts(found, starts, rig, faults)
     _check_lines(found, starts, lines, rig, faults)
@@ -96,11 +107,9 @@ def _before(until: Array, start: Array, instance: Index, opens: NDArray[np.bool_
 
 def _later(tempo: TempoMap, count: Array, by: Array, stretch: Array) -> Array:
     """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS times `stretch`, after `count`."""
-    bars = by[:, 0] * stretch
-    some = np.flatnonzero(bars)
-    if some.size:
+    if (some := by[:, 0].nonzero()[0]).size:
         count = count.copy()
-        count[some] = tempo.counts_of_bars(tempo.bars(count[some]) + bars[some])
+        count[some] = tempo.counts_of_bars(tempo.bars(count[some]) + by[some, 0] * stretch[some])
     return tempo.seconds(count + by[:, 1] * stretch) + by[:, 2] * stretch
 
 
@@ -114,16 +123,22 @@ def _shifted(tempo: TempoMap, seconds: Array, by: Array) -> Array:
 
 def _snapped(sources: list[Array]) -> list[Array]:
     """The same instants, those that are one within SAME_INSTANT_S as one float: the earliest of them."""
-    known, which = np.unique(np.concatenate(sources), return_inverse=True)
-    leads = np.ones(len(known), dtype=bool)
-    leads[1:] = np.diff(known) > SAME_INSTANT_S
-    snapped = known[leads][np.cumsum(leads) - 1][which]
-    return np.split(snapped, np.cumsum([len(part) for part in sources])[:-1])
+    every = np.concatenate(sources)
+    order = every.argsort()
+    rising = every[order]
+    leads = np.ones(len(rising), dtype=bool)
+    leads[1:] = (rising[1:] - rising[:-1]) > SAME_INSTANT_S
+    every[order] = rising[leads][leads.cumsum() - 1]
+    parts, at = [], 0
+    for part in sources:
+        parts.append(every[at : at + len(part)])
+        at += len(part)
+    return parts
 
 
 def _check_starts(found: Moments, starts: Starts, rig: Rig, faults: list[Fault]) -> None:
     """Two entries that take over on one fiber at one instant: one fault for each pair of entries."""
-    both = np.flatnonzero(found.cut == found.start)
+    both = (found.cut == found.start).nonzero()[0]
     if not both.size:
         return
     entry = starts.entry[found.order]
@@ -152,11 +167,15 @@ def _check_starts(found: Moments, starts: Starts, rig: Rig, faults: list[Fault])
 
 def _check_lines(found: Moments, starts: Starts, lines: Lines, rig: Rig, faults: list[Fault]) -> None:
     """Offsets that do not rise, moves that reach back too far, lengths too short, once all are seconds."""
-    shut = lines.shut[found.row]
-    flat = ~found.opens & ((found.until < found.before) | ((found.until == found.before) & ~shut))
+    flat = (found.until <= found.before) & ~found.opens
+    if flat.any():
+        flat &= (found.until < found.before) | ~lines.shut[found.row]
     reach = (found.leaves < found.before) | (found.arrives > found.until)
-    last = np.append(found.opens[1:], True) if len(found.opens) else found.opens
-    short = last & (found.until > found.end[found.instance])
+    short = found.until > found.end[found.instance]
+    if short.any():
+        short[:-1] &= found.opens[1:]
+    if not (flat.any() or reach.any() or short.any()):
+        return
 
     def tell(wrong: NDArray[np.bool_], what: str, expected: str, place: str) -> None:
         seen: set[Span] = set()

@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.tables import strain_after, travel_time_s
-from composer.score.expand_lines import HELD, Lines
+from composer.score.expand_lines import HELD, TARGET_UNITS, Lines
 from composer.score.expand_starts import Starts
 from composer.score.expand_times import Moments
 from composer.shapes import NAMES, PROGRESS
@@ -34,15 +34,10 @@ POWERS = np.array([PROGRESS.get(name, np.zeros(6)) for name in NAMES])
 def in_strain(value: Array, unit: NDArray[np.int8], fiber: Index, abilities: Abilities) -> Array:
     """Targets in strain; 0 for `hold`."""
     # In the order of TARGET_UNITS.
-    per = np.stack(
-        [
-            abilities.stroke,
-            np.full_like(abilities.stroke, 0.01),
-            1.0 / abilities.length_mm,
-            1.0 / abilities.turn_deg,
-            np.zeros_like(abilities.stroke),
-        ]
-    )
+    per = np.zeros((len(TARGET_UNITS), len(abilities.stroke)))
+    per[0], per[1] = abilities.stroke, 0.01
+    np.divide(1.0, abilities.length_mm, out=per[2])
+    np.divide(1.0, abilities.turn_deg, out=per[3])
     return value * per[unit, fiber]
 
 
@@ -71,6 +66,10 @@ class Ways:
     b: Array
 
 
+NONE_CURVED = np.empty(0, dtype=np.int64), np.empty((0, 4))
+"""Rows and control values of no moves."""
+
+
 def ways_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities, keep: Index) -> Ways:
     """The ways of the moves `keep` of some moments. Every fiber has the units of its targets: `check_names` has seen to it."""
     ways = _ways(found, starts, lines, abilities, keep)
@@ -87,15 +86,18 @@ def _ways(found: Moments, starts: Starts, lines: Lines, abilities: Abilities, ke
     held = lines.unit[row] == HELD
     target = in_strain(lines.value[row], lines.unit[row], fiber, abilities) * scale
     target[held] = np.nan
-    curved = np.flatnonzero(shape == CURVE)
-    units = lines.control_unit[row[curved]]
-    control = in_strain(lines.control[row[curved]], units, fiber[curved, None], abilities) * scale[curved, None]
-    control[units == HELD] = np.nan
+    curved, control = NONE_CURVED
+    if (bends := shape == CURVE).any():
+        curved = bends.nonzero()[0]
+        units = lines.control_unit[row[curved]]
+        control = in_strain(lines.control[row[curved]], units, fiber[curved, None], abilities) * scale[curved, None]
+        control[units == HELD] = np.nan
     stops = np.minimum(arrives, cut)
     goes = (leaves < cut) | ((leaves == arrives) & (leaves <= cut))
-    goes &= ~held | (shape == CURVE)
-    lasts = arrives - leaves
-    share = np.divide(stops - leaves, lasts, out=np.ones_like(lasts), where=(stops < arrives) & goes)
+    goes &= ~held | bends
+    short = ((stops < arrives) & goes).nonzero()[0]
+    share = np.ones(len(keep))
+    share[short] = (stops[short] - leaves[short]) / (arrives[short] - leaves[short])
     leads = np.ones(len(keep), dtype=bool)
     chain = found.chain[instance]
     leads[1:] = chain[1:] != chain[:-1]
@@ -110,10 +112,11 @@ def _solve_values(ways: Ways, abilities: Abilities) -> None:
     changes. A round settles at least the first of a row that still changes, so it ends; as a rule after two or three.
     """
     whole = ways.share == 1.0
-    gone = _at(POWERS[ways.shape], ways.share)
-    gone[whole] = 1.0
-    alpha = np.where(ways.goes & ~np.isnan(ways.target), 1.0 - gone, 1.0)
-    beta = np.where(alpha == 1.0, 0.0, np.nan_to_num(ways.target) * gone)
+    short = (~whole).nonzero()[0]
+    gone = np.ones(len(whole))
+    gone[short] = _at(POWERS[ways.shape[short]], ways.share[short])
+    alpha = np.where(ways.goes & (ways.target == ways.target), 1.0 - gone, 1.0)
+    beta = np.where(alpha == 1.0, 0.0, ways.target * gone)
     if ways.curved.size:
         at = ways.curved[ways.goes[ways.curved]]
         control = ways.control[ways.goes[ways.curved]]
@@ -122,7 +125,7 @@ def _solve_values(ways: Ways, abilities: Abilities) -> None:
         held = np.isnan(inner)
         alpha[at] = np.sum(np.where(held, weights, 0.0), axis=1)
         beta[at] = np.sum(np.where(held, 0.0, weights * np.nan_to_num(inner)), axis=1)
-    cut = np.flatnonzero((ways.shape == SUDDENLY) & ways.goes & ~whole)
+    cut = short[(ways.shape[short] == SUDDENLY) & ways.goes[short]]
     alpha[ways.leads] = 0.0
     if cut.size:
         # Whether one that is cut has begun is not known yet: the first guess is that it has, and went all the way.
@@ -162,7 +165,7 @@ def _cut_sudden(ways: Ways, abilities: Abilities, cut: Index, a: Array) -> Array
 
 def _start_suddens(ways: Ways, abilities: Abilities) -> None:
     """A sudden move starts as late as it can: its leave becomes that instant."""
-    sudden = np.flatnonzero((ways.shape == SUDDENLY) & ways.goes & (ways.arrives > ways.leaves))
+    sudden = ((ways.shape == SUDDENLY) & ways.goes & (ways.arrives > ways.leaves)).nonzero()[0]
     if not sudden.size:
         return
     needs = travel_time_s(abilities, ways.fiber[sudden], ways.a[sudden], ways.target[sudden])
@@ -170,7 +173,7 @@ def _start_suddens(ways: Ways, abilities: Abilities) -> None:
     early = ways.leaves[sudden]
     begins = np.where(begins <= early + SAME_INSTANT_S, early, begins)
     ways.leaves[sudden] = np.minimum(begins, ways.stops[sudden])
-    ways.goes[sudden] &= (ways.leaves[sudden] < ways.stops[sudden]) & (np.abs(ways.b - ways.a)[sudden] > NO_WAY)
+    ways.goes[sudden] &= (ways.leaves[sudden] < ways.stops[sudden]) & (np.abs(ways.b[sudden] - ways.a[sudden]) > NO_WAY)
 
 
 def affine_scan(alpha: Array, beta: Array) -> Array:
@@ -179,7 +182,9 @@ def affine_scan(alpha: Array, beta: Array) -> Array:
     Only what still hangs on an earlier value is worked on, so its cost is that of the longest run of holds and cuts.
     """
     value = beta.copy()
-    at = np.flatnonzero(alpha)
+    at = alpha.nonzero()[0]
+    if not at.size:
+        return value
     factor, behind = alpha[at], at - 1
     place = np.full(len(alpha), -1)
     while at.size:

@@ -52,20 +52,30 @@ class Timed:
     amplitude: Array
 
 
+NO_QUIVERS = Timed(*(np.empty(0, dtype=np.int64) for _ in range(2)), *(np.empty(0) for _ in range(4)))
+
+
 def knots_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities, chains: int) -> tuple[Knots, Timed]:
     """The knots of all chains, with one at each end of every quiver, and the quivers."""
-    keep = np.flatnonzero(found.opens | (found.before < found.cut[found.instance]))
+    keep = (found.opens | (found.before < found.cut[found.instance])).nonzero()[0]
     instance, row = found.instance[keep], found.row[keep]
     ways = ways_of(found, starts, lines, abilities, keep)
 
     before, leaves, stops = found.before[keep], ways.leaves, ways.stops
     until = np.minimum(found.until[keep], found.cut[instance])
     chain = found.chain[instance]
-    last_of_instance = np.append(instance[1:] != instance[:-1], True)[: len(instance)]
+    last_of_instance = np.ones(len(instance), dtype=bool)
+    np.not_equal(instance[1:], instance[:-1], out=last_of_instance[:-1])
     following = np.where(last_of_instance, found.cut[instance], until)
 
     moving = ways.goes & ~goes_nowhere(ways)
     moving &= (stops > leaves) | (np.abs(ways.b - ways.a) > NO_WAY)
+    line = np.array([entry.span.line for entry in starts.entries], dtype=np.int32)[starts.entry[found.order]][instance]
+    if not lines.hertz.any():
+        stays = np.where(moving, leaves, following)
+        there = (stays > before, moving, moving & (following > stops))
+        parts = _Parts(there, (before, leaves, stops), (ways.a, ways.a, ways.b), None)
+        return _written(chains, chain, parts, ways, line, lines.phrase_line[row]), NO_QUIVERS
     # A line quivers from the line before on; a sudden one until it strikes, as it has no speed to spare from then on.
     ends = np.where(moving & (ways.shape == SUDDENLY), leaves, until)
     amplitude = in_strain(lines.by[row], lines.by_unit[row], ways.fiber, abilities) * starts.scale[found.order[instance]]
@@ -76,7 +86,6 @@ def knots_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities,
     trembles = moving & quivers & (until > stops) & (ways.shape != SUDDENLY)
     after = np.where(trembles, until, after)
     rests = (moving | quivers) & (following > after)
-    line = np.array([entry.span.line for entry in starts.entries], dtype=np.int32)[starts.entry[found.order]][instance]
     parts = _Parts((waits, moving, trembles, rests), (before, leaves, stops, after), (ways.a, ways.a, ways.b, ways.b), quivers)
     knots = _written(chains, chain, parts, ways, line, lines.phrase_line[row])
     timed = (chain, row, before, ends, lines.hertz[row], amplitude)
@@ -87,14 +96,14 @@ def knots_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities,
 class _Parts:
     """What each of M moves is made of in time: its wait, its way, what of its line is left and quivers, its rest.
 
-    there, begins_s, strain: four of (M,) each: whether there is such a part, when it begins, the strain there
-    quivers: (M,) whether the line quivers, and with it all of these but the rest
+    there, begins_s, strain: (M,) each of these: whether there is such a part, when it begins, the strain there
+    quivers: (M,) whether the line quivers, and with it all of these but the rest; None without any, and nothing that is left
     """
 
     there: tuple[NDArray[np.bool_], ...]
     begins_s: tuple[Array, ...]
     strain: tuple[Array, ...]
-    quivers: NDArray[np.bool_]
+    quivers: NDArray[np.bool_] | None
 
 
 def _written(
@@ -106,59 +115,62 @@ def _written(
     phrase_line: NDArray[np.int32],
 ) -> Knots:
     """Knots in order: for each chain one at 0, then for each move its parts; holds made one."""
-    sizes = sum(part.astype(np.int64) for part in parts.there)
-    per_chain = np.bincount(chain, weights=sizes, minlength=chains).astype(np.int64) + 1
-    first = np.concatenate([[0], np.cumsum(per_chain)])
-    # Before move m come all earlier knots and the openings of the chains up to its own.
-    place = np.cumsum(sizes) - sizes + chain + 1
-    total = int(first[-1])
-    time, manner = np.zeros(total), np.full(total, HOLD, dtype=np.int8)
-    shape = np.full(total, -1, dtype=np.int8)
-    made, made_of = np.zeros(total, dtype=np.int32), np.zeros(total, dtype=np.int32)
-    start = np.zeros(total)
+    there = np.stack(parts.there, axis=1)
+    of = there.ravel().nonzero()[0]
+    move, number = np.divmod(of, there.shape[1])
+    per_chain = np.bincount(chain[move], minlength=chains) + 1
+    total = len(of) + chains
+    # Before a knot come all earlier ones and the openings of the chains up to its own.
+    place = np.arange(1, len(of) + 1) + chain[move]
+    opening = np.arange(chains).repeat(per_chain)
+    time, start = np.zeros(total), np.zeros(total)
+    time[place] = np.stack(parts.begins_s, axis=1).ravel()[of]
+    start[place] = np.stack(parts.strain, axis=1).ravel()[of]
+    move_of = np.full(total, -1, dtype=np.int64)
+    move_of[place] = move
+    at, way = (goes := number == 1).nonzero()[0], move[goes]
+    at = place[at]
     way_of = np.full(total, -1, dtype=np.int64)
+    way_of[at] = way
+    manner, shape = np.full(total, HOLD, dtype=np.int8), np.full(total, -1, dtype=np.int8)
+    manner[at], shape[at] = _manners(ways, way)
     quivers = np.zeros(total, dtype=bool)
-    for number, (part, when, value) in enumerate(zip(parts.there, parts.begins_s, parts.strain, strict=True)):
-        at, move = place[part], np.flatnonzero(part)
-        time[at], start[at], made[at], made_of[at] = when[move], value[move], line[move], phrase_line[move]
-        if number < 3:
-            quivers[at] = parts.quivers[move]
-        if number == 1:
-            way_of[at] = move
-        place += part
-    at = np.flatnonzero(way_of >= 0)
-    manner[at], shape[at] = _manners(ways, way_of[at])
-    quivers &= (manner != STEP) & (manner != SUDDEN)
-    manner[quivers & (manner == HOLD)] = MOVE
+    if parts.quivers is not None:
+        quivers[place] = parts.quivers[move] & (number < 3)
+        quivers &= (manner != STEP) & (manner != SUDDEN)
+        manner[quivers & (manner == HOLD)] = MOVE
 
     # A hold of no length is none, and a hold after a hold is one hold.
-    last = first[1:] - 1
-    some = np.ones(total, dtype=bool)
-    some[:-1] = (manner[:-1] != HOLD) | (time[1:] > time[:-1])
-    some[last] = True
-    kept = _jumps_made_one(np.flatnonzero(some), manner, start, way_of, ways)
-    begins = np.zeros(total, dtype=bool)
-    begins[first[:-1]] = True
-    opening = np.cumsum(begins)[kept]
-    again = np.zeros(len(kept), dtype=bool)
-    again[1:] = (manner[kept][1:] == HOLD) & (manner[kept][:-1] == HOLD) & (opening[1:] == opening[:-1])
-    kept, opening = kept[~again], opening[~again]
+    holds = manner == HOLD
+    some = ~holds
+    some[:-1] |= (time[1:] > time[:-1]) | (opening[1:] != opening[:-1])
+    some[-1:] = True
+    kept = _jumps_made_one(some.nonzero()[0], manner, start, way_of, ways)
+    again, opens, rests = np.zeros(len(kept), dtype=bool), opening[kept], holds[kept]
+    again[1:] = rests[1:] & rests[:-1] & (opens[1:] == opens[:-1])
+    kept, opens = kept[~again], opens[~again]
+    time, manner, move, way = time[kept], manner[kept], move_of[kept], way_of[kept]
     curve = np.zeros((len(kept), 6))
     curve[:, 0] = start[kept]
-    moves = np.flatnonzero(way_of[kept] >= 0)
-    curve[moves] = _curves(ways, way_of[kept][moves]) + 0.0  # no negative zeros
-    jumps = np.flatnonzero(manner[kept] == STEP)
-    curve[jumps, 0], curve[jumps, 1] = start[kept[jumps]], ways.b[way_of[kept[jumps]]] - start[kept[jumps]]
-    earliest = time[kept]
-    earliest[moves] = np.minimum(earliest[moves], ways.earliest[way_of[kept][moves]])
+    moves = (way >= 0).nonzero()[0]
+    way = way[moves]
+    curve[moves] = _curves(ways, way)
+    jumps = (manner == STEP).nonzero()[0]
+    curve[jumps, 0] = begins = start[kept[jumps]]
+    curve[jumps, 1] = ways.b[way_of[kept[jumps]]] - begins
+    earliest = time.copy()
+    earliest[moves] = np.minimum(time[moves], ways.earliest[way])
+    # An opening is no move's: it is of no line.
+    made, made_of, own = np.zeros(len(kept), dtype=np.int32), np.zeros(len(kept), dtype=np.int32), (move >= 0).nonzero()[0]
+    made[own], made_of[own] = line[move[own]], phrase_line[move[own]]
     return Knots(
-        first=np.searchsorted(opening, np.arange(1, chains + 2)),
-        time_s=time[kept],
+        first=opens.searchsorted(np.arange(chains + 1)),
+        time_s=time,
         curve=curve,
-        manner=manner[kept],
+        manner=manner,
         shape=shape[kept],
-        line=made[kept],
-        phrase_line=made_of[kept],
+        line=made,
+        phrase_line=made_of,
         earliest=earliest,
         quivers=2 * quivers[kept].astype(np.int8),
     )
@@ -193,24 +205,28 @@ def _manners(ways: Ways, move: Index) -> tuple[NDArray[np.int8], NDArray[np.int8
 
 
 def _curves(ways: Ways, move: Index) -> Array:
-    """The polynomials of moves, cut where they are cut."""
-    way = np.where(np.isnan(ways.target[move]), ways.a[move], ways.target[move]) - ways.a[move]
-    cut_sudden = ways.shape[move] == SUDDENLY
-    way[cut_sudden] = (ways.b - ways.a)[move[cut_sudden]]
-    share = np.where(cut_sudden, 1.0, ways.share[move])
-    curve = POWERS[ways.shape[move]] * way[:, None]
-    curve[:, 0] = ways.a[move]
-    spot = np.full(len(ways.a), -1, dtype=np.int64)
-    spot[ways.curved] = np.arange(len(ways.curved))
-    of = spot[move]
-    bent = np.flatnonzero(of >= 0)
-    if bent.size:
-        a, target = ways.a[move[bent]], ways.target[move[bent]]
-        points = np.column_stack([a, ways.control[of[bent]], target])
-        curve[bent] = np.where(np.isnan(points), a[:, None], points) @ BEZIER
-    jump = ways.stops[move] <= ways.leaves[move]
-    curve[jump, 1:] = 0.0  # where from and where to is for who makes several jumps one
+    """The polynomials of moves, cut where they are cut, without negative zeros."""
+    start, target, share, shape = ways.a[move], ways.target[move], ways.share[move], ways.shape[move]
+    way = np.where(np.isnan(target), start, target) - start
     short = share < 1.0
     if short.any():
+        cut_sudden = short & (shape == SUDDENLY)
+        way[cut_sudden] = ways.b[move[cut_sudden]] - start[cut_sudden]
+        share[cut_sudden], short = 1.0, short & ~cut_sudden
+    curve = POWERS[shape]
+    curve *= way[:, None]
+    curve[:, 0] = start
+    if ways.curved.size:
+        spot = np.full(len(ways.a), -1, dtype=np.int64)
+        spot[ways.curved] = np.arange(len(ways.curved))
+        of = spot[move]
+        bent = (of >= 0).nonzero()[0]
+        a = start[bent]
+        points = np.column_stack([a, ways.control[of[bent]], target[bent]])
+        curve[bent] = np.where(np.isnan(points), a[:, None], points) @ BEZIER
+    # Where a jump goes from and to is for who makes several jumps one.
+    curve[ways.stops[move] <= ways.leaves[move], 1:] = 0.0
+    if short.any():
         curve[short] *= share[short, None] ** np.arange(6)
+    curve += 0.0
     return curve

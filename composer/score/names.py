@@ -24,6 +24,8 @@ def check_names(score: Score, rig: Rig, selector: Selector) -> list[Fault]:
     for section in score.sections:
         for entry in section.entries:
             checks.entry(section, entry)
+    if not checks.faults:
+        return []
     order = {name: at for at, name in enumerate(score.lines)}
     return sorted(checks.faults, key=lambda f: (order.get(f.where.file, 0), f.where.line, f.where.column))[: most("faults")]
 
@@ -107,9 +109,11 @@ class _Names:
         first: dict[str, int] = {}
         for index in chosen:
             first.setdefault(self.rig.fibers[index].type.kind, index)
+        amounts = _amounts(phrase) if first else []
         for kind, index in first.items():
-            for target in _amounts(phrase):
-                if target.unit not in {"stroke", "hold"} | KINDS[kind].units:
+            takes = {"stroke", "hold"} | KINDS[kind].units
+            for target in amounts:
+                if target.unit not in takes:
                     self.fault(
                         target.span,
                         f"{self.rig.fibers[index].name}, a fiber of kind {kind}, has no target in {target.unit}",

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
+from math import expm1, log1p
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -80,10 +81,12 @@ class TempoMap:
         """Counts of a place. Raises Faults where its bar has no such count."""
         if place.seconds is not None:
             return float(self.counts(float(place.seconds)))
-        k = _stretch(self.meter_bar, np.float64(place.bar - 1))
-        if place.bar < 1 or not 1 <= place.count < self.bar_counts[k] + 1:
-            raise Faults([_wrong_place(place, int(self.bar_counts[k]))])
-        return float(self.meter_count[k] + (place.bar - 1 - self.meter_bar[k]) * self.bar_counts[k] + float(place.count - 1))
+        k = max(int(self.meter_bar.searchsorted(place.bar - 1, side="right")) - 1, 0)
+        counts = float(self.bar_counts[k])
+        over, under = place.count.numerator, place.count.denominator  # in whole numbers: exact, and quick
+        if place.bar < 1 or not under <= over < (int(counts) + 1) * under:
+            raise Faults([_wrong_place(place, int(counts))])
+        return float(self.meter_count[k]) + (place.bar - 1 - float(self.meter_bar[k])) * counts + (over - under) / under
 
     def say_place(self, seconds: float) -> str:
         """The place at `seconds` as a person writes it, "2:1" or "5:2.5", to a thousandth of a count."""
@@ -95,7 +98,9 @@ class TempoMap:
 
 
 def _stretch(starts: Array, at: Array) -> NDArray[np.int64]:
-    return np.maximum(np.searchsorted(starts, at, side="right") - 1, 0)
+    if len(starts) == 1:
+        return np.zeros(at.shape, dtype=np.int64)
+    return np.maximum(starts.searchsorted(at, side="right") - 1, 0)
 
 
 def _over(function: np.ufunc, bend: Array) -> Array:
@@ -110,8 +115,7 @@ def _plain(value: float) -> str:
 def tempo_map(score: Score) -> TempoMap:
     """The tempo map of a score. Raises Faults for changes that contradict one another."""
     faults: list[Fault] = []
-    meter = _meters(score.meters, faults)
-    whole = replace(_tempi(score, meter, faults), meter_count=meter[0], meter_bar=meter[1], bar_counts=meter[2])
+    whole = _tempi(score, _meters(score.meters, faults), faults)
     if faults:
         raise Faults(with_text(faults, score))
     return whole
@@ -161,8 +165,9 @@ def _meters(meters: tuple[Meter, ...], faults: list[Fault]) -> tuple[Array, Arra
         else:
             starts.append(bar)
             sizes.append(stretches[bar].counts)
-    bars, counts = np.array(starts, dtype=float), np.array(sizes, dtype=float)
-    return np.concatenate([[0.0], np.cumsum(np.diff(bars) * counts[:-1])]), bars, counts
+    bars, counts, begins = np.array(starts, dtype=float), np.array(sizes, dtype=float), np.zeros(len(starts))
+    ((bars[1:] - bars[:-1]) * counts[:-1]).cumsum(out=begins[1:])
+    return begins, bars, counts
 
 
 def _tempi(score: Score, meter: tuple[Array, Array, Array], faults: list[Fault]) -> TempoMap:
@@ -172,25 +177,33 @@ def _tempi(score: Score, meter: tuple[Array, Array, Array], faults: list[Fault])
     """
     starts, seconds, rates, slopes = [0.0], [0.0], [DEFAULT_RATE / 60.0], [0.0]
 
-    def so_far() -> TempoMap:
-        # Only the last stretch: changes come in order.
-        return TempoMap(*(np.array(part[-1:]) for part in (starts, seconds, rates, slopes)), *meter)
+    # Only the last stretch is asked, as changes come in order; its numbers one by one, as TempoMap has them for arrays.
+    def seconds_at(count: float) -> float:
+        gone = count - starts[-1]
+        bend = slopes[-1] * gone / rates[-1] if gone > 0.0 else 0.0
+        return seconds[-1] + gone / rates[-1] * (log1p(bend) / bend if bend else 1.0)
+
+    def counts_at(at_s: float) -> float:
+        gone = at_s - seconds[-1]
+        bend = slopes[-1] * gone if gone > 0.0 else 0.0
+        return starts[-1] + rates[-1] * gone * (expm1(bend) / bend if bend else 1.0)
 
     def add(count: float, rate: float, slope: float) -> None:
         if count > starts[-1]:
-            seconds.append(float(so_far().seconds(count)))
+            seconds.append(seconds_at(count))
             starts.append(count)
             rates.append(rate)
             slopes.append(slope)
         else:
             rates[-1], slopes[-1] = rate, slope
 
-    musical, timed = _in_order(score.tempi, so_far(), faults)
+    bars = TempoMap(*(np.array(part) for part in (starts, seconds, rates, slopes)), *meter)
+    musical, timed = _in_order(score.tempi, bars, faults)
     ends, last_count, last = 0.0, -1.0, None
     while musical or timed:
-        if timed and (not musical or float(so_far().counts(timed[0][0])) <= musical[0][0]):
+        if timed and (not musical or counts_at(timed[0][0]) <= musical[0][0]):
             at_s, tempo = timed.pop(0)
-            count = float(so_far().counts(at_s))
+            count = counts_at(at_s)
         else:
             count, tempo = musical.pop(0)
         if last is not None and (count < ends or count == last_count):
@@ -206,13 +219,13 @@ def _tempi(score: Score, meter: tuple[Array, Array, Array], faults: list[Fault])
             add(count, rate, 0.0)
             continue
         try:
-            until = so_far().counts_of(tempo.until) if tempo.until.seconds is None else None
+            until = bars.counts_of(tempo.until) if tempo.until.seconds is None else None
         except Faults as wrong:
             faults.extend(wrong.faults)
             continue
         to = float(tempo.to) / 60.0
         if until is None:
-            until = _end_of_timed_ramp(float(tempo.until.seconds), float(so_far().seconds(count)), count, rate, to)
+            until = _end_of_timed_ramp(float(tempo.until.seconds), seconds_at(count), count, rate, to)
         if not until > count:
             faults.append(fault_at(tempo.until.span, "this tempo ends before it starts", "a place after its start"))
             continue
