@@ -7,6 +7,8 @@ from typing import Any
 
 import click
 
+from composer.commands.outputs import outputs_apart
+
 
 @click.command("fit")
 @click.argument("bench", metavar="BENCH.csv")
@@ -33,7 +35,7 @@ def command(
     from composer.load import load_rig
     from composer.report import fit as report
 
-    _outputs_apart({"--png": png, "-o": output}, [bench, rig])
+    outputs_apart({"--png": png, "-o": output}, [bench, rig])
     for path in (png, output):
         if path:
             check_writable(path, "# fitted from ")
@@ -75,16 +77,3 @@ def _write_png(path: str, fitted: Any, title: str) -> None:
     picture = png.drawn(lambda painter: fit.paint(painter, fitted, title), fit.WIDTH, fit.HEIGHT)
     with replacing(path, "wb") as file:
         file.write(png.png_bytes(picture))
-
-
-def _outputs_apart(outputs: dict[str, str | None], inputs: list[str | None]) -> None:
-    """Raise Faults where an output would be written over an input or over another output."""
-    from composer.faults import fault
-
-    taken = {os.path.realpath(path): "what is read" for path in inputs if path}
-    for option, path in outputs.items():
-        if path is None:
-            continue
-        there = taken.setdefault(os.path.realpath(path), option)
-        if there != option:
-            raise fault(path, f"{option} would write over {there}", "a file of its own", "nothing was written")

@@ -19,7 +19,7 @@ def seconds_of(piece: Piece, text: str, option: str) -> float:
     for cue in piece.cues:
         if cue.name == text:
             return cue.at_s
-    place = _place(text, where)
+    place = place_of(text, where)
     if place is None:
         known = [cue.name for cue in piece.cues]
         listed = "; the cues are " + ", ".join(f'"{name}"' for name in known[:12]) if known else "; it has no cues"
@@ -35,8 +35,8 @@ def seconds_of(piece: Piece, text: str, option: str) -> float:
     return at
 
 
-def _place(text: str, where: str) -> Place | None:
-    """A place as a score writes it, None where the text is none."""
+def place_of(text: str, where: str) -> Place | None:
+    """A place as a score writes it, None where the text is none. Raises Faults that name `where` where its number is none."""
     found = _PLACE.fullmatch(text.strip())
     if found is None:
         return None

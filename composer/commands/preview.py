@@ -11,6 +11,7 @@ import click
 
 from composer.commands.movies import FPS, Wanted, check_call, film, take_of
 from composer.commands.movies import SIZE as MOVIE_SIZE
+from composer.commands.outputs import outputs_apart
 
 SIZE = "1920x1080"
 
@@ -76,9 +77,9 @@ def command(
     from composer.report import preview, tonight
 
     outputs = {"--png": png, "--csv": csv, "--movie": movie}
-    _outputs_apart(outputs, [score, rig])
+    outputs_apart(outputs, [score, rig], "what is previewed")
     piece = load_piece(score, rig)
-    _outputs_apart(outputs, [score, piece.rig.file])
+    outputs_apart(outputs, [score, piece.rig.file], "what is previewed")
     take = None if filmed is None else take_of(filmed, piece)
     for path in outputs.values():
         if path:
@@ -192,19 +193,6 @@ def _size(text: str, bounded: bool = True) -> tuple[int, int]:
             param_hint="--size",
         )
     return width, height
-
-
-def _outputs_apart(outputs: dict[str, str | None], inputs: list[str | None]) -> None:
-    """Raise Faults where an output would be written over an input or over another output."""
-    from composer.faults import fault
-
-    taken = {os.path.realpath(path): "what is previewed" for path in inputs if path}
-    for option, path in outputs.items():
-        if path is None:
-            continue
-        there = taken.setdefault(os.path.realpath(path), option)
-        if there != option:
-            raise fault(path, f"{option} would write over {there}", "a file of its own", "nothing was written")
 
 
 def _has_screen() -> bool:

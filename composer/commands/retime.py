@@ -55,9 +55,8 @@ def command(
     from composer.load import load_score
     from composer.report.retime import as_json as to_json
     from composer.report.retime import is_good, sentences
-    from composer.retime.choices import choices_of
     from composer.retime.programme import Unsolved
-    from composer.retime.retiming import retime
+    from composer.retime.whole_score import retime_score
 
     outputs = [path for path in (play, flat, png) if path is not None]
     _refuse_clashes(score, outputs)
@@ -67,23 +66,8 @@ def command(
     _refuse_clashes(loaded.rig.file, outputs)
     for used in loaded.score.lines:
         _refuse_clashes(used, outputs)
-    keep = keep or loaded.score.keep or "clock"
-    firm, rhythm = choices_of(loaded.score, loaded.tracks, keep)
     try:
-        retiming = retime(
-            loaded.tracks,
-            loaded.abilities,
-            loaded.rig,
-            loaded.pins_s,
-            keep,
-            shrink,
-            give_s=loaded.pins_give_s,
-            firm=firm,
-            rhythm=rhythm,
-            clock=time.perf_counter,
-            limit_s=limit_s,
-            tell=_progress(),
-        )
+        retiming = retime_score(loaded, keep, shrink=shrink, clock=time.perf_counter, limit_s=limit_s, tell=_progress())
     except Unsolved as failed:
         click.echo(f"{score}: the solver gave up, and nothing was changed: {failed} ({failed.tried})", err=True)
         return 1

@@ -15,10 +15,10 @@ from composer.limits.snag import Snag
 from composer.load import Loaded
 from composer.report.causes import cause_in_words
 from composer.report.retime import is_good, sentences
-from composer.retime.choices import choices_of
 from composer.retime.programme import Unsolved
 from composer.retime.proof import causes
-from composer.retime.retiming import Retiming, retime
+from composer.retime.retiming import Retiming
+from composer.retime.whole_score import retime_score
 from composer.simulate.run import blocks, tail_s
 from composer.tracks import Tracks
 
@@ -192,22 +192,8 @@ class Solver:
             look()
             return desk.clock()
 
-        keep = made.score.keep or "clock"
-        firm, rhythm = choices_of(made.score, made.tracks, keep)
-        return retime(
-            made.tracks,
-            made.abilities,
-            made.rig,
-            made.pins_s,
-            keep,
-            give_s=made.pins_give_s,
-            firm=firm,
-            rhythm=rhythm,
-            clock=clock,
-            limit_s=LIMIT_S,
-            tell=lambda _: look(),
-            after=before if self._rig == desk.leaning.number else None,
-        )
+        before = before if self._rig == desk.leaning.number else None
+        return retime_score(made, clock=clock, limit_s=LIMIT_S, tell=lambda _: look(), after=before)
 
     def _told(self, made: Loaded, retiming: Retiming, checked: Check) -> Retimed:
         names = [fiber.name for fiber in made.rig.fibers]

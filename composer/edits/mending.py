@@ -12,9 +12,9 @@ from composer.edits.taking import take
 from composer.faults import Faults
 from composer.limits.check import Check, check
 from composer.limits.snag import Snag
-from composer.retime.choices import choices_of
 from composer.retime.programme import Unsolved
-from composer.retime.retiming import Retiming, retime
+from composer.retime.retiming import Retiming
+from composer.retime.whole_score import retime_score
 from composer.score.model import Entry
 from composer.tracks import HOLD, STEP, Tracks, fiber_of
 
@@ -251,11 +251,7 @@ def _pin(case: _Case) -> Choice | Refusal:
     edit = pin_here(case.text, made, lands)
     try:
         after = case.remake(apply(case.text, edit))
-        firm, rhythm = choices_of(after.score, after.tracks, after.score.keep)
-        again = retime(
-            after.tracks, after.abilities, after.rig, after.pins_s, after.score.keep, give_s=after.pins_give_s, firm=firm,
-            rhythm=rhythm, after=case.retiming,
-        )  # fmt: skip
+        again = retime_score(after, after=case.retiming)
     except (Faults, Unsolved):
         return Refusal("With this instant pinned no retiming is found.")
     if again.pins_short:

@@ -16,9 +16,8 @@ from composer.picture.scene import Lane, Stretch
 from composer.picture.weave import stretches
 from composer.report.preview import sentences
 from composer.report.tonight import Tonight, Watch
-from composer.retime.choices import choices_of
 from composer.retime.programme import Unsolved
-from composer.retime.retiming import retime
+from composer.retime.whole_score import retime_score
 from composer.simulate.hits import LandingLog
 from composer.simulate.kept import Kept
 from composer.simulate.run import DEFAULT_HZ, blocks, tail_s
@@ -121,13 +120,8 @@ def mend(piece: Piece, path: str, rig_path: str | None, tell: Tell) -> None:
     except Faults:
         tell(Failed("retiming", "the score was changed meanwhile and cannot be read now"))
         return
-    keep = loaded.score.keep or "clock"
-    firm, rhythm = choices_of(loaded.score, loaded.tracks, keep)
     try:
-        found = retime(
-            loaded.tracks, loaded.abilities, loaded.rig, loaded.pins_s, keep, give_s=loaded.pins_give_s, firm=firm,
-            rhythm=rhythm, tell=lambda text: tell(Progress(text or "retiming", 0.0)),
-        )  # fmt: skip
+        found = retime_score(loaded, tell=lambda text: tell(Progress(text or "retiming", 0.0)))
     except Unsolved:
         tell(Failed("retiming", "the solver gave up; drawcord retime says more"))
         return

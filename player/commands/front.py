@@ -11,7 +11,7 @@ from collections.abc import Callable
 from typing import Any
 
 from player.commands.shown import status_of
-from player.commands.terminal import has_keys, is_screen, keys_at_once
+from player.commands.terminal import has_keys, is_screen, keys_at_once, letters, typed
 from player.engine.process.layout import Snapshot
 from player.engine.status import Status
 
@@ -113,19 +113,13 @@ class Front:
         if not self._keys:
             self._ends.wait(REFRESH_S)
             return
-        try:
-            ready, _, _ = select.select([sys.stdin], [], [], REFRESH_S)
-            typed = os.read(sys.stdin.fileno(), 64) if ready else None
-        except (OSError, ValueError):
-            typed = b""
-        if typed is None:
+        keys = typed(REFRESH_S)
+        if keys is None:
             return
-        if not typed:
+        if not keys:
             # The terminal is gone; the signal that says so stops the run.
             self._keys = False
-        # An arrow or function key begins with Escape too, but more follows at once: no vent by a slip of the cursor keys.
-        keys = [] if len(typed) > 1 and typed[:1] == b"\x1b" else typed.decode(errors="replace").lower()
-        for key in keys:
+        for key in letters(keys):
             asks = KEYS.get(key)
             paused = self._latest is not None and self._latest.state == "paused"
             if asks == "pause" and paused:

@@ -3,7 +3,6 @@ never holds up the engine. Without a terminal it only prints what is told."""
 
 import contextlib
 import os
-import select
 import sys
 import threading
 from collections import deque
@@ -11,7 +10,7 @@ from collections.abc import Callable
 from typing import Any
 
 from player.commands.shown import meters_for, scene_of
-from player.commands.terminal import has_keys, is_screen, keys_at_once
+from player.commands.terminal import has_keys, is_screen, keys_at_once, letters, typed
 from player.engine.clock import SteadyClock
 from player.engine.process.layout import Snapshot
 from player.live.hold_key import HoldKey
@@ -101,15 +100,11 @@ class LiveFront:
         if not self._keys:
             self._ends.wait(REFRESH_S)
             return
-        try:
-            ready, _, _ = select.select([sys.stdin], [], [], self._patience_s())
-            typed = os.read(sys.stdin.fileno(), 256) if ready else None
-        except (OSError, ValueError):
-            typed = b""
-        if typed is not None and not typed:
+        keys = typed(self._patience_s())
+        if keys is not None and not keys:
             # The terminal is gone; the signal that says so stops the run.
             self._keys = False
-        self._typed(typed or b"")
+        self._typed(keys or b"")
         if self._hold.is_up(self._now()):
             self._ask("held")
         elif self._hold.down:
@@ -122,10 +117,8 @@ class LiveFront:
             return REFRESH_S
         return min(REFRESH_S, max(self._hold.until_s - self._now(), 0.0) + SLIVER_S)
 
-    def _typed(self, typed: bytes) -> None:
-        # An arrow or function key begins with Escape too, but more follows at once: no vent by a slip of the cursor keys.
-        keys = "" if len(typed) > 1 and typed[:1] == b"\x1b" else typed.decode(errors="replace").lower()
-        for key in keys:
+    def _typed(self, keys: bytes) -> None:
+        for key in letters(keys):
             if key == HOLD:
                 if self._hold.pressed(self._now()):
                     self._ask("hold")

@@ -21,23 +21,11 @@ def mended(loaded: Loaded) -> tuple[Tracks, Array, Array]:
     """
     from composer.limits.check import check
     from composer.report.retime import is_good, sentences
-    from composer.retime.choices import choices_of
     from composer.retime.programme import Unsolved
-    from composer.retime.retiming import retime
+    from composer.retime.whole_score import retime_score
 
-    keep = loaded.score.keep or "clock"
-    firm, rhythm = choices_of(loaded.score, loaded.tracks, keep)
     try:
-        retiming = retime(
-            loaded.tracks,
-            loaded.abilities,
-            loaded.rig,
-            loaded.pins_s,
-            keep,
-            give_s=loaded.pins_give_s,
-            firm=firm,
-            rhythm=rhythm,
-        )
+        retiming = retime_score(loaded)
     except Unsolved as failed:
         raise NotMended(f"{loaded.score.file}: the solver gave up: {failed}") from None
     checked = check(retiming.tracks, loaded.rig, loaded.abilities)

@@ -1,18 +1,16 @@
 """What `play` is given, made ready to be played: a score, a play file or a recording, each with the rig it is for."""
 
 import os
-import re
 from dataclasses import dataclass
-from fractions import Fraction
 
 import numpy as np
 from numpy.typing import NDArray
 
+from composer.commands.places import place_of
 from composer.faults import Faults, fault, nearest
 from composer.files import read_bytes
 from composer.limits.abilities import Abilities, abilities_of
 from composer.rig.model import Rig
-from composer.score.model import Place, Span
 from composer.score.tempo import TempoMap
 from composer.tracks import Tracks
 from composer.warp import UNWARPED, Warp
@@ -24,8 +22,6 @@ Array = NDArray[np.float64]
 
 ZIP = b"PK\x03\x04"
 """The first bytes of a play file, which is a NumPy .npz."""
-
-_PLACE = re.compile(r"(?P<bar>[0-9]{1,7}):(?P<count>[0-9./+]{1,40})|(?P<seconds>[0-9./+]{1,40})\s*(?P<unit>s|ms)")
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -66,7 +62,7 @@ class Played:
         where = f"--from {text}"
         if self.tempo is None:
             raise fault(where, "a recording is played from its first set, as it does not say what came before")
-        place = _place(text, where)
+        place = place_of(text, where)
         if place is None:
             known = [cue.name for cue in self.cues]
             listed = "; the cues are " + ", ".join(f'"{name}"' for name in known[:12]) if known else "; it has no cues"
@@ -184,19 +180,3 @@ def _playback(recording: Recording, rig: Rig, abilities: Abilities) -> Source:
     numbers = np.where(valve, 32768, 0).astype(np.uint16)[None].repeat(len(recording.time_s), axis=0)
     numbers[:, place >= 0] = recording.values[:, place[place >= 0]]
     return Playback(rig, abilities, recording.time_s, from_wire(numbers, valve), at_rest=recording.ended == "rest")
-
-
-def _place(text: str, where: str) -> Place | None:
-    """A place as a score writes it, None where the text is none."""
-    from composer.score.numbers import Unreadable, written
-
-    found = _PLACE.fullmatch(text.strip())
-    if found is None:
-        return None
-    span = Span(where, 0, 0, 1)
-    try:
-        if found["seconds"]:
-            return Place(0, Fraction(0), written(found["seconds"]).value / (1000 if found["unit"] == "ms" else 1), span)
-        return Place(int(found["bar"]), written(found["count"]).value, None, span)
-    except Unreadable as wrong:
-        raise fault(where, str(wrong), "a place such as 5:1, 5:2+1/2 or 12.4s") from None

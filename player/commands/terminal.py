@@ -2,6 +2,7 @@
 
 import contextlib
 import os
+import select
 import sys
 from collections.abc import Iterator
 
@@ -49,3 +50,21 @@ def keys_at_once(wanted: bool) -> Iterator[None]:
     finally:
         with contextlib.suppress(OSError, termios.error):
             termios.tcsetattr(handle, termios.TCSANOW, was)
+
+
+MOST_TYPED = 256
+
+
+def typed(patience_s: float) -> bytes | None:
+    """Keys as they come within so long; None where none does, b"" where the terminal is gone."""
+    try:
+        ready, _, _ = select.select([sys.stdin], [], [], patience_s)
+        return os.read(sys.stdin.fileno(), MOST_TYPED) if ready else None
+    except (OSError, ValueError):
+        return b""
+
+
+def letters(keys: bytes) -> str:
+    """The keys that were typed. An arrow or function key begins with Escape too, but more follows at once: it is none of them,
+    so that no slip of the cursor keys vents."""
+    return "" if len(keys) > 1 and keys[:1] == b"\x1b" else keys.decode(errors="replace").lower()
