@@ -226,8 +226,11 @@ def _clock(tables: Tables, way: OneWay, capability: Index, strain: Array, cell: 
     first = capability * tables.points
     last = first + tables.points - 1
     over, under = strain > way.strain[last], strain < way.strain[first]
-    gone = np.clip(strain, way.strain[first], way.strain[last]) - way.strain[cell]
+    some = (over | under).any()
+    gone = (np.clip(strain, way.strain[first], way.strain[last]) if some else strain) - way.strain[cell]
     clock = way.clock_s[cell] + gone / way.rate[cell] * _log_ratio(way.slope[cell] * gone / way.rate[cell])
+    if not some:
+        return clock
     clock = np.where(over, way.clock_s[last] + (strain - way.strain[last]) / way.rate[last], clock)
     return np.where(under, (strain - way.strain[first]) / way.rate[first], clock)
 

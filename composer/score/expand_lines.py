@@ -162,9 +162,6 @@ def _table(rows: list[_Row], first: list[int], lengths: list[tuple[Fraction, ...
     def triples(values: list[tuple[Fraction, ...]]) -> Array:
         return np.array([_number(part) for value in values for part in value], dtype=float).reshape(-1, 3)
 
-    def column(values: list, kind: type) -> NDArray:
-        return np.array(values, dtype=kind)
-
     control, control_unit = np.zeros((len(rows), 4)), np.full((len(rows), 4), HELD, dtype=np.int8)
     over, lasts = np.zeros((len(rows), 3)), np.zeros((len(rows), 3))
     hertz, by, by_unit = np.zeros(len(rows)), np.zeros(len(rows)), np.full(len(rows), HELD, dtype=np.int8)
@@ -179,21 +176,35 @@ def _table(rows: list[_Row], first: list[int], lengths: list[tuple[Fraction, ...
             control_unit[at] = [UNIT_NUMBERS[inner.unit] for inner in row.controls]
         if (quiver := row.quiver) is not None:
             hertz[at], by[at], by_unit[at] = _number(quiver.hertz), _number(quiver.by.value), UNIT_NUMBERS[quiver.by.unit]
+    table = np.array(
+        [
+            (
+                *map(_number, row.offset),
+                _number(row.target.value),
+                UNIT_NUMBERS[row.target.unit],
+                SHAPE_NUMBERS[row.shape],
+                row.shut,
+                row.source.span.line if row.source.span.file == file else 0,
+            )
+            for row in rows
+        ]
+    ).reshape(-1, 8)
+    whole = table[:, 4:].astype(np.int32)
     return Lines(
-        first=column(first, np.int64),
+        first=np.array(first, dtype=np.int64),
         length=triples(lengths),
-        offset=triples([row.offset for row in rows]),
+        offset=table[:, :3].copy(),
         over=over,
         has_over=has_over,
         lasts=lasts,
         has_lasts=has_lasts,
-        value=column([_number(row.target.value) for row in rows], np.float64),
-        unit=column([UNIT_NUMBERS[row.target.unit] for row in rows], np.int8),
+        value=table[:, 3].copy(),
+        unit=whole[:, 0].astype(np.int8),
         control=control,
         control_unit=control_unit,
-        shape=column([SHAPE_NUMBERS[row.shape] for row in rows], np.int8),
-        shut=column([row.shut for row in rows], np.bool_),
-        phrase_line=column([row.source.span.line if row.source.span.file == file else 0 for row in rows], np.int32),
+        shape=whole[:, 1].astype(np.int8),
+        shut=whole[:, 2] != 0,
+        phrase_line=whole[:, 3].copy(),
         written=tuple(row.source for row in rows),
         phrases=tuple(phrases),
         hertz=hertz,

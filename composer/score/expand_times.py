@@ -1,5 +1,6 @@
 """When every line of every instance happens, in seconds, and where a later entry cuts it short."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -53,14 +54,14 @@ class Moments:
 
 def moments(starts: Starts, lines: Lines, tempo: TempoMap, rig: Rig, faults: list[Fault]) -> Moments:
     """All instants of a score; instants within SAME_INSTANT_S become one float. Faults are added to `faults`."""
-    fibers, start = len(rig.fibers), tempo.seconds(starts.count)
-    chain = np.where(starts.added, fibers + np.cumsum(starts.added) - 1, starts.fiber)
-    order = np.lexsort((start, chain))
-    chain, start, count = chain[order], start[order], starts.count[order]
+    chain = starts.fiber
+    if starts.added.any():
+        chain = np.where(starts.added, len(rig.fibers) + starts.added.cumsum() - 1, chain)
+    order = np.lexsort((starts.count, chain))
+    chain, count = chain[order], starts.count[order]
     variant, stretch = starts.variant[order], starts.stretch[order]
-    end = _later(tempo, count, lines.length[variant], stretch)
 
-    sizes = np.diff(lines.first)[variant]
+    sizes = (lines.first[1:] - lines.first[:-1])[variant]
     stop = sizes.cumsum()
     begin = stop - sizes
     instance = np.arange(len(order)).repeat(sizes)
@@ -68,7 +69,10 @@ def moments(starts: Starts, lines: Lines, tempo: TempoMap, rig: Rig, faults: lis
     opens = np.zeros(len(row), dtype=bool)
     opens[begin] = True
 
-    until = _later(tempo, count[instance], lines.offset[row], stretch[instance])
+    # All starts, ends and lines at once: a call costs more than a conversion.
+    of, by = np.concatenate([np.arange(len(order)), instance]), np.concatenate([lines.length[variant], lines.offset[row]])
+    seconds = _later(tempo, count[of], by, stretch[of], count)
+    start, end, until = _parted(seconds, (len(order), len(order), len(row)))
     sources = [start, end, until]
     # Few phrases have moves of their own length, fewer are played backwards: what no line has is not looked for.
     over = lines.has_over[row].nonzero()[0] if lines.has_over.any() else NO_LINES
@@ -105,20 +109,27 @@ def _before(until: Array, start: Array, instance: Index, opens: NDArray[np.bool_
     return before
 
 
-def _later(tempo: TempoMap, count: Array, by: Array, stretch: Array) -> Array:
-    """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS times `stretch`, after `count`."""
+def _later(tempo: TempoMap, count: Array, by: Array, stretch: Array, also: Array | None = None) -> Array:
+    """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS times `stretch`, after `count`; before them those of
+    the counts `also`."""
     if (some := by[:, 0].nonzero()[0]).size:
         count = count.copy()
         count[some] = tempo.counts_of_bars(tempo.bars(count[some]) + by[some, 0] * stretch[some])
-    return tempo.seconds(count + by[:, 1] * stretch) + by[:, 2] * stretch
+    counts = count + by[:, 1] * stretch
+    seconds = tempo.seconds(counts if also is None else np.concatenate([also, counts]))
+    seconds[len(seconds) - len(counts) :] += by[:, 2] * stretch
+    return seconds
 
 
 def _shifted(tempo: TempoMap, seconds: Array, by: Array) -> Array:
     """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS, after instants in seconds."""
     if not by[:, :2].any():
         return seconds + by[:, 2]
-    moved = _later(tempo, tempo.counts(seconds), by * np.array([1.0, 1.0, 0.0]), np.ones(len(by)))
-    return np.where(by[:, :2].any(axis=1), moved, seconds) + by[:, 2]
+    counts = tempo.counts(seconds)
+    if (some := by[:, 0].nonzero()[0]).size:
+        counts[some] = tempo.counts_of_bars(tempo.bars(counts[some]) + by[some, 0])
+    moved = tempo.seconds(counts + by[:, 1])
+    return np.where((by[:, 0] != 0.0) | (by[:, 1] != 0.0), moved, seconds) + by[:, 2]
 
 
 def _snapped(sources: list[Array]) -> list[Array]:
@@ -129,10 +140,15 @@ def _snapped(sources: list[Array]) -> list[Array]:
     leads = np.ones(len(rising), dtype=bool)
     leads[1:] = (rising[1:] - rising[:-1]) > SAME_INSTANT_S
     every[order] = rising[leads][leads.cumsum() - 1]
+    return _parted(every, [len(part) for part in sources])
+
+
+def _parted(values: Array, sizes: Sequence[int]) -> list[Array]:
+    """Views of values end to end."""
     parts, at = [], 0
-    for part in sources:
-        parts.append(every[at : at + len(part)])
-        at += len(part)
+    for size in sizes:
+        parts.append(values[at : at + size])
+        at += size
     return parts
 
 

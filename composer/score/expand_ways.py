@@ -1,6 +1,7 @@
 """The way of every move: from which strain to which, and when, cut where a later entry takes over."""
 
 from dataclasses import dataclass
+from functools import lru_cache
 from math import comb
 
 import numpy as np
@@ -33,12 +34,15 @@ POWERS = np.array([PROGRESS.get(name, np.zeros(6)) for name in NAMES])
 
 def in_strain(value: Array, unit: NDArray[np.int8], fiber: Index, abilities: Abilities) -> Array:
     """Targets in strain; 0 for `hold`."""
-    # In the order of TARGET_UNITS.
+    return value * _strain_per(abilities)[unit, fiber]
+
+
+@lru_cache(maxsize=8)
+def _strain_per(abilities: Abilities) -> Array:
+    """(unit, fiber): the strain of one of each unit, in the order of TARGET_UNITS; kept for the abilities last used."""
     per = np.zeros((len(TARGET_UNITS), len(abilities.stroke)))
-    per[0], per[1] = abilities.stroke, 0.01
-    np.divide(1.0, abilities.length_mm, out=per[2])
-    np.divide(1.0, abilities.turn_deg, out=per[3])
-    return value * per[unit, fiber]
+    per[0], per[1], per[2], per[3] = abilities.stroke, 0.01, 1.0 / abilities.length_mm, 1.0 / abilities.turn_deg
+    return per
 
 
 @dataclass(slots=True, eq=False)

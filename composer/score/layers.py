@@ -115,17 +115,16 @@ def _written(
     phrase_line: NDArray[np.int32],
 ) -> Knots:
     """Knots in order: for each chain one at 0, then for each move its parts; holds made one."""
-    there = np.stack(parts.there, axis=1)
-    of = there.ravel().nonzero()[0]
-    move, number = np.divmod(of, there.shape[1])
+    move, number = np.array(parts.there).T.nonzero()
+    of = number * len(chain) + move
     per_chain = np.bincount(chain[move], minlength=chains) + 1
     total = len(of) + chains
     # Before a knot come all earlier ones and the openings of the chains up to its own.
     place = np.arange(1, len(of) + 1) + chain[move]
     opening = np.arange(chains).repeat(per_chain)
     time, start = np.zeros(total), np.zeros(total)
-    time[place] = np.stack(parts.begins_s, axis=1).ravel()[of]
-    start[place] = np.stack(parts.strain, axis=1).ravel()[of]
+    time[place] = np.concatenate(parts.begins_s)[of]
+    start[place] = np.concatenate(parts.strain)[of]
     move_of = np.full(total, -1, dtype=np.int64)
     move_of[place] = move
     at, way = (goes := number == 1).nonzero()[0], move[goes]
@@ -225,7 +224,7 @@ def _curves(ways: Ways, move: Index) -> Array:
         points = np.column_stack([a, ways.control[of[bent]], target[bent]])
         curve[bent] = np.where(np.isnan(points), a[:, None], points) @ BEZIER
     # Where a jump goes from and to is for who makes several jumps one.
-    curve[ways.stops[move] <= ways.leaves[move], 1:] = 0.0
+    curve[(ways.stops[move] <= ways.leaves[move]).nonzero()[0], 1:] = 0.0
     if short.any():
         curve[short] *= share[short, None] ** np.arange(6)
     curve += 0.0

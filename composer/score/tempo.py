@@ -44,8 +44,11 @@ class TempoMap:
             return self.tempo_s[0] + (counts - self.tempo_count[0]) / self.rate[0]
         k = _stretch(self.tempo_count, counts)
         gone = counts - self.tempo_count[k]
-        bend = np.where(gone > 0.0, self.slope[k] * gone / self.rate[k], 0.0)
-        return self.tempo_s[k] + gone / self.rate[k] * _over(np.log1p, bend)
+        took = gone / self.rate[k]
+        bend = self.slope[k] * gone / self.rate[k]
+        if (bends := (bend != 0.0) & (gone > 0.0)).any():
+            took = np.where(bends, took * _over(np.log1p, np.where(bends, bend, 0.0)), took)
+        return self.tempo_s[k] + took
 
     def counts(self, seconds: ArrayLike) -> Array:
         """Counts at `seconds`, any shape: the inverse of `seconds`."""
