@@ -86,7 +86,7 @@ def read(data: bytes) -> Recovered | None:
             break
         try:
             units.change(Delta(int(made["at"]), int(made["out"]), str(made["put"])))
-        except (KeyError, TypeError, ValueError):
+        except (KeyError, TypeError, ValueError, OverflowError):
             break
         changes += 1
     return Recovered(str(head.get("of", "")), str(head.get("saved", "")), units.text, changes)
@@ -105,6 +105,6 @@ def _read_line(line: bytes) -> dict | None:
         if int(line[:8], 16) != zlib.crc32(told):
             return None
         made = json.loads(told)
-    except ValueError:
+    except (ValueError, RecursionError):
         return None
     return made if isinstance(made, dict) else None

@@ -1,5 +1,6 @@
 """From what the workers tell to what is seen: one place that keeps cloth, strand, hanging fibers, transport and lists alike."""
 
+from collections.abc import Sequence
 from dataclasses import replace
 from typing import Any
 
@@ -11,11 +12,13 @@ from composer.editor.messages import Checked, Choice, Lanes, Picture, Retimed, R
 from composer.editor.retimed_panel import RetimedPanel
 from composer.editor.snags_panel import SnagsPanel
 from composer.editor.stage import HANG, RIG, Stage
+from composer.faults import Fault
 from composer.picture.palette import DARK, Theme
 from composer.picture.sampling import Sampler
 from composer.picture.scene import Stretch
 from composer.picture.strand import worded
 from composer.picture.strand_view import StrandView
+from composer.rig.model import Rig
 from composer.tracks import Tracks
 
 MOST_LIT = 4000
@@ -51,8 +54,12 @@ class Showing(QObject):
         self._theme = DARK
         self._fiber: int | None = None
         self._sampler: Sampler | None = None
+        self._played: Tracks | None = None
         self._ghost_said: Tracks | None = None
         self._early: list[Any] = []
+        self._hung: Rig | None = None
+        self._paged: Rig | None = None
+        self._rig_faults: tuple[Fault, ...] = ()
         self._carried: Tracks | None = None
         self._grow = QTimer(self)
         self._grow.setSingleShot(True)
@@ -63,7 +70,7 @@ class Showing(QObject):
         strand.head_moved.connect(self._head_put)
         stage.cloth.stretch_changed.connect(strand.show_stretch)
         strand.stretch_changed.connect(stage.cloth.show_stretch)
-        stage.leaves.currentChanged.connect(lambda _: self._show_hang())
+        stage.leaves.currentChanged.connect(lambda _: self._leaf_opened())
 
     # ---- what the workers tell ------------------------------------------------------------------------------------------
 
@@ -120,7 +127,7 @@ class Showing(QObject):
     def forget(self) -> None:
         """Another score: nothing of the one before is shown any more."""
         self.known.forget()
-        self._fiber = self._sampler = self._ghost_said = self._carried = None
+        self._fiber = self._sampler = self._played = self._ghost_said = self._carried = None
         self._early = []
         self.stage.transport.pause()
         self.stage.transport.clear_loop()
@@ -156,7 +163,7 @@ class Showing(QObject):
         played = self.known.played(self.as_retimed)
         if played is not None and self.known.abilities is not None:
             tracks, bars = played
-            self._sampler = Sampler(tracks, self.known.abilities)
+            self._played, self._sampler = tracks, None
             self.stage.transport.set_piece(bars, tracks.duration_s)
 
     # ---- strand ---------------------------------------------------------------------------------------------------------
@@ -247,25 +254,45 @@ class Showing(QObject):
                 view.set_theme(theme)
 
     def _show_rig(self) -> None:
+        """Put the rig on the leaf that is open; a leaf that is not is made when it is opened."""
         known = self.known
-        assert known.rig is not None and known.abilities is not None
-        if self.hang is None:
-            from composer.picture.hang import HangView
+        if known.rig is None or known.abilities is None:
+            return
+        if self.stage.shown == HANG and self._hung is not known.rig:
+            self._hung = known.rig
+            if self.hang is None:
+                from composer.picture.hang import HangView
 
-            self.hang = HangView(known.rig, known.abilities, view="three-quarter")
-            self.hang.fiber_clicked.connect(self.show_fiber)
-            self.hang.set_theme(self._theme)
-            self.stage.put(HANG, self.hang)
-        else:
-            self.hang.set_rig(known.rig, known.abilities)
-        if self.rig_page is None:
-            from composer.editor.rig_page import RigPage
+                self.hang = HangView(known.rig, known.abilities, view="three-quarter")
+                self.hang.fiber_clicked.connect(self.show_fiber)
+                self.hang.set_theme(self._theme)
+                self.stage.put(HANG, self.hang)
+            else:
+                self.hang.set_rig(known.rig, known.abilities)
+            self.hang.light(() if self._fiber is None else (self._fiber,))
+        elif self.stage.shown == RIG and self._paged is not known.rig:
+            self._paged = known.rig
+            if self.rig_page is None:
+                from composer.editor.rig_page import RigPage
 
-            self.rig_page = RigPage()
-            self.rig_page.fiber_chosen.connect(self.show_fiber)
-            self.rig_page.set_theme(self._theme)
-            self.stage.put(RIG, self.rig_page)
-        self.rig_page.show_rig(known.rig, known.abilities)
+                self.rig_page = RigPage()
+                self.rig_page.fiber_chosen.connect(self.show_fiber)
+                self.rig_page.set_theme(self._theme)
+                self.stage.put(RIG, self.rig_page)
+            self.rig_page.show_rig(known.rig, known.abilities)
+            self.rig_page.show_faults(self._rig_faults)
+            if self._fiber is not None:
+                self.rig_page.choose(self._fiber)
+
+    def show_rig_faults(self, faults: Sequence[Fault]) -> None:
+        """What is wrong with the rig's file, on its leaf."""
+        self._rig_faults = tuple(faults)
+        if self.rig_page is not None:
+            self.rig_page.show_faults(faults)
+
+    def _leaf_opened(self) -> None:
+        self._show_rig()
+        self._show_hang()
 
     # ---- play head ------------------------------------------------------------------------------------------------------
 
@@ -289,12 +316,14 @@ class Showing(QObject):
 
     def _show_hang(self) -> None:
         """Move the hanging fibers: as wanted, and as simulated where the run has come so far."""
-        if self.hang is None or self.stage.shown != HANG or self._sampler is None or self.known.abilities is None:
+        if self.hang is None or self.stage.shown != HANG or self._played is None or self.known.abilities is None:
             return
+        if self._hung is not self.known.rig or self._played.fibers != len(self.known.names):
+            return
+        if self._sampler is None:
+            self._sampler = Sampler(self._played, self.known.abilities)
         at = self.stage.transport.head_s
         stroke = self.known.abilities.stroke
-        if len(stroke) != len(self.known.names):
-            return
         wanted = self._sampler.shares(np.arange(len(stroke)), np.array([at]))[:, 0] * stroke
         self.hang.show_strain(wanted, self.known.run.at(at) if self.known.run is not None else None)
 

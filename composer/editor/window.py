@@ -312,8 +312,7 @@ class ComposeWindow(Deeds, QMainWindow):
         ]
         self.pane.looks.set_marks(marks)
         others = [one for one in told.faults if one.where.file != name]
-        if self.showing.rig_page is not None:
-            self.showing.rig_page.show_faults([one for one in others if one.where.file.endswith(".toml")])
+        self.showing.show_rig_faults([one for one in others if one.where.file.endswith(".toml")])
         if others:
             first = others[0]
             more = f" (and {len(others) - 1} more)" if len(others) > 1 else ""
