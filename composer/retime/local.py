@@ -26,6 +26,9 @@ BROKEN_S = 1e-10
 WHOLE_FROM = 0.6
 """Once this share of all events is in it, growing the programme further costs more than solving the whole."""
 
+WIDE = 16
+"""Where more starts than so many hang from each hit, as in a large ensemble, all of it is solved as fast as a part is found."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Least:
@@ -70,7 +73,9 @@ def least_cost(
         grown[rows.matrix[broken].indices] = True
         if solved and (not len(broken) or (grown == free).all()):
             return Least(shift, cost(terms, shift), bound, dual, free)
-        if not free.any() and not by_rhythm:
+        if count > WIDE * max(events.hits, 1):
+            grown[:] = True
+        elif not free.any() and not by_rhythm:
             grown |= reached(events, rows, broken)
         free = grown | _near(events, order, rows, broken, lack, _own_shift(terms, shift))
         if np.count_nonzero(free) > WHOLE_FROM * count:

@@ -11,7 +11,7 @@ Index = NDArray[np.int64]
 Flags = NDArray[np.bool_]
 
 
-ROUNDS = 200
+ROUNDS = 60
 """How far a push is followed; what lies beyond is asked for by the rows that are then found broken."""
 
 
