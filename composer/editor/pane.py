@@ -203,7 +203,7 @@ class TextPane(QPlainTextEdit):
     # ---- keys and pointer -----------------------------------------------------------------------------------------------
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Return keeps the indent of a block; Tab indents, Shift and Tab takes that back."""
+        """Return keeps the indent of a block, twice ends the block; Tab indents, Shift and Tab takes that back."""
         plain = event.modifiers() in (Qt.KeyboardModifier.NoModifier, Qt.KeyboardModifier.KeypadModifier)
         if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter) and plain:
             self._new_line()
@@ -224,8 +224,14 @@ class TextPane(QPlainTextEdit):
         lead = before[: len(before) - len(before.lstrip(" \t"))]
         if before.strip() and not lead and block_after(before, ""):
             lead = INDENT
-        if not before.strip():
-            lead = before
+        if not before.strip() and not cursor.hasSelection():
+            if cursor.block().text().strip():
+                lead = before
+            else:
+                # Nothing stands on this line: the block is over, and the blanks that began it go.
+                cursor.movePosition(QTextCursor.MoveOperation.StartOfBlock)
+                cursor.movePosition(QTextCursor.MoveOperation.EndOfBlock, QTextCursor.MoveMode.KeepAnchor)
+                lead = ""
         cursor.insertText("\n" + lead)
         self.setTextCursor(cursor)
 

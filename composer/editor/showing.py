@@ -30,7 +30,7 @@ MOST_EARLY = 400
 MOST_OUTLINED = 12
 """Hanging fibers that are outlined at once; more would hide what they do."""
 
-RUN_MS = 120
+RUN_MS = 600
 """How often a simulated run that grows is drawn anew."""
 
 

@@ -2,21 +2,21 @@
 
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QByteArray, QPoint, QSettings, QSize, Qt, QTimer
-from PySide6.QtGui import QAction, QCloseEvent, QKeySequence, QResizeEvent
-from PySide6.QtWidgets import QApplication, QComboBox, QMainWindow, QMenu, QSplitter, QTabWidget, QToolTip, QVBoxLayout, QWidget
+from PySide6.QtCore import QPoint, QSettings, QSize, Qt, QTimer
+from PySide6.QtGui import QAction, QCloseEvent, QKeySequence
+from PySide6.QtWidgets import QComboBox, QMainWindow, QMenu, QSplitter, QTabWidget, QToolTip, QVBoxLayout, QWidget
 
-from composer.editor import disk, dressing
+from composer.editor import disk
 from composer.editor.actions import ACTIONS, by_menu
 from composer.editor.background import Later
+from composer.editor.between import Between
 from composer.editor.crew import Crew
 from composer.editor.deeds import Deeds
 from composer.editor.deltas import Delta, counted
 from composer.editor.finding import FindLine, GoLine
 from composer.editor.foot import Foot
 from composer.editor.hand import Hand
-from composer.editor.looks import Mark
-from composer.editor.messages import Checked, Dragged, Failed, Retimed, Row, Told
+from composer.editor.manners import LETTERS_MS, Manners
 from composer.editor.notices import Notices
 from composer.editor.offers import Offers
 from composer.editor.pane import TextPane
@@ -24,6 +24,7 @@ from composer.editor.printing import Printer
 from composer.editor.retimed_panel import RetimedPanel
 from composer.editor.session import Session
 from composer.editor.showing import Showing
+from composer.editor.sights import Sights
 from composer.editor.snags_panel import SnagsPanel
 from composer.editor.stage import Stage
 from composer.edits.edit import Edit, Refusal
@@ -34,12 +35,9 @@ if TYPE_CHECKING:
     from composer.edits.completion import Offer
 
 SIZE = QSize(1280, 800)
-LETTERS_MS = 150
-NEAR_S = 8.0
-"""Seconds to either side of a snag that are shown when it is gone to."""
 
 
-class ComposeWindow(Deeds, QMainWindow):
+class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
     """Everything that belongs to one score on the screen."""
 
     def __init__(self, crew: Crew | None = None):
@@ -277,203 +275,6 @@ class ComposeWindow(Deeds, QMainWindow):
 
         self.crew.ask("explain", (line, column), show)
 
-    # ---- what the workers say -------------------------------------------------------------------------------------------
-
-    def _hear(self, message: Any) -> None:
-        self.showing.hear(message)
-        if isinstance(message, Checked):
-            count = message.count
-            self.foot.say("snags", "no snags" if not count else f"{count} snag{'s' * (count != 1)}")
-            self.lists.setTabText(0, f"Snags, {len(message.rows)}" if message.rows else "Snags")
-        elif isinstance(message, Retimed):
-            self.lists.setTabText(1, f"Retiming, {len(message.hits)}" if message.hits else "Retiming")
-        elif isinstance(message, Failed):
-            self.notices.say("worker", message.says, kind="fault")
-
-    def _say_doing(self, what: str) -> None:
-        if what:
-            run = self.showing.known.run
-            share = f" {100 * run.share:.0f} %" if what == "simulating" and run is not None else ""
-            self.foot.say("word", f"{what}{share} …")
-        elif self.foot.said("word").endswith("…"):
-            self.foot.say("word", "")
-
-    def _show_faults(self, told: Told) -> None:
-        name = self.session.base
-        own = [one for one in told.faults if one.where.file == name]
-        marks = [
-            Mark(
-                max(one.where.line, 1),
-                one.where.column if one.where.line else 0,
-                one.where.column + one.where.width,
-                _says(one),
-            )
-            for one in own
-        ]
-        self.pane.looks.set_marks(marks)
-        others = [one for one in told.faults if one.where.file != name]
-        self.showing.show_rig_faults([one for one in others if one.where.file.endswith(".toml")])
-        if others:
-            first = others[0]
-            more = f" (and {len(others) - 1} more)" if len(others) > 1 else ""
-            says = f"{first.where.file}:{first.where.line}: {_says(first)}{more}. What is shown is the last that could be read."
-            self.notices.say("other", says, kind="fault")
-        else:
-            self.notices.drop("other")
-        if told.faults:
-            self.foot.say("snags", f"{len(own) or len(others)} to mend in {'the text' if own else 'another file'}")
-        self.session.lean_on(told.leans_on)
-
-    # ---- cloth, strand, lists -------------------------------------------------------------------------------------------
-
-    def thread_chosen(self, fiber: int, seconds: float) -> None:
-        """A thread was chosen at an instant: its strand below, the caret on the line that moves it."""
-        self.showing.show_fiber(fiber)
-        self.crew.ask("source", (fiber, seconds), self._go_to_source)
-
-    def _knot_clicked(self, segment: int, seconds: float) -> None:
-        if self.strand.fiber is not None:
-            self.crew.ask("source", (self.strand.fiber, seconds), self._go_to_source)
-
-    def _go_to_source(self, source: Any) -> None:
-        if source is None or isinstance(source, Refusal):
-            self.foot.say("word", "Nothing has moved this fiber yet at that instant." if source is None else source.say)
-            return
-        self._entry = source.line
-        span = source.move or source.entry
-        self.pane.go_to(span.line, span.column, focus=False)
-        self.pane.looks.light([span.line], [source.line])
-
-    def _carried(self, dragged: Dragged) -> None:
-        self.foot.say("word", dragged.edit.say)
-        text = self.pane.text
-        lines = [text.count("\n", 0, start) + 1 for start, _, _ in dragged.edit.changes]
-        self.pane.looks.light(lines)
-        if lines:
-            self.pane.show_line(lines[0])
-        if dragged.after is not None:
-            self.showing.carry(dragged.after.tracks)
-
-    def _set_grid(self, grid: Any) -> None:
-        self.hand.grid = grid
-        self.stage.cloth.set_grid(float(grid))
-        self.strand.set_grid(float(grid))
-
-    def _snag_on_cloth(self, index: int) -> None:
-        self.lists.setCurrentIndex(0)
-        self.snags.choose(index)
-
-    def _row_chosen(self, row: Row) -> None:
-        begin, end = self.stage.cloth.shown
-        near = max(row.to_s - row.from_s, NEAR_S)
-        if end - begin > 4.0 * near:
-            middle = (row.from_s + row.to_s) / 2.0
-            self.stage.cloth.show_stretch(middle - near, middle + near)
-        self.stage.cloth.choose_snag(row.snag)
-        if row.fibers:
-            self.showing.show_fiber(row.fibers[0])
-        if row.line:
-            self._entry = row.line
-            self.pane.go_to(row.line, focus=False)
-            self.pane.looks.light([row.line], [row.phrase_line] if row.phrase_line else [])
-
-    def _find_mends(self, row: Row) -> None:
-        checked = self.showing.known.checked
-        if checked is None or row.snag >= len(checked.check.snags):
-            return
-        self.snags.mends.say("Looking for what would mend it …")
-
-        def show(mended: Any) -> None:
-            if self.snags.current is not None and self.snags.current.snag == row.snag:
-                self.snags.mends.show_mended(mended)
-
-        self.crew.ask("mends", (checked.check.snags[row.snag],), show)
-
-    def _mend(self, choice: Any) -> None:
-        """Take a choice; the keys stay with the list, for the next snag."""
-        self.snags.list.setFocus()
-        self.apply(choice.edit)
-
-    def _hit_chosen(self, hit: Any) -> None:
-        length = self.stage.cloth.shown[1] - self.stage.cloth.shown[0]
-        if not self.stage.cloth.shown[0] <= hit.was_s <= self.stage.cloth.shown[1]:
-            self.stage.cloth.show_stretch(hit.was_s - length / 2, hit.was_s + length / 2)
-        if hit.fibers:
-            self.showing.show_fiber(hit.fibers[0])
-        if hit.line:
-            self.pane.go_to(hit.line, focus=False)
-            self.pane.looks.light([hit.line])
-        self.stage.transport.move_to(self.showing.known.warp(self.showing.as_retimed).now(hit.was_s))
-
-    def _passage_changed(self, loop: Any) -> None:
-        warp = self.showing.known.warp(self.showing.as_retimed)
-        self.retimed.set_passage(None if loop is None else (warp.was(loop[0]), warp.was(loop[1])))
-
-    # ---- looks ----------------------------------------------------------------------------------------------------------
-
-    def _say_saved(self) -> None:
-        modified = self.session.modified
-        self.setWindowTitle(f"{self.session.name}{' (not saved)' if modified else ''} - Drawcord")
-        unnamed = self.session.path is None
-        self.foot.say("saved", "not saved; kept" if modified else "no name yet" if unnamed else "saved")
-
-    def _letters_wanted(self, way: int) -> None:
-        self._text_scale = min(max(self._text_scale * 1.1**way, 0.5), 4.0)
-        self._letters.start(10)
-
-    def _fit_letters(self, anew: bool = False) -> None:
-        scale = min(max(dressing.scale_for(self.width(), self.height()) * self._own_scale, dressing.SMALLEST), dressing.LARGEST)
-        if anew or (scale, self._text_scale) != self._scale:
-            self._scale = (scale, self._text_scale)
-            dressing.dress(QApplication.instance(), self._theme, scale, self._text_scale)
-
-    def set_theme(self, name: str) -> None:
-        """Everything in the colours of a theme."""
-        self._theme = THEMES[name]
-        self._fit_letters(anew=True)
-        self.pane.looks.set_theme(self._theme)
-        self.showing.set_theme(self._theme)
-
-    @property
-    def theme_name(self) -> str:
-        """The theme in use."""
-        return self._theme.name
-
-    def resizeEvent(self, event: QResizeEvent) -> None:
-        """Letters grow with the window."""
-        super().resizeEvent(event)
-        if not self._scale:
-            self._fit_letters()
-        else:
-            self._letters.start(LETTERS_MS)
-
-    def _remember(self) -> None:
-        """As it was when it was last closed."""
-        settings = self.settings
-        size = settings.value("size")
-        if isinstance(size, QSize) and size.isValid():
-            self.resize(size.expandedTo(QSize(640, 400)))
-        if settings.value("largest") in (True, "true"):
-            self.setWindowState(Qt.WindowState.WindowMaximized)
-        for name, split in self.splits.items():
-            state = settings.value(f"split/{name}")
-            if isinstance(state, QByteArray):
-                split.restoreState(state)
-        self._own_scale = _number(settings.value("letters"), 1.0)
-        self._text_scale = _number(settings.value("text letters"), 1.0)
-        dark = QApplication.styleHints().colorScheme() != Qt.ColorScheme.Light
-        name = str(settings.value("theme") or ("dark" if dark else "light"))
-        self.set_theme(name if name in THEMES else "dark")
-
-    def _keep_settings(self) -> None:
-        self.settings.setValue("size", self.normalGeometry().size() if self.isMaximized() else self.size())
-        self.settings.setValue("largest", self.isMaximized())
-        for name, split in self.splits.items():
-            self.settings.setValue(f"split/{name}", split.saveState())
-        self.settings.setValue("letters", self._own_scale)
-        self.settings.setValue("text letters", self._text_scale)
-        self.settings.sync()
-
     # ---- the end --------------------------------------------------------------------------------------------------------
 
     def closeEvent(self, event: QCloseEvent) -> None:
@@ -522,17 +323,3 @@ def _split(way: Qt.Orientation, name: str, parts: tuple[QWidget, QWidget], sizes
         split.setStretchFactor(split.indexOf(part), size)
     split.setSizes(list(sizes))
     return split
-
-
-def _says(fault: Any) -> str:
-    expected = f"; expected {fault.expected}" if fault.expected else ""
-    hint = f" ({fault.hint})" if fault.hint else ""
-    return f"{fault.found}{expected}{hint}"
-
-
-def _number(value: Any, otherwise: float) -> float:
-    try:
-        found = float(value)
-    except (TypeError, ValueError):
-        return otherwise
-    return found if 0.25 <= found <= 4.0 else otherwise

@@ -114,6 +114,8 @@ class Typist:
         pane.go_to(line, len(pane.document().findBlockByNumber(line - 1).text()) + 1)
         took: dict[str, list[float]] = {"echo": [], "cloth": [], "check and retiming": []}
         for number in range(count):
+            # What is still to be painted of the key before is not this key's.
+            self.app.processEvents()
             begun = time.perf_counter()
             if number % 2:
                 QTest.keyClick(pane, Qt.Key.Key_Backspace)
