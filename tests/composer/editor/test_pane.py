@@ -116,6 +116,15 @@ def test_return_keeps_the_indent_and_opens_that_of_a_block(pane, qtbot):
     assert pane.textCursor().block().text() == ""
 
 
+def test_return_on_a_line_of_blanks_alone_ends_the_block_and_takes_them_away(pane, qtbot):
+    at(pane, 7, 100)
+    qtbot.keyClick(pane, Qt.Key.Key_Return)
+    blank = pane.textCursor().block()
+    qtbot.keyClick(pane, Qt.Key.Key_Return)
+    assert blank.text() == "" and pane.textCursor().block().text() == "" and pane.textCursor().positionInBlock() == 0
+    assert pane.textCursor().blockNumber() == blank.blockNumber() + 1
+
+
 def test_lines_in_view_are_coloured_by_what_their_words_are(pane, qtbot):
     def bold(line, column):
         ranges = pane.document().findBlockByNumber(line - 1).layout().formats()
