@@ -302,3 +302,30 @@ def test_where_air_is_short_no_snag_is_left_and_the_bound_is_never_above_the_cos
     assert found.bound <= found.cost + 1e-9
     plenty = do(make_rig(4), made.tracks, keep=keep)
     assert found.bound >= plenty.cost - 1e-8
+
+
+def crowded(hits: int, too_fast: int):
+    """Ten fibers whose moves land one after another, so many in one second, some of them a thousand times as long."""
+    fibers = []
+    for f in range(10):
+        begin, each = f / hits, 10.0 / hits
+        track = [(0.0, None, "hold")] if f else []
+        value = 0.0
+        for n in range(hits // 10):
+            size = 1e-3 if n % too_fast == too_fast - 1 else 1e-6
+            value = value + size if n % 2 == 0 else max(value - size, 0.0)
+            track.append((begin + n * each, value, "linear"))
+        fibers.append([*track, (begin + (hits // 10) * each, None, "end")])
+    return tracks_of(fibers)
+
+
+def test_a_hundred_thousand_hits_within_a_second_are_retimed_exactly(make_rig):
+    rig = make_rig(10)
+    tracks = crowded(100_000, 501)
+    abilities = abilities_of(rig)
+    assert len(np.unique(tracks.time_s[1:])) > 90_000
+    assert check(tracks, rig, abilities).snags
+    found = do(rig, tracks)
+    assert check(found.tracks, rig, abilities).ok
+    assert found.bound == pytest.approx(found.cost, rel=1e-6)
+    assert np.all(np.diff(found.tracks.time_s)[np.diff(tracks.time_s) > 0.0] >= 0.0)
