@@ -101,6 +101,13 @@ class Session(QObject):
             self._notices.say("write", f"{self.name} may not be written here. Save it under another name to keep changes.")
         return True
 
+    def begin_at(self, path: str) -> None:
+        """Begin with next to nothing, under the name of a file that is not there yet; saving makes it."""
+        found = os.path.abspath(path)
+        self.path, self.base, self._stamp, self._line_end, self._is_demo = found, found, None, disk.LF, False
+        self._begin(NEW, recovery.hash_of(NEW), disk.recovery_path(found))
+        self._pane.document().setModified(True)
+
     def open_demo(self) -> None:
         """Begin with an unsaved copy of *Estuary*."""
         text, folder = disk.demo()
@@ -152,15 +159,15 @@ class Session(QObject):
     def save(self, then: Callable[[], None] | None = None) -> None:
         """Save; where there is no name yet, `save_as` has to be called instead. `then` is called when it is saved."""
         if self.path is not None:
-            self._write(self.path, then, self._stamp)
+            self._write(self.path, then, self._stamp, over=False)
 
     def save_as(self, path: str, then: Callable[[], None] | None = None) -> None:
         """Save under another name, which the score then has."""
         if not path.lower().endswith(".score"):
             path += ".score"
-        self._write(os.path.abspath(path), then, None)
+        self._write(os.path.abspath(path), then, None, over=True)
 
-    def _write(self, path: str, then: Callable[[], None] | None, expected: disk.Stamp | None) -> None:
+    def _write(self, path: str, then: Callable[[], None] | None, expected: disk.Stamp | None, over: bool) -> None:
         if self._saving:
             return
         self._saving = True
@@ -168,7 +175,7 @@ class Session(QObject):
 
         def job() -> disk.Stamp | None:
             now = disk.stamp_of(path)
-            if expected is not None and now is not None and now != expected:
+            if not over and now is not None and now != expected:
                 raise _Theirs
             return disk.write_score(path, text, ends)
 

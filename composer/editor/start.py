@@ -1,5 +1,6 @@
 """Starting the compose window: the workers first, so that they load while the window comes up."""
 
+import os
 import signal
 import sys
 
@@ -30,7 +31,9 @@ def open_window(path: str | None) -> "object":
     from composer.editor.window import ComposeWindow
 
     window = ComposeWindow(crew)
-    if path is None or not window.session.open(path):
+    if path is not None and not os.path.lexists(path):
+        window.session.begin_at(path)
+    elif path is None or not window.session.open(path):
         window.session.open_demo()
         if path is None:
             window.do_first_help()

@@ -130,6 +130,24 @@ def test_a_file_that_cannot_be_read_leaves_the_text_at_hand(make, score, tmp_pat
     assert desk.session.name == "a.score"
 
 
+def test_a_score_that_is_not_there_yet_is_begun_and_saving_makes_it(make, tmp_path):
+    desk, path = make(), tmp_path / "begun.score"
+    desk.session.begin_at(str(path))
+    assert desk.session.name == "begun.score" and desk.session.modified and not path.exists()
+    desk.session.save()
+    desk.settle()
+    assert path.read_text() == desk.pane.text != "" and not desk.session.modified
+
+
+def test_a_file_that_came_meanwhile_is_not_written_over(make, tmp_path):
+    desk, path = make(), tmp_path / "begun.score"
+    desk.session.begin_at(str(path))
+    path.write_text('title "Theirs"\n')
+    desk.session.save()
+    desk.settle()
+    assert path.read_text() == 'title "Theirs"\n' and desk.session.modified
+
+
 def test_after_a_crash_the_text_is_offered_and_can_be_taken_up_and_undone(make, score):
     first = make()
     first.session.open(str(score))
