@@ -24,13 +24,13 @@ STAND_BY_SAID = "All is at rest or vented, and disarmed. Press a to arm and play
 
 
 def about(call: Call) -> dict[str, Any]:
-    """What the session is, for front ends: as a run's, and hold_to_run, takes, map, midi and osc."""
+    """What the session is, for front ends: as a run's, and hold_to_run, takes, take, map, midi and osc."""
     from player.inputs.osc import known_of
 
     groups = known_of(call.played.rig, call.loaded.score if call.loaded else None).groups
     return play_process.about(
         call.played, call.targets, call.hertz, "live", groups, hold_to_run=call.holds, takes=call.take is not None,
-        map=call.map_path or "", midi=list(call.midi), osc=list(call.osc or ()),
+        take=call.take or "", map=call.map_path or "", midi=list(call.midi), osc=list(call.osc or ()),
     )  # fmt: skip
 
 

@@ -86,13 +86,16 @@ class Parts:
 def checked(
     *, score: str, targets: tuple[str, ...], map_path: str | None, midi: tuple[str, ...], osc: str | None, osc_to: str | None,
     take: str | None, follow: str | None, send_clock: str | None, start: str | None, rate: float | None, log: str | None,
-    rig: str | None, learn: str | None,
+    rig: str | None, learn: str | None, hands: bool = True,
 ) -> Call:  # fmt: skip
-    """Everything that can be wrong with a call, told before a port is touched. Raises Faults or a usage error."""
+    """Everything that can be wrong with a call, told before a port is touched; hands: MIDI or OSC is wanted.
+
+    Raises Faults or a usage error.
+    """
     if learn is None:
         if not targets:
             raise click.UsageError("where to? Add --to sim, --to serial:PORT[@BAUD] or --to file:PATH")
-        if not midi and osc is None:
+        if hands and not midi and osc is None:
             raise click.UsageError("by what hand? Add --midi PORT, or --osc HOST:PORT; 'drawcord ports' lists the MIDI ports")
     elif not midi or map_path is None:
         raise click.UsageError("--learn wants --midi PORT, where the control is, and --map MAP.toml, which gets the bind")

@@ -10,6 +10,7 @@ COMMANDS = {
     "preview": ("composer.commands.preview", "Simulate how the fibers would really move."),
     "play": ("player.commands.play", "Play a score in real time."),
     "live": ("player.commands.live", "Play a rig by hand, or a score under the hands."),
+    "rehearse": ("player.commands.rehearse", "Rehearse in a window: a run begun, or one that is on."),
     "attach": ("player.commands.attach", "Come back to a run whose terminal is gone, or watch one."),
     "device": ("player.commands.device", "A simulated valve driver behind a pseudo-terminal."),
     "tempo": ("player.commands.tempo", "Tempi and markers of a MIDI file as a score has them, and the way back."),

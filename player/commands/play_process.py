@@ -1,5 +1,6 @@
 """What the process of a run does, from `play`: open, pre-flight, arm, play, and leave everything at rest, or vented."""
 
+import os
 from collections.abc import Sequence
 from contextlib import ExitStack
 from typing import Any
@@ -27,11 +28,12 @@ def about(
 ) -> dict[str, Any]:
     """What a run is, for front ends: all that they need to know and that does not change.
 
-    keys: kind ("play" or "live"), played, title, rig, worn, fibers, stroke (strain), drives, boards, groups ([name, indices]),
-        targets, rate_Hz, duration_s, cues ([name, at_s, waits]), began (UTC)
+    keys: kind ("play" or "live"), folder (from which paths are told), played, title, rig, worn, fibers, stroke (strain),
+        drives, boards, groups ([name, indices]), targets, rate_Hz, duration_s, cues ([name, at_s, waits]), began (UTC)
     """
     return {
         "kind": kind,
+        "folder": os.getcwd(),
         "played": played.path,
         "title": played.title,
         "rig": played.rig.file,
