@@ -2,6 +2,7 @@
 
 import io
 import os
+import tokenize
 import zipfile
 from dataclasses import dataclass
 from typing import IO, Any, NoReturn
@@ -78,6 +79,13 @@ MOST = {"T": MOST_TEXT, "R": MOST_TEXT, "N": MOST_TEXT, "L": MOST_TEXT, "F+1": M
     "S": 200_000, "M": 200_000, "C": MOST_CUES, "W": MOST_KNOTS + 1, "Q": MOST_KNOTS, "6": 6
 }  # fmt: skip
 """The greatest length for each letter."""
+
+
+_DAMAGED = (
+    zipfile.BadZipFile, zipfile.zlib.error, ValueError, OSError, EOFError, NotImplementedError, RuntimeError, MemoryError,
+    TypeError, SyntaxError, tokenize.TokenError,
+)  # fmt: skip
+"""What unpacking an array may raise; the last three where its header is no Python value, the way NumPy reads it."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -210,7 +218,7 @@ def _arrays(name: str, data: bytes) -> dict[str, NDArray]:
             try:
                 with packed.open(f"{array}.npy") as file:
                     values[array] = _array(name, array, file, lengths)
-            except (zipfile.BadZipFile, ValueError, OSError, EOFError, NotImplementedError, RuntimeError, zipfile.zlib.error):
+            except _DAMAGED:
                 _wrong(name, f"its part {array} is damaged")
             if array == "version" and int(values[array]) != VERSION:
                 raise fault(

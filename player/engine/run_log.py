@@ -26,6 +26,7 @@ A set takes at most twice the bytes that it has on the wire, a sense and a suppl
 """
 
 import json
+import math
 import struct
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
@@ -63,6 +64,9 @@ _SUPPLY = struct.Struct("<HH")
 FULL = 65535
 LAYOUTS = 4096
 """Different sets of fibers that senses may be of; one more is not logged."""
+
+LONGEST_NUMBER = 40
+"""Characters of a number in a JSON body."""
 
 POSITION_S = 1e-5
 """What a unit of a set's place in the score is worth."""
@@ -207,7 +211,28 @@ def _decoded(kind: str, time_s: float, body: bytes) -> Record:
     if kind == "supply":
         driver, tenths = _SUPPLY.unpack(body)
         return Record(kind, time_s, {}, number=driver, kPa=tenths / 10.0)
-    told = json.loads(body)
+    told = json.loads(body, parse_constant=_number, parse_float=_number, parse_int=_number)
     if not isinstance(told, dict):
         raise ValueError("a JSON object was expected")
-    return Record(kind, time_s, told)
+    return Record(kind, time_s, _printable(told))
+
+
+def _number(text: str) -> float | int:
+    """A number of JSON, as far as a log has any; ValueError for what is not finite or longer than that."""
+    if len(text) > LONGEST_NUMBER:
+        raise ValueError("a number without end")
+    value = int(text) if text.lstrip("-").isdecimal() else float(text)
+    if not math.isfinite(value):
+        raise ValueError("a number that is not finite")
+    return value
+
+
+def _printable(value: Any) -> Any:
+    """The same with what no terminal should be sent, and no file can hold, made visible in all texts."""
+    if isinstance(value, str):
+        return value if value.isprintable() else "".join(c if c.isprintable() else "\N{REPLACEMENT CHARACTER}" for c in value)
+    if isinstance(value, list):
+        return [_printable(one) for one in value]
+    if isinstance(value, dict):
+        return {_printable(name): _printable(one) for name, one in value.items()}
+    return value

@@ -142,7 +142,8 @@ def _layout(say: dict[str, Any], fibers: int, layouts: dict[int, NDArray[np.int6
 
 def _hits(say: dict[str, Any], fibers: int) -> list[tuple[float, str, tuple[int, ...]]]:
     found = []
-    for hit in say.get("hits") or ():
+    told = say.get("hits")
+    for hit in told if isinstance(told, list) else ():
         if isinstance(hit, list) and len(hit) == 3 and type(hit[0]) is int and isinstance(hit[2], list):
             which = tuple(one for one in hit[2] if type(one) is int and 0 <= one < fibers)
             found.append((hit[0] * 1e-6, str(hit[1]), which))
