@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QKeyEvent, QTextCursor, QTextDocument
-from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QLineEdit, QPushButton, QWidget
+from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QLabel, QLineEdit, QPushButton, QVBoxLayout, QWidget
 
 from composer.editor.pane import TextPane
 
@@ -18,9 +18,17 @@ class _Line(QWidget):
     def __init__(self, pane: TextPane):
         super().__init__()
         self._pane = pane
-        self._row = QHBoxLayout(self)
-        self._row.setContentsMargins(8, 2, 8, 2)
+        self._rows = QVBoxLayout(self)
+        self._rows.setContentsMargins(8, 2, 8, 2)
+        self._rows.setSpacing(2)
+        self._next_row()
         self.hide()
+
+    def _next_row(self) -> None:
+        """What is put in from now on stands in a row of its own."""
+        self._row = QHBoxLayout()
+        self._row.setSpacing(4)
+        self._rows.addLayout(self._row)
 
     def _button(self, word: str, says: str, does) -> QPushButton:
         button = QPushButton(word)
@@ -64,13 +72,14 @@ class FindLine(_Line):
         self._case.setAccessibleName("tell capital letters from small ones")
         self._case.toggled.connect(lambda _: self._show())
         self._row.addWidget(self._case)
+        self._button("Close", "put this line away (Escape)", self.put_away)
+        self._next_row()
         self._other = QLineEdit()
         self._other.setPlaceholderText("put in its place")
         self._other.setAccessibleName("text to put in its place")
         self._row.addWidget(self._other, 2)
         self._button("Replace", "put the other text in place of the one that is chosen", self.replace)
         self._button("All", "put the other text in place of every one that is found", self.replace_all)
-        self._button("Close", "put this line away (Escape)", self.put_away)
 
     def open(self) -> None:
         """Show the line, with the word that is chosen in it."""

@@ -371,6 +371,7 @@ def test_a_print_can_be_stopped_and_leaves_nothing(bench, home):
 def test_the_window_fits_and_draws_in_every_size_and_theme(bench, size, theme):
     window = bench.window
     window.set_theme(theme)
+    window.do_find()
     # Letters follow the size, and the room that parts need follows the letters.
     for _ in range(2):
         window.resize(size)
@@ -381,6 +382,7 @@ def test_the_window_fits_and_draws_in_every_size_and_theme(bench, size, theme):
     ground = THEMES[theme].panel
     at = picture.pixelColor(window.width() // 2, window.menuBar().height() // 2)
     assert (at.red(), at.green(), at.blue()) == tuple(ground)
+    window.find_line.put_away()
     letters = window.pane.fontMetrics().height()
     assert letters >= (13 if size == SIZES[0] else 22)
 
