@@ -13,6 +13,9 @@ from composer.picture.look import LEFT, RIGHT, colour, pen
 from composer.picture.over import Shown
 from composer.picture.view import View
 
+UPPER, LOWER = "\u2580", "\u2584"
+"""Half blocks: which half of a thread a word is for."""
+
 
 def around(painter: QPainter, view: View, shown: Shown) -> None:
     """Draw the headings above, the names beside and the lanes below."""
@@ -36,8 +39,8 @@ def _which(painter: QPainter, view: View, shown: Shown) -> None:
     """What the two halves of a thread are."""
     look, plan = view.look, view.plan
     for row, (word, of) in enumerate(zip(shown.words, (look.theme.ink, look.theme.ghost), strict=True)):
-        box = QRectF(look.px(10), plan.cues_top + row * look.px(16), plan.left - look.px(24), look.px(16))
-        look.write(painter, box, f"{'above' if row == 0 else 'below'}: {word}", 11.5, of, LEFT)
+        box = QRectF(look.px(8), plan.cues_top + row * look.px(16), plan.left - look.px(12), look.px(16))
+        look.write(painter, box, f"{UPPER if row == 0 else LOWER} {word}", 11.5, of, LEFT)
 
 
 def _names(painter: QPainter, view: View, shown: Shown) -> None:

@@ -128,8 +128,8 @@ def lanes_of(rig: Rig, kept: Kept) -> tuple[Lane, ...]:
             True,
         ),
         Lane(
-            "highest duty",
-            "% of allowance",
+            "top duty",
+            "% in use",
             duty,
             0.0,
             max(112.0, 1.08 * float(np.nanmax(duty, initial=0.0))),

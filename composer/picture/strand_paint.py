@@ -142,7 +142,7 @@ def _axes(painter: QPainter, at: Face, strand: Strand) -> None:
 
 
 def _measure(unit: str) -> str:
-    return {"mm": "mm of way", "°": "degrees of turn", "%": "% of stroke"}[unit]
+    return {"mm": "mm", "°": "degrees", "%": "% stroke"}[unit]
 
 
 def _legend(painter: QPainter, at: Face, strand: Strand) -> None:

@@ -91,7 +91,7 @@ def duty_lane(rig: Rig, abilities: Abilities, tracks: Tracks, edges_s: Array) ->
         used = np.maximum(used, _worst(np.maximum, missing, every, edges_s) / max(float(coils.burst_s[fiber]), 1e-9))
     share = 100.0 * used
     most = max(112.0, 1.08 * float(share.max(initial=0.0)))
-    return Lane("highest duty", "% of allowance", share, 0.0, most, "duty", 100.0, "all used")
+    return Lane("top duty", "% in use", share, 0.0, most, "duty", 100.0, "all used")
 
 
 def _worst(extreme: np.ufunc, values: Array, times_s: Array, edges_s: Array) -> Array:

@@ -61,12 +61,15 @@ def weave_of(threads: int, moves: int) -> Weave:
     at = rng.uniform(0.0, tracks.duration_s, 2000)
     snags = tuple(Stretch(int(fiber), one, one + 0.4) for fiber, one in zip(rng.integers(threads, size=2000), at, strict=True))
     wave = 100.0 + 20.0 * np.sin(np.linspace(0.0, 60.0, 4096))
-    lanes = tuple(Lane(name, "kPa", wave, 60.0, 140.0, "supply") for name in ("receiver", "highest duty"))
+    lanes = tuple(Lane(name, "kPa", wave, 60.0, 140.0, "supply") for name in ("receiver", "top duty"))
     names = tuple(f"t.{n + 1}" for n in range(threads))
     return Weave(tracks, abilities, bands, names, tempo, snags, (), (), lanes)
 
 
-def frames(app: QApplication, view: ClothView, change, seconds: float = 2.0) -> tuple[float, float, float]:
+LASTS_S = 0.2 if "--small" in sys.argv else 2.0
+
+
+def frames(app: QApplication, view: ClothView, change, seconds: float = LASTS_S) -> tuple[float, float, float]:
     """Frames a second while `change(n)` alters the view before each, the same by the processor's time, the longest in ms."""
     took = []
     end = time.perf_counter() + seconds
@@ -128,7 +131,9 @@ def bench(app: QApplication, threads: int, moves: int) -> float:
 def main() -> None:
     """Bench few and many."""
     app = QApplication.instance() or QApplication(sys.argv[:1])
-    threads, moves = (int(one) for one in sys.argv[1:3]) if len(sys.argv) > 2 else (4096, 1_000_000)
+    threads, moves = (int(one) for one in sys.argv[1:3]) if len(sys.argv) == 3 else (4096, 1_000_000)
+    if "--small" in sys.argv:
+        threads, moves = 512, 20_000
     few = bench(app, 48, 2000)
     many = bench(app, threads, moves)
     peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 2**20
