@@ -278,13 +278,19 @@ class TextPane(QPlainTextEdit):
 
     def insertFromMimeData(self, source: QMimeData) -> None:
         """Paste text alone, and no more than a score may have."""
-        text = source.text()
         room = most("file") - self._units
-        if len(text) > room:
+        # Counted before it is made into a text, which alone would take its time.
+        size = source.data("text/plain").size() or len(source.text())
+        if size > room:
             self.refused.emit(
-                f"That is {len(text):,} characters; a score may have {most('file'):,} bytes, and this one has room for "
-                f"{max(room, 0):,}. Nothing was pasted."
+                f"That is {size:,} bytes; a score may have {most('file'):,}, and this one has room for {max(room, 0):,}. "
+                "Nothing was pasted."
             )
+            return
+        text = source.text()
+        lines = text.count("\n") + self.blockCount()
+        if lines > most("lines"):
+            self.refused.emit(f"The score would have {lines:,} lines then; it may have {most('lines'):,}. Nothing was pasted.")
             return
         cursor = self.textCursor()
         cursor.insertText(text.replace("\r\n", "\n").replace("\r", "\n").replace("\0", ""))

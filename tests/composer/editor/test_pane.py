@@ -168,8 +168,17 @@ def test_a_paste_beyond_what_a_score_may_have_is_refused_with_a_sentence(pane, q
     data.setText("x" * (50 << 20))
     with qtbot.waitSignal(pane.refused) as told:
         pane.insertFromMimeData(data)
-    assert "52,428,800 characters" in told.args[0]
+    assert "52,428,800 bytes" in told.args[0]
     assert f"{most('file'):,}" in told.args[0]
+    assert pane.text == TEXT
+
+
+def test_a_paste_of_more_lines_than_a_score_may_have_is_refused_too(pane, qtbot):
+    data = QMimeData()
+    data.setText("\n" * most("lines"))
+    with qtbot.waitSignal(pane.refused) as told:
+        pane.insertFromMimeData(data)
+    assert "it may have 200,000" in told.args[0]
     assert pane.text == TEXT
 
 
