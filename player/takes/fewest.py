@@ -1,7 +1,6 @@
 """The fewest moves from the start of a take to its end: breadth-first over places and targets, all series at once."""
 
 from dataclasses import dataclass
-from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -39,7 +38,7 @@ def fewest(places: Places, moves: Moves) -> tuple[list[Path | None], Index]:
     steps, breaks = _steps(places, moves)
     broken = np.unique(places.series[breaks])
     levels = places.targets_of(np.arange(len(places.place))).T
-    cost, before, by = _roundest(moves, steps, _roughness(places, levels), levels)
+    cost, before, by = _roundest(places, moves, steps, _roughness(places, levels), levels)
     paths: list[Path | None] = []
     for series, last in enumerate(places.first[1:] - 1):
         ends = np.where(steps[last] == steps[last].min(), cost[last], np.inf)
@@ -114,46 +113,63 @@ BENT = 0.5
 HELD = -1.0
 """What a hold costs."""
 
-MOST_PAIRS = 1 << 16
-
 
 def _roundest(
-    moves: Moves, steps: NDArray[np.int32], rough: Array, levels: Array
+    places: Places, moves: Moves, steps: NDArray[np.int32], rough: Array, levels: Array
 ) -> tuple[Array, NDArray[np.int64], NDArray[np.int64]]:
     """Of the ways of fewest moves the one that reads best: for each target of each place its cost, (N, LEVELS), and for each
-    state (place times LEVELS plus target) the state before and the move from there, (N * LEVELS,)."""
-    lots = [np.empty((0, 3), dtype=np.int64)]
-    least, most = steps.min(axis=1), np.where(steps == NEVER, -2, steps).max(axis=1)
-    may = (least[moves.source] < most[moves.target]) & (most[moves.source] + 1 >= least[moves.target])
-    may = np.flatnonzero(may)
-    for begin in range(0, len(may), MOST_PAIRS):
-        part = may[begin : begin + MOST_PAIRS]
-        source, target, masks = moves.source[part], moves.target[part], moves.masks[part]
-        leads = (steps[source] + 1)[:, :, None] == steps[target][:, None, :]
-        leads &= ((masks[:, :, None] >> np.arange(LEVELS, dtype=np.uint8)) & 1).astype(bool)
-        edge, a, b = np.nonzero(leads)
-        lots.append(np.column_stack([part[edge], source[edge] * LEVELS + a, target[edge] * LEVELS + b]))
-    edge, left, right = np.concatenate(lots).T
-    number = steps.ravel()[right]
-    order = np.lexsort((right, number))
-    edge, left, right, number = edge[order], left[order], right[order], number[order]
-    flat = levels.ravel()
-    each = rough.ravel()[right] + BENT * (moves.shape[edge] > 1)
-    each += HELD * (np.abs(flat[left] - flat[right]) < 1e-9)
+    state (place times LEVELS plus target) the state before and the move from there, (N * LEVELS,).
+
+    States that lead to no end by a way of fewest moves are left out.
+    """
     cost = np.zeros(steps.size)
     before, by = np.full(steps.size, -1), np.full(steps.size, -1)
-    bounds = np.flatnonzero(np.diff(number, prepend=-1, append=NEVER))
-    for low, high in pairwise(bounds):
-        total = cost[left[low:high]] + each[low:high]
-        lead = np.flatnonzero(np.diff(right[low:high], prepend=-1))
-        sizes = np.diff(lead, append=high - low)
+    flat, looks = levels.ravel(), rough.ravel()
+    bent = BENT * (moves.shape > 1)
+    for edge, left, right in reversed(_tight(places, moves, steps)):
+        each = looks[right] + bent[edge]
+        each += HELD * (np.abs(flat[left] - flat[right]) < 1e-9)
+        total = cost[left] + each
+        order = np.argsort(right, kind="stable")
+        total, state = total[order], right[order]
+        lead = np.flatnonzero(np.diff(state, prepend=-1))
         least = np.minimum.reduceat(total, lead)
-        best = np.flatnonzero(total <= np.repeat(least, sizes))
-        state = right[low:high][best]
-        first = np.flatnonzero(np.diff(state, prepend=-1))
-        state, best = state[first], best[first] + low
-        cost[state], before[state], by[state] = least, left[best], edge[best]
+        best = np.flatnonzero(total <= np.repeat(least, np.diff(lead, append=len(total))))
+        best = best[np.flatnonzero(np.diff(state[best], prepend=-1))]
+        cost[state[best]] = least
+        before[state[best]], by[state[best]] = left[order[best]], edge[order[best]]
     return cost.reshape(steps.shape), before, by
+
+
+def _tight(places: Places, moves: Moves, steps: NDArray[np.int32]) -> list[tuple[Index, Index, Index]]:
+    """What ways of fewest moves to the ends are made of: moves, states that they come from, and go to; the last moves first."""
+    order = np.argsort(moves.target, kind="stable")
+    begins = np.searchsorted(moves.target[order], np.arange(len(places.place) + 1))
+    source, masks = moves.source[order], moves.masks[order]
+    last = places.first[1:] - 1
+    ends = steps[last]
+    row, level = np.nonzero((ends == ends.min(axis=1, keepdims=True)) & (ends != NEVER))
+    waits = last[row] * LEVELS + level
+    number = steps.ravel()[waits]
+    found = []
+    front = np.empty(0, dtype=np.int64)
+    for now in range(int(number.max(initial=0)), 0, -1):
+        # Series of fewer moves join in where their last one is.
+        front = np.unique(np.concatenate([front, waits[number == now]]))
+        there, into = np.divmod(front, LEVELS)
+        many = begins[there + 1] - begins[there]
+        edge = np.repeat(begins[there] - (np.cumsum(many) - many), many) + np.arange(int(many.sum()))
+        into, right = np.repeat(into, many), np.repeat(front, many)
+        leads = steps[source[edge]] == now - 1
+        leads &= (masks[edge] >> into[:, None].astype(np.uint8)) & 1 > 0
+        some, left = np.nonzero(leads)
+        edge, right = edge[some], right[some]
+        left += source[edge] * LEVELS
+        edge = order[edge]
+        sort = np.lexsort((left, edge))
+        found.append((edge[sort], left[sort], right[sort]))
+        front = np.unique(left)
+    return found
 
 
 def _back(state: int, places: Places, moves: Moves, levels: Array, before: Index, by: Index) -> Path:

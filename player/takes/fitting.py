@@ -6,6 +6,10 @@ their ends are weighed in full, with the targets at each, and again closer. Each
 (tests hold the whole against an exhaustive one).
 """
 
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from typing import Any
+
 import numpy as np
 
 from composer.score.tempo import TempoMap
@@ -21,52 +25,63 @@ ROUNDS_S = ((0.26, 0.06), (0.04, 0.015))
 NOTED = 0.1
 """Of the slack: so far off a straight line between two instants an instant is watched too."""
 
-BATCH = 1 << 21
-"""Values of series that are fitted together."""
+BATCH = 1 << 18
+"""Values of series that are fitted together: few enough to stay near the processor, and for all cores to have some."""
 
 BESIDE = 2
 """Moves before and after one that is to be fitted again that are searched with it."""
 
 
-class Fitting:
-    """The series of a take, fitted once and then again where that is wanted.
+Each = Callable[[Callable[[Any], Any], Sequence[Any], Callable[[int], None]], list[Any]]
+"""What `one_by_one` is: something done with each of some items, in their order; told meanwhile is how many are done."""
+
+
+def one_by_one(do: Callable[[Any], Any], items: Sequence[Any], tell: Callable[[int], None]) -> list[Any]:
+    """Everything in this process, on one core."""
+    results = []
+    for item in items:
+        results.append(do(item))
+        tell(len(results))
+    return results
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _Lot:
+    """Some series to be fitted, without anything of the others.
 
     coarse, watched: for each series places some way apart, and the instants between which it is about straight
+    paths, where_s: where they are fitted again, the paths that there are, and for each the instants
     """
 
-    def __init__(self, played: Played, tempo: TempoMap):
-        self._played, self._tempo = played, tempo
+    played: Played
+    tempo: TempoMap
+    coarse: list[Index]
+    watched: list[Array]
+    paths: list[Path]
+    where_s: list[Array]
+
+
+class Fitting:
+    """The series of a take, fitted once and then again where that is wanted."""
+
+    def __init__(self, played: Played, tempo: TempoMap, each: Each = one_by_one):
+        """each: does something with each of some lots of series, which know nothing of each other"""
+        self._played, self._tempo, self._each = played, tempo, each
         self._coarse: list[Index] = []
         self._watched: list[Array] = []
 
-    def fit(self) -> list[Path]:
-        """The fewest moves for each of the series. The curve ends at the first sixteenth count after the last instant."""
-        played = self._played
-        rows = max(1, BATCH // max(1, played.share.shape[1]))
-        found: list[Path] = []
-        for begin in range(0, len(played.share), rows):
-            found += self._fit(played.part(range(begin, min(begin + rows, len(played.share)))))
-        return found
+    def fit(self, tell: Callable[[float], None] = lambda share: None) -> list[Path]:
+        """The fewest moves for each of the series. The curve ends at the first sixteenth count after the last instant.
 
-    def _fit(self, played: Played) -> list[Path]:
-        tempo, coarse = self._tempo, places_of(played, self._tempo, COARSE)
-        mine = [of_series(coarse, series) for series in range(len(played.share))]
-        watched = [_with_furthest(played, k, coarse.time_s[coarse.first[k] : coarse.first[k + 1]]) for k in range(len(mine))]
-        self._coarse += mine
-        self._watched += watched
-        guesses, _ = fewest(coarse, roughly(played, coarse))
-        knots = [mine[series] if guess is None else guess.place for series, guess in enumerate(guesses)]
-        best: list[Path | None] = [None] * len(knots)
-        for number, (around_s, apart_s) in enumerate(ROUNDS_S):
-            step, around = _grid(tempo, coarse, around_s, apart_s)
-            tried = [np.union1d(nearby(places, around, step), places) for places in knots]
-            search = Search(played, tempo, tried, _and_watch(watched, played))
-            if number:
-                search.stages = knots
-            for series, path in enumerate(search.run()):
-                if best[series] is None or path.moves <= best[series].moves:
-                    best[series], knots[series] = path, path.place
-        return best
+        tell: is told which share of it is done
+        """
+        lots = [_Lot(self._played.part(some), self._tempo, [], [], [], []) for some in self._lots(len(self._played.share))]
+        found: list[Path] = []
+        for paths, coarse, watched in self._each(_fit, lots, lambda done: tell(done / len(lots))):
+            found += paths
+            self._coarse += coarse
+            self._watched += watched
+        return found
 
     def again(self, played: Played, series: list[int], paths: list[Path], where_s: list[Array]) -> list[Path]:
         """Paths of some series once more, after slack or rates have changed about some instants: only what lies there is
@@ -74,30 +89,64 @@ class Fitting:
 
         played: all series, as they are to be fitted now; where_s: for each of `series` the instants
         """
-        some = played.part(series)
-        step, around = _grid(self._tempo, places_of(some.part([0]), self._tempo, COARSE, [np.empty(0, np.int64)]), *ROUNDS_S[0])
-        tried, pins, windows = [], [], []
-        for number, path, times in zip(series, paths, where_s, strict=True):
-            move = np.clip(np.searchsorted(path.time_s, times, side="right") - 1, 0, path.moves - 1)
-            open_ = np.zeros(path.moves, dtype=bool)
-            open_[np.clip(move[:, None] + np.arange(-BESIDE, BESIDE + 1), 0, path.moves - 1)] = True
-            bounds = np.flatnonzero(np.diff(open_, prepend=False, append=False)).reshape(-1, 2)
-            inner = np.zeros(path.moves + 1, dtype=bool)
-            inner[1:-1] = open_[1:] & open_[:-1]
-            inner[-1] = open_[-1]
-            low, high = path.place[bounds].T
-            mine = self._coarse[number]
-            inside = [mine[a:b] for a, b in zip(np.searchsorted(mine, low), np.searchsorted(mine, high), strict=True)]
-            around_knots = nearby(path.place[inner], around, step)
-            at = np.searchsorted(low, around_knots, side="right") - 1
-            around_knots = around_knots[(at >= 0) & (around_knots < high[at])]
-            tried.append(np.unique(np.concatenate([path.place, around_knots, *inside])))
-            pins.append((path, ~inner))
-            windows.append((low, high))
-        watched = [self._watched[number] for number in series]
-        search = Search(some, self._tempo, tried, _and_watch(watched, some))
-        search.keep(pins, windows)
-        return search.run()
+        lots = []
+        for some in self._lots(len(series)):
+            mine = [series[n] for n in some]
+            coarse, watched = [self._coarse[k] for k in mine], [self._watched[k] for k in mine]
+            lots.append(
+                _Lot(played.part(mine), self._tempo, coarse, watched, [paths[n] for n in some], [where_s[n] for n in some])
+            )
+        return [path for lot in self._each(_again, lots, lambda done: None) for path in lot]
+
+    def _lots(self, count: int) -> list[range]:
+        rows = max(1, BATCH // max(1, self._played.share.shape[1]))
+        return [range(begin, min(begin + rows, count)) for begin in range(0, count, rows)]
+
+
+def _fit(lot: _Lot) -> tuple[list[Path], list[Index], list[Array]]:
+    """The paths of a lot, and its `coarse` and `watched`."""
+    played, tempo, coarse = lot.played, lot.tempo, places_of(lot.played, lot.tempo, COARSE)
+    mine = [of_series(coarse, series) for series in range(len(played.share))]
+    watched = [_with_furthest(played, k, coarse.time_s[coarse.first[k] : coarse.first[k + 1]]) for k in range(len(mine))]
+    guesses, _ = fewest(coarse, roughly(played, coarse))
+    knots = [mine[series] if guess is None else guess.place for series, guess in enumerate(guesses)]
+    best: list[Path | None] = [None] * len(knots)
+    for number, (around_s, apart_s) in enumerate(ROUNDS_S):
+        step, around = _grid(tempo, coarse, around_s, apart_s)
+        tried = [np.union1d(nearby(places, around, step), places) for places in knots]
+        search = Search(played, tempo, tried, _and_watch(watched, played))
+        if number:
+            search.stages = knots
+        for series, path in enumerate(search.run()):
+            if best[series] is None or path.moves <= best[series].moves:
+                best[series], knots[series] = path, path.place
+    return best, mine, watched
+
+
+def _again(lot: _Lot) -> list[Path]:
+    """The paths of a lot once more."""
+    some, tempo = lot.played, lot.tempo
+    step, around = _grid(tempo, places_of(some.part([0]), tempo, COARSE, [np.empty(0, np.int64)]), *ROUNDS_S[0])
+    tried, pins, windows = [], [], []
+    for mine, path, times in zip(lot.coarse, lot.paths, lot.where_s, strict=True):
+        move = np.clip(np.searchsorted(path.time_s, times, side="right") - 1, 0, path.moves - 1)
+        open_ = np.zeros(path.moves, dtype=bool)
+        open_[np.clip(move[:, None] + np.arange(-BESIDE, BESIDE + 1), 0, path.moves - 1)] = True
+        bounds = np.flatnonzero(np.diff(open_, prepend=False, append=False)).reshape(-1, 2)
+        inner = np.zeros(path.moves + 1, dtype=bool)
+        inner[1:-1] = open_[1:] & open_[:-1]
+        inner[-1] = open_[-1]
+        low, high = path.place[bounds].T
+        inside = [mine[a:b] for a, b in zip(np.searchsorted(mine, low), np.searchsorted(mine, high), strict=True)]
+        around_knots = nearby(path.place[inner], around, step)
+        at = np.searchsorted(low, around_knots, side="right") - 1
+        around_knots = around_knots[(at >= 0) & (around_knots < high[at])]
+        tried.append(np.unique(np.concatenate([path.place, around_knots, *inside])))
+        pins.append((path, ~inner))
+        windows.append((low, high))
+    search = Search(some, tempo, tried, _and_watch(lot.watched, some))
+    search.keep(pins, windows)
+    return search.run()
 
 
 def _with_furthest(played: Played, series: int, time_s: Array) -> Array:

@@ -15,7 +15,7 @@ from composer.rig.model import Rig
 from composer.score.tempo import TempoMap
 from composer.tracks import Tracks
 from player.takes.fewest import Path
-from player.takes.fitting import Fitting
+from player.takes.fitting import Each, Fitting, one_by_one
 from player.takes.played import Array, Index, Played
 from player.takes.voices import Voice, leader_of, played_of, tracks_of, voices_of
 
@@ -42,6 +42,12 @@ ENOUGH, STOOD = 1.5, 1e-6
 
 SPARE = 1.05
 """A hold lasts at least so much longer than a valve takes to switch, once one was too short."""
+
+SPREAD = 1 << 20
+"""Values of a take from which on other cores are of use: before that it takes as long to have them begin."""
+
+FITTED = 0.7
+"""Share of the work that is done once all is fitted for the first time, as a rule."""
 
 STILL = 0.5
 """A share of the tolerance: a fiber that stays this near to where it began was not played."""
@@ -79,12 +85,15 @@ def settle(
     only: Index | None = None,
     *,
     every: bool = False,
+    each: Each = one_by_one,
+    tell: Callable[[float], None] = lambda share: None,
 ) -> Settled:
     """Fit what was played.
 
     time_s: (T,) instants of the samples; governed: strain (T,) of a fiber at them; tolerance: share of usable stroke
     start: (F,) strain that each fiber has as the take begins, at rest unless given; only: the fibers that were played
-    every: those of `only` that stand still too
+    every: those of `only` that stand still too; each: does something with each of some items, as `one_by_one` does
+    tell: is told which share of the work is done, more or less
     """
     start = (np.zeros(len(rig.fibers)) if start is None else start) / abilities.stroke
     step = _step(time_s)
@@ -108,7 +117,11 @@ def settle(
     row[index] = np.arange(len(index))
     whole = _Rows(share, row)
     played = played_of(voices, whole[[leader_of(voice) for voice in voices]], start, abilities, float(grid[0]), step, tolerance)
-    return _Settling(voices, played, whole, start, rig, abilities, tempo, tolerance, grid, np.array(late, dtype=np.int64)).run()
+    if share.size < SPREAD:
+        each = one_by_one
+    return _Settling(
+        voices, played, whole, start, rig, abilities, tempo, tolerance, grid, np.array(late, dtype=np.int64), each
+    ).run(tell)  # fmt: skip
 
 
 class _Rows:
@@ -119,6 +132,10 @@ class _Rows:
 
     def __getitem__(self, fibers: Index | list[int]) -> Array:
         return self.share[self.row[fibers]]
+
+    def of(self, fiber: int) -> Array:
+        """Those of one fiber, (M,); nobody writes into them."""
+        return self.share[self.row[fiber]]
 
 
 def _step(time_s: Array) -> float:
@@ -146,20 +163,21 @@ class _Settling:
 
     def __init__(
         self, voices: list[Voice], played: Played, share: _Rows, start: Array, rig: Rig, abilities: Abilities, tempo: TempoMap,
-        tolerance: float, grid_s: Array, late: Index,
+        tolerance: float, grid_s: Array, late: Index, each: Each,
     ):  # fmt: skip
         self.voices, self.played, self.share, self.start = voices, played, share, start
         self.rig, self.abilities, self.tempo, self.tolerance = rig, abilities, tempo, tolerance
-        self.grid_s, self.late = grid_s, late
+        self.grid_s, self.late, self.each = grid_s, late, each
         self.known: dict[int, tuple[Path, Array, NDArray[np.bool_]]] = {}
         self.voice_of = {int(f): number for number, voice in enumerate(voices) for f in voice.fibers}
 
-    def run(self) -> Settled:
+    def run(self, tell: Callable[[float], None]) -> Settled:
         """The curves, once all is well or nothing more can be done."""
-        fitting = Fitting(self.played, self.tempo)
-        paths = fitting.fit()
+        fitting = Fitting(self.played, self.tempo, self.each)
+        paths = fitting.fit(lambda share: tell(FITTED * share))
         best: tuple[tuple[int, int], Settled] | None = None
         for self.round in range(ROUNDS):
+            tell(1.0 - (1.0 - FITTED) * 0.5**self.round)
             settled, off = self._seen(paths)
             wrong = (len(settled.checked.snags), int(np.count_nonzero(settled.worst > self.tolerance)))
             if best is None or wrong < best[0]:
@@ -175,6 +193,7 @@ class _Settling:
             paths = list(paths)
             for number, path in zip(again, fresh, strict=True):
                 paths[number] = path
+        tell(1.0)
         return best[1]
 
     def _seen(self, paths: list[Path]) -> tuple[Settled, dict[int, Array]]:
@@ -184,33 +203,32 @@ class _Settling:
         checked = check(tracks, self.rig, self.abilities)
         worst = np.zeros(tracks.fibers)
         off: dict[int, Array] = {}
-        for number, (voice, path) in enumerate(zip(self.voices, paths, strict=True)):
-            if self.known.get(number, (None,))[0] is not path:
-                self.known[number] = path, *self._errors(voice, tracks)
+        fresh = [number for number, path in enumerate(paths) if self.known.get(number, (None,))[0] is not path]
+        fibers = [(number, k) for number in fresh for k in range(len(self.voices[number].fibers))]
+        curves = [self._curve(int(self.voices[number].fibers[k]), tracks) for number, k in fibers]
+        errors = self.each(_errors, curves, lambda done: None)
+        for number in fresh:
+            self.known[number] = (
+                paths[number], np.zeros(len(self.voices[number].fibers)), np.zeros(len(self.grid_s), dtype=bool)
+            )  # fmt: skip
+        for (number, k), (most, far) in zip(fibers, errors, strict=True):
+            self.known[number][1][k] = most
+            self.known[number][2][:] |= far
+        for number, voice in enumerate(self.voices):
             _, worst[voice.fibers], far = self.known[number]
             if far.any():
                 off[number] = far
         return Settled(self.voices, paths, tracks, checked, worst, self.late), off
 
-    def _errors(self, voice: Voice, tracks: Tracks) -> tuple[Array, NDArray[np.bool_]]:
-        """By how much each fiber of a voice is off at worst, and where any is off by too much, (M,)."""
-        far, worst = np.zeros(len(self.grid_s), dtype=bool), np.empty(len(voice.fibers))
-        for k, fiber in enumerate(voice.fibers):
-            error = np.abs(self._curve(tracks, int(fiber)) - self.share[[int(fiber)]][0])
-            worst[k] = error.max()
-            far |= error > self.tolerance
-        return worst, far
-
-    def _curve(self, tracks: Tracks, fiber: int) -> Array:
-        """The share of stroke of one fiber on the grid."""
+    def _curve(self, fiber: int, tracks: Tracks) -> "_Curve":
+        """One fiber and nothing else."""
         mine = slice(tracks.first[fiber], tracks.first[fiber + 1])
-        one = Tracks(
-            np.array([0, mine.stop - mine.start]),
-            *(getattr(tracks, name)[mine] for name in ("time_s", "curve", "manner", "shape", "line", "phrase_line")),
-            tracks.duration_s,
+        names = ("time_s", "curve", "manner", "shape", "line", "phrase_line")
+        alone = Tracks(
+            np.array([0, mine.stop - mine.start]), *(getattr(tracks, name)[mine] for name in names), tracks.duration_s
         )
-        alone = replace(self.abilities, which=self.abilities.which[[fiber]], stroke=self.abilities.stroke[[fiber]])
-        return strain_at(one, alone, self.grid_s)[0] / self.abilities.stroke[fiber]
+        abilities = replace(self.abilities, which=self.abilities.which[[fiber]], stroke=self.abilities.stroke[[fiber]])
+        return _Curve(alone, abilities, self.grid_s, self.share.of(fiber), self.tolerance)
 
     def _tightened(self, settled: Settled, off: dict[int, Array]) -> dict[int, list[Array]]:
         """Make the slack smaller, or the rates lower, where something does not hold; which voices, and instants."""
@@ -279,3 +297,23 @@ class _Settling:
     def _span(self, from_s: float, to_s: float) -> slice:
         low = int(np.searchsorted(self.grid_s, from_s - self.played.step_s))
         return slice(low, int(np.searchsorted(self.grid_s, to_s + self.played.step_s)) + 1)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _Curve:
+    """Tracks of one fiber, and what was played of it on a grid, share of stroke (M,)."""
+
+    tracks: Tracks
+    abilities: Abilities
+    grid_s: Array
+    share: Array
+    tolerance: float
+
+
+def _errors(curve: _Curve) -> tuple[float, NDArray[np.bool_]]:
+    """By how much the fiber is off at worst, and where it is off by too much, (M,)."""
+    error = strain_at(curve.tracks, curve.abilities, curve.grid_s)[0]
+    error /= curve.abilities.stroke[0]
+    error -= curve.share
+    np.abs(error, out=error)
+    return float(error.max()), error > curve.tolerance
