@@ -87,8 +87,7 @@ def _one_way(strain: Array, rate: Array) -> OneWay:
 
 def _log_ratio(x: Array) -> Array:
     """ln(1 + x) / x, which is 1 at 0."""
-    safe = np.where(x == 0.0, 1.0, x)
-    return np.where(x == 0.0, 1.0, np.log1p(safe) / safe)
+    return np.divide(np.log1p(x), x, out=np.ones(np.shape(x)), where=x != 0.0)
 
 
 def _exp_ratio(x: Array) -> Array:
@@ -166,8 +165,10 @@ def travel_time_s(abilities: Abilities, fiber: ArrayLike, a: ArrayLike, b: Array
     """
     fiber, a, b = _three(fiber, a, b)
     tables = tables_of(abilities)
-    time = np.empty(len(a))
     rising = b > a
+    if not np.count_nonzero(rising):
+        return _way_time(abilities, tables, tables.exhaust, fiber, b, a)
+    time = np.empty(len(a))
     for way, mine in ((tables.fill, rising), (tables.exhaust, ~rising)):
         if mine.any():
             time[mine] = _way_time(abilities, tables, way, fiber[mine], np.minimum(a, b)[mine], np.maximum(a, b)[mine])
@@ -197,7 +198,10 @@ def strain_after(abilities: Abilities, fiber: ArrayLike, a: ArrayLike, b: ArrayL
 
 
 def _three(fiber: ArrayLike, a: ArrayLike, b: ArrayLike) -> tuple[Index, Array, Array]:
-    fiber, a, b = np.broadcast_arrays(np.asarray(fiber, dtype=np.int64), np.asarray(a, float), np.asarray(b, float))
+    fiber, a, b = np.asarray(fiber, dtype=np.int64), np.asarray(a, float), np.asarray(b, float)
+    if fiber.shape == a.shape == b.shape:
+        return fiber, a, b
+    fiber, a, b = np.broadcast_arrays(fiber, a, b)
     return fiber, a, b
 
 
@@ -215,6 +219,9 @@ def _way_time(abilities: Abilities, tables: Tables, way: OneWay, fiber: Index, l
     # Within one cell the difference of two clocks would lose a short way's digits.
     begin = capability * tables.points
     inside = (first_cell == last_cell) & (low >= way.strain[begin]) & (high <= way.strain[begin + tables.points - 1])
+    inside = inside.nonzero()[0]
+    if not inside.size:
+        return time
     cell, low, high = first_cell[inside], low[inside], high[inside]
     rate = way.rate[cell] + way.slope[cell] * (low - way.strain[cell])
     time[inside] = (high - low) / rate * _log_ratio(way.slope[cell] * (high - low) / rate)
@@ -226,7 +233,7 @@ def _clock(tables: Tables, way: OneWay, capability: Index, strain: Array, cell: 
     first = capability * tables.points
     last = first + tables.points - 1
     over, under = strain > way.strain[last], strain < way.strain[first]
-    some = (over | under).any()
+    some = np.count_nonzero(over | under)
     gone = (np.clip(strain, way.strain[first], way.strain[last]) if some else strain) - way.strain[cell]
     clock = way.clock_s[cell] + gone / way.rate[cell] * _log_ratio(way.slope[cell] * gone / way.rate[cell])
     if not some:

@@ -79,6 +79,5 @@ def _duration(found: Moments) -> float:
     """When the last instance is over, by its phrase's length, its last line or the entry that takes over from it."""
     if not len(found.start):
         return 0.0
-    over = found.end.copy()
-    np.maximum.at(over, found.instance, found.until)
-    return float(np.max(np.minimum(over, found.cut)))
+    over = np.maximum(found.end, np.maximum.reduceat(found.until, found.opens.nonzero()[0]))
+    return float(np.minimum(over, found.cut).max())

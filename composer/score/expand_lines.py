@@ -168,9 +168,9 @@ def _table(rows: list[_Row], first: list[int], lengths: list[tuple[Fraction, ...
     has_over, has_lasts = np.zeros(len(rows), dtype=bool), np.zeros(len(rows), dtype=bool)
     for at, row in enumerate(rows):  # what few lines have
         if row.over is not None:
-            over[at], has_over[at] = triples([parts(row.over)])[0], row.shape != "step"
+            over[at], has_over[at] = [_number(part) for part in parts(row.over)], row.shape != "step"
         if row.lasts is not None:
-            lasts[at], has_lasts[at] = triples([row.lasts])[0], True
+            lasts[at], has_lasts[at] = [_number(part) for part in row.lasts], True
         if row.controls:
             control[at] = [_number(inner.value) for inner in row.controls]
             control_unit[at] = [UNIT_NUMBERS[inner.unit] for inner in row.controls]

@@ -122,7 +122,9 @@ class _Work:
             starts = self._repeated(np.array([self.tempo.counts_of(entry.at)]), every, None)
         elif entry.after is not None:
             starts = self._shifted(starts, entry.after)
-        starts = self._repeated(starts, entry.repeat, _times(phrase_length(phrase), entry.stretch))
+        if (repeat := entry.repeat) is not None and repeat.times > 1:
+            length = None if repeat.every else _times(phrase_length(phrase), entry.stretch)
+            starts = self._repeated(starts, repeat, length)
         counts = starts[:, None].repeat(len(fibers), axis=1)
         if entry.canon is not None:
             rank = ranks(entry.canon.origin, len(fibers))

@@ -19,7 +19,7 @@ from composer.tracks import SAME_INSTANT_S
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-NO_LINES = np.empty(0, dtype=np.int64)
+NO_LINES, NO_COUNTS = np.empty(0, dtype=np.int64), np.empty(0)
 
 STEPS = NAMES.index("step")
 
@@ -55,7 +55,7 @@ class Moments:
 def moments(starts: Starts, lines: Lines, tempo: TempoMap, rig: Rig, faults: list[Fault]) -> Moments:
     """All instants of a score; instants within SAME_INSTANT_S become one float. Faults are added to `faults`."""
     chain = starts.fiber
-    if starts.added.any():
+    if np.count_nonzero(starts.added):
         chain = np.where(starts.added, len(rig.fibers) + starts.added.cumsum() - 1, chain)
     order = np.lexsort((starts.count, chain))
     chain, count = chain[order], starts.count[order]
@@ -71,14 +71,20 @@ def moments(starts: Starts, lines: Lines, tempo: TempoMap, rig: Rig, faults: lis
 
     # All starts, ends and lines at once: a call costs more than a conversion.
     of, by = np.concatenate([np.arange(len(order)), instance]), np.concatenate([lines.length[variant], lines.offset[row]])
-    seconds = _later(tempo, count[of], by, stretch[of], count)
-    start, end, until = _parted(seconds, (len(order), len(order), len(row)))
-    sources = [start, end, until]
+    counts = _counts_after(tempo, count[of], by, stretch[of])
     # Few phrases have moves of their own length, fewer are played backwards: what no line has is not looked for.
-    over = lines.has_over[row].nonzero()[0] if lines.has_over.any() else NO_LINES
-    lasts = lines.has_lasts[row].nonzero()[0] if lines.has_lasts.any() else NO_LINES
+    over = lines.has_over[row].nonzero()[0] if np.count_nonzero(lines.has_over) else NO_LINES
+    lasts = lines.has_lasts[row].nonzero()[0] if np.count_nonzero(lines.has_lasts) else NO_LINES
+    back = lines.over[row[over]] * stretch[instance[over], None]
+    # Back from a line's counts, where no bars and seconds lie between.
+    at_once = not (np.count_nonzero(lines.offset[:, 2]) or np.count_nonzero(lines.over[:, 0]))
+    begins = counts[len(order) + over] - back[:, 1] if at_once else NO_COUNTS
+    seconds = tempo.seconds(np.concatenate([count, counts, begins]))
+    seconds[len(count) : len(count) + len(counts)] += by[:, 2] * stretch[of]
+    start, end, until, begins = _parted(seconds, (len(order), len(order), len(row), len(begins)))
+    sources = [start, end, until]
     if over.size:
-        sources.append(_shifted(tempo, until[over], -lines.over[row[over]] * stretch[instance[over], None]))
+        sources.append(begins - back[:, 2] if at_once else _shifted(tempo, until[over], -back))
     if lasts.size:
         before = _before(until, start, instance, opens)
         sources.append(_shifted(tempo, before[lasts], lines.lasts[row[lasts]] * stretch[instance[lasts], None]))
@@ -109,21 +115,17 @@ def _before(until: Array, start: Array, instance: Index, opens: NDArray[np.bool_
     return before
 
 
-def _later(tempo: TempoMap, count: Array, by: Array, stretch: Array, also: Array | None = None) -> Array:
-    """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS times `stretch`, after `count`; before them those of
-    the counts `also`."""
+def _counts_after(tempo: TempoMap, count: Array, by: Array, stretch: Array) -> Array:
+    """Counts of the places that lie `by`, (n, 3) parts of TIME_UNITS times `stretch`, after `count`, up to parts in seconds."""
     if (some := by[:, 0].nonzero()[0]).size:
         count = count.copy()
         count[some] = tempo.counts_of_bars(tempo.bars(count[some]) + by[some, 0] * stretch[some])
-    counts = count + by[:, 1] * stretch
-    seconds = tempo.seconds(counts if also is None else np.concatenate([also, counts]))
-    seconds[len(seconds) - len(counts) :] += by[:, 2] * stretch
-    return seconds
+    return count + by[:, 1] * stretch
 
 
 def _shifted(tempo: TempoMap, seconds: Array, by: Array) -> Array:
     """Seconds of the places that lie `by`, (n, 3) parts of TIME_UNITS, after instants in seconds."""
-    if not by[:, :2].any():
+    if not np.count_nonzero(by[:, :2]):
         return seconds + by[:, 2]
     counts = tempo.counts(seconds)
     if (some := by[:, 0].nonzero()[0]).size:
@@ -184,14 +186,12 @@ def _check_starts(found: Moments, starts: Starts, rig: Rig, faults: list[Fault])
 def _check_lines(found: Moments, starts: Starts, lines: Lines, rig: Rig, faults: list[Fault]) -> None:
     """Offsets that do not rise, moves that reach back too far, lengths too short, once all are seconds."""
     flat = (found.until <= found.before) & ~found.opens
-    if flat.any():
-        flat &= (found.until < found.before) | ~lines.shut[found.row]
     reach = (found.leaves < found.before) | (found.arrives > found.until)
     short = found.until > found.end[found.instance]
-    if short.any():
-        short[:-1] &= found.opens[1:]
-    if not (flat.any() or reach.any() or short.any()):
+    if not np.count_nonzero(flat | reach | short):
         return
+    flat &= (found.until < found.before) | ~lines.shut[found.row]
+    short[:-1] &= found.opens[1:]
 
     def tell(wrong: NDArray[np.bool_], what: str, expected: str, place: str) -> None:
         seen: set[Span] = set()

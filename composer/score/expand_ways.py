@@ -87,11 +87,12 @@ def _ways(found: Moments, starts: Starts, lines: Lines, abilities: Abilities, ke
     which = found.order[instance]
     fiber, scale, shape = starts.fiber[which], starts.scale[which], lines.shape[row]
     leaves, arrives, cut = found.leaves[keep], found.arrives[keep], found.cut[instance]
-    held = lines.unit[row] == HELD
-    target = in_strain(lines.value[row], lines.unit[row], fiber, abilities) * scale
+    unit = lines.unit[row]
+    held = unit == HELD
+    target = in_strain(lines.value[row], unit, fiber, abilities) * scale
     target[held] = np.nan
     curved, control = NONE_CURVED
-    if (bends := shape == CURVE).any():
+    if np.count_nonzero(bends := shape == CURVE):
         curved = bends.nonzero()[0]
         units = lines.control_unit[row[curved]]
         control = in_strain(lines.control[row[curved]], units, fiber[curved, None], abilities) * scale[curved, None]

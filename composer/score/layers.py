@@ -62,16 +62,15 @@ def knots_of(found: Moments, starts: Starts, lines: Lines, abilities: Abilities,
     ways = ways_of(found, starts, lines, abilities, keep)
 
     before, leaves, stops = found.before[keep], ways.leaves, ways.stops
-    until = np.minimum(found.until[keep], found.cut[instance])
     chain = found.chain[instance]
-    last_of_instance = np.ones(len(instance), dtype=bool)
-    np.not_equal(instance[1:], instance[:-1], out=last_of_instance[:-1])
-    following = np.where(last_of_instance, found.cut[instance], until)
+    cut = found.cut[instance]
+    until, following = np.minimum(found.until[keep], cut), cut
+    following[:-1] = np.where(instance[1:] != instance[:-1], cut[:-1], until[:-1])
 
     moving = ways.goes & ~goes_nowhere(ways)
     moving &= (stops > leaves) | (np.abs(ways.b - ways.a) > NO_WAY)
     line = np.array([entry.span.line for entry in starts.entries], dtype=np.int32)[starts.entry[found.order]][instance]
-    if not lines.hertz.any():
+    if not np.count_nonzero(lines.hertz):
         stays = np.where(moving, leaves, following)
         there = (stays > before, moving, moving & (following > stops))
         parts = _Parts(there, (before, leaves, stops), (ways.a, ways.a, ways.b), None)
@@ -122,19 +121,19 @@ def _written(
     # Before a knot come all earlier ones and the openings of the chains up to its own.
     place = np.arange(1, len(of) + 1) + chain[move]
     opening = np.arange(chains).repeat(per_chain)
-    time, start = np.zeros(total), np.zeros(total)
+    time, start = np.zeros((2, total))
     time[place] = np.concatenate(parts.begins_s)[of]
     start[place] = np.concatenate(parts.strain)[of]
-    move_of = np.full(total, -1, dtype=np.int64)
+    move_of, way_of = np.full((2, total), -1, dtype=np.int64)
     move_of[place] = move
-    at, way = (goes := number == 1).nonzero()[0], move[goes]
-    at = place[at]
-    way_of = np.full(total, -1, dtype=np.int64)
+    at = (number == 1).nonzero()[0]
+    at, way = place[at], move[at]
     way_of[at] = way
     manner, shape = np.full(total, HOLD, dtype=np.int8), np.full(total, -1, dtype=np.int8)
     manner[at], shape[at] = _manners(ways, way)
-    quivers = np.zeros(total, dtype=bool)
+    quivers = None
     if parts.quivers is not None:
+        quivers = np.zeros(total, dtype=bool)
         quivers[place] = parts.quivers[move] & (number < 3)
         quivers &= (manner != STEP) & (manner != SUDDEN)
         manner[quivers & (manner == HOLD)] = MOVE
@@ -147,7 +146,8 @@ def _written(
     kept = _jumps_made_one(some.nonzero()[0], manner, start, way_of, ways)
     again, opens, rests = np.zeros(len(kept), dtype=bool), opening[kept], holds[kept]
     again[1:] = rests[1:] & rests[:-1] & (opens[1:] == opens[:-1])
-    kept, opens = kept[~again], opens[~again]
+    if np.count_nonzero(again):
+        kept, opens = kept[~again], opens[~again]
     time, manner, move, way = time[kept], manner[kept], move_of[kept], way_of[kept]
     curve = np.zeros((len(kept), 6))
     curve[:, 0] = start[kept]
@@ -160,8 +160,10 @@ def _written(
     earliest = time.copy()
     earliest[moves] = np.minimum(time[moves], ways.earliest[way])
     # An opening is no move's: it is of no line.
-    made, made_of, own = np.zeros(len(kept), dtype=np.int32), np.zeros(len(kept), dtype=np.int32), (move >= 0).nonzero()[0]
-    made[own], made_of[own] = line[move[own]], phrase_line[move[own]]
+    made, made_of = np.zeros((2, len(kept)), dtype=np.int32)
+    own = (move >= 0).nonzero()[0]
+    move = move[own]
+    made[own], made_of[own] = line[move], phrase_line[move]
     return Knots(
         first=opens.searchsorted(np.arange(chains + 1)),
         time_s=time,
@@ -171,7 +173,7 @@ def _written(
         line=made,
         phrase_line=made_of,
         earliest=earliest,
-        quivers=2 * quivers[kept].astype(np.int8),
+        quivers=np.zeros(len(kept), dtype=np.int8) if quivers is None else 2 * quivers[kept].astype(np.int8),
     )
 
 
@@ -181,7 +183,7 @@ def _jumps_made_one(kept: Index, manner: NDArray[np.int8], start: Array, way_of:
     jumps = manner[kept] == STEP
     again = np.zeros(len(kept), dtype=bool)
     again[1:] = jumps[1:] & jumps[:-1]
-    if not again.any():
+    if not np.count_nonzero(again):
         return kept
     last = jumps & ~np.append(again[1:], False)
     leads = np.maximum.accumulate(np.where(again, 0, np.arange(len(kept))))
@@ -208,7 +210,7 @@ def _curves(ways: Ways, move: Index) -> Array:
     start, target, share, shape = ways.a[move], ways.target[move], ways.share[move], ways.shape[move]
     way = np.where(np.isnan(target), start, target) - start
     short = share < 1.0
-    if short.any():
+    if np.count_nonzero(short):
         cut_sudden = short & (shape == SUDDENLY)
         way[cut_sudden] = ways.b[move[cut_sudden]] - start[cut_sudden]
         share[cut_sudden], short = 1.0, short & ~cut_sudden
@@ -225,7 +227,7 @@ def _curves(ways: Ways, move: Index) -> Array:
         curve[bent] = np.where(np.isnan(points), a[:, None], points) @ BEZIER
     # Where a jump goes from and to is for who makes several jumps one.
     curve[(ways.stops[move] <= ways.leaves[move]).nonzero()[0], 1:] = 0.0
-    if short.any():
+    if np.count_nonzero(short):
         curve[short] *= share[short, None] ** np.arange(6)
     curve += 0.0
     return curve

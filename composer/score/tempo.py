@@ -46,7 +46,7 @@ class TempoMap:
         gone = counts - self.tempo_count[k]
         took = gone / self.rate[k]
         bend = self.slope[k] * gone / self.rate[k]
-        if (bends := (bend != 0.0) & (gone > 0.0)).any():
+        if np.count_nonzero(bends := (bend != 0.0) & (gone > 0.0)):
             took = np.where(bends, took * _over(np.log1p, np.where(bends, bend, 0.0)), took)
         return self.tempo_s[k] + took
 
