@@ -26,6 +26,7 @@ from composer.tracks import HOLD, MOVE, Tracks
 
 SHAPES = ("smooth", "linear", "swell", "settle")
 MAKES, POINTS = 16, 65
+SIZES = ((1_000, 16), (10_000, 64), (100_000, 512), (1_000_000, 4096))
 
 
 def rated(fibers: int) -> tuple[Rig, Abilities]:
@@ -97,7 +98,7 @@ def main() -> None:
     """Print the table."""
     print(f"{'moves':>9} {'fibers':>7} {'rated us':>9} {'over first':>11} {'tables us':>10} {'over rated':>11} {'snags':>13}")
     base = 0.0
-    for moves, fibers in ((1_000, 16), (10_000, 64), (100_000, 512), (1_000_000, 4096)):
+    for moves, fibers in SIZES[:2] if "--small" in sys.argv else SIZES:
         random = np.random.default_rng(moves)
         rig, even = rated(fibers)
         varied = modelled(even, random)

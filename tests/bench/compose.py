@@ -162,7 +162,10 @@ def main() -> None:
     parser.add_argument("--threads", type=int, default=0)
     parser.add_argument("--moves", type=int, default=0)
     parser.add_argument("--keys", type=int, default=60)
+    parser.add_argument("--small", action="store_true", help="six keys, each window opened once")
     given = parser.parse_args()
+    if given.small:
+        given.keys = 6
     import scores_demo
 
     estuary = Path(scores_demo.__path__[0])
@@ -171,7 +174,7 @@ def main() -> None:
         for name in ("estuary.score", "estuary.rig.toml"):
             (Path(folder) / name).write_bytes((estuary / name).read_bytes())
         path = Path(folder) / "estuary.score"
-        open_times(str(path))
+        open_times(str(path), 1 if given.small else 5)
         typist = Typist(str(path))
         line = (
             path.read_text()

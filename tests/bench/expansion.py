@@ -37,6 +37,8 @@ section all at 1:1
 """
 LAYER = "  r.*  breath after 1  times {times} every 7.5 add\n"
 
+SIZES = ((1_000, 16), (10_000, 64), (100_000, 512), (1_000_000, 4096))
+
 
 def main() -> None:
     """Print the table."""
@@ -45,7 +47,7 @@ def main() -> None:
     print(f"{'moves':>9} {'fibers':>7} {'layers':>7} {'us a move':>10} {'over first':>11}")
     base = {}
     for layered in (False, True):
-        for moves, fibers in ((1_000, 16), (10_000, 64), (100_000, 512), (1_000_000, 4096)):
+        for moves, fibers in SIZES[:2] if "--small" in sys.argv else SIZES:
             rig = make_rig.__wrapped__()(fibers)
             abilities = abilities_of(rig)
             times = max(1, round(moves / (5 + 2 * layered) / fibers))

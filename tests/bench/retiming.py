@@ -169,14 +169,17 @@ def main() -> None:
     parser.add_argument("--fibers", type=int, default=64)
     parser.add_argument("--too-fast", type=float, default=0.05)
     parser.add_argument("--million", action="store_true")
+    parser.add_argument("--small", action="store_true", help="a twentieth of everything")
     options = parser.parse_args()
     if options.million:
         million()
         return
     edited()
-    one_path()
-    with_cuts()
+    one_path(50 if options.small else 1000)
+    with_cuts(*(1_600, 16) if options.small else (33_000, 64))
     moves, fibers, share = options.moves, options.fibers, options.too_fast
+    if options.small:
+        moves, fibers = 1600, 16
     rig = make_rig.__wrapped__()(fibers)
     abilities = abilities_of(rig)
     # Not every move that is given little time has too little, so more are given that.
@@ -217,16 +220,16 @@ def edited() -> None:
     print(f"edit of Estuary / first retiming = {np.median(again) / first_s:.3f} ({first_s * 1e3:.0f} ms first)")
 
 
-def with_cuts() -> None:
+def with_cuts(moves: int, fibers: int) -> None:
     """Two lines: a score short of coil, and of air, over the same score with plenty of both."""
-    tracks = with_rests(33_000, 64, 0.05)
+    tracks = with_rests(moves, fibers, 0.05)
     times, base = {}, None
     for name, more in (
         ("plenty", {}),
         ("duty", {"duty": 0.76, "duty_burst_s": 4.0}),
         ("air", {"air_mL": 30.0, "receiver_L": 0.042, "compressor_L_min": 36.0}),
     ):
-        rig = make_rig.__wrapped__()(64, **more)
+        rig = make_rig.__wrapped__()(fibers, **more)
         abilities = abilities_of(rig)
         asked = [snag.kind for snag in check(tracks, rig, abilities).snags]
         best = np.inf
@@ -244,14 +247,14 @@ def with_cuts() -> None:
               f"{sum(snag.kind == name for snag in left.snags)} snags of it left")  # fmt: skip
 
 
-def one_path() -> None:
+def one_path(moves: int) -> None:
     """One line: a path of rate limits alone against toppra on as coarse a grid as gives the same duration to a thousandth."""
     fill, exhaust = 0.6, 0.25
     rng = np.random.default_rng(0)
     rig = make_rig.__wrapped__()(1, fill=fill, exhaust=exhaust)
     abilities = abilities_of(rig)
     times, value, curves = [0.0], 0.0, []
-    for target in rng.uniform(0.02, STROKE, 1000):
+    for target in rng.uniform(0.02, STROKE, moves):
         curve = (target - value) * PROGRESS["smooth"]
         curve[0] += value
         curves.append(curve), times.append(times[-1] + 1e-4)

@@ -11,7 +11,6 @@ from random import Random
 
 from .mutations import mutated_bytes
 
-LONGEST_S = 1.0
 MOST_FOUND = 25
 
 
@@ -24,7 +23,7 @@ class Target:
     """Something that reads what may be hostile.
 
     make: given a folder of its own, good inputs and the reader; refusals: what the reader may raise
-    short: inputs in the normal suite; mutate: how bad inputs are made of good ones
+    short: inputs in the normal suite; mutate: how bad inputs are made of good ones; longest_s: of the processor, for one input
     """
 
     name: str
@@ -32,6 +31,7 @@ class Target:
     refusals: tuple[type[Exception], ...]
     short: int
     mutate: Callable[[Random, Sequence[bytes]], bytes] = mutated_bytes
+    longest_s: float = 1.0
 
 
 @dataclass(slots=True)
@@ -68,7 +68,7 @@ def attempt(read: Callable[[bytes], object], refusals: tuple[type[Exception], ..
 
 
 def fuzz(target: Target, folder: Path, inputs: int, seed: int, alarm: bool = False) -> Found:
-    """Throw so many inputs at a target; with `alarm` one that takes more than LONGEST_S of the processor is broken too."""
+    """Throw so many inputs at a target; with `alarm` one that takes longer than it may is broken too."""
     examples, read = target.make(folder)
     chance, found = Random(f"{target.name} {seed}"), Found()
     for example in examples:
@@ -77,7 +77,7 @@ def fuzz(target: Target, folder: Path, inputs: int, seed: int, alarm: bool = Fal
         assert why == "", f"a good input of {target.name}: {why}"
     for _ in range(inputs):
         data = target.mutate(chance, examples)
-        with watched(alarm):
+        with watched(target.longest_s if alarm else 0.0):
             why = attempt(read, target.refusals, data)
         found.inputs += 1
         found.refused += why is None
@@ -89,17 +89,14 @@ def fuzz(target: Target, folder: Path, inputs: int, seed: int, alarm: bool = Fal
 
 
 @contextmanager
-def watched(alarm: bool):
-    """Interrupt what takes longer than LONGEST_S of this process's time on the processor."""
-    if not alarm:
-        yield
-        return
+def watched(longest_s: float):
+    """Interrupt what takes longer than that of this process's time on the processor; 0: nothing is interrupted."""
 
     def ring(number, frame):
-        raise Hangs(f"longer than {LONGEST_S:g} s")
+        raise Hangs(f"longer than {longest_s:g} s")
 
     was = signal.signal(signal.SIGVTALRM, ring)
-    signal.setitimer(signal.ITIMER_VIRTUAL, LONGEST_S)
+    signal.setitimer(signal.ITIMER_VIRTUAL, longest_s)
     try:
         yield
     except Hangs:

@@ -168,10 +168,13 @@ def nested(chance: Random, examples: Sequence[bytes]) -> bytes:
     return data
 
 
+MILLIONS_S = 30.0
+"""A score may have four million moves, and takes as long as they do; all that it says otherwise is bounded."""
+
 TARGETS = (
-    Target("score", scores, (Faults,), 150, mutated_text),
+    Target("score", scores, (Faults,), 150, mutated_text, MILLIONS_S),
     Target("rig", rigs, (Faults,), 120, nested),
-    Target("score-and-rig", on_disk, (Faults,), 25, mutated_text),
+    Target("score-and-rig", on_disk, (Faults,), 25, mutated_text, MILLIONS_S),
     Target("map", maps, (Faults,), 500, nested),
     Target("bench", benches, (Faults,), 500, mutated_text),
 )
