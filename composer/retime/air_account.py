@@ -30,6 +30,9 @@ FEWEST, MOST, NODES = 8, 32, 4000
 IN_VIEW, ROWS = 0.5, 160
 """Spans are in view that miss at least this share of the store; and how many rows at most."""
 
+PAIRS = 2_000_000
+"""Pairs of begin and end looked at at a time."""
+
 HAIR_S = 1e-7
 """By how much times are moved apart where they coincide."""
 
@@ -91,24 +94,40 @@ class Account:
 
     def rows(self, shift_s: Array) -> tuple[Array, Array]:
         """(R, n), (R,): the spans in view, made linear about shifts (N,); `matrix @ shift[free] >= least`, s of refill."""
-        _, order, at, short = self.missing(shift_s)
+        missing, order, at, short = self.missing(shift_s)
         # A span that asks most begins where demand less refill turns up and ends where it turns down.
         rise = np.diff(short)
         up = np.append(rise > 0.0, False)
         down = np.concatenate(([True], rise <= 0.0))
-        begins, ends = np.flatnonzero(up & down), np.flatnonzero(~up & ~down)
+        # No span up to an instant asks for more than is missing there, and none from one for more than it will yet rise.
+        view = (1.0 - IN_VIEW) * self.store
+        to_come = np.maximum.accumulate(short[::-1])[::-1] - short
+        begins, ends = np.flatnonzero(up & down & (to_come > view)), np.flatnonzero(~up & ~down & (missing > view))
         if not len(begins) or not len(ends):
             return np.empty((0, len(self.free))), np.empty(0)
-        span = short[ends][:, None] - short[begins][None, :]
-        span[begins[None, :] >= ends[:, None]] = -np.inf
-        seen = np.flatnonzero(span.ravel() > (1.0 - IN_VIEW) * self.store)
-        seen = seen[np.argsort(-span.ravel()[seen], kind="stable")[:ROWS]]
-        end, begin = np.divmod(seen, len(begins))
+        end, begin, deep = self._deepest(short, begins, ends, view)
         used, place = np.unique(np.concatenate((begins[begin], ends[end])), return_inverse=True)
         slope = self._slopes(order[used], at[used], shift_s)
-        matrix = (slope[place[: len(seen)]] - slope[place[len(seen) :]]) / self.refill
-        over = (span.ravel()[seen] - self.store) / self.refill
+        matrix = (slope[place[: len(deep)]] - slope[place[len(deep) :]]) / self.refill
+        over = (deep - self.store) / self.refill
         return matrix, over + matrix @ shift_s[self.free]
+
+    @staticmethod
+    def _deepest(short: Array, begins: Index, ends: Index, view: float) -> tuple[Index, Index, Array]:
+        """The spans that ask for more than `view`, the deepest ROWS of them: places in `ends` and `begins`, and litres."""
+        end, begin, deep = np.empty(0, dtype=np.int64), np.empty(0, dtype=np.int64), np.empty(0)
+        block = max(1, PAIRS // len(begins))
+        for first in range(0, len(ends), block):
+            some = ends[first : first + block]
+            span = short[some][:, None] - short[begins][None, :]
+            span[begins[None, :] >= some[:, None]] = -np.inf
+            seen = np.flatnonzero(span.ravel() > view)
+            which, start = np.divmod(seen, len(begins))
+            deep = np.concatenate((deep, span.ravel()[seen]))
+            end, begin = np.concatenate((end, which + first)), np.concatenate((begin, start))
+            kept = np.argsort(-deep, kind="stable")[:ROWS]
+            end, begin, deep = end[kept], begin[kept], deep[kept]
+        return end, begin, deep
 
     def _slopes(self, nodes: Index, time: Array, shift_s: Array) -> Array:
         """(V, n) how demand less refill at some nodes changes with each free event's shift."""

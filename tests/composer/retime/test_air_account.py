@@ -7,6 +7,7 @@ from hypothesis import strategies as st
 
 from composer.limits.abilities import abilities_of
 from composer.limits.air import use
+from composer.retime import air_account
 from composer.retime.air_account import account_of
 from composer.retime.stage import at_times, stage_of
 
@@ -64,3 +65,16 @@ def test_events_that_stand_still_have_no_column(make_rig):
     stage, rig, abilities, _ = of(make_rig, 3)
     few = account_of(stage, stage.tracks, rig, abilities, np.array([1, 2]))
     assert few.rows(np.zeros(len(stage.events.written_s)))[0].shape[1] == 2
+
+
+def test_pairs_looked_at_a_block_at_a_time_give_the_same_spans(monkeypatch):
+    random = np.random.default_rng(5)
+    short = np.cumsum(random.normal(size=400))
+    begins, ends = np.arange(0, 400, 2), np.arange(1, 400, 2)
+    whole = air_account.Account._deepest(short, begins, ends, 1.0)
+    monkeypatch.setattr(air_account, "PAIRS", 1000)
+    parts = air_account.Account._deepest(short, begins, ends, 1.0)
+    assert len(whole[2]) == air_account.ROWS
+    np.testing.assert_allclose(parts[2], whole[2])
+    span = short[ends[whole[0]]] - short[begins[whole[1]]]
+    np.testing.assert_allclose(span, whole[2])
