@@ -19,6 +19,8 @@ from player.engine.process.door import Door
 from player.engine.process.layout import Writer
 from player.engine.process.show import Show
 from player.engine.safety import Refused
+from player.inputs.load import load_map
+from player.live.session import Session
 
 STAND_BY_SAID = "All is at rest or vented, and disarmed. Press a to arm and play on from here, Ctrl-C to end."
 
@@ -44,6 +46,7 @@ def body(door: Door, memory: Writer, call: Call, answers: bool) -> tuple[str, di
         interrupt = stack.enter_context(stopping(engine.ask))
         conduct = Conduct(engine, door, Show(memory, engine, played.rig, played.say_place), session.asked)
         conduct.view = lambda: session.live.view
+        conduct.remap = Remap(call, session)
         conduct.inputs = lambda: inputs_told(session.inbox.seen, session.inbox.refused, session.take_says)
         for output in parts.outputs:
             output.open()
@@ -84,6 +87,27 @@ def body(door: Door, memory: Writer, call: Call, answers: bool) -> tuple[str, di
         if run_log is not None:
             run_log.tell("end", parts.clock.now(), **told)
     return "ended", {"exit": told["exit"], "report": told, "lines": lines}
+
+
+class Remap:
+    """Called where a front end has changed the map file: why the session does not go by it, "" where it does."""
+
+    def __init__(self, call: Call, session: Session):
+        self._call, self._session, self._map = call, session, call.map_
+
+    def __call__(self) -> str:
+        """Read it and go by it."""
+        path = self._call.map_path
+        if path is None:
+            return "the run has begun without a map: it counts from the next beginning on"
+        try:
+            after = load_map(path, self._call.played.rig, self._call.loaded.score if self._call.loaded else None)
+        except Faults as wrong:
+            return str(wrong)
+        why = self._session.remap(self._map, after)
+        if not why:
+            self._map = after
+        return why
 
 
 def _nothing_to_hold(rig: str) -> Faults:

@@ -74,7 +74,7 @@ def _play(played: Played, targets: tuple[str, ...], hertz: float, log: str | Non
     def begin() -> Made:
         return _begun(
             play_process.body, play_process.about(played, targets, hertz), rule, played, targets, hertz, log, False
-        ), material
+        ), lambda: material
 
     return begin
 
@@ -99,7 +99,7 @@ def _live(
             _material(made.played), score=made.loaded.score if made.loaded else None, map_path=map_path or "",
             take_path=made.take or "",
         )  # fmt: skip
-        return _begun(live_process.body, live_process.about(made), rule, made, True), material
+        return _begun(live_process.body, live_process.about(made), rule, made, True), lambda: material
 
     return begin, first.start_s
 
@@ -128,11 +128,7 @@ def _material(played: Played) -> Material:
 def attached(name: str, watch: bool, rig: str | None) -> Made:
     """Attach to a run, and read what it plays as far as that is still there."""
     client = Client.at(path_of(name), commands=not watch, answers=not watch)
-    try:
-        return client, _material_of(client.about, rig)
-    except BaseException:
-        client.leave()
-        raise
+    return client, lambda: _material_of(client.about, rig)
 
 
 def _material_of(about: dict[str, Any], rig: str | None) -> Material:
@@ -189,7 +185,7 @@ def simulated(path: str) -> Made:
     """A score on the simulator, as a run of its own that nobody has to rest."""
     played = load_played(path, None, False)
     about = play_process.about(played, ("sim",), SLOWEST_SIM_HZ)
-    return _begun(play_process.body, about, "rest", played, ("sim",), SLOWEST_SIM_HZ, None, False), _material(played)
+    return _begun(play_process.body, about, "rest", played, ("sim",), SLOWEST_SIM_HZ, None, False), lambda: _material(played)
 
 
 def composed(path: str) -> str:

@@ -57,7 +57,7 @@ class Inbox:
         self.midi_binds, self.osc_binds = MidiBinds(map_, len(fibers)), OscBinds(map_, known)
         self.feedback = Feedback(map_)
         self.inputs: tuple[Input, ...] = ()
-        self._map, self._names = map_, tuple(fibers)
+        self._map, self._names, self._known = map_, tuple(fibers), known
         self._clock, self._unix = clock, unix
         self._seen: dict[str, Seen] = {}
         self._groups = {tuple(sorted(of)): name for name, of in known.groups.items()}
@@ -91,6 +91,14 @@ class Inbox:
             events += self._heard(self.osc_binds.tick(now_s), self.midi_binds)
         self._notice(events)
         return events
+
+    def remap(self, map_: Map) -> None:
+        """Go by another map from now on; whoever calls has all hands let go."""
+        refused = self.osc_binds.refused
+        self._map = map_
+        self.midi_binds, self.osc_binds = MidiBinds(map_, len(self._names)), OscBinds(map_, self._known)
+        self.osc_binds.refused = refused
+        self.feedback = Feedback(map_)
 
     @property
     def seen(self) -> tuple[Seen, ...]:

@@ -8,6 +8,7 @@ import numpy as np
 from player.engine.loop import Engine
 from player.engine.status import Status
 from player.governor.causes import CAUSES, NONE
+from player.inputs.model import Does, Map, Play
 from player.inputs.osc_out import OscOut
 from player.live.clock_out import ClockOut
 from player.live.inbox import Inbox
@@ -87,6 +88,16 @@ class Session:
         else:
             self.engine.ask(what)
 
+    def remap(self, before: Map, after: Map) -> str:
+        """Go by another map: why not, "" where it is gone by. Fibers of all hands go back to the score, or to rest."""
+        if _held(before) != _held(after):
+            return "what is held to run is another control in it: it counts from the next beginning on"
+        if not _phrases(after) <= _phrases(before):
+            return "it has phrases that are not made ready: it counts from the next beginning on"
+        self.live.let_go()
+        self.inbox.remap(after)
+        return ""
+
     @property
     def take_says(self) -> str:
         """What the take says of itself, "" where none is recorded."""
@@ -101,3 +112,11 @@ class Session:
             which = np.flatnonzero(cut == cause)
             worst = float(np.max(np.abs(np.nan_to_num(by[which], posinf=9.0, neginf=-9.0))))
             self.engine.note("cut", why=CAUSES[cause].kind, fibers=which.tolist(), by=round(worst, 6))
+
+
+def _held(map_: Map) -> list[str]:
+    return [str(bind.control) for bind in map_.binds if isinstance(bind.deed, Does) and bind.deed.what == "hold_to_run"]
+
+
+def _phrases(map_: Map) -> set[tuple[str, tuple[int, ...]]]:
+    return {(bind.deed.phrase, bind.deed.fibers) for bind in map_.binds if isinstance(bind.deed, Play)}

@@ -27,9 +27,10 @@ ACTIONS = {
         Action("vent", "VENT", ("Escape", "V"), "every valve exhausts, at once; Escape also while writing, and in any dialog",
                "vent"),
         Action("arm", "Arm", ("A",), "hold for one second: arm the boards; after a vent or a rest, arm and go on", "arm", True),
-        Action("play", "Play", ("Space",), "play once armed; while playing pause, and then go on", "play"),
+        Action("turn", "Play or pause", ("Space",), "play once armed; while playing pause, and then go on", "play"),
+        Action("play", "Play", (), "play from the start, once armed", "play"),
         Action("pause", "Pause", ("P",), "stand still, all fibers hold", "pause"),
-        Action("go_on", "Go on", ("Return", "Enter"), "go on from a pause, or a cue that waits", "go_on"),
+        Action("go_on", "Go on", ("Return", "Enter"), "go on from a pause, or a cue that waits; presses a button that Tab has gone to", "go_on"),
         Action("next_cue", "Next cue", ("N",), "go to the next cue", "next_cue"),
         Action("rest", "Rest", ("R",), "all down at their safe rate, then disarmed", "rest"),
         Action("jump", "Go there", ("J",), "play from the cue chosen beside it, or go there while playing", "jump"),
@@ -109,9 +110,9 @@ def message_of(name: str, now: Standing) -> str:
     """Which message of ASKED an action is just now."""
     if name == "arm" and now.stage == "running":
         return "bring_back"
-    if name == "play" and now.state == "playing":
+    if name == "turn" and now.state == "playing":
         return "pause"
-    if name == "play" and now.state == "paused":
+    if name == "turn" and now.state == "paused":
         return "go_on"
     if name == "jump" and now.state in ("idle", "armed"):
         return "play"
@@ -147,7 +148,7 @@ def _why_not_own(name: str, now: Standing) -> str:
         return NO_SCORE
     if now.stage == "before" and name != "rest":
         return "arm first"
-    if name == "play" and now.state in DISARMED:
+    if name in ("play", "turn", "jump") and now.state in DISARMED:
         return "arm first"
     if name == "rest" and now.stage == "before":
         return "nothing has moved"
@@ -171,7 +172,7 @@ def _why_not_again(now: Standing) -> str:
 
 def sheet() -> list[tuple[str, str, str]]:
     """The sheet of keys: keys, word, what it does."""
-    return [(" or ".join(row.keys), row.word, row.says) for row in ACTIONS.values()]
+    return [(" or ".join(row.keys), row.word, row.says) for row in ACTIONS.values() if row.keys]
 
 
 def fields_of(asks: str, from_s: float = 0.0) -> dict[str, Any]:

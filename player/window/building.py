@@ -46,6 +46,7 @@ class Parts:
     banner: QLabel
     hang: HangFrame
     not_drawn: QLabel
+    middle: QWidget
     column: QWidget
     next: NextView
     tabs: list[QPushButton]
@@ -94,11 +95,13 @@ def build(window) -> Parts:
     parts = Parts(
         title=label("title", "what is played"), state=label("state", "state"), more=label("more", "state, more of it"),
         place=label("place", "place"), vent=vent, banner=label("banner", "what is wrong"), hang=HangFrame(),
-        not_drawn=label("more", "why the rig is not drawn"), column=QWidget(), next=NextView(), tabs=tabs,
+        not_drawn=label("more", "why the rig is not drawn"), middle=QWidget(), column=QWidget(), next=NextView(), tabs=tabs,
         stack=QStackedWidget(), meters=MetersView(), preflight=PreflightView(), takes=TakesView(window),
         map=MapView(window), instruments=Instruments(), deeds=deeds, arm=arm, start=start, why=label("why", "why"),
         log=log, status=label("status", "this window and the run"),
     )  # fmt: skip
+    parts.banner.setParent(window)
+    parts.banner.hide()
     parts.banner.setWordWrap(True)
     parts.banner.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
     parts.title.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
@@ -142,7 +145,8 @@ def _lay_out(window, parts: Parts) -> None:
     column.addLayout(tabs)
     column.addWidget(parts.stack, 1)
     column.addWidget(parts.instruments)
-    middle = QHBoxLayout()
+    middle = QHBoxLayout(parts.middle)
+    middle.setContentsMargins(0, 0, 0, 0)
     middle.setSpacing(8)
     middle.addWidget(parts.hang, 1)
     middle.addWidget(parts.not_drawn, 1)
@@ -162,8 +166,7 @@ def _lay_out(window, parts: Parts) -> None:
     whole.setContentsMargins(0, 0, 0, 0)
     whole.setSpacing(4)
     whole.addLayout(head)
-    whole.addWidget(parts.banner)
-    whole.addLayout(middle, 1)
+    whole.addWidget(parts.middle, 1)
     whole.addLayout(row)
     beneath = QHBoxLayout()
     beneath.setContentsMargins(14, 0, 14, 0)

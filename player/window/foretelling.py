@@ -13,9 +13,9 @@ from composer.warp import Warp
 def foretell(
     tracks: Tracks, rig: Rig, abilities: Abilities, tempo: TempoMap | None, warp: Warp, tell: Callable[[object], None]
 ) -> None:
-    """A whole run on the simulated rig; tells its sentences, a list of str."""
+    """A whole run on the simulated rig; tells the share that is done, a float, then its sentences, a list of str."""
 
     def say_place(at_s: float) -> str:
         return tempo.say_place(warp.was(at_s)) if tempo is not None else f"{at_s:.1f}s"
 
-    tell(sentences(foretold(tracks, rig, abilities, say_place)))
+    tell(sentences(foretold(tracks, rig, abilities, say_place, tell)))

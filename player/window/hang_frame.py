@@ -1,14 +1,30 @@
 """The room of the hang view: empty until it is known which rig a run plays."""
 
-from typing import Any
-
-from PySide6.QtCore import Qt, Signal
+import numpy as np
+from numpy.typing import NDArray
+from PySide6.QtCore import QElapsedTimer, Qt, Signal
+from PySide6.QtGui import QPaintEvent
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from composer.limits.abilities import Abilities
 from composer.picture.hang import HangView
 from composer.picture.palette import DARK, Theme
 from composer.rig.model import Rig
+
+Array = NDArray[np.float64]
+
+
+class TimedHang(HangView):
+    """A hang view that knows what it costs to draw it. cost_ms: of the last time"""
+
+    cost_ms = 0.0
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """As always, with the time that it takes."""
+        clock = QElapsedTimer()
+        clock.start()
+        super().paintEvent(event)
+        self.cost_ms = clock.nsecsElapsed() / 1e6
 
 
 class HangFrame(QWidget):
@@ -21,7 +37,8 @@ class HangFrame(QWidget):
         self._theme: Theme = DARK
         self._room = QVBoxLayout(self)
         self._room.setContentsMargins(0, 0, 0, 0)
-        self.shown: HangView | None = None
+        self.shown: TimedHang | None = None
+        self._strains: tuple[Array, Array] | None = None
 
     @property
     def view(self) -> str:
@@ -30,8 +47,9 @@ class HangFrame(QWidget):
 
     def set_rig(self, rig: Rig, abilities: Abilities) -> None:
         """Draw a rig."""
+        self._strains = None
         if self.shown is None:
-            self.shown = HangView(rig, abilities)
+            self.shown = TimedHang(rig, abilities)
             self.shown.setFocusPolicy(Qt.FocusPolicy.NoFocus)
             self.shown.set_theme(self._theme)
             self.shown.fiber_clicked.connect(self.fiber_clicked)
@@ -39,9 +57,18 @@ class HangFrame(QWidget):
         else:
             self.shown.set_rig(rig, abilities)
 
-    def show_strain(self, wanted: Any, sensed: Any = None) -> None:
-        """Move the fibers."""
-        if self.shown is not None:
+    @property
+    def cost_ms(self) -> float:
+        """What it last cost to draw."""
+        return self.shown.cost_ms if self.shown is not None else 0.0
+
+    def show_strain(self, wanted: Array, sensed: Array) -> None:
+        """Move the fibers, strains (F,) wanted and sensed; nothing is drawn anew where none has moved."""
+        before, self._strains = self._strains, (wanted, sensed)
+        still = before is not None and all(
+            np.array_equal(a, b, equal_nan=True) for a, b in zip(before, (wanted, sensed), strict=True)
+        )
+        if self.shown is not None and not still:
             self.shown.show_strain(wanted, sensed)
 
     def set_view(self, view: str) -> None:

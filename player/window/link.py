@@ -18,15 +18,17 @@ WRONG = (NotThere, Stranger, Unreadable, NoRoom, OSError, Faults)
 class Link(QObject):
     """A run, or none yet, or none any more.
 
-    came: attached, with what the making brought along; did_not_come: why not; heard: name and fields of something of TOLD;
-    lost: the run's process is gone without its last message
+    came: attached, with the client alone, so that there is VENT at once; known: what the run is about, once that is read
+    did_not_come: why not; heard: name and fields of something of TOLD; lost: the process is gone without its last message
     """
 
-    came = Signal(object)
+    came = Signal()
+    known = Signal(object)
     did_not_come = Signal(str)
     heard = Signal(str, object)
     lost = Signal()
     _made = Signal(int, object, str)
+    _read = Signal(int, object)
 
     def __init__(self, parent: QObject | None = None):
         super().__init__(parent)
@@ -34,14 +36,15 @@ class Link(QObject):
         self.over = False
         self._number = 0
         self._made.connect(self._arrived)
+        self._read.connect(self._is_known)
 
     @property
     def busy(self) -> bool:
         """Whether a run is on its way."""
         return self.client is None and self._number % 2 == 1
 
-    def make(self, making: Callable[[], tuple[Client, Any]]) -> None:
-        """Have a run begun or attached to: `making` returns the client and whatever else goes to `came`; it may take long."""
+    def make(self, making: Callable[[], tuple[Client, Callable[[], Any]]]) -> None:
+        """Have a run begun or attached to: `making` returns the client, and what reads the rest; both may take long."""
         self.leave()
         self._number += 1
         number = self._number
@@ -50,29 +53,35 @@ class Link(QObject):
         # it holds no part of this window, and no connection to the screen.
         def work() -> None:
             try:
-                made, why = making(), ""
+                (client, read), why = making(), ""
             except WRONG as wrong:
-                made, why = None, str(wrong)
+                client, read, why = None, None, str(wrong)
             try:
-                self._made.emit(number, made, why)
+                self._made.emit(number, client, why)
+                if read is not None:
+                    self._read.emit(number, read())
             except RuntimeError:
-                if made is not None:
-                    made[0].leave()
+                # The window has gone meanwhile.
+                if client is not None:
+                    client.leave()
 
         threading.Thread(target=work, name="to a run", daemon=True).start()
 
-    def _arrived(self, number: int, made: Any, why: str) -> None:
+    def _arrived(self, number: int, client: Client | None, why: str) -> None:
         if number != self._number:
-            if made is not None:
-                made[0].leave()
+            if client is not None:
+                client.leave()
             return
         self._number += 1
-        if made is None:
+        if client is None:
             self.did_not_come.emit(why)
             return
-        self.client, more = made
-        self.over = False
-        self.came.emit(more)
+        self.client, self.over = client, False
+        self.came.emit()
+
+    def _is_known(self, number: int, what: Any) -> None:
+        if number + 1 == self._number and self.client is not None:
+            self.known.emit(what)
 
     def look(self) -> None:
         """Hear what the run has said since."""
@@ -102,8 +111,8 @@ class Link(QObject):
 
     def leave(self) -> None:
         """Let go of the run, which then goes by its rule; what is on its way is let go when it comes."""
-        if self._number % 2:
-            self._number += 1
+        # By two, or one: what still comes of the run before has another number.
+        self._number += 2 if self._number % 2 == 0 else 1
         if self.client is not None:
             self.client.leave()
             self.client = None

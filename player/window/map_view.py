@@ -233,7 +233,8 @@ class MapView(QWidget):
         self._saved(f"{control} moves {fibers}")
 
     def _saved(self, what: str) -> None:
-        self._say(f"{self._material.map_path}: {what}, saved" + self._window.read_map_anew())
+        self._say(f"{self._material.map_path}: {what}, saved")
+        self._window.read_map_anew()
 
     def _say(self, text: str) -> None:
         self.says.setText(text)

@@ -110,7 +110,7 @@ class MetersView(QWidget):
     def _room(self, look: Look) -> tuple[float, int]:
         rows = max(1, len(self._rows))
         high = min(max(self.height() / rows, look.px(LOWEST)), look.px(HIGHEST))
-        return high, max(1, int(self.height() // high))
+        return high, max(1, int(self.height() / high + 1e-6))
 
     def _row(self, painter: QPainter, look: Look, box: QRectF, name: str, count: int, one: Reading, number: int) -> None:
         theme = self._theme

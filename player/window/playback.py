@@ -42,7 +42,7 @@ class Playback(QDialog):
         self.resize(round(window.width() * 0.6), round(window.height() * 0.6))
         self._path = path
         self.link = Link(self)
-        self.link.came.connect(self._came)
+        self.link.known.connect(self._known)
         self.link.did_not_come.connect(self.says.setText)
         self.link.heard.connect(self._heard)
         self.link.lost.connect(lambda: self.says.setText("the simulation is gone"))
@@ -58,7 +58,7 @@ class Playback(QDialog):
         path, ways = self._path, self._window.ways
         self.link.make(lambda: ways.simulate(path))
 
-    def _came(self, material: Material) -> None:
+    def _known(self, material: Material) -> None:
         if material.rig is not None and material.abilities is not None:
             self.hang.set_rig(material.rig, material.abilities)
 

@@ -27,10 +27,14 @@ def rows_of(
     if marks is None and not wrong:
         rows.append(("waits", WAITS, ""))
     # What is wrong comes first: a long list may be longer than the window.
-    for one in sorted(marks or (), key=lambda one: bool(one["ok"])):
-        text = one["asked"] + (f" ({one['found']})" if one["found"] else "")
-        rows.append(("ok" if one["ok"] else "no", text, "" if one["ok"] else one["hint"]))
+    told = [
+        ("ok" if one["ok"] else "no", one["asked"] + (f" ({one['found']})" if one["found"] else ""),
+         "" if one["ok"] else one["hint"])
+        for one in marks or ()
+    ]  # fmt: skip
+    rows += [row for row in told if row[0] == "no"]
     rows += [("caution", line, "") for line in cautions]
+    rows += [row for row in told if row[0] == "ok"]
     if margins:
         rows.append(("head", "What the fibers will do tonight, as simulated", ""))
         rows += [("margin", line, "") for line in margins]

@@ -44,7 +44,8 @@ class RunRow:
     says: str
 
 
-Made = tuple[Client, Material]
+Made = tuple[Client, Callable[[], Material]]
+"""A run, and what reads the files that it plays."""
 
 
 def _no_simulation(path: str) -> Made:

@@ -149,6 +149,18 @@ def cut_said(cut: np.ndarray, by: np.ndarray, stroke: np.ndarray) -> tuple[str, 
     return CAUSES[int(cut[which[worst]])].shown, float(shares[worst])
 
 
+def reworded(line: str) -> str:
+    """A line as the run tells it, where it speaks of a terminal's keys: of this window's."""
+    if line.startswith("All is at rest or vented"):
+        return "All is at rest or vented, and disarmed: hold A to arm and go on from here."
+    return line
+
+
+def fault_said(lines: Sequence[str], boards: Sequence[str]) -> str:
+    """The last line that speaks of one of these boards, "" without one."""
+    return next((line for line in reversed(lines) if line.partition(":")[0] in boards), "")
+
+
 def rule_said(rule: str) -> str:
     """What becomes of the run without this window."""
     return {"rest": "without this window: all come to rest", "go-on": "without this window: the run goes on"}.get(rule, "")

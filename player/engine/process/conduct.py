@@ -25,6 +25,7 @@ class Conduct:
     asked: what is handed everything that is asked while the run is on; the engine's own `ask` for a score alone
     can_return: whether a front end with keys is offered to have everything brought back after a fault
     view, inputs: what a hand wants and gets, and what its sources say, where a hand plays
+    remap: reads the map file anew, where a hand plays by one; returns why it is not gone by, "" where it is
     """
 
     def __init__(self, engine: Engine, door: Door, show: Show, asked: Callable[[str], None] | None = None):
@@ -33,6 +34,7 @@ class Conduct:
         self.can_return = True
         self.view: Callable[[], Any] | None = None
         self.inputs: Callable[[], dict[str, Any]] | None = None
+        self.remap: Callable[[], str] = lambda: "nothing is played by hand here"
         self._stage = "opened"
         self._wants: set[str] = set()
         self._from_s = 0.0
@@ -125,6 +127,8 @@ class Conduct:
                 return "'play' comes after a pre-flight and arming, once a run"
             self._from_s = fields["from_s"]
             self._wants.add("play")
+        elif name == "map":
+            return self.remap()
         elif self._stage in ("opened", "preflight"):
             if name in ("stop", "rest"):
                 self._wants.add("end")

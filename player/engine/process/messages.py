@@ -78,6 +78,7 @@ ASKED = {
         Message("hold", "hold-to-run is down, said anew every tenth of a second, or up", {"down": "flag"}),
         Message("let_go", "all hands let go of their fibers", states=MOVING),
         Message("record", "begin a take, or end it"),
+        Message("map", "go by the map file as it is saved now; all hands let go"),
     )
 }
 """What a front end may say, by name."""

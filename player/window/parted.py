@@ -1,0 +1,48 @@
+"""What all that makes up the window shares: its parts, its run, what it knows of it."""
+
+from collections.abc import Callable
+
+from PySide6.QtCore import QTimer
+from PySide6.QtWidgets import QLabel, QWidget
+
+from player.engine.process.layout import Snapshot
+from player.window.actions import Standing
+from player.window.building import Parts
+from player.window.link import Link
+from player.window.ways import Material, Told, Ways
+
+METERS, PREFLIGHT, TAKES, MAP = range(4)
+
+
+class Parted(QWidget):
+    """A window with a link to a run. `now`: the run as last seen; `stage`: as `actions.Standing` has it."""
+
+    ways: Ways
+    link: Link
+    told: Told
+    material: Material
+    stage: str
+    now: Snapshot | None
+    margins: list[str]
+    wrong: list[str]
+    parts: Parts
+    _clock: Callable[[], float]
+    _standing: Standing
+    _drawn: bool
+    _held: bool
+    _unsent: bool
+    _vented_s: float | None
+    _light: int
+    _frames: QTimer
+
+
+def put(label: QLabel, text: str) -> None:
+    """Another text, where it is another."""
+    if label.text() != text:
+        label.setText(text)
+
+
+def restyle(widget: QWidget) -> None:
+    """Look at the style sheet again, as a property has changed."""
+    widget.style().unpolish(widget)
+    widget.style().polish(widget)
