@@ -17,6 +17,9 @@ SAME_S = 2e-8
 DIGITS = 9
 """Digits after the point of a number that no fraction gives: a nanosecond, or a nanocount."""
 
+CLOSE = 2e-8
+"""Counts, seconds or bars by which a number may be off for the sake of fewer digits: far less than a microsecond."""
+
 NICE = 96
 """The largest denominator of a fraction that a number which was a fraction may become."""
 
@@ -45,7 +48,9 @@ def number(original: str, value: float, unit: str) -> str:
         if form in ("fraction", "mixed", "whole"):
             whole, rest = divmod(nice, 1)
             return (f"{whole}+{rest}" if whole else f"{rest}") + suffix
-    text = f"{value:.{DIGITS}f}".rstrip("0").rstrip(".")
+    digits = next((n for n in range(DIGITS) if abs(round(value, n) - value) <= CLOSE), DIGITS)
+    text = f"{value:.{digits}f}"
+    text = text.rstrip("0").rstrip(".") if "." in text else text
     return ("0" if text in ("", "-0") else text) + suffix
 
 
