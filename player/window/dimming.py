@@ -22,7 +22,7 @@ _BACKS = ("ground", "panel", "raised", "field")
 
 
 def dimmed(theme: Theme, share: float) -> Theme:
-    """The theme with that share of its light; grounds go down with it, letters only as far as they can be read."""
+    """A dark theme with that share of its light; grounds go down with it, letters only as far as they can be read."""
     if share >= 1.0:
         return theme
     # In sRGB numbers, light goes with about the power 2.2.

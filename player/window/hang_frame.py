@@ -15,9 +15,10 @@ Array = NDArray[np.float64]
 
 
 class TimedHang(HangView):
-    """A hang view that knows what it costs to draw it. cost_ms: of the last time"""
+    """A hang view that knows what it costs to draw it. cost_ms: of the last time; frames: how often it has been drawn"""
 
     cost_ms = 0.0
+    frames = 0
 
     def paintEvent(self, event: QPaintEvent) -> None:
         """As always, with the time that it takes."""
@@ -25,6 +26,7 @@ class TimedHang(HangView):
         clock.start()
         super().paintEvent(event)
         self.cost_ms = clock.nsecsElapsed() / 1e6
+        self.frames += 1
 
 
 class HangFrame(QWidget):

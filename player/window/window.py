@@ -270,7 +270,10 @@ class RehearseWindow(Keyed, Alarming, Seeing):
 
     def do_dim(self) -> None:
         """Less light, or full light again."""
-        self._light = (self._light + 1) % len(DIMS)
+        if self._theme_name == "light":
+            self._theme_name, self._light = "dark", 0
+        else:
+            self._light = (self._light + 1) % len(DIMS)
         self._wear()
 
     def do_theme(self) -> None:
@@ -318,7 +321,7 @@ class RehearseWindow(Keyed, Alarming, Seeing):
 
     def theme(self) -> palette.Theme:
         """The look in the light that is wanted."""
-        return dimmed(palette.THEMES[self._theme_name], DIMS[self._light])
+        return palette.LIGHT if self._theme_name == "light" else dimmed(palette.DARK, DIMS[self._light])
 
     def _wear(self) -> None:
         theme = self.theme()

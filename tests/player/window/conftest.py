@@ -41,7 +41,7 @@ class Room:
 
     def begun(self, score="bench.score", targets=("sim",), rule="rest", **how):
         """A window that begins a run."""
-        usual = dict(map_path=None, midi=(), osc=None, take=None, start=None, rate=None, mend=False, log=None, rig=None)
+        usual = dict.fromkeys(("map_path", "osc", "take", "start", "rate", "log", "rig")) | {"midi": (), "mend": False}
         ways = rehearse_ways.beginning(score=score, targets=targets, rule=rule, **(usual | how))
         return self.shown(RehearseWindow(ways))
 
