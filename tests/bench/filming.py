@@ -70,6 +70,7 @@ def frames(name: str, count: int = 512, shown: int = 40) -> None:
 
 if __name__ == "__main__":
     png.ready()
-    frames("estuary")
-    frames("gannet")
-    movie(float(sys.argv[1]) if len(sys.argv) > 1 else float("inf"))
+    seconds = float(sys.argv[1]) if len(sys.argv) > 1 else float("inf")
+    for rig in ("estuary", "gannet"):
+        frames(rig, shown=4 if seconds < 1.0 else 40)
+    movie(seconds)

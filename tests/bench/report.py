@@ -1,11 +1,11 @@
-"""Every ratio that Drawcord is held to, found anew: runs the benches beside this file and tells what was met, and by how much not.
+"""Every figure that Drawcord is held to, found anew: runs the benches beside this file, tells what was met, what missed.
 
     python tests/bench/report.py                     # in full: an hour or so on an idle machine
-    python tests/bench/report.py --small             # each bench at a small size: that it runs and still says what is looked for
+    python tests/bench/report.py --small             # each bench at a small size: whether it still works
     python tests/bench/report.py --only retiming wire --json FILE --png FILE
 
-At a small size figures are told but not judged. Ends with 1 where a bench breaks or no longer says what is looked for, and in full
-also where a target is missed.
+At a small size figures are told but not judged. Ends with 1 where a bench breaks or no longer says what is looked for,
+and in full also where a target is missed.
 """
 
 import argparse
@@ -22,10 +22,9 @@ from dataclasses import asdict, dataclass
 from importlib.metadata import version
 from pathlib import Path
 
-HERE = Path(__file__).parent
-sys.path.insert(0, str(HERE))
-
 from report_table import BENCHES, TARGETS, Bench, Target
+
+HERE = Path(__file__).parent
 
 LONGEST_S = {"small": 300.0, "full": 7200.0}
 LIBRARIES = ("numpy", "scipy", "highspy", "PySide6-Essentials", "lark")

@@ -50,7 +50,7 @@ BENCHES = (
     Bench("retiming-million", "retiming", ("--million",), None),
     Bench("retiming-growth", "retiming_growth", ("--to", "FOLDER/growth.png"), ("--most", "3000", "--to", "FOLDER/growth.png")),
     Bench("physics", "physics"),
-    Bench("landing", "landing", (), ("--scores", "gannet", "--rigs", "1")),
+    Bench("landing", "landing", (), ("--scores", "gannet", "--rigs", "0")),
     Bench("fitting", "fitting", (), ("1",)),
     Bench("governor", "governor"),
     Bench("inputs", "inputs"),

@@ -1,4 +1,7 @@
-"""Whatever comes in, nothing but a fault in words comes of it. The long form: `-m soak tests/fuzz`; FUZZ_INPUTS, FUZZ_SEED, FUZZ_KEEP."""
+"""Whatever comes in, nothing but a fault in words comes of it.
+
+The long form: `-m soak tests/fuzz`, with FUZZ_INPUTS (a million), FUZZ_SEED, and FUZZ_KEEP, a folder for what breaks something.
+"""
 
 import os
 from pathlib import Path
