@@ -2,9 +2,16 @@
 
 import json
 import os
+import sys
 from dataclasses import replace
+from typing import Any
 
 import click
+
+from player.commands.terminal import is_screen
+
+PARTS = 1000
+"""Of the work, as the bar on a terminal counts them."""
 
 
 @click.command("take")
@@ -36,6 +43,7 @@ def command(
     from composer.files import check_writable, replacing
     from composer.report import check as report
     from composer.report.sentences import Teller
+    from player.takes.cores import Cores
     from player.takes.making import make_score
 
     if not 0.01 <= tolerance <= 20.0:
@@ -56,9 +64,11 @@ def command(
     except Faults as wrong:
         hint = "name another file, move that one away first, or have it replaced with --force"
         raise Faults([replace(one, hint=hint) if "would be lost" in one.found else one for one in wrong.faults]) from None
-    made = make_score(
-        take, out, rig=rig, tolerance=tolerance / 100.0, onto=onto, at=at, tempo=tempo, meter=meter, title=title
-    )  # fmt: skip
+    with Cores() as each, _progress() as bar:
+        made = make_score(
+            take, out, rig=rig, tolerance=tolerance / 100.0, onto=onto, at=at, tempo=tempo, meter=meter, title=title,
+            each=each, tell=lambda share: bar.update(int(PARTS * share) - bar.pos),
+        )  # fmt: skip
     with replacing(out) as file:
         file.write(made.text)
     teller = Teller(made.loaded.tracks, made.loaded.rig, made.loaded.tempo.say_place)
@@ -91,3 +101,8 @@ def command(
     if not made.checked.ok:
         click.echo(report.as_text(out, made.checked, teller))
     return 0 if good else 1
+
+
+def _progress() -> Any:
+    """A bar on stderr where that is a terminal, nothing elsewhere."""
+    return click.progressbar(length=PARTS, label="fitting", file=sys.stderr, hidden=not is_screen(), show_pos=False)

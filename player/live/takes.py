@@ -10,7 +10,9 @@ from numpy.typing import NDArray
 from composer.faults import Faults, fault
 from composer.files import check_writable, replacing
 from composer.rig.model import Rig
+from player.takes.cores import Cores
 from player.takes.file import TakeFile
+from player.takes.fitting import Each, one_by_one
 from player.takes.making import Made, make_score
 
 Array = NDArray[np.float64]
@@ -55,6 +57,7 @@ class Takes:
         self._stood = False
         self._samples = 0
         self._number = 0
+        self._each: Each = one_by_one
         self._takes: list[tuple[str, str, int]] = []
 
     @property
@@ -103,7 +106,8 @@ class Takes:
 
     def written(self) -> list[Written]:
         """The scores of all takes, written now."""
-        return [self._write(take, score, samples) for take, score, samples in self._takes]
+        with Cores() as self._each:
+            return [self._write(take, score, samples) for take, score, samples in self._takes]
 
     def _breaks(self, position_s: float, allowed: Array) -> bool:
         if position_s < self._last_s or position_s > self._last_s + LEAP_S:
@@ -141,7 +145,7 @@ class Takes:
         if samples < FEWEST:
             return Written(take, score, None, True, f"only {samples} ticks were recorded, too few for a score")
         try:
-            made = make_score(take, score)
+            made = make_score(take, score, each=self._each)
             if not made.fibers:
                 return Written(take, score, None, True, "nothing moved in it")
             with replacing(score) as file:

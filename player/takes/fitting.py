@@ -22,10 +22,13 @@ from player.takes.searching import COARSE, Search, of_series
 ROUNDS_S = ((0.26, 0.06), (0.04, 0.015))
 """How far about the knots found so far each further search weighs places, and how close together, in s."""
 
+GUESSED = 18.0
+"""Slacks that a series may go between two places of the guess at what kind of move stands where."""
+
 NOTED = 0.1
 """Of the slack: so far off a straight line between two instants an instant is watched too."""
 
-BATCH = 1 << 18
+BATCH = 1 << 19
 """Values of series that are fitted together: few enough to stay near the processor, and for all cores to have some."""
 
 BESIDE = 2
@@ -105,7 +108,7 @@ class Fitting:
 
 def _fit(lot: _Lot) -> tuple[list[Path], list[Index], list[Array]]:
     """The paths of a lot, and its `coarse` and `watched`."""
-    played, tempo, coarse = lot.played, lot.tempo, places_of(lot.played, lot.tempo, COARSE)
+    played, tempo, coarse = lot.played, lot.tempo, places_of(lot.played, lot.tempo, GUESSED)
     mine = [of_series(coarse, series) for series in range(len(played.share))]
     watched = [_with_furthest(played, k, coarse.time_s[coarse.first[k] : coarse.first[k + 1]]) for k in range(len(mine))]
     guesses, _ = fewest(coarse, roughly(played, coarse))

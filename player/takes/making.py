@@ -22,6 +22,7 @@ from composer.score.reading import read_score
 from composer.score.tempo import tempo_map
 from composer.tracks import Tracks
 from player.takes.file import load_take, rig_of
+from player.takes.fitting import Each, one_by_one
 from player.takes.form import Take
 from player.takes.laying import Laying
 from player.takes.places import UNIT
@@ -62,12 +63,14 @@ class Made:
 
 def make_score(
     path: str, out: str, *, rig: str | None = None, tolerance: float = 0.01, onto: str | None = None, at: str | None = None,
-    tempo: float | None = None, meter: str | None = None, title: str | None = None,
+    tempo: float | None = None, meter: str | None = None, title: str | None = None, each: Each = one_by_one,
+    tell: Callable[[float], None] = lambda share: None,
 ) -> Made:  # fmt: skip
     """The score of the take in a file, as it will stand at `out`; nothing is written yet.
 
     rig: instead of the one that the take names; tolerance: share of usable stroke; onto, at: the score that it is laid over,
     and the cue or place from which on; tempo, meter: of a score of its own, where the take was not played to a score
+    each: what spreads the work over cores; tell: is told which share of it is done, more or less
     """
     take = load_take(path)
     folder = os.path.dirname(os.path.abspath(path))
@@ -80,14 +83,16 @@ def make_score(
         f"Played by hand, {os.path.basename(path)}: curves within {tolerance * 100:g} % of the stroke of what was played.",
     ]
     if onto:
-        return _laid(take, out, loaded, tolerance, at, about, os.path.basename(path))
+        return _laid(take, out, loaded, tolerance, at, about, os.path.basename(path), each, tell)
     statements = _statements(loaded.score if loaded else None, tempo, meter)
     folder_out = os.path.dirname(os.path.abspath(out))
     rig_path = os.path.relpath(played_on.file, folder_out).replace(os.sep, "/")
     title = title or os.path.splitext(os.path.basename(path))[0].replace('"', "'")
     bare = read_score("\n".join([f'rig "{rig_path}"', *statements]) + "\n", out)
     abilities, map_ = abilities_of(played_on), tempo_map(bare)
-    settled = settle(take.time_s, lambda f: take.strain(take.governed, f), played_on, abilities, map_, tolerance)
+    settled = settle(
+        take.time_s, lambda f: take.strain(take.governed, f), played_on, abilities, map_, tolerance, each=each, tell=tell
+    )  # fmt: skip
     written = write(
         settled.voices, settled.paths, played_on, Selector(played_on, {}), map_, "take", punch=False,
     )  # fmt: skip
@@ -95,7 +100,10 @@ def make_score(
     return _made(take, text, out, played_on, settled, written, take.time_s, ())
 
 
-def _laid(take: Take, out: str, loaded: Loaded, tolerance: float, at: str | None, about: list[str], name: str) -> Made:
+def _laid(
+    take: Take, out: str, loaded: Loaded, tolerance: float, at: str | None, about: list[str], name: str, each: Each,
+    tell: Callable[[float], None],
+) -> Made:  # fmt: skip
     score, rig, abilities, tempo = loaded.score, loaded.rig, loaded.abilities, loaded.tempo
     if os.path.realpath(os.path.dirname(os.path.abspath(out))) != os.path.realpath(
         os.path.dirname(os.path.abspath(score.file))
@@ -115,7 +123,9 @@ def _laid(take: Take, out: str, loaded: Loaded, tolerance: float, at: str | None
     fibers = _played(loaded, governed, times, tolerance)
     selector = Selector(rig, groups_of(score))
     laying = Laying(score, rig, abilities, selector, tempo, fibers, begin)
-    settled = settle(times, governed, rig, abilities, tempo, tolerance, laying.set_out(), fibers, every=True)
+    settled = settle(
+        times, governed, rig, abilities, tempo, tolerance, laying.set_out(), fibers, every=True, each=each, tell=tell
+    )  # fmt: skip
     called = _free("take", {section.name for section in score.sections})
     written = write(
         settled.voices, settled.paths, rig, selector, tempo, called, punch=True, taken=set(score.phrases)
