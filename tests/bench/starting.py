@@ -6,6 +6,7 @@ python tests/bench/starting.py [--small]
 import subprocess
 import sys
 import time
+from pathlib import Path
 
 
 def least(call: list[str], times: int) -> float:
@@ -21,7 +22,9 @@ def least(call: list[str], times: int) -> float:
 def main() -> None:
     """Print the ratio."""
     times = 3 if "--small" in sys.argv else 25
-    ours = least([sys.executable, "-c", "import sys; from player.commands.main import run; sys.exit(run(['--help']))"], times)
+    script = Path(sys.executable).with_name("drawcord")
+    call = [str(script)] if script.exists() else [sys.executable, "-m", "player.commands.main"]
+    ours = least([*call, "--help"], times)
     theirs = least([sys.executable, "-c", "import argparse"], times)
     print(f"drawcord --help / import argparse = {ours / theirs:.2f} (3 at most)")
 
