@@ -10,12 +10,15 @@ hold above half stroke, the air. What they refuse gets another goal and moves ag
 - Air is asked for by filling alone. If the fibers ask for more than there is, each gets the same share of what it asks.
 """
 
+from dataclasses import dataclass
+from functools import lru_cache
+
 import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.live import longest_steps, look
 from player.engine.ways import SAFE
-from player.governor.braked import braked
+from player.governor.braked import ZERO, Brakes, braked, brakes_of
 from player.governor.causes import ACCEL, AIR, DUTY, HOLD, NONE, RATE, STROKE, SWITCHING
 from player.governor.governor import Governor
 from player.governor.state import State
@@ -39,49 +42,87 @@ def govern(governor: Governor, state: State, wanted: Array, dt_s: float, silent:
     return _Tick(governor, state, dt_s).to(wanted, silent)
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class _Lasts:
+    """What follows from a governor and how long a tick lasts, (F,) each.
+
+    sure_on_s: as of the governor, at a tick's beginning; kept: of a step of the drive, what a coil that stays on keeps
+    given_back_s: what a coil's duty gives back; over_s: as of the governor, at a tick's beginning
+    brakes: of the braced fibers; dt, nearly_per_s: one number each, how long it lasts, and nearly one over it
+    """
+
+    sure_on_s: Array
+    kept: Array
+    given_back_s: Array
+    over_s: Array
+    brakes: Brakes
+    dt: Array
+    nearly_per_s: Array
+
+
+@lru_cache(maxsize=16)
+def _lasts(governor: Governor, dt_s: float) -> _Lasts:
+    return _Lasts(
+        governor.sure_on_s - dt_s,
+        1.0 - 0.5 * dt_s / governor.min_on_s,
+        dt_s * governor.duty,
+        governor.over_s - dt_s,
+        brakes_of(governor.accel[governor.braced], dt_s),
+        np.array(dt_s),
+        np.array((1.0 - 1e-9) / dt_s),
+    )
+
+
 class _Tick:
     """What is the same throughout one tick."""
 
     def __init__(self, governor: Governor, state: State, dt_s: float):
         self.governor, self.state, self.dt_s = governor, state, dt_s
-        self.up, self.down = longest_steps(state.here, dt_s, governor.live.steady)
+        self.slowed = False
+        self.lasts = lasts = _lasts(governor, dt_s)
+        self.up, self.down = longest_steps(state.here, lasts.dt, governor.live.steady)
         # A coil that is on, or is switched on now, and may not be switched off at the end of this tick.
-        self.too_soon = np.where(state.on, state.since_on_s, 0.0) < governor.sure_on_s - dt_s
+        self.too_soon = np.where(state.on, state.since_on_s, ZERO) < lasts.sure_on_s
         self.stays_on = state.on & self.too_soon
         # Where a fiber would stand if it braked now, and the highest strain that it cannot help coming to.
         self.stop = self.top = strain = state.strain
-        self.at_rest = strain == 0.0
+        self.at_rest = strain == ZERO
         self.stands = None
         if governor.has_braced:
-            self.stands = state.rate == 0.0
+            self.stands = state.rate == ZERO
             brakes = np.abs(state.rate)
             brakes *= state.rate
             brakes *= governor.half_per_accel
             brakes += strain
-            np.maximum(brakes, 0.0, out=brakes)
+            np.maximum(brakes, ZERO, out=brakes)
             self.stop = np.minimum(brakes, governor.stroke, out=brakes)
             self.top = np.maximum(self.stop, strain)
             b = governor.braced
             self.before = strain[b], state.rate[b], self.stop[b]
-            self._fastest()
+            if governor.live.steady:
+                self.fill, self.exhaust = state.here.fill[b], state.here.exhaust[b]
+            else:
+                self._fastest()
         self.idles_on = self.stays_on
         if governor.has_holding:
             self.idles_on = self.stays_on & ~(governor.holding & (strain > governor.least))
-        self.start_band = np.where(state.on, 0.0, governor.least)
-        self.spent = state.spent_s - dt_s * governor.duty if governor.has_duty else state.spent_s
+        self.start_band = np.where(state.on, ZERO, governor.least)
+        self.spent = state.spent_s - lasts.given_back_s if governor.has_duty else state.spent_s
         self.seen: tuple[Array | None, Mask, Array] = (None, state.on, state.spent_s)
         self.cut = np.zeros(len(strain), dtype=np.int8)  # `NONE`
 
     def to(self, wanted: Array, silent: Mask | None) -> State:
         governor, state = self.governor, self.state
-        within = np.fmin(np.fmax(wanted, 0.0), governor.stroke)
+        if silent is not None and not _some(silent):
+            silent = None
+        within = np.fmin(np.fmax(wanted, ZERO), governor.stroke)
         self._cuts(within != wanted, STROKE)
         numbers = wanted == wanted
         asked = wanted if _some(numbers) == len(wanted) else np.where(numbers, wanted, within)
         let_down, tired, goal = state.let_down, state.tired, within
         if silent is not None:
-            goal = np.where(silent, 0.0, goal)
-            asked = np.where(silent, 0.0, asked)
+            goal = np.where(silent, ZERO, goal)
+            asked = np.where(silent, ZERO, asked)
         if _some(let_down):
             let_down = let_down & (goal > np.where(self.top <= governor.half, governor.half, governor.let_down_to))
             goal = self._instead(goal, let_down, governor.let_down_to, HOLD)
@@ -89,6 +130,7 @@ class _Tick:
             goal = self._instead(goal, tired & (goal > self.top), self.top, DUTY)
         if silent is not None:
             self.down = np.where(silent & ~let_down, self.down / SAFE, self.down)
+            self.slowed = True
 
             if governor.has_braced:
                 self._fastest()
@@ -101,7 +143,7 @@ class _Tick:
     def _fastest(self) -> None:
         """Rates of braced fibers up and down in this tick."""
         b = self.governor.braced
-        self.fill, self.exhaust = self.up[b] / self.dt_s, self.down[b] / self.dt_s
+        self.fill, self.exhaust = self.up[b] / self.lasts.dt, self.down[b] / self.lasts.dt
 
     def _instead(self, goal: Array, those: Mask, at: Array, cause: int) -> Array:
         """The goal, for some fibers another one, and why."""
@@ -115,7 +157,7 @@ class _Tick:
         """The goal as far as coils go: no start for less than a step of the drive, none that ends before it may."""
         governor, strain = self.governor, self.state.strain
         idle = np.abs(goal - strain) <= self.start_band
-        idle &= (goal > 0.0) | self.at_rest
+        idle &= (goal > ZERO) | self.at_rest
         if self.stands is not None:
             idle &= self.stands
         aimed = np.where(idle, strain, goal)
@@ -124,7 +166,7 @@ class _Tick:
         low = aimed < least
         low &= self.too_soon
         if _some(low):
-            floor = np.minimum(self.stop, least) * (1.0 - 0.5 * self.dt_s / governor.min_on_s)
+            floor = np.minimum(self.stop, least) * self.lasts.kept
             np.maximum(aimed, floor, out=aimed, where=low)
         return aimed
 
@@ -132,16 +174,16 @@ class _Tick:
         """Strain and rate at the end of the tick, on the way to a goal."""
         governor, aimed = self.governor, self._aim(goal)
         if governor.all_braced:
-            there, rate = braked(*self.before, aimed, governor.accel, self.fill, self.exhaust, self.dt_s)
-            np.maximum(there, 0.0, out=there)  # what rounding left outside
+            there, rate = braked(*self.before, aimed, self.lasts.brakes, self.fill, self.exhaust)
+            np.maximum(there, ZERO, out=there)  # what rounding left outside
             return np.minimum(there, governor.stroke, out=there), rate
         strain = self.state.strain
         there = np.minimum(np.maximum(aimed, strain - self.down), strain + self.up)
-        rate = (there - strain) / self.dt_s
+        rate = (there - strain) / self.lasts.dt
         if governor.has_braced:
             b = governor.braced
-            at, rate[b] = braked(*self.before, aimed[b], governor.accel[b], self.fill, self.exhaust, self.dt_s)
-            there[b] = np.minimum(np.maximum(at, 0.0), governor.stroke[b])
+            at, rate[b] = braked(*self.before, aimed[b], self.lasts.brakes, self.fill, self.exhaust)
+            there[b] = np.minimum(np.maximum(at, ZERO), governor.stroke[b])
         return there, rate
 
     def _cuts_on_the_way(self, goal: Array, strain: Array, rate: Array) -> None:
@@ -150,17 +192,17 @@ class _Tick:
             return
         self._cuts(short, RATE)
         if self.governor.has_braced:
-            most = np.where(rate > 0.0, self.up, self.down)
-            short &= np.abs(rate) < most * ((1.0 - 1e-9) / self.dt_s)
+            most = np.where(rate > ZERO, self.up, self.down)
+            short &= np.abs(rate) < most * self.lasts.nearly_per_s
             if not self.governor.all_braced:
-                short &= self.governor.half_per_accel > 0.0
+                short &= self.governor.half_per_accel > ZERO
             self._cuts(short, ACCEL)
 
     def _tops(self, strain: Array, rate: Array) -> Array:
         """The highest strain that a fiber at such a strain and rate cannot help coming to."""
         if not self.governor.has_braced:
             return strain
-        rising = np.maximum(rate, 0.0)
+        rising = np.maximum(rate, ZERO)
         rising *= rising
         rising *= self.governor.half_per_accel
         rising += strain
@@ -171,11 +213,11 @@ class _Tick:
         here = self.state.here
         top = self._tops(strain, rate)
         back = top - self.state.strain
-        np.maximum(back, 0.0, out=back)
+        np.maximum(back, ZERO, out=back)
         back *= here.back_up
         back += here.back
         if self.governor.has_braced:
-            back += np.maximum(rate, 0.0) * (2.0 * self.governor.half_per_accel)
+            back += np.maximum(rate, ZERO) * (2.0 * self.governor.half_per_accel)
         return top, back
 
     def _coils(self, strain: Array) -> tuple[Mask, Array]:
@@ -190,9 +232,9 @@ class _Tick:
             on |= governor.holding & (strain > governor.least)
         spent = self.spent
         if governor.has_duty:
-            spent = self.dt_s * on
+            spent = self.lasts.dt * on
             spent += self.spent
-            np.maximum(spent, 0.0, out=spent)
+            np.maximum(spent, ZERO, out=spent)
         self.seen = strain, on, spent
         return on, spent
 
@@ -202,10 +244,10 @@ class _Tick:
         way = np.maximum(back, governor.min_on_s)
         way += governor.spare_s
         way *= governor.off_duty
-        at_rest = strain == 0.0
+        at_rest = strain == ZERO
         if self.stands is not None:
-            at_rest &= rate == 0.0
-        np.copyto(way, 0.0, where=at_rest)
+            at_rest &= rate == ZERO
+        np.copyto(way, ZERO, where=at_rest)
         way += self._coils(strain)[1]
         return np.subtract(governor.burst_s, way, out=way)
 
@@ -213,11 +255,11 @@ class _Tick:
         """Whether a hold could not be over in time any more."""
         governor = self.governor
         down = self.state.strain - top
-        np.maximum(down, 0.0, out=down)
+        np.maximum(down, ZERO, out=down)
         down *= self.state.here.back_down
         lasts = self.state.above_s + back
         lasts -= down
-        return (lasts > governor.over_s - self.dt_s) & (top > governor.half)
+        return (lasts > self.lasts.over_s) & (top > governor.half)
 
     def _above(self, strain: Array) -> Array:
         """Seconds that a hold has lasted at the end of a tick that ends at `strain`."""
@@ -225,7 +267,7 @@ class _Tick:
         above = was.strain > governor.half
         above &= strain > governor.low
         above |= strain > governor.half
-        lasts = was.above_s + self.dt_s
+        lasts = was.above_s + self.lasts.dt
         lasts *= above
         return lasts
 
@@ -236,27 +278,32 @@ class _Tick:
         governor = self.governor
         slack, changed, way_back = None, False, governor.has_duty or governor.has_hold
         top, back = self._back_s(strain, rate) if way_back else (self._tops(strain, rate), None)
-        rise = np.maximum(top - self.top, 0.0)
+        rise = np.maximum(top - self.top, ZERO)
         if governor.has_hold:
             too_long = self._too_long(top, back)
             if _some(too_long):
                 let_down = let_down | too_long
-                goal = self._instead(goal, too_long, np.minimum(goal, governor.let_down_to), HOLD)
-                rise[too_long] = 0.0
-                self._hurry(too_long)
-                changed = True
+                self._cuts(too_long, HOLD)
+                rise[too_long] = ZERO
+                changed = self._hurry(too_long)
+                # One that is on its way down already goes where it went.
+                too_long &= goal > governor.let_down_to
+                if _some(too_long):
+                    goal = np.where(too_long, governor.let_down_to, goal)
+                    changed = True
         if governor.has_duty:
             slack = self._slack(strain, rate, back)
-            refuse = (slack < governor.spare_on_s) & (rise > 0.0)
+            refuse = (slack < governor.spare_on_s) & (rise > ZERO)
             if _some(refuse):
                 tired = tired | refuse
                 refuse &= goal > self.top
-                goal = self._instead(goal, refuse, self.top, DUTY)
-                rise[refuse] = 0.0
-                changed = True
+                if _some(refuse):
+                    goal = self._instead(goal, refuse, self.top, DUTY)
+                    rise[refuse] = ZERO
+                    changed = True
         share = self._air_share(rise)
         if share < 1.0:
-            fills = rise > 0.0
+            fills = rise > ZERO
             goal = self._instead(goal, fills, self.top + share * rise, AIR)
             changed = True
         if changed:
@@ -264,21 +311,25 @@ class _Tick:
         if slack is not None:
             if changed:
                 slack = self._slack(strain, rate, self._back_s(strain, rate)[1])
-            forced = slack < 0.0
+            forced = slack < ZERO
             if _some(forced):
                 tired = tired | forced
-                goal = self._instead(goal, forced, np.zeros_like(goal), DUTY)
-                self._hurry(forced)
-                strain, rate = self._move(goal)
+                self._cuts(forced, DUTY)
+                changed = self._hurry(forced)
+                if changed or _some(forced & (goal > ZERO)):
+                    strain, rate = self._move(np.where(forced, ZERO, goal))
             if _some(tired):
-                tired = tired & (slack < governor.recovered_s) & (self.state.spent_s != 0.0)
+                tired = tired & (slack < governor.recovered_s) & (self.state.spent_s != ZERO)
         return strain, rate, let_down, tired, share
 
-    def _hurry(self, those: Mask) -> None:
-        """These must come down as fast as they can, silent or not."""
-        self.down = np.where(those, longest_steps(self.state.here, self.dt_s, self.governor.live.steady)[1], self.down)
+    def _hurry(self, those: Mask) -> bool:
+        """These must come down as fast as they can, silent or not; whether that is news."""
+        if not self.slowed:
+            return False
+        self.down = np.where(those, longest_steps(self.state.here, self.lasts.dt, self.governor.live.steady)[1], self.down)
         if self.governor.has_braced:
             self._fastest()
+        return True
 
     def _air_share(self, rise: Array) -> float:
         """How much of what it takes to rise so far the supply has, 1 for all of it."""
@@ -294,16 +345,16 @@ class _Tick:
         governor, was, dt_s = self.governor, self.state, self.dt_s
         here = look(governor.live, strain)
         drawn = here.air - was.here.air
-        drawn_L = float(np.add.reduce(np.maximum(drawn, 0.0, out=drawn)))
-        since_on_s = was.since_on_s + dt_s
+        drawn_L = float(np.add.reduce(np.maximum(drawn, ZERO, out=drawn)))
+        since_on_s = was.since_on_s + self.lasts.dt
         on, spent = self._coils(strain)
-        np.copyto(since_on_s, dt_s, where=on > was.on)
+        np.copyto(since_on_s, self.lasts.dt, where=on > was.on)
         by = asked - strain
         near = np.abs(by) <= governor.least
         self._cuts(near, NONE)
         near &= self.stays_on
         if _some(near):
-            self._cuts(near & (by != 0.0), SWITCHING)
+            self._cuts(near & (by != ZERO), SWITCHING)
         return State(
             strain=strain,
             rate=rate,

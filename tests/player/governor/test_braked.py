@@ -3,7 +3,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from player.governor.braked import NEARLY_STILL, braked
+from player.governor.braked import NEARLY_STILL, braked, brakes_of
 
 A, FILL, EXHAUST, DT = 20.0, 0.6, 0.3, 0.005
 
@@ -13,8 +13,8 @@ def stops_at(strain, rate, accel):
 
 
 def step(strain, rate, wanted, dt=DT, accel=A):
-    values = [np.array([x], dtype=float) for x in (strain, rate, stops_at(strain, rate, accel), wanted, accel, FILL, EXHAUST)]
-    at, speed = braked(*values, dt)
+    values = [np.array([x], dtype=float) for x in (strain, rate, stops_at(strain, rate, accel), wanted)]
+    at, speed = braked(*values, brakes_of(np.array([accel]), dt), np.array([FILL]), np.array([EXHAUST]))
     return float(at[0]), float(speed[0])
 
 
