@@ -22,7 +22,7 @@ from composer.load import load_rig
 from composer.rig.model import Rig
 from player.governor import begin, govern, governor_of
 
-DT_S, JUMP = 0.005, 20
+DT_S, JUMP, REPEATS = 0.005, 20, 5
 TICKS = 100 if "--small" in sys.argv else 2000
 
 LASTING = {"duty": 0.5, "duty_burst_s": 2.0, "max_hold_s": 2.0}

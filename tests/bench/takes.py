@@ -45,9 +45,8 @@ def main() -> None:
     fibers = len(rig.fibers)
     one = np.ones(1)
     tempo = TempoMap(0.0 * one, 0.0 * one, 2.0 * one, 0.0 * one, 0.0 * one, 0.0 * one, 4.0 * one)
-    print(
-        f"{platform.processor() or platform.machine()}, Python {platform.python_version()}, {len(os.sched_getaffinity(0))} cores, load {os.getloadavg()[0]:.1f}"
-    )
+    cores = f"{len(os.sched_getaffinity(0))} cores, load {os.getloadavg()[0]:.1f}"
+    print(f"{platform.processor() or platform.machine()}, Python {platform.python_version()}, {cores}")
     for faders in (8, fibers):
         # With rests of up to 10 s coils stay within their duty, as in a rehearsal.
         lead = np.array([hand(60.0 * minutes, seed, rest_s=10.0) for seed in range(faders)])
