@@ -18,6 +18,10 @@ LOOK_S = 0.25
 """How long before a move its fiber is made ready for it, in s: how far ahead the inverse wants to know the score."""
 
 
+FOREVER_S = 1e6
+"""A tick so long that nothing in it depends on how fast a fiber goes."""
+
+
 class Inverse:
     """What to send, tick after tick, so that a rig's fibers have the strains wanted; it remembers where friction holds them.
 
@@ -67,6 +71,13 @@ class Inverse:
 def is_valve_drive(rig: Rig) -> NDArray[np.bool_]:
     """(F,) which fibers' drivers take a signed opening in place of a set-point."""
     return np.array([fiber.mounting.valve.drive == "valve" for fiber in rig.fibers], dtype=bool)
+
+
+def standing(rig: Rig, abilities: Abilities, points: int) -> Array:
+    """Set-points (F, points) at which fibers stand at even shares of their stroke, from rest to full, coming from below; what a
+    valve drive takes says nothing of where it stands, and is as it comes."""
+    strain = np.outer(abilities.stroke, np.linspace(0.0, 1.0, points))
+    return Inverse(rig, abilities).commands(strain, strain, strain, FOREVER_S)
 
 
 def vented(rig: Rig) -> Array:

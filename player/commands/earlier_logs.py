@@ -15,6 +15,7 @@ from player.engine.clock import stamp
 from player.engine.framed import frames
 from player.engine.run_log import KINDS, MAGIC, walk
 from player.engine.standing import MOST_RUNS, WHERE, drifting
+from player.engine.trim import LEVELS, MOST
 
 Array = NDArray[np.float64]
 
@@ -65,16 +66,9 @@ def beside_earlier(log: str | None, played: Played, told: dict[str, Any]) -> dic
 
 def _earlier(log: str, fingerprint: str, date: str, fibers: int) -> list[tuple[str, str, Array]]:
     """Date, name and means (F, 2) of the runs of a rig before that date, oldest first."""
-    folder = os.path.dirname(os.path.abspath(log))
     own = os.path.realpath(log)
-    files = []
-    try:
-        with os.scandir(folder) as entries:
-            files = [(entry.stat().st_mtime, entry.path) for entry in entries if entry.is_file()]
-    except OSError:
-        return []
     found = []
-    for _, path in sorted(files, reverse=True)[:MOST_FILES]:
+    for path in _newest(log):
         if os.path.realpath(path) == own:
             continue
         told = _told(path)
@@ -84,6 +78,39 @@ def _earlier(log: str, fingerprint: str, date: str, fibers: int) -> list[tuple[s
         if means is not None:
             found.append((str(told[0]["date"]), os.path.basename(path), means))
     return sorted(found, key=lambda one: one[:2])[-(MOST_RUNS - 1) :]
+
+
+def learned(log: str | None, fingerprint: str, fibers: int) -> tuple[str, Array] | None:
+    """The newest log of a rig in that log's folder, the one about to be written over too, at whose end stands what the trim
+    had learned: its name, and corrections (fibers, levels). None where there is none."""
+    for path in _newest(log) if log is not None else ():
+        told = _told(path)
+        if told is not None and told[0].get("fingerprint") == fingerprint:
+            by = _corrections(told[1].get("trim"), fibers)
+            if by is not None:
+                return os.path.basename(path), by
+    return None
+
+
+def _corrections(rows: Any, fibers: int) -> Array | None:
+    """Corrections (fibers, levels) from what a log's end says; None where it says nothing that makes sense."""
+    if not isinstance(rows, list) or len(rows) != fibers:
+        return None
+    if not all(isinstance(row, list) and len(row) == len(LEVELS) for row in rows):
+        return None
+    if not all(type(one) in (int, float) and abs(one) <= MOST for row in rows for one in row):
+        return None
+    return np.array(rows, dtype=float)
+
+
+def _newest(log: str) -> list[str]:
+    """Paths of the files in a log's folder, the newest first."""
+    try:
+        with os.scandir(os.path.dirname(os.path.abspath(log))) as entries:
+            files = [(entry.stat().st_mtime, entry.path) for entry in entries if entry.is_file()]
+    except OSError:
+        return []
+    return [path for _, path in sorted(files, reverse=True)[:MOST_FILES]]
 
 
 def _told(path: str) -> tuple[dict[str, Any], dict[str, Any]] | None:

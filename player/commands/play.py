@@ -15,7 +15,7 @@ SLOWEST_HZ, FASTEST_HZ = 20.0, 1000.0
 @click.option("--retime", "mend", is_flag=True, help="Mend the score first, where the rig cannot do it as written.")
 @click.option("--arm", is_flag=True, help="Arm without asking.")
 @click.option("--log", metavar="FILE", type=click.Path(path_type=str), help="Keep the run's log.")
-@click.option("--trim", is_flag=True, help="Correct pressure set-points, slowly, by what boards sense.")
+@click.option("--trim", is_flag=True, help="Correct set-points by what boards sense, and by what earlier runs learned.")
 @click.option("--rig", metavar="RIG", type=click.Path(path_type=str), help="Another rig file than the one named inside.")
 @click.option(
     "--when-left",

@@ -5,7 +5,9 @@ from collections.abc import Sequence
 from contextlib import ExitStack
 from typing import Any
 
-from player.commands.earlier_logs import beside_earlier
+import numpy as np
+
+from player.commands.earlier_logs import beside_earlier, learned
 from player.commands.logging_run import open_log
 from player.commands.played import Played
 from player.commands.priority import at_its_best
@@ -18,6 +20,7 @@ from player.engine.process.door import Door
 from player.engine.process.layout import Writer
 from player.engine.process.show import Show, boards_of
 from player.engine.safety import Refused
+from player.engine.trim import Trim
 from player.outputs.targets import Context, make_outputs
 
 NOT_ARMED = "not armed; nothing has moved"
@@ -52,13 +55,13 @@ def about(
 
 
 def body(
-    door: Door, memory: Writer, played: Played, targets: tuple[str, ...], rate_Hz: float, log: str | None, trim: bool
+    door: Door, memory: Writer, played: Played, targets: tuple[str, ...], rate_Hz: float, log: str | None, trims: bool
 ) -> tuple[str, dict[str, Any]]:
     """The run, for `player.engine.process.start`; returns its last message."""
     clock = SteadyClock()
     outputs = make_outputs(targets, Context(played.rig, played.abilities, clock, rate_Hz))
     with ExitStack() as stack:
-        engine = Engine(played.rig, played.source(), outputs, clock, rate_Hz, abilities=played.abilities, trims=trim)
+        engine = Engine(played.rig, played.source(), outputs, clock, rate_Hz, abilities=played.abilities, trims=trims)
         stack.callback(engine.close)
         interrupt = stack.enter_context(stopping(engine.ask))
         conduct = Conduct(engine, door, Show(memory, engine, played.rig, played.say_place))
@@ -67,6 +70,8 @@ def body(
         conduct.preflight()
         if not conduct.wait_for_arm():
             return not_armed(engine)
+        if (trim := engine.sensing.trim) is not None:
+            _take_up(trim, log, played, engine)
         run_log = open_log(log, stack, engine, played, targets, clock.now()) if log is not None else None
         interrupt.become_stops()
         # From arming on boards vent when they hear nothing for a while: nothing else may keep the engine from talking to them.
@@ -83,8 +88,16 @@ def body(
         told = report(engine, played, outputs, permitted)
         told |= beside_earlier(log, played, told)
         if run_log is not None:
-            run_log.tell("end", clock.now(), **told)
+            run_log.tell("end", clock.now(), **told, **({} if trim is None else {"trim": np.round(trim.by, 4).tolist()}))
     return "ended", {"exit": told["exit"], "report": told, "lines": sentences(told)}
+
+
+def _take_up(trim: Trim, log: str | None, played: Played, engine: Engine) -> None:
+    """What the trim learned in the rig's last run, where logs are kept."""
+    found = learned(log, f"{played.rig.fingerprint:08x}", len(played.names))
+    if found is not None:
+        trim.begin_with(found[1])
+        engine.tell(f"the trim begins with what was learned up to the end of {found[0]}")
 
 
 def not_armed(engine: Engine) -> tuple[str, dict[str, Any]]:

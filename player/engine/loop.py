@@ -67,7 +67,7 @@ class Engine:
         abilities: Abilities | None = None,
         trims: bool = False,
     ):
-        """`abilities` of the rig, where they are known already; `trims`: pressure set-points follow what is sensed, slowly."""
+        """`abilities` of the rig, where they are known already; `trims`: set-points are corrected by what is sensed."""
         self.source, self.rate_Hz, self.ahead_s = source, rate_Hz, ahead_s
         self.returns = False
         self.listen: Callable[[], None] = lambda: None
@@ -201,7 +201,7 @@ class Engine:
 
     def _send(self, due: float, late: float) -> None:
         self._due_s = due
-        command = self.sensing.applied(self.source.command)
+        command = self.sensing.applied(self.source.command, self.source.strain)
         self._hear(self.boards.send(due, command))
         self._diary.set(due, late, self.source.position_s, command, self.source.strain)
 
@@ -304,7 +304,7 @@ class Engine:
     def _stop(self, how: str, why: str, event: str) -> None:
         """End the run by that event, for that reason. Raises Refused before anything is done."""
         after(self.safety, event)
-        self._account.ends(how, why, ending=self.safety.state in ("resting", "vented"))
+        self._account.ends(how, why, ending=self.safety.state in ("resting", "vented", "idle"))
         self._become(event)
 
     def _become(self, event: str, start: Callable[[], None] | None = None) -> None:

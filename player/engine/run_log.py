@@ -11,7 +11,7 @@ little-endian:
     5 sense     at_us:i32 from the record's time, layout:u16, strain:u16 for each fiber of the layout, 0 to 65535 of its stroke
     6 board     JSON: {"driver", "kind", "say", "code", "status"}: what a board told: states, faults, notes
     7 slip      JSON: {"seconds"}: the host stood still longer than sets were ahead; the score went on that much later
-    8 end       JSON: how the run ended, and its counters
+    8 end       JSON: how the run ended, and its counters; "trim": what was learned, for every fiber a share of stroke a level
     9 sent      as set, without the strains wanted: for a recording, which knows none
     10 hits     JSON: {"hits": [[at_us, place, [fibers]]]}: where in the score moves land; at_us from its start
     11 supply   driver:u16, kPa × 10:u16: what a board's sensor of the supply reads

@@ -3,15 +3,21 @@
 import numpy as np
 from numpy.typing import NDArray
 
+from composer.drive.inverse import is_valve_drive, standing
 from composer.limits.abilities import Abilities
 from composer.rig.model import Rig
 from player.engine.alarms import ALARMS, SLACK_S, Raised, Watch
 from player.engine.errors import Errors
 from player.engine.standing import Standing
+from player.engine.trim import SLACK_S as TRIM_SLACK_S
 from player.engine.trim import Trim
 from player.outputs.base import Event
 
 Array = NDArray[np.float64]
+
+
+POINTS = 33
+"""Points of the model's curve by which the trim finds set-points."""
 
 
 class Sensing:
@@ -26,7 +32,7 @@ class Sensing:
         fastest = np.maximum(abilities.fill.max(axis=1), abilities.exhaust.max(axis=1))[abilities.which] / abilities.stroke
         self.watch = Watch(fastest)
         self.standing = Standing(len(rig.fibers))
-        self.trim = Trim(tuple(fiber.mounting.valve.drive for fiber in rig.fibers)) if trims else None
+        self.trim = Trim(standing(rig, abilities, POINTS), ~is_valve_drive(rig)) if trims else None
         self._names = [fiber.name for fiber in rig.fibers]
         self._drivers = [fiber.driver for fiber in rig.fibers]
         self._stroke = abilities.stroke
@@ -54,7 +60,8 @@ class Sensing:
         found = self.watch.look(event.time_s, event.fibers, share, low, high)
         self.standing.sense(event.fibers, share, low, high, self.watch.alarmed)
         if self.trim is not None:
-            self.trim.sense(event.time_s, event.fibers, share, low, high, self.watch.alarmed)
+            near = self.errors.around(event.time_s, TRIM_SLACK_S, event.fibers) or zone
+            self.trim.sense(event.time_s, event.fibers, share, near[0] / stroke, near[1] / stroke, self.watch.alarmed)
         if not found:
             return []
         where = {fiber: number for number, fiber in enumerate(event.fibers.tolist())}
@@ -67,9 +74,9 @@ class Sensing:
         self.last[:] = 0.0
         self.sensed[:] = np.nan
 
-    def applied(self, command: Array) -> Array:
-        """The command (F,) with the trim, where there is one."""
-        return command if self.trim is None else self.trim.applied(command)
+    def applied(self, command: Array, strain: Array) -> Array:
+        """The command (F,) that asks for strains (F,) with the trim, where there is one."""
+        return command if self.trim is None else self.trim.applied(command, strain / self._stroke)
 
     def _said(self, one: Raised, share: float, low: Array, high: Array, where: dict[int, int]) -> str:
         row, number = ALARMS[one.name], where[one.fiber]
