@@ -107,6 +107,10 @@ def why_not_now(name: str, now: Standing) -> str:
     return _why_not_own(name, now) or _by_table(name, now)
 
 
+OTHER_WORDS = {("arm", "bring_back"): "Arm, go on", ("jump", "play"): "Play from"}
+"""Words on buttons that stand for another message than usual."""
+
+
 def message_of(name: str, now: Standing) -> str:
     """Which message of ASKED an action is just now."""
     if name == "arm" and now.stage == "running":
@@ -123,11 +127,14 @@ def message_of(name: str, now: Standing) -> str:
 def word_of(name: str, now: Standing) -> str:
     """The word on an action's button just now."""
     asks = message_of(name, now)
-    if name == "arm" and asks == "bring_back":
-        return "Arm, go on"
-    if name == "jump" and asks == "play":
-        return "Play from"
+    if (name, asks) in OTHER_WORDS:
+        return OTHER_WORDS[name, asks]
     return ACTIONS[name].word
+
+
+def words_of(name: str) -> tuple[str, ...]:
+    """All words that an action's button may bear: it is as wide as the widest, so that no other moves under the hand."""
+    return (ACTIONS[name].word, *(word for (of, _), word in OTHER_WORDS.items() if of == name))
 
 
 def _why_not_own(name: str, now: Standing) -> str:

@@ -2,10 +2,11 @@
 
 import numpy as np
 from PySide6.QtCore import QElapsedTimer
+from PySide6.QtWidgets import QAbstractButton
 
 from player.engine.process.layout import Snapshot
 from player.window import words
-from player.window.actions import ACTIONS, Standing, why_not_now, word_of
+from player.window.actions import ACTIONS, Standing, why_not_now, word_of, words_of
 from player.window.count_in import count_in
 from player.window.dimming import DIMS, SAID
 from player.window.next_view import Coming
@@ -24,12 +25,12 @@ class Seeing(Parted):
         return f"{at_s:.1f} s" if tempo is None else tempo.say_place(self.material.warp.was(at_s))
 
     def _frame(self) -> None:
-        """The next moment; then the time until the one after, which leaves a third of this thread's to keys."""
+        """The next moment; then the time until the one after, which leaves some of this thread's to keys."""
         clock = QElapsedTimer()
         clock.start()
         self._draw()
         spent = clock.nsecsElapsed() / 1e6
-        self._frames.start(round(max(FRAME_MS - spent, 0.5 * self.parts.hang.cost_ms, 4.0)))
+        self._frames.start(round(max(FRAME_MS - spent, 6.0)))
 
     def _draw(self) -> None:
         self.link.look()
@@ -116,6 +117,7 @@ class Seeing(Parted):
         for name, button in self.parts.deeds.items():
             why = why_not_now(name, self._standing)
             button.setEnabled(not why)
+            _wide_enough(button, words_of(name))
             button.setText(word_of(name, self._standing))
             says = why or ACTIONS[name].says
             keys = " or ".join(ACTIONS[name].keys)
@@ -161,3 +163,12 @@ class Seeing(Parted):
         elif isinstance(told, float) and self.stage != "none":
             self.margins = [f"tonight's run is simulated, {100.0 * told:.0f} % done …"]
         self._renew_preflight()
+
+
+def _wide_enough(button: QAbstractButton, words: tuple[str, ...]) -> None:
+    """As wide as its widest word, in the font that it has just now."""
+    if len(words) < 2:
+        return
+    metrics, shown = button.fontMetrics(), button.text()
+    spare = button.sizeHint().width() - metrics.horizontalAdvance(shown)
+    button.setMinimumWidth(spare + max(metrics.horizontalAdvance(word) for word in words))

@@ -4,7 +4,19 @@ import pytest
 
 from player.engine.process.messages import ASKED
 from player.engine.safety import STATES
-from player.window.actions import ACTIONS, BY_KEY, NO_HANDS, NOT_SO, WATCHES, Standing, message_of, sheet, why_not_now
+from player.window.actions import (
+    ACTIONS,
+    BY_KEY,
+    NO_HANDS,
+    NOT_SO,
+    WATCHES,
+    Standing,
+    message_of,
+    sheet,
+    why_not_now,
+    word_of,
+    words_of,
+)
 
 COMMANDS = Standing(stage="running", state="playing", commands=True, taken=True, marks=True)
 
@@ -65,3 +77,10 @@ def test_each_action_is_offered_in_just_the_states_that_the_runs_table_has_for_i
 
 def test_the_sheet_has_every_key():
     assert {key for keys, _, _ in sheet() for key in keys.split(" or ")} == set(BY_KEY)
+
+
+def test_a_button_bears_one_of_the_words_it_is_made_wide_for():
+    every = [Standing(stage, state, commands=True) for stage in ("before", "running") for state in STATES]
+    for name in ACTIONS:
+        assert {word_of(name, now) for now in every} <= set(words_of(name))
+    assert len(words_of("arm")) == 2 == len(words_of("jump"))
