@@ -2,31 +2,15 @@
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QElapsedTimer, Qt, Signal
-from PySide6.QtGui import QPaintEvent
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from composer.limits.abilities import Abilities
-from composer.picture.hang import HangView
 from composer.picture.palette import DARK, Theme
 from composer.rig.model import Rig
+from player.window.hang_beside import HangBeside
 
 Array = NDArray[np.float64]
-
-
-class TimedHang(HangView):
-    """A hang view that knows what it costs to draw it. cost_ms: of the last time; frames: how often it has been drawn"""
-
-    cost_ms = 0.0
-    frames = 0
-
-    def paintEvent(self, event: QPaintEvent) -> None:
-        """As always, with the time that it takes."""
-        clock = QElapsedTimer()
-        clock.start()
-        super().paintEvent(event)
-        self.cost_ms = clock.nsecsElapsed() / 1e6
-        self.frames += 1
 
 
 class HangFrame(QWidget):
@@ -39,7 +23,7 @@ class HangFrame(QWidget):
         self._theme: Theme = DARK
         self._room = QVBoxLayout(self)
         self._room.setContentsMargins(0, 0, 0, 0)
-        self.shown: TimedHang | None = None
+        self.shown: HangBeside | None = None
         self._strains: tuple[Array, Array] | None = None
 
     @property
@@ -51,7 +35,7 @@ class HangFrame(QWidget):
         """Draw a rig."""
         self._strains = None
         if self.shown is None:
-            self.shown = TimedHang(rig, abilities)
+            self.shown = HangBeside(rig, abilities)
             self.shown.setFocusPolicy(Qt.FocusPolicy.NoFocus)
             self.shown.set_theme(self._theme)
             self.shown.fiber_clicked.connect(self.fiber_clicked)
@@ -83,3 +67,8 @@ class HangFrame(QWidget):
         self._theme = theme
         if self.shown is not None:
             self.shown.set_theme(theme)
+
+    def end(self) -> None:
+        """The window closes."""
+        if self.shown is not None:
+            self.shown.end()

@@ -49,6 +49,8 @@ class MapView(QWidget):
         self._poll.timeout.connect(self._hear)
         self.list = QListWidget()
         self.list.setAccessibleName("binds")
+        self.list.setWordWrap(True)
+        self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.list.setFocusPolicy(Qt.FocusPolicy.TabFocus)
         self.list.currentRowChanged.connect(self._chosen)
         self.curve_view = CurveView()

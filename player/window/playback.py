@@ -81,6 +81,7 @@ class Playback(QDialog):
     def closeEvent(self, event: QCloseEvent) -> None:
         """The simulated run ends too."""
         self._timer.stop()
+        self.hang.end()
         self.link.say("stop")
         self.link.leave()
         super().closeEvent(event)

@@ -10,7 +10,7 @@ from player.window.actions import ACTIONS, Standing, why_not_now, word_of, words
 from player.window.count_in import count_in
 from player.window.dimming import DIMS, SAID
 from player.window.next_view import Coming
-from player.window.parted import METERS, Parted, put
+from player.window.parted import METERS, PREFLIGHT, Parted, put
 from player.window.preflight_view import rows_of
 
 FRAME_MS = 28
@@ -148,8 +148,10 @@ class Seeing(Parted):
         put(self.parts.why, why)
 
     def _show_next(self) -> None:
-        """What comes next gives its room to a long list as long as nothing comes."""
-        self.parts.next.setVisible(self.stage == "running" or self.parts.stack.currentIndex() == METERS)
+        """What comes next gives its room to a long list as long as nothing comes; instruments to takes and map."""
+        panel = self.parts.stack.currentIndex()
+        self.parts.next.setVisible(self.stage == "running" or panel == METERS)
+        self.parts.instruments.setVisible(panel in (METERS, PREFLIGHT))
 
     def _renew_preflight(self) -> None:
         marks = None if self.told.marks is None else self.told.marks["marks"]

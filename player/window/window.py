@@ -354,6 +354,7 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         self._beside.stop()
         self.parts.map.close_ports()
         self.parts.takes.stop()
+        self.parts.hang.end()
         self.link.leave()
         self._vent_key.remove()
         QApplication.instance().removeEventFilter(self)
