@@ -21,7 +21,7 @@ import tempfile
 import threading
 import time
 import tty
-from contextlib import ExitStack
+from contextlib import ExitStack, suppress
 from pathlib import Path
 
 import numpy as np
@@ -39,6 +39,9 @@ from player.wire.messages import Set, decode
 
 TICK_S, ROOM_S = 0.005, 0.002
 LOW, HIGH = 25, 100
+SENDS, JACK, TAP = 5, 15, 30
+"""Real-time priorities: of what sends, of JACK, as those who play by it have it, and of the tap."""
+
 FRAMES = 48
 """Of a period of JACK, a millisecond: a message waits for the next to begin."""
 
@@ -68,6 +71,9 @@ class Tap:
             os.close(handle)
 
     def _run(self) -> None:
+        with suppress(AttributeError, OSError):
+            # As a line is: nothing holds it up.
+            os.sched_setscheduler(0, os.SCHED_FIFO, os.sched_param(TAP))
         while not self._ends.is_set():
             ready, _, _ = select.select([self._board, self._player], [], [], 0.05)
             now = time.perf_counter()
@@ -97,15 +103,17 @@ def main() -> None:
     options = parser.parse_args()
     # Not the bench is to be measured: it, the board and what sends go before all else, as the session does by itself.
     try:
-        os.sched_setscheduler(0, os.SCHED_FIFO, os.sched_param(5))
+        os.sched_setscheduler(0, os.SCHED_FIFO, os.sched_param(SENDS))
+        jack = JACK
     except (AttributeError, OSError):
+        jack = 0
         print("no real-time priority is permitted here: what else the machine does is measured too")
     for way in (options.way,) if options.way else ("midi", "osc"):
-        bench(way, options.jumps, not options.python_board)
+        bench(way, options.jumps, not options.python_board, jack)
 
 
-def bench(way: str, jumps: int, portable: bool) -> None:
-    """Jumps by one way in, and what came of them."""
+def bench(way: str, jumps: int, portable: bool, jack: int) -> None:
+    """Jumps by one way in, and what came of them; jack: priority of its server, 0 for none."""
     with ExitStack() as stack:
         folder = stack.enter_context(tempfile.TemporaryDirectory())
         rig = small_rig.__wrapped__()(
@@ -122,7 +130,7 @@ def bench(way: str, jumps: int, portable: bool) -> None:
         stack.callback(tap.close)
         live = ["live", "bench.rig.toml", "--map", "hand.map.toml", "--to", f"serial:{tap.path}", "--json", "--arm"]
         if way == "midi":
-            stack.enter_context(server(f"drawcord-bench-{os.getpid()}", FRAMES))
+            stack.enter_context(server(f"drawcord-bench-{os.getpid()}", FRAMES, jack))
             until(is_midi_there, lambda: None)
             sender = Sender("benchbox")
             stack.callback(sender.close)
@@ -150,9 +158,8 @@ def bench(way: str, jumps: int, portable: bool) -> None:
         session.send_signal(signal.SIGINT)
         told = json.loads(session.communicate(timeout=60)[0])
     parts = np.percentile(took, [0, 50, 90, 99, 100]) * 1e3
-    print(
-        f"{way}, board in {'C' if portable else 'Python'}: {len(took)} jumps, {missed} missed; ms from the control to the wire"
-    )
+    board = "C" if portable else "Python"
+    print(f"load {os.getloadavg()[0]:.1f}; {way}, board in {board}: {len(took)} jumps, {missed} missed; ms from control to wire")
     print("   least {:.2f}, middle {:.2f}, p90 {:.2f}, p99 {:.2f}, most {:.2f}".format(*parts), end="")
     print(f"; a tick and 2 ms are {(TICK_S + ROOM_S) * 1e3:.0f}: {parts[3] / (TICK_S + ROOM_S) / 1e3:.2f} times that")
     late, outputs = told["lateness_ms"], told["outputs"]

@@ -65,14 +65,15 @@ def is_jack_there() -> bool:
 
 
 @contextmanager
-def server(name: str, frames: int = 256) -> Iterator[str]:
+def server(name: str, frames: int = 256, priority: int = 0) -> Iterator[str]:
     """A server of that name while the block runs; clients of this process and of those that it starts find it.
 
-    frames: of a period, at 48 kHz
+    frames: of a period, at 48 kHz; priority: real-time, of the server's threads and about that of its clients', 0 for none
     """
     was = os.environ.get("JACK_DEFAULT_SERVER")
     os.environ["JACK_DEFAULT_SERVER"] = name
-    command = ["jackd", "-r", "-S", "-n", name, "-d", "dummy", "-r", "48000", "-p", str(frames)]
+    first = ["-R", "-P", str(priority)] if priority else ["-r"]
+    command = ["jackd", *first, "-S", "-n", name, "-d", "dummy", "-r", "48000", "-p", str(frames)]
     with subprocess.Popen(command, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL) as process:
         try:
             yield name
