@@ -159,7 +159,7 @@ def bench(way: str, jumps: int, portable: bool, jack: int) -> None:
         told = json.loads(session.communicate(timeout=60)[0])
     parts = np.percentile(took, [0, 50, 90, 99, 100]) * 1e3
     board = "C" if portable else "Python"
-    print(f"load {os.getloadavg()[0]:.1f}; {way}, board in {board}: {len(took)} jumps, {missed} missed; ms from control to wire")
+    print(f"{way}, board in {board}, load {os.getloadavg()[0]:.1f}: {len(took)} jumps, {missed} missed; ms from hand to wire")
     print("   least {:.2f}, middle {:.2f}, p90 {:.2f}, p99 {:.2f}, most {:.2f}".format(*parts), end="")
     print(f"; a tick and 2 ms are {(TICK_S + ROOM_S) * 1e3:.0f}: {parts[3] / (TICK_S + ROOM_S) / 1e3:.2f} times that")
     late, outputs = told["lateness_ms"], told["outputs"]
