@@ -48,7 +48,10 @@ def level(time_s: Array, demand: Array, refill: float) -> Level:
 
 
 def overdraws(time_s: Array, demand: Array, store: float, refill: float, tolerance: float = 0.0) -> Overdraws:
-    """The spans in which more is asked than a store bears; `tolerance` is relative to the store."""
+    """The spans in which more is asked than a store bears: `demand` (N,) in the store's unit at rising times (N,) in s.
+
+    `tolerance` is relative to the store; `refill` per s.
+    """
     now = level(time_s, demand, refill)
     over = np.flatnonzero(now.missing > store * (1.0 + tolerance))
     if not len(over):
