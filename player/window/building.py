@@ -31,6 +31,9 @@ DEEDS = (
 )  # fmt: skip
 """Buttons of the row, from left to right; the place that `jump` goes to stands behind it."""
 
+SELDOM = ("preflight", "command", "again")
+"""Those of them that stand below, smaller: a worn rig's row has no room for them."""
+
 TABS = ("panel_1", "panel_2", "panel_3", "panel_4")
 
 
@@ -155,6 +158,8 @@ def _lay_out(window, parts: Parts) -> None:
     row.setContentsMargins(12, 0, 12, 0)
     row.setSpacing(6)
     for name in DEEDS:
+        if name in SELDOM:
+            continue
         if name == "jump":
             row.addStretch(1)
         row.addWidget(parts.deeds[name])
@@ -171,6 +176,9 @@ def _lay_out(window, parts: Parts) -> None:
     beneath = QHBoxLayout()
     beneath.setContentsMargins(14, 0, 14, 0)
     beneath.addWidget(parts.why, 1)
+    for name in SELDOM:
+        parts.deeds[name].setObjectName("tab")
+        beneath.addWidget(parts.deeds[name])
     for name in ("view", "dim", "keys"):
         beneath.addWidget(_small(window, name))
     whole.addLayout(beneath)

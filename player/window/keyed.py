@@ -1,6 +1,6 @@
 """The window's keys: those of the table, from wherever the focus is, but not where somebody writes."""
 
-from PySide6.QtCore import QEvent, QObject, Qt
+from PySide6.QtCore import QEvent, QObject, Qt, QTimer
 from PySide6.QtGui import QKeyEvent, QKeySequence
 from PySide6.QtWidgets import QAbstractButton, QAbstractSpinBox, QApplication, QLineEdit, QWidget
 
@@ -11,9 +11,15 @@ from player.window.parted import Parted
 
 WRITTEN_IN = (QLineEdit, QAbstractSpinBox)
 
+REPEATS_MS = 100
+"""A key that is held comes up and down many times a second on some systems: it is up once it has been for so long."""
+
 
 class Keyed(Parted):
     """Hands keys on to `do`, `hold` and the button that is held to arm."""
+
+    _letting_go: QTimer
+    _lets_go: str = ""
 
     def eventFilter(self, watched: QObject, event: QEvent) -> bool:
         """Keys of the table from wherever the focus is in this window, but not where somebody writes."""
@@ -55,16 +61,30 @@ class Keyed(Parted):
         return True
 
     def _held_key(self, name: str, down: bool) -> None:
-        if name == "hold":
-            self.hold(down)
-        elif down:
+        if down:
+            if self._letting_go.isActive() and self._lets_go == name:
+                # It repeats itself, and its system has not said so.
+                self._letting_go.stop()
+                return
+            if name == "hold":
+                self.hold(True)
+                return
             if why := why_not_now("arm", self._standing):
                 self.parts.why.setText(f"{ACTIONS['arm'].word}: {why}")
             self.parts.arm.begin()
         else:
+            self._lets_go = name
+            self._letting_go.start(REPEATS_MS)
+
+    def _let_go(self) -> None:
+        """The key that was held is really up."""
+        if self._lets_go == "hold":
+            self.hold(False)
+        else:
             self.parts.arm.end()
 
     def _let_go_of_keys(self) -> None:
+        self._letting_go.stop()
         self.parts.arm.end()
         self.hold(False)
 

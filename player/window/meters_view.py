@@ -137,7 +137,9 @@ class MetersView(QWidget):
         if one.cut and abs(one.wanted - one.allowed) > 0.004:
             low, high = sorted((one.wanted, one.allowed))
             piece = QRectF(bar.left() + bar.width() * low, bar.top(), bar.width() * (high - low), bar.height())
-            painter.setBrush(QBrush(colour(theme.fault), Qt.BrushStyle.BDiagPattern))
+            painter.setBrush(colour(theme.fault))
+            painter.drawRect(piece)
+            painter.setBrush(QBrush(colour(theme.field), Qt.BrushStyle.BDiagPattern))
             painter.drawRect(piece)
         x = bar.left() + bar.width() * one.wanted
         painter.setPen(pen(theme.head, max(2.0, 2.5 * look.scale)))

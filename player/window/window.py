@@ -75,6 +75,9 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         self._blink = self._timer(BLINK_MS, self._blinked)
         self._holding = self._timer(HOLD_MS, lambda: self.link.say("hold", down=True))
         self._holding.stop()
+        self._letting_go = self._timer(0, self._let_go)
+        self._letting_go.stop()
+        self._letting_go.setSingleShot(True)
         self._wear()
         self._stand()
         if first:

@@ -121,7 +121,7 @@ def late_said(now: Snapshot) -> tuple[str, bool]:
     worst = now.number("worst_late_s")
     if not np.isfinite(worst):
         return "no ticks yet", False
-    said = f"worst {1e3 * worst:.1f} ms, {late} of {int(now.number('ticks'))} ticks late"
+    said = f"worst {1e3 * worst:.1f} ms, {late} of {int(now.number('ticks'))} late"
     return said + (f", {past} past due" if past else ""), past > 0
 
 

@@ -34,7 +34,7 @@ def moved(window, port):
     hand = SimpleUDPClient("127.0.0.1", port)
     for stroke in (0.3, 0.5, 0.1):
         hand.send_message("/drawcord/fiber/r.2", stroke)
-        until(lambda: abs(window.now.array("allowed")[1] / 0.3 - stroke) < 0.02, "the fiber does not follow")
+        until(lambda wanted=stroke: abs(window.now.array("allowed")[1] / 0.3 - wanted) < 0.02, "the fiber does not follow")
     until(lambda: window.parts.takes.paths, "no take is listed")
 
 
