@@ -12,6 +12,7 @@ import pytest
 
 from player.commands.main import run
 from player.engine.run_log import records
+from player.engine.trim import LEVELS, MOST
 from player.outputs.recording import read
 
 
@@ -223,3 +224,16 @@ def test_a_run_killed_outright_leaves_a_log_that_can_be_read(score):
     with open("run.log", "rb") as file:
         found, _ = records(file.read())
     assert found[0].kind == "head" and sum(record.kind == "set" for record in found) > 5
+
+
+def test_what_the_trim_learned_is_kept_in_the_log_and_the_next_run_begins_with_it(score, capsys):
+    name = score(times=2)
+    assert run(["play", name, "--to", "sim", "--trim", "--log", "first.log"]) == 0
+    assert "the trim begins" not in "".join(capsys.readouterr())
+    with open("first.log", "rb") as file:
+        kept = np.array(next(one.told["trim"] for one in records(file.read())[0] if one.kind == "end"), dtype=float)
+    assert kept.shape[1] == len(LEVELS) and np.abs(kept).max() <= MOST
+    assert run(["play", name, "--to", "sim", "--trim", "--log", "second.log"]) == 0
+    assert "the trim begins with what was learned up to the end of first.log" in "".join(capsys.readouterr())
+    assert run(["play", name, "--to", "sim", "--log", "third.log"]) == 0
+    assert "the trim begins" not in "".join(capsys.readouterr())

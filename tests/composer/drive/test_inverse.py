@@ -1,10 +1,13 @@
 """From strain wanted to what is sent."""
 
+from importlib.resources import files
+
 import numpy as np
 import pytest
 
-from composer.drive.inverse import Inverse, vented
+from composer.drive.inverse import Inverse, standing, vented
 from composer.limits.abilities import abilities_of
+from composer.load import load_rig
 
 
 def sent(rig, before, strain, tick_s=0.005):
@@ -47,3 +50,14 @@ def test_commands_lead_by_the_valves_response_unless_the_lead_is_off(make_rig):
 def test_to_vent_is_no_pressure_or_an_exhaust_fully_open(make_rig):
     assert vented(make_rig(2)).tolist() == [0.0, 0.0]
     assert vented(make_rig(2, drive="valve")).tolist() == [-1.0, -1.0]
+
+
+def test_set_points_at_which_fibers_stand_are_those_of_a_slow_rise():
+    """Of modelled fibers whose drives take a pressure or a strain."""
+    rig = load_rig(str(files("scores_demo") / "gannet.rig.toml"))
+    abilities = abilities_of(rig)
+    found = standing(rig, abilities, 5)
+    slow = np.outer(abilities.stroke, np.linspace(0.0, 1.0, 4001))
+    sent = Inverse(rig, abilities).commands(slow, slow, slow, 0.05)
+    assert found[:, 1:] == pytest.approx(sent[:, 1000::1000], abs=5e-3)
+    assert (np.diff(found, axis=1) > 0.0).all() and not found[:, 0].any()
