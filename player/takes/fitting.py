@@ -22,6 +22,9 @@ from player.takes.searching import COARSE, Search, of_series
 ROUNDS_S = ((0.26, 0.06), (0.04, 0.015))
 """How far about the knots found so far each further search weighs places, and how close together, in s."""
 
+LOTS = 8
+"""Few series are fitted in so many lots, so that no core waits for another that has most of them."""
+
 GUESSED = 18.0
 """Slacks that a series may go between two places of the guess at what kind of move stands where."""
 
@@ -102,7 +105,7 @@ class Fitting:
         return [path for lot in self._each(_again, lots, lambda done: None) for path in lot]
 
     def _lots(self, count: int) -> list[range]:
-        rows = max(1, BATCH // max(1, self._played.share.shape[1]))
+        rows = max(1, min(BATCH // max(1, self._played.share.shape[1]), -(-count // LOTS)))
         return [range(begin, min(begin + rows, count)) for begin in range(0, count, rows)]
 
 
