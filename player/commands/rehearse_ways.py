@@ -16,7 +16,7 @@ from player.commands.mending import NotMended
 from player.commands.play import _check_written, _rate, _refuse_clashes
 from player.commands.played import Played, load_played
 from player.commands.refusal import not_mended, refused
-from player.engine.process.client import Client
+from player.engine.process.client import Client, NotThere
 from player.engine.process.room import NoRoom, path_of, runs
 from player.engine.process.start import Body, start
 from player.live.takes import SUFFIX
@@ -169,6 +169,9 @@ def rows() -> list[RunRow]:
     for name in names():
         try:
             client = Client.at(path_of(name), commands=False)
+        except NotThere:
+            # It has ended in between.
+            continue
         except WRONG as why:
             found.append(RunRow(name, str(why)))
             continue

@@ -1,8 +1,11 @@
 """The only place that asks the operating system what time it is, and the clock that tests use in its stead."""
 
+import calendar
 import time
 from collections.abc import Callable
 from typing import Protocol
+
+STAMP = "%Y-%m-%dT%H:%M:%SZ"
 
 
 class Clock(Protocol):
@@ -58,9 +61,14 @@ class VirtualClock:
 
 def stamp() -> str:
     """The date and time of day in UTC, for the head of a run's log."""
-    return time.strftime("%Y-%m-%dT%H:%M:%SZ", time.gmtime())
+    return time.strftime(STAMP, time.gmtime())
 
 
 def time_of_day() -> float:
     """Seconds since 1970 by the machine's calendar, for time tags; it may jump, so nothing else goes by it."""
     return time.time()
+
+
+def time_of(stamped: str) -> float:
+    """The time of day that a `stamp` says, in seconds as `time_of_day` has them. Raises ValueError for anything else."""
+    return calendar.timegm(time.strptime(stamped, STAMP))

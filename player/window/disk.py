@@ -4,7 +4,6 @@ import os
 import shutil
 import tempfile
 from dataclasses import dataclass
-from datetime import datetime
 
 from composer.files import read_text, replacing
 from composer.rig.model import Rig
@@ -12,6 +11,7 @@ from composer.rig.schema import MOST_BYTES
 from composer.rig.select import Selector
 from composer.score.model import Score
 from composer.score.names import groups_of
+from player.engine.clock import time_of
 from player.inputs.load import learn_into, load_map
 from player.inputs.map_file import read_map
 from player.inputs.model import NO_MAP, Control, Map, Stroke
@@ -32,7 +32,7 @@ def takes_since(out: str, began: str) -> list[TakeRow]:
     folder, name = os.path.split(os.path.abspath(out))
     stem = os.path.splitext(name)[0]
     try:
-        since = datetime.fromisoformat(began).timestamp() - 1.0
+        since = time_of(began) - 1.0
     except ValueError:
         since = 0.0
     found = []

@@ -95,6 +95,7 @@ class MapView(QWidget):
         box.setKeyboardTracking(False)
         box.setAccessibleName(f"{key}, per cent of the stroke")
         box.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
+        box.lineEdit().returnPressed.connect(self._window.setFocus)
         box.valueChanged.connect(lambda value: self._change(key, f"{value / 100.0:g}"))
         return box
 

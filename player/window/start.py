@@ -28,8 +28,11 @@ def application() -> QApplication:
 def run(ways: Ways, first: str | None) -> int:
     """Rehearse until the window is closed; returns 0. first: the run to attach to, "" to begin one, None to be asked."""
     app = application()
+    runs = ways.runs() if first is None else ()
+    if not runs and ways.begin is not None:
+        first = ""
     if first is None:
-        choosing = Choosing(ways.runs(), ways.title if ways.begin is not None else "")
+        choosing = Choosing(runs, ways.title if ways.begin is not None else "")
         choosing.exec()
         if choosing.chosen is None:
             return 0

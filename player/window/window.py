@@ -4,7 +4,7 @@ from typing import Any
 
 import numpy as np
 from PySide6.QtCore import QSize, Qt, QTimer
-from PySide6.QtGui import QCloseEvent, QResizeEvent
+from PySide6.QtGui import QCloseEvent, QMouseEvent, QResizeEvent
 from PySide6.QtWidgets import QApplication
 
 from composer.picture import palette
@@ -21,7 +21,7 @@ from player.window.building import Parts, build
 from player.window.chrome import sheet_of
 from player.window.dimming import DIMS, dimmed
 from player.window.foretelling import foretell
-from player.window.keyed import Keyed
+from player.window.keyed import WRITTEN_IN, Keyed
 from player.window.link import Link
 from player.window.parted import MAP, METERS, PREFLIGHT, TAKES
 from player.window.seeing import Seeing
@@ -237,6 +237,9 @@ class RehearseWindow(Keyed, Alarming, Seeing):
             return
         self._unsent = not self.link.say("vent")
         self._vented_s = self._clock()
+        if isinstance(self.focusWidget(), WRITTEN_IN):
+            # What comes next is not to be written into a field.
+            self.setFocus()
 
     def do(self, name: str) -> None:
         """Do what a key or a button asks for, or say why not."""
@@ -349,6 +352,10 @@ class RehearseWindow(Keyed, Alarming, Seeing):
             self._wear()
         if self.parts.banner.isVisible():
             self._place_banner()
+
+    def mousePressEvent(self, event: QMouseEvent) -> None:
+        """A click beside everything takes the keys back from a field."""
+        self.setFocus()
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """The run goes by its rule."""

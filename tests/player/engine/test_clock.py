@@ -2,7 +2,9 @@
 
 import signal
 
-from player.engine.clock import SteadyClock, VirtualClock
+import pytest
+
+from player.engine.clock import SteadyClock, VirtualClock, stamp, time_of, time_of_day
 
 
 def test_a_steady_clock_never_comes_back_before_the_moment():
@@ -41,3 +43,10 @@ def test_a_virtual_clock_can_be_late_as_a_busy_host_is():
     clock = VirtualClock(late=lambda moment: 0.25 if moment > 1.0 else 0.0)
     assert clock.wait_until(1.0) == 1.0
     assert clock.wait_until(2.0) == 2.25
+
+
+def test_a_stamp_is_read_back_to_the_second():
+    assert abs(time_of(stamp()) - time_of_day()) < 5.0
+    assert time_of("1970-01-02T00:00:01Z") == 86401
+    with pytest.raises(ValueError):
+        time_of("yesterday")

@@ -4,6 +4,7 @@ import os
 import signal
 import subprocess
 import sys
+from dataclasses import replace
 
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
@@ -106,6 +107,7 @@ def test_escape_vents_while_somebody_writes_and_other_keys_are_written(room):
     assert state(window) == "playing"
     QTest.keyClick(window.parts.map.low, Qt.Key.Key_Escape)
     until(lambda: state(window) == "vented", "not vented")
+    assert window.focusWidget() is window
 
 
 def test_vent_is_said_from_within_the_keys_handler(room):
@@ -280,6 +282,25 @@ def test_nothing_blinks_but_a_fault(room):
     assert window.parts.banner.property("calm")
     window._blinked()
     assert not window.parts.banner.property("pale")
+
+
+def test_a_run_of_another_user_is_refused_in_words(room, monkeypatch):
+    window = room.begun()
+    in_order(window)
+    run = window.link.client.run
+    monkeypatch.setattr("player.engine.process.peers.peer_uid", lambda connection: os.geteuid() + 1)
+    second = room.attached(run)
+    until(lambda: second.wrong, "is not refused")
+    assert "belongs to another user" in second.parts.banner.text() and second.link.client is None
+    monkeypatch.undo()
+
+
+def test_cautions_are_there_for_worn_and_overhead_rigs_alone(make_rig):
+    plain = make_rig(4)
+    assert words.cautions(plain) == ()
+    assert words.cautions(replace(plain, worn=True)) == words.CAUTIONS["worn"]
+    high = replace(plain, fibers=tuple(replace(one, at_m=(0.0, 0.0, 2.4)) for one in plain.fibers))
+    assert words.cautions(high) == words.CAUTIONS["overhead"]
 
 
 def test_runs_are_listed_in_words(room):
