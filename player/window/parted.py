@@ -46,3 +46,11 @@ def restyle(widget: QWidget) -> None:
     """Look at the style sheet again, as a property has changed."""
     widget.style().unpolish(widget)
     widget.style().polish(widget)
+
+
+def beside_vent(dialog: QWidget, window: Parted, foot: bool = False) -> None:
+    """Put a dialog over the picture, where it covers neither VENT nor the column; `foot`: down to the window's foot."""
+    middle, column = window.parts.middle, window.parts.column
+    high = window.height() - middle.y() - 12 if foot else middle.height()
+    dialog.resize(max(320, middle.width() - column.width() - 12), high)
+    dialog.move(middle.mapToGlobal(middle.rect().topLeft()))

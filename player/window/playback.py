@@ -39,7 +39,10 @@ class Playback(QDialog):
         whole = QVBoxLayout(self)
         whole.addWidget(self.hang, 1)
         whole.addLayout(row)
-        self.resize(round(window.width() * 0.6), round(window.height() * 0.6))
+        middle, column = window.parts.middle, window.parts.column
+        # Over the picture: VENT and the column stay in view.
+        self.resize(max(320, middle.width() - column.width() - 12), middle.height())
+        self.move(middle.mapToGlobal(middle.rect().topLeft()))
         self._path = path
         self.link = Link(self)
         self.link.known.connect(self._known)

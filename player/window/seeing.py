@@ -38,6 +38,9 @@ class Seeing(Parted):
         if now is None or (self.now is not None and now.count == self.now.count and now.state == self.now.state):
             return
         before, self.now = self.now, now
+        if before is not None and before.state == "vented" and now.state != "vented":
+            # That vent is done with.
+            self._vented_s, self._unsent = None, False
         if before is None or before.state != now.state:
             self._stand()
         parts = self.parts
@@ -112,7 +115,7 @@ class Seeing(Parted):
             takes=bool(about.get("takes")),
             holds=bool(about.get("hold_to_run")),
             scored=bool(about.get("duration_s")),
-            again=self.ways.begin is not None,
+            again=self.ways.begin is not None and not self.link.busy,
         )
         for name, button in self.parts.deeds.items():
             why = why_not_now(name, self._standing)

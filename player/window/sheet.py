@@ -4,12 +4,13 @@ from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QDialog, QGridLayout, QLabel, QPushButton, QScrollArea, QVBoxLayout, QWidget
 
 from player.window.actions import sheet
+from player.window.parted import Parted, beside_vent
 
 
 class KeySheet(QDialog):
     """Every key and what it does. Escape vents here too; Enter closes it."""
 
-    def __init__(self, parent: QWidget):
+    def __init__(self, parent: Parted):
         super().__init__(parent)
         self.setWindowTitle("Keys")
         self.setAccessibleName("sheet of keys")
@@ -36,4 +37,4 @@ class KeySheet(QDialog):
         whole = QVBoxLayout(self)
         whole.addWidget(area)
         whole.addWidget(close)
-        self.resize(round(parent.width() * 0.62), round(parent.height() * 0.86))
+        beside_vent(self, parent, foot=True)

@@ -5,11 +5,14 @@ import socket
 
 import pytest
 from mido import Message
+from PySide6.QtCore import QRect, Qt
+from PySide6.QtTest import QTest
 from pythonosc.udp_client import SimpleUDPClient
 
 from composer.load import load_score
 from player.inputs.model import Control, Stroke
 from player.window.map_view import NO_MIDI
+from player.window.sheet import KeySheet
 
 from .conftest import in_order, playing, until
 
@@ -176,3 +179,27 @@ def test_a_map_with_a_fault_is_told_of_and_nothing_is_written(room, files, port)
     window.parts.map.heard(Control("cc", 30, 1))
     window.parts.meters.group_clicked.emit("r.*")
     assert "hand.map.toml:" in window.told.lines[-1] and (files / "hand.map.toml").read_text() == broken
+
+
+def test_after_a_vent_a_held_press_arms_and_goes_on_and_the_vent_is_done_with(room, files, port):
+    window = room.begun(osc=str(port))
+    playing(window)
+    QTest.keyClick(window, Qt.Key.Key_Escape)
+    until(lambda: window.now.state == "vented" and "hold A" in window.parts.banner.text(), "not vented")
+    until(lambda: window.parts.arm.isEnabled(), "cannot be armed again")
+    QTest.keyPress(window, Qt.Key.Key_A)
+    until(lambda: window.now.state == "playing", "does not go on")
+    QTest.keyRelease(window, Qt.Key.Key_A)
+    # Longer than a vent may take to be confirmed.
+    QTest.qWait(900)
+    assert window.now.state == "playing" and window.banner() == ("", False)
+
+
+def test_dialogs_leave_vent_in_view(room):
+    window = room.begun()
+    in_order(window)
+    window.do("keys")
+    sheet = window.findChild(KeySheet)
+    vent = window.parts.vent
+    seen = QRect(vent.mapToGlobal(vent.rect().topLeft()), vent.size())
+    assert sheet.isVisible() and not sheet.geometry().intersects(seen)
