@@ -112,7 +112,8 @@ class LandingLog:
         before = np.maximum(at - 1, 0)
         step = strain[fiber, at] - strain[fiber, before]
         over = strain[fiber, at] - self._goal[segment]
-        back = np.clip(np.divide(over, step, out=np.zeros_like(step), where=step != 0.0), 0.0, 1.0)
+        with np.errstate(over="ignore"):  # a fiber that has all but stopped: beyond 1 whatever it is
+            back = np.clip(np.divide(over, step, out=np.zeros_like(step), where=step != 0.0), 0.0, 1.0)
         return times[at] - back * (times[at] - times[before])
 
 
