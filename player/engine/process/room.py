@@ -79,7 +79,15 @@ def runs() -> tuple[str, ...]:
     sweep()
     at = folder()
     found = [entry for entry in os.scandir(at) if entry.name.endswith(ENDING) and _listens(entry.path)]
-    return tuple(entry.name.removesuffix(ENDING) for entry in sorted(found, key=lambda one: one.stat().st_mtime))
+    return tuple(entry.name.removesuffix(ENDING) for entry in sorted(found, key=_began_s))
+
+
+def _began_s(entry: os.DirEntry[str]) -> float:
+    """When a run's socket was made; one that has ended in between comes last."""
+    try:
+        return entry.stat().st_mtime
+    except OSError:
+        return float("inf")
 
 
 def _listens(path: str) -> bool:
