@@ -170,7 +170,8 @@ def test_each_command_in_the_documents_does_what_it_says(line, folder):
     if started and arguments[0] in ARMS and "--arm" not in arguments:
         arguments.append("--arm")  # at a terminal it asks
     code, out, err = ended(arguments, folder, started)
-    if arguments[0] in ("compose", "rehearse") or (arguments[0] == "preview" and not any(word.startswith("--") for word in arguments)):
+    previews = arguments[0] == "preview" and not any(word.startswith("--") for word in arguments)
+    if arguments[0] in ("compose", "rehearse") or previews:
         assert code == 2
         assert "no screen here for a window" in err
         return

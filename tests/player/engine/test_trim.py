@@ -24,7 +24,7 @@ def added(trim, level):
 
 
 def stood(trim, level, share_of, seconds, *, frozen=False, wanders=0.0, from_s=0.0, late=0):
-    """What is added, tick after tick, to a fiber that stands where `share_of` has it for what is sent, sensed `late` ticks on."""
+    """What is added, tick by tick, to a fiber that stands where `share_of` has it for what is sent, sensed `late` ticks on."""
     by, seen = [], []
     for tick in range(round(seconds / TICK_S)):
         seen.append(share_of(np.interp(level, STRAIGHT, trim._standing[0]) + added(trim, level)))
