@@ -6,9 +6,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.limits.duration import strain_range
+from composer.limits.duration import least_durations, strain_range
 from composer.limits.levels import lasting, past, reaches
 from composer.limits.limit import TOLERANCE, Limit
+from composer.limits.quivering import shaken
 from composer.limits.snag import Snag
 from composer.limits.stretches import join, line_of
 from composer.rig.model import Rig
@@ -54,7 +55,10 @@ def runs_above_half(tracks: Tracks, abilities: Abilities) -> Runs:
 
 
 def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
-    """Every run above half stroke that lasts too long: needs its seconds, has the fiber's longest."""
+    """Every run above half stroke that lasts too long: needs its seconds, has the fiber's longest.
+
+    Time mends none that lasts too long even with its moves at their fastest and nothing left of its holds.
+    """
     runs = runs_above_half(tracks, abilities)
     if not len(runs.run):
         return []
@@ -67,6 +71,7 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
     for r in np.flatnonzero(to_s - from_s > longest * (1.0 + TOLERANCE)):
         pieces = slice(begin[r], ends[r])
         knot = int(runs.segment[pieces][np.argmax(runs.to_s[pieces] - runs.from_s[pieces])])
+        fastest = float(runs.share[pieces] @ _fastest(tracks, abilities, runs.segment[pieces]))
         found.append(
             Snag(
                 kind="hold",
@@ -78,9 +83,19 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
                 unit="s",
                 knot=knot,
                 line=line_of(tracks, knot),
+                mends=bool(fastest <= longest[r] * (1.0 + TOLERANCE)),
             )
         )
     return found
+
+
+def _fastest(tracks: Tracks, abilities: Abilities, segments: Index) -> Array:
+    """The least that each segment can last, (n,); 0 for a hold, and where a quiver's share hangs on how long it lasts."""
+    least = least_durations(tracks, abilities, segments)
+    least[~np.isfinite(least)] = 0.0
+    if (moves := shaken(tracks)) is not None:
+        least[np.isin(segments, moves.segment)] = 0.0
+    return least
 
 
 LIMIT = Limit("hold", "s", "no longer than the fiber's max_hold_s above half of its usable stroke", snags)

@@ -83,6 +83,10 @@ def _air(cause: Cause, names: Sequence[str], at) -> str:
     return f"receiver and compressor have no more air between {at(cause.from_s)} and {at(cause.to_s)}"
 
 
+def _switching(cause: Cause, names: Sequence[str], at) -> str:
+    return f"the valve of {_who(cause, names)} may not switch on again sooner, between {at(cause.from_s)} and {at(cause.to_s)}"
+
+
 def _rest(cause: Cause, names: Sequence[str], at) -> str:
     return f"{_who(cause, names)} has no time left to wait between {at(cause.from_s)} and {at(cause.to_s)}"
 
@@ -101,4 +105,5 @@ def _seconds(value: float) -> str:
 
 _KINDS = {
     "move": _move, "order": _order, "pin": _pin, "hold": _hold, "duty": _duty, "air": _air, "rest": _rest, "rhythm": _rhythm,
+    "switching": _switching,
 }  # fmt: skip

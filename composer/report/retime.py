@@ -2,9 +2,11 @@
 
 import math
 from collections.abc import Iterator, Sequence
+from dataclasses import replace
 from typing import Any
 
 from composer.limits.check import Check
+from composer.limits.snag import Snag
 from composer.report.causes import cause_as_json, cause_in_words, pin_in_words
 from composer.report.check import snag_as_json
 from composer.report.sentences import Teller, named, tell
@@ -65,7 +67,7 @@ def as_json(retiming: Retiming, checked: Check, rig: Rig, tempo: TempoMap) -> di
         "cost": _number(retiming.cost),
         "bound": _number(retiming.bound),
         "solve_s": retiming.solve_s,
-        "snags_left": [snag_as_json(snag, _teller(retiming, rig, tempo)) for snag in checked.snags],
+        "snags_left": [snag_as_json(snag, _teller(retiming, rig, tempo)) for snag in _left(retiming, checked)],
         "stopped": retiming.stopped,
         "pins": [
             {"place": tempo.say_place(at_s), "at_s": at_s, "strokes": pin.force, "says": pin_in_words(pin, at_s, tempo)}
@@ -107,8 +109,17 @@ def sentences(retiming: Retiming, checked: Check, rig: Rig, tempo: TempoMap) -> 
     if checked.snags:
         teller = _teller(retiming, rig, tempo)
         what = "Nothing was changed, so these snags are left:" if retiming.pins_short else "What time cannot mend:"
-        told += [what, *(f"  {tell(snag, teller).says}" for snag in checked.snags)]
+        told.append(what)
+        for snag in _left(retiming, checked):
+            told.append(f"  {tell(snag, teller).says}")
+            # What pins leave no room for is told with the pins.
+            told += [] if retiming.pins_short else [f"    {tell(snag, teller).mends}"]
     return told
+
+
+def _left(retiming: Retiming, checked: Check) -> list[Snag]:
+    """The snags that are left; those that time would mend by themselves, but not beside what else must happen, say so."""
+    return [replace(snag, mends=retiming.mends(snag)) for snag in checked.snags]
 
 
 def _summary(retiming: Retiming) -> str:

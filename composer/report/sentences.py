@@ -274,7 +274,7 @@ def _stroke(snag: Snag, teller: Teller, who: _Who) -> Told:
 
 
 def _switching(snag: Snag, teller: Teller, who: _Who) -> Told:
-    if not snag.mends:
+    if not snag.mends and len(_quivers(teller, snag.knot)):
         needs, has = two(snag.needs, snag.has)
         says = (
             f"{who.verb('has its valve', 'have their valves')} change over {needs} times a second to "
@@ -286,7 +286,8 @@ def _switching(snag: Snag, teller: Teller, who: _Who) -> Told:
         f"{who.verb('has its valve', 'have their valves')} switched on again after {soon} s at {_at(teller, snag.from_s)}; "
         f"it takes {least} s from one start to the next."
     )
-    return Told(says, "Let the moves follow one another without a hold, or begin further apart.")
+    apart = "" if snag.mends else ", with less that must happen at the same time; no other times of these moves mend it"
+    return Told(says, f"Let the moves follow one another without a hold, or begin further apart{apart}.")
 
 
 def _duty(snag: Snag, teller: Teller, who: _Who) -> Told:
@@ -296,6 +297,10 @@ def _duty(snag: Snag, teller: Teller, who: _Who) -> Told:
         f"to {_at(teller, snag.to_s)}; {who.then('bears', 'bear')} {has} s over that span."
     )
     less, _ = two(snag.needs - snag.has, 0.0)
+    if not snag.mends:
+        return Told(
+            says, f"Move {less} s less within that span, or give it a rest there; no other times mend it."
+        )
     return Told(says, f"Let it rest longer within that span, or move {less} s less.")
 
 
@@ -305,6 +310,12 @@ def _hold(snag: Snag, teller: Teller, who: _Who) -> Told:
         f"{who.verb('stays', 'stay')} above half stroke for {needs} s from {_at(teller, snag.from_s)}; "
         f"{who.then('may', 'may')} for {has} s."
     )
+    if not snag.mends:
+        return Told(
+            says,
+            "Let it come below half stroke in between, or go less high: what must happen meanwhile takes longer than that even "
+            "at its fastest, so no amount of time mends it.",
+        )
     return Told(says, f"Bring it below half stroke by {_at(teller, snag.from_s + snag.has)}.")
 
 

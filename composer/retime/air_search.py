@@ -18,7 +18,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.air import refill_L_s, store_L
 from composer.retime.air_account import HAIR_S, Account, account_of
 from composer.retime.air_cuts import Span, overdraft_L
-from composer.retime.cuts import duty_rows, duty_spans
+from composer.retime.cuts import Coiled
 from composer.retime.flow import Budget, Unsolved
 from composer.retime.local import Least, inside
 from composer.retime.resident import Resident
@@ -246,7 +246,7 @@ class Search:
         """The best near some times with which the checker finds nothing, and the rows and forces that hold it there."""
         events = self.stage.events
         self.keep(self.plain)
-        coils: set[tuple[int, int]] = set()
+        coils = Coiled()
         hot = no_rows(events)
         kept, box = store_L(self.rig.supply), 0.02 * self.account.store / self.account.refill
         for _ in range(CLEAN):
@@ -257,14 +257,14 @@ class Search:
             lacks = overdraft_L(self.tracks(full), self.rig, self.abilities)
             # In a window coils are left to whoever looks at the whole.
             whole = self.window is None
-            spans = duty_spans(at_times(self.stage, full), self.rig, self.abilities, coils) if whole else []
+            now = at_times(self.stage, full)
+            more, spans = coils.more(now, self.stage, self.rig, self.abilities) if whole else (no_rows(events), [])
             if lacks <= 0.0 and not spans:
                 break
             if lacks > 0.0:
                 kept -= lacks * 1.1 + 1e-8 * self.account.store
             if spans:
-                coils.update(spans)
-                hot = joined([hot, duty_rows(spans, self.stage.tracks, events, self.rig, self.abilities)])
+                hot = joined([hot, more])
                 self.keep(joined([self.plain, hot]))
         else:
             return None

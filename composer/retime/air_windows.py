@@ -15,7 +15,7 @@ from composer.limits.air import demand, refill_L_s, store_L
 from composer.limits.buckets import level
 from composer.retime.air_cuts import Span, overdrawn
 from composer.retime.air_search import Found, Search
-from composer.retime.cuts import duty_rows, duty_spans
+from composer.retime.cuts import Coiled
 from composer.retime.flow import Budget
 from composer.retime.local import Least
 from composer.retime.rows import Rows, joined, no_rows
@@ -49,18 +49,17 @@ def by_windows(
     events, full = stage.events, bottom.shift_s
     dual, air_dual = bottom.dual, np.empty(0)
     air, hot = no_rows(events), no_rows(events)
-    known: set[tuple[int, int]] = set()
+    known = Coiled()
     wider, tries = 1.0, next(tries for most, tries in TRIES if len(full) <= most)
     for number in range(ROUNDS):
         now = at_times(stage, full)
         spans = overdrawn(now, rig, abilities) if number else spans
-        coils = duty_spans(now, rig, abilities, known)
+        more, coils = known.more(now, stage, rig, abilities)
         if not spans and not coils:
             forces = np.concatenate((dual, air_dual))
             return Found(replace(bottom, shift_s=full, cost=cost(stage.terms, full), dual=forces), joined([hot, air]))
-        known.update(coils)
-        hot = joined([hot, duty_rows(coils, stage.tracks, events, rig, abilities)])
-        dual = np.concatenate((dual, np.zeros(len(coils))))
+        hot = joined([hot, more])
+        dual = np.concatenate((dual, np.zeros(len(more.least))))
         kept = joined([rows, hot])
         places = spans + [(float(now.time_s[first]), float(now.time_s[last + 1])) for first, last in coils]
         done, missed = np.zeros(len(full), dtype=bool), False

@@ -1,6 +1,6 @@
-"""Cutting planes (Kelley 1960): rows for the spans that ask too much of a coil, added when the times at hand break them."""
+"""Cutting planes (Kelley 1960): rows for what is asked too much of a coil, added when the times at hand break them."""
 
-from dataclasses import replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -10,7 +10,9 @@ from composer.limits.buckets import level
 from composer.limits.coil import Coils, coils_of, on_times
 from composer.limits.duty import OnTime, on_time
 from composer.retime.events import Events
-from composer.retime.rows import DUTY_ROW, Rows, Sums, no_rows, sum_rows
+from composer.retime.rows import DUTY_ROW, Rows, Sums, joined, no_rows, sum_rows
+from composer.retime.stage import Stage
+from composer.retime.switches import may_follow_too_soon, switch_rows, too_soon
 from composer.rig.model import Rig
 from composer.tracks import Tracks
 
@@ -25,6 +27,26 @@ AT_ONCE = 40
 
 EXACT = 1e-9
 """Relative: what overdraws a store by less is the solver's rounding."""
+
+
+@dataclass(slots=True)
+class Coiled:
+    """Rows over coils that a search has asked for so far: spans of on-time, and starts that must stay apart."""
+
+    spans: set[Span] = field(default_factory=set)
+    starts: set[Span] = field(default_factory=set)
+
+    def more(self, now: Tracks, stage: Stage, rig: Rig, abilities: Abilities) -> tuple[Rows, list[Span]]:
+        """Rows that the times at hand break, and the first and last segment that each speaks of, those of starts last."""
+        spans = duty_spans(now, rig, abilities, self.spans)
+        quick = may_follow_too_soon(stage.tracks, stage.least_s, rig)
+        starts = too_soon(now, rig, abilities, self.starts) if quick else []
+        if not spans and not starts:
+            return no_rows(stage.events), []
+        self.spans.update(spans)
+        self.starts.update(starts)
+        apart = switch_rows(starts, stage.tracks, stage.events, rig)
+        return joined([duty_rows(spans, stage.tracks, stage.events, rig, abilities), apart]), spans + starts
 
 
 def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) -> list[Span]:

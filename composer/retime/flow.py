@@ -116,13 +116,17 @@ def _fresh(values: NDArray[np.generic]) -> NDArray[np.bool_]:
     return np.append(True, values[1:] != values[:-1]) if len(values) else np.zeros(0, dtype=bool)
 
 
+_ENDLESS = (highspy.HighsModelStatus.kUnbounded, highspy.HighsModelStatus.kUnboundedOrInfeasible)
+"""What HiGHS calls a circulation without an optimum, which is a programme that no shifts keep."""
+
+
 class Circulation:
     """A circulation that stays in the solver: nodes and arcs may be added, and it is solved again from where it was."""
 
     def __init__(self, arcs: Arcs, wide: Wide, nodes: int):
         """C arcs and W wide rows over some nodes."""
         self.few, self.group, self.share = merged(arcs, nodes)
-        self.most = arcs.most.copy()
+        self.most, self.added = arcs.most.copy(), False
         self.nodes, self.columns = nodes, len(self.few.least_s) + len(wide.least_s)
         self.solver = quiet()
         self.solver.passModel(_model(self.few, wide, nodes))
@@ -138,6 +142,7 @@ class Circulation:
             start, index = matrix.indptr[:-1].astype(np.int32), matrix.indices.astype(np.int32)
             self.solver.addCols(len(least_s), -least_s, lowest, most, matrix.nnz, start, index, matrix.data)
             self.columns += len(least_s)
+        self.added = True
         # What was the optimum still balances, so the primal simplex goes on from there.
         self.solver.setOptionValue("simplex_strategy", 4)
 
@@ -167,7 +172,13 @@ class Circulation:
             solver.setOptionValue("time_limit", solver.getRunTime() + left)
         solver.run()
         status = solver.getModelStatus()
-        if status in (highspy.HighsModelStatus.kUnbounded, highspy.HighsModelStatus.kUnboundedOrInfeasible):
+        if status in _ENDLESS and self.added:
+            # From where it was, the primal simplex now and then takes a far bound for none: only a fresh start proves it.
+            solver.clearSolver()
+            solver.setOptionValue("simplex_strategy", 1)
+            solver.run()
+            status = solver.getModelStatus()
+        if status in _ENDLESS:
             return None
         if status != highspy.HighsModelStatus.kOptimal:
             raise Unsolved(status.name, solver.modelStatusToString(status), tried)

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from composer.retime.events import Events
 from composer.retime.flow import ENDLESS, Budget
 from composer.retime.parts import Parts
+from composer.retime.pushed import pushed
 from composer.retime.reach import reached
 from composer.retime.rows import Rows
 from composer.retime.terms import Terms, contract, cost, spread, tilted
@@ -66,6 +67,9 @@ def least_cost(
     solved = not free.any()
     by_rhythm = bool((terms.behind[: events.hits] >= 0).any())
     priced, most = tilted(events, terms)
+    if solved and np.isinf(slack_price) and (there := pushed(events, rows, priced)) is not None:
+        shift, dual = there
+        return Least(shift, cost(terms, shift), float(dual @ rows.least) / most, dual, shift != 0.0)
     while True:
         lack = rows.least - rows.matrix @ shift
         broken = np.flatnonzero(lack > BROKEN_S)

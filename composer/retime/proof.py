@@ -15,7 +15,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.duration import acceleration_time_s
 from composer.limits.quivering import shaken
 from composer.retime.events import Events
-from composer.retime.rows import ABOVE_ROW, AIR_ROW, DUTY_ROW, HOLD_ROW, MOVE_ROW, ORDER_ROW, PIN_ROW, Rows
+from composer.retime.rows import ABOVE_ROW, AIR_ROW, DUTY_ROW, HOLD_ROW, MOVE_ROW, ORDER_ROW, PIN_ROW, SWITCH_ROW, Rows
 from composer.retime.terms import Terms
 from composer.tracks import MOVE, Tracks, fiber_of
 
@@ -30,6 +30,7 @@ FORCE = 1e-9
 
 KINDS = {
     MOVE_ROW: "move", HOLD_ROW: "rest", ORDER_ROW: "order", PIN_ROW: "pin", ABOVE_ROW: "hold", DUTY_ROW: "duty", AIR_ROW: "air",
+    SWITCH_ROW: "switching",
 }  # fmt: skip
 """What a row is called; "rhythm" is what a hit without a row of its own goes by."""
 
@@ -51,7 +52,8 @@ class Proof:
 
 @dataclass(frozen=True, slots=True)
 class Cause:
-    """What holds a moved hit: `kind` is one of "move", "order", "pin", "hold", "duty", "air", "rest" and "rhythm".
+    """What holds a moved hit: `kind` is one of "move", "order", "pin", "hold", "duty", "air", "switching",
+    "rest" and "rhythm".
 
     fiber, line: whose speed, hold or coil, and the entry's line; None and 0 where it is no fiber's
     from_s, to_s: instants as written that it lies between
@@ -196,7 +198,7 @@ class _Teller:
                 return self.of_row(behind, force)
             return self._move(knot, force, self.row_of[HOLD_ROW].get(knot - 1))
         from_s, to_s = self._between(row)
-        own = kind in (ABOVE_ROW, DUTY_ROW, HOLD_ROW) and knot >= 0
+        own = kind in (ABOVE_ROW, DUTY_ROW, SWITCH_ROW, HOLD_ROW) and knot >= 0
         pin = knot if kind == PIN_ROW else -1
         fiber, line = (int(self.fiber[knot]), int(proof.tracks.line[knot])) if own else (None, 0)
         return Cause(KINDS[kind], fiber, from_s, to_s, 0.0, "", None, pin, line, force)

@@ -7,12 +7,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
+from composer.limits.snag import Snag
 from composer.retime.apply import retimed
 from composer.retime.flow import Budget
 from composer.retime.memory import Memory
 from composer.retime.pins import Chain, chains_too_long
 from composer.retime.polish import polish
-from composer.retime.proof import Proof
+from composer.retime.proof import KINDS, Proof
+from composer.retime.rows import AIR_ROW
 from composer.retime.shrink import Shrunk, factor_that_fits, scaled
 from composer.retime.solving import Answer, answer
 from composer.retime.stage import Stage, at_times, durations_to_keep, stage_of
@@ -75,6 +77,19 @@ class PinsShort:
     factor: float
 
 
+@dataclass(frozen=True, slots=True)
+class Hopeless:
+    """What no times keep, pins or none, given what else must happen meanwhile: a snag of that kind and fiber is left there.
+
+    kind: "hold", "duty", "switching" or "air"; fiber: None for air; from_s, to_s: instants as retimed that it is about
+    """
+
+    kind: str
+    fiber: int | None
+    from_s: float
+    to_s: float
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Retiming:
     """What retiming came to; times in seconds, cost and bound in stroke-seconds (nan where pins leave no answer).
@@ -102,6 +117,14 @@ class Retiming:
     proof: Proof | None = field(repr=False)
     memory: Memory = field(repr=False)
     stopped: bool = False
+    hopeless: tuple[Hopeless, ...] = ()
+
+    def mends(self, snag: Snag) -> bool:
+        """Whether time alone can mend a snag that is left in the new tracks."""
+        return snag.mends and not any(
+            one.kind == snag.kind and one.fiber == snag.fiber and one.from_s <= snag.to_s and one.to_s >= snag.from_s
+            for one in self.hopeless
+        )
 
 
 def retime(
@@ -270,9 +293,21 @@ def _told(
         pins_s=pins_s,
         memory=stage.memory,
         stopped=found is not None and found.stopped,
+        hopeless=() if found is None else _hopeless(found, prepared, fiber, now_there.time_s),
         proof=_proof(stage, found, shift, abilities, len(pins_s)),
         **_warp(was, now, tracks.duration_s, new.duration_s),
     )
+
+
+def _hopeless(found: Answer, prepared: Tracks, fiber: Index, time_s: Array) -> tuple[Hopeless, ...]:
+    told = []
+    for kind, knot in found.hopeless:
+        if kind == AIR_ROW or knot < 0:
+            told.append(Hopeless(KINDS[kind], None, 0.0, np.inf))
+        else:
+            to_s = float(time_s[knot + 1]) if knot + 1 < prepared.first[fiber[knot] + 1] else np.inf
+            told.append(Hopeless(KINDS[kind], int(fiber[knot]), float(time_s[knot]), to_s))
+    return tuple(told)
 
 
 def _proof(stage: Stage, found: Answer | None, shift: Array, abilities: Abilities, pins: int) -> Proof | None:

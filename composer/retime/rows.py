@@ -12,8 +12,8 @@ from composer.tracks import HOLD, SAME_INSTANT_S, STEP, SUDDEN, Tracks
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-MOVE_ROW, HOLD_ROW, ORDER_ROW, PIN_ROW, ABOVE_ROW, DUTY_ROW, AIR_ROW = range(7)
-"""What a row stands for."""
+MOVE_ROW, HOLD_ROW, ORDER_ROW, PIN_ROW, ABOVE_ROW, DUTY_ROW, AIR_ROW, SWITCH_ROW = range(8)
+"""What a row stands for; those from ABOVE_ROW on are given up where no times keep them."""
 
 ALREADY = 4e-7
 """A move that lasts at least this share less than it must is no snag (the checker allows 1e-6 of a rate or acceleration)."""

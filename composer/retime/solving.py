@@ -9,13 +9,14 @@ from composer.limits.abilities import Abilities
 from composer.retime.air_cuts import Span, overdrawn, plainly_enough, share_rows, whole_rows
 from composer.retime.air_search import Found, better
 from composer.retime.air_windows import by_windows
-from composer.retime.cuts import duty_rows, duty_spans
+from composer.retime.cuts import Coiled, duty_rows, duty_spans
 from composer.retime.flow import ENDLESS, Budget, Unsolved
 from composer.retime.local import Least, least_cost
 from composer.retime.parts import Parts
 from composer.retime.polish import polish
-from composer.retime.rows import ABOVE_ROW, AIR_ROW, Rows, joined, no_rows, picked
+from composer.retime.rows import ABOVE_ROW, AIR_ROW, PIN_ROW, SWITCH_ROW, Rows, joined, no_rows, picked
 from composer.retime.stage import Stage, at_times
+from composer.retime.switches import kept_apart, shut_rows, switch_rows
 from composer.retime.terms import cost
 from composer.rig.model import Rig
 
@@ -32,6 +33,8 @@ AIR_ROUNDS = 40
 WINDOWS_FROM = 300
 """Scores of more events than this are searched place by place where they keep the clock."""
 
+Hopeless = tuple[int, int]
+
 GIVEN_UP_S = 1e-6
 """A row that even at a high price stays broken by more than this is one that no times can keep."""
 
@@ -41,12 +44,14 @@ class Answer:
     """The optimum found, the rows that it was found with, and how many rows no times could keep.
 
     stopped: whether time was up, so that these are the best times known and not the best there are
+    hopeless: the rows given up that no times keep even where no pin stands: kind and segment
     """
 
     least: Least
     rows: Rows
     given_up: int
     stopped: bool = False
+    hopeless: tuple[Hopeless, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -62,6 +67,7 @@ class _Bottom:
     given_up: int
     no_air: bool
     spans: list[Span]
+    hopeless: tuple[Hopeless, ...]
 
 
 def answer(
@@ -87,7 +93,7 @@ def answer(
     if bottom is None:
         return None
     if not bottom.spans:
-        return Answer(bottom.least, bottom.rows, bottom.given_up)
+        return Answer(bottom.least, bottom.rows, bottom.given_up, False, bottom.hopeless)
     found, stopped = Found(bottom.least, no_rows(stage.events)), False
     try:
         best, stopped = _best(stage, rig, abilities, bottom, budget)
@@ -98,7 +104,7 @@ def answer(
         best, stopped = None, True
     found = found if best is None else best
     least = replace(found.least, bound=bottom.least.bound)
-    return Answer(least, joined([bottom.rows, found.shares]), bottom.given_up, stopped)
+    return Answer(least, joined([bottom.rows, found.shares]), bottom.given_up, stopped, bottom.hopeless)
 
 
 def _best(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, budget: Budget) -> tuple[Found | None, bool]:
@@ -129,30 +135,39 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
     """Cutting planes, each true for all times, until the times at hand break none of them."""
     events = stage.events
     rows, given_up, no_air = stage.rows, 0, False
-    coils: set[tuple[int, int]] = set()
+    hopeless: list[Hopeless] = []
     air: set[tuple[int, int]] = set()
     least, spans, parts = None, [], Parts()
+    # Below what was proven before a wait that had been opened was held to its coil: it might have stayed shut instead.
+    proven = np.inf
+    apart = kept_apart(stage.tracks, stage.least_s, rig, abilities)
     # What is asked too much of as written will most likely bind.
-    coils.update(hot := duty_spans(stage.tracks, rig, abilities, coils))
-    rows = joined([rows, duty_rows(hot, stage.tracks, events, rig, abilities)])
+    hot = duty_spans(stage.tracks, rig, abilities, set())
+    coils = Coiled(set(hot), set(apart))
+    coil_rows = [switch_rows(apart, stage.tracks, events, rig), duty_rows(hot, stage.tracks, events, rig, abilities)]
+    rows = joined([rows, *coil_rows]) if apart or hot else rows
     for number in range(ROUNDS):
         budget.say(f"round {number + 1}: {len(rows.least)} rows")
         least = least_cost(events, rows, stage.terms, free, whole, budget, parts=parts)
         if least is None:
             parts = Parts()
-            kept = _keepable(stage, rows, whole, budget)
-            dropped = len(rows.least) - len(kept.least)
-            if not dropped:
+            lost = _unkeepable(stage, rows, whole, budget)
+            if not lost.any():
                 return None
-            no_air |= np.count_nonzero(kept.kind == AIR_ROW) < np.count_nonzero(rows.kind == AIR_ROW)
-            rows, given_up = kept, given_up + dropped
+            hopeless += _hopeless(stage, rows, lost, whole, budget)
+            no_air |= bool((rows.kind[lost] == AIR_ROW).any())
+            rows, given_up = picked(rows, ~lost), given_up + int(np.count_nonzero(lost))
             continue
         free = least.free
         now = at_times(stage, least.shift_s)
-        new = duty_spans(now, rig, abilities, coils)
-        coils.update(new)
-        if new:
-            rows = joined([rows, duty_rows(new, stage.tracks, events, rig, abilities)])
+        new, pairs = coils.more(now, stage, rig, abilities)
+        if len(new.least):
+            opened = new.kind == SWITCH_ROW
+            if opened.any():
+                proven, parts = min(proven, least.bound), Parts()
+                shut = shut_rows(pairs[len(pairs) - np.count_nonzero(opened) :], stage.tracks, events)
+                new = joined([picked(new, ~opened), _cheaper(stage, rows, picked(new, opened), shut, free, budget)])
+            rows = joined([rows, new])
             continue
         enough = no_air or plainly_enough(now, stage.moves_L, rig, abilities)
         spans = [] if enough else overdrawn(now, rig, abilities)
@@ -162,7 +177,18 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
         rows = joined([rows, more])
     if least is None or len(least.dual) != len(rows.least):
         least = least_cost(events, rows, stage.terms, free, whole, budget)
-    return None if least is None else _Bottom(least, rows, given_up, no_air, spans)
+    if least is None:
+        return None
+    return _Bottom(replace(least, bound=min(least.bound, proven)), rows, given_up, no_air, spans, tuple(hopeless))
+
+
+def _cheaper(stage: Stage, rows: Rows, one: Rows, other: Rows, free: Flags, budget: Budget) -> Rows:
+    """Of two sets of further rows the one that costs less."""
+    costs = []
+    for more in (one, other):
+        least = least_cost(stage.events, joined([rows, more]), stage.terms, free, False, budget)
+        costs.append(np.inf if least is None else least.cost)
+    return other if costs[1] < costs[0] else one
 
 
 def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, budget: Budget) -> tuple[Found, bool] | None:
@@ -173,7 +199,7 @@ def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, bu
         now = at_times(stage, least.shift_s)
         spans = overdrawn(now, rig, abilities)
         if not spans:
-            return Found(least, shares), not duty_spans(now, rig, abilities, set())
+            return Found(least, shares), not Coiled().more(now, stage, rig, abilities)[1]
         more = joined([shares, share_rows(spans, now, events, least.shift_s, rig, abilities)])
         found = least_cost(events, joined([bottom.rows, more]), stage.terms, least.free, False, budget, parts=parts)
         if found is None:
@@ -188,13 +214,22 @@ def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, bu
     return Found(least, shares), False
 
 
-def _keepable(stage: Stage, rows: Rows, whole: bool, budget: Budget) -> Rows:
-    """The rows less those over more than two events that stay broken at a high price."""
+def _unkeepable(stage: Stage, rows: Rows, whole: bool, budget: Budget) -> Flags:
+    """(M,) the rows beyond moves, holds, order and pins that stay broken at a high price, where they are what breaks."""
     least = least_cost(stage.events, rows, stage.terms, None, whole, budget, _price(stage))
     if least is None:
-        return rows
-    broken = (rows.kind >= ABOVE_ROW) & (rows.least - rows.matrix @ least.shift_s > GIVEN_UP_S)
-    return picked(rows, ~broken)
+        return np.zeros(len(rows.least), dtype=bool)
+    return (rows.kind >= ABOVE_ROW) & (rows.least - rows.matrix @ least.shift_s > GIVEN_UP_S)
+
+
+def _hopeless(stage: Stage, rows: Rows, lost: Flags, whole: bool, budget: Budget) -> list[Hopeless]:
+    """Those of the rows given up that would be given up without any pin too."""
+    free = rows.kind != PIN_ROW
+    if not free.all():
+        without = np.zeros(len(free), dtype=bool)
+        without[free] = _unkeepable(stage, picked(rows, free), whole, budget)
+        lost = lost & without
+    return list(zip(rows.kind[lost].tolist(), rows.knot[lost].tolist(), strict=True))
 
 
 def _price(stage: Stage) -> float:

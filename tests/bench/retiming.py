@@ -9,6 +9,7 @@ import platform
 import resource
 import sys
 import time
+from collections import Counter
 from dataclasses import replace
 from pathlib import Path
 
@@ -200,18 +201,23 @@ def edited() -> None:
     """Two lines: one number of Estuary changed, over its first retiming; the same with the text read and expanded again."""
     loaded = load_score(str(Path(__file__).parents[2] / "scores_demo" / "estuary.score"))
     tracks = loaded.tracks
-    began = time.process_time()
-    first = Retimer.of(tracks, loaded.abilities, loaded.rig, Choices(loaded.pins_s, give_s=loaded.pins_give_s))
-    first_s = time.process_time() - began
+    first_s = np.inf
+    for _ in range(3):
+        began = time.process_time()
+        first = Retimer.of(tracks, loaded.abilities, loaded.rig, Choices(loaded.pins_s, give_s=loaded.pins_give_s))
+        first_s = min(first_s, time.process_time() - began)
     again = []
     whole = np.flatnonzero((tracks.manner[:-1] == MOVE) & (tracks.shape[:-1] >= 0) & (tracks.manner[1:] == HOLD))
     for k in whole[:: max(1, len(whole) // 9)]:
         curve = tracks.curve.copy()
         curve[k, 1:] *= 0.9
         curve[k + 1, 0] = curve[k].sum()
-        began = time.process_time()
-        first.edited(replace(tracks, curve=curve))
-        again.append(time.process_time() - began)
+        best = np.inf
+        for _ in range(3):
+            began = time.process_time()
+            first.edited(replace(tracks, curve=curve))
+            best = min(best, time.process_time() - began)
+        again.append(best)
     path = str(Path(__file__).parents[2] / "scores_demo" / "estuary.score")
     began = time.process_time()
     load_score(path)
@@ -231,20 +237,25 @@ def with_cuts(moves: int, fibers: int) -> None:
     ):
         rig = make_rig.__wrapped__()(fibers, **more)
         abilities = abilities_of(rig)
-        asked = [snag.kind for snag in check(tracks, rig, abilities).snags]
+        asked = Counter(snag.kind for snag in check(tracks, rig, abilities).snags)
         best = np.inf
         for _ in range(3):
             began = time.process_time()
             found = retime(tracks, abilities, rig, np.empty(0))
             best = min(best, time.process_time() - began)
         times[name], base = best, base or found.cost
-        left = check(found.tracks, rig, abilities)
+        left = Counter(snag.kind for snag in check(found.tracks, rig, abilities).snags)
         kind = DUTY_ROW if name == "duty" else AIR_ROW
         binds = int(np.count_nonzero((found.proof.rows.kind == kind) & (found.proof.dual > 1e-9)))
         print(f"  {tracks.moves} moves, {name}: {best / times['plenty']:.2f} x the time with plenty; "
-              f"{asked.count(name)} snags of it as written, {binds} rows of it hold; "
+              f"as written {asked.total()} snags ({_counted(asked)}), {binds} rows of it hold; "
               f"cost {found.cost:.6g}, {found.cost - base:.3g} more, bound {found.bound:.6g}; "
-              f"{sum(snag.kind == name for snag in left.snags)} snags of it left")  # fmt: skip
+              f"{left.total()} snags left{' (' + _counted(left) + ')' if left else ''}")  # fmt: skip
+
+
+def _counted(kinds: Counter) -> str:
+    """How many of each kind of snag, as words."""
+    return ", ".join(f"{count} {kind}" for kind, count in sorted(kinds.items()))
 
 
 def one_path(moves: int) -> None:
@@ -266,9 +277,11 @@ def one_path(moves: int) -> None:
         np.array([0] * (count - 1) + [-1], np.int8), np.ones(count, np.int32), np.ones(count, np.int32), times[-1],
     )  # fmt: skip
     retime(tracks, abilities, rig, np.empty(0))
-    began = time.process_time()
-    ours = float(retime(tracks, abilities, rig, np.empty(0)).tracks.time_s[-1])
-    ours_s = time.process_time() - began
+    ours_s = np.inf
+    for _ in range(5):
+        began = time.process_time()
+        ours = float(retime(tracks, abilities, rig, np.empty(0)).tracks.time_s[-1])
+        ours_s = min(ours_s, time.process_time() - began)
 
     def theirs(points: int) -> tuple[float, float]:
         began, lasts = time.process_time(), 0.0
@@ -291,6 +304,7 @@ def one_path(moves: int) -> None:
     for points in (5, 9, 17, 33, 65, 129, 257):
         lasts, theirs_s = theirs(points)
         if abs(lasts / ours - 1.0) <= 1e-3:
+            theirs_s = min(theirs_s, theirs(points)[1], theirs(points)[1])
             break
     print(f"one path of {count - 1} moves: toppra / ours = {theirs_s / ours_s:.0f} at {points} points a move "
           f"({abs(lasts / ours - 1.0):.1e} apart in duration)")  # fmt: skip
@@ -317,7 +331,7 @@ def compare(tracks: Tracks, abilities, rig, keep: str) -> None:
         began = time.process_time()
         ours = retime(tracks, abilities, rig, np.empty(0), keep)
         best = min(best, time.process_time() - began)
-    theirs_s, theirs = by_hand(tracks, abilities, keep)
+    theirs_s, theirs = min(by_hand(tracks, abilities, keep) for _ in range(2))
     print(f"  {keep}: ours / whole solve = {best / theirs_s:.3f} ({best:.2f} s, {theirs_s:.2f} s); "
           f"cost {ours.cost:.9g}, apart {abs(ours.cost - theirs) / theirs:.1e}; bound {ours.bound:.9g}")  # fmt: skip
 

@@ -4,13 +4,11 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from hypothesis import assume, given, settings
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from composer.limits.abilities import abilities_of
 from composer.limits.check import check
-from composer.limits.duration import least_durations
-from composer.limits.hold import runs_above_half
 from composer.retime.retiming import retime
 
 from .scores import random_score, tracks_of
@@ -178,19 +176,6 @@ def test_a_section_may_keep_rhythm_while_the_rest_keeps_the_clock(make_rig):
 
 @SOME
 @given(seeds, keeps)
-def test_no_snag_is_left(make_rig, seed, keep):
-    rig = make_rig(4, accel=(None, 3.0)[seed % 2], max_hold_s=(0.0, 4.0)[seed // 2 % 2], duty=0.6, duty_burst_s=3.0)
-    made = random_score(seed, pins=False)
-    abilities = abilities_of(rig)
-    runs, least = runs_above_half(made.tracks, abilities), least_durations(made.tracks, abilities)
-    # Moves that are above half stroke for too long at their fastest, one after another, no time mends.
-    assume(np.bincount(runs.run, runs.share * least[runs.segment]).max(initial=0.0) <= (rig.fibers[0].max_hold_s or np.inf))
-    found = do(rig, made.tracks, made.pins_s, keep, shrink=True)
-    assert check(found.tracks, rig, abilities).snags == ()
-
-
-@SOME
-@given(seeds, keeps)
 def test_nothing_moves_where_there_was_no_snag(make_rig, seed, keep):
     rig = make_rig(4, fill=5.0, exhaust=5.0)
     made = random_score(seed, sudden=False)
@@ -225,8 +210,9 @@ def test_a_faster_rig_never_costs_more(make_rig, seed, keep, factor):
 def test_scaling_all_times_and_rates_by_one_factor_scales_the_cost(make_rig, seed, keep, factor):
     made = random_score(seed)
     scaled = replace(made.tracks, time_s=made.tracks.time_s * factor, duration_s=made.tracks.duration_s * factor)
+    rig = make_rig(4, fill=0.6 / factor, exhaust=0.3 / factor, max_switch_Hz=50.0 / factor)
     plain = do(make_rig(4), made.tracks, made.pins_s, keep)
-    found = do(make_rig(4, fill=0.6 / factor, exhaust=0.3 / factor), scaled, made.pins_s * factor, keep)
+    found = do(rig, scaled, made.pins_s * factor, keep)
     assert bool(plain.pins_short) == bool(found.pins_short)
     if not plain.pins_short:
         assert found.cost == pytest.approx(plain.cost * factor, rel=1e-6, abs=1e-8)
