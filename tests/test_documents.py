@@ -21,7 +21,7 @@ ROOT = Path(__file__).parent.parent
 PAGES = [ROOT / "README.md", ROOT / "DEVELOPERS.md", *sorted(ROOT.glob("*/manual/*.md"))]
 DRAWCORD = [sys.executable, "-m", "player.commands.main"]
 
-ENDLESS = {"play", "device", "live", "rehearse"}
+ENDLESS = {"play", "device", "live"}
 """Commands that go on until they are told to stop."""
 
 ARMS = {"play", "live"}

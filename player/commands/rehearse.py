@@ -38,11 +38,13 @@ def command(
     Exit code: 0 the window was closed; 1 the rig cannot do the score; 2 the call or a file is wrong, or there is no screen.
     """
     from composer.commands.screen import has_screen
-    from composer.faults import fault
-    from player.commands import rehearse_ways
 
     if not has_screen():
         raise click.UsageError("there is no screen here for a window; 'drawcord play', 'live' and 'attach' do without one.")
+    # Here, so that where there is no screen the answer comes at once.
+    from composer.faults import fault
+    from player.commands import rehearse_ways
+
     runs = rehearse_ways.names()
     if score is None:
         wrong = next(
