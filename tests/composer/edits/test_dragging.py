@@ -196,7 +196,7 @@ def test_a_phrase_in_many_places_lights_them_all(make_rig):
     assert set(edit.moves.line.tolist()) == {3, 4}
 
 
-@settings(max_examples=120, deadline=None, suppress_health_check=list(HealthCheck))
+@settings(max_examples=30, deadline=None, suppress_health_check=list(HealthCheck))
 @given(text=scores(), pick=st.integers(0, 10**6), by=st.floats(-2.0, 2.0), grid=st.sampled_from(GRIDS), free=st.booleans())
 def test_a_drag_rewrites_one_number_and_what_is_read_back_is_what_was_lit(make_rig, text, pick, by, grid, free):
     rig = make_rig(4)
@@ -238,7 +238,7 @@ def test_a_drag_rewrites_one_number_and_what_is_read_back_is_what_was_lit(make_r
         assert all(any((f, n) == one[:2] and abs(a - one[2]) + abs(b - one[3]) < 1e-9 for f, n, a, b in lit) for one in still)
 
 
-@settings(max_examples=60, deadline=None, suppress_health_check=list(HealthCheck))
+@settings(max_examples=20, deadline=None, suppress_health_check=list(HealthCheck))
 @given(text=scores(), pick=st.integers(0, 10**6), by=st.floats(-0.5, 0.5))
 def test_off_the_grid_a_line_lands_within_a_thousandth_of_a_count_or_a_ninety_sixth(make_rig, text, pick, by):
     rig = make_rig(4)
@@ -259,7 +259,7 @@ def test_off_the_grid_a_line_lands_within_a_thousandth_of_a_count_or_a_ninety_si
     assert min(abs(end - held.at_s - by) for end in after) < 1.5 * 60 / 45 / 96
 
 
-@settings(max_examples=50, deadline=None, suppress_health_check=list(HealthCheck))
+@settings(max_examples=20, deadline=None, suppress_health_check=list(HealthCheck))
 @given(text=scores(), pick=st.integers(0, 10**6), strain=st.floats(0.0, 0.3))
 def test_a_strain_dragged_is_reached_to_a_step_of_its_unit(make_rig, text, pick, strain):
     rig = make_rig(4)

@@ -136,7 +136,7 @@ def test_where_there_is_nothing_to_take_in_that_is_said(make_rig):
     assert "shrink" in shrunk.say
 
 
-@settings(max_examples=40, deadline=None, suppress_health_check=list(HealthCheck))
+@settings(max_examples=12, deadline=None, suppress_health_check=list(HealthCheck))
 @given(text=scores())
 def test_any_retiming_taken_in_expands_to_the_retimed_times(make_rig, text):
     rig = make_rig(4, fill=0.35, exhaust=0.25, receiver_L=1000.0)

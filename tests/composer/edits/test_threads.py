@@ -78,7 +78,7 @@ def test_in_the_demo_scores_every_moving_segment_lies_within_what_its_lines_move
             assert np.any((found.from_s[mine] <= tracks.time_s[k] + 1e-9) & (found.to_s[mine] >= tracks.time_s[k + 1] - 1e-9))
 
 
-@settings(max_examples=60, deadline=None, suppress_health_check=list(HealthCheck))
+@settings(max_examples=25, deadline=None, suppress_health_check=list(HealthCheck))
 @given(text=scores(), at=st.floats(0.0, 60.0), fiber=st.integers(0, 3))
 def test_whatever_is_found_at_an_instant_is_what_moves_then(make_rig, text, at, fiber):
     try:

@@ -27,7 +27,7 @@ def gap(make_rig, seed: int, keep: str, effort: float) -> float | None:
 
 
 @pytest.mark.parametrize("keep", KEEPS)
-@pytest.mark.parametrize("seed", [1, 2, 5, 7, 8, 12, 15, 19])
+@pytest.mark.parametrize("seed", [2, 8, 15])
 def test_no_long_search_finds_times_cheaper_by_a_fiftieth(make_rig, seed, keep):
     assert gap(make_rig, seed, keep, 0.5) <= MOST
 
