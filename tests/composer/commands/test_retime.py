@@ -72,7 +72,8 @@ def test_when_time_is_up_the_best_that_is_known_is_told_as_such(demo, monkeypatc
     import time
 
     ticks = iter(range(0, 1_000_000, 100))
-    path = score(demo, "  reed.1  up\n")
+    # Two hits in their rhythm: what one pass forward in time does not prove by itself.
+    path = score(demo, "  reed.1  up\n  reed.2  up after 1\n", "keep rhythm\n")
     with monkeypatch.context() as patched:
         patched.setattr(time, "perf_counter", lambda: float(next(ticks)))
         found = run(path, "--limit", "50")
