@@ -188,11 +188,25 @@ def _check_channels(document: Document, hung: list[Hung], stock: Stock) -> None:
         other = seen.setdefault((driver, item.channel), item)
         if other is not item and (item.path, other.path) not in blamed:
             blamed.add((item.path, other.path))
-            used = {channel for board, channel in seen if board == driver}
-            free = next(n for n in range(len(used) + 1) if n not in used)
             both = f"{item.name} and {other.name} (line {document.line(other.path)})"
             found = f"{both} are both on channel {item.channel} of driver '{driver}'"
-            document.at_value(key, found, "a channel of its own for every fiber", f"the first free channel is {free}")
+            document.at_value(key, found, "a channel of its own for every fiber", _free(hung, item, driver, stock))
+
+
+def _free(hung: list[Hung], item: Hung, driver: str, stock: Stock) -> str:
+    """What to write for a fiber, or a row of them, to have channels that none else has; nothing where there is no such room."""
+    used = {
+        other.channel for other in hung if other.path != item.path and _choose(other.values["driver"], stock.drivers) == driver
+    }
+    wide = sum(other.path == item.path for other in hung)
+    # The room begins at 0 or behind a used channel.
+    first = next(n for n in sorted({0, *(channel + 1 for channel in used)}) if used.isdisjoint(range(n, n + wide)))
+    board = stock.drivers.get(driver)
+    if board is not None and first + wide > board.channels:
+        return ""
+    if item.path[0] == "fiber":
+        return f"the first free channel is {first}: write channel = {first}"
+    return f"the first room for {wide} is from {first} on: write first_channel = {first}; without it a row begins at 0"
 
 
 def _mirrors(document: Document, found: Fibers) -> dict[str, int]:

@@ -42,6 +42,15 @@ def test_a_row_beyond_its_board_is_blamed_once(spoil):
     assert said.count("are both on channel 0") == 1
 
 
+def test_a_row_on_the_channels_of_another_is_told_the_key_to_write_and_where_there_is_room_for_all_of_it(spoil):
+    hem = ("[[fibers]]", '[[fibers]]\nname = "hem"\ncount = 3\ntype = "drop"\nmirrored = true\n\n[[fibers]]')
+    # The other row has 0 to 2, the single fiber 4: four in a row have room behind both, where the board has so many.
+    said = spoil(("channels = 8", "channels = 9"), hem)
+    assert "reed.1 and hem.1 (line 26) are both on channel 0" in said
+    assert said.endswith("the first room for 4 is from 5 on: write first_channel = 5; without it a row begins at 0")
+    assert "write first_channel" not in spoil(hem)
+
+
 def test_as_many_fibers_as_a_rig_may_have_are_read_and_one_more_is_refused(small, spoil):
     text = small.replace("channels = 8", "channels = 4096").replace("count = 4", f"count = {MOST_FIBERS - 1}")
     assert len(read_rig(text.replace("channel = 4", "channel = 4095"), "f").fibers) == MOST_FIBERS
