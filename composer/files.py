@@ -16,14 +16,14 @@ _HANDWRITING = {".score": "a score", ".rig.toml": "a rig file", ".map.toml": "a 
 """Endings of the files that people write."""
 
 _STARTS = {
-    b"PK\x03\x04": "a play file, or an archive of another kind",
-    b"drawcrec": "a recording",
-    b"drawctak": "a take",
-    b"drawclog": "the log of a run",
-    b"MThd": "a MIDI file",
-    b"\x89PNG": "a picture",
+    b"PK\x03\x04": ("a play file, or an archive of another kind", "'drawcord play' and 'drawcord preview' take play files"),
+    b"drawcrec": ("a recording", "'drawcord play' plays it"),
+    b"drawctak": ("a take", "'drawcord take' makes a score of it"),
+    b"drawclog": ("the log of a run", "'drawcord report' tells it"),
+    b"MThd": ("a MIDI file", "'drawcord tempo' reads it"),
+    b"\x89PNG": ("a picture", ""),
 }
-"""How files begin that are taken for scores and rigs now and then."""
+"""How files begin that are taken for scores and rigs now and then, and what does take them."""
 
 _MARKS = {b"\xff\xfe": "UTF-16", b"\xfe\xff": "UTF-16"}
 
@@ -55,9 +55,10 @@ def read_text(path: str | os.PathLike[str], limit_bytes: int) -> str:
         raise fault(name, f"the file is {_MARKS[data[:2]]} text", "UTF-8 text", "save it again with the encoding UTF-8")
     zero = data.find(b"\0")
     if zero >= 0:
-        known = next((what for start, what in _STARTS.items() if data.startswith(start)), None)
-        what = f"this is {known}" if known else f"a zero byte at offset {zero}: this is a binary file"
-        raise fault(name, f"{what}, not text", "UTF-8 text")
+        zeros = f"a zero byte at offset {zero}: this is a binary file"
+        known = (("this is " + what, where) for start, (what, where) in _STARTS.items() if data.startswith(start))
+        what, hint = next(known, (zeros, ""))
+        raise fault(name, f"{what}, not text", "UTF-8 text", hint)
     mark = len(BOM_UTF8) if data.startswith(BOM_UTF8) else 0
     try:
         return data[mark:].decode()

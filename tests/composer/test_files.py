@@ -72,6 +72,16 @@ def test_a_binary_file_is_called_one(tmp_path):
         read_text(tmp_path / "a.score", 100)
 
 
+@pytest.mark.parametrize(
+    ("start", "command"),
+    [(b"PK\x03\x04", "play"), (b"drawcrec", "play"), (b"drawctak", "take"), (b"drawclog", "report"), (b"MThd", "tempo")],
+)
+def test_a_file_of_the_projects_own_where_text_belongs_is_told_the_command_that_takes_it(tmp_path, start, command):
+    (tmp_path / "a.score").write_bytes(start + b"\0\0")
+    with pytest.raises(Faults, match=f"not text; expected UTF-8 text\n   'drawcord {command}' "):
+        read_text(tmp_path / "a.score", 100)
+
+
 def test_utf16_is_called_by_its_name(tmp_path):
     (tmp_path / "a.score").write_bytes("reed".encode("utf-16"))
     with pytest.raises(Faults, match="the file is UTF-16 text; expected UTF-8 text"):
