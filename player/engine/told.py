@@ -215,6 +215,9 @@ def _landed(log: Told, place: str, at_s: float, when_s: float, which: tuple[int,
     for part in log.sensed:
         columns = np.flatnonzero(np.isin(part.fibers, which))
         first = int(np.searchsorted(part.at_s, when_s - 1e-6))
+        if first and first == len(part.at_s) and when_s - part.at_s[-1] <= 1.5 / log.head["rate_Hz"]:
+            # The landing that ends the score: nothing is sensed behind it, but there is a sense of the tick before.
+            first -= 1
         if not columns.size or first == len(part.at_s) or part.at_s[first] - when_s > SENSED_AFTER_S:
             continue
         fibers = part.fibers[columns]

@@ -58,8 +58,8 @@ def test_every_tick_is_in_one_class_of_lateness():
     assert sum(counts.values()) == 200 and counts[0.1] == 1 and counts[0.05] == 199
 
 
-def at_the_end(ended):
-    """A run of which the last move lands at its very end; it is sensed 40 ms later, 0.1 too far."""
+def at_the_end(ended, sensed_s=1.04):
+    """A run of which the last move lands at its very end, at 1 s; it is sensed once, 0.1 too far."""
     data = bytearray()
     log = RunLog(data.extend)
     log.tell("head", 0.0, **HEAD)
@@ -67,7 +67,8 @@ def at_the_end(ended):
     for tick in range(101):
         wanted = np.full(2, round(0.5 * tick / RATE * FULL), dtype=np.uint16)
         log.set(tick / RATE, 10.0 + (tick - 1) / RATE, 0.0, tick / RATE, wanted, wanted)
-    log.sense(1.05, 11.04, np.array([0, 1]), np.array([0.5, 0.6]))
+    share = 0.5 * min(1.0, sensed_s)
+    log.sense(1.05, 10.0 + sensed_s, np.array([0, 1]), np.array([share, share + 0.1]))
     log.tell("end", 1.1, ended=ended, exit=0)
     return told(records(bytes(data))[0])
 
@@ -76,6 +77,13 @@ def test_a_landing_at_the_last_instant_is_judged_by_what_is_sensed_just_after_th
     worst, other = landings(at_the_end("end"))
     assert (worst.place, worst.fiber, worst.error) == ("2:1", 1, pytest.approx(0.1, abs=1e-4))
     assert other.error == pytest.approx(0.0, abs=1e-4)
+
+
+def test_a_landing_at_the_last_instant_is_judged_by_the_tick_before_where_nothing_is_sensed_after_it():
+    worst, other = landings(at_the_end("end", sensed_s=0.99))
+    assert (worst.fiber, worst.error) == (1, pytest.approx(0.1, abs=1e-4))
+    assert other.error == pytest.approx(0.0, abs=1e-4)
+    assert landings(at_the_end("end", sensed_s=0.9)) == []
 
 
 def test_after_a_vent_nothing_is_wanted_any_more():
