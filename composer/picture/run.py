@@ -28,6 +28,7 @@ Array = NDArray[np.float64]
 class RunScene:
     """A run of `lasts_s`: shares of stroke wanted and sensed (F, COLUMNS), nan where not known; marks_s: what went wrong when.
 
+    extends: (F,) which fibers lengthen when they fill; fibers: their names
     apart: the largest distance of any fiber (COLUMNS,), each sense against the want of its own instant; nan: not known
     told: the object of the run's report
     """
@@ -38,6 +39,8 @@ class RunScene:
     apart: Array
     marks_s: tuple[float, ...]
     told: dict[str, Any]
+    extends: NDArray[np.bool_]
+    fibers: tuple[str, ...]
 
 
 def paint(painter: QPainter, scene: RunScene) -> None:
@@ -49,9 +52,9 @@ def paint(painter: QPainter, scene: RunScene) -> None:
     head.setLeft(head.left() + wide + px(22))
     LOOK.write(painter, head, f"{whole['date']}, {whole['ended']} at {whole['place']}", 13, palette.QUIET_INK)
     tall, top = px(180), px(80)
-    _cloth(painter, QRectF(LEFT_PX, top, COLUMNS, tall), "wanted", scene.wanted, False)
+    _cloth(painter, QRectF(LEFT_PX, top, COLUMNS, tall), "wanted", scene.wanted, scene, False)
     second = top + tall + px(38)
-    _cloth(painter, QRectF(LEFT_PX, second, COLUMNS, tall), "sensed", scene.sensed, True)
+    _cloth(painter, QRectF(LEFT_PX, second, COLUMNS, tall), "sensed", scene.sensed, scene, True)
     third = second + tall + px(38)
     lane = QRectF(LEFT_PX, third, COLUMNS, px(110))
     _distance(painter, lane, scene.apart)
@@ -66,18 +69,39 @@ def paint(painter: QPainter, scene: RunScene) -> None:
     _worst(painter, QRectF(LEFT_PX + COLUMNS * 0.46, low - px(26), COLUMNS * 0.54, room + px(26)), whole)
 
 
-def _cloth(painter: QPainter, box: QRectF, name: str, share: Array, can_lack: bool) -> None:
+def _cloth(painter: QPainter, box: QRectF, name: str, share: Array, scene: RunScene, can_lack: bool) -> None:
     """One row of colour a fiber, as in the preview; where nothing is known the panel shows."""
     LOOK.write(painter, QRectF(box.left(), box.top() - LOOK.px(24), 400, LOOK.px(22)), name, 13)
     painter.fillRect(box, colour(palette.PANEL))
     if not share.size:
         return
-    image = colours(share, np.zeros(len(share), dtype=bool))
+    image = colours(share, scene.extends)
     image[np.isnan(share)] = palette.PANEL
     image = np.ascontiguousarray(image)
     painter.drawImage(box, QImage(image.data, share.shape[1], share.shape[0], 3 * share.shape[1], QImage.Format.Format_RGB888))
+    _rows(painter, box, scene.fibers)
     if can_lack and np.isnan(share).all():
         LOOK.write(painter, box, "nothing was sensed", 13, palette.QUIET_INK, CENTRE)
+
+
+def _rows(painter: QPainter, box: QRectF, fibers: tuple[str, ...]) -> None:
+    """To the left the name of each row of fibers, where it stands; one that has no room is left out."""
+    px = LOOK.px
+    tall = box.height() / len(fibers)
+    stems = [fiber.rpartition(".")[0] or fiber for fiber in fibers]
+    starts = [n for n in range(len(stems)) if n == 0 or stems[n] != stems[n - 1]]
+    free = box.top()
+    for start, end in zip(starts, [*starts[1:], len(stems)], strict=True):
+        if start:
+            y = int(box.top() + start * tall)
+            painter.setPen(pen(palette.LINE))
+            painter.drawLine(int(box.left() - px(6)), y, int(box.left()), y)
+        middle = box.top() + 0.5 * (start + end) * tall
+        if middle - px(7) >= free:
+            LOOK.write(
+                painter, QRectF(px(4), middle - px(9), box.left() - px(12), px(18)), stems[start], 11, palette.QUIET_INK, RIGHT
+            )
+            free = middle + px(7)
 
 
 def _distance(painter: QPainter, box: QRectF, apart: Array) -> None:
@@ -149,7 +173,8 @@ def _worst(painter: QPainter, box: QRectF, whole: dict[str, Any]) -> None:
     room = max(0, int((box.height() - px(26)) // line))
     for number, one in enumerate(hits[: min(WORST_SHOWN, room)]):
         y = box.top() + px(26) + number * line
-        words = (one["place"], one["fiber"], f"{100 * one['error']:+.2f}")
+        percent = 100 * one["error"]
+        words = (one["place"], one["fiber"], f"{percent:+.2f}" if abs(percent) >= 0.005 else "0.00")
         for text, at, wide in zip(words, (0.0, 0.14, 0.32), (0.13, 0.17, 0.1), strict=True):
             where = QRectF(box.left() + at * box.width(), y, wide * box.width(), line)
             LOOK.write(painter, where, text, 12, palette.INK if at else palette.QUIET_INK, RIGHT if at > 0.3 else LEFT)

@@ -149,6 +149,11 @@ def _lateness(whole: dict[str, Any]) -> Iterator[str]:
         yield f"  {edge:>10} {one['ticks']:>8}  {bar}".rstrip()
 
 
+def _signed(percent: float) -> str:
+    """With its sign, unless it reads 0."""
+    return f"{percent:+.2f}" if abs(percent) >= 0.005 else "0.00"
+
+
 def _hits(whole: dict[str, Any]) -> Iterator[str]:
     hits = whole["hits"]
     if not hits:
@@ -160,5 +165,5 @@ def _hits(whole: dict[str, Any]) -> Iterator[str]:
     wide = max(len("fiber"), *(len(one["fiber"]) for one in hits[:SHOWN]))
     yield f"  {'place':<10} {'fiber':<{wide}}   wanted   sensed    off by"
     for one in hits[:SHOWN]:
-        parts = f"{100 * one['wanted']:6.1f} % {100 * one['sensed']:6.1f} % {100 * one['error']:+7.2f} %"
+        parts = f"{100 * one['wanted']:6.1f} % {100 * one['sensed']:6.1f} % {_signed(100 * one['error']):>7} %"
         yield f"  {one['place']:<10} {one['fiber']:<{wide}} {parts}"

@@ -21,7 +21,14 @@ def scene(log: Told, told: dict[str, Any]) -> RunScene:
     times = first + (np.arange(COLUMNS) + 0.5) * lasts / COLUMNS
     wanted = wanted_at(log, times, np.arange(len(log.fibers))).T
     marks = tuple(fault["time_s"] - first for fault in told["faults"])
-    return RunScene(lasts, wanted, _sensed(log, times), _apart(log, times), marks, told)
+    return RunScene(lasts, wanted, _sensed(log, times), _apart(log, times), marks, told, _extends(log), log.fibers)
+
+
+def _extends(log: Told) -> NDArray[np.bool_]:
+    """(F,) which fibers lengthen; a log that does not tell, or tells nonsense, is taken to have none."""
+    told = log.head.get("extends")
+    sound = isinstance(told, list) and len(told) == len(log.fibers)
+    return np.array([sound and told[n] is True for n in range(len(log.fibers))], dtype=bool)
 
 
 def _apart(log: Told, times: Array) -> Array:

@@ -63,6 +63,7 @@ def _head(played: Played, engine: Engine, targets: tuple[str, ...]) -> dict[str,
         "drivers": [driver.name for driver in played.rig.drivers],
         "fibers": list(played.names),
         "stroke": [round(float(stroke), 6) for stroke in played.abilities.stroke],
+        "extends": [played.abilities.capabilities[one].direction == "extend" for one in played.abilities.which],
         "drives": [fiber.mounting.valve.drive for fiber in played.rig.fibers],
     }
 

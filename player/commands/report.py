@@ -51,4 +51,6 @@ def command(log: str, as_json: bool, png: str | None) -> int:
         with replacing(png, "wb") as file:
             file.write(picture)
     click.echo(json.dumps(whole, allow_nan=False) if as_json else "\n".join(sentences(whole)))
+    if png is not None and not as_json:
+        click.echo(f"written: {png}")
     return whole["exit"]

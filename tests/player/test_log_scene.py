@@ -10,11 +10,11 @@ from player.engine.told import told
 RATE = 100.0
 
 
-def run(off=0.0, sense_every=5):
+def run(off=0.0, sense_every=5, **head):
     """A fiber that goes to full stroke in a second and stands for another, sensed `off` further than wanted."""
     data = bytearray()
     log = RunLog(data.extend)
-    log.tell("head", 0.0, fibers=["a"], stroke=[0.3], rate_Hz=RATE, lead_s=0.0)
+    log.tell("head", 0.0, fibers=["a"], stroke=[0.3], rate_Hz=RATE, lead_s=0.0, **head)
     for tick in range(200):
         at = tick / RATE
         share = min(1.0, at)
@@ -40,3 +40,17 @@ def test_how_far_off_a_fiber_is_shows_in_every_column():
 
 def test_where_nothing_was_sensed_nothing_is_shown():
     assert np.isnan(scene(run(sense_every=10_000), {"faults": []}).apart[1200:]).all()
+
+
+@pytest.mark.parametrize(
+    ("head", "lengthens"),
+    [
+        ({"extends": [True]}, True),
+        ({"extends": [False]}, False),
+        ({}, False),
+        ({"extends": [1, 2]}, False),
+        ({"extends": 3}, False),
+    ],
+)
+def test_a_fiber_lengthens_in_the_picture_only_where_the_log_says_so(head, lengthens):
+    assert scene(run(**head), {"faults": []}).extends.tolist() == [lengthens]

@@ -30,8 +30,9 @@ def test_a_whole_log_is_told_with_its_landings_and_lateness(log, capsys):
     assert sum(one["ticks"] for one in found["lateness"]) == found["sets"] == 151
     with open("run.png", "rb") as picture:
         assert picture.read(8) == b"\x89PNG\r\n\x1a\n"
-    assert run(["report", log]) == 0
+    assert run(["report", log, "--png", "run.png"]) == 0
     said = capsys.readouterr().out
+    assert said.endswith("\nwritten: run.png\n") and "+0.00 %" not in said and "-0.00 %" not in said
     assert "8 landings sensed" in said and "Ticks by how late they came" in said and "No faults." in said
     lines = said.splitlines()
     assert "Played to its end at 1:2.5." in lines
