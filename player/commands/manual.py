@@ -58,8 +58,9 @@ def command(page: str | None, folder: str | None) -> int:
         return _write_html(Path(folder), known)
     if page is None:
         click.echo("The pages of the manual; `drawcord manual PAGE` shows one:\n")
+        wide = max(map(len, known))
         for name, text in known.items():
-            click.echo(f"  {name:<12} {title_of(text)}")
+            click.echo(f"  {name:<{wide}}  {title_of(text)}")
         return 0
     if page not in known:
         hint = nearest(page, known) or "the pages are: " + ", ".join(known)

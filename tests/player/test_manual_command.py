@@ -44,3 +44,9 @@ def test_a_folder_that_cannot_be_made_is_told(tmp_path, capsys):
 
 def test_the_first_hour_is_the_first_page_and_what_is_new_the_last():
     assert next(iter(pages())) == "first-hour" and list(pages())[-1] == "changelog"
+
+
+def test_the_titles_of_pages_stand_in_one_column(capsys):
+    assert run(["manual"]) == 0
+    lines = capsys.readouterr().out.splitlines()[2:]
+    assert len({len(line) - len(line[2:].split(None, 1)[1]) for line in lines}) == 1
