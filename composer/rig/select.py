@@ -89,10 +89,18 @@ class Selector:
             return f"no fiber is called '{member}'" + (f"; {near}" if near else "")
         return f"no fiber is called '{member}'; there are {stem}{numbers[0]} to {stem}{numbers[-1]}"
 
+    def _alike(self, name: str) -> str:
+        """The hint for a name that is none; one without a number more likely means a whole row than one fiber of it."""
+        known = [*self._index, *self._known, *self._groups]
+        if any(map(str.isdecimal, name)):
+            return nearest(name, known)
+        rows = {match[1] + "*" for match in map(re.compile(r"(.*\.)[0-9]+", re.DOTALL).fullmatch, self._names) if match}
+        return nearest(name, [one for one in known if not one[-1:].isdecimal()] + sorted(rows)) or nearest(name, known)
+
     def _wildcard(self, name: str) -> tuple[int, ...]:
         """The fibers whose names fit, each `*` standing for any characters or none."""
         if "*" not in name:
-            raise UnknownName(name, nearest(name, [*self._index, *self._known, *self._groups]))
+            raise UnknownName(name, self._alike(name))
         parts = name.split("*")
         found = tuple(index for index, fiber in enumerate(self._names) if _fits(fiber, parts))
         if not found:

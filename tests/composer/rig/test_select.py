@@ -82,6 +82,9 @@ def test_a_name_is_worked_out_the_same_the_second_time():
     [
         ("red.3", "did you mean 'reed.3'?"),
         ("zzz", ""),
+        ("reed", "did you mean 'reed.*'?"),
+        ("reeds", "did you mean 'reed.*'?"),
+        ("tpi", "did you mean 'tip'?"),
         ("reed.9-14", "no fiber is called 'reed.13'; there are reed.1 to reed.12"),
         ("reed.0-1", "no fiber is called 'reed.0'; there are reed.1 to reed.12"),
         ("reed.5-2", "a range runs upward: reed.2-5"),
