@@ -61,6 +61,11 @@ def instants(text: str, rig) -> list[tuple[int, int, float, float]]:
     )
 
 
+def there(one, among) -> bool:
+    """Whether an instant is among some, to a nanosecond."""
+    return any((f, n) == one[:2] and abs(a - one[2]) + abs(b - one[3]) < 1e-9 for f, n, a, b in among)
+
+
 def test_a_knot_dragged_in_time_rewrites_its_lines_offset_on_the_grid(make_rig):
     new, edit = dragged(make_rig(4), TEXT, 0, 6.0, time_s=6.3)
     assert changed(TEXT, new) == [("2", "2.25")]
@@ -231,11 +236,10 @@ def test_a_drag_rewrites_one_number_and_what_is_read_back_is_what_was_lit(make_r
             strict=True,
         )
     )
-    for fiber_, line, from_s, to_s in lit:
-        assert any((f, n) == (fiber_, line) and abs(a - from_s) + abs(b - to_s) < 1e-9 for f, n, a, b in after)
+    assert all(there(one, after) for one in lit)
     if len(before) == len(after):
-        still = sorted(set(after) - set(before))
-        assert all(any((f, n) == one[:2] and abs(a - one[2]) + abs(b - one[3]) < 1e-9 for f, n, a, b in lit) for one in still)
+        # What is read back may differ in its last digit where nothing was moved.
+        assert all(there(one, lit) for one in after if not there(one, before))
 
 
 @settings(max_examples=20, deadline=None, suppress_health_check=list(HealthCheck))
