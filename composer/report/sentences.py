@@ -298,9 +298,7 @@ def _duty(snag: Snag, teller: Teller, who: _Who) -> Told:
     )
     less, _ = two(snag.needs - snag.has, 0.0)
     if not snag.mends:
-        return Told(
-            says, f"Move {less} s less within that span, or give it a rest there; no other times mend it."
-        )
+        return Told(says, f"Move {less} s less within that span, or give it a rest there; no other times mend it.")
     return Told(says, f"Let it rest longer within that span, or move {less} s less.")
 
 
