@@ -214,7 +214,9 @@ OPERATOR = {
     "vent-playing": Row("vent is pressed while playing", "", *_VENTED, CHANGED),
     "vent-paused": Row("vent is pressed while paused", "", *_VENTED, CHANGED),
     "vent-resting": Row("vent is pressed on the way to rest", "", *_VENTED, CHANGED),
-    "vent-standing-by": Row("vent is pressed after a fault, all at rest", "", *_VENTED, "the run is over"),
+    "vent-standing-by": Row(
+        "vent is pressed after a fault, all at rest", "", 1, "vented", "fault", "Ended by a fault", "the run is over"
+    ),
     "stop-asked": Row("Ctrl-C at the question whether to arm", "", 130, "", "", "stopped", "nothing has moved"),
     "stop-playing": Row("Ctrl-C while playing", "", *_STOPPED, CHANGED),
     "stop-paused": Row("Ctrl-C while paused", "", *_STOPPED, CHANGED),

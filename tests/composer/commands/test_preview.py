@@ -184,7 +184,7 @@ def test_ctrl_c_while_filming_leaves_no_file(score, tmp_path):
     call = [sys.executable, "-m", "player.commands.main", "preview", path, "--movie", str(movie), "--fps", "60"]
     running = subprocess.Popen([*call, "--size", "1920x1080"], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True)
     deadline = 600
-    while not list(tmp_path.glob(".drawcord-*.part")) and running.poll() is None and deadline:
+    while not any(part.stat().st_size for part in tmp_path.glob(".drawcord-*.part")) and running.poll() is None and deadline:
         deadline -= 1
         with contextlib.suppress(subprocess.TimeoutExpired):
             running.wait(timeout=0.1)

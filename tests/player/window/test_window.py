@@ -240,7 +240,7 @@ def test_a_rehearsal_with_the_board_in_c_and_its_line_pulled(room, files):
         device.terminate()
         device.communicate(timeout=60)
     until(lambda: "lost" in window.parts.banner.text(), "a board that is gone is not told of")
-    assert "has vanished" in window.parts.banner.text()
+    until(lambda: "has vanished" in window.parts.banner.text(), "what has become of it is not told")
 
 
 def test_tonights_margins_come_into_the_preflight(room):
