@@ -35,7 +35,9 @@ COMPLETE = "_DRAWCORD_COMPLETE"
 
 def main() -> None:
     """Run the command line; whatever goes wrong ends in a sentence and an exit code, never a traceback."""
-    sys.exit(run(sys.argv[1:]))
+    code = run(sys.argv[1:])
+    _deaf()
+    sys.exit(code)
 
 
 def run(arguments: list[str]) -> int:
@@ -71,6 +73,13 @@ def run(arguments: list[str]) -> int:
             raise
         print(_own_fault(error), file=sys.stderr)
         return 2
+
+
+def _deaf() -> None:
+    """From here on Ctrl-C is not heard: all is done, and what was done would end as if it had been killed."""
+    import signal
+
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
 
 
 def help_text() -> str:

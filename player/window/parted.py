@@ -31,6 +31,7 @@ class Parted(QWidget):
     _drawn: bool
     _held: bool
     _unsent: bool
+    _behind: bool
     _vented_s: float | None
     _light: int
     _frames: QTimer

@@ -35,8 +35,11 @@ class Seeing(Parted):
     def _draw(self) -> None:
         self.link.look()
         now = self.link.snapshot()
-        if now is None or (self.now is not None and now.count == self.now.count and now.state == self.now.state):
+        if now is None:
             return
+        if not self._behind and self.now is not None and now.count == self.now.count and now.state == self.now.state:
+            return
+        self._behind = False
         before, self.now = self.now, now
         if before is not None and before.state == "vented" and now.state != "vented":
             # That vent is done with.

@@ -50,7 +50,7 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         self._light, self._theme_name, self._scale = 0, "dark", 0.0
         self._clock = SteadyClock().now
         self._vented_s: float | None = None
-        self._unsent = self._held = self._drawn = False
+        self._unsent = self._held = self._drawn = self._behind = False
         self._beside = Beside(self)
         self._beside.said.connect(self._foretold)
         self.parts: Parts = build(self)
@@ -141,7 +141,7 @@ class RehearseWindow(Keyed, Alarming, Seeing):
             parts.hang.set_rig(material.rig, material.abilities)
             self._not_drawn("")
             # The picture comes with the next moment, whether anything moves or not.
-            self.now = None
+            self._behind = True
         else:
             note = note or f"{about['rig']} is not the rig of this run any more: it is not drawn"
             self._not_drawn(note)
