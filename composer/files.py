@@ -3,6 +3,7 @@
 import errno
 import os
 import secrets
+import shutil
 import stat
 from codecs import BOM_UTF8
 from collections.abc import Iterator
@@ -24,6 +25,9 @@ _STARTS = {
     b"\x89PNG": ("a picture", ""),
 }
 """How files begin that are taken for scores and rigs now and then, and what does take them."""
+
+_MOST_TRIES = 100
+"""How often a folder is emptied that somebody still fills."""
 
 _MARKS = {b"\xff\xfe": "UTF-16", b"\xfe\xff": "UTF-16"}
 
@@ -99,8 +103,9 @@ def replacing(path: str | os.PathLike[str], mode: str = "w") -> Iterator[IO[Any]
             yield file
         return
     target = os.path.realpath(name)
-    beside, handle = _beside(name, target)
+    beside = _beside(name, target)
     try:
+        handle = _made(name, beside)
         with _saying(name, beside):
             with os.fdopen(handle, mode, **form) as file:
                 yield file
@@ -117,18 +122,21 @@ def replacing(path: str | os.PathLike[str], mode: str = "w") -> Iterator[IO[Any]
 
 @contextmanager
 def replacing_by_name(path: str | os.PathLike[str]) -> Iterator[str]:
-    """As `replacing`, for a program that wants a name to write to: the name of a file beside, which takes the target's place.
+    """As `replacing`, for a program that wants a name to write to: one in a folder beside the target, which then takes its place.
 
-    Devices and pipes are refused, as such a program may want to go back in what it writes.
+    A program that outlives the block finds the folder gone, and can leave nothing. Devices and pipes are refused, as such a
+    program may want to go back in what it writes.
     """
     name = os.fspath(path)
     was = _target(name)
     if was is not None and not stat.S_ISREG(was.st_mode):
         raise fault(name, "cannot write: this is a device or a pipe", "an ordinary file")
     target = os.path.realpath(name)
-    beside, handle = _beside(name, target)
-    os.close(handle)
+    folder = _beside(name, target)
+    beside = os.path.join(folder, os.path.basename(target))
     try:
+        with _saying(name, folder):
+            os.mkdir(folder)
         with _saying(name, beside):
             yield beside
             if was is not None:
@@ -136,9 +144,8 @@ def replacing_by_name(path: str | os.PathLike[str]) -> Iterator[str]:
             with open(beside, "rb+") as file:
                 os.fsync(file.fileno())
             os.replace(beside, target)
-    except BaseException:
-        _remove(beside)
-        raise
+    finally:
+        _remove_folder(folder)
     _sync_folder(target)
 
 
@@ -167,9 +174,11 @@ def check_writable(path: str | os.PathLike[str], made: str | None = "") -> None:
         if not os.access(name, os.W_OK):
             _cannot("write", name, PermissionError(errno.EACCES, os.strerror(errno.EACCES)))
         return
-    beside, handle = _beside(name, os.path.realpath(name))
-    os.close(handle)
-    _remove(beside)
+    beside = _beside(name, os.path.realpath(name))
+    try:
+        os.close(_made(name, beside))
+    finally:
+        _remove(beside)
 
 
 def _spare_handwriting(name: str, made: str) -> None:
@@ -215,8 +224,8 @@ def _target(name: str) -> os.stat_result | None:
     return was
 
 
-def _beside(name: str, target: str) -> tuple[str, int]:
-    """A new file in the target's folder and its handle, with the permissions that any new file gets."""
+def _beside(name: str, target: str) -> str:
+    """A name in the target's folder that nothing has; known before anything is made, so that whatever ends that can undo it."""
     folder = os.path.dirname(target)
     if not os.path.isdir(folder):
         raise fault(
@@ -224,9 +233,13 @@ def _beside(name: str, target: str) -> tuple[str, int]:
             f"cannot write: there is no folder '{os.path.dirname(name) or folder}'",
             hint="make the folder first, or choose another place",
         )
-    beside = os.path.join(folder, f".drawcord-{secrets.token_hex(8)}.part")
+    return os.path.join(folder, f".drawcord-{secrets.token_hex(8)}.part")
+
+
+def _made(name: str, beside: str) -> int:
+    """The handle of a new file, with the permissions that any new file gets."""
     try:
-        return beside, os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | getattr(os, "O_BINARY", 0), 0o666)
+        return os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | getattr(os, "O_BINARY", 0), 0o666)
     except OSError as error:
         _cannot("write", name, error)
 
@@ -235,6 +248,14 @@ def _remove(path: str) -> None:
     """Remove a file if it is there."""
     with suppress(OSError):
         os.unlink(path)
+
+
+def _remove_folder(path: str) -> None:
+    """Remove a folder and what is in it, also what a program that is on its way out still puts there."""
+    for _ in range(_MOST_TRIES):
+        shutil.rmtree(path, ignore_errors=True)
+        if not os.path.lexists(path):
+            return
 
 
 def _sync_folder(target: str) -> None:

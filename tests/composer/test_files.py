@@ -4,7 +4,7 @@ import stat
 import pytest
 
 from composer.faults import Faults
-from composer.files import check_writable, read_bytes, read_text, replacing
+from composer.files import check_writable, read_bytes, read_text, replacing, replacing_by_name
 
 
 def test_text_comes_as_it_was_written(tmp_path):
@@ -201,3 +201,55 @@ def test_a_file_of_another_kind_of_ours_is_called_by_its_name(tmp_path, start, s
     (tmp_path / "a.score").write_bytes(start + b"\0\0")
     with pytest.raises(Faults, match=f"this is {said}"):
         read_text(tmp_path / "a.score", 100)
+
+
+def test_a_program_is_given_a_name_of_the_same_ending_and_what_it_writes_takes_the_targets_place(tmp_path):
+    target = tmp_path / "film.mp4"
+    target.write_bytes(b"old")
+    target.chmod(0o640)
+    with replacing_by_name(target) as name:
+        assert name.endswith(".mp4") and target.read_bytes() == b"old"
+        with open(name, "wb") as file:
+            file.write(b"new")
+    assert target.read_bytes() == b"new" and stat.S_IMODE(target.stat().st_mode) == 0o640
+    assert list(tmp_path.iterdir()) == [target]
+
+
+def test_a_program_that_starts_only_after_the_block_was_broken_off_can_leave_nothing(tmp_path):
+    with pytest.raises(KeyboardInterrupt), replacing_by_name(tmp_path / "film.mp4") as name:
+        with open(name, "wb") as file:
+            file.write(b"begun")
+        raise KeyboardInterrupt
+    assert list(tmp_path.iterdir()) == []
+    with pytest.raises(FileNotFoundError), open(name, "wb"):
+        pass
+
+
+def test_a_program_that_writes_nothing_is_a_fault_and_the_target_stays(tmp_path):
+    target = tmp_path / "film.mp4"
+    target.write_bytes(b"old")
+    with pytest.raises(Faults, match="film.mp4: cannot write"), replacing_by_name(target):
+        pass
+    assert target.read_bytes() == b"old" and list(tmp_path.iterdir()) == [target]
+
+
+@pytest.mark.parametrize(
+    ("made_by", "write"), [("open", replacing), ("open", check_writable), ("mkdir", replacing_by_name)], ids=lambda of: str(of)
+)
+def test_an_end_at_the_very_moment_when_the_file_beside_is_made_leaves_nothing(tmp_path, monkeypatch, made_by, write):
+    makes = getattr(os, made_by)
+
+    def broken_off(path, *more):
+        made = makes(path, *more)
+        if made is not None:
+            os.close(made)
+        assert len(list(tmp_path.iterdir())) == 1
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr(os, made_by, broken_off)
+    with pytest.raises(KeyboardInterrupt):
+        written = write(tmp_path / "film.mp4")
+        if written is not None:
+            written.__enter__()
+    monkeypatch.undo()
+    assert list(tmp_path.iterdir()) == []
