@@ -122,7 +122,7 @@ def replacing(path: str | os.PathLike[str], mode: str = "w") -> Iterator[IO[Any]
 
 @contextmanager
 def replacing_by_name(path: str | os.PathLike[str]) -> Iterator[str]:
-    """As `replacing`, for a program that wants a name to write to: one in a folder beside the target, which then takes its place.
+    """As `replacing`, for a program that wants a name to write to: a file in a folder beside, which takes the target's place.
 
     A program that outlives the block finds the folder gone, and can leave nothing. Devices and pipes are refused, as such a
     program may want to go back in what it writes.

@@ -228,7 +228,7 @@ def test_a_program_that_starts_only_after_the_block_was_broken_off_can_leave_not
 def test_a_program_that_writes_nothing_is_a_fault_and_the_target_stays(tmp_path):
     target = tmp_path / "film.mp4"
     target.write_bytes(b"old")
-    with pytest.raises(Faults, match="film.mp4: cannot write"), replacing_by_name(target):
+    with pytest.raises(Faults, match=r"film\.mp4: cannot write"), replacing_by_name(target):
         pass
     assert target.read_bytes() == b"old" and list(tmp_path.iterdir()) == [target]
 
