@@ -70,7 +70,8 @@ def command(
 
 def _write_png(path: str, fitted: Any, title: str) -> None:
     from composer.files import replacing
-    from composer.picture import fit, png
+    from composer.picture import png
+    from composer.picture.plots import fit
 
     if not png.has_letters():
         click.echo("this machine has no fonts, so the picture comes out without words; install one, such as DejaVu", err=True)

@@ -25,7 +25,7 @@ class Wanted:
 
 def check_call(wanted: Wanted) -> None:
     """Refuse what cannot be filmed, whatever the piece. Raises click.BadParameter."""
-    from composer.picture.movie_form import FASTEST_GIF_FPS, FORMS, form_of
+    from composer.picture.film.movie_form import FASTEST_GIF_FPS, FORMS, form_of
     from composer.picture.size import FASTEST_FPS, LARGEST_MOVIE, SLOWEST_FPS, SMALLEST_MOVIE
 
     form = form_of(wanted.path)
@@ -53,8 +53,8 @@ def take_of(wanted: Wanted, piece: Any) -> Any:
     """What is filmed of a piece. Raises Faults where its start or end is nowhere in it, or it would be too long."""
     from composer.commands.places import seconds_of
     from composer.faults import fault
-    from composer.picture.movie import MOST_KEPT, Take
-    from composer.picture.movie_file import EncoderFailedError, encoder
+    from composer.picture.film.movie import MOST_KEPT, Take
+    from composer.picture.film.movie_file import EncoderFailedError, encoder
 
     try:
         encoder()
@@ -81,8 +81,8 @@ def take_of(wanted: Wanted, piece: Any) -> Any:
 def film(wanted: Wanted, piece: Any, take: Any, strains: Any) -> None:
     """Draw and write the movie, with progress on a terminal. Raises Faults, or ClickException where the encoder fails."""
     from composer.picture import png
-    from composer.picture.movie import Film
-    from composer.picture.movie_file import EncoderFailedError, write_movie
+    from composer.picture.film.movie import Film
+    from composer.picture.film.movie_file import EncoderFailedError, write_movie
 
     if not png.has_letters():
         click.echo("this machine has no fonts, so the movie comes out without words; install one, such as DejaVu", err=True)

@@ -86,7 +86,7 @@ def command(
             check_writable(path)
     if window:
         from composer.commands.piece import is_play
-        from composer.picture.showing import show
+        from composer.picture.preview.showing import show
 
         return show(piece, None if is_play(score) else score, rig)
     if take is not None and not (png or csv or as_json):
@@ -94,13 +94,13 @@ def command(
     watch = tonight.Watch(piece.rig, piece.abilities)
     watches: list[Callable[[Any], None]] = [watch.add]
     if take is not None:
-        from composer.picture.movie import Keeping
+        from composer.picture.film.movie import Keeping
 
         keeping = Keeping(piece, take)
         watches.append(keeping.add)
     columns = 2
     if png:
-        from composer.picture.cloth import layout
+        from composer.picture.cloth.still import layout
 
         columns = layout(width, height).width
     with ExitStack() as open_files:
@@ -157,7 +157,7 @@ def _progress() -> Any:
 def _film_alone(filmed: Any, piece: Any, take: Any, rate_Hz: float, inverse: bool) -> int:
     """A movie and nothing else: what comes after its end need not be simulated."""
     from composer.picture.axes import say_seconds
-    from composer.picture.movie import simulated
+    from composer.picture.film.movie import simulated
 
     with _progress() as bar:
         strains = simulated(piece, take, rate_Hz, inverse, lambda share: bar.update(int(1000 * share) - bar.pos))
@@ -168,7 +168,8 @@ def _film_alone(filmed: Any, piece: Any, take: Any, rate_Hz: float, inverse: boo
 
 def _write_png(path: str, piece: Any, seen: Any, width: int, height: int) -> None:
     from composer.files import replacing
-    from composer.picture import cloth, png
+    from composer.picture import png
+    from composer.picture.cloth import still as cloth
     from composer.picture.material import scene_of
 
     if not png.has_letters():

@@ -116,7 +116,8 @@ def _progress():
 def _draw(loaded, retiming, path: str) -> None:
     from composer.files import replacing
     from composer.limits.check import check
-    from composer.picture import png, retimed
+    from composer.picture import png
+    from composer.picture.cloth import retimed
     from composer.picture.material import Piece
 
     if not png.has_letters():

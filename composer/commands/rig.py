@@ -46,7 +46,8 @@ def _apart(png: str, rig: str) -> None:
 
 def _write_png(path: str, rig: Any, abilities: Any) -> None:
     from composer.files import replacing
-    from composer.picture import makes, png
+    from composer.picture import png
+    from composer.picture.plots import makes
 
     if not png.has_letters():
         click.echo("this machine has no fonts, so the picture comes out without words; install one, such as DejaVu", err=True)

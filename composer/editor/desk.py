@@ -37,7 +37,7 @@ from composer.edits.threads import Threads, threads_of
 from composer.faults import Fault, Faults, Where
 from composer.limits.check import Check
 from composer.load import Loaded, made_from
-from composer.picture.weave import lanes_of
+from composer.picture.cloth.weave import lanes_of
 from composer.report.check import waiting_notes
 from composer.report.sentences import Teller
 from composer.rig.select import Selector

@@ -5,7 +5,7 @@ from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import QDialog, QTextBrowser, QVBoxLayout, QWidget
 
 from composer.editor.actions import by_menu, keys_in_words
-from composer.picture import cloth_view
+from composer.picture.cloth import cloth_view
 
 STRAND_KEYS = (
     ("Tab, Shift + Tab", "next or previous knot"),

@@ -10,8 +10,8 @@ from composer.editor.motions import same_motion
 from composer.limits.abilities import Abilities
 from composer.picture.bands import Band, bands_of
 from composer.picture.bars import Bars, RetimedBars
+from composer.picture.cloth.weave import Weave, stretches
 from composer.picture.scene import CueMark
-from composer.picture.weave import Weave, stretches
 from composer.rig.model import Rig
 from composer.tracks import Tracks
 from composer.warp import UNWARPED, Warp

@@ -10,9 +10,9 @@ from PySide6.QtWidgets import QAbstractItemView, QFrame, QLabel, QSplitter, QTab
 from composer.faults import Fault
 from composer.limits.abilities import Abilities
 from composer.limits.tables import travel_time_s
-from composer.picture.able_view import AbleView
 from composer.picture.palette import Theme
-from composer.picture.strand import unit_of
+from composer.picture.plots.able_view import AbleView
+from composer.picture.units import unit_of
 from composer.rig.model import Rig
 
 HEADINGS = (

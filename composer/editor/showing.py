@@ -13,11 +13,11 @@ from composer.editor.retimed_panel import RetimedPanel
 from composer.editor.snags_panel import SnagsPanel
 from composer.editor.stage import HANG, RIG, Stage
 from composer.faults import Fault
+from composer.picture.cloth.sampling import Sampler
 from composer.picture.palette import DARK, Theme
-from composer.picture.sampling import Sampler
 from composer.picture.scene import Stretch
-from composer.picture.strand import worded
-from composer.picture.strand_view import StrandView
+from composer.picture.strand.curve import worded
+from composer.picture.strand.strand_view import StrandView
 from composer.rig.model import Rig
 from composer.tracks import Tracks
 
@@ -261,7 +261,7 @@ class Showing(QObject):
         if self.stage.shown == HANG and self._hung is not known.rig:
             self._hung = known.rig
             if self.hang is None:
-                from composer.picture.hang import HangView
+                from composer.picture.hang.hang_view import HangView
 
                 self.hang = HangView(known.rig, known.abilities, view="three-quarter")
                 self.hang.fiber_clicked.connect(self.show_fiber)

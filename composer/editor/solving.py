@@ -147,10 +147,10 @@ class Solver:
     def printed(self, lines: tuple[tuple[str, str, str], ...], paper: str) -> bytes | None:
         """Cloth and snags of the text at hand as the pages of a PDF file; the list as the window has it."""
         from composer.picture.bands import bands_of
-        from composer.picture.pages import Line, print_pages
-        from composer.picture.print_plan import sections_of
+        from composer.picture.cloth.pages import Line, print_pages
+        from composer.picture.cloth.print_plan import sections_of
+        from composer.picture.cloth.weave import Weave, lanes_of, stretches
         from composer.picture.scene import CueMark
-        from composer.picture.weave import Weave, lanes_of, stretches
 
         desk, made = self.desk, self.desk.made
         assert made is not None

@@ -3,9 +3,9 @@
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QLabel, QTabWidget, QVBoxLayout, QWidget
 
-from composer.picture.cloth_view import ClothView
+from composer.picture.cloth.cloth_view import ClothView
 from composer.picture.palette import DARK, Theme
-from composer.picture.transport import Transport
+from composer.picture.preview.transport import Transport
 
 CLOTH, HANG, RIG = "Cloth", "Hanging fibers", "Rig"
 LEAVES = (CLOTH, HANG, RIG)

@@ -29,7 +29,7 @@ from composer.editor.snags_panel import SnagsPanel
 from composer.editor.stage import Stage
 from composer.edits.edit import Edit, Refusal
 from composer.picture.palette import THEMES
-from composer.picture.strand_view import StrandView
+from composer.picture.strand.strand_view import StrandView
 
 if TYPE_CHECKING:
     from composer.edits.completion import Offer

@@ -5,7 +5,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from composer.picture.run import COLUMNS, RunScene
+from composer.picture.plots.run import COLUMNS, RunScene
 from player.engine.told import Told, wanted_at
 
 Array = NDArray[np.float64]

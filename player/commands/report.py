@@ -4,13 +4,15 @@ import json
 
 import click
 
+from composer.commands.outputs import MadeFile
+
 LARGEST_LOG = 1 << 30
 
 
 @click.command("report")
 @click.argument("log", metavar="LOG", type=click.Path(path_type=str))
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON object, and nothing else.")
-@click.option("--png", metavar="FILE", type=click.Path(path_type=str), help="Draw what was wanted and sensed.")
+@click.option("--png", metavar="FILE.png", type=MadeFile(".png"), help="Draw what was wanted and sensed.")
 def command(log: str, as_json: bool, png: str | None) -> int:
     """Tell a run from the log that `drawcord play --log LOG` kept.
 
@@ -42,8 +44,8 @@ def command(log: str, as_json: bool, png: str | None) -> int:
     left = len(data) - end[0]
     whole = as_object(found, log, left)
     if png is not None:
+        from composer.picture.plots.run import HEIGHT, WIDTH, paint
         from composer.picture.png import drawn, png_bytes
-        from composer.picture.run import HEIGHT, WIDTH, paint
         from player.commands.log_scene import scene
 
         shown = scene(found, whole)

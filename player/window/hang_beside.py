@@ -9,9 +9,9 @@ from PySide6.QtGui import QCloseEvent, QImage, QPainter, QPaintEvent
 from PySide6.QtWidgets import QWidget
 
 from composer.limits.abilities import Abilities
-from composer.picture import hang_paint
-from composer.picture.hang import HangView
-from composer.picture.hang_names import paint_names
+from composer.picture.hang import paint as hang_paint
+from composer.picture.hang.hang_view import HangView
+from composer.picture.hang.names import paint_names
 from composer.picture.look import painting
 from composer.rig.model import Rig
 

@@ -6,7 +6,7 @@ from typing import Any
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QListWidget, QPushButton, QVBoxLayout, QWidget
 
-from composer.picture.showing_process import Beside
+from composer.picture.preview.beside import Beside
 from player.window import disk
 from player.window.actions import NO_HANDS, NO_TAKES
 from player.window.playback import Playback

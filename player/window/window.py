@@ -9,8 +9,8 @@ from PySide6.QtWidgets import QApplication
 
 from composer.picture import palette
 from composer.picture.chrome import scale_of
-from composer.picture.hang_camera import VIEWS
-from composer.picture.showing_process import Beside
+from composer.picture.hang.camera import VIEWS
+from composer.picture.preview.beside import Beside
 from player.engine.clock import SteadyClock
 from player.engine.process.layout import Snapshot
 from player.live.screen import meters_of

@@ -20,9 +20,9 @@ from PySide6.QtWidgets import QApplication
 
 from composer.limits.abilities import Abilities
 from composer.picture.bands import Band
-from composer.picture.cloth_view import ClothView
+from composer.picture.cloth.cloth_view import ClothView
+from composer.picture.cloth.weave import Weave
 from composer.picture.scene import Lane, Stretch
-from composer.picture.weave import Weave
 from composer.score.tempo import TempoMap
 from composer.shapes import PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks

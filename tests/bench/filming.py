@@ -16,10 +16,11 @@ from PySide6.QtGui import QImage, QPainter
 
 from composer.commands.piece import load_piece
 from composer.limits.abilities import abilities_of
-from composer.picture import hang_paint, png
+from composer.picture import png
+from composer.picture.film.movie import Film, Take, simulated
+from composer.picture.film.movie_file import write_movie
+from composer.picture.hang import paint as hang_paint
 from composer.picture.look import Look
-from composer.picture.movie import Film, Take, simulated
-from composer.picture.movie_file import write_movie
 
 DEMOS = Path(__file__).parents[2] / "scores_demo"
 FRAME_S = 1.0 / 30.0

@@ -24,7 +24,7 @@ from retiming import with_rests
 from composer.limits.abilities import abilities_of
 from composer.picture import palette
 from composer.picture.look import Look, colour
-from composer.picture.plot import Axis, Curve, paint
+from composer.picture.plots.plot import Axis, Curve, paint
 from composer.picture.png import drawn, png_bytes
 from composer.retime.retiming import retime
 

@@ -12,7 +12,7 @@ import av
 import numpy as np
 import pytest
 
-from composer.picture import movie_file
+from composer.picture.film import movie_file
 from player.commands.main import run
 
 SCORE = """title "Bench"

@@ -11,9 +11,9 @@ import pytest
 from composer.limits.abilities import abilities_of
 from composer.limits.check import check
 from composer.picture.bands import bands_of
+from composer.picture.cloth.weave import Weave, lanes_of, stretches
 from composer.picture.material import Piece, run, scene_of
 from composer.picture.scene import CueMark
-from composer.picture.weave import Weave, lanes_of, stretches
 from composer.score.tempo import TempoMap
 from composer.shapes import PROGRESS
 from composer.tracks import HOLD, MOVE, Tracks

@@ -1,0 +1,1 @@
+"""Movies: a piece as moving pictures in a file."""

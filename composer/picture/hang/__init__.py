@@ -1,0 +1,1 @@
+"""The hang view: fibers where they hang, moving."""
