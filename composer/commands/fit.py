@@ -7,7 +7,7 @@ from typing import Any
 
 import click
 
-from composer.commands.outputs import outputs_apart
+from composer.commands.outputs import MadeFile, outputs_apart
 
 
 @click.command("fit")
@@ -15,7 +15,7 @@ from composer.commands.outputs import outputs_apart
 @click.option("--type", "name", required=True, metavar="NAME", help="What the fiber type is called: a type of RIG, or a name.")
 @click.option("--rig", metavar="RIG", help="Take kind, dimensions and first guesses from this rig's type of that name.")
 @click.option("--load", "load_N", type=float, metavar="N", help="Constant load on the bench in N, where the file does not say.")
-@click.option("--png", metavar="FILE", help="Draw the fit over the data to FILE.")
+@click.option("--png", type=MadeFile(".png"), metavar="FILE.png", help="Draw the fit over the data to FILE.png.")
 @click.option("-o", "--output", metavar="FILE", help="Write the table to FILE instead of printing it.")
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON object on stdout and nothing else.")
 def command(

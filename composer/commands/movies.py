@@ -25,13 +25,10 @@ class Wanted:
 
 def check_call(wanted: Wanted) -> None:
     """Refuse what cannot be filmed, whatever the piece. Raises click.BadParameter."""
-    from composer.picture.film.movie_form import FASTEST_GIF_FPS, FORMS, form_of
+    from composer.picture.film.movie_form import FASTEST_GIF_FPS, form_of
     from composer.picture.size import FASTEST_FPS, LARGEST_MOVIE, SLOWEST_FPS, SMALLEST_MOVIE
 
     form = form_of(wanted.path)
-    if form is None:
-        endings = " nor ".join(FORMS)
-        raise click.BadParameter(f"'{wanted.path}' ends in neither {endings}, which say what is made.", param_hint="--movie")
     small, large = SMALLEST_MOVIE, LARGEST_MOVIE
     if not (small[0] <= wanted.width <= large[0] and small[1] <= wanted.height <= large[1]):
         raise click.BadParameter(

@@ -11,18 +11,29 @@ import click
 
 from composer.commands.movies import FPS, Wanted, check_call, film, take_of
 from composer.commands.movies import SIZE as MOVIE_SIZE
-from composer.commands.outputs import outputs_apart
+from composer.commands.outputs import MadeFile, outputs_apart
+from composer.picture.film.movie_form import FORMS
 
 SIZE = "1920x1080"
 
 
 @click.command()
 @click.argument("score", metavar="SCORE|PLAY")
-@click.option("--png", metavar="FILE", help="Write the picture to FILE.")
-@click.option("--csv", metavar="FILE", help="Write target, strain and pressure of every fiber at every tick to FILE.")
+@click.option("--png", type=MadeFile(".png"), metavar="FILE.png", help="Write the picture to FILE.png.")
+@click.option(
+    "--csv",
+    type=MadeFile(".csv"),
+    metavar="FILE.csv",
+    help="Write target, strain and pressure of every fiber at every tick to FILE.csv.",
+)
 @click.option("--json", "as_json", is_flag=True, help="Print the report as JSON on stdout, and nothing else.")
 @click.option("--rate", "rate_Hz", type=float, default=200.0, show_default=True, metavar="HZ", help="Ticks a second.")
-@click.option("--movie", metavar="FILE", help="Film the fibers where they hang, as simulated, into FILE.mp4 or FILE.gif.")
+@click.option(
+    "--movie",
+    type=MadeFile(*FORMS),
+    metavar="FILE",
+    help="Film the fibers where they hang, as simulated, into FILE.mp4 or FILE.gif.",
+)
 @click.option("--from", "start", metavar="CUE|PLACE", help="Where the movie begins: a cue, or a place such as 5:1 or 12.4s.")
 @click.option("--to", "end", metavar="CUE|PLACE", help="Where the movie ends.")
 @click.option("--fps", type=float, default=FPS, show_default=True, metavar="N", help="Frames of the movie a second.")

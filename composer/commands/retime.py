@@ -7,6 +7,8 @@ import time
 
 import click
 
+from composer.commands.outputs import MadeFile
+
 LIMIT_S = 600.0
 """How long the search may take unless told otherwise."""
 
@@ -20,9 +22,7 @@ SIZE = (1600, 1000)
 @click.option(
     "--flat", metavar="OUT.score", type=click.Path(path_type=str), help="The same as a score, every move written out."
 )
-@click.option(
-    "--png", metavar="FILE", type=click.Path(path_type=str), help="The score as written over the score retimed, drawn."
-)
+@click.option("--png", metavar="FILE.png", type=MadeFile(".png"), help="The score as written over the score retimed, drawn.")
 @click.option("--shrink", is_flag=True, help="Where pins are too close, shrink the moves between them until they fit.")
 @click.option("--keep", type=click.Choice(["clock", "rhythm"]), help="What to protect; what the score says unless given.")
 @click.option(

@@ -6,12 +6,17 @@ from typing import Any
 
 import click
 
+from composer.commands.outputs import MadeFile
+
 
 @click.command("rig")
 @click.argument("rig", type=click.Path())
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON object and nothing else.")
 @click.option(
-    "--png", type=click.Path(), metavar="FILE", help="Draw stroke over pressure and rates over strain, a row for each make."
+    "--png",
+    type=MadeFile(".png"),
+    metavar="FILE.png",
+    help="Draw stroke over pressure and rates over strain, a row for each make.",
 )
 def command(rig: str, as_json: bool, png: str | None) -> int:
     """What each fiber of RIG can do where it hangs: stroke, force, fastest rates by strain, air for a stroke."""

@@ -4,6 +4,7 @@ from typing import Any
 
 from composer.editor.looks import Mark
 from composer.editor.messages import Checked, Dragged, Failed, Retimed, Row, Told
+from composer.editor.snags_panel import snags_in_words
 from composer.edits.edit import Refusal
 
 NEAR_S = 8.0
@@ -18,11 +19,11 @@ class Between:
     def _hear(self, message: Any) -> None:
         self.showing.hear(message)
         if isinstance(message, Checked):
-            count = message.count
-            self.foot.say("snags", "no snags" if not count else f"{count} snag{'s' * (count != 1)}")
-            self.lists.setTabText(0, f"Snags, {len(message.rows)}" if message.rows else "Snags")
+            words = snags_in_words(message.count)
+            self.foot.say("snags", words)
+            self.lists.setTabText(0, words.capitalize())
         elif isinstance(message, Retimed):
-            self.lists.setTabText(1, f"Retiming, {len(message.hits)}" if message.hits else "Retiming")
+            self.lists.setTabText(1, retiming_in_words(len(message.hits)))
         elif isinstance(message, Failed):
             self.notices.say("worker", message.says, kind="fault")
 
@@ -144,6 +145,11 @@ class Between:
     def _passage_changed(self, loop: Any) -> None:
         warp = self.showing.known.warp(self.showing.as_retimed)
         self.retimed.set_passage(None if loop is None else (warp.was(loop[0]), warp.was(loop[1])))
+
+
+def retiming_in_words(count: int) -> str:
+    """How many hits a retiming moves, as its list is called."""
+    return f"Retiming, {count} hit{'s' * (count != 1)}" if count else "Retiming"
 
 
 def _says(fault: Any) -> str:

@@ -263,10 +263,12 @@ class Deeds:
     # ---- help -----------------------------------------------------------------------------------------------------------
 
     def do_keys(self) -> None:
-        """The sheet of keys."""
-        sheet = KeysSheet(self)
-        sheet.setAttribute(_DELETE)
-        sheet.show()
+        """The sheet of keys; where it is there, away with it."""
+        there = self.findChild(KeysSheet, options=Qt.FindChildOption.FindDirectChildrenOnly)
+        if there is not None and there.isVisible():
+            there.put_away()
+        else:
+            KeysSheet(self).bring()
 
     def do_first_help(self) -> None:
         """Three lines on what to try."""

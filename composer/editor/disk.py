@@ -9,6 +9,7 @@ from collections.abc import Iterable
 from contextlib import suppress
 from dataclasses import dataclass
 from importlib.resources import files
+from itertools import islice
 from pathlib import Path
 
 from platformdirs import user_config_dir, user_state_dir
@@ -72,6 +73,40 @@ def may_write(path: str) -> bool:
     """Whether a file could be saved here, as far as permissions tell."""
     target = path if os.path.exists(path) else os.path.dirname(os.path.abspath(path))
     return os.access(target, os.W_OK) and os.access(os.path.dirname(os.path.abspath(path)), os.W_OK)
+
+
+MOST_LOOKED_AT, MOST_FOLDERS = 5000, 50
+"""Entries of a folder, and folders in it, that are looked at."""
+
+
+def paths_in(folder: str, typed: str, ending: str) -> list[str]:
+    """Files of an ending, and folders with a / behind, in the folder that a half-typed path leads to; as paths from `folder`.
+
+    Where nothing is typed of a folder, the files of the folders below are among them too; hidden ones are left out.
+    """
+    lead = typed[: typed.rfind("/") + 1]
+    found, folders = _looked_at(os.path.join(folder, lead), ending)
+    if not lead:
+        below = [
+            f"{name}/{one}" for name in folders[:MOST_FOLDERS] for one in _looked_at(os.path.join(folder, name), ending)[0]
+        ]
+        return found + below
+    return [lead + name for name in found] + [f"{lead}{name}/" for name in folders]
+
+
+def _looked_at(folder: str, ending: str) -> tuple[list[str], list[str]]:
+    """The names of a folder's files of an ending, and of its folders, in order; of one that cannot be read, none."""
+    found: list[str] = []
+    folders: list[str] = []
+    with suppress(OSError, ValueError), os.scandir(folder) as entries:
+        for entry in islice(entries, MOST_LOOKED_AT):
+            if entry.name.startswith("."):
+                continue
+            if entry.is_dir():
+                folders.append(entry.name)
+            elif entry.name.endswith(ending):
+                found.append(entry.name)
+    return sorted(found), sorted(folders)
 
 
 def folder_of(what: str) -> str:

@@ -109,6 +109,8 @@ def sheet_of(theme: Theme, scale: float = 1.0, text_scale: float = 1.0) -> str:
         QFrame#notice {{ background: {raised}; border-left: {px(4)} solid {caution}; }}
         QFrame#fault {{ background: {raised}; border-left: {px(4)} solid {fault}; }}
         QFrame#help {{ background: {raised}; border-left: {px(4)} solid {chosen}; }}
+        QFrame#sheet {{ background: {panel}; border: {px(2)} solid {edge}; }}
+        QLabel#title {{ font-weight: bold; font-size: {px(15)}; }}
         QLabel#quiet {{ color: {quiet}; }}
         QToolTip {{ background: {raised}; color: {ink}; border: 1px solid {edge}; padding: {px(3)}; }}
         QStatusBar::item {{ border: none; }}

@@ -1,8 +1,8 @@
 """The sheet of keys, made from the tables of what can be done."""
 
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QEvent, QObject, Qt
 from PySide6.QtGui import QKeyEvent
-from PySide6.QtWidgets import QDialog, QTextBrowser, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QTextBrowser, QVBoxLayout, QWidget
 
 from composer.editor.actions import by_menu, keys_in_words
 from composer.picture.cloth import cloth_view
@@ -63,27 +63,68 @@ def as_html() -> str:
     return "".join(parts)
 
 
-class KeysSheet(QDialog):
-    """The sheet in a window of its own, which need not be closed to go on."""
+class KeysSheet(QFrame):
+    """The sheet over the window's middle, within the window: the keys are its own whoever manages the windows, or nobody.
+
+    F1 and Escape put it away, and give the keys back to what had them.
+    """
 
     def __init__(self, parent: QWidget):
         super().__init__(parent)
-        self.setWindowTitle("Keys")
-        self.setModal(False)
-        page = QTextBrowser()
-        page.setAccessibleName("keys")
-        page.setHtml(as_html())
+        self.setObjectName("sheet")
+        self.setAccessibleName("sheet of keys")
+        self._before = parent.focusWidget()
+        self._page = QTextBrowser()
+        self._page.setAccessibleName("keys")
+        self._page.setHtml(as_html())
+        self._page.installEventFilter(self)
+        title = QLabel("Keys")
+        title.setObjectName("title")
+        close = QPushButton("Close (Esc)")
+        close.setAccessibleName("close the sheet of keys")
+        close.clicked.connect(self.put_away)
+        head = QHBoxLayout()
+        head.addWidget(title, 1)
+        head.addWidget(close)
         column = QVBoxLayout(self)
-        column.setContentsMargins(0, 0, 0, 0)
-        column.addWidget(page)
-        self.resize(round(parent.width() * 0.62), round(parent.height() * 0.8))
+        column.setContentsMargins(10, 8, 10, 8)
+        column.addLayout(head)
+        column.addWidget(self._page, 1)
+        parent.installEventFilter(self)
+        self._place()
 
-    def keyPressEvent(self, event: QKeyEvent) -> None:
-        """F1 puts it away as it brought it."""
-        if event.key() in (Qt.Key.Key_F1, Qt.Key.Key_Escape):
-            self.close()
-        else:
-            super().keyPressEvent(event)
+    def bring(self) -> None:
+        """Show it, with the keys."""
+        self.show()
+        self.raise_()
+        self._page.setFocus()
+
+    def put_away(self) -> None:
+        """Put it away for good."""
+        self.hide()
+        if self._before is not None:
+            self._before.setFocus()
+        self.parentWidget().removeEventFilter(self)
+        self.setParent(None)
+        self.deleteLater()
+
+    def _place(self) -> None:
+        """Over the middle of the window."""
+        room = self.parentWidget().rect()
+        wide, high = round(room.width() * 0.72), round(room.height() * 0.84)
+        self.setGeometry((room.width() - wide) // 2, (room.height() - high) // 2, wide, high)
+
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        """Stay in the window's middle; F1 and Escape put it away, also as a shortcut that the window has too."""
+        if event.type() == QEvent.Type.Resize and watched is self.parentWidget():
+            self._place()
+        elif event.type() in (QEvent.Type.ShortcutOverride, QEvent.Type.KeyPress) and isinstance(event, QKeyEvent):
+            if watched is self._page and event.key() in (Qt.Key.Key_F1, Qt.Key.Key_Escape):
+                event.accept()
+                if event.type() == QEvent.Type.KeyPress:
+                    self.put_away()
+                return True
+        return super().eventFilter(watched, event)
 
 
 def _plain(text: str) -> str:

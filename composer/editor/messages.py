@@ -120,7 +120,7 @@ class Picture:
 class Row:
     """Snags that are told together: one of them (index into the check's), the sentence, what would mend it, where it is.
 
-    others: indices of those that are told with it
+    count: how many they are; others: indices of those that are there and then, on the same fibers
     """
 
     snag: int
@@ -134,6 +134,7 @@ class Row:
     phrase_line: int
     fibers: tuple[int, ...]
     others: tuple[int, ...] = ()
+    count: int = 1
 
 
 @dataclass(frozen=True, slots=True, eq=False)

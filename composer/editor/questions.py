@@ -1,5 +1,6 @@
 """What the window asks of a worker about a text, in one table."""
 
+import os
 from collections.abc import Callable
 from dataclasses import dataclass
 from fractions import Fraction
@@ -7,6 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from composer.editor import disk
 from composer.editor.messages import Dragged, Ghost, Mended, Taking
 from composer.edits import completion, dragging, hover, threads
 from composer.edits.edit import Edit, Refusal, apply
@@ -32,7 +34,10 @@ class Question:
 
 
 def _complete(desk: "Desk", line: int, column: int) -> tuple[completion.Offer, ...]:
-    return completion.complete(desk.text, line, column, desk.made)
+    folder = os.path.dirname(os.path.abspath(desk.file))
+    return completion.complete(
+        desk.text, line, column, desk.made, paths=lambda typed, ending: disk.paths_in(folder, typed, ending)
+    )
 
 
 def _explain(desk: "Desk", line: int, column: int) -> hover.Hover | None:

@@ -91,7 +91,9 @@ class RetimedPanel(QWidget):
     def _enable(self) -> None:
         self._one.setEnabled(0 <= self._list.currentRow() < len(self._hits))
         self._some.setEnabled(self._passage is not None and bool(self._hits))
-        self._some.setToolTip("" if self._passage else "loop a passage first: I and O set where it begins and ends")
+        self._some.setToolTip(
+            "" if self._passage else "loop a passage first: Ctrl + I and Ctrl + Shift + I say where it begins and ends"
+        )
         self._all.setEnabled(bool(self._hits))
 
     def _changed(self, at: int) -> None:

@@ -2,7 +2,7 @@
 
 from composer.editor.messages import Row
 from composer.limits.check import Check
-from composer.report.check import together
+from composer.report.check import alike_but_for_the_fiber, fibers_of
 from composer.report.sentences import Teller, tell
 
 SAME_ROW_S = 2.0
@@ -19,9 +19,10 @@ def rows_of(check: Check, teller: Teller) -> tuple[tuple[Row, ...], int]:
     same: dict[tuple, list[int]] = {}
     for at, snag in enumerate(check.snags):
         same.setdefault((snag.kind, snag.line, snag.fiber), []).append(at)
-    groups = sorted(together(check.snags, tracks), key=lambda group: group[0].from_s)
+    groups = sorted(alike_but_for_the_fiber(check.snags, tracks), key=lambda group: group[0].from_s)
     rows = []
-    for snag, fibers in groups[:MOST_ROWS]:
+    for alike in groups[:MOST_ROWS]:
+        snag, fibers = alike[0], fibers_of(alike)
         said = tell(snag, teller, fibers)
         rows.append(
             Row(
@@ -35,6 +36,7 @@ def rows_of(check: Check, teller: Teller) -> tuple[tuple[Row, ...], int]:
                 line=snag.line,
                 phrase_line=int(tracks.phrase_line[snag.knot]) if snag.knot >= 0 else 0,
                 fibers=tuple(fibers),
+                count=len(alike),
                 others=tuple(
                     at
                     for fiber in fibers

@@ -20,15 +20,10 @@ from PySide6.QtWidgets import (
 from composer.editor.messages import Choice, Mended, Row
 from composer.edits.edit import Refusal
 
-WAYS = {
-    "time": "Give it time",
-    "lead": "Let it lead",
-    "shrink": "Shrink it",
-    "pin": "Pin this",
-    "retime": "Retime this hit",
-    "air": "Ask less of the air",
-}
-"""What each way to mend is called, as far as its own words do not say more."""
+
+def snags_in_words(count: int) -> str:
+    """A count of snags as it is said wherever snags are counted: one for each fiber and move, as `drawcord check` counts."""
+    return "no snags" if not count else f"{count} snag{'s' * (count != 1)}"
 
 
 class Wrapped(QListWidget):
@@ -140,9 +135,7 @@ class Mends(QScrollArea):
         parts: list[QWidget] = []
         made: dict[QObject, Choice] = {}
         for choice in mended.choices:
-            left = "no snag is left then" if choice.snags_left == 0 else f"{choice.snags_left} left then"
-            button = Sentence(choice.say, left)
-            button.setToolTip(WAYS.get(choice.way, ""))
+            button = Sentence(choice.say, f"leaves {snags_in_words(choice.snags_left)}")
             button.installEventFilter(self)
             button.clicked.connect(lambda _=False, choice=choice: self.chosen.emit(choice))
             made[button] = choice
@@ -244,8 +237,10 @@ class SnagsPanel(QWidget):
         self._list.blockSignals(True)
         self._list.clear()
         for row in rows:
-            item = QListWidgetItem(f"{row.place}  {row.says} {row.mends}")
-            item.setData(Qt.ItemDataRole.AccessibleTextRole, f"snag at {row.place}, line {row.line}: {row.says} {row.mends}")
+            together = f" ({snags_in_words(row.count)})" if row.count > 1 else ""
+            says = f"{row.says} {row.mends}{together}"
+            item = QListWidgetItem(f"{row.place}  {says}")
+            item.setData(Qt.ItemDataRole.AccessibleTextRole, f"snag at {row.place}, line {row.line}: {says}")
             item.setToolTip(f"line {row.line}" + (f", phrase in line {row.phrase_line}" if row.phrase_line else ""))
             self._list.addItem(item)
         for note in (*notes, *([f"and {more} more snags later in the score"] if more else [])):

@@ -1,7 +1,7 @@
 """What may stand at a place of a text, nearest first, with a word of explanation each."""
 
 import re
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from difflib import SequenceMatcher
 
@@ -22,6 +22,9 @@ MOST_COMPARED = 5000
 
 _HEAD = re.compile(r'[^\s,="]*')
 _NUMBER = re.compile(r"-?[0-9]+(\.[0-9]*|(\+[0-9]*)?/[0-9]*)?")
+
+
+Paths = Callable[[str, str], Sequence[str]]
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,16 +49,20 @@ class _Place:
     names: Names
     made: Made | None
     line: int
+    paths: Paths
 
 
 _Bare = tuple[str, str, str, str]
 """Text, explanation, kind, and another word by which it is found ("" for none)."""
 
 
-def complete(text: str, line: int, column: int, made: Made | None = None, most: int = 200) -> tuple[Offer, ...]:
+def complete(
+    text: str, line: int, column: int, made: Made | None = None, most: int = 200, paths: Paths = lambda typed, ending: ()
+) -> tuple[Offer, ...]:
     """What may stand at the caret (line and column from 1; column 1 is before the first character), the likeliest first.
 
     `made` is the last state that could be read, for fibers, groups and partners; names in the text itself count as typed.
+    paths: from what is typed of a path, and the ending of what is wanted, to the files and folders (with a / behind) there
     """
     lines = text.split("\n")
     if not 0 < line <= len(lines) or len(lines[line - 1]) > LONGEST:
@@ -81,7 +88,7 @@ def complete(text: str, line: int, column: int, made: Made | None = None, most: 
             return ()
         before, typed, start = before[: partly.stop], begun.strip() + " " + typed, partly.stop
     rest = _HEAD.match(row, len(head)).end() if not typed.startswith('"') else len(head)
-    place = _Place(typed, block, partly, names_of(lines), made, line)
+    place = _Place(typed, block, partly, names_of(lines), made, line, paths)
     found: dict[str, _Bare] = {}
     for token in _order(partly.accepts - _used(block, partly)):
         for bare in _OFFERS.get(token, _keyword)(place, token):
@@ -266,16 +273,22 @@ def _durations(place: _Place, _: str) -> Iterator[_Bare]:
         yield "0", "a line at 0 says where the phrase begins", "number", ""
     else:
         for text in _COUNTED:
-            yield text, "counts", "number", ""
+            yield text, "count" if text == "1" else "counts", "number", ""
+        for number, unit in (("1", "bar"), ("2", "bars"), ("1.5", "s")):
+            yield f"{number}{unit}", UNITS[unit], "number", ""
 
 
 def _targets(place: _Place, _: str) -> Iterator[_Bare]:
     if _NUMBER.fullmatch(place.typed):
         for unit in TARGET_UNITS:
             yield f"{place.typed}{unit}", UNITS.get(unit, "share of the usable stroke, 0 to 1"), "number", ""
+        if place.typed.isdecimal() and 1 < int(place.typed[:4]) < 100:
+            share = f"{int(place.typed) / 100:g}"
+            yield share, f"{place.typed} % of the usable stroke", "number", place.typed
     else:
-        yield "0.5", "share of the usable stroke, 0 to 1", "number", ""
-        yield "12%", UNITS["%"], "number", ""
+        yield "0.5", "half of the usable stroke: a share of it, 0 to 1", "number", ""
+        for number, unit in (("12", "%"), ("240", "mm"), ("90", "deg")):
+            yield f"{number}{unit}", UNITS[unit], "number", ""
 
 
 def _hertz(place: _Place, _: str) -> Iterator[_Bare]:
@@ -307,11 +320,27 @@ def _signatures(place: _Place, _: str) -> Iterator[_Bare]:
         yield text, f"{text.partition('/')[0]} counts in a bar", "number", ""
 
 
+ENDINGS = {"rig": (".rig.toml", "the rig file"), "use": (".score", "the score")}
+"""What the files that a statement names end in, and what they are called."""
+
+
 def _paths(place: _Place, _: str) -> Iterator[_Bare]:
     score = None if place.made is None else place.made.score
     opens = str(place.partly.tokens[0]) if place.partly.tokens else ""
     if score is not None and opens == "rig" and score.rig is not None:
         yield score.rig.text, "the rig as it was", "path", ""
+    ending, what = ENDINGS.get(opens, ("", ""))
+    quoted = '"' if place.typed.startswith('"') else ""
+    for path in place.paths(place.typed.removeprefix('"'), ending) if ending else ():
+        # A path with a blank in it stands in quotes.
+        quote = '"' if quoted or any(c in path for c in ' "#') else ""
+        says = f"folder {path}" if path.endswith("/") else f"{what} {path}"
+        yield (
+            f"{quote}{path}{quote if not path.endswith('/') else ''}",
+            says,
+            "path",
+            path if quote else path.rpartition("/")[2],
+        )
 
 
 def _texts(place: _Place, _: str) -> Iterator[_Bare]:
@@ -325,8 +354,14 @@ def _texts(place: _Place, _: str) -> Iterator[_Bare]:
         yield f'"{place.made.score.title}"', "the title as it was", "text", ""
 
 
+def _texts_or_paths(place: _Place, token: str) -> Iterator[_Bare]:
+    """A path may stand in quotes too."""
+    yield from _paths(place, token) if place.typed.startswith('"') else ()
+    yield from _texts(place, token)
+
+
 _OFFERS: dict[str, Callable[[_Place, str], Iterator[_Bare]]] = {
     "SELECTION": _fibers, "PHRASE_NAME": _phrases, "PLACE": _places, "DURATION": _durations, "TARGET": _targets,
     "HERTZ": _hertz, "SPEED": _speeds, "NUMBER": _numbers, "INTEGER": _integers, "SIGNATURE": _signatures,
-    "PATH": _paths, "STRING": _texts,
+    "PATH": _paths, "STRING": _texts_or_paths,
 }  # fmt: skip

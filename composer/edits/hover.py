@@ -304,7 +304,7 @@ def _for_fibers(here: _Here, value: float, unit: str, made: Made) -> list[str]:
                             alike.setdefault(int(made.abilities.which[f]), []).append(f)
                     except UnknownName:
                         continue
-    told = []
+    told, too_much = [], 0
     for fibers in list(alike.values())[:MOST_PLAYERS]:
         f = np.array([fibers[0]])
         strain = float(in_strain(np.array([value]), np.array([IN_TRACKS.index(unit)]), f, made.abilities)[0])
@@ -313,10 +313,13 @@ def _for_fibers(here: _Here, value: float, unit: str, made: Made) -> list[str]:
             continue
         who = named([made.rig.fibers[n].name for n in sorted(set(fibers))])
         over = "; more than it can" if strain > stroke * (1 + 1e-9) else ""
+        too_much += bool(over) and unit == "%"
         told.append(
             f"{who}: {100 * strain:.1f} % strain, {strain * float(made.abilities.length_mm[f[0]]):.0f} mm, "
             f"{strain / stroke:.2f} of the stroke{over}."
         )
+    if too_much and value <= 100.0:
+        told.append(f"% is strain, a change of length; {value:g} % of the stroke is written {value / 100.0:g}.")
     return told
 
 

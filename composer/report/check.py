@@ -133,11 +133,20 @@ def together(snags: Iterable[Snag], tracks: Tracks) -> list[tuple[Snag, list[int
 
     Two stretches of one move are one to a reader: so what counts is when the move starts, where there is one.
     """
-    groups: dict[tuple, tuple[Snag, list[int]]] = {}
+    groups = [(alike[0], fibers_of(alike)) for alike in alike_but_for_the_fiber(snags, tracks)]
+    return sorted(groups, key=lambda group: -group[0].from_s)
+
+
+def fibers_of(snags: Iterable[Snag]) -> list[int]:
+    """The fibers of some snags, each once, in the order in which they come."""
+    return list(dict.fromkeys(snag.fiber for snag in snags if snag.fiber is not None))
+
+
+def alike_but_for_the_fiber(snags: Iterable[Snag], tracks: Tracks) -> list[list[Snag]]:
+    """Snags in groups that one sentence tells, in the order in which the first of each comes."""
+    groups: dict[tuple, list[Snag]] = {}
     for snag in snags:
         start = snag.from_s if snag.kind in ("hold", "duty", "air") else float(tracks.time_s[snag.knot])
         asked = (round(start, 6), float(f"{snag.needs:.6g}"), float(f"{snag.has:.6g}"))
-        _, fibers = groups.setdefault((snag.kind, snag.line, _phrase_line(snag, tracks), *asked), (snag, []))
-        if snag.fiber is not None and snag.fiber not in fibers:
-            fibers.append(snag.fiber)
-    return sorted(groups.values(), key=lambda group: -group[0].from_s)
+        groups.setdefault((snag.kind, snag.line, _phrase_line(snag, tracks), *asked), []).append(snag)
+    return list(groups.values())

@@ -10,7 +10,7 @@ from lark import Lark, Token, Tree
 from lark.exceptions import UnexpectedInput
 
 from composer.faults import nearest
-from composer.score.words import FAMILIES, KEYWORDS, OPTIONS, SAMPLES, TARGETS
+from composer.score.words import FAMILIES, KEYWORDS, OPTIONS, SAMPLES, TARGET_UNITS, TARGETS, UNITS
 
 STARTS = ("statement", "move", "entry")
 
@@ -88,7 +88,8 @@ def _misfit(start: str, body: str) -> Misfit:
     if at >= len(body):
         return Misfit(len(body) + 1, 1, "the line ends here", tell(accepts), "")
     word = match.group() if match else body[at]
-    return Misfit(at + 1, len(word), _found(word), tell(accepts), _hint(word, accepts, body[:at]))
+    hint = _joined(start, body[:at], word) or _hint(word, accepts, body[:at])
+    return Misfit(at + 1, len(word), _found(word), tell(accepts), hint)
 
 
 def _found(word: str) -> str:
@@ -98,6 +99,16 @@ def _found(word: str) -> str:
     if word[0].isalpha() and word not in KEYWORDS:
         return f"unknown word '{shown}'"
     return f"'{shown}' cannot stand here"
+
+
+def _joined(start: str, before: str, word: str) -> str:
+    """What to write where a number's unit stands apart from it, as in `every 3 bars`."""
+    number = re.search(r"(?<!\S)-?[0-9][0-9./+]*\s+$", before)
+    if number is None or (word not in UNITS and word not in TARGET_UNITS):
+        return ""
+    whole = number.group().rstrip() + word
+    fits = parse_partly(start, before[: number.start()] + whole)
+    return f"write number and unit together: {whole}" if fits.stop == number.start() + len(whole) else ""
 
 
 def tell(accepts: Iterable[str]) -> str:

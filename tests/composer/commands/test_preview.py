@@ -86,9 +86,11 @@ def test_without_a_screen_and_without_an_option_it_says_which_options_write_file
     ("options", "word"),
     [
         (["--png", "{folder}/no/such/out.png"], "no folder"),
-        (["--png", "{folder}/bench.score"], "write over"),
-        (["--csv", "{folder}/bench.rig.toml"], "write over"),
-        (["--png", "{folder}/a", "--csv", "{folder}/a"], "write over"),
+        (["--png", "{folder}/bench.score"], "bench.score' ends in '.score'; expected .png, which says what is made"),
+        (["--png", "{folder}/page.pdf"], "ends in '.pdf'; expected .png, which says what is made"),
+        (["--png", "{folder}/page"], "has no ending; expected .png"),
+        (["--csv", "{folder}/bench.rig.toml"], "ends in '.toml'; expected .csv"),
+        (["--movie", "{folder}/film.webm"], "ends in '.webm'; expected .mp4 or .gif"),
         (["--png", "{folder}/a.png", "--size", "9x9"], "out of range"),
         (["--png", "{folder}/a.png", "--size", "huge"], "no size"),
         (["--json", "--rate", "nan"], "out of range"),
@@ -141,8 +143,8 @@ def test_json_tells_what_fibers_will_do_tonight(score, capsys):
 @pytest.mark.parametrize(
     ("options", "word"),
     [
-        (["--movie", "{folder}/a.avi"], ".mp4 nor .gif"),
-        (["--movie", "{folder}/bench.score"], ".mp4 nor .gif"),
+        (["--movie", "{folder}/a.avi"], "expected .mp4 or .gif, which says what is made"),
+        (["--movie", "{folder}/bench.score"], "expected .mp4 or .gif, which says what is made"),
         (["--movie", "{folder}/a.mp4", "--size", "641x360"], "odd side"),
         (["--movie", "{folder}/a.mp4", "--size", "16x16"], "out of range"),
         (["--movie", "{folder}/a.mp4", "--size", "9000x9000"], "out of range"),
@@ -155,7 +157,7 @@ def test_json_tells_what_fibers_will_do_tonight(score, capsys):
         (["--movie", "{folder}/a.mp4", "--from", "1:3", "--to", "1:2"], "an end after the start"),
         (["--movie", "{folder}/a.mp4", "--view", "below"], "three-quarter"),
         (["--movie", "{folder}/no/such/a.mp4"], "no folder"),
-        (["--movie", "{folder}/a.mp4", "--png", "{folder}/a.mp4"], "write over"),
+        (["--movie", "{folder}/a.mp4", "--png", "{folder}/a.mp4"], "ends in '.mp4'; expected .png"),
         (["--json", "--from", "1:2"], "--movie"),
     ],
 )
@@ -184,7 +186,7 @@ def test_ctrl_c_while_filming_leaves_no_file(score, tmp_path):
     call = [sys.executable, "-m", "player.commands.main", "preview", path, "--movie", str(movie), "--fps", "60"]
     running = subprocess.Popen([*call, "--size", "1920x1080"], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True)
     deadline = 600
-    while not any(part.stat().st_size for part in tmp_path.glob(".drawcord-*.part")) and running.poll() is None and deadline:
+    while not any(part.stat().st_size for part in tmp_path.glob(".drawcord-*.part/*")) and running.poll() is None and deadline:
         deadline -= 1
         with contextlib.suppress(subprocess.TimeoutExpired):
             running.wait(timeout=0.1)

@@ -83,7 +83,7 @@ def test_when_time_is_up_the_best_that_is_known_is_told_as_such(demo, monkeypatc
 
 def test_two_outputs_cannot_be_one_file(demo):
     path = score(demo, "  reed.1  up\n")
-    found = run(path, "-o", demo / "same", "--png", demo / "same")
+    found = run(path, "-o", demo / "same.png", "--png", demo / "same.png")
     assert isinstance(found.exception, Faults) and "a file each" in str(found.exception)
 
 

@@ -46,8 +46,12 @@ def test_with_json_the_picture_is_written_in_silence(rig, tmp_path, capsys):
 def test_a_picture_is_never_written_over_the_rig(rig, capsys):
     was = rig.read_bytes()
     assert run(["rig", str(rig), "--png", str(rig)]) == 2
+    assert "ends in '.toml'; expected .png" in capsys.readouterr().err
+    named_as_one = rig.with_name("rig.png")
+    rig.rename(named_as_one)
+    assert run(["rig", str(named_as_one), "--png", str(named_as_one)]) == 2
     assert "--png would write over the rig" in capsys.readouterr().err
-    assert rig.read_bytes() == was
+    assert named_as_one.read_bytes() == was
 
 
 def test_a_rig_with_faults_ends_in_2_and_writes_nothing(rig, tmp_path, capsys):

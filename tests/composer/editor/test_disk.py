@@ -97,3 +97,14 @@ def test_the_demo_comes_with_the_folder_of_its_rig():
     text, folder = disk.demo()
     assert 'title   "Estuary"' in text
     assert os.path.exists(os.path.join(folder, "estuary.rig.toml"))
+
+
+def test_paths_are_those_of_the_folder_and_of_the_folders_below_until_a_folder_is_typed(tmp_path):
+    for name in ("a.rig.toml", "b.score", ".hidden.rig.toml", "rigs/c.rig.toml", "rigs/deep/d.rig.toml"):
+        (tmp_path / name).parent.mkdir(parents=True, exist_ok=True)
+        (tmp_path / name).touch()
+    at = str(tmp_path)
+    assert disk.paths_in(at, "", ".rig.toml") == ["a.rig.toml", "rigs/c.rig.toml"]
+    assert disk.paths_in(at, "rigs/c", ".rig.toml") == ["rigs/c.rig.toml", "rigs/deep/"]
+    assert disk.paths_in(str(tmp_path / "rigs"), "../", ".score") == ["../b.score", "../rigs/"]
+    assert disk.paths_in(at, "none/", ".score") == disk.paths_in(at, "nul\0/", ".score") == []

@@ -1,12 +1,14 @@
 """The whole window with its workers: text and cloth both ways, mends, drags, names for every control."""
 
 import os
+import re
 import signal
 
 import numpy as np
 import pytest
 from PySide6.QtCore import QEvent, QPointF, QSize, Qt
 from PySide6.QtGui import QKeySequence, QMouseEvent
+from PySide6.QtTest import QTest
 from PySide6.QtWidgets import (
     QAbstractButton,
     QAbstractScrollArea,
@@ -424,9 +426,30 @@ def test_everything_in_the_table_is_in_the_menus_and_on_the_sheet_of_keys(bench)
             assert action.says.replace("&", "&amp;").replace("<", "&lt;") in sheet
     keys = [action.keys for action in ACTIONS if action.keys]
     assert len({QKeySequence(one).toString() for one in keys}) == len(keys), "two actions share their keys"
-    page = KeysSheet(window)
-    assert not page.isModal()
-    page.deleteLater()
+
+
+@pytest.mark.parametrize("key", [Qt.Key.Key_Escape, Qt.Key.Key_F1])
+def test_the_sheet_of_keys_lies_in_the_window_and_goes_by_escape_or_f1_back_to_where_one_was(bench, key):
+    window = bench.window
+    window.activateWindow()
+    window.pane.setFocus()
+    window.do_keys()
+    sheet = window.findChild(KeysSheet)
+    assert sheet.isVisible() and not sheet.isWindow()
+    assert sheet.isAncestorOf(window.focusWidget())
+    QTest.keyClick(window.focusWidget(), key)
+    assert window.findChild(KeysSheet) is None
+    assert window.focusWidget() is window.pane
+
+
+def test_tab_and_foot_count_the_same_snags_and_so_do_the_rows_together(bench):
+    window = bench.window
+    count = bench.known.checked.count
+    assert count > len(window.snags.rows) > 0
+    assert window.foot.said("snags") == f"{count} snags" == window.lists.tabText(0)
+    told = [window.snags.list.item(at).text() for at in range(len(window.snags.rows))]
+    found = [re.search(r"\(([0-9]+) snags\)$", one) for one in told]
+    assert sum(int(one[1]) if one else 1 for one in found) == count
 
 
 def test_the_keys_go_round_all_parts_of_the_window(bench):

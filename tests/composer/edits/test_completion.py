@@ -57,9 +57,44 @@ def test_a_move_has_targets_then_shapes_and_manners():
 
 def test_units_are_offered_behind_a_number():
     assert offers("phrase q\n  12") == ["12", "12s", "12ms", "12bars"]
-    assert offers("phrase q\n  3 12") == ["12", "12%", "12mm", "12deg"]
+    assert offers("phrase q\n  3 12") == ["12", "12%", "12mm", "12deg", "0.12"]
     assert offers("section n at 2:1\n  reeds gather ripple 0.8 ") == ["0.8 m/s"]
     assert offers("phrase q\n  3 full quiver 4") == ["4Hz"]
+
+
+def test_who_types_a_percentage_of_the_stroke_is_offered_the_share_that_means_it():
+    text = "phrase q\n  3 70"
+    (share,) = [one for one in complete(text, 2, 7) if one.text == "0.7"]
+    assert share.says == "70 % of the usable stroke"
+    (strain,) = [one for one in complete(text, 2, 7) if one.text == "70%"]
+    assert strain.says.startswith("strain")
+
+
+def test_with_nothing_typed_a_target_and_a_distance_show_the_forms_that_they_may_have():
+    assert {"0.5", "12%", "240mm", "90deg"} <= set(offers("phrase q\n  3 "))
+    assert {"1", "1/2", "1bar", "2bars", "1.5s"} <= set(offers("section n at 2:1\n  reeds gather times 3 every "))
+
+
+def _paths(typed, ending):
+    there = {"": ["a.rig.toml", "my rig.rig.toml", "rigs/b.rig.toml", "c.score"], "rigs/": ["rigs/b.rig.toml", "rigs/old/"]}
+    return [one for one in there[typed[: typed.rfind("/") + 1]] if one.endswith((ending, "/"))]
+
+
+@pytest.mark.parametrize(
+    ("row", "found"),
+    [
+        ("rig ", ["a.rig.toml", '"my rig.rig.toml"', "rigs/b.rig.toml"]),
+        ("rig a", ["a.rig.toml"]),
+        ("rig b", ["rigs/b.rig.toml"]),
+        ("rig rigs/", ["rigs/b.rig.toml", "rigs/old/"]),
+        ('rig "my', ['"my rig.rig.toml"']),
+        ("use ", ["c.score"]),
+    ],
+)
+def test_behind_rig_and_use_the_files_that_are_there_are_offered(row, found):
+    offered = complete(row, 1, len(row) + 1, paths=_paths)
+    assert [one.text for one in offered] == found
+    assert {one.start for one in offered} == {5} and {one.kind for one in offered} == {"path"}
 
 
 def test_places_are_found_by_the_names_of_cues_and_sections_the_nearest_first():

@@ -87,6 +87,15 @@ def test_a_target_is_so_much_strain_for_who_plays_it(make_rig):
     assert "more than it can" in explain(TEXT.replace("0.5", "1.5"), 6, 5, made(TEXT, make_rig(4))).lines[0]
 
 
+def test_a_percentage_that_is_more_strain_than_can_be_is_told_how_a_share_of_the_stroke_is_written(make_rig):
+    text = TEXT.replace("0.5", "70%")
+    assert explain(text, 6, 5, made(text, make_rig(4))).lines[-1] == (
+        "% is strain, a change of length; 70 % of the stroke is written 0.7."
+    )
+    little = TEXT.replace("0.5", "5%")
+    assert "is written" not in explain(little, 6, 5, made(little, make_rig(4))).lines[-1]
+
+
 @pytest.mark.parametrize("option", sorted(OPTIONS))
 def test_an_option_is_explained_by_its_own_sentence(make_rig, option):
     tails = {"ripple": "1 m/s along x", "scatter": "1 seed 2", "add": "", "mirror": "", "retrograde": "", "at": "2:1"}

@@ -78,6 +78,11 @@ def test_a_misfit_is_found_whole_at_its_column(start, body, column, width, found
         ("entry", "  reeds flick canon 2 from midle", "did you mean 'middle'?"),
         ("statement", "title “x”", 'write straight quotes: "'),
         ("statement", 'title "x', "the quotes are not closed"),
+        ("entry", "  reeds flick times 3 every 3 bars", "write number and unit together: 3bars"),
+        ("entry", "  reeds flick after 1.5 s", "write number and unit together: 1.5s"),
+        ("move", "  2 70 %", "write number and unit together: 70%"),
+        ("move", "  2 240 mm smooth", "write number and unit together: 240mm"),
+        ("entry", "  reeds flick scale 2 %", ""),
     ],
 )
 def test_a_misfit_comes_with_what_to_do(start, body, hint):
