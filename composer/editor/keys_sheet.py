@@ -118,12 +118,11 @@ class KeysSheet(QFrame):
         """Stay in the window's middle; F1 and Escape put it away, also as a shortcut that the window has too."""
         if event.type() == QEvent.Type.Resize and watched is self.parentWidget():
             self._place()
-        elif event.type() in (QEvent.Type.ShortcutOverride, QEvent.Type.KeyPress) and isinstance(event, QKeyEvent):
-            if watched is self._page and event.key() in (Qt.Key.Key_F1, Qt.Key.Key_Escape):
-                event.accept()
-                if event.type() == QEvent.Type.KeyPress:
-                    self.put_away()
-                return True
+        elif watched is self._page and isinstance(event, QKeyEvent) and event.key() in (Qt.Key.Key_F1, Qt.Key.Key_Escape):
+            event.accept()
+            if event.type() == QEvent.Type.KeyPress:
+                self.put_away()
+            return True
         return super().eventFilter(watched, event)
 
 
