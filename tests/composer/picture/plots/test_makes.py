@@ -8,8 +8,8 @@ from composer.picture.plots.makes import FOOT, HEAD, MOST_ROWS, ROW, foot_note, 
 from composer.picture.png import drawn
 from composer.rig.reading import read_rig
 
-from ..fiber.makes import CORD, EACH, mounted
-from ..fiber.rigs import rig_of
+from ...fiber.makes import CORD, EACH, mounted
+from ...fiber.rigs import rig_of
 
 
 def pixels_of(picture):
