@@ -13,6 +13,9 @@ from player.window.window import OPENS_AT, RehearseWindow
 
 SIGNALS_MS = 300
 
+TURNS_S = 0.0005
+"""How long a thread of Python goes on while another one waits: a key must not wait for the thread that draws the fibers."""
+
 
 def application() -> QApplication:
     """The one application, made where there is none yet."""
@@ -22,6 +25,7 @@ def application() -> QApplication:
     QGuiApplication.setApplicationDisplayName("Drawcord")
     made = QApplication(sys.argv[:1])
     made.setApplicationName("drawcord")
+    sys.setswitchinterval(TURNS_S)
     return made
 
 

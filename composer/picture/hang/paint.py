@@ -30,6 +30,9 @@ WIDTHS = 0.5
 FINE_PX = 0.7
 """Pixels between points of a curve below which some are left out."""
 
+AT_ONCE = 64
+"""Lines, or points, that are drawn in one go."""
+
 LAYERS = 6
 """Depths that are told apart when nearer fibers are laid over farther ones."""
 
@@ -225,9 +228,12 @@ def _ghost_ends(painter: QPainter, room: Room, look: Look, there: Array, here: A
 
 
 def _lines(painter: QPainter, begins: Array, ends: Array) -> None:
-    """Draw lines between points (N, 2) and (N, 2)."""
-    if len(begins):
-        painter.drawLines([QLineF(*each) for each in np.column_stack([begins, ends]).tolist()])
+    """Draw lines between points (N, 2) and (N, 2), a few at a time: while Qt draws, no other thread has a turn, and a window's
+    must not wait long for its keys.
+    """
+    lines = [QLineF(*each) for each in np.column_stack([begins, ends]).tolist()]
+    for first in range(0, len(lines), AT_ONCE):
+        painter.drawLines(lines[first : first + AT_ONCE])
 
 
 def _thinned(points: Array) -> Array:
@@ -256,29 +262,37 @@ def _bodies(
     shade = np.rint((REST_SHADE + (1.0 - REST_SHADE) * share) * (SHADES - 1)).astype(int)
     width = widths(room, camera, look, strain)
     step = np.maximum(np.rint(width / (WIDTHS * look.scale)), 1).astype(int)
-    far = _layers(depth(hanging.at, camera.view))
-    alike = np.column_stack([step, shade, room.extending, -far])
-    order = np.lexsort(alike.T)
-    cuts = np.flatnonzero(np.any(np.diff(alike[order], axis=0), axis=1)) + 1
+    far = LAYERS - 1 - _layers(depth(hanging.at, camera.view))
+    # Those alike have one number, that of the farthest the least.
+    alike = ((far * 2 + room.extending) * SHADES + shade) * (int(step.max(initial=0)) + 1) + step
+    order = np.argsort(alike, kind="stable")
+    cuts = np.flatnonzero(np.diff(alike[order])) + 1
     painter.setBrush(Qt.BrushStyle.NoBrush)
     for fiber in sorted(lit):
         if 0 <= fiber < len(room.names):
             painter.setPen(_round(look.theme.chosen, float(width[fiber]) + look.px(5)))
             painter.drawPolyline(_polygon(lines[first[fiber] : first[fiber + 1]]))
     size = look.px(2)
+    last = lines[first[1:] - 1]
+    bent = hanging.bend != 0.0
     for group in np.split(order, cuts):
         head = group[0]
         ramp = look.theme.extend if room.extending[head] else look.theme.contract
         red, green, blue = ramp[round(shade[head] / (SHADES - 1) * (palette.STEPS - 1))].tolist()
         wide = float(step[head] * WIDTHS * look.scale)
-        painter.setPen(_round((red, green, blue), wide))
-        straight = group[hanging.bend[group] == 0.0]
-        _lines(painter, lines[first[straight]], lines[first[straight + 1] - 1])
-        for fiber in group[hanging.bend[group] != 0.0].tolist():
-            painter.drawPolyline(_polygon(_thinned(lines[first[fiber] : first[fiber + 1]])))
+        straight = group[~bent[group]]
+        if len(straight):
+            # Flat at their ends, as Qt has a quicker way for such lines; the bar is over one end and the bead over the other.
+            painter.setPen(_flat((red, green, blue), wide))
+            _lines(painter, lines[first[straight]], last[straight])
+        if len(straight) < len(group):
+            painter.setPen(_round((red, green, blue), wide))
+            for fiber in group[bent[group]].tolist():
+                painter.drawPolyline(_polygon(_thinned(lines[first[fiber] : first[fiber + 1]])))
         # A bead at the end, so that a small motion is seen where it is largest.
         painter.setPen(_round((red, green, blue), wide + 2 * size))
-        painter.drawPoints(_polygon(lines[first[group + 1] - 1]))
+        for some in range(0, len(group), AT_ONCE):
+            painter.drawPoints(_polygon(last[group[some : some + AT_ONCE]]))
 
 
 def _layers(deep: Array) -> NDArray[np.int64]:
@@ -295,6 +309,11 @@ def widths(room: Room, camera: Camera, look: Look, strain: Array) -> Array:
     thinnest = float((2.0 * room.hanging.radius * camera.scale).min(initial=np.inf))
     least = 3.0 * look.scale
     return true * max(1.0, least / thinnest) if np.isfinite(thinnest) and thinnest > 0.0 else true
+
+
+@lru_cache(maxsize=4096)
+def _flat(of: palette.Colour, width: float) -> QPen:
+    return pen(of, width)
 
 
 @lru_cache(maxsize=4096)
