@@ -212,12 +212,16 @@ class Showing(QObject):
         known, cloth = self.known, self.stage.cloth
         if self._carried is not None or cloth.weave is None:
             return
+        words_of = ("as written", "retimed")
         if self._ghost_said is not None:
-            cloth.set_ghost(self._ghost_said, ("as written", words or "mended"))
+            ghost, words_of = self._ghost_said, ("as written", words or "mended")
         elif self.beside and known.retimed is not None and known.retimed.hits:
-            cloth.set_ghost(known.retimed.tracks)
+            ghost = known.retimed.tracks
         else:
-            cloth.set_ghost(None)
+            ghost = None
+        # Cloth and strand follow one another, so the strand has to know of the later end first.
+        self.strand.reach(0.0 if ghost is None else ghost.duration_s)
+        cloth.set_ghost(ghost, words_of)
 
     def carry(self, tracks: Tracks | None) -> None:
         """Show tracks that would come of a drag under way; None: it is over."""

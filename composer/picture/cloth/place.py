@@ -27,6 +27,7 @@ class ClothPlace(QWidget):
         self._theme = theme
         self._weave: Weave | None = None
         self._from_s, self._to_s = 0.0, 1.0
+        self._reach_s = 0.0
         self._zoom, self._place = 1.0, 0.0
         self._rows: tuple[tuple[object, int, int], Rows] | None = None
         self._view: View | None = None
@@ -58,9 +59,21 @@ class ClothPlace(QWidget):
         """How much higher than the window all threads are together; 1 where all are shown."""
         return self._zoom
 
+    @property
+    def _end_s(self) -> float:
+        """The end of all that can be shown: the score's, or that of what would be instead, where it is later."""
+        return max(self._weave.to_s, self._reach_s) if self._weave else 1.0
+
+    def reach(self, end_s: float) -> None:
+        """Something may be shown up to there, also beyond the score's end; who saw all before sees all then."""
+        all_seen = self._weave is not None and self._from_s <= 0.0 and self._to_s >= self._end_s - SAME_S
+        before, self._reach_s = self._end_s, end_s
+        if self._end_s != before:
+            self.show_stretch(*((0.0, self._end_s) if all_seen else self.shown))
+
     def show_stretch(self, from_s: float, to_s: float) -> None:
         """Show a stretch of time, moved and shortened so that it lies within the whole."""
-        whole = self._weave.to_s if self._weave else 1.0
+        whole = self._end_s
         length = min(max(to_s - from_s, min(NARROWEST_S, whole)), whole)
         begin = min(max(from_s, 0.0), whole - length)
         if abs(begin - self._from_s) > SAME_S or abs(begin + length - self._to_s) > SAME_S:
@@ -71,7 +84,7 @@ class ClothPlace(QWidget):
     def show_all(self) -> None:
         """Show the whole score and all threads."""
         self._zoom, self._place = 1.0, 0.0
-        self.show_stretch(0.0, self._weave.to_s if self._weave else 1.0)
+        self.show_stretch(0.0, self._end_s)
         self._redraw()
 
     def zoom_time(self, factor: float, about_s: float) -> None:
@@ -93,7 +106,7 @@ class ClothPlace(QWidget):
 
     def scroll_time(self, by_s: float) -> None:
         """Move along in time."""
-        whole, length = self._weave.to_s if self._weave else 1.0, self._to_s - self._from_s
+        whole, length = self._end_s, self._to_s - self._from_s
         begin = min(max(self._from_s + by_s, 0.0), whole - length)
         self.show_stretch(begin, begin + length)
 
@@ -151,7 +164,7 @@ class ClothPlace(QWidget):
 
     def _place_bars(self, view: View) -> None:
         """Scroll bars say where in the whole the window is."""
-        whole = self._weave.to_s if self._weave else 1.0
+        whole = self._end_s
         length = self._to_s - self._from_s
         page = round(length / whole * STEPS)
         _set(self._along, STEPS - page, page, round(self._from_s / whole * STEPS))
@@ -163,7 +176,7 @@ class ClothPlace(QWidget):
         if view is None or self._weave is None:
             return
         if self.sender() is self._along:
-            begin = value / STEPS * self._weave.to_s
+            begin = value / STEPS * self._end_s
             self.show_stretch(begin, begin + self._to_s - self._from_s)
         else:
             self.scroll_threads(value - view.scroll)

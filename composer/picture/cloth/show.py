@@ -82,7 +82,7 @@ class ClothShow(ClothPlace):
         count = weave.tracks.fibers
         self.setAccessibleName(f"cloth of {count} fiber{'s' * (count != 1)}")
         if before is None or (self._from_s <= 0.0 and self._to_s >= before.to_s):
-            self._from_s, self._to_s = 0.0, weave.to_s
+            self._from_s, self._to_s = 0.0, self._end_s
             self.stretch_changed.emit(self._from_s, self._to_s)
         else:
             self.show_stretch(self._from_s, self._to_s)
@@ -96,6 +96,7 @@ class ClothShow(ClothPlace):
         if self._shown is not None:
             fits = tracks is not None and tracks.fibers == self._shown.weave.tracks.fibers
             self._shown = replace(self._shown, ghost=tracks if fits else None, words=words)
+            self.reach(tracks.duration_s if fits else 0.0)
             self._redraw()
 
     def _threads_of(self, shown: Shown) -> Source:

@@ -20,6 +20,9 @@ from composer.picture.strand.curve import Knots, reach
 
 Array = NDArray[np.float64]
 
+WITHIN, ENDS = "within reach", "rest, full stroke"
+"""What each move could get to from where it begins; the ends of what can be asked for."""
+
 MOST_KNOTS = 400
 """Knots drawn at once; zoomed out further they would cover the curve."""
 
@@ -164,9 +167,11 @@ def _legend(painter: QPainter, at: Face, strand: Strand) -> None:
     painter.setPen(pen(theme.edge, look.px(1)))
     painter.drawRect(swatch)
     x += px(24)
-    look.write(
-        painter, QRectF(x, middle - px(9), at.box.right() - x, px(18)), "within reach of each move", 11.5, theme.quiet_ink
-    )
+    x += look.write(painter, QRectF(x, middle - px(9), at.box.right() - x, px(18)), WITHIN, 11.5, theme.quiet_ink) + px(20)
+    if x + px(30) + look.width(ENDS, 11.5) <= at.box.right():
+        painter.setPen(pen(theme.limit, look.px(1.2), dash=(5.0, 3.0)))
+        painter.drawLine(QPointF(x, middle), QPointF(x + px(24), middle))
+        look.write(painter, QRectF(x + px(30), middle - px(9), at.box.right() - x, px(18)), ENDS, 11.5, theme.limit)
 
 
 def _band(painter: QPainter, at: Face, strand: Strand) -> None:
@@ -190,9 +195,6 @@ def _band(painter: QPainter, at: Face, strand: Strand) -> None:
     for level in (0.0, stroke):
         y = float(at.y_of(level))
         painter.drawLine(QPointF(at.box.left(), y), QPointF(at.box.right(), y))
-    high = float(at.y_of(stroke))
-    room = QRectF(at.box.right() - look.px(120), high + look.px(1), look.px(114), look.px(14))
-    look.write(painter, room, "full stroke", 10.5, theme.limit, RIGHT)
 
 
 def _snags(painter: QPainter, at: Face, strand: Strand) -> None:

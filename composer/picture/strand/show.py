@@ -66,6 +66,7 @@ class StrandShow(QWidget):
         self._simulated: tuple[Array, Array] | None = None
         self._snags: tuple[tuple[float, float, str], ...] = ()
         self._from_s, self._to_s = 0.0, 1.0
+        self._reach_s = 0.0
         self._head_s = 0.0
         self._grid, self._targets = 0.25, 0.05
         self._percent = False
@@ -114,7 +115,7 @@ class StrandShow(QWidget):
         if other or before is None or len(before.segment) != len(self._knots.segment):
             self._held, self._chosen = None, -1
         if known is None:
-            self._from_s, self._to_s = 0.0, weave.to_s
+            self._from_s, self._to_s = 0.0, self._end_s
         self.setAccessibleName(f"strand of {weave.names[fiber]}")
         self.setAccessibleDescription(". ".join(words for _, _, words in self._snags))
         self.update()
@@ -166,9 +167,20 @@ class StrandShow(QWidget):
         self._head_s = at_s
         self.update()
 
+    @property
+    def _end_s(self) -> float:
+        """The end of all that can be shown: the score's, or that of what would be instead, where it is later."""
+        return max(self._weave.to_s, self._reach_s) if self._weave else 1.0
+
+    def reach(self, end_s: float) -> None:
+        """Something may be shown up to there, also beyond the score's end."""
+        self._reach_s = end_s
+        if self._weave is not None:
+            self.show_stretch(*self.shown)
+
     def show_stretch(self, from_s: float, to_s: float) -> None:
         """Show a stretch of time, within the score."""
-        whole = self._weave.to_s if self._weave else max(to_s, 1e-3)
+        whole = self._end_s if self._weave else max(to_s, 1e-3)
         length = min(max(to_s - from_s, min(NARROWEST_S, whole)), whole)
         begin = min(max(from_s, 0.0), whole - length)
         if abs(begin - self._from_s) > SAME_S or abs(begin + length - self._to_s) > SAME_S:

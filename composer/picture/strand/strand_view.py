@@ -247,7 +247,7 @@ class StrandView(StrandShow):
             middle = self._head_s if self._from_s <= self._head_s <= self._to_s else (self._from_s + self._to_s) / 2
             self._zoom(1 / 0.7 if key == Qt.Key.Key_Minus else 0.7, middle)
         elif key == Qt.Key.Key_0:
-            self.show_stretch(0.0, self._weave.to_s)
+            self.show_stretch(0.0, self._end_s)
         elif key in (Qt.Key.Key_Home, Qt.Key.Key_End):
             self._put_head(0.0 if key == Qt.Key.Key_Home else self._weave.to_s)
         elif enter and self._chosen >= 0:

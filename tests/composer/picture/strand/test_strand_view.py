@@ -219,3 +219,14 @@ def test_any_size_can_be_drawn(strand, size):
 def test_the_sheet_of_keys_names_every_key_once():
     names = [name for name, _ in KEYS]
     assert len(set(names)) == len(names)
+
+
+def test_a_strand_can_be_shown_as_far_as_what_lies_beside_it_reaches(strand):
+    whole = strand._weave.to_s
+    strand.show_stretch(0.0, whole + 5.0)
+    assert strand.shown == (0.0, whole)
+    strand.reach(whole + 5.0)
+    strand.show_stretch(0.0, whole + 5.0)
+    assert strand.shown == (0.0, whole + 5.0)
+    strand.reach(0.0)
+    assert strand.shown == (0.0, whole)
