@@ -121,9 +121,13 @@ class Deeds:
     def do_complete(self) -> None:
         """Offer all that may stand at the caret."""
         self.pane.setFocus()
-        self.crew.ask(
-            "complete", self.pane.place, lambda offers: self.offers.offer(offers if isinstance(offers, tuple) else ())
-        )
+        place = self.pane.place
+
+        def show(offers: Any) -> None:
+            if self.pane.place == place:
+                self.offers.offer(offers if isinstance(offers, tuple) else ())
+
+        self.crew.ask("complete", place, show)
 
     def do_explain(self) -> None:
         """Say what the word at the caret means."""

@@ -51,16 +51,17 @@ def rows() -> list[tuple[str, list[tuple[str, str, str]]]]:
 
 
 def as_html() -> str:
-    """The sheet as a page."""
+    """The sheet as a page: one table, so that its columns stand below one another."""
     parts = []
     for name, lines in rows():
-        body = "".join(
+        parts.append(f"<tr><td colspan='3' style='padding:12px 4px 4px 4px'><big><b>{_plain(name)}</b></big></td></tr>")
+        parts += [
             f"<tr><td style='padding:2px 18px 2px 4px; white-space:nowrap'><b>{_plain(keys)}</b></td>"
-            f"<td style='padding:2px 18px 2px 0; white-space:nowrap'>{_plain(word)}</td><td>{_plain(says)}</td></tr>"
+            f"<td style='padding:2px 18px 2px 0; white-space:nowrap'>{_plain(word)}</td>"
+            f"<td style='padding:2px 4px 2px 0'>{_plain(says)}</td></tr>"
             for word, keys, says in lines
-        )
-        parts.append(f"<h3>{_plain(name)}</h3><table>{body}</table>")
-    return "".join(parts)
+        ]
+    return f"<table>{''.join(parts)}</table>"
 
 
 class KeysSheet(QFrame):

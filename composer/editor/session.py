@@ -19,7 +19,7 @@ LOOK_MS = 1000
 """How often files are looked at for what others have written."""
 
 NEW = """title   "Untitled"
-rig
+rig    \x20
 
 meter   4/4
 tempo   60
@@ -33,6 +33,9 @@ section one at 1:1
 """
 """What a new score begins with."""
 
+RIG_AT = (2, 9)
+"""Where in it the rig is to be named: line and column."""
+
 UNNAMED = "untitled.score"
 
 
@@ -41,12 +44,14 @@ class Session(QObject):
 
     began: another text was begun (the file that relative paths start from, and the text); named: its name has changed
     saved: it was saved; leaned_changed: a file that the score leans on has changed
+    rig_wanted: a new score waits for its rig, with the caret where that is named
     """
 
     began = Signal(str, str)
     named = Signal()
     saved = Signal(str)
     leaned_changed = Signal()
+    rig_wanted = Signal()
 
     def __init__(self, pane: TextPane, notices: Notices, later: Later, parent: QObject | None = None):
         super().__init__(parent)
@@ -107,6 +112,7 @@ class Session(QObject):
         self.path, self.base, self._stamp, self._line_end, self._is_demo = found, found, None, disk.LF, False
         self._begin(NEW, recovery.hash_of(NEW), disk.recovery_path(found))
         self._pane.document().setModified(True)
+        self._wait_for_rig()
 
     def open_demo(self) -> None:
         """Begin with an unsaved copy of *Estuary*."""
@@ -116,6 +122,11 @@ class Session(QObject):
     def new(self) -> None:
         """Begin with next to nothing."""
         self._unnamed(NEW, os.path.join(os.path.dirname(self.base) if self.path else os.getcwd(), UNNAMED))
+        self._wait_for_rig()
+
+    def _wait_for_rig(self) -> None:
+        self._pane.go_to(*RIG_AT)
+        self.rig_wanted.emit()
 
     def _unnamed(self, text: str, base: str, demo: bool = False) -> None:
         self.path, self.base, self._stamp, self._line_end, self._is_demo = None, base, None, disk.LF, demo

@@ -152,6 +152,7 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
         self.session.named.connect(self._say_saved)
         self.session.saved.connect(lambda path: self.foot.say("word", f"Saved: {path}"))
         self.session.leaned_changed.connect(crew.again)
+        self.session.rig_wanted.connect(self.do_complete)
         crew.said.connect(self._hear)
         crew.doing.connect(self._say_doing)
         crew.died.connect(lambda says: self.notices.say("worker", says, kind="fault"))
@@ -239,7 +240,7 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
             self.foot.say("place", f"{what}    line {line}, column {column}")
 
     def _typed(self, character: str) -> None:
-        if character.isalnum() or character in "._-:":
+        if character.isalnum() or character in "._-:/":
             self.crew.ask("complete", self.pane.place, self._offer_typed)
         else:
             self.offers.hide()

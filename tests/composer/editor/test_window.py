@@ -253,6 +253,20 @@ def test_words_are_completed(bench, qtbot):
     pane.go_to(14, 100)
 
 
+def test_a_new_score_waits_for_its_rig_and_offers_those_that_are_there(bench, home):
+    window = bench.window
+    window.pane.document().setModified(False)
+    window.do_new()
+    assert window.pane.place == (2, 9)
+    bench.until(window.offers.isVisible, "the rigs that are there")
+    assert "bench.rig.toml" in window.offers.item(0).text()
+    window.offers.take()
+    assert "\nrig     bench.rig.toml\n" in window.pane.text
+    bench.settled()
+    window.pane.document().setModified(False)
+    window.session.open(str(home / "bench.score"))
+
+
 def test_hovering_says_what_a_word_means(bench):
     window = bench.window
     window.pane.go_to(12, 4)
