@@ -1,5 +1,6 @@
 """What goes on between the parts of the window: what the workers say, what is chosen on cloth, strand and lists."""
 
+from math import nextafter
 from typing import Any
 
 from composer.editor.looks import Mark
@@ -70,7 +71,8 @@ class Between:
 
     def _knot_clicked(self, segment: int, seconds: float) -> None:
         if self.strand.fiber is not None:
-            self.crew.ask("source", (self.strand.fiber, seconds), self._go_to_source)
+            # At its instant the next move begins; the knot is the end of the move before.
+            self.crew.ask("source", (self.strand.fiber, nextafter(seconds, 0.0)), self._go_to_source)
 
     def _go_to_source(self, source: Any) -> None:
         if source is None or isinstance(source, Refusal):

@@ -91,6 +91,17 @@ def second_ticks(from_s: float, to_s: float, width: float, label_px: float) -> t
 _ROUND_SECONDS = (0.001, 0.002, 0.005, 0.01, 0.02, 0.05, 0.1, 0.2, 0.5, 1, 2, 5, 10, 15, 30, 60, 120, 300, 600, 1200, 3600)
 
 
+def grid_lines(tempo: Bars, grid: float, from_s: float, to_s: float, per_px: float, least_px: float) -> list[float]:
+    """The instants, in s, of a grid of counts that are drawn between two: every second, fourth or so on where the lines would
+    lie closer than `least_px`; the first is just before `from_s`. per_px: seconds a pixel"""
+    counts = [float(tempo.counts(at)) for at in (from_s, to_s)]
+    step = grid
+    while (counts[1] - counts[0]) / step * least_px * per_px > to_s - from_s:
+        step *= 2.0
+    first, last = (int(np.floor(count / step)) for count in counts)
+    return tempo.seconds(np.arange(first, last + 1) * step).tolist()
+
+
 def say_seconds(seconds: float, digits: int = 0) -> str:
     """A time as read on an axis: "12.5 s" below a minute, "3:05" from there on."""
     if seconds < 60:

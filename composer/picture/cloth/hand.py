@@ -1,12 +1,14 @@
 """The living cloth under the mouse: what is asked for goes out as signals, the text is changed elsewhere."""
 
 from dataclasses import dataclass
+from math import nextafter
 
 import numpy as np
 from PySide6.QtCore import QEvent, QPointF, Qt, Signal
 from PySide6.QtGui import QMouseEvent, QNativeGestureEvent, QPainter, QWheelEvent
 from PySide6.QtWidgets import QToolTip, QWidget
 
+from composer.picture.axes import grid_lines
 from composer.picture.cloth import over
 from composer.picture.cloth.hits import moved_together, nearest
 from composer.picture.cloth.sampling import sampler_of
@@ -18,7 +20,8 @@ from composer.picture.units import in_words
 
 NEAR_PX = 7
 """How near to a hit, in pixels at scale 1, a press takes hold of it; and how far a press moves before it drags."""
-GRID_LINES = 400
+GRID_PX = 8
+"""How far apart the lines of a grid are drawn at least."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,7 +39,8 @@ class Held:
 class ClothHand(ClothShow):
     """A cloth that can be clicked and dragged.
 
-    thread_clicked(fiber, seconds): a thread was chosen at an instant; comes before `snag_chosen` where there is a snag too
+    thread_clicked(fiber, seconds): a thread was chosen at an instant, that of a hit as the last of the move that lands there;
+        comes before `snag_chosen` where there is a snag too
     snag_chosen(index): a snag, by its index in the weave
     hit_dragged(segment, seconds, free): a hit is being moved there; `seconds` is on the grid unless `free`
     hit_dropped(kept): the hit was let go; where not `kept`, `hit_dragged` has just put it back
@@ -127,11 +131,10 @@ class ClothHand(ClothShow):
         held = self._held
         if held is None or self._weave is None or held.fiber >= self._weave.tracks.fibers:
             return
-        tempo = self._weave.tempo
-        first, last = (int(np.floor(float(tempo.counts(at)) / self._grid)) for at in (view.from_s, view.to_s))
-        grid = tempo.seconds(np.arange(first, last + 1) * self._grid) if last - first <= GRID_LINES else np.zeros(0)
+        apart = view.look.px(GRID_PX)
+        grid = grid_lines(self._weave.tempo, self._grid, view.from_s, view.to_s, view.per_px, apart)
         words = self.say_time(held.now_s) + (", off the grid" if held.free else "")
-        over.dragged(painter, view, held.fiber, held.was_s, held.now_s, words, grid.tolist())
+        over.dragged(painter, view, held.fiber, held.was_s, held.now_s, words, grid)
 
     # Mouse.
 
@@ -188,7 +191,8 @@ class ClothHand(ClothShow):
             held = self._held
             self._let_go(True)
             if held is not None and not held.moved:
-                self.thread_clicked.emit(held.fiber, held.was_s)
+                # At its instant the next move begins; the hit is the end of the move before.
+                self.thread_clicked.emit(held.fiber, nextafter(held.was_s, 0.0))
         elif press[0] == "cloth":
             self._click(view, at)
 

@@ -8,7 +8,7 @@ from PySide6.QtCore import QLineF, QPointF, QRect, QRectF, Qt
 from PySide6.QtGui import QPainter, QPolygonF
 
 from composer.limits.abilities import Abilities
-from composer.picture.axes import bar_ticks, value_ticks
+from composer.picture.axes import bar_ticks, grid_lines, value_ticks
 from composer.picture.bars import Bars
 from composer.picture.cloth.over import rhomb
 from composer.picture.cloth.sampling import Sampler
@@ -263,11 +263,9 @@ def dragged(painter: QPainter, at: Face, strand: Strand, way: str, was: tuple[fl
     look, px, theme = at.look, at.look.px, at.look.theme
     painter.setPen(pen(theme.chosen, look.px(1), 90))
     if way != "target":
-        first, last = (int(np.floor(float(strand.tempo.counts(one)) / grid)) for one in (at.from_s, at.to_s))
-        if last - first <= 400:
-            for x in at.x_of(strand.tempo.seconds(np.arange(first, last + 1) * grid)).tolist():
-                if at.box.left() <= x <= at.box.right():
-                    painter.drawLine(QLineF(x, at.box.top(), x, at.box.bottom()))
+        for x in at.x_of(grid_lines(strand.tempo, grid, at.from_s, at.to_s, at.per_px, px(8))).tolist():
+            if at.box.left() <= x <= at.box.right():
+                painter.drawLine(QLineF(x, at.box.top(), x, at.box.bottom()))
     if way != "time":
         stroke = float(strand.abilities.stroke[strand.fiber])
         for share in np.arange(0.0, 1.0 + 1e-9, targets):

@@ -6,7 +6,7 @@ import signal
 
 import numpy as np
 import pytest
-from PySide6.QtCore import QEvent, QPointF, QSize, Qt
+from PySide6.QtCore import QEvent, QPoint, QPointF, QSize, Qt
 from PySide6.QtGui import QKeySequence, QMouseEvent
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import (
@@ -155,6 +155,20 @@ def test_a_thread_puts_the_caret_on_the_line_that_moves_it_and_a_line_lights_its
     assert {8, 13} <= window.pane.looks.lit
     window.pane.go_to(13)
     bench.until(lambda: "moves 3 fibers from 1:3" in window.foot.said("place"), "what the line moves")
+
+
+def test_a_hit_or_a_knot_puts_the_caret_on_the_line_that_lands_there_and_not_on_the_next(bench):
+    window = bench.window
+    cloth, strand = window.stage.cloth, window.strand
+    view = cloth._current()
+    top, bottom = view.y_of(0)
+    QTest.mouseClick(cloth, Qt.MouseButton.LeftButton, pos=QPoint(round(view.x_of(1.0)), round((top + bottom) / 2)))
+    bench.until(lambda: window.pane.place[0] == 8, "the caret on the line that lands at 1 s")
+    window.pane.go_to(1)
+    face = strand._face()
+    at = QPoint(round(float(face.x_of(3.0))), round(float(face.y_of(0.0))))
+    QTest.mouseClick(strand, Qt.MouseButton.LeftButton, pos=at)
+    bench.until(lambda: window.pane.place[0] == 9, "the caret on the line that lands at 3 s")
 
 
 def test_a_hit_dragged_rewrites_its_number_and_undo_takes_that_back(bench):

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from composer.picture.axes import bar_ticks, say_seconds, second_ticks, value_ticks
+from composer.picture.axes import bar_ticks, grid_lines, say_seconds, second_ticks, value_ticks
 from composer.picture.bars import RetimedBars
 from composer.score.tempo import TempoMap
 
@@ -73,3 +73,12 @@ def test_values_are_round_and_no_more_than_asked():
     assert value_ticks(0.0, 110.0, 3).tolist() == [0.0, 50.0, 100.0]
     assert len(value_ticks(430.0, 815.0, 4)) <= 4
     assert value_ticks(1.0, 1.0, 4).tolist() == []
+
+
+@pytest.mark.parametrize("length", [3.0, 40.0, 4000.0])
+def test_lines_of_a_grid_are_drawn_as_far_apart_as_asked_and_stand_on_it(length):
+    tempo = steady()
+    lines = np.array(grid_lines(tempo, 0.25, 10.0, 10.0 + length, length / 700.0, 8.0))
+    assert np.diff(lines).min() / (length / 700.0) >= 8.0 - 1e-9
+    assert np.allclose(tempo.counts(lines) % 0.25, 0.0)
+    assert lines[0] <= 10.0 and lines[-1] > 10.0 + length - np.diff(lines).max() - 1e-9
