@@ -96,10 +96,17 @@ def _quivers(tracks: Tracks, abilities: Abilities, suspects: Index) -> Pieces:
     broken = np.flatnonzero((lasts * (1.0 + TOLERANCE) < worst.least_s) & (lasts > SAME_INSTANT_S))
     of, row, fiber, curve, lasts = of[broken], row[broken], fiber[broken], curve[broken], lasts[broken]
 
-    def over(one: Index, u: Array) -> Array:
-        return excess(abilities, fiber[one], curve[one], moves, row[one], lasts[one], u)
+    # What a score repeats is closed in on once; lengths that differ in rounding alone are one length.
+    swings = (moves.reach[row], moves.speed[row], moves.alone[row].astype(float))
+    first, kind = alike(abilities.which[fiber].astype(float), np.round(lasts, 10), curve, *swings)
 
-    which, start, end = stretches_over(over, worst.u[broken])
+    def over(one: Index, u: Array) -> Array:
+        here = first[one]
+        return excess(abilities, fiber[here], curve[here], moves, row[here], lasts[here], u)
+
+    found, start, end = stretches_over(over, worst.u[broken][first])
+    which, each = _repeated(found, kind)
+    start, end = start[each], end[each]
     mends = np.isfinite(worst.least_s)
     mine = broken[which]
     return Pieces(
@@ -167,22 +174,24 @@ def _moves(tracks: Tracks, abilities: Abilities, of: Index, lasts: Array, worst_
 
     varied = np.flatnonzero(~constant)
     if len(varied):
-        worst = worst_u[varied]
-        speed = value(derivative(curve[varied]), worst)
-        needs[varied] = np.abs(speed) / lasts[varied]
-        has[varied] = rates(abilities, fiber[varied], value(curve[varied], worst), speed > 0.0)
-        speed_curve = derivative(curve[varied])
+        # What a score repeats is closed in on once; lengths that differ in rounding alone are one length.
+        one, kind = alike(abilities.which[fiber[varied]].astype(float), np.round(lasts[varied], 10), curve[varied])
+        mine = varied[one]
+        worst, speed_curve = worst_u[mine], derivative(curve[mine])
+        speed = value(speed_curve, worst)
+        needs[varied] = (np.abs(speed) / lasts[mine])[kind]
+        has[varied] = rates(abilities, fiber[mine], value(curve[mine], worst), speed > 0.0)[kind]
 
         def over_table(row: Index, u: Array) -> Array:
-            speed = value(speed_curve[row], u)
-            mine = varied[row]
-            limit = rates(abilities, fiber[mine], value(curve[mine], u), speed > 0.0)
-            return np.abs(speed) - limit * lasts[mine] * (1.0 + 0.5 * TOLERANCE)
+            speed, here = value(speed_curve[row], u), mine[row]
+            limit = rates(abilities, fiber[here], value(curve[here], u), speed > 0.0)
+            return np.abs(speed) - limit * lasts[here] * (1.0 + 0.5 * TOLERANCE)
 
-        row, start, end = stretches_over(over_table, worst, _corners(abilities, fiber[varied], curve[varied]))
-        rows.append(varied[row])
-        starts.append(start)
-        ends.append(end)
+        row, start, end = stretches_over(over_table, worst, _corners(abilities, fiber[mine], curve[mine]))
+        which, each = _repeated(row, kind)
+        rows.append(varied[which])
+        starts.append(start[each])
+        ends.append(end[each])
 
     row, start, end = np.concatenate(rows), np.concatenate(starts), np.concatenate(ends)
     return Pieces(
@@ -230,6 +239,15 @@ def stretches_over(
     end = np.concatenate([edge[~begins], np.ones(np.count_nonzero(last & broken))])
     by_start, by_end = np.lexsort((start, from_row)), np.lexsort((end, to_row))
     return from_row[by_start], start[by_start], end[by_end]
+
+
+def _repeated(found: Index, kind: Index) -> tuple[Index, Index]:
+    """What was found for kinds, in order of these, for each of the rows that are of them: the rows, and which of the found."""
+    begins = np.searchsorted(found, np.arange(kind.max(initial=-1) + 2))
+    count = np.diff(begins)[kind]
+    return np.arange(len(kind)).repeat(count), np.repeat(begins[kind] - np.cumsum(count) + count, count) + np.arange(
+        count.sum()
+    )
 
 
 def _corners(abilities: Abilities, fiber: Index, curve: Array) -> tuple[Index, Array]:

@@ -96,13 +96,8 @@ def _with_tops(
     extra: list[tuple[Index, Array]] = []
     for sign in (1.0, -1.0):
         tall = sign * height
-        before = np.where(first, tall, np.roll(tall, 1))
-        after = np.where(last, tall, np.roll(tall, -1))
-        # Above its highest sample a top rises by less than it falls to the lower sample beside that, or beyond that at an end.
-        beyond = np.where(first, np.roll(tall, -2), np.where(last, np.roll(tall, 2), before))
-        fall = tall - np.minimum(np.minimum(before, after), beyond)
-        near = (tall <= 0.0) & (tall >= before) & (tall >= after) & (tall + fall > 0.0)
-        at = np.flatnonzero(near)
+        highest, fall = _falls(tall, first, last)
+        at = np.flatnonzero(highest & (tall <= 0.0) & (tall + fall > 0.0))
         if not len(at):
             continue
         of, low, high = place[at], u[at - ~first[at]], u[at + ~last[at]]
@@ -121,24 +116,37 @@ def _with_tops(
     return place, u, np.append(True, place[1:] != place[:-1]), above(place, u)
 
 
+def _falls(tall: Array, first: NDArray[np.bool_], last: NDArray[np.bool_]) -> tuple[NDArray[np.bool_], Array]:
+    """Which samples are no lower than those beside them, and by how much more than they are a top beside them may be.
+
+    Above its highest sample a top rises by less than it falls to the lower sample beside that, or beyond that at an end.
+    """
+    before = np.where(first, tall, np.roll(tall, 1))
+    after = np.where(last, tall, np.roll(tall, -1))
+    beyond = np.where(first, np.roll(tall, -2), np.where(last, np.roll(tall, 2), before))
+    return (tall >= before) & (tall >= after), tall - np.minimum(np.minimum(before, after), beyond)
+
+
 def strain_range_of(tracks: Tracks, moves: Shaken, row: Index) -> tuple[Array, Array]:
     """The least and the greatest strain of moves, rows of `moves`: two of (n,)."""
     low, high = np.full(len(row), np.inf), np.full(len(row), -np.inf)
     for place, u, first in _samples(tracks, moves, row):
-        begin = np.flatnonzero(first)
+        begin, last = np.flatnonzero(first), np.append(first[1:], True)
         for sign, best in ((-1.0, low), (1.0, high)):
             strain = sign * strain_of(tracks, moves.segment[row[place]], u)
             top = np.maximum.reduceat(strain, begin)
-            at = np.flatnonzero(strain == np.repeat(top, np.diff(np.append(begin, len(u)))))
-            at = at[np.unique(place[at], return_index=True)[1]]
-            left = np.where(first[at], u[at], u[at - 1])
-            right = np.where(np.append(first[1:], True)[at], u[at], u[np.minimum(at + 1, len(u) - 1)])
+            best[place[begin]] = sign * top
+            # Which swing goes furthest may be another than that of the furthest sample: all are closed in on that might.
+            tall, fall = _falls(strain, first, last)
+            at = np.flatnonzero(tall & (strain + fall >= np.repeat(top, np.diff(np.append(begin, len(u))))))
+            left, right = u[at - ~first[at]], u[at + ~last[at]]
             segment = moves.segment[row[place[at]]]
             for _ in range(BISECTIONS):
                 middle = 0.5 * (left + right)
                 climbs = sign * climb_of(tracks, segment, middle) > 0.0
                 left, right = np.where(climbs, middle, left), np.where(climbs, right, middle)
-            best[place[at]] = sign * np.maximum(top, sign * strain_of(tracks, segment, 0.5 * (left + right)))
+            further = np.maximum if sign > 0.0 else np.minimum
+            further.at(best, place[at], strain_of(tracks, segment, 0.5 * (left + right)))
     return low, high
 
 

@@ -160,6 +160,7 @@ def test_a_quiver_at_the_end_of_the_stroke_goes_above_it_and_one_that_keeps_belo
 
 @settings(max_examples=40, deadline=None)
 @example(0.25, 0.0, 1.75, 0.001, 0.3046875)  # dips below rest between the last two samples
+@example(0.123046875, 0.0, 2.80016, 0.0420146, 1.35393)  # another swing than that of the lowest sample goes lowest
 @given(st.floats(0.0, 0.3), st.floats(0.0, 0.3), st.floats(0.3, 6.0), st.floats(1e-3, 0.05), st.floats(0.3, 3.0))
 def test_the_worst_strain_is_what_a_dense_grid_meets(make_tracks, make_rig, a, b, frequency, amplitude, lasts):
     rig = make_rig(1, stroke=0.3)

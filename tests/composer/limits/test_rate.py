@@ -1,14 +1,18 @@
 """The limit of rate."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
+from composer.limits import rate as module
 from composer.limits.abilities import abilities_of
 from composer.limits.duration import least_durations
 from composer.limits.rate import least_s, snags
 from composer.limits.tables import rates, travel_time_s
+from composer.quivers import Quivers
 
 
 def _find(tracks, rig):
@@ -105,3 +109,26 @@ def test_the_stretches_are_where_dense_samples_are_too_fast(
     assert bool(found) == (least_durations(make_tracks([(lasts, curve)]), abilities)[0] > lasts * (1 + 1e-6))
     if found:
         assert max(s.needs / s.has for s in found) >= ratio.max() * (1 - 1e-4)
+
+
+@pytest.mark.parametrize("hertz", [0.0, 4.0])
+def test_what_a_score_repeats_a_hundred_times_is_closed_in_on_once_and_told_a_hundred_times(
+    make_abilities, make_tracks, make_rig, hertz, monkeypatch
+):
+    abilities = make_abilities(([0.0, 0.1, 0.15, 0.2, 0.3], [1.0, 1.0, 0.5, 1.0, 1.0], [1.0] * 5))
+    tracks = make_tracks([(0.15, 0.25, "smooth"), (2.1, 0.0, "smooth"), (0.9, 0.0, "smooth")] * 100)
+    if hertz:
+        knots = 3 * np.arange(100)
+        quivers = Quivers(knots, knots + 1, np.full(100, hertz), np.full(100, 0.005))
+        tracks = replace(tracks, quivers=quivers)
+    asked = []
+    real = module.stretches_over
+    monkeypatch.setattr(
+        module, "stretches_over", lambda over, worst, *also: asked.append(len(worst)) or real(over, worst, *also)
+    )
+    found = snags(tracks, make_rig(1), abilities)
+    assert max(asked) == 1
+    assert len(found) == 100
+    begins = tracks.time_s[[snag.knot for snag in found]]
+    assert np.array([snag.from_s for snag in found]) - begins == pytest.approx(found[0].from_s)
+    assert np.array([snag.to_s for snag in found]) - begins == pytest.approx(found[0].to_s)
