@@ -165,6 +165,8 @@ class Board:
     def arm(self) -> None:
         """Arm, and wait for the board to say so."""
         host = self._host
+        # What the supply is now is told anew to whoever listens from here on.
+        self._supply_kPa = None
         if not host.arm(self._clock.now()):
             raise LinkLost(f"the board is not ready to arm: {self._why or host.state}")
         self._until(lambda: host.state != link.ARMING, GREET_S)

@@ -1,5 +1,7 @@
 """`sim`: the simulated rig in the player's own process; it moves as its fibers would, and senses every one of them."""
 
+import math
+
 import numpy as np
 
 from composer.drive.inverse import vented
@@ -10,6 +12,9 @@ from player.outputs.base import Array, Event, LinkLost, Mark, fibers_of
 
 SETTLE_STEP_S, SETTLE_S = 0.02, 30.0
 """After the last set the rig is let settle in steps of this long, for at most so long, in no time of the player's."""
+
+SUPPLY_S = 0.1
+"""Between two readings of the simulated receiver."""
 
 AT_REST = 1e-4
 """Strain below which a fiber that has been let go counts as at rest."""
@@ -32,6 +37,7 @@ class Sim:
         self._events: list[Event] = []
         self._sets = 0
         self._lowest_kPa = self._sim.supply_kPa
+        self._supply_s = -math.inf
 
     def open(self) -> None:
         """Nothing to take hold of."""
@@ -52,6 +58,9 @@ class Sim:
             self._lowest_kPa = min(self._lowest_kPa, self._sim.supply_kPa)
             sensed = self._sim.strain[self._fibers]
             self._events.append(Event("sense", self.drivers[0], time_s=due_s, fibers=self._fibers, strain=sensed))
+            if due_s >= self._supply_s + SUPPLY_S:
+                self._supply_s = due_s
+                self._events.append(Event("supply", self.drivers[0], time_s=due_s, kPa=self._sim.supply_kPa))
         self._now_s = due_s
         self._command[self._fibers] = command[self._fibers]
         self._sets += 1

@@ -169,7 +169,8 @@ def _by_table(name: str, now: Standing) -> str:
         return f"the player is {now.state}"
     if asks == "hold":
         return ""
-    return why_not(ASKED[asks], now.commands, now.state)
+    why = why_not(ASKED[asks], now.commands, now.state)
+    return why.replace(f"'{asks}'", f"'{word_of(name, now)}'", 1)
 
 
 def _why_not_again(now: Standing) -> str:

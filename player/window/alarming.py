@@ -30,9 +30,9 @@ class Alarming(Parted):
         if now.state == "vented":
             asked = self._vented_s is not None
             why = "" if asked else f": {self._why_vented()}"
-            return f"VENTED{why}" + (": hold A to arm and go on" if asked and on else ""), on and not asked
+            return f"VENTED{why}" + (f"{':' if asked else ';'} hold A to arm and go on" if on else ""), on and not asked
         if bad and on:
-            said = words.fault_said(self.told.lines, self.told.about["boards"])
+            said = words.fault_said(self.told.since, self.told.about["boards"])
             return f"BOARDS: {boards}" + (f". {said}" if said else ""), True
         return "", False
 
@@ -40,8 +40,7 @@ class Alarming(Parted):
         if self.told.last is not None:
             report = self.told.last[1].get("report", {})
             return report.get("why") or "asked for elsewhere"
-        said = next((line for line in reversed(self.told.lines) if line.strip()), "")
-        return said or "asked for elsewhere"
+        return words.why_vented(self.told.since, self.told.about.get("boards", ()))
 
     def _show_banner(self) -> None:
         text, fault = self.banner()
@@ -55,13 +54,16 @@ class Alarming(Parted):
         banner.setVisible(bool(text))
         if text:
             self._place_banner()
+        else:
+            self.parts.hang.leave_room(0)
 
     def _place_banner(self) -> None:
-        """Over the picture, so that nothing of the window moves when it comes."""
+        """Over the fibers, which leave room for it, and beside everything that is pressed: no button moves when it comes."""
         banner, room = self.parts.banner, self.parts.middle.geometry()
         width = max(200, room.width() - self.parts.column.width() - 24)
         banner.setGeometry(room.left() + 8, room.top() + 4, width, banner.heightForWidth(width))
         banner.raise_()
+        self.parts.hang.leave_room(banner.height() + 8)
 
     def _blinked(self) -> None:
         """A fault blinks, once a second; nothing else ever does."""

@@ -57,6 +57,11 @@ class HangFrame(QWidget):
         if self.shown is not None and not still:
             self.shown.show_strain(wanted, sensed)
 
+    def leave_room(self, above_px: int) -> None:
+        """Have so many pixels above the fibers free of them."""
+        if self._room.contentsMargins().top() != above_px:
+            self._room.setContentsMargins(0, above_px, 0, 0)
+
     def set_view(self, view: str) -> None:
         """See it from elsewhere."""
         if self.shown is not None:

@@ -72,6 +72,7 @@ class MapView(QWidget):
         self.says.setObjectName("value")
         self.says.setTextFormat(Qt.TextFormat.PlainText)
         self.says.setAccessibleName("about the map")
+        self.says.setAlignment(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignTop)
         row = QHBoxLayout()
         row.addWidget(self.learn)
         row.addStretch(1)
@@ -102,6 +103,9 @@ class MapView(QWidget):
     def set_theme(self, theme: Theme) -> None:
         """Draw in these colours."""
         self.curve_view.set_theme(theme)
+        # Room for three lines: what is above is pressed, and must not move as the text grows.
+        self.says.ensurePolished()
+        self.says.setFixedHeight(3 * self.says.fontMetrics().lineSpacing() + 4)
 
     def set_run(self, about: dict[str, Any], material: Material) -> None:
         """Another run: its map, as it stands in the file now."""
@@ -140,7 +144,7 @@ class MapView(QWidget):
             why = why or ("" if self._about.get("midi") else NO_MIDI)
         self.learn.setEnabled(bool(self._about) and not why)
         self.learn.setToolTip(why or "move a control, then click a group's meter or a fiber")
-        if why:
+        if why or self.says.text() in (NO_MAP_GIVEN, NO_MIDI):
             self.says.setText(why)
         stroke = self._stroke()
         for each in (self.curve, self.low, self.high):
@@ -174,6 +178,7 @@ class MapView(QWidget):
             self._chosen(row)
             return
         self.curve_view.show_stroke(self._stroke())
+        self.list.item(row).setText(said_of(self.map.binds[row], self._named))
         self._saved(f"{key} = {value} in line {self.map.binds[row].line} and below")
 
     # ---- a control bound by moving it
@@ -207,7 +212,7 @@ class MapView(QWidget):
         """This control is the one: now the group is to be clicked."""
         self.control = control
         self._poll.stop()
-        text = f"{control}: now click a group's meter, or a fiber in the picture"
+        text = f"{control_said(control)}: now click a group's meter, or a fiber in the picture"
         self.says.setText(text)
         self._window.parts.why.setText(text)
         self._window.show_panel(0)
@@ -233,7 +238,7 @@ class MapView(QWidget):
             self._say(str(wrong))
             return
         self._fill(row)
-        self._saved(f"{control} moves {fibers}")
+        self._saved(f"{control_said(control)} moves {fibers}")
 
     def _saved(self, what: str) -> None:
         self._say(f"{self._material.map_path}: {what}, saved")
@@ -257,13 +262,15 @@ class MapView(QWidget):
             ports.close()
 
 
+def control_said(control: Control) -> str:
+    """A control in words."""
+    said = control.kind if control.kind in ("bend", "pressure") else f"{control.kind} {control.number}"
+    return said + (f", channel {control.channel}" if control.channel else "")
+
+
 def said_of(bind: Bind, named) -> str:
     """A bind in a line: its control, and what it does; `named` says which fibers."""
-    control = f"{bind.control.kind} {bind.control.number}" if bind.control is not None else bind.osc
-    if bind.control is not None and bind.control.kind in ("bend", "pressure"):
-        control = bind.control.kind
-    if bind.control is not None and bind.control.channel:
-        control += f", channel {bind.control.channel}"
+    control = control_said(bind.control) if bind.control is not None else bind.osc
     deed = bind.deed
     if isinstance(deed, Stroke):
         how = "" if deed.how == "takes" else f" {deed.how},"

@@ -12,6 +12,7 @@ from composer.picture.chrome import scale_of
 from composer.picture.look import LEFT, Look, colour, painting, pen
 from composer.picture.palette import DARK, Theme
 from player.engine.process.layout import Snapshot
+from player.engine.process.messages import DISARMED
 from player.window.words import cut_said
 
 Array = NDArray[np.float64]
@@ -31,17 +32,36 @@ class Reading:
     touched: bool
 
 
-def readings(rows: tuple[tuple[str, NDArray[np.int64]], ...], now: Snapshot, stroke: Array) -> tuple[Reading, ...]:
-    """What the rows show of a moment."""
-    wanted = np.nan_to_num(now.array("wanted")) / stroke
-    allowed = np.nan_to_num(now.array("allowed")) / stroke
+@dataclass(frozen=True, slots=True, eq=False)
+class Rows:
+    """Groups as rows: their names, the fibers of each; mean (rows, fibers): from strains to each row's mean share of stroke."""
+
+    names: tuple[str, ...]
+    of: tuple[NDArray[np.int64], ...]
+    mean: Array
+    stroke: Array
+
+
+def rows_of(groups: tuple[tuple[str, NDArray[np.int64]], ...], stroke: Array) -> Rows:
+    """Groups (name, fibers) over every fiber's stroke (F,)."""
+    mean = np.zeros((len(groups), len(stroke)))
+    for row, (_, of) in zip(mean, groups, strict=True):
+        np.add.at(row, of, 1.0 / len(of))
+    return Rows(tuple(name for name, _ in groups), tuple(of for _, of in groups), mean / stroke, stroke)
+
+
+def readings(rows: Rows, now: Snapshot) -> tuple[Reading, ...]:
+    """What the rows show of a moment; where boards are disarmed nothing is wanted, allowed or cut, whatever was last."""
+    if now.state in DISARMED:
+        return (Reading(0.0, 0.0, "", 0.0, False),) * len(rows.of)
+    wanted = np.clip(rows.mean @ np.nan_to_num(now.array("wanted")), 0.0, 1.0).tolist()
+    allowed = np.clip(rows.mean @ np.nan_to_num(now.array("allowed")), 0.0, 1.0).tolist()
     cut, by, touched = now.array("cut"), now.array("by"), now.array("touched")
-    found = []
-    for _, of in rows:
-        why, share = cut_said(cut[of], by[of], stroke[of])
-        mean = np.clip(wanted[of].mean(), 0.0, 1.0), np.clip(allowed[of].mean(), 0.0, 1.0)
-        found.append(Reading(float(mean[0]), float(mean[1]), why, share, bool(touched[of].any())))
-    return tuple(found)
+    cuts = [("", 0.0)] * len(rows.of)
+    if cut.any():
+        cuts = [cut_said(cut[of], by[of], rows.stroke[of]) for of in rows.of]
+    touches = [bool(touched[of].any()) for of in rows.of] if touched.any() else [False] * len(rows.of)
+    return tuple(Reading(*each[:2], *each[2], each[3]) for each in zip(wanted, allowed, cuts, touches, strict=True))
 
 
 class MetersView(QWidget):
@@ -52,8 +72,7 @@ class MetersView(QWidget):
     def __init__(self, parent: QWidget | None = None):
         super().__init__(parent)
         self._theme: Theme = DARK
-        self._rows: tuple[tuple[str, NDArray[np.int64]], ...] = ()
-        self._stroke: Array = np.ones(0)
+        self._rows = rows_of((), np.ones(0))
         self._shown: tuple[Reading, ...] = ()
         self.chosen = -1
         self.setAccessibleName("groups' meters")
@@ -62,13 +81,13 @@ class MetersView(QWidget):
 
     def set_rows(self, rows: tuple[tuple[str, NDArray[np.int64]], ...], stroke: Array) -> None:
         """The groups, and every fiber's stroke."""
-        self._rows, self._stroke, self._shown, self.chosen = rows, stroke, (), -1
+        self._rows, self._shown, self.chosen = rows_of(rows, stroke), (), -1
         self.update()
 
     @property
     def names(self) -> tuple[str, ...]:
         """The rows' names."""
-        return tuple(name for name, _ in self._rows)
+        return self._rows.names
 
     def set_theme(self, theme: Theme) -> None:
         """Draw in these colours."""
@@ -77,9 +96,9 @@ class MetersView(QWidget):
 
     def show_now(self, now: Snapshot) -> None:
         """The groups as they are now."""
-        if len(now.array("wanted")) != len(self._stroke):
+        if len(now.array("wanted")) != len(self._rows.stroke):
             return
-        shown = readings(self._rows, now, self._stroke)
+        shown = readings(self._rows, now)
         if shown != self._shown:
             self._shown = shown
             if self.isVisible():
@@ -89,7 +108,7 @@ class MetersView(QWidget):
         """The meters as sentences."""
         return "; ".join(
             f"{name} {100 * one.allowed:.0f} %" + (f", cut by {one.cut}" if one.cut else "")
-            for (name, _), one in zip(self._rows, self._shown, strict=False)
+            for name, one in zip(self.names, self._shown, strict=False)
         )
 
     def paintEvent(self, event: QPaintEvent) -> None:
@@ -99,20 +118,20 @@ class MetersView(QWidget):
             painter.setRenderHint(QPainter.RenderHint.Antialiasing)
             painter.fillRect(self.rect(), colour(self._theme.panel))
             high, fits = self._room(look)
-            for number, ((name, of), one) in enumerate(zip(self._rows, self._shown, strict=False)):
-                if number == fits - 1 and len(self._rows) > fits:
-                    more = f"and {len(self._rows) - number} more groups, for which there is no room"
+            for number, (name, one) in enumerate(zip(self.names, self._shown, strict=False)):
+                if number == fits - 1 and len(self.names) > fits:
+                    more = f"and {len(self.names) - number} more groups, for which there is no room"
                     box = QRectF(look.px(12), number * high, self.width(), high)
                     look.write(painter, box, more, 14, self._theme.quiet_ink, LEFT)
                     break
-                self._row(painter, look, QRectF(0, number * high, self.width(), high), name, len(of), one, number)
+                self._row(painter, look, QRectF(0, number * high, self.width(), high), name, one, number)
 
     def _room(self, look: Look) -> tuple[float, int]:
-        rows = max(1, len(self._rows))
+        rows = max(1, len(self.names))
         high = min(max(self.height() / rows, look.px(LOWEST)), look.px(HIGHEST))
         return high, max(1, int(self.height() / high + 1e-6))
 
-    def _row(self, painter: QPainter, look: Look, box: QRectF, name: str, count: int, one: Reading, number: int) -> None:
+    def _row(self, painter: QPainter, look: Look, box: QRectF, name: str, one: Reading, number: int) -> None:
         theme = self._theme
         letters = min(20.0, 0.5 * box.height() / look.scale)
         if number == self.chosen:
@@ -155,8 +174,8 @@ class MetersView(QWidget):
         look = Look(scale_of(self.window().width(), self.window().height()), self._theme)
         high, fits = self._room(look)
         number = int(y // high)
-        last = fits - 1 if len(self._rows) > fits else len(self._rows)
-        return number if 0 <= number < min(last, len(self._rows)) else -1
+        last = fits - 1 if len(self.names) > fits else len(self.names)
+        return number if 0 <= number < min(last, len(self.names)) else -1
 
     def mousePressEvent(self, event: QMouseEvent) -> None:
         """A click says which group."""
@@ -166,7 +185,7 @@ class MetersView(QWidget):
         """Up and down choose a row, Enter says which."""
         step = {Qt.Key.Key_Down: 1, Qt.Key.Key_Up: -1}.get(event.key(), 0)
         if step:
-            self._choose(min(max(self.chosen + step, 0), len(self._rows) - 1), False)
+            self._choose(min(max(self.chosen + step, 0), len(self.names) - 1), False)
         elif event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter) and self.chosen >= 0:
             self._choose(self.chosen, True)
         else:
@@ -175,7 +194,7 @@ class MetersView(QWidget):
     def _choose(self, row: int, tell: bool) -> None:
         self.chosen = row
         if row >= 0:
-            self.setAccessibleDescription(self._rows[row][0])
+            self.setAccessibleDescription(self.names[row])
             if tell:
-                self.group_clicked.emit(self._rows[row][0])
+                self.group_clicked.emit(self.names[row])
         self.update()

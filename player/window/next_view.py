@@ -29,6 +29,13 @@ class Coming:
     says: str = ""
 
 
+def as_shown(coming: Coming) -> tuple:
+    """What of it can be seen: seconds to a tenth, so that it is not written anew with every frame."""
+    left = coming.left
+    seen = None if left is None else (left.figure, left.unit, left.beat, left.of, f"{left.seconds:.1f}")
+    return coming.cue, coming.place, coming.waits, coming.says, seen
+
+
 class NextView(QWidget):
     """Shows a `Coming`."""
 
@@ -47,7 +54,7 @@ class NextView(QWidget):
 
     def show_coming(self, coming: Coming) -> None:
         """What comes now."""
-        if coming != self._coming:
+        if as_shown(coming) != as_shown(self._coming):
             said = said_of(coming)
             if said != self.accessibleDescription():
                 self.setAccessibleDescription(said)

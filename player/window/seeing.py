@@ -44,6 +44,7 @@ class Seeing(Parted):
         if before is not None and before.state == "vented" and now.state != "vented":
             # That vent is done with.
             self._vented_s, self._unsent = None, False
+            self.told.since.clear()
         if before is None or before.state != now.state:
             self._stand()
         parts = self.parts
@@ -76,6 +77,8 @@ class Seeing(Parted):
             state, more = "COMES …", "the run is begun, or attached to"
         put(self.parts.state, state)
         put(self.parts.more, more)
+        # Else the line begins with a gap.
+        self.parts.more.setVisible(bool(more))
 
     def _slow(self) -> None:
         """What need not be seen at once."""

@@ -88,7 +88,7 @@ def fits(material: Material, about: dict[str, Any]) -> bool:
 
 @dataclass(slots=True)
 class Told:
-    """What a run has told the window so far."""
+    """What a run has told the window so far; lines: of the log; since: those of them that the run said since it was armed."""
 
     about: dict[str, Any] = field(default_factory=dict)
     marks: dict[str, Any] | None = None
@@ -97,3 +97,4 @@ class Told:
     taken: bool = False
     last: tuple[str, dict[str, Any]] | None = None
     lines: list[str] = field(default_factory=list)
+    since: list[str] = field(default_factory=list)

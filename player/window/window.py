@@ -100,12 +100,14 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         """Attach to a run by name."""
         self._forget()
         self.link.make(lambda: self.ways.attach(run))
+        self._stand()
 
     def do_again(self) -> None:
         """Begin the run, or begin it once more."""
         if self.ways.begin is not None:
             self._forget()
             self.link.make(self.ways.begin)
+            self._stand()
 
     def _forget(self) -> None:
         self.told, self.stage, self.now = Told(lines=self.told.lines), "none", None
@@ -194,7 +196,9 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         if name == "told":
             missed = int(fields["missed"])
             before = (f"... {missed} lines that did not get here",) if missed else ()
-            self.tell((*before, *map(str, fields["lines"])))
+            lines = tuple(map(str, fields["lines"]))
+            told.since += lines
+            self.tell((*before, *lines))
         elif name == "refused":
             self.tell(
                 (f"the map is saved, but not gone by yet: {fields['why']}" if fields["what"] == "map" else fields["why"],)

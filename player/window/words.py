@@ -37,6 +37,9 @@ CAUTIONS = {
     "overhead": ("OVERHEAD: everybody is clear of the fibers and of what hangs from them.", NO_DEVICE),
 }
 
+_AFTERWARDS = "All is at rest or vented"
+"""How the line begins that says what can be done after a fault."""
+
 _STATES = {
     "idle": ("AT REST", "disarmed"),
     "armed": ("ARMED", "the fibers may move"),
@@ -107,6 +110,8 @@ def supply_said(now: Snapshot, names: Sequence[str]) -> str:
 
 def duty_said(now: Snapshot, fibers: Sequence[str]) -> tuple[str, float]:
     """The coil that has used most of what it may be on at a stretch, and its share; nan where no coil is limited."""
+    if now.number("ticks") <= 0:
+        return "nothing has moved yet", float("nan")
     duty = now.array("duty")
     if not np.isfinite(duty).any():
         return "no coil is limited", float("nan")
@@ -151,7 +156,7 @@ def cut_said(cut: np.ndarray, by: np.ndarray, stroke: np.ndarray) -> tuple[str, 
 
 def reworded(line: str) -> str:
     """A line as the run tells it, where it speaks of a terminal's keys: of this window's."""
-    if line.startswith("All is at rest or vented"):
+    if line.startswith(_AFTERWARDS):
         return "All is at rest or vented, and disarmed: hold A to arm and go on from here."
     return line
 
@@ -159,6 +164,12 @@ def reworded(line: str) -> str:
 def fault_said(lines: Sequence[str], boards: Sequence[str]) -> str:
     """The last line that speaks of one of these boards, "" without one."""
     return next((line for line in reversed(lines) if line.partition(":")[0] in boards), "")
+
+
+def why_vented(lines: Sequence[str], boards: Sequence[str]) -> str:
+    """Why all is vented, by what the run has said since it was armed: what it says of a board before all else."""
+    told = [line for line in lines if line.strip() and not line.startswith(_AFTERWARDS)]
+    return fault_said(told, boards) or (told[-1] if told else "asked for elsewhere")
 
 
 def rule_said(rule: str) -> str:

@@ -76,12 +76,13 @@ def tap(board: str, names, noted) -> None:
                             noted.send(now)
 
 
-def wait(true, seconds: float = 60.0) -> None:
-    """The application alive, until something is so."""
+def wait(true, seconds: float = 60.0, window: RehearseWindow | None = None) -> None:
+    """The application alive, until something is so; where it never is, the window's log says what is."""
     end = time.monotonic() + seconds
     while not true():
         if time.monotonic() > end:
-            raise SystemExit("the bench waits for something that does not come")
+            said = "\n".join(window.told.lines[-8:]) if window is not None else ""
+            raise SystemExit(f"the bench waits for something that does not come\n{said}")
         QCoreApplication.processEvents()
         time.sleep(0.0005)
 
@@ -92,12 +93,12 @@ def window_at(targets: tuple[str, ...], **how) -> RehearseWindow:
     window = RehearseWindow(rehearse_ways.beginning(score="bench.score", targets=targets, rule="rest", **(usual | how)))
     window.resize(1280, 800)
     window.show()
-    wait(lambda: window.told.marks is not None and window._drawn)
+    wait(lambda: window.told.marks is not None and window._drawn, 60.0, window)
     if not window.told.marks["ok"]:
         raise SystemExit("\n".join(f"{one['asked']}: {one['found']}" for one in window.told.marks["marks"] if not one["ok"]))
     window.link.say("arm")
     window.link.say("play", from_s=0.0)
-    wait(lambda: window.now is not None and window.now.state == "playing" and window.now.array("wanted").max() > 0.01)
+    wait(lambda: window.now.state == "playing" and window.now.array("wanted").max() > 0.01, 60.0, window)
     return window
 
 
@@ -150,11 +151,11 @@ def vent(vents: int, stack: ExitStack) -> None:
         pressed.clear()
         downs = [QKeyEvent(QEvent.Type.KeyPress, Qt.Key.Key_Escape, Qt.KeyboardModifier.NoModifier)]
         threading.Thread(target=press, args=(0.3 + chance.uniform(0.0, 0.1),)).start()
-        wait(lambda: noted.poll(0))
+        wait(lambda: noted.poll(0), 60.0, window)
         took.append(noted.recv() - pressed[0])
-        wait(lambda: window.now.state == "vented")
+        wait(lambda: window.now.state == "vented", 60.0, window)
         window.link.say("bring_back")
-        wait(lambda: window.now.state == "playing" and window.now.text("phase") == "playing")
+        wait(lambda: window.now.state == "playing" and window.now.text("phase") == "playing", 60.0, window)
         while noted.poll(0):
             noted.recv()
     parts = np.percentile(took, [0, 50, 90, 99, 100]) * 1e3

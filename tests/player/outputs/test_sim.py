@@ -18,16 +18,17 @@ def sim(make_rig):
 def test_a_set_is_held_until_the_next_is_due(sim):
     sim.send(1.0, np.ones(2))
     sim.send(1.208, np.ones(2))
-    (event,) = sim.poll()
+    event, supply = sim.poll()
     # 8 ms for the valve, then 0.2 s at a strain rate of 0.6.
     assert event.kind == "sense" and event.time_s == 1.208
     assert event.strain == pytest.approx([0.12, 0.12])
+    assert supply.kind == "supply" and supply.driver == "main"
 
 
 def test_events_are_told_once(sim):
     sim.send(0.0, np.zeros(2))
     sim.send(0.1, np.zeros(2))
-    assert len(sim.poll()) == 1 and sim.poll() == []
+    assert len(sim.poll()) == 2 and sim.poll() == []
 
 
 @pytest.mark.parametrize("end", ["rest", "vent"])
@@ -44,9 +45,22 @@ def test_fibers_of_other_drivers_are_left_alone(make_rig):
     output.arm()
     output.send(0.0, np.ones(4))
     output.send(1.0, np.ones(4))
-    (event,) = output.poll()
+    event, _ = output.poll()
     assert event.fibers.tolist() == [2, 3] and np.all(event.strain == 0.3)
     assert np.all(output._sim.strain[:2] == 0.0)
+
+
+def test_the_receiver_is_told_of_ten_times_a_second_as_it_is(make_rig):
+    rig = make_rig(4, receiver_L=0.1, compressor_L_min=0.0, air_mL=100.0)
+    output = Sim(rig, abilities_of(rig), ("main",))
+    output.arm()
+    kPa = []
+    for tick in range(201):
+        output.send(tick * 0.005, np.ones(4))
+        kPa += [event.kPa for event in output.poll() if event.kind == "supply"]
+    assert len(kPa) == 10
+    assert kPa == sorted(kPa, reverse=True) and kPa[-1] < kPa[0]
+    assert output.counters()["lowest_supply_kPa"] == pytest.approx(kPa[-1], rel=0.05)
 
 
 def test_the_lowest_supply_is_counted(make_rig):

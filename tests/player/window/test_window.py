@@ -309,3 +309,29 @@ def test_runs_are_listed_in_words(room):
     rows = rehearse_ways.rows()
     assert [row.name for row in rows] == [window.link.client.run]
     assert "armed" in rows[0].says and "Bench piece to sim, commanded elsewhere" in rows[0].says
+
+
+def test_a_vent_is_put_down_to_the_board_that_vented_whatever_is_said_after_it():
+    said = ['waiting at cue "ebb"', "main: watchdog: heard nothing in time", "All is at rest or vented, and disarmed: …"]
+    assert words.why_vented(said, ["main"]) == "main: watchdog: heard nothing in time"
+    assert words.why_vented(["vented by the operator"], ["main"]) == "vented by the operator"
+    assert words.why_vented([], ["main"]) == "asked for elsewhere"
+
+
+def test_what_is_wrong_is_said_above_the_fibers_and_hides_none(room):
+    window = room.begun()
+    in_order(window)
+    buttons = {name: button.geometry() for name, button in window.parts.deeds.items()}
+    hang = window.parts.hang
+    free = hang.shown.mapTo(window, hang.shown.rect().topLeft()).y()
+    window.wrong = ["a board is not there"]
+    window._show_banner()
+    QApplication.processEvents()
+    banner = window.parts.banner
+    top = hang.shown.mapTo(window, hang.shown.rect().topLeft()).y()
+    assert banner.isVisible() and banner.geometry().bottom() < top
+    assert {name: button.geometry() for name, button in window.parts.deeds.items()} == buttons
+    window.wrong = []
+    window._show_banner()
+    QApplication.processEvents()
+    assert hang.shown.mapTo(window, hang.shown.rect().topLeft()).y() == free
