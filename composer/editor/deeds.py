@@ -223,8 +223,7 @@ class Deeds:
         self.lists.setCurrentIndex(0)
         if self.snags.current is None:
             self.snags.step(1)
-        buttons = self.snags.mends.buttons
-        (buttons[0] if buttons else self.snags.list).setFocus()
+        self.snags.to_choices()
 
     def do_take_hit(self) -> None:
         """The retiming of the chosen hit into the text."""

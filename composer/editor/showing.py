@@ -219,8 +219,11 @@ class Showing(QObject):
             ghost = known.retimed.tracks
         else:
             ghost = None
-        # Cloth and strand follow one another, so the strand has to know of the later end first.
-        self.strand.reach(0.0 if ghost is None else ghost.duration_s)
+        # While a retiming is being looked for the end stays where that of before had it, and with it what is in view.
+        if ghost is not None or known.retimed is not None or not self.beside:
+            # Cloth and strand follow one another, so the strand has to know of the later end first.
+            for view in (self.strand, cloth):
+                view.reach(0.0 if ghost is None else ghost.duration_s)
         cloth.set_ghost(ghost, words_of)
 
     def carry(self, tracks: Tracks | None) -> None:

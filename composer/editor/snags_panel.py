@@ -20,6 +20,16 @@ from PySide6.QtWidgets import (
 from composer.editor.messages import Choice, Mended, Row
 from composer.edits.edit import Refusal
 
+WAYS = {
+    "time": "Give it time",
+    "lead": "Let it lead",
+    "shrink": "Shrink it",
+    "air": "Ask less of the air",
+    "retime": "Let the retimer do it",
+    "pin": "Pin this",
+}
+"""What each way to mend is called where it is said why it does not help."""
+
 
 def snags_in_words(count: int) -> str:
     """A count of snags as it is said wherever snags are counted: one for each fiber and move, as `drawcord check` counts."""
@@ -93,9 +103,10 @@ class Sentence(QPushButton):
 class Mends(QScrollArea):
     """The choices for one snag. ghost: the choice under pointer or focus, None for none; chosen: one that is taken.
 
-    left: the keys go back to the list
+    left: the keys go back to the list; come: choices are there
     """
 
+    come = Signal()
     ghost = Signal(object)
     chosen = Signal(object)
     left = Signal()
@@ -142,9 +153,10 @@ class Mends(QScrollArea):
             parts.append(button)
         if not parts:
             parts.append(_label("Nothing that is tried here mends it:"))
-        parts += [_label(says, quiet=True) for says in mended.not_these.values()]
+        parts += [_label(f"{WAYS[way]}: {says[:1].lower()}{says[1:]}", quiet=True) for way, says in mended.not_these.items()]
         self._fill(parts)
         self._buttons = made
+        self.come.emit()
 
     def _fill(self, parts: Sequence[QWidget]) -> None:
         if self._buttons:
@@ -208,6 +220,9 @@ class SnagsPanel(QWidget):
         self._list.installEventFilter(self)
         self.mends = Mends()
         self.mends.left.connect(self._list.setFocus)
+        self.mends.come.connect(self._choices_come)
+        self._to_choices = False
+        self._last_s: float | None = None
         row = QHBoxLayout(self)
         row.setContentsMargins(0, 0, 0, 0)
         row.setSpacing(1)
@@ -259,9 +274,22 @@ class SnagsPanel(QWidget):
         else:
             self.mends_wanted.emit(self._rows[at])
 
+    def to_choices(self) -> None:
+        """Put the keys on the first choice for the chosen snag; where it is still looked for, as soon as it comes."""
+        if self.mends.buttons:
+            self.mends.buttons[0].setFocus()
+        else:
+            self._list.setFocus()
+            self._to_choices = True
+
+    def _choices_come(self) -> None:
+        if self._to_choices and self._list.hasFocus() and self.mends.buttons:
+            self.mends.buttons[0].setFocus()
+        self._to_choices = False
+
     def clear(self) -> None:
         """Nothing is known."""
-        self._rows = ()
+        self._rows, self._last_s = (), None
         self._list.clear()
         self.mends.say("")
 
@@ -272,26 +300,33 @@ class SnagsPanel(QWidget):
             self._list.blockSignals(True)
             self._list.setCurrentRow(at)
             self._list.blockSignals(False)
+            self._last_s = self._rows[at].from_s
             self.mends_wanted.emit(self._rows[at])
 
     def step(self, way: int) -> None:
-        """Go to the next row, or the one before."""
+        """Go to the next row, or the one before; where the one chosen last has been mended, on from where it was."""
         if self._rows:
             at = self._list.currentRow()
-            self._list.setCurrentRow((at + way) % len(self._rows) if at >= 0 else 0 if way > 0 else len(self._rows) - 1)
+            if at < 0 and self._last_s is not None:
+                later = next((n for n, row in enumerate(self._rows) if row.from_s >= self._last_s), len(self._rows))
+                at = later - 1 if way > 0 else later
+            elif at < 0:
+                at = -1 if way > 0 else 0
+            self._list.setCurrentRow((at + way) % len(self._rows))
 
     def _changed(self, at: int) -> None:
+        self._to_choices = False
         if 0 <= at < len(self._rows):
+            self._last_s = self._rows[at].from_s
             self.row_chosen.emit(self._rows[at])
             self.mends_wanted.emit(self._rows[at])
 
     def eventFilter(self, watched: QObject, event: QEvent) -> bool:
         """Return in the list goes to the choices."""
-        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress:
-            buttons = self.mends.buttons
-            if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Right) and buttons:
-                buttons[0].setFocus()
-                return True
+        pressed = event.key() if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress else None
+        if pressed in (Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Right) and self.current is not None:
+            self.to_choices()
+            return True
         return super().eventFilter(watched, event)
 
 

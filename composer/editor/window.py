@@ -27,7 +27,7 @@ from composer.editor.showing import Showing
 from composer.editor.sights import Sights
 from composer.editor.snags_panel import SnagsPanel
 from composer.editor.stage import Stage
-from composer.edits.edit import Edit, Refusal
+from composer.edits.edit import Edit, Refusal, lines_after
 from composer.picture.palette import THEMES
 from composer.picture.strand.strand_view import StrandView
 
@@ -35,6 +35,8 @@ if TYPE_CHECKING:
     from composer.edits.completion import Offer
 
 SIZE = QSize(1280, 800)
+MOST_SHOWN = 40
+"""Changes of an edit whose lines are lit when it has been made."""
 
 
 class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
@@ -62,7 +64,7 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
         self.hand = Hand(self.crew.ask, self)
         self.printer = Printer(self.crew, self.notices, self.later, self)
         self._names: dict[int, str] = {}
-        self._entry = 0
+        self._entry = self._lines = 0
         self._shown_file = ""
         self._last_wrong = ""
         self._closing = False
@@ -198,6 +200,10 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
             self.hand.forget()
         self.crew.change(delta)
         self.showing.show_choice(None)
+        if self.pane.blockCount() != self._lines:
+            # What is lit was lit by its number, and the numbers are others now.
+            self._lines, self._entry = self.pane.blockCount(), 0
+            self.pane.looks.light([])
         document = self.pane.document()
         steps = document.availableUndoSteps()
         if not document.availableRedoSteps():
@@ -208,6 +214,10 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
         self.pane.change(counted(self.pane.text, edit.changes))
         self._names[self.pane.document().availableUndoSteps()] = edit.say
         self.foot.say("word", edit.say)
+        lines = lines_after(self.pane.text, edit.changes, MOST_SHOWN)
+        self.pane.looks.light(lines)
+        if lines:
+            self.pane.show_line(lines[0])
 
     def _name_history(self) -> None:
         document = self.pane.document()

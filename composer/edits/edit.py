@@ -81,6 +81,18 @@ def inverse(text: str, edit: Edit) -> Edit:
     return Edit(tuple(changes), edit.say)
 
 
+def lines_after(edited: str, changes: Iterable[Change], most: int) -> list[int]:
+    """The lines of an edited text that the first `most` of the changes have written, from 1."""
+    lines, shift = [], 0
+    for start, end, new in list(changes)[:most]:
+        # A line that is put in whole begins behind one line feed and ends with another: it is one line.
+        put = new.strip("\n")
+        first = edited.count("\n", 0, start + shift) + 1 + new[: len(new) - len(new.lstrip("\n"))].count("\n")
+        lines += range(first, first + put.count("\n") + 1)
+        shift += len(new) - (end - start)
+    return list(dict.fromkeys(lines))
+
+
 def line_starts(text: str) -> list[int]:
     """Where each line of a text begins, lines as a score counts them (ended by a line feed)."""
     starts, at = [0], text.find("\n")

@@ -44,6 +44,15 @@ class Taken:
     notes: tuple[str, ...]
 
 
+def _said(made: Made, from_s: float, to_s: float) -> str:
+    """What is taken in, in words."""
+    last = float(made.tracks.duration_s)
+    if from_s <= 0.0 and to_s >= last:
+        return "the retiming"
+    begins, ends = (made.tempo.say_place(min(max(one, 0.0), last)) for one in (from_s, to_s))
+    return f"the retiming at {begins}" if begins == ends else f"the retiming from {begins} to {ends}"
+
+
 def take(
     text: str, made: Made, retiming: Retiming, remake: Remake, from_s: float = 0.0, to_s: float = float("inf")
 ) -> Taken | Refusal:
@@ -68,7 +77,7 @@ def take(
     changed = _changed(all_, new)
     plan = Plan()
     plan.flat |= set(all_.fiber[new.bent].tolist())
-    said = "the retiming" if from_s <= 0.0 and to_s == float("inf") else f"the retiming at {made.tempo.say_place(from_s)}"
+    said = _said(made, from_s, to_s)
     why = "The retiming cannot be said in the text."
     for _ in range(ROUNDS):
         changes, notes = Rewriting(text, made, all_, new, aim, plan).changes_and_notes()

@@ -96,7 +96,6 @@ class ClothShow(ClothPlace):
         if self._shown is not None:
             fits = tracks is not None and tracks.fibers == self._shown.weave.tracks.fibers
             self._shown = replace(self._shown, ghost=tracks if fits else None, words=words)
-            self.reach(tracks.duration_s if fits else 0.0)
             self._redraw()
 
     def _threads_of(self, shown: Shown) -> Source:

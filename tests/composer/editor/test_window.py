@@ -3,6 +3,7 @@
 import os
 import re
 import signal
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -15,6 +16,7 @@ from PySide6.QtWidgets import (
     QAbstractSlider,
     QApplication,
     QComboBox,
+    QLabel,
     QLineEdit,
     QTabBar,
     QWidget,
@@ -25,6 +27,8 @@ from composer.editor.crew import READER, SOLVER
 from composer.editor.deltas import Delta
 from composer.editor.finding import Where, read_where
 from composer.editor.keys_sheet import KeysSheet, as_html
+from composer.editor.messages import Mended
+from composer.editor.snags_panel import SnagsPanel
 from composer.editor.window import ComposeWindow
 from composer.picture.palette import THEMES
 
@@ -228,6 +232,54 @@ def test_the_choice_under_the_keys_is_a_ghost_on_the_cloth_before_it_is_taken(be
     QApplication.sendEvent(mends.buttons[0], QEvent(QEvent.Type.Leave))
     assert window.stage.cloth._shown.ghost is bench.known.retimed.tracks
     assert window.pane.text == SCORE
+
+
+def test_what_a_mend_has_written_is_lit_and_nothing_lit_stays_on_a_line_that_is_another_now(bench, qtbot):
+    window = bench.window
+    window.do_next_snag()
+    bench.until(lambda: window.snags.mends.choices, "choices")
+    choice = next(one for one in window.snags.mends.choices if one.way == "shrink")
+    window.snags.mends.chosen.emit(choice)
+    lit = window.pane.looks.lit
+    assert lit and all(window.pane.text.split("\n")[line - 1] != SCORE.split("\n")[line - 1] for line in lit)
+    window.pane.go_to(1)
+    qtbot.keyClicks(window.pane, "#")
+    assert window.pane.looks.lit == lit
+    qtbot.keyClick(window.pane, Qt.Key.Key_Return)
+    assert not window.pane.looks.lit
+
+
+def test_the_keys_go_to_the_choices_as_soon_as_they_come(bench):
+    window = bench.window
+    window.activateWindow()
+    window.do_next_snag()
+    window.do_mend()
+    bench.until(lambda: window.snags.mends.choices, "choices")
+    assert window.focusWidget() is window.snags.mends.buttons[0]
+
+
+def test_after_a_mend_the_next_snag_is_the_one_behind_it(bench):
+    panel = SnagsPanel()
+    rows = [replace(bench.known.checked.rows[0], from_s=float(at), line=at) for at in (1, 2, 3)]
+    panel.show_rows(rows)
+    panel.step(1)
+    panel.step(1)
+    panel.show_rows([rows[0], rows[2]])
+    assert panel.current is None
+    panel.step(1)
+    assert panel.current is rows[2]
+    panel.show_rows(rows[:2])
+    panel.step(-1)
+    assert panel.current is rows[1]
+    panel.deleteLater()
+
+
+def test_why_a_way_does_not_help_is_said_with_its_name(bench):
+    panel = SnagsPanel()
+    panel.mends.show_mended(Mended((), {"time": "No amount of time mends it."}))
+    said = [label.text() for label in panel.mends.findChildren(QLabel)]
+    assert "Give it time: no amount of time mends it." in said
+    panel.deleteLater()
 
 
 def test_all_of_the_retiming_can_be_taken_into_the_text_and_out_again(bench):

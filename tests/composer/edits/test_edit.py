@@ -4,7 +4,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from composer.edits.edit import apply, change_at, edit_of, inverse, line_starts, no_moves
+from composer.edits.edit import apply, change_at, edit_of, inverse, line_starts, lines_after, no_moves
 from composer.score.model import Span
 
 
@@ -47,3 +47,16 @@ def test_a_span_of_the_model_is_a_change_of_the_whole_text():
 
 def test_an_edit_that_moves_nothing_says_so_in_empty_arrays():
     assert len(no_moves().fiber) == len(no_moves().places_s) == 0
+
+
+def test_the_lines_that_an_edit_has_written_are_told_as_they_stand_afterwards():
+    text = "one\ntwo\nthree\nfour\n"
+    edit = edit_of([(0, 3, "1"), (8, 8, "new\nnewer\n"), (14, 18, "4")], "some")
+    new = apply(text, edit)
+    assert new.split("\n")[:6] == ["1", "two", "new", "newer", "three", "4"]
+    assert lines_after(new, edit.changes, 10) == [1, 3, 4, 6]
+    assert lines_after(new, edit.changes, 1) == [1]
+    below = edit_of([(3, 3, "\nunder one")], "some")
+    assert lines_after(apply(text, below), below.changes, 10) == [2]
+    gone = edit_of([(4, 8, "")], "some")
+    assert lines_after(apply(text, gone), gone.changes, 10) == [2]

@@ -466,16 +466,17 @@ def test_the_part_that_keys_go_to_has_a_frame(qtbot, make_weave):
     assert (pixels(view)[1] == np.array(DARK.chosen)).all(axis=1).all()
 
 
-def test_a_ghost_that_ends_later_than_the_score_is_seen_to_its_end_and_no_further_without_it(cloth, said):
+def test_a_cloth_can_be_seen_as_far_as_is_said_and_no_further_without_that(cloth, said):
     tracks = cloth.weave.tracks
     later = replace(tracks, duration_s=tracks.duration_s + 5.0)
     cloth.set_ghost(later)
+    cloth.reach(later.duration_s)
     assert cloth.shown == (0.0, later.duration_s)
     assert named(said, "stretch_changed") == [cloth.shown]
-    cloth.set_ghost(None)
+    cloth.reach(0.0)
     assert cloth.shown == (0.0, tracks.duration_s)
     cloth.show_stretch(1.0, 2.0)
-    cloth.set_ghost(later)
+    cloth.reach(later.duration_s)
     assert cloth.shown == (1.0, 2.0)
     cloth.show_all()
     assert cloth.shown == (0.0, later.duration_s)
