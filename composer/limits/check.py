@@ -2,8 +2,9 @@
 
 from dataclasses import dataclass
 
-from composer.limits import air, duty
+from composer.limits import air, duty, switching
 from composer.limits.abilities import Abilities
+from composer.limits.coil import on_times
 from composer.limits.snag import Snag
 from composer.limits.table import LIMITS
 from composer.rig.model import Rig
@@ -34,12 +35,18 @@ class Check:
 
 def check(tracks: Tracks, rig: Rig, abilities: Abilities) -> Check:
     """Check tracks against every limit of a rig, from scratch."""
-    used = air.use(tracks, rig.supply, abilities)
+    used, on = air.use(tracks, rig.supply, abilities), on_times(tracks, rig, abilities)
+    # What several limits, or a limit and the report, go by is worked out once.
+    known = {
+        air.LIMIT.kind: lambda: air.snags_of(used, tracks, abilities),
+        duty.LIMIT.kind: lambda: duty.snags_of(on, tracks, rig),
+        switching.LIMIT.kind: lambda: switching.snags_of(on, tracks, rig),
+    }
     snags: list[Snag] = []
     for limit in LIMITS:
-        snags += air.snags_of(used, tracks, abilities) if limit is air.LIMIT else limit.snags(tracks, rig, abilities)
+        snags += known[limit.kind]() if limit.kind in known else limit.snags(tracks, rig, abilities)
     snags.sort(key=lambda snag: (snag.from_s, snag.to_s, -1 if snag.fiber is None else snag.fiber, snag.kind))
-    shares = duty.shares(tracks, rig, abilities)
+    shares = duty.shares_of(on, tracks)
     highest = int(shares.argmax()) if len(shares) else None
     return Check(
         snags=tuple(snags),

@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
 from composer.limits.buckets import overdraws
-from composer.limits.coil import coils_of, on_times
+from composer.limits.coil import OnTimes, coils_of, on_times
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.snag import Snag
 from composer.limits.stretches import line_of
@@ -34,8 +34,10 @@ class OnTime:
 
 def on_time(tracks: Tracks, rig: Rig, abilities: Abilities) -> OnTime:
     """The on-time of every fiber's coil, from 0 s on, with an instant at the start and the end of every energised segment."""
-    on = on_times(tracks, rig, abilities)
-    fibers = tracks.fibers
+    return _added_up(on_times(tracks, rig, abilities), tracks.fibers)
+
+
+def _added_up(on: OnTimes, fibers: int) -> OnTime:
     each = np.bincount(on.fiber, minlength=fibers)
     first = np.concatenate([[0], np.cumsum(2 * each + 1)])
     time, seconds = np.zeros(first[-1]), np.zeros(first[-1])
@@ -50,7 +52,11 @@ def on_time(tracks: Tracks, rig: Rig, abilities: Abilities) -> OnTime:
 
 def shares(tracks: Tracks, rig: Rig, abilities: Abilities) -> Array:
     """The share of the score's whole length that each coil is energised, (F,)."""
-    on = on_times(tracks, rig, abilities)
+    return shares_of(on_times(tracks, rig, abilities), tracks)
+
+
+def shares_of(on: OnTimes, tracks: Tracks) -> Array:
+    """The same, (F,), of on-times that are known already."""
     total = np.bincount(on.fiber, weights=on.seconds, minlength=tracks.fibers)
     return total / tracks.duration_s if tracks.duration_s > 0.0 else np.zeros(tracks.fibers)
 
@@ -60,7 +66,12 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
 
     From and to are the span; needs its seconds of on-time, has duty_burst_s + duty times its length.
     """
-    coils, on = coils_of(rig), on_time(tracks, rig, abilities)
+    return snags_of(on_times(tracks, rig, abilities), tracks, rig)
+
+
+def snags_of(known: OnTimes, tracks: Tracks, rig: Rig) -> list[Snag]:
+    """The snags of on-times that are known already."""
+    coils, on = coils_of(rig), _added_up(known, tracks.fibers)
     total = on.on_s[on.first[1:] - 1]
     # While it is on, a coil falls behind by 1 - duty a second: one that does not get so far in all is in order.
     suspects = np.flatnonzero(total * (1.0 - coils.duty) > coils.burst_s * (1.0 + TOLERANCE))

@@ -44,7 +44,9 @@ def roots(curve: Array) -> Array:
     if terms < 2:
         return np.empty((rows, 0))
     if terms < 4:
-        return _closed(np.pad(curve, [(0, 0), (0, 3 - terms)]))[:, : terms - 1]
+        quadratics = np.zeros((rows, 3))
+        quadratics[:, :terms] = curve
+        return _closed(quadratics)[:, : terms - 1]
     cuts = np.column_stack([np.zeros(rows), roots(derivative(curve)), np.ones(rows)])
     # A missing cut becomes an empty stretch at the end: order is kept, and empty stretches hold no change of sign.
     cuts = np.where(np.isnan(cuts), 1.0, cuts)

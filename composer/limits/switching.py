@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.limits.coil import coils_of, on_times
+from composer.limits.coil import OnTimes, coils_of, on_times
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.snag import Snag
 from composer.limits.stretches import Pieces, as_snags, gather
@@ -21,7 +21,11 @@ Array = NDArray[np.float64]
 
 def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
     """Every stretch of starts that follow too soon: needs switches a second where they are closest, has the most."""
-    on = on_times(tracks, rig, abilities)
+    return snags_of(on_times(tracks, rig, abilities), tracks, rig)
+
+
+def snags_of(on: OnTimes, tracks: Tracks, rig: Rig) -> list[Snag]:
+    """The snags of on-times that are known already."""
     begin = np.flatnonzero(np.diff(on.stretch, prepend=-1))
     fiber, start, segment = on.fiber[begin], on.from_s[begin], on.segment[begin]
     most = coils_of(rig).switch_Hz
