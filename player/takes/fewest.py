@@ -36,34 +36,43 @@ def fewest(places: Places, moves: Moves) -> tuple[list[Path | None], Index]:
     search goes on at the place after, so that all breaks are found: numbers of places from which no move leads further.
     """
     steps, breaks = _steps(places, moves)
-    broken = np.unique(places.series[breaks])
+    broken = np.isin(np.arange(len(places.first) - 1), places.series[breaks])
     levels = places.targets_of(np.arange(len(places.place))).T
-    cost, before, by = _roundest(places, moves, steps, _roughness(places, levels), levels)
-    paths: list[Path | None] = []
-    for series, last in enumerate(places.first[1:] - 1):
-        ends = np.where(steps[last] == steps[last].min(), cost[last], np.inf)
-        found = last * LEVELS + int(np.argmin(ends))
-        paths.append(None if series in broken else _back(found, places, moves, levels, before, by))
-    return paths, breaks
+    after, by = _roundest(places, moves, steps, _roughness(places, levels), levels, ~broken)
+    return [
+        None if broken[series] else _onward(int(begin) * LEVELS, places, moves, levels, after, by)
+        for series, begin in enumerate(places.first[:-1])
+    ], breaks
+
+
+_LANES = 8 * np.arange(LEVELS, dtype=np.uint64)
+_SPREAD = np.bitwise_or.reduce(
+    np.where(np.arange(1 << LEVELS)[:, None] >> np.arange(LEVELS) & 1 > 0, np.uint64(255) << _LANES, np.uint64(0)), axis=1
+)
+"""For some targets, as bits, all bits of the bytes that stand for them, one byte a target."""
+
+_HALVES = tuple(np.uint64(bits) for bits in (32, 16, 8))
 
 
 def _steps(places: Places, moves: Moves) -> tuple[NDArray[np.int32], Index]:
     """How many moves lead to each target of each place at least, (N, LEVELS), and the places where they break off."""
     order = np.argsort(moves.source, kind="stable")
     begins = np.searchsorted(moves.source[order], np.arange(len(places.place) + 1))
-    target, masks = moves.target[order], moves.masks[order]
+    target = moves.target[order]
+    # The masks of a move in one number, a byte for each target that it sets out from.
+    masks = np.bitwise_or.reduce(moves.masks[order].astype(np.uint64) << _LANES, axis=1)
     steps = np.full((len(places.place), LEVELS), NEVER, dtype=np.int32)
     reached = np.zeros(len(places.place), dtype=np.uint8)
     front = places.first[:-1]
     fresh = np.ones(len(front), dtype=np.uint8)
     reached[front], steps[front, 0] = 1, 0
     bits = np.uint8(1) << np.arange(LEVELS, dtype=np.uint8)
-    furthest = front.copy()
+    furthest, last = front.copy(), places.first[1:] - 1
     breaks: list[Index] = []
     number = 0
     while True:
         if not len(front):
-            stuck = furthest[furthest < places.first[1:] - 1]
+            stuck = furthest[furthest < last]
             if not len(stuck):
                 break
             breaks.append(stuck)
@@ -74,26 +83,40 @@ def _steps(places: Places, moves: Moves) -> tuple[NDArray[np.int32], Index]:
             steps[front[:, None], np.arange(LEVELS)] = np.where(fresh[:, None] & bits, number + 1, steps[front])
             np.maximum.at(furthest, places.series[front], front)
         number += 1
-        many = begins[front + 1] - begins[front]
-        edge = np.repeat(begins[front] - (np.cumsum(many) - many), many) + np.arange(int(many.sum()))
-        from_bits = np.repeat(fresh, many)
-        into = np.zeros(len(edge), dtype=np.uint8)
-        for level in range(LEVELS):
-            into |= np.where(from_bits & bits[level], masks[edge, level], 0).astype(np.uint8)
+        edge, many = _runs(begins, front)
+        into = masks[edge] & _SPREAD[fresh].repeat(many)
+        for half in _HALVES:
+            into |= into >> half
+        into = into.astype(np.uint8)
         there = target[edge]
         into &= ~reached[there]
-        some = into != 0
+        some = into.nonzero()[0]
         there, into = there[some], into[some]
-        sort = np.argsort(there, kind="stable")
-        there, into = there[sort], into[sort]
-        lead = np.flatnonzero(np.diff(there, prepend=-1))
+        sort = there.argsort(kind="stable")
+        there = there[sort]
+        lead = _leads(there)
         front = there[lead]
         np.maximum.at(furthest, places.series[front], front)
-        fresh = np.bitwise_or.reduceat(into, lead)
+        fresh = np.bitwise_or.reduceat(into[sort], lead) if len(lead) else into
         reached[front] |= fresh
-        rows, level = np.nonzero(fresh[:, None] & bits)
+        rows, level = (fresh[:, None] & bits).nonzero()
         steps[front[rows], level] = number
     return steps, np.concatenate([*breaks, np.empty(0, np.int64)])
+
+
+def _runs(begins: Index, some: Index) -> tuple[Index, Index]:
+    """All numbers from `begins` of each of some to that of the next, run after run, and how many there are in each run."""
+    first = begins[some]
+    many = begins[some + 1] - first
+    end = many.cumsum()
+    return (first - end + many).repeat(many) + np.arange(end[-1] if len(end) else 0), many
+
+
+def _leads(values: Index) -> Index:
+    """Where runs of equal values begin."""
+    new = np.ones(len(values), dtype=bool)
+    np.not_equal(values[1:], values[:-1], out=new[1:])
+    return new.nonzero()[0]
 
 
 def _roughness(places: Places, levels: Array) -> Array:
@@ -115,69 +138,58 @@ HELD = -1.0
 
 
 def _roundest(
-    places: Places, moves: Moves, steps: NDArray[np.int32], rough: Array, levels: Array
-) -> tuple[Array, NDArray[np.int64], NDArray[np.int64]]:
-    """Of the ways of fewest moves the one that reads best: for each target of each place its cost, (N, LEVELS), and for each
-    state (place times LEVELS plus target) the state before and the move from there, (N * LEVELS,).
+    places: Places, moves: Moves, steps: NDArray[np.int32], rough: Array, levels: Array, whole: NDArray[np.bool_]
+) -> tuple[Index, Index]:
+    """Of the ways of fewest moves the one that reads best, from the ends back: for each state (place times LEVELS plus target)
+    the state after and the move to there, (N * LEVELS,), below 0 where no way of fewest moves to an end comes by.
 
-    States that lead to no end by a way of fewest moves are left out.
+    whole: (S,) series in which moves lead to the end
     """
-    cost = np.zeros(steps.size)
-    before, by = np.full(steps.size, -1), np.full(steps.size, -1)
-    flat, looks = levels.ravel(), rough.ravel()
-    bent = BENT * (moves.shape > 1)
-    for edge, left, right in reversed(_tight(places, moves, steps)):
-        each = looks[right] + bent[edge]
-        each += HELD * (np.abs(flat[left] - flat[right]) < 1e-9)
-        total = cost[left] + each
-        order = np.argsort(right, kind="stable")
-        total, state = total[order], right[order]
-        lead = np.flatnonzero(np.diff(state, prepend=-1))
-        least = np.minimum.reduceat(total, lead)
-        best = np.flatnonzero(total <= np.repeat(least, np.diff(lead, append=len(total))))
-        best = best[np.flatnonzero(np.diff(state[best], prepend=-1))]
-        cost[state[best]] = least
-        before[state[best]], by[state[best]] = left[order[best]], edge[order[best]]
-    return cost.reshape(steps.shape), before, by
-
-
-def _tight(places: Places, moves: Moves, steps: NDArray[np.int32]) -> list[tuple[Index, Index, Index]]:
-    """What ways of fewest moves to the ends are made of: moves, states that they come from, and go to; the last moves first."""
     order = np.argsort(moves.target, kind="stable")
     begins = np.searchsorted(moves.target[order], np.arange(len(places.place) + 1))
-    source, masks = moves.source[order], moves.masks[order]
-    last = places.first[1:] - 1
+    source, masks, bent = moves.source[order], moves.masks[order], BENT * (moves.shape[order] > 1)
+    last = places.first[1:][whole] - 1
     ends = steps[last]
     row, level = np.nonzero((ends == ends.min(axis=1, keepdims=True)) & (ends != NEVER))
     waits = last[row] * LEVELS + level
-    number = steps.ravel()[waits]
-    found = []
+    arrives = steps.ravel()[waits]
+    flat, looks = levels.ravel(), rough.ravel()
+    cost = np.zeros(steps.size)
+    after, by = np.full(steps.size, -1), np.full(steps.size, -1)
     front = np.empty(0, dtype=np.int64)
-    for now in range(int(number.max(initial=0)), 0, -1):
+    for now in range(int(arrives.max(initial=0)), 0, -1):
         # Series of fewer moves join in where their last one is.
-        front = np.unique(np.concatenate([front, waits[number == now]]))
-        there, into = np.divmod(front, LEVELS)
-        many = begins[there + 1] - begins[there]
-        edge = np.repeat(begins[there] - (np.cumsum(many) - many), many) + np.arange(int(many.sum()))
-        into, right = np.repeat(into, many), np.repeat(front, many)
+        late = waits[arrives == now]
+        if len(late):
+            front = np.sort(np.concatenate([front, late]))
+        there = front // LEVELS
+        edge, many = _runs(begins, there)
         leads = steps[source[edge]] == now - 1
-        leads &= (masks[edge] >> into[:, None].astype(np.uint8)) & 1 > 0
-        some, left = np.nonzero(leads)
-        edge, right = edge[some], right[some]
+        leads &= masks[edge] & (1 << (front - there * LEVELS)).astype(np.uint8).repeat(many)[:, None] > 0
+        some, left = leads.nonzero()
+        edge, right = edge[some], front.repeat(many)[some]
         left += source[edge] * LEVELS
-        edge = order[edge]
-        sort = np.lexsort((left, edge))
-        found.append((edge[sort], left[sort], right[sort]))
-        front = np.unique(left)
-    return found
+        total = cost[right] + looks[right]
+        total += bent[edge]
+        total += HELD * (np.abs(flat[left] - flat[right]) < 1e-9)
+        sort = left.argsort(kind="stable")
+        total, left = total[sort], left[sort]
+        lead = _leads(left)
+        least = np.minimum.reduceat(total, lead)
+        best = (total <= least.repeat(np.diff(lead, append=len(total)))).nonzero()[0]
+        best = best[_leads(left[best])]
+        front = left[lead]
+        cost[front] = least
+        after[front], by[front] = right[sort[best]], order[edge[sort[best]]]
+    return after, by
 
 
-def _back(state: int, places: Places, moves: Moves, levels: Array, before: Index, by: Index) -> Path:
-    """The path that leads to a state."""
+def _onward(state: int, places: Places, moves: Moves, levels: Array, after: Index, by: Index) -> Path:
+    """The path that leads on from a state."""
     states, shapes = [state], []
-    while before[state] >= 0:
+    while after[state] >= 0:
         shapes.append(moves.shape[by[state]])
-        state = int(before[state])
+        state = int(after[state])
         states.append(state)
-    node, level = np.divmod(np.array(states[::-1]), LEVELS)
-    return Path(places.place[node], places.time_s[node], levels[node, level], np.array(shapes[::-1], dtype=np.int8))
+    node, level = np.divmod(np.array(states), LEVELS)
+    return Path(places.place[node], places.time_s[node], levels[node, level], np.array(shapes, dtype=np.int8))

@@ -73,7 +73,7 @@ def roughly(played: Played, places: Places) -> Moves:
             if len(part):
                 clock = played.clocks[series]
                 way = Sudden(played, places, clock, sources[part], targets[part], up, going=GLANCED)
-                good[part] = np.all(np.abs(way.curve(way.b)(way.a) - way.met) <= ROUGH / ROOM * way.slack, axis=1)
+                good[part] = np.all(np.abs(way.curve() - way.met) <= ROUGH / ROOM * way.slack, axis=1)
     masks = np.zeros((int(good.sum()), LEVELS), dtype=np.uint8)
     masks[:, 0] = 1
     return Moves(sources[good], targets[good], shapes[good], masks)

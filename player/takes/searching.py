@@ -25,6 +25,10 @@ ALL = 6
 """How often places are added at most."""
 
 
+KEPT = -1
+"""Shape of what stands for several moves that stay as they are."""
+
+
 class Unfitted(Exception):
     """No moves lead through a series: a fault of this program, as straight lines between samples always do."""
 
@@ -68,7 +72,7 @@ class Search:
             places, moves = self._weighed(repair)
             found, breaks = fewest(places, moves)
             for k, path in zip(self._left, found, strict=True):
-                paths[k] = path
+                paths[k] = path if path is None or self._pins is None else _with_kept(path, self._pins[k][0])
             if not len(breaks):
                 return paths
             self._known = places, moves
@@ -84,7 +88,7 @@ class Search:
         left = self._left
         some = self.played.part(left)
         fine = 10.0 ** max(0, repair - 2 * REPAIRS + 1)
-        places = places_of(some, self.tempo, COARSE, only=[self.tried[k] for k in left], fine=fine)
+        places = places_of(some, self.tempo, COARSE, only=[self._searched(k) for k in left], fine=fine)
         places.free[:] = np.concatenate([np.isin(of_series(places, n), self._free[k]) for n, k in enumerate(left)])
         count = len(places.place)
         until = places.first[places.series + 1] - 1
@@ -100,8 +104,24 @@ class Search:
         fits = moves_of(some, places, likely(some, places, Only(until, stage, fresh)), [self.watched[k] for k in left])
         return places, _together([*kept, fits])
 
+    def _searched(self, series: int) -> Index:
+        """The places tried for a series, without those in the midst of what stays as it is."""
+        if self._pins is None:
+            return self.tried[series]
+        kept = self._kept(series)
+        inner = self._pins[series][0].place[1:-1][kept[1:] & kept[:-1]]
+        return np.setdiff1d(self.tried[series], inner, assume_unique=True)
+
+    def _kept(self, series: int) -> np.ndarray:
+        """Which moves of the path that there is stay as they are: those outside the windows, (K,)."""
+        (path, stays), (low, high) = self._pins[series], self._windows[series]
+        from_ = path.place[:-1]
+        window = np.searchsorted(low, from_, side="right") - 1
+        return stays[:-1] & stays[1:] & ~((window >= 0) & (from_ < high[window]))
+
     def _pinned(self, places: Places) -> tuple[Index, Moves]:
-        """How far moves from each place may go, (N,); the moves that stay as they were. Knots that stay keep their targets."""
+        """How far moves from each place may go, (N,); what stays between two windows, as one move. Knots that stay keep their
+        targets."""
         until = np.arange(len(places.place))
         lots = []
         for n, k in enumerate(self._left):
@@ -110,15 +130,17 @@ class Search:
             begin, end = first + np.searchsorted(mine, low), first + np.searchsorted(mine, high)
             for a, b in zip(begin, end, strict=True):
                 until[a:b] = b
-            at = first + np.searchsorted(mine, path.place)
-            pins = at[stays]
+            kept = np.concatenate([[False], self._kept(k), [False]])
+            knots = np.flatnonzero(stays & ~(kept[1:] & kept[:-1]))
+            pins = first + np.searchsorted(mine, path.place[knots])
             places.many[pins], places.grain[pins], places.lowest[pins] = (
                 1,
-                np.maximum(path.share[stays], 1e-9),
-                path.share[stays] > 0.0,
+                np.maximum(path.share[knots], 1e-9),
+                path.share[knots] > 0.0,
             )
-            same = stays[:-1] & stays[1:] & (until[at[:-1]] == at[:-1])
-            lots.append(Moves(at[:-1][same], at[1:][same], path.shape[same], _first_to_first(int(same.sum()))))
+            runs = path.place[np.flatnonzero(kept[1:] != kept[:-1]).reshape(-1, 2)]
+            source, target = first + np.searchsorted(mine, runs).T
+            lots.append(Moves(source, target, np.full(len(runs), KEPT, dtype=np.int8), _first_to_first(len(runs))))
         return until, _together(lots)
 
     def _carried(self, places: Places) -> tuple[Moves, np.ndarray]:
@@ -166,6 +188,23 @@ def _nearest(place: Index, knots: Index) -> Index:
 
 def _together(lots: list[Moves]) -> Moves:
     return Moves(*(np.concatenate([getattr(lot, name) for lot in lots]) for name in ("source", "target", "shape", "masks")))
+
+
+def _with_kept(path: Path, kept: Path) -> Path:
+    """A path in which what stands for moves that stay as they are is those moves again."""
+    move = 0
+    lots: list[tuple[np.ndarray, ...]] = []
+    for run in np.flatnonzero(path.shape == KEPT):
+        first, last = np.searchsorted(kept.place, path.place[run : run + 2])
+        lots.append((*_knots(path, move, run), path.shape[move:run]))
+        lots.append((*_knots(kept, first, last), kept.shape[first:last]))
+        move = run + 1
+    lots.append((*_knots(path, move, path.moves + 1), path.shape[move:]))
+    return Path(*(np.concatenate(part) for part in zip(*lots, strict=True)))
+
+
+def _knots(path: Path, begin: int, end: int) -> tuple[np.ndarray, ...]:
+    return path.place[begin:end], path.time_s[begin:end], path.share[begin:end]
 
 
 def _first_to_first(count: int) -> np.ndarray:

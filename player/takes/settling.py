@@ -280,6 +280,9 @@ class _Settling:
         idle = np.diff(np.interp(path.time_s, self.grid_s, stood))
         idle[np.abs(np.diff(path.share)) < 1e-9] = 0.0
         idle[(path.time_s[1:] <= snag.from_s) | (path.time_s[:-1] >= snag.to_s)] = 0.0
+        # Where a curve is as close as it can be, and the coil still on, others have to give.
+        middle = np.searchsorted(self.grid_s, (path.time_s[1:] + path.time_s[:-1]) / 2.0)
+        idle[self.played.slack[number, np.minimum(middle, len(self.grid_s) - 1)] <= LEAST * self.tolerance] = 0.0
         longest = np.argsort(-idle, kind="stable")
         enough = 1 + int(np.searchsorted(np.cumsum(idle[longest]), ENOUGH * (snag.needs - snag.has)))
         return np.sort(longest[:enough][idle[longest[:enough]] > 0.0])

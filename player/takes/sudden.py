@@ -1,6 +1,5 @@
 """Sudden moves: which of them stay within the slack of what was played, from which target to which."""
 
-from collections.abc import Callable
 from itertools import product
 
 import numpy as np
@@ -31,7 +30,7 @@ def suddens(played: Played, places: Places, source: Index, target: Index, watch:
             clock = played.clocks[series]
             way = Sudden(played, places, clock, source[part], target[part], up, going=GLANCED)
             # First with the values that were played, twice the slack being allowed.
-            near = np.all(np.abs(way.curve(way.b)(way.a) - way.met) <= 2.0 * way.slack, axis=1)
+            near = np.all(np.abs(way.curve() - way.met) <= 2.0 * way.slack, axis=1)
             if near.any():
                 part = part[near]
                 masks[part] = Sudden(played, places, clock, source[part], target[part], up, watch).masks(places)
@@ -68,24 +67,37 @@ class Sudden:
         from_s, to_s = np.interp(a, self.share, self.clock_s), np.interp(b, self.share, self.clock_s)
         return to_s - from_s if self.up else from_s - to_s
 
-    def curve(self, b: Array) -> Callable[[Array], Array]:
-        """The curve that arrives at b, as a function of where it sets out."""
+    def on_way(self, b: Array) -> Array:
+        """Where the moves that arrive at b are while they go, had they set out long before."""
         clock = np.interp(b, self.share, self.clock_s)[:, None]
-        on_way = np.interp(clock - self.left if self.up else clock + self.left, self.clock_s, self.share)
-        return lambda a: (np.maximum if self.up else np.minimum)(on_way, a[:, None])
+        return np.interp(clock - self.left if self.up else clock + self.left, self.clock_s, self.share)
+
+    def curve(self) -> Array:
+        """Where they are from a to b."""
+        return (np.maximum if self.up else np.minimum)(self.on_way(self.b), self.a[:, None])
 
     def masks(self, places: Places) -> NDArray[np.uint8]:
         """For each target that they set out from, the targets at which they may arrive, as bits."""
         starts, stops = places.targets_of(self.source).T, places.targets_of(self.target).T
         masks = np.zeros(starts.shape, dtype=np.uint8)
-        far = 2.0 * places.slack[self.target]
+        far, last = 2.0 * places.slack[self.target], self.lasts - np.maximum(1e-4 * self.lasts, self.rest)
+        top, bottom = self.met + self.slack, self.met - self.slack
+        lowest, highest = bottom.max(axis=1), top.min(axis=1)
         with np.errstate(invalid="ignore"):
-            for b in range(LEVELS):
-                arriving = self.curve(stops[:, b])
-                for a in range(LEVELS):
+            for b in range(int(places.many[self.target].max(initial=0))):
+                low, high = self._between(stops[:, b], top, bottom, lowest, highest)
+                for a in range(int(places.many[self.source].max(initial=0))):
                     takes = self.takes(starts[:, a], stops[:, b])
-                    fits = (np.abs(starts[:, a] - stops[:, b]) > far) & (takes > 0.0)
-                    fits &= takes <= self.lasts - np.maximum(1e-4 * self.lasts, self.rest)
-                    fits &= np.all(np.abs(arriving(starts[:, a]) - self.met) <= self.slack, axis=1)
+                    fits = (np.abs(starts[:, a] - stops[:, b]) > far) & (takes > 0.0) & (takes <= last)
+                    fits &= (starts[:, a] >= low) & (starts[:, a] <= high)
                     masks[fits, a] |= np.uint8(1 << b)
         return masks
+
+    def _between(self, b: Array, top: Array, bottom: Array, lowest: Array, highest: Array) -> tuple[Array, Array]:
+        """From where to where moves that arrive at b may set out, so that they stay within bounds; nowhere: low above high."""
+        on_way = self.on_way(b)
+        if self.up:
+            waits = np.where(on_way < bottom, bottom, -np.inf).max(axis=1)
+            return np.where((on_way <= top).all(axis=1), waits, np.inf), highest
+        waits = np.where(on_way > top, top, np.inf).min(axis=1)
+        return lowest, np.where((on_way >= bottom).all(axis=1), waits, -np.inf)
