@@ -56,6 +56,8 @@ class Showing(QObject):
         self._sampler: Sampler | None = None
         self._played: Tracks | None = None
         self._ghost_said: Tracks | None = None
+        self._reached_for: Retimed | None = None
+        self._reached_s = 0.0
         self._early: list[Any] = []
         self._hung: Rig | None = None
         self._paged: Rig | None = None
@@ -129,6 +131,7 @@ class Showing(QObject):
         self.known.forget()
         self._fiber = self._sampler = self._played = self._ghost_said = self._carried = None
         self._early = []
+        self._reached_for, self._reached_s = None, 0.0
         self.stage.transport.pause()
         self.stage.transport.clear_loop()
         self.stage.transport.to_start()
@@ -219,12 +222,20 @@ class Showing(QObject):
             ghost = known.retimed.tracks
         else:
             ghost = None
-        # While a retiming is being looked for the end stays where that of before had it, and with it what is in view.
-        if ghost is not None or known.retimed is not None or not self.beside:
-            # Cloth and strand follow one another, so the strand has to know of the later end first.
-            for view in (self.strand, cloth):
-                view.reach(0.0 if ghost is None else ghost.duration_s)
+        self._reach(0.0 if ghost is None else ghost.duration_s)
         cloth.set_ghost(ghost, words_of)
+
+    def _reach(self, end_s: float) -> None:
+        """Let cloth and strand reach so far; back only with another retiming, so that what is in view stays there till then."""
+        retimed = self.known.retimed
+        if retimed is None or retimed is self._reached_for:
+            end_s = max(end_s, self._reached_s)
+        else:
+            self._reached_for = retimed
+        self._reached_s = end_s
+        # They follow one another, so both have to know of a later end before either shows it.
+        self.strand.reach(end_s)
+        self.stage.cloth.reach(end_s)
 
     def carry(self, tracks: Tracks | None) -> None:
         """Show tracks that would come of a drag under way; None: it is over."""

@@ -234,6 +234,23 @@ def test_the_choice_under_the_keys_is_a_ghost_on_the_cloth_before_it_is_taken(be
     assert window.pane.text == SCORE
 
 
+def test_what_is_in_view_stays_there_while_choices_are_looked_at(bench):
+    window = bench.window
+    cloth, strand = window.stage.cloth, window.strand
+    until = bench.known.retimed.tracks.duration_s
+    assert until > bench.known.picture.tracks.duration_s
+    cloth.show_stretch(until - 3.0, until)
+    window.do_next_snag()
+    bench.until(lambda: window.snags.mends.choices, "choices")
+    shown = cloth.shown
+    for choice in window.snags.mends.choices:
+        window.snags.mends.ghost.emit(choice)
+        assert cloth.shown == strand.shown == shown
+    window.snags.mends.ghost.emit(None)
+    assert cloth.shown == shown
+    cloth.show_all()
+
+
 def test_what_a_mend_has_written_is_lit_and_nothing_lit_stays_on_a_line_that_is_another_now(bench, qtbot):
     window = bench.window
     window.do_next_snag()
