@@ -4,7 +4,7 @@ VENT: the key is put into the window's queue at chance moments while it redraws;
 to one of eight boards and notes when the vent frame passes. Frames: how often the hang view is drawn. Engine: how late ticks
 come with the window and without, in turns, as the ratio of p99.9.
 
-    python tests/bench/rehearse.py [vent|frames|engine] [--vents 100] [--seconds 20] [--pairs 3] [--short]
+    python tests/bench/rehearse.py [vent|frames|engine] [--vents 100] [--seconds 20] [--pairs 3] [--small]
 
 Without a screen, QT_QPA_PLATFORM=offscreen draws all the same.
 """
@@ -217,9 +217,9 @@ def main() -> None:
     parser.add_argument("--vents", type=int, default=100)
     parser.add_argument("--seconds", type=float, default=20.0)
     parser.add_argument("--pairs", type=int, default=3)
-    parser.add_argument("--short", action="store_true")
+    parser.add_argument("--short", "--small", action="store_true")
     given = parser.parse_args()
-    vents, seconds, pairs = (20, 5.0, 1) if given.short else (given.vents, given.seconds, given.pairs)
+    vents, seconds, pairs = (10, 4.0, 1) if given.short else (given.vents, given.seconds, given.pairs)
     with ExitStack() as stack:
         folder = stack.enter_context(tempfile.TemporaryDirectory())
         os.environ["XDG_RUNTIME_DIR"] = stack.enter_context(tempfile.TemporaryDirectory(prefix="runs-"))
