@@ -176,19 +176,13 @@ def _table(rows: list[_Row], first: list[int], lengths: list[tuple[Fraction, ...
             control_unit[at] = [UNIT_NUMBERS[inner.unit] for inner in row.controls]
         if (quiver := row.quiver) is not None:
             hertz[at], by[at], by_unit[at] = _number(quiver.hertz), _number(quiver.by.value), UNIT_NUMBERS[quiver.by.unit]
-    table = np.array(
-        [
-            (
-                *map(_number, row.offset),
-                _number(row.target.value),
-                UNIT_NUMBERS[row.target.unit],
-                SHAPE_NUMBERS[row.shape],
-                row.shut,
-                row.source.span.line if row.source.span.file == file else 0,
-            )
-            for row in rows
-        ]
-    ).reshape(-1, 8)
+    numbers: list[float] = []
+    for row in rows:  # one flat list of plain numbers, the form that becomes an array soonest
+        bars, counts, seconds = row.offset
+        line = row.source.span.line if row.source.span.file == file else 0
+        numbers += (_number(bars), _number(counts), _number(seconds), _number(row.target.value))
+        numbers += (UNIT_NUMBERS[row.target.unit], SHAPE_NUMBERS[row.shape], row.shut, line)
+    table = np.array(numbers, dtype=float).reshape(-1, 8)
     whole = table[:, 4:].astype(np.int32)
     return Lines(
         first=np.array(first, dtype=np.int64),

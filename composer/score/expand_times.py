@@ -224,9 +224,9 @@ def _check_lines(found: Moments, starts: Starts, lines: Lines, rig: Rig, faults:
 
 def _check_length(found: Moments, starts: Starts, faults: list[Fault]) -> None:
     """No instance may end later than seconds can be told apart to a nanosecond; the entry that ends last is named."""
-    last = np.argmax(found.end) if len(found.end) else 0
     latest = float(max(found.end.max(initial=0.0), found.until.max(initial=0.0)))
     if latest > LONGEST_S:
+        last = found.end.argmax() if len(found.end) else 0
         span = starts.entries[starts.entry[found.order[last]]].span
         faults.append(fault_at(span, f"the score lasts {latest:.4g} s", f"at most {LONGEST_S:.0f} s", "cut it in parts"))
 
