@@ -146,7 +146,9 @@ class Between:
 
     def _passage_changed(self, loop: Any) -> None:
         warp = self.showing.known.warp(self.showing.as_retimed)
-        self.retimed.set_passage(None if loop is None else (warp.was(loop[0]), warp.was(loop[1])))
+        written = None if loop is None else (warp.was(loop[0]), warp.was(loop[1]))
+        self.retimed.set_passage(written)
+        self.stage.cloth.set_passage(written)
 
 
 def retiming_in_words(count: int) -> str:

@@ -260,6 +260,7 @@ class Deeds:
             if taken.notes:
                 self.notices.say("take", " ".join(taken.notes))
 
+        self.notices.drop("take")
         self.foot.say("word", "taking the retiming in …")
         self.crew.ask("take", (from_s, to_s), make)
 

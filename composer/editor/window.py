@@ -200,6 +200,7 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
             self.hand.forget()
         self.crew.change(delta)
         self.showing.show_choice(None)
+        self.notices.drop("take")
         if self.pane.blockCount() != self._lines:
             # What is lit was lit by its number, and the numbers are others now.
             self._lines, self._entry = self.pane.blockCount(), 0

@@ -296,6 +296,22 @@ def _arrow(painter: QPainter, view: View, begin: float, end: float, y: float) ->
         painter.drawPolygon(QPolygonF([QPointF(end, y), QPointF(end + back, y - size), QPointF(end + back, y + size)]))
 
 
+def passage(painter: QPainter, view: View, from_s: float, to_s: float) -> None:
+    """Draw the passage that is gone round in: a bracket over the threads, and a line at either end of it through them."""
+    look, plan = view.look, view.plan
+    if to_s <= view.from_s or from_s >= view.to_s:
+        return
+    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+    left, right = (min(max(view.x_of(at), plan.left), plan.left + plan.width) for at in (from_s, to_s))
+    y, foot = plan.strip_top - look.px(2), plan.top + view.shown
+    painter.setPen(pen(look.theme.head, look.px(3)))
+    painter.drawLine(QPointF(left, y), QPointF(right, y))
+    painter.setPen(pen(look.theme.head, look.px(1), dash=(2.0, 4.0)))
+    for at, x in ((from_s, left), (to_s, right)):
+        if view.from_s <= at <= view.to_s:
+            painter.drawLine(QPointF(x, y), QPointF(x, foot))
+
+
 def head(painter: QPainter, view: View, at_s: float) -> None:
     """Draw the play head: a line through everything, with a foot on the bars."""
     look, plan = view.look, view.plan

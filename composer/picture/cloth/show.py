@@ -44,6 +44,7 @@ class ClothShow(ClothPlace):
         self._shown: Shown | None = None
         self._source: Source | None = None
         self._head_s = 0.0
+        self._passage: tuple[float, float] | None = None
         self._still: QImage | None = None
         self._frame: QImage | None = None
         self._last: tuple[QImage, View] | None = None
@@ -145,6 +146,11 @@ class ClothShow(ClothPlace):
         """The thread that the keys are on."""
         return None if self._shown is None else self._shown.fiber
 
+    def set_passage(self, passage: tuple[float, float] | None) -> None:
+        """Show the passage that is gone round in, from an instant to another; None for none."""
+        self._passage = passage
+        self.update()
+
     @property
     def head_s(self) -> float:
         """Where the play head stands."""
@@ -195,6 +201,8 @@ class ClothShow(ClothPlace):
             painter.fillRect(bar.geometry().adjusted(-1, -1, BAR_PX, BAR_PX), colour(self._theme.ground))
         painter.scale(1 / scale, 1 / scale)
         painter.drawImage(0, 0, self._still)
+        if self._passage is not None:
+            over.passage(painter, view, *self._passage)
         over.head(painter, view, self._head_s)
         self._paint_moving(painter, view)
         if self.hasFocus():

@@ -299,6 +299,20 @@ def test_why_a_way_does_not_help_is_said_with_its_name(bench):
     panel.deleteLater()
 
 
+def test_a_passage_is_marked_on_the_cloth_and_what_was_said_of_taking_it_goes_with_the_next_edit(bench, qtbot):
+    window = bench.window
+    window._go_to_seconds(1.0)
+    window.do_loop_from()
+    window._go_to_seconds(2.0)
+    window.do_loop_to()
+    assert window.stage.cloth._passage == (pytest.approx(1.0), pytest.approx(2.0))
+    window.do_no_loop()
+    assert window.stage.cloth._passage is None
+    window.notices.say("take", "Something about a passage.")
+    qtbot.keyClicks(window.pane, " ")
+    assert "take" not in window.notices.said
+
+
 def test_all_of_the_retiming_can_be_taken_into_the_text_and_out_again(bench):
     window = bench.window
     assert bench.known.checked.check.snags

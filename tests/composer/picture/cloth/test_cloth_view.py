@@ -480,3 +480,14 @@ def test_a_cloth_can_be_seen_as_far_as_is_said_and_no_further_without_that(cloth
     assert cloth.shown == (1.0, 2.0)
     cloth.show_all()
     assert cloth.shown == (0.0, later.duration_s)
+
+
+def test_the_passage_that_is_looped_is_marked_from_its_start_to_its_end_and_nowhere_else(cloth):
+    before = pixels(cloth)
+    cloth.set_passage((0.5, 1.0))
+    marked = np.flatnonzero((pixels(cloth) != before).any(axis=(0, 2)))
+    view = cloth._current()
+    assert marked.min() == pytest.approx(view.x_of(0.5), abs=3) and marked.max() == pytest.approx(view.x_of(1.0), abs=3)
+    assert len(marked) >= 0.9 * (view.x_of(1.0) - view.x_of(0.5))
+    cloth.set_passage(None)
+    assert np.array_equal(pixels(cloth), before)
