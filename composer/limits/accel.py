@@ -25,7 +25,7 @@ def least_s(tracks: Tracks, abilities: Abilities, segments: Index | None = None)
     if len(mine) and np.isfinite(abilities.accel).any():
         at = of[mine]
         least[mine] = acceleration_time_s(abilities, fiber_of(tracks)[at], tracks.curve[at], tracks.shape[at])
-        place, _, by_acceleration = least_with_quivers(tracks, abilities, of, fiber_of(tracks)[of])
+        place, _, by_acceleration = least_with_quivers(tracks, abilities, of, fiber_of(tracks)[of], exact=False)
         least[place] = by_acceleration
     return least
 

@@ -67,7 +67,7 @@ def _durations(tracks: Tracks, abilities: Abilities, segments: Index | None, exa
     fibers = fiber_of(tracks)[where]
     blocks = range(0, len(where), BLOCK) or range(1)
     least = np.concatenate([_of_block(tracks, abilities, where[b : b + BLOCK], fibers[b : b + BLOCK], exact) for b in blocks])
-    place, by_rate, by_acceleration = least_with_quivers(tracks, abilities, where, fibers)
+    place, by_rate, by_acceleration = least_with_quivers(tracks, abilities, where, fibers, exact)
     least[place] = np.maximum(by_rate, by_acceleration)
     return least
 

@@ -23,7 +23,7 @@ from composer.limits.abilities import Abilities
 from composer.limits.alike import alike
 from composer.limits.limit import TOLERANCE
 from composer.limits.polynomials import derivative, extremes, value
-from composer.limits.tables import rates
+from composer.limits.tables import slowest_rates
 from composer.quivers import pairs
 from composer.tracks import MOVE, Tracks
 
@@ -39,8 +39,8 @@ FLAT = 9
 SAMPLES, ZOOM, ZOOMS = 65, 17, 3
 """Samples of a move's time, and of each of the narrower windows round the worst of them."""
 
-ROWS = 128
-"""Moves worked out at a time."""
+ROWS = 16
+"""Moves worked out at a time: few enough that what is worked out stays near the processor."""
 
 
 def _border(alone: bool) -> tuple[Array, Array, Array]:
@@ -143,17 +143,20 @@ def _asked(
     """As `asked`, of moves that are alike in having one quiver and in resting beneath it."""
     speed_curve = derivative(curve)
 
-    def by_quiver(u: Array) -> Array:
-        return _left(abilities, fiber, value(curve, u), reach, speed, alone).share
+    def left_at(u: Array) -> _Left:
+        return _left(abilities, fiber, value(curve, u), reach, speed, alone)
 
-    def by_both(u: Array) -> Array:
-        left = _left(abilities, fiber, value(curve, u), reach, speed, alone)
+    def by_quiver(u: Array, left: _Left) -> Array:
+        return left.share
+
+    def by_both(u: Array, left: _Left) -> Array:
         way = value(speed_curve, u)
         return np.abs(way) / np.maximum(np.where(way > 0.0, left.fill, left.exhaust), NOTHING_LEFT)
 
     start = np.zeros((len(fiber), 1)) if rests else np.broadcast_to(np.linspace(0.0, 1.0, SAMPLES), (len(fiber), SAMPLES))
-    share, u_alone = _highest(by_quiver, start)
-    least, u_both = _highest(by_both, start)
+    first = left_at(start)
+    share, u_alone = _highest(by_quiver, left_at, start, first)
+    least, u_both = _highest(by_both, left_at, start, first)
     too_fast = share > 1.0 + TOLERANCE
     u = np.where(too_fast, u_alone, u_both)
     way = np.where(too_fast, 0.0, value(speed_curve, u))
@@ -190,13 +193,11 @@ class _Left:
 
 def _left(abilities: Abilities, fiber: Index, strain: Array, reach: Array, speed: Array, alone: bool) -> _Left:
     *both, swings = BORDERS[alone]
-    shape = (*strain.shape, len(swings))
-    fibers = np.broadcast_to(fiber[:, None, None], shape)
-    swing = np.broadcast_to(speed[:, None, None] * swings, shape)
+    swing = np.broadcast_to(speed[:, None, None] * swings, (*strain.shape, len(swings)))
     found: list[Array] = []
     shares = []
-    for rising, strains in zip((True, False), both, strict=True):
-        limit = rates(abilities, fibers, strain[:, :, None] + reach[:, None, None] * strains, np.full(shape, rising))
+    for rate, strains in zip((abilities.fill, abilities.exhaust), both, strict=True):
+        limit = _rates(abilities, fiber, rate, strain[:, :, None] + reach[:, None, None] * strains)
         left = limit - swing
         worst = left.argmin(axis=2)[:, :, None]
         found += [np.take_along_axis(values, worst, 2)[:, :, 0] for values in (left, swing)]
@@ -207,12 +208,26 @@ def _left(abilities: Abilities, fiber: Index, strain: Array, reach: Array, speed
     return _Left(*found)
 
 
-def _highest(of: Callable[[Array], Array], u: Array) -> tuple[Array, Array]:
-    """The greatest value of each row, (M,), and where: sampled at `u`, (M, n), then in ever narrower windows."""
+def _rates(abilities: Abilities, fiber: Index, rate: Array, strain: Array) -> Array:
+    """The fastest rates in 1/s by the tables `rate`, (A, points), of M fibers at many strains each, (M, ...); as `tables.rates`,
+    which finds its place in the tables anew for every one of them."""
+    found = np.empty(strain.shape)
+    capability = abilities.which[fiber]
+    for each in np.unique(capability).tolist():
+        mine = capability == each
+        found[mine] = np.interp(strain[mine], abilities.strain[each], rate[each])
+    return found
+
+
+def _highest(
+    of: Callable[[Array, _Left], Array], left_at: Callable[[Array], _Left], u: Array, left: _Left
+) -> tuple[Array, Array]:
+    """The greatest value of each row, (M,), and where: sampled at `u`, (M, n), where so much is left, then in ever narrower
+    windows."""
     best, where = np.full(len(u), -np.inf), np.zeros(len(u))
     step = 1.0 / max(u.shape[1] - 1, 1)
-    for _ in range(ZOOMS + 1):
-        height = of(u)
+    for zoom in range(ZOOMS + 1):
+        height = of(u, left if zoom == 0 else left_at(u))
         top = height.argmax(axis=1)
         high = np.take_along_axis(height, top[:, None], 1)[:, 0]
         better = high > best
@@ -241,15 +256,32 @@ def excess(abilities: Abilities, fiber: Index, curve: Array, moves: Shaken, row:
     return over
 
 
-def least_with_quivers(tracks: Tracks, abilities: Abilities, segments: Index, fiber: Index) -> tuple[Index, Array, Array]:
-    """Of some segments those that quiver, as places in `segments`; their least seconds by rate, and by acceleration."""
+def least_with_quivers(
+    tracks: Tracks, abilities: Abilities, segments: Index, fiber: Index, exact: bool = True
+) -> tuple[Index, Array, Array]:
+    """Of some segments those that quiver, as places in `segments`; their least seconds by rate, and by acceleration.
+
+    exact: False for a ceiling of what the rate asks, at a fraction of its cost
+    """
     moves = shaken(tracks)
     if moves is None:
         return np.empty(0, dtype=np.int64), np.empty(0), np.empty(0)
     place, row = moves.of(segments)
     curve, fibers = tracks.curve[segments[place]], fiber[place]
-    rate = asked(abilities, fibers, curve, moves, row).least_s
+    rate = asked(abilities, fibers, curve, moves, row).least_s if exact else _ceiling(abilities, fibers, curve, moves, row)
     return place, rate, bent_time_s(abilities, fibers, curve, moves.bend[row])
+
+
+def _ceiling(abilities: Abilities, fiber: Index, curve: Array, moves: Shaken, row: Index) -> Array:
+    """Seconds in which moves, rows of `moves`, can be made whatever their quivers: by the least rate anywhere within reach,
+    less the greatest of the quiver; inf where that leaves nothing, which says nothing."""
+    low, high = extremes(curve)
+    slowest, fastest = extremes(derivative(curve))
+    reach = moves.reach[row]
+    fill, exhaust = (rate - moves.speed[row] for rate in slowest_rates(abilities, fiber, low - reach, high + reach))
+    with np.errstate(divide="ignore", invalid="ignore"):
+        least = np.maximum(np.maximum(fastest, 0.0) / fill, np.maximum(-slowest, 0.0) / exhaust)
+    return np.where((fill > 0.0) & (exhaust > 0.0), least, np.inf)
 
 
 def bent_time_s(abilities: Abilities, fiber: Index, curve: Array, bend: Array) -> Array:

@@ -1,5 +1,7 @@
 """Least durations against closed forms, dense sampling and each other."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import given, settings
@@ -9,8 +11,9 @@ from composer.limits.abilities import abilities_of
 from composer.limits.duration import duration_ceilings, least_durations, speed_range
 from composer.limits.over_tables import durations_over_tables
 from composer.limits.tables import rates
+from composer.quivers import Quivers
 from composer.shapes import NAMES
-from composer.tracks import fiber_of
+from composer.tracks import MOVE, fiber_of
 
 FACTOR = {"linear": 1.0, "swell": 2.0, "settle": 2.0}
 GRID = np.linspace(0.0, 1.0, 20001)
@@ -110,6 +113,18 @@ def test_the_closed_forms_agree_with_the_routine_for_tables(make_abilities, make
 def test_a_ceiling_is_never_below_what_it_stands_for(make_abilities, make_tracks, table, moves):
     abilities = make_abilities((np.concatenate([[0.0], np.cumsum(table[0])]), table[1], table[2]))
     tracks = make_tracks(moves)
+    assert np.all(duration_ceilings(tracks, abilities) >= least_durations(tracks, abilities) * (1 - 1e-9) - 1e-15)
+
+
+@settings(deadline=None, max_examples=25)
+@given(table, moves, st.floats(0.2, 8.0), st.floats(1e-4, 0.05))
+def test_nor_is_one_of_moves_that_quiver(make_abilities, make_tracks, table, moves, hertz, amplitude):
+    abilities = make_abilities((np.concatenate([[0.0], np.cumsum(table[0])]), table[1], table[2]))
+    tracks = make_tracks(moves)
+    last = len(tracks.time_s) - 1
+    under = np.arange(len(tracks.time_s)) < last
+    quivers = Quivers(*(np.array([one]) for one in (0, last, hertz, amplitude)))
+    tracks = replace(tracks, manner=np.where(under, MOVE, tracks.manner).astype(np.int8), quivers=quivers)
     assert np.all(duration_ceilings(tracks, abilities) >= least_durations(tracks, abilities) * (1 - 1e-9) - 1e-15)
 
 
