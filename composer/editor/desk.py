@@ -248,6 +248,9 @@ class Desk:
                 return True
             if ask.version > self.version:
                 continue
+            if lasting and self.settled != self.version and not hopeless:
+                # What has been written since may be read in a moment; only where it cannot is the text before it meant.
+                continue
             value: Any = None
             if question.needs_made and self.made_version != self.version and not lasting:
                 if self.settled != self.version and not hopeless:

@@ -182,8 +182,11 @@ class TextPane(QPlainTextEdit):
         self.looks.paint_marks(event)
 
     def resizeEvent(self, event: QResizeEvent) -> None:
-        """Keep the line numbers beside the text."""
+        """Keep the line numbers beside the text, and the caret in view where it was, such as when a notice comes up above."""
+        seen = 0 <= self.cursorRect().top() and self.cursorRect().bottom() <= event.oldSize().height()
         super().resizeEvent(event)
+        if seen and self.cursorRect().bottom() > self.viewport().height():
+            self.ensureCursorVisible()
         self._place_gutter()
         self.looks.colour_seen()
 

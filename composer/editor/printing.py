@@ -11,6 +11,7 @@ from composer.editor.crew import Crew
 from composer.editor.messages import Row
 from composer.editor.notices import Notices
 from composer.editor.recovering import sentence
+from composer.editor.snags_panel import with_count
 from composer.edits.edit import Refusal
 
 
@@ -31,7 +32,7 @@ class Printer(QObject):
         self._path = path if path.lower().endswith(".pdf") else f"{path}.pdf"
         self.busy = True
         self._say("")
-        lines = tuple((row.place, row.says, row.mends) for row in rows)
+        lines = tuple((row.place, row.says, with_count(row)) for row in rows)
         self._crew.ask("print", (lines, paper), self._printed, lasting=True)
 
     def stop(self) -> None:

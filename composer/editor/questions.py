@@ -24,7 +24,8 @@ if TYPE_CHECKING:
 class Question:
     """How a question is answered; whether it needs the text to have been read, and checked, as it now is.
 
-    lasting: it is answered although the text has changed since, of the last that could be read
+    lasting: it is answered although the text has changed since it was asked: of the text as it is then or, where that cannot be
+        read, of the last that could
     """
 
     answer: Callable[..., Any]

@@ -36,6 +36,11 @@ def snags_in_words(count: int) -> str:
     return "no snags" if not count else f"{count} snag{'s' * (count != 1)}"
 
 
+def with_count(row: Row) -> str:
+    """What would mend a row's snags, and how many they are where they are several."""
+    return f"{row.mends} ({snags_in_words(row.count)})" if row.count > 1 else row.mends
+
+
 class Wrapped(QListWidget):
     """A list of sentences that are wrapped to its width."""
 
@@ -252,8 +257,7 @@ class SnagsPanel(QWidget):
         self._list.blockSignals(True)
         self._list.clear()
         for row in rows:
-            together = f" ({snags_in_words(row.count)})" if row.count > 1 else ""
-            says = f"{row.says} {row.mends}{together}"
+            says = f"{row.says} {with_count(row)}"
             item = QListWidgetItem(f"{row.place}  {says}")
             item.setData(Qt.ItemDataRole.AccessibleTextRole, f"snag at {row.place}, line {row.line}: {says}")
             item.setToolTip(f"line {row.line}" + (f", phrase in line {row.phrase_line}" if row.phrase_line else ""))

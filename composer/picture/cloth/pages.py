@@ -189,7 +189,7 @@ class Printing:
 
     def _list(self, painter: QPainter, look: Look, lines: list[Line], width: int, first: bool) -> None:
         used = look.write(painter, QRectF(look.px(16), look.px(10), width * 0.6, look.px(30)), self._title, 21, bold=True)
-        count = len(self._snags)
+        count = len(self._weave.snags)
         said = f"{count} snag{'s' * (count != 1)}" if count else "no snags: the rig can do all of it"
         box = QRectF(look.px(32) + used, look.px(13), width - used - look.px(48), look.px(30))
         look.write(painter, box, said if first else f"{said}, continued", 13, PAPER.quiet_ink)

@@ -263,3 +263,16 @@ def test_estuary_is_read_and_checked_as_the_command_does():
     told = {fiber for row in checked.rows for fiber in row.fibers}
     assert told == {snag.fiber for snag in checked.check.snags if snag.fiber is not None}
     assert [row.from_s for row in checked.rows] == sorted(row.from_s for row in checked.rows)
+
+
+def test_pages_are_of_the_text_as_it_is_and_of_the_one_before_only_where_that_cannot_be_read(tmp_path, small_rig, monkeypatch):
+    (tmp_path / "bench.rig.toml").write_text(small_rig())
+    bench = Bench(tmp_path, SOLVER, SCORE)
+    bench.work()
+    printed = []
+    monkeypatch.setattr(bench.desk.solver, "printed", lambda lines, paper: printed.append(bench.desk.made_text) or b"%PDF")
+    bench.change('"Bench"', '"Later"')
+    assert bench.ask("print", (), "A4") == b"%PDF"
+    bench.change("rig bench", "rig")
+    assert bench.ask("print", (), "A4") == b"%PDF"
+    assert ['"Later"' in text for text in printed] == [True, True]

@@ -222,3 +222,17 @@ def test_the_caret_at_rest_is_told(pane, qtbot):
         at(pane, 7, 9)
     assert told.args == [7, 9]
     QApplication.processEvents()
+
+
+def test_a_caret_that_was_in_view_stays_there_when_the_text_has_less_room(pane):
+    pane.open_text("\n".join(f"line {n}" for n in range(200)))
+    pane.go_to(1)
+    rows = pane.viewport().height() // pane.fontMetrics().height()
+    pane.go_to(rows - 2)
+    assert pane.cursorRect().bottom() <= pane.viewport().height()
+    pane.resize(700, 400)
+    QApplication.processEvents()
+    assert pane.cursorRect().bottom() <= pane.viewport().height()
+    pane.verticalScrollBar().setValue(150)
+    pane.resize(700, 300)
+    assert pane.verticalScrollBar().value() == 150
