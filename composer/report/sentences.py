@@ -103,6 +103,14 @@ def _digits(x: float, digits: int) -> str:
     return f"{x:.{digits}g}" if abs(x) >= 1e-4 else f"{x:.{digits - 1}e}"
 
 
+def enough(x: float) -> str:
+    """A number of which at least so much is needed, with as many digits as `two` begins with, rounded up to what will do."""
+    if x <= 0.0:
+        return "0"
+    unit = 0.01 if x >= 0.0995 else 10.0 ** (np.floor(np.log10(x)) - 1.0)
+    return _digits(float(np.ceil(x / unit * (1.0 - 1e-6)) * unit), 2)
+
+
 def _at(teller: Teller, seconds: float) -> str:
     return place_in_words(teller.say_place(seconds))
 
@@ -125,11 +133,10 @@ def _move(snag: Snag, teller: Teller, who: _Who, needs_s: float, manner: str, wh
     lasts = _lasts(teller, snag.knot)
     lands = _at(teller, float(teller.tracks.time_s[snag.knot]) + lasts)
     has, needs = two(lasts, needs_s)
-    more, _ = two(needs_s - lasts, 0.0)
     says = (
         f"{who.verb('is', 'are')} asked to {manner} in {has} s, landing at {lands}; {who.then('needs', 'need')} {needs} s{why}"
     )
-    return Told(f"{says}{_in_a_row(snag, teller)}.", f"Give it {more} s more.")
+    return Told(f"{says}{_in_a_row(snag, teller)}.", f"Give it {enough(needs_s - lasts)} s more.")
 
 
 def _in_a_row(snag: Snag, teller: Teller) -> str:
@@ -296,10 +303,11 @@ def _duty(snag: Snag, teller: Teller, who: _Who) -> Told:
         f"{who.verb('has its coil', 'have their coils')} on for {needs} s from {_at(teller, snag.from_s)} "
         f"to {_at(teller, snag.to_s)}; {who.then('bears', 'bear')} {has} s over that span."
     )
-    less, _ = two(snag.needs - snag.has, 0.0)
-    if not snag.mends:
-        return Told(says, f"Move {less} s less within that span, or give it a rest there; no other times mend it.")
-    return Told(says, f"Let it rest longer within that span, or move {less} s less.")
+    # What is cut from an end makes the span shorter too, and so what it bears.
+    over = snag.needs - snag.has
+    at_ends = over / (1.0 - teller.rig.fibers[snag.fiber].mounting.valve.duty)
+    mend = f"Let it rest {enough(over)} s more inside that span, or begin {enough(at_ends)} s later, or end that much earlier"
+    return Told(says, f"{mend}." if snag.mends else f"{mend}; no other times of these moves mend it.")
 
 
 def _hold(snag: Snag, teller: Teller, who: _Who) -> Told:
@@ -324,9 +332,9 @@ def _air(snag: Snag, teller: Teller, who: _Who) -> Told:
         f"receiver and compressor have {has} L for it."
     )
     rho = teller.rig.supply.compressor_L_min / 60.0
-    less, _ = two(snag.needs - snag.has, 0.0)
-    spread = f"Spread it over {two((snag.needs - snag.has) / rho, 0.0)[0]} s more, or ask" if rho > 0.0 else "Ask"
-    return Told(says, f"{spread} for {less} L less.")
+    over = snag.needs - snag.has
+    spread = f"Spread it over {enough(over / rho)} s more, or ask" if rho > 0.0 else "Ask"
+    return Told(says, f"{spread} for {enough(over)} L less.")
 
 
 def _pin(snag: Snag, teller: Teller, who: _Who) -> Told:
@@ -334,7 +342,7 @@ def _pin(snag: Snag, teller: Teller, who: _Who) -> Told:
     says = (
         f"What must happen from {_at(teller, snag.from_s)} to {_at(teller, snag.to_s)} takes {needs} s; the pins leave {has} s."
     )
-    return Told(says, f"Move the pins apart by {two(snag.needs - snag.has, 0.0)[0]} s, or shrink the moves between them.")
+    return Told(says, f"Move the pins apart by {enough(snag.needs - snag.has)} s, or shrink the moves between them.")
 
 
 _KINDS: dict[str, Callable[[Snag, Teller, _Who], Told]] = {

@@ -27,7 +27,7 @@ Index = NDArray[np.int64]
 FEWEST, MOST, NODES = 8, 32, 4000
 """Straight pieces that a curved fill is laid out as: as many as give so many nodes in all, within bounds."""
 
-IN_VIEW, ROWS = 0.5, 160
+IN_VIEW, ROWS = 0.5, 80
 """Spans are in view that miss at least this share of the store; and how many rows at most."""
 
 PAIRS = 2_000_000

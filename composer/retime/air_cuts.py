@@ -35,17 +35,15 @@ MARGIN = 1e-7
 """Share of the store that is kept back, well within what the checker lets pass."""
 
 
-def overdrawn(now: Tracks, rig: Rig, abilities: Abilities, near: float = 0.0) -> list[Span]:
+def overdrawn(now: Tracks, rig: Rig, abilities: Abilities) -> tuple[list[Span], Array]:
     """The spans, from and to in s, in which tracks with the times at hand ask for too much air; none where nothing refills.
 
-    near: share of the store by which a span may fall short of that and still be named
+    Returns as well instants, in order, at which the receiver is full; none are told where it never runs short.
     """
     if refill_L_s(rig.supply) <= 0.0 or fills_of(now, abilities).litres.sum() <= store_L(rig.supply):
-        return []
-    supply = rig.supply
-    higher = near * (supply.max_receiver_kPa - supply.min_pressure_kPa)
-    supply = replace(supply, min_pressure_kPa=supply.min_pressure_kPa + higher)
-    return [(from_s, to_s) for from_s, to_s, _, _ in use(now, supply, abilities).spans]
+        return [], np.empty(0)
+    there = use(now, rig.supply, abilities)
+    return [(from_s, to_s) for from_s, to_s, _, _ in there.spans], there.full_s
 
 
 def overdraft_L(now: Tracks, rig: Rig, abilities: Abilities) -> float:

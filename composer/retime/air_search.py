@@ -41,6 +41,9 @@ FINER = 64
 BLOCKS = 0.3
 """How many of the throws move all that lies in some stretch of time by the same."""
 
+PAID, NEARLY = 1e-7, 1e-4
+"""Shares of the store that may be overdrawn: where a price is high enough, and in what cleaning still mends."""
+
 SAME_S = 1e-3
 """Times that differ by no more are the same answer, before they are made clean."""
 
@@ -177,7 +180,7 @@ class Search:
         ranked: list[tuple[float, Array]] = []
         for number, start in enumerate(self.beginnings(best, tries, ranked)):
             self.budget.say(f"air: beginning {number + 1} of {tries}")
-            there = self.descend(start)
+            there = self.descend(start, alone=tries == 1)
             if there is not None:
                 ranked.append(there)
                 ranked.sort(key=lambda one: one[0])
@@ -194,22 +197,25 @@ class Search:
                 best = found
         return best
 
-    def descend(self, start: Array) -> tuple[float, Array] | None:
-        """Cost and times, (N,), at the end of the descent from some (n,); None where the receiver does not bear them."""
+    def descend(self, start: Array, alone: bool = False) -> tuple[float, Array] | None:
+        """Cost and times, (N,), at the end of the descent from some (n,); None where the receiver does not bear them.
+
+        alone: whether no other is to be ranked beside it, so that what little is overdrawn can be left to its cleaning
+        """
         x = self.programme.nearest(start)
         if x is None:
             return None
-        full = self._priced(self.whole(x), 0.25 * self.account.store / self.account.refill + 0.1)
-        lacks = self.account.overdraft_s(full)
-        return (cost(self.stage.terms, full), full) if lacks <= 1e-4 * self.account.store / self.account.refill else None
+        lasts = self.account.store / self.account.refill
+        full = self._priced(self.whole(x), 0.25 * lasts + 0.1, NEARLY if alone else PAID)
+        return (cost(self.stage.terms, full), full) if self.account.overdraft_s(full) <= NEARLY * lasts else None
 
-    def _priced(self, full: Array, box: float) -> Array:
-        """A descent whose price on overdrawing is raised until it is paid no longer."""
+    def _priced(self, full: Array, box: float, most: float = PAID) -> Array:
+        """A descent whose price on overdrawing is raised until no more than such a share of the store is overdrawn."""
         for number in range(RAISES):
             self.price = self.plain_price * 10.0**number
             self.programme.reprice(self.price)
             full = self._descended(full, box)
-            if self.account.overdraft_s(full) <= 1e-7 * self.account.store / self.account.refill:
+            if self.account.overdraft_s(full) <= most * self.account.store / self.account.refill:
                 break
             box *= 0.2
         return full

@@ -11,8 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.limits.air import demand, refill_L_s, store_L
-from composer.limits.buckets import level
+from composer.limits.air import refill_L_s, store_L
 from composer.retime.air_cuts import Span, overdrawn
 from composer.retime.air_search import Found, Search
 from composer.retime.cuts import Coiled
@@ -22,7 +21,6 @@ from composer.retime.rows import Rows, joined, no_rows
 from composer.retime.stage import Stage, at_times
 from composer.retime.terms import cost
 from composer.rig.model import Rig
-from composer.tracks import Tracks
 
 Array = NDArray[np.float64]
 
@@ -40,11 +38,18 @@ WIDER = 3.0
 
 
 def by_windows(
-    stage: Stage, rig: Rig, abilities: Abilities, rows: Rows, bottom: Least, spans: list[Span], budget: Budget
+    stage: Stage,
+    rig: Rig,
+    abilities: Abilities,
+    rows: Rows,
+    bottom: Least,
+    short: tuple[list[Span], Array],
+    budget: Budget,
 ) -> Found | None:
     """Times that keep every row and every span, found place by place from the optimum that asks too little, None if none are.
 
-    spans: those that the optimum overdraws. Only where all keep the clock. Raises Unsolved where time is up.
+    short: the spans that the optimum overdraws, and instants at which the receiver is full, as `overdrawn` tells them
+    Only where all keep the clock. Raises Unsolved where time is up.
     """
     events, full = stage.events, bottom.shift_s
     dual, air_dual = bottom.dual, np.empty(0)
@@ -53,7 +58,7 @@ def by_windows(
     wider, tries = 1.0, next(tries for most, tries in TRIES if len(full) <= most)
     for number in range(ROUNDS):
         now = at_times(stage, full)
-        spans = overdrawn(now, rig, abilities) if number else spans
+        spans, full_s = overdrawn(now, rig, abilities) if number else short
         more, coils = known.more(now, stage, rig, abilities)
         if not spans and not coils:
             forces = np.concatenate((dual, air_dual))
@@ -63,7 +68,7 @@ def by_windows(
         kept = joined([rows, hot])
         places = spans + [(float(now.time_s[first]), float(now.time_s[last + 1])) for first, last in coils]
         done, missed = np.zeros(len(full), dtype=bool), False
-        for free, window in _windows(places, now, events.written_s + full, wider, rig, abilities):
+        for free, window in _windows(places, full_s, events.written_s + full, wider, rig):
             if (free & done).any():
                 continue
             budget.say(f"air: round {number + 1}, from {window[0]:.0f} s")
@@ -85,12 +90,10 @@ def by_windows(
 
 
 def _windows(
-    places: list[Span], now: Tracks, at_s: Array, wider: float, rig: Rig, abilities: Abilities
+    places: list[Span], full_s: Array, at_s: Array, wider: float, rig: Rig
 ) -> Iterator[tuple[NDArray[np.bool_], Span]]:
     """For each place the events that may move, (N,), and the time between two instants at which the receiver is full."""
     refill = refill_L_s(rig.supply)
-    asked = demand(now, abilities)
-    full = asked.time_s[level(asked.time_s, asked.litres, refill).missing <= 0.0]
     for from_s, to_s in places:
         reach = wider * max(to_s - from_s, 0.5 * store_L(rig.supply) / refill, 0.5)
         while True:
@@ -98,5 +101,5 @@ def _windows(
             if np.count_nonzero(free) <= EVENTS * wider or reach < 0.05:
                 break
             reach *= 0.7
-        before, after = full[full <= from_s - reach], full[full >= to_s + reach]
+        before, after = full_s[full_s <= from_s - reach], full_s[full_s >= to_s + reach]
         yield free, (float(before.max(initial=0.0)), float(after.min(initial=np.inf)))

@@ -51,7 +51,10 @@ class Coiled:
 
 def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) -> list[Span]:
     """Spans of tracks with the times at hand that ask too much of a coil and are not yet known, deepest first by coil."""
-    coils, on = coils_of(rig), on_time(now, rig, abilities)
+    coils = coils_of(rig)
+    if (coils.duty >= 1.0).all():
+        return []
+    on = on_time(now, rig, abilities)
     found: list[Span] = []
     for f in _overdrawn(on, coils).tolist():
         mine = slice(on.first[f], on.first[f + 1])
@@ -60,12 +63,12 @@ def duty_spans(now: Tracks, rig: Rig, abilities: Abilities, known: set[Span]) ->
         # The hold at the end of a track lasts as long as the score: no times change that.
         ends = (segment >= 0) & (segment != now.first[f + 1] - 1)
         over = np.flatnonzero((here.missing > coils.burst_s[f] * (1.0 + EXACT)) & ends)
-        for end in over[np.argsort(-here.missing[over], kind="stable")][:AT_ONCE]:
-            # A span begins with the first energised segment after the coil had last recovered.
-            begin = here.since[end] + 1 + int(np.argmax(segment[here.since[end] + 1 :] >= 0))
-            span = (int(segment[begin]), int(segment[end]))
-            if span not in known:
-                found.append(span)
+        end = over[np.argsort(-here.missing[over], kind="stable")][:AT_ONCE]
+        # A span begins with the first energised segment after the coil had last recovered.
+        energised = np.flatnonzero(segment >= 0)
+        begin = energised[np.searchsorted(energised, here.since[end] + 1)]
+        spans = zip(segment[begin].tolist(), segment[end].tolist(), strict=True)
+        found += [span for span in spans if span not in known]
     return found
 
 

@@ -20,6 +20,9 @@ Index = NDArray[np.int64]
 TOLERANCE = 1e-10
 """Feasibility of HiGHS, primal (scaled strokes) and dual (s); the tightest that it takes."""
 
+LARGE, NEAR, MANY = 500, 1.5, 0.05
+"""Circulations of so many nodes begin with so many arcs a node; where more others than that share of nodes break, all go in."""
+
 
 class Unsolved(Exception):
     """The solver gave up; `status` and `message` are its own, `tried` says what it was given."""
@@ -127,9 +130,16 @@ class Circulation:
         """C arcs and W wide rows over some nodes."""
         self.few, self.group, self.share = merged(arcs, nodes)
         self.most, self.added = arcs.most.copy(), False
-        self.nodes, self.columns = nodes, len(self.few.least_s) + len(wide.least_s)
+        self.most_of = self.few.most.copy()
+        self.near = _near(self.few, nodes)
+        within = np.flatnonzero(self.near)
+        # Where each arc is in the solver, and where all that came beside the arcs.
+        self.place = np.full(len(self.near), -1)
+        self.place[within] = np.arange(len(within))
+        self.beyond = len(within) + np.arange(len(wide.least_s))
+        self.nodes, self.columns = nodes, len(within) + len(wide.least_s)
         self.solver = quiet()
-        self.solver.passModel(_model(self.few, wide, nodes))
+        self.solver.passModel(_model(_picked(self.few, within), wide, nodes))
 
     def add(self, nodes: int, matrix: sparse.csr_array, least_s: Array, lowest: Array, most: Array) -> None:
         """More nodes, and rows or costs over all nodes: matrix (A, nodes in all), bounds of force as in Arcs."""
@@ -138,13 +148,17 @@ class Circulation:
             self.solver.addRows(nodes, np.zeros(nodes), np.zeros(nodes), 0, np.zeros(nodes, dtype=np.int32), none, np.empty(0))
             self.nodes += nodes
         if len(least_s):
-            most = np.where(np.isfinite(most), most, highspy.kHighsInf)
-            start, index = matrix.indptr[:-1].astype(np.int32), matrix.indices.astype(np.int32)
-            self.solver.addCols(len(least_s), -least_s, lowest, most, matrix.nnz, start, index, matrix.data)
-            self.columns += len(least_s)
+            self.beyond = np.concatenate((self.beyond, self.columns + np.arange(len(least_s))))
+            self._columns(matrix, least_s, lowest, most)
         self.added = True
         # What was the optimum still balances, so the primal simplex goes on from there.
         self.solver.setOptionValue("simplex_strategy", 4)
+
+    def _columns(self, matrix: sparse.csr_array, least_s: Array, lowest: Array, most: Array) -> None:
+        most = np.where(np.isfinite(most), most, highspy.kHighsInf)
+        start, index = matrix.indptr[:-1].astype(np.int32), matrix.indices.astype(np.int32)
+        self.solver.addCols(len(least_s), -least_s, lowest, most, matrix.nnz, start, index, matrix.data)
+        self.columns += len(least_s)
 
     def close(self, arcs: Index) -> None:
         """Take costs from the programme: arcs with a finite bound of force, none of which may be below nothing."""
@@ -154,7 +168,9 @@ class Circulation:
         total = np.zeros(len(self.few.least_s))
         np.add.at(total, self.group[mine], self.most[mine])
         self.share[mine] = self.most[mine] / np.maximum(total[self.group[mine]], 1e-300)
-        self.solver.changeColsBounds(len(groups), groups.astype(np.int32), np.zeros(len(groups)), total[groups])
+        self.most_of[groups] = total[groups]
+        groups = groups[self.near[groups]]
+        self.solver.changeColsBounds(len(groups), self.place[groups].astype(np.int32), np.zeros(len(groups)), total[groups])
 
     def solve(self, budget: Budget = ENDLESS) -> tuple[Array, Array, Array] | None:
         """Forces of the arcs (C,), of all given or added beyond, and shifts (nodes,); None where no shifts keep the rows.
@@ -162,7 +178,21 @@ class Circulation:
         Raises Unsolved where HiGHS fails or runs past its budget.
         """
         if not self.columns or not self.nodes:
-            return np.zeros(len(self.group)), np.zeros(self.columns - len(self.few.least_s)), np.zeros(self.nodes)
+            return np.zeros(len(self.group)), np.zeros(len(self.beyond)), np.zeros(self.nodes)
+        while True:
+            if not self._run(budget):
+                return None
+            found = self.solver.getSolution()
+            shift = -np.array(found.row_dual)
+            if not self._broken(shift):
+                break
+        flow = np.array(found.col_value)
+        force = np.zeros(len(self.near))
+        force[self.near] = flow[self.place[self.near]]
+        return force[self.group] * self.share, flow[self.beyond], shift
+
+    def _run(self, budget: Budget) -> bool:
+        """Solve what is in the solver; whether shifts keep its rows."""
         left, solver = budget.left(), self.solver
         tried = f"a programme of {self.nodes} moments and {self.columns} rows"
         if left <= 0.0:
@@ -174,17 +204,60 @@ class Circulation:
         status = solver.getModelStatus()
         if status in _ENDLESS and self.added:
             # From where it was, the primal simplex now and then takes a far bound for none: only a fresh start proves it.
-            solver.clearSolver()
-            solver.setOptionValue("simplex_strategy", 1)
+            self._afresh()
             solver.run()
             status = solver.getModelStatus()
         if status in _ENDLESS:
-            return None
+            return False
         if status != highspy.HighsModelStatus.kOptimal:
             raise Unsolved(status.name, solver.modelStatusToString(status), tried)
-        found = solver.getSolution()
-        force, count = np.array(found.col_value), len(self.few.least_s)
-        return force[:count][self.group] * self.share, force[count:], -np.array(found.row_dual)
+        return True
+
+    def _afresh(self) -> None:
+        self.solver.clearSolver()
+        self.solver.setOptionValue("simplex_strategy", 1)
+
+    def _broken(self, shift_s: Array) -> bool:
+        """Whether shifts break arcs that are not in the solver yet; those are put there."""
+        out = np.flatnonzero(~self.near)
+        if not len(out):
+            return False
+        at = np.append(shift_s, 0.0)
+        new = out[self.few.least_s[out] - at[self.few.later[out]] + at[self.few.earlier[out]] > TOLERANCE]
+        if not len(new):
+            return False
+        # Where many are broken, all of them solved from the start take less time than a step for each.
+        many = len(new) > MANY * self.nodes
+        new = out if many else new
+        self.near[new] = True
+        self.place[new] = self.columns + np.arange(len(new))
+        some = _picked(self.few, new)
+        self._columns(between(some.later, some.earlier, self.nodes), some.least_s, some.lowest, self.most_of[new])
+        self.added = True
+        if many:
+            self._afresh()
+        else:
+            self.solver.setOptionValue("simplex_strategy", 4)
+        return True
+
+
+def _picked(arcs: Arcs, chosen: Index) -> Arcs:
+    return Arcs(arcs.later[chosen], arcs.earlier[chosen], arcs.least_s[chosen], arcs.lowest[chosen], arcs.most[chosen])
+
+
+def _near(arcs: Arcs, nodes: int) -> NDArray[np.bool_]:
+    """(C,) which arcs a large circulation begins with: all costs, and of the others those that are nearest to be broken.
+
+    Only where most costs are of one moment against another: what is late by the clock makes all that follows late too, and
+    so breaks as much of what seemed far.
+    """
+    one_way = np.flatnonzero(arcs.lowest >= 0.0)
+    most = round(NEAR * nodes)
+    against = arcs.earlier[arcs.lowest < 0.0] >= 0
+    if nodes < LARGE or len(one_way) <= 2 * most or 2 * np.count_nonzero(against) <= len(against):
+        return np.ones(len(arcs.least_s), dtype=bool)
+    bound = np.partition(arcs.least_s[one_way], len(one_way) - most)[len(one_way) - most]
+    return (arcs.lowest < 0.0) | (arcs.least_s > min(bound, 0.0))
 
 
 def circulate(arcs: Arcs, wide: Wide, nodes: int, budget: Budget = ENDLESS) -> tuple[Array, Array, Array] | None:

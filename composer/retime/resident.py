@@ -46,7 +46,7 @@ class Resident:
         model.a_matrix_.start_, model.a_matrix_.index_, model.a_matrix_.value_ = matrix.indptr, matrix.indices, matrix.data
         self.solver.passModel(model)
         self.stay = matrix.shape[0]
-        self.price = price
+        self.price, self.last = price, matrix.shape[1] - 1
 
     def least(self, matrix: Array, least_s: Array, low: Array, high: Array) -> tuple[Array, float, float] | None:
         """Shifts (n,), their cost, and by how much the most broken of the passing rows is; None where no shifts fit the box.
@@ -60,10 +60,15 @@ class Resident:
             solver.deleteRows(passing, np.arange(self.stay, self.stay + passing, dtype=np.int32))
         if len(least_s):
             rows = len(least_s)
-            wide = [sparse.csr_array(matrix), sparse.csr_array((rows, 2 * self.terms)), np.ones((rows, 1))]
-            part = sparse.hstack(wide, format="csr")
-            start, index = part.indptr[:-1].astype(np.int32), part.indices.astype(np.int32)
-            solver.addRows(rows, least_s, np.full(rows, highspy.kHighsInf), part.nnz, start, index, part.data)
+            row, column = np.nonzero(matrix)
+            each = np.bincount(row, minlength=rows)
+            # The last entry of each row is how far it may be broken.
+            stop = np.cumsum(each + 1)
+            index, value = np.full(stop[-1], self.last, dtype=np.int32), np.ones(stop[-1])
+            at = np.arange(len(row)) + row
+            index[at], value[at] = column, matrix[row, column]
+            start = (stop - each - 1).astype(np.int32)
+            solver.addRows(rows, least_s, np.full(rows, highspy.kHighsInf), len(index), start, index, value)
         solver.changeColsBounds(self.n, np.arange(self.n, dtype=np.int32), low, high)
         left = self.budget.left()
         if left <= 0.0:
@@ -79,7 +84,7 @@ class Resident:
     def reprice(self, price: float) -> None:
         """Another price."""
         self.price = price
-        self.solver.changeColCost(self.n + 2 * self.terms, price)
+        self.solver.changeColCost(self.last, price)
 
     def forces(self) -> tuple[Array, Array]:
         """The dual values, in strokes, of the rows that stay and of those that passed, at the last solution."""

@@ -58,7 +58,7 @@ class Answer:
 class _Bottom:
     """The optimum of the rows that are true for all times: it costs no more than any times that keep the air as well.
 
-    spans: those that its times still overdraw
+    spans: those that its times still overdraw; full_s: instants at which the receiver is full meanwhile
     no_air: no times keep the air even over whole moves, so what is left of it is the checker's to tell
     """
 
@@ -67,6 +67,7 @@ class _Bottom:
     given_up: int
     no_air: bool
     spans: list[Span]
+    full_s: Array
     hopeless: tuple[Hopeless, ...]
 
 
@@ -111,7 +112,7 @@ def _best(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, budget:
     """The best times that keep the air as well, None where none are found, and whether time was up before all was tried."""
     events = stage.events
     if len(events.written_s) > WINDOWS_FROM and not (stage.terms.behind[: events.hits] >= 0).any():
-        found = by_windows(stage, rig, abilities, bottom.rows, bottom.least, bottom.spans, budget)
+        found = by_windows(stage, rig, abilities, bottom.rows, bottom.least, (bottom.spans, bottom.full_s), budget)
         if found is not None:
             return found, False
     known = None
@@ -137,7 +138,7 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
     rows, given_up, no_air = stage.rows, 0, False
     hopeless: list[Hopeless] = []
     air: set[tuple[int, int]] = set()
-    least, spans, parts = None, [], Parts()
+    least, spans, full_s, parts = None, [], np.empty(0), Parts()
     # Below what was proven before a wait that had been opened was held to its coil: it might have stayed shut instead.
     proven = np.inf
     apart = kept_apart(stage.tracks, stage.least_s, rig, abilities)
@@ -170,7 +171,7 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
             rows = joined([rows, new])
             continue
         enough = no_air or plainly_enough(now, stage.moves_L, rig, abilities)
-        spans = [] if enough else overdrawn(now, rig, abilities)
+        spans, full_s = ([], full_s) if enough else overdrawn(now, rig, abilities)
         more = whole_rows(spans, now, events, least.shift_s, rig, abilities, air) if spans else no_rows(events)
         if not len(more.least):
             break
@@ -179,7 +180,7 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
         least = least_cost(events, rows, stage.terms, free, whole, budget)
     if least is None:
         return None
-    return _Bottom(replace(least, bound=min(least.bound, proven)), rows, given_up, no_air, spans, tuple(hopeless))
+    return _Bottom(replace(least, bound=min(least.bound, proven)), rows, given_up, no_air, spans, full_s, tuple(hopeless))
 
 
 def _cheaper(stage: Stage, rows: Rows, one: Rows, other: Rows, free: Flags, budget: Budget) -> Rows:
@@ -197,7 +198,7 @@ def _closed_in(stage: Stage, rig: Rig, abilities: Abilities, bottom: _Bottom, bu
     shares, parts = no_rows(events), Parts()
     for _ in range(AIR_ROUNDS):
         now = at_times(stage, least.shift_s)
-        spans = overdrawn(now, rig, abilities)
+        spans, _ = overdrawn(now, rig, abilities)
         if not spans:
             return Found(least, shares), not Coiled().more(now, stage, rig, abilities)[1]
         more = joined([shares, share_rows(spans, now, events, least.shift_s, rig, abilities)])
