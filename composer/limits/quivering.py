@@ -209,8 +209,10 @@ def _left(abilities: Abilities, fiber: Index, strain: Array, reach: Array, speed
 
 
 def _rates(abilities: Abilities, fiber: Index, rate: Array, strain: Array) -> Array:
-    """The fastest rates in 1/s by the tables `rate`, (A, points), of M fibers at many strains each, (M, ...); as `tables.rates`,
-    which finds its place in the tables anew for every one of them."""
+    """The fastest rates in 1/s by the tables `rate`, (A, points), of M fibers at many strains each, (M, ...).
+
+    As `tables.rates`, which finds its place in the tables anew for every strain.
+    """
     found = np.empty(strain.shape)
     capability = abilities.which[fiber]
     for each in np.unique(capability).tolist():

@@ -34,14 +34,15 @@ class Shown:
     """All that is drawn round and over the threads, beside the weave itself.
 
     marks: of the snags, (N,) each: fiber, -1 for the air's, from and to in s
-    selected: lit stretches; lit: segments that move together; snag, hit: indices of what is chosen, -1 for none
+    selected: what `frames_of` made of lit stretches; lit: segments that move together
+    snag, hit: indices of what is chosen, -1 for none
     fiber: the thread that the keys are on, None for none; ghost: tracks that would be instead, with the words for both
     """
 
     weave: Weave
     hits: Hits
     marks: tuple[NDArray[np.int64], Array, Array]
-    selected: tuple[Stretch, ...] = ()
+    selected: tuple[NDArray[np.int64], NDArray[np.int64], Array, Array] | None = None
     lit: NDArray[np.int64] = field(default_factory=lambda: np.empty(0, dtype=np.int64))
     snag: int = -1
     hit: int = -1
@@ -146,35 +147,53 @@ def _joined(left: Array, right: Array) -> list[tuple[float, float]]:
     return list(zip(left[np.r_[0, cut]].tolist(), reach[np.r_[cut - 1, len(left) - 1]].tolist(), strict=True))
 
 
+def frames_of(stretches: Sequence[Stretch]) -> tuple[NDArray[np.int64], NDArray[np.int64], Array, Array] | None:
+    """Lit stretches as frames: first and last fiber, from and to in s, (N,) each; None where none is of a fiber.
+
+    Fibers side by side that share a stretch share a frame.
+    """
+    fiber, begin, end = marks_of(stretches)
+    order = np.lexsort((fiber, end, begin))
+    order = order[fiber[order] >= 0]
+    fiber, begin, end = fiber[order], begin[order], end[order]
+    if not len(order):
+        return None
+    apart = (begin[1:] != begin[:-1]) | (end[1:] != end[:-1]) | (fiber[1:] != fiber[:-1] + 1)
+    first = np.concatenate([[0], np.flatnonzero(apart) + 1])
+    last = np.concatenate([first[1:] - 1, [len(fiber) - 1]])
+    return fiber[first], fiber[last], begin[first], end[first]
+
+
 def _selected(painter: QPainter, view: View, shown: Shown) -> None:
-    """Frames round what is lit; fibers side by side that share a stretch share a frame."""
-    run: list[Stretch] = []
-    stretches = sorted(
-        (one for one in shown.selected if one.fiber is not None), key=lambda one: (one.from_s, one.to_s, one.fiber)
-    )
-    for one in [*stretches, None]:
-        last = run[-1] if run else None
-        if last is not None and not (
-            one is not None and (one.from_s, one.to_s, one.fiber) == (last.from_s, last.to_s, (last.fiber or 0) + 1)
-        ):
-            _frame(painter, view, run[0], view.look.px(2), run[-1].fiber)
-            run = []
-        if one is not None:
-            run.append(one)
+    """Frames round what is lit, dark outside so that they are seen on bright threads too."""
+    if shown.selected is None:
+        return
+    look, shift = view.look, view.plan.top - view.scroll
+    first, last, begin, end = shown.selected
+    fibers = view.fibers_shown()
+    seen = (end >= view.from_s) & (begin <= view.to_s) & (last >= fibers.start) & (first < fibers.stop)
+    first, last = first[seen], last[seen]
+    left, right = _spans(view, begin[seen], end[seen], look.px(6))
+    top = view.rows.top[first] + shift
+    high = np.maximum(view.rows.bottom[last] + shift - top, look.px(4))
+    boxes = np.stack([left, top, right - left, high], axis=1)[:MOST_MARKS]
+    _framed(painter, view, [QRectF(*box) for box in boxes.tolist()], look.px(2))
 
 
-def _frame(painter: QPainter, view: View, stretch: Stretch, width: int, last: int | None = None) -> None:
-    """A frame round a stretch of a thread, or of all up to `last`, dark outside so that it is seen on bright threads too."""
+def _frame(painter: QPainter, view: View, stretch: Stretch, width: int) -> None:
+    """A frame round a stretch of a thread."""
     look = view.look
     assert stretch.fiber is not None
     left, right = (float(one[0]) for one in _spans(view, np.array([stretch.from_s]), np.array([stretch.to_s]), look.px(6)))
-    top, bottom = view.y_of(stretch.fiber)[0], view.y_of(stretch.fiber if last is None else last)[1]
-    box = QRectF(left, top, right - left, max(bottom - top, look.px(4)))
+    top, bottom = view.y_of(stretch.fiber)
+    _framed(painter, view, [QRectF(left, top, right - left, max(bottom - top, look.px(4)))], width)
+
+
+def _framed(painter: QPainter, view: View, boxes: list[QRectF], width: float) -> None:
     painter.setBrush(Qt.BrushStyle.NoBrush)
-    painter.setPen(pen(look.theme.ground, width + look.px(2)))
-    painter.drawRect(box)
-    painter.setPen(pen(look.theme.chosen, width))
-    painter.drawRect(box)
+    for of, wide in ((view.look.theme.ground, width + view.look.px(2)), (view.look.theme.chosen, width)):
+        painter.setPen(pen(of, wide))
+        painter.drawRects(boxes)
 
 
 def _visible_segments(view: View, tracks: Tracks, segments: NDArray[np.int64]) -> tuple[NDArray[np.int64], Array, Array, Array]:
