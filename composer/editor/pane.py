@@ -183,7 +183,7 @@ class TextPane(QPlainTextEdit):
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Keep the line numbers beside the text, and the caret in view where it was, such as when a notice comes up above."""
-        seen = 0 <= self.cursorRect().top() and self.cursorRect().bottom() <= event.oldSize().height()
+        seen = self.cursorRect().top() >= 0 and self.cursorRect().bottom() <= event.oldSize().height()
         super().resizeEvent(event)
         if seen and self.cursorRect().bottom() > self.viewport().height():
             self.ensureCursorVisible()
