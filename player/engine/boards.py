@@ -73,8 +73,12 @@ class Boards:
     def settled(self, status: str) -> bool:
         """Whether every board that still answers, and has to be armed, says that it is in that state; one that has vented by
         itself is disarmed, so it does for "idle" too."""
+        return not self.unsettled(status)
+
+    def unsettled(self, status: str) -> list[str]:
+        """Those of which it is not so, by their drivers."""
         enough = DISARMED if status == "idle" else (status,)
-        return all(self._state[number] in enough for number in self._real)
+        return ["+".join(self.outputs[number].drivers) for number in self._real if self._state[number] not in enough]
 
     @property
     def vented(self) -> bool:

@@ -168,10 +168,11 @@ class Engine:
                 break
             was = self.source.strain
             happened = self.source.tick(self._dt)
+            # What has just been worked out leaves before anything else is done: a hand waits for it.
+            self._send(due, late)
             if self.source.strain is not None and was is not None:
                 self._moving = int(np.count_nonzero(np.abs(self.source.strain - was) > STILL))
                 self.sensing.errors.want(due + self.source.lead_s + self._dt, self.source.strain, self.source.position_s)
-            self._send(due, late)
             self._happen(happened)
             self._hear(self.boards.poll())
             tick += 1
@@ -345,14 +346,17 @@ class Engine:
                 # One that has vented by itself is disarmed, but not at rest: what stands is what is worse.
                 self._become("vent")
         elif self.safety.state != "vented":
-            self._fault("", "a board did not say that it has disarmed; it is vented", "note")
-            self._stop("fault", "a board did not say that it has disarmed", "vent")
+            silent = self.boards.unsettled("idle")
+            for driver in silent:
+                self._fault(driver, f"{driver}: the board did not say that it has disarmed; it is told to vent", "note")
+            self._stop("fault", f"{', '.join(silent)}: the board did not say that it has disarmed", "vent")
 
     def _vent(self) -> None:
         """Tell every board to vent, all of them before any is waited for; then hear them say that they have."""
         self._hear(self.boards.vent())
         if not self._settles("vented"):
-            self._fault("", "a board did not say that it has vented: shut its supply by hand", "note")
+            for driver in self.boards.unsettled("vented"):
+                self._fault(driver, f"{driver}: the board did not say that it has vented; shut its supply by hand", "note")
 
     def _settles(self, status: str) -> bool:
         """Hear the boards until all are in that state; False where they are not within SETTLE_S, or were vented meanwhile."""

@@ -28,8 +28,8 @@ def verdict(event: Event, state: str) -> tuple[str, str]:
         # Sets were on their way when the run was ended for another reason.
         return "", ""
     if event.kind == "fault":
-        name, means, sentence, look = FAULTS.get(event.code, UNKNOWN)
-        return means, f"{event.driver}: {name}: {sentence}" + (f" ({event.say})" if event.say else "") + f"; {look}"
+        _, means, sentence, look = FAULTS.get(event.code, UNKNOWN)
+        return means, f"{event.driver}: {sentence}" + (f" ({event.say})" if event.say else "") + f"; {look}"
     if event.kind == "state" and state in RUNNING and event.status != "armed":
         why = f": {event.say}" if event.say else ""
         return "fault", f"{event.driver}: the board is {event.status} in mid-run{why}; look at its power and line"

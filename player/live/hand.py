@@ -118,9 +118,10 @@ class Hand:
 
     def over(self, score: Array) -> Array:
         """The strain (F,) wanted where a score wants `score` (F,); anything, the governor brings it within the stroke."""
-        wanted = score
+        wanted, says = score, (~np.isnan(self._value)).any(axis=1)
         for layer in LAYERS:
-            wanted = mixed(wanted, self._value[layer], np.full(len(wanted), layer, dtype=np.int8), self._stroke)
+            if says[layer]:
+                wanted = mixed(wanted, self._value[layer], np.full(len(wanted), layer, dtype=np.int8), self._stroke)
         return wanted
 
     def _hold(self, fibers: list[int], layer: int, holder: int, value: float) -> None:

@@ -17,6 +17,8 @@ HOLD_S = 0.5
 """A hold-to-run that is not said anew within this time is up: whoever held it may be stopped, or gone."""
 
 INPUTS_S = 0.1
+QUIET_S = 0.3
+"""A run that is busy with something other than ticks, boards that are waited for among it, shows itself so often."""
 
 
 class Conduct:
@@ -39,6 +41,7 @@ class Conduct:
         self._wants: set[str] = set()
         self._from_s = 0.0
         self._held_until_s: float | None = None
+        self._shown_s = float("-inf")
         self._inputs_s, self._inputs_told = float("-inf"), {}
         door.take, door.left = self._take, self._left
         door.state = lambda: engine.safety.state
@@ -51,6 +54,8 @@ class Conduct:
         self._engine.returns = self.can_return and self._door.answers
         if self._held_until_s is not None and self._engine.clock.now() > self._held_until_s:
             self._hold(False)
+        if self._stage == "running" and self._engine.clock.now() - self._shown_s > QUIET_S:
+            self.after(self._engine.status())
 
     def preflight(self) -> bool:
         """Go through the pre-flight and tell its marks; whether all are good."""
@@ -96,6 +101,7 @@ class Conduct:
 
     def after(self, status: Status) -> None:
         """Show and tell a snapshot."""
+        self._shown_s = self._engine.clock.now()
         view = self.view() if self.view is not None else None
         self._door.tell(status.told)
         self._show.tick(status, view, self._door.commanded, self._door.attached)
