@@ -8,10 +8,14 @@ from contextlib import contextmanager
 from dataclasses import dataclass, field
 from pathlib import Path
 from random import Random
+from time import process_time
 
 from .mutations import mutated_bytes
 
 MOST_FOUND = 25
+
+HANGS_S = 30.0
+"""Of the processor: what takes longer is interrupted, whatever an input asks for."""
 
 
 class Hangs(BaseException):
@@ -24,6 +28,7 @@ class Target:
 
     make: given a folder of its own, good inputs and the reader; refusals: what the reader may raise
     short: inputs in the normal suite; mutate: how bad inputs are made of good ones; longest_s: of the processor, for one input
+    each_s: of the processor as well, for each of what an input asks for, where the reader returns how many these are
     """
 
     name: str
@@ -32,6 +37,7 @@ class Target:
     short: int
     mutate: Callable[[Random, Sequence[bytes]], bytes] = mutated_bytes
     longest_s: float = 1.0
+    each_s: float = 0.0
 
 
 @dataclass(slots=True)
@@ -77,8 +83,7 @@ def fuzz(target: Target, folder: Path, inputs: int, seed: int, alarm: bool = Fal
         assert why == "", f"a good input of {target.name}: {why}"
     for _ in range(inputs):
         data = target.mutate(chance, examples)
-        with watched(target.longest_s if alarm else 0.0):
-            why = attempt(read, target.refusals, data)
+        why = in_time(target, read, data) if alarm else attempt(read, target.refusals, data)
         found.inputs += 1
         found.refused += why is None
         if why:
@@ -86,6 +91,24 @@ def fuzz(target: Target, folder: Path, inputs: int, seed: int, alarm: bool = Fal
             if len(found.broken) >= MOST_FOUND:
                 break
     return found
+
+
+def in_time(target: Target, read: Callable[[bytes], object], data: bytes) -> str | None:
+    """As `attempt`; an input that takes longer than it may has broken something too."""
+    asked = 0
+
+    def reading(data: bytes) -> None:
+        nonlocal asked
+        said = read(data)
+        asked = int(said) if target.each_s and said else 0
+
+    begun = process_time()
+    with watched(HANGS_S if target.each_s else target.longest_s):
+        why = attempt(reading, target.refusals, data)
+    took, may = process_time() - begun, target.longest_s + asked * target.each_s
+    if why or (why == "" and took <= may):
+        return why
+    return None if took <= may else f"Slow at {target.name}: {took:.2f} s, and may take {may:.2f} s"
 
 
 @contextmanager

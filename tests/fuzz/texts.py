@@ -17,6 +17,7 @@ from composer.report.sentences import Teller
 from composer.rig.select import Selector
 from composer.score.names import groups_of
 from composer.score.reading import parse_score
+from composer.tracks import Tracks
 from player.inputs.map_file import read_map
 
 from .mutations import mutated_text
@@ -84,7 +85,7 @@ def scores(folder: Path) -> tuple[Sequence[bytes], Callable[[bytes], object]]:
     known = gannet()
     examples = [lines_of((DEMOS / "gannet.score").read_bytes()), EVERYTHING]
 
-    def read(data: bytes) -> None:
+    def read(data: bytes) -> int:
         path = folder / "fuzz.score"
         path.write_bytes(data)
         score, faults = parse_score(
@@ -96,6 +97,7 @@ def scores(folder: Path) -> tuple[Sequence[bytes], Callable[[bytes], object]]:
         if loaded.tracks.moves < 20_000:
             told = check(loaded.tracks, loaded.rig, loaded.abilities)
             assert as_text("fuzz.score", told, Teller(loaded.tracks, loaded.rig, loaded.tempo.say_place))
+        return _asked(loaded.tracks)
 
     return examples, read
 
@@ -149,13 +151,20 @@ def on_disk(folder: Path) -> tuple[Sequence[bytes], Callable[[bytes], object]]:
     """A score and its rig from their files, both of them hostile: the first half of an input is the score, the rest the rig."""
     score, rig = (DEMOS / "gannet.score").read_bytes(), (DEMOS / "gannet.rig.toml").read_bytes()
 
-    def read(data: bytes) -> None:
+    def read(data: bytes) -> int:
         text, _, table = data.partition(b"\0\0\0")
         (folder / "gannet.score").write_bytes(text)
         (folder / "gannet.rig.toml").write_bytes(table)
-        load_score(folder / "gannet.score")
+        return _asked(load_score(folder / "gannet.score").tracks)
 
     return [lines_of(score) + b"\0\0\0" + rig], read
+
+
+def _asked(tracks: Tracks) -> int:
+    """What a score asks for, in moves."""
+    quivers = tracks.quivers
+    swings = ((tracks.time_s[quivers.until] - tracks.time_s[quivers.knot]) * quivers.hertz).sum()
+    return tracks.moves + SWING_MOVES * int(swings)
 
 
 def nested(chance: Random, examples: Sequence[bytes]) -> bytes:
@@ -168,13 +177,15 @@ def nested(chance: Random, examples: Sequence[bytes]) -> bytes:
     return data
 
 
-MILLIONS_S = 30.0
-"""A score may have four million moves, and takes as long as they do; all that it says otherwise is bounded."""
+MOVE_S, SWING_MOVES = 5e-6, 10
+"""A score may have four million moves and a million swings of quivers, which take as long as they are many, a swing as long
+as ten moves; all else in it is done within a second.
+"""
 
 TARGETS = (
-    Target("score", scores, (Faults,), 150, mutated_text, MILLIONS_S),
+    Target("score", scores, (Faults,), 150, mutated_text, each_s=MOVE_S),
     Target("rig", rigs, (Faults,), 120, nested),
-    Target("score-and-rig", on_disk, (Faults,), 25, mutated_text, MILLIONS_S),
+    Target("score-and-rig", on_disk, (Faults,), 25, mutated_text, each_s=MOVE_S),
     Target("map", maps, (Faults,), 500, nested),
     Target("bench", benches, (Faults,), 500, mutated_text),
 )
