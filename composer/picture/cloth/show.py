@@ -118,7 +118,7 @@ class ClothShow(ClothPlace):
 
     def select(self, stretches: Sequence[Stretch]) -> None:
         """Light stretches of threads: those that the caret's line moves, say. None of them is scrolled to; see `reveal`."""
-        self._change(selected=tuple(stretches))
+        self._change(selected=over.frames_of(stretches))
 
     def set_lit(self, segments: np.ndarray | None) -> None:
         """Light segments (indices into the tracks), such as all that one number moves; None for none."""
