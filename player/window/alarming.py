@@ -13,7 +13,7 @@ class Alarming(Parted):
     def banner(self) -> tuple[str, bool]:
         """What is wrong, said large, and whether it is a fault: "" where nothing is."""
         now, on = self.now, self.link.on
-        if self.stage == "over" and self.told.last is None and self.link.client is not None:
+        if self.is_gone:
             return words.GONE, True
         if self._unsent and on:
             return words.NOT_SENT, True
@@ -23,7 +23,8 @@ class Alarming(Parted):
         if waited and on and now is not None and now.state != "vented":
             return words.NOT_VENTED, True
         if self.wrong:
-            return self.wrong[0], True
+            # A vent that was asked for is no fault, whatever it has ended.
+            return self.wrong[0], self._vented_s is None
         if now is None:
             return "", False
         boards, bad = words.boards_said(self.told.about["boards"], now.texts("link")) if self.told.about else ("", False)
@@ -34,7 +35,11 @@ class Alarming(Parted):
         if bad and on:
             said = words.fault_said(self.told.since, self.told.about["boards"])
             return f"BOARDS: {boards}" + (f". {said}" if said else ""), True
-        return "", False
+        if now.state == "idle" and self.stage == "running" and on and not self._rested:
+            said = words.why_rested(self.told.since, {*self.told.about["boards"], *self.told.about["fibers"]})
+            return (f"BROUGHT TO REST: {said}; hold A to arm and go on", True) if said else ("", False)
+        # What a run has gone on with, and ended all the same, is still to be seen to.
+        return (words.faults_said(self.told.last[1].get("report") or {}) if self.told.last is not None else ""), False
 
     def _why_vented(self) -> str:
         if self.told.last is not None:

@@ -37,9 +37,9 @@ class Instruments(QWidget):
             grid.addWidget(value, row, 1)
             self.values[key] = value
 
-    def show_now(self, now: Snapshot, about: dict[str, Any], inputs: dict[str, Any], now_s: float) -> None:
-        """A moment, what the run is, what it has told of its inputs, and the steady clock."""
-        boards, bad = boards_said(about["boards"], now.texts("link"))
+    def show_now(self, now: Snapshot, about: dict[str, Any], inputs: dict[str, Any], now_s: float, gone: bool = False) -> None:
+        """A moment, what the run is, what it has told of its inputs, and the steady clock; gone: that moment was its last."""
+        boards, bad = ("not known any more", True) if gone else boards_said(about["boards"], now.texts("link"))
         duty, share = duty_said(now, about["fibers"])
         late, seen = late_said(now)
         self._put("supply", supply_said(now, about["boards"]), 0.0 <= now.number("air_left") < 0.1)

@@ -30,11 +30,18 @@ class Parted(QWidget):
     _standing: Standing
     _drawn: bool
     _held: bool
+    _rested: bool
     _unsent: bool
     _behind: bool
     _vented_s: float | None
     _light: int
+    _theme_name: str
     _frames: QTimer
+
+    @property
+    def is_gone(self) -> bool:
+        """Whether the run's process has gone without a word."""
+        return self.stage == "over" and self.told.last is None and self.link.client is not None
 
 
 def put(label: QLabel, text: str) -> None:

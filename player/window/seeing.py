@@ -5,6 +5,7 @@ from PySide6.QtCore import QElapsedTimer
 from PySide6.QtWidgets import QAbstractButton
 
 from player.engine.process.layout import Snapshot
+from player.engine.process.messages import DISARMED
 from player.window import words
 from player.window.actions import ACTIONS, Standing, why_not_now, word_of, words_of
 from player.window.count_in import count_in
@@ -44,12 +45,17 @@ class Seeing(Parted):
         if before is not None and before.state == "vented" and now.state != "vented":
             # That vent is done with.
             self._vented_s, self._unsent = None, False
+        if before is not None and before.state in DISARMED and now.state not in DISARMED:
+            self._rested = False
             self.told.since.clear()
         if before is None or before.state != now.state:
             self._stand()
         parts = self.parts
         if self._drawn:
-            parts.hang.show_strain(np.nan_to_num(now.array("wanted")), now.array("sensed"))
+            sensed = now.array("sensed")
+            # Where boards are disarmed nothing is wanted, whatever was last.
+            wanted = sensed if now.state in DISARMED else now.array("wanted")
+            parts.hang.show_strain(np.nan_to_num(wanted), sensed)
         parts.meters.show_now(now)
         parts.next.show_coming(self._coming(now))
         place = now.text("place")
@@ -87,7 +93,7 @@ class Seeing(Parted):
             self.stage = self._known_stage(now)
             self._stand()
         if now is not None and told.about:
-            self.parts.instruments.show_now(now, told.about, told.inputs, self._clock())
+            self.parts.instruments.show_now(now, told.about, told.inputs, self._clock(), self.is_gone)
             self.parts.meters.setAccessibleDescription(self.parts.meters.describe())
         client = self.link.client
         who = ""
@@ -95,10 +101,14 @@ class Seeing(Parted):
             who = "commands" if client.commands else "watches"
             who += f", {int(now.number('watching'))} attached" if now is not None else ""
         take = told.inputs.get("take", "")
-        parts = [client.run if client is not None else "", who, words.rule_said(told.rule), take, SAID[DIMS[self._light]]]
+        parts = [client.run if client is not None else "", who, words.rule_said(told.rule), take, self._light_said()]
         put(self.parts.status, "     ".join(part for part in parts if part))
         self._show_state()
         self._show_banner()
+
+    def _light_said(self) -> str:
+        """How much light the window gives."""
+        return "light look" if self._theme_name == "light" else SAID[DIMS[self._light]]
 
     def _known_stage(self, now: Snapshot) -> str:
         """Before arming or running, as far as can be seen from outside; a window that comes later is told nothing of it."""
@@ -152,6 +162,8 @@ class Seeing(Parted):
             why = why_not_now("arm", now) or "ready to arm: hold A, or the button, for one second"
         elif now.stage == "running" and now.state == "armed":
             why = "armed: Space plays"
+        elif now.stage == "running" and not why_not_now("arm", now):
+            why = "disarmed: hold A, or the button, for one second to arm and go on"
         elif now.stage == "over":
             why = "the run is over" + ("; B begins again" if now.again else "")
         put(self.parts.why, why)

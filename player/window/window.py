@@ -50,7 +50,7 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         self._light, self._theme_name, self._scale = 0, "dark", 0.0
         self._clock = SteadyClock().now
         self._vented_s: float | None = None
-        self._unsent = self._held = self._drawn = self._behind = False
+        self._unsent = self._rested = self._held = self._drawn = self._behind = False
         self._beside = Beside(self)
         self._beside.said.connect(self._foretold)
         self.parts: Parts = build(self)
@@ -111,7 +111,7 @@ class RehearseWindow(Keyed, Alarming, Seeing):
 
     def _forget(self) -> None:
         self.told, self.stage, self.now = Told(lines=self.told.lines), "none", None
-        self.wrong, self._vented_s, self._unsent = [], None, False
+        self.wrong, self._vented_s, self._unsent, self._rested = [], None, False, False
         self.show_panel(PREFLIGHT)
         self._renew_preflight()
         self._stand()
@@ -260,6 +260,8 @@ class RehearseWindow(Keyed, Alarming, Seeing):
             fields = fields_of(asks, self.from_s if name == "jump" else self._first_s)
             if not self.link.say(asks, **fields):
                 self.tell((f"{ACTIONS[name].word} did not get out: the run does not take what is said to it",))
+            elif asks == "rest":
+                self._rested = True
             elif asks in ("arm", "bring_back"):
                 self.show_panel(METERS)
 

@@ -1,6 +1,6 @@
 """What a run is just now, in words for an operator: state, banner, instruments, cautions. No Qt."""
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from typing import Any
 
 import numpy as np
@@ -161,15 +161,29 @@ def reworded(line: str) -> str:
     return line
 
 
-def fault_said(lines: Sequence[str], boards: Sequence[str]) -> str:
-    """The last line that speaks of one of these boards, "" without one."""
-    return next((line for line in reversed(lines) if line.partition(":")[0] in boards), "")
+def fault_said(lines: Sequence[str], names: Collection[str]) -> str:
+    """The last line that speaks of one of these boards or fibers, "" without one."""
+    return next((line for line in reversed(lines) if line.partition(" ")[0].removesuffix(":") in names), "")
 
 
 def why_vented(lines: Sequence[str], boards: Sequence[str]) -> str:
     """Why all is vented, by what the run has said since it was armed: what it says of a board before all else."""
     told = [line for line in lines if line.strip() and not line.startswith(_AFTERWARDS)]
     return fault_said(told, boards) or (told[-1] if told else "asked for elsewhere")
+
+
+def why_rested(lines: Sequence[str], names: Collection[str]) -> str:
+    """The fault that has brought all to rest, of a board or a fiber, as the run has said it just before; "" where none has."""
+    where = max((place for place, line in enumerate(lines) if line.startswith(_AFTERWARDS)), default=0)
+    return fault_said(lines[where - 1 : where], names) if where else ""
+
+
+def faults_said(report: dict[str, Any]) -> str:
+    """The faults that a run has come to its end with, the first of them in full; "" where there were none."""
+    faults = [str(one.get("say", "")) for one in report.get("faults", ())]
+    if not faults:
+        return ""
+    return f"{'A fault' if len(faults) == 1 else f'{len(faults)} faults, the first'} on the way: {faults[0]}"
 
 
 def rule_said(rule: str) -> str:

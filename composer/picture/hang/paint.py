@@ -144,22 +144,39 @@ def _bars(painter: QPainter, room: Room, camera: Camera, look: Look, width: int)
         look.write(painter, box, band.name, 12, look.theme.quiet_ink, CENTRE)
 
 
-def band_names(room: Room, camera: Camera, look: Look, width: int) -> list[tuple[Band, QRectF]]:
-    """Where the names of bands of more than one fiber stand, above what they hang from, none over another or over a bar."""
+@lru_cache(maxsize=64)
+def band_names(room: Room, camera: Camera, look: Look, width: int) -> tuple[tuple[Band, QRectF], ...]:
+    """Where the names of bands of more than one fiber stand, above what they hang from, none over another, a bar or a fiber at
+    rest.
+    """
     hung = camera.pixels(room.hanging.at)
     bars = [hung[[band.first, band.last - 1]] for band in room.bands]
     taken = [QRectF(QPointF(*ends.min(axis=0)), QPointF(*(ends.max(axis=0) + look.px(3)))) for ends in bars]
+    first = room.hanging.first
+    lines = camera.pixels(centre_lines(room.hanging, np.zeros(len(room.names))))
+    begins, ways = lines[first[:-1]], lines[first[1:] - 1] - lines[first[:-1]]
+    # The bar is where they hang: from there a name may stand.
+    fibers = np.concatenate([begins + share * ways for share in np.linspace(0.1, 1.0, 10)])
+    near = look.px(3)
+
+    def is_free(box: QRectF) -> bool:
+        x, y = fibers.T
+        over = (x > box.left() - near) & (x < box.right() + near) & (y > box.top() - near) & (y < box.bottom() + near)
+        return not over.any() and not any(box.intersects(other) for other in taken)
+
     placed = []
     for band, ends in zip(room.bands, bars, strict=True):
         if band.last - band.first > 1:
             wide = look.width(band.name, 12) + 4
             x = min(max(ends[:, 0].mean() - wide / 2, 4.0), width - wide - 4.0)
-            box = QRectF(x, ends[:, 1].min() - look.px(24), wide, look.px(17))
-            while any(box.intersects(other) for other in taken) and box.top() > 0:
-                box.translate(0, -look.px(17))
+            lowest = box = QRectF(x, ends[:, 1].min() - look.px(24), wide, look.px(17))
+            while not is_free(box) and box.top() > 0:
+                box = box.translated(0, -look.px(17))
+            # Where there is no room all the way up, it stands where it belongs.
+            box = box if box.top() > 0 else lowest
             taken.append(box)
             placed.append((band, box))
-    return placed
+    return tuple(placed)
 
 
 def _scale(painter: QPainter, camera: Camera, look: Look, width: int, height: int) -> None:

@@ -5,6 +5,7 @@ import signal
 import subprocess
 import sys
 from dataclasses import replace
+from types import SimpleNamespace
 
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
@@ -184,6 +185,7 @@ def test_an_engine_that_is_killed_is_told_of_and_vent_says_that_it_reaches_nobod
     until(lambda: window.parts.banner.text() == words.GONE, "is not told")
     QTest.keyClick(window, Qt.Key.Key_Escape)
     assert window.stage == "over" and not window.parts.deeds["play"].isEnabled()
+    until(lambda: "not known any more" in window.parts.instruments.values["boards"].text(), "boards are told as they were")
     window.do("vent")
     assert "nothing is vented" in window.told.lines[-1]
 
@@ -236,11 +238,29 @@ def test_a_rehearsal_with_the_board_in_c_and_its_line_pulled(room, files):
         playing(window)
         until(lambda: "armed" in window.parts.instruments.values["boards"].text(), "no link")
         until(lambda: window.now.array("sensed").max() > 0.0, "nothing is sensed")
+        until(lambda: "kPa" in window.parts.instruments.values["supply"].text(), "the supply is not told")
     finally:
         device.terminate()
         device.communicate(timeout=60)
     until(lambda: "lost" in window.parts.banner.text(), "a board that is gone is not told of")
     until(lambda: "has vanished" in window.parts.banner.text(), "what has become of it is not told")
+
+
+def test_a_fault_that_brings_all_to_rest_is_said_large_and_a_rest_that_was_asked_for_is_not(room):
+    window = room.begun()
+    in_order(window)
+    fault = "main: bad command: the board did not understand what it was sent"
+    before, stage = window.now, window.stage
+    window.told.since += [fault, "All is at rest or vented. Press b ..."]
+    window.stage = "running"
+    window.now = SimpleNamespace(state="idle", texts=lambda name: ["idle"], number=lambda name: window._clock())
+    unasked = window.banner()
+    window._rested = True
+    asked = window.banner()
+    # Before anybody else looks.
+    window.now, window.stage = before, stage
+    assert unasked == (f"BROUGHT TO REST: {fault}; hold A to arm and go on", True)
+    assert asked == ("", False)
 
 
 def test_tonights_margins_come_into_the_preflight(room):
@@ -316,6 +336,20 @@ def test_a_vent_is_put_down_to_the_board_that_vented_whatever_is_said_after_it()
     assert words.why_vented(said, ["main"]) == "main: watchdog: heard nothing in time"
     assert words.why_vented(["vented by the operator"], ["main"]) == "vented by the operator"
     assert words.why_vented([], ["main"]) == "asked for elsewhere"
+
+
+def test_a_run_that_has_come_to_its_end_all_the_same_tells_of_its_faults():
+    assert words.faults_said({"faults": []}) == words.faults_said({}) == ""
+    assert words.faults_said({"faults": [{"say": "r.1 falls"}]}) == "A fault on the way: r.1 falls"
+    assert words.faults_said({"faults": [{"say": "a"}, {"say": "b"}]}) == "2 faults, the first on the way: a"
+
+
+def test_a_fault_that_brings_all_to_rest_is_the_line_just_before_that_is_said():
+    after = "All is at rest or vented. Press b ..."
+    assert words.why_rested(["main: bad command: not understood", after], ["main"]) == "main: bad command: not understood"
+    assert words.why_rested(["r.1 does not move: sensed at 3 %", after], ["r.1"]) == "r.1 does not move: sensed at 3 %"
+    assert words.why_rested(["main: the board is heard again", "not recording", after], ["main"]) == ""
+    assert words.why_rested([after], ["main"]) == words.why_rested([], ["main"]) == ""
 
 
 def test_what_is_wrong_is_said_above_the_fibers_and_hides_none(room):
