@@ -31,6 +31,9 @@ HEADINGS = (
 WORDS = 5
 """Columns from the left that are words."""
 
+FIGURE_SPACE = "\u2007"
+"""A space as wide as a digit, so that numbers stand below one another."""
+
 MOST_FAULTS = 8
 
 
@@ -79,7 +82,7 @@ class _Fibers(QAbstractTableModel):
             fiber.type.name,
             fiber.mounting.valve.name,
             f"{fiber.driver} {fiber.channel}",
-            "  ".join(f"{value:.2f}" for value in fiber.at_m),
+            "".join(f"{value:7.2f}" for value in fiber.at_m).replace(" ", FIGURE_SPACE),
             f"{100.0 * stroke:.1f} %, {stroke * per_strain:.1f} {unit}",
             "-" if able.force_N is None else f"{able.force_N:.1f}",
             f"{self._fill[row]:.2f}",
@@ -173,13 +176,22 @@ class RigPage(QWidget):
         if event.type() in (event.Type.FontChange, event.Type.StyleChange):
             self._widen()
 
+    def showEvent(self, event: Any) -> None:
+        """Only now it is known which letters it has."""
+        super().showEvent(event)
+        self._widen()
+
     def _widen(self) -> None:
         """Columns as wide as their first rows and headings."""
-        metrics = self.table.fontMetrics()
+        for part in (self.table, self.table.horizontalHeader()):
+            part.ensurePolished()
+        metrics, bold = self.table.fontMetrics(), self.table.horizontalHeader().fontMetrics()
+        room = metrics.height()
         for column, (word, _) in enumerate(HEADINGS):
             rows = range(min(self._fibers.rowCount(), 64)) if self._fibers is not None else ()
-            texts = [word, *(self._fibers._text(row, column) for row in rows)] if self._fibers is not None else [word]
-            self.table.setColumnWidth(column, max(metrics.horizontalAdvance(text) for text in texts) + 22)
+            texts = (self._fibers._text(row, column) for row in rows) if self._fibers is not None else ()
+            wide = max(map(metrics.horizontalAdvance, texts), default=0)
+            self.table.setColumnWidth(column, max(wide, bold.horizontalAdvance(word)) + room)
         self.table.verticalHeader().setDefaultSectionSize(metrics.height() + 6)
 
     def _chosen(self, now: QModelIndex, _: QModelIndex) -> None:

@@ -421,6 +421,22 @@ def test_a_rig_file_that_changes_is_read_again_and_one_that_is_broken_leaves_the
         window.do_show_cloth()
 
 
+def test_the_table_of_the_rig_has_room_for_its_words_however_large_letters_are(bench):
+    window = bench.window
+    window.do_show_rig()
+    for change in (window.do_larger, window.do_larger, window.do_smaller, window.do_smaller):
+        change()
+        bench.until(lambda: not window._letters.isActive(), "letters of the new size")
+        table = window.showing.rig_page.table
+        model, metrics = table.model(), table.fontMetrics()
+        for column in range(model.columnCount()):
+            assert table.columnWidth(column) > metrics.horizontalAdvance(model.index(0, column).data())
+            heading = model.headerData(column, Qt.Orientation.Horizontal)
+            assert table.columnWidth(column) > table.horizontalHeader().fontMetrics().horizontalAdvance(heading)
+        assert table.rowHeight(0) > metrics.height()
+    window.do_show_cloth()
+
+
 @pytest.mark.parametrize("role", [READER, SOLVER])
 def test_a_worker_that_is_killed_is_survived_with_a_sentence(bench, role):
     window = bench.window
