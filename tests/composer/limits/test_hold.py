@@ -36,6 +36,12 @@ def test_a_hold_at_the_end_lasts_to_the_end_of_the_score(make_rig, make_tracks):
     assert (snag.to_s, snag.line) == (11.0, 10)
 
 
+def test_the_line_to_blame_is_that_of_the_longest_part_and_not_of_the_last(make_rig, make_tracks):
+    tracks = make_tracks([(2.0, 0.3, "linear"), (9.0, 0.3, "hold"), (1.0, 0.25, "linear"), (2.0, 0.25, "hold")])
+    (snag,) = _find(tracks, make_rig(1, stroke=0.3, max_hold_s=5.0))
+    assert snag.knot == 1
+
+
 def test_half_stroke_itself_is_not_above_half(make_rig, make_tracks):
     assert _find(make_tracks([(1.0, 0.15, "linear")], duration_s=99.0), make_rig(1, stroke=0.3, max_hold_s=5.0)) == []
 

@@ -108,3 +108,10 @@ def test_a_step_down_saves_at_least_what_it_is_credited(curved):
         down = np.minimum(longest_steps(here, 0.01)[1], strain)
         there = look(tables, strain - down)
         assert here.back - there.back >= down * here.back_down * (1.0 - 1e-9)
+
+
+@pytest.mark.parametrize(("fills", "exhausts"), [((0.8, 0.8), (0.4, 0.5)), ((0.8, 0.7), (0.5, 0.5)), ((0.8, 0.8), (0.5, 0.5))])
+def test_rates_are_steady_where_none_falls_on_its_way_and_one_that_does_is_enough(make_abilities, fills, exhausts):
+    straight, bent = ([0.0, 0.3], [0.6] * 2, [0.6] * 2), ([0.0, 0.3], list(fills), list(exhausts))
+    abilities = make_abilities(straight, bent)
+    assert live(abilities, 0.01).steady == (len(set(fills)) == len(set(exhausts)) == 1)

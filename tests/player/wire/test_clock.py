@@ -2,7 +2,7 @@ from random import Random
 
 import pytest
 
-from player.wire.clock import TURN, Clock
+from player.wire.clock import TURN, WANDER_PPM, Clock
 
 
 def exchanges(clock, *, drift_ppm, jitter_s, seconds=30.0, every_s=0.05, device_start=TURN - 3e6, seed=1, from_s=100.0):
@@ -90,3 +90,10 @@ def test_a_first_exchange_that_was_held_up_on_its_way_back_makes_no_jump_of_the_
     assert clock.heard(10.0, 10.4, 1_000_100)
     assert clock.heard(10.5, 10.5002, 1_500_100)
     assert clock.resets == 0 and abs(clock.device_us(10.5) - 1_500_000) < 1000
+
+
+def test_a_line_without_jitter_and_a_steady_drift_leave_no_more_doubt_than_the_wander_of_an_oscillator():
+    clock = Clock()
+    at_s, _ = list(exchanges(clock, drift_ppm=150.0, jitter_s=0.0, seconds=10.0))[-1]
+    doubt_ppm = (clock.bound_us(at_s + 100.0) - clock.bound_us(at_s + 50.0)) / 50.0
+    assert doubt_ppm == pytest.approx(WANDER_PPM, abs=0.5)

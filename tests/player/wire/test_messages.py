@@ -84,6 +84,11 @@ def test_a_count_other_than_the_values_is_of_wrong_form(count):
         m.decode(bytes([4, 0]) + struct.pack("<IHHH", 1, 0, count, 5))
 
 
+def test_of_two_fields_the_one_that_does_not_fit_is_named_and_not_the_one_at_its_highest():
+    with pytest.raises(m.WrongForm, match="set: value 1 is -1, expected"):
+        m.encode(m.Set(0xFFFFFFFF, 0xFFFF, (65535, -1)), 1)
+
+
 def test_a_value_that_does_not_fit_is_named_with_what_came():
     with pytest.raises(m.WrongForm, match="set: value 1 is 65536, expected a whole number, 0 to 65535"):
         m.encode(m.Set(1, 0, (0, 65536)), 1)

@@ -51,3 +51,12 @@ def test_whatever_is_counted_nothing_but_a_share_is_said(steps):
         said = quality.look(now, lost, frames)
         assert said is None or 0 < said[0] <= 2 * said[1]
     assert len(quality._kept) <= 25 * LATELY_S
+
+
+def test_moments_in_which_nothing_is_sent_make_nobody_forget_what_was_lost():
+    quality, lost, frames, said = Quality(), 0, 0, []
+    for n in range(500):
+        if n % 10 == 0:
+            frames, lost = frames + 5, lost + 4
+        said.append(quality.look(n / 100, lost, frames))
+    assert sum(one is not None for one in said) == 1

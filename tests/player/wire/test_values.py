@@ -44,3 +44,8 @@ def test_clipping_says_where_it_changed_something():
     kept, changed = clip([0.2, -0.5, -0.5, 3.0, np.nan], [False, False, True, True, True])
     assert kept.tolist() == [0.2, 0.0, -0.5, 1.0, 0.0]
     assert changed.tolist() == [False, True, False, True, True]
+
+
+def test_of_several_values_out_of_range_the_first_is_named_and_the_others_are_counted():
+    with pytest.raises(OutOfRange, match="drive value 2 at place 1, and 2 more; expected"):
+        to_wire([0.0, 2.0, -1.0, 0.5, 3.0], False)
