@@ -231,7 +231,7 @@ class Desk:
         shown = replace(self.check, snags=self.check.snags[:MOST_SNAGS]) if count > MOST_SNAGS else self.check
         self.say(Checked(version, shown, rows, tuple(waiting_notes(made.cues, teller)), more, count))
         yield
-        self.say(Lanes(version, lanes_of(made.rig, made.abilities, made.tracks)))
+        self.say(Lanes(version, lanes_of(made.rig, made.abilities, made.tracks, asked=self.known.asked)))
 
     # ---- questions ------------------------------------------------------------------------------------------------------
 

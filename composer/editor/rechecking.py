@@ -20,17 +20,18 @@ from composer.quivers import Quivers
 from composer.rig.model import Rig
 from composer.tracks import HOLD, Tracks
 
-STEP_KNOTS = 500
+STEP_KNOTS = 1000
 """Knots that are checked between one look for a newer text and the next."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Known:
-    """Fibers as they were checked: what each was, and its snags with segments counted from its own first."""
+    """Fibers as they were checked: what each was, its snags with segments counted from its own first; the air they draw."""
 
     rig: Rig
     what: tuple[bytes, ...]
     snags: tuple[tuple[Snag, ...], ...]
+    asked: air.Demand
 
 
 def recheck(tracks: Tracks, rig: Rig, abilities: Abilities, known: Known | None) -> Generator[None, None, tuple[Check, Known]]:
@@ -66,7 +67,7 @@ def recheck(tracks: Tracks, rig: Rig, abilities: Abilities, known: Known | None)
     shares = duty.shares(tracks, rig, abilities)
     highest = int(shares.argmax()) if len(shares) else None
     check = Check(tuple(whole), used.lowest_kPa, used.used_L, float(shares[highest]) if highest is not None else 0.0, highest)
-    return check, Known(rig, what, tuple(snags))
+    return check, Known(rig, what, tuple(snags), used.asked)
 
 
 def _steps(fibers: list[int], knots: NDArray[np.int64]) -> list[list[int]]:

@@ -62,6 +62,7 @@ class Use:
     """What the supply goes through: lowest pressure in kPa gauge, litres of free air in all, the spans that overdraw it.
 
     spans: (from_s, to_s, drawn_L, bears_L) each, in order of time; full_s: instants laid out at which the receiver is full
+    asked: the air drawn, for pictures
 
     Of dips that differ by less than twice what the chords stray (`Demand.strays_L`) the lowest may be that of another.
     """
@@ -70,6 +71,7 @@ class Use:
     used_L: float
     spans: tuple[tuple[float, float, float, float], ...]
     full_s: Array = field(compare=False, repr=False)
+    asked: Demand = field(compare=False, repr=False)
 
 
 def store_L(supply: Supply) -> float:
@@ -157,7 +159,7 @@ def use(tracks: Tracks, supply: Supply, abilities: Abilities) -> Use:
             bears = store + refill * (to_s - from_s)
             spans.append((from_s, to_s, short - store + bears, bears))
     lowest = supply.max_receiver_kPa - missing * FREE_AIR_KPA / supply.receiver_L
-    return Use(max(lowest, 0.0), float(fills.litres.sum()), tuple(spans), asked.time_s[now.missing <= 0.0])
+    return Use(max(lowest, 0.0), float(fills.litres.sum()), tuple(spans), asked.time_s[now.missing <= 0.0], asked)
 
 
 class _Exact:

@@ -138,8 +138,11 @@ class ClothShow(ClothPlace):
 
     def _change(self, **changes: object) -> None:
         if self._shown is not None:
+            # What lies round the threads knows of none of it but the thread that the keys are on.
+            frame = self._frame if "fiber" not in changes else None
             self._shown = replace(self._shown, **changes)  # type: ignore[arg-type]
             self._redraw()
+            self._frame = frame
 
     @property
     def fiber(self) -> int | None:

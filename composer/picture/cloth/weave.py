@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
-from composer.limits.air import FREE_AIR_KPA, demand, refill_L_s
+from composer.limits.air import FREE_AIR_KPA, Demand, demand, refill_L_s
 from composer.limits.buckets import level
 from composer.limits.coil import coils_of
 from composer.limits.duty import on_time
@@ -53,19 +53,24 @@ def stretches(snags: Sequence[Snag]) -> tuple[Stretch, ...]:
     return tuple(Stretch(snag.fiber, snag.from_s, snag.to_s) for snag in snags)
 
 
-def lanes_of(rig: Rig, abilities: Abilities, tracks: Tracks, columns: int = LANE_COLUMNS) -> tuple[Lane, ...]:
-    """The receiver's pressure and the highest use of a coil's allowance, as the check reckons them, without simulating."""
+def lanes_of(
+    rig: Rig, abilities: Abilities, tracks: Tracks, columns: int = LANE_COLUMNS, asked: Demand | None = None
+) -> tuple[Lane, ...]:
+    """The receiver's pressure and the highest use of a coil's allowance, as the check reckons them, without simulating.
+
+    asked: the air that these tracks draw, where it is known
+    """
     edges = np.linspace(0.0, max(tracks.duration_s, 1e-3), columns + 1)
-    return supply_lane(rig, abilities, tracks, edges), duty_lane(rig, abilities, tracks, edges)
+    return supply_lane(rig, abilities, tracks, edges, asked), duty_lane(rig, abilities, tracks, edges)
 
 
-def supply_lane(rig: Rig, abilities: Abilities, tracks: Tracks, edges_s: Array) -> Lane:
+def supply_lane(rig: Rig, abilities: Abilities, tracks: Tracks, edges_s: Array, asked: Demand | None = None) -> Lane:
     """The lowest pressure of the receiver in each column, kPa gauge: what fibers draw and the compressor gives, at once.
 
     edges_s: (W + 1,) where columns begin and end
     """
     supply = rig.supply
-    asked = demand(tracks, abilities)
+    asked = demand(tracks, abilities) if asked is None else asked
     every = np.union1d(asked.time_s, edges_s)
     missing = level(every, np.interp(every, asked.time_s, asked.litres), refill_L_s(supply)).missing
     pressure = np.maximum(supply.max_receiver_kPa - missing * FREE_AIR_KPA / supply.receiver_L, 0.0)

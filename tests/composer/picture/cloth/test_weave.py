@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from composer.limits.abilities import abilities_of
+from composer.limits.air import use
 from composer.limits.check import check
 from composer.picture.cloth.weave import duty_lane, lanes_of, stretches, supply_lane
 
@@ -24,6 +25,13 @@ def test_the_supply_lane_falls_as_low_as_the_check_says(scarce):
     assert found.lowest_kPa < piece.rig.supply.max_receiver_kPa
     assert lane.values.min() == pytest.approx(found.lowest_kPa, abs=0.05)
     assert (lane.limit, lane.supply) == (piece.rig.supply.min_pressure_kPa, True)
+
+
+def test_what_a_check_knows_of_the_air_makes_the_same_lanes(scarce):
+    piece = scarce
+    asked = use(piece.tracks, piece.rig.supply, piece.abilities).asked
+    known, anew = (lanes_of(piece.rig, piece.abilities, piece.tracks, 50, one) for one in (asked, None))
+    assert all(np.array_equal(a.values, b.values) for a, b in zip(known, anew, strict=True))
 
 
 def test_a_dip_shorter_than_a_column_is_still_in_the_lane(scarce):
