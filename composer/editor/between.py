@@ -157,6 +157,7 @@ def retiming_in_words(count: int) -> str:
 
 
 def _says(fault: Any) -> str:
+    """What is wrong, what to do, what could have stood there: the first is never cut off where there is little room."""
+    hint = f": {fault.hint}" if fault.hint else ""
     expected = f"; expected {fault.expected}" if fault.expected else ""
-    hint = f" ({fault.hint})" if fault.hint else ""
-    return f"{fault.found}{expected}{hint}"
+    return f"{fault.found}{hint}{expected}"

@@ -2,8 +2,9 @@
 
 from fractions import Fraction
 
-from PySide6.QtCore import Signal
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QWidget
+from PySide6.QtCore import QEvent, QSize, Qt, Signal
+from PySide6.QtGui import QPainter, QPaintEvent
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QSizePolicy, QWidget
 
 from composer.edits.grids import GRIDS
 
@@ -13,6 +14,36 @@ SAY_MS = 8000
 def grid_in_words(grid: Fraction) -> str:
     """A grid of counts as a person says it."""
     return "whole counts" if grid == 1 else f"{grid} count"
+
+
+class Elided(QLabel):
+    """A line of words that takes what room there is and asks for none: the end of what does not fit is left out, and told
+    under the pointer."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+
+    @property
+    def fits(self) -> bool:
+        """Whether all of it is seen."""
+        return self.fontMetrics().horizontalAdvance(self.text()) <= self.contentsRect().width()
+
+    def minimumSizeHint(self) -> QSize:
+        """None across."""
+        return QSize(0, super().minimumSizeHint().height())
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """As much as there is room for."""
+        box = self.contentsRect()
+        words = self.fontMetrics().elidedText(self.text(), Qt.TextElideMode.ElideRight, box.width())
+        QPainter(self).drawText(box, Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter, words)
+
+    def event(self, event: QEvent) -> bool:
+        """The whole of it under the pointer, where it does not fit."""
+        if event.type() == QEvent.Type.ToolTip:
+            self.setToolTip("" if self.fits else self.text())
+        return super().event(event)
 
 
 class Foot(QWidget):
@@ -28,7 +59,7 @@ class Foot(QWidget):
         row.setSpacing(18)
         self._labels: dict[str, QLabel] = {}
         for name, stretch in (("word", 1), ("snags", 0), ("place", 0), ("saved", 0)):
-            label = QLabel()
+            label = Elided() if name == "word" else QLabel()
             label.setAccessibleName(name)
             self._labels[name] = label
             row.addWidget(label, stretch)

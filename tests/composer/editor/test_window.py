@@ -519,6 +519,22 @@ def test_the_window_fits_and_draws_in_every_size_and_theme(bench, size, theme):
 CONTROLS = (QAbstractButton, QAbstractSlider, QComboBox, QLineEdit, QTabBar, QAbstractScrollArea)
 
 
+def test_no_sentence_makes_the_window_wider_than_it_is(bench):
+    window = bench.window
+    window.resize(SIZES[0])
+    bench.until(lambda: not window._letters.isActive(), "letters of that size")
+    window.resize(SIZES[0])
+    QApplication.processEvents()
+    room = window.centralWidget().width()
+    for say in (lambda: window.foot.say("word", "words " * 200), lambda: window.notices.say("long", "words " * 200)):
+        say()
+        QApplication.processEvents()
+        assert window.minimumSizeHint().width() <= SIZES[0].width()
+        assert window.centralWidget().width() == room and window.width() == SIZES[0].width()
+    window.notices.drop("long")
+    window.foot.say("word", "")
+
+
 def test_every_control_has_a_name_for_screen_readers(bench):
     window = bench.window
     window.do_find()
