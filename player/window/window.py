@@ -31,6 +31,7 @@ from player.window.ways import Material, Told, Ways, fits, groups_of_run
 SLOW_MS = 200
 BLINK_MS = 500
 HOLD_MS = 100
+HERE_MS = 500
 MOST_LINES = 300
 OPENS_AT = (1280, 800)
 
@@ -73,6 +74,8 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         self._frames.setTimerType(Qt.TimerType.PreciseTimer)
         self._timer(SLOW_MS, self._slow)
         self._blink = self._timer(BLINK_MS, self._blinked)
+        # So that a window that stands still leaves the run to its rule as one that is closed does.
+        self._timer(HERE_MS, lambda: self.link.say("here"))
         self._holding = self._timer(HOLD_MS, lambda: self.link.say("hold", down=True))
         self._holding.stop()
         self._letting_go = self._timer(0, self._let_go)

@@ -28,6 +28,9 @@ UNFIT_MOST = 20
 NOTES_MOST = 500
 """Of each kind in the log: nobody fills a disk by nonsense, or hides behind it."""
 
+STANDS_S = 5.0
+"""A front end that has said that it is here, and says nothing for so long, stands still: it no longer commands."""
+
 HELLO_S = LAST_S = 2.0
 LOOK_S = 0.02
 
@@ -42,6 +45,7 @@ class Front:
         self.waits = bytearray()
         self.greeted = self.commands = self.answers = False
         self.unfit = self.missed = 0
+        self.here_s: float | None = None
 
     def put(self, line: bytes, surely: bool = False) -> bool:
         """Queue a line; False where there is no room for it."""
@@ -69,14 +73,19 @@ class Door:
     rule: of messages.RULES; commanded: whether a front end commands; answers: whether that one has somebody with keys
     """
 
-    def __init__(self, run: str, about: dict[str, Any], memory: int, rule: str, listener: socket.socket | None = None):
-        """memory: descriptor of the shared memory, read only; listener: bound and listening, None where nobody can attach."""
+    def __init__(
+        self, run: str, about: dict[str, Any], memory: int, rule: str, listener: socket.socket | None = None,
+        now: Callable[[], float] = lambda: 0.0,
+    ):  # fmt: skip
+        """memory: descriptor of the shared memory, read only; listener: bound and listening, None where nobody can attach;
+        now: a steady clock, in s
+        """
         self.run, self.about, self.rule = run, about, rule
         self.take: Callable[[str, dict[str, Any]], str] = lambda name, fields: "not yet"
         self.state: Callable[[], str] = lambda: "idle"
         self.left: Callable[[], None] = lambda: None
         self.note: Callable[..., None] = lambda **told: None
-        self._memory, self._listener = memory, listener
+        self._memory, self._listener, self._now = memory, listener, now
         self._fronts: list[Front] = []
         self._notes: Counter[str] = Counter()
         self._marks: dict[str, Any] | None = None
@@ -123,6 +132,10 @@ class Door:
                 self._hear(front)
             if front.waits:
                 self._flush(front)
+        # After all have been heard: it may be this process that has stood still.
+        for front in self._fronts:
+            if front.commands and front.here_s is not None and self._now() - front.here_s > STANDS_S:
+                self._stands_still(front)
 
     def tell(self, lines: tuple[str, ...]) -> None:
         """Lines for every operator."""
@@ -198,6 +211,8 @@ class Door:
         if not data:
             self._let_go(front, "gone")
             return
+        if front.here_s is not None:
+            front.here_s = self._now()
         *lines, front.heard = (front.heard + data).split(b"\n")
         if len(front.heard) > messages.LONGEST_ASKED:
             self._let_go(front, f"let go: it sent more than {messages.LONGEST_ASKED} bytes that are no message")
@@ -229,6 +244,8 @@ class Door:
             return why
         if name == "leave":
             self._let_go(front, "left")
+        elif name == "here":
+            front.here_s = self._now()
         elif name == "command":
             if self.commanded:
                 return "" if front.commands else "another front end commands"
@@ -277,6 +294,13 @@ class Door:
         for front in self._fronts:
             if front.greeted:
                 front.put(messages.packed("command", commands=front.commands, taken=taken, rule=self.rule))
+
+    def _stands_still(self, front: Front) -> None:
+        """It stays attached, and may command again once it moves, where nobody else does."""
+        front.commands = front.answers = False
+        self._told("stands still")
+        self.left()
+        self._say_who()
 
     def _let_go(self, front: Front, how: str) -> None:
         if front not in self._fronts:

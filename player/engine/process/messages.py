@@ -57,6 +57,11 @@ ASKED = {
             who="any",
         ),
         Message("vent", "every valve exhausts at once; taken before hello too", who="any"),
+        Message(
+            "here",
+            "said now and then by a front end that can tell that it is not standing still; from then on, one that does, leaves",
+            who="any",
+        ),
         Message("leave", "the front end detaches; where it commands, the run's rule applies", who="any"),
         Message(
             "command",

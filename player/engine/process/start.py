@@ -18,6 +18,7 @@ from contextlib import suppress
 from typing import Any
 
 from composer.faults import Faults
+from player.engine.clock import SteadyClock
 from player.engine.process import layout
 from player.engine.process.client import Client
 from player.engine.process.door import Door
@@ -106,7 +107,7 @@ def run(connection: socket.socket, body: Body, about: dict[str, Any], rule: str,
         listener = listen(name)
     except NoRoom as why:
         listener, alone = None, str(why)
-    door = Door(name, about, _read_only(descriptor), rule, listener)
+    door = Door(name, about, _read_only(descriptor), rule, listener, SteadyClock().now)
     door.adopt(connection)
     memory = layout.Writer(buffer, fibers, boards)
     memory.show()

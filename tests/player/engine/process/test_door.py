@@ -7,7 +7,7 @@ import socket
 import pytest
 
 from player.engine.process import messages, peers
-from player.engine.process.door import MOST_FRONTS, MOST_SILENT, NOTES_MOST, QUEUE_BYTES, UNFIT_MOST
+from player.engine.process.door import MOST_FRONTS, MOST_SILENT, NOTES_MOST, QUEUE_BYTES, STANDS_S, UNFIT_MOST
 from player.engine.process.layout import Reader
 from player.engine.process.room import listen
 
@@ -212,3 +212,42 @@ def test_the_end_is_told_to_everybody_who_reads(door, visit):
 def test_another_users_process_is_turned_away(door, listening, monkeypatch):
     monkeypatch.setattr(peers, "peer_uid", lambda connection: os.geteuid() + 1)
     assert b"belongs to another user" in listening().recv(4096) and door._fronts == []
+
+
+def test_a_front_end_that_said_it_was_here_and_stands_still_leaves_and_may_command_again(door, visit):
+    clock = [0.0]
+    door._now = lambda: clock[0]
+    first = visit()
+    first.hello(commands=True, answers=True)
+    first.say("here")
+    clock[0] = STANDS_S
+    door.serve()
+    assert door.commanded and door.lefts == 0
+    clock[0] = STANDS_S + 0.1
+    door.serve()
+    assert not door.commanded and door.lefts == 1 and door.attached == 1
+    door.serve()
+    (who,) = first.hear()
+    assert who == ("command", {"commands": False, "taken": False, "rule": "rest"})
+    assert any(note["what"] == "stands still" for note in door.notes)
+    first.say("command", answers=True)
+    assert door.commanded and door.answers
+
+
+def test_a_run_that_stood_still_itself_does_not_put_that_down_to_its_front_end(door, visit):
+    clock = [0.0]
+    door._now = lambda: clock[0]
+    first = visit()
+    first.hello(commands=True)
+    first.say("here")
+    first.socket.sendall(messages.packed("here"))
+    clock[0] = 60.0
+    door.serve()
+    assert door.commanded and door.lefts == 0
+
+
+def test_one_that_never_said_it_was_here_may_be_silent_for_ever(door, visit):
+    door._now = lambda: 1e6
+    visit().hello(commands=True)
+    door.serve()
+    assert door.commanded
