@@ -22,6 +22,7 @@ from player.engine.quiet import no_collecting
 from player.engine.run_log import RunLog
 from player.engine.safety import Refused, Safety, after
 from player.engine.sensing import Sensing
+from player.engine.settling import SLICE_S, Settling
 from player.engine.source import Source
 from player.engine.status import Ending, Lateness, Status, status_of
 from player.engine.verdicts import ARMED, RUNNING, verdict
@@ -33,16 +34,6 @@ AHEAD_S = 0.06
 
 QUEUE_SHARE = 0.75
 """The part of a board's queue that sets ahead of their time may fill."""
-
-SLICE_S = 0.005
-"""The engine looks for what the operator asks at least this often, however slow the ticks are."""
-
-STOPS_NOW = frozenset(("vent", "stop"))
-LAST_SENSE_S = 0.12
-"""After the last set boards are heard so long, until they have sensed where it has brought their fibers."""
-
-SETTLE_S = 1.3
-"""Seconds that a board has to say that it has disarmed: on a disturbed line it may have to be told three times."""
 
 STILL = 1e-7
 """A fiber that moves less than this strain in a tick stands still."""
@@ -88,6 +79,18 @@ class Engine:
         self.sensing = Sensing(rig, abilities, trims)
         at_rest = np.zeros_like(abilities.stroke)
         self._falls_s = safe_ways(abilities, abilities.stroke, at_rest).longest_s
+        self._settling = Settling(
+            self.boards,
+            self.sensing,
+            clock,
+            self._asked,
+            state=lambda: self.safety.state,
+            tend=self.tend,
+            hear=self._hear,
+            fault=self._fault,
+            stop=self._stop,
+            become=self._become,
+        )
         self._diary = Diary(clock, abilities.stroke, drives, [driver.name for driver in rig.drivers])
 
     def ask(self, kind: str, value: float = 0.0) -> None:
@@ -318,8 +321,8 @@ class Engine:
             "hold": self.source.pause,
             "resume": self.source.go_on,
             "let_down": self._let_down,
-            "disarm": self._disarm,
-            "vent": self._vent,
+            "disarm": lambda: self._settling.disarm(self._due_s + self.source.lead_s + self._dt),
+            "vent": self._settling.vent,
         }
         self._diary.tell("state", self.source.position_s, was=was, event=event, state=self.safety.state)
         for deed in must:
@@ -329,47 +332,6 @@ class Engine:
         self.source.rest()
         if self.source.phase == "at rest":
             self._become("at_rest")
-
-    def _disarm(self) -> None:
-        """All wants are at rest: once the last set has been due, tell every board to rest and disarm, and hear it say so."""
-        over_s = self._due_s + self.source.lead_s + self._dt
-        self.clock.wait_until(over_s)
-        # How the last landing went is sensed a little later.
-        while self.boards.sensing(self.sensing.newest_s, over_s) and self.clock.now() < over_s + LAST_SENSE_S:
-            if self._asked.has(STOPS_NOW):
-                break
-            self.clock.wait_until(self.clock.now() + SLICE_S)
-            self.tend()
-        self._hear(self.boards.rest(0.0))
-        if self._settles("idle"):
-            if self.boards.vented:
-                # One that has vented by itself is disarmed, but not at rest: what stands is what is worse.
-                self._become("vent")
-        elif self.safety.state != "vented":
-            silent = self.boards.unsettled("idle")
-            for driver in silent:
-                self._fault(driver, f"{driver}: the board did not say that it has disarmed; it is told to vent", "note")
-            self._stop("fault", f"{', '.join(silent)}: the board did not say that it has disarmed", "vent")
-
-    def _vent(self) -> None:
-        """Tell every board to vent, all of them before any is waited for; then hear them say that they have."""
-        self._hear(self.boards.vent())
-        if not self._settles("vented"):
-            for driver in self.boards.unsettled("vented"):
-                self._fault(driver, f"{driver}: the board did not say that it has vented; shut its supply by hand", "note")
-
-    def _settles(self, status: str) -> bool:
-        """Hear the boards until all are in that state; False where they are not within SETTLE_S, or were vented meanwhile."""
-        until = self.clock.now() + SETTLE_S
-        while not self.boards.settled(status) and self.clock.now() < until:
-            self.clock.wait_until(self.clock.now() + SLICE_S)
-            self.tend()
-            if status == "idle" and self._asked.has(STOPS_NOW):
-                self._asked.take()
-                self._stop("vented", "vented by the operator", "vent")
-            if status == "idle" and self.safety.state == "vented":
-                return False
-        return self.boards.settled(status)
 
     def status(self, late_s: float = 0.0) -> Status:
         """A snapshot; what was new to tell is told once."""
