@@ -63,6 +63,7 @@ BENCHES = (
     Bench("rehearse-frames", "rehearse", ("frames",), ("frames", "--small")),
     Bench("rehearse-engine", "rehearse", ("engine", "--pairs", "5"), ("engine", "--small")),
     Bench("clocks", "clocks", (), ("--lines", "4", "--seconds", "20")),
+    Bench("following", "following", (), ("--short",)),
     Bench("wire", "wire", ("--portable",), ("--portable", "--seconds", "2")),
     Bench("lateness", "lateness", (), ("--seconds", "4")),
     Bench("many", "many", (), ("--seconds", "2")),
@@ -121,6 +122,10 @@ TARGETS = (
     Target("rehearse: 512 fibers, frames over 30 a second", "rehearse-frames", r"([\d.]+) times 30;", "at least", 1.0),
     Target("ticks late, p99.9, with the window over without", "rehearse-engine", r"middle of \d+: ([\d.]+)", "at most", 1.2),
     Target("a board's clock is known to", "clocks", r"off by .*100 %: ([\d.]+) us", "at most", 200.0, "µs"),
+    Target(
+        "a followed clock's tempo after 4 counts, off by", "following", r"tempo .*100 %: ([\d.]+) percent", "at most", 0.2, "%"
+    ),
+    Target("hits under a followed clock, off by", "following", r"hits land .*100 %: ([\d.]+) ms", "at most", 3.0, "ms"),
     Target("sets late at a board in C", "wire", r"(\d+) came after their due", "at most", 0.0, "sets"),
     Target("ticks late, p99.9, a busy process beside", "lateness", r"player: .*99.9 %: ([\d.]+)", "at most", 1.0, "ms", first),
     Target("valves late, p99.9", "lateness", r"valves: .*99.9 %: ([\d.]+)", "at most", 200.0, "µs", first),
