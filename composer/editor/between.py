@@ -49,6 +49,7 @@ class Between:
             for one in own
         ]
         self.pane.looks.set_marks(marks)
+        self._say_wrong(self.pane.place[0])
         others = [one for one in told.faults if one.where.file != name]
         self.showing.show_rig_faults([one for one in others if one.where.file.endswith(".toml")])
         if others:

@@ -231,13 +231,17 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
 
     def _caret_placed(self, line: int, column: int) -> None:
         self.foot.say("place", f"line {line}, column {column}")
+        self._say_wrong(line)
+        self.crew.ask("moved", (line,), self._light)
+
+    def _say_wrong(self, line: int) -> None:
+        """At the foot, what is wrong with the caret's line."""
         wrong = self.pane.looks.marks.get(line)
         if wrong:
             self.foot.say("word", wrong[0].says)
         elif self.foot.said("word") == self._last_wrong:
             self.foot.say("word", "")
         self._last_wrong = wrong[0].says if wrong else ""
-        self.crew.ask("moved", (line,), self._light)
 
     def _light(self, stretches: Any) -> None:
         found = None if isinstance(stretches, Refusal) or stretches is None or not len(stretches.fiber) else stretches
