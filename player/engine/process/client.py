@@ -72,6 +72,9 @@ class Client:
                 # Its run was killed: nobody can listen there again.
                 with suppress(OSError):
                     os.unlink(path)
+            if isinstance(why, PermissionError):
+                # Where a user's runs listen, nobody else may look.
+                raise Stranger(f"the run at {path} belongs to another user: only they may attach to it") from None
             raise NotThere(f"no run answers at {path}: {why.strerror or why}") from None
         return cls(connection, commands, answers, vents)
 

@@ -29,3 +29,13 @@ def test_another_users_run_is_refused_with_a_sentence(monkeypatch):
 
 def test_a_user_without_a_name_is_a_number():
     assert name_of(987654) == "number 987654"
+
+
+def test_a_run_in_a_folder_that_is_shut_to_this_user_is_another_ones(monkeypatch):
+    class Shut(socket.socket):
+        def connect(self, path):
+            raise PermissionError(13, "Permission denied")
+
+    monkeypatch.setattr("player.engine.process.client.socket.socket", Shut)
+    with pytest.raises(Stranger, match="belongs to another user: only they may attach to it"):
+        Client.at("/run/user/4242/drawcord/bench-1.run", commands=False)
