@@ -56,7 +56,7 @@ def main() -> None:
             offs.append(100.0 * off)
             lates += [1e3 * abs(one) for one in late]
     print(
-        f"{len(offs)} clocks of {TEMPOS[0]:g} to {TEMPOS[-1]:g} counts a minute, ticks up to {asked.jitter_ms:g} ms early or late:"
+        f"{len(offs)} clocks, {TEMPOS[0]:g} to {TEMPOS[-1]:g} counts a minute, ticks up to {asked.jitter_ms:g} ms off either way:"
     )
     print(f"   tempo after {KNOWN_BY} counts off by {spread(offs, 3)} percent")
     print(f"   {len(lates)} hits land off by {spread(lates, 2)} ms")
