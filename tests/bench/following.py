@@ -55,9 +55,7 @@ def main() -> None:
             off, late = followed(a_minute, 1e-3 * asked.jitter_ms, asked.counts, chance)
             offs.append(100.0 * off)
             lates += [1e3 * abs(one) for one in late]
-    print(
-        f"{len(offs)} clocks, {TEMPOS[0]:g} to {TEMPOS[-1]:g} counts a minute, ticks up to {asked.jitter_ms:g} ms off either way:"
-    )
+    print(f"{len(offs)} clocks, {TEMPOS[0]:g} to {TEMPOS[-1]:g} counts a minute, ticks up to {asked.jitter_ms:g} ms off:")
     print(f"   tempo after {KNOWN_BY} counts off by {spread(offs, 3)} percent")
     print(f"   {len(lates)} hits land off by {spread(lates, 2)} ms")
 
