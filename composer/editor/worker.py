@@ -14,10 +14,14 @@ from typing import Any, BinaryIO
 
 from composer.editor import framing
 from composer.editor.desk import SOLVER, Desk, own_fault
+from composer.editor.memory import give_back
 from composer.editor.messages import Again, Ask, Changed, Failed, Whole
 
 NICE = 5
 """How far the solver steps back for the window and the reader, where the system knows of such a thing."""
+
+LONG_S = 0.3
+"""A step that takes so long is one of a large score, whose arrays leave much memory free that is nobody's any more."""
 
 
 def serve(role: str, into: BinaryIO, out: BinaryIO) -> None:
@@ -48,7 +52,10 @@ def serve(role: str, into: BinaryIO, out: BinaryIO) -> None:
                 # All that has come is taken in before anything is done about it.
                 if not heard.empty():
                     continue
+            began = time.perf_counter()
             busy = desk.work()
+            if time.perf_counter() - began > LONG_S:
+                give_back()
         except OSError:
             return
         except Exception as error:

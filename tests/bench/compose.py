@@ -59,7 +59,7 @@ phrase surge 8
 section all at 1:1
   r.*  surge  times {times} every 8 canon 1/64
 section last at 9000:1
-  r.1  surge
+  {one}  surge
 """
 
 
@@ -197,7 +197,7 @@ def main() -> None:
             rig = small_rig.__wrapped__()(rows=rows, count=min(given.threads, 256), channels=256)
             (Path(folder) / "many.rig.toml").write_text(rig)
             times = max(1, given.moves // (4 * given.threads))
-            (Path(folder) / "many.score").write_text(SCORE.format(times=times))
+            (Path(folder) / "many.score").write_text(SCORE.format(times=times, one="r.0.1" if boards > 1 else "r.1"))
             typist = Typist(str(Path(folder) / "many.score"))
             typist.window.pane.go_to(2, 9)
             typist.stalls.clear()

@@ -30,7 +30,7 @@ class Hits:
     span: float
 
 
-@lru_cache(maxsize=4)
+@lru_cache(maxsize=1)
 def hits_of(tracks: Tracks) -> Hits:
     """The hits of tracks: the end of every segment that is no hold."""
     segment = np.flatnonzero(tracks.manner != HOLD)
@@ -40,7 +40,7 @@ def hits_of(tracks: Tracks) -> Hits:
     return Hits(segment, fiber, at, fiber * span + at, span)
 
 
-@lru_cache(maxsize=4)
+@lru_cache(maxsize=1)
 def moved_hits(tracks: Tracks, ghost: Tracks) -> tuple[Index, Array, Array]:
     """The hits that are at another instant in `ghost`, (M,) each: fiber, instant here, instant there; none of other knots."""
     hits = hits_of(tracks)

@@ -44,13 +44,16 @@ class Sampler:
         return strain.reshape(len(fibers), len(times)) / self._stroke[fibers, None]
 
 
-@lru_cache(maxsize=4)
+@lru_cache(maxsize=2)
 def sampler_of(tracks: Tracks, abilities: Abilities) -> Sampler:
-    """The sampler of some tracks; kept for those last asked for, as several views ask for the same."""
+    """The sampler of some tracks; kept for what is shown and what would be instead, as several views ask for the same.
+
+    No more are kept: each holds its tracks, a hundred megabytes for a million moves.
+    """
     return Sampler(tracks, abilities)
 
 
-@lru_cache(maxsize=4)
+@lru_cache(maxsize=1)
 def differing(tracks: Tracks, other: Tracks) -> NDArray[np.bool_]:
     """(F,) which fibers move otherwise in `other`, tracks of as many fibers."""
     count, theirs = np.diff(tracks.first), np.diff(other.first)
