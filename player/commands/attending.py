@@ -10,6 +10,7 @@ from typing import Any, Protocol
 import click
 
 from player.commands.signals import Interrupt, stopping
+from player.commands.terminal import folded
 from player.engine.clock import SteadyClock
 from player.engine.process.client import Client, NotThere, Stranger, Unreadable
 from player.engine.process.layout import Snapshot
@@ -154,7 +155,7 @@ def told(client: Client, last: tuple[str, dict[str, Any]] | None, as_json: bool,
     elif as_json:
         click.echo(json.dumps(fields["report"]))
     else:
-        click.echo("\n".join(map(str, fields["lines"])))
+        click.echo("\n".join(folded(str(line), sys.stdout) for line in fields["lines"]))
     return int(fields["exit"])
 
 

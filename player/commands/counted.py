@@ -7,6 +7,7 @@ from composer.files import say_bytes
 
 LOST = {
     "skipped": "set not sent",
+    "dropped_at_board": "set dropped by the board's full queue",
     "late_at_board": "set late at the board",
     "bad_at_board": "frame damaged on the way there",
     "unreadable": "frame damaged on the way back",

@@ -11,7 +11,7 @@ from collections.abc import Callable
 from typing import Any
 
 from player.commands.shown import status_of
-from player.commands.terminal import has_keys, is_screen, keys_at_once, letters, typed
+from player.commands.terminal import folded, has_keys, is_screen, keys_at_once, letters, typed
 from player.engine.process.layout import Snapshot
 from player.engine.status import Status
 
@@ -131,7 +131,7 @@ class Front:
         while self._told:
             said = self._told.popleft()
             if not self._quiet:
-                self._write(("\r\x1b[K" if self._lives else "") + said + "\n")
+                self._write(("\r\x1b[K" if self._lives else "") + folded(said, sys.stderr) + "\n")
         if self._lives and self._latest is not None:
             width = _width()
             self._write("\r\x1b[K" + live_line(self._latest, self._place, self._colour, width))

@@ -5,7 +5,7 @@ from typing import Any
 
 import numpy as np
 
-from player.commands.counted import small
+from player.commands.counted import sentence, small
 from player.commands.earlier_logs import drift
 from player.commands.earlier_logs import sentences as drift_sentences
 from player.commands.run_report import HOW
@@ -15,6 +15,7 @@ SHOWN = 12
 """Landings and fibers that a person is told of; JSON has all."""
 
 BAR = 40
+BREAKS_OFF = "the log breaks off: the player was killed, could not write on, or is still at it"
 
 
 def as_object(log: Told, path: str, left: int) -> dict[str, Any]:
@@ -28,12 +29,13 @@ def as_object(log: Told, path: str, left: int) -> dict[str, Any]:
         "left_bytes": left,
         **{key: log.head.get(key) for key in ("played", "kind", "title", "rig", "fingerprint", "targets", "date", "rate_Hz")},
         "ended": ended if isinstance(ended, str) else "broken off",
-        "why": str(log.end.get("why", "")) if log.end else "the log breaks off: the player was killed, or could not write on",
+        "why": str(log.end.get("why", "")) if log.end else BREAKS_OFF,
         "exit": 0 if log.end is not None and left == 0 and log.end.get("exit") == 0 else 1,
         "place": _last_place(log),
         "position_s": round(float(log.position_s[-1]), 6) if len(log.position_s) else 0.0,
         "duration_s": round(float(log.in_force_s[-1] - log.in_force_s[0]), 6) if len(log.in_force_s) else 0.0,
         "sets": len(log.in_force_s),
+        "outputs": _outputs(log),
         "senses": sum(len(part.at_s) for part in log.sensed),
         "lateness": [{"to_ms": None if np.isinf(edge) else edge, "ticks": count} for edge, count in lateness(log)],
         "latest_ms": round(float(log.late_s.max(initial=0.0)) * 1e3, 4),
@@ -85,14 +87,36 @@ def _faults(log: Told) -> list[dict[str, Any]]:
         say = record.told
         wrong = record.kind in ("alarm", "slip") or (record.kind == "board" and say.get("kind") in ("fault", "lost", "silent"))
         if wrong:
-            words = f"the host stood still for {say.get('seconds', 0)} s" if record.kind == "slip" else str(say.get("say", ""))
+            words = _stood_still(say.get("seconds")) if record.kind == "slip" else str(say.get("say", ""))
             name = str(say.get("kind") or record.kind) if record.kind == "board" else record.kind
-            driver = str(say.get("driver") or say.get("fiber") or "")
+            driver = str(say.get("driver") or _fiber(log, say.get("fiber")))
             found.append(
                 {"place": str(say.get("place", "")), "time_s": round(record.time_s, 6), "kind": name}
                 | {"of": driver, "code": say.get("code") or None, "say": words}
             )
     return found
+
+
+def _outputs(log: Told) -> list[dict[str, Any]]:
+    """What outputs had counted at the end; none where the log breaks off, or has it otherwise than it is written here."""
+    found = log.end.get("outputs") if log.end is not None else None
+    rows = [one for one in found if isinstance(one, dict)] if isinstance(found, list) else []
+    return [one for one in rows if _is_counted(one)]
+
+
+def _is_counted(output: dict[str, Any]) -> bool:
+    drivers, numbers = output.get("drivers"), [value for key, value in output.items() if key not in ("target", "drivers")]
+    named = isinstance(output.get("target"), str) and isinstance(drivers, list) and all(isinstance(one, str) for one in drivers)
+    return named and "sets" in output and all(isinstance(one, int | float) for one in numbers)
+
+
+def _stood_still(seconds: Any) -> str:
+    return "the host stood still" + (f" for {seconds:.3f} s" if isinstance(seconds, int | float) else "")
+
+
+def _fiber(log: Told, number: Any) -> str:
+    """The name of the fiber that an alarm is about, "" where it is about none."""
+    return log.fibers[number] if isinstance(number, int) and 0 <= number < len(log.fibers) else ""
 
 
 def _supply(log: Told) -> list[dict[str, Any]]:
@@ -117,23 +141,38 @@ def sentences(whole: dict[str, Any]) -> Iterator[str]:
     yield f"{title}, on {whole['rig']}, to {' '.join(map(str, whole['targets'] or []))}; {whole['date']}"
     if not whole["sound"]:
         cut = f"; the last {whole['left_bytes']} bytes are no whole record" if whole["left_bytes"] else ""
-        yield f"The log breaks off at {whole['place']}{cut}. What follows tells of the run up to there."
+        yield f"The log breaks off {_at(whole['place'])}{cut}. What follows tells of the run up to there."
     how = HOW.get(whole["ended"], "Broken off")
-    yield f"{how} at {whole['place']}" + (f": {whole['why']}." if whole["why"] and whole["ended"] != "end" else ".")
+    yield f"{how} {_at(whole['place'])}" + (f": {whole['why']}." if whole["why"] and whole["ended"] != "end" else ".")
     yield f"{whole['sets']} sets in {whole['duration_s']:.1f} s at {whole['rate_Hz']:g} Hz; {whole['senses']} senses."
+    yield from map(sentence, whole["outputs"])
     yield from _lateness(whole)
     yield from _hits(whole)
     for one in whole["supply"]:
         yield f"Supply at {one['driver']}: {one['lowest_kPa']:.0f} kPa at its lowest."
     yield from drift_sentences(whole["drift"])
-    if not whole["faults"]:
+    if not whole["faults"] and whole["ended"] in HOW and whole["ended"] != "fault":
         yield "No faults."
-    for one in whole["faults"]:
-        code = f" {one['code']}" if one["code"] else ""
+    yield from _went_wrong(whole["faults"])
+
+
+def _at(place: str) -> str:
+    return place if place.startswith("after ") else f"at {place}"
+
+
+def _went_wrong(faults: list[dict[str, Any]]) -> Iterator[str]:
+    """A line for each thing that went wrong; what came again and again is one, with its first place and its last."""
+    alike: dict[tuple[Any, ...], list[str]] = {}
+    for one in faults:
+        alike.setdefault((one["kind"], one["code"], one["of"], one["say"]), []).append(one["place"] or "an unknown place")
+    for (kind, code, of, say), places in alike.items():
+        where = f"At {places[0]}" if places[0] == places[-1] else f"From {places[0]} to {places[-1]}"
+        where += f", {len(places)} times" if len(places) > 1 else ""
         yield (
-            f"At {one['place'] or 'an unknown place'}: {one['kind']}{code}"
-            + (f", {one['of']}" if one["of"] else "")
-            + (f": {one['say']}" if one["say"] else "")
+            f"{where}: {kind}"
+            + (f" {code}" if code else "")
+            + (f", {of}" if of and not say.startswith(f"{of} ") else "")
+            + (f": {say}" if say else "")
         )
 
 

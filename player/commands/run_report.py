@@ -95,7 +95,12 @@ def sentences(told: dict[str, Any]) -> list[str]:
         f" {small(late['max'])} ms)."
     )
     if told["stalls"]:
-        lines.append(f"The host stood still {told['stalls']} times, {told['stalled_s']:.2f} s in all; the score waited for it.")
+        times = (
+            f"{told['stalls']} times, {told['stalled_s']:.2f} s in all"
+            if told["stalls"] > 1
+            else f"for {told['stalled_s']:.2f} s"
+        )
+        lines.append(f"The host stood still {times}; the score waited for it.")
     error = told["largest_error"]
     if error is not None:
         lines.append(

@@ -13,6 +13,9 @@ from player.commands.terminal import is_screen
 PARTS = 1000
 """Of the work, as the bar on a terminal counts them."""
 
+MOST = 20.0
+"""Per cent of the stroke: no greater tolerance is taken."""
+
 
 @click.command("take")
 @click.argument("take", metavar="TAKE", type=click.Path(path_type=str))
@@ -46,8 +49,8 @@ def command(
     from player.takes.cores import Cores
     from player.takes.making import make_score
 
-    if not 0.01 <= tolerance <= 20.0:
-        raise fault("--tolerance", f"{tolerance:g} %", "0.01 to 20 per cent of the stroke")
+    if not 0.01 <= tolerance <= MOST:
+        raise fault("--tolerance", f"{tolerance:g} %", f"0.01 to {MOST:g} per cent of the stroke")
     if tempo is not None and not 1.0 <= tempo <= 1000.0:
         raise fault("--tempo", f"{tempo:g} counts a minute", "1 to 1000")
     if at is not None and onto is None:
@@ -80,6 +83,7 @@ def command(
                     "take": take, "score": out, "ok": good, "complete": made.complete, "left_bytes": made.left_bytes,
                     "until_s": made.until_s, "fibers": made.fibers, "phrases": made.phrases, "knots": made.knots,
                     "worst": made.worst, "worst_fiber": made.worst_fiber, "late": made.late, "taken_over": made.fell,
+                    "stepped": made.stepped,
                     "snags": [report.snag_as_json(snag, teller) for snag in made.checked.snags],
                 },
                 allow_nan=False,
@@ -98,6 +102,11 @@ def command(
         f"{out}: written; {made.fibers} fibers in {made.phrases} phrases of {made.knots} moves and holds, "
         f"within {made.worst * 100.0:.2f} % of the stroke of what was played ({made.worst_fiber})"
     )
+    if made.stepped is not None and tolerance / 100.0 < made.stepped <= MOST / 100.0:
+        click.echo(
+            "many moves are quick and short, as a control that sends a few values a second makes them: "
+            f"--tolerance {made.stepped * 100.0:.0f} writes the curve through its steps"
+        )
     if not made.checked.ok:
         click.echo(report.as_text(out, made.checked, teller))
     return 0 if good else 1

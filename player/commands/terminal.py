@@ -4,6 +4,7 @@ import contextlib
 import os
 import select
 import sys
+import textwrap
 from collections.abc import Iterator
 
 
@@ -13,6 +14,14 @@ def is_terminal(stream: object) -> bool:
         return stream is not None and os.isatty(stream.fileno())
     except (OSError, ValueError, AttributeError):
         return False
+
+
+def folded(line: str, stream: object) -> str:
+    """A line for a stream; on a terminal that it is too long for it is broken between words."""
+    if not is_terminal(stream):
+        return line
+    width = os.get_terminal_size(stream.fileno()).columns
+    return line if len(line) <= width else textwrap.fill(line, max(width, 20), break_long_words=False, break_on_hyphens=False)
 
 
 def in_foreground() -> bool:

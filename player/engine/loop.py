@@ -335,9 +335,8 @@ class Engine:
 
     def status(self, late_s: float = 0.0) -> Status:
         """A snapshot; what was new to tell is told once."""
-        return status_of(
-            self.safety.state, self.source, self.boards.links, self.lateness, self._moving, late_s, self._account.news()
-        )
+        moving = self._moving if self.safety.state in ("playing", "paused", "resting") else 0
+        return status_of(self.safety.state, self.source, self.boards.links, self.lateness, moving, late_s, self._account.news())
 
     def _end(self, began: float) -> None:
         if self._diary.broken:

@@ -80,7 +80,8 @@ class Sensing:
 
     def _said(self, one: Raised, share: float, low: Array, high: Array, where: dict[int, int]) -> str:
         row, number = ALARMS[one.name], where[one.fiber]
-        wanted = f"{100 * low[number]:.0f} to {100 * high[number]:.0f} %"
+        least, most = f"{100 * low[number]:.0f}", f"{100 * high[number]:.0f}"
+        wanted = f"{most} %" if least == most else f"{least} to {most} %"
         return (
             f"{self._names[one.fiber]} {row.says}: sensed at {100 * share:.0f} % of its stroke, wanted at {wanted}; {row.hint}"
         )

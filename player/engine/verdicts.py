@@ -14,6 +14,9 @@ LOOK = {
 }
 """What the operator is to do about a line, by the kind of event."""
 
+CAME_TO = {"fault": "has failed", "vented": "has vented", "idle": "has disarmed"}
+"""What has become of a board, by what it says that it is."""
+
 UNKNOWN = ("a fault not known here", "fault", "the board tells of a fault of its own", "look it up in the board's manual")
 
 
@@ -32,7 +35,8 @@ def verdict(event: Event, state: str) -> tuple[str, str]:
         return means, f"{event.driver}: {sentence}" + (f" ({event.say})" if event.say else "") + f"; {look}"
     if event.kind == "state" and state in RUNNING and event.status != "armed":
         why = f": {event.say}" if event.say else ""
-        return "fault", f"{event.driver}: the board is {event.status} in mid-run{why}; look at its power and line"
+        came_to = CAME_TO.get(event.status, f"is {event.status}")
+        return "fault", f"{event.driver}: the board {came_to} in mid-run{why}; look at its power and line"
     if event.kind == "note":
         return "tell", said
     return "", ""

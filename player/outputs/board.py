@@ -15,7 +15,7 @@ from player.outputs.serial_ports import ports_found
 from player.wire import link
 from player.wire.host import Host
 from player.wire.line import highest_rate, line_load, line_room, set_frames
-from player.wire.messages import RIG_MISMATCH, SENSES_STRAIN
+from player.wire.messages import QUEUE_FULL, RIG_MISMATCH, SENSES_STRAIN
 from player.wire.quality import Quality
 from player.wire.values import SHUT, clip, is_valve, to_wire
 
@@ -68,7 +68,7 @@ class Board:
         self._share = np.full(len(self._fibers), np.nan)
         self._why = ""
         self._supply_kPa: float | None = None
-        self._sets = 0
+        self._sets = self._dropped = 0
         self._quality = Quality()
 
     def open(self) -> None:
@@ -242,6 +242,7 @@ class Board:
         counted = {
             "sets": self._sets,
             "skipped": host.skipped,
+            "dropped_at_board": self._dropped,
             "late_at_board": host.late,
             "bad_at_board": host.bad,
             "unreadable": host.unreadable,
@@ -275,6 +276,7 @@ class Board:
             self._why = told.why
             return [Event("state", driver, told.why, status=STATUS.get(told.now, told.now))]
         if isinstance(told, link.Trouble):
+            self._dropped += told.code == QUEUE_FULL
             where = "" if told.channel is None else f"channel {told.channel}"
             return [Event("fault", driver, ", ".join(part for part in (where, told.text) if part), code=told.code)]
         if isinstance(told, link.Silent):

@@ -27,6 +27,7 @@ from player.takes.form import Take
 from player.takes.laying import Laying
 from player.takes.places import UNIT
 from player.takes.settling import Settled, settle
+from player.takes.steps import tolerance_for_steps
 from player.takes.writing import Written, place_text, score_text, within_bounds, write
 
 Array = NDArray[np.float64]
@@ -44,6 +45,7 @@ class Made:
     worst, worst_fiber: share of stroke by which the score is off what was played at worst, and whose
     late: names of fibers that were not where the score has them as the take begins
     fell: lines of the score beneath that the take has taken over from; left_bytes: of the take, no whole record
+    stepped: where it was played in steps, the tolerance, a share of stroke, that would write them as a curve
     """
 
     text: str
@@ -57,6 +59,7 @@ class Made:
     worst_fiber: str
     late: tuple[str, ...]
     fell: tuple[int, ...]
+    stepped: float | None
     complete: bool
     left_bytes: int
 
@@ -213,6 +216,7 @@ def _made(
         worst_fiber=rig.fibers[whose].name,
         late=tuple(rig.fibers[int(f)].name for f in settled.late),
         fell=fell,
+        stepped=tolerance_for_steps(settled.paths),
         complete=take.complete,
         left_bytes=take.left_bytes,
     )

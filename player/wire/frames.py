@@ -80,15 +80,21 @@ class FrameReader:
     """Bytes in, payloads out; what is no frame is dropped and counted, and the next 0x00 begins anew.
 
     bad: frames dropped since the start: not COBS, too short, too long, CRC wrong. A second 0x00 in a row is no frame.
+    rests: what was dropped uncounted, see `begin_amid`
     Never keeps more than one frame's bytes.
     """
 
-    __slots__ = ("_kept", "_too_long", "bad")
+    __slots__ = ("_amid", "_kept", "_too_long", "bad", "rests")
 
     def __init__(self) -> None:
-        self.bad = 0
+        self.bad = self.rests = 0
         self._kept = bytearray()
-        self._too_long = False
+        self._too_long = self._amid = False
+
+    def begin_amid(self) -> None:
+        """A line is listened to from now on, perhaps from the midst of a frame: what is left of that is dropped, uncounted."""
+        self._kept.clear()
+        self._too_long, self._amid = False, True
 
     def feed(self, data: bytes) -> list[bytes]:
         """Take bytes as they came, in pieces of any size; returns the payloads (type, seq, body) that they complete."""
@@ -111,15 +117,21 @@ class FrameReader:
             if place == last:
                 break
             if self._too_long:
-                self.bad += 1
+                self._drop()
             elif self._kept:
                 payload = _opened(bytes(self._kept))
                 if payload is None:
-                    self.bad += 1
+                    self._drop()
                 else:
                     yield payload
             self._kept.clear()
-            self._too_long = False
+            self._too_long = self._amid = False
+
+    def _drop(self) -> None:
+        if self._amid:
+            self.rests += 1
+        else:
+            self.bad += 1
 
 
 def _opened(stuffed: bytes) -> bytes | None:

@@ -43,6 +43,8 @@ class Host(Talk):
         self._out.clear()
         self._flying.clear()
         self._pings.clear()
+        # A board that went on talking to nobody is heard from the midst of a frame on.
+        self._reader.begin_amid()
         self.clock.forget()
         self.board = self.status = self.trouble = self._base = self._newest_us = None
         self.heard_s, self._silent, self._next_ping_s = now_s, False, now_s

@@ -136,8 +136,9 @@ class Talk:
     def _hint(self) -> str:
         if self.echoes:
             return f"; the line sends back what it is sent ({self.echoes} frames)"
-        if self.unreadable:
-            return f"; {self.unreadable} frames could not be read: is the baud rate that of the board?"
+        garbled = self.unreadable + self._reader.rests
+        if garbled:
+            return f"; {garbled} frames could not be read: is the baud rate that of the board?"
         return ""
 
     def _take(self) -> list[Event]:

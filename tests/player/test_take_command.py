@@ -1,6 +1,7 @@
 """`drawcord take`, as it is called."""
 
 import json
+import re
 
 import numpy as np
 import pytest
@@ -37,11 +38,12 @@ def folder(tmp_path, monkeypatch, rig_text):
     return tmp_path
 
 
-def play(folder, name="a.take", seconds=12.0, fibers=(0, 1, 2, 3), onto=None, from_s=0.0):
-    """Record a take of a hand on some fibers, the others as a score has them; returns times and strains (F, T)."""
+def play(folder, name="a.take", seconds=12.0, fibers=(0, 1, 2, 3), onto=None, from_s=0.0, every_s=0.005):
+    """Record a take of a hand on some fibers, a value `every_s`, others as a score has them; returns times, strains (F, T)."""
     rig = load_rig("bench.rig.toml")
     abilities = abilities_of(rig)
     one = hand(seconds, 6, rest_s=1.0)
+    one = one[np.arange(len(one)) // round(every_s / 0.005) * round(every_s / 0.005)]
     times = np.arange(len(one)) * 0.005
     wanted = np.zeros((4, len(one)))
     if onto is not None:
@@ -69,6 +71,7 @@ def test_a_take_becomes_a_score_that_checks_clean_and_plays_back_alike(folder, c
     times, let = play(folder)
     assert run(["take", "a.take", "-o", "a.score", "--tempo", "90", "--json"]) == 0
     told = json.loads(capsys.readouterr().out)
+    assert told["stepped"] is None
     assert (told["ok"], told["complete"], told["fibers"], told["snags"]) == (True, True, 4, [])
     assert off("a.score", times, let) <= 0.01 + 1e-6
     assert run(["check", "a.score"]) == 0
@@ -84,6 +87,16 @@ def test_a_greater_tolerance_takes_fewer_moves(folder, capsys):
         knots.append(json.loads(capsys.readouterr().out)["knots"])
         assert off("a.score", times, let) <= float(percent) / 100.0 + 1e-6
     assert knots[0] > knots[1] > knots[2]
+
+
+def test_a_control_that_sends_a_few_values_a_second_is_told_the_tolerance_that_makes_a_curve_of_its_steps(folder, capsys):
+    play(folder, every_s=0.2)
+    assert run(["take", "a.take", "-o", "a.score"]) == 0
+    said = re.search(r"--tolerance (\d+) writes the curve through its steps", capsys.readouterr().out)
+    stairs = len((folder / "a.score").read_text().splitlines())
+    assert run(["take", "a.take", "-o", "a.score", "--tolerance", said[1]]) == 0
+    assert "--tolerance" not in capsys.readouterr().out
+    assert len((folder / "a.score").read_text().splitlines()) < stairs / 2
 
 
 def test_a_take_that_was_cut_off_is_written_up_to_there(folder, capsys):

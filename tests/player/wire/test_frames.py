@@ -126,3 +126,12 @@ def test_zeros_between_frames_are_no_bad_frames():
 @given(st.binary(max_size=2048))
 def test_a_frame_is_never_longer_than_its_length_says(body):
     assert len(frame(b"\x04\x01" + body)) <= frame_length(len(body))
+
+
+def test_the_rest_of_a_frame_in_whose_midst_listening_began_is_dropped_uncounted_and_the_next_is_read():
+    whole = frame(b"\x01\x02\x03")
+    for cut in range(1, len(whole)):
+        reader = FrameReader()
+        reader.begin_amid()
+        assert reader.feed(whole[cut:] + whole) == [b"\x01\x02\x03"] and reader.bad == 0
+        assert reader.feed(whole[1:]) == [] and reader.bad == 1
