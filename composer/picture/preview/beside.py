@@ -1,6 +1,7 @@
 """The process beside the preview window: one job at a time, its messages on the window's own thread, ended when asked."""
 
 import multiprocessing
+import os
 import sys
 import threading
 from collections.abc import Callable
@@ -10,9 +11,14 @@ from typing import Any
 
 from PySide6.QtCore import QObject, Signal
 
+NICENESS = 5
+
 
 def _work(to_window: Connection, job: Callable[..., None], given: tuple[Any, ...]) -> None:
     """Do a job in the process; a window that has gone ends it, and what goes wrong is told by the exit code alone."""
+    # Windows, and a run that plays meanwhile, have their turn first; some systems have no such thing.
+    with suppress(AttributeError, OSError):
+        os.nice(NICENESS)
     try:
         job(*given, to_window.send)
     except BaseException:
