@@ -23,9 +23,10 @@ from composer.limits.quivering import shaken
 from composer.limits.snag import Snag
 from composer.limits.stretches import line_of
 from composer.limits.swings import strain_of
+from composer.limits.tables import travel_time_s
 from composer.rig.model import Rig
 from composer.shapes import NAMES
-from composer.tracks import SUDDEN, Tracks
+from composer.tracks import SAME_INSTANT_S, STEP, SUDDEN, Tracks
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -62,7 +63,7 @@ class Use:
     """What the supply goes through: lowest pressure in kPa gauge, litres of free air in all, the spans that overdraw it.
 
     spans: (from_s, to_s, drawn_L, bears_L) each, in order of time; full_s: instants laid out at which the receiver is full
-    asked: the air drawn, for pictures
+    asked: the air drawn, for pictures; alone: segments that overdraw the receiver by themselves, as `too_much_at_once`
 
     Of dips that differ by less than twice what the chords stray (`Demand.strays_L`) the lowest may be that of another.
     """
@@ -72,6 +73,7 @@ class Use:
     spans: tuple[tuple[float, float, float, float], ...]
     full_s: Array = field(compare=False, repr=False)
     asked: Demand = field(compare=False, repr=False)
+    alone: Index = field(compare=False, repr=False)
 
 
 def store_L(supply: Supply) -> float:
@@ -159,7 +161,27 @@ def use(tracks: Tracks, supply: Supply, abilities: Abilities) -> Use:
             bears = store + refill * (to_s - from_s)
             spans.append((from_s, to_s, short - store + bears, bears))
     lowest = supply.max_receiver_kPa - missing * FREE_AIR_KPA / supply.receiver_L
-    return Use(max(lowest, 0.0), float(fills.litres.sum()), tuple(spans), asked.time_s[now.missing <= 0.0], asked)
+    alone = too_much_at_once(tracks, fills, supply, abilities) if spans else np.empty(0, dtype=np.int64)
+    full_s = asked.time_s[now.missing <= 0.0]
+    return Use(max(lowest, 0.0), float(fills.litres.sum()), tuple(spans), full_s, asked, alone)
+
+
+def too_much_at_once(tracks: Tracks, fills: Fills, supply: Supply, abilities: Abilities) -> Index:
+    """The sudden moves and jumps, as segments, that no other times help: those that land together draw more than a full
+    receiver bears, and they land together whenever it is."""
+    mine = np.flatnonzero(np.isin(tracks.manner[fills.segment], (SUDDEN, STEP)))
+    if not len(mine):
+        return mine
+    mine = mine[np.argsort(tracks.time_s[fills.segment[mine] + 1], kind="stable")]
+    segment, fiber, litres = fills.segment[mine], fills.fiber[mine], fills.litres[mine]
+    curve = tracks.curve[segment]
+    lasts = travel_time_s(abilities, fiber, curve[:, 0], curve.sum(axis=1))
+    lasts[tracks.manner[segment] == STEP] = 0.0
+    together = np.cumsum(np.diff(tracks.time_s[segment + 1], prepend=-1.0) > SAME_INSTANT_S) - 1
+    longest = np.zeros(together[-1] + 1)
+    np.maximum.at(longest, together, lasts)
+    over = np.bincount(together, weights=litres) - refill_L_s(supply) * longest > store_L(supply) * (1.0 + TOLERANCE)
+    return np.sort(segment[over[together]])
 
 
 class _Exact:
@@ -227,7 +249,7 @@ def snags(tracks: Tracks, rig: Rig, abilities: Abilities) -> list[Snag]:
     """The spans that ask for too much air, the deepest of each stretch in which the receiver is not full again.
 
     From and to are the span; needs the litres drawn in it, has the store and what the compressor delivers over it; the line
-    is the one that draws the most.
+    is the one that draws the most. Where what is sudden draws too much at once one such move is the knot: no times mend it.
     """
     return snags_of(use(tracks, rig.supply, abilities), tracks, abilities)
 
@@ -239,9 +261,12 @@ def snags_of(used: Use, tracks: Tracks, abilities: Abilities) -> list[Snag]:
     fills = fills_of(tracks, abilities)
     found = []
     for from_s, to_s, asked, bears in used.spans:
-        knot = blame(tracks, fills, from_s, to_s)
+        begin = tracks.time_s[used.alone]
+        within = used.alone[(begin < to_s) & (begin >= from_s - SAME_INSTANT_S)]
+        alone = int(within[0]) if len(within) else -1
+        knot = alone if alone >= 0 else blame(tracks, fills, from_s, to_s)
         line = line_of(tracks, knot) if knot >= 0 else 0
-        found.append(Snag("air", None, from_s, to_s, asked, bears, "L", -1, line))
+        found.append(Snag("air", None, from_s, to_s, asked, bears, "L", alone, line, alone < 0))
     return found
 
 

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from composer.limits.air import store_L
 from composer.limits.snag import Snag
 from composer.quivers import Quivers
 from composer.rig.model import Rig
@@ -333,6 +334,16 @@ def _air(snag: Snag, teller: Teller, who: _Who) -> Told:
     )
     rho = teller.rig.supply.compressor_L_min / 60.0
     over = snag.needs - snag.has
+    if snag.knot >= 0:
+        lands = _at(teller, float(teller.tracks.time_s[snag.knot + 1]))
+        holds = _down(store_L(teller.rig.supply))
+        return Told(
+            says,
+            f"Let what lands suddenly at {lands} take its time, or go less far: it draws more at once than the {holds} L of a "
+            "full receiver, so no amount of time mends it.",
+        )
+    if not snag.mends:
+        return Told(says, f"Ask for {enough(over)} L less within that span; no other times of these moves mend it.")
     spread = f"Spread it over {enough(over / rho)} s more, or ask" if rho > 0.0 else "Ask"
     return Told(says, f"{spread} for {enough(over)} L less.")
 

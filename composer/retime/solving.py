@@ -6,6 +6,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from composer.limits.abilities import Abilities
+from composer.limits.air import too_much_at_once
+from composer.limits.fills import fills_of
 from composer.retime.air_cuts import Span, overdrawn, plainly_enough, share_rows, whole_rows
 from composer.retime.air_search import Found, better
 from composer.retime.air_windows import by_windows
@@ -137,6 +139,9 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
     events = stage.events
     rows, given_up, no_air = stage.rows, 0, False
     hopeless: list[Hopeless] = []
+    # Beside what draws too much by itself all that is short of air would be moved in vain.
+    if len(too_much_at_once(stage.tracks, fills_of(stage.tracks, abilities), rig.supply, abilities)):
+        no_air, hopeless = True, [(AIR_ROW, -1)]
     air: set[tuple[int, int]] = set()
     least, spans, full_s, parts = None, [], np.empty(0), Parts()
     # Below what was proven before a wait that had been opened was held to its coil: it might have stayed shut instead.

@@ -122,3 +122,16 @@ def test_a_receiver_emptied_tick_by_tick_falls_as_low(make_rig, make_tracks, mak
         assert bool(found.spans) == (missing > 0.5)
     if found.spans:
         assert max(asked - bears for _, _, asked, bears in found.spans) == pytest.approx(missing - 0.5, abs=tick)
+
+
+@pytest.mark.parametrize("together", [True, False])
+def test_only_what_lands_suddenly_together_and_draws_more_than_a_full_receiver_is_past_mending_by_time(
+    make_rig, make_tracks, together
+):
+    # Two sudden fills of 30 mL and 52.5 mL in the receiver: too much at once, enough where they are far enough apart.
+    rig = make_rig(2, air_mL=30.0, receiver_L=0.015, compressor_L_min=0.06)
+    waits = (1.5, 1.5 if together else 3.5)
+    tracks = make_tracks(*([(wait, 0.0, "hold"), (0.5, 0.3, "sudden")] for wait in waits), duration_s=5.0)
+    (snag,) = snags(tracks, rig, abilities_of(rig))
+    assert snag.mends is not together
+    assert (snag.knot == 1) is together

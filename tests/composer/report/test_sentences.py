@@ -9,7 +9,7 @@ from composer.limits.abilities import abilities_of
 from composer.limits.check import check
 from composer.limits.snag import Snag
 from composer.quivers import Quivers
-from composer.report.sentences import Teller, listed, named, place_in_words, tell, two
+from composer.report.sentences import Teller, enough, listed, named, place_in_words, tell, two
 from composer.shapes import NAMES, PROGRESS
 from composer.tracks import HOLD, MOVE, STEP, SUDDEN, Tracks
 
@@ -114,6 +114,24 @@ def test_every_other_kind_has_its_sentence(make_rig):
         "The fibers draw 9.00 L of free air from bar 1 count 1 to bar 1 count 3; receiver and compressor have 5.50 L for it."
     )
     assert said["air"].mends == "Spread it over 3.50 s more, or ask for 3.50 L less."
+    assert said["duty"].mends == "Let it rest 1.00 s more inside that span, or begin 2.00 s later, or end that much earlier."
+
+
+@pytest.mark.parametrize("moves", [
+    ((3.0, 0.15, "linear"), (1.0, 0.15, "hold"), (2.0, 0.3, "linear")),
+    ((2.0, 0.0, "hold"), (4.0, 0.3, "linear")),
+    ((4.0, 0.3, "linear"),),
+])  # fmt: skip
+def test_a_coil_that_is_on_too_long_is_in_order_after_each_thing_that_its_mend_names(make_rig, moves):
+    # On for 6 s where 5 s are borne: 1 s of rest inside, or 2 s less at an end, which shortens the span as well.
+    rig = make_rig(1, duty=0.5, duty_burst_s=2.0)
+    assert not any(snag.kind == "duty" for snag in check(_track(*moves), rig, abilities_of(rig)).snags)
+
+
+@pytest.mark.parametrize("needed", [0.405, 0.4, 0.0021, 1.001, 3.5, 0.12345, 2e-6])
+def test_what_is_said_to_be_enough_is_enough_and_little_more(needed):
+    said = float(enough(needed))
+    assert needed * (1.0 - 2e-6) <= said <= (needed + 0.0101 if needed >= 0.0995 else 1.11 * needed)
 
 
 def test_below_rest_is_told_as_below_rest(make_rig):
@@ -214,3 +232,16 @@ def test_a_quiver_too_abrupt_is_told_how_small_or_how_slow_it_may_be(make_rig):
     assert _told(rig, _quivering(0.01, 4.0), "accel").mends.startswith("Make the quiver 0.395 as wide, or 0.629 as fast")
     for amplitude, hertz in ((0.00395, 4.0), (0.01, 4.0 * 0.629)):
         assert check(_quivering(amplitude, hertz), rig, abilities_of(rig)).ok
+
+
+def test_what_draws_too_much_at_once_is_told_to_take_its_time_and_a_span_past_mending_is_told_to_ask_for_less(make_rig):
+    rig, tracks = make_rig(1, air_mL=9000.0, receiver_L=1.0, compressor_L_min=60.0), _track((0.5, 0.3, "sudden"))
+    told = _told(rig, tracks, "air")
+    assert told.mends == (
+        "Let what lands suddenly at bar 1 count 1.5 take its time, or go less far: it draws more at once than the 3.5 L of "
+        "a full receiver, so no amount of time mends it."
+    )
+    smooth = make_rig(1, air_mL=9000.0, receiver_L=1.0, compressor_L_min=60.0), _track((2.0, 0.3, "linear"))
+    snag = next(snag for snag in check(smooth[1], smooth[0], abilities_of(smooth[0])).snags if snag.kind == "air")
+    teller = Teller(smooth[1], smooth[0], _say)
+    assert tell(replace(snag, mends=False), teller).mends.startswith("Ask for 3.50 L less within that span; no other times")

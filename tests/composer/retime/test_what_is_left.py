@@ -71,3 +71,13 @@ def test_seed_367_is_a_hold_that_no_times_keep_and_all_else_of_it_is_mended(make
     (left,) = check(found.tracks, rig, abilities_of(rig)).snags
     assert (left.kind, found.mends(left)) == ("hold", False)
     assert [one.kind for one in found.hopeless] == ["hold"]
+
+
+def test_beside_what_draws_too_much_at_once_nothing_is_moved_in_vain_for_the_air(make_rig):
+    rig = make_rig(2, air_mL=30.0, receiver_L=0.015, compressor_L_min=0.06)
+    tracks = tracks_of([[(0.0, None, "hold"), (1.5, 0.3, "sudden"), (2.0, None, "end")]] * 2, 5.0)
+    abilities = abilities_of(rig)
+    found = retime(tracks, abilities, rig, np.empty(0))
+    (snag,) = check(found.tracks, rig, abilities).snags
+    assert found.cost == 0.0
+    assert (snag.kind, found.mends(snag)) == ("air", False)
