@@ -29,7 +29,7 @@ class Between:
             self.notices.say("worker", message.says, kind="fault")
 
     def _say_doing(self, what: str) -> None:
-        if what:
+        if what and not self._last_wrong:
             run = self.showing.known.run
             share = f" {100 * run.share:.0f} %" if what == "simulating" and run is not None else ""
             self.foot.say("word", f"{what}{share} …")

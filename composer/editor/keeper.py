@@ -40,6 +40,11 @@ class Keeper(QObject):
         """The file of recovery."""
         return self._path
 
+    @property
+    def keeps(self) -> bool:
+        """Whether every change is kept as it is made."""
+        return not self._broken
+
     def begin(self, path: str, of: str, saved: str, text: str) -> bool:
         """Keep a text there from now on; False where another process does, and it is kept with the program instead."""
         self.end(remove=True)

@@ -22,7 +22,8 @@ class Manners:
         modified = self.session.modified
         self.setWindowTitle(f"{self.session.name}{' (not saved)' if modified else ''} - Drawcord")
         unnamed = self.session.path is None
-        self.foot.say("saved", "not saved; kept" if modified else "no name yet" if unnamed else "saved")
+        kept = "not saved; kept" if self.session.keeper.keeps else "neither saved nor kept"
+        self.foot.say("saved", kept if modified else "no name yet" if unnamed else "saved")
 
     def _letters_wanted(self, way: int) -> None:
         self._text_scale = min(max(self._text_scale * 1.1**way, 0.5), 4.0)

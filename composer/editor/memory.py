@@ -1,6 +1,7 @@
 """Memory that is free, given back to the system: what a large score needed for a moment is not kept for good."""
 
 import ctypes
+import gc
 from functools import lru_cache
 from typing import Any
 
@@ -12,6 +13,21 @@ def _trim() -> Any:
     except (AttributeError, OSError, TypeError):
         # Other C libraries than glibc's do this by themselves, or not at all.
         return None
+
+
+class Tidy:
+    """Looks for garbage when there is nothing else to do, not in the middle of what somebody waits for."""
+
+    def __init__(self) -> None:
+        self._settled = False
+
+    def at_rest(self) -> None:
+        """There is time. What is there at the first rest stays, and is not looked through again."""
+        gc.collect()
+        if not self._settled:
+            self._settled = True
+            gc.freeze()
+            gc.disable()
 
 
 def give_back() -> None:

@@ -69,6 +69,8 @@ class Session(QObject):
         self.keeper = Keeper(later, lambda: pane.text, self)
         self.keeper.failed.connect(lambda says: notices.say("keeping", says, kind="fault"))
         self.keeper.mended.connect(lambda: notices.drop("keeping"))
+        for told in (self.keeper.failed, self.keeper.mended):
+            told.connect(lambda *_: self.named.emit())
         pane.changed.connect(self._changed)
         self._timer = QTimer(self)
         self._timer.setInterval(LOOK_MS)

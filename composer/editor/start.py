@@ -1,10 +1,11 @@
 """Starting the compose window: the workers first, so that they load while the window comes up."""
 
+import gc
 import os
 import signal
 import sys
 
-from PySide6.QtCore import QTimer
+from PySide6.QtCore import Qt, QTimer
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtWidgets import QApplication
 
@@ -31,6 +32,8 @@ def open_window(path: str | None) -> "object":
     from composer.editor.window import ComposeWindow
 
     window = ComposeWindow(crew)
+    # What is there once the first picture is up stays as long as the window: no later look for garbage goes through it again.
+    window.showing.redrawn.connect(lambda: gc.freeze(), Qt.ConnectionType.SingleShotConnection)
     if path is not None and not os.path.lexists(path):
         window.session.begin_at(path)
     elif path is None or not window.session.open(path):

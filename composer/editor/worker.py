@@ -14,7 +14,7 @@ from typing import Any, BinaryIO
 
 from composer.editor import framing
 from composer.editor.desk import SOLVER, Desk, own_fault
-from composer.editor.memory import give_back
+from composer.editor.memory import Tidy, give_back
 from composer.editor.messages import Again, Ask, Changed, Failed, Whole
 
 NICE = 5
@@ -36,7 +36,7 @@ def serve(role: str, into: BinaryIO, out: BinaryIO) -> None:
 
     threading.Thread(target=listen, daemon=True).start()
     desk = Desk(role, lambda message: framing.write(out, message), lambda: waiting.texts > 0, time.perf_counter)
-    busy = False
+    busy, tidy = False, Tidy()
     while True:
         try:
             message = heard.get(block=not busy)
@@ -56,6 +56,8 @@ def serve(role: str, into: BinaryIO, out: BinaryIO) -> None:
             busy = desk.work()
             if time.perf_counter() - began > LONG_S:
                 give_back()
+            if not busy:
+                tidy.at_rest()
         except OSError:
             return
         except Exception as error:

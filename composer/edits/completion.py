@@ -320,7 +320,7 @@ def _signatures(place: _Place, _: str) -> Iterator[_Bare]:
         yield text, f"{text.partition('/')[0]} counts in a bar", "number", ""
 
 
-ENDINGS = {"rig": (".rig.toml", "the rig file"), "use": (".score", "the score")}
+ENDINGS = {"rig": (".rig.toml", "a rig file"), "use": (".score", "a score")}
 """What the files that a statement names end in, and what they are called."""
 
 
@@ -334,7 +334,7 @@ def _paths(place: _Place, _: str) -> Iterator[_Bare]:
     for path in place.paths(place.typed.removeprefix('"'), ending) if ending else ():
         # A path with a blank in it stands in quotes.
         quote = '"' if quoted or any(c in path for c in ' "#') else ""
-        says = f"folder {path}" if path.endswith("/") else f"{what} {path}"
+        says = "a folder" if path.endswith("/") else what
         yield (
             f"{quote}{path}{quote if not path.endswith('/') else ''}",
             says,

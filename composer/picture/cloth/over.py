@@ -28,6 +28,9 @@ HIT_FROM = 9
 MOST_MARKS = 4000
 """Marks of one kind drawn in one frame at most; beyond that, those that share pixels are drawn once."""
 
+HEAD_PX = 5
+"""Half the width of the play head's foot, at scale 1: nothing of a head lies further from its instant."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Shown:
@@ -336,7 +339,7 @@ def head(painter: QPainter, view: View, at_s: float) -> None:
     look, plan = view.look, view.plan
     if not view.from_s <= at_s <= view.to_s:
         return
-    x, size = view.x_of(at_s), look.px(5)
+    x, size = view.x_of(at_s), look.px(HEAD_PX)
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     painter.setPen(pen(look.theme.ground, look.px(4), 160))
     painter.drawLine(QPointF(x, plan.strip_top), QPointF(x, view.lanes_top + view.lanes_height))

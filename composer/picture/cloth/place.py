@@ -36,6 +36,7 @@ class ClothPlace(QWidget):
         for bar, name in ((self._along, "scroll in time"), (self._across, "scroll in threads")):
             bar.setAccessibleName(name)
             bar.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+            bar.hide()
             bar.valueChanged.connect(self._scrolled)
         self._style_bars()
 

@@ -1,5 +1,6 @@
 """The living cloth as it is shown: what it holds, and how a frame is drawn."""
 
+import math
 from collections.abc import Sequence
 from dataclasses import replace
 
@@ -69,6 +70,8 @@ class ClothShow(ClothPlace):
         before, self._weave = self._weave, weave
         if weave is None:
             self._shown = self._view = None
+            for bar in (self._along, self._across):
+                bar.hide()
             self.setAccessibleDescription(NOTHING)
             self._redraw()
             return
@@ -161,11 +164,20 @@ class ClothShow(ClothPlace):
 
     def set_head(self, at_s: float, follow: bool = False) -> None:
         """Put the play head at an instant, without `head_moved`; `follow` turns the page when it leaves the window."""
+        self._update_head()
         self._head_s = min(max(at_s, 0.0), self._weave.to_s if self._weave else 0.0)
         if follow and not self._from_s <= self._head_s <= self._to_s:
             length = self._to_s - self._from_s
             self.show_stretch(self._head_s - 0.05 * length, self._head_s + 0.95 * length)
-        self.update()
+        self._update_head()
+
+    def _update_head(self) -> None:
+        """Draw anew what lies under the head: of a large window a small part."""
+        view, scale = self._current(), self.devicePixelRatioF()
+        if view is not None:
+            half = over.HEAD_PX * view.look.scale + 2.0
+            left = math.floor((view.x_of(self._head_s) - half) / scale)
+            self.update(left, 0, math.ceil(2.0 * half / scale) + 1, self.height())
 
     @property
     def complete(self) -> bool:
