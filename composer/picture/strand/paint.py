@@ -93,8 +93,8 @@ def nothing(painter: QPainter, box: QRect, theme: Theme, words: str) -> None:
     Look(1.0, theme).write(painter, QRectF(box), words, 13, theme.quiet_ink, CENTRE)
 
 
-def paint(painter: QPainter, at: Face, strand: Strand, head_s: float, chosen: int) -> None:
-    """Draw a strand with its axes."""
+def paint(painter: QPainter, at: Face, strand: Strand, chosen: int) -> None:
+    """Draw a strand with its axes: all but what moves over it."""
     look, box = at.look, at.box
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     _axes(painter, at, strand)
@@ -117,7 +117,6 @@ def paint(painter: QPainter, at: Face, strand: Strand, head_s: float, chosen: in
     _knots(painter, at, strand, chosen)
     _words(painter, at, strand)
     painter.restore()
-    _head(painter, at, head_s)
 
 
 def _axes(painter: QPainter, at: Face, strand: Strand) -> None:
@@ -250,7 +249,9 @@ def _knots(painter: QPainter, at: Face, strand: Strand, chosen: int) -> None:
         rhomb(painter, place, look.px(7), look.theme.chosen, look.theme.ground, look.px(2))
 
 
-def _head(painter: QPainter, at: Face, head_s: float) -> None:
+def head(painter: QPainter, at: Face, head_s: float) -> None:
+    """Draw the play head."""
+    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     if at.from_s <= head_s <= at.to_s:
         x = float(at.x_of(head_s))
         painter.setPen(pen(at.look.theme.head, at.look.px(1.6)))

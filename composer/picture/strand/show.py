@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 from PySide6.QtCore import QSize, Qt, Signal
-from PySide6.QtGui import QPainter, QPaintEvent
+from PySide6.QtGui import QImage, QPainter, QPaintEvent
 from PySide6.QtWidgets import QWidget
 
 from composer.picture.axes import say_seconds
@@ -72,6 +72,9 @@ class StrandShow(QWidget):
         self._percent = False
         self._chosen = -1
         self._held: Held | None = None
+        self._still: QImage | None = None
+        self._still_of: tuple[object, ...] = ()
+        self._still_seen: tuple[object, ...] = ()
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setMouseTracking(True)
         self.setMinimumSize(320, 120)
@@ -224,7 +227,8 @@ class StrandShow(QWidget):
         else:
             painter.scale(1 / self.devicePixelRatioF(), 1 / self.devicePixelRatioF())
             held = self._held
-            strand_paint.paint(painter, face, self._strand(), self._head_s, self._chosen)
+            painter.drawImage(0, 0, self._standing(face))
+            strand_paint.head(painter, face, self._head_s)
             if self.hasFocus():
                 scale = self.devicePixelRatioF()
                 focus_frame(painter, face.look, self.width() * scale, self.height() * scale)
@@ -234,6 +238,20 @@ class StrandShow(QWidget):
                     painter, face, self._strand(), held.way, (held.was_s, held.was_strain), (held.at_s, held.strain),
                     words, self._grid, self._targets,
                 )  # fmt: skip
+
+    def _standing(self, face: Face) -> QImage:
+        """All that stands still while the head moves, drawn again when any of it is another."""
+        scale = self.devicePixelRatioF()
+        size = QSize(max(1, round(self.width() * scale)), max(1, round(self.height() * scale)))
+        of = (self._weave, self._knots, self._written, self._retimed, self._simulated, self._snags)
+        seen = (face, self._fiber, self._chosen, size)
+        if self._still is None or seen != self._still_seen or any(a is not b for a, b in zip(of, self._still_of, strict=True)):
+            self._still_of, self._still_seen = of, seen
+            self._still = QImage(size, QImage.Format.Format_RGB32)
+            self._still.fill(colour(self._theme.ground))
+            with painting(self._still) as painter:
+                strand_paint.paint(painter, face, self._strand(), self._chosen)
+        return self._still
 
     def _in_words(self, held: Held) -> str:
         assert self._weave is not None and self._fiber is not None
