@@ -51,6 +51,15 @@ class HangBeside(HangView):
             painter.scale(1.0 / ratio, 1.0 / ratio)
             painter.drawImage(0, 0, self._picture)
 
+    def _moved(self) -> None:
+        """The next picture is begun at once; the window is drawn anew when it is there, once and not twice."""
+        width, height = self._size()
+        there = self._still is not None and self._picture is not None and self._picture.size() == QSize(width, height)
+        if there and self.isVisible():
+            self._begin(width, height)
+        else:
+            self.update()
+
     def _begin(self, width: int, height: int) -> None:
         key = (id(self._wanted), id(self._sensed), self._lit, self._hovered, self._camera)
         if self._busy or key == self._key or self._still is None:

@@ -61,24 +61,27 @@ class PreflightView(QListWidget):
         return list(self._rows)
 
     def show_rows(self, rows: list[Row]) -> None:
-        """Show other rows."""
+        """Show other rows; those from the first one on that is another are made anew."""
         if rows != self._rows:
+            pairs = enumerate(zip(rows, self._rows, strict=False))
+            same = next((place for place, (one, other) in pairs if one != other), min(len(rows), len(self._rows)))
             self._rows = rows
-            self._fill()
+            self._fill(same)
 
     def set_theme(self, theme: Theme) -> None:
         """Draw in these colours."""
         self._theme = theme
         self._fill()
 
-    def _fill(self) -> None:
+    def _fill(self, same: int = 0) -> None:
         theme = self._theme
         of = {
             "ok": theme.good, "no": theme.fault, "waits": theme.quiet_ink, "caution": theme.caution, "margin": theme.ink,
             "head": theme.quiet_ink,
         }  # fmt: skip
-        self.clear()
-        for kind, text, hint in self._rows:
+        while self.count() > same:
+            self.takeItem(self.count() - 1)
+        for kind, text, hint in self._rows[same:]:
             mark = MARKS[kind]
             item = QListWidgetItem(f"{mark}  {text}" if mark else text)
             if hint:

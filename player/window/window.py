@@ -1,5 +1,6 @@
 """The rehearse window: wires its parts to a run, and every key and button to what is asked of that run."""
 
+import gc
 from typing import Any
 
 import numpy as np
@@ -140,6 +141,8 @@ class RehearseWindow(Keyed, Alarming, Seeing):
         """What the run plays has been read."""
         about, parts = self.told.about, self.parts
         self.material = material
+        # What was read stays: to look through all of it for what is of no use any more would keep keys waiting.
+        gc.freeze()
         self._drawn = fits(material, about)
         note = material.note
         if self._drawn:

@@ -91,6 +91,10 @@ class HangView(QWidget):
             raise ValueError(f"{wanted.shape} strains for {len(self._room.names)} fibers")
         self._wanted = wanted
         self._sensed = None if sensed is None else np.asarray(sensed, dtype=float)
+        self._moved()
+
+    def _moved(self) -> None:
+        """The fibers have moved: another picture of them is wanted."""
         self.update()
 
     @property

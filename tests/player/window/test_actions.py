@@ -17,6 +17,7 @@ from player.window.actions import (
     word_of,
     words_of,
 )
+from player.window.preflight_view import PreflightView
 
 COMMANDS = Standing(stage="running", state="playing", commands=True, taken=True, marks=True)
 
@@ -84,3 +85,20 @@ def test_a_button_bears_one_of_the_words_it_is_made_wide_for():
     for name in ACTIONS:
         assert {word_of(name, now) for now in every} <= set(words_of(name))
     assert len(words_of("arm")) == 2 == len(words_of("jump"))
+
+
+def test_a_row_of_the_preflight_that_changes_leaves_those_before_it_as_they_are(qapp):
+    view = PreflightView()
+    rows = [
+        ("ok", "the board answers", ""),
+        ("no", "it serves this rig", "give it the rig file"),
+        ("margin", "10 %", ""),
+    ]
+    view.show_rows(rows)
+    first = view.item(0)
+    view.show_rows([*rows[:2], ("margin", "20 %", ""), ("margin", "30 %", "")])
+    assert view.item(0) is first and [view.item(row).text()[-4:] for row in (2, 3)] == ["20 %", "30 %"]
+    view.show_rows(rows[:1])
+    assert view.count() == 1 and view.item(0) is first
+    view.show_rows([])
+    assert view.count() == 0
