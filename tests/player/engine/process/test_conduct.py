@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from player.engine.process import layout
-from player.engine.process.conduct import HOLD_S, Conduct
+from player.engine.process.conduct import HOLD_S, QUIET_S, Conduct
 from player.engine.process.show import Show
 
 
@@ -234,3 +234,27 @@ def test_a_hold_that_is_said_anew_stays_down_and_ends_with_its_front_end(make_ru
 
     run.play(meanwhile)
     assert asked == ["hold", "held"]
+
+
+def test_a_run_that_waits_for_its_boards_shows_itself_meanwhile_and_names_those_that_do_not_answer(
+    make_run, commander, board, monkeypatch
+):
+    run = make_run()
+    armed(run, commander)
+    monkeypatch.setattr(board, "rest", lambda over_s: None)
+    monkeypatch.setattr(board, "vent", lambda: None)
+    quiet_s = []
+    listen = run.engine.listen
+
+    def listening():
+        listen()
+        if run.conduct._stage == "running":
+            quiet_s.append(run.engine.clock.now() - run.reader.snapshot().number("at_s"))
+
+    run.engine.listen = listening
+    ending = run.play(lambda status: status.state == "vented" and run.engine.ask("stop"))
+    assert len(quiet_s) > 500 and max(quiet_s) < QUIET_S + 0.02
+    assert [fault.say for fault in ending.faults] == [
+        "main: the board did not say that it has disarmed; it is told to vent",
+        "main: the board did not say that it has vented; shut its supply by hand",
+    ]
