@@ -6,7 +6,8 @@ from player.commands.log_report import sentences
 
 RUN = {
     "title": "Estuary", "played": "estuary.score", "rig": "estuary.rig.toml", "targets": ["sim"],
-    "date": "2026-01-01T00:00:00Z", "sound": True, "left_bytes": 0, "ended": "end", "why": "", "place": "2:1", "sets": 2, "duration_s": 1.0, "rate_Hz": 200.0,
+    "date": "2026-01-01T00:00:00Z", "sound": True, "left_bytes": 0, "ended": "end", "why": "", "place": "2:1",
+    "sets": 2, "duration_s": 1.0, "rate_Hz": 200.0,
     "senses": 0, "outputs": [], "lateness": [], "latest_ms": 0.0, "hits": [], "supply": [],
     "drift": {"fibers": ()}, "faults": [],
 }  # fmt: skip
