@@ -5,6 +5,7 @@ from typing import Any
 
 import numpy as np
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, Qt, Signal
+from PySide6.QtGui import QFontMetrics
 from PySide6.QtWidgets import QAbstractItemView, QFrame, QLabel, QSplitter, QTableView, QVBoxLayout, QWidget
 
 from composer.faults import Fault
@@ -185,7 +186,9 @@ class RigPage(QWidget):
         """Columns as wide as their first rows and headings."""
         for part in (self.table, self.table.horizontalHeader()):
             part.ensurePolished()
-        metrics, bold = self.table.fontMetrics(), self.table.horizontalHeader().fontMetrics()
+        letters = self.table.horizontalHeader().font()
+        letters.setBold(True)  # as the style paints headings
+        metrics, bold = self.table.fontMetrics(), QFontMetrics(letters)
         room = metrics.height()
         for column, (word, _) in enumerate(HEADINGS):
             rows = range(min(self._fibers.rowCount(), 64)) if self._fibers is not None else ()

@@ -27,7 +27,7 @@ from composer.tracks import Tracks
 
 FRAME_BUDGET_MS = 12
 """How long a frame may work on threads that are missing before it shows what there is."""
-NOTHING = "No score yet: what is written comes up here."
+NOTHING = "Nothing to show yet: what is written comes up here as soon as it can be read."
 
 
 class ClothShow(ClothPlace):

@@ -8,7 +8,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from PySide6.QtCore import QEvent, QPoint, QPointF, QSize, Qt
-from PySide6.QtGui import QKeySequence, QMouseEvent
+from PySide6.QtGui import QFontMetrics, QKeySequence, QMouseEvent
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import (
     QAbstractButton,
@@ -433,7 +433,9 @@ def test_the_table_of_the_rig_has_room_for_its_words_however_large_letters_are(b
         for column in range(model.columnCount()):
             assert table.columnWidth(column) > metrics.horizontalAdvance(model.index(0, column).data())
             heading = model.headerData(column, Qt.Orientation.Horizontal)
-            assert table.columnWidth(column) > table.horizontalHeader().fontMetrics().horizontalAdvance(heading)
+            letters = table.horizontalHeader().font()
+            letters.setBold(True)
+            assert table.columnWidth(column) > QFontMetrics(letters).horizontalAdvance(heading)
         assert table.rowHeight(0) > metrics.height()
     window.do_show_cloth()
 

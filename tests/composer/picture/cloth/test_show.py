@@ -88,7 +88,7 @@ def test_without_a_score_it_says_so(qtbot):
     view.resize(600, 400)
     view.show()
     assert not view.grab().isNull()
-    assert view.accessibleDescription().startswith("No score yet")
+    assert view.accessibleDescription().startswith("Nothing to show yet")
     key(view, Qt.Key.Key_Right)
     QTest.mouseClick(view, LEFT, PLAIN, QPoint(300, 200))
     assert view.shown == (0.0, 1.0)
