@@ -1,5 +1,6 @@
 """Freed memory goes back to the system."""
 
+import subprocess
 import sys
 from pathlib import Path
 
@@ -24,3 +25,20 @@ def test_what_was_freed_is_given_back():
     give_back()
     assert held_kB() < full - 60_000
     assert above.all()
+
+
+def test_what_is_there_at_the_first_rest_is_not_looked_through_again():
+    asked = """
+import gc
+from composer.editor.memory import Tidy
+tidy = Tidy()
+tidy.at_rest()
+ring = []
+ring.append(ring)
+del ring
+print(gc.get_freeze_count() > 1000, gc.isenabled(), gc.collect())
+tidy.at_rest()
+print(gc.collect())
+"""
+    told = subprocess.run([sys.executable, "-c", asked], capture_output=True, text=True, check=True).stdout
+    assert told.split() == ["True", "False", "1", "0"]
