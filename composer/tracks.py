@@ -67,11 +67,6 @@ def durations(tracks: Tracks) -> Array:
     return lasts
 
 
-def start_strain(tracks: Tracks) -> Array:
-    """Strain at the start of each segment, (K,)."""
-    return tracks.curve[:, 0]
-
-
 def end_strain(tracks: Tracks) -> Array:
     """Strain at the end of each segment, (K,)."""
     return tracks.curve.sum(axis=1)

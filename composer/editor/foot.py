@@ -86,8 +86,3 @@ class Foot(QWidget):
     def step_grid(self, way: int) -> None:
         """A finer grid (1), a coarser one (-1)."""
         self._grids.setCurrentIndex(max(0, min(self._grids.currentIndex() + way, self._grids.count() - 1)))
-
-    def choose_grid(self, grid: Fraction) -> None:
-        """Choose a grid."""
-        if grid in GRIDS:
-            self._grids.setCurrentIndex(GRIDS.index(grid))

@@ -68,13 +68,10 @@ class Known:
         self.checked: Checked | None = None
         self.retimed: Retimed | None = None
         self.run: Run | None = None
-        self.stale = False
-        """Whether the text has moved on from what is shown, and cannot be read as it is."""
 
     def forget(self) -> None:
         """Another score: nothing is known of it yet, but the rig stays until another is told."""
         self.picture = self.weave = self.checked = self.retimed = self.run = None
-        self.stale = False
 
     def take_rig(self, told: RigRead) -> None:
         """A rig."""
@@ -89,7 +86,7 @@ class Known:
         lanes = before.lanes if before is not None else ()
         snags = before.snags if before is not None and before.names == self.names else ()
         as_before = before is not None and before.abilities is self.abilities and same_motion(before.tracks, told.tracks)
-        self.picture, self.stale = told, False
+        self.picture = told
         cues = tuple(CueMark(cue.name, cue.seconds, cue.wait) for cue in told.cues)
         self.weave = Weave(
             told.tracks, self.abilities, self.bands, self.names, told.tempo, snags, tuple(told.pins_s.tolist()), cues, lanes

@@ -83,7 +83,6 @@ class Showing(QObject):
             return
         match message:
             case Told():
-                known.stale = bool(message.faults)
                 self.faults.emit(message)
             case RigRead():
                 known.take_rig(message)

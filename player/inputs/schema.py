@@ -68,10 +68,6 @@ def _number(name: str, high: int, says: str) -> Key:
     return Key(name, "integer", says, "", 0, high, default=None)
 
 
-def _switch(name: str, says: str) -> Key:
-    return Key(name, "switch", says, default=None)
-
-
 KINDS = {
     kind.key.name: kind
     for kind in (

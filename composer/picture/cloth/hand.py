@@ -66,11 +66,6 @@ class ClothHand(ClothShow):
         self._grid = float(counts)
         self.update()
 
-    @property
-    def grid_counts(self) -> float:
-        """The grid, in counts."""
-        return self._grid
-
     def on_grid(self, at_s: float) -> float:
         """The instant of the grid that is nearest, never before the start."""
         return self._stepped(at_s, 0)

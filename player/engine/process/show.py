@@ -53,7 +53,7 @@ class Show:
         self._duties = Duties(rig)
         self._lines: deque[str] = deque(maxlen=LINES)
         self._told = 0
-        self._shown_s = self._ticked_s = float("-inf")
+        self._shown_s = float("-inf")
         self._ticks = 0
         memory.slot["cut"], memory.slot["held"] = 0, 1
 

@@ -10,7 +10,7 @@ from composer.rig.select import Selector
 from composer.score.expand import expand
 from composer.score.names import groups_of
 from composer.score.reading import read_score
-from composer.tracks import Tracks, end_strain, start_strain
+from composer.tracks import Tracks, end_strain
 
 
 @dataclass(frozen=True)
@@ -43,7 +43,7 @@ def thread(tracks: Tracks, fiber: int) -> Thread:
         told(tracks.time_s),
         tracks.manner[mine].tolist(),
         tracks.shape[mine].tolist(),
-        told(start_strain(tracks)),
+        told(tracks.curve[:, 0]),
         told(end_strain(tracks)),
         tracks.line[mine].tolist(),
         tracks.phrase_line[mine].tolist(),
