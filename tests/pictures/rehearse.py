@@ -13,7 +13,7 @@ from pathlib import Path
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 HERE = Path(__file__).parents[2]
 PICTURE = HERE / "player" / "manual" / "rehearse-window.png"
-FROM, SEEN_AT_S = "29:1", 3.2
+FROM, SEEN_AT_S = "49:1", 8.5
 """Where playing begins, and how long after it the picture is taken: most of the rig moves."""
 
 
