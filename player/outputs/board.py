@@ -165,13 +165,13 @@ class Board:
     def arm(self) -> None:
         """Arm, and wait for the board to say so."""
         host = self._host
-        # What the supply is now is told anew to whoever listens from here on.
-        self._supply_kPa = None
         if not host.arm(self._clock.now()):
             raise LinkLost(f"the board is not ready to arm: {self._why or host.state}")
         self._until(lambda: host.state != link.ARMING, GREET_S)
         if host.state != link.ARMED:
             raise LinkLost(f"the board did not arm: {self._why}")
+        # Whatever was heard until now is gone: the supply is told anew to whoever listens from here on.
+        self._supply_kPa = None
 
     def send(self, due_s: float, command: Array) -> None:
         """Send a set of all channels that the rig uses; counted as skipped where the board's queue is full."""
