@@ -25,6 +25,10 @@ class Between:
             self.lists.setTabText(0, words.capitalize())
         elif isinstance(message, Retimed):
             self.lists.setTabText(1, retiming_in_words(len(message.hits)))
+            row = self.snags.current
+            if self._mends_early and row is not None and self.showing.known.retimed is message:
+                # Ways that need a retiming were refused for want of it.
+                self._find_mends(row, again=True)
         elif isinstance(message, Failed):
             self.notices.say("worker", message.says, kind="fault")
 
@@ -117,15 +121,20 @@ class Between:
             self.pane.go_to(row.line, focus=False)
             self.pane.looks.light([row.line], [row.phrase_line] if row.phrase_line else [])
 
-    def _find_mends(self, row: Row) -> None:
+    def _find_mends(self, row: Row, again: bool = False) -> None:
         checked = self.showing.known.checked
         if checked is None or row.snag >= len(checked.check.snags):
             return
-        self.snags.mends.say("Looking for what would mend it …")
+        self._mends_early = self.showing.known.retimed is None
+        if not again:
+            self.snags.mends.say("Looking for what would mend it …")
 
         def show(mended: Any) -> None:
             if self.snags.current is not None and self.snags.current.snag == row.snag:
+                chosen = any(button.hasFocus() for button in self.snags.mends.buttons)
                 self.snags.mends.show_mended(mended)
+                if chosen:
+                    self.snags.to_choices()
 
         self.crew.ask("mends", (checked.check.snags[row.snag],), show)
 

@@ -67,6 +67,7 @@ class ComposeWindow(Deeds, Sights, Between, Manners, QMainWindow):
         self._entry = self._lines = 0
         self._shown_file = ""
         self._last_wrong = ""
+        self._mends_early = False
         self._closing = False
         self._text_scale = 1.0
         self._own_scale = 1.0

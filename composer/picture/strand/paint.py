@@ -123,10 +123,8 @@ def _axes(painter: QPainter, at: Face, strand: Strand) -> None:
     look, box, px = at.look, at.box, at.look.px
     theme = look.theme
     painter.fillRect(box, colour(theme.panel))
-    look.write(painter, QRectF(px(8), box.top(), box.left() - px(52), px(18)), strand.name, 12.5, theme.ink, LEFT, bold=True)
-    look.write(
-        painter, QRectF(px(8), box.top() + px(17), box.left() - px(52), px(16)), _measure(at.unit), 10.5, theme.quiet_ink
-    )
+    look.write(painter, QRectF(px(8), px(4), box.left() - px(14), px(18)), strand.name, 12.5, theme.ink, LEFT, bold=True)
+    look.write(painter, QRectF(px(8), box.top(), box.left() - px(52), px(16)), _measure(at.unit), 10.5, theme.quiet_ink)
     for value in value_ticks(at.low * at.per_strain, at.high * at.per_strain, max(2, int(box.height() / px(24)))):
         y = float(at.y_of(value / at.per_strain))
         painter.setPen(pen(theme.faint_line))
