@@ -9,6 +9,7 @@ on the curves, which finds every span that may overdraw; the instants of the dee
 curves themselves, so that what is reported is exact.
 """
 
+from collections.abc import Iterator
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -16,7 +17,7 @@ from numpy.typing import NDArray
 
 from composer.fiber.mounting import Supply
 from composer.limits.abilities import Abilities
-from composer.limits.buckets import level, overdraws
+from composer.limits.buckets import level
 from composer.limits.fills import Fills, air_at, drawn_together, fills_of, sudden_strain
 from composer.limits.limit import TOLERANCE, Limit
 from composer.limits.quivering import shaken
@@ -44,6 +45,9 @@ GRID, ROUNDS = 33, 7
 """Points and rounds of closing in on an instant: each round narrows the window sixteen times."""
 
 POINTS = np.linspace(0.0, 1.0, GRID)
+
+DIPS, STARTS = 20, 4
+"""Dips looked at closely, at most, between two instants at which the receiver is full, and spans that end in each."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -153,17 +157,39 @@ def use(tracks: Tracks, supply: Supply, abilities: Abilities) -> Use:
     _, _, missing = exact.deepen(asked.time_s[now.since[deepest]], asked.time_s[deepest])
     spans = []
     slack = min(2.0 * asked.strays_L / store, 0.5) if store > 0.0 else 0.5
-    near = overdraws(asked.time_s, asked.litres, store, refill, -slack)
-    for start, end in zip(near.start, near.end, strict=True):
-        from_s, to_s, short = exact.deepen(asked.time_s[start], asked.time_s[end])
-        missing = max(missing, short)
-        if short > store * (1.0 + TOLERANCE):
-            bears = store + refill * (to_s - from_s)
-            spans.append((from_s, to_s, short - store + bears, bears))
+    dips = np.flatnonzero((now.missing > store * (1.0 - slack)) & _peaks(now.missing))
+    short = asked.litres - refill * asked.time_s
+    valleys = np.flatnonzero(_peaks(-short)) if len(dips) else dips
+    dips = dips[np.lexsort((dips, -now.missing[dips], now.since[dips]))]
+    for mine in np.split(dips, np.flatnonzero(np.diff(now.since[dips])) + 1) if len(dips) else ():
+        # Where the dip that seems deepest is none when looked at closely, another that seemed less may be one.
+        for start, end in _pairs(mine, valleys, short, 2.0 * asked.strays_L):
+            from_s, to_s, deep = exact.deepen(asked.time_s[start], asked.time_s[end])
+            missing = max(missing, deep)
+            if deep > store * (1.0 + TOLERANCE):
+                bears = store + refill * (to_s - from_s)
+                spans.append((from_s, to_s, deep - store + bears, bears))
+                break
     lowest = supply.max_receiver_kPa - missing * FREE_AIR_KPA / supply.receiver_L
     alone = too_much_at_once(tracks, fills, supply, abilities) if spans else np.empty(0, dtype=np.int64)
     full_s = asked.time_s[now.missing <= 0.0]
     return Use(max(lowest, 0.0), float(fills.litres.sum()), tuple(spans), full_s, asked, alone)
+
+
+def _peaks(values: Array) -> NDArray[np.bool_]:
+    """(N,) where values neither rise on nor have been higher just before."""
+    step = np.diff(values)
+    return (np.append(True, step >= 0.0)) & (np.append(step <= 0.0, True))
+
+
+def _pairs(ends: Index, valleys: Index, short: Array, strays_L: float) -> Iterator[tuple[int, int]]:
+    """Begin and end of the spans that may ask most, those that seem to ask most first; (N,) `short` is demand less refill."""
+    for end in ends[:DIPS].tolist():
+        before = valleys[: np.searchsorted(valleys, end)]
+        low = short[before]
+        near = before[low <= low.min(initial=np.inf) + strays_L]
+        for start in near[np.argsort(short[near], kind="stable")][:STARTS].tolist():
+            yield start, end
 
 
 def too_much_at_once(tracks: Tracks, fills: Fills, supply: Supply, abilities: Abilities) -> Index:
