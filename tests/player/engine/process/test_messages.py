@@ -71,7 +71,7 @@ def test_no_value_of_a_field_does_more_than_be_unfit(value):
 
 def test_whoever_only_watches_can_leave_vent_and_ask_to_command_and_no_more():
     free = {row.name for row in ASKED.values() if not why_not(row, commands=False, state="idle")}
-    assert free == {"hello", "vent", "leave", "command"}
+    assert free == {"hello", "vent", "here", "leave", "command"}
 
 
 def test_a_vent_is_taken_in_every_state_from_everybody():
