@@ -278,8 +278,9 @@ def test_the_keys_go_to_the_choices_as_soon_as_they_come(bench):
 
 def test_choices_that_were_looked_for_before_the_retiming_came_are_looked_for_again(bench):
     window = bench.window
-    retimed, bench.known.retimed = bench.known.retimed, None
     window.do_next_snag()
+    retimed, bench.known.retimed = bench.known.retimed, None
+    window._find_mends(window.snags.current)
     bench.until(lambda: window.snags.mends.choices, "choices")
     assert window._mends_early
     first = window.snags.mends.buttons[0]
