@@ -121,7 +121,8 @@ def _fiber(log: Told, number: Any) -> str:
 
 def _supply(log: Told) -> list[dict[str, Any]]:
     """The lowest that each board's sensor of the supply has read."""
-    drivers = log.head.get("drivers") or []
+    told = log.head.get("drivers")
+    drivers = told if isinstance(told, list) else []
     lowest: dict[int, float] = {}
     for driver, _, kPa in log.supply:
         lowest[driver] = min(kPa, lowest.get(driver, kPa))
