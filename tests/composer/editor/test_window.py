@@ -279,15 +279,15 @@ def test_the_keys_go_to_the_choices_as_soon_as_they_come(bench):
 def test_choices_that_were_looked_for_before_the_retiming_came_are_looked_for_again(bench):
     window = bench.window
     window.do_next_snag()
+    bench.until(lambda: window.snags.mends.choices, "choices")
+    first = window.snags.mends.buttons[0]
     retimed, bench.known.retimed = bench.known.retimed, None
     window._find_mends(window.snags.current)
-    bench.until(lambda: window.snags.mends.choices, "choices")
     assert window._mends_early
-    first = window.snags.mends.buttons[0]
     bench.known.retimed = retimed
     window._hear(retimed)
-    bench.until(lambda: window.snags.mends.buttons and window.snags.mends.buttons[0] is not first, "choices again")
     assert not window._mends_early
+    bench.until(lambda: window.snags.mends.buttons and window.snags.mends.buttons[0] is not first, "choices again")
 
 
 def test_after_a_mend_the_next_snag_is_the_one_behind_it(bench):
