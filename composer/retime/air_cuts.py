@@ -83,7 +83,10 @@ def whole_rows(
     for from_s, to_s in spans:
         about = 0.25 * (to_s - from_s) + 0.1
         low = int(np.searchsorted(hits_s, from_s - about)) - 1
-        high = min(int(np.searchsorted(hits_s, to_s + about)), events.hits, low + WIDEST)
+        # Where a span lies before the first hit, its fills still have to be done by then.
+        high = min(max(int(np.searchsorted(hits_s, to_s + about)), 1), events.hits, low + WIDEST)
+        if not high:
+            continue
         found = []
         for a in range(low, high):
             inside = steady & (begins >= a) & (ends > a) & (ends < high)
