@@ -234,7 +234,9 @@ def test_a_program_that_writes_nothing_is_a_fault_and_the_target_stays(tmp_path)
 
 
 @pytest.mark.parametrize(
-    ("made_by", "write"), [("open", replacing), ("open", check_writable), ("mkdir", replacing_by_name)], ids=lambda of: str(of)
+    ("made_by", "write"),
+    [("open", replacing), ("open", check_writable), ("mkdir", replacing_by_name)],
+    ids=["replacing", "check-writable", "replacing-by-name"],
 )
 def test_an_end_at_the_very_moment_when_the_file_beside_is_made_leaves_nothing(tmp_path, monkeypatch, made_by, write):
     makes = getattr(os, made_by)
