@@ -89,8 +89,8 @@ BOARD = {
         1,
         "vented",
         "fault",
-        "not armed",
-        "look at its power: it may have started anew",
+        "not armed / clock has jumped",
+        "look at its power: it may have started anew / look at its power and line",
     ),
     "fast-clock": Row("a board's clock is 1 % fast", "fast-clock", *PLAYED, "nothing: it is allowed for"),
     "jumping-clock": Row(
