@@ -33,7 +33,7 @@ def test_every_fault_code_of_the_wire_has_its_row():
     for code in FAULTS:
         if code != 3:
             assert any(f"(fault {code})" in row.happens for row in ROWS.values()), code
-    assert ROWS["reset"].told == FAULTS[3][0]
+    assert FAULTS[3][0] in ROWS["reset"].told.split(" / ")
 
 
 def test_whatever_the_simulated_board_can_do_wrong_has_its_row():
