@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 from composer.limits.abilities import Abilities
 from composer.limits.air import too_much_at_once
 from composer.limits.fills import fills_of
+from composer.quivers import NONE
 from composer.retime.air_cuts import Span, overdrawn, plainly_enough, share_rows, whole_rows
 from composer.retime.air_search import Found, better
 from composer.retime.air_windows import by_windows
@@ -21,6 +22,7 @@ from composer.retime.stage import Stage, at_times
 from composer.retime.switches import kept_apart, shut_rows, switch_rows
 from composer.retime.terms import cost
 from composer.rig.model import Rig
+from composer.tracks import HOLD, STEP, SUDDEN, Tracks
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -140,7 +142,7 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
     rows, given_up, no_air = stage.rows, 0, False
     hopeless: list[Hopeless] = []
     # Beside what draws too much by itself all that is short of air would be moved in vain.
-    if len(too_much_at_once(stage.tracks, fills_of(stage.tracks, abilities), rig.supply, abilities)):
+    if _at_once(stage.tracks, rig, abilities):
         no_air, hopeless = True, [(AIR_ROW, -1)]
     air: set[tuple[int, int]] = set()
     least, spans, full_s, parts = None, [], np.empty(0), Parts()
@@ -186,6 +188,15 @@ def _bottom(stage: Stage, rig: Rig, abilities: Abilities, whole: bool, budget: B
     if least is None:
         return None
     return _Bottom(replace(least, bound=min(least.bound, proven)), rows, given_up, no_air, spans, full_s, tuple(hopeless))
+
+
+def _at_once(tracks: Tracks, rig: Rig, abilities: Abilities) -> bool:
+    """Whether moves that land together at once draw more than a full receiver bears; of all other moves nothing is asked."""
+    at_once = np.isin(tracks.manner, (SUDDEN, STEP))
+    if not at_once.any():
+        return False
+    alone = replace(tracks, manner=np.where(at_once, tracks.manner, HOLD), quivers=NONE)
+    return len(too_much_at_once(alone, fills_of(alone, abilities), rig.supply, abilities)) > 0
 
 
 def _cheaper(stage: Stage, rows: Rows, one: Rows, other: Rows, free: Flags, budget: Budget) -> Rows:
