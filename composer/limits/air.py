@@ -146,9 +146,9 @@ def _strays(fills: Fills, pieces: Index) -> float:
     return float(np.cumsum(np.concatenate([each, -each])[order]).max(initial=0.0))
 
 
-def use(tracks: Tracks, supply: Supply, abilities: Abilities) -> Use:
+def use(tracks: Tracks, supply: Supply, abilities: Abilities, fills: Fills | None = None) -> Use:
     """How a score uses the supply, with every span that asks for more than store and compressor give over it."""
-    fills = fills_of(tracks, abilities)
+    fills = fills_of(tracks, abilities) if fills is None else fills
     asked = demand(tracks, abilities, fills)
     store, refill = store_L(supply), refill_L_s(supply)
     now = level(asked.time_s, asked.litres, refill)

@@ -40,9 +40,12 @@ def overdrawn(now: Tracks, rig: Rig, abilities: Abilities) -> tuple[list[Span], 
 
     Returns as well instants, in order, at which the receiver is full; none are told where it never runs short.
     """
-    if refill_L_s(rig.supply) <= 0.0 or fills_of(now, abilities).litres.sum() <= store_L(rig.supply):
+    if refill_L_s(rig.supply) <= 0.0:
         return [], np.empty(0)
-    there = use(now, rig.supply, abilities)
+    fills = fills_of(now, abilities)
+    if fills.litres.sum() <= store_L(rig.supply):
+        return [], np.empty(0)
+    there = use(now, rig.supply, abilities, fills)
     return [(from_s, to_s) for from_s, to_s, _, _ in there.spans], there.full_s
 
 

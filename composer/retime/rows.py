@@ -41,6 +41,9 @@ class Rows:
 
 def joined(parts: list[Rows]) -> Rows:
     """Rows of several parts, one after another."""
+    parts = [part for part in parts if len(part.least)] or parts[:1]
+    if len(parts) == 1:
+        return parts[0]
     return Rows(
         sparse.vstack([part.matrix for part in parts], format="csr"),
         np.concatenate([part.least for part in parts]),
@@ -52,11 +55,12 @@ def joined(parts: list[Rows]) -> Rows:
 def differences(events: Events, later: Index, earlier: Index, least: Array, kind: int, knot: Index) -> Rows:
     """Rows `shift[later] - shift[earlier] >= least`; either may be -1, which stands still."""
     count = len(later)
-    row = np.arange(count)
-    rows = np.concatenate((row[later >= 0], row[earlier >= 0]))
-    columns = np.concatenate((later[later >= 0], earlier[earlier >= 0]))
-    values = np.concatenate((np.ones(np.count_nonzero(later >= 0)), -np.ones(np.count_nonzero(earlier >= 0))))
-    matrix = sparse.csr_array((values, (rows, columns)), shape=(count, len(events.written_s)))
+    # Written as it is kept, two columns a row at most in their order: an editor asks for it at every keystroke.
+    columns = np.column_stack((np.minimum(later, earlier), np.maximum(later, earlier)))
+    values = np.where((later < earlier)[:, None], (1.0, -1.0), (-1.0, 1.0))
+    moves = columns >= 0
+    ends = np.concatenate(([0], np.cumsum(np.count_nonzero(moves, axis=1))))
+    matrix = sparse.csr_array((values[moves], columns[moves], ends), shape=(count, len(events.written_s)))
     return Rows(matrix, least, np.full(count, kind, dtype=np.int8), knot)
 
 

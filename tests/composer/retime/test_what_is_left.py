@@ -3,7 +3,7 @@
 from itertools import pairwise
 
 import numpy as np
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 from scipy.optimize import linprog
 
@@ -38,6 +38,7 @@ def kept_by_some_times(tracks, rig, abilities):
 
 
 @settings(max_examples=20, deadline=None)
+@example(5391, "clock")
 @given(st.integers(0, 10_000), st.sampled_from(("clock", "rhythm")))
 def test_no_snag_is_left(make_rig, seed, keep):
     rig = make_rig(4, accel=(None, 3.0)[seed % 2], max_hold_s=(0.0, 4.0)[seed // 2 % 2], duty=0.6, duty_burst_s=3.0,
@@ -48,7 +49,12 @@ def test_no_snag_is_left(make_rig, seed, keep):
     left = check(found.tracks, rig, abilities).snags
     # What must happen meanwhile may take too long at its fastest for a hold or a coil: the retiming says where.
     assert not any(found.mends(snag) for snag in left)
-    assert len(left) >= len(found.hopeless) or not left
+    # Two that touch are one snag, so they are not counted: each lies in one that is left.
+    for lost in found.hopeless if left else ():
+        assert any(
+            (snag.kind, snag.fiber) == (lost.kind, lost.fiber) and snag.from_s <= lost.to_s and snag.to_s >= lost.from_s
+            for snag in left
+        )
     assert bool(found.hopeless) == (not kept_by_some_times(made.tracks, rig, abilities))
 
 
