@@ -88,7 +88,7 @@ class _Weighed:
             when = watch.even(self.source[part], self.target[part])
             series = self.series[part]
             self._hold(part, when, self.played.at(self.played.share, series, when), self.played.slack_at(series, when))
-        left = np.flatnonzero((self.low <= self.high).any(axis=0))
+        left = np.flatnonzero(((self.low <= self.high) & self.may).any(axis=0))
         points = watch.points(self.source[left], self.target[left])
         for many in np.unique(points[points > 0]):
             mine = left[points == many]
