@@ -164,6 +164,8 @@ def use(tracks: Tracks, supply: Supply, abilities: Abilities, fills: Fills | Non
     for mine in np.split(dips, np.flatnonzero(np.diff(now.since[dips])) + 1) if len(dips) else ():
         # Where the dip that seems deepest is none when looked at closely, another that seemed less may be one.
         for start, end in _pairs(mine, valleys, short, 2.0 * asked.strays_L):
+            if short[end] - short[start] + 2.0 * asked.strays_L <= store:
+                continue  # whatever the curves do between the chords' ends, it bears this
             from_s, to_s, deep = exact.deepen(asked.time_s[start], asked.time_s[end])
             missing = max(missing, deep)
             if deep > store * (1.0 + TOLERANCE):
