@@ -88,14 +88,16 @@ class OnTerminal:
         try:
             self.shown += os.read(self.master, 65536).decode(errors="replace")
         except OSError:
-            return False
+            # Nobody has the other end open: for ever where the program has gone, for a moment where it has not.
+            time.sleep(0.05)
+            return self.process.poll() is None
         return True
 
     def see(self, words):
         end = time.monotonic() + 60.0
         while words not in self.shown and time.monotonic() < end and self.read():
             pass
-        assert words in self.shown, self.shown[-2000:]
+        assert words in self.shown, (self.process.poll(), self.shown[-2000:])
 
     def type(self, keys):
         self.shown = ""
